@@ -1,0 +1,2 @@
+install(TARGETS sward RUNTIME DESTINATION ${CMAKE_INSTALL_BINDIR})
+install(DIRECTORY pipeline/optics/materials DESTINATION ${CMAKE_INSTALL_DATADIR}/sward)

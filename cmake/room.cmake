@@ -1,0 +1,17 @@
+# room(name folder [USES rooms...] [LIBS libraries...] [EXCEPT files...])
+# Every .c of the folder belongs to the room. Its include root is a link in the build tree, so that
+# #include "metrics/spacing.h" works only for rooms that list metrics behind USES.
+function(room name folder)
+  cmake_parse_arguments(R "" "" "USES;LIBS;EXCEPT" ${ARGN})
+  file(GLOB sources CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/${folder}/*.c)
+  foreach(file ${R_EXCEPT})
+    list(REMOVE_ITEM sources ${CMAKE_CURRENT_SOURCE_DIR}/${folder}/${file})
+  endforeach()
+  add_library(sward_${name} STATIC ${sources})
+  set_target_properties(sward_${name} PROPERTIES LINKER_LANGUAGE C)
+  file(MAKE_DIRECTORY ${CMAKE_BINARY_DIR}/inc/${name})
+  file(CREATE_LINK ${CMAKE_CURRENT_SOURCE_DIR}/${folder} ${CMAKE_BINARY_DIR}/inc/${name}/${name} SYMBOLIC)
+  target_include_directories(sward_${name} PUBLIC ${CMAKE_BINARY_DIR}/inc/${name})
+  list(TRANSFORM R_USES PREPEND sward_)
+  target_link_libraries(sward_${name} PUBLIC ${R_USES} PRIVATE sward_flags ${R_LIBS})
+endfunction()

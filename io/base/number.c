@@ -1,0 +1,39 @@
+#include "base/number.h"
+
+#include <ctype.h>
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+int number_parse(const char *s, double *out) {
+    while (isspace((unsigned char)*s)) s++;
+    if (!*s || strspn(s, "+-0123456789.eE") == 0) return 0;
+    char *end;
+    double v = strtod(s, &end);
+    if (end == s || !isfinite(v)) return 0;
+    for (const char *p = s; p < end; p++)
+        if (!strchr("+-0123456789.eE", *p)) return 0; /* hex, nan, inf */
+    while (isspace((unsigned char)*end)) end++;
+    if (*end) return 0;
+    *out = v;
+    return 1;
+}
+
+const char *number_text(double v, int digits, char *out) {
+    out[0] = '\0';
+    if (!isfinite(v)) return out;
+    if (fabs(v) < 1e-300) v = 0.0; /* no "-0" */
+    snprintf(out, NUMBER_TEXT, "%.*g", digits, v);
+    return out;
+}
+
+const char *number_percent(double v, int digits, char *out) {
+    char shown[NUMBER_TEXT];
+    number_text(v, digits, shown);
+    if (!shown[0]) {
+        out[0] = '\0';
+        return out;
+    }
+    return number_text(strtod(shown, NULL) * 100.0, digits, out);
+}

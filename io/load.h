@@ -1,0 +1,32 @@
+/* Bytes of an image file -> micrograph. Survives anything; memory stays within the limits. */
+#ifndef SWARD_IO_LOAD_H
+#define SWARD_IO_LOAD_H
+#include <stdint.h>
+
+#include "base/status.h"
+#include "io/micrograph.h"
+
+typedef struct {
+    double px_nm_option; /* --px, nm per pixel; NAN: none. Outranks all */
+    double px_nm_sheet;  /* sample sheet column px_nm; NAN: none */
+    double px_u_rel;     /* relative standard uncertainty of a stated pixel size when the source gives none */
+    int crop_strip;      /* find and crop the info strip at the bottom */
+    size_t max_pixels;   /* refuse larger pictures */
+} load_options;
+
+load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, LIMIT_PIXELS */
+
+/* Reads, decodes, finds pixel size (sidecar beside `path` included) and strip.
+ *   out  m   as described in micrograph.h; untouched on failure
+ *   own  caller frees m with micrograph_free
+ *   err  ST_IO cannot be read; ST_BAD_INPUT empty, truncated, not an image, a variant that is not read (says which);
+ *        ST_NO_MEMORY larger than the limits. The sentence does not repeat the path. */
+status load_file(const char *path, const load_options *o, micrograph *m, error *e);
+
+/* The same for bytes in memory, without sidecar (used by the fuzz targets). */
+status load_memory(const uint8_t *bytes, size_t n, const load_options *o, micrograph *m, error *e);
+
+/* 1 when the file name ends like an image this program reads (png tif tiff, any case). */
+int load_knows_name(const char *path);
+
+#endif

@@ -1,0 +1,52 @@
+/* One prediction with its interval: the stage "predict" for a sample or for numbers from the command line. */
+#ifndef SWARD_LINK_PREDICT_H
+#define SWARD_LINK_PREDICT_H
+#include "link/surface.h"
+#include "optics/reflectance.h"
+#include "optics/trust.h"
+
+/* The optical set-up; borrowed pointers. */
+typedef struct {
+    const material *ambient, *substrate, *air;
+    const material *nitride;       /* of the coated reference, 75 nm */
+    laminate front;
+    const layer *coatings;
+    size_t n_coatings;
+    mixing mixing;
+    reflect_options reflect;
+    const sun *sun;
+    double band_lo_nm, band_hi_nm; /* 300..1200 */
+    double step_nm;                /* grid of the spectrum, 1 */
+} optics_setup;
+
+typedef struct {
+    quantity spacing_nm;           /* value NAN: unknown (measured profile): no validity statement */
+    quantity height_nm;            /* 0: planar */
+    int pores;
+    const double *cell_area_nm2;
+    size_t n_cells;
+    const profile *measured;       /* non-NULL replaces height and shape */
+    link_options link;
+} surface_input;
+
+typedef struct {
+    size_t n;
+    double *wavelength_nm, *R, *R_lo, *R_hi; /* [n] owned; lo/hi 95 % interval; NAN when no model error is known */
+    double weighted, weighted_lo, weighted_hi; /* NAN when refused */
+    double current_loss_mA_cm2;
+    double polished, coated;       /* references, same ambient, angle and polarization */
+    order_shares shares;           /* NAN when spacing is unknown */
+    double area_ratio, aspect;
+    const char *model;             /* "graded", or "none" when refused */
+    char note[480];                /* what the interval holds, what is outside validity; sentences for a person */
+    /* budget of the weighted reflectance, standard uncertainties, absolute */
+    double u_height, u_shape, u_spread, u_mixing, u_model, model_bias;
+    size_t slabs;
+    int refused;                   /* 1: too coarse for the graded model */
+} prediction;
+
+/*   err as in reflectance(); a texture outside the model is no error but `refused`. */
+status predict(const surface_input *in, const optics_setup *o, prediction *out, error *e);
+void prediction_free(prediction *p);
+
+#endif

@@ -1,0 +1,43 @@
+/* From texture numbers to the surface that optics needs: height, shape, profile. Lengths in nm. */
+#ifndef SWARD_LINK_SURFACE_H
+#define SWARD_LINK_SURFACE_H
+#include <stddef.h>
+
+#include "base/quantity.h"
+#include "base/status.h"
+#include "optics/stack.h"
+
+typedef enum { HEIGHT_SHEET, HEIGHT_CALIBRATED, HEIGHT_PROTOCOL, HEIGHT_ASPECT, HEIGHT_DEFAULT } height_source;
+const char *height_source_name(height_source s); /* sheet calibrated protocol aspect default; the last three are assumed */
+int height_is_assumed(height_source s);
+
+/* What the protocol (or the command line) says of the link; NAN = not said. */
+typedef struct {
+    double height_nm, height_nm_u;
+    double aspect, aspect_u;   /* height / spacing */
+    double exponent;           /* q in s(zeta) = (1 - zeta)^(2/q): 1 cone (default), 2 paraboloid */
+    double exponent_u;         /* 0: the shape is given. Default 0.5 in `run`, 0 in `predict` */
+    double height_spread;      /* relative sd of the heights (normal), default 0 */
+    double height_by_size;     /* g in h_i = h (d_i / d_mean)^g, default 0 */
+    int level_at_tips;         /* spread: 0 one floor (default), 1 tips in one plane */
+    double coverage;           /* F, solid share at the floor, default 1 */
+} link_options;
+link_options link_defaults(void);
+
+/* Picks the height: sheet (value, u; NAN if none) > protocol height > protocol aspect x spacing > 1.0 +- 0.3 x spacing. */
+status link_height(quantity sheet, const link_options *o, quantity spacing_nm, quantity *height_nm, height_source *src,
+                   error *e);
+
+/* Solid fraction against depth for features of the given height.
+ *   in   cell_area_nm2[n_cells] watershed cells (may be NULL, n 0: one cell of the hexagonal area of spacing_nm)
+ *        coatings[n_coatings] conformal, outermost first, thickness_nm used to dilate the equivalent circular cell
+ *        pores: the complement
+ *   out  p owned by the caller (profile_free)
+ *   err  ST_BAD_INPUT height < 0, exponent <= 0, coverage outside 0..1 ...; ST_NO_MEMORY */
+status link_profile(double height_nm, double spacing_nm, const double *cell_area_nm2, size_t n_cells, int pores,
+                    const link_options *o, const layer *coatings, size_t n_coatings, profile *p, error *e);
+
+/* Solid of revolution on the hexagonal cell: true area / projected area. */
+double link_area_ratio(double height_nm, double spacing_nm, const link_options *o);
+
+#endif

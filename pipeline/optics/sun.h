@@ -1,0 +1,26 @@
+/* The solar spectrum as photon flux and the weighted means over it. */
+#ifndef SWARD_OPTICS_SUN_H
+#define SWARD_OPTICS_SUN_H
+#include <stddef.h>
+
+#include "base/status.h"
+
+typedef struct {
+    char *source;
+    size_t n;
+    double *wavelength_nm;  /* [n] ascending */
+    double *irradiance;     /* [n] W m-2 nm-1 */
+} sun;                      /* owned */
+
+status sun_make(sun *s, const char *source, size_t n, const double *wavelength_nm, const double *irradiance,
+                error *e);
+void sun_free(sun *s);
+
+/* Photon-flux weighted mean of y (piecewise linear on the ascending grid) over lo..hi, trapezoid on the union of the
+ * sun's nodes and the band's ends. err ST_BAD_INPUT band outside the sun's table or the grid. */
+status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, size_t n, double lo_nm, double hi_nm,
+                    double *mean, error *e);
+/* Current of all photons in the band, mA/cm2 (q = 1.602176634e-19 C, h, c of SI 2019). */
+status sun_current(const sun *s, double lo_nm, double hi_nm, double *mA_cm2, error *e);
+
+#endif

@@ -1,0 +1,41 @@
+/* Writes the outputs of a run. The app fills the rows; this room prints them. */
+#ifndef SWARD_REPORT_RESULTS_H
+#define SWARD_REPORT_RESULTS_H
+#include "base/text.h"
+#include "report/rows.h"
+
+/* Everything one run yields. Borrowed pointers; rows in output order. */
+typedef struct {
+    const image_row *images;      size_t n_images;
+    const char *const *image_json; /* [n_images] further members of the image's JSON object (budgets, pixels, sentence):
+                                      text like "\"detail\": \"...\", \"pixels\": {...}", or NULL */
+    const sample_row *samples;    size_t n_samples;
+    const char *const *sample_json; /* the same for samples */
+    const char *const *sample_extra; size_t n_sample_extra; /* names of the extra columns of samples.csv */
+    const spectrum_row *spectra;  size_t n_spectra;
+    const char *manifest_json;    /* one JSON object: program, version, protocol, inputs (hashes), flags list, history */
+    const char *summary;          /* what the terminal says, plain text */
+    const char *title;            /* of the page: protocol's name or the folder's */
+    /* for the page */
+    const char *const *target_quantity; const double *target_min, *target_max; size_t n_targets;
+    const char *history_json;     /* array of {sample, etched_at, spacing_nm, spacing_nm_u, weighted_reflectance,
+                                     verdict} in time order, or NULL */
+    const double *reference_wavelength_nm, *polished_R, *coated_R; size_t n_reference; /* flat references; may be NULL */
+    const char *const *overlay_paths; /* [n_images] relative to out_dir, or NULL */
+    const char *history_note;     /* where the ledger is, one sentence */
+} results;
+
+/* images.csv samples.csv spectra.csv results.json datapackage.json into `out_dir` (exists), atomically. */
+status results_write(const results *r, const char *out_dir, error *e);
+
+/* report.html, self-contained (styles, charts, overlays embedded as data URIs). */
+status report_write(const results *r, const char *out_dir, error *e);
+
+/* features/<stem>.csv and profiles/<stem>.csv bodies. */
+void features_csv(const feature_row *rows, size_t n, textbuf *out);
+void profiles_csv(const profile_row *rows, size_t n, textbuf *out);
+
+/* The column list as a Markdown table (for README and `--help` pages). */
+void columns_markdown(const column *columns, size_t n, textbuf *out);
+
+#endif
