@@ -1,0 +1,22 @@
+/* Which sample a file belongs to when the sheet does not say. */
+#ifndef SWARD_APP_NAMES_H
+#define SWARD_APP_NAMES_H
+#include "base/status.h"
+
+/* What a name says; "" where it does not. Owned. */
+typedef struct { char *sample, *lot, *wafer, *position; } name_parts;
+
+/* The template's own fault: err ST_BAD_INPUT unknown field (with the nearest), no field at all, unclosed brace, two
+ * fields without text between them. Fields: lot wafer position sample n, each at most once; {} skips anything. */
+status pattern_check(const char *pattern, error *e);
+
+/* Template ("{lot}_W{wafer}_{position}_{n}", matched against the file's stem, or against the relative path without its extension
+ * when the template holds a '/'), else the sub-folder, else the stem without its trailing number and the
+ * separators before it. With a template the sample is {sample} when it has that field, else every matched field but n
+ * joined with '_' ; a name that does not match falls through to the other two rules.
+ *   in   pattern may be NULL; must have passed pattern_check
+ *   err  ST_NO_MEMORY */
+status name_sample(const char *relative, const char *pattern, name_parts *out, error *e);
+void name_parts_free(name_parts *p);
+
+#endif

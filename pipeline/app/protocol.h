@@ -1,0 +1,70 @@
+/* The protocol: how to measure, how to link, which optical stack, which targets. JSON, plus line comments that begin
+ * with two slashes. One table of keys in protocol_keys.c drives reading, checking, printing and explaining. */
+#ifndef SWARD_APP_PROTOCOL_H
+#define SWARD_APP_PROTOCOL_H
+#include <stddef.h>
+
+#include "base/status.h"
+#include "base/text.h"
+#include "judge/target.h"
+#include "link/surface.h"
+#include "metrics/measure.h"
+#include "optics/stack.h"
+
+typedef enum { SPACING_AUTOCORRELATION, SPACING_DENSITY } spacing_choice;
+
+typedef struct {
+    char *material;        /* a known name, a path that exists from here, or a number "2" or "2+0.1i"; owned */
+    double thickness_nm;
+} protocol_coating;
+
+typedef struct {
+    char *path;              /* the file it came from, "" for the built-in one */
+    char *name;              /* key "protocol"; "built-in" */
+    spacing_choice spacing;  /* which spacing is the sample's spacing_nm */
+    measure_options measure; /* measure.relief is the key "relief" */
+    double px_u_rel;         /* relative standard uncertainty of every pixel size; NAN: what the source of each says */
+    char *pattern;           /* sample name from file names, see names.h; NULL: none */
+    link_options link;
+    char *profile;           /* measured profile: CSV path, usable from here; NULL: none */
+    char *ambient;           /* "air", "laminate", or as a material */
+    double glass_mm, encapsulant_mm;
+    protocol_coating coatings[LIMIT_COATINGS]; /* outermost first */
+    size_t n_coatings;
+    char *substrate;
+    mixing mixing;
+    double angle_deg;
+    polarization polarization;
+    int hemispherical;
+    double band_lo_nm, band_hi_nm, step_nm;
+    target *targets;         /* [n_targets], in the order of the file; owned */
+    size_t n_targets;
+    char *history;           /* path, usable from here; NULL: OUT/history.sqlite */
+} protocol;                  /* {0} = empty; strings owned */
+
+/* The built-in protocol. err ST_NO_MEMORY */
+status protocol_defaults(protocol *out, error *e);
+
+/* Reads a protocol file; what it does not say is as in protocol_defaults.
+ *   out  untouched on failure; paths in it are joined to the file's folder
+ *   err  ST_BAD_INPUT with file and line: not JSON, unknown key (with the nearest known one), wrong type, out of range,
+ *        a target on no numeric column of samples.csv; ST_IO; ST_NO_MEMORY */
+status protocol_read(const char *path, protocol *out, error *e);
+
+/* The same from memory; `what` names the source in sentences, `folder` is what paths are relative to. */
+status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out, error *e);
+void protocol_free(protocol *p);
+
+/* Canonical text for fingerprints: same meaning, same text; numbers with 17 digits. The first holds everything that changes what
+ * is measured on one micrograph, the second everything except names and paths of files (see setup_text in materials.h for
+ * the contents behind material names). */
+void protocol_measuring_text(const protocol *p, textbuf *out);
+void protocol_full_text(const protocol *p, textbuf *out);
+
+/* The built-in protocol as JSON with a comment per key; protocol_parse reads it back to the same. */
+void protocol_print(textbuf *out);
+
+/* What a protocol means, in sentences, one per line. */
+void protocol_explain(const protocol *p, textbuf *out);
+
+#endif
