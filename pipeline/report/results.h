@@ -23,15 +23,31 @@ typedef struct {
     const double *reference_wavelength_nm, *polished_R, *coated_R; size_t n_reference; /* flat references; may be NULL */
     const char *const *overlay_paths; /* [n_images] relative to out_dir, or NULL */
     const char *history_note;     /* where the ledger is, one sentence */
+    const char *const *image_stems; /* [n_images] stem of features/<stem>.csv, profiles/<stem>.csv, NULL entries where
+                                       none was written; may be NULL: then the stems of overlay_paths */
 } results;
 
-/* images.csv samples.csv spectra.csv results.json datapackage.json into `out_dir` (exists), atomically. */
+/* images.csv, samples.csv, spectra.csv, results.json and datapackage.json, each written atomically, the package (which
+ * marks the folder as output) last.
+ *   in   out_dir exists; features/ and profiles/ of this run are already in it: the package lists what is there
+ *   err  ST_IO a file cannot be written; ST_NO_MEMORY */
 status results_write(const results *r, const char *out_dir, error *e);
 
-/* report.html, self-contained (styles, charts, overlays embedded as data URIs). */
+/* Bodies of the same outputs, for `measure --json` and for tests. results_json is a JSON object:
+ * {"manifest", "summary", "images", "samples", "spectra", "flags"}; image and sample rows are keyed as the CSV plus the
+ * members of image_json / sample_json; spectra are grouped per sample, angle and polarization. */
+void images_csv(const results *r, textbuf *out);
+void samples_csv(const results *r, textbuf *out);
+void spectra_csv(const results *r, textbuf *out);
+void results_json(const results *r, textbuf *out);
+
+/* report.html, self-contained: styles, charts and overlays (box-averaged to at most 640 px) are inside, nothing is
+ * fetched, nothing needs a script. An overlay that cannot be read leaves a sentence in its place.
+ *   in   out_dir exists and holds the overlays that overlay_paths names
+ *   err  ST_IO report.html cannot be written; ST_NO_MEMORY */
 status report_write(const results *r, const char *out_dir, error *e);
 
-/* features/<stem>.csv and profiles/<stem>.csv bodies. */
+/* features/<stem>.csv and profiles/<stem>.csv bodies. Failure is remembered in `out` (text_check). */
 void features_csv(const feature_row *rows, size_t n, textbuf *out);
 void profiles_csv(const profile_row *rows, size_t n, textbuf *out);
 
