@@ -20,17 +20,27 @@ typedef struct {
 } history_row;
 
 typedef struct {
-    history_row *rows; /* in order of etched_at, then sample, then run_at */
+    history_row *rows; /* in order of time etched, then sample, then run_at */
     size_t n;
     char **storage;    /* private */
     size_t n_storage;
 } history_list;
 
-/* Opens or creates. err ST_IO not a ledger of this program, not writable, locked for more than 30 s. */
+/* Opens or creates (read_only: never creates).
+ *   out  *h the caller's (history_close), NULL on failure
+ *   err  ST_IO no name, not a ledger of this program, a newer ledger, not writable, absent when read_only, locked for
+ *        more than 30 s; ST_NO_MEMORY */
 status history_open(const char *path, int read_only, history **h, error *e);
-/* Adds the rows in one transaction; a row whose (sample, fingerprint) is known is left alone. *added: how many came. */
+/* How long a locked file is waited for; 30 000 ms after history_open. */
+void history_set_wait(history *h, int wait_ms);
+/* Adds the rows in one transaction, all or none; a row whose (sample, fingerprint) is known is left alone.
+ *   out  *added how many came (0 on failure)
+ *   err  ST_IO read-only, locked, disk full, damaged; ST_NO_MEMORY */
 status history_add(history *h, const history_row *rows, size_t n, size_t *added, error *e);
-/* Rows since a time (ISO 8601, NULL all) and of a lot (NULL all). */
+/* Rows etched (where unknown: run) at or after a time (ISO 8601, UTC unless it says otherwise; NULL all) and of a lot
+ * (NULL all), in order of that time, then sample, then run_at.
+ *   out  the caller's (history_list_free), untouched on failure
+ *   err  ST_BAD_INPUT `since` is no date; ST_IO damaged, locked; ST_NO_MEMORY */
 status history_read(history *h, const char *since, const char *lot, history_list *out, error *e);
 void history_list_free(history_list *l);
 void history_close(history *h); /* NULL is fine */

@@ -1,0 +1,298 @@
+/* The ledger: one SQLite file, one row per sample and run.
+ *
+ * Safety: the classical rollback journal (a write-ahead log needs shared memory, which network drives do not give),
+ * one BEGIN IMMEDIATE per batch of rows, a busy timeout of 30 s, and UNIQUE(sample, fingerprint), so that several
+ * writers may add the same run at the same time and it is there once. application_id and user_version mark the file
+ * as ours; anything else is refused, never altered.
+ * Missing numbers are NULL in the file and NAN outside. Times are compared as points in time (SQLite julianday), so
+ * that time zones do not disturb the order; a row without etched_at stands at its run_at.
+ * What this file does not do: charts and capability, which read a history_list. */
+#include "judge/history.h"
+
+#include <math.h>
+#include <sqlite3.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "base/mem.h"
+#include "base/text.h"
+
+enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 1, WAIT_MS = 30000 };
+
+struct history {
+    sqlite3 *db;
+    char *path;
+};
+
+static const char schema[] =
+    "CREATE TABLE runs("
+    " id INTEGER PRIMARY KEY,"
+    " sample TEXT NOT NULL, lot TEXT NOT NULL, wafer TEXT NOT NULL, etched_at TEXT NOT NULL, run_at TEXT NOT NULL,"
+    " fingerprint TEXT NOT NULL, version TEXT NOT NULL, protocol TEXT NOT NULL,"
+    " spacing_nm REAL, spacing_nm_u REAL, density_per_um2 REAL, size_d50_nm REAL, weighted_reflectance REAL,"
+    " verdict TEXT NOT NULL, row_json TEXT NOT NULL,"
+    " UNIQUE(sample, fingerprint));"
+    "PRAGMA application_id = 1398231620;" /* LEDGER_ID */
+    "PRAGMA user_version = 1;";           /* LEDGER_VERSION */
+
+static const char insert_sql[] =
+    "INSERT INTO runs(sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, spacing_nm, spacing_nm_u,"
+    " density_per_um2, size_d50_nm, weighted_reflectance, verdict, row_json)"
+    " VALUES(?,?,?,?,?,?,?,?,?,?,?,?,?,?,?) ON CONFLICT(sample, fingerprint) DO NOTHING";
+
+#define WHEN "coalesce(julianday(nullif(etched_at, '')), julianday(run_at))"
+static const char select_sql[] =
+    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict, row_json,"
+    " spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance FROM runs"
+    " WHERE (?1 IS NULL OR " WHEN " >= julianday(?1)) AND (?2 IS NULL OR lot = ?2)"
+    " ORDER BY " WHEN ", sample, run_at, id";
+
+/* One sentence for whatever SQLite says. */
+static status say(history *h, const char *doing, error *e) {
+    int code = sqlite3_errcode(h->db) & 0xff;
+    switch (code) {
+    case SQLITE_BUSY:
+    case SQLITE_LOCKED:
+        return fail(e, ST_IO, "history %s: another program has kept it locked while we were %s; close that program "
+                              "or try again",
+                    h->path, doing);
+    case SQLITE_NOTADB:
+        return fail(e, ST_IO, "history %s: this file is not a ledger of this program; name another file", h->path);
+    case SQLITE_READONLY:
+    case SQLITE_PERM:
+    case SQLITE_CANTOPEN:
+        return fail(e, ST_IO, "history %s: cannot be written while %s; check that the folder exists and may be "
+                              "written to",
+                    h->path, doing);
+    case SQLITE_FULL:
+        return fail(e, ST_IO, "history %s: the disk is full; nothing of this run was added", h->path);
+    case SQLITE_CORRUPT:
+        return fail(e, ST_IO, "history %s: the file is damaged; restore it from a copy or name another file", h->path);
+    case SQLITE_NOMEM:
+        return NO_MEMORY(e, "the history");
+    default:
+        return fail(e, ST_IO, "history %s: failed while %s (%s)", h->path, doing, sqlite3_errmsg(h->db));
+    }
+}
+
+static status run_sql(history *h, const char *sql, const char *doing, error *e) {
+    return sqlite3_exec(h->db, sql, NULL, NULL, NULL) == SQLITE_OK ? ST_OK : say(h, doing, e);
+}
+
+static status read_number(history *h, const char *sql, int *out, error *e) {
+    sqlite3_stmt *st = NULL;
+    status s = ST_OK;
+    if (sqlite3_prepare_v2(h->db, sql, -1, &st, NULL) != SQLITE_OK || sqlite3_step(st) != SQLITE_ROW)
+        s = say(h, "opening it", e);
+    else *out = sqlite3_column_int(st, 0);
+    sqlite3_finalize(st);
+    return s;
+}
+
+typedef enum { LEDGER_OURS, LEDGER_EMPTY } ledger;
+
+/* Ours, or empty and free to become ours; everything else is refused. */
+static status identify(history *h, ledger *out, error *e) {
+    int id = 0, version = 0, tables = 0;
+    status st = read_number(h, "PRAGMA application_id", &id, e);
+    if (st == ST_OK) st = read_number(h, "PRAGMA user_version", &version, e);
+    if (st == ST_OK) st = read_number(h, "SELECT count(*) FROM sqlite_master", &tables, e);
+    if (st != ST_OK) return st;
+    *out = LEDGER_EMPTY;
+    if (id == 0 && version == 0 && tables == 0) return ST_OK;
+    if (id != LEDGER_ID)
+        return fail(e, ST_IO, "history %s: this is a database of another program, not a ledger; name another file",
+                    h->path);
+    if (version > LEDGER_VERSION)
+        return fail(e, ST_IO, "history %s: written by a newer version of this program (ledger version %d, this one "
+                              "knows %d); update the program",
+                    h->path, version, (int)LEDGER_VERSION);
+    *out = LEDGER_OURS;
+    return ST_OK;
+}
+
+/* Two programs may meet here: the second finds the ledger made when it gets the lock. */
+static status create(history *h, error *e) {
+    status st = run_sql(h, "BEGIN IMMEDIATE", "creating it", e);
+    if (st != ST_OK) return st;
+    ledger found = LEDGER_OURS;
+    st = identify(h, &found, e);
+    if (st == ST_OK && found == LEDGER_EMPTY) st = run_sql(h, schema, "creating it", e);
+    if (st == ST_OK) st = run_sql(h, "COMMIT", "creating it", e);
+    if (st != ST_OK) sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
+    return st;
+}
+
+status history_open(const char *path, int read_only, history **out, error *e) {
+    *out = NULL;
+    if (!path[0]) return fail(e, ST_IO, "history: no file name was given");
+    if (read_only && access(path, F_OK) != 0)
+        return fail(e, ST_IO, "history %s: there is no such file; a run with --history makes one", path);
+    textbuf name = { 0 };
+    if (path[0] != '/') text_add(&name, "./"); /* SQLite gives a meaning of its own to ":memory:" and "file:" */
+    text_add(&name, path);
+    status st = text_check(&name, "the history", e);
+    history *h = st == ST_OK ? mem_array(1, sizeof *h) : NULL;
+    if (h) h->path = mem_text(path);
+    if (st == ST_OK && (!h || !h->path)) st = NO_MEMORY(e, "the history");
+    if (st == ST_OK) {
+        int mode = read_only ? SQLITE_OPEN_READONLY : SQLITE_OPEN_READWRITE | SQLITE_OPEN_CREATE;
+        if (sqlite3_open_v2(name.s, &h->db, mode, NULL) != SQLITE_OK) st = say(h, "opening it", e);
+    }
+    if (st == ST_OK) {
+        sqlite3_busy_timeout(h->db, WAIT_MS);
+        ledger found = LEDGER_OURS;
+        st = identify(h, &found, e);
+        if (st == ST_OK && found == LEDGER_EMPTY)
+            st = read_only ? fail(e, ST_IO, "history %s: the file is empty, not a ledger", path) : create(h, e);
+    }
+    text_free(&name);
+    if (st != ST_OK) {
+        history_close(h);
+        h = NULL;
+    }
+    *out = h;
+    return st;
+}
+
+void history_set_wait(history *h, int wait_ms) { sqlite3_busy_timeout(h->db, wait_ms); }
+
+static int bind_text(sqlite3_stmt *s, int at, const char *text) {
+    return sqlite3_bind_text(s, at, text ? text : "", -1, SQLITE_STATIC);
+}
+static int bind_number(sqlite3_stmt *s, int at, double v) {
+    return isfinite(v) ? sqlite3_bind_double(s, at, v) : sqlite3_bind_null(s, at);
+}
+
+static int insert_row(sqlite3_stmt *s, const history_row *r) {
+    const char *const head[] = { r->sample, r->lot, r->wafer, r->etched_at, r->run_at, r->fingerprint, r->version,
+                                 r->protocol };
+    const double numbers[] = { r->spacing_nm, r->spacing_nm_u, r->density_per_um2, r->size_d50_nm,
+                               r->weighted_reflectance };
+    int at = 1, bad = 0;
+    for (size_t i = 0; i < sizeof head / sizeof head[0]; i++) bad |= bind_text(s, at++, head[i]);
+    for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) bad |= bind_number(s, at++, numbers[i]);
+    bad |= bind_text(s, at++, r->verdict);
+    bad |= bind_text(s, at, r->row_json);
+    if (bad) return 0;
+    int ok = sqlite3_step(s) == SQLITE_DONE;
+    return sqlite3_reset(s) == SQLITE_OK && ok;
+}
+
+status history_add(history *h, const history_row *rows, size_t n, size_t *added, error *e) {
+    static const char doing[] = "adding samples";
+    size_t count = 0;
+    *added = 0;
+    status st = run_sql(h, "BEGIN IMMEDIATE", doing, e);
+    if (st != ST_OK) return st;
+    sqlite3_stmt *s = NULL;
+    if (sqlite3_prepare_v2(h->db, insert_sql, -1, &s, NULL) != SQLITE_OK) st = say(h, doing, e);
+    for (size_t i = 0; i < n && st == ST_OK; i++) {
+        if (!insert_row(s, &rows[i])) st = say(h, doing, e);
+        else count += sqlite3_changes(h->db) > 0;
+    }
+    sqlite3_finalize(s);
+    if (st == ST_OK) st = run_sql(h, "COMMIT", doing, e);
+    if (st != ST_OK) {
+        sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
+        return st;
+    }
+    *added = count;
+    return ST_OK;
+}
+
+/* ---- reading ---- */
+
+enum { TEXTS = 10, NUMBERS = 5 };
+
+/* One block per row holds all its strings. */
+static status take_row(sqlite3_stmt *s, history_row *r, char **block, error *e) {
+    const char *text[TEXTS];
+    size_t length[TEXTS], total = 0;
+    for (int i = 0; i < TEXTS; i++) {
+        text[i] = (const char *)sqlite3_column_text(s, i);
+        length[i] = text[i] ? (size_t)sqlite3_column_bytes(s, i) : 0;
+        total += length[i] + 1;
+    }
+    *block = mem_array(total, 1);
+    if (!*block) return NO_MEMORY(e, "the history");
+    const char **const into[TEXTS] = { &r->sample,  &r->lot,      &r->wafer,   &r->etched_at, &r->run_at,
+                                       &r->fingerprint, &r->version, &r->protocol, &r->verdict, &r->row_json };
+    char *p = *block;
+    for (int i = 0; i < TEXTS; i++) {
+        if (length[i]) memcpy(p, text[i], length[i]);
+        *into[i] = p;
+        p += length[i] + 1;
+    }
+    double *const numbers[NUMBERS] = { &r->spacing_nm, &r->spacing_nm_u, &r->density_per_um2, &r->size_d50_nm,
+                                       &r->weighted_reflectance };
+    for (int i = 0; i < NUMBERS; i++)
+        *numbers[i] = sqlite3_column_type(s, TEXTS + i) == SQLITE_NULL ? (double)NAN
+                                                                       : sqlite3_column_double(s, TEXTS + i);
+    return ST_OK;
+}
+
+static status grow(history_list *l, size_t *room, error *e) {
+    if (l->n < *room) return ST_OK;
+    size_t more = *room ? *room * 2 : 64;
+    history_row *rows = mem_grow(l->rows, more, sizeof *rows);
+    if (rows) l->rows = rows;
+    char **storage = mem_grow(l->storage, more, sizeof *storage);
+    if (storage) l->storage = storage;
+    if (!rows || !storage) return NO_MEMORY(e, "the history");
+    *room = more;
+    return ST_OK;
+}
+
+/* A date or date with time that SQLite reads, not one of its own words such as "now". */
+static status check_time(history *h, const char *since, error *e) {
+    sqlite3_stmt *s = NULL;
+    int good = strlen(since) >= 10 && strspn(since, "0123456789") == 4 && since[4] == '-';
+    if (good && sqlite3_prepare_v2(h->db, "SELECT julianday(?1) IS NOT NULL", -1, &s, NULL) == SQLITE_OK)
+        good = bind_text(s, 1, since) == SQLITE_OK && sqlite3_step(s) == SQLITE_ROW && sqlite3_column_int(s, 0);
+    sqlite3_finalize(s);
+    return good ? ST_OK
+                : fail(e, ST_BAD_INPUT, "history since '%s': expected a date such as 2026-03-01 or a time such as "
+                                        "2026-03-01T08:00:00Z",
+                       since);
+}
+
+status history_read(history *h, const char *since, const char *lot, history_list *out, error *e) {
+    history_list l = { 0 };
+    size_t room = 0;
+    sqlite3_stmt *s = NULL;
+    status st = since ? check_time(h, since, e) : ST_OK;
+    if (st != ST_OK) return st;
+    if (sqlite3_prepare_v2(h->db, select_sql, -1, &s, NULL) != SQLITE_OK ||
+        (since && bind_text(s, 1, since) != SQLITE_OK) || (lot && bind_text(s, 2, lot) != SQLITE_OK))
+        st = say(h, "reading it", e);
+    int code = SQLITE_DONE;
+    while (st == ST_OK && (code = sqlite3_step(s)) == SQLITE_ROW) {
+        st = grow(&l, &room, e);
+        if (st == ST_OK) st = take_row(s, &l.rows[l.n], &l.storage[l.n_storage], e);
+        if (st == ST_OK) {
+            l.n++;
+            l.n_storage++;
+        }
+    }
+    if (st == ST_OK && code != SQLITE_DONE) st = say(h, "reading it", e);
+    sqlite3_finalize(s);
+    if (st != ST_OK) history_list_free(&l);
+    else *out = l;
+    return st;
+}
+
+void history_list_free(history_list *l) {
+    for (size_t i = 0; i < l->n_storage; i++) free(l->storage[i]);
+    free(l->storage);
+    free(l->rows);
+    *l = (history_list){ 0 };
+}
+
+void history_close(history *h) {
+    if (!h) return;
+    sqlite3_close(h->db);
+    free(h->path);
+    free(h);
+}

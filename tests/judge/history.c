@@ -1,0 +1,255 @@
+/* The ledger: idempotent, ordered, filtered, odd text, missing numbers, two writers at once, foreign files. */
+#include "judge/history.h"
+
+#include <sqlite3.h>
+#include <stdlib.h>
+#include <sys/stat.h>
+#include <sys/wait.h>
+#include <unistd.h>
+
+#include "base/mem.h"
+#include "base/quantity.h"
+#include "check.h"
+
+static char folder[300]; /* absolute, beside the test */
+
+static const char *in_folder(const char *name) {
+    static char path[400];
+    snprintf(path, sizeof path, "%s/%s", folder, name);
+    return path;
+}
+
+static history_row row(const char *sample, const char *etched_at, const char *fingerprint) {
+    return (history_row){ .sample = sample, .lot = "L1", .wafer = "", .etched_at = etched_at,
+                          .run_at = "2026-05-01T12:00:00Z", .fingerprint = fingerprint, .version = "0.1.0",
+                          .protocol = "line 3", .spacing_nm = 351.25, .spacing_nm_u = 8.125, .density_per_um2 = 9.4,
+                          .size_d50_nm = MISSING, .weighted_reflectance = 0.0183, .verdict = "conforms",
+                          .row_json = "{}" };
+}
+
+static void round_trip(void) {
+    error e = { 0 };
+    history *h = NULL;
+    CHECK(history_open(in_folder("a.sqlite"), 0, &h, &e) == ST_OK);
+    history_row rows[4] = { row("b", "2026-03-02T10:00:00Z", "f1"), row("a", "2026-03-02T10:00:00Z", "f1"),
+                            row("O'Brien \"x\"; DROP TABLE runs --", "2026-03-02T11:30:00+02:00", "f1"),
+                            row("\xce\xbc-probe \xe2\x88\x85", "", "f1") };
+    rows[1].lot = "L2";
+    rows[2].spacing_nm = (double)INFINITY; /* not a number of the ledger: missing */
+    rows[3].row_json = "{\"sample\":\"\xce\xbc\",\"note\":\"line\\nbreak\"}";
+    rows[3].wafer = NULL;
+    size_t added = 9;
+    CHECK(history_add(h, rows, 4, &added, &e) == ST_OK && added == 4);
+    CHECK(history_add(h, rows, 4, &added, &e) == ST_OK && added == 0); /* the same run again */
+    rows[0].fingerprint = "f2";
+    rows[0].run_at = "2026-05-02T12:00:00Z";
+    CHECK(history_add(h, rows, 4, &added, &e) == ST_OK && added == 1);
+    CHECK(history_add(h, NULL, 0, &added, &e) == ST_OK && added == 0);
+    history_close(h);
+
+    CHECK(history_open(in_folder("a.sqlite"), 1, &h, &e) == ST_OK);
+    history_list l = { 0 };
+    CHECK(history_read(h, NULL, NULL, &l, &e) == ST_OK && l.n == 5);
+    if (l.n == 5) {
+        CHECK(!strcmp(l.rows[0].sample, "O'Brien \"x\"; DROP TABLE runs --")); /* 09:30 UTC */
+        CHECK(isnan(l.rows[0].spacing_nm));
+        CHECK(!strcmp(l.rows[1].sample, "a") && !strcmp(l.rows[2].sample, "b") && !strcmp(l.rows[3].sample, "b"));
+        CHECK(!strcmp(l.rows[2].fingerprint, "f1") && !strcmp(l.rows[3].fingerprint, "f2"));
+        CHECK(!strcmp(l.rows[4].sample, "\xce\xbc-probe \xe2\x88\x85") && !strcmp(l.rows[4].wafer, ""));
+        CHECK(!strcmp(l.rows[4].row_json, "{\"sample\":\"\xce\xbc\",\"note\":\"line\\nbreak\"}"));
+        CHECK_NEAR(l.rows[1].spacing_nm, 351.25, 0.0);
+        CHECK_NEAR(l.rows[1].spacing_nm_u, 8.125, 0.0);
+        CHECK_NEAR(l.rows[1].weighted_reflectance, 0.0183, 0.0);
+        CHECK(isnan(l.rows[1].size_d50_nm) && !strcmp(l.rows[1].verdict, "conforms"));
+        CHECK(!strcmp(l.rows[1].version, "0.1.0") && !strcmp(l.rows[1].protocol, "line 3"));
+        CHECK(!strcmp(l.rows[1].etched_at, "2026-03-02T10:00:00Z") && !strcmp(l.rows[1].run_at, "2026-05-01T12:00:00Z"));
+    }
+    history_list_free(&l);
+    CHECK(history_read(h, NULL, "L2", &l, &e) == ST_OK && l.n == 1 && !strcmp(l.rows[0].sample, "a"));
+    history_list_free(&l);
+    CHECK(history_read(h, "2026-03-02T09:45:00Z", NULL, &l, &e) == ST_OK && l.n == 4);
+    history_list_free(&l);
+    CHECK(history_read(h, "2026-03-02", "L1", &l, &e) == ST_OK && l.n == 4);
+    history_list_free(&l);
+    CHECK(history_read(h, "2027-01-01", NULL, &l, &e) == ST_OK && l.n == 0);
+    history_list_free(&l);
+    history_list_free(&l); /* {0} is fine */
+    CHECK_FAILS(history_read(h, "yesterday", NULL, &l, &e), ST_BAD_INPUT, e, "expected a date");
+    CHECK_FAILS(history_read(h, "2026-13-45", NULL, &l, &e), ST_BAD_INPUT, e, "expected a date");
+    CHECK_FAILS(history_add(h, rows, 1, &added, &e), ST_IO, e, "may be written");
+    history_close(h);
+    history_close(NULL);
+}
+
+static void refuse(const char *name, const char *bytes, const char *words) {
+    error e = { 0 };
+    history *h = NULL;
+    FILE *f = fopen(in_folder(name), "wb");
+    if (f) {
+        fputs(bytes, f);
+        fclose(f);
+    }
+    CHECK(history_open(in_folder(name), 0, &h, &e) == ST_IO && strstr(e.text, words));
+    CHECK(h == NULL);
+    struct stat s;
+    CHECK(stat(in_folder(name), &s) == 0 && s.st_size == (off_t)strlen(bytes)); /* left alone */
+}
+
+static void foreign_sql(const char *name, const char *sql, const char *words) {
+    error e = { 0 };
+    history *h = NULL;
+    sqlite3 *db = NULL;
+    CHECK(sqlite3_open(in_folder(name), &db) == SQLITE_OK && sqlite3_exec(db, sql, NULL, NULL, NULL) == SQLITE_OK);
+    sqlite3_close(db);
+    CHECK(history_open(in_folder(name), 0, &h, &e) == ST_IO && strstr(e.text, words));
+}
+
+static void foreign(void) {
+    error e = { 0 };
+    history *h = NULL;
+    refuse("notes.txt", "spacing was about 350 nm on Tuesday, ask the night shift about the other wafer, said the note "
+                        "on the door of the lab", "not a ledger of this program");
+    foreign_sql("other.sqlite", "CREATE TABLE t(x)", "database of another program");
+    foreign_sql("app.sqlite", "PRAGMA application_id = 7; CREATE TABLE t(x)", "database of another program");
+    foreign_sql("newer.sqlite", "PRAGMA application_id = 1398231620; PRAGMA user_version = 99; CREATE TABLE t(x)",
+                "newer version");
+    CHECK_FAILS(history_open(in_folder("absent.sqlite"), 1, &h, &e), ST_IO, e, "no such file");
+    CHECK(access(in_folder("absent.sqlite"), F_OK) != 0); /* looking does not create */
+    CHECK_FAILS(history_open(in_folder("none/a.sqlite"), 0, &h, &e), ST_IO, e, "check that the folder exists");
+    CHECK_FAILS(history_open("", 0, &h, &e), ST_IO, e, "no file name");
+    CHECK_FAILS(history_open(folder, 0, &h, &e), ST_IO, e, "check that the folder exists"); /* a folder */
+    FILE *f = fopen(in_folder("empty.sqlite"), "wb");
+    if (f) fclose(f);
+    CHECK_FAILS(history_open(in_folder("empty.sqlite"), 1, &h, &e), ST_IO, e, "empty");
+    CHECK(history_open(in_folder("empty.sqlite"), 0, &h, &e) == ST_OK); /* an empty file may become a ledger */
+    history_close(h);
+}
+
+/* A name that SQLite would take for a database in memory is a file here. */
+static void odd_name(void) {
+    error e = { 0 };
+    history *h = NULL;
+    char home[400];
+    CHECK(getcwd(home, sizeof home) && chdir(folder) == 0);
+    CHECK(history_open(":memory:", 0, &h, &e) == ST_OK && access(in_folder(":memory:"), F_OK) == 0);
+    history_close(h);
+    CHECK(chdir(home) == 0);
+}
+
+static int write_many(const char *path, int who) {
+    error e = { 0 };
+    history *h = NULL;
+    size_t added = 0;
+    if (history_open(path, 0, &h, &e) != ST_OK) return 1;
+    for (int i = 0; i < 20; i++) {
+        char own[20], common[20];
+        snprintf(own, sizeof own, "own-%d-%d", who, i);
+        snprintf(common, sizeof common, "common-%d", i);
+        history_row rows[2] = { row(own, "2026-03-02", "f"), row(common, "2026-03-03", "f") };
+        if (history_add(h, rows, 2, &added, &e) != ST_OK) {
+            printf("writer %d: %s\n", who, e.text);
+            history_close(h);
+            return 1;
+        }
+    }
+    history_close(h);
+    return 0;
+}
+
+static void two_writers(void) {
+    char path[400];
+    snprintf(path, sizeof path, "%s", in_folder("shared.sqlite")); /* not there yet: both may create it */
+    fflush(stdout);
+    pid_t child[2];
+    for (int w = 0; w < 2; w++) {
+        child[w] = fork();
+        if (child[w] == 0) {
+            int bad = write_many(path, w);
+            fflush(stdout);
+            _exit(bad);
+        }
+    }
+    for (int w = 0; w < 2; w++) {
+        int how = -1;
+        CHECK(waitpid(child[w], &how, 0) == child[w] && WIFEXITED(how) && WEXITSTATUS(how) == 0);
+    }
+    error e = { 0 };
+    history *h = NULL;
+    history_list l = { 0 };
+    CHECK(history_open(path, 1, &h, &e) == ST_OK && history_read(h, NULL, NULL, &l, &e) == ST_OK);
+    CHECK(l.n == 60); /* 2 x 20 of their own, 20 in common */
+    history_list_free(&l);
+    history_close(h);
+}
+
+static void locked(void) {
+    error e = { 0 };
+    history *h = NULL;
+    size_t added = 0;
+    history_row r = row("late", "2026-03-09", "f");
+    sqlite3 *db = NULL;
+    CHECK(history_open(in_folder("a.sqlite"), 0, &h, &e) == ST_OK);
+    CHECK(sqlite3_open(in_folder("a.sqlite"), &db) == SQLITE_OK);
+    CHECK(sqlite3_exec(db, "BEGIN IMMEDIATE", NULL, NULL, NULL) == SQLITE_OK);
+    history_set_wait(h, 20);
+    CHECK_FAILS(history_add(h, &r, 1, &added, &e), ST_IO, e, "kept it locked");
+    sqlite3_close(db);
+    CHECK(history_add(h, &r, 1, &added, &e) == ST_OK && added == 1); /* nothing is stuck afterwards */
+    history_close(h);
+}
+
+/* Root may write anywhere, so the child becomes nobody first. */
+static void read_only_folder(void) {
+    char path[450], locked_up[400];
+    snprintf(locked_up, sizeof locked_up, "%s", in_folder("sealed"));
+    snprintf(path, sizeof path, "%s/h.sqlite", locked_up);
+    CHECK(mkdir(locked_up, 0700) == 0 && chmod(locked_up, 0555) == 0 && chmod(folder, 0755) == 0);
+    fflush(stdout);
+    pid_t child = fork();
+    if (child == 0) {
+        error e = { 0 };
+        history *h = NULL;
+        if (geteuid() == 0 && setuid(65534) != 0) _exit(3);
+        _exit(history_open(path, 0, &h, &e) == ST_IO && strstr(e.text, "may be written") ? 0 : 1);
+    }
+    int how = -1;
+    CHECK(waitpid(child, &how, 0) == child && WIFEXITED(how) && WEXITSTATUS(how) == 0);
+    chmod(locked_up, 0755);
+}
+
+static void no_memory(void) {
+    char path[400];
+    snprintf(path, sizeof path, "%s", in_folder("a.sqlite"));
+    for (size_t n = 1; n < 12; n++) {
+        error e = { 0 };
+        history *h = NULL;
+        history_list l = { 0 };
+        mem_fail_after(n);
+        status st = history_open(path, 1, &h, &e);
+        if (st == ST_OK) st = history_read(h, NULL, NULL, &l, &e);
+        mem_fail_after(0);
+        CHECK(st == ST_OK ? l.n == 6 : st == ST_NO_MEMORY && e.text[0] && l.n == 0);
+        history_list_free(&l);
+        history_close(h);
+    }
+}
+
+int main(void) {
+    char home[250];
+    if (!getcwd(home, sizeof home)) return 1;
+    snprintf(folder, sizeof folder, "%s/history-XXXXXX", home);
+    if (!mkdtemp(folder)) return 1;
+    round_trip();
+    foreign();
+    odd_name();
+    two_writers();
+    locked();
+    read_only_folder();
+    no_memory();
+    static const char *const made[] = { "a.sqlite", "notes.txt", "other.sqlite", "app.sqlite", "newer.sqlite",
+                                        "empty.sqlite", ":memory:", "shared.sqlite" };
+    for (size_t i = 0; i < sizeof made / sizeof made[0]; i++) unlink(in_folder(made[i]));
+    rmdir(in_folder("sealed"));
+    CHECK(rmdir(folder) == 0); /* no journal or other left-over */
+    return check_done();
+}
