@@ -38,6 +38,11 @@ status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, er
  *   err  ST_BAD_INPUT a bare name that fits two files (both named), two rows for one file (both lines); ST_NO_MEMORY */
 status sheet_match(sheet *s, const char *const *files, size_t n, textbuf *warnings, error *e);
 
+/* Two heights in one sample once every file has its sample.
+ *   in   samples[n] the sample of each file of the last sheet_match
+ *   err  ST_BAD_INPUT both lines and heights; ST_NO_MEMORY */
+status sheet_check_samples(const sheet *s, const char *const *samples, size_t n, error *e);
+
 /* The row of files[i] of the last sheet_match, or NULL. */
 const sheet_row *sheet_row_of(const sheet *s, size_t i);
 

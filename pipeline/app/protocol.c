@@ -1,0 +1,390 @@
+/* Reading and checking a protocol: JSON after line comments are blanked, then one walk over its keys against the
+ * table in protocol_keys.c. Every mistake is named with file, line, key, what was found and what was expected.
+ * Does not look into the files a protocol names; materials.c does. */
+#include "app/protocol.h"
+
+#include <cjson/cJSON.h>
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "app/names.h"
+#include "app/protocol_keys.h"
+#include "base/limits.h"
+#include "base/mem.h"
+#include "base/number.h"
+#include "io/file.h"
+#include "io/json.h"
+#include "report/rows.h"
+
+/* What every step of reading needs. */
+typedef struct {
+    const json *doc;
+    const char *what, *folder;
+    protocol *p;
+    error *e;
+} reader;
+
+status protocol_defaults(protocol *out, error *e) {
+    protocol p = { 0 };
+    p.path = mem_text("");
+    p.name = mem_text("built-in");
+    p.ambient = mem_text("air");
+    p.substrate = mem_text("silicon");
+    p.measure = measure_defaults();
+    p.px_u_rel = MISSING;
+    p.link = link_defaults();
+    p.link.exponent_u = 0.5; /* the shape of real features is not seen from above */
+    p.glass_mm = 3.2;
+    p.encapsulant_mm = 0.45;
+    p.mixing = MIX_BRUGGEMAN_2D;
+    p.polarization = POL_MEAN;
+    p.band_lo_nm = 300.0;
+    p.band_hi_nm = 1200.0;
+    p.step_nm = 1.0;
+    if (!p.path || !p.name || !p.ambient || !p.substrate) {
+        protocol_free(&p);
+        return NO_MEMORY(e, "the protocol");
+    }
+    *out = p;
+    return ST_OK;
+}
+
+static void targets_free(protocol *p) {
+    for (size_t i = 0; i < p->n_targets; i++) free(p->targets[i].quantity);
+    free(p->targets);
+    p->targets = NULL;
+    p->n_targets = 0;
+}
+
+void protocol_free(protocol *p) {
+    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->ambient, p->substrate, p->history };
+    for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
+    for (size_t i = 0; i < LIMIT_COATINGS; i++) free(p->coatings[i].material);
+    targets_free(p);
+    *p = (protocol){ 0 };
+}
+
+/* The sentence of every wrong value: where, what was found, what was expected. */
+static status wrong(const reader *r, size_t line, const char *where, const cJSON *found, const char *expected) {
+    char *text = cJSON_PrintUnformatted(found);
+    status st = fail(r->e, ST_BAD_INPUT, "%s line %zu, %s: found %.60s%s, expected %s", r->what, line, where,
+                     text ? text : "?", text && strlen(text) > 60 ? "..." : "", expected);
+    cJSON_free(text);
+    return st;
+}
+
+static status wrong_value(const reader *r, const cJSON *node, const protocol_key *k) {
+    char where[80];
+    textbuf expected = { 0 };
+    snprintf(where, sizeof where, "%s%s%s", k->group, k->group[0] ? "." : "", k->name);
+    key_expected(k, &expected);
+    status st = wrong(r, json_line(r->doc, node), where, node, expected.s ? expected.s : "something else");
+    text_free(&expected);
+    return st;
+}
+
+static status replace(const reader *r, char **slot, char *text) {
+    if (!text) return NO_MEMORY(r->e, "the protocol");
+    free(*slot);
+    *slot = text;
+    return ST_OK;
+}
+
+/* A material is a name, a path (joined to the folder), or a number, which becomes its text. NULL: neither. */
+static char *material_text(const reader *r, const cJSON *node) {
+    char number[NUMBER_TEXT];
+    if (cJSON_IsNumber(node)) return mem_text(number_text(node->valuedouble, 15, number));
+    return material_is_path(node->valuestring) ? path_join(r->folder, node->valuestring) : mem_text(node->valuestring);
+}
+
+static status read_text(const reader *r, const cJSON *node, const protocol_key *k) {
+    char **slot = (char **)(void *)((char *)r->p + k->offset);
+    int number = k->kind == KEY_MATERIAL && cJSON_IsNumber(node) && node->valuedouble > 0.0;
+    if (!number && (!cJSON_IsString(node) || !node->valuestring[0])) return wrong_value(r, node, k);
+    if (k->kind == KEY_MATERIAL) return replace(r, slot, material_text(r, node));
+    if (k->kind == KEY_PATH) return replace(r, slot, path_join(r->folder, node->valuestring));
+    return replace(r, slot, mem_text(node->valuestring));
+}
+
+static int in_range(const cJSON *node, const protocol_key *k) {
+    if (!cJSON_IsNumber(node)) return 0;
+    double v = node->valuedouble;
+    return isfinite(v) && (k->above_lo ? v > k->lo : v >= k->lo) && v <= k->hi;
+}
+
+static void put_number(const reader *r, const protocol_key *k, size_t i, double v) {
+    memcpy((char *)r->p + k->offset + i * sizeof v, &v, sizeof v);
+}
+
+static status read_band(const reader *r, const cJSON *node, const protocol_key *k) {
+    const cJSON *lo = cJSON_GetArrayItem(node, 0), *hi = cJSON_GetArrayItem(node, 1);
+    if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) != 2 || !in_range(lo, k) || !in_range(hi, k) ||
+        !(lo->valuedouble < hi->valuedouble))
+        return wrong_value(r, node, k);
+    put_number(r, k, 0, lo->valuedouble);
+    put_number(r, k, 1, hi->valuedouble);
+    return ST_OK;
+}
+
+static status read_index(const reader *r, const cJSON *node, const protocol_key *k) {
+    int v = -1;
+    if (k->kind == KEY_SWITCH && cJSON_IsBool(node)) v = cJSON_IsTrue(node) ? 1 : 0;
+    if (k->kind == KEY_WORD && cJSON_IsString(node))
+        for (int i = 0; k->word(i) && v < 0; i++)
+            if (strcmp(k->word(i), node->valuestring) == 0) v = i;
+    if (v < 0) return wrong_value(r, node, k);
+    memcpy((char *)r->p + k->offset, &v, sizeof v);
+    return ST_OK;
+}
+
+static status read_shape(const reader *r, const cJSON *node, const protocol_key *k) {
+    if (cJSON_IsString(node) && strcmp(node->valuestring, "cone") == 0) put_number(r, k, 0, 1.0);
+    else if (cJSON_IsString(node) && strcmp(node->valuestring, "paraboloid") == 0) put_number(r, k, 0, 2.0);
+    else if (in_range(node, k)) put_number(r, k, 0, node->valuedouble);
+    else return wrong_value(r, node, k);
+    return ST_OK;
+}
+
+/* The nearest word as a hint, "" when none is near. */
+static void hint(const char *word, const char *const *words, size_t n, char *out, size_t size) {
+    const char *near = json_nearest(word, words, n);
+    out[0] = '\0';
+    if (near) snprintf(out, size, "; did you mean '%s'?", near);
+}
+
+static status unknown(const reader *r, const cJSON *node, const char *where, const char *const *words, size_t n) {
+    char near[120];
+    hint(node->string, words, n, near, sizeof near);
+    return fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s%s", r->what, json_line(r->doc, node),
+                node->string, where[0] ? " in " : "", where, near);
+}
+
+static status read_coating(const reader *r, const cJSON *item, size_t line, protocol_coating *c) {
+    static const char *const words[] = { "material", "thickness_nm" };
+    const cJSON *name = NULL, *thickness = NULL, *child;
+    if (!cJSON_IsObject(item)) return wrong(r, line, "optics.coatings", item, "{ \"material\": ..., \"thickness_nm\": ... }");
+    cJSON_ArrayForEach(child, item) {
+        if (strcmp(child->string, words[0]) == 0) name = child;
+        else if (strcmp(child->string, words[1]) == 0) thickness = child;
+        else return unknown(r, child, "optics.coatings", words, 2);
+    }
+    if (!name || !thickness)
+        return wrong(r, line, "optics.coatings", item, "both \"material\" and \"thickness_nm\"");
+    if (!(cJSON_IsString(name) && name->valuestring[0]) &&
+        !(cJSON_IsNumber(name) && name->valuedouble > 0.0))
+        return wrong(r, json_line(r->doc, name), "optics.coatings.material", name,
+                     "a material name, a CSV path or a refractive index");
+    if (!cJSON_IsNumber(thickness) || !(thickness->valuedouble >= 0.0 && thickness->valuedouble <= 1e5))
+        return wrong(r, json_line(r->doc, thickness), "optics.coatings.thickness_nm", thickness,
+                     "a number from 0 to 100000 (nm)");
+    c->thickness_nm = thickness->valuedouble;
+    return replace(r, &c->material, material_text(r, name));
+}
+
+static status read_coatings(const reader *r, const cJSON *node, const protocol_key *k) {
+    const cJSON *item;
+    if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) > LIMIT_COATINGS) return wrong_value(r, node, k);
+    cJSON_ArrayForEach(item, node) {
+        status st = read_coating(r, item, json_line(r->doc, node), &r->p->coatings[r->p->n_coatings]);
+        if (st != ST_OK) return st;
+        r->p->n_coatings++;
+    }
+    return ST_OK;
+}
+
+/* A target stands on a measured figure of samples.csv; the hint names the nearest column. */
+static status target_column(const reader *r, const cJSON *node) {
+    const char **words = mem_array(n_sample_columns, sizeof *words);
+    size_t n = 0;
+    int known = 0;
+    if (!words) return NO_MEMORY(r->e, "the protocol");
+    for (size_t i = 0; i < n_sample_columns; i++) {
+        if (sample_columns[i].kind != COL_NUMBER) continue;
+        words[n++] = sample_columns[i].name;
+        if (strcmp(sample_columns[i].name, node->string) == 0) known = 1;
+    }
+    status st = ST_OK;
+    if (!known) {
+        char near[120];
+        hint(node->string, words, n, near, sizeof near);
+        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: targets: '%.60s' is no quantity of samples.csv%s%s", r->what,
+                  json_line(r->doc, node), node->string, near,
+                  near[0] ? "" : "; take one of its numeric columns, such as spacing_nm or weighted_reflectance");
+    }
+    free(words);
+    return st;
+}
+
+static status read_target_part(const reader *r, const cJSON *child, const char *where, target *t) {
+    static const char *const words[] = { "min", "max", "error" };
+    size_t line = json_line(r->doc, child);
+    if (strcmp(child->string, "min") == 0 || strcmp(child->string, "max") == 0) {
+        if (cJSON_IsNull(child)) return ST_OK;
+        if (!cJSON_IsNumber(child) || !isfinite(child->valuedouble))
+            return wrong(r, line, where, child, "a number as limit");
+        *(child->string[1] == 'i' ? &t->min : &t->max) = child->valuedouble;
+        return ST_OK;
+    }
+    if (strcmp(child->string, "error") != 0) return unknown(r, child, where, words, 3);
+    if (cJSON_IsString(child) && strcmp(child->valuestring, "repeat") == 0) t->error = ERROR_REPEAT;
+    else if (cJSON_IsString(child) && strcmp(child->valuestring, "full") == 0) t->error = ERROR_FULL;
+    else return wrong(r, line, where, child, "\"full\" or \"repeat\"");
+    return ST_OK;
+}
+
+static status read_target(const reader *r, const cJSON *node, target *t) {
+    const cJSON *child;
+    char where[120];
+    status st = target_column(r, node);
+    if (st != ST_OK) return st;
+    snprintf(where, sizeof where, "targets.%s", node->string);
+    if (!cJSON_IsObject(node)) return wrong(r, json_line(r->doc, node), where, node, "{ \"min\": ..., \"max\": ... }");
+    *t = (target){ .min = MISSING, .max = MISSING, .error = ERROR_FULL };
+    cJSON_ArrayForEach(child, node) {
+        st = read_target_part(r, child, where, t);
+        if (st != ST_OK) return st;
+    }
+    if (isnan(t->min) && isnan(t->max))
+        return wrong(r, json_line(r->doc, node), where, node, "\"min\", \"max\" or both");
+    if (t->min > t->max) return wrong(r, json_line(r->doc, node), where, node, "min below max");
+    t->quantity = mem_text(node->string);
+    return t->quantity ? ST_OK : NO_MEMORY(r->e, "the targets");
+}
+
+static status read_targets(const reader *r, const cJSON *node, const protocol_key *k) {
+    const cJSON *child;
+    if (!cJSON_IsObject(node)) return wrong_value(r, node, k);
+    targets_free(r->p);
+    r->p->targets = mem_array((size_t)cJSON_GetArraySize(node), sizeof *r->p->targets);
+    if (!r->p->targets) return NO_MEMORY(r->e, "the targets");
+    cJSON_ArrayForEach(child, node) {
+        status st = read_target(r, child, &r->p->targets[r->p->n_targets]);
+        if (st != ST_OK) return st;
+        r->p->n_targets++;
+    }
+    return ST_OK;
+}
+
+static status read_key(const reader *r, const cJSON *node, const protocol_key *k) {
+    if (cJSON_IsNull(node)) return ST_OK; /* the default */
+    switch (k->kind) {
+    case KEY_TEXT:
+    case KEY_PATH:
+    case KEY_MATERIAL: return read_text(r, node, k);
+    case KEY_NUMBER:
+        if (!in_range(node, k)) return wrong_value(r, node, k);
+        put_number(r, k, 0, node->valuedouble);
+        return ST_OK;
+    case KEY_SWITCH:
+    case KEY_WORD: return read_index(r, node, k);
+    case KEY_SHAPE: return read_shape(r, node, k);
+    case KEY_BAND: return read_band(r, node, k);
+    case KEY_COATINGS: return read_coatings(r, node, k);
+    case KEY_TARGETS: return read_targets(r, node, k);
+    }
+    return fail(r->e, ST_BUG, "a key of the protocol has no reader");
+}
+
+/* Unknown in this group: the nearest key of the group, else the group in which the key exists. */
+static status unknown_key(const reader *r, const cJSON *node, const char *group) {
+    const char **words = mem_array(n_protocol_keys + PROTOCOL_GROUPS, sizeof *words);
+    const protocol_key *elsewhere = NULL;
+    size_t n = 0;
+    if (!words) return NO_MEMORY(r->e, "the protocol");
+    for (size_t i = 0; i < n_protocol_keys; i++) {
+        if (strcmp(protocol_keys[i].group, group) == 0) words[n++] = protocol_keys[i].name;
+        else if (strcmp(protocol_keys[i].name, node->string) == 0) elsewhere = &protocol_keys[i];
+    }
+    for (size_t i = 0; i < PROTOCOL_GROUPS && !group[0]; i++) words[n++] = protocol_groups[i];
+    status st;
+    if (elsewhere && elsewhere->group[0])
+        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s; it belongs in \"%s\"", r->what,
+                  json_line(r->doc, node), node->string, group[0] ? " in " : "", group, elsewhere->group);
+    else if (elsewhere)
+        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s' in %s; it belongs to the top level", r->what,
+                  json_line(r->doc, node), node->string, group);
+    else st = unknown(r, node, group, words, n);
+    free(words);
+    return st;
+}
+
+static status read_group(const reader *r, const cJSON *object, const char *group) {
+    const cJSON *node;
+    cJSON_ArrayForEach(node, object) {
+        const protocol_key *k = protocol_key_find(group, node->string);
+        const char *inner = NULL;
+        for (size_t i = 0; i < PROTOCOL_GROUPS && !group[0]; i++)
+            if (strcmp(protocol_groups[i], node->string) == 0) inner = protocol_groups[i];
+        status st;
+        if (k) st = read_key(r, node, k);
+        else if (!inner) st = unknown_key(r, node, group);
+        else if (!cJSON_IsObject(node))
+            st = wrong(r, json_line(r->doc, node), inner, node, "an object in braces with keys of its own");
+        else st = read_group(r, node, inner);
+        if (st != ST_OK) return st;
+    }
+    return ST_OK;
+}
+
+/* What no single key can see. */
+static status check_whole(const reader *r) {
+    const protocol *p = r->p;
+    error inner = { ST_OK, "" };
+    if (p->pattern && pattern_check(p->pattern, &inner) != ST_OK)
+        return fail(r->e, inner.code, "%s: samples.pattern: %s", r->what, inner.text);
+    if (isfinite(p->link.height_nm_u) && !isfinite(p->link.height_nm))
+        return fail(r->e, ST_BAD_INPUT, "%s: link.height_nm_u stands without link.height_nm; add the height or take the "
+                    "uncertainty out", r->what);
+    if (isfinite(p->link.aspect_u) && !isfinite(p->link.aspect))
+        return fail(r->e, ST_BAD_INPUT, "%s: link.aspect_u stands without link.aspect; add the aspect ratio or take the "
+                    "uncertainty out", r->what);
+    return ST_OK;
+}
+
+/* Blanks line comments outside strings in place, so that lines keep their numbers. */
+static void blank_comments(char *s, size_t n) {
+    int in_string = 0;
+    for (size_t i = 0; i < n; i++) {
+        if (in_string && s[i] == '\\') i++;
+        else if (s[i] == '"') in_string = !in_string;
+        else if (!in_string && s[i] == '/' && i + 1 < n && s[i + 1] == '/')
+            while (i < n && s[i] != '\n') s[i++] = ' ';
+    }
+}
+
+status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out, error *e) {
+    protocol p = { 0 };
+    json doc = { 0 };
+    char *text = mem_text_n(bytes, n);
+    status st = text ? protocol_defaults(&p, e) : NO_MEMORY(e, "the protocol");
+    if (st != ST_OK) goto done;
+    blank_comments(text, n);
+    st = json_parse(text, n, what, &doc, e);
+    if (st != ST_OK) goto done;
+    reader r = { &doc, what, folder, &p, e };
+    st = read_group(&r, doc.root, "");
+    if (st == ST_OK) st = check_whole(&r);
+    if (st == ST_OK) st = replace(&r, &p.path, mem_text(what));
+    if (st != ST_OK) goto done;
+    *out = p;
+    p = (protocol){ 0 };
+done:
+    json_free(&doc);
+    protocol_free(&p);
+    free(text);
+    return st;
+}
+
+status protocol_read(const char *path, protocol *out, error *e) {
+    char *bytes = NULL;
+    size_t n = 0;
+    const char *slash = strrchr(path, '/');
+    char *folder = slash ? mem_text_n(path, slash == path ? 1 : (size_t)(slash - path)) : mem_text("");
+    status st = folder ? file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e) : NO_MEMORY(e, "the protocol");
+    if (st == ST_OK) st = protocol_parse(bytes, n, path, folder, out, e);
+    free(bytes);
+    free(folder);
+    return st;
+}

@@ -1,0 +1,168 @@
+/* Every key of a protocol in one table: where it goes, unit, range, meaning. Reading, checking, printing, explaining
+ * and fingerprints walk this table, so a new key is one line here and one member in protocol.h. Defaults are not
+ * repeated: they are what protocol_defaults() holds. */
+#include "app/protocol_keys.h"
+
+#include <math.h>
+#include <string.h>
+
+/* The words of an index, NULL behind the last. */
+static const char *pick(const char *const *words, int n, int i) { return i >= 0 && i < n ? words[i] : NULL; }
+
+static const char *relief_word(int i) {
+    static const char *const words[] = { "auto", "hillock", "pore" };
+    return pick(words, 3, i);
+}
+static const char *spacing_word(int i) {
+    static const char *const words[] = { "autocorrelation", "density" };
+    return pick(words, 2, i);
+}
+static const char *level_word(int i) {
+    static const char *const words[] = { "floor", "tips" };
+    return pick(words, 2, i);
+}
+static const char *mixing_word(int i) { return i >= 0 && i < MIXINGS ? mixing_name((mixing)i) : NULL; }
+static const char *polarization_word(int i) {
+    return i >= POL_MEAN && i <= POL_P ? polarization_name((polarization)i) : NULL;
+}
+
+/* Enums and switches are read and written as int. */
+_Static_assert(sizeof(relief) == sizeof(int) && sizeof(spacing_choice) == sizeof(int) &&
+                   sizeof(mixing) == sizeof(int) && sizeof(polarization) == sizeof(int),
+               "enum members must have the size of int");
+
+#define AT(member) offsetof(protocol, member)
+#define OPEN HUGE_VAL
+#define TEXT(group, key, member, help) { group, key, KEY_TEXT, AT(member), "", 0, 0, 0, NULL, 0, help }
+#define PATH(group, key, member, help) { group, key, KEY_PATH, AT(member), "", 0, 0, 0, NULL, 0, help }
+#define MATERIAL(group, key, member, help) { group, key, KEY_MATERIAL, AT(member), "", 0, 0, 0, NULL, 0, help }
+#define WORD(group, key, member, word, m, help) { group, key, KEY_WORD, AT(member), "", 0, 0, 0, word, m, help }
+#define SWITCH(group, key, member, help) { group, key, KEY_SWITCH, AT(member), "", 0, 1, 0, NULL, 0, help }
+/* number from lo to hi; number above lo; limit of fitness */
+#define NUMBER(group, key, member, unit, lo, hi, help) \
+    { group, key, KEY_NUMBER, AT(member), unit, lo, hi, 0, NULL, 0, help }
+#define ABOVE(group, key, member, unit, lo, hi, help) \
+    { group, key, KEY_NUMBER, AT(member), unit, lo, hi, 1, NULL, 0, help }
+#define LIMIT(key, lo, hi, help) { "fitness", #key, KEY_NUMBER, AT(measure.key), "", lo, hi, 0, NULL, 1, help }
+
+/* clang-format off */
+const protocol_key protocol_keys[] = {
+    TEXT("", "protocol", name, "name of this protocol; it stands in results, report and history"),
+    WORD("", "relief", measure.relief, relief_word, 1, "what a feature is: a bright hillock, a dark pore, or auto: found in each picture"),
+    WORD("", "spacing", spacing, spacing_word, 0, "which spacing is the sample's spacing_nm: first ring of the autocorrelation, or hexagonal spacing of the density"),
+    { "", "px_u_rel", KEY_NUMBER, AT(px_u_rel), "", 0.0, 0.5, 0, NULL, 1, "relative standard uncertainty of every pixel size; null: what its source says, else 0.01" },
+    PATH("", "history", history, "ledger of all samples, relative to this file; null: history.sqlite in the output folder"),
+    { "", "targets", KEY_TARGETS, AT(targets), "", 0, 0, 0, NULL, 0, "a quantity of samples.csv with min, max or both, and \"error\": \"repeat\" when only what varies from run to run counts" },
+
+    TEXT("samples", "pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{n}; null: sub-folder, else name without its number"),
+
+    LIMIT(min_px_per_spacing, 2, OPEN, "pixels per spacing below which a micrograph is excluded"),
+    LIMIT(warn_px_per_spacing, 2, OPEN, "the same, flagged only"),
+    LIMIT(min_features, 1, OPEN, "features in the field below which a micrograph is excluded"),
+    LIMIT(warn_features, 1, OPEN, "the same, flagged only"),
+    LIMIT(max_blur, 0, OPEN, "blur (sd) in spacings above which a micrograph is excluded"),
+    LIMIT(warn_blur, 0, OPEN, "the same, flagged only"),
+    LIMIT(max_clipped, 0, 1, "share of pixels at the darkest or brightest level above which a micrograph is excluded"),
+    LIMIT(warn_clipped, 0, 1, "the same, flagged only"),
+    LIMIT(max_noise, 0, OPEN, "noise (sd) against the texture's contrast (sd) above which a micrograph is excluded"),
+    LIMIT(warn_noise, 0, OPEN, "the same, flagged only"),
+    LIMIT(max_streaks, 0, OPEN, "variance of charging streaks against the texture's above which a micrograph is excluded"),
+    LIMIT(warn_streaks, 0, OPEN, "the same, flagged only"),
+    LIMIT(max_stretch, 1, OPEN, "longer over shorter spacing (tilted view, drift) above which a micrograph is excluded"),
+    LIMIT(warn_stretch, 1, OPEN, "the same, flagged only"),
+    LIMIT(bright_level, 0, 1, "grey level above which the field counts for bright_share, from the 1 % to the 99 % quantile"),
+    LIMIT(min_ring_z, 0, OPEN, "how many standard deviations the first ring must stand out to be a spacing"),
+
+    ABOVE("link", "height_nm", link.height_nm, "nm", 0, 1e5, "feature height where the sheet has none; a result then calls it assumed"),
+    NUMBER("link", "height_nm_u", link.height_nm_u, "nm", 0, 1e5, "its standard uncertainty"),
+    ABOVE("link", "aspect", link.aspect, "", 0, 100, "height / spacing where no height is given; null: 1.0 +- 0.3, assumed"),
+    NUMBER("link", "aspect_u", link.aspect_u, "", 0, 100, "its standard uncertainty"),
+    { "link", "shape", KEY_SHAPE, AT(link.exponent), "", 0.05, 20, 0, NULL, 0, "feature shape: cone, paraboloid, or the exponent q of (1 - z/h)^(2/q)" },
+    NUMBER("link", "exponent_u", link.exponent_u, "", 0, 10, "standard uncertainty of that exponent; 0: the shape is known"),
+    NUMBER("link", "height_spread", link.height_spread, "", 0, 1, "relative standard deviation of the heights of one sample"),
+    NUMBER("link", "height_by_size", link.height_by_size, "", -5, 5, "power g by which heights follow cell diameters: h (d / d_mean)^g"),
+    WORD("link", "level", link.level_at_tips, level_word, 0, "where features of unequal height are level: at the floor or at the tips"),
+    NUMBER("link", "coverage", link.coverage, "", 0, 1, "solid share at the floor; below 1 there is flat ground between features"),
+    PATH("link", "profile", profile, "measured profile instead of height and shape: CSV with depth_nm and solid_fraction, relative to this file"),
+
+    MATERIAL("optics", "ambient", ambient, "above the texture: air, laminate (air, glass, encapsulant), a material or an index"),
+    ABOVE("optics", "glass_mm", glass_mm, "mm", 0, 100, "glass of the laminate"),
+    ABOVE("optics", "encapsulant_mm", encapsulant_mm, "mm", 0, 100, "encapsulant of the laminate"),
+    { "optics", "coatings", KEY_COATINGS, AT(coatings), "", 0, 0, 0, NULL, 0, "conformal coatings, outermost first: { \"material\": \"alumina\", \"thickness_nm\": 10 }" },
+    MATERIAL("optics", "substrate", substrate, "what the features are made of: a material, a CSV (wavelength_nm, n, k), or an index"),
+    WORD("optics", "mixing", mixing, mixing_word, 0, "mixing rule of solid and ambient within one slab"),
+    NUMBER("optics", "angle_deg", angle_deg, "deg", 0, 89, "angle of incidence in air"),
+    WORD("optics", "polarization", polarization, polarization_word, 0, "mean is unpolarised light"),
+    SWITCH("optics", "hemispherical", hemispherical, "true: diffuse light from the whole half space; the angle is then unused"),
+    { "optics", "band_nm", KEY_BAND, AT(band_lo_nm), "nm", 100, 20000, 0, NULL, 0, "wavelengths over which reflectance is weighted" },
+    NUMBER("optics", "step_nm", step_nm, "nm", 0.1, 50, "grid of the spectrum"),
+};
+/* clang-format on */
+const size_t n_protocol_keys = sizeof protocol_keys / sizeof protocol_keys[0];
+
+const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "fitness", "link", "optics" };
+const char *const protocol_group_help[PROTOCOL_GROUPS] = {
+    "which sample a file belongs to",
+    "can a micrograph carry the numbers?",
+    "from the top view to the surface that optics needs",
+    "what the light meets",
+};
+
+const protocol_key *protocol_key_find(const char *group, const char *name) {
+    for (size_t i = 0; i < n_protocol_keys; i++) {
+        const protocol_key *k = &protocol_keys[i];
+        if (strcmp(k->group, group) == 0 && strcmp(k->name, name) == 0) return k;
+    }
+    return NULL;
+}
+
+double key_number(const protocol *p, const protocol_key *k) {
+    double v;
+    memcpy(&v, (const char *)p + k->offset, sizeof v);
+    return v;
+}
+
+int key_index(const protocol *p, const protocol_key *k) {
+    int v;
+    memcpy(&v, (const char *)p + k->offset, sizeof v);
+    return v;
+}
+
+const char *key_text(const protocol *p, const protocol_key *k) {
+    const char *v;
+    memcpy(&v, (const char *)p + k->offset, sizeof v);
+    return v;
+}
+
+static void number_expected(const protocol_key *k, const char *noun, textbuf *out) {
+    if (k->above_lo && isfinite(k->hi)) text_addf(out, "%s above %g and at most %g", noun, k->lo, k->hi);
+    else if (k->above_lo) text_addf(out, "%s above %g", noun, k->lo);
+    else if (isfinite(k->hi)) text_addf(out, "%s from %g to %g", noun, k->lo, k->hi);
+    else text_addf(out, "%s of at least %g", noun, k->lo);
+    if (k->unit[0]) text_addf(out, " (%s)", k->unit);
+}
+
+void key_expected(const protocol_key *k, textbuf *out) {
+    switch (k->kind) {
+    case KEY_TEXT: text_add(out, "a text in quotes"); break;
+    case KEY_PATH: text_add(out, "a path in quotes"); break;
+    case KEY_MATERIAL: text_add(out, "a material name, a CSV path or a refractive index"); break;
+    case KEY_NUMBER: number_expected(k, "a number", out); break;
+    case KEY_SWITCH: text_add(out, "true or false"); break;
+    case KEY_WORD:
+        text_add(out, "one of");
+        for (int i = 0; k->word(i); i++) text_addf(out, "%s \"%s\"", i ? "," : "", k->word(i));
+        break;
+    case KEY_SHAPE: number_expected(k, "\"cone\", \"paraboloid\" or a number", out); break;
+    case KEY_BAND: number_expected(k, "[low, high], low below high, each", out); break;
+    case KEY_COATINGS:
+        text_addf(out, "a list of at most %d { \"material\": ..., \"thickness_nm\": ... }", LIMIT_COATINGS);
+        break;
+    case KEY_TARGETS: text_add(out, "an object of { \"min\": ..., \"max\": ... } by quantity"); break;
+    }
+}
+
+int material_is_path(const char *name) {
+    size_t n = strlen(name);
+    return strchr(name, '/') != NULL || (n > 4 && strcmp(name + n - 4, ".csv") == 0);
+}
