@@ -1,3 +1,4 @@
+/* Names of the choices in a stack, and what frees a profile. */
 #include "optics/stack.h"
 
 #include <stdlib.h>

@@ -1,0 +1,246 @@
+/* Mixing rules for the permittivity.
+ *   Bruggeman (1935) Ann. Phys. 416, 636, in 2 and 3 dimensions: all phases alike. Two phases: a quadratic; with
+ *     g = sqrt(e1) sqrt(e2) and x = e/g its roots multiply to -1 (2-D) or -1/2 (3-D), so exactly one has Re x > 0,
+ *     the physical one, also without absorption. More phases: Newton, the root inside the cone of the phases.
+ *   Maxwell Garnett (1904) Phil. Trans. A 203, 385: inclusions in a host (the solid in the ambient, or for pores
+ *     everything else in the solid).
+ *   Looyenga (1965) Physica 31, 401: mean of the cube roots. Volume: plain mean (upper Wiener bound).
+ * Columns along the normal are mixed by a two-dimensional rule in the plane and by the plain mean along the axis,
+ * which is exact there. No size effects: features are taken as small against the wavelength. */
+#include "optics/mixing.h"
+
+#include <assert.h>
+
+#include "base/quantity.h"
+
+int mixing_uniaxial(mixing rule) { return rule == MIX_BRUGGEMAN_2D || rule == MIX_MAXWELL_GARNETT_2D; }
+
+static int mixing_dimensions(mixing rule) {
+    return rule == MIX_BRUGGEMAN_2D || rule == MIX_MAXWELL_GARNETT_2D ? 2 : 3;
+}
+
+static double complex cube_root(double complex z) {
+    return complex_of(cbrt(cabs(z)), 0.0) * cexp(complex_of(0.0, carg(z) / 3.0));
+}
+
+/* Two phases: the wavelength-dependent numbers of each formula. */
+static void prepare_pair(mixer *m, size_t i) {
+    double complex air = lane_get(&m->eps[0], i), solid = lane_get(&m->eps[1], i);
+    double complex root_air = csqrt(air), root_solid = csqrt(solid);
+    double complex host = m->pores ? solid : air, inside = m->pores ? air : solid;
+    switch (m->rule) {
+    case MIX_BRUGGEMAN_2D: /* x = beta + sqrt(beta^2 + 1), beta = (2 f - 1) c */
+        lane_set(&m->a, i, root_air * root_solid);
+        lane_set(&m->c, i, 0.5 * (root_solid / root_air - root_air / root_solid));
+        break;
+    case MIX_BRUGGEMAN_3D: /* x = (h + sqrt(h^2 + 8))/4, h = (3 f - 1) b + (2 - 3 f) c */
+        lane_set(&m->a, i, root_air * root_solid);
+        lane_set(&m->b, i, root_solid / root_air);
+        lane_set(&m->c, i, root_air / root_solid);
+        break;
+    case MIX_MAXWELL_GARNETT_2D:
+    case MIX_MAXWELL_GARNETT_3D: /* e = a (c + (d - 1) f b)/(c - f b) */
+        lane_set(&m->a, i, host);
+        lane_set(&m->b, i, inside - host);
+        lane_set(&m->c, i, inside + (mixing_dimensions(m->rule) - 1) * host);
+        break;
+    case MIX_LOOYENGA:
+        lane_set(&m->a, i, cube_root(air));
+        lane_set(&m->b, i, cube_root(solid));
+        break;
+    case MIX_VOLUME: break;
+    }
+}
+
+void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n) {
+    assert(phases >= 2 && phases <= MIX_PHASES && n <= LANES);
+    m->rule = rule;
+    m->pores = pores;
+    m->phases = phases;
+    m->n = n;
+    for (size_t i = 0; i < n; i++) {
+        prepare_pair(m, i);
+        for (size_t p = 0; p < phases && phases > 2; p++) {
+            double complex e = lane_get(&m->eps[p], i);
+            m->root[p][i] = rule == MIX_LOOYENGA ? cube_root(e) : clog(e);
+        }
+    }
+}
+
+/* Square root with Re >= 0; plain selects, so that a loop of it is vectorised. */
+static inline void root_of(double zr, double zi, double *sr, double *si) {
+    double size = sqrt(zr * zr + zi * zi);
+    double big = sqrt(0.5 * (size + fabs(zr)));
+    double small = 0.5 * fabs(zi) / (big + 1e-300); /* z = 0 gives 0, not 0/0 */
+    double re = zr >= 0.0 ? big : small, im = zr >= 0.0 ? small : big;
+    *sr = re;
+    *si = copysign(im, zi);
+}
+
+/* x = beta + root for Re beta >= 0, else 1/(root - beta): the same number without cancellation (the product of
+ * (root + beta) and (root - beta) is `product`). `inverse` is one choice for all lanes: for a solid denser than the
+ * ambient the sign of Re beta is that of the share. */
+static inline void stable_sum(double br, double bi, double sr, double si, double product, int inverse, double *xr,
+                              double *xi) {
+    double yr = sr - br, yi = si - bi;
+    double q = product / (yr * yr + yi * yi);
+    *xr = inverse ? yr * q : br + sr;
+    *xi = inverse ? -yi * q : bi + si;
+}
+
+HOT static void pair_bruggeman_2d(const mixer *m, double f, lanes *out) {
+    const double t = 2.0 * f - 1.0;
+    const int inverse = t < 0.0;
+    for (size_t i = 0; i < m->n; i++) {
+        double br = t * m->c.re[i], bi = t * m->c.im[i], sr, si, xr, xi;
+        root_of(br * br - bi * bi + 1.0, 2.0 * br * bi, &sr, &si);
+        stable_sum(br, bi, sr, si, 1.0, inverse, &xr, &xi);
+        out->re[i] = m->a.re[i] * xr - m->a.im[i] * xi;
+        out->im[i] = m->a.re[i] * xi + m->a.im[i] * xr;
+    }
+}
+
+HOT static void pair_bruggeman_3d(const mixer *m, double f, lanes *out) {
+    const double t = 3.0 * f - 1.0, u = 2.0 - 3.0 * f;
+    const int inverse = t < 0.0;
+    for (size_t i = 0; i < m->n; i++) {
+        double hr = t * m->b.re[i] + u * m->c.re[i], hi = t * m->b.im[i] + u * m->c.im[i], sr, si, xr, xi;
+        root_of(hr * hr - hi * hi + 8.0, 2.0 * hr * hi, &sr, &si);
+        stable_sum(hr, hi, sr, si, 8.0, inverse, &xr, &xi);
+        out->re[i] = 0.25 * (m->a.re[i] * xr - m->a.im[i] * xi);
+        out->im[i] = 0.25 * (m->a.re[i] * xi + m->a.im[i] * xr);
+    }
+}
+
+HOT static void pair_maxwell_garnett(const mixer *m, double f, double more, lanes *out) {
+    for (size_t i = 0; i < m->n; i++) {
+        double nr = m->c.re[i] + more * f * m->b.re[i], ni = m->c.im[i] + more * f * m->b.im[i];
+        double dr = m->c.re[i] - f * m->b.re[i], di = m->c.im[i] - f * m->b.im[i];
+        double q = 1.0 / (dr * dr + di * di);
+        double xr = (nr * dr + ni * di) * q, xi = (ni * dr - nr * di) * q;
+        out->re[i] = m->a.re[i] * xr - m->a.im[i] * xi;
+        out->im[i] = m->a.re[i] * xi + m->a.im[i] * xr;
+    }
+}
+
+HOT static void pair_looyenga(const mixer *m, double f, lanes *out) {
+    for (size_t i = 0; i < m->n; i++) {
+        double cr = (1.0 - f) * m->a.re[i] + f * m->b.re[i], ci = (1.0 - f) * m->a.im[i] + f * m->b.im[i];
+        double qr = cr * cr - ci * ci, qi = 2.0 * cr * ci;
+        out->re[i] = qr * cr - qi * ci;
+        out->im[i] = qr * ci + qi * cr;
+    }
+}
+
+HOT static void plain_mean(const mixer *m, double ambient, const double *share, lanes *out) {
+    for (size_t i = 0; i < m->n; i++) {
+        out->re[i] = ambient * m->eps[0].re[i];
+        out->im[i] = ambient * m->eps[0].im[i];
+    }
+    for (size_t p = 1; p < m->phases; p++)
+        for (size_t i = 0; i < m->n; i++) {
+            out->re[i] += share[p - 1] * m->eps[p].re[i];
+            out->im[i] += share[p - 1] * m->eps[p].im[i];
+        }
+}
+
+double complex mixing_bruggeman_residual(const double complex *eps, const double *f, size_t phases, int dimensions,
+                                         double complex e) {
+    double complex sum = 0.0;
+    for (size_t p = 0; p < phases; p++) sum += f[p] * ((eps[p] - e) / (eps[p] + (dimensions - 1) * e));
+    return sum;
+}
+
+static double complex bruggeman_newton(const double complex *eps, const double *f, size_t phases, int dimensions,
+                                       double complex e) {
+    for (int turn = 0; turn < 40; turn++) {
+        double complex sum = 0.0, slope = 0.0;
+        for (size_t p = 0; p < phases; p++) {
+            double complex den = 1.0 / (eps[p] + (dimensions - 1) * e);
+            sum += f[p] * ((eps[p] - e) * den);
+            slope -= f[p] * (dimensions * eps[p] * den * den);
+        }
+        double complex next = e - sum / slope;
+        double moved = cabs(next - e);
+        e = next;
+        if (moved <= 4e-16 * cabs(e)) break;
+    }
+    return e;
+}
+
+/* The physical root lies in the cone that the phases span (its argument between theirs) and is the only one there;
+ * the margin covers rounding alone. */
+static int in_cone(const double complex *eps, const double *f, size_t phases, double complex e) {
+    double lo = PI, hi = -PI, margin = 1e-9;
+    for (size_t p = 0; p < phases; p++)
+        if (f[p] > 0.0) {
+            double angle = carg(eps[p]);
+            lo = fmin(lo, angle);
+            hi = fmax(hi, angle);
+        }
+    double angle = carg(e);
+    return angle >= lo - margin && angle <= hi + margin;
+}
+
+static double complex bruggeman_many(const double complex *eps, const double *f, size_t phases, int dimensions,
+                                     double complex start) {
+    double complex e = bruggeman_newton(eps, f, phases, dimensions, start);
+    if (in_cone(eps, f, phases, e) && cabs(mixing_bruggeman_residual(eps, f, phases, dimensions, e)) < 1e-12) return e;
+    /* Newton went astray: walk there from the pure ambient, along which the physical root moves continuously. */
+    e = eps[0];
+    for (int step = 1; step <= 256; step++) {
+        double g[MIX_PHASES], part = (double)step / 256.0;
+        for (size_t p = 0; p < phases; p++) g[p] = part * f[p] + (p ? 0.0 : 1.0 - part);
+        e = bruggeman_newton(eps, g, phases, dimensions, e);
+    }
+    return e;
+}
+
+static double complex maxwell_garnett_many(const mixer *m, size_t i, const double *f, int dimensions) {
+    size_t host = m->pores ? 1 : 0;
+    double complex eh = lane_get(&m->eps[host], i), sum = 0.0;
+    for (size_t p = 0; p < m->phases; p++) {
+        double complex e = lane_get(&m->eps[p], i);
+        if (p != host) sum += f[p] * ((e - eh) / (e + (dimensions - 1) * eh));
+    }
+    return eh * (1.0 + (dimensions - 1) * sum) / (1.0 - sum);
+}
+
+static double complex looyenga_many(const mixer *m, size_t i, const double *f) {
+    double complex c = 0.0;
+    for (size_t p = 0; p < m->phases; p++) c += f[p] * m->root[p][i];
+    return c * c * c;
+}
+
+static double complex mix_many(const mixer *m, size_t i, const double *f) {
+    double complex eps[MIX_PHASES], start = 0.0;
+    int dimensions = mixing_dimensions(m->rule);
+    if (m->rule == MIX_LOOYENGA) return looyenga_many(m, i, f);
+    if (m->rule == MIX_MAXWELL_GARNETT_2D || m->rule == MIX_MAXWELL_GARNETT_3D)
+        return maxwell_garnett_many(m, i, f, dimensions);
+    for (size_t p = 0; p < m->phases; p++) {
+        eps[p] = lane_get(&m->eps[p], i);
+        start += f[p] * m->root[p][i]; /* the geometric mean lies in the cone */
+    }
+    return bruggeman_many(eps, f, m->phases, dimensions, cexp(start));
+}
+
+void mixing_at(const mixer *m, const double *share, lanes *in_plane, lanes *axis) {
+    double f[MIX_PHASES], covered = 0.0;
+    size_t present = 0;
+    for (size_t p = 1; p < m->phases; p++) {
+        f[p] = share[p - 1];
+        covered += share[p - 1];
+        if (p > 1 && f[p] > 0.0) present++;
+    }
+    f[0] = fmax(0.0, 1.0 - covered);
+    if (m->rule == MIX_VOLUME) plain_mean(m, f[0], share, in_plane);
+    else if (present)
+        for (size_t i = 0; i < m->n; i++) lane_set(in_plane, i, mix_many(m, i, f));
+    else if (m->rule == MIX_BRUGGEMAN_2D) pair_bruggeman_2d(m, share[0], in_plane);
+    else if (m->rule == MIX_BRUGGEMAN_3D) pair_bruggeman_3d(m, share[0], in_plane);
+    else if (m->rule == MIX_LOOYENGA) pair_looyenga(m, share[0], in_plane);
+    else pair_maxwell_garnett(m, m->pores ? f[0] : share[0], mixing_dimensions(m->rule) - 1, in_plane);
+    if (mixing_uniaxial(m->rule)) plain_mean(m, f[0], share, axis);
+    else *axis = *in_plane;
+}
