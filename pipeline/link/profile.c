@@ -1,0 +1,183 @@
+/* From features to shares of solid and coatings against depth: f(z) = F sum A_i s(z/h_i) / sum A_i.
+ *
+ * The sums over cells run over classes of equal height. Features stand on one floor, or (level_at_tips) hang from one
+ * tip plane, the substrate then rising between them. Pores are the complement, mirrored in depth: widest at the
+ * surface, mouths in one plane, or (level_at_tips) bottoms in one plane.
+ * A conformal film is the dilation of the feature on the circle of the mean cell's area; film j is what dilation by
+ * all films up to j covers beyond what lies under it. Steps (film on a free floor, rim of a pore) become two nodes at
+ * one depth.
+ * Nodes: for one height u = t^k (k = q within 1..8) with so many steps that linear interpolation errs below 1e-7
+ * (exponents 0.5 to 8; at most 8193 nodes); for many heights or films evenly spaced.
+ * What this file does not do: cells of different area carry the same film thickness but share one mean radius. */
+#include <math.h>
+#include <stdlib.h>
+
+#include "base/mem.h"
+#include "link/surface_priv.h"
+
+typedef struct {
+    const height_classes *heights;
+    const link_options *o;
+    double cell_radius_nm;
+    double film_nm[LIMIT_COATINGS + 1]; /* cumulated from the innermost: 0, t_n, t_n + t_(n-1), ... */
+    size_t n_films;
+    int pores;
+} texture_model;
+
+static double all_films(const texture_model *m) { return m->film_nm[m->n_films]; }
+
+/* Share covered by the feature with the first k films at a depth below the highest point; eps shifts the level off a
+ * step towards the bottom. */
+static double covered(const texture_model *m, size_t k, double depth_nm, double eps_nm) {
+    double sum = 0.0, top = all_films(m), deep = m->heights->tallest_nm;
+    for (size_t i = 0; i < m->heights->n; i++) {
+        double h = m->heights->height_nm[i];
+        solid f = { h, m->cell_radius_nm, m->o->exponent, m->o->coverage };
+        double share;
+        if (m->pores) {
+            double x = depth_nm + eps_nm - top - (m->o->level_at_tips ? deep - h : 0.0);
+            share = coated_pore_share(&f, m->film_nm[k], x);
+        } else {
+            double y = (m->o->level_at_tips ? h : deep) + top - depth_nm - eps_nm;
+            share = coated_share(&f, m->film_nm[k], y);
+        }
+        sum += m->heights->weight[i] * share;
+    }
+    return sum < 1.0 ? sum : 1.0;
+}
+
+static status allocate(profile *p, size_t n, size_t n_coatings, error *e) {
+    p->depth_nm = mem_array(n, sizeof *p->depth_nm);
+    p->solid = mem_array(n, sizeof *p->solid);
+    int ok = p->depth_nm && p->solid;
+    for (size_t j = 0; j < n_coatings; j++) {
+        p->coating[j] = mem_array(n, sizeof **p->coating);
+        ok = ok && p->coating[j];
+    }
+    p->n = n;
+    p->n_coatings = n_coatings;
+    return ok ? ST_OK : NO_MEMORY(e, "the profile");
+}
+
+/* ---- one height, no film: the closed form on graded nodes ---- */
+
+static size_t graded_nodes(double q, double *power) {
+    double k = q < 1.0 ? 1.0 : q > 8.0 ? 8.0 : q, curve = 2.0 / q * fabs(2.0 / q - 1.0);
+    *power = k;
+    if (k > 1.0) curve = fmax(fabs(2.0 - k), 0.5) * 2.0; /* the same bound with the nodes' own grading */
+    double steps = ceil(sqrt(curve / 8.0 / 0.9e-7));
+    return (size_t)(steps < 64.0 ? 64.0 : steps > 8192.0 ? 8192.0 : steps) + 1;
+}
+
+static status closed_form(const texture_model *m, profile *p, error *e) {
+    double power, h = m->heights->tallest_nm;
+    size_t n = graded_nodes(m->o->exponent, &power);
+    status st = allocate(p, n, 0, e);
+    if (st != ST_OK) return st;
+    for (size_t i = 0; i < n; i++) {
+        double u = pow((double)i / (double)(n - 1), power); /* depth below the tip */
+        double share = m->o->coverage * shape_share(u, m->o->exponent);
+        size_t at = m->pores ? n - 1 - i : i;
+        p->depth_nm[at] = m->pores ? h * (1.0 - u) : h * u;
+        p->solid[at] = m->pores ? 1.0 - share : share;
+    }
+    p->depth_nm[0] = 0.0;
+    p->depth_nm[n - 1] = h;
+    return ST_OK;
+}
+
+/* ---- many heights or films: even nodes and the steps ---- */
+
+/* Depths at which a share jumps for all features together. */
+static size_t step_depths(const texture_model *m, double *at) {
+    size_t n = 0;
+    double total = m->heights->tallest_nm + all_films(m);
+    int together = !m->o->level_at_tips || m->heights->n == 1;
+    if (!together) return 0;
+    for (size_t k = m->pores ? 0 : 1; k <= m->n_films; k++)
+        at[n++] = m->pores ? all_films(m) - m->film_nm[k] : total - m->film_nm[k];
+    return n;
+}
+
+static void fill(const texture_model *m, profile *p, size_t i, double depth_nm, double eps_nm) {
+    double inner = covered(m, 0, depth_nm, eps_nm);
+    p->depth_nm[i] = depth_nm;
+    p->solid[i] = inner;
+    for (size_t k = 1; k <= m->n_films; k++) {
+        double outer = fmax(covered(m, k, depth_nm, eps_nm), inner);
+        p->coating[m->n_films - k][i] = outer - inner; /* films count from the inside, coatings from the outside */
+        inner = outer;
+    }
+}
+
+static int ascending(const void *a, const void *b) {
+    double x = *(const double *)a, y = *(const double *)b;
+    return (x > y) - (x < y);
+}
+
+static status summed(const texture_model *m, profile *p, error *e) {
+    enum { STEPS_MAX = LIMIT_COATINGS + 1 };
+    double steps[STEPS_MAX], total = m->heights->tallest_nm + all_films(m);
+    size_t n_steps = step_depths(m, steps), even = m->n_films ? (m->heights->n > 1 ? 384 : 1024) : 1024;
+    status st = allocate(p, even + 1 + 2 * n_steps, m->n_films, e);
+    if (st != ST_OK) return st;
+    qsort(steps, n_steps, sizeof *steps, ascending);
+    size_t n = 0, next = 0;
+    for (size_t i = 0; i <= even; i++) {
+        double depth = i == even ? total : total * (double)i / (double)even;
+        int at_step = 0;
+        for (; next < n_steps && steps[next] <= depth; next++) {
+            at_step = depth - steps[next] < 1e-9 * total;
+            if (steps[next] > 0.0) fill(m, p, n++, steps[next], -1e-9 * total);
+            if (steps[next] < total) fill(m, p, n++, steps[next], 1e-9 * total);
+        }
+        /* the floor counts from above: below it there is the substrate anyway */
+        if (!at_step || i == even) fill(m, p, n++, depth, i == even ? -1e-9 * total : 0.0);
+    }
+    p->n = n;
+    return ST_OK;
+}
+
+static status check_coatings(const layer *c, size_t n, error *e) {
+    if (n > LIMIT_COATINGS)
+        return fail(e, ST_BAD_INPUT, "coatings: found %zu, expected at most %d", n, LIMIT_COATINGS);
+    for (size_t j = 0; j < n; j++)
+        if (!(c[j].thickness_nm >= 0.0) || !isfinite(c[j].thickness_nm))
+            return fail(e, ST_BAD_INPUT, "coating %zu: found a thickness of %g nm, expected 0 or more", j + 1,
+                        c[j].thickness_nm);
+    return ST_OK;
+}
+
+static double mean_cell_nm2(double spacing_nm, const double *area, size_t n) {
+    if (!area || !n) return sqrt(3.0) / 2.0 * spacing_nm * spacing_nm;
+    double sum = 0.0;
+    for (size_t i = 0; i < n; i++) sum += area[i];
+    return sum / (double)n;
+}
+
+status link_profile(double height_nm, double spacing_nm, const double *cell_area_nm2, size_t n_cells, int pores,
+                    const link_options *o, const layer *coatings, size_t n_coatings, profile *p, error *e) {
+    height_classes heights;
+    profile made = { 0 };
+    *p = made;
+    status st = link_check(height_nm, o, e);
+    if (st == ST_OK) st = check_coatings(coatings, n_coatings, e);
+    if (st != ST_OK || !(height_nm > 0.0)) return st; /* height 0: planar, no profile */
+    st = heights_make(height_nm, cell_area_nm2, n_cells, o, &heights, e);
+    if (st != ST_OK) return st;
+    texture_model m = { .heights = &heights, .o = o, .n_films = n_coatings, .pores = pores != 0 };
+    for (size_t k = 0; k < n_coatings; k++)
+        m.film_nm[k + 1] = m.film_nm[k] + coatings[n_coatings - 1 - k].thickness_nm;
+    m.cell_radius_nm = sqrt(mean_cell_nm2(spacing_nm, cell_area_nm2, n_cells) / PI);
+    if (n_coatings && !(m.cell_radius_nm > 0.0))
+        return fail(e, ST_BAD_INPUT, "a conformal coating needs the spacing of the features, and none is known; give a "
+                                     "spacing");
+    st = heights.n == 1 && !n_coatings ? closed_form(&m, &made, e) : summed(&m, &made, e);
+    if (st != ST_OK) {
+        profile_free(&made);
+        return st;
+    }
+    made.pores = m.pores;
+    *p = made;
+    return ST_OK;
+}
