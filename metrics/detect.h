@@ -7,22 +7,31 @@
 #include "metrics/texture.h"
 
 typedef struct {
-    feature *features;  /* [n], row-major order of the unrefined marker; owned */
-    uint32_t *marker;   /* [n] pixel index of the unrefined marker, owned */
+    feature *features; /* [n], row-major order of the unrefined marker; owned */
+    uint32_t *marker;  /* [n] pixel index of the unrefined marker, owned */
     size_t n;
-    double scale_px;    /* d the detection ended with */
-    double merged_share; /* markers rejected by the dynamic / markers kept: how far the count depends on the criterion */
+    double scale_px;     /* d the detection ended with */
+    double merged_share; /* how far the count depends on the criterion: (features at half the dynamic -
+                          * features at twice the dynamic) / features */
 } detection;
 
-/* Iterates the scale from d0 (two rounds, stop at 2 %), then detects with the dynamic criterion (height above the
- * saddle to a higher maximum >= 0.10 of the median response; union-find in grey order), above 4 noise sd, and refines
- * each centre on Gaussian 0.10 d.
- *   in  f flattened, sign +1 hillock, -1 pore
- *   err ST_NO_RESULT fewer than 5 features; ST_NO_MEMORY */
-status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, double noise, detection *out, error *e);
+/* Iterates the scale from d0 (two rounds, stop at 2 %), then detects with the dynamic criterion (height above
+ * the saddle to a higher maximum >= 0.10 of the median response), above 4 noise sd, and refines each centre
+ * on Gaussian 0.10 d. Fills x, y, response and in_guard (guard d/2 with the final d) of the features; nn_px
+ * NAN, the rest 0. in  f flattened, sign +1 hillock, -1 pore, noise sd of f, grey err ST_NO_RESULT fewer than
+ * 5 features; ST_BAD_INPUT d0 not above 0; ST_NO_MEMORY. out untouched on failure */
+status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, double noise, detection *out,
+              error *e);
 void detection_free(detection *d);
 
-/* Skewness of the curvature map at 0.17 and 0.25 of d0, hillock positive. */
-status relief_skewness(const float *f, size_t nx, size_t ny, double d0_px, double *at_017, double *at_025, error *e);
+/* Features per px2: those whose centre lies at least guard inside the field, over the area inside the guard.
+ * The frame itself makes maxima, so the outermost features never count. *n_inside may be NULL. NAN: no area
+ * left. */
+double guarded_density(const feature *features, size_t n, size_t nx, size_t ny, double guard_px,
+                       size_t *n_inside);
+
+/* Skewness of the curvature map at 0.17 and 0.25 of d0, hillock positive. err ST_NO_MEMORY */
+status relief_skewness(const float *f, size_t nx, size_t ny, double d0_px, double *at_017, double *at_025,
+                       error *e);
 
 #endif

@@ -6,23 +6,34 @@
 #include "base/status.h"
 #include "metrics/texture.h"
 
-typedef struct { double x0, y0, x1, y1; } window;
+typedef struct {
+    double x0, y0, x1, y1;
+} window;
 
-/* nn[n]: distance to the nearest other point. err ST_NO_MEMORY, ST_BAD_INPUT n < 2 */
+/* nn[n]: distance to the nearest other point. Points a little outside the window are allowed.
+ * err ST_NO_MEMORY, ST_BAD_INPUT n < 2 or an empty window */
 status nearest_neighbours(const double *x, const double *y, size_t n, window w, double *nn, error *e);
 
+/* Weight of a point in the Hanisch estimator: 1/((W - 2 nn)(H - 2 nn)), 0 where the frame is nearer than the
+ * neighbour (a nearer one could lie outside). */
+double hanisch_weight(double x, double y, double nn, window w);
+
 /* Hanisch 1984: points with nn <= distance to the frame, weights 1/((W - 2 nn)(H - 2 nn)).
- * n of the result = points that count; value NAN if none. */
+ * n of the result = points that count; value NAN if none. u_sampling takes the points as independent. */
 measured nn_mean_hanisch(const double *x, const double *y, const double *nn, size_t n, window w);
 
-/* Clark and Evans 1954; Donnelly 1978 edge correction (constants 0.0514, 0.0412). */
+/* Clark and Evans 1954; Donnelly 1978 edge correction (constants 0.0514, 0.0412). NAN for n = 0.
+ * The guard version counts only points at least `guard` inside the window; the others serve as neighbours. */
 double clark_evans_naive(const double *nn, size_t n, window w);
 double clark_evans_donnelly(const double *nn, size_t n, window w);
 double clark_evans_guard(const double *x, const double *y, const double *nn, size_t n, window w, double guard,
                          size_t *n_guard);
+/* Standard score of the naive index under random placement (Clark and Evans 1954); NAN for n < 2. */
+double clark_evans_z(const double *nn, size_t n, window w);
 
-/* Pair correlation, translation correction, Epanechnikov kernel of half-width h, at r[n_r]. err ST_NO_MEMORY */
-status pair_correlation(const double *x, const double *y, size_t n, window w, double h, const double *r, size_t n_r,
-                        double *g, error *e);
+/* Pair correlation, translation correction, Epanechnikov kernel of half-width h, at r[n_r] (ascending); g is
+ * NAN at r = 0. err ST_NO_MEMORY, ST_BAD_INPUT n < 2, no r, h <= 0 */
+status pair_correlation(const double *x, const double *y, size_t n, window w, double h, const double *r,
+                        size_t n_r, double *g, error *e);
 
 #endif

@@ -1,0 +1,304 @@
+/* One plane from grey levels to texture numbers: flatten, noise, autocorrelation and its first scale, relief,
+ * features, cells, the ring of the curvature map, statistics, uncertainties, fitness.
+ *
+ * A stage that finds no answer (no trough, too few features) leaves its numbers NAN and lets the others go
+ * on; only bad input and lack of memory stop the measurement. Definitions and their faithfulness are
+ * described in the files of the stages; how far each number can be off as an estimate of its definition
+ * (u_method) is stated below in one table, found on rendered micrographs of known truth. */
+#include "metrics/measure.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/limits.h"
+#include "base/mem.h"
+#include "base/quantity.h"
+#include "metrics/direction.h"
+#include "metrics/filter.h"
+#include "metrics/fitness.h"
+#include "metrics/neighbours.h"
+#include "metrics/spacing.h"
+#include "metrics/statistics.h"
+#include "metrics/watershed.h"
+
+static const double ring_scale = 0.12; /* sigma of the curvature map behind spacing_acf / d */
+static const double ring_lags = 4.0;   /* its autocorrelation reaches this far, / d */
+
+typedef struct {
+    const plane *p;
+    const measure_options *o;
+    float *f;     /* flattened plane */
+    float *work;  /* as large */
+    double noise; /* sd, grey */
+    acf2d plain;
+    first_scale first;
+    double d; /* scale of the features, or NAN */
+    detection det;
+    texture t;
+} job;
+
+static const measured not_measured = { (double)NAN, (double)NAN, 0.0, 0 };
+
+static texture texture_empty(void) {
+    const measured m = not_measured;
+    texture t = { .relief_skew = MISSING,
+                  .spacing_acf = m,
+                  .spacing_psd = m,
+                  .nn_mean = m,
+                  .spacing_hex = m,
+                  .density = m,
+                  .bright_share = m,
+                  .size_d10 = m,
+                  .size_d50 = m,
+                  .size_d90 = m,
+                  .size_mean = m,
+                  .size_gsd = m,
+                  .top_d50 = m,
+                  .clark_evans = m,
+                  .sal = m,
+                  .str = m,
+                  .stretch = m,
+                  .stretch_angle_deg = m,
+                  .sharpness = m,
+                  .noise_rel = m,
+                  .clipped_share = MISSING,
+                  .lognormal_ad = MISSING,
+                  .ring_z = MISSING,
+                  .second_spacing_px = MISSING };
+    return t;
+}
+
+/* A stage without an answer is no failure of the measurement; the error it recorded is dropped. */
+static status forgive(status st, error *e, const error *before) {
+    if (st != ST_NO_RESULT) return st;
+    if (e) *e = *before;
+    return ST_OK;
+}
+
+static curve *curve_new(texture *t, const char *name, const char *x_unit, const char *y_unit) {
+    curve *c = &t->curves[t->n_curves++];
+    *c = (curve){ .name = name, .x_unit = x_unit, .y_unit = y_unit };
+    return c;
+}
+
+/* Makers fill a whole curve; its names are given here. */
+static curve *curve_take(texture *t, const curve *made, const char *name, const char *x_unit,
+                         const char *y_unit) {
+    curve *c = curve_new(t, name, x_unit, y_unit);
+    c->points = made->points;
+    c->n = made->n;
+    return c;
+}
+
+/* 1 when the picture has contrast: more than the steps of the file explain. */
+static int has_contrast(const job *j) {
+    size_t n = j->p->nx * j->p->ny;
+    double ss = 0.0;
+    for (size_t i = 0; i < n; i++) ss += (double)j->f[i] * (double)j->f[i];
+    double step =
+        1.0 / (double)((1u << (j->p->bit_depth > 0 && j->p->bit_depth < 16 ? j->p->bit_depth : 16)) - 1u);
+    return sqrt(ss / (double)n) > 0.5 * step;
+}
+
+static status plain_stage(job *j, error *e) {
+    size_t nx = j->p->nx, ny = j->p->ny;
+    curve made = { 0 };
+    status st = acf2d_make(j->f, nx, ny, (nx < ny ? nx : ny) / 2, &j->plain, e);
+    if (st == ST_OK) st = acf_radial(&j->plain, &made, e);
+    if (st != ST_OK) return st;
+    curve *c = curve_take(&j->t, &made, "acf", "px", "1");
+    spacing_first_scale(c, nx, ny, &j->first);
+    j->t.ring_z = j->first.z;
+    double angle = MISSING;
+    texture_decay(&j->plain, 0.2, &j->t.sal, &j->t.str, &angle);
+    return ST_OK;
+}
+
+/* Hillock or pore, at the scale d; unsure when the two scales do not agree or the skewness drowns in its own
+ * noise: about one independent value per d^2, so its standard error is near sqrt(6 / N) for a normal map
+ * (Fisher 1930). */
+static status relief_stage(job *j, double d, error *e) {
+    double narrow = 0.0, wide = 0.0;
+    status st = relief_skewness(j->f, j->p->nx, j->p->ny, d, &narrow, &wide, e);
+    if (st != ST_OK) return st;
+    double se = sqrt(6.0 * d * d / ((double)j->p->nx * (double)j->p->ny));
+    j->t.relief_skew = narrow;
+    j->t.relief = j->o->relief;
+    j->t.flags &= ~FLAG(RELIEF_UNSURE);
+    if (j->o->relief != RELIEF_AUTO) return ST_OK;
+    j->t.relief = narrow >= 0.0 ? RELIEF_HILLOCK : RELIEF_PORE;
+    if ((narrow >= 0.0) != (wide >= 0.0) || fabs(narrow) < 2.0 * se) j->t.flags |= FLAG(RELIEF_UNSURE);
+    return ST_OK;
+}
+
+static int sign_of(const job *j) { return j->t.relief == RELIEF_PORE ? -1 : 1; }
+
+/* Relief at the first scale, features, and relief again at theirs; when it changes its mind, features once
+ * more. */
+static status feature_stage(job *j, error *e) {
+    size_t nx = j->p->nx, ny = j->p->ny;
+    double d = j->first.scale_px;
+    for (int round = 0; round < 2; round++) {
+        status st = relief_stage(j, d, e);
+        int sign = sign_of(j);
+        if (st == ST_OK) st = detect(j->f, nx, ny, j->first.scale_px, sign, j->noise, &j->det, e);
+        if (st != ST_OK) return st;
+        d = j->det.scale_px;
+        st = relief_stage(j, d, e);
+        if (st != ST_OK || sign_of(j) == sign || round == 1) return st;
+        detection_free(&j->det);
+    }
+    return ST_OK;
+}
+
+static status cell_stage(job *j, error *e) {
+    size_t nx = j->p->nx, ny = j->p->ny;
+    j->t.cells = mem_array(nx * ny, sizeof *j->t.cells);
+    if (!j->t.cells) return NO_MEMORY(e, "the cells");
+    status st = watershed(j->f, nx, ny, sign_of(j), &j->det, j->t.cells, e);
+    j->t.features = j->det.features;
+    j->t.n_found = j->det.n;
+    j->det.features = NULL;
+    return st;
+}
+
+/* The ring of the curvature map at 0.12 d, and the peak of its power spectrum. */
+static status ring_stage(job *j, error *e) {
+    size_t nx = j->p->nx, ny = j->p->ny, half = (nx < ny ? nx : ny) / 2,
+           lags = (size_t)(ring_lags * j->d) + 4;
+    acf2d k = { 0 };
+    curve made = { 0 };
+    ring r = { 0 };
+    error before = { ST_OK, "" };
+    if (e) before = *e;
+    status st = filter_curvature(j->f, nx, ny, fmax(0.8, ring_scale * j->d), sign_of(j), j->work, e);
+    if (st == ST_OK) st = acf2d_make(j->work, nx, ny, lags < half ? lags : half, &k, e);
+    if (st == ST_OK) st = acf_radial(&k, &made, e);
+    if (st == ST_OK) {
+        curve *c = curve_take(&j->t, &made, "acf_curvature", "px", "1");
+        st = spacing_ring(&k, c, j->d, j->t.n_features, &r, e);
+        if (st == ST_OK) {
+            j->t.spacing_acf = r.spacing;
+            j->t.stretch = r.stretch;
+            j->t.stretch_angle_deg = r.stretch_angle_deg;
+            j->t.second_spacing_px = r.second_px;
+        }
+        st = forgive(st, e, &before);
+    }
+    acf2d_free(&k);
+    made = (curve){ 0 };
+    if (st == ST_OK) st = psd_radial(j->work, nx, ny, &made, e);
+    if (st == ST_OK) {
+        curve *c = curve_take(&j->t, &made, "psd_curvature", "1/px", "px2");
+        measured psd = not_measured;
+        st = spacing_psd_peak(c, j->d, j->t.n_features, &psd, e);
+        if (st == ST_OK) j->t.spacing_psd = psd;
+        st = forgive(st, e, &before);
+    }
+    return st;
+}
+
+static status pair_stage(job *j, error *e) {
+    static const double reach = 4.0, step = 0.05,
+                        kernel = 0.15; /* in units of 1/sqrt(density), kernel of A-13 */
+    size_t n = j->t.n_found, n_r = (size_t)(reach / step);
+    double unit = 1.0 / sqrt(j->t.density.value);
+    window w = { -0.5, -0.5, (double)j->p->nx - 0.5, (double)j->p->ny - 0.5 };
+    double *v = mem_array(2 * n + 2 * n_r, sizeof *v);
+    if (!v) return NO_MEMORY(e, "the pair correlation");
+    double *x = v, *y = v + n, *r = v + 2 * n, *g = r + n_r;
+    for (size_t i = 0; i < n; i++) {
+        x[i] = j->t.features[i].x;
+        y[i] = j->t.features[i].y;
+    }
+    for (size_t k = 0; k < n_r; k++) r[k] = (double)(k + 1) * step * unit;
+    status st = pair_correlation(x, y, n, w, kernel * unit, r, n_r, g, e);
+    curve *c = st == ST_OK ? curve_new(&j->t, "pair_correlation", "px", "1") : NULL;
+    if (c) {
+        c->points = mem_array(n_r, sizeof *c->points);
+        if (!c->points) st = NO_MEMORY(e, "the pair correlation");
+        for (size_t k = 0; c->points && k < n_r; k++) c->points[k] = (curve_point){ r[k], g[k] };
+        c->n = c->points ? n_r : 0;
+    }
+    free(v);
+    return st;
+}
+
+/* Everything that needs a scale. */
+static status scaled_stages(job *j, error *e) {
+    error before = { ST_OK, "" };
+    if (e) before = *e;
+    status st = feature_stage(j, e);
+    if (st == ST_NO_RESULT) {
+        j->t.reasons |= FLAG(FEW_FEATURES);
+        return forgive(st, e, &before);
+    }
+    if (st == ST_OK) {
+        j->d = j->det.scale_px;
+        st = cell_stage(j, e);
+    }
+    if (st == ST_OK) st = statistics_fill(&j->t, j->p->nx, j->p->ny, &j->det, e);
+    if (st == ST_OK && j->t.spacing_hex.value > 0.0) {
+        j->d = j->t.spacing_hex.value;
+        st = ring_stage(j, e);
+        if (st == ST_OK) st = pair_stage(j, e);
+    }
+    return st;
+}
+
+static void judge(job *j, const sharpness *s) {
+    texture *t = &j->t;
+    if (t->spacing_acf.n) statistics_method(t, &j->det);
+    fitness_judge(s, j->p, j->o, t);
+    double hex = t->spacing_hex.value, acf = t->spacing_acf.value, order = t->clark_evans.value;
+    if (order < 1.5) t->flags |= FLAG(LOW_ORDER);
+    if (fabs(acf / hex - 1.0) > 0.15) t->flags |= FLAG(CONTRADICTION);
+    if (t->size_gsd.value > 1.35) t->flags |= FLAG(WIDE_SIZES);
+}
+
+static status run(job *j, error *e) {
+    const plane *p = j->p;
+    size_t n = p->nx * p->ny;
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING };
+    j->f = mem_array(n, sizeof *j->f);
+    j->work = mem_array(n, sizeof *j->work);
+    status st = j->f && j->work ? flatten(p, j->f, e) : NO_MEMORY(e, "the micrograph");
+    if (st != ST_OK) return st;
+    j->t.nx = p->nx;
+    j->t.ny = p->ny;
+    j->t.clipped_share = p->clipped_low + p->clipped_high;
+    if (!has_contrast(j)) {
+        j->t.reasons |= FLAG(FEATURELESS);
+        return ST_OK;
+    }
+    j->noise = noise_sd(j->f, p->nx, p->ny);
+    st = plain_stage(j, e);
+    if (st == ST_OK && j->first.z >= j->o->min_ring_z && j->first.scale_px > 0.0)
+        st = scaled_stages(j, e);
+    else if (st == ST_OK)
+        j->t.reasons |= FLAG(NO_RING);
+    if (st == ST_OK) st = bright_share(j->f, p->nx, p->ny, j->o->bright_level, j->d, &j->t.bright_share, e);
+    if (st == ST_OK) st = fitness_look(j->f, p, j->d, &s, e);
+    if (st == ST_OK) judge(j, &s);
+    return st;
+}
+
+status measure_plane(const plane *p, const measure_options *o, texture *out, error *e) {
+    if (!p->px || p->nx < LIMIT_MIN_SIDE || p->ny < LIMIT_MIN_SIDE)
+        return fail(e, ST_BAD_INPUT,
+                    "the picture is %zu x %zu px, expected at least %zu x %zu; it is too small to "
+                    "carry texture statistics",
+                    p->nx, p->ny, LIMIT_MIN_SIDE, LIMIT_MIN_SIDE);
+    job j = { .p = p, .o = o, .d = MISSING, .t = texture_empty() };
+    status st = run(&j, e);
+    free(j.f);
+    free(j.work);
+    acf2d_free(&j.plain);
+    detection_free(&j.det);
+    if (st == ST_OK)
+        *out = j.t;
+    else
+        texture_free(&j.t);
+    return st;
+}

@@ -1,0 +1,76 @@
+/* Joining the micrographs of a sample: weighted mean, and an uncertainty that knows which part averages out.
+ *
+ * The scatter between micrographs contains the scatter within (JCGM 100, 4.2), so the two are compared, not
+ * added. With two or three micrographs the scatter is itself poorly known; taking the larger of both keeps
+ * chance agreement from making a small u. The standard error of a weighted mean is the ratio form (Cochran
+ * W.G. 1977, Sampling Techniques, 3rd ed., ch. 6; from memory): n/(n-1) sum w^2 (v - mean)^2 / (sum w)^2. */
+#include "metrics/pool.h"
+
+#include <math.h>
+
+#include "base/quantity.h"
+
+static int takes_part(const measured *m, double weight) { return isfinite(m->value) && weight > 0.0; }
+
+typedef struct {
+    double mean, within, between, method;
+    size_t n, micrographs;
+} joined;
+
+/* The value, or the same axis within 90 deg of `axis`. */
+static double unwrapped(double value, double axis) {
+    return isfinite(axis) ? value - 180.0 * floor((value - axis) / 180.0 + 0.5) : value;
+}
+
+static joined join(const measured *m, const double *weight, size_t n, double axis) {
+    joined j = { MISSING, 0.0, 0.0, 0.0, 0, 0 };
+    double sw = 0.0, sv = 0.0;
+    for (size_t i = 0; i < n; i++) {
+        if (!takes_part(&m[i], weight[i])) continue;
+        sw += weight[i];
+        sv += weight[i] * unwrapped(m[i].value, axis);
+        j.method += weight[i] * (isfinite(m[i].u_method) ? m[i].u_method : 0.0);
+        j.n += m[i].n;
+        j.micrographs++;
+    }
+    if (!j.micrographs) {
+        j.within = j.between = j.method = MISSING;
+        return j;
+    }
+    j.mean = sv / sw;
+    j.method /= sw;
+    for (size_t i = 0; i < n; i++) {
+        if (!takes_part(&m[i], weight[i])) continue;
+        double share = weight[i] / sw, u = share * m[i].u_sampling;
+        double r = share * (unwrapped(m[i].value, axis) - j.mean);
+        j.within += u * u; /* NAN when one micrograph does not know its own */
+        j.between += r * r;
+    }
+    double k = (double)j.micrographs;
+    j.within = sqrt(j.within);
+    j.between = k > 1.0 ? sqrt(j.between * k / (k - 1.0)) : MISSING;
+    return j;
+}
+
+static measured from_joined(const joined *j) {
+    return (measured){ j->mean, fmax(j->within, j->between), j->method, j->n }; /* fmax passes over a NAN */
+}
+
+status pool_quantity(const measured *m, const double *weight, size_t n, measured *out) {
+    joined j = join(m, weight, n, MISSING);
+    *out = from_joined(&j);
+    return j.micrographs ? ST_OK : ST_NO_RESULT;
+}
+
+status pool_axis(const measured *m, const double *weight, size_t n, measured *out) {
+    double c = 0.0, s = 0.0;
+    for (size_t i = 0; i < n; i++)
+        if (takes_part(&m[i], weight[i])) {
+            c += weight[i] * cos(m[i].value * PI / 90.0);
+            s += weight[i] * sin(m[i].value * PI / 90.0);
+        }
+    joined j = join(m, weight, n, atan2(s, c) * 90.0 / PI);
+    *out = from_joined(&j);
+    out->value -= 180.0 * floor(out->value / 180.0);
+    return j.micrographs ? ST_OK : ST_NO_RESULT;
+}

@@ -1,0 +1,135 @@
+/* Watershed by flooding from markers (Meyer F. 1991; Vincent L., Soille P. 1991, IEEE Trans. Pattern Anal.
+ * 13:583).
+ *
+ * The flood starts at the markers and takes the highest open pixel first; pixels of one level in the order in
+ * which they were reached, so the result does not depend on memory or machine. Levels are the 65536 steps
+ * between the lowest and the highest value of the smoothed picture (finer than any micrograph's own steps),
+ * each a first-in first-out list threaded through one array: no heap, cost proportional to the number of
+ * pixels. There is no mask: the cells partition the field, because touching hillocks leave no floor to see.
+ * Description of the cells: see cells.c. */
+#include "metrics/watershed.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+#include "base/mem.h"
+#include "metrics/filter.h"
+
+static const double cell_scale = 0.06; /* sigma of the smoothing / d */
+enum { LEVELS = 65536 };
+#define NO_PIXEL UINT32_MAX
+
+typedef struct {
+    uint32_t *next;         /* [pixels] */
+    uint32_t *first, *last; /* [LEVELS] */
+    uint16_t *level;        /* [pixels] */
+    size_t top;             /* no list above this level holds a pixel */
+} queue;
+
+static void queue_free(queue *q) {
+    free(q->next);
+    free(q->first);
+    free(q->last);
+    free(q->level);
+}
+
+static status queue_make(const float *g, size_t n, queue *q, error *e) {
+    *q = (queue){ mem_array(n, sizeof *q->next), mem_array(LEVELS, sizeof *q->first),
+                  mem_array(LEVELS, sizeof *q->last), mem_array(n, sizeof *q->level), 0 };
+    if (!q->next || !q->first || !q->last || !q->level) return NO_MEMORY(e, "the watershed");
+    float low = g[0], high = g[0];
+    for (size_t i = 1; i < n; i++) {
+        low = g[i] < low ? g[i] : low;
+        high = g[i] > high ? g[i] : high;
+    }
+    double step = high > low ? (LEVELS - 1) / ((double)high - (double)low) : 0.0;
+    for (size_t i = 0; i < n; i++) q->level[i] = (uint16_t)(((double)g[i] - (double)low) * step + 0.5);
+    for (size_t i = 0; i < LEVELS; i++) q->first[i] = NO_PIXEL;
+    return ST_OK;
+}
+
+static void queue_push(queue *q, uint32_t pixel, size_t level) {
+    q->next[pixel] = NO_PIXEL;
+    if (q->first[level] == NO_PIXEL)
+        q->first[level] = pixel;
+    else
+        q->next[q->last[level]] = pixel;
+    q->last[level] = pixel;
+    if (level > q->top) q->top = level;
+}
+
+/* Highest pixel first; NO_PIXEL when empty. */
+static uint32_t queue_pop(queue *q) {
+    while (q->first[q->top] == NO_PIXEL) {
+        if (q->top == 0) return NO_PIXEL;
+        q->top--;
+    }
+    uint32_t pixel = q->first[q->top];
+    q->first[q->top] = q->next[pixel];
+    return pixel;
+}
+
+static void reach(queue *q, uint32_t *cells, uint32_t from, uint32_t to) {
+    if (cells[to]) return;
+    cells[to] = cells[from];
+    queue_push(q, to, q->level[to]);
+}
+
+static void flood(queue *q, const uint32_t *marker, size_t n, size_t nx, size_t ny, uint32_t *cells) {
+    for (size_t i = 0; i < nx * ny; i++) cells[i] = 0;
+    for (size_t k = 0; k < n; k++) {
+        cells[marker[k]] = (uint32_t)(k + 1);
+        queue_push(q, marker[k], q->level[marker[k]]);
+    }
+    for (uint32_t p = queue_pop(q); p != NO_PIXEL; p = queue_pop(q)) {
+        size_t x = p % nx, y = p / nx;
+        if (y) reach(q, cells, p, (uint32_t)(p - nx));
+        if (x) reach(q, cells, p, p - 1);
+        if (x + 1 < nx) reach(q, cells, p, p + 1);
+        if (y + 1 < ny) reach(q, cells, p, (uint32_t)(p + nx));
+    }
+}
+
+/* Tops: the part of a cell above the middle between its lowest and its highest value. */
+static status tops_measure(const float *g, const uint32_t *cells, size_t n_px, feature *features, size_t n,
+                           error *e) {
+    float *low = mem_array(2 * n, sizeof *low), *high = low ? low + n : NULL;
+    size_t *area = mem_array(n, sizeof *area);
+    status st = low && area ? ST_OK : NO_MEMORY(e, "the tops of the features");
+    if (st == ST_OK) {
+        for (size_t k = 0; k < n; k++) {
+            low[k] = INFINITY;
+            high[k] = -INFINITY;
+        }
+        for (size_t i = 0; i < n_px; i++) {
+            size_t k = cells[i] - 1;
+            low[k] = g[i] < low[k] ? g[i] : low[k];
+            high[k] = g[i] > high[k] ? g[i] : high[k];
+        }
+        for (size_t k = 0; k < n; k++) low[k] = 0.5f * (low[k] + high[k]);
+        for (size_t i = 0; i < n_px; i++) area[cells[i] - 1] += g[i] > low[cells[i] - 1];
+        for (size_t k = 0; k < n; k++)
+            features[k].top_ecd_px = 2.0 * sqrt((double)area[k] / 3.14159265358979323846);
+    }
+    free(low);
+    free(area);
+    return st;
+}
+
+status watershed(const float *f, size_t nx, size_t ny, int sign, detection *d, uint32_t *cells, error *e) {
+    if (!d->n) return fail(e, ST_BAD_INPUT, "watershed without a single feature; detect features first");
+    float *g = mem_array(nx * ny, sizeof *g);
+    queue q = { 0 };
+    status st = g ? filter_gauss(f, nx, ny, cell_scale * d->scale_px, g, e) : NO_MEMORY(e, "the watershed");
+    if (st == ST_OK && sign < 0)
+        for (size_t i = 0; i < nx * ny; i++) g[i] = -g[i];
+    if (st == ST_OK) st = queue_make(g, nx * ny, &q, e);
+    if (st == ST_OK) {
+        flood(&q, d->marker, d->n, nx, ny, cells);
+        st = tops_measure(g, cells, nx * ny, d->features, d->n, e);
+    }
+    if (st == ST_OK) st = cells_describe(cells, nx, ny, d->features, d->n, e);
+    queue_free(&q);
+    free(g);
+    return st;
+}
