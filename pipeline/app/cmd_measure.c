@@ -1,0 +1,159 @@
+/* sward measure FILE...: texture numbers only, on standard output; nothing is written. */
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "app/batch.h"
+#include "app/command.h"
+#include "app/names.h"
+#include "base/mem.h"
+#include "base/number.h"
+#include "base/quantity.h"
+
+enum { OPT_PX = 0x200, OPT_RELIEF, OPT_PROTOCOL, OPT_JOBS, OPT_JSON, OPT_CSV };
+typedef enum { AS_LINES, AS_JSON, AS_CSV } form;
+
+typedef struct {
+    double px_nm;
+    int jobs, relief_given;
+    relief relief;
+    const char *protocol;
+    form form;
+    char **files;
+    size_t n;
+} measure_use;
+
+/* clang-format off */
+static const struct argp_option options[] = {
+    { "px",       OPT_PX,       "NM",   0, "pixel size, nm; outranks all other sources", 0 },
+    { "relief",   OPT_RELIEF,   "hillock|pore|auto", 0, "what a feature is (default: as the protocol says, else found)", 0 },
+    { "protocol", OPT_PROTOCOL, "FILE", 0, "measuring limits from a protocol (default: built in)", 0 },
+    { "jobs",     OPT_JOBS,     "N",    0, "workers, 0 = one per core (default)", 0 },
+    { "json",     OPT_JSON,     NULL,   0, "a JSON array of rows as in images.csv", 0 },
+    { "csv",      OPT_CSV,      NULL,   0, "CSV as images.csv", 0 },
+    { 0 }
+};
+/* clang-format on */
+
+static error_t parse(int key, char *arg, struct argp_state *state) {
+    measure_use *u = state->input;
+    double v = 0.0;
+    switch (key) {
+    case OPT_PX:
+        if (!number_parse(arg, &v) || !(v > 0.0))
+            argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
+        u->px_nm = v;
+        break;
+    case OPT_RELIEF:
+        u->relief_given = 1;
+        if (!strcmp(arg, "hillock")) u->relief = RELIEF_HILLOCK;
+        else if (!strcmp(arg, "pore")) u->relief = RELIEF_PORE;
+        else if (!strcmp(arg, "auto")) u->relief = RELIEF_AUTO;
+        else argp_error(state, "--relief: found '%s', expected hillock, pore or auto", arg);
+        break;
+    case OPT_PROTOCOL: u->protocol = arg; break;
+    case OPT_JOBS:
+        if (!number_parse(arg, &v) || v < 0.0 || v > 1024.0 || v > (double)(int)v || v < (double)(int)v)
+            argp_error(state, "--jobs: found '%s', expected a whole number from 0 to 1024", arg);
+        u->jobs = (int)v;
+        break;
+    case OPT_JSON: u->form = AS_JSON; break;
+    case OPT_CSV: u->form = AS_CSV; break;
+    case ARGP_KEY_ARGS:
+        u->files = state->argv + state->next;
+        u->n = (size_t)(state->argc - state->next);
+        break;
+    case ARGP_KEY_NO_ARGS: argp_error(state, "FILE is missing: name at least one micrograph"); break;
+    default: return ARGP_ERR_UNKNOWN;
+    }
+    return 0;
+}
+
+const struct argp measure_argp = {
+    options, parse, "FILE...",
+    "Measures the texture of micrographs and prints their numbers. Nothing is written or remembered."
+    "\vExit status: 0 done; 1 failed; 2 wrong use; 3 done, but some files could not be used (their rows say why).",
+    NULL, NULL, NULL
+};
+
+static void print_lines(const image_row *rows, size_t n) {
+    char v[NUMBER_TEXT], u[NUMBER_TEXT];
+    for (size_t i = 0; i < n; i++) {
+        printf("%s: %s%s%s%s%s%s\n", rows[i].file, rows[i].status, rows[i].reason[0] ? ", " : "", rows[i].reason,
+               rows[i].flags[0] ? " (" : "", rows[i].flags, rows[i].flags[0] ? ")" : "");
+        for (size_t c = 0; c < n_image_columns; c++) {
+            const column *col = &image_columns[c];
+            if (col->kind != COL_NUMBER) continue;
+            size_t k = strlen(col->name);
+            if (k > 2 && !strcmp(col->name + k - 2, "_u")) continue;
+            const char *cell = column_cell(col, &rows[i], v);
+            if (!cell[0]) continue;
+            int twin = c + 1 < n_image_columns && !strncmp(image_columns[c + 1].name, col->name, k) &&
+                       !strcmp(image_columns[c + 1].name + k, "_u");
+            printf("  %-20s %10s", col->name, cell);
+            if (twin) printf(" +- %s", column_cell(&image_columns[c + 1], &rows[i], u));
+            putchar('\n');
+        }
+    }
+}
+
+static status print_rows(const measure_use *u, const examined *all, error *e) {
+    image_row *rows = mem_array(u->n, sizeof *rows);
+    textbuf out = { 0 };
+    if (!rows) return NO_MEMORY(e, "the rows");
+    for (size_t i = 0; i < u->n; i++) rows[i] = all[i].row;
+    table_view view = { image_columns, n_image_columns, rows, u->n, sizeof *rows, NULL, 0, NULL };
+    if (u->form == AS_LINES) print_lines(rows, u->n);
+    else if (u->form == AS_JSON) table_to_json(&view, 0, &out);
+    else table_to_csv(&view, &out);
+    status st = text_check(&out, "the rows", e);
+    if (st == ST_OK && out.n) {
+        fputs(out.s, stdout);
+        if (out.s[out.n - 1] != '\n') putchar('\n');
+    }
+    text_free(&out);
+    free(rows);
+    return st;
+}
+
+static status measure_files(const measure_use *u, const protocol *p, examined *all, error *e) {
+    batch_item *items = mem_array(u->n, sizeof *items);
+    if (!items) return NO_MEMORY(e, "the batch");
+    for (size_t i = 0; i < u->n; i++) items[i] = (batch_item){ u->files[i], u->files[i], "", MISSING };
+    examine_options o = { p, u->px_nm, NULL, 1 };
+    status st = batch_examine(items, u->n, &o, u->jobs, 0, all, e);
+    if (st == ST_OK) st = batch_mark_duplicates(all, u->n, e);
+    for (size_t i = 0; st == ST_OK && i < u->n; i++) {
+        name_parts parts = { 0 };
+        const char *base = strrchr(u->files[i], '/');
+        st = name_sample(base ? base + 1 : u->files[i], p->pattern, &parts, e);
+        if (st == ST_OK && !(all[i].row.sample = mem_text(parts.sample))) st = NO_MEMORY(e, "the rows");
+        if (st == ST_OK) st = examine_finish(&all[i], e);
+        name_parts_free(&parts);
+    }
+    free(items);
+    return st == ST_OK ? print_rows(u, all, e) : st;
+}
+
+int cmd_measure(int argc, char **argv) {
+    measure_use u = { .px_nm = MISSING };
+    protocol p = { 0 };
+    error e = { 0 };
+    int unusable = 0;
+    if (argp_parse(&measure_argp, argc, argv, 0, NULL, &u) != 0) return EXIT_USAGE;
+    status st = u.protocol ? protocol_read(u.protocol, &p, &e) : protocol_defaults(&p, &e);
+    if (u.relief_given) p.measure.relief = u.relief;
+    examined *all = mem_array(u.n, sizeof *all);
+    if (st == ST_OK && !all) st = NO_MEMORY(&e, "the batch");
+    if (st == ST_OK) st = measure_files(&u, &p, all, &e);
+    for (size_t i = 0; all && i < u.n; i++) {
+        if (!all[i].readable || all[i].reasons) unusable = 1;
+        examined_free(&all[i]);
+    }
+    free(all);
+    protocol_free(&p);
+    if (st == ST_OK) return unusable ? EXIT_PARTIAL : EXIT_DONE;
+    fprintf(stderr, "sward: %s\n", e.text);
+    return st == ST_BAD_INPUT ? EXIT_USAGE : EXIT_FAILED;
+}

@@ -1,0 +1,86 @@
+/* sward run FOLDER: the whole pipeline. */
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "app/command.h"
+#include "app/run.h"
+#include "base/number.h"
+#include "base/quantity.h"
+
+enum { OPT_PROTOCOL = 0x200, OPT_SHEET, OPT_OUT, OPT_HISTORY, OPT_JOBS, OPT_PX, OPT_GATE, OPT_NO_REPORT, OPT_FRESH,
+       OPT_QUIET, OPT_VERBOSE };
+
+/* clang-format off */
+static const struct argp_option options[] = {
+    { "protocol",  OPT_PROTOCOL,  "FILE", 0, "how to measure, link, predict and judge (default: FOLDER/protocol.json if there, else built in)", 0 },
+    { "sheet",     OPT_SHEET,     "FILE", 0, "sample sheet, CSV (default: FOLDER/samples.csv if there)", 0 },
+    { "out",       OPT_OUT,       "DIR",  0, "where the results go (default: sward-out)", 0 },
+    { "history",   OPT_HISTORY,   "FILE", 0, "the ledger of all samples (default: as the protocol says, else DIR/history.sqlite)", 0 },
+    { "jobs",      OPT_JOBS,      "N",    0, "workers, 0 = one per core (default)", 0 },
+    { "px",        OPT_PX,        "NM",   0, "pixel size of every micrograph, nm; outranks all other sources", 0 },
+    { "gate",      OPT_GATE,      NULL,   0, "exit with 4 when a target is missed", 0 },
+    { "no-report", OPT_NO_REPORT, NULL,   0, "tables only, no page", 0 },
+    { "fresh",     OPT_FRESH,     NULL,   0, "measure everything again, even what is remembered", 0 },
+    { "quiet",     OPT_QUIET,     NULL,   0, "no summary, no progress", 0 },
+    { "verbose",   OPT_VERBOSE,   NULL,   0, "progress also when the output is no terminal", 0 },
+    { 0 }
+};
+/* clang-format on */
+
+static error_t parse(int key, char *arg, struct argp_state *state) {
+    run_options *o = state->input;
+    double v = 0.0;
+    switch (key) {
+    case OPT_PROTOCOL: o->protocol = arg; break;
+    case OPT_SHEET: o->sheet = arg; break;
+    case OPT_OUT: o->out = arg; break;
+    case OPT_HISTORY: o->history = arg; break;
+    case OPT_JOBS:
+        if (!number_parse(arg, &v) || v < 0.0 || v > 1024.0 || v > (double)(int)v || v < (double)(int)v)
+            argp_error(state, "--jobs: found '%s', expected a whole number from 0 to 1024", arg);
+        o->jobs = (int)v;
+        break;
+    case OPT_PX:
+        if (!number_parse(arg, &v) || !(v > 0.0))
+            argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
+        o->px_nm = v;
+        break;
+    case OPT_GATE: o->gate = 1; break;
+    case OPT_NO_REPORT: o->no_report = 1; break;
+    case OPT_FRESH: o->fresh = 1; break;
+    case OPT_QUIET: o->quiet = 1; break;
+    case OPT_VERBOSE: o->verbose = 1; break;
+    case ARGP_KEY_ARG:
+        if (o->folder) argp_error(state, "one FOLDER only; found '%s' too", arg);
+        o->folder = arg;
+        break;
+    case ARGP_KEY_END:
+        if (!o->folder) argp_error(state, "FOLDER is missing: the folder that holds the micrographs");
+        break;
+    default: return ARGP_ERR_UNKNOWN;
+    }
+    return 0;
+}
+
+const struct argp run_argp = {
+    options, parse, "FOLDER",
+    "Loads the micrographs of a folder, measures their texture, predicts the reflectance of every sample, judges it "
+    "against the targets, remembers it, and writes tables, overlays and a report."
+    "\vExit status: 0 done; 1 failed inside or at reading or writing; 2 wrong use or wrong protocol; 3 done, but some "
+    "inputs could not be used (their rows say why); 4 with --gate: a target is missed.",
+    NULL, NULL, NULL
+};
+
+int cmd_run(int argc, char **argv) {
+    run_options o = { .px_nm = MISSING };
+    run_outcome outcome = { 0, 0 };
+    error e = { 0 };
+    if (argp_parse(&run_argp, argc, argv, 0, NULL, &o) != 0) return EXIT_USAGE;
+    if (run_folder(&o, &outcome, &e) != ST_OK) {
+        fprintf(stderr, "sward: %s\n", e.text);
+        return e.code == ST_BAD_INPUT ? EXIT_USAGE : EXIT_FAILED;
+    }
+    if (o.gate && outcome.missed) return EXIT_TARGET_MISSED;
+    return outcome.unusable ? EXIT_PARTIAL : EXIT_DONE;
+}

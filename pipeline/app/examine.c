@@ -1,0 +1,312 @@
+/* The only stage that holds a micrograph's pixels; everything it needs of them is done before they are freed, so that
+ * memory is bounded by the number of workers. */
+#include "app/examine.h"
+
+#include <stdlib.h>
+#include <string.h>
+
+#include "app/cache.h"
+#include "base/mem.h"
+#include "base/quantity.h"
+#include "io/file.h"
+#include "io/json.h"
+#include "io/load.h"
+#include "io/png_write.h"
+#include "report/overlay.h"
+#include "report/results.h"
+
+void examined_free(examined *x) {
+    image_row_free(&x->row);
+    free(x->detail);
+    free(x->json);
+    free(x->overlay);
+    free(x->cell_area_nm2);
+    *x = (examined){ 0 };
+}
+
+static void missing_row(image_row *r) {
+    r->px_nm = r->px_u_rel = r->clipped_share = MISSING;
+    r->width_px = r->height_px = r->strip_px = r->bit_depth = r->n_features = -1;
+    for (int q = 0; q < QUANTITIES; q++) {
+        double *v = (double *)(void *)((char *)r + quantity_table[q].in_image);
+        v[0] = v[1] = MISSING;
+    }
+}
+
+/* What changes a measurement: the pixels, the measuring protocol, the program; and what the overlay shows. */
+static status cache_key(const micrograph *m, const protocol *p, char key[65], error *e) {
+    textbuf t = { 0 };
+    text_addf(&t, "%s|%zu|%.17g|%.17g|%s|", m->hash, m->strip_rows, m->px_nm, m->px_u_rel, SWARD_VERSION);
+    protocol_measuring_text(p, &t);
+    status st = text_check(&t, "a key", e);
+    if (st == ST_OK) sha256_hex(t.s, t.n, key);
+    text_free(&t);
+    return st;
+}
+
+static void features_text(const texture *t, double px_nm, textbuf *out, int *no_memory) {
+    feature_row *rows = mem_array(t->n_found, sizeof *rows);
+    if (!rows) {
+        *no_memory = 1;
+        return;
+    }
+    for (size_t i = 0; i < t->n_found; i++) {
+        const feature *f = &t->features[i];
+        rows[i] = (feature_row){ .feature = (long)i + 1,
+                                 .x_px = f->x,
+                                 .y_px = f->y,
+                                 .x_nm = f->x * px_nm,
+                                 .y_nm = f->y * px_nm,
+                                 .cell_ecd_nm = f->cell_ecd_px * px_nm,
+                                 .top_ecd_nm = f->top_ecd_px * px_nm,
+                                 .feret_max_nm = f->feret_max_px * px_nm,
+                                 .feret_min_nm = f->feret_min_px * px_nm,
+                                 .aspect = f->feret_max_px / f->feret_min_px,
+                                 .nn_nm = f->nn_px * px_nm,
+                                 .border_weight = f->weight,
+                                 .n_neighbours = f->n_neighbours,
+                                 .in_guard = f->in_guard };
+    }
+    features_csv(rows, t->n_found, out);
+    free(rows);
+}
+
+/* A curve over px turns into one over nm (or 1/um) where the pixel size is known. */
+static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_memory) {
+    size_t n = 0, k = 0;
+    for (size_t c = 0; c < t->n_curves; c++) n += t->curves[c].n;
+    profile_row *rows = mem_array(n, sizeof *rows);
+    if (!rows) {
+        *no_memory = 1;
+        return;
+    }
+    static char names[][20] = { "acf", "acf_curvature", "psd_curvature", "pair_correlation", "curve" };
+    static char nm[] = "nm", per_um[] = "1/um", px[] = "px", per_px[] = "1/px", nm2[] = "nm2", px2[] = "px2", one[] = "1";
+    int scaled = isfinite(px_nm);
+    for (size_t c = 0; c < t->n_curves; c++) {
+        const curve *from = &t->curves[c];
+        int frequency = !strcmp(from->x_unit, "1/px"), area = !strcmp(from->y_unit, "px2");
+        size_t name = 0;
+        while (name < 4 && strcmp(names[name], from->name)) name++;
+        double sx = !scaled ? 1.0 : frequency ? 1e3 / px_nm : px_nm, sy = scaled && area ? px_nm * px_nm : 1.0;
+        char *x_unit = frequency ? (scaled ? per_um : per_px) : (scaled ? nm : px);
+        char *y_unit = area ? (scaled ? nm2 : px2) : one;
+        for (size_t i = 0; i < from->n; i++)
+            rows[k++] = (profile_row){ names[name], from->points[i].x * sx, x_unit, from->points[i].y * sy, y_unit };
+    }
+    profiles_csv(rows, n, out);
+    free(rows);
+}
+
+static status make_parent(const char *path, error *e) {
+    char *folder = mem_text(path);
+    if (!folder) return NO_MEMORY(e, "a path");
+    char *slash = strrchr(folder, '/');
+    status st = ST_OK;
+    if (slash) {
+        *slash = '\0';
+        st = folder_make(folder, e);
+    }
+    free(folder);
+    return st;
+}
+
+/* out/kind/stem + ending; *relative (may be NULL) gets the part behind out. */
+static status output_path(const char *out, const char *kind, const char *stem, const char *ending, char **path,
+                          char **relative, error *e) {
+    textbuf t = { 0 };
+    text_addf(&t, "%s/%s%s", kind, stem, ending);
+    status st = text_check(&t, "a path", e);
+    if (st != ST_OK) return st;
+    *path = path_join(out, t.s);
+    if (!*path) st = NO_MEMORY(e, "a path");
+    if (st == ST_OK) st = make_parent(*path, e);
+    if (relative) *relative = t.s;
+    else free(t.s);
+    return st;
+}
+
+static status write_table(const char *out, const char *kind, const char *stem, const texture *t, double px_nm,
+                          void (*fill)(const texture *, double, textbuf *, int *), error *e) {
+    textbuf body = { 0 };
+    char *path = NULL;
+    int no_memory = 0;
+    fill(t, px_nm, &body, &no_memory);
+    status st = no_memory ? NO_MEMORY(e, kind) : text_check(&body, kind, e);
+    if (st == ST_OK) st = output_path(out, kind, stem, ".csv", &path, NULL, e);
+    if (st == ST_OK) st = file_write(path, body.s ? body.s : "", body.n, e);
+    free(path);
+    text_free(&body);
+    return st;
+}
+
+static status write_overlay(const char *path, const micrograph *m, const texture *t, char hash[65], error *e) {
+    uint8_t *rgb = NULL, *bytes = NULL;
+    size_t n = 0;
+    png_format format = { m->nx, m->ny, 3, 8, isfinite(m->px_nm) ? m->px_nm : 0.0 };
+    status st = overlay_draw(m, t, &rgb, e);
+    if (st == ST_OK) st = png_encode(rgb, &format, &bytes, &n, e);
+    if (st == ST_OK) st = file_write(path, bytes, n, e);
+    if (st == ST_OK) sha256_hex(bytes, n, hash);
+    free(bytes);
+    free(rgb);
+    return st;
+}
+
+/* 1 when the overlay that belongs to a remembered measurement still lies where it was written. */
+static int overlay_is(const char *path, const char *hash) {
+    char *bytes = NULL, found[65];
+    size_t n = 0;
+    if (file_read(path, LIMIT_FILE_BYTES, &bytes, &n, NULL) != ST_OK) return 0;
+    sha256_hex(bytes, n, found);
+    free(bytes);
+    return !strcmp(found, hash);
+}
+
+/* Measures, or recalls; with an output folder the overlay is then in place. */
+static status measure_or_recall(const micrograph *m, const examine_options *o, const char *overlay, texture *t, error *e) {
+    char key[65] = "", hash[65] = "";
+    char *folder = NULL;
+    status st = ST_OK;
+    if (o->out) {
+        folder = path_join(o->out, "cache");
+        st = folder ? cache_key(m, o->protocol, key, e) : NO_MEMORY(e, "a path");
+        if (st == ST_OK && !o->fresh && cache_get(folder, key, t, hash)) {
+            if (overlay_is(overlay, hash)) goto done;
+            texture_free(t);
+        }
+    }
+    if (st == ST_OK) {
+        plane p = { m->px, m->nx, m->ny, m->bit_depth, m->clipped_low, m->clipped_high };
+        st = measure_plane(&p, &o->protocol->measure, t, e);
+    }
+    if (st == ST_OK && o->out) st = write_overlay(overlay, m, t, hash, e);
+    if (st == ST_OK && o->out) {
+        st = folder_make(folder, e);
+        if (st == ST_OK) st = cache_put(folder, key, t, hash, e);
+    }
+done:
+    free(folder);
+    return st;
+}
+
+static status fill_row(examined *x, const micrograph *m, const texture *t, double px_u_rel, error *e) {
+    image_row *r = &x->row;
+    r->px_nm = m->px_nm;
+    r->px_u_rel = isfinite(m->px_nm) ? px_u_rel : MISSING;
+    r->width_px = (long)m->file_nx;
+    r->height_px = (long)m->file_ny;
+    r->strip_px = (long)m->strip_rows;
+    r->bit_depth = m->bit_depth;
+    r->n_features = (long)t->n_features;
+    r->clipped_share = t->clipped_share;
+    r->px_source = mem_text(m->px_source);
+    r->relief = mem_text(t->relief == RELIEF_PORE ? "pore" : t->relief == RELIEF_HILLOCK ? "hillock" : "");
+    if (!r->px_source || !r->relief) return NO_MEMORY(e, "a row");
+    for (int q = 0; q < QUANTITIES; q++) {
+        x->figures[q] = figure_in_nm(texture_figure(t, q), quantity_table[q].power, m->px_nm, px_u_rel);
+        double *v = (double *)(void *)((char *)r + quantity_table[q].in_image);
+        v[0] = x->figures[q].m.value;
+        v[1] = figure_u(&x->figures[q]);
+    }
+    x->readable = 1;
+    x->relief = t->relief;
+    x->px_u_rel = px_u_rel;
+    x->reasons = t->reasons;
+    x->flags = t->flags | m->flags;
+    if (!isfinite(m->px_nm)) x->reasons |= FLAG(NO_PIXEL_SIZE);
+    memcpy(x->hash, m->hash, sizeof x->hash);
+    memcpy(x->acquired_at, m->acquired_at, sizeof x->acquired_at);
+
+    x->cell_area_nm2 = mem_array(t->n_found, sizeof *x->cell_area_nm2);
+    if (!x->cell_area_nm2) return NO_MEMORY(e, "the cells");
+    for (size_t i = 0; i < t->n_found; i++)
+        if (t->features[i].weight > 0.0)
+            x->cell_area_nm2[x->n_cells++] = t->features[i].cell_area_px2 * m->px_nm * m->px_nm;
+    return ST_OK;
+}
+
+static status fill_json(examined *x, const micrograph *m, const texture *t, error *e) {
+    textbuf j = { 0 };
+    double px = m->px_nm;
+    text_add(&j, "\"detail\": ");
+    json_string(&j, m->note);
+    text_addf(&j, ", \"sha256\": \"%s\", ", m->hash);
+    figures_json(x->figures, &j);
+    text_add(&j, ", ");
+    texture_px_json(t, &j);
+    text_add(&j, ", \"ring_z\": ");
+    json_number(&j, t->ring_z, 4);
+    text_add(&j, ", \"second_spacing_nm\": ");
+    json_number(&j, t->second_spacing_px * px, 5);
+    text_add(&j, ", \"relief_skewness\": ");
+    json_number(&j, t->relief_skew, 4);
+    text_add(&j, ", \"lognormal_anderson_darling\": ");
+    json_number(&j, t->lognormal_ad, 4);
+    if (x->overlay) {
+        text_add(&j, ", \"overlay\": ");
+        json_string(&j, x->overlay);
+    }
+    x->json = j.s;
+    x->detail = mem_text(m->note);
+    if (!x->detail) return NO_MEMORY(e, "a row");
+    return text_check(&j, "a row", e);
+}
+
+/* A file without a plane: the sentence is the reason. */
+static status unreadable(examined *x, const error *why, error *e) {
+    textbuf j = { 0 };
+    x->row.reason = mem_text(why->text);
+    x->detail = mem_text(why->text);
+    text_add(&j, "\"detail\": ");
+    json_string(&j, why->text);
+    x->json = j.s;
+    if (!x->row.reason || !x->detail) return NO_MEMORY(e, "a row");
+    return text_check(&j, "a row", e);
+}
+
+status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, const examine_options *o,
+               examined *out, error *e) {
+    micrograph m = { 0 };
+    texture t = { 0 };
+    char *overlay = NULL;
+    error why = { 0 };
+    load_options load = load_defaults();
+    load.px_nm_option = o->px_nm_option;
+    load.px_nm_sheet = sheet_px_nm;
+
+    missing_row(&out->row);
+    out->row.file = mem_text(relative);
+    status st = out->row.file ? ST_OK : NO_MEMORY(e, "a row");
+    if (st == ST_OK && load_file(path, &load, &m, &why) != ST_OK) {
+        st = unreadable(out, &why, e);
+        goto done;
+    }
+    if (st == ST_OK && o->out) st = output_path(o->out, "overlays", stem, ".png", &overlay, &out->overlay, e);
+    if (st == ST_OK && measure_or_recall(&m, o, overlay, &t, &why) != ST_OK) {
+        free(out->overlay);
+        out->overlay = NULL;
+        if (why.code == ST_IO) st = fail(e, ST_IO, "%s", why.text);
+        else st = unreadable(out, &why, e);
+        goto done;
+    }
+    if (st == ST_OK)
+        st = fill_row(out, &m, &t, isfinite(o->protocol->px_u_rel) ? o->protocol->px_u_rel : m.px_u_rel, e);
+    if (st == ST_OK) st = fill_json(out, &m, &t, e);
+    if (st == ST_OK && o->out) st = write_table(o->out, "features", stem, &t, m.px_nm, features_text, e);
+    if (st == ST_OK && o->out) st = write_table(o->out, "profiles", stem, &t, m.px_nm, profiles_text, e);
+done:
+    free(overlay);
+    texture_free(&t);
+    micrograph_free(&m);
+    return st;
+}
+
+status examine_finish(examined *x, error *e) {
+    char words[1024];
+    image_row *r = &x->row;
+    r->status = mem_text(!x->readable ? "unreadable" : x->reasons ? "excluded" : "ok");
+    r->flags = mem_text(flags_text(x->flags, words, sizeof words));
+    if (!r->reason) r->reason = mem_text(flags_text(x->reasons, words, sizeof words));
+    return r->status && r->flags && r->reason ? ST_OK : NO_MEMORY(e, "a row");
+}

@@ -1,0 +1,40 @@
+/* One micrograph through load and measure: its row, what joins it to its sample, and its own output files. */
+#ifndef SWARD_APP_EXAMINE_H
+#define SWARD_APP_EXAMINE_H
+#include "app/protocol.h"
+#include "app/quantities.h"
+
+typedef struct {
+    const protocol *protocol;
+    double px_nm_option;  /* --px; NAN: none */
+    const char *out;      /* output folder; NULL: no files (the command `measure`) */
+    int fresh;            /* 1: what was remembered is not used */
+} examine_options;
+
+typedef struct {
+    image_row row;        /* sample, flags and reason are filled by examine_finish */
+    char *detail;         /* sentence behind status or flags, "" if none */
+    char *json;           /* further members of the image's object in results.json */
+    char *overlay;        /* path relative to `out`, or NULL */
+    char hash[65], acquired_at[32];
+    int readable;         /* a plane was there */
+    relief relief;
+    flags reasons, flags;
+    figure figures[QUANTITIES];
+    double *cell_area_nm2; /* [n_cells] of the features, owned */
+    size_t n_cells;
+    double px_u_rel;
+} examined;
+
+/*   in   path opened; relative as it stands in the tables; stem of the output files ("sub/name")
+ *        sheet_px_nm NAN when the sheet says nothing
+ *   out  always filled, also for a file that cannot be read (status unreadable, reason = the sentence)
+ *   err  only what concerns the outputs: ST_IO a result could not be written, ST_NO_MEMORY */
+status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, const examine_options *o,
+               examined *out, error *e);
+
+/* Prints status, reason and flags into the row, after duplicates and times are known. err ST_NO_MEMORY */
+status examine_finish(examined *x, error *e);
+void examined_free(examined *x);
+
+#endif

@@ -1,0 +1,241 @@
+#include "app/folder.h"
+
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <strings.h>
+
+#include "app/names.h"
+#include "base/mem.h"
+#include "io/load.h"
+
+/* Pictures this program does not read still get a row with the reason: nothing is skipped in silence. */
+static int looks_like_picture(const char *relative) {
+    static const char *const endings[] = { ".jpg", ".jpeg", ".bmp", ".gif", ".webp", ".jp2" };
+    size_t n = strlen(relative);
+    if (load_knows_name(relative)) return 1;
+    for (size_t i = 0; i < sizeof endings / sizeof endings[0]; i++) {
+        size_t k = strlen(endings[i]);
+        if (n > k && !strcasecmp(relative + n - k, endings[i])) return 1;
+    }
+    return 0;
+}
+
+static int any_file(const char *relative) {
+    (void)relative;
+    return 1;
+}
+
+void folder_close(folder *f) {
+    for (size_t i = 0; i < f->n; i++) {
+        if (f->paths) free(f->paths[i]);
+        if (f->relative) free(f->relative[i]);
+        if (f->stems) free(f->stems[i]);
+    }
+    free(f->paths);
+    free(f->relative);
+    free(f->stems);
+    free(f->rows);
+    free(f->root);
+    sheet_free(&f->sheet);
+    text_free(&f->warnings);
+    *f = (folder){ 0 };
+}
+
+/* Index order: rows of the sheet first, in its order, then the others by name. */
+typedef struct {
+    size_t index, line;
+} place;
+
+static int by_line_then_index(const void *a, const void *b) {
+    const place *x = a, *y = b;
+    if (x->line != y->line) return x->line < y->line ? -1 : 1;
+    return (x->index > y->index) - (x->index < y->index);
+}
+
+static char *without_ending(const char *relative) {
+    char *stem = mem_text(relative);
+    if (!stem) return NULL;
+    char *slash = strrchr(stem, '/'), *dot = strrchr(stem, '.');
+    if (dot && dot > (slash ? slash + 1 : stem)) *dot = '\0';
+    return stem;
+}
+
+static int by_text(const void *a, const void *b) { return strcmp(*(char *const *)a, *(char *const *)b); }
+
+/* The path without its ending; where two files share it, both keep the ending ("a-png", "a-tif"). */
+static status make_stems(folder *f, error *e) {
+    char **sorted = mem_array(f->n, sizeof *sorted);
+    f->stems = mem_array(f->n, sizeof *f->stems);
+    status st = sorted && f->stems ? ST_OK : NO_MEMORY(e, "the names");
+    for (size_t i = 0; st == ST_OK && i < f->n; i++) {
+        sorted[i] = f->stems[i] = without_ending(f->relative[i]);
+        if (!f->stems[i]) st = NO_MEMORY(e, "the names");
+    }
+    if (st != ST_OK) goto done;
+    qsort(sorted, f->n, sizeof *sorted, by_text);
+    char **shared = mem_array(f->n, sizeof *shared);
+    size_t n_shared = 0;
+    if (!shared) {
+        st = NO_MEMORY(e, "the names");
+        goto done;
+    }
+    for (size_t i = 0; i < f->n; i++)
+        if ((i && !strcmp(sorted[i], sorted[i - 1])) || (i + 1 < f->n && !strcmp(sorted[i], sorted[i + 1])))
+            shared[n_shared++] = sorted[i];
+    for (size_t i = 0; st == ST_OK && i < f->n; i++) {
+        char *name = f->stems[i];
+        if (!n_shared || !bsearch(&name, shared, n_shared, sizeof *shared, by_text)) continue;
+        char *full = mem_text(f->relative[i]);
+        if (!full) {
+            st = NO_MEMORY(e, "the names");
+            break;
+        }
+        full[strlen(name)] = '-'; /* the dot of the ending */
+        f->stems[i] = full;
+    }
+    /* Names that were replaced are still in `shared`. */
+    for (size_t k = 0; k < n_shared; k++) {
+        int kept = 0;
+        for (size_t i = 0; i < f->n && !kept; i++) kept = f->stems[i] == shared[k];
+        if (!kept) free(shared[k]);
+    }
+    free(shared);
+done:
+    free(sorted);
+    return st;
+}
+
+static status adopt(folder *f, char **names, size_t n, const char *sheet_path, error *e) {
+    place *order = mem_array(n, sizeof *order);
+    status st = order ? ST_OK : NO_MEMORY(e, "the folder");
+    char *found = sheet_path ? mem_text(sheet_path) : path_join(f->root, "samples.csv");
+    if (!found) st = NO_MEMORY(e, "a path");
+    if (st == ST_OK && (sheet_path || file_exists(found))) {
+        st = sheet_read(found, &f->sheet, e);
+        if (st == ST_OK) st = sheet_match(&f->sheet, (const char *const *)names, n, &f->warnings, e);
+    }
+    f->paths = mem_array(n, sizeof *f->paths);
+    f->relative = mem_array(n, sizeof *f->relative);
+    f->rows = mem_array(n, sizeof *f->rows);
+    if (st == ST_OK && (!f->paths || !f->relative || !f->rows)) st = NO_MEMORY(e, "the folder");
+    if (st != ST_OK) goto done;
+    for (size_t i = 0; i < n; i++) {
+        const sheet_row *row = f->sheet.n_files ? sheet_row_of(&f->sheet, i) : NULL;
+        order[i] = (place){ i, row ? row->line : (size_t)-1 };
+    }
+    qsort(order, n, sizeof *order, by_line_then_index);
+    f->n = n;
+    for (size_t k = 0; st == ST_OK && k < n; k++) {
+        size_t i = order[k].index;
+        f->relative[k] = mem_text(names[i]);
+        f->paths[k] = path_join(f->root, names[i]);
+        f->rows[k] = f->sheet.n_files ? sheet_row_of(&f->sheet, i) : NULL;
+        if (!f->relative[k] || !f->paths[k]) st = NO_MEMORY(e, "the folder");
+    }
+    if (st == ST_OK) st = make_stems(f, e);
+done:
+    free(found);
+    free(order);
+    return st;
+}
+
+status folder_open(const char *root, const char *sheet_path, folder *out, error *e) {
+    folder f = { 0 };
+    file_list list = { 0 };
+    size_t n = 0;
+    f.root = mem_text(root);
+    status st = f.root ? folder_walk(root, any_file, &list, e) : NO_MEMORY(e, "a path");
+    if (st == ST_OK) {
+        for (size_t i = 0; i < list.n; i++)
+            if (looks_like_picture(list.paths[i])) {
+                char *p = list.paths[i];
+                list.paths[i] = list.paths[n];
+                list.paths[n++] = p;
+            }
+        f.n_other = list.n - n;
+        st = adopt(&f, list.paths, n, sheet_path, e);
+    }
+    if (st == ST_OK) {
+        *out = f;
+        f = (folder){ 0 };
+    }
+    file_list_free(&list);
+    folder_close(&f);
+    return st;
+}
+
+/* --- samples --- */
+
+static sample_group *group_named(sample_group *groups, size_t n, const char *name) {
+    for (size_t i = 0; i < n; i++)
+        if (!strcmp(groups[i].name, name)) return &groups[i];
+    return NULL;
+}
+
+/* The first non-empty text wins: one sample is one wafer or coupon. */
+static status adopt_text(char **slot, const char *text, error *e) {
+    if (*slot || !text || !text[0]) return ST_OK;
+    *slot = mem_text(text);
+    return *slot ? ST_OK : NO_MEMORY(e, "a sample");
+}
+
+static void adopt_time(sample_group *g, const folder *f, const examined *x, size_t i) {
+    const sheet_row *row = f->rows[i];
+    if (g->etched_at[0] && !g->time_from_file) return;
+    if (row && row->etched_at[0]) {
+        snprintf(g->etched_at, sizeof g->etched_at, "%s", row->etched_at);
+        g->time_from_file = 0;
+    } else if (x->acquired_at[0]) {
+        snprintf(g->etched_at, sizeof g->etched_at, "%s", x->acquired_at);
+        g->time_from_file = 0;
+    } else if (!g->etched_at[0]) {
+        file_time(f->paths[i], g->etched_at);
+        g->time_from_file = 1;
+    }
+}
+
+static status join_member(sample_group *g, const folder *f, const name_parts *parts, const examined *x, size_t i,
+                          error *e) {
+    const sheet_row *row = f->rows[i];
+    status st = adopt_text(&g->lot, row && row->lot[0] ? row->lot : parts->lot, e);
+    if (st == ST_OK) st = adopt_text(&g->wafer, row && row->wafer[0] ? row->wafer : parts->wafer, e);
+    if (st == ST_OK) st = adopt_text(&g->position, row && row->position[0] ? row->position : parts->position, e);
+    if (st != ST_OK) return st;
+    if (row && !isfinite(g->height_nm.value) && isfinite(row->height_nm))
+        g->height_nm = (quantity){ row->height_nm, row->height_nm_u, 1 };
+    if (row && !g->extra) g->extra = (const char *const *)row->extra;
+    adopt_time(g, f, x, i);
+    size_t *members = mem_grow(g->members, g->n_members + 1, sizeof *members);
+    if (!members) return NO_MEMORY(e, "a sample");
+    g->members = members;
+    g->members[g->n_members++] = i;
+    return ST_OK;
+}
+
+status folder_samples(const folder *f, const protocol *p, examined *all, sample_group **groups, size_t *n, error *e) {
+    sample_group *list = mem_array(f->n, sizeof *list);
+    size_t count = 0;
+    status st = list ? ST_OK : NO_MEMORY(e, "the samples");
+    for (size_t i = 0; st == ST_OK && i < f->n; i++) {
+        name_parts parts = { 0 };
+        const sheet_row *row = f->rows[i];
+        st = name_sample(f->relative[i], p->pattern, &parts, e);
+        if (st != ST_OK) break;
+        const char *name = row && row->sample[0] ? row->sample : parts.sample;
+        sample_group *g = group_named(list, count, name);
+        if (!g) {
+            g = &list[count];
+            *g = (sample_group){ .height_nm = quantity_missing() };
+            g->name = mem_text(name);
+            if (g->name) count++;
+            else st = NO_MEMORY(e, "the samples");
+        }
+        if (st == ST_OK && !(all[i].row.sample = mem_text(name))) st = NO_MEMORY(e, "the samples");
+        if (st == ST_OK) st = join_member(g, f, &parts, &all[i], i, e);
+        name_parts_free(&parts);
+    }
+    *groups = list;
+    *n = count;
+    return st;
+}

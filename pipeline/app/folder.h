@@ -1,0 +1,30 @@
+/* What a folder holds: micrographs in output order, their sheet rows, and the samples they form. */
+#ifndef SWARD_APP_FOLDER_H
+#define SWARD_APP_FOLDER_H
+#include "app/batch.h"
+#include "app/samplesheet.h"
+#include "io/file.h"
+
+typedef struct {
+    char *root;
+    char **paths;          /* [n] to open */
+    char **relative;       /* [n] below root; sheet order first, then byte order */
+    char **stems;          /* [n] unique names of output files */
+    const sheet_row **rows; /* [n] of the sheet, or NULL */
+    size_t n;
+    size_t n_other;        /* files that are no pictures */
+    sheet sheet;
+    textbuf warnings;      /* lines: rows of the sheet without a file */
+} folder;                  /* {0} = empty */
+
+/* Walks, reads the sheet (NULL: root/samples.csv if there), orders.
+ *   err ST_IO no such folder; ST_BAD_INPUT a bad sheet; ST_NO_MEMORY */
+status folder_open(const char *root, const char *sheet_path, folder *out, error *e);
+void folder_close(folder *f);
+
+/* Groups the micrographs into samples in order of first appearance.
+ *   out  groups[*n] owned (sample_group_free each, then free); names of the samples into all[i].row.sample
+ *   err  ST_BAD_INPUT; ST_NO_MEMORY */
+status folder_samples(const folder *f, const protocol *p, examined *all, sample_group **groups, size_t *n, error *e);
+
+#endif

@@ -1,0 +1,306 @@
+/* Pooling: figures in nm are weighted with their features; what varies from field to field averages out, the method's
+ * and the pixel size's parts are common to a sitting and do not (JCGM 100, correlated inputs). */
+#include "app/join.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/mem.h"
+#include "io/file.h"
+#include "io/json.h"
+#include "metrics/pool.h"
+
+void sample_group_free(sample_group *g) {
+    char *owned[] = { g->name, g->lot, g->wafer, g->position };
+    for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
+    free(g->members);
+    *g = (sample_group){ 0 };
+}
+
+void joined_free(joined *j) {
+    sample_row_free(&j->row);
+    free(j->json);
+    prediction_free(&j->prediction);
+    *j = (joined){ 0 };
+}
+
+static int used(const examined *x) { return x->readable && !x->reasons && !(x->flags & FLAG(DUPLICATE)); }
+
+static status pool(const sample_group *g, const examined *all, figure out[QUANTITIES], flags *seen, size_t *n_used,
+                   error *e) {
+    measured *m = mem_array(g->n_members, sizeof *m);
+    double *weight = mem_array(g->n_members, sizeof *weight);
+    status st = m && weight ? ST_OK : NO_MEMORY(e, "a sample");
+    for (int q = 0; st == ST_OK && q < QUANTITIES; q++) {
+        size_t n = 0;
+        double u_px_rel = 0.0;
+        for (size_t i = 0; i < g->n_members; i++) {
+            const examined *x = &all[g->members[i]];
+            if (!used(x)) continue;
+            m[n] = x->figures[q].m;
+            weight[n++] = (double)x->row.n_features;
+            if (x->px_u_rel > u_px_rel) u_px_rel = x->px_u_rel;
+            *seen |= x->flags;
+        }
+        *n_used = n;
+        out[q] = (figure){ { MISSING, MISSING, MISSING, 0 }, 0.0 };
+        pool_quantity(m, weight, n, &out[q].m); /* nowhere measured: stays missing */
+        out[q].u_px = fabs(quantity_table[q].power * out[q].m.value) * u_px_rel;
+    }
+    free(weight);
+    free(m);
+    return st;
+}
+
+static status set_texts(sample_row *r, const sample_group *g, error *e) {
+    r->sample = mem_text(g->name);
+    r->lot = mem_text(g->lot ? g->lot : "");
+    r->wafer = mem_text(g->wafer ? g->wafer : "");
+    r->position = mem_text(g->position ? g->position : "");
+    r->etched_at = mem_text(g->etched_at);
+    return r->sample && r->lot && r->wafer && r->position && r->etched_at ? ST_OK : NO_MEMORY(e, "a sample");
+}
+
+static void set_figures(sample_row *r, const figure *f, const figure *spacing) {
+    for (int q = 0; q < QUANTITIES; q++) {
+        if (quantity_table[q].in_sample == NOT_IN_SAMPLE) continue;
+        double *v = (double *)(void *)((char *)r + quantity_table[q].in_sample);
+        v[0] = f[q].m.value;
+        v[1] = figure_u(&f[q]);
+    }
+    r->spacing_nm = spacing->m.value;
+    r->spacing_nm_u = figure_u(spacing);
+}
+
+static void clear_prediction(sample_row *r) {
+    double *missing[] = { &r->height_nm, &r->height_nm_u, &r->aspect, &r->area_ratio, &r->weighted_reflectance,
+                          &r->weighted_reflectance_lo, &r->weighted_reflectance_hi, &r->current_loss_mA_cm2,
+                          &r->polished_reflectance, &r->coated_reflectance, &r->subwavelength_share };
+    for (size_t i = 0; i < sizeof missing / sizeof missing[0]; i++) *missing[i] = MISSING;
+}
+
+/* Areas of all cells of the used micrographs, only wanted when heights follow the size of the cell. */
+static status gather_cells(const sample_group *g, const examined *all, double **areas, size_t *n, error *e) {
+    size_t total = 0;
+    for (size_t i = 0; i < g->n_members; i++) total += all[g->members[i]].n_cells;
+    *areas = mem_array(total, sizeof **areas);
+    if (!*areas) return NO_MEMORY(e, "the cells of a sample");
+    for (size_t i = 0; i < g->n_members; i++) {
+        const examined *x = &all[g->members[i]];
+        if (!used(x)) continue;
+        memcpy(*areas + *n, x->cell_area_nm2, x->n_cells * sizeof **areas);
+        *n += x->n_cells;
+    }
+    return ST_OK;
+}
+
+static status link_and_predict(const sample_group *g, const examined *all, const protocol *p, const setup *s,
+                               const figure *spacing, joined *out, flags *f, error *e) {
+    sample_row *r = &out->row;
+    surface_input in = { .link = p->link, .measured = s->measured.n ? &s->measured : NULL };
+    double *areas = NULL;
+    height_source source = HEIGHT_DEFAULT;
+    in.spacing_nm = (quantity){ spacing->m.value, figure_u(spacing), spacing->m.n };
+    for (size_t i = 0; i < g->n_members; i++)
+        if (used(&all[g->members[i]])) in.pores = all[g->members[i]].relief == RELIEF_PORE;
+
+    status st = link_height(g->height_nm, &p->link, in.spacing_nm, &in.height_nm, &source, e);
+    if (st == ST_OK && fabs(p->link.height_by_size) > 0.0) {
+        st = gather_cells(g, all, &areas, &in.n_cells, e);
+        in.cell_area_nm2 = areas;
+    }
+    if (st == ST_OK) st = predict(&in, &s->optics, &out->prediction, e);
+    free(areas);
+    if (st != ST_OK) return fail_within(e, st, g->name);
+
+    const prediction *d = &out->prediction;
+    r->height_nm = in.height_nm.value;
+    r->height_nm_u = in.height_nm.u;
+    r->height_source = mem_text(height_source_name(source));
+    r->optics_model = mem_text(d->model);
+    r->aspect = d->aspect;
+    r->area_ratio = d->area_ratio;
+    r->weighted_reflectance = d->weighted;
+    r->weighted_reflectance_lo = d->weighted_lo;
+    r->weighted_reflectance_hi = d->weighted_hi;
+    r->current_loss_mA_cm2 = d->current_loss_mA_cm2;
+    r->polished_reflectance = d->polished;
+    r->coated_reflectance = d->coated;
+    r->subwavelength_share = d->shares.none;
+    if (height_is_assumed(source)) *f |= FLAG(HEIGHT_ASSUMED);
+    if (source != HEIGHT_CALIBRATED) *f |= FLAG(NO_CALIBRATION);
+    if (d->refused) *f |= FLAG(BEYOND_MODEL);
+    else if (d->shares.in_ambient > 0.0) *f |= FLAG(DIFFRACTS);
+    return r->height_source && r->optics_model ? ST_OK : NO_MEMORY(e, "a sample");
+}
+
+/* The reading of a target's quantity: by column name, with the parts that vary from run to run apart. */
+static reading read_quantity(const sample_row *r, const char *name, const figure *f, const figure *spacing,
+                             const prediction *d) {
+    reading out = { MISSING, MISSING, MISSING, MISSING, MISSING, "", 5 };
+    for (size_t c = 0; c < n_sample_columns; c++) {
+        const column *col = &sample_columns[c];
+        if (col->kind == COL_TEXT || strcmp(col->name, name)) continue;
+        const char *base = (const char *)r + col->offset;
+        out.unit = !strcmp(col->unit, "1") ? "" : col->unit;
+        out.digits = col->digits ? col->digits : 6;
+        out.value = col->kind == COL_NUMBER ? *(const double *)(const void *)base
+                                            : (double)*(const long *)(const void *)base;
+        size_t n = strlen(name);
+        if (c + 1 < n_sample_columns && !strncmp(sample_columns[c + 1].name, name, n) &&
+            !strcmp(sample_columns[c + 1].name + n, "_u"))
+            out.u = *(const double *)(const void *)((const char *)r + sample_columns[c + 1].offset);
+        if (!strcmp(name, "spacing_nm")) out.u_repeat = spacing->m.u_sampling;
+        for (int q = 0; q < QUANTITIES; q++)
+            if (quantity_table[q].in_sample == col->offset) out.u_repeat = f[q].m.u_sampling;
+        if (!strcmp(name, "weighted_reflectance")) {
+            out.lo = r->weighted_reflectance_lo;
+            out.hi = r->weighted_reflectance_hi;
+            out.u = (out.hi - out.lo) / 4.0;
+            out.u_repeat = d->u_height;
+        }
+        break;
+    }
+    return out;
+}
+
+static status judge_sample(const protocol *p, const figure *f, const figure *spacing, joined *out, textbuf *members,
+                           error *e) {
+    sample_row *r = &out->row;
+    textbuf reasons = { 0 };
+    verdict *all = mem_array(p->n_targets, sizeof *all);
+    status st = all ? ST_OK : NO_MEMORY(e, "the verdicts");
+    text_add(members, "\"judgements\": [");
+    for (size_t i = 0; st == ST_OK && i < p->n_targets; i++) {
+        reading reading_i = read_quantity(r, p->targets[i].quantity, f, spacing, &out->prediction);
+        judgement j;
+        judge(&p->targets[i], &reading_i, &j);
+        all[i] = j.verdict;
+        r->extra[i] = mem_text(verdict_word(j.verdict));
+        if (!r->extra[i]) st = NO_MEMORY(e, "a verdict");
+        text_addf(&reasons, "%s%s", i ? "; " : "", j.sentence);
+        text_addf(members, "%s{\"quantity\": ", i ? ", " : "");
+        json_string(members, p->targets[i].quantity);
+        text_addf(members, ", \"verdict\": \"%s\", \"conformance_probability\": ", verdict_word(j.verdict));
+        json_number(members, j.conformance_probability, 4);
+        text_add(members, ", \"sentence\": ");
+        json_string(members, j.sentence);
+        text_add(members, "}");
+    }
+    text_add(members, "]");
+    if (st == ST_OK) {
+        out->verdict = p->n_targets ? verdict_worst(all, p->n_targets) : VERDICT_NO_TARGET;
+        r->verdict = mem_text(verdict_word(out->verdict));
+        r->verdict_reasons = mem_text(reasons.s ? reasons.s : "");
+        if (!r->verdict || !r->verdict_reasons) st = NO_MEMORY(e, "a verdict");
+    }
+    if (st == ST_OK) st = text_check(&reasons, "the verdicts", e);
+    text_free(&reasons);
+    free(all);
+    return st;
+}
+
+static void prediction_json(const prediction *d, textbuf *members) {
+    const struct { const char *name; double v; } numbers[] = {
+        { "orders_none", d->shares.none },           { "orders_in_silicon", d->shares.in_substrate },
+        { "orders_in_air", d->shares.in_ambient },   { "u_height", d->u_height },
+        { "u_shape", d->u_shape },                   { "u_spread", d->u_spread },
+        { "u_mixing", d->u_mixing },                 { "u_model", d->u_model },
+        { "model_bias", d->model_bias },
+    };
+    text_add(members, "\"prediction\": {");
+    for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) {
+        text_addf(members, "\"%s\": ", numbers[i].name);
+        json_number(members, numbers[i].v, 4);
+        text_add(members, ", ");
+    }
+    text_addf(members, "\"slabs\": %zu, \"note\": ", d->slabs);
+    json_string(members, d->note);
+    text_add(members, "}");
+}
+
+static status fingerprint(const sample_group *g, const examined *all, const char *basis, char out[65], error *e) {
+    textbuf t = { 0 };
+    text_addf(&t, "%s|%s|%s|%.17g|%.17g", basis, g->name, g->etched_at, g->height_nm.value, g->height_nm.u);
+    for (size_t i = 0; i < g->n_members; i++) {
+        const examined *x = &all[g->members[i]];
+        text_addf(&t, "|%s|%d|%.17g", x->hash, used(x), x->row.px_nm);
+    }
+    status st = text_check(&t, "a fingerprint", e);
+    if (st == ST_OK) sha256_hex(t.s, t.n, out);
+    text_free(&t);
+    return st;
+}
+
+status join_sample(const sample_group *g, const examined *all, const protocol *p, const setup *s, size_t n_extra,
+                   const char *basis, joined *out, error *e) {
+    figure f[QUANTITIES];
+    flags seen = 0;
+    size_t n_used = 0;
+    char words[1024];
+    textbuf members = { 0 };
+    joined made = { 0 };
+    sample_row *r = &made.row;
+    clear_prediction(r);
+    r->n_images = (long)g->n_members;
+
+    status st = pool(g, all, f, &seen, &n_used, e);
+    figure spacing = f[p->spacing == SPACING_DENSITY ? QUANTITY_HEX : QUANTITY_ACF];
+    if (st == ST_OK) st = set_texts(r, g, e);
+    r->n_extra = p->n_targets + n_extra;
+    r->extra = mem_array(r->n_extra, sizeof *r->extra);
+    if (st == ST_OK && !r->extra) st = NO_MEMORY(e, "a sample");
+    for (size_t k = 0; st == ST_OK && k < n_extra; k++) {
+        r->extra[p->n_targets + k] = mem_text(g->extra ? g->extra[k] : "");
+        if (!r->extra[p->n_targets + k]) st = NO_MEMORY(e, "a sample");
+    }
+    if (st != ST_OK) goto done;
+    r->n_used = (long)n_used;
+    set_figures(r, f, &spacing);
+    seen &= ~(FLAG(DUPLICATE) | FLAG(MANY_PAGES) | FLAG(COLOUR));
+    if (n_used == 1) seen |= FLAG(ONE_MICROGRAPH);
+    if (g->time_from_file) seen |= FLAG(TIME_FROM_FILE);
+
+    /* A measured profile predicts without any spacing; everything else needs one. */
+    if (n_used && (isfinite(spacing.m.value) || s->measured.n)) {
+        error why = { 0 };
+        st = link_and_predict(g, all, p, s, &spacing, &made, &seen, &why);
+        if (st == ST_OK) {
+            prediction_json(&made.prediction, &members);
+        } else if (st == ST_BAD_INPUT || st == ST_NO_RESULT) { /* one sample's trouble does not end the run */
+            made.failed = 1;
+            st = ST_OK;
+            text_add(&members, "\"prediction\": null, \"prediction_error\": ");
+            json_string(&members, why.text);
+        } else {
+            fail(e, st, "%s", why.text);
+        }
+    } else {
+        text_add(&members, "\"prediction\": null");
+    }
+    text_add(&members, ", ");
+    if (st == ST_OK) {
+        figures_json(f, &members);
+        text_add(&members, ", ");
+        st = judge_sample(p, f, &spacing, &made, &members, e);
+    }
+    if (st == ST_OK) st = fingerprint(g, all, basis, made.fingerprint, e);
+    if (st == ST_OK) {
+        r->flags = mem_text(flags_text(seen, words, sizeof words));
+        if (!r->height_source) r->height_source = mem_text("");
+        if (!r->optics_model) r->optics_model = mem_text("");
+        if (!r->flags || !r->height_source || !r->optics_model) st = NO_MEMORY(e, "a sample");
+    }
+    if (st == ST_OK) st = text_check(&members, "a sample", e);
+    if (st == ST_OK) {
+        made.json = members.s;
+        members = (textbuf){ 0 };
+        *out = made;
+        made = (joined){ 0 };
+    }
+done:
+    text_free(&members);
+    joined_free(&made);
+    return st;
+}

@@ -1,0 +1,40 @@
+/* Micrographs -> samples: the only step that needs two micrographs at once. Pools texture figures, links, predicts,
+ * judges. */
+#ifndef SWARD_APP_JOIN_H
+#define SWARD_APP_JOIN_H
+#include "app/examine.h"
+#include "app/materials.h"
+#include "app/samplesheet.h"
+#include "judge/target.h"
+
+/* What belongs together, before it is joined. Borrowed except where said. */
+typedef struct {
+    char *name, *lot, *wafer, *position; /* owned */
+    char etched_at[32];
+    int time_from_file;
+    quantity height_nm;        /* of the sheet; value NAN: none */
+    const char *const *extra;  /* carried-along cells of the sheet, NULL: none */
+    size_t *members;           /* indices into the examined micrographs, owned */
+    size_t n_members;
+} sample_group;
+
+void sample_group_free(sample_group *g);
+
+typedef struct {
+    sample_row row;
+    char *json;                /* further members of the sample's object in results.json */
+    prediction prediction;
+    verdict verdict;
+    int failed;                /* 1: no prediction, the sentence is in `json` as "prediction_error" */
+    char fingerprint[65];
+} joined;
+
+/*   in   all[] examined micrographs; a duplicate (flag DUPLICATE) is counted but not used
+ *        n_extra carried-along columns behind the verdict columns
+ *        basis text that stands for protocol, materials and version in the fingerprint
+ *   err  ST_BAD_INPUT from the link or the optics, with the sample's name; ST_NO_MEMORY */
+status join_sample(const sample_group *g, const examined *all, const protocol *p, const setup *s, size_t n_extra,
+                   const char *basis, joined *out, error *e);
+void joined_free(joined *j);
+
+#endif

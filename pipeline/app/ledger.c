@@ -1,0 +1,100 @@
+#include "app/ledger.h"
+
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/mem.h"
+#include "io/file.h"
+#include "io/json.h"
+#include "judge/history.h"
+
+void ledger_free(ledger_result *r) {
+    free(r->path);
+    free(r->json);
+    *r = (ledger_result){ 0 };
+}
+
+/* The samples.csv row as one JSON object, in an array of its own. */
+static status rows_json(const joined *samples, size_t n, char **out, error *e) {
+    status st = ST_OK;
+    for (size_t i = 0; st == ST_OK && i < n; i++) {
+        textbuf t = { 0 };
+        table_view view = { sample_columns, n_sample_columns, &samples[i].row, 1, sizeof samples[i].row, NULL, 0, NULL };
+        table_row_to_json(&view, 0, &t);
+        st = text_check(&t, "a row of the history", e);
+        out[i] = t.s;
+    }
+    return st;
+}
+
+/* The newest entry of each sample: rows come in order of etched_at, sample, run_at. */
+static int superseded(const history_list *l, size_t i) {
+    const history_row *r = &l->rows[i];
+    return i + 1 < l->n && !strcmp(l->rows[i + 1].sample, r->sample) && !strcmp(l->rows[i + 1].etched_at, r->etched_at);
+}
+
+static void series_json(const history_list *l, textbuf *t) {
+    const char *separator = "";
+    text_add(t, "[");
+    for (size_t i = 0; i < l->n; i++) {
+        const history_row *r = &l->rows[i];
+        if (superseded(l, i)) continue;
+        text_addf(t, "%s{\"sample\": ", separator);
+        json_string(t, r->sample);
+        text_add(t, ", \"lot\": ");
+        json_string(t, r->lot);
+        text_add(t, ", \"etched_at\": ");
+        json_string(t, r->etched_at);
+        text_add(t, ", \"spacing_nm\": ");
+        json_number(t, r->spacing_nm, 5);
+        text_add(t, ", \"spacing_nm_u\": ");
+        json_number(t, r->spacing_nm_u, 3);
+        text_add(t, ", \"weighted_reflectance\": ");
+        json_number(t, r->weighted_reflectance, 5);
+        text_add(t, ", \"verdict\": ");
+        json_string(t, r->verdict);
+        text_add(t, "}");
+        separator = ", ";
+    }
+    text_add(t, "]");
+}
+
+static history_row entry(const joined *j, const protocol *p, const char *run_at, const char *row_json) {
+    const sample_row *r = &j->row;
+    return (history_row){ .sample = r->sample, .lot = r->lot, .wafer = r->wafer, .etched_at = r->etched_at,
+                          .run_at = run_at, .fingerprint = j->fingerprint, .version = SWARD_VERSION,
+                          .protocol = p->name, .spacing_nm = r->spacing_nm, .spacing_nm_u = r->spacing_nm_u,
+                          .density_per_um2 = r->density_per_um2, .size_d50_nm = r->size_d50_nm,
+                          .weighted_reflectance = r->weighted_reflectance, .verdict = r->verdict, .row_json = row_json };
+}
+
+status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p,
+                   const joined *samples, size_t n, ledger_result *result, error *e) {
+    history *h = NULL;
+    history_list list = { 0 };
+    history_row *rows = mem_array(n, sizeof *rows);
+    char **row_json = mem_array(n, sizeof *row_json);
+    textbuf series = { 0 };
+    status st = rows && row_json ? rows_json(samples, n, row_json, e) : NO_MEMORY(e, "the history");
+    result->stays_with_output = !path;
+    result->path = path ? mem_text(path) : path_join(out, "history.sqlite");
+    if (st == ST_OK && !result->path) st = NO_MEMORY(e, "a path");
+    for (size_t i = 0; st == ST_OK && i < n; i++) rows[i] = entry(&samples[i], p, run_at, row_json[i]);
+    if (st == ST_OK) st = history_open(result->path, 0, &h, e);
+    if (st == ST_OK) st = history_add(h, rows, n, &result->added, e);
+    if (st == ST_OK) st = history_read(h, NULL, NULL, &list, e);
+    if (st == ST_OK) {
+        result->total = list.n;
+        series_json(&list, &series);
+        st = text_check(&series, "the history", e);
+        result->json = series.s;
+        series = (textbuf){ 0 };
+    }
+    history_list_free(&list);
+    history_close(h);
+    text_free(&series);
+    for (size_t i = 0; row_json && i < n; i++) free(row_json[i]);
+    free(row_json);
+    free(rows);
+    return st;
+}

@@ -1,0 +1,20 @@
+/* The run's entry in the history and what the report shows of it. */
+#ifndef SWARD_APP_LEDGER_H
+#define SWARD_APP_LEDGER_H
+#include "app/join.h"
+
+typedef struct {
+    char *path;        /* of the ledger */
+    char *json;        /* array of {sample, etched_at, spacing_nm, spacing_nm_u, weighted_reflectance, verdict} in time
+                          order, one entry per sample: its newest run */
+    size_t added, total;
+    int stays_with_output; /* no place was named: the ledger lies in OUT */
+} ledger_result;
+
+/* Adds every sample once and reads the ledger back. `path` NULL: OUT/history.sqlite.
+ * err ST_IO, ST_NO_MEMORY; ST_BAD_INPUT the file is no ledger */
+status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p,
+                   const joined *samples, size_t n, ledger_result *result, error *e);
+void ledger_free(ledger_result *r);
+
+#endif

@@ -1,0 +1,70 @@
+#include "app/summary.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <string.h>
+
+#include "base/number.h"
+
+static void spacing_cell(const sample_row *r, char *out, size_t size) {
+    char v[NUMBER_TEXT], u[NUMBER_TEXT];
+    if (isfinite(r->spacing_nm))
+        snprintf(out, size, "%s +- %s nm", number_text(r->spacing_nm, 4, v), number_text(2.0 * r->spacing_nm_u, 2, u));
+    else
+        snprintf(out, size, "-");
+}
+
+static void reflectance_cell(const sample_row *r, char *out, size_t size) {
+    char v[NUMBER_TEXT], lo[NUMBER_TEXT], hi[NUMBER_TEXT];
+    if (isfinite(r->weighted_reflectance))
+        snprintf(out, size, "%s %% (%s to %s)", number_percent(r->weighted_reflectance, 3, v),
+                 number_percent(r->weighted_reflectance_lo, 2, lo), number_percent(r->weighted_reflectance_hi, 2, hi));
+    else
+        snprintf(out, size, "-");
+}
+
+static void one_sample(const publication *p, size_t k, int width, textbuf *out) {
+    const sample_row *r = &p->samples[k].row;
+    char spacing[64], R[96];
+    spacing_cell(r, spacing, sizeof spacing);
+    reflectance_cell(r, R, sizeof R);
+    text_addf(out, "  %-*s  %-20s  %-28s  %s\n", width, r->sample, spacing, R, r->verdict);
+}
+
+static void unusable(const publication *p, textbuf *out) {
+    for (size_t i = 0; i < p->folder->n; i++) {
+        const examined *x = &p->images[i];
+        if (x->readable && !x->reasons) continue;
+        text_addf(out, "  %s: %s (%s)\n", x->row.file, x->row.status, x->row.reason);
+    }
+}
+
+void summary_text(const publication *p, textbuf *out) {
+    size_t counts[5] = { 0 }, ok = 0, excluded = 0;
+    int width = 6;
+    for (size_t i = 0; i < p->folder->n; i++) {
+        if (!p->images[i].readable) continue;
+        if (p->images[i].reasons) excluded++;
+        else ok++;
+    }
+    for (size_t k = 0; k < p->n_groups; k++) {
+        int n = (int)strlen(p->samples[k].row.sample);
+        if (n > width && n < 40) width = n;
+        counts[p->samples[k].verdict]++;
+    }
+    text_addf(out, "%zu micrographs: %zu measured, %zu excluded, %zu unreadable. %zu samples", p->folder->n, ok, excluded,
+              p->folder->n - ok - excluded, p->n_groups);
+    if (p->protocol->n_targets)
+        text_addf(out, ": %zu conform, %zu fail, %zu undecided, %zu not measured.\n", counts[VERDICT_CONFORMS],
+                  counts[VERDICT_FAILS], counts[VERDICT_UNDECIDED], counts[VERDICT_NOT_MEASURED]);
+    else
+        text_add(out, ". No targets: name them in the protocol to get verdicts.\n");
+    text_addf(out, "  %-*s  %-20s  %-28s  %s\n", width, "sample", "spacing (k = 2)", "weighted reflectance (95 %)", "verdict");
+    for (size_t k = 0; k < p->n_groups; k++) one_sample(p, k, width, out);
+    if (ok < p->folder->n) {
+        text_add(out, "Not used:\n");
+        unusable(p, out);
+    }
+    if (p->folder->n_other) text_addf(out, "%zu other files are no pictures.\n", p->folder->n_other);
+    if (p->folder->warnings.n) text_addf(out, "Sample sheet:\n%s", p->folder->warnings.s);
+}
