@@ -2,7 +2,7 @@
 # at any thread count. -fno-math-errno changes no value.
 add_library(sward_flags INTERFACE)
 target_compile_features(sward_flags INTERFACE c_std_11)
-target_compile_definitions(sward_flags INTERFACE _POSIX_C_SOURCE=200809L)
+target_compile_definitions(sward_flags INTERFACE _POSIX_C_SOURCE=200809L _XOPEN_SOURCE=700)
 target_compile_options(sward_flags INTERFACE
   -Wall -Wextra -Wpedantic -Wshadow -Wconversion -Wsign-conversion -Wdouble-promotion -Wfloat-equal -Wcast-qual
   -Wwrite-strings -Wstrict-prototypes -Wmissing-prototypes -Wold-style-definition -Wundef -Wvla -Wformat=2
