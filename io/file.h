@@ -6,10 +6,13 @@
 
 #include "base/status.h"
 
-/* Reads a whole regular file (size checked against `limit`), NUL added behind the n bytes. Caller frees *bytes. */
+/* Reads a whole regular file (size checked against `limit`), NUL added behind the n bytes. Caller frees *bytes.
+ *   err  ST_IO not there, no regular file, reading fails; ST_NO_MEMORY larger than the limit. The sentence does not
+ *        repeat the path (the caller knows how the user wrote it: fail_within). */
 status file_read(const char *path, size_t limit, char **bytes, size_t *n, error *e);
 
-/* Writes to a temporary name beside `path`, fsyncs, renames: readers see the old or the new file, never a part. */
+/* Writes to a temporary name beside `path`, fsyncs, renames: readers see the old or the new file, never a part.
+ *   err  ST_IO with the path; nothing is left behind */
 status file_write(const char *path, const void *bytes, size_t n, error *e);
 
 status folder_make(const char *path, error *e); /* with its parents; fine if it exists */
@@ -24,7 +27,7 @@ typedef struct {
 } file_list;
 /* Every regular file below `root` for which keep(relative path) is true. Left out: names that begin with a dot,
  * folders that hold sward's own datapackage.json, links that leave the root or loop, folders deeper than
- * LIMIT_FOLDER_DEPTH. err ST_IO the folder cannot be read; ST_NO_MEMORY more than LIMIT_FOLDER_FILES. */
+ * LIMIT_FOLDER_DEPTH. The root itself is always walked. err ST_IO the folder cannot be read; ST_NO_MEMORY more than LIMIT_FOLDER_FILES. */
 status folder_walk(const char *root, int (*keep)(const char *relative), file_list *out, error *e);
 void file_list_free(file_list *l);
 

@@ -14,11 +14,15 @@ typedef struct {
     char **comments;   /* [n_comments] text behind the leading '#', blanks trimmed */
     size_t n_comments;
     char separator;
-} csv;                 /* {0} = empty; all strings owned */
+    char *text;        /* what all strings above point into */
+} csv;                 /* {0} = empty; owns everything */
 
-/*   err  ST_BAD_INPUT with the line: no header, a name twice, a row with more cells than the header, an
- *        unclosed quote, a limit passed. `what` names the file in the sentence. */
+/* Empty cells that a spreadsheet leaves at the end of a line, header included, are dropped.
+ *   err  ST_BAD_INPUT with the line: no header, a column without a name, a name twice, a row with more cells than the
+ *        header, an unclosed quote, a zero byte, a limit passed; ST_NO_MEMORY. `what` names the file in the sentence.
+ *   src  RFC 4180 (2005) */
 status csv_parse(const char *bytes, size_t n, const char *what, csv *out, error *e);
+/* The same for a file, which the sentence names. err ST_IO it cannot be read. */
 status csv_read(const char *path, csv *out, error *e);
 void csv_free(csv *c);
 

@@ -1,0 +1,57 @@
+/* The decoded picture and the list of statements about its scale: made, filled, freed. */
+#include <math.h>
+#include <stdarg.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/limits.h"
+#include "base/mem.h"
+#include "io/picture_priv.h"
+
+void scales_add(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm) {
+    if (isnan(y_nm)) y_nm = x_nm;
+    size_t room = rank <= SCALE_SIDECAR ? MAX_SCALES : MAX_SCALES - 4; /* the file never crowds the user out */
+    if (s->n >= room || !(x_nm > 0.0) || !(y_nm > 0.0) || !isfinite(x_nm) || !isfinite(y_nm)) return;
+    scale *k = &s->list[s->n++];
+    *k = (scale){ .rank = rank, .x_nm = x_nm, .y_nm = y_nm, .u_rel = (double)NAN };
+    snprintf(k->name, sizeof k->name, "%s", name);
+}
+
+void note_add(char note[MAX_NOTE], const char *fmt, ...) {
+    size_t n = strlen(note);
+    if (n + 2 >= MAX_NOTE) return;
+    if (n) note[n++] = ' ';
+    va_list args;
+    va_start(args, fmt);
+    int want = vsnprintf(note + n, MAX_NOTE - n, fmt, args);
+    va_end(args);
+    if (want < 0) note[n] = '\0';
+    if (want < 0 || (size_t)want < MAX_NOTE - n) return;
+    char *blank = strrchr(note, ' '); /* never half a word, never half a UTF-8 sequence */
+    if (blank) *blank = '\0';
+}
+
+void picture_free(picture *p) {
+    free(p->px);
+    *p = (picture){ 0 };
+}
+
+status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *e) {
+    if (!nx || !ny) return fail(e, ST_BAD_INPUT, "the picture has no pixels (%zu x %zu)", nx, ny);
+    if (nx > LIMIT_SIDE || ny > LIMIT_SIDE || nx > max_pixels / ny)
+        return fail(e, ST_NO_MEMORY, "the picture is too large: %zu x %zu pixels, at most %zu a side and %zu in all", nx,
+                    ny, LIMIT_SIDE, max_pixels);
+    p->px = mem_array(nx * ny, sizeof *p->px);
+    if (!p->px) return fail(e, ST_NO_MEMORY, "not enough memory for %zu x %zu pixels", nx, ny);
+    p->nx = nx;
+    p->ny = ny;
+    return ST_OK;
+}
+
+void level_table(int bits, float table[256]) {
+    unsigned top = (1u << bits) - 1u;
+    for (unsigned v = 0; v < 256; v++) table[v] = v < top ? (float)((double)v / top) : 1.0f;
+}
+
+float level_of_16(unsigned v) { return (float)((double)v / 65535.0); }

@@ -1,0 +1,74 @@
+/* What a decoder hands to load.c: the plane as stored, and every statement about the pixel size it met. Not for
+ * other rooms. */
+#ifndef SWARD_IO_PICTURE_PRIV_H
+#define SWARD_IO_PICTURE_PRIV_H
+#include <stddef.h>
+#include <stdint.h>
+
+#include "base/flags.h"
+#include "base/status.h"
+
+/* Order of trust, the most specific first; `option` and `sheet` come from the caller. */
+typedef enum {
+    SCALE_OPTION,
+    SCALE_SHEET,
+    SCALE_SIDECAR,
+    SCALE_TAG,
+    SCALE_OME,
+    SCALE_DESCRIPTION,
+    SCALE_SCAL,
+    SCALE_RESOLUTION /* the only rank behind the 1 um gate: it may be a screen's or a printer's */
+} scale_rank;
+
+typedef struct {
+    scale_rank rank;
+    char name[24];     /* as in micrograph.h, px_source */
+    double x_nm, y_nm; /* per pixel of the stored picture */
+    double u_rel;      /* relative standard uncertainty the source itself implies; NAN: none */
+} scale;
+
+enum { MAX_SCALES = 12, MAX_NOTE = 480 };
+
+typedef struct {
+    scale list[MAX_SCALES];
+    size_t n;
+    char note[MAX_NOTE]; /* why a source that is there was not used; sentences */
+} scales;
+
+/* Adds a statement; zero, negative or not finite means "unknown" and is dropped. y_nm NAN: as x. */
+void scales_add(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm);
+/* Appends a sentence, cut at a blank when the room ends. */
+void note_add(char note[MAX_NOTE], const char *fmt, ...) __attribute__((format(printf, 2, 3)));
+
+typedef struct {
+    float *px; /* [ny][nx], 0..1, owned */
+    size_t nx, ny;
+    int bit_depth;
+    flags flags;          /* COLOUR, MANY_PAGES */
+    size_t strip_stated;  /* rows the file itself says are strip, 0: it does not say */
+    char acquired_at[32];
+    char note[MAX_NOTE];
+    scales scales;
+} picture; /* {0} = empty */
+
+void picture_free(picture *p);
+
+/* Refuses sizes outside the limits before anything is allocated. `most_bytes_per_pixel` of the data left in the file
+ * are judged by the decoder itself. */
+status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *e);
+
+/* Luminance of linear-light or coded R, G, B alike; equal channels give that channel exactly.
+ *   src  weights of Rec. ITU-R BT.709-6 (2015), item 3.2 */
+static inline float picture_luminance(float r, float g, float b) {
+    double y = 0.2126 * (double)r + 0.7152 * (double)g + 0.0722 * (double)b;
+    return y < 1.0 ? (float)y : 1.0f;
+}
+
+status png_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
+status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
+
+/* Levels 0..1 of every code of a sample with `bits` bits (1, 2, 4, 8): table[v] = v / (2^bits - 1). */
+void level_table(int bits, float table[256]);
+float level_of_16(unsigned v);
+
+#endif
