@@ -3,6 +3,9 @@
 #define SWARD_APP_COMMAND_H
 #include <argp.h>
 
+#include "base/status.h"
+#include "base/text.h"
+
 enum { EXIT_DONE = 0, EXIT_FAILED = 1, EXIT_USAGE = 2, EXIT_PARTIAL = 3, EXIT_TARGET_MISSED = 4 };
 
 typedef struct {
@@ -20,5 +23,21 @@ int cmd_predict(int argc, char **argv);
 int cmd_render(int argc, char **argv);
 int cmd_history(int argc, char **argv);
 int cmd_protocol(int argc, char **argv);
+
+/* Prints "sward NAME: sentence" to stderr. Returns EXIT_USAGE when the user's input is at fault, else EXIT_FAILED. */
+int command_failed(const char *name, const error *e);
+
+/* Prints the text to stdout and frees it. Returns EXIT_DONE, or EXIT_FAILED with a sentence on stderr. main checks
+ * stdout once more when the program ends. */
+int command_print(const char *name, textbuf *t);
+
+/* The first long option in argv that the command does not have: EXIT_USAGE with a hint on stderr; EXIT_DONE: all known. argp
+ * alone names the option but no near one. */
+int command_check_options(const command *c, int argc, char **argv);
+
+/* Overview of all commands for `sward --help`; the manual page in man(7) macros; completion for bash. */
+void help_overview(const command *commands, size_t n, textbuf *out);
+void help_manual(const command *commands, size_t n, textbuf *out);
+void help_completion(const command *commands, size_t n, textbuf *out);
 
 #endif

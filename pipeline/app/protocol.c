@@ -20,7 +20,7 @@
 
 /* What every step of reading needs. */
 typedef struct {
-    const json *doc;
+    const json *doc; /* NULL: the value comes from an option, `what` is its name and there is no line */
     const char *what, *folder;
     protocol *p;
     error *e;
@@ -66,11 +66,15 @@ void protocol_free(protocol *p) {
     *p = (protocol){ 0 };
 }
 
+static size_t line_of(const reader *r, const cJSON *node) { return r->doc ? json_line(r->doc, node) : 0; }
+
 /* The sentence of every wrong value: where, what was found, what was expected. */
 static status wrong(const reader *r, size_t line, const char *where, const cJSON *found, const char *expected) {
     char *text = cJSON_PrintUnformatted(found);
-    status st = fail(r->e, ST_BAD_INPUT, "%s line %zu, %s: found %.60s%s, expected %s", r->what, line, where,
-                     text ? text : "?", text && strlen(text) > 60 ? "..." : "", expected);
+    const char *shown = text ? text : "?", *more = text && strlen(text) > 60 ? "..." : "";
+    status st = r->doc ? fail(r->e, ST_BAD_INPUT, "%s line %zu, %s: found %.60s%s, expected %s", r->what, line, where,
+                              shown, more, expected)
+                       : fail(r->e, ST_BAD_INPUT, "%s: found %.60s%s, expected %s", r->what, shown, more, expected);
     cJSON_free(text);
     return st;
 }
@@ -80,7 +84,7 @@ static status wrong_value(const reader *r, const cJSON *node, const protocol_key
     textbuf expected = { 0 };
     snprintf(where, sizeof where, "%s%s%s", k->group, k->group[0] ? "." : "", k->name);
     key_expected(k, &expected);
-    status st = wrong(r, json_line(r->doc, node), where, node, expected.s ? expected.s : "something else");
+    status st = wrong(r, line_of(r, node), where, node, expected.s ? expected.s : "something else");
     text_free(&expected);
     return st;
 }
@@ -157,7 +161,7 @@ static void hint(const char *word, const char *const *words, size_t n, char *out
 static status unknown(const reader *r, const cJSON *node, const char *where, const char *const *words, size_t n) {
     char near[120];
     hint(node->string, words, n, near, sizeof near);
-    return fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s%s", r->what, json_line(r->doc, node),
+    return fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s%s", r->what, line_of(r, node),
                 node->string, where[0] ? " in " : "", where, near);
 }
 
@@ -174,10 +178,10 @@ static status read_coating(const reader *r, const cJSON *item, size_t line, prot
         return wrong(r, line, "optics.coatings", item, "both \"material\" and \"thickness_nm\"");
     if (!(cJSON_IsString(name) && name->valuestring[0]) &&
         !(cJSON_IsNumber(name) && name->valuedouble > 0.0))
-        return wrong(r, json_line(r->doc, name), "optics.coatings.material", name,
+        return wrong(r, line_of(r, name), "optics.coatings.material", name,
                      "a material name, a CSV path or a refractive index");
     if (!cJSON_IsNumber(thickness) || !(thickness->valuedouble >= 0.0 && thickness->valuedouble <= 1e5))
-        return wrong(r, json_line(r->doc, thickness), "optics.coatings.thickness_nm", thickness,
+        return wrong(r, line_of(r, thickness), "optics.coatings.thickness_nm", thickness,
                      "a number from 0 to 100000 (nm)");
     c->thickness_nm = thickness->valuedouble;
     return replace(r, &c->material, material_text(r, name));
@@ -187,7 +191,7 @@ static status read_coatings(const reader *r, const cJSON *node, const protocol_k
     const cJSON *item;
     if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) > LIMIT_COATINGS) return wrong_value(r, node, k);
     cJSON_ArrayForEach(item, node) {
-        status st = read_coating(r, item, json_line(r->doc, node), &r->p->coatings[r->p->n_coatings]);
+        status st = read_coating(r, item, line_of(r, node), &r->p->coatings[r->p->n_coatings]);
         if (st != ST_OK) return st;
         r->p->n_coatings++;
     }
@@ -210,7 +214,7 @@ static status target_column(const reader *r, const cJSON *node) {
         char near[120];
         hint(node->string, words, n, near, sizeof near);
         st = fail(r->e, ST_BAD_INPUT, "%s line %zu: targets: '%.60s' is no quantity of samples.csv%s%s", r->what,
-                  json_line(r->doc, node), node->string, near,
+                  line_of(r, node), node->string, near,
                   near[0] ? "" : "; take one of its numeric columns, such as spacing_nm or weighted_reflectance");
     }
     free(words);
@@ -219,7 +223,7 @@ static status target_column(const reader *r, const cJSON *node) {
 
 static status read_target_part(const reader *r, const cJSON *child, const char *where, target *t) {
     static const char *const words[] = { "min", "max", "error" };
-    size_t line = json_line(r->doc, child);
+    size_t line = line_of(r, child);
     if (strcmp(child->string, "min") == 0 || strcmp(child->string, "max") == 0) {
         if (cJSON_IsNull(child)) return ST_OK;
         if (!cJSON_IsNumber(child) || !isfinite(child->valuedouble))
@@ -240,15 +244,15 @@ static status read_target(const reader *r, const cJSON *node, target *t) {
     status st = target_column(r, node);
     if (st != ST_OK) return st;
     snprintf(where, sizeof where, "targets.%s", node->string);
-    if (!cJSON_IsObject(node)) return wrong(r, json_line(r->doc, node), where, node, "{ \"min\": ..., \"max\": ... }");
+    if (!cJSON_IsObject(node)) return wrong(r, line_of(r, node), where, node, "{ \"min\": ..., \"max\": ... }");
     *t = (target){ .min = MISSING, .max = MISSING, .error = ERROR_FULL };
     cJSON_ArrayForEach(child, node) {
         st = read_target_part(r, child, where, t);
         if (st != ST_OK) return st;
     }
     if (isnan(t->min) && isnan(t->max))
-        return wrong(r, json_line(r->doc, node), where, node, "\"min\", \"max\" or both");
-    if (t->min > t->max) return wrong(r, json_line(r->doc, node), where, node, "min below max");
+        return wrong(r, line_of(r, node), where, node, "\"min\", \"max\" or both");
+    if (t->min > t->max) return wrong(r, line_of(r, node), where, node, "min below max");
     t->quantity = mem_text(node->string);
     return t->quantity ? ST_OK : NO_MEMORY(r->e, "the targets");
 }
@@ -301,10 +305,10 @@ static status unknown_key(const reader *r, const cJSON *node, const char *group)
     status st;
     if (elsewhere && elsewhere->group[0])
         st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s; it belongs in \"%s\"", r->what,
-                  json_line(r->doc, node), node->string, group[0] ? " in " : "", group, elsewhere->group);
+                  line_of(r, node), node->string, group[0] ? " in " : "", group, elsewhere->group);
     else if (elsewhere)
         st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s' in %s; it belongs to the top level", r->what,
-                  json_line(r->doc, node), node->string, group);
+                  line_of(r, node), node->string, group);
     else st = unknown(r, node, group, words, n);
     free(words);
     return st;
@@ -321,7 +325,7 @@ static status read_group(const reader *r, const cJSON *object, const char *group
         if (k) st = read_key(r, node, k);
         else if (!inner) st = unknown_key(r, node, group);
         else if (!cJSON_IsObject(node))
-            st = wrong(r, json_line(r->doc, node), inner, node, "an object in braces with keys of its own");
+            st = wrong(r, line_of(r, node), inner, node, "an object in braces with keys of its own");
         else st = read_group(r, node, inner);
         if (st != ST_OK) return st;
     }
@@ -341,6 +345,51 @@ static status check_whole(const reader *r) {
         return fail(r->e, ST_BAD_INPUT, "%s: link.aspect_u stands without link.aspect; add the aspect ratio or take the "
                     "uncertainty out", r->what);
     return ST_OK;
+}
+
+/* An option's text as the JSON value a protocol would hold; NULL: no memory. */
+static cJSON *option_value(const protocol_key *k, const char *text) {
+    const char *colon = strrchr(text, ':');
+    double lo, hi;
+    char *head = mem_text_n(text, colon ? (size_t)(colon - text) : strlen(text));
+    cJSON *v = NULL;
+    if (!head) return NULL;
+    int takes_number = k->kind == KEY_NUMBER || k->kind == KEY_SHAPE || k->kind == KEY_MATERIAL;
+    if (k->kind == KEY_BAND && colon && number_parse(head, &lo) && number_parse(colon + 1, &hi))
+        v = cJSON_CreateDoubleArray((const double[]){ lo, hi }, 2);
+    else if (k->kind == KEY_COATINGS && colon && number_parse(colon + 1, &hi)) {
+        v = cJSON_CreateObject();
+        if (!cJSON_AddStringToObject(v, "material", head) || !cJSON_AddNumberToObject(v, "thickness_nm", hi)) {
+            cJSON_Delete(v);
+            v = NULL;
+        }
+    } else if (takes_number && number_parse(text, &lo)) v = cJSON_CreateNumber(lo);
+    else if (k->kind == KEY_SWITCH && strcmp(text, "true") == 0) v = cJSON_CreateTrue();
+    else v = cJSON_CreateString(text);
+    free(head);
+    return v;
+}
+
+static status option_coating(const reader *r, const cJSON *v) {
+    protocol *p = r->p;
+    if (!cJSON_IsObject(v))
+        return wrong(r, 0, "", v, "MATERIAL:NM, such as alumina:10");
+    if (p->n_coatings == LIMIT_COATINGS)
+        return fail(r->e, ST_BAD_INPUT, "%s: at most %d coatings", r->what, LIMIT_COATINGS);
+    status st = read_coating(r, v, 0, &p->coatings[p->n_coatings]);
+    if (st == ST_OK) p->n_coatings++;
+    return st;
+}
+
+status protocol_set(protocol *p, const char *group, const char *name, const char *text, const char *option, error *e) {
+    const protocol_key *k = protocol_key_find(group, name);
+    reader r = { NULL, option, "", p, e };
+    if (!k) return fail(e, ST_BUG, "%s sets no key of a protocol", option);
+    cJSON *v = option_value(k, text);
+    if (!v) return NO_MEMORY(e, "an option");
+    status st = k->kind == KEY_COATINGS ? option_coating(&r, v) : read_key(&r, v, k);
+    cJSON_Delete(v);
+    return st;
 }
 
 /* Blanks line comments outside strings in place, so that lines keep their numbers. */

@@ -53,6 +53,11 @@ status protocol_read(const char *path, protocol *out, error *e);
 
 /* The same from memory; `what` names the source in sentences, `folder` is what paths are relative to. */
 status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out, error *e);
+
+/* One key from the text of a command-line option, checked like the same key of a file: protocol_set(p, "link", "coverage",
+ * "0.8", "--coverage", e). A band is "300:1200"; a coating "alumina:10" is added below the ones before.
+ *   err  ST_BAD_INPUT "--coverage: found 2, expected a number from 0 to 1"; ST_NO_MEMORY */
+status protocol_set(protocol *p, const char *group, const char *name, const char *text, const char *option, error *e);
 void protocol_free(protocol *p);
 
 /* Canonical text for fingerprints: same meaning, same text; numbers with 17 digits. The first holds everything that changes what

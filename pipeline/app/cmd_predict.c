@@ -1,0 +1,305 @@
+/* `sward predict`: reflectance from numbers. The options are keys of a protocol, set and checked through its table, so
+ * that a number on the command line and the same number in a file mean the same. */
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "app/command.h"
+#include "app/materials.h"
+#include "base/number.h"
+#include "base/quantity.h"
+#include "io/json.h"
+#include "report/rows.h"
+
+enum { OPT_SPACING = 1, OPT_HEIGHT, OPT_HEIGHT_U, OPT_SHAPE, OPT_SPREAD, OPT_COVERAGE, OPT_MIXING, OPT_COATING,
+       OPT_SUBSTRATE, OPT_AMBIENT, OPT_ANGLE, OPT_POLARIZATION, OPT_HEMISPHERICAL, OPT_BAND, OPT_PORES, OPT_PROFILE,
+       OPT_PROTOCOL, OPT_JSON, OPT_CSV, OPT_MATERIALS };
+
+/* clang-format off */
+static const struct argp_option predict_options[] = {
+    { "spacing",       OPT_SPACING,       "NM",       0, "mean distance of neighbouring features; decides where the model holds", 0 },
+    { "height",        OPT_HEIGHT,        "NM",       0, "feature height; 0 is a planar surface", 0 },
+    { "height-u",      OPT_HEIGHT_U,      "NM",       0, "its standard uncertainty (default: 0)", 0 },
+    { "shape",         OPT_SHAPE,         "SHAPE",    0, "cone (default), paraboloid, or the exponent q of (1 - z/h)^(2/q)", 0 },
+    { "height-spread", OPT_SPREAD,        "REL",      0, "relative standard deviation of the heights (default: 0)", 0 },
+    { "coverage",      OPT_COVERAGE,      "F",        0, "solid share at the floor (default: 1)", 0 },
+    { "pores",         OPT_PORES,         NULL,       0, "features are pores: the complement of the shape", 0 },
+    { "profile",       OPT_PROFILE,       "FILE",     0, "measured profile instead of height and shape: CSV with depth_nm and solid_fraction", 0 },
+    { "coating",       OPT_COATING,       "MATERIAL:NM", 0, "conformal coating, outermost first; may be repeated", 0 },
+    { "substrate",     OPT_SUBSTRATE,     "MATERIAL", 0, "what the features are made of (default: silicon)", 0 },
+    { "ambient",       OPT_AMBIENT,       "MEDIUM",   0, "air (default), laminate (air, glass, encapsulant), a material or an index", 0 },
+    { "mixing",        OPT_MIXING,        "RULE",     0, "bruggeman-2d (default), maxwell-garnett-2d, bruggeman-3d, maxwell-garnett-3d, looyenga, volume", 0 },
+    { "angle",         OPT_ANGLE,         "DEG",      0, "angle of incidence in air (default: 0)", 0 },
+    { "polarization",  OPT_POLARIZATION,  "P",        0, "mean (default, unpolarised), s or p", 0 },
+    { "hemispherical", OPT_HEMISPHERICAL, NULL,       0, "diffuse light from the whole half space", 0 },
+    { "band",          OPT_BAND,          "LO:HI",    0, "wavelengths for the weighting, nm (default: 300:1200)", 0 },
+    { "protocol",      OPT_PROTOCOL,      "FILE",     0, "link and optics of a protocol; options outrank it", 0 },
+    { "json",          OPT_JSON,          NULL,       0, "one JSON object with the spectrum", 0 },
+    { "csv",           OPT_CSV,           NULL,       0, "the spectrum as CSV", 0 },
+    { "materials",     OPT_MATERIALS,     NULL,       0, "list the known materials with their sources", 0 },
+    { 0 } };
+
+/* Which key of a protocol an option sets. */
+static const struct { int option; const char *group, *name; } sets[] = {
+    { OPT_HEIGHT_U,      "link",   "height_nm_u" },   { OPT_SHAPE,   "link",   "shape" },
+    { OPT_SPREAD,        "link",   "height_spread" }, { OPT_COVERAGE, "link",  "coverage" },
+    { OPT_PROFILE,       "link",   "profile" },       { OPT_COATING, "optics", "coatings" },
+    { OPT_SUBSTRATE,     "optics", "substrate" },     { OPT_AMBIENT, "optics", "ambient" },
+    { OPT_MIXING,        "optics", "mixing" },        { OPT_ANGLE,   "optics", "angle_deg" },
+    { OPT_POLARIZATION,  "optics", "polarization" },  { OPT_BAND,    "optics", "band_nm" },
+    { OPT_HEMISPHERICAL, "optics", "hemispherical" },
+};
+/* clang-format on */
+
+enum { MAX_GIVEN = 64 };
+typedef enum { AS_TEXT, AS_JSON, AS_CSV, AS_MATERIALS } output;
+
+/* What stood on the command line, in its order; checked after the protocol is read. */
+typedef struct {
+    struct { int option; const char *text; } given[MAX_GIVEN];
+    size_t n_given;
+    const char *spacing, *height, *protocol;
+    int pores;
+    output as;
+} request;
+
+static error_t predict_option(int key, char *arg, struct argp_state *state) {
+    request *q = state->input;
+    switch (key) {
+    case OPT_SPACING: q->spacing = arg; break;
+    case OPT_HEIGHT: q->height = arg; break;
+    case OPT_PROTOCOL: q->protocol = arg; break;
+    case OPT_PORES: q->pores = 1; break;
+    case OPT_JSON: q->as = AS_JSON; break;
+    case OPT_CSV: q->as = AS_CSV; break;
+    case OPT_MATERIALS: q->as = AS_MATERIALS; break;
+    case ARGP_KEY_ARG: argp_error(state, "'%s' is no option; numbers need their names, such as --spacing 350", arg); break;
+    default:
+        if (key < OPT_SPACING || key > OPT_MATERIALS) return ARGP_ERR_UNKNOWN;
+        if (q->n_given == MAX_GIVEN) argp_error(state, "more than %d options", MAX_GIVEN);
+        else {
+            q->given[q->n_given].option = key;
+            q->given[q->n_given++].text = arg ? arg : "true";
+        }
+    }
+    return 0;
+}
+
+const struct argp predict_argp = {
+    predict_options, predict_option, "",
+    "Reflectance of a textured surface from its numbers, with the interval the true value is expected in.\v"
+    "Example: sward predict --spacing 350 --height 300 --coating alumina:10 --json",
+    NULL, NULL, NULL };
+
+static const char *option_name(int option) {
+    for (const struct argp_option *o = predict_options; o->name; o++)
+        if (o->key == option) return o->name;
+    return "?";
+}
+
+static int given(const request *q, int option) {
+    for (size_t i = 0; i < q->n_given; i++)
+        if (q->given[i].option == option) return 1;
+    return 0;
+}
+
+static status apply_options(const request *q, protocol *p, error *e) {
+    for (size_t i = 0; i < p->n_coatings && given(q, OPT_COATING); i++) { /* the command line's replace the protocol's */
+        free(p->coatings[i].material);
+        p->coatings[i] = (protocol_coating){ 0 };
+    }
+    if (given(q, OPT_COATING)) p->n_coatings = 0;
+    for (size_t i = 0; i < q->n_given; i++)
+        for (size_t k = 0; k < sizeof sets / sizeof sets[0]; k++) {
+            char option[40];
+            if (sets[k].option != q->given[i].option) continue;
+            snprintf(option, sizeof option, "--%s", option_name(q->given[i].option));
+            status st = protocol_set(p, sets[k].group, sets[k].name, q->given[i].text, option, e);
+            if (st != ST_OK) return st;
+        }
+    /* A stated number is taken as known unless its uncertainty is stated too. */
+    if (!q->protocol || given(q, OPT_SHAPE)) p->link.exponent_u = 0.0;
+    if (q->pores) p->measure.relief = RELIEF_PORE;
+    return ST_OK;
+}
+
+static status length_option(const char *option, const char *text, int zero_allowed, double *out, error *e) {
+    if (!number_parse(text, out) || !(zero_allowed ? *out >= 0.0 : *out > 0.0) || *out > 1e5)
+        return fail(e, ST_BAD_INPUT, "%s: found %s, expected a number %s 0 and at most 100000 (nm)", option, text,
+                    zero_allowed ? "of at least" : "above");
+    return ST_OK;
+}
+
+static status surface_of(const request *q, const protocol *p, const setup *s, surface_input *in, error *e) {
+    status st = ST_OK;
+    in->spacing_nm = quantity_missing();
+    in->height_nm = quantity_missing();
+    in->pores = p->measure.relief == RELIEF_PORE;
+    in->link = p->link;
+    if (q->spacing) st = length_option("--spacing", q->spacing, 0, &in->spacing_nm.value, e);
+    if (q->spacing) in->spacing_nm.u = 0.0;
+    if (st != ST_OK) return st;
+    if (s->measured.n) {
+        if (q->height) return fail(e, ST_BAD_INPUT, "--height: a measured profile already holds the height; give one of the two");
+        in->measured = &s->measured;
+        return ST_OK;
+    }
+    if (q->height) {
+        st = length_option("--height", q->height, 1, &in->height_nm.value, e);
+        in->height_nm.u = given(q, OPT_HEIGHT_U) ? p->link.height_nm_u : 0.0;
+    } else if (!q->protocol)
+        return fail(e, ST_BAD_INPUT, "--height is missing; a top view does not show it: give it in nm, or a measured profile with "
+                    "--profile");
+    if (st != ST_OK) return st;
+    if (!q->spacing && !(q->height && in->height_nm.value <= 0.0))
+        return fail(e, ST_BAD_INPUT, "--spacing is missing; it decides where the model holds: give it in nm");
+    if (!q->height) {
+        height_source source;
+        st = link_height(quantity_missing(), &p->link, in->spacing_nm, &in->height_nm, &source, e);
+    }
+    return st;
+}
+
+/* Digits of the column of samples.csv, so that every output of the program agrees. */
+static int digits_of(const char *name) {
+    for (size_t i = 0; i < n_sample_columns; i++)
+        if (strcmp(sample_columns[i].name, name) == 0) return sample_columns[i].digits;
+    return 5;
+}
+
+static void member(textbuf *out, const char *name, double v, int digits) {
+    text_addf(out, "  \"%s\": ", name);
+    json_number(out, v, digits);
+    text_add(out, ",\n");
+}
+
+static void sample_member(textbuf *out, const char *name, double v) { member(out, name, v, digits_of(name)); }
+
+enum { SPECTRUM_DIGITS = 6 };
+
+static void print_json(const surface_input *in, const prediction *r, textbuf *out) {
+    text_add(out, "{\n");
+    sample_member(out, "spacing_nm", in->spacing_nm.value);
+    sample_member(out, "height_nm", in->height_nm.value);
+    sample_member(out, "height_nm_u", in->height_nm.u);
+    sample_member(out, "aspect", r->aspect);
+    sample_member(out, "area_ratio", r->area_ratio);
+    sample_member(out, "weighted_reflectance", r->weighted);
+    sample_member(out, "weighted_reflectance_lo", r->weighted_lo);
+    sample_member(out, "weighted_reflectance_hi", r->weighted_hi);
+    sample_member(out, "current_loss_mA_cm2", r->current_loss_mA_cm2);
+    sample_member(out, "polished_reflectance", r->polished);
+    sample_member(out, "coated_reflectance", r->coated);
+    sample_member(out, "subwavelength_share", r->shares.none);
+    text_add(out, "  \"optics_model\": ");
+    json_string(out, r->model);
+    text_add(out, ",\n  \"orders\": {\"none\": ");
+    json_number(out, r->shares.none, 4);
+    text_add(out, ", \"in_substrate\": ");
+    json_number(out, r->shares.in_substrate, 4);
+    text_add(out, ", \"in_ambient\": ");
+    json_number(out, r->shares.in_ambient, 4);
+    const struct { const char *name; double v; } parts[] = {
+        { "height", r->u_height }, { "shape", r->u_shape }, { "height_spread", r->u_spread }, { "mixing", r->u_mixing },
+        { "model", r->u_model }, { "model_bias", r->model_bias } };
+    text_add(out, "},\n  \"budget\": {");
+    for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
+        text_addf(out, "%s\"%s\": ", i ? ", " : "", parts[i].name);
+        json_number(out, parts[i].v, 3);
+    }
+    text_add(out, "},\n  \"note\": ");
+    json_string(out, r->note);
+    text_add(out, ",\n  \"spectrum\": [");
+    for (size_t i = 0; i < r->n; i++) {
+        text_add(out, i ? ",\n    {\"wavelength_nm\": " : "\n    {\"wavelength_nm\": ");
+        json_number(out, r->wavelength_nm[i], 7);
+        text_add(out, ", \"reflectance\": ");
+        json_number(out, r->R[i], SPECTRUM_DIGITS);
+        text_add(out, ", \"reflectance_lo\": ");
+        json_number(out, r->R_lo[i], SPECTRUM_DIGITS);
+        text_add(out, ", \"reflectance_hi\": ");
+        json_number(out, r->R_hi[i], SPECTRUM_DIGITS);
+        text_add(out, "}");
+    }
+    text_add(out, "\n  ]\n}\n");
+}
+
+static void print_csv(const prediction *r, textbuf *out) {
+    char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT], d[NUMBER_TEXT];
+    text_add(out, "wavelength_nm,reflectance,reflectance_lo,reflectance_hi\n");
+    for (size_t i = 0; i < r->n; i++)
+        text_addf(out, "%s,%s,%s,%s\n", number_text(r->wavelength_nm[i], 7, a), number_text(r->R[i], SPECTRUM_DIGITS, b),
+                  number_text(r->R_lo[i], SPECTRUM_DIGITS, c), number_text(r->R_hi[i], SPECTRUM_DIGITS, d));
+}
+
+static void print_surface(const surface_input *in, const prediction *r, textbuf *out) {
+    char a[NUMBER_TEXT], b[NUMBER_TEXT];
+    if (in->measured) text_add(out, "Surface: measured profile");
+    else if (!(in->height_nm.value > 0.0)) text_add(out, "Surface: planar");
+    else {
+        text_addf(out, "Surface: %s %s nm high", in->pores ? "pores" : "features", number_text(in->height_nm.value, 5, a));
+        if (in->height_nm.u > 0.0) text_addf(out, " +- %s nm", number_text(in->height_nm.u, 3, a));
+        text_addf(out, ", aspect %s, area %s times the flat one", number_text(r->aspect, 4, a), number_text(r->area_ratio, 4, b));
+    }
+    if (isfinite(in->spacing_nm.value)) text_addf(out, ", spacing %s nm", number_text(in->spacing_nm.value, 5, a));
+    text_add(out, "\n");
+}
+
+static void print_text(const surface_input *in, const protocol *p, const prediction *r, textbuf *out) {
+    char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT];
+    print_surface(in, r, out);
+    text_addf(out, "Light: %s to %s nm of the sun, ", number_text(p->band_lo_nm, 6, a), number_text(p->band_hi_nm, 6, b));
+    if (p->hemispherical) text_add(out, "diffuse");
+    else text_addf(out, "%s deg", number_text(p->angle_deg, 4, a));
+    text_addf(out, ", %s, from %s\n\n", p->polarization == POL_MEAN ? "unpolarised" : polarization_name(p->polarization), p->ambient);
+    if (r->refused) text_add(out, "Weighted reflectance     not given: the texture lies outside the model\n");
+    else {
+        int digits = digits_of("weighted_reflectance");
+        text_addf(out, "Weighted reflectance     %s %%", number_percent(r->weighted, digits, a));
+        if (isfinite(r->weighted_lo) && isfinite(r->weighted_hi))
+            text_addf(out, "   (95 %% interval %s to %s %%)", number_percent(r->weighted_lo, digits, b),
+                      number_percent(r->weighted_hi, digits, c));
+        text_addf(out, "\nCurrent it costs         %s mA/cm2\n",
+                  number_text(r->current_loss_mA_cm2, digits_of("current_loss_mA_cm2"), a));
+    }
+    text_addf(out, "Polished                 %s %%\n", number_percent(r->polished, digits_of("polished_reflectance"), a));
+    text_addf(out, "Polished, 75 nm nitride  %s %%\n", number_percent(r->coated, digits_of("coated_reflectance"), a));
+    if (isfinite(r->shares.none))
+        text_addf(out, "Photons                  %s %% see no diffraction, %s %% are diffracted into the substrate only, %s %% also above it\n",
+                  number_percent(r->shares.none, 3, a), number_percent(r->shares.in_substrate, 3, b),
+                  number_percent(r->shares.in_ambient, 3, c));
+    if (r->note[0]) text_addf(out, "\n%s\n", r->note);
+}
+
+static status predict_all(const request *q, textbuf *out, error *e) {
+    protocol p = { 0 };
+    setup s = { 0 };
+    prediction r = { 0 };
+    surface_input in = { 0 };
+    status st = q->protocol ? protocol_read(q->protocol, &p, e) : protocol_defaults(&p, e);
+    if (st == ST_OK) st = apply_options(q, &p, e);
+    if (st == ST_OK) st = setup_make(&p, &s, e);
+    if (st == ST_OK) st = surface_of(q, &p, &s, &in, e);
+    if (st == ST_OK) st = predict(&in, &s.optics, &r, e);
+    if (st != ST_OK) goto done;
+    if (q->as == AS_JSON) print_json(&in, &r, out);
+    else if (q->as == AS_CSV) print_csv(&r, out);
+    else print_text(&in, &p, &r, out);
+done:
+    prediction_free(&r);
+    setup_free(&s);
+    protocol_free(&p);
+    return st;
+}
+
+int cmd_predict(int argc, char **argv) {
+    request q = { .as = AS_TEXT };
+    textbuf out = { 0 };
+    error e = { ST_OK, "" };
+    argp_parse(&predict_argp, argc, argv, 0, NULL, &q);
+    status st = q.as == AS_MATERIALS ? materials_list(&out, &e) : predict_all(&q, &out, &e);
+    if (st == ST_OK) return command_print("predict", &out);
+    text_free(&out);
+    return command_failed("predict", &e);
+}
