@@ -28,7 +28,7 @@ typedef struct {
     double rough;          /* sd of a roughness finer than the features / mean height: 0 */
     double electrons;      /* mean electrons per px at full signal (shot noise); 0 = noiseless */
     double blur_px;        /* sd of the probe: 0.7 */
-    double contrast;       /* share of the grey range between the 0.5 % and 99.5 % quantile of the signal: 0.7; above
+    double contrast;       /* share of the grey range between the 0.1 % and 99.9 % quantile of the signal: 0.7; above
                               1 clips */
     double gradient;       /* relative brightness change across the field: 0 */
     double streaks;        /* sd of charging streaks along x / contrast: 0 */

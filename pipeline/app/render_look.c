@@ -98,9 +98,9 @@ static void frame_range(const float *f, size_t n, double *lo, double *hi) {
         count[at < STEPS ? at : STEPS - 1]++;
     }
     size_t below = 0, i = 0;
-    for (; i < STEPS && below + count[i] <= n / 200; i++) below += count[i];
+    for (; i < STEPS && below + count[i] <= n / 1000; i++) below += count[i];
     *lo = least + (double)i * width;
-    for (; i < STEPS && below + count[i] <= n - n / 200; i++) below += count[i];
+    for (; i < STEPS && below + count[i] <= n - n / 1000; i++) below += count[i];
     *hi = least + (double)(i < STEPS ? i + 1 : STEPS) * width;
 }
 

@@ -1,7 +1,7 @@
 /* Where the features of a rendered surface stand: jittered hexagonal lattice, relaxed points (Lloyd 1982), random
  * sequential adsorption (Feder 1980), Matern's second hard-core process (1960), random points. Patterns are made on a
  * torus larger than the frame, so that the frame cuts through features as a real one does. Own cells are found on a
- * grid of samples with a bucket search, which is all the accuracy a feature size needs.
+ * grid of samples, which is all the accuracy a feature size needs.
  * Random numbers: xoshiro256** seeded by splitmix64 (Blackman and Vigna 2021, ACM Trans. Math. Softw. 47:36), normal
  * deviates by the polar method (Marsaglia and Bray 1964); all from memory. */
 #include <math.h>
@@ -9,7 +9,6 @@
 #include <string.h>
 
 #include "app/render_priv.h"
-#include "base/limits.h"
 #include "base/mem.h"
 #include "base/quantity.h"
 
@@ -17,6 +16,8 @@
 #define HEX_DENSITY 1.1547005383792517
 /* Samples per spacing of the own-cell search: about 125 in a cell, a cell area good to 2 %. */
 #define CELL_SAMPLES 12.0
+#define CELL_REACH 1.5 /* spacings; the torus is more than twice as wide */
+#define MOST_FEATURES 2e5
 /* The torus is this much larger than the frame and its margin; room for the final scaling to the number asked. */
 #define TORUS_ROOM 1.15
 #define TORUS_MARGIN 3.0
@@ -157,49 +158,70 @@ static double torus_distance2(const torus *t, size_t k, double x, double y) {
     return dx * dx + dy * dy;
 }
 
-/* The nearest point to (x, y): rings of buckets outwards until nothing nearer can follow. */
-static size_t nearest(const torus *t, const buckets *b, double x, double y) {
-    long ci = (long)(x / b->bx), cj = (long)(y / b->by), gx = (long)b->gx, gy = (long)b->gy;
-    double best = HUGE_VAL, side = fmin(b->bx, b->by);
-    size_t found = 0;
-    for (long k = 0; k <= gx || k <= gy; k++) {
-        double safe = (double)(k - 1) * side;
-        if (k > 0 && best <= safe * safe) break;
-        for (long j = -k; j <= k; j++)
-            for (long i = -k; i <= k; i += (j == -k || j == k || k == 0) ? 1 : 2 * k) {
-                size_t at = (size_t)(((cj + j) % gy + gy) % gy * gx + ((ci + i) % gx + gx) % gx);
-                for (size_t p = b->first[at]; p; p = b->next[p - 1]) {
-                    double r2 = torus_distance2(t, p - 1, x, y);
-                    if (r2 < best) {
-                        best = r2;
-                        found = p - 1;
-                    }
-                }
-            }
+/* ---- own cells ---- */
+
+/* A grid of samples over the torus, each with its nearest point so far. */
+typedef struct {
+    size_t nx, ny;
+    double dx, dy;
+    double *best; /* squared distance */
+    uint32_t *owner;
+} sampling;
+
+/* Offers point k to the samples within reach, row by row. */
+static void sampling_offer(const sampling *g, const torus *t, size_t k, double reach) {
+    long j0 = (long)ceil((t->y[k] - reach) / g->dy - 0.5), j1 = (long)floor((t->y[k] + reach) / g->dy - 0.5);
+    for (long j = j0; j <= j1; j++) {
+        double y = ((double)j + 0.5) * g->dy - t->y[k], half = sqrt(fmax(0.0, reach * reach - y * y));
+        long i0 = (long)ceil((t->x[k] - half) / g->dx - 0.5), i1 = (long)floor((t->x[k] + half) / g->dx - 0.5);
+        size_t row = (size_t)((j + (long)g->ny) % (long)g->ny) * g->nx;
+        for (long i = i0; i <= i1; i++) {
+            double x = ((double)i + 0.5) * g->dx - t->x[k], r2 = x * x + y * y;
+            size_t at = row + (size_t)(i < 0 ? i + (long)g->nx : i >= (long)g->nx ? i - (long)g->nx : i);
+            if (r2 >= g->best[at]) continue;
+            g->best[at] = r2;
+            g->owner[at] = (uint32_t)k;
+        }
+    }
+}
+
+static uint32_t nearest_of_all(const torus *t, double x, double y) {
+    double best = HUGE_VAL;
+    uint32_t found = 0;
+    for (size_t k = 0; k < t->n; k++) {
+        double r2 = torus_distance2(t, k, x, y);
+        if (r2 >= best) continue;
+        best = r2;
+        found = (uint32_t)k;
     }
     return found;
 }
 
-/* Own cells by sampling: area[n] and, where asked, the offset of the centroid from the point. */
+/* Own cells by sampling: area[n] in samples and, where asked, the sum of the offsets of its samples. */
 static status cells_sample(const torus *t, double *area, double *ox, double *oy, error *e) {
-    buckets b;
-    status st = buckets_make(&b, t->w, t->h, t->d, t->n, e);
-    if (st != ST_OK) return st;
-    for (size_t k = 0; k < t->n; k++) buckets_put(&b, t, k);
-    memset(area, 0, t->n * sizeof *area);
-    if (ox) memset(ox, 0, t->n * sizeof *ox);
-    if (oy) memset(oy, 0, t->n * sizeof *oy);
-    size_t sx = (size_t)ceil(t->w / t->d * CELL_SAMPLES), sy = (size_t)ceil(t->h / t->d * CELL_SAMPLES);
-    for (size_t j = 0; j < sy; j++)
-        for (size_t i = 0; i < sx; i++) {
-            double x = ((double)i + 0.5) * t->w / (double)sx, y = ((double)j + 0.5) * t->h / (double)sy;
-            size_t k = nearest(t, &b, x, y);
+    sampling g = { .nx = (size_t)ceil(t->w / t->d * CELL_SAMPLES), .ny = (size_t)ceil(t->h / t->d * CELL_SAMPLES) };
+    g.dx = t->w / (double)g.nx;
+    g.dy = t->h / (double)g.ny;
+    g.best = mem_array(g.nx * g.ny, sizeof *g.best);
+    g.owner = mem_array(g.nx * g.ny, sizeof *g.owner);
+    status st = g.best && g.owner ? ST_OK : NO_MEMORY(e, "the cells of the features");
+    if (st == ST_OK) {
+        memset(area, 0, t->n * sizeof *area);
+        if (ox) memset(ox, 0, t->n * sizeof *ox);
+        if (oy) memset(oy, 0, t->n * sizeof *oy);
+        for (size_t at = 0; at < g.nx * g.ny; at++) g.best[at] = HUGE_VAL;
+        for (size_t k = 0; k < t->n; k++) sampling_offer(&g, t, k, CELL_REACH * t->d);
+        for (size_t at = 0; at < g.nx * g.ny; at++) {
+            double x = ((double)(at % g.nx) + 0.5) * g.dx, y = ((double)(at / g.nx) + 0.5) * g.dy;
+            size_t k = g.best[at] < HUGE_VAL ? g.owner[at] : nearest_of_all(t, x, y); /* the heart of a large gap */
             area[k] += 1.0;
             if (ox) ox[k] += wrap(x - t->x[k], t->w);
             if (oy) oy[k] += wrap(y - t->y[k], t->h);
         }
-    buckets_free(&b);
-    return ST_OK;
+    }
+    free(g.best);
+    free(g.owner);
+    return st;
 }
 
 /* ---- the patterns ---- */
@@ -343,9 +365,9 @@ static status scale_to_count(centres *c, double half_w, double half_h, size_t wa
 status centres_make(const render_options *o, centres *out, error *e) {
     double d = o->spacing_nm / o->px_nm, half_w = 0.5 * (double)o->nx, half_h = 0.5 * (double)o->ny;
     double count = HEX_DENSITY * 4.0 * half_w * half_h / (d * d);
-    if (!(count >= 3.5) || count > (double)LIMIT_FEATURES / 4)
+    if (!(count >= 3.5) || count > MOST_FEATURES)
         return fail(e, ST_BAD_INPUT, "a spacing of %.4g nm at %.4g nm per pixel puts %.3g features into %zu x %zu px; "
-                    "4 to a million can be rendered", o->spacing_nm, o->px_nm, count, o->nx, o->ny);
+                    "4 to 200000 can be rendered", o->spacing_nm, o->px_nm, count, o->nx, o->ny);
     stretching s = stretching_make(o->stretch, o->stretch_angle_deg);
     double mx = half_w + TORUS_MARGIN * d, my = half_h + TORUS_MARGIN * d;
     /* The unstretching map is the stretching one with the diagonal exchanged and the other sign of xy (determinant 1). */

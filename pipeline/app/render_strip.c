@@ -67,7 +67,7 @@ void strip_draw(const render_options *o, size_t rows, float *grey) {
         { 0.0f, 1.0f, 0 }, { 1.0f, 0.0f, 0 }, { 0.12f, 0.92f, 1 }, { 0.0f, 0.85f, 1 } };
     size_t style = (size_t)(o->seed % (sizeof styles / sizeof styles[0]));
     for (size_t k = 0; k < rows * o->nx; k++) grey[k] = styles[style].paper;
-    size_t scale = rows / (2 * FONT_HEIGHT);
+    size_t scale = rows / (3 * FONT_HEIGHT);
     sheet s = { grey, o->nx, rows, scale ? scale : 1, styles[style].ink };
     size_t y = (rows - FONT_HEIGHT * s.scale) / 2, x = 4 * s.scale, end = s.nx;
     if (styles[style].rule) block(&s, 0, 0, s.nx, s.scale);

@@ -10,24 +10,32 @@
 #include "base/mem.h"
 #include "base/quantity.h"
 
-/* Bodies are drawn this many spacings far; places whose highest term is lower than any body there are searched again. */
-#define REACH 1.5
+/* Bodies are drawn down to one common level, that of a mean body this many spacings off. Where nothing reaches that
+ * level, in large gaps, all bodies are compared. */
+#define REACH 1.3
 #define LOWEST_HEIGHT 0.3 /* the normal spread of heights ends here */
 #define PROFILE_STEPS 1024.0 /* table steps per base radius: linear interpolation errs by less than 1e-6 */
 
 typedef struct {
-    double height, radius, rest; /* rest: the term at the end of its reach */
+    double height, radius, reach;
 } body;
 
 typedef struct {
     double q;
     int bell;
+    double level; /* down to which bodies are drawn */
     size_t n;
     double *table; /* profile at r/R = k / PROFILE_STEPS */
 } profile_table;
 
 static double profile_exact(const profile_table *p, double u) {
     return p->bell ? exp(-2.0 * u * u) : 1.0 - pow(u, p->q);
+}
+
+/* r/R at which a body of this height is down at the level. */
+static double profile_end(const profile_table *p, double height) {
+    if (p->bell) return sqrt(0.5 * fmax(0.0, log(height / p->level)));
+    return pow(1.0 - p->level / height, 1.0 / p->q);
 }
 
 static double profile_at(const profile_table *p, double u) {
@@ -39,18 +47,20 @@ static double profile_at(const profile_table *p, double u) {
 
 static status bodies_make(const render_options *o, const centres *c, body **bodies, profile_table *p, error *e) {
     rng r = rng_make(o->seed, STREAM_HEIGHTS);
+    *p = (profile_table){ .q = o->exponent, .bell = o->bell };
+    p->level = profile_exact(p, REACH * 2.0 / o->fill);
     body *b = mem_array(c->n, sizeof *b);
     if (!b) return NO_MEMORY(e, "the features");
-    double least = HUGE_VAL;
+    double end = 0.0;
     for (size_t k = 0; k < c->n; k++) {
         /* A cell that is an outlier of a random pattern makes no giant and no needle of its feature. */
         double size = fmin(fmax(c->size[k], 0.4), 1.8);
         b[k].height = pow(size, o->height_by_size) * fmax(LOWEST_HEIGHT, 1.0 + o->height_spread * rng_normal(&r));
         b[k].radius = 0.5 * c->spacing * o->fill * size;
-        least = fmin(least, b[k].radius);
+        b[k].reach = b[k].radius * profile_end(p, b[k].height);
+        end = fmax(end, b[k].reach / b[k].radius);
     }
-    *p = (profile_table){ .q = o->exponent, .bell = o->bell };
-    p->n = (size_t)ceil(REACH * c->spacing / least * PROFILE_STEPS) + 2;
+    p->n = (size_t)ceil(end * PROFILE_STEPS) + 2;
     p->table = mem_array(p->n, sizeof *p->table);
     if (!p->table) {
         free(b);
@@ -85,7 +95,7 @@ static size_t step_clamped(const canvas *v, double px, size_t n) {
 }
 
 static void draw_body(const canvas *v, size_t k) {
-    double reach = REACH * v->c->spacing, box = reach * v->s.reach, height = v->b[k].height, per = 1.0 / v->b[k].radius;
+    double reach = v->b[k].reach, box = reach * v->s.reach, height = v->b[k].height, per = 1.0 / v->b[k].radius;
     size_t i0 = step_clamped(v, v->c->x[k] - box, v->nx), i1 = step_clamped(v, v->c->x[k] + box + 1.0, v->nx);
     size_t j0 = step_clamped(v, v->c->y[k] - box, v->ny), j1 = step_clamped(v, v->c->y[k] + box + 1.0, v->ny);
     for (size_t j = j0; j < j1; j++) {
@@ -102,17 +112,15 @@ static void draw_body(const canvas *v, size_t k) {
     }
 }
 
-/* Where even the highest term is below what some body beyond its reach might still have, all are compared. */
+/* Where no body reaches the level. */
 static void fill_gaps(const canvas *v) {
-    double rest = -HUGE_VAL;
-    for (size_t k = 0; k < v->c->n; k++) rest = fmax(rest, v->b[k].rest);
     for (size_t at = 0; at < v->nx * v->ny; at++) {
-        if (v->owner[at] && (double)v->height[at] >= rest) continue;
+        if (v->owner[at]) continue;
         double x = position(v, at % v->nx), y = position(v, at / v->nx), best = -HUGE_VAL;
         for (size_t k = 0; k < v->c->n; k++) {
-            double r2 = distance2(v, k, x, y);
-            if (v->b[k].height * profile_exact(v->p, sqrt(r2) / v->b[k].radius) <= best) continue;
-            best = v->b[k].height * profile_exact(v->p, sqrt(r2) / v->b[k].radius);
+            double t = v->b[k].height * profile_at(v->p, sqrt(distance2(v, k, x, y)) / v->b[k].radius);
+            if (t <= best) continue;
+            best = t;
             v->owner[at] = (uint32_t)k + 1;
         }
         v->height[at] = (float)best;
@@ -140,10 +148,7 @@ status surface_make(const render_options *o, const centres *c, size_t margin, su
     if (st == ST_OK) {
         canvas v = { .c = c, .b = b, .p = &p, .s = stretching_make(o->stretch, o->stretch_angle_deg),
                      .nx = 2 * s.nx, .ny = 2 * s.ny, .margin = margin, .height = half, .owner = s.owner };
-        for (size_t k = 0; k < c->n; k++) {
-            b[k].rest = b[k].height * profile_at(&p, REACH * c->spacing / b[k].radius);
-            draw_body(&v, k);
-        }
+        for (size_t k = 0; k < c->n; k++) draw_body(&v, k);
         fill_gaps(&v);
         pixels_average(half, s.nx, s.ny, s.height);
         *out = s;
