@@ -1,0 +1,164 @@
+/* Every micrograph of the run as a card: its overlay, what became of it and why. Overlays are read back from the output
+ * folder, box-averaged, and embedded with 32 levels per channel: camera noise below that compresses badly and shows
+ * nothing. The width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one can
+ * mail; what is left out is named with its path. */
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/flags.h"
+#include "base/number.h"
+#include "io/file.h"
+#include "report/html.h"
+#include "report/page.h"
+#include "report/thumbnail.h"
+
+enum { THUMB_WIDTH = 640, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16 };
+static const size_t picture_budget = (size_t)9 << 20; /* bytes of embedded pictures */
+
+void page_flags(textbuf *out, const char *words) {
+    size_t n = 0;
+    for (const char *p = words; p && *p; p += n) {
+        while (*p == ' ') p++;
+        n = strcspn(p, " ");
+        if (!n) break;
+        int bit = 0;
+        while (bit < FLAG_COUNT && (strlen(flag_word(bit)) != n || strncmp(flag_word(bit), p, n))) bit++;
+        if (p != words) text_add(out, bit < FLAG_COUNT ? ", " : " ");
+        textbuf word = { 0 };
+        text_add_n(&word, p, n);
+        if (bit < FLAG_COUNT) {
+            text_add(out, "<span class=\"flag\" title=\"");
+            html_text(out, flag_meaning(bit));
+            text_add(out, "\">");
+        }
+        html_text(out, word.s);
+        if (bit < FLAG_COUNT) text_add(out, "</span>");
+        if (word.failed) out->failed = 1;
+        text_free(&word);
+    }
+}
+
+/* Words of the list with their meaning in full, a sentence as it is. */
+static void add_reason(textbuf *out, const char *reason) {
+    int known = 0;
+    for (int bit = 0; bit < FLAG_COUNT; bit++) {
+        size_t n = strlen(flag_word(bit));
+        for (const char *p = reason; (p = strstr(p, flag_word(bit))); p += n) {
+            if ((p > reason && p[-1] != ' ') || (p[n] && p[n] != ' ')) continue;
+            text_addf(out, "%s<strong>%s</strong>: ", known++ ? "; " : "", flag_word(bit));
+            html_text(out, flag_meaning(bit));
+            break;
+        }
+    }
+    if (!known) html_text(out, reason);
+}
+
+static void add_fact(textbuf *out, const image_row *m, const char *name, const char *twin, const char *label) {
+    const column *c = column_find(image_columns, n_image_columns, name);
+    const column *u = twin ? column_find(image_columns, n_image_columns, twin) : NULL;
+    char cell[NUMBER_TEXT];
+    if (!c || !*column_cell(c, m, cell)) return;
+    text_addf(out, "<dt>%s</dt><dd>", label);
+    html_value(out, c, u, m, 0);
+    if (c->unit[0] && strcmp(c->unit, "1")) text_addf(out, " <span class=\"unit\">%s</span>", c->unit);
+    if (!strcmp(name, "px_nm")) {
+        text_add(out, " <span class=\"unit\">from ");
+        html_text(out, m->px_source);
+        text_add(out, "</span>");
+    }
+    text_add(out, "</dd>\n");
+}
+
+/* One picture into the page; returns the bytes it took, 0 when it could not be read. */
+static size_t embed(const char *path, size_t width, const char *alt, textbuf *out) {
+    uint8_t *png = NULL;
+    size_t n = 0, nx = 0, ny = 0;
+    error e = { 0 };
+    if (thumbnail_png(path, width, &png, &n, &nx, &ny, &e)) {
+        text_add(out, "<div class=\"blank\">The overlay could not be read: ");
+        html_text(out, e.text);
+        text_add(out, "</div>\n");
+        return 0;
+    }
+    text_addf(out, "<img width=\"%zu\" height=\"%zu\" alt=\"Overlay of ", nx, ny);
+    html_text(out, alt);
+    text_add(out, ": detected features and their cells\" src=\"data:image/png;base64,");
+    text_base64(out, png, n);
+    text_add(out, "\">\n");
+    free(png);
+    return n;
+}
+
+static void add_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent, textbuf *out) {
+    const char *relative = r->overlay_paths ? r->overlay_paths[i] : NULL;
+    if (!relative) {
+        text_add(out, "<div class=\"blank\">no overlay</div>\n");
+        return;
+    }
+    if (*spent > picture_budget) {
+        text_add(out, "<div class=\"blank\">Left out to keep the page small: ");
+        html_text(out, relative);
+        text_add(out, "</div>\n");
+        return;
+    }
+    char *path = path_join(out_dir, relative);
+    if (!path)
+        out->failed = 1;
+    else
+        *spent += embed(path, width, r->images[i].file, out);
+    free(path);
+}
+
+static void add_card(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent, textbuf *out) {
+    const image_row *m = &r->images[i];
+    const char *status_word = m->status ? m->status : "";
+    int excluded = !strcmp(status_word, "excluded"), unreadable = !strcmp(status_word, "unreadable");
+    text_addf(out, "<article class=\"card %s\"><h3>", excluded ? "excluded" : unreadable ? "unreadable" : "used");
+    html_text(out, m->file);
+    text_add(out, "</h3>\n");
+    add_picture(r, i, out_dir, width, spent, out);
+    text_add(out, "<p class=\"reason\">");
+    html_badge(out, status_word);
+    if (m->reason && *m->reason) {
+        text_add(out, " ");
+        add_reason(out, m->reason);
+    }
+    text_add(out, "</p>\n<dl>\n");
+    if (m->sample && *m->sample) {
+        text_add(out, "<dt>Sample</dt><dd>");
+        html_text(out, m->sample);
+        text_add(out, "</dd>\n");
+    }
+    add_fact(out, m, "px_nm", NULL, "Pixel");
+    add_fact(out, m, "spacing_acf_nm", "spacing_acf_nm_u", "Spacing, ring");
+    add_fact(out, m, "spacing_hex_nm", "spacing_hex_nm_u", "Spacing, count");
+    add_fact(out, m, "n_features", NULL, "Features");
+    add_fact(out, m, "sharpness_px", NULL, "Blur, sd");
+    if (m->flags && *m->flags) {
+        text_add(out, "<dt>Remarks</dt><dd>");
+        page_flags(out, m->flags);
+        text_add(out, "</dd>\n");
+    }
+    text_add(out, "</dl></article>\n");
+}
+
+static size_t thumb_width(const results *r) {
+    size_t n = 0;
+    for (size_t i = 0; r->overlay_paths && i < r->n_images; i++) n += r->overlay_paths[i] != NULL;
+    if (n <= FULL_SIZE_PICTURES) return THUMB_WIDTH;
+    size_t width = (size_t)(THUMB_WIDTH * sqrt((double)FULL_SIZE_PICTURES / (double)n));
+    return width < THUMB_LEAST ? THUMB_LEAST : width;
+}
+
+void page_pictures(const results *r, const char *out_dir, textbuf *out) {
+    size_t spent = 0, width = thumb_width(r);
+    text_add(out, "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you trust the "
+                  "numbers: one marker per feature, none missing, none on nothing; borders in the valleys.</p>\n"
+                  "<ul class=\"key\"><li>filled marker: counted</li><li>hollow marker: outside the guard frame, not counted"
+                  "</li><li>thin lines: cells, faint where the frame cuts them</li><li>dashes: guard frame</li></ul>\n");
+    if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
+    text_add(out, "<div class=\"cards\">\n");
+    for (size_t i = 0; i < r->n_images; i++) add_card(r, i, out_dir, width, &spent, out);
+    text_add(out, "</div></section>\n");
+}

@@ -1,0 +1,318 @@
+/* A chart is laid out once (frame, scales) and drawn back to front: target range, grid, bands, lines, points, labels.
+ * Only what the report needs: linear and logarithmic y, numeric or named x. Coordinates are written with a tenth of a
+ * pixel; numbers a person reads go through number_text. */
+#include "report/plot.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "base/number.h"
+#include "base/quantity.h"
+#include "report/html.h"
+
+static const char *const tone_colour[PLOT_TONES] = { "var(--blue,#1660a8)", "var(--amber,#a85d00)", "var(--grey,#6b7280)",
+                                                     "var(--teal,#00756a)" };
+#define INK "var(--ink,#1b2430)"
+#define FAINT "var(--rule,#d5dbe3)"
+#define SOFT "var(--soft,#56606e)"
+
+typedef struct {
+    double left, right, top, bottom;     /* of the plotting area, px */
+    double x_lo, x_hi, y_lo, y_hi;       /* shown range; y in log10 when log_y */
+    int log_y;
+} frame;
+
+size_t plot_ticks(double lo, double hi, size_t max, double *ticks) {
+    if (!(hi > lo) || max < 2) return 0;
+    double raw = (hi - lo) / (double)(max - 1), decade = pow(10.0, floor(log10(raw))), lead = raw / decade;
+    double step = decade * (lead <= 1.0 ? 1.0 : lead <= 2.0 ? 2.0 : lead <= 5.0 ? 5.0 : 10.0);
+    size_t n = 0;
+    double first = ceil(lo / step - 1e-9);
+    for (double k = first; n < max && k * step <= hi + 1e-9 * step; k += 1.0) ticks[n++] = k * step;
+    return n;
+}
+
+/* 1, 2, 5 x 10^k within the logarithmic range; only the decades when that is plenty. */
+static size_t log_ticks(double lo, double hi, size_t max, double *ticks) {
+    static const double lead[] = { 1.0, 2.0, 5.0 };
+    size_t step = hi - lo > 2.2 ? 3 : 1, n = 0;
+    for (double d = floor(lo); d <= hi; d += 1.0)
+        for (size_t k = 0; k < 3 && n < max; k += step) {
+            double v = lead[k] * pow(10.0, d), l = log10(v);
+            if (l >= lo - 1e-9 && l <= hi + 1e-9) ticks[n++] = v;
+        }
+    return n;
+}
+
+static double at_x(const frame *f, double x) {
+    return f->left + (x - f->x_lo) / (f->x_hi - f->x_lo) * (f->right - f->left);
+}
+
+/* Clamped to the frame, so that a value beyond a capped axis runs along its edge. */
+static double at_y(const frame *f, double y) {
+    double v = !f->log_y ? y : y > 0.0 ? log10(y) : f->y_lo;
+    v = fmin(fmax(v, f->y_lo), f->y_hi);
+    return f->bottom - (v - f->y_lo) / (f->y_hi - f->y_lo) * (f->bottom - f->top);
+}
+
+typedef struct {
+    double lo, hi;
+} range;
+
+static void widen(range *r, double v) {
+    if (!isfinite(v)) return;
+    r->lo = fmin(r->lo, v);
+    r->hi = fmax(r->hi, v);
+}
+
+static void widen_y(const plot *p, range *r, double v) {
+    if (!p->log_y)
+        widen(r, v);
+    else if (v > 0.0)
+        widen(r, log10(v));
+}
+
+/* The range of what is drawn; 0 when nothing is. */
+static int find_ranges(const plot *p, range *x, range *y) {
+    *x = *y = (range){ HUGE_VAL, -HUGE_VAL };
+    for (size_t s = 0; s < p->n_series; s++)
+        for (size_t i = 0; i < p->series[s].n; i++) {
+            const plot_series *q = &p->series[s];
+            if (!isfinite(q->y[i])) continue;
+            widen(x, q->x[i]);
+            widen_y(p, y, q->y[i]);
+            if (q->lo) widen_y(p, y, q->lo[i]);
+            if (q->hi) widen_y(p, y, q->hi[i]);
+        }
+    if (!(y->hi >= y->lo) || !(x->hi >= x->lo)) return 0;
+    widen_y(p, y, p->target_lo);
+    widen_y(p, y, p->target_hi);
+    return 1;
+}
+
+static void settle_y(const plot *p, range *y) {
+    if (p->log_y) {
+        y->lo = fmax(y->lo, y->hi - 4.0) - 0.05;
+        y->hi += 0.05;
+        if (isfinite(p->y_cap) && p->y_cap > 0.0) y->hi = fmin(y->hi, log10(p->y_cap));
+        return;
+    }
+    double span = y->hi - y->lo;
+    if (!(span > 0.0)) span = fabs(y->hi) > 0.0 ? 0.2 * fabs(y->hi) : 1.0;
+    y->hi += 0.08 * span;
+    y->lo = p->from_zero && y->lo >= 0.0 ? 0.0 : y->lo - 0.08 * span;
+    if (isfinite(p->y_cap)) y->hi = fmin(y->hi, p->y_cap);
+}
+
+static int lay_out(const plot *p, frame *f) {
+    range x, y;
+    *f = (frame){ .left = 64, .right = p->width - 14.0, .top = 50, .bottom = p->height - (p->names ? 62.0 : 46.0) };
+    f->log_y = p->log_y;
+    if (!find_ranges(p, &x, &y)) return 0;
+    settle_y(p, &y);
+    if (p->names) x = (range){ -0.6, (double)p->n_names - 0.4 };
+    if (!(x.hi > x.lo)) x = (range){ x.lo - 1.0, x.hi + 1.0 };
+    f->x_lo = x.lo;
+    f->x_hi = x.hi;
+    f->y_lo = y.lo;
+    f->y_hi = y.hi > y.lo ? y.hi : y.lo + 1.0;
+    return 1;
+}
+
+static void draw_text(textbuf *out, double x, double y, const char *anchor, const char *colour, const char *more,
+                      const char *text) {
+    text_addf(out, "<text x=\"%.1f\" y=\"%.1f\" text-anchor=\"%s\" style=\"fill:%s\"%s>", x, y, anchor, colour, more);
+    html_text(out, text);
+    text_add(out, "</text>\n");
+}
+
+static void draw_line(textbuf *out, double x0, double y0, double x1, double y1, const char *colour, const char *more) {
+    text_addf(out, "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\"%s/>\n", x0, y0, x1, y1,
+              colour, more);
+}
+
+static void draw_target(const plot *p, const frame *f, textbuf *out) {
+    if (!isfinite(p->target_lo) && !isfinite(p->target_hi)) return;
+    double top = isfinite(p->target_hi) ? at_y(f, p->target_hi) : f->top;
+    double bottom = isfinite(p->target_lo) ? at_y(f, p->target_lo) : f->bottom;
+    text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" style=\"fill:%s\" fill-opacity=\"0.13\"/>\n",
+              f->left, top, f->right - f->left, fmax(0.0, bottom - top), tone_colour[3]);
+    const char *dash = " stroke-width=\"1.2\" stroke-dasharray=\"7 4\"";
+    if (isfinite(p->target_hi)) draw_line(out, f->left, top, f->right, top, tone_colour[3], dash);
+    if (isfinite(p->target_lo)) draw_line(out, f->left, bottom, f->right, bottom, tone_colour[3], dash);
+}
+
+enum { MAX_TICKS = 16 };
+
+static void draw_y_axis(const plot *p, const frame *f, textbuf *out) {
+    double tick[MAX_TICKS];
+    char number[NUMBER_TEXT];
+    size_t room = (size_t)fmax(3.0, (f->bottom - f->top) / 34.0);
+    if (room > MAX_TICKS) room = MAX_TICKS;
+    size_t n = f->log_y ? log_ticks(f->y_lo, f->y_hi, MAX_TICKS, tick) : plot_ticks(f->y_lo, f->y_hi, room, tick);
+    for (size_t i = 0; i < n; i++) {
+        double y = at_y(f, tick[i]);
+        draw_line(out, f->left, y, f->right, y, FAINT, "");
+        draw_text(out, f->left - 7, y + 4, "end", SOFT, "", number_text(tick[i], 6, number));
+    }
+    double middle = 0.5 * (f->top + f->bottom);
+    text_addf(out, "<text transform=\"translate(15 %.1f) rotate(-90)\" text-anchor=\"middle\" style=\"fill:%s\">", middle,
+              INK);
+    html_text(out, p->y_label);
+    text_add(out, "</text>\n");
+}
+
+/* Names are thinned so that two never touch, and cut to what fits; the last one is always there. */
+static void draw_names(const plot *p, const frame *f, textbuf *out) {
+    double slot = (f->right - f->left) / ((double)p->n_names + 0.2);
+    size_t step = slot >= 84.0 ? 1 : (size_t)ceil(84.0 / slot);
+    for (size_t i = 0; i < p->n_names; i++) {
+        size_t back = p->n_names - 1 - i;
+        draw_line(out, at_x(f, (double)i), f->bottom, at_x(f, (double)i), f->bottom + (back % step ? 3 : 6), SOFT, "");
+        if (back % step) continue;
+        const char *name = p->names[i] ? p->names[i] : "";
+        textbuf cut = { 0 };
+        size_t keep = html_fit(name, 16);
+        text_add_n(&cut, name, keep);
+        if (name[keep]) text_add(&cut, "\xe2\x80\xa6");
+        draw_text(out, fmin(fmax(at_x(f, (double)i), f->left + 10), f->right - 30), f->bottom + 20, "middle", SOFT, "",
+                  cut.s ? cut.s : "");
+        text_free(&cut);
+    }
+}
+
+static void draw_x_axis(const plot *p, const frame *f, textbuf *out) {
+    double tick[MAX_TICKS];
+    char number[NUMBER_TEXT];
+    draw_line(out, f->left, f->bottom, f->right, f->bottom, SOFT, "");
+    if (p->names) {
+        draw_names(p, f, out);
+    } else {
+        size_t room = (size_t)fmin(MAX_TICKS, fmax(3.0, (f->right - f->left) / 58.0));
+        size_t n = plot_ticks(f->x_lo, f->x_hi, room, tick);
+        for (size_t i = 0; i < n; i++) {
+            double x = at_x(f, tick[i]);
+            draw_line(out, x, f->bottom, x, f->bottom + 5, SOFT, "");
+            draw_text(out, x, f->bottom + 18, "middle", SOFT, "", number_text(tick[i], 6, number));
+        }
+    }
+    draw_text(out, 0.5 * (f->left + f->right), p->height - 9.0, "middle", INK, "", p->x_label);
+}
+
+static int in_band(const plot_series *s, size_t i) { return isfinite(s->lo[i]) && isfinite(s->hi[i]); }
+
+/* One closed area for each unbroken run of lo..hi. */
+static void draw_band(const plot_series *s, const frame *f, textbuf *out) {
+    for (size_t from = 0, to; from < s->n; from = to + 1) {
+        for (to = from; to < s->n && in_band(s, to);) to++;
+        if (to - from < 2) continue;
+        text_add(out, "<path d=\"");
+        for (size_t i = from; i < to; i++)
+            text_addf(out, "%s%.1f %.1f", i == from ? "M" : "L", at_x(f, s->x[i]), at_y(f, s->hi[i]));
+        for (size_t i = to; i-- > from;) text_addf(out, "L%.1f %.1f", at_x(f, s->x[i]), at_y(f, s->lo[i]));
+        text_addf(out, "Z\" style=\"fill:%s;stroke:none\" fill-opacity=\"0.22\"/>\n", tone_colour[s->tone]);
+    }
+}
+
+static const char *dashes(plot_style style) {
+    return style == PLOT_DASHED ? " stroke-dasharray=\"8 4\"" : style == PLOT_DOTTED ? " stroke-dasharray=\"2 4\"" : "";
+}
+
+static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
+    int pen = 0;
+    text_add(out, "<path d=\"");
+    for (size_t i = 0; i < s->n; i++) {
+        if (!isfinite(s->y[i])) {
+            pen = 0;
+            continue;
+        }
+        text_addf(out, "%s%.1f %.1f", pen ? "L" : "M", at_x(f, s->x[i]), at_y(f, s->y[i]));
+        pen = 1;
+    }
+    text_addf(out, "\" style=\"fill:none;stroke:%s\" stroke-width=\"%s\"%s/>\n", tone_colour[s->tone],
+              s->style == PLOT_LINE ? "2.2" : "1.6", dashes(s->style));
+}
+
+static void draw_mark(textbuf *out, plot_mark mark, double x, double y) {
+    switch (mark) {
+    case MARK_DIAMOND:
+        text_addf(out, "<path d=\"M%.1f %.1fl6.5 6.5l-6.5 6.5l-6.5 -6.5Z\" style=\"fill:var(--amber,#a85d00)\"/>", x, y - 6.5);
+        break;
+    case MARK_TRIANGLE:
+        text_addf(out, "<path d=\"M%.1f %.1fl6.8 11.6h-13.6Z\" style=\"fill:var(--red,#b02a1c)\"/>", x, y - 7.4);
+        break;
+    case MARK_SQUARE:
+        text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"9\" height=\"9\" style=\"fill:var(--paper,#fff);stroke:%s\" "
+                       "stroke-width=\"2\"/>", x - 4.5, y - 4.5, SOFT);
+        break;
+    case MARK_DISC:
+    default:
+        text_addf(out, "<circle cx=\"%.1f\" cy=\"%.1f\" r=\"5\" style=\"fill:%s\"/>", x, y, tone_colour[3]);
+        break;
+    }
+}
+
+static void draw_points(const plot *p, const plot_series *s, const frame *f, textbuf *out) {
+    char number[NUMBER_TEXT];
+    for (size_t i = 0; i < s->n; i++) {
+        if (!isfinite(s->y[i])) continue;
+        double x = at_x(f, s->x[i]);
+        text_add(out, "<g><title>");
+        if (p->names && p->names[i]) html_text(out, p->names[i]);
+        text_addf(out, ": %s</title>", number_text(s->y[i], 6, number));
+        if (s->lo && s->hi && in_band(s, i)) {
+            double top = at_y(f, s->hi[i]), bottom = at_y(f, s->lo[i]);
+            draw_line(out, x, top, x, bottom, INK, " stroke-width=\"1.4\"");
+            draw_line(out, x - 4, top, x + 4, top, INK, " stroke-width=\"1.4\"");
+            draw_line(out, x - 4, bottom, x + 4, bottom, INK, " stroke-width=\"1.4\"");
+        }
+        draw_mark(out, s->marks ? s->marks[i] : MARK_DISC, x, at_y(f, s->y[i]));
+        text_add(out, "</g>\n");
+    }
+}
+
+static void draw_legend(const plot *p, const frame *f, textbuf *out) {
+    double x = f->left, y = 36;
+    for (size_t i = 0; i < p->n_series; i++) {
+        const plot_series *s = &p->series[i];
+        if (!s->label) continue;
+        text_addf(out, "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\" stroke-width=\"2.4\"%s/>\n",
+                  x, y - 4, x + 24, y - 4, tone_colour[s->tone], dashes(s->style));
+        draw_text(out, x + 30, y, "start", SOFT, "", s->label);
+        x += 46.0 + 6.6 * (double)strlen(s->label);
+    }
+    if (p->target_label && (isfinite(p->target_lo) || isfinite(p->target_hi))) {
+        text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"24\" height=\"11\" style=\"fill:%s;stroke:%s\" "
+                       "fill-opacity=\"0.13\" stroke-dasharray=\"5 3\"/>\n", x, y - 10, tone_colour[3], tone_colour[3]);
+        draw_text(out, x + 30, y, "start", SOFT, "", p->target_label);
+    }
+}
+
+void plot_svg(const plot *given, textbuf *out) {
+    plot p = *given;
+    frame f;
+    if (p.width <= 0) p.width = 720;
+    if (p.height <= 0) p.height = 320;
+    text_addf(out, "<svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 %d %d\" role=\"img\" font-size=\"12.5\" "
+                   "font-family=\"system-ui,sans-serif\" aria-label=\"", p.width, p.height);
+    html_text(out, p.description ? p.description : p.title);
+    text_add(out, "\">\n");
+    draw_text(out, 14, 18, "start", INK, " font-size=\"14\" font-weight=\"600\"", p.title);
+    if (!lay_out(&p, &f)) {
+        draw_text(out, 0.5 * p.width, 0.5 * p.height, "middle", SOFT, "", "no values to draw");
+        text_add(out, "</svg>\n");
+        return;
+    }
+    draw_target(&p, &f, out);
+    draw_y_axis(&p, &f, out);
+    draw_x_axis(&p, &f, out);
+    for (size_t i = 0; i < p.n_series; i++)
+        if (p.series[i].style != PLOT_POINTS && p.series[i].lo && p.series[i].hi) draw_band(&p.series[i], &f, out);
+    for (size_t i = 0; i < p.n_series; i++)
+        if (p.series[i].style == PLOT_POINTS)
+            draw_points(&p, &p.series[i], &f, out);
+        else
+            draw_curve(&p.series[i], &f, out);
+    draw_legend(&p, &f, out);
+    text_add(out, "</svg>\n");
+}

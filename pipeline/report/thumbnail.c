@@ -1,0 +1,110 @@
+/* Box average in two passes over exact pixel shares (columns, then rows), sums in double. Reads PNG through libpng's
+ * simplified interface, which keeps its jumps to itself. */
+#include "report/thumbnail.h"
+
+#include <math.h>
+#include <png.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/limits.h"
+#include "base/mem.h"
+#include "io/file.h"
+#include "io/png_write.h"
+
+/* Adds source pixels [from, to) (fractions included) of `n`, `step` apart, weighted by their share. */
+static double average(const float *src, size_t n, size_t step, double from, double to) {
+    double sum = 0.0;
+    for (size_t i = (size_t)from; i < n && (double)i < to; i++) {
+        double share = fmin(to, (double)i + 1.0) - fmax(from, (double)i);
+        sum += share * (double)src[i * step];
+    }
+    return sum / (to - from);
+}
+
+status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8_t **small, size_t *small_ny, error *e) {
+    double ratio = (double)nx / (double)width;
+    size_t height = (size_t)lround((double)ny / ratio);
+    if (!height) height = 1;
+    double ratio_y = (double)ny / (double)height;
+    float *line = mem_array(nx * 3, sizeof *line), *half = mem_array(ny * width, 3 * sizeof *half);
+    uint8_t *out = mem_array(height * width, 3);
+    status st = ST_OK;
+    if (!line || !half || !out) {
+        st = NO_MEMORY(e, "a small copy of the overlay");
+        goto done;
+    }
+    for (size_t y = 0; y < ny; y++) {
+        for (size_t i = 0; i < nx * 3; i++) line[i] = (float)rgb[y * nx * 3 + i];
+        for (size_t x = 0; x < width; x++)
+            for (size_t k = 0; k < 3; k++)
+                half[(y * width + x) * 3 + k] =
+                    (float)average(line + k, nx, 3, (double)x * ratio, ((double)x + 1.0) * ratio);
+    }
+    for (size_t y = 0; y < height; y++)
+        for (size_t i = 0; i < width * 3; i++)
+            out[y * width * 3 + i] = (uint8_t)lround(
+                average(half + i, ny, width * 3, (double)y * ratio_y, fmin((double)ny, ((double)y + 1.0) * ratio_y)));
+    *small = out;
+    *small_ny = height;
+    out = NULL;
+done:
+    free(line);
+    free(half);
+    free(out);
+    return st;
+}
+
+static status decode(const char *path, uint8_t **rgb, size_t *nx, size_t *ny, error *e) {
+    char *bytes = NULL;
+    size_t n = 0;
+    png_image image = { .version = PNG_IMAGE_VERSION };
+    uint8_t *pixels = NULL;
+    status st = file_read(path, LIMIT_FILE_BYTES, &bytes, &n, e);
+    if (st) return st;
+    if (!png_image_begin_read_from_memory(&image, bytes, n)) {
+        st = fail(e, ST_BAD_INPUT, "%s is no PNG picture (%s)", path, image.message);
+        goto done;
+    }
+    image.format = PNG_FORMAT_RGB;
+    if (!image.width || !image.height || image.width > LIMIT_PIXELS / image.height) {
+        st = fail(e, ST_BAD_INPUT, "%s is too large for an overlay", path);
+        goto done;
+    }
+    pixels = mem_array((size_t)image.width * image.height, 3);
+    if (!pixels) {
+        st = NO_MEMORY(e, "an overlay");
+    } else if (!png_image_finish_read(&image, NULL, pixels, 0, NULL)) {
+        st = fail(e, ST_BAD_INPUT, "%s is damaged (%s)", path, image.message);
+    } else {
+        *rgb = pixels;
+        *nx = image.width;
+        *ny = image.height;
+        pixels = NULL;
+    }
+done:
+    png_image_free(&image);
+    free(pixels);
+    free(bytes);
+    return st;
+}
+
+status thumbnail_png(const char *path, size_t width, uint8_t **png, size_t *n, size_t *nx, size_t *ny, error *e) {
+    uint8_t *full = NULL, *small = NULL;
+    size_t full_nx = 0, full_ny = 0, small_ny = 0;
+    status st = decode(path, &full, &full_nx, &full_ny, e);
+    if (st) return st;
+    size_t small_nx = width && width < full_nx ? width : full_nx;
+    st = box_average(full, full_nx, full_ny, small_nx, &small, &small_ny, e);
+    if (!st) {
+        for (size_t i = 0; i < small_nx * small_ny * 3; i++)
+            small[i] = (uint8_t)((small[i] >> 3) * 255 / 31);
+        png_format f = { .nx = small_nx, .ny = small_ny, .channels = 3, .bit_depth = 8 };
+        st = png_encode(small, &f, png, n, e);
+        *nx = small_nx;
+        *ny = small_ny;
+    }
+    free(full);
+    free(small);
+    return st;
+}
