@@ -2,8 +2,8 @@
  *
  * Shape: solid share of the cell u^(2/q), u = depth below the tip / height; q = 1 cone, q = 2 paraboloid. As a solid
  * of revolution on the circular cell of radius R its radius is R sqrt(F) u^(1/q).
- * Heights: h_i = h (d_i/d_mean)^g by cell, then a normal spread of relative sd s, cut at 3 sd (0.3 % of the features)
- * and at h/20, in 101 steps, re-binned to at most 129 classes that keep each bin's mean height.
+ * Heights: h_i = h (d_i/d_mean)^g by cell, then a normal spread of relative sd s, cut at 4 sd and at h/20 (what
+ * is cut goes to the others in proportion), in 121 steps, re-binned to at most 129 classes that keep each bin's mean height.
  * Film: every point within t of the solid (dilation by a ball), found by searching the point of the wall that
  * reaches farthest at the level asked for: a scan, then a golden section.
  * What this file does not do: shadowing, corners rounded by the film's own growth, cells that are not circles. */
@@ -11,7 +11,7 @@
 
 #include "link/surface_priv.h"
 
-enum { SPREAD_STEPS = 101, CELL_BINS = 64 };
+enum { SPREAD_STEPS = 121, CELL_BINS = 64 };
 
 double shape_share(double u, double exponent) {
     if (u <= 0.0) return 0.0;
@@ -65,7 +65,7 @@ static void normal_heights(double sd, spectrum_of_heights *s) {
     if (!(sd > 0.0)) return;
     s->n = 0;
     for (int i = 0; i < SPREAD_STEPS; i++) {
-        double z = 6.0 * (i + 0.5) / SPREAD_STEPS - 3.0, at = 1.0 + sd * z;
+        double z = 8.0 * (i + 0.5) / SPREAD_STEPS - 4.0, at = 1.0 + sd * z;
         if (at < 0.05) continue;
         s->at[s->n] = at;
         s->weight[s->n++] = exp(-0.5 * z * z);

@@ -17,7 +17,7 @@ status link_check(double height_nm, const link_options *o, error *e);
 /* Solid share of the cell at u = depth below the feature's own tip / its height: 0 above, u^(2/q), 1 below the floor. */
 double shape_share(double u, double exponent);
 
-/* h_i = h (d_i / d_mean)^g, then the normal spread, cut at 3 sd and at a twentieth of h.
+/* h_i = h (d_i / d_mean)^g, then the normal spread, cut at 4 sd and at a twentieth of h.
  *   err ST_BAD_INPUT a cell area that is not above 0 */
 status heights_make(double height_nm, const double *cell_area_nm2, size_t n_cells, const link_options *o,
                     height_classes *out, error *e);

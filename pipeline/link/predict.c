@@ -1,0 +1,287 @@
+/* One prediction: spectrum, weighted value, current, references, shares of photons, interval, and what to say of it.
+ *
+ * The plain value is the graded index on the grid asked for; everything that moves an input runs on a 10 nm grid
+ * (weighted R within 2e-5 of the fine one). A texture for which more than half of the photons have spacing/wavelength
+ * above 2.5, where the tables of the model's error end, is refused: there is no number to believe.
+ * What this file does not do: light that returns from the rear of the wafer. */
+#include "link/predict.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/mem.h"
+#include "base/number.h"
+#include "base/text.h"
+#include "link/predict_priv.h"
+#include "link/surface_priv.h"
+
+static const double COARSE_NM = 10.0, COARSE_TOLERANCE = 1e-5;
+static const double TABLE_END = 2.5; /* spacing / wavelength */
+static const double NITRIDE_NM = 75.0, GRID_MAX = 1e5;
+
+/* ---- grids ---- */
+
+static status grid_make(double lo, double hi, double step, double tolerance, grid *g, error *e) {
+    double steps = floor((hi - lo) / step + 1e-9);
+    size_t n = (size_t)steps + 1;
+    int more = lo + steps * step < hi - 1e-9 * hi; /* the last step is shorter */
+    g->n = n + (size_t)more;
+    g->tolerance = tolerance;
+    g->wavelength_nm = mem_array(g->n, sizeof *g->wavelength_nm);
+    if (!g->wavelength_nm) return NO_MEMORY(e, "a prediction");
+    for (size_t i = 0; i < n; i++) g->wavelength_nm[i] = lo + step * (double)i;
+    g->wavelength_nm[g->n - 1] = hi;
+    return ST_OK;
+}
+
+status weighted_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e) {
+    return sun_weighted(o->sun, g->wavelength_nm, y, g->n, o->band_lo_nm, o->band_hi_nm, mean, e);
+}
+
+/* ---- stacks ---- */
+
+static stack bare(const optics_setup *o) {
+    return (stack){ .ambient = o->ambient, .front = o->front, .substrate = o->substrate, .mixing = o->mixing };
+}
+
+static status solve(const stack *s, const optics_setup *o, const grid *g, double *R, size_t *slabs, error *e) {
+    reflect_options r = o->reflect;
+    r.tolerance = g->tolerance;
+    return reflectance(s, &r, g->wavelength_nm, g->n, R, slabs, e);
+}
+
+status variant_spectrum(const surface_input *in, const optics_setup *o, const variant *v, const grid *g, double *R,
+                        size_t *slabs, error *e) {
+    profile made = { 0 };
+    stack s = bare(o);
+    link_options l = in->link;
+    l.exponent = v->exponent;
+    l.level_at_tips = v->level_at_tips;
+    s.mixing = v->mixing;
+    s.coatings = o->coatings;
+    s.n_coatings = o->n_coatings;
+    s.profile = in->measured;
+    if (!in->measured) {
+        status st = link_profile(v->height_nm, v->spacing_nm, in->cell_area_nm2, in->n_cells, in->pores, &l,
+                                 o->coatings, o->n_coatings, &made, e);
+        if (st != ST_OK) return st;
+        s.profile = &made;
+    }
+    status st = solve(&s, o, g, R, slabs, e);
+    profile_free(&made);
+    return st;
+}
+
+status polished_spectrum(const optics_setup *o, int in_air, const grid *g, double *R, error *e) {
+    stack s = bare(o);
+    if (in_air) {
+        s.ambient = o->air;
+        s.front = (laminate){ 0 };
+    }
+    return solve(&s, o, g, R, NULL, e);
+}
+
+static status references(const optics_setup *o, const grid *g, double *work, prediction *out, error *e) {
+    layer film = { o->nitride, NITRIDE_NM };
+    stack s = bare(o);
+    status st = polished_spectrum(o, 0, g, work, e);
+    if (st == ST_OK) st = weighted_mean(o, g, work, &out->polished, e);
+    s.coatings = &film;
+    s.n_coatings = 1;
+    if (st == ST_OK) st = solve(&s, o, g, work, NULL, e);
+    return st == ST_OK ? weighted_mean(o, g, work, &out->coated, e) : st;
+}
+
+/* ---- validity ---- */
+
+double ambient_index(const optics_setup *o) {
+    const material *m = o->front.glass ? o->front.encapsulant : o->ambient;
+    double n = 1.0, k = 0.0, middle = 0.5 * (o->band_lo_nm + o->band_hi_nm);
+    error ignored = { 0 };
+    if (!m || material_at(m, middle, &n, &k, &ignored) != ST_OK) return 1.0; /* reflectance() reports it */
+    return n;
+}
+
+double texture_angle_deg(const optics_setup *o) {
+    double angle = o->reflect.hemispherical ? 45.0 : o->reflect.angle_deg;
+    if (!o->front.glass) return angle; /* given in the ambient of the texture */
+    return asin(sin(angle * PI / 180.0) / fmax(1.0, ambient_index(o))) * 180.0 / PI;
+}
+
+/* Share of the photons with spacing / wavelength above the tables' end. */
+static status share_beyond(double spacing_nm, const optics_setup *o, double *share, error *e) {
+    double edge = spacing_nm / TABLE_END, all = 0.0, above = 0.0;
+    *share = edge >= o->band_hi_nm ? 1.0 : 0.0;
+    if (!(edge > o->band_lo_nm) || !(edge < o->band_hi_nm)) return ST_OK;
+    status st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &all, e);
+    if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, edge, &above, e);
+    if (st == ST_OK) *share = above / all;
+    return st;
+}
+
+/* ---- words ---- */
+
+static void add_percent(textbuf *t, double share) {
+    char shown[NUMBER_TEXT];
+    text_addf(t, "%s %%", number_text(100.0 * share, 2, shown));
+}
+
+static void say_interval(textbuf *t, const surface_input *in, const optics_setup *o) {
+    char shown[NUMBER_TEXT];
+    if (in->measured) text_add(t, "The interval holds the mixing rule and the model's own error, not that of the profile.");
+    else {
+        text_add(t, "The interval holds the model's own error, the mixing rule");
+        if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", number_text(in->height_nm.u, 2, shown));
+        if (in->link.exponent_u > 0.0) text_add(t, ", the shape");
+        if (in->link.height_spread > 0.0) text_add(t, ", level floor or level tips");
+        text_add(t, ".");
+        if (isnan(in->height_nm.u)) text_add(t, " The height's uncertainty is unknown and not in it.");
+    }
+    int far = o->reflect.hemispherical || o->reflect.angle_deg > 0.0 || o->n_coatings || in->pores ||
+              strncmp(o->substrate->name ? o->substrate->name : "", "silicon", 7) != 0;
+    if (far) text_add(t, " The model's error was studied on bare silicon hillocks at normal incidence and is carried over.");
+}
+
+static void say(prediction *out, const surface_input *in, const optics_setup *o, double beyond, int planar) {
+    textbuf t = { 0 };
+    char shown[NUMBER_TEXT];
+    if (out->refused) {
+        text_addf(&t, "No reflectance: with a spacing of %s nm ", number_text(in->spacing_nm.value, 4, shown));
+        add_percent(&t, beyond);
+        text_add(&t, " of the photons have a wavelength below spacing/2.5, where the graded-index model says nothing; such "
+                     "a texture reflects by geometric optics.");
+    } else if (planar) {
+        text_add(&t, "Planar layers: exact, no model error.");
+    } else if (!(in->spacing_nm.value > 0.0)) {
+        text_add(&t, "The spacing is unknown: no interval, and no statement whether the texture is fine enough for the "
+                     "graded-index model.");
+    } else {
+        if (out->shares.in_ambient >= 0.005) {
+            add_percent(&t, out->shares.in_ambient);
+            text_add(&t, " of the photons are diffracted out again, where the graded-index model is far too low. ");
+        }
+        say_interval(&t, in, o);
+    }
+    if (!out->refused && o->band_hi_nm > 1000.0)
+        text_add(&t, " Front surface only: light returning from the rear beyond about 1000 nm is not included.");
+    size_t n = t.n < sizeof out->note - 1 ? t.n : sizeof out->note - 1;
+    if (!t.failed && t.s) memcpy(out->note, t.s, n);
+    out->note[t.failed ? 0 : n] = '\0';
+    text_free(&t);
+}
+
+/* ---- one prediction ---- */
+
+static status check(const surface_input *in, const optics_setup *o, error *e) {
+    char a[NUMBER_TEXT], b[NUMBER_TEXT];
+    if (!(o->band_lo_nm > 0.0 && o->band_hi_nm > o->band_lo_nm) || !isfinite(o->band_hi_nm))
+        return fail(e, ST_BAD_INPUT, "band: found %s to %s nm, expected an ascending band such as 300 to 1200",
+                    number_text(o->band_lo_nm, 6, a), number_text(o->band_hi_nm, 6, b));
+    if (!(o->step_nm > 0.0) || (o->band_hi_nm - o->band_lo_nm) / o->step_nm > GRID_MAX)
+        return fail(e, ST_BAD_INPUT, "step: found %s nm, expected a step above 0 with at most 100000 wavelengths in the "
+                                     "band",
+                    number_text(o->step_nm, 6, a));
+    if (isfinite(in->spacing_nm.value) && !(in->spacing_nm.value > 0.0))
+        return fail(e, ST_BAD_INPUT, "spacing: found %s nm, expected a spacing above 0",
+                    number_text(in->spacing_nm.value, 6, a));
+    return in->measured ? ST_OK : link_check(in->height_nm.value, &in->link, e);
+}
+
+static status allocate(prediction *p, const grid *g, error *e) {
+    p->n = g->n;
+    p->wavelength_nm = mem_array(g->n, sizeof(double));
+    p->R = mem_array(g->n, sizeof(double));
+    p->R_lo = mem_array(g->n, sizeof(double));
+    p->R_hi = mem_array(g->n, sizeof(double));
+    if (!p->wavelength_nm || !p->R || !p->R_lo || !p->R_hi) return NO_MEMORY(e, "a prediction");
+    memcpy(p->wavelength_nm, g->wavelength_nm, g->n * sizeof(double));
+    for (size_t i = 0; i < g->n; i++) p->R[i] = p->R_lo[i] = p->R_hi[i] = MISSING;
+    return ST_OK;
+}
+
+static status geometry(const surface_input *in, const optics_setup *o, const variant *v, int planar, prediction *p,
+                       error *e) {
+    double p_nm = in->spacing_nm.value;
+    p->shares = (order_shares){ MISSING, MISSING, MISSING };
+    p->aspect = p_nm > 0.0 ? v->height_nm / p_nm : MISSING;
+    p->area_ratio = in->measured ? MISSING : link_area_ratio(v->height_nm, p_nm, &in->link);
+    if (planar) {
+        p->aspect = in->measured ? p->aspect : 0.0;
+        p->area_ratio = 1.0;
+        p->shares = (order_shares){ 1.0, 0.0, 0.0 };
+        return ST_OK;
+    }
+    if (!(p_nm > 0.0)) return ST_OK;
+    return trust_shares(p_nm, texture_angle_deg(o), ambient_index(o), o->substrate, o->sun, o->band_lo_nm,
+                        o->band_hi_nm, &p->shares, e);
+}
+
+static status central(const surface_input *in, const optics_setup *o, const variant *v, const grid *fine, prediction *p,
+                      error *e) {
+    double current = 0.0;
+    status st = variant_spectrum(in, o, v, fine, p->R, &p->slabs, e);
+    if (st == ST_OK) st = weighted_mean(o, fine, p->R, &p->weighted, e);
+    if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &current, e);
+    if (st == ST_OK) p->current_loss_mA_cm2 = p->weighted * current;
+    return st;
+}
+
+static void exact(prediction *p) {
+    memcpy(p->R_lo, p->R, p->n * sizeof(double));
+    memcpy(p->R_hi, p->R, p->n * sizeof(double));
+    p->weighted_lo = p->weighted_hi = p->weighted;
+}
+
+static double texture_height(const surface_input *in) {
+    const profile *m = in->measured;
+    if (!m) return in->height_nm.value;
+    return m->n ? m->depth_nm[m->n - 1] - m->depth_nm[0] : 0.0;
+}
+
+status predict(const surface_input *in, const optics_setup *o, prediction *out, error *e) {
+    *out = (prediction){ 0 };
+    status st = check(in, o, e);
+    if (st != ST_OK) return st;
+    variant v = { .height_nm = texture_height(in), .spacing_nm = in->spacing_nm.value, .exponent = in->link.exponent,
+                  .level_at_tips = in->link.level_at_tips, .mixing = o->mixing };
+    prediction p = { .weighted = MISSING, .weighted_lo = MISSING, .weighted_hi = MISSING, .current_loss_mA_cm2 = MISSING,
+                     .polished = MISSING, .coated = MISSING, .model = "graded" };
+    grid fine = { 0 }, coarse = { 0 };
+    int planar = !(v.height_nm > 0.0);
+    double beyond = 0.0;
+    st = grid_make(o->band_lo_nm, o->band_hi_nm, o->step_nm, o->reflect.tolerance, &fine, e);
+    if (st == ST_OK)
+        st = grid_make(o->band_lo_nm, o->band_hi_nm, fmin(fmax(COARSE_NM, o->step_nm), o->band_hi_nm - o->band_lo_nm),
+                       fmax(o->reflect.tolerance, COARSE_TOLERANCE), &coarse, e);
+    if (st == ST_OK) st = allocate(&p, &fine, e);
+    if (st == ST_OK) st = references(o, &fine, p.R, &p, e); /* R serves as work space first */
+    if (st == ST_OK) st = geometry(in, o, &v, planar, &p, e);
+    if (st == ST_OK && !planar && v.spacing_nm > 0.0) st = share_beyond(v.spacing_nm, o, &beyond, e);
+    if (st == ST_OK && beyond > 0.5) {
+        p.refused = 1;
+        p.model = "none";
+        for (size_t i = 0; i < p.n; i++) p.R[i] = MISSING;
+    } else {
+        if (st == ST_OK) st = central(in, o, &v, &fine, &p, e);
+        if (st == ST_OK && planar) exact(&p);
+        else if (st == ST_OK) st = interval_fill(in, o, &v, &coarse, &p, e);
+    }
+    if (st == ST_OK) {
+        say(&p, in, o, beyond, planar);
+        *out = p;
+        p = (prediction){ 0 };
+    }
+    prediction_free(&p);
+    free(fine.wavelength_nm);
+    free(coarse.wavelength_nm);
+    return st;
+}
+
+void prediction_free(prediction *p) {
+    free(p->wavelength_nm);
+    free(p->R);
+    free(p->R_lo);
+    free(p->R_hi);
+    *p = (prediction){ 0 };
+}

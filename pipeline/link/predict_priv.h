@@ -1,0 +1,36 @@
+/* What predict.c and interval.c share: one texture under variation, on one grid. */
+#ifndef SWARD_LINK_PREDICT_PRIV_H
+#define SWARD_LINK_PREDICT_PRIV_H
+#include "link/predict.h"
+
+/* The texture as predicted, or with one input moved. */
+typedef struct {
+    double height_nm, spacing_nm, exponent;
+    int level_at_tips;
+    mixing mixing;
+} variant;
+
+/* An ascending grid from lo to hi, both included. */
+typedef struct {
+    size_t n;
+    double *wavelength_nm;
+    double tolerance; /* of reflectance on it */
+} grid;
+
+/* R of a variant on a grid. slabs may be NULL. err as in link_profile(), reflectance() */
+status variant_spectrum(const surface_input *in, const optics_setup *o, const variant *v, const grid *g, double *R,
+                        size_t *slabs, error *e);
+/* R of the polished substrate in an ambient; in_air: without the sample's ambient or laminate. */
+status polished_spectrum(const optics_setup *o, int in_air, const grid *g, double *R, error *e);
+status weighted_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e);
+
+/* Index of the ambient the texture lies in, and the angle there (a diffuse sky counts as 45 degrees). */
+double ambient_index(const optics_setup *o);
+double texture_angle_deg(const optics_setup *o);
+
+/* Fills the interval and the budget of *out, whose spectrum and weighted value are there. `coarse`: grid of the
+ * variations. Leaves lo/hi NAN when the spacing is unknown. */
+status interval_fill(const surface_input *in, const optics_setup *o, const variant *central, const grid *coarse,
+                     prediction *out, error *e);
+
+#endif
