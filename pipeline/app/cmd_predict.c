@@ -238,13 +238,16 @@ static void print_surface(const surface_input *in, const prediction *r, textbuf 
     if (in->measured) text_add(out, "Surface: measured profile");
     else if (!(in->height_nm.value > 0.0)) text_add(out, "Surface: planar");
     else {
-        text_addf(out, "Surface: %s %s nm high", in->pores ? "pores" : "features", number_text(in->height_nm.value, 5, a));
-        if (in->height_nm.u > 0.0) text_addf(out, " +- %s nm", number_text(in->height_nm.u, 3, a));
-        text_addf(out, ", aspect %s, area %s times the flat one", number_text(r->aspect, 4, a), number_text(r->area_ratio, 4, b));
+        text_addf(out, "Surface: %s of height %s", in->pores ? "pores" : "features", number_text(in->height_nm.value, 5, a));
+        if (in->height_nm.u > 0.0) text_addf(out, " +- %s", number_text(in->height_nm.u, 3, a));
+        text_addf(out, " nm, aspect %s, area %s times the flat one", number_text(r->aspect, 4, a), number_text(r->area_ratio, 4, b));
     }
     if (isfinite(in->spacing_nm.value)) text_addf(out, ", spacing %s nm", number_text(in->spacing_nm.value, 5, a));
     text_add(out, "\n");
 }
+
+/* A share of the photons; what rounds to nothing prints as 0. */
+static const char *share_text(double share, char *buffer) { return number_percent(share < 5e-4 ? 0.0 : share, 3, buffer); }
 
 static void print_text(const surface_input *in, const protocol *p, const prediction *r, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT];
@@ -257,7 +260,7 @@ static void print_text(const surface_input *in, const protocol *p, const predict
     else {
         int digits = digits_of("weighted_reflectance");
         text_addf(out, "Weighted reflectance     %s %%", number_percent(r->weighted, digits, a));
-        if (isfinite(r->weighted_lo) && isfinite(r->weighted_hi))
+        if (r->weighted_lo < r->weighted_hi) /* planar layers have no interval */
             text_addf(out, "   (95 %% interval %s to %s %%)", number_percent(r->weighted_lo, digits, b),
                       number_percent(r->weighted_hi, digits, c));
         text_addf(out, "\nCurrent it costs         %s mA/cm2\n",
@@ -267,8 +270,7 @@ static void print_text(const surface_input *in, const protocol *p, const predict
     text_addf(out, "Polished, 75 nm nitride  %s %%\n", number_percent(r->coated, digits_of("coated_reflectance"), a));
     if (isfinite(r->shares.none))
         text_addf(out, "Photons                  %s %% see no diffraction, %s %% are diffracted into the substrate only, %s %% also above it\n",
-                  number_percent(r->shares.none, 3, a), number_percent(r->shares.in_substrate, 3, b),
-                  number_percent(r->shares.in_ambient, 3, c));
+                  share_text(r->shares.none, a), share_text(r->shares.in_substrate, b), share_text(r->shares.in_ambient, c));
     if (r->note[0]) text_addf(out, "\n%s\n", r->note);
 }
 

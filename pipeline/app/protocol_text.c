@@ -71,14 +71,35 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
     }
 }
 
+/* A comment of lines no wider than a terminal; words stay whole. */
+static void comment(const char *text, const char *indent, textbuf *out) {
+    enum { WIDTH = 100 };
+    while (*text) {
+        size_t n = strlen(text), room = WIDTH - strlen(indent);
+        if (n > room) {
+            n = room;
+            while (n > 1 && text[n] != ' ') n--;
+        }
+        text_addf(out, "%s// ", indent);
+        text_add_n(out, text, n);
+        text_add(out, "\n");
+        text += n + (text[n] == ' ');
+    }
+}
+
 static void print_group(const protocol *p, const char *group, const char *indent, textbuf *out) {
     int first = 1;
     for (size_t i = 0; i < n_protocol_keys; i++) {
         const protocol_key *k = &protocol_keys[i];
+        textbuf about = { 0 };
         if (strcmp(k->group, group) != 0) continue;
-        text_addf(out, "%s%s// %s; ", first ? "" : ",\n", indent, k->help);
-        key_expected(k, out);
-        text_addf(out, "\n%s\"%s\": ", indent, k->name);
+        text_addf(&about, "%s; ", k->help);
+        key_expected(k, &about);
+        if (!first) text_add(out, ",\n");
+        if (text_check(&about, "the protocol", NULL) == ST_OK) comment(about.s, indent, out);
+        else out->failed = 1;
+        text_free(&about);
+        text_addf(out, "%s\"%s\": ", indent, k->name);
         json_value(p, k, out);
         first = 0;
     }

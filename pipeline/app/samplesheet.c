@@ -309,7 +309,8 @@ status sheet_read(const char *path, sheet *out, error *e) {
     char *bytes = NULL;
     size_t n = 0;
     status st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e);
-    if (st == ST_OK) st = sheet_parse(bytes, n, path, out, e);
+    if (st != ST_OK) return fail_within(e, st, path);
+    st = sheet_parse(bytes, n, path, out, e);
     free(bytes);
     return st;
 }
