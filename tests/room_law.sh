@@ -43,6 +43,10 @@ for library in "$build"/libsward_*.a; do
 $found"
 done
 
+found=$(for library in "$build"/libsward_*.a; do nm "$library" 2>/dev/null; done | grep -E '^[0-9a-f]+ [TDBR] ' | awk '{ print $3 }' \
+    | grep -v '^__' | sort | uniq -d)
+[ -z "$found" ] || bad "a name is defined in two rooms:
+$found"
 found=$(grep -rnE '#include "[^"]*\.\./' "$source/io" "$source/metrics" "$source/pipeline" --include='*.[ch]' || true)
 [ -z "$found" ] || bad "an include climbs out of its room:
 $found"

@@ -59,8 +59,8 @@ static status add_input(workspace *w, const variant *a, const variant *b, double
     status st = spectrum(w, a, w->one, e);
     if (st == ST_OK) st = spectrum(w, b, w->two, e);
     double wa = 0.0, wb = 0.0;
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->one, &wa, e);
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->two, &wb, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->one, &wa, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->two, &wb, e);
     if (st != ST_OK) return st;
     for (size_t i = 0; i < w->g->n; i++)
         reach_of(w->plain[i], w->one[i], w->two[i], k, &w->up2[i], &w->down2[i]);
@@ -144,10 +144,10 @@ static status rules(workspace *w, double *u_mixing, error *e) {
     if (st == ST_OK) st = polished_spectrum(w->o, 0, w->g, w->cap, e);
     for (size_t i = 0; i < w->g->n && st == ST_OK; i++) /* no texture reflects more than these */
         w->cap[i] = fmax(fmax(w->cap[i], w->normal[i]), fmax(w->plain[i], w->b2d[i]));
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->plain, &w->weighted, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->plain, &w->weighted, e);
     double b2d = 0.0, mg2d = 0.0;
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->b2d, &b2d, e);
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->mg2d, &mg2d, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->b2d, &b2d, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->mg2d, &mg2d, e);
     if (st == ST_OK) *u_mixing = fabs(mg2d - b2d);
     return st;
 }
@@ -161,8 +161,8 @@ static status spacing_part(workspace *w, double *u, error *e) {
         model_at(w, fmax(p - u_spacing, 0.5 * p), i, &ignored, &w->one[i]);
         model_at(w, p + u_spacing, i, &ignored, &w->two[i]);
     }
-    status st = weighted_mean(w->o, w->g, w->one, &low, e);
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->two, &high, e);
+    status st = photon_mean(w->o, w->g, w->one, &low, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->two, &high, e);
     *u = 0.5 * fabs(high - low);
     return st;
 }
@@ -172,9 +172,9 @@ static status model(workspace *w, prediction *out, error *e) {
         model_at(w, w->in->spacing_nm.value, i, &w->u[i], &w->bias[i]);
         w->truth[i] = fmax(0.0, fmin(w->cap[i], w->b2d[i] - w->bias[i]));
     }
-    status st = weighted_mean(w->o, w->g, w->u, &out->u_model, e);
+    status st = photon_mean(w->o, w->g, w->u, &out->u_model, e);
     out->u_model *= TOGETHER;
-    return st == ST_OK ? weighted_mean(w->o, w->g, w->bias, &out->model_bias, e) : st;
+    return st == ST_OK ? photon_mean(w->o, w->g, w->bias, &out->model_bias, e) : st;
 }
 
 static double residual(double u, double bias) { return sqrt(fmax(sq(u) - sq(bias), sq(RESIDUAL * u))); }
@@ -193,8 +193,8 @@ static range join(double plain, double truth, double res, double up2, double dow
 
 static status weighted_range(workspace *w, prediction *out, error *e) {
     double truth = 0.0, u_spacing = 0.0, cap = 0.0;
-    status st = weighted_mean(w->o, w->g, w->truth, &truth, e);
-    if (st == ST_OK) st = weighted_mean(w->o, w->g, w->cap, &cap, e);
+    status st = photon_mean(w->o, w->g, w->truth, &truth, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->cap, &cap, e);
     if (st == ST_OK) st = spacing_part(w, &u_spacing, e);
     if (st != ST_OK) return st;
     double res = hypot(residual(fmax(out->u_model, out->u_mixing), out->model_bias), u_spacing);

@@ -35,7 +35,7 @@ static status grid_make(double lo, double hi, double step, double tolerance, gri
     return ST_OK;
 }
 
-status weighted_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e) {
+status photon_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e) {
     return sun_weighted(o->sun, g->wavelength_nm, y, g->n, o->band_lo_nm, o->band_hi_nm, mean, e);
 }
 
@@ -86,11 +86,11 @@ static status references(const optics_setup *o, const grid *g, double *work, pre
     layer film = { o->nitride, NITRIDE_NM };
     stack s = bare(o);
     status st = polished_spectrum(o, 0, g, work, e);
-    if (st == ST_OK) st = weighted_mean(o, g, work, &out->polished, e);
+    if (st == ST_OK) st = photon_mean(o, g, work, &out->polished, e);
     s.coatings = &film;
     s.n_coatings = 1;
     if (st == ST_OK) st = solve(&s, o, g, work, NULL, e);
-    return st == ST_OK ? weighted_mean(o, g, work, &out->coated, e) : st;
+    return st == ST_OK ? photon_mean(o, g, work, &out->coated, e) : st;
 }
 
 /* ---- validity ---- */
@@ -221,7 +221,7 @@ static status central(const surface_input *in, const optics_setup *o, const vari
                       error *e) {
     double current = 0.0;
     status st = variant_spectrum(in, o, v, fine, p->R, &p->slabs, e);
-    if (st == ST_OK) st = weighted_mean(o, fine, p->R, &p->weighted, e);
+    if (st == ST_OK) st = photon_mean(o, fine, p->R, &p->weighted, e);
     if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &current, e);
     if (st == ST_OK) p->current_loss_mA_cm2 = p->weighted * current;
     return st;

@@ -22,7 +22,7 @@ status variant_spectrum(const surface_input *in, const optics_setup *o, const va
                         size_t *slabs, error *e);
 /* R of the polished substrate in an ambient; in_air: without the sample's ambient or laminate. */
 status polished_spectrum(const optics_setup *o, int in_air, const grid *g, double *R, error *e);
-status weighted_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e);
+status photon_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e);
 
 /* Index of the ambient the texture lies in, and the angle there (a diffuse sky counts as 45 degrees). */
 double ambient_index(const optics_setup *o);

@@ -72,9 +72,9 @@ void canvas_fill(canvas *c, long x0, long y0, long x1, long y1, ink i) {
 }
 
 static void draw_glyph(canvas *c, long x, long y, int scale, char letter, ink i) {
-    const char *found = strchr(font_characters, tolower((unsigned char)letter));
-    if (!found || !*found) found = strchr(font_characters, '?');
-    const uint8_t *rows = font_rows[found - font_characters];
+    const char *found = strchr(overlay_characters, tolower((unsigned char)letter));
+    if (!found || !*found) found = strchr(overlay_characters, '?');
+    const uint8_t *rows = overlay_glyphs[found - overlay_characters];
     for (long r = 0; r < FONT_HEIGHT; r++)
         for (long k = 0; k < FONT_WIDTH; k++)
             if (rows[r] >> (FONT_WIDTH - 1 - k) & 1)

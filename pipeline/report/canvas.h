@@ -30,7 +30,7 @@ enum { FONT_WIDTH = 5, FONT_ADVANCE = 6, FONT_ASCENT = 7, FONT_HEIGHT = 9 };
 void canvas_text(canvas *c, long x, long y, int scale, const char *text, ink i);
 long canvas_text_width(const char *text, int scale);
 
-extern const char font_characters[];
-extern const uint8_t font_rows[][9];
+extern const char overlay_characters[];
+extern const uint8_t overlay_glyphs[][9];
 
 #endif

@@ -3,8 +3,8 @@
  * descenders. Capitals are drawn as lower case. */
 #include "report/canvas.h"
 
-const char font_characters[] = " %()+,-./0123456789:<=>?_abcdefghijklmnopqrstuvwxyz";
-const uint8_t font_rows[][9] = {
+const char overlay_characters[] = " %()+,-./0123456789:<=>?_abcdefghijklmnopqrstuvwxyz";
+const uint8_t overlay_glyphs[][9] = {
     { 0x00, 0x00, 0x00, 0x00, 0x00, 0x00, 0x00, 0x00, 0x00 }, /* blank */
     { 0x19, 0x19, 0x02, 0x04, 0x08, 0x13, 0x13, 0x00, 0x00 }, /* % */
     { 0x04, 0x08, 0x08, 0x08, 0x08, 0x08, 0x04, 0x00, 0x00 }, /* ( */
@@ -57,4 +57,4 @@ const uint8_t font_rows[][9] = {
     { 0x00, 0x00, 0x11, 0x11, 0x11, 0x11, 0x0f, 0x01, 0x0e }, /* y */
     { 0x00, 0x00, 0x1f, 0x02, 0x04, 0x08, 0x1f, 0x00, 0x00 }, /* z */
 };
-_Static_assert(sizeof font_rows / sizeof font_rows[0] == sizeof font_characters - 1, "one glyph per character");
+_Static_assert(sizeof overlay_glyphs / sizeof overlay_glyphs[0] == sizeof overlay_characters - 1, "one glyph per character");
