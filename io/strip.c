@@ -19,13 +19,14 @@
 
 #include "base/mem.h"
 
-enum { MIN_ROWS = 8, LEVELS = 65536 };
+enum { MIN_ROWS = 8, LEVELS = 65536, PARTS = 8 };
 
 typedef struct {
     int mode;            /* commonest level */
     float share, second; /* of the row's pixels: at the commonest level; at the next one */
     float equal;         /* of neighbours: the same level */
-    int small, large;    /* steps between neighbours: shading or noise; writing */
+    int large;           /* steps between neighbours as writing makes them */
+    uint16_t small_in[PARTS], large_in[PARTS]; /* shading or noise, and writing, in eight parts of the row */
     int exact;           /* one level, no exception */
 } row_facts;
 
@@ -78,11 +79,17 @@ static row_facts describe_row(const float *px, const view *v, const scratch *w) 
         if (level < low) low = level;
         if (level > high) high = level;
     }
-    for (size_t x = 1; x < nx; x++) {
-        int step = abs(w->level[x] - w->level[x - 1]);
-        equal += step <= v->window;
-        f.small += step > v->window && step < v->small;
-        f.large += step >= v->large;
+    for (size_t part = 0, x = 1; part < PARTS; part++) {
+        int small = 0, large = 0;
+        for (size_t end = nx * (part + 1) / PARTS; x < end; x++) {
+            int step = abs(w->level[x] - w->level[x - 1]);
+            equal += step <= v->window;
+            small += step > v->window && step < v->small;
+            large += step >= v->large;
+        }
+        f.small_in[part] = (uint16_t)small;
+        f.large_in[part] = (uint16_t)large;
+        f.large += large;
     }
     uint32_t n, next;
     f.mode = commonest(w, nx, v->window, -1, &n);
@@ -100,37 +107,48 @@ static int one_level(const row_facts *f) { return f->share >= 0.95f; }
 /* Sums over the rows t .. end - 1 of a block that may be the strip. */
 typedef struct {
     double share, equal, other, second; /* means of the shares; of pixels off the row's level, sum and next level */
-    long small, large;
-    size_t written, n, odd; /* rows with writing; rows; rows with steps but none of writing */
-    int blocked;            /* a row that no strip has */
+    long small[PARTS], large[PARTS];
+    size_t written; /* rows with writing */
+    int blocked;    /* a row that no strip has */
 } block_facts;
 
 static block_facts describe_block(const view *v, size_t t, size_t end) {
-    block_facts b = { .n = end - t };
+    block_facts b = { 0 };
     for (size_t y = t; y < end; y++) {
         const row_facts *f = &v->rows[y - v->first];
+        if (f->equal < 0.25f || f->share < 0.3f) {
+            b.blocked = 1;
+            return b;
+        }
         b.share += (double)f->share;
         b.equal += (double)f->equal;
-        if (f->equal < 0.25f || f->share < 0.3f) b.blocked = 1;
         if (one_level(f) && !f->large) continue;
         b.other += 1.0 - (double)f->share;
         b.second += (double)f->second;
-        b.small += f->small;
-        b.large += f->large;
         b.written += f->large >= 2;
-        b.odd += f->small >= 8 && f->large == 0;
+        for (int k = 0; k < PARTS; k++) {
+            b.small[k] += f->small_in[k];
+            b.large[k] += f->large_in[k];
+        }
     }
-    b.share /= (double)b.n;
-    b.equal /= (double)b.n;
+    b.share /= (double)(end - t);
+    b.equal /= (double)(end - t);
     return b;
 }
 
+/* Letters step hard, shading steps softly. Judged in parts of the width, since a logo may be shaded. */
+static int is_crisp(const view *v, const block_facts *b) {
+    int active = 0, crisp = 0;
+    for (int k = 0; k < PARTS; k++) {
+        active += b->small[k] + b->large[k] >= 20;
+        crisp += b->large[k] >= 10 && (double)b->small[k] <= (v->window ? 1.5 : 0.8) * (double)b->large[k];
+    }
+    return crisp && 2 * crisp >= active;
+}
+
 static int strip_like(const view *v, const block_facts *b) {
-    if (b->blocked || b->share < 0.65 || b->equal < 0.7) return 0;
-    if (b->written < 3 || b->large < 20) return 0;                  /* no writing */
-    if (b->second < 0.12 * b->other) return 0;                      /* writing has a level of its own */
-    return !v->window ? (double)b->small <= 0.8 * (double)b->large  /* shading steps softly, letters do not */
-                      : (double)b->small <= 1.5 * (double)b->large;
+    return !b->blocked && b->share >= 0.65 && b->equal >= 0.7 && b->written >= 3 &&
+           b->second >= 0.12 * b->other /* writing has a level of its own */ && is_crisp(v, b);
 }
 
 /* Share of level `mode` in the rows above t, and how many of them are of one level without exception. */
@@ -146,30 +164,62 @@ static void look_above(const view *v, size_t t, int mode, double *share, double 
     *exact /= (double)n;
 }
 
-/* Row t begins something: it is of one level and the row above is not, or is of another. */
-static int begins(const view *v, size_t t) {
+typedef enum { BEGINS_NOT, BEGINS_UNSURE, BEGINS } beginning;
+
+/* Row t begins something: it is of one level and the row above is not, or is of another. Unsure when the rows above
+ * hold much of that level: black pores over a black strip, but also a flat ground between hillocks. */
+static beginning begins(const view *v, size_t t) {
     const row_facts *f = &v->rows[t - v->first], *above = f - 1;
-    if (!one_level(f)) return 0;
-    if (one_level(above) && abs(above->mode - f->mode) <= 2 * v->window) {
-        /* Nearly black specimen over a black strip: only the strip is black without exception. */
-        return !v->window && f->exact && !above->exact;
-    }
+    if (!one_level(f)) return BEGINS_NOT;
+    /* Nearly black specimen over a black strip: only the strip is black without exception. */
+    if (one_level(above) && abs(above->mode - f->mode) <= 2 * v->window)
+        return !v->window && f->exact && !above->exact ? BEGINS_UNSURE : BEGINS_NOT;
     double share, exact;
     look_above(v, t, f->mode, &share, &exact);
-    return share < 0.7 || (!v->window && f->exact && !above->exact && exact < 0.3);
+    if (share < 0.3) return BEGINS;
+    return share < 0.7 || (!v->window && f->exact && !above->exact && exact < 0.3) ? BEGINS_UNSURE : BEGINS_NOT;
+}
+
+/* The level of most rows from t on: the paper of the strip. */
+static int paper(const view *v, size_t t) {
+    int level = -1;
+    size_t most = 0;
+    for (size_t y = t; y < v->ny; y++) {
+        size_t n = 0;
+        int mode = v->rows[y - v->first].mode;
+        for (size_t k = t; k < v->ny; k++) n += abs(v->rows[k - v->first].mode - mode) <= v->window;
+        if (n > most) most = n, level = mode;
+    }
+    return level;
+}
+
+/* Are the rows from an unsure beginning to a sure one specimen? They are when they are shaded, or when they are no mere
+ * line and have another level than the paper below; a line within a strip has the same paper around it. */
+static int is_specimen(const view *v, size_t unsure, size_t sure) {
+    block_facts b = describe_block(v, unsure, sure);
+    long small = 0, large = 0;
+    for (int k = 0; k < PARTS; k++) small += b.small[k], large += b.large[k];
+    if (small >= 20 && small > large) return 1;
+    return sure - unsure > 4 && abs(paper(v, sure) - v->rows[unsure - v->first].mode) > v->window;
 }
 
 static size_t search(const view *v) {
-    size_t highest = v->ny - v->ny / 3 > v->first ? v->ny - v->ny / 3 : v->first + 1;
+    size_t highest = v->ny - v->ny / 3 > v->first ? v->ny - v->ny / 3 : v->first + 1, unsure = 0;
     for (size_t t = highest; t + MIN_ROWS <= v->ny; t++) {
-        if (!begins(v, t)) continue;
+        beginning kind = begins(v, t);
+        if (kind == BEGINS_NOT || (unsure && kind != BEGINS)) continue;
         size_t rows = v->ny - t, exempt = rows / 8 < (size_t)v->exempt ? rows / 8 : (size_t)v->exempt;
-        for (size_t k = 0; k <= exempt; k++) {
+        int like = 0;
+        for (size_t k = 0; k <= exempt && !like; k++) {
             block_facts b = describe_block(v, t, v->ny - k);
-            if (strip_like(v, &b)) return rows;
+            like = strip_like(v, &b);
         }
+        if (!like) continue;
+        if (kind == BEGINS_UNSURE) unsure = t;
+        else if (!unsure) return rows;
+        else return is_specimen(v, unsure, t) ? rows : v->ny - unsure;
     }
-    return 0;
+    return unsure ? v->ny - unsure : 0;
 }
 
 size_t strip_find(const float *px, size_t nx, size_t ny) {
