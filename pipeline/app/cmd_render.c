@@ -187,7 +187,7 @@ static status add_truth(const recipe_image *image, const rendering *r, int centr
     json_string(t, image->file);
     add_number(t, "px_nm", px);
     text_addf(t, ",\n      \"width_px\": %zu,\n      \"height_px\": %zu,\n      \"strip_px\": %zu", r->nx,
-              r->ny + r->strip_rows, r->strip_rows);
+              r->ny, r->strip_rows);
     text_addf(t, ",\n      \"relief\": \"%s\"", image->options.relief == RELIEF_PORE ? "pore" : "hillock");
     text_addf(t, ",\n      \"n_features\": %zu,\n      \"n_hidden\": %zu", r->n, r->n_hidden);
     add_number(t, "density_per_um2", r->density_per_px2 / (px * px) * 1e6);
@@ -219,7 +219,7 @@ static status render_all(const arguments *a, const recipe *list, error *e) {
     textbuf truth = { 0 };
     text_add(&truth, "{\n  \"about\": \"What is true of rendered micrographs. Lengths in nm or in px as named; "
                      "spacing_nm is the hexagonal spacing of the true density; size_ are equivalent circular diameters "
-                     "of the ideal basins, border-corrected; centres: pixel centres at whole numbers, y down.\",\n"
+                     "of the ideal basins, border-corrected; height_px: rows without the strip; centres: pixel centres at whole numbers, y down.\",\n"
                      "  \"images\": [");
     status st = folder_make(a->out, e);
     for (size_t k = 0; k < list->n && st == ST_OK; k++) {
