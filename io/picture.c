@@ -49,6 +49,13 @@ status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *
     return ST_OK;
 }
 
+void picture_set_time(picture *p, int year, int month, int day, int hour, int minute, int second) {
+    if (year < 1980 || year > 9999 || month < 1 || month > 12 || day < 1 || day > 31 || hour < 0 || hour > 23 ||
+        minute < 0 || minute > 59 || second < 0 || second > 60)
+        return;
+    snprintf(p->acquired_at, sizeof p->acquired_at, "%04d-%02d-%02dT%02d:%02d:%02d", year, month, day, hour, minute, second);
+}
+
 void level_table(int bits, float table[256]) {
     unsigned top = (1u << bits) - 1u;
     for (unsigned v = 0; v < 256; v++) table[v] = v < top ? (float)((double)v / top) : 1.0f;

@@ -53,8 +53,10 @@ typedef struct {
 
 void picture_free(picture *p);
 
-/* Refuses sizes outside the limits before anything is allocated. `most_bytes_per_pixel` of the data left in the file
- * are judged by the decoder itself. */
+/* acquired_at as ISO 8601 without a zone (instruments write local time); an impossible date is left out. */
+void picture_set_time(picture *p, int year, int month, int day, int hour, int minute, int second);
+
+/* Refuses sizes outside the limits before anything is allocated. */
 status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *e);
 
 /* Luminance of linear-light or coded R, G, B alike; equal channels give that channel exactly.

@@ -349,7 +349,7 @@ status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *o
         goto done;
     }
     page = choose_page(tif[0], &pages);
-    tiff_tags_read(tif[0], &p);
+    tiff_tags_read(tif[0], page, &p);
     s[0].what[0] = '\0';
     if (!TIFFSetDirectory(tif[0], page)) {
         st = fail(e, ST_BAD_INPUT, "the TIFF is damaged: page %u cannot be read", (unsigned)page + 1);
