@@ -35,6 +35,13 @@ static double normal_below(double z) { return 0.5 * erfc(-z / sqrt(2.0)); }
 
 /* ---- sentences ---- */
 
+/* An uncertainty: two digits, but never fewer than stand before the point. */
+static const char *rough(double u, char *shown) {
+    int digits = 2;
+    for (double top = 99.5; u >= top && digits < 12; top *= 10.0) digits++;
+    return number_text(u, digits, shown);
+}
+
 static void add_number(textbuf *t, double v, int digits, const char *unit) {
     char shown[NUMBER_TEXT];
     text_add(t, number_text(v, digits, shown));
@@ -109,7 +116,7 @@ static void explain(const target *g, const reading *r, const reach *w, verdict v
     text_add(t, g->quantity);
     text_add(t, " ");
     text_add(t, number_text(r->value, r->digits, a));
-    if (isfinite(w->u)) text_addf(t, " +- %s%s%s", number_text(w->u, 2, b), unit[0] ? " " : "", unit);
+    if (isfinite(w->u)) text_addf(t, " +- %s%s%s", rough(w->u, b), unit[0] ? " " : "", unit);
     else {
         text_addf(t, "%s%s", unit[0] ? " " : "", unit);
         text_addf(t, " (95 %% interval %s..%s)", number_text(w->lo, r->digits, a), number_text(w->hi, r->digits, b));

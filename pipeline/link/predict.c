@@ -122,9 +122,16 @@ static status share_beyond(double spacing_nm, const optics_setup *o, double *sha
 
 /* ---- words ---- */
 
+/* Two digits, but never fewer than stand before the point. */
+static const char *rough(double v, char *shown) {
+    int digits = 2;
+    for (double top = 99.5; v >= top && digits < 12; top *= 10.0) digits++;
+    return number_text(v, digits, shown);
+}
+
 static void add_percent(textbuf *t, double share) {
     char shown[NUMBER_TEXT];
-    text_addf(t, "%s %%", number_text(100.0 * share, 2, shown));
+    text_addf(t, "%s %%", rough(100.0 * share, shown));
 }
 
 static void say_interval(textbuf *t, const surface_input *in, const optics_setup *o) {
@@ -132,7 +139,7 @@ static void say_interval(textbuf *t, const surface_input *in, const optics_setup
     if (in->measured) text_add(t, "The interval holds the mixing rule and the model's own error, not that of the profile.");
     else {
         text_add(t, "The interval holds the model's own error, the mixing rule");
-        if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", number_text(in->height_nm.u, 2, shown));
+        if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", rough(in->height_nm.u, shown));
         if (in->link.exponent_u > 0.0) text_add(t, ", the shape");
         if (in->link.height_spread > 0.0) text_add(t, ", level floor or level tips");
         text_add(t, ".");
@@ -147,7 +154,7 @@ static void say(prediction *out, const surface_input *in, const optics_setup *o,
     textbuf t = { 0 };
     char shown[NUMBER_TEXT];
     if (out->refused) {
-        text_addf(&t, "No reflectance: with a spacing of %s nm ", number_text(in->spacing_nm.value, 4, shown));
+        text_addf(&t, "No reflectance: with a spacing of %s nm ", rough(in->spacing_nm.value, shown));
         add_percent(&t, beyond);
         text_add(&t, " of the photons have a wavelength below spacing/2.5, where the graded-index model says nothing; such "
                      "a texture reflects by geometric optics.");

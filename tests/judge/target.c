@@ -42,6 +42,7 @@ static void two_limits(void) {
     CHECK_NEAR(j.conformance_probability, 1.0, 0.0);
     r = plain(350.0, 200.0); /* so uncertain that both limits are straddled */
     j = ask(&t, &r);
+    CHECK(says(&j, "350 +- 200 nm"));
     CHECK(j.verdict == VERDICT_UNDECIDED && j.conformance_probability > 0.2 && j.conformance_probability < 0.3);
 }
 
