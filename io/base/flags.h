@@ -38,8 +38,7 @@
     X(HEIGHT_ASSUMED,  height_assumed,  "height from the protocol or the default aspect, not measured")                  \
     X(ONE_MICROGRAPH,  one_micrograph,  "the sample rests on a single micrograph")                                       \
     X(BEYOND_MODEL,    beyond_model,    "texture too coarse for the graded-index model: no reflectance is given")        \
-    X(DIFFRACTS,       diffracts,       "part of the light is diffracted into air: the model says nothing there")        \
-    X(NO_CALIBRATION,  no_calibration,  "heights are not calibrated on measured reflectance")
+    X(DIFFRACTS,       diffracts,       "part of the light is diffracted into air: the model says nothing there")
 /* clang-format on */
 
 enum {
