@@ -20,12 +20,16 @@
 #include "metrics/maxima.h"
 #include "metrics/spacing.h"
 
-static const double marker_scale = 0.17; /* sigma of the LoG / d */
-static const double marker_reach = 0.15; /* half width of the neighbourhood / d */
-static const double rough_reach = 0.25;  /* the same while the scale is still searched */
-static const double min_dynamic = 0.10;  /* / median response */
-static const double centre_scale = 0.10; /* sigma of the Gaussian for the centres / d */
-static const double min_sigma_px = 0.8;  /* a LoG below this is not sampled */
+static const double marker_scale = 0.17;   /* sigma of the LoG / d */
+static const double marker_reach = 0.15;   /* half width of the neighbourhood / d */
+static const double rough_reach = 0.25;    /* the same while the scale is still searched */
+static const double min_dynamic = 0.10;    /* / median response */
+static const double gap_width = 1.4;       /* half width of the gap that is looked for, a factor */
+static const double gap_stiffness = 0.002; /* what a factor 2 away from min_dynamic must save, / maxima */
+static const double centre_scale = 0.10;   /* sigma of the Gaussian for the centres / d */
+static const double max_shift = 0.02;      /* of a centre by noise, / d */
+static const double max_walk = 0.15;       /* from the marker to the centre, / d */
+static const double min_sigma_px = 0.8;    /* a LoG below this is not sampled */
 static const double noise_sds = 4.0;
 enum { MIN_FEATURES = 5, SCALE_ROUNDS = 2 };
 static const double scale_settled = 0.02;
@@ -108,28 +112,48 @@ static double median_height(const maximum *m, size_t n, float *work) {
     return n ? 0.5 * ((double)work[(n - 1) / 2] + (double)work[n / 2]) : 0.0;
 }
 
+static size_t count_between(const maximum *m, size_t n, double low, double high) {
+    size_t k = 0;
+    for (size_t i = 0; i < n; i++) k += (double)m[i].dynamic >= low && (double)m[i].dynamic < high;
+    return k;
+}
+
+/* The criterion, / median response: where the dynamics leave the widest gap between bumps on a feature and
+ * features, looked for around 0.10. */
+static double dynamic_gap(const maximum *m, size_t n, double median) {
+    double best = min_dynamic, fewest = HUGE_VAL;
+    for (int k = -4; k <= 8; k++) {
+        double t = min_dynamic * pow(2.0, k / 6.0);
+        double c = (double)count_between(m, n, t * median / gap_width, t * median * gap_width);
+        c += gap_stiffness * (double)n * fabs((double)k / 6.0);
+        if (c < fewest) {
+            fewest = c;
+            best = t;
+        }
+    }
+    return best;
+}
+
 /* Keeps the maxima above the noise that rule their neighbourhood and have the dynamic; in place. */
 static status maxima_select(const float *map, size_t nx, size_t ny, double d, double floor_height, maximum *m,
                             size_t *n, double *merged_share, error *e) {
-    size_t k = 0, reach = reach_px(d, marker_reach), at_half = 0, at_twice = 0;
+    size_t k = 0, reach = reach_px(d, marker_reach);
     for (size_t i = 0; i < *n; i++)
         if ((double)m[i].height > floor_height && maximum_rules(map, nx, ny, m[i].pixel, reach))
             m[k++] = m[i];
     float *work = mem_array(k, sizeof *work);
     if (!work) return NO_MEMORY(e, "the detection of features");
-    double least = min_dynamic * median_height(m, k, work);
+    double median = median_height(m, k, work), least = median * dynamic_gap(m, k, median);
     free(work);
     *n = k;
+    *merged_share = (double)count_between(m, k, 0.5 * least, 2.0 * least);
     k = 0;
-    for (size_t i = 0; i < *n; i++) {
-        double dynamic = (double)m[i].dynamic;
-        at_half += dynamic >= 0.5 * least;
-        at_twice += dynamic >= 2.0 * least;
-        if (dynamic >= least) m[k++] = m[i];
-    }
+    for (size_t i = 0; i < *n; i++)
+        if ((double)m[i].dynamic >= least) m[k++] = m[i];
     *n = k;
-    *merged_share = k ? (double)(at_half - at_twice) / (double)k : 0.0;
-    return k < MIN_FEATURES ? no_features(k, e) : ST_OK;
+    if (k < MIN_FEATURES) return no_features(k, e);
+    *merged_share /= (double)k;
+    return ST_OK;
 }
 
 /* Vertex of the quadratic through the 3 x 3 values around (x, y), at most half a pixel away. */
@@ -176,13 +200,23 @@ static int walk_up(const float *g, size_t nx, size_t ny, double reach, size_t *x
     }
 }
 
-/* Refines the centres on g, the smoothed picture; a centre whose walk leaves its own top stays where the
- * detector saw it. owner[pixel]: work, one reached maximum belongs to one feature only. */
+/* Sigma of the Gaussian for the centres: wide enough that the noise moves a top of the mean curvature by less
+ * than 0.02 d. Gradient noise of smoothed white noise of sd s: s / (sigma^2 sqrt(8 pi)); curvature c along an
+ * axis of the response R = 2 sigma_m^2 c; displacement = gradient noise / c. */
+static double centre_sigma(const maximum *m, size_t n, double d, double noise) {
+    double mean = 0.0, marker = scale_sigma(d);
+    for (size_t i = 0; i < n; i++) mean += (double)m[i].height / (double)n;
+    double c = mean / (2.0 * marker * marker), least = sqrt(noise / (sqrt(8.0 * PI) * c * max_shift * d));
+    return fmax(centre_scale * d, fmin(least, marker));
+}
+
+/* Refines the centres on g, the smoothed picture; a centre whose walk leaves its own top (a rim brighter than
+ * the middle, a shoulder of a neighbour) stays where the detector saw it. */
 static void centres_refine(const float *g, const float *map, size_t nx, size_t ny, double d, detection *det) {
     for (size_t i = 0; i < det->n; i++) {
         size_t x = det->marker[i] % nx, y = det->marker[i] / nx;
         feature *p = &det->features[i];
-        if (walk_up(g, nx, ny, 0.25 * d, &x, &y))
+        if (walk_up(g, nx, ny, max_walk * d, &x, &y))
             vertex(g, nx, ny, x, y, &p->x, &p->y);
         else
             vertex(map, nx, ny, det->marker[i] % nx, det->marker[i] / nx, &p->x, &p->y);
@@ -220,7 +254,7 @@ status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, doub
     if (st == ST_OK) st = maxima_find(map, nx, ny, 1, &m, &n, e);
     if (st == ST_OK) st = maxima_select(map, nx, ny, det.scale_px, floor_height, m, &n, &det.merged_share, e);
     if (st == ST_OK) st = features_make(m, n, &det, e);
-    if (st == ST_OK) st = filter_gauss(f, nx, ny, centre_scale * det.scale_px, g, e);
+    if (st == ST_OK) st = filter_gauss(f, nx, ny, centre_sigma(m, n, det.scale_px, noise), g, e);
     if (st == ST_OK) {
         if (sign < 0)
             for (size_t i = 0; i < nx * ny; i++) g[i] = -g[i];
@@ -235,39 +269,5 @@ status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, doub
     free(m);
     free(map);
     free(g);
-    return st;
-}
-
-/* Skewness over the plane, away from the frame by one sigma times 2. */
-static double skewness(const float *v, size_t nx, size_t ny, size_t margin) {
-    double s1 = 0.0, s2 = 0.0, s3 = 0.0;
-    size_t n = 0;
-    if (nx <= 2 * margin || ny <= 2 * margin) margin = 0;
-    for (size_t y = margin; y < ny - margin; y++)
-        for (size_t x = margin; x < nx - margin; x++) {
-            double k = (double)v[y * nx + x]; /* the mean of a curvature map is 0 but for the frame */
-            s1 += k;
-            s2 += k * k;
-            s3 += k * k * k;
-            n++;
-        }
-    double mean = s1 / (double)n, var = s2 / (double)n - mean * mean;
-    double third = s3 / (double)n - 3.0 * mean * s2 / (double)n + 2.0 * mean * mean * mean;
-    return var > 0.0 ? third / (var * sqrt(var)) : 0.0;
-}
-
-status relief_skewness(const float *f, size_t nx, size_t ny, double d0_px, double *at_017, double *at_025,
-                       error *e) {
-    float *map = mem_array(nx * ny, sizeof *map);
-    if (!map) return NO_MEMORY(e, "the relief");
-    double sigma = scale_sigma(d0_px), wide = fmax(min_sigma_px, 0.25 * d0_px);
-    status st = filter_curvature(f, nx, ny, sigma, 1, map, e);
-    double narrow_skew = skewness(map, nx, ny, (size_t)(2.0 * sigma));
-    if (st == ST_OK) st = filter_curvature(f, nx, ny, wide, 1, map, e);
-    if (st == ST_OK) {
-        *at_017 = narrow_skew;
-        *at_025 = skewness(map, nx, ny, (size_t)(2.0 * wide));
-    }
-    free(map);
     return st;
 }

@@ -30,8 +30,4 @@ void detection_free(detection *d);
 double guarded_density(const feature *features, size_t n, size_t nx, size_t ny, double guard_px,
                        size_t *n_inside);
 
-/* Skewness of the curvature map at 0.17 and 0.25 of d0, hillock positive. err ST_NO_MEMORY */
-status relief_skewness(const float *f, size_t nx, size_t ny, double d0_px, double *at_017, double *at_025,
-                       error *e);
-
 #endif

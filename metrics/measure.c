@@ -18,6 +18,7 @@
 #include "metrics/filter.h"
 #include "metrics/fitness.h"
 #include "metrics/neighbours.h"
+#include "metrics/relief.h"
 #include "metrics/spacing.h"
 #include "metrics/statistics.h"
 #include "metrics/watershed.h"
@@ -115,40 +116,43 @@ static status plain_stage(job *j, error *e) {
     return ST_OK;
 }
 
-/* Hillock or pore, at the scale d; unsure when the two scales do not agree or the skewness drowns in its own
- * noise: about one independent value per d^2, so its standard error is near sqrt(6 / N) for a normal map
- * (Fisher 1930). */
-static status relief_stage(job *j, double d, error *e) {
-    double narrow = 0.0, wide = 0.0;
-    status st = relief_skewness(j->f, j->p->nx, j->p->ny, d, &narrow, &wide, e);
+static int sign_of(const job *j) { return j->t.relief == RELIEF_PORE ? -1 : 1; }
+
+/* Hillock or pore by the evidence at scale d, or as given; *score gets what spoke for it. */
+static status relief_stage(job *j, double d, double *score, error *e) {
+    relief_evidence r;
+    status st = relief_look(j->f, j->p->nx, j->p->ny, d, &r, e);
     if (st != ST_OK) return st;
-    double se = sqrt(6.0 * d * d / ((double)j->p->nx * (double)j->p->ny));
-    j->t.relief_skew = narrow;
-    j->t.relief = j->o->relief;
+    *score = r.score;
+    j->t.relief_skew = r.skew;
+    j->t.relief = j->o->relief == RELIEF_AUTO ? r.relief : j->o->relief;
     j->t.flags &= ~FLAG(RELIEF_UNSURE);
-    if (j->o->relief != RELIEF_AUTO) return ST_OK;
-    j->t.relief = narrow >= 0.0 ? RELIEF_HILLOCK : RELIEF_PORE;
-    if ((narrow >= 0.0) != (wide >= 0.0) || fabs(narrow) < 2.0 * se) j->t.flags |= FLAG(RELIEF_UNSURE);
+    if (j->o->relief == RELIEF_AUTO && r.unsure) j->t.flags |= FLAG(RELIEF_UNSURE);
     return ST_OK;
 }
 
-static int sign_of(const job *j) { return j->t.relief == RELIEF_PORE ? -1 : 1; }
+static status detect_again(job *j, error *e) {
+    detection_free(&j->det);
+    return detect(j->f, j->p->nx, j->p->ny, j->first.scale_px, sign_of(j), j->noise, &j->det, e);
+}
 
-/* Relief at the first scale, features, and relief again at theirs; when it changes its mind, features once
- * more. */
+/* Relief at the first scale, features, and relief again at their scale. When that changes its mind, features
+ * of the other kind; when their scale speaks against them too, the stronger evidence wins and the answer is
+ * unsure. */
 static status feature_stage(job *j, error *e) {
-    size_t nx = j->p->nx, ny = j->p->ny;
-    double d = j->first.scale_px;
-    for (int round = 0; round < 2; round++) {
-        status st = relief_stage(j, d, e);
-        int sign = sign_of(j);
-        if (st == ST_OK) st = detect(j->f, nx, ny, j->first.scale_px, sign, j->noise, &j->det, e);
-        if (st != ST_OK) return st;
-        d = j->det.scale_px;
-        st = relief_stage(j, d, e);
-        if (st != ST_OK || sign_of(j) == sign || round == 1) return st;
-        detection_free(&j->det);
-    }
+    double at_first = 0.0, at_own = 0.0, at_other = 0.0;
+    status st = relief_stage(j, j->first.scale_px, &at_first, e);
+    relief first = j->t.relief;
+    if (st == ST_OK) st = detect_again(j, e);
+    if (st == ST_OK) st = relief_stage(j, j->det.scale_px, &at_own, e);
+    relief second = j->t.relief;
+    if (st != ST_OK || second == first) return st;
+    st = detect_again(j, e);
+    if (st == ST_OK) st = relief_stage(j, j->det.scale_px, &at_other, e);
+    if (st != ST_OK || j->t.relief == second) return st;
+    j->t.flags |= FLAG(RELIEF_UNSURE);
+    if (fabs(at_other) > fabs(at_own)) return detect_again(j, e);
+    j->t.relief = second;
     return ST_OK;
 }
 

@@ -79,7 +79,7 @@ static double point_nearest2(const grid *g, const double *x, const double *y, si
     long cx = (long)grid_index(x[i], g->x0, g->side, g->nx),
          cy = (long)grid_index(y[i], g->y0, g->side, g->ny);
     long nx = (long)g->nx, ny = (long)g->ny, last = nx > ny ? nx : ny;
-    double best = INFINITY;
+    double best = HUGE_VAL;
     for (long k = 0; k <= last; k++) {
         for (long yy = cy - k < 0 ? 0 : cy - k; yy <= cy + k && yy < ny; yy++) {
             int rim = yy == cy - k || yy == cy + k;

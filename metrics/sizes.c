@@ -159,7 +159,7 @@ void feret_diameters(double *xy, size_t n, double *hull, double *max, double *mi
     *max = *min = 0.0;
     if (n < 2) return;
     size_t m = convex_hull(xy, n, hull);
-    double far2 = 0.0, narrow = INFINITY;
+    double far2 = 0.0, narrow = HUGE_VAL;
     for (size_t i = 0; i < m; i++) {
         const double *a = hull + 2 * i, *b = hull + 2 * ((i + 1) % m);
         double edge = hypot(b[0] - a[0], b[1] - a[1]), width = 0.0;
