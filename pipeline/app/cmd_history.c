@@ -79,14 +79,13 @@ static status name_add(name_list *l, const char *name, error *e) {
 }
 
 static status collect(const history_list *l, csv_row *rows, name_list *names, error *e) {
-    status st = ST_OK;
+    status st = name_add(names, "sample", e);
+    if (st == ST_OK) st = name_add(names, "etched_at", e);
+    if (st == ST_OK) st = name_add(names, "run_at", e);
     for (size_t i = 0; i < l->n && st == ST_OK; i++) {
         const cJSON *child;
         rows[i].object = cJSON_Parse(l->rows[i].row_json);
         if (!rows[i].object) return fail(e, ST_IO, "the ledger holds a damaged row of the sample '%s'", l->rows[i].sample);
-        if (i == 0) st = name_add(names, "sample", e);
-        if (i == 0 && st == ST_OK) st = name_add(names, "etched_at", e);
-        if (i == 0 && st == ST_OK) st = name_add(names, "run_at", e);
         cJSON_ArrayForEach(child, rows[i].object) if (st == ST_OK) st = name_add(names, child->string, e);
     }
     return st;

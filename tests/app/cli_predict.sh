@@ -1,0 +1,96 @@
+#!/bin/sh
+# Reflectance from numbers: figures computed from published tables, every option, every mistake.
+. "$(dirname "$0")/cli.sh"
+
+# Polished silicon and silicon under 75 nm nitride: Fresnel on M. A. Green (2008), photons of ASTM G173, 300-1200 nm.
+run 0 predict --height 0 --json
+near weighted_reflectance 0.34984 5e-5
+near polished_reflectance 0.34984 5e-5
+near coated_reflectance 0.1003 5e-5
+near current_loss_mA_cm2 16.25 5e-3
+says "$out" '"optics_model": ' '"wavelength_nm": 300,' '"wavelength_nm": 1200,'
+checks=$((checks + 1)); [ "$(grep -c wavelength_nm "$out")" -eq 901 ] || miss "the spectrum is on the 1 nm grid"
+run 0 predict --height 0 --coating nitride:75 --json
+near weighted_reflectance 0.1003 5e-5
+# A cone of 300 nm, graded index, two-dimensional Bruggeman: 0.018308, computed independently from the same tables.
+run 0 predict --spacing 250 --height 300 --json
+near weighted_reflectance 0.0183 5e-5
+near current_loss_mA_cm2 0.8505 5e-4
+near spacing_nm 250 0
+near aspect 1.2 1e-12
+says "$out" '"budget": {"height": 0, "shape": 0,' '"note": "'
+# A glass against a hand calculation: ((1.5 - 1) / (1.5 + 1))^2 = 0.04 at every wavelength.
+run 0 predict --height 0 --substrate 1.5 --json
+near weighted_reflectance 0.04 5e-6
+# Brewster's angle of n = 1.5, atan(1.5) = 56.3099 degrees: no p light comes back.
+run 0 predict --height 0 --substrate 1.5 --angle 56.309932 --polarization p --json
+near weighted_reflectance 0 1e-9
+run 0 predict --height 0 --ambient 1.5 --substrate 1.5 --json
+near weighted_reflectance 0 1e-12
+
+# A profile that is a step is a planar layer: the same as the coating of that index.
+printf 'depth_nm,solid_fraction\n0,1\n100,1\n' >"$work/solid.csv"
+run 0 predict --profile "$work/solid.csv" --json
+near weighted_reflectance 0.34984 5e-5
+says "$out" '"spacing_nm": null' '"subwavelength_share": null'
+
+# Every option is heard.
+run 0 predict --spacing 300 --height 300 --json
+cp "$out" "$work/plain.json"
+for option in "--shape paraboloid" "--shape 1.5" "--height-spread 0.2" "--coverage 0.8" "--mixing looyenga" "--coating alumina:10" \
+    "--substrate silicon-schinke-2015" "--ambient laminate" "--ambient 1.33" "--angle 40" "--angle 40 --polarization s" \
+    "--hemispherical" "--band 350:1100" "--pores" "--height-u 40" "--height 310" "--spacing 310"; do
+    # shellcheck disable=SC2086
+    run 0 predict --spacing 300 --height 300 $option --json
+    checks=$((checks + 1)); ! cmp -s "$out" "$work/plain.json" || miss "$option changes nothing"
+done
+run 0 predict --spacing 300 --height 300 --mixing bruggeman-2d --shape cone --coverage 1 --ambient air --band 300:1200 --angle 0 --polarization mean --json
+checks=$((checks + 1)); cmp -s "$out" "$work/plain.json" || miss "the stated defaults are not the defaults"
+printf '{ "link": { "height_nm": 300, "exponent_u": 0 } }' >"$work/p.json"
+run 0 predict --protocol "$work/p.json" --spacing 300 --json
+near weighted_reflectance 0.0183 5e-5
+
+run 0 predict --spacing 300 --height 300
+says "$out" "1.831 %" "34.98 %" "10.03 %" "0.8505 mA/cm2" "aspect 1"
+run 0 predict --spacing 300 --height 300 --csv
+says "$out" "wavelength_nm,reflectance,reflectance_lo,reflectance_hi"
+checks=$((checks + 1)); [ "$(wc -l <"$out")" -eq 902 ] || miss "901 rows and a header"
+run 0 predict --materials
+says "$out" silicon alumina nitride "M. A. Green"
+
+# Beyond the model there is either no figure or an interval, and always a sentence.
+run 0 predict --spacing 3000 --height 300 --json
+checks=$((checks + 1)); ! grep -q '"note": ""' "$out" || miss "a coarse texture needs its note"
+
+run 2 predict --spacing 350
+says "$err" "--height is missing"
+run 2 predict --height 300
+says "$err" "--spacing is missing"
+run 2 predict --spacing 0 --height 300
+says "$err" "--spacing: found 0, expected a number above 0"
+run 2 predict --spacing 350 --height -3
+says "$err" "--height: found -3"
+run 2 predict --spacing 350 --height tall
+run 2 predict --spacing 350 --height 300 --coverage 2
+says "$err" "--coverage: found 2, expected a number from 0 to 1"
+run 2 predict --spacing 350 --height 300 --mixing mean
+says "$err" '--mixing: found "mean", expected one of "bruggeman-2d"'
+run 2 predict --spacing 350 --height 300 --coating alumina
+says "$err" '--coating: found "alumina", expected MATERIAL:NM'
+run 2 predict --spacing 350 --height 300 --coating alumna:10
+says "$err" "unknown material 'alumna', did you mean 'alumina'?"
+run 2 predict --spacing 350 --height 300 --band 1200:300
+run 2 predict --spacing 350 --height 300 --band 200:1200
+says "$err" "200"
+run 2 predict --spacing 350 --height 300 --angle 90
+run 2 predict --spacing 350 --height 300 --ambient watr
+run 2 predict --spacing 350 --height 300 --shape pyramid
+run 2 predict 350 300
+says "$err" "is no option"
+run 2 predict --profile "$work/solid.csv" --height 300
+printf 'depth_nm,solid_fraction\n0,0\n100,1.5\n' >"$work/bad.csv"
+run 2 predict --profile "$work/bad.csv"
+says "$err" "line 3, solid_fraction: found 1.5"
+run 1 predict --profile "$work/none.csv"
+run 1 predict --protocol "$work/none.json" --spacing 300 --height 300
+cli_done
