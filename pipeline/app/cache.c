@@ -78,7 +78,7 @@ static void *reading_room(stream *s, size_t n, size_t size) {
 }
 
 static void pass_texture(stream *s, texture *t) {
-    int relief_word = t->relief;
+    int relief_word = (int)t->relief;
     pass_int(s, &relief_word);
     t->relief = (relief)relief_word;
     for (int q = 0; q < QUANTITIES; q++) {
