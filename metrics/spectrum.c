@@ -281,17 +281,10 @@ done:
     return st;
 }
 
-status psd_radial(const float *f, size_t nx, size_t ny, curve *out, error *e) {
+status psd2d_radial(const float *psd, size_t nx, size_t ny, curve *out, error *e) {
     size_t kx = nx / 2 + 1, longer = nx > ny ? nx : ny, n = longer / 2 + 1;
     radial_bin *bins = mem_array(n, sizeof *bins);
-    float *p = mem_array(ny * kx, sizeof *p);
-    status st = ST_OK;
-    if (!bins || !p) {
-        st = NO_MEMORY(e, "the power spectrum");
-        goto done;
-    }
-    st = psd2d(f, nx, ny, p, e);
-    if (st != ST_OK) goto done;
+    if (!bins) return NO_MEMORY(e, "the power spectrum");
     for (size_t j = 0; j < ny; j++) {
         double fy = (j <= ny / 2 ? (double)j : (double)j - (double)ny) / (double)ny;
         for (size_t i = 0; i < kx; i++) {
@@ -301,12 +294,19 @@ status psd_radial(const float *f, size_t nx, size_t ny, curve *out, error *e) {
             double w = i && 2 * i != nx ? 2.0 : 1.0; /* the other half plane mirrors this one */
             bins[b].weight += w;
             bins[b].radius += w * k;
-            bins[b].value += w * (double)p[j * kx + i];
+            bins[b].value += w * (double)psd[j * kx + i];
         }
     }
-    st = radial_curve(bins, n, "psd", "1/px", "px2", out, e);
-done:
+    status st = radial_curve(bins, n, "psd", "1/px", "px2", out, e);
     free(bins);
+    return st;
+}
+
+status psd_radial(const float *f, size_t nx, size_t ny, curve *out, error *e) {
+    float *p = mem_array(ny * (nx / 2 + 1), sizeof *p);
+    if (!p) return NO_MEMORY(e, "the power spectrum");
+    status st = psd2d(f, nx, ny, p, e);
+    if (st == ST_OK) st = psd2d_radial(p, nx, ny, out, e);
     free(p);
     return st;
 }

@@ -27,5 +27,7 @@ status acf_radial(const acf2d *a, curve *out, error *e);
 status psd_radial(const float *f, size_t nx, size_t ny, curve *out, error *e);
 /* The 2-D PSD itself: out[ny][nx/2+1], px2 (for tests and for directional work). Caller's memory. */
 status psd2d(const float *f, size_t nx, size_t ny, float *out, error *e);
+/* Its radial mean, the second half of psd_radial: for whoever needs both. */
+status psd2d_radial(const float *psd, size_t nx, size_t ny, curve *out, error *e);
 
 #endif

@@ -1,0 +1,308 @@
+/* Blur, noise, streaks, line jitter; and the verdict on a micrograph.
+ *
+ * Blur. A surface of hillocks that touch has creases; the power of a crease falls as k^-5 in two dimensions. On
+ * rendered cones, paraboloids and bells (hexagonal to nearly random, 12 to 110 px, no blur) the mean power of the band
+ * 0.8 to 1.4 per spacing exceeds that of a band about x per spacing by exp(0.65 + 5 ln x), +-0.8, from x = 1.8 to 14.
+ * A probe of sd b multiplies the spectrum by exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the highest
+ * band above the noise to come back to that law. Textures without blur come out below 0.08 spacings; rendered blurs of
+ * 0.12, 0.20, 0.25 and 0.35 spacings within 0.03. Rough or edge-bright pictures fall more slowly and look sharper than
+ * they are, never blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side lobes of
+ * windows and of truncated filters.
+ * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as noise, so the
+ * smaller of the two is taken.
+ * Streaks. What charging leaves runs along x: power in the columns |kx| <= 3 of the spectrum beyond that of the columns
+ * 8 to 14 (brought to the same |k| by the radial mean). Medians over bands of ky outside 0.45 to 2 per spacing keep the
+ * spots of a lattice out; the gap is filled with the mean of its sides.
+ * Line jitter. Shift between neighbouring lines by least squares on the gradient; the second difference keeps what
+ * changes from line to line, and the same figure of the columns removes texture and noise. */
+#include "metrics/fitness.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/mem.h"
+#include "base/quantity.h"
+#include "metrics/filter.h"
+
+measure_options measure_defaults(void) {
+    return (measure_options){
+        .relief = RELIEF_AUTO,
+        .min_px_per_spacing = 8.0, /* at 6 px the density is 5 % off, at 8 px 1 % */
+        .warn_px_per_spacing = 12.0,
+        .min_features = 50.0, /* sampling sd of the density 5 % */
+        .warn_features = 200.0,
+        .max_blur = 0.25, /* spacings: close features merge and the count drops */
+        .warn_blur = 0.12,
+        /* Saturated tops flatten the brightest few percent and leave places and cells; with a fifth of the field at an end
+         * of the scale tops become plateaus whose centre is arbitrary. */
+        .max_clipped = 0.20,
+        .warn_clipped = 0.02,
+        /* Noise is averaged over (0.17 d)^2: at 24 px, twice the texture's own sd still gives the spacing within 2 %. */
+        .max_noise = 8.0,
+        .warn_noise = 2.5,
+        /* Of the texture's variance: at 1 the streaks carry as much of the picture as the texture. */
+        .max_streaks = 1.0,
+        .warn_streaks = 0.02,
+        .max_stretch = 1.6, /* a tilt of 51 degrees */
+        .warn_stretch = 1.06,
+        .bright_level = 0.5,
+        .min_ring_z = 6.0, /* noise reaches 5.7 */
+    };
+}
+
+/* ---- blur and noise ---- */
+
+static double power_between(const curve *psd, double k0, double k1, double floor, double undo) {
+    double sum = 0.0, weight = 0.0;
+    for (size_t i = 1; i < psd->n; i++) {
+        double k = psd->points[i].x;
+        if (k < k0 || k >= k1) continue;
+        sum += k * (psd->points[i].y - floor) * exp(undo * k * k);
+        weight += k;
+    }
+    return weight > 0.0 ? sum / weight : MISSING;
+}
+
+static double creased_fall(double x0, double x1) {
+    return x0 < 1.8 ? 2.5 : 0.65 + 5.0 * log(sqrt(x0 * x1));
+}
+
+static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
+    static const double edge[] = { 1.4, 1.8, 2.2, 2.8, 3.5, 4.5, 5.6, 7.0, 9.0, 11.0, 14.0 };
+    const double least_z = 3.0, most_fall = 10.5, end = 0.45;
+    double ring = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
+    double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
+    if (!(ring > least_z * floor / sqrt(modes)) || !(ring > 0.0)) return MISSING;
+    size_t used = 0;
+    double fall = 0.0, level = 0.0;
+    for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end; i++) {
+        double p = power_between(psd, edge[i] / d, edge[i + 1] / d, floor, 0.0);
+        double m = PI * (edge[i + 1] * edge[i + 1] - edge[i] * edge[i]) / (d * d) * (double)n_px / 4.0;
+        double se = floor / sqrt(m);
+        int visible = p > least_z * se && p > 0.3 * floor;
+        if (visible && log(ring / p) <= most_fall) {
+            used = i + 1;
+            level = p;
+        }
+        if (i == 0 && !visible) { /* nothing beyond the ring: at least as blurred as the noise allows */
+            used = 1;
+            level = fmax(p, 0.0) + least_z * se;
+            break;
+        }
+        if (!visible) break;
+    }
+    if (!used || !(level > 0.0)) return MISSING;
+    double k0 = edge[used - 1] / d, k1 = edge[used] / d, want = creased_fall(edge[used - 1], edge[used]);
+    fall = log(ring / level);
+    if (fall <= want) return 0.0;
+    double shape = level / power_between(psd, k0, k1, floor, 0.0), low = 0.0, high = 0.6 * d;
+    if (!(shape > 0.0)) shape = 1.0;
+    for (int i = 0; i < 50; i++) {
+        double b = 0.5 * (low + high), undo = 4.0 * PI * PI * b * b;
+        double top = power_between(psd, 0.8 / d, 1.4 / d, floor, undo), tail = power_between(psd, k0, k1, floor, undo);
+        if (tail > 0.0 && log(top / (shape * tail)) < want) high = b;
+        else low = b;
+    }
+    return 0.5 * (low + high);
+}
+
+/* ---- streaks ---- */
+
+static int by_value(const void *a, const void *b) {
+    double x = *(const double *)a, y = *(const double *)b;
+    return (x > y) - (x < y);
+}
+
+static double median(double *v, size_t n) {
+    if (!n) return 0.0;
+    qsort(v, n, sizeof *v, by_value);
+    return n % 2 ? v[n / 2] : 0.5 * (v[n / 2 - 1] + v[n / 2]);
+}
+
+static double radial_power(const curve *psd, double k) {
+    size_t low = 0, high = psd->n - 1;
+    while (high - low > 1) {
+        size_t mid = (low + high) / 2;
+        if (psd->points[mid].x <= k) low = mid;
+        else high = mid;
+    }
+    return psd->points[k - psd->points[low].x < psd->points[high].x - k ? low : high].y;
+}
+
+enum { STREAK_COLUMNS = 3, REFERENCE_FROM = 8, REFERENCE_TO = 14 };
+
+/* Power of row ky in the streak columns beyond the reference columns, both signs of kx. */
+static double excess(const float *p, const curve *psd, size_t nx, size_t ny, size_t j) {
+    const float *row = p + j * (nx / 2 + 1);
+    double ky = (double)j / (double)ny, here = 0.0, expected = 0.0, reference = 0.0, radial = 0.0;
+    for (size_t i = 0; i <= STREAK_COLUMNS; i++) {
+        double w = i ? 2.0 : 1.0;
+        here += w * (double)row[i];
+        expected += w * radial_power(psd, hypot(ky, (double)i / (double)nx));
+    }
+    for (size_t i = REFERENCE_FROM; i <= REFERENCE_TO; i++) {
+        reference += (double)row[i];
+        radial += radial_power(psd, hypot(ky, (double)i / (double)nx));
+    }
+    return here - (radial > 0.0 ? expected * reference / radial : 0.0);
+}
+
+/* Sum of the excess over ky0 <= j < ky1, as count times median in bands; *last gets the band nearest the gap. */
+static double band_sum(const float *p, const curve *psd, size_t nx, size_t ny, size_t j0, size_t j1, size_t bands,
+                       double *v, double *first, double *last) {
+    double sum = 0.0;
+    *first = *last = 0.0;
+    for (size_t b = 0; b < bands && j1 > j0; b++) {
+        size_t a = j0 + b * (j1 - j0) / bands, z = j0 + (b + 1) * (j1 - j0) / bands, n = 0;
+        for (size_t j = a; j < z; j++) v[n++] = excess(p, psd, nx, ny, j);
+        double m = median(v, n);
+        if (b == 0) *first = m;
+        *last = m;
+        sum += m * (double)n;
+    }
+    return sum;
+}
+
+static status streak_variance(const float *p, const curve *psd, size_t nx, size_t ny, double d, double *out,
+                              error *e) {
+    size_t nyquist = ny / 2, gap0 = nyquist, gap1 = nyquist;
+    *out = 0.0;
+    if (nx < 4 * REFERENCE_TO) return ST_OK;
+    double *v = mem_array(nyquist + 1, sizeof *v), last_low, first_high, unused;
+    if (!v) return NO_MEMORY(e, "the look for streaks");
+    if (d > 0.0) {
+        gap0 = (size_t)fmin(0.45 * (double)ny / d, (double)nyquist);
+        gap1 = (size_t)fmin(2.0 * (double)ny / d, (double)nyquist);
+    }
+    size_t first = gap0 > 3 ? 3 : gap0; /* below lies uneven brightness */
+    double sum = band_sum(p, psd, nx, ny, first, gap0, 1 + (gap0 - first) / 64, v, &unused, &last_low);
+    sum += band_sum(p, psd, nx, ny, gap1, nyquist, 8, v, &first_high, &unused);
+    if (gap1 > gap0) {
+        int low_known = gap0 > first + 3, high_known = nyquist > gap1 + 8;
+        double level = low_known && high_known ? 0.5 * (last_low + first_high) : low_known ? last_low : first_high;
+        sum += level * (double)(gap1 - gap0);
+    }
+    *out = fmax(0.0, 2.0 * sum / ((double)nx * (double)ny));
+    free(v);
+    return ST_OK;
+}
+
+/* ---- line jitter ---- */
+
+/* Line `at` of f, along x (step 1) or y, smoothed with a box of 2 half + 1. */
+static void take_line(const float *f, size_t start, size_t step, size_t n, size_t half, double *out) {
+    double sum = 0.0;
+    size_t width = 2 * half + 1;
+    for (size_t i = 0; i < n; i++) {
+        sum += (double)f[start + i * step];
+        if (i >= width) sum -= (double)f[start + (i - width) * step];
+        if (i + 1 >= width) out[i + 1 - width] = sum;
+    }
+}
+
+static double line_shift(const double *a, const double *b, size_t n) {
+    double num = 0.0, norm = 0.0;
+    for (size_t i = 1; i + 1 < n; i++) {
+        double g = 0.25 * (a[i + 1] - a[i - 1] + b[i + 1] - b[i - 1]);
+        num -= (b[i] - a[i]) * g;
+        norm += g * g;
+    }
+    return norm > 0.0 ? num / norm : 0.0;
+}
+
+/* Mean square of the second difference of the shifts, over groups of four lines spread over the field. */
+static double shift_power(const float *f, size_t lines, size_t along, size_t line_step, size_t step, size_t half,
+                          double *buffer) {
+    enum { GROUPS = 160 };
+    size_t n = along - 2 * half, groups = lines / 4 < GROUPS ? lines / 4 : GROUPS;
+    double sum = 0.0, *l[4] = { buffer, buffer + along, buffer + 2 * along, buffer + 3 * along };
+    for (size_t g = 0; g < groups; g++) {
+        size_t first = g * (lines - 4) / groups;
+        for (size_t i = 0; i < 4; i++) take_line(f, (first + i) * line_step, step, along, half, l[i]);
+        double s = line_shift(l[1], l[2], n) - 0.5 * (line_shift(l[0], l[1], n) + line_shift(l[2], l[3], n));
+        sum += s * s;
+    }
+    return groups ? sum / (double)groups : 0.0;
+}
+
+static status line_jitter(const float *f, size_t nx, size_t ny, double d, double *out, error *e) {
+    size_t half = (size_t)(d / 12.0), longer = nx > ny ? nx : ny, shorter = nx < ny ? nx : ny;
+    *out = MISSING;
+    if (!(d > 0.0) || shorter < 4 * half + 16) return ST_OK;
+    double *buffer = mem_array(4 * longer, sizeof *buffer);
+    if (!buffer) return NO_MEMORY(e, "the look for line jitter");
+    double rows = shift_power(f, ny, nx, nx, 1, half, buffer), columns = shift_power(f, nx, ny, 1, nx, half, buffer);
+    /* The scatter of a shift falls with the length of the line. Independent line offsets of variance v: the second difference has 5 v, a shift between neighbours 2 v. */
+    *out = sqrt(fmax(0.0, rows - columns * (double)ny / (double)nx) * 2.0 / 5.0);
+    free(buffer);
+    return ST_OK;
+}
+
+status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e) {
+    size_t nx = p->nx, ny = p->ny;
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING };
+    curve radial = { 0 };
+    double sum = 0.0, streaks = 0.0;
+    float *psd = mem_array(ny * (nx / 2 + 1), sizeof *psd);
+    status st = psd ? psd2d(f, nx, ny, psd, e) : NO_MEMORY(e, "the power spectrum");
+    if (st == ST_OK) st = psd2d_radial(psd, nx, ny, &radial, e);
+    if (st == ST_OK) st = streak_variance(psd, &radial, nx, ny, d_px, &streaks, e);
+    if (st == ST_OK) st = line_jitter(f, nx, ny, d_px, &s.line_jitter_px, e);
+    if (st == ST_OK) {
+        for (size_t i = 0; i < nx * ny; i++) sum += (double)f[i] * (double)f[i];
+        double floor = fmax(0.0, power_between(&radial, 0.46, 0.51, 0.0, 0.0));
+        s.noise_sd = fmin(sqrt(floor), noise_sd(f, nx, ny));
+        s.texture_sd = sqrt(fmax(0.0, sum / (double)(nx * ny) - s.noise_sd * s.noise_sd));
+        if (s.texture_sd > 0.0) s.streaks = streaks / (s.texture_sd * s.texture_sd);
+        if (d_px > 0.0) s.blur_sd_px = blur_of(&radial, d_px, floor, nx * ny);
+        *out = s;
+    }
+    free(radial.points);
+    free(psd);
+    return st;
+}
+
+/* ---- the verdict ---- */
+
+static void limit(texture *t, double value, double warn, double max, flags remark, flags reason) {
+    if (value > max) t->reasons |= reason;
+    else if (value > warn) t->flags |= remark;
+}
+
+static void judge_stretch(const sharpness *s, const measure_options *o, double d, texture *t) {
+    const double axis_deg = 5.0, jitter_warn = 0.05; /* of a spacing */
+    double stretch = t->stretch.value, u = isfinite(t->stretch.u_sampling) ? t->stretch.u_sampling : 0.0;
+    double off = fabs(fmod(t->stretch_angle_deg.value, 90.0));
+    int along = fmin(off, 90.0 - off) < axis_deg;
+    if (stretch - 2.0 * u > o->max_stretch) t->reasons |= along ? FLAG(DRIFT) : FLAG(TILTED);
+    if (stretch > o->warn_stretch && stretch - 1.0 > 3.0 * u) {
+        t->flags |= FLAG(STRETCHED);
+        if (along) t->flags |= FLAG(DRIFT);
+    }
+    if (s->line_jitter_px > jitter_warn * d && s->line_jitter_px > 0.3) t->flags |= FLAG(DRIFT);
+}
+
+void fitness_judge(const sharpness *s, const plane *p, const measure_options *o, texture *t) {
+    const double random_order = 1.3; /* Clark-Evans index below which a missing ring means random placement */
+    double d = t->spacing_hex.value, n = (double)t->n_features;
+    t->sharpness = (measured){ s->blur_sd_px, MISSING, isfinite(d) ? 0.03 * d : MISSING, t->n_features };
+    t->noise_rel = (measured){ s->noise_sd / s->texture_sd, MISSING, 0.0, p->nx * p->ny };
+    if (!(s->texture_sd > 0.0)) t->noise_rel.value = MISSING;
+    t->clipped_share = p->clipped_low + p->clipped_high;
+    limit(t, t->clipped_share, o->warn_clipped, o->max_clipped, FLAG(CLIPPED), FLAG(CLIPPED));
+    if (t->ring_z < o->min_ring_z && !(t->reasons & FLAG(FEATURELESS))) t->reasons |= FLAG(NO_RING);
+    if (t->reasons & (FLAG(FEATURELESS) | FLAG(NO_RING))) return; /* further figures would describe the noise */
+    limit(t, -n, -o->warn_features, -o->min_features, FLAG(SMALL_COUNT), FLAG(FEW_FEATURES));
+    if (!isfinite(d)) return;
+    limit(t, -d, -o->warn_px_per_spacing, -o->min_px_per_spacing, FLAG(LOW_RESOLUTION), FLAG(FEW_PIXELS));
+    if (!isfinite(t->spacing_acf.value)) {
+        if (t->clark_evans.value >= random_order) t->flags |= FLAG(NO_RING);
+        else t->reasons |= FLAG(NO_RING);
+    }
+    limit(t, s->blur_sd_px / d, o->warn_blur, o->max_blur, FLAG(UNSHARP), FLAG(BLURRED));
+    limit(t, t->noise_rel.value, o->warn_noise, o->max_noise, FLAG(NOISY), FLAG(NOISY));
+    limit(t, s->streaks, o->warn_streaks, o->max_streaks, FLAG(STREAKS), FLAG(STREAKS));
+    if (isfinite(t->second_spacing_px)) t->flags |= FLAG(TWO_SPACINGS);
+    judge_stretch(s, o, d, t);
+}
