@@ -1,6 +1,6 @@
 /* The column tables of the output contract: names, order, units, printed digits and meaning of everything sward
  * writes. CSV, JSON, Table Schema, page and documentation read these lines and nothing else, so a figure cannot
- * differ between two outputs. Digits: lengths and densities 5, reflectance and ratios 4, uncertainties 3; the
+ * differ between two outputs. Digits: lengths and densities 5, reflectance 5 (spectra 6), ratios 4, uncertainties 3; the
  * pixel size 6, because everything in nm is a multiple of it. Definitions and attainable accuracy: metrics/.
  * What is not here: the computation of any of these numbers. */
 #include "report/rows.h"
@@ -116,17 +116,17 @@ const column sample_columns[] = {
     SAMPLE(aspect, COL_NUMBER, "1", 4, "height / spacing"),
     SAMPLE(area_ratio, COL_NUMBER, "1", 4,
            "true surface area / projected area, from the modelled shape; enlargement of the area, not a recombination factor"),
-    SAMPLE(weighted_reflectance, COL_NUMBER, "1", 4,
+    SAMPLE(weighted_reflectance, COL_NUMBER, "1", 5,
            "predicted front-surface reflectance averaged over the AM1.5G photon flux; graded-index model, light from the rear "
            "(beyond about 1000 nm) left out; empty where the texture is too coarse for the model"),
-    SAMPLE(weighted_reflectance_lo, COL_NUMBER, "1", 4,
+    SAMPLE(weighted_reflectance_lo, COL_NUMBER, "1", 5,
            "lower end of the 95 % interval of weighted_reflectance; need not be centred, the known bias of the model is in it"),
-    SAMPLE(weighted_reflectance_hi, COL_NUMBER, "1", 4, "upper end of the 95 % interval of weighted_reflectance"),
-    SAMPLE(current_loss_mA_cm2, COL_NUMBER, "mA/cm2", 4,
+    SAMPLE(weighted_reflectance_hi, COL_NUMBER, "1", 5, "upper end of the 95 % interval of weighted_reflectance"),
+    SAMPLE(current_loss_mA_cm2, COL_NUMBER, "mA/cm2", 5,
            "current the reflected photons would have given at one electron per photon, AM1.5G, same band"),
-    SAMPLE(polished_reflectance, COL_NUMBER, "1", 4,
+    SAMPLE(polished_reflectance, COL_NUMBER, "1", 5,
            "weighted reflectance of polished silicon in the same ambient, angle and polarization"),
-    SAMPLE(coated_reflectance, COL_NUMBER, "1", 4,
+    SAMPLE(coated_reflectance, COL_NUMBER, "1", 5,
            "weighted reflectance of polished silicon under 75 nm of silicon nitride, same ambient, angle and polarization"),
     SAMPLE(subwavelength_share, COL_NUMBER, "1", 4,
            "share of the weighted photons for which the texture makes no diffraction order, the domain of the graded-index "
@@ -144,11 +144,11 @@ const column spectrum_columns[] = {
     SPECTRUM(wavelength_nm, COL_NUMBER, "nm", 6, "wavelength in vacuum"),
     SPECTRUM(angle_deg, COL_NUMBER, "deg", 4, "angle of incidence from the surface normal"),
     SPECTRUM(polarization, COL_TEXT, "", 0, "mean (unpolarised), s or p"),
-    SPECTRUM(reflectance, COL_NUMBER, "1", 4,
+    SPECTRUM(reflectance, COL_NUMBER, "1", 6,
              "predicted total reflectance of the front surface, 0 to 1; beyond about 1000 nm a measurement adds light from the "
              "rear"),
-    SPECTRUM(reflectance_lo, COL_NUMBER, "1", 4, "lower end of the 95 % interval; empty where no model error is known"),
-    SPECTRUM(reflectance_hi, COL_NUMBER, "1", 4, "upper end of the 95 % interval; empty where no model error is known"),
+    SPECTRUM(reflectance_lo, COL_NUMBER, "1", 6, "lower end of the 95 % interval; empty where no model error is known"),
+    SPECTRUM(reflectance_hi, COL_NUMBER, "1", 6, "upper end of the 95 % interval; empty where no model error is known"),
 };
 const size_t n_spectrum_columns = COUNT_OF(spectrum_columns);
 
