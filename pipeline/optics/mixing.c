@@ -67,49 +67,65 @@ void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n) {
     }
 }
 
-/* Square root with Re >= 0; plain selects, so that a loop of it is vectorised. */
+/* Square root with Re >= 0, without branches, so that a loop of it is vectorised: the choice is a product with an
+ * exact 0 or 1. Neither part suffers cancellation. */
 static inline void root_of(double zr, double zi, double *sr, double *si) {
     double size = sqrt(zr * zr + zi * zi);
     double big = sqrt(0.5 * (size + fabs(zr)));
     double small = 0.5 * fabs(zi) / (big + 1e-300); /* z = 0 gives 0, not 0/0 */
-    double re = zr >= 0.0 ? big : small, im = zr >= 0.0 ? small : big;
-    *sr = re;
-    *si = copysign(im, zi);
+    double right = zr >= 0.0 ? 1.0 : 0.0, left = 1.0 - right;
+    *sr = right * big + left * small;
+    *si = copysign(right * small + left * big, zi);
 }
 
-/* x = beta + root for Re beta >= 0, else 1/(root - beta): the same number without cancellation (the product of
- * (root + beta) and (root - beta) is `product`). `inverse` is one choice for all lanes: for a solid denser than the
- * ambient the sign of Re beta is that of the share. */
-static inline void stable_sum(double br, double bi, double sr, double si, double product, int inverse, double *xr,
-                              double *xi) {
-    double yr = sr - br, yi = si - bi;
-    double q = product / (yr * yr + yi * yi);
-    *xr = inverse ? yr * q : br + sr;
-    *xi = inverse ? -yi * q : bi + si;
+/* e = g x with x = (beta + root)/over, or the same number without cancellation where Re beta < 0,
+ * x = product/((root - beta) over). One choice for all lanes: for a solid denser than the ambient the sign of Re beta
+ * follows from the share, and else the contrast is small. */
+static inline void sum_upper(double gr, double gi, double br, double bi, double sr, double si, double over, double *er,
+                             double *ei) {
+    double xr = (br + sr) * over, xi = (bi + si) * over;
+    *er = gr * xr - gi * xi;
+    *ei = gr * xi + gi * xr;
 }
 
-HOT static void pair_bruggeman_2d(const mixer *m, double f, lanes *out) {
+static inline void sum_lower(double gr, double gi, double br, double bi, double sr, double si, double over, double *er,
+                             double *ei) {
+    double yr = sr - br, yi = si - bi, q = over / (yr * yr + yi * yi);
+    *er = (gr * yr + gi * yi) * q;
+    *ei = (gi * yr - gr * yi) * q;
+}
+
+HOT static void pair_bruggeman_2d(const mixer *m, double f, lanes *restrict out) {
     const double t = 2.0 * f - 1.0;
-    const int inverse = t < 0.0;
+    lanes root;
     for (size_t i = 0; i < m->n; i++) {
-        double br = t * m->c.re[i], bi = t * m->c.im[i], sr, si, xr, xi;
-        root_of(br * br - bi * bi + 1.0, 2.0 * br * bi, &sr, &si);
-        stable_sum(br, bi, sr, si, 1.0, inverse, &xr, &xi);
-        out->re[i] = m->a.re[i] * xr - m->a.im[i] * xi;
-        out->im[i] = m->a.re[i] * xi + m->a.im[i] * xr;
+        double br = t * m->c.re[i], bi = t * m->c.im[i];
+        root_of(br * br - bi * bi + 1.0, 2.0 * br * bi, &root.re[i], &root.im[i]);
     }
+    if (t < 0.0)
+        for (size_t i = 0; i < m->n; i++)
+            sum_lower(m->a.re[i], m->a.im[i], t * m->c.re[i], t * m->c.im[i], root.re[i], root.im[i], 1.0, &out->re[i],
+                      &out->im[i]);
+    else
+        for (size_t i = 0; i < m->n; i++)
+            sum_upper(m->a.re[i], m->a.im[i], t * m->c.re[i], t * m->c.im[i], root.re[i], root.im[i], 1.0, &out->re[i],
+                      &out->im[i]);
 }
 
-HOT static void pair_bruggeman_3d(const mixer *m, double f, lanes *out) {
+HOT static void pair_bruggeman_3d(const mixer *m, double f, lanes *restrict out) {
     const double t = 3.0 * f - 1.0, u = 2.0 - 3.0 * f;
-    const int inverse = t < 0.0;
+    lanes h, root;
     for (size_t i = 0; i < m->n; i++) {
-        double hr = t * m->b.re[i] + u * m->c.re[i], hi = t * m->b.im[i] + u * m->c.im[i], sr, si, xr, xi;
-        root_of(hr * hr - hi * hi + 8.0, 2.0 * hr * hi, &sr, &si);
-        stable_sum(hr, hi, sr, si, 8.0, inverse, &xr, &xi);
-        out->re[i] = 0.25 * (m->a.re[i] * xr - m->a.im[i] * xi);
-        out->im[i] = 0.25 * (m->a.re[i] * xi + m->a.im[i] * xr);
+        h.re[i] = t * m->b.re[i] + u * m->c.re[i];
+        h.im[i] = t * m->b.im[i] + u * m->c.im[i];
+        root_of(h.re[i] * h.re[i] - h.im[i] * h.im[i] + 8.0, 2.0 * h.re[i] * h.im[i], &root.re[i], &root.im[i]);
     }
+    if (t < 0.0)
+        for (size_t i = 0; i < m->n; i++)
+            sum_lower(m->a.re[i], m->a.im[i], h.re[i], h.im[i], root.re[i], root.im[i], 2.0, &out->re[i], &out->im[i]);
+    else
+        for (size_t i = 0; i < m->n; i++)
+            sum_upper(m->a.re[i], m->a.im[i], h.re[i], h.im[i], root.re[i], root.im[i], 0.25, &out->re[i], &out->im[i]);
 }
 
 HOT static void pair_maxwell_garnett(const mixer *m, double f, double more, lanes *out) {
@@ -234,7 +250,8 @@ void mixing_at(const mixer *m, const double *share, lanes *in_plane, lanes *axis
         if (p > 1 && f[p] > 0.0) present++;
     }
     f[0] = fmax(0.0, 1.0 - covered);
-    if (m->rule == MIX_VOLUME) plain_mean(m, f[0], share, in_plane);
+    int pure = !present && (share[0] <= 0.0 || share[0] >= 1.0); /* exactly the phase, no rounding of a root */
+    if (m->rule == MIX_VOLUME || pure) plain_mean(m, f[0], share, in_plane);
     else if (present)
         for (size_t i = 0; i < m->n; i++) lane_set(in_plane, i, mix_many(m, i, f));
     else if (m->rule == MIX_BRUGGEMAN_2D) pair_bruggeman_2d(m, share[0], in_plane);

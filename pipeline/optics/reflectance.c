@@ -162,7 +162,7 @@ static void planar(block *b) {
 /* Refines until every R stands still. R[0] the last walk, R[1] the one before, R[2] the extrapolated value. */
 static status graded(block *b, refinement *ref, double tolerance, error *e) {
     const profile *p = b->stack->profile;
-    double moved = INFINITY;
+    double moved = HUGE_VAL;
     mixing_prepare(&b->mix, b->stack->mixing, p->pores, 2 + p->n_coatings, b->n);
     for (int level = 0; slabs_count(p, level) <= LIMIT_SLABS; level++) {
         if (level >= ref->made) {
