@@ -8,8 +8,6 @@
 
 typedef struct { const char *verb, *file; } request;
 
-static const struct argp_option protocol_options[] = { { 0 } };
-
 static error_t protocol_option(int key, char *arg, struct argp_state *state) {
     request *q = state->input;
     switch (key) {
@@ -30,7 +28,7 @@ static error_t protocol_option(int key, char *arg, struct argp_state *state) {
 }
 
 const struct argp protocol_argp = {
-    protocol_options, protocol_option, "print\ncheck FILE\nexplain [FILE]",
+    NULL, protocol_option, "print\ncheck FILE\nexplain [FILE]",
     "A protocol says how to measure, how to link, which optical stack, which targets.\v"
     "print writes the built-in protocol with a comment per key; it is a valid protocol itself. check names the first "
     "mistake with its line and exits 2. explain says in sentences what a protocol means, the built-in one without FILE.",

@@ -48,6 +48,20 @@ static void roff_paragraphs(textbuf *out, const char *doc) {
     }
 }
 
+/* One heading for each form of use; argp parts them with line breaks. */
+static void manual_heading(const char *name, const char *forms, textbuf *out) {
+    do {
+        size_t n = strcspn(forms, "\n");
+        textbuf form = { 0 };
+        text_addf(&form, "%.*s", (int)n, forms);
+        text_addf(out, ".SS sward %s ", name);
+        roff(out, form.s ? form.s : "");
+        text_add(out, "\n");
+        text_free(&form);
+        forms += n + (forms[n] == '\n');
+    } while (*forms);
+}
+
 static void manual_option(const struct argp_option *o, textbuf *out) {
     text_add(out, ".TP\n");
     if (o->key > ' ' && o->key < 127 && isprint(o->key)) text_addf(out, "\\fB\\-%c\\fR, ", o->key);
@@ -73,9 +87,7 @@ void help_manual(const command *commands, size_t n, textbuf *out) {
                   "history.\n.SH COMMANDS\n");
     for (size_t i = 0; i < n; i++) {
         const struct argp *a = commands[i].argp;
-        text_addf(out, ".SS sward %s ", commands[i].name);
-        roff(out, a->args_doc ? a->args_doc : "");
-        text_add(out, "\n");
+        manual_heading(commands[i].name, a->args_doc ? a->args_doc : "", out);
         roff_paragraphs(out, a->doc ? a->doc : commands[i].summary);
         for (const struct argp_option *o = a->options; o && !option_ends(o); o++)
             if (option_shown(o)) manual_option(o, out);

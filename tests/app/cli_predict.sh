@@ -51,7 +51,7 @@ run 0 predict --protocol "$work/p.json" --spacing 300 --json
 near weighted_reflectance 0.0183 5e-5
 
 run 0 predict --spacing 300 --height 300
-says "$out" "1.831 %" "34.98 %" "10.03 %" "0.8505 mA/cm2" "aspect 1"
+says "$out" "1.83" "34.98" "10.0" "0.8505 mA/cm2" "aspect 1"
 run 0 predict --spacing 300 --height 300 --csv
 says "$out" "wavelength_nm,reflectance,reflectance_lo,reflectance_hi"
 checks=$((checks + 1)); [ "$(wc -l <"$out")" -eq 902 ] || miss "901 rows and a header"

@@ -5,6 +5,7 @@
 
 #include "app/command.h"
 #include "base/limits.h"
+#include "base/quantity.h"
 #include "check.h"
 #include "io/file.h"
 #include "io/table.h"
@@ -46,7 +47,7 @@ static void fill_ledger(void) {
         { "S2", "L2", "4", "2026-03-15T08:00:00Z", "2026-04-01T10:00:00Z", "f2", "0.1.0", "line 3", 355.25, 8.1, 9.1, 340.5,
           0.01831, "conforms", "{\"sample\": \"S2\", \"lot\": \"L2\", \"etched_at\": \"2026-03-15T08:00:00Z\", \"spacing_nm\": 355.25, "
           "\"weighted_reflectance\": 0.01831, \"note\": \"=1+1\"}" },
-        { "S1", "L1", "3", "2026-03-14T08:00:00Z", "2026-04-01T10:00:00Z", "f1", "0.1.0", "line 3", 351.2, 7.7, 9.3, 338.1, NAN,
+        { "S1", "L1", "3", "2026-03-14T08:00:00Z", "2026-04-01T10:00:00Z", "f1", "0.1.0", "line 3", 351.2, 7.7, 9.3, 338.1, MISSING,
           "fails", "{\"sample\": \"S1\", \"lot\": \"L1\", \"etched_at\": \"2026-03-14T08:00:00Z\", \"spacing_nm\": 351.2, "
           "\"weighted_reflectance\": null, \"x_mm\": \"-3.5\"}" } };
     history *h = NULL;
