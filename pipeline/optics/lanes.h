@@ -24,7 +24,7 @@ static inline void lane_set(lanes *v, size_t i, double complex x) {
 
 /* The hot loops exist twice, for every x86-64 and for one with 256-bit vectors; without contraction and without
  * reductions both give the same bits. Sanitizers cannot run the load-time choice between them. */
-#if defined(__x86_64__) && defined(__GNUC__) && !defined(__clang__) && !defined(__SANITIZE_ADDRESS__) && \
+#if defined(__x86_64__) && defined(__GLIBC__) && defined(__GNUC__) && !defined(__clang__) && !defined(__SANITIZE_ADDRESS__) && \
     !defined(__SANITIZE_THREAD__)
 #define HOT __attribute__((target_clones("default", "arch=x86-64-v3")))
 #else
