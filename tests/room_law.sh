@@ -15,8 +15,12 @@ work=$(mktemp -d)
 trap 'rm -rf "$work"' EXIT
 
 impure='U (fopen(64)?|freopen|open(64)?|read|write|fread|fwrite|f?printf|puts|fputs|putchar|__f?printf_chk|time|clock|clock_gettime|gettimeofday|getenv|exit|abort_handler|signal|srand|rand|setlocale)$'
-writable=' [bdBDC] '
-look_pure() { nm -A "$1" 2>/dev/null | grep -vE ' [bdBD] (__|\.|_ZN?asan|_ZN?ubsan)' | grep -E "$impure|$writable" || true; }
+# Writable data by section: constant tables of pointers lie in .data.rel.ro, which is read-only after loading.
+writable='\|(\.data|\.bss|\.tdata|\.tbss|\*COM\*)(\.[A-Za-z0-9_.]*)?$'
+look_pure() {
+    nm -A "$1" 2>/dev/null | grep -E "$impure" || true
+    nm -f sysv "$1" 2>/dev/null | grep -E "$writable" | grep -vE '\.data\.rel\.ro|^(__|\.L)' || true
+}
 
 cat >"$work/impure.c" <<'C'
 #include <stdio.h>
