@@ -51,11 +51,11 @@ static size_t draw_bar(const render_options *o, const sheet *s, size_t y) {
     snprintf(text, sizeof text, "%s %s", number_text(nm < 1000.0 ? nm : nm / 1000.0, 3, number),
              nm < 1000.0 ? "nm" : "um");
     size_t length = (size_t)(nm / o->px_nm + 0.5), gap = 3 * s->scale, tall = FONT_HEIGHT * s->scale;
-    size_t used = length + gap + text_width(s, text) + gap;
+    size_t used = text_width(s, text) + gap + length + gap;
     if (used >= s->nx) return s->nx;
     size_t x = s->nx - used;
     write_text(s, x, y, text);
-    x += text_width(s, text);
+    x += text_width(s, text) + gap;
     block(s, x, y + tall / 2, length, s->scale);
     block(s, x, y + tall / 4, s->scale, tall / 2 + 1);
     block(s, x + length - s->scale, y + tall / 4, s->scale, tall / 2 + 1);
@@ -67,7 +67,7 @@ void strip_draw(const render_options *o, size_t rows, float *grey) {
         { 0.0f, 1.0f, 0 }, { 1.0f, 0.0f, 0 }, { 0.12f, 0.92f, 1 }, { 0.0f, 0.85f, 1 } };
     size_t style = (size_t)(o->seed % (sizeof styles / sizeof styles[0]));
     for (size_t k = 0; k < rows * o->nx; k++) grey[k] = styles[style].paper;
-    size_t scale = rows / (3 * FONT_HEIGHT);
+    size_t scale = 2 * rows / (5 * FONT_HEIGHT); /* letters of two fifths of the strip */
     sheet s = { grey, o->nx, rows, scale ? scale : 1, styles[style].ink };
     size_t y = (rows - FONT_HEIGHT * s.scale) / 2, x = 4 * s.scale, end = s.nx;
     if (styles[style].rule) block(&s, 0, 0, s.nx, s.scale);
