@@ -146,10 +146,11 @@ static void draw_series(const results *r, const etches *t, const char *name, tex
                       .hi = R ? t->R_hi : t->spacing_hi, .n = t->n, .style = PLOT_POINTS, .marks = t->mark };
     plot p = { .title = R ? "Weighted reflectance over the etches" : "Spacing over the etches",
                .x_label = "etches in time order", .y_label = R ? "weighted reflectance (%)" : "spacing (nm)",
-               .from_zero = R, .y_cap = MISSING, .names = t->name, .n_names = t->n, .series = &s, .n_series = 1 };
+               .from_zero = R, .y_lo = MISSING, .y_hi = MISSING, .names = t->name, .n_names = t->n, .series = &s, .n_series = 1,
+               .width = 1040, .height = 300 };
     if (!any_finite(s.y, t->n)) return;
     find_target(r, name, R ? 100.0 : 1.0, &p);
-    text_add(out, "<figure><div class=\"scroll\" tabindex=\"0\">\n");
+    text_add(out, "<figure><div class=\"scroll wide\" tabindex=\"0\">\n");
     plot_svg(&p, out);
     text_add(out, R ? "</div><figcaption>Bars: 95 % interval of the prediction, where this run made it.</figcaption></figure>\n"
                     : "</div><figcaption>Bars: \xc2\xb1 U (k = 2).</figcaption></figure>\n");
@@ -168,8 +169,10 @@ void page_series(const results *r, textbuf *out) {
         from_samples(t, r, out);
     add_intervals(t, r);
     if (!any_finite(t->spacing, t->n) && !any_finite(t->R, t->n)) goto done;
-    text_add(out, "<section id=\"series\"><h2>Etch series</h2>\n<ul class=\"key\"><li>\xe2\x97\x8f conforms</li>"
-                  "<li>\xe2\x97\x86 undecided</li><li>\xe2\x96\xb2 fails</li><li>\xe2\x96\xa1 no target</li></ul>\n");
+    text_add(out, "<section id=\"series\"><h2>Etch series</h2>\n<ul class=\"key\">"
+                  "<li><span class=\"good\">\xe2\x97\x8f</span> conforms</li>"
+                  "<li><span class=\"open\">\xe2\x97\x86</span> undecided</li>"
+                  "<li><span class=\"bad\">\xe2\x96\xb2</span> fails</li><li>\xe2\x96\xa1 no target</li></ul>\n");
     draw_series(r, t, "spacing_nm", out);
     draw_series(r, t, "weighted_reflectance", out);
     if (t->left_out)
@@ -216,7 +219,19 @@ static void thin_reference(const results *r, const double *R, thin_curve *c) {
 
 typedef struct {
     thin_curve sample, polished, coated;
+    double floor; /* of the axis, % : the same for all, so that the charts compare */
 } spectrum_curves;
+
+/* The decade below the lowest value, within 0.01 .. 1 %. */
+static double axis_floor(const results *r) {
+    double least = 0.01;
+    for (size_t i = 0; i < r->n_spectra; i++) {
+        const spectrum_row *s = &r->spectra[i];
+        if (s->reflectance > 0.0) least = fmin(least, s->reflectance);
+        if (s->reflectance_lo > 0.0) least = fmin(least, s->reflectance_lo);
+    }
+    return fmax(0.01, pow(10.0, floor(log10(100.0 * least))));
+}
 
 static void draw_spectrum(const results *r, size_t from, size_t n, spectrum_curves *k, textbuf *out) {
     const spectrum_row *s = &r->spectra[from];
@@ -229,14 +244,14 @@ static void draw_spectrum(const results *r, size_t from, size_t n, spectrum_curv
         text_addf(&title, ", %s polarised", s->polarization);
     plot_series series[3] = {
         { .x = k->polished.x, .y = k->polished.y, .n = k->polished.n, .style = PLOT_DASHED, .tone = 2,
-          .label = k->polished.n ? "polished silicon" : NULL },
+          .label = k->polished.n ? "polished" : NULL },
         { .x = k->coated.x, .y = k->coated.y, .n = k->coated.n, .style = PLOT_DOTTED, .tone = 1,
-          .label = k->coated.n ? "with 75 nm nitride" : NULL },
+          .label = k->coated.n ? "75 nm nitride" : NULL },
         { .x = k->sample.x, .y = k->sample.y, .lo = k->sample.lo, .hi = k->sample.hi, .n = k->sample.n, .tone = 0,
           .label = "this texture, 95 % band" },
     };
     plot p = { .title = title.s ? title.s : "", .x_label = "wavelength (nm)", .y_label = "reflectance (%), log scale",
-               .log_y = 1, .y_cap = 100.0, .target_lo = MISSING, .target_hi = MISSING, .series = series, .n_series = 3,
+               .log_y = 1, .y_lo = k->floor, .y_hi = 100.0, .target_lo = MISSING, .target_hi = MISSING, .series = series, .n_series = 3,
                .width = 520, .height = 330 };
     text_add(out, "<figure>");
     plot_svg(&p, out);
@@ -259,6 +274,7 @@ static void draw_spectra(const results *r, textbuf *out) {
     }
     thin_reference(r, r->polished_R, &k->polished);
     thin_reference(r, r->coated_R, &k->coated);
+    k->floor = axis_floor(r);
     size_t drawn = 0, curves = 0;
     text_add(out, "<div class=\"charts\">\n");
     for (size_t from = 0, to; from < r->n_spectra; from = to, curves++) {
@@ -272,49 +288,61 @@ static void draw_spectra(const results *r, textbuf *out) {
     free(k);
 }
 
-static const char *const optics_shown[] = { "weighted_reflectance", "weighted_reflectance_lo", "weighted_reflectance_hi",
-                                            "current_loss_mA_cm2",  "polished_reflectance",    "coated_reflectance",
-                                            "subwavelength_share",  "height_nm",               "height_source",
-                                            "aspect",               "area_ratio",              "optics_model" };
+static const char *const optics_shown[] = { "weighted_reflectance", "current_loss_mA_cm2", "polished_reflectance",
+                                            "coated_reflectance",   "subwavelength_share", "height_nm",
+                                            "height_source",        "aspect",              "area_ratio" };
+enum { OPTICS_SHOWN = sizeof optics_shown / sizeof optics_shown[0] };
 
 static const char *optics_heading(const char *name) {
-    if (!strcmp(name, "weighted_reflectance_lo")) return "95 % from";
-    if (!strcmp(name, "weighted_reflectance_hi")) return "to";
     if (!strcmp(name, "height_source")) return "Height from";
-    if (!strcmp(name, "optics_model")) return "Model";
     if (!strcmp(name, "aspect")) return "Aspect";
+    if (!strcmp(name, "coated_reflectance")) return "With 75 nm nitride";
     return page_quantity(name);
 }
 
+static const column *sample_column(const char *name) { return column_find(sample_columns, n_sample_columns, name); }
+
+static void optics_cell(textbuf *out, const sample_row *s, const char *name) {
+    const column *c = sample_column(name), *lo = sample_column("weighted_reflectance_lo");
+    const column *hi = sample_column("weighted_reflectance_hi");
+    if (!c || !lo || !hi) return;
+    if (c->kind == COL_TEXT) {
+        text_add(out, "<td>");
+        html_cell(out, c, s);
+        text_add(out, "</td>");
+        return;
+    }
+    text_add(out, "<td class=\"n\">");
+    html_value(out, c, strcmp(name, "height_nm") ? NULL : sample_column("height_nm_u"), s, page_percent(name));
+    text_add(out, "</td>");
+    if (strcmp(name, "weighted_reflectance")) return;
+    text_add(out, "<td class=\"n\">");
+    html_number(out, lo, s, 1);
+    text_add(out, " to ");
+    html_number(out, hi, s, 1);
+    text_add(out, "</td>");
+}
+
 static void optics_table(const results *r, textbuf *out) {
-    enum { SHOWN = sizeof optics_shown / sizeof optics_shown[0] };
     text_add(out, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Predicted reflectance of the samples\">"
                   "<table class=\"sort\"><thead><tr><th scope=\"col\">Sample</th>");
-    for (size_t k = 0; k < SHOWN; k++) {
-        const column *c = column_find(sample_columns, n_sample_columns, optics_shown[k]);
-        int text = c && c->kind == COL_TEXT;
-        text_addf(out, "<th scope=\"col\"%s>%s", text ? "" : " class=\"n\"", optics_heading(optics_shown[k]));
+    for (size_t k = 0; k < OPTICS_SHOWN; k++) {
+        const column *c = sample_column(optics_shown[k]);
+        text_addf(out, "<th scope=\"col\"%s>%s", c && c->kind == COL_TEXT ? "" : " class=\"n\"",
+                  optics_heading(optics_shown[k]));
         if (page_percent(optics_shown[k]))
             text_add(out, "<br><span class=\"unit\">%</span>");
         else if (c && c->unit[0] && strcmp(c->unit, "1"))
             text_addf(out, "<br><span class=\"unit\">%s</span>", c->unit);
         text_add(out, "</th>");
+        if (!k) text_add(out, "<th scope=\"col\" class=\"n\">95 % interval<br><span class=\"unit\">%</span></th>");
     }
     text_add(out, "</tr></thead><tbody>\n");
     for (size_t i = 0; i < r->n_samples; i++) {
         text_add(out, "<tr><th scope=\"row\">");
         html_text(out, r->samples[i].sample);
         text_add(out, "</th>");
-        for (size_t k = 0; k < SHOWN; k++) {
-            const column *c = column_find(sample_columns, n_sample_columns, optics_shown[k]);
-            int text = c && c->kind == COL_TEXT;
-            text_add(out, text ? "<td>" : "<td class=\"n\">");
-            if (c && text)
-                html_cell(out, c, &r->samples[i]);
-            else if (c)
-                html_number(out, c, &r->samples[i], page_percent(optics_shown[k]));
-            text_add(out, "</td>");
-        }
+        for (size_t k = 0; k < OPTICS_SHOWN; k++) optics_cell(out, &r->samples[i], optics_shown[k]);
         text_add(out, "</tr>\n");
     }
     text_add(out, "</tbody></table></div>\n");

@@ -13,7 +13,7 @@
 #include "report/page.h"
 #include "report/thumbnail.h"
 
-enum { THUMB_WIDTH = 640, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16 };
+enum { THUMB_WIDTH = 640, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16, DETAIL_NX = 220, DETAIL_NY = 165 };
 static const size_t picture_budget = (size_t)9 << 20; /* bytes of embedded pictures */
 
 void page_flags(textbuf *out, const char *words) {
@@ -70,61 +70,38 @@ static void add_fact(textbuf *out, const image_row *m, const char *name, const c
     text_add(out, "</dd>\n");
 }
 
-/* One picture into the page; returns the bytes it took, 0 when it could not be read. */
-static size_t embed(const char *path, size_t width, const char *alt, textbuf *out) {
-    uint8_t *png = NULL;
-    size_t n = 0, nx = 0, ny = 0;
-    error e = { 0 };
-    if (thumbnail_png(path, width, &png, &n, &nx, &ny, &e)) {
-        text_add(out, "<div class=\"blank\">The overlay could not be read: ");
-        html_text(out, e.text);
-        text_add(out, "</div>\n");
-        return 0;
-    }
-    text_addf(out, "<img width=\"%zu\" height=\"%zu\" alt=\"Overlay of ", nx, ny);
-    html_text(out, alt);
-    text_add(out, ": detected features and their cells\" src=\"data:image/png;base64,");
-    text_base64(out, png, n);
+static void add_image(textbuf *out, const small_png *p, const char *lead, const char *file, const char *tail) {
+    text_addf(out, "<img width=\"%zu\" height=\"%zu\" loading=\"lazy\" alt=\"%s", p->nx, p->ny, lead);
+    html_text(out, file);
+    text_addf(out, "%s\" src=\"data:image/png;base64,", tail);
+    text_base64(out, p->png, p->n);
     text_add(out, "\">\n");
-    free(png);
-    return n;
 }
 
-static void add_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent, textbuf *out) {
+/* Reads the overlay of image i; otherwise says in its place why there is none. */
+static void read_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t spent, small_png *whole,
+                         small_png *detail, textbuf *out) {
     const char *relative = r->overlay_paths ? r->overlay_paths[i] : NULL;
-    if (!relative) {
+    error e = { 0 };
+    char *path = relative ? path_join(out_dir, relative) : NULL;
+    if (relative && !path) {
+        out->failed = 1;
+    } else if (!relative) {
         text_add(out, "<div class=\"blank\">no overlay</div>\n");
-        return;
-    }
-    if (*spent > picture_budget) {
+    } else if (spent > picture_budget) {
         text_add(out, "<div class=\"blank\">Left out to keep the page small: ");
         html_text(out, relative);
         text_add(out, "</div>\n");
-        return;
+    } else if (thumbnail_make(path, width, DETAIL_NX, DETAIL_NY, whole, detail, &e)) {
+        text_add(out, "<div class=\"blank\">The overlay could not be read: ");
+        html_text(out, e.text);
+        text_add(out, "</div>\n");
     }
-    char *path = path_join(out_dir, relative);
-    if (!path)
-        out->failed = 1;
-    else
-        *spent += embed(path, width, r->images[i].file, out);
     free(path);
 }
 
-static void add_card(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent, textbuf *out) {
-    const image_row *m = &r->images[i];
-    const char *status_word = m->status ? m->status : "";
-    int excluded = !strcmp(status_word, "excluded"), unreadable = !strcmp(status_word, "unreadable");
-    text_addf(out, "<article class=\"card %s\"><h3>", excluded ? "excluded" : unreadable ? "unreadable" : "used");
-    html_text(out, m->file);
-    text_add(out, "</h3>\n");
-    add_picture(r, i, out_dir, width, spent, out);
-    text_add(out, "<p class=\"reason\">");
-    html_badge(out, status_word);
-    if (m->reason && *m->reason) {
-        text_add(out, " ");
-        add_reason(out, m->reason);
-    }
-    text_add(out, "</p>\n<dl>\n");
+static void add_facts(const image_row *m, textbuf *out) {
+    text_add(out, "<dl>\n");
     if (m->sample && *m->sample) {
         text_add(out, "<dt>Sample</dt><dd>");
         html_text(out, m->sample);
@@ -140,7 +117,36 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
         page_flags(out, m->flags);
         text_add(out, "</dd>\n");
     }
-    text_add(out, "</dl></article>\n");
+    text_add(out, "</dl>\n");
+}
+
+static void add_card(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent, textbuf *out) {
+    const image_row *m = &r->images[i];
+    const char *word = m->status ? m->status : "";
+    small_png whole = { 0 }, detail = { 0 };
+    int excluded = !strcmp(word, "excluded"), unreadable = !strcmp(word, "unreadable");
+    text_addf(out, "<article class=\"card %s\"><h3>", excluded ? "excluded" : unreadable ? "unreadable" : "used");
+    html_text(out, m->file);
+    text_add(out, "</h3>\n");
+    read_picture(r, i, out_dir, width, *spent, &whole, &detail, out);
+    *spent += whole.n + detail.n;
+    if (whole.n) add_image(out, &whole, "Overlay of ", m->file, ": detected features and their cells");
+    text_add(out, "<p class=\"reason\">");
+    html_badge(out, word);
+    if (m->reason && *m->reason) {
+        text_add(out, " ");
+        add_reason(out, m->reason);
+    }
+    text_add(out, "</p>\n<div class=\"facts\">");
+    add_facts(m, out);
+    if (detail.n) {
+        text_add(out, "<figure>");
+        add_image(out, &detail, "Middle of ", m->file, " at full resolution");
+        text_add(out, "<figcaption>the middle, pixel by pixel</figcaption></figure>");
+    }
+    text_add(out, "</div></article>\n");
+    small_png_free(&whole);
+    small_png_free(&detail);
 }
 
 static size_t thumb_width(const results *r) {

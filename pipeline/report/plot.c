@@ -91,22 +91,22 @@ static int find_ranges(const plot *p, range *x, range *y) {
 }
 
 static void settle_y(const plot *p, range *y) {
+    double span = y->hi - y->lo;
     if (p->log_y) {
         y->lo = fmax(y->lo, y->hi - 4.0) - 0.05;
         y->hi += 0.05;
-        if (isfinite(p->y_cap) && p->y_cap > 0.0) y->hi = fmin(y->hi, log10(p->y_cap));
-        return;
+    } else {
+        if (!(span > 0.0)) span = fabs(y->hi) > 0.0 ? 0.2 * fabs(y->hi) : 1.0;
+        y->hi += 0.08 * span;
+        y->lo = p->from_zero && y->lo >= 0.0 ? 0.0 : y->lo - 0.08 * span;
     }
-    double span = y->hi - y->lo;
-    if (!(span > 0.0)) span = fabs(y->hi) > 0.0 ? 0.2 * fabs(y->hi) : 1.0;
-    y->hi += 0.08 * span;
-    y->lo = p->from_zero && y->lo >= 0.0 ? 0.0 : y->lo - 0.08 * span;
-    if (isfinite(p->y_cap)) y->hi = fmin(y->hi, p->y_cap);
+    if (isfinite(p->y_lo)) y->lo = p->log_y ? log10(p->y_lo) : p->y_lo;
+    if (isfinite(p->y_hi)) y->hi = p->log_y ? log10(p->y_hi) : p->y_hi;
 }
 
 static int lay_out(const plot *p, frame *f) {
     range x, y;
-    *f = (frame){ .left = 64, .right = p->width - 14.0, .top = 50, .bottom = p->height - (p->names ? 62.0 : 46.0) };
+    *f = (frame){ .left = 58, .right = p->width - 20.0, .top = 50, .bottom = p->height - 46.0 };
     f->log_y = p->log_y;
     if (!find_ranges(p, &x, &y)) return 0;
     settle_y(p, &y);
@@ -175,7 +175,7 @@ static void draw_names(const plot *p, const frame *f, textbuf *out) {
         size_t keep = html_fit(name, 16);
         text_add_n(&cut, name, keep);
         if (name[keep]) text_add(&cut, "\xe2\x80\xa6");
-        draw_text(out, fmin(fmax(at_x(f, (double)i), f->left + 10), f->right - 30), f->bottom + 20, "middle", SOFT, "",
+        draw_text(out, fmin(fmax(at_x(f, (double)i), f->left + 10), f->right - 30), f->bottom + 18, "middle", SOFT, "",
                   cut.s ? cut.s : "");
         text_free(&cut);
     }
@@ -279,7 +279,7 @@ static void draw_legend(const plot *p, const frame *f, textbuf *out) {
         text_addf(out, "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\" stroke-width=\"2.4\"%s/>\n",
                   x, y - 4, x + 24, y - 4, tone_colour[s->tone], dashes(s->style));
         draw_text(out, x + 30, y, "start", SOFT, "", s->label);
-        x += 46.0 + 6.6 * (double)strlen(s->label);
+        x += 44.0 + 6.4 * (double)strlen(s->label);
     }
     if (p->target_label && (isfinite(p->target_lo) || isfinite(p->target_hi))) {
         text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"24\" height=\"11\" style=\"fill:%s;stroke:%s\" "
@@ -297,7 +297,7 @@ void plot_svg(const plot *given, textbuf *out) {
                    "font-family=\"system-ui,sans-serif\" aria-label=\"", p.width, p.height);
     html_text(out, p.description ? p.description : p.title);
     text_add(out, "\">\n");
-    draw_text(out, 14, 18, "start", INK, " font-size=\"14\" font-weight=\"600\"", p.title);
+    draw_text(out, 4, 18, "start", INK, " font-size=\"14\" font-weight=\"600\"", p.title);
     if (!lay_out(&p, &f)) {
         draw_text(out, 0.5 * p.width, 0.5 * p.height, "middle", SOFT, "", "no values to draw");
         text_add(out, "</svg>\n");

@@ -25,7 +25,7 @@ typedef struct {
     const char *description;  /* for a reader who cannot see the chart; NULL: the title */
     int log_y;                /* logarithmic axis; values that are not positive lie on its floor */
     int from_zero;            /* the linear axis begins at 0 */
-    double y_cap;             /* the axis ends here at the latest; NAN: no cap */
+    double y_lo, y_hi;        /* ends of the axis, values beyond run along its edge; NAN: from the values */
     double target_lo, target_hi; /* shaded range with its limits drawn; NAN: open on that side */
     const char *target_label; /* in the legend; NULL: not listed */
     const char *const *names; /* [n_names] an axis of names: series x are 0 .. n_names - 1; NULL: numbers */

@@ -89,22 +89,44 @@ done:
     return st;
 }
 
-status thumbnail_png(const char *path, size_t width, uint8_t **png, size_t *n, size_t *nx, size_t *ny, error *e) {
+/* Encodes with 32 levels per channel; changes the pixels. */
+static status encode(uint8_t *rgb, size_t nx, size_t ny, small_png *out, error *e) {
+    for (size_t i = 0; i < nx * ny * 3; i++) rgb[i] = (uint8_t)((rgb[i] >> 3) * 255 / 31);
+    png_format f = { .nx = nx, .ny = ny, .channels = 3, .bit_depth = 8 };
+    out->nx = nx;
+    out->ny = ny;
+    return png_encode(rgb, &f, &out->png, &out->n, e);
+}
+
+static status encode_middle(const uint8_t *rgb, size_t nx, size_t ny, size_t cut_nx, size_t cut_ny, small_png *out,
+                            error *e) {
+    if (cut_nx > nx) cut_nx = nx;
+    if (cut_ny > ny) cut_ny = ny;
+    uint8_t *cut = mem_array(cut_nx * cut_ny, 3);
+    if (!cut) return NO_MEMORY(e, "a detail of the overlay");
+    size_t x0 = (nx - cut_nx) / 2, y0 = (ny - cut_ny) / 2;
+    for (size_t y = 0; y < cut_ny; y++) memcpy(cut + y * cut_nx * 3, rgb + ((y0 + y) * nx + x0) * 3, cut_nx * 3);
+    status st = encode(cut, cut_nx, cut_ny, out, e);
+    free(cut);
+    return st;
+}
+
+status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t detail_ny, small_png *whole,
+                      small_png *detail, error *e) {
     uint8_t *full = NULL, *small = NULL;
-    size_t full_nx = 0, full_ny = 0, small_ny = 0;
-    status st = decode(path, &full, &full_nx, &full_ny, e);
+    size_t nx = 0, ny = 0, small_ny = 0;
+    status st = decode(path, &full, &nx, &ny, e);
     if (st) return st;
-    size_t small_nx = width && width < full_nx ? width : full_nx;
-    st = box_average(full, full_nx, full_ny, small_nx, &small, &small_ny, e);
-    if (!st) {
-        for (size_t i = 0; i < small_nx * small_ny * 3; i++)
-            small[i] = (uint8_t)((small[i] >> 3) * 255 / 31);
-        png_format f = { .nx = small_nx, .ny = small_ny, .channels = 3, .bit_depth = 8 };
-        st = png_encode(small, &f, png, n, e);
-        *nx = small_nx;
-        *ny = small_ny;
-    }
+    size_t small_nx = width && width < nx ? width : nx;
+    st = box_average(full, nx, ny, small_nx, &small, &small_ny, e);
+    if (!st) st = encode(small, small_nx, small_ny, whole, e);
+    if (!st) st = encode_middle(full, nx, ny, detail_nx, detail_ny, detail, e);
     free(full);
     free(small);
     return st;
+}
+
+void small_png_free(small_png *s) {
+    free(s->png);
+    *s = (small_png){ 0 };
 }

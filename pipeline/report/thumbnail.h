@@ -12,9 +12,17 @@
  *   err  ST_NO_MEMORY */
 status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8_t **small, size_t *small_ny, error *e);
 
-/* Reads a PNG, averages it to at most `width` columns, encodes it as PNG with 32 levels per channel.
- *   out  *png n bytes, the caller frees it; nx, ny its size
+typedef struct {
+    uint8_t *png; /* owned */
+    size_t n, nx, ny;
+} small_png; /* {0} = empty */
+
+/* Reads a PNG and makes two copies with 32 levels per channel: the whole averaged to at most `width` columns, and the
+ * middle at full resolution, at most detail_nx x detail_ny.
+ *   out  free both with small_png_free, also after a failure
  *   err  ST_IO not readable; ST_BAD_INPUT no PNG; ST_NO_MEMORY */
-status thumbnail_png(const char *path, size_t width, uint8_t **png, size_t *n, size_t *nx, size_t *ny, error *e);
+status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t detail_ny, small_png *whole,
+                      small_png *detail, error *e);
+void small_png_free(small_png *s);
 
 #endif
