@@ -1,0 +1,150 @@
+/* The page shows the CSV's own digits, survives hostile names, needs nothing from outside, and says why a micrograph or a
+ * number is missing. */
+#include <stdlib.h>
+#include <unistd.h>
+
+#include "base/mem.h"
+#include "check.h"
+#include "demo_rows.h"
+#include "io/file.h"
+#include "io/png_write.h"
+#include "report/html.h"
+
+static char *page_of(const results *r, const char *dir) {
+    error e = { 0 };
+    char *path = path_join(dir, "report.html"), *bytes = NULL;
+    size_t n = 0;
+    CHECK(report_write(r, dir, &e) == ST_OK);
+    CHECK(path && file_read(path, (size_t)1 << 24, &bytes, &n, &e) == ST_OK);
+    if (path) remove(path);
+    free(path);
+    return bytes;
+}
+
+static size_t count_of(const char *text, const char *word) {
+    size_t n = 0;
+    for (const char *p = text; (p = strstr(p, word)); p += strlen(word)) n++;
+    return n;
+}
+
+static void check_page(demo *d, const char *dir) {
+    char *page = page_of(&d->r, dir);
+    CHECK(page && strstr(page, "<title>line 3 &amp; &lt;grass&gt;</title>"));
+    CHECK(strstr(page, "351.23 <span class=\"u\">\xc2\xb1 16.2</span>")); /* twice the 8.12 of the table */
+    CHECK(strstr(page, "1.235 <span class=\"u\">(1.01 to 1.72)</span>")); /* the digits of 0.01235, in percent */
+    CHECK(strstr(page, "280 to 420 <span class=\"unit\">nm</span>"));
+    CHECK(strstr(page, "inside &lt;280..420&gt; nm"));
+    /* hostile names stay text */
+    CHECK(!strstr(page, "<img src=x") && !strstr(page, "<grass>") && !strstr(page, "<c.tif>") && !strstr(page, "<b>ab"));
+    CHECK(strstr(page, "=a/&lt;img src=x onerror=&quot;alert(1)&quot;&gt;&amp;&#39;\xef\xbf\xbd.tif"));
+    CHECK(strstr(page, "<td>&lt;b&gt;</td>")); /* from the manifest */
+    /* nothing is fetched */
+    CHECK(!strstr(page, "src=\"http") && !strstr(page, "href=\"http") && !strstr(page, "url(") && !strstr(page, "@import"));
+    CHECK(strstr(page, "default-src 'none'"));
+    /* verdicts by word and sign */
+    CHECK(strstr(page, "\xe2\x9c\x93</span> conforms</span>") && strstr(page, "?</span> undecided</span>"));
+    CHECK(strstr(page, "<strong>Undecided:</strong> <a href=\"#sample-2\">@etch &lt;2&gt;</a>"));
+    /* why something is missing */
+    CHECK(strstr(page, "<strong>few_pixels</strong>: too few pixels per spacing; <strong>blurred</strong>: "));
+    CHECK(strstr(page, "unreadable</span> the file ends after 12 bytes"));
+    CHECK(count_of(page, "<article class=\"card") == DEMO_IMAGES);
+    /* structure: every column explained once, table headers with scope, one h1 */
+    CHECK(count_of(page, "<h1>") == 1 && !strstr(page, "<th>Column"));
+    CHECK(strstr(page, "<code>weighted_reflectance</code>") && strstr(page, "Front surface only."));
+    CHECK(strstr(page, "can kill"));
+    CHECK(strstr(page, "aria-label=\"Spacing over the etches\"") && strstr(page, "</body></html>\n"));
+    free(page);
+}
+
+/* The etches stand in time order: the second sample was etched first. */
+static void check_order(demo *d, const char *dir) {
+    d->samples[1].spacing_nm = 333.25;
+    d->samples[1].spacing_nm_u = 5.0;
+    char *page = page_of(&d->r, dir);
+    const char *first = strstr(page, "<title>@etch &lt;2&gt;: 333.25</title>");
+    const char *second = strstr(page, "<title>etch 1: 351.235</title>");
+    CHECK(first && second && first < second);
+    free(page);
+    d->r.history_json = "[{\"sample\": \"old\", \"etched_at\": \"2026-01-01\", \"spacing_nm\": 300.5, \"spacing_nm_u\": 4, "
+                        "\"weighted_reflectance\": null, \"verdict\": \"fails\"}]";
+    page = page_of(&d->r, dir);
+    CHECK(strstr(page, "<title>old: 300.5</title>"));
+    free(page);
+    d->r.history_json = NULL;
+    demo_sample_empty(&d->samples[1]);
+}
+
+static void check_empty(const char *dir) {
+    results none = { .title = NULL };
+    char *page = page_of(&none, dir);
+    CHECK(page && strstr(page, "No sample could be formed") && strstr(page, "No micrograph was found"));
+    CHECK(!strstr(page, "nan") && !strstr(page, "(null)"));
+    free(page);
+    image_row dead[2];
+    static char file[] = "x.tif", unreadable[] = "unreadable", why[] = "not a picture";
+    for (size_t i = 0; i < 2; i++) {
+        demo_image_empty(&dead[i]);
+        dead[i].file = file;
+        dead[i].status = unreadable;
+        dead[i].reason = why;
+    }
+    results all = { .images = dead, .n_images = 2 };
+    page = page_of(&all, dir);
+    CHECK(page && count_of(page, "not a picture") == 2);
+    CHECK(!strstr(page, "(null)"));
+    free(page);
+}
+
+static void check_picture(demo *d, const char *dir) {
+    enum { NX = 1000, NY = 80 };
+    uint8_t *rgb = mem_array((size_t)NX * NY, 3);
+    for (size_t i = 0; i < (size_t)NX * NY * 3; i++) rgb[i] = (uint8_t)(i % 251);
+    char *path = path_join(dir, "o.png");
+    error e = { 0 };
+    png_format f = { NX, NY, 3, 8, 4.0 };
+    CHECK(path && png_write(path, rgb, &f, &e) == ST_OK);
+    const char *paths[DEMO_IMAGES] = { "o.png", "missing.png", NULL };
+    d->r.overlay_paths = paths;
+    char *page = page_of(&d->r, dir);
+    d->r.overlay_paths = NULL;
+    CHECK(strstr(page, "<img width=\"640\" height=\"51\"") && strstr(page, "data:image/png;base64,iVBORw0KGgo"));
+    CHECK(strstr(page, "The overlay could not be read: ") && strstr(page, "no overlay"));
+    free(page);
+    if (path) remove(path);
+    free(path);
+    free(rgb);
+}
+
+static void check_html(void) {
+    textbuf t = { 0 };
+    html_text(&t, "a\xc3\xa9\xe2\x82\xac\xf0\x9f\x98\x80\xc0\xaf\xed\xa0\x80\x01\t\n");
+    CHECK(!strcmp(t.s, "a\xc3\xa9\xe2\x82\xac\xf0\x9f\x98\x80\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd"
+                       "\xef\xbf\xbd\t\n"));
+    text_free(&t);
+    CHECK(html_fit("a\xc3\xa9z", 2) == 3 && html_fit("ab", 9) == 2);
+    static const struct {
+        const char *plain, *coded;
+    } rfc[] = { { "f", "Zg==" }, { "fo", "Zm8=" }, { "foo", "Zm9v" }, { "foob", "Zm9vYg==" }, { "foobar", "Zm9vYmFy" } };
+    for (size_t i = 0; i < sizeof rfc / sizeof rfc[0]; i++) { /* RFC 4648, section 10 */
+        text_base64(&t, (const uint8_t *)rfc[i].plain, strlen(rfc[i].plain));
+        CHECK(!strcmp(t.s, rfc[i].coded));
+        text_free(&t);
+    }
+}
+
+int main(void) {
+    demo d;
+    char dir[] = "sward-page-XXXXXX";
+    error e = { 0 };
+    CHECK(mkdtemp(dir) != NULL);
+    demo_make(&d);
+    check_page(&d, dir);
+    check_order(&d, dir);
+    check_empty(dir);
+    demo_make(&d);
+    check_picture(&d, dir);
+    check_html();
+    CHECK(rmdir(dir) == 0);
+    CHECK_FAILS(report_write(&d.r, "no/such/folder", &e), ST_IO, e, "report.html");
+    return check_done();
+}
