@@ -56,7 +56,7 @@ static const struct argp_option options[] = {
                                                       "floor (1.15)", 2 },
     { "height-spread",  OPT_PICTURE + 8, "X",      0, "relative standard deviation of the heights (0.1)", 2 },
     { "height-by-size", OPT_PICTURE + 9, "G",      0, "height grows with own cell size to the power G (0.5)", 2 },
-    { "stretch",        OPT_PICTURE + 17, "X:DEG", 0, "stretched by X along DEG, as a tilted view (1:0)", 2 },
+    { "stretch",        OPT_PICTURE + 17, "X:DEG", 0, "stretched by X along DEG, counter-clockwise from the x axis, as a tilted view (1:0)", 2 },
     { "seed",           OPT_PICTURE + 20, "N",     0, "same seed, same bytes (1)", 2 },
     { NULL, 0, NULL, 0, "The look:", 3 },
     { "noise",    OPT_PICTURE + 10, "ELECTRONS", 0, "per pixel at full signal; 0 = noiseless (0)", 3 },

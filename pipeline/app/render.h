@@ -32,7 +32,7 @@ typedef struct {
                               1 clips */
     double gradient;       /* relative brightness change across the field: 0 */
     double streaks;        /* sd of charging streaks along x / contrast: 0 */
-    double stretch;        /* >= 1 along stretch_angle_deg (from x towards y, y down); keeps the density */
+    double stretch;        /* >= 1 along stretch_angle_deg (counter-clockwise from x, as measured); keeps the density */
     double stretch_angle_deg;
     int bit_depth;         /* 8 or 16 */
     int strip;             /* 1: info strip appended at the bottom */

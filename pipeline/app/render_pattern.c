@@ -80,7 +80,7 @@ double rng_poisson(rng *r, double mean) {
 }
 
 stretching stretching_make(double stretch, double angle_deg) {
-    double a = angle_deg * PI / 180.0, c = cos(a), s = sin(a), root = sqrt(stretch);
+    double a = -angle_deg * PI / 180.0, c = cos(a), s = sin(a), root = sqrt(stretch); /* rows run down */
     return (stretching){ .xx = c * c / stretch + s * s * stretch,
                          .xy = c * s * (1.0 / stretch - stretch),
                          .yy = s * s / stretch + c * c * stretch,

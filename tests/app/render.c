@@ -53,7 +53,7 @@ static int differs(const render_options *a, const render_options *b) {
 /* Nearest neighbour of centres that lie `guard` inside the frame, under a stretch. */
 static void neighbours(const rendering *r, double guard, double stretch, double deg, double *mean, double *least,
                        double *most) {
-    double c = cos(deg * PI / 180.0), s = sin(deg * PI / 180.0), sum = 0.0, n = 0.0;
+    double c = cos(deg * PI / 180.0), s = -sin(deg * PI / 180.0), sum = 0.0, n = 0.0;
     *least = HUGE_VAL;
     *most = 0.0;
     for (size_t i = 0; i < r->n; i++) {
