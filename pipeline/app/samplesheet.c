@@ -261,12 +261,12 @@ static status check_named_heights(const sheet *s, error *e) {
     return st;
 }
 
-status sheet_check_samples(const sheet *s, const char *const *samples, size_t n, error *e) {
+status sheet_check_samples(const sheet *s, const sheet_row *const *rows, const char *const *samples, size_t n, error *e) {
     entry *a = mem_array(n, sizeof *a);
     size_t m = 0;
     if (!a) return NO_MEMORY(e, "the sample sheet");
-    for (size_t i = 0; i < n && i < s->n_files; i++)
-        if (s->of_file[i]) a[m++] = (entry){ samples[i], s->of_file[i] - 1 };
+    for (size_t i = 0; i < n; i++)
+        if (rows[i]) a[m++] = (entry){ samples[i], (size_t)(rows[i] - s->rows) };
     status st = check_heights(s, a, m, e);
     free(a);
     return st;

@@ -38,10 +38,10 @@ status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, er
  *   err  ST_BAD_INPUT a bare name that fits two files (both named), two rows for one file (both lines); ST_NO_MEMORY */
 status sheet_match(sheet *s, const char *const *files, size_t n, textbuf *warnings, error *e);
 
-/* Two heights in one sample once every file has its sample.
- *   in   samples[n] the sample of each file of the last sheet_match
+/* Two heights in one sample, once every file has its sample (sheet_read sees only the samples the sheet names).
+ *   in   rows[n] the row of each file, NULL: none; samples[n] the sample of each file
  *   err  ST_BAD_INPUT both lines and heights; ST_NO_MEMORY */
-status sheet_check_samples(const sheet *s, const char *const *samples, size_t n, error *e);
+status sheet_check_samples(const sheet *s, const sheet_row *const *rows, const char *const *samples, size_t n, error *e);
 
 /* The row of files[i] of the last sheet_match, or NULL. */
 const sheet_row *sheet_row_of(const sheet *s, size_t i);

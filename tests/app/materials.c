@@ -6,6 +6,7 @@
 #include <string.h>
 #include <unistd.h>
 
+#include "base/mem.h"
 #include "check.h"
 #include "io/file.h"
 
@@ -117,6 +118,27 @@ static void makes_setups(void) {
     protocol_free(&p);
 }
 
+/* Every allocation fails once: a status, a sentence, nothing left behind (the sanitizer looks). */
+static void survives_no_memory(void) {
+    status st = ST_NO_MEMORY;
+    protocol p = { 0 };
+    error e = { ST_OK, "" };
+    CHECK(protocol_defaults(&p, &e) == ST_OK);
+    CHECK(protocol_set(&p, "optics", "coatings", "2.1+0.1i:20", "--coating", &e) == ST_OK);
+    CHECK(protocol_set(&p, "link", "profile", file("p.csv", "depth_nm,solid_fraction\n0,0\n9,1\n"), "--profile", &e) == ST_OK);
+    for (size_t n = 1; n < 40000 && st != ST_OK; n += n < 40 ? 1 : 97) {
+        setup s = { 0 };
+        e = (error){ ST_OK, "" };
+        mem_fail_after(n);
+        st = setup_make(&p, &s, &e);
+        mem_fail_after(0);
+        CHECK(st == ST_OK || (st == ST_NO_MEMORY && e.text[0]));
+        setup_free(&s);
+    }
+    CHECK(st == ST_OK);
+    protocol_free(&p);
+}
+
 int main(void) {
     const char *tmp = getenv("TMPDIR");
     snprintf(folder, sizeof folder, "%s/sward-materials-XXXXXX", tmp ? tmp : "/tmp");
@@ -126,6 +148,7 @@ int main(void) {
     lists_materials();
     reads_profiles();
     makes_setups();
+    survives_no_memory();
     static const char *const made[] = { "own.csv", "lossless.csv", "bad.csv", "down.csv", "nok.csv", "p.csv" };
     for (size_t i = 0; i < sizeof made / sizeof made[0]; i++) {
         char path[300];

@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "app/protocol_keys.h"
+#include "base/mem.h"
 #include "check.h"
 
 static status parse(const char *text, protocol *p, error *e) {
@@ -22,26 +23,27 @@ static void fails_with(const char *text, const char *words) {
     protocol_free(&p);
 }
 
+static const char every_key[] =
+    "{ \"protocol\": \"line 3\", \"relief\": \"pore\", \"spacing\": \"density\", \"px_u_rel\": 0.013,\n"
+    "  \"history\": \"line3.sqlite\", \"samples\": { \"pattern\": \"{lot}_W{wafer}_{n}\" },\n"
+    "  \"fitness\": { \"min_px_per_spacing\": 7.5, \"warn_px_per_spacing\": 11, \"min_features\": 61, \"warn_features\": 190,\n"
+    "    \"max_blur\": 0.21, \"warn_blur\": 0.11, \"max_clipped\": 0.031, \"warn_clipped\": 0.011, \"max_noise\": 1.7,\n"
+    "    \"warn_noise\": 0.7, \"max_streaks\": 0.41, \"warn_streaks\": 0.13, \"max_stretch\": 1.31, \"warn_stretch\": 1.07,\n"
+    "    \"bright_level\": 0.47, \"min_ring_z\": 5.5 },\n"
+    "  \"targets\": { \"spacing_nm\": { \"min\": 280, \"max\": 420 },\n"
+    "    \"weighted_reflectance\": { \"max\": 0.02, \"error\": \"repeat\" } },\n"
+    "  \"link\": { \"height_nm\": 351, \"height_nm_u\": 31, \"aspect\": 1.3, \"aspect_u\": 0.2, \"shape\": \"paraboloid\",\n"
+    "    \"exponent_u\": 0.3, \"height_spread\": 0.15, \"height_by_size\": 0.4, \"level\": \"tips\", \"coverage\": 0.93,\n"
+    "    \"profile\": \"depth.csv\" },\n"
+    "  \"optics\": { \"ambient\": \"laminate\", \"glass_mm\": 2.1, \"encapsulant_mm\": 0.6, \"substrate\": 3.5,\n"
+    "    \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 11 }, { \"material\": \"my.csv\", \"thickness_nm\": 70.5 } ],\n"
+    "    \"mixing\": \"looyenga\", \"angle_deg\": 8, \"polarization\": \"s\", \"hemispherical\": true,\n"
+    "    \"band_nm\": [350, 1100], \"step_nm\": 2.5 } }\n";
+
 static void reads_every_key(void) {
-    static const char text[] =
-        "{ \"protocol\": \"line 3\", \"relief\": \"pore\", \"spacing\": \"density\", \"px_u_rel\": 0.013,\n"
-        "  \"history\": \"line3.sqlite\", \"samples\": { \"pattern\": \"{lot}_W{wafer}_{n}\" },\n"
-        "  \"fitness\": { \"min_px_per_spacing\": 7.5, \"warn_px_per_spacing\": 11, \"min_features\": 61, \"warn_features\": 190,\n"
-        "    \"max_blur\": 0.21, \"warn_blur\": 0.11, \"max_clipped\": 0.031, \"warn_clipped\": 0.011, \"max_noise\": 1.7,\n"
-        "    \"warn_noise\": 0.7, \"max_streaks\": 0.41, \"warn_streaks\": 0.13, \"max_stretch\": 1.31, \"warn_stretch\": 1.07,\n"
-        "    \"bright_level\": 0.47, \"min_ring_z\": 5.5 },\n"
-        "  \"targets\": { \"spacing_nm\": { \"min\": 280, \"max\": 420 },\n"
-        "    \"weighted_reflectance\": { \"max\": 0.02, \"error\": \"repeat\" } },\n"
-        "  \"link\": { \"height_nm\": 351, \"height_nm_u\": 31, \"aspect\": 1.3, \"aspect_u\": 0.2, \"shape\": \"paraboloid\",\n"
-        "    \"exponent_u\": 0.3, \"height_spread\": 0.15, \"height_by_size\": 0.4, \"level\": \"tips\", \"coverage\": 0.93,\n"
-        "    \"profile\": \"depth.csv\" },\n"
-        "  \"optics\": { \"ambient\": \"laminate\", \"glass_mm\": 2.1, \"encapsulant_mm\": 0.6, \"substrate\": 3.5,\n"
-        "    \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 11 }, { \"material\": \"my.csv\", \"thickness_nm\": 70.5 } ],\n"
-        "    \"mixing\": \"looyenga\", \"angle_deg\": 8, \"polarization\": \"s\", \"hemispherical\": true,\n"
-        "    \"band_nm\": [350, 1100], \"step_nm\": 2.5 } }\n";
     protocol p = { 0 };
     error e = { ST_OK, "" };
-    CHECK(parse(text, &p, &e) == ST_OK);
+    CHECK(parse(every_key, &p, &e) == ST_OK);
     if (e.text[0]) printf("%s\n", e.text);
     CHECK(p.name && strcmp(p.name, "line 3") == 0 && p.measure.relief == RELIEF_PORE && p.spacing == SPACING_DENSITY);
     CHECK_NEAR(p.px_u_rel, 0.013, 0);
@@ -214,10 +216,26 @@ static void options(void) {
     protocol_free(&p);
 }
 
+/* Every allocation of ours fails once: a status, a sentence, nothing left behind (the sanitizer looks). */
+static void survives_no_memory(void) {
+    status st = ST_NO_MEMORY;
+    for (size_t n = 1; n < 500 && st != ST_OK; n++) {
+        protocol p = { 0 };
+        error e = { ST_OK, "" };
+        mem_fail_after(n);
+        st = parse(every_key, &p, &e);
+        mem_fail_after(0);
+        CHECK(st == ST_OK || (st == ST_NO_MEMORY && e.text[0]));
+        protocol_free(&p);
+    }
+    CHECK(st == ST_OK);
+}
+
 int main(void) {
     protocol p = { 0 };
     error e = { ST_OK, "" };
     reads_every_key();
+    survives_no_memory();
     names_each_mistake();
     comments_and_null();
     prints_what_it_reads();

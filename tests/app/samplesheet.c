@@ -3,6 +3,7 @@
 
 #include <string.h>
 
+#include "base/mem.h"
 #include "check.h"
 
 static status parse(const char *text, sheet *s, error *e) { return sheet_parse(text, strlen(text), "s.csv", s, e); }
@@ -74,9 +75,11 @@ static void matches_files(void) {
     CHECK(sheet_row_of(&s, 3) == &s.rows[2] && sheet_row_of(&s, 4) == NULL && sheet_row_of(&s, 99) == NULL);
     CHECK(warnings.s && strcmp(warnings.s, "s.csv line 5: there is no file 'gone.png' in the folder\n") == 0);
     static const char *const one_sample[] = { "S", "S", "S", "T", "T", "T" }, *const own[] = { "A", "B", "C", "D", "E", "F" };
-    CHECK_FAILS(sheet_check_samples(&s, one_sample, N, &e), ST_BAD_INPUT, e, "lines 2 and 3 give the sample 'S' two heights");
+    const sheet_row *rows[N];
+    for (size_t i = 0; i < N; i++) rows[i] = sheet_row_of(&s, i);
+    CHECK_FAILS(sheet_check_samples(&s, rows, one_sample, N, &e), ST_BAD_INPUT, e, "lines 2 and 3 give the sample 'S' two heights");
     e = (error){ ST_OK, "" };
-    CHECK(sheet_check_samples(&s, own, N, &e) == ST_OK);
+    CHECK(sheet_check_samples(&s, rows, own, N, &e) == ST_OK);
     sheet_free(&s);
     text_free(&warnings);
     CHECK(parse("file\nb.png\nc.png\n", &s, &e) == ST_OK);
@@ -111,7 +114,27 @@ static void reads_times(void) {
     for (size_t i = 0; i < sizeof bad / sizeof bad[0]; i++) CHECK(iso_time(bad[i], out) == 0);
 }
 
+/* Every allocation fails once: a status, a sentence, nothing left behind (the sanitizer looks). */
+static void survives_no_memory(void) {
+    static const char *const files[] = { "x/b.png", "a.png" };
+    status st = ST_NO_MEMORY;
+    for (size_t n = 1; n < 500 && st != ST_OK; n++) {
+        sheet s = { 0 };
+        textbuf warnings = { 0 };
+        error e = { ST_OK, "" };
+        mem_fail_after(n);
+        st = parse("file,sample,height_nm,power\na.png,S1,300,7\nb.png,S1,,8\n", &s, &e);
+        if (st == ST_OK) st = sheet_match(&s, files, 2, &warnings, &e);
+        mem_fail_after(0);
+        CHECK(st == ST_OK || (st == ST_NO_MEMORY && e.text[0]));
+        text_free(&warnings);
+        sheet_free(&s);
+    }
+    CHECK(st == ST_OK);
+}
+
 int main(void) {
+    survives_no_memory();
     reads_columns();
     names_each_mistake();
     matches_files();
