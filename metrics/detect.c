@@ -28,7 +28,7 @@ static const double gap_width = 1.4;       /* half width of the gap that is look
 static const double gap_stiffness = 0.002; /* what a factor 2 away from min_dynamic must save, / maxima */
 static const double centre_scale = 0.10;   /* sigma of the Gaussian for the centres / d */
 static const double max_shift = 0.02;      /* of a centre by noise, / d */
-static const double max_walk = 0.15;       /* from the marker to the centre, / d */
+static const double max_walk = 0.30;       /* from the marker to the centre, / d */
 static const double min_sigma_px = 0.8;    /* a LoG below this is not sampled */
 static const double noise_sds = 4.0;
 enum { MIN_FEATURES = 5, SCALE_ROUNDS = 2 };
@@ -119,12 +119,13 @@ static size_t count_between(const maximum *m, size_t n, double low, double high)
 }
 
 /* The criterion, / median response: where the dynamics leave the widest gap between bumps on a feature and
- * features, looked for around 0.10. */
+ * features, looked for around 0.10. Below 0.10 only when there is nothing further down either: close pairs of
+ * features reach down there, but so does roughness. */
 static double dynamic_gap(const maximum *m, size_t n, double median) {
     double best = min_dynamic, fewest = HUGE_VAL;
     for (int k = -4; k <= 8; k++) {
-        double t = min_dynamic * pow(2.0, k / 6.0);
-        double c = (double)count_between(m, n, t * median / gap_width, t * median * gap_width);
+        double t = min_dynamic * pow(2.0, k / 6.0), depth = k < 0 ? 2.0 * gap_width : gap_width;
+        double c = (double)count_between(m, n, t * median / depth, t * median * gap_width);
         c += gap_stiffness * (double)n * fabs((double)k / 6.0);
         if (c < fewest) {
             fewest = c;
@@ -182,24 +183,6 @@ static void vertex(const float *g, size_t nx, size_t ny, size_t x, size_t y, dou
     }
 }
 
-/* Uphill on g from a pixel to its maximum, not further than `reach`; 0 when it leads further away. */
-static int walk_up(const float *g, size_t nx, size_t ny, double reach, size_t *x, size_t *y) {
-    size_t x0 = *x, y0 = *y;
-    for (;;) {
-        size_t bx = *x, by = *y;
-        for (size_t yy = *y ? *y - 1 : 0; yy <= *y + 1 && yy < ny; yy++)
-            for (size_t xx = *x ? *x - 1 : 0; xx <= *x + 1 && xx < nx; xx++)
-                if (g[yy * nx + xx] > g[by * nx + bx]) {
-                    bx = xx;
-                    by = yy;
-                }
-        if (bx == *x && by == *y) return 1;
-        *x = bx;
-        *y = by;
-        if (hypot((double)bx - (double)x0, (double)by - (double)y0) > reach) return 0;
-    }
-}
-
 /* Sigma of the Gaussian for the centres: wide enough that the noise moves a top of the mean curvature by less
  * than 0.02 d. Gradient noise of smoothed white noise of sd s: s / (sigma^2 sqrt(8 pi)); curvature c along an
  * axis of the response R = 2 sigma_m^2 c; displacement = gradient noise / c. */
@@ -214,12 +197,9 @@ static double centre_sigma(const maximum *m, size_t n, double d, double noise) {
  * the middle, a shoulder of a neighbour) stays where the detector saw it. */
 static void centres_refine(const float *g, const float *map, size_t nx, size_t ny, double d, detection *det) {
     for (size_t i = 0; i < det->n; i++) {
-        size_t x = det->marker[i] % nx, y = det->marker[i] / nx;
-        feature *p = &det->features[i];
-        if (walk_up(g, nx, ny, max_walk * d, &x, &y))
-            vertex(g, nx, ny, x, y, &p->x, &p->y);
-        else
-            vertex(map, nx, ny, det->marker[i] % nx, det->marker[i] / nx, &p->x, &p->y);
+        uint32_t top = det->marker[i];
+        const float *on = maximum_uphill(g, nx, ny, max_walk * d, &top) ? g : map;
+        vertex(on, nx, ny, top % nx, top / nx, &det->features[i].x, &det->features[i].y);
     }
 }
 

@@ -48,6 +48,19 @@ static size_t highest_inside(const float *map, size_t nx, size_t i) {
     return best;
 }
 
+int maximum_uphill(const float *map, size_t nx, size_t ny, double reach_px, uint32_t *pixel) {
+    size_t at = *pixel, x0 = at % nx, y0 = at / nx;
+    for (;;) {
+        size_t x = at % nx, y = at / nx, best = highest_around(map, nx, ny, x, y);
+        if (best == at) {
+            *pixel = (uint32_t)at;
+            return 1;
+        }
+        at = best;
+        if (hypot((double)(at % nx) - (double)x0, (double)(at / nx) - (double)y0) > reach_px) return 0;
+    }
+}
+
 int maximum_rules(const float *map, size_t nx, size_t ny, uint32_t pixel, size_t reach) {
     size_t x = pixel % nx, y = pixel / nx;
     size_t x0 = x > reach ? x - reach : 0, x1 = x + reach < nx ? x + reach : nx - 1;

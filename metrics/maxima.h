@@ -23,4 +23,8 @@ status maxima_find(const float *map, size_t nx, size_t ny, int with_dynamics, ma
 /* 1 when no pixel of the square +-reach is higher (of equals: comes first). */
 int maximum_rules(const float *map, size_t nx, size_t ny, uint32_t pixel, size_t reach);
 
+/* Steepest ascent from *pixel to a maximum, into *pixel. 0 when that leads further away than reach_px: *pixel
+ * stays. */
+int maximum_uphill(const float *map, size_t nx, size_t ny, double reach_px, uint32_t *pixel);
+
 #endif

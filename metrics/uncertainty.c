@@ -137,7 +137,7 @@ status field_sum_sd(const double *x, const double *y, const double *mark, size_t
                     double *sd, error *e) {
     double width = w.x1 - w.x0, height = w.y1 - w.y0, narrow = fmin(width, height);
     *sd = MISSING;
-    if (n < 4 || !(unit > 0.0) || narrow < 6.0 * unit) return ST_OK;
+    if (n < 4 || !(unit > 0.0) || narrow < 4.0 * unit) return ST_OK;
     tally t = { 0 };
     status st = tally_make(x, y, mark, n, w, unit, &t, e);
     if (st != ST_OK) return st;

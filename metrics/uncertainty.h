@@ -11,7 +11,7 @@
  * texture, found inside the one field: the variance of the sum over tiles of several sizes follows V(tile) =
  * a * area + b * perimeter (a: randomness; b: order, a regular texture varies only where the border cuts it),
  * extrapolated to the window. in  x, y, mark[n] in the window; unit a length of the order of the spacing, > 0
- *   out sd; NAN with fewer than 4 points or a window narrower than six units
+ *   out sd; NAN with fewer than 4 points or a window narrower than four units
  *   err ST_NO_MEMORY
  *   src number variance of ordered patterns: Torquato S., Stillinger F.H. (2003) Phys. Rev. E 68:041113 (from
  * memory) */

@@ -14,8 +14,10 @@
 
 #include "base/mem.h"
 #include "metrics/filter.h"
+#include "metrics/maxima.h"
 
 static const double cell_scale = 0.06; /* sigma of the smoothing / d */
+static const double max_climb = 0.30;  /* from a marker to the top its flood starts at / d */
 enum { LEVELS = 65536 };
 #define NO_PIXEL UINT32_MAX
 
@@ -75,11 +77,22 @@ static void reach(queue *q, uint32_t *cells, uint32_t from, uint32_t to) {
     queue_push(q, to, q->level[to]);
 }
 
-static void flood(queue *q, const uint32_t *marker, size_t n, size_t nx, size_t ny, uint32_t *cells) {
+/* Where the flood of a feature starts: the top that is reached uphill from its marker, unless another feature
+ * has it. From a marker on a slope a neighbour's flood would be there first and leave a cell of a few pixels.
+ */
+static uint32_t seed_of(const float *g, size_t nx, size_t ny, uint32_t marker, double reach_px,
+                        const uint32_t *cells) {
+    uint32_t top = marker;
+    return maximum_uphill(g, nx, ny, reach_px, &top) && !cells[top] ? top : marker;
+}
+
+static void flood(queue *q, const float *g, size_t nx, size_t ny, const detection *d, uint32_t *cells) {
     for (size_t i = 0; i < nx * ny; i++) cells[i] = 0;
-    for (size_t k = 0; k < n; k++) {
-        cells[marker[k]] = (uint32_t)(k + 1);
-        queue_push(q, marker[k], q->level[marker[k]]);
+    for (size_t k = 0; k < d->n; k++) {
+        uint32_t seed = seed_of(g, nx, ny, d->marker[k], max_climb * d->scale_px, cells);
+        if (cells[seed]) continue;
+        cells[seed] = (uint32_t)(k + 1);
+        queue_push(q, seed, q->level[seed]);
     }
     for (uint32_t p = queue_pop(q); p != NO_PIXEL; p = queue_pop(q)) {
         size_t x = p % nx, y = p / nx;
@@ -125,7 +138,7 @@ status watershed(const float *f, size_t nx, size_t ny, int sign, detection *d, u
         for (size_t i = 0; i < nx * ny; i++) g[i] = -g[i];
     if (st == ST_OK) st = queue_make(g, nx * ny, &q, e);
     if (st == ST_OK) {
-        flood(&q, d->marker, d->n, nx, ny, cells);
+        flood(&q, g, nx, ny, d, cells);
         st = tops_measure(g, cells, nx * ny, d->features, d->n, e);
     }
     if (st == ST_OK) st = cells_describe(cells, nx, ny, d->features, d->n, e);
