@@ -31,7 +31,7 @@ static void check_page(demo *d, const char *dir) {
     char *page = page_of(&d->r, dir);
     CHECK(page && strstr(page, "<title>line 3 &amp; &lt;grass&gt;</title>"));
     CHECK(strstr(page, "351.23 <span class=\"u\">\xc2\xb1 16.2</span>")); /* twice the 8.12 of the table */
-    CHECK(strstr(page, "1.235 <span class=\"u\">(1.01 to 1.72)</span>")); /* the digits of 0.01235, in percent */
+    CHECK(strstr(page, "1.2346 <span class=\"u\">(1.01 to 1.72)</span>")); /* the digits of 0.012346, in percent */
     CHECK(strstr(page, "280 to 420 <span class=\"unit\">nm</span>"));
     CHECK(strstr(page, "inside &lt;280..420&gt; nm"));
     /* hostile names stay text */
