@@ -178,7 +178,7 @@ int cmd_history(int argc, char **argv) {
     error e = { ST_OK, "" };
     argp_parse(&history_argp, argc, argv, 0, NULL, &q);
     status st = file_exists(q.path) ? ST_OK
-                                    : fail(&e, ST_IO, "there is no ledger '%s' yet; 'sward run' starts one, or name another with "
+                                    : fail(&e, ST_BAD_INPUT, "there is no ledger '%s' yet; 'sward run' starts one, or name another with "
                                            "--history", q.path);
     if (st == ST_OK) st = history_open(q.path, 1, &h, &e);
     if (st == ST_OK) st = history_read(h, q.since, q.lot, &rows, &e);

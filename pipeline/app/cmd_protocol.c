@@ -55,6 +55,5 @@ int cmd_protocol(int argc, char **argv) {
     protocol_free(&p);
     if (st == ST_OK) return command_print("protocol", &out);
     text_free(&out);
-    int code = command_failed("protocol", &e);
-    return check && code == EXIT_FAILED && e.code == ST_IO ? EXIT_USAGE : code;
+    return command_failed("protocol", &e);
 }

@@ -6,6 +6,7 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "io/file.h"
 #include "io/json.h"
 
 const char *argp_program_version = "sward " SWARD_VERSION;
@@ -27,6 +28,10 @@ int command_print(const char *name, textbuf *t) {
     }
     text_free(t);
     return code;
+}
+
+status input_wanted(const char *path, error *e) {
+    return file_exists(path) ? ST_OK : fail(e, ST_BAD_INPUT, "%s: there is no such file", path);
 }
 
 enum { MAX_OPTIONS = 64 };

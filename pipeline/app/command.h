@@ -35,6 +35,10 @@ int command_print(const char *name, textbuf *t);
  * alone names the option but no near one. */
 int command_check_options(const command *c, int argc, char **argv);
 
+/* A file the user named and that is not there is wrong use, not an I/O failure: ST_BAD_INPUT "PATH: there is no such
+ * file", else ST_OK. */
+status input_wanted(const char *path, error *e);
+
 /* Overview of all commands for `sward --help`; the manual page in man(7) macros; completion for bash. */
 void help_overview(const command *commands, size_t n, textbuf *out);
 void help_manual(const command *commands, size_t n, textbuf *out);

@@ -9,6 +9,7 @@
 #include <string.h>
 #include <unistd.h>
 
+#include "app/command.h"
 #include "app/protocol_keys.h"
 #include "base/limits.h"
 #include "base/mem.h"
@@ -63,7 +64,8 @@ static const char *comment_value(const csv *c, const char *key) {
 static status material_from_csv(const char *path, const char *name, material *out, error *e) {
     csv c = { 0 };
     double *v = NULL;
-    status st = csv_read(path, &c, e);
+    status st = input_wanted(path, e);
+    if (st == ST_OK) st = csv_read(path, &c, e);
     if (st != ST_OK) goto done;
     v = mem_array(c.n_rows, 3 * sizeof *v);
     if (!v) { st = NO_MEMORY(e, "a material"); goto done; }
@@ -226,7 +228,8 @@ static status profile_check(const csv *c, const char *path, double *depth, const
 status profile_read(const char *path, profile *out, error *e) {
     csv c = { 0 };
     profile p = { 0 };
-    status st = csv_read(path, &c, e);
+    status st = input_wanted(path, e);
+    if (st == ST_OK) st = csv_read(path, &c, e);
     if (st != ST_OK) goto done;
     p.depth_nm = mem_array(c.n_rows, sizeof *p.depth_nm);
     p.solid = mem_array(c.n_rows, sizeof *p.solid);

@@ -9,7 +9,7 @@
 status materials_folder(char **out, error *e);
 
 /* By name ("silicon"), by a path to a CSV (wavelength_nm, n, k), or a number ("2", "2.09+0.01i").
- *   err  ST_BAD_INPUT unknown name (the known ones are listed), bad CSV (with its line); ST_IO; ST_NO_MEMORY */
+ *   err  ST_BAD_INPUT unknown name (the known ones are listed), bad CSV (with its line), no such file; ST_IO; ST_NO_MEMORY */
 status material_load(const char *name, material *out, error *e);
 
 /* Every known material: name, title, range, source, one per line for a person. */

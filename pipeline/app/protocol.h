@@ -48,7 +48,7 @@ status protocol_defaults(protocol *out, error *e);
 /* Reads a protocol file; what it does not say is as in protocol_defaults.
  *   out  untouched on failure; paths in it are joined to the file's folder
  *   err  ST_BAD_INPUT with file and line: not JSON, unknown key (with the nearest known one), wrong type, out of range,
- *        a target on no numeric column of samples.csv; ST_IO; ST_NO_MEMORY */
+ *        a target on no numeric column of samples.csv; there is no such file; ST_IO it cannot be read; ST_NO_MEMORY */
 status protocol_read(const char *path, protocol *out, error *e);
 
 /* The same from memory; `what` names the source in sentences, `folder` is what paths are relative to. */

@@ -8,6 +8,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "app/command.h"
 #include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
@@ -308,7 +309,9 @@ status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, er
 status sheet_read(const char *path, sheet *out, error *e) {
     char *bytes = NULL;
     size_t n = 0;
-    status st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e);
+    status st = input_wanted(path, e);
+    if (st != ST_OK) return st;
+    st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e);
     if (st != ST_OK) return fail_within(e, st, path);
     st = sheet_parse(bytes, n, path, out, e);
     free(bytes);

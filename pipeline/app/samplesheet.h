@@ -28,7 +28,7 @@ typedef struct {
 /* Reads and checks every row on its own.
  *   err  ST_BAD_INPUT with file, line, column, found and expected: no column `file`, an empty file cell, numbers not
  *        above 0, a time that is not ISO 8601, the same file in two rows, two heights in one sample (both lines);
- *        ST_IO; ST_NO_MEMORY. out untouched on failure */
+ *        there is no such file; ST_IO it cannot be read; ST_NO_MEMORY. out untouched on failure */
 status sheet_read(const char *path, sheet *out, error *e);
 status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, error *e);
 

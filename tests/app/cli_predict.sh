@@ -91,6 +91,6 @@ run 2 predict --profile "$work/solid.csv" --height 300
 printf 'depth_nm,solid_fraction\n0,0\n100,1.5\n' >"$work/bad.csv"
 run 2 predict --profile "$work/bad.csv"
 says "$err" "line 3, solid_fraction: found 1.5"
-run 1 predict --profile "$work/none.csv"
-run 1 predict --protocol "$work/none.json" --spacing 300 --height 300
+run 2 predict --profile "$work/none.csv"
+run 2 predict --protocol "$work/none.json" --spacing 300 --height 300
 cli_done

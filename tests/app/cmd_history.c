@@ -98,7 +98,7 @@ int main(void) {
     snprintf(ledger, sizeof ledger, "%s/h.sqlite", folder);
     snprintf(output, sizeof output, "%s/out.txt", folder);
     char *text = run(&code, NULL, NULL, NULL);
-    CHECK(code == EXIT_FAILED && text && !text[0] && !file_exists(ledger)); /* looking makes no ledger */
+    CHECK(code == EXIT_USAGE && text && !text[0] && !file_exists(ledger)); /* looking makes no ledger */
     free(text);
     fill_ledger();
     prints_json();

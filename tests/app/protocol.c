@@ -248,6 +248,6 @@ int main(void) {
     fingerprint("{}", "{ \"optics\": { \"coatings\": [ { \"material\": 2, \"thickness_nm\": 3 } ] } }", 1, 0);
     explains();
     options();
-    CHECK_FAILS(protocol_read("no/such/protocol.json", &p, &e), ST_IO, e, "no/such/protocol.json");
+    CHECK_FAILS(protocol_read("no/such/protocol.json", &p, &e), ST_BAD_INPUT, e, "no/such/protocol.json");
     return check_done();
 }

@@ -59,7 +59,7 @@ static void names_each_mistake(void) {
                "s.csv lines 2 and 5 give the sample 'S1' two heights (300 and 301 nm)");
     sheet s = { 0 };
     error e = { ST_OK, "" };
-    CHECK_FAILS(sheet_read("no/such/sheet.csv", &s, &e), ST_IO, e, "no/such/sheet.csv");
+    CHECK_FAILS(sheet_read("no/such/sheet.csv", &s, &e), ST_BAD_INPUT, e, "no/such/sheet.csv");
 }
 
 static void matches_files(void) {
