@@ -196,10 +196,13 @@ static int paper(const view *v, size_t t) {
 /* Are the rows from an unsure beginning to a sure one specimen? They are when they are shaded, or when they are no mere
  * line and have another level than the paper below; a line within a strip has the same paper around it. */
 static int is_specimen(const view *v, size_t unsure, size_t sure) {
-    block_facts b = describe_block(v, unsure, sure);
     long small = 0, large = 0;
-    for (int k = 0; k < PARTS; k++) small += b.small[k], large += b.large[k];
-    if (small >= 20 && small > large) return 1;
+    for (size_t y = unsure; y < sure; y++) {
+        const row_facts *f = &v->rows[y - v->first];
+        for (int k = 0; k < PARTS; k++) small += f->small_in[k];
+        large += f->large;
+    }
+    if (small >= 8 && small > large) return 1;
     return sure - unsure > 4 && abs(paper(v, sure) - v->rows[unsure - v->first].mode) > v->window;
 }
 
