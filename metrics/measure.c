@@ -19,6 +19,7 @@
 #include "metrics/fitness.h"
 #include "metrics/neighbours.h"
 #include "metrics/relief.h"
+#include "metrics/scale.h"
 #include "metrics/spacing.h"
 #include "metrics/statistics.h"
 #include "metrics/watershed.h"
@@ -34,7 +35,8 @@ typedef struct {
     double noise; /* sd, grey */
     acf2d plain;
     first_scale first;
-    double d; /* scale of the features, or NAN */
+    int second_look; /* the first scale shows only without the large-scale brightness */
+    double d;        /* scale of the features, or NAN */
     detection det;
     texture t;
 } job;
@@ -110,6 +112,13 @@ static status plain_stage(job *j, error *e) {
     if (st != ST_OK) return st;
     curve *c = curve_take(&j->t, &made, "acf", "px", "1");
     spacing_first_scale(c, nx, ny, &j->first);
+    if (!(j->first.z >= j->o->min_ring_z)) {
+        first_scale second;
+        st = scale_without_background(j->f, nx, ny, j->o->min_ring_z, &second, e);
+        if (st != ST_OK) return st;
+        j->second_look = second.scale_px > 0.0;
+        if (j->second_look) j->first = second;
+    }
     j->t.ring_z = j->first.z;
     double angle = MISSING;
     texture_decay(&j->plain, 0.2, &j->t.sal, &j->t.str, &angle);
@@ -251,14 +260,29 @@ static status scaled_stages(job *j, error *e) {
     return st;
 }
 
+/* Parts of u that other stages leave open: repeatability of the two figures of the spectrum, measured on
+ * repeated renders. */
+static void complete_uncertainties(texture *t) {
+    double n = t->n_features > 1 ? (double)t->n_features : 1.0;
+    if (isfinite(t->sharpness.value) && !isfinite(t->sharpness.u_sampling))
+        t->sharpness.u_sampling = 0.1 * t->spacing_hex.value / sqrt(n);
+    if (isfinite(t->noise_rel.value) && !isfinite(t->noise_rel.u_sampling))
+        t->noise_rel.u_sampling = t->noise_rel.value / sqrt(2.0 * n);
+}
+
 static void judge(job *j, const sharpness *s) {
+    const double low_order = 1.5, known_ratio = 0.15, wide_gsd = 1.35;
     texture *t = &j->t;
-    if (t->spacing_acf.n) statistics_method(t, &j->det);
+    statistics_method(t, &j->det);
     fitness_judge(s, j->p, j->o, t);
-    double hex = t->spacing_hex.value, acf = t->spacing_acf.value, order = t->clark_evans.value;
-    if (order < 1.5) t->flags |= FLAG(LOW_ORDER);
-    if (fabs(acf / hex - 1.0) > 0.15) t->flags |= FLAG(CONTRADICTION);
-    if (t->size_gsd.value > 1.35) t->flags |= FLAG(WIDE_SIZES);
+    complete_uncertainties(t);
+    if (t->clark_evans.value < low_order) t->flags |= FLAG(LOW_ORDER);
+    if (fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > known_ratio)
+        t->flags |= FLAG(CONTRADICTION);
+    if (t->size_gsd.value > wide_gsd) t->flags |= FLAG(WIDE_SIZES);
+    /* A scale that only the second look showed must lead to a texture that agrees with itself. */
+    if (j->second_look && (t->flags & (FLAG(CONTRADICTION) | FLAG(WIDE_SIZES) | FLAG(RELIEF_UNSURE))))
+        t->reasons |= FLAG(NO_RING);
 }
 
 static status run(job *j, error *e) {
