@@ -71,8 +71,8 @@ void graded_walk(const slabs *s, const mixer *m, const double *k0, channel *c, s
     for (size_t j = 0; j < n_channels; j++) c[j].x = c[j].start;
     for (size_t k = s->n; k-- > 0;) {
         const double *share = s->share + k * 2 * s->kinds;
-        mixing_at(m, share, &plane[0], &axis[0]);
-        mixing_at(m, share + s->kinds, &plane[1], &axis[1]);
+        mixing_at(m, share + s->kinds, k + 1 < s->n ? &plane[0] : NULL, &plane[1], &axis[1]); /* upwards */
+        mixing_at(m, share, &plane[1], &plane[0], &axis[0]);
         for (size_t j = 0; j < n_channels; j++)
             if (c[j].p_polarized)
                 walk_p(&plane[0], &plane[1], &axis[0], &axis[1], c[j].s2, k0, s->thickness_nm[k], m->n, &c[j].x);

@@ -1,7 +1,7 @@
 /* Mixing rules for the permittivity.
  *   Bruggeman (1935) Ann. Phys. 416, 636, in 2 and 3 dimensions: all phases alike. Two phases: a quadratic; with
  *     g = sqrt(e1) sqrt(e2) and x = e/g its roots multiply to -1 (2-D) or -1/2 (3-D), so exactly one has Re x > 0,
- *     the physical one, also without absorption. More phases: Newton, the root inside the cone of the phases.
+ *     the physical one, also without absorption. More phases: bruggeman.c.
  *   Maxwell Garnett (1904) Phil. Trans. A 203, 385: inclusions in a host (the solid in the ambient, or for pores
  *     everything else in the solid).
  *   Looyenga (1965) Physica 31, 401: mean of the cube roots. Volume: plain mean (upper Wiener bound).
@@ -11,7 +11,7 @@
 
 #include <assert.h>
 
-#include "base/quantity.h"
+#include "optics/bruggeman.h"
 
 int mixing_uniaxial(mixing rule) { return rule == MIX_BRUGGEMAN_2D || rule == MIX_MAXWELL_GARNETT_2D; }
 
@@ -52,6 +52,17 @@ static void prepare_pair(mixer *m, size_t i) {
     }
 }
 
+/* Many phases: what a phase adds in proportion to its share. */
+static double complex phase_part(const mixer *m, size_t p, size_t i) {
+    double complex e = lane_get(&m->eps[p], i), host = lane_get(&m->eps[m->pores ? 1 : 0], i);
+    switch (m->rule) {
+    case MIX_LOOYENGA: return cube_root(e);
+    case MIX_MAXWELL_GARNETT_2D:
+    case MIX_MAXWELL_GARNETT_3D: return (e - host) / (e + (mixing_dimensions(m->rule) - 1) * host);
+    default: return clog(e);
+    }
+}
+
 void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n) {
     assert(phases >= 2 && phases <= MIX_PHASES && n <= LANES);
     m->rule = rule;
@@ -60,10 +71,7 @@ void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n) {
     m->n = n;
     for (size_t i = 0; i < n; i++) {
         prepare_pair(m, i);
-        for (size_t p = 0; p < phases && phases > 2; p++) {
-            double complex e = lane_get(&m->eps[p], i);
-            m->root[p][i] = rule == MIX_LOOYENGA ? cube_root(e) : clog(e);
-        }
+        for (size_t p = 0; p < phases && phases > 2; p++) lane_set(&m->part[p], i, phase_part(m, p, i));
     }
 }
 
@@ -160,100 +168,61 @@ HOT static void plain_mean(const mixer *m, double ambient, const double *share, 
         }
 }
 
-double complex mixing_bruggeman_residual(const double complex *eps, const double *f, size_t phases, int dimensions,
-                                         double complex e) {
-    double complex sum = 0.0;
-    for (size_t p = 0; p < phases; p++) sum += f[p] * ((eps[p] - e) / (eps[p] + (dimensions - 1) * e));
-    return sum;
-}
-
-static double complex bruggeman_newton(const double complex *eps, const double *f, size_t phases, int dimensions,
-                                       double complex e) {
-    for (int turn = 0; turn < 40; turn++) {
-        double complex sum = 0.0, slope = 0.0;
-        for (size_t p = 0; p < phases; p++) {
-            double complex den = 1.0 / (eps[p] + (dimensions - 1) * e);
-            sum += f[p] * ((eps[p] - e) * den);
-            slope -= f[p] * (dimensions * eps[p] * den * den);
+/* Sum of share times part over the phases. */
+HOT static void sum_parts(const mixer *m, const double *f, lanes *restrict out) {
+    for (size_t i = 0; i < m->n; i++) out->re[i] = out->im[i] = 0.0;
+    for (size_t p = 0; p < m->phases; p++)
+        for (size_t i = 0; i < m->n; i++) {
+            out->re[i] += f[p] * m->part[p].re[i];
+            out->im[i] += f[p] * m->part[p].im[i];
         }
-        double complex next = e - sum / slope;
-        double moved = cabs(next - e);
-        e = next;
-        if (moved <= 4e-16 * cabs(e)) break;
+}
+
+/* Host e_h and summed polarisability s: e = e_h (1 + (d - 1) s)/(1 - s). */
+HOT static void many_maxwell_garnett(const mixer *m, double more, lanes *restrict out) {
+    const lanes *host = &m->eps[m->pores ? 1 : 0];
+    for (size_t i = 0; i < m->n; i++) {
+        double nr = 1.0 + more * out->re[i], ni = more * out->im[i], dr = 1.0 - out->re[i], di = -out->im[i];
+        double q = 1.0 / (dr * dr + di * di), xr = (nr * dr + ni * di) * q, xi = (ni * dr - nr * di) * q;
+        out->re[i] = host->re[i] * xr - host->im[i] * xi;
+        out->im[i] = host->re[i] * xi + host->im[i] * xr;
     }
-    return e;
 }
 
-/* The physical root lies in the cone that the phases span (its argument between theirs) and is the only one there;
- * the margin covers rounding alone. */
-static int in_cone(const double complex *eps, const double *f, size_t phases, double complex e) {
-    double lo = PI, hi = -PI, margin = 1e-9;
-    for (size_t p = 0; p < phases; p++)
-        if (f[p] > 0.0) {
-            double angle = carg(eps[p]);
-            lo = fmin(lo, angle);
-            hi = fmax(hi, angle);
-        }
-    double angle = carg(e);
-    return angle >= lo - margin && angle <= hi + margin;
-}
-
-static double complex bruggeman_many(const double complex *eps, const double *f, size_t phases, int dimensions,
-                                     double complex start) {
-    double complex e = bruggeman_newton(eps, f, phases, dimensions, start);
-    if (in_cone(eps, f, phases, e) && cabs(mixing_bruggeman_residual(eps, f, phases, dimensions, e)) < 1e-12) return e;
-    /* Newton went astray: walk there from the pure ambient, along which the physical root moves continuously. */
-    e = eps[0];
-    for (int step = 1; step <= 256; step++) {
-        double g[MIX_PHASES], part = (double)step / 256.0;
-        for (size_t p = 0; p < phases; p++) g[p] = part * f[p] + (p ? 0.0 : 1.0 - part);
-        e = bruggeman_newton(eps, g, phases, dimensions, e);
-    }
-    return e;
-}
-
-static double complex maxwell_garnett_many(const mixer *m, size_t i, const double *f, int dimensions) {
-    size_t host = m->pores ? 1 : 0;
-    double complex eh = lane_get(&m->eps[host], i), sum = 0.0;
-    for (size_t p = 0; p < m->phases; p++) {
-        double complex e = lane_get(&m->eps[p], i);
-        if (p != host) sum += f[p] * ((e - eh) / (e + (dimensions - 1) * eh));
-    }
-    return eh * (1.0 + (dimensions - 1) * sum) / (1.0 - sum);
-}
-
-static double complex looyenga_many(const mixer *m, size_t i, const double *f) {
-    double complex c = 0.0;
-    for (size_t p = 0; p < m->phases; p++) c += f[p] * m->root[p][i];
-    return c * c * c;
-}
-
-static double complex mix_many(const mixer *m, size_t i, const double *f) {
-    double complex eps[MIX_PHASES], start = 0.0;
+/* f[phases] shares of all phases. */
+static void mix_many(const mixer *m, const double *f, const lanes *near, lanes *out) {
     int dimensions = mixing_dimensions(m->rule);
-    if (m->rule == MIX_LOOYENGA) return looyenga_many(m, i, f);
-    if (m->rule == MIX_MAXWELL_GARNETT_2D || m->rule == MIX_MAXWELL_GARNETT_3D)
-        return maxwell_garnett_many(m, i, f, dimensions);
-    for (size_t p = 0; p < m->phases; p++) {
-        eps[p] = lane_get(&m->eps[p], i);
-        start += f[p] * m->root[p][i]; /* the geometric mean lies in the cone */
+    if (m->rule == MIX_MAXWELL_GARNETT_2D || m->rule == MIX_MAXWELL_GARNETT_3D) {
+        sum_parts(m, f, out);
+        many_maxwell_garnett(m, dimensions - 1, out);
+    } else if (m->rule == MIX_LOOYENGA) {
+        sum_parts(m, f, out);
+        for (size_t i = 0; i < m->n; i++) {
+            double complex c = lane_get(out, i);
+            lane_set(out, i, c * c * c);
+        }
+    } else {
+        if (near) *out = *near;
+        else { /* the geometric mean lies in the cone of the phases */
+            sum_parts(m, f, out);
+            for (size_t i = 0; i < m->n; i++) lane_set(out, i, cexp(lane_get(out, i)));
+        }
+        bruggeman_solve(m->eps, f, m->phases, dimensions, m->n, out);
     }
-    return bruggeman_many(eps, f, m->phases, dimensions, cexp(start));
 }
 
-void mixing_at(const mixer *m, const double *share, lanes *in_plane, lanes *axis) {
+void mixing_at(const mixer *m, const double *share, const lanes *near, lanes *in_plane, lanes *axis) {
     double f[MIX_PHASES], covered = 0.0;
-    size_t present = 0;
+    int coated = 0;
     for (size_t p = 1; p < m->phases; p++) {
         f[p] = share[p - 1];
         covered += share[p - 1];
-        if (p > 1 && f[p] > 0.0) present++;
+        coated = coated || (p > 1 && f[p] > 0.0);
     }
     f[0] = fmax(0.0, 1.0 - covered);
-    int pure = !present && (share[0] <= 0.0 || share[0] >= 1.0); /* exactly the phase, no rounding of a root */
+    int pure = !coated && (share[0] <= 0.0 || share[0] >= 1.0); /* exactly the phase, no rounding of a root */
     if (m->rule == MIX_VOLUME || pure) plain_mean(m, f[0], share, in_plane);
-    else if (present)
-        for (size_t i = 0; i < m->n; i++) lane_set(in_plane, i, mix_many(m, i, f));
+    else if (coated) mix_many(m, f, near, in_plane);
     else if (m->rule == MIX_BRUGGEMAN_2D) pair_bruggeman_2d(m, share[0], in_plane);
     else if (m->rule == MIX_BRUGGEMAN_3D) pair_bruggeman_3d(m, share[0], in_plane);
     else if (m->rule == MIX_LOOYENGA) pair_looyenga(m, share[0], in_plane);

@@ -14,7 +14,8 @@ typedef struct {
     size_t n, phases;        /* lanes in use; >= 2 */
     lanes eps[MIX_PHASES];
     lanes a, b, c;           /* what the two-phase formula of the rule needs per wavelength */
-    double complex root[MIX_PHASES][LANES]; /* cube roots (Looyenga) or logarithms (start of Bruggeman), >= 3 phases */
+    lanes part[MIX_PHASES];  /* >= 3 phases, what a phase adds in proportion to its share: cube root (Looyenga),
+                                polarisability (Maxwell Garnett), logarithm (start of Bruggeman) */
 } mixer;
 
 /*   in   eps[phases][n] via m->eps, filled by the caller; Im >= 0
@@ -22,14 +23,12 @@ typedef struct {
 void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n);
 
 /* share[phases - 1]: solid, then coatings; the ambient has the rest.
+ *   in   near: NULL, or the in-plane values of a mixture nearby, from where the search of a Bruggeman root with three
+ *        and more phases starts; the answer is the same to rounding
  *   out  in_plane permittivity across the normal; axis along it (same as in_plane for the isotropic rules) */
-void mixing_at(const mixer *m, const double *share, lanes *in_plane, lanes *axis);
+void mixing_at(const mixer *m, const double *share, const lanes *near, lanes *in_plane, lanes *axis);
 
 /* True for the two-dimensional rules: the mixture is uniaxial, arithmetic mean along the axis. */
 int mixing_uniaxial(mixing rule);
-
-/* Left side of the Bruggeman equation, sum of f_i (e_i - e)/(e_i + (d - 1) e): 0 at the answer. */
-double complex mixing_bruggeman_residual(const double complex *eps, const double *f, size_t phases, int dimensions,
-                                         double complex e);
 
 #endif

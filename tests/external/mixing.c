@@ -1,6 +1,7 @@
 /* Mixing rules against tables computed independently from the published formulas (G-50, G-51), and their laws: ends
  * (G-52), duality (G-53, G-54), bounds (G-55), dilute limit (G-56), branch and passivity (G-57), percolation (G-58),
  * three and more phases. */
+#include "optics/bruggeman.h"
 #include "optics/mixing.h"
 
 #include "base/quantity.h"
@@ -14,7 +15,7 @@ static double complex mixed(mixing rule, int pores, double complex air, double c
     lane_set(&m.eps[0], 0, air);
     lane_set(&m.eps[1], 0, solid);
     mixing_prepare(&m, rule, pores, 2, 1);
-    mixing_at(&m, &f, &plane, &axis);
+    mixing_at(&m, &f, NULL, &plane, &axis);
     return lane_get(&plane, 0);
 }
 
@@ -22,7 +23,7 @@ static double complex mixed_many(mixing rule, int pores, const double complex *e
     lanes plane, axis;
     for (size_t p = 0; p < phases; p++) lane_set(&m.eps[p], 0, eps[p]);
     mixing_prepare(&m, rule, pores, phases, 1);
-    mixing_at(&m, share, &plane, &axis);
+    mixing_at(&m, share, NULL, &plane, &axis);
     return lane_get(&plane, 0);
 }
 
@@ -131,7 +132,7 @@ static void laws(void) {
             double both[] = { 1 - f, f };
             for (int d = 2; d <= 3; d++) {
                 double complex e = mixed(d == 2 ? MIX_BRUGGEMAN_2D : MIX_BRUGGEMAN_3D, 0, 1.7, solid, f);
-                CHECK_SOURCE(cabs(mixing_bruggeman_residual(eps, both, 2, d, e)), 0, 1e-12, "G-51 Bruggeman (1935)");
+                CHECK_SOURCE(cabs(bruggeman_residual(eps, both, 2, d, e)), 0, 1e-12, "G-51 Bruggeman (1935)");
             }
         }
     }
@@ -221,6 +222,37 @@ static double bisected(const double *eps, const double *f, size_t n, int d) { /*
     return 0.5 * (lo + hi);
 }
 
+/* All roots of the Bruggeman equation of three phases at once (Durand 1960, Kerner 1966) from its cubic; how many lie
+ * in the cone of the phases, and which one. */
+static int roots_in_cone(const double complex *eps, const double *f, int d, double complex *inside) {
+    double complex cubic[4] = { 0 }, root[3] = { 0.4 + 0.9 * complex_of(0, 1), 0, 0 };
+    for (int p = 0; p < 3; p++) { /* f_p (e_p - e) times the other two (e_q + (d - 1) e) */
+        double complex a = eps[(p + 1) % 3], b = eps[(p + 2) % 3];
+        double g = d - 1;
+        double complex other[3] = { a * b, g * (a + b), g * g };
+        for (int k = 0; k < 3; k++) {
+            cubic[k] += f[p] * eps[p] * other[k];
+            cubic[k + 1] -= f[p] * other[k];
+        }
+    }
+    double scale = cabs(eps[1]);
+    root[1] = root[0] * root[0] * scale, root[2] = root[0] * root[0] * root[0] * scale, root[0] *= scale;
+    for (int turn = 0; turn < 500; turn++)
+        for (int i = 0; i < 3; i++) {
+            double complex value = ((cubic[3] * root[i] + cubic[2]) * root[i] + cubic[1]) * root[i] + cubic[0];
+            root[i] -= value / (cubic[3] * (root[i] - root[(i + 1) % 3]) * (root[i] - root[(i + 2) % 3]));
+        }
+    int found = 0;
+    for (int i = 0; i < 3; i++) {
+        double lo = PI, hi = 0, angle = carg(root[i]);
+        for (int p = 0; p < 3; p++) lo = fmin(lo, carg(eps[p])), hi = fmax(hi, carg(eps[p]));
+        if (angle < lo - 1e-9 || angle > hi + 1e-9) continue;
+        found++;
+        *inside = root[i];
+    }
+    return found;
+}
+
 static void many_phases(void) {
     double real[] = { 1, 15, 4, 2.1 }, share[] = { 0.2, 0.3, 0.35, 0.15 };
     double complex eps[4] = { 1, 15, 4, 2.1 };
@@ -243,7 +275,10 @@ static void many_phases(void) {
                 f[1] = u[0], f[2] = (1 - u[0]) * u[1], f[0] = 1 - f[1] - f[2];
                 double complex three[] = { 1, eps_of(i), complex_of(4 + 3 * u[2], 0.4 * u[2]) };
                 double complex e = mixed_many(b, 0, three, f + 1, 3);
-                CHECK_SOURCE(cabs(mixing_bruggeman_residual(three, f, 3, d, e)), 0, 1e-12, "Bruggeman (1935), three phases");
+                CHECK_SOURCE(cabs(bruggeman_residual(three, f, 3, d, e)), 0, 1e-12, "Bruggeman (1935), three phases");
+                double complex only = 0;
+                CHECK(roots_in_cone(three, f, d, &only) == 1);
+                CHECK_SOURCE(cabs(e / only - 1), 0, 1e-9, "the one root of the cubic in the cone of the phases");
                 CHECK(cimag(e) >= 0 && creal(csqrt(e)) > 0 && cabs(e) <= cabs(three[1]) * (1 + 1e-12));
                 /* A coating of the solid's or the ambient's own material is no third phase. */
                 double complex same[] = { 1, eps_of(i), eps_of(i) }, bare[] = { 1, eps_of(i), 1 };
