@@ -206,7 +206,7 @@ static void print_json(const surface_input *in, const prediction *r, textbuf *ou
     text_add(out, "},\n  \"budget\": {");
     for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
         text_addf(out, "%s\"%s\": ", i ? ", " : "", parts[i].name);
-        json_number(out, parts[i].v, 3);
+        json_number(out, isfinite(r->weighted_lo) ? parts[i].v : MISSING, 3); /* no interval, no budget */
     }
     text_add(out, "},\n  \"note\": ");
     json_string(out, r->note);

@@ -302,6 +302,9 @@ static void wire(const protocol *p, setup *s) {
 
 status setup_make(const protocol *p, setup *out, error *e) {
     *out = (setup){ 0 };
+    if (p->profile && p->n_coatings)
+        return fail(e, ST_BAD_INPUT, "a measured profile says nothing of where a coating lies; take the coatings out, or give height "
+                    "and shape instead of the profile");
     status st = load_all(p, out, e);
     if (st == ST_OK) st = check_band(p, out, e);
     if (st == ST_OK) wire(p, out);

@@ -27,7 +27,8 @@ typedef struct {
     optics_setup optics;     /* ready for predict() */
 } setup;                     /* {0} = empty */
 
-/*   err  as material_load, profile_read; ST_BAD_INPUT a band outside a material's table */
+/*   err  as material_load, profile_read; ST_BAD_INPUT a band outside a material's table, coatings on a
+ *        measured profile */
 status setup_make(const protocol *p, setup *out, error *e);
 void setup_free(setup *s);
 

@@ -88,6 +88,8 @@ run 2 predict --spacing 350 --height 300 --shape pyramid
 run 2 predict 350 300
 says "$err" "is no option"
 run 2 predict --profile "$work/solid.csv" --height 300
+run 2 predict --profile "$work/solid.csv" --coating alumina:10
+says "$err" "take the coatings out"
 printf 'depth_nm,solid_fraction\n0,0\n100,1.5\n' >"$work/bad.csv"
 run 2 predict --profile "$work/bad.csv"
 says "$err" "line 3, solid_fraction: found 1.5"

@@ -110,6 +110,11 @@ static void makes_setups(void) {
     CHECK(one.s && two.s && strcmp(one.s, two.s) != 0);
     setup_free(&s);
     setup_free(&s);
+    CHECK(protocol_set(&p, "link", "profile", "depth.csv", "--profile", &e) == ST_OK);
+    CHECK_FAILS(setup_make(&p, &s, &e), ST_BAD_INPUT, e, "take the coatings out");
+    free(p.profile);
+    p.profile = NULL;
+    e = (error){ ST_OK, "" };
     CHECK(protocol_set(&p, "optics", "band_nm", "200:1200", "--band", &e) == ST_OK);
     CHECK_FAILS(setup_make(&p, &s, &e), ST_BAD_INPUT, e, "200");
     CHECK(s.substrate.n == 0);
@@ -124,7 +129,7 @@ static void survives_no_memory(void) {
     protocol p = { 0 };
     error e = { ST_OK, "" };
     CHECK(protocol_defaults(&p, &e) == ST_OK);
-    CHECK(protocol_set(&p, "optics", "coatings", "2.1+0.1i:20", "--coating", &e) == ST_OK);
+    CHECK(protocol_set(&p, "optics", "ambient", "2.1+0.1i", "--ambient", &e) == ST_OK);
     CHECK(protocol_set(&p, "link", "profile", file("p.csv", "depth_nm,solid_fraction\n0,0\n9,1\n"), "--profile", &e) == ST_OK);
     for (size_t n = 1; n < 40000 && st != ST_OK; n += n < 40 ? 1 : 97) {
         setup s = { 0 };
