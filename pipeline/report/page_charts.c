@@ -88,11 +88,12 @@ static void from_ledger(etches *t, const cJSON *list) {
     }
 }
 
-/* Samples without a time come last; equal times keep the order of the rows. */
-static int comes_before(const sample_row *a, const sample_row *b) {
-    const char *p = text_or_empty(a->etched_at), *q = text_or_empty(b->etched_at);
-    if (!*p || !*q) return *p && !*q;
-    return strcmp(p, q) < 0;
+/* Samples without a time come last; equal times keep the order of the rows (the pointers are into one array). */
+static int by_time(const void *a, const void *b) {
+    const sample_row *p = *(const sample_row *const *)a, *q = *(const sample_row *const *)b;
+    const char *s = text_or_empty(p->etched_at), *t = text_or_empty(q->etched_at);
+    int order = !*s || !*t ? !*s - !*t : strcmp(s, t);
+    return order ? order : (p > q) - (p < q);
 }
 
 static void from_samples(etches *t, const results *r, textbuf *out) {
@@ -101,11 +102,8 @@ static void from_samples(etches *t, const results *r, textbuf *out) {
         out->failed = 1;
         return;
     }
-    for (size_t i = 0; i < r->n_samples; i++) {
-        size_t k = i;
-        for (; k > 0 && comes_before(&r->samples[i], order[k - 1]); k--) order[k] = order[k - 1];
-        order[k] = &r->samples[i];
-    }
+    for (size_t i = 0; i < r->n_samples; i++) order[i] = &r->samples[i];
+    qsort(order, r->n_samples, sizeof(sample_row *), by_time);
     for (size_t i = 0; i < r->n_samples; i++) {
         const sample_row *s = order[i];
         add_etch(t, s->sample, s->etched_at, s->spacing_nm, s->spacing_nm_u, s->weighted_reflectance, s->verdict);

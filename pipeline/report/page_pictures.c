@@ -14,7 +14,8 @@
 #include "report/thumbnail.h"
 
 enum { THUMB_WIDTH = 640, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16, DETAIL_NX = 220, DETAIL_NY = 165 };
-static const size_t picture_budget = (size_t)9 << 20; /* bytes of embedded pictures */
+enum { MAX_CARDS = 500 };
+static const size_t picture_budget = (size_t)6 << 20; /* bytes of embedded pictures */
 
 void page_flags(textbuf *out, const char *words) {
     size_t n = 0;
@@ -152,11 +153,15 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
 static size_t thumb_width(const results *r) {
     size_t n = 0;
     for (size_t i = 0; r->overlay_paths && i < r->n_images; i++) n += r->overlay_paths[i] != NULL;
+    if (n > MAX_CARDS) n = MAX_CARDS;
     if (n <= FULL_SIZE_PICTURES) return THUMB_WIDTH;
     size_t width = (size_t)(THUMB_WIDTH * sqrt((double)FULL_SIZE_PICTURES / (double)n));
     return width < THUMB_LEAST ? THUMB_LEAST : width;
 }
 
+static int is_used(const image_row *m) { return m->status && !strcmp(m->status, "ok"); }
+
+/* All that were not used are shown, whatever their number; of the others as many as a page can bear. */
 void page_pictures(const results *r, const char *out_dir, textbuf *out) {
     size_t spent = 0, width = thumb_width(r);
     text_add(out, "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you trust the "
@@ -165,6 +170,20 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
                   "</li><li>thin lines: cells, faint where the frame cuts them</li><li>dashes: guard frame</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
     text_add(out, "<div class=\"cards\">\n");
-    for (size_t i = 0; i < r->n_images; i++) add_card(r, i, out_dir, width, &spent, out);
-    text_add(out, "</div></section>\n");
+    size_t room = MAX_CARDS, left_out = 0;
+    for (size_t i = 0; i < r->n_images; i++) if (room && !is_used(&r->images[i])) room--;
+    for (size_t i = 0; i < r->n_images; i++) {
+        int used = is_used(&r->images[i]);
+        if (used && !room) {
+            left_out++;
+            continue;
+        }
+        if (used) room--;
+        add_card(r, i, out_dir, width, &spent, out);
+    }
+    text_add(out, "</div>\n");
+    if (left_out)
+        text_addf(out, "<p class=\"small\">%zu more micrographs were used and are not shown here; images.csv lists them "
+                       "all.</p>\n", left_out);
+    text_add(out, "</section>\n");
 }

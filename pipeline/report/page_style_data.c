@@ -70,7 +70,7 @@ static const char pictures[] =
     ".inputs td{overflow-wrap:anywhere;min-width:80px}footer{padding:40px 24px 50px;color:var(--soft);font-size:13.5px}\n";
 static const char narrow_and_print[] =
     "@media (max-width:560px){header,main,footer{padding-left:14px;padding-right:14px}h1{font-size:24px}body{font-size:15px}"
-    ".headline{grid-template-columns:1fr 1fr}.facts{grid-template-columns:1fr}}\n"
+    ".headline{grid-template-columns:1fr 1fr}th,td{padding-right:9px}tbody.sample td:first-child{padding-left:6px}.facts{grid-template-columns:1fr}}\n"
     "@media print{:root{--paper:#fff;--sheet:#fff;--ink:#000;--soft:#333;--rule:#bbb;--blue:#124f8a;--teal:#005a52;"
     "--amber:#7a4400;--red:#8f1f12;--teal-bg:#fff;--amber-bg:#fff;--red-bg:#fff;--grey-bg:#fff}\n"
     "body{font-size:10pt}header,main,footer{max-width:none;padding:0}nav{display:none}.badge{border:1px solid}\n"
