@@ -1,5 +1,5 @@
-/* Materials and sun for the tests of optics: reads the CSV files of pipeline/optics/materials without help from
- * the io room, so that a test of optics rests on optics alone. Exits the test when a file is missing. */
+/* Materials and sun for the tests of optics: reads the CSV files of pipeline/optics/materials without help
+ * from the io room, so that a test of optics rests on optics alone. Exits the test when a file is missing. */
 #ifndef SWARD_TESTS_OPTICS_DATA_H
 #define SWARD_TESTS_OPTICS_DATA_H
 #include <math.h>
@@ -78,21 +78,24 @@ static inline double data_R(const stack *s, double wavelength_nm, double angle_d
 }
 
 /* Weighted R on an even grid. */
-static inline double data_weighted(const stack *s, const reflect_options *o, const sun *light, double lo, double hi,
-                                   double step) {
+static inline double data_weighted(const stack *s, const reflect_options *o, const sun *light, double lo,
+                                   double hi, double step) {
     static double w[2000], R[2000];
     error e = { 0 };
     double mean = (double)NAN;
     size_t n = (size_t)lround((hi - lo) / step) + 1;
     for (size_t i = 0; i < n; i++) w[i] = lo + step * (double)i;
-    if (reflectance(s, o, w, n, R, NULL, &e) || sun_weighted(light, w, R, n, lo, hi, &mean, &e)) printf("%s\n", e.text);
+    if (reflectance(s, o, w, n, R, NULL, &e) || sun_weighted(light, w, R, n, lo, hi, &mean, &e))
+        printf("%s\n", e.text);
     return mean;
 }
 
 /* A texture of height h sampled from f(t), t = depth/height, 0 at the tips. */
 static inline profile data_profile(double height_nm, size_t nodes, double (*f)(double t, const void *context),
                                    const void *context) {
-    profile p = { .n = nodes, .depth_nm = malloc(nodes * sizeof(double)), .solid = malloc(nodes * sizeof(double)) };
+    profile p = { .n = nodes,
+                  .depth_nm = malloc(nodes * sizeof(double)),
+                  .solid = malloc(nodes * sizeof(double)) };
     for (size_t i = 0; i < nodes && p.depth_nm && p.solid; i++) {
         double t = (double)i / (double)(nodes - 1);
         p.depth_nm[i] = height_nm * t;

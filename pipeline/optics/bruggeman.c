@@ -1,12 +1,14 @@
-/* The Bruggeman equation (1935, Ann. Phys. 416, 636) for three and more phases in two or three dimensions: Newton on
- * all wavelengths of a block at once. Of the roots, as many as phases, the physical one lies in the cone that the
- * phases span in the complex plane (a mean cannot have more loss, or less, than every part); tests/external/mixing.c
- * finds by computing all roots that it is the only one there. Each answer is looked at; where Newton went astray,
- * the root is followed from the pure ambient, along which it moves continuously. */
+/* The Bruggeman equation (1935, Ann. Phys. 416, 636) for three and more phases in two or three dimensions:
+ * Newton on all wavelengths of a block at once. Of the roots, as many as phases, the physical one lies in the
+ * cone that the phases span in the complex plane (a mean cannot have more loss, or less, than every part);
+ * tests/external/mixing.c finds by computing all roots that it is the only one there. Each answer is looked
+ * at; where Newton went astray, the root is followed from the pure ambient, along which it moves
+ * continuously. */
 #include "optics/bruggeman.h"
 
 enum { MAX_TURNS = 30, PATH_STEPS = 256, PATH_PHASES = 16 };
-static const double SETTLED = 1e-18; /* square of the last relative move: the next would be its square again */
+static const double SETTLED =
+    1e-18; /* square of the last relative move: the next would be its square again */
 
 double complex bruggeman_residual(const double complex *eps, const double *f, size_t phases, int dimensions,
                                   double complex e) {
@@ -16,8 +18,8 @@ double complex bruggeman_residual(const double complex *eps, const double *f, si
 }
 
 /* Adds the term of one phase to the left side and to minus its slope. */
-HOT static void add_phase(const lanes *restrict eps, double f, double dimensions, size_t n, const lanes *restrict e,
-                          lanes *restrict sum, lanes *restrict slope) {
+HOT static void add_phase(const lanes *restrict eps, double f, double dimensions, size_t n,
+                          const lanes *restrict e, lanes *restrict sum, lanes *restrict slope) {
     const double others = dimensions - 1.0, weight = f * dimensions;
     for (size_t i = 0; i < n; i++) {
         double pr = eps->re[i], pi = eps->im[i], er = e->re[i], ei = e->im[i];
@@ -45,7 +47,8 @@ HOT static void take_step(const lanes *restrict sum, const lanes *restrict slope
     }
 }
 
-static void newton(const lanes *eps, const double *f, size_t phases, int dimensions, size_t n, lanes *e, double *moved) {
+static void newton(const lanes *eps, const double *f, size_t phases, int dimensions, size_t n, lanes *e,
+                   double *moved) {
     for (int turn = 0; turn < MAX_TURNS; turn++) {
         lanes sum = { .re = { 0.0 } }, slope = { .re = { 0.0 } };
         int settled = 1;
@@ -57,8 +60,8 @@ static void newton(const lanes *eps, const double *f, size_t phases, int dimensi
     }
 }
 
-/* A present phase at or below the argument of e and one at or above; all lie in the upper half plane. The margin
- * covers rounding. */
+/* A present phase at or below the argument of e and one at or above; all lie in the upper half plane. The
+ * margin covers rounding. */
 static int in_cone(const lanes *eps, const double *f, size_t phases, size_t i, double er, double ei) {
     int low = 0, high = 0;
     double size = er * er + ei * ei;

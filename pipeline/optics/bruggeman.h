@@ -8,8 +8,8 @@ double complex bruggeman_residual(const double complex *eps, const double *f, si
                                   double complex e);
 
 /* The physical root of n wavelengths.
- *   in   eps[phases] lanes, Im >= 0; f[phases] shares, sum 1; dimensions 2 or 3; e: a start, inside the cone of the phases
- *   out  e the root */
+ *   in   eps[phases] lanes, Im >= 0; f[phases] shares, sum 1; dimensions 2 or 3; e: a start, inside the cone
+ * of the phases out  e the root */
 void bruggeman_solve(const lanes *eps, const double *f, size_t phases, int dimensions, size_t n, lanes *e);
 
 #endif

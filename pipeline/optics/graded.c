@@ -1,18 +1,19 @@
 /* Reflectance of a graded, possibly uniaxial and absorbing layer, slab by slab from the substrate up.
  * Method: the fourth-order Magnus step with two Gauss points (Iserles, Norsett 1999; from memory) for
  *   (F, G)' = i k0 [[0, b], [a, 0]] (F, G),
- * written as a fractional linear map of X = G/F, so nothing grows in absorbing or evanescent slabs. tan of the phase
- * enters by its diagonal rational approximation x (1 - x^2/15)/(1 - 2 x^2/5), exact to x^7, which keeps |r| <= 1
- * and needs neither a root nor an exponential per slab. The error falls as the fourth power of the slab thickness in
- * even powers, so one Richardson step by the caller gives the sixth. Thick homogeneous films: multilayer.c. */
+ * written as a fractional linear map of X = G/F, so nothing grows in absorbing or evanescent slabs. tan of
+ * the phase enters by its diagonal rational approximation x (1 - x^2/15)/(1 - 2 x^2/5), exact to x^7, which
+ * keeps |r| <= 1 and needs neither a root nor an exponential per slab. The error falls as the fourth power of
+ * the slab thickness in even powers, so one Richardson step by the caller gives the sixth. Thick homogeneous
+ * films: multilayer.c. */
 #include "optics/graded.h"
 
 static const double COMMUTATOR = 0.14433756729740643; /* sqrt(3)/12 */
 
 /* The map of one slab for one wavelength. a, b: means over the Gauss points; w = b1 a2 - b2 a1 (1 above 2);
  * k = k0 x thickness. Written out in real numbers for the vectoriser. */
-static inline void slab_map(double k, double ar, double ai, double br, double bi, double wr, double wi, double *xr,
-                            double *xi) {
+static inline void slab_map(double k, double ar, double ai, double br, double bi, double wr, double wi,
+                            double *xr, double *xi) {
     double cr = COMMUTATOR * k * k * wr, ci = COMMUTATOR * k * k * wi;
     double dr = k * k * (ar * br - ai * bi) - (cr * cr - ci * ci); /* phase squared */
     double di = k * k * (ar * bi + ai * br) - 2.0 * cr * ci;
@@ -45,8 +46,8 @@ static inline void axis_term(double s2, double er, double ei, double *ar, double
 }
 
 HOT static void walk_p(const lanes *restrict e1, const lanes *restrict e2, const lanes *restrict z1,
-                       const lanes *restrict z2, const double *restrict s2, const double *restrict k0, double d,
-                       size_t n, lanes *restrict x) {
+                       const lanes *restrict z2, const double *restrict s2, const double *restrict k0,
+                       double d, size_t n, lanes *restrict x) {
     for (size_t i = 0; i < n; i++) {
         double a1r, a1i, a2r, a2i;
         axis_term(s2[i], z1->re[i], z1->im[i], &a1r, &a1i);
@@ -75,8 +76,10 @@ void graded_walk(const slabs *s, const mixer *m, const double *k0, channel *c, s
         mixing_at(m, share, &plane[1], &plane[0], &axis[0]);
         for (size_t j = 0; j < n_channels; j++)
             if (c[j].p_polarized)
-                walk_p(&plane[0], &plane[1], &axis[0], &axis[1], c[j].s2, k0, s->thickness_nm[k], m->n, &c[j].x);
-            else walk_s(&plane[0], &plane[1], c[j].s2, k0, s->thickness_nm[k], m->n, &c[j].x);
+                walk_p(&plane[0], &plane[1], &axis[0], &axis[1], c[j].s2, k0, s->thickness_nm[k], m->n,
+                       &c[j].x);
+            else
+                walk_s(&plane[0], &plane[1], c[j].s2, k0, s->thickness_nm[k], m->n, &c[j].x);
     }
     for (size_t j = 0; j < n_channels; j++) reflect(&c[j].ambient, &c[j].x, m->n, c[j].R[0]);
 }

@@ -1,6 +1,6 @@
 /* Optical constants of one material: nodes copied and checked once, then n and k linear in wavelength between
- * them. Nothing is extrapolated: a wavelength outside the table is an error the user can act on. A material of
- * one node is a constant index at every wavelength. The tables themselves lie in materials/ as CSV. */
+ * them. Nothing is extrapolated: a wavelength outside the table is an error the user can act on. A material
+ * of one node is a constant index at every wavelength. The tables themselves lie in materials/ as CSV. */
 #include "optics/material.h"
 
 #include <math.h>
@@ -19,12 +19,13 @@ void material_free(material *m) {
     *m = (material){ 0 };
 }
 
-static status check_node(const char *name, size_t i, const double *w, const double *n, const double *k, error *e) {
+static status check_node(const char *name, size_t i, const double *w, const double *n, const double *k,
+                         error *e) {
     char at[NUMBER_TEXT], before[NUMBER_TEXT];
     number_text(w[i], 7, at);
     if (!isfinite(w[i]) || w[i] <= 0.0)
-        return fail(e, ST_BAD_INPUT, "%s: wavelength %zu of the table is '%s', expected nm above 0", name, i + 1,
-                    at);
+        return fail(e, ST_BAD_INPUT, "%s: wavelength %zu of the table is '%s', expected nm above 0", name,
+                    i + 1, at);
     if (i && w[i] <= w[i - 1])
         return fail(e, ST_BAD_INPUT, "%s: wavelengths have to ascend, but %s nm follows %s nm", name, at,
                     number_text(w[i - 1], 7, before));
@@ -77,7 +78,8 @@ status material_copy(material *m, const material *from, error *e) {
         *m = (material){ 0 };
         return ST_OK;
     }
-    return material_make(m, from->name, from->source, from->n, from->wavelength_nm, from->index_n, from->index_k, e);
+    return material_make(m, from->name, from->source, from->n, from->wavelength_nm, from->index_n,
+                         from->index_k, e);
 }
 
 status material_at(const material *m, double wavelength_nm, double *n, double *k, error *e) {
@@ -90,15 +92,18 @@ status material_at(const material *m, double wavelength_nm, double *n, double *k
     if (!m->n || !(wavelength_nm >= w[0] && wavelength_nm <= w[m->n - 1])) {
         char lo[NUMBER_TEXT], hi[NUMBER_TEXT], at[NUMBER_TEXT];
         if (!m->n) return fail(e, ST_BAD_INPUT, "a material has no optical constants");
-        return fail(e, ST_BAD_INPUT, "%s is tabled from %s to %s nm, %s nm was asked for; choose a band inside",
-                    m->name, number_text(w[0], 7, lo), number_text(w[m->n - 1], 7, hi),
+        return fail(e, ST_BAD_INPUT,
+                    "%s is tabled from %s to %s nm, %s nm was asked for; choose a band inside", m->name,
+                    number_text(w[0], 7, lo), number_text(w[m->n - 1], 7, hi),
                     number_text(wavelength_nm, 7, at));
     }
     size_t lo = 0, hi = m->n - 1; /* w[lo] <= wavelength <= w[hi] */
     while (hi - lo > 1) {
         size_t mid = lo + (hi - lo) / 2;
-        if (w[mid] <= wavelength_nm) lo = mid;
-        else hi = mid;
+        if (w[mid] <= wavelength_nm)
+            lo = mid;
+        else
+            hi = mid;
     }
     double t = (wavelength_nm - w[lo]) / (w[hi] - w[lo]);
     *n = (1.0 - t) * m->index_n[lo] + t * m->index_n[hi]; /* exact at both nodes */

@@ -1,12 +1,11 @@
 /* Mixing rules for the permittivity.
- *   Bruggeman (1935) Ann. Phys. 416, 636, in 2 and 3 dimensions: all phases alike. Two phases: a quadratic; with
- *     g = sqrt(e1) sqrt(e2) and x = e/g its roots multiply to -1 (2-D) or -1/2 (3-D), so exactly one has Re x > 0,
- *     the physical one, also without absorption. More phases: bruggeman.c.
- *   Maxwell Garnett (1904) Phil. Trans. A 203, 385: inclusions in a host (the solid in the ambient, or for pores
- *     everything else in the solid).
- *   Looyenga (1965) Physica 31, 401: mean of the cube roots. Volume: plain mean (upper Wiener bound).
- * Columns along the normal are mixed by a two-dimensional rule in the plane and by the plain mean along the axis,
- * which is exact there. No size effects: features are taken as small against the wavelength. */
+ *   Bruggeman (1935) Ann. Phys. 416, 636, in 2 and 3 dimensions: all phases alike. Two phases: a quadratic;
+ * with g = sqrt(e1) sqrt(e2) and x = e/g its roots multiply to -1 (2-D) or -1/2 (3-D), so exactly one has Re
+ * x > 0, the physical one, also without absorption. More phases: bruggeman.c. Maxwell Garnett (1904) Phil.
+ * Trans. A 203, 385: inclusions in a host (the solid in the ambient, or for pores everything else in the
+ * solid). Looyenga (1965) Physica 31, 401: mean of the cube roots. Volume: plain mean (upper Wiener bound).
+ * Columns along the normal are mixed by a two-dimensional rule in the plane and by the plain mean along the
+ * axis, which is exact there. No size effects: features are taken as small against the wavelength. */
 #include "optics/mixing.h"
 
 #include <assert.h>
@@ -48,7 +47,8 @@ static void prepare_pair(mixer *m, size_t i) {
         lane_set(&m->a, i, cube_root(air));
         lane_set(&m->b, i, cube_root(solid));
         break;
-    case MIX_VOLUME: break;
+    case MIX_VOLUME:
+        break;
     }
 }
 
@@ -56,10 +56,13 @@ static void prepare_pair(mixer *m, size_t i) {
 static double complex phase_part(const mixer *m, size_t p, size_t i) {
     double complex e = lane_get(&m->eps[p], i), host = lane_get(&m->eps[m->pores ? 1 : 0], i);
     switch (m->rule) {
-    case MIX_LOOYENGA: return cube_root(e);
+    case MIX_LOOYENGA:
+        return cube_root(e);
     case MIX_MAXWELL_GARNETT_2D:
-    case MIX_MAXWELL_GARNETT_3D: return (e - host) / (e + (mixing_dimensions(m->rule) - 1) * host);
-    default: return clog(e);
+    case MIX_MAXWELL_GARNETT_3D:
+        return (e - host) / (e + (mixing_dimensions(m->rule) - 1) * host);
+    default:
+        return clog(e);
     }
 }
 
@@ -75,8 +78,8 @@ void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n) {
     }
 }
 
-/* Square root with Re >= 0, without branches, so that a loop of it is vectorised: the choice is a product with an
- * exact 0 or 1. Neither part suffers cancellation. */
+/* Square root with Re >= 0, without branches, so that a loop of it is vectorised: the choice is a product
+ * with an exact 0 or 1. Neither part suffers cancellation. */
 static inline void root_of(double zr, double zi, double *sr, double *si) {
     double size = sqrt(zr * zr + zi * zi);
     double big = sqrt(0.5 * (size + fabs(zr)));
@@ -87,17 +90,17 @@ static inline void root_of(double zr, double zi, double *sr, double *si) {
 }
 
 /* e = g x with x = (beta + root)/over, or the same number without cancellation where Re beta < 0,
- * x = product/((root - beta) over). One choice for all lanes: for a solid denser than the ambient the sign of Re beta
- * follows from the share, and else the contrast is small. */
-static inline void sum_upper(double gr, double gi, double br, double bi, double sr, double si, double over, double *er,
-                             double *ei) {
+ * x = product/((root - beta) over). One choice for all lanes: for a solid denser than the ambient the sign of
+ * Re beta follows from the share, and else the contrast is small. */
+static inline void sum_upper(double gr, double gi, double br, double bi, double sr, double si, double over,
+                             double *er, double *ei) {
     double xr = (br + sr) * over, xi = (bi + si) * over;
     *er = gr * xr - gi * xi;
     *ei = gr * xi + gi * xr;
 }
 
-static inline void sum_lower(double gr, double gi, double br, double bi, double sr, double si, double over, double *er,
-                             double *ei) {
+static inline void sum_lower(double gr, double gi, double br, double bi, double sr, double si, double over,
+                             double *er, double *ei) {
     double yr = sr - br, yi = si - bi, q = over / (yr * yr + yi * yi);
     *er = (gr * yr + gi * yi) * q;
     *ei = (gi * yr - gr * yi) * q;
@@ -112,12 +115,12 @@ HOT static void pair_bruggeman_2d(const mixer *m, double f, lanes *restrict out)
     }
     if (t < 0.0)
         for (size_t i = 0; i < m->n; i++)
-            sum_lower(m->a.re[i], m->a.im[i], t * m->c.re[i], t * m->c.im[i], root.re[i], root.im[i], 1.0, &out->re[i],
-                      &out->im[i]);
+            sum_lower(m->a.re[i], m->a.im[i], t * m->c.re[i], t * m->c.im[i], root.re[i], root.im[i], 1.0,
+                      &out->re[i], &out->im[i]);
     else
         for (size_t i = 0; i < m->n; i++)
-            sum_upper(m->a.re[i], m->a.im[i], t * m->c.re[i], t * m->c.im[i], root.re[i], root.im[i], 1.0, &out->re[i],
-                      &out->im[i]);
+            sum_upper(m->a.re[i], m->a.im[i], t * m->c.re[i], t * m->c.im[i], root.re[i], root.im[i], 1.0,
+                      &out->re[i], &out->im[i]);
 }
 
 HOT static void pair_bruggeman_3d(const mixer *m, double f, lanes *restrict out) {
@@ -126,14 +129,17 @@ HOT static void pair_bruggeman_3d(const mixer *m, double f, lanes *restrict out)
     for (size_t i = 0; i < m->n; i++) {
         h.re[i] = t * m->b.re[i] + u * m->c.re[i];
         h.im[i] = t * m->b.im[i] + u * m->c.im[i];
-        root_of(h.re[i] * h.re[i] - h.im[i] * h.im[i] + 8.0, 2.0 * h.re[i] * h.im[i], &root.re[i], &root.im[i]);
+        root_of(h.re[i] * h.re[i] - h.im[i] * h.im[i] + 8.0, 2.0 * h.re[i] * h.im[i], &root.re[i],
+                &root.im[i]);
     }
     if (t < 0.0)
         for (size_t i = 0; i < m->n; i++)
-            sum_lower(m->a.re[i], m->a.im[i], h.re[i], h.im[i], root.re[i], root.im[i], 2.0, &out->re[i], &out->im[i]);
+            sum_lower(m->a.re[i], m->a.im[i], h.re[i], h.im[i], root.re[i], root.im[i], 2.0, &out->re[i],
+                      &out->im[i]);
     else
         for (size_t i = 0; i < m->n; i++)
-            sum_upper(m->a.re[i], m->a.im[i], h.re[i], h.im[i], root.re[i], root.im[i], 0.25, &out->re[i], &out->im[i]);
+            sum_upper(m->a.re[i], m->a.im[i], h.re[i], h.im[i], root.re[i], root.im[i], 0.25, &out->re[i],
+                      &out->im[i]);
 }
 
 HOT static void pair_maxwell_garnett(const mixer *m, double f, double more, lanes *out) {
@@ -202,7 +208,8 @@ static void mix_many(const mixer *m, const double *f, const lanes *near, lanes *
             lane_set(out, i, c * c * c);
         }
     } else {
-        if (near) *out = *near;
+        if (near)
+            *out = *near;
         else { /* the geometric mean lies in the cone of the phases */
             sum_parts(m, f, out);
             for (size_t i = 0; i < m->n; i++) lane_set(out, i, cexp(lane_get(out, i)));
@@ -221,12 +228,20 @@ void mixing_at(const mixer *m, const double *share, const lanes *near, lanes *in
     }
     f[0] = fmax(0.0, 1.0 - covered);
     int pure = !coated && (share[0] <= 0.0 || share[0] >= 1.0); /* exactly the phase, no rounding of a root */
-    if (m->rule == MIX_VOLUME || pure) plain_mean(m, f[0], share, in_plane);
-    else if (coated) mix_many(m, f, near, in_plane);
-    else if (m->rule == MIX_BRUGGEMAN_2D) pair_bruggeman_2d(m, share[0], in_plane);
-    else if (m->rule == MIX_BRUGGEMAN_3D) pair_bruggeman_3d(m, share[0], in_plane);
-    else if (m->rule == MIX_LOOYENGA) pair_looyenga(m, share[0], in_plane);
-    else pair_maxwell_garnett(m, m->pores ? f[0] : share[0], mixing_dimensions(m->rule) - 1, in_plane);
-    if (mixing_uniaxial(m->rule)) plain_mean(m, f[0], share, axis);
-    else *axis = *in_plane;
+    if (m->rule == MIX_VOLUME || pure)
+        plain_mean(m, f[0], share, in_plane);
+    else if (coated)
+        mix_many(m, f, near, in_plane);
+    else if (m->rule == MIX_BRUGGEMAN_2D)
+        pair_bruggeman_2d(m, share[0], in_plane);
+    else if (m->rule == MIX_BRUGGEMAN_3D)
+        pair_bruggeman_3d(m, share[0], in_plane);
+    else if (m->rule == MIX_LOOYENGA)
+        pair_looyenga(m, share[0], in_plane);
+    else
+        pair_maxwell_garnett(m, m->pores ? f[0] : share[0], mixing_dimensions(m->rule) - 1, in_plane);
+    if (mixing_uniaxial(m->rule))
+        plain_mean(m, f[0], share, axis);
+    else
+        *axis = *in_plane;
 }

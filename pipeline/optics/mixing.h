@@ -10,12 +10,12 @@ enum { MIX_PHASES = 2 + LIMIT_COATINGS };
 /* One block of wavelengths, prepared once and used for every slab. */
 typedef struct {
     mixing rule;
-    int pores;               /* Maxwell Garnett: the solid is the host, ambient and coatings are enclosed */
-    size_t n, phases;        /* lanes in use; >= 2 */
+    int pores;        /* Maxwell Garnett: the solid is the host, ambient and coatings are enclosed */
+    size_t n, phases; /* lanes in use; >= 2 */
     lanes eps[MIX_PHASES];
-    lanes a, b, c;           /* what the two-phase formula of the rule needs per wavelength */
-    lanes part[MIX_PHASES];  /* >= 3 phases, what a phase adds in proportion to its share: cube root (Looyenga),
-                                polarisability (Maxwell Garnett), logarithm (start of Bruggeman) */
+    lanes a, b, c;          /* what the two-phase formula of the rule needs per wavelength */
+    lanes part[MIX_PHASES]; /* >= 3 phases, what a phase adds in proportion to its share: cube root
+                               (Looyenga), polarisability (Maxwell Garnett), logarithm (start of Bruggeman) */
 } mixer;
 
 /*   in   eps[phases][n] via m->eps, filled by the caller; Im >= 0
@@ -23,9 +23,9 @@ typedef struct {
 void mixing_prepare(mixer *m, mixing rule, int pores, size_t phases, size_t n);
 
 /* share[phases - 1]: solid, then coatings; the ambient has the rest.
- *   in   near: NULL, or the in-plane values of a mixture nearby, from where the search of a Bruggeman root with three
- *        and more phases starts; the answer is the same to rounding
- *   out  in_plane permittivity across the normal; axis along it (same as in_plane for the isotropic rules) */
+ *   in   near: NULL, or the in-plane values of a mixture nearby, from where the search of a Bruggeman root
+ * with three and more phases starts; the answer is the same to rounding out  in_plane permittivity across the
+ * normal; axis along it (same as in_plane for the isotropic rules) */
 void mixing_at(const mixer *m, const double *share, const lanes *near, lanes *in_plane, lanes *axis);
 
 /* True for the two-dimensional rules: the mixture is uniaxial, arithmetic mean along the axis. */

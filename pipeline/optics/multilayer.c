@@ -1,7 +1,7 @@
-/* Plane layers, exactly: any number, absorbing or not, uniaxial with the axis along the normal (Lekner 1991, from
- * memory), s and p, any angle. X = G/F is carried from the substrate up; per film E = exp(2 i delta), |E| <= 1, is
- * the only exponential, so a millimetre of absorber is as safe as a nanometre of air. For a handful of films; the
- * many thin slabs of a texture go through graded.c. */
+/* Plane layers, exactly: any number, absorbing or not, uniaxial with the axis along the normal (Lekner 1991,
+ * from memory), s and p, any angle. X = G/F is carried from the substrate up; per film E = exp(2 i delta),
+ * |E| <= 1, is the only exponential, so a millimetre of absorber is as safe as a nanometre of air. For a
+ * handful of films; the many thin slabs of a texture go through graded.c. */
 #include "optics/multilayer.h"
 
 #include <math.h>
@@ -14,8 +14,9 @@ double complex film_a(const film *f, double s2, int p_polarized) {
 }
 double complex film_b(const film *f, int p_polarized) { return p_polarized ? f->in_plane : 1.0; }
 
-/* The wave that decays (or runs) downwards: Im >= 0 on the principal branch because Im a b >= 0. A zero imaginary
- * part may carry either sign, and the root of a negative real number must then still point to +i. */
+/* The wave that decays (or runs) downwards: Im >= 0 on the principal branch because Im a b >= 0. A zero
+ * imaginary part may carry either sign, and the root of a negative real number must then still point to +i.
+ */
 static double complex down_root(double complex q) {
     double complex k = csqrt(q);
     return cimag(k) < 0.0 ? -k : k;
@@ -27,8 +28,8 @@ double complex film_half_space(const film *f, double s2, int p_polarized) {
 }
 
 /* cos and sin/kappa of a film times exp(i delta), both finite for any thickness. */
-static void film_wave(double complex a, double complex b, double k0_d, double complex *cosine, double complex *sine,
-                      double complex *down) {
+static void film_wave(double complex a, double complex b, double k0_d, double complex *cosine,
+                      double complex *sine, double complex *down) {
     double complex kappa = down_root(a * b), i_delta = complex_of(0.0, 1.0) * kappa * k0_d;
     *down = cexp(i_delta);
     double complex twice = *down * *down;
@@ -36,7 +37,8 @@ static void film_wave(double complex a, double complex b, double k0_d, double co
     if (cabs(i_delta) < 1e-3) { /* sin(x)/x by its series: also right at grazing, kappa = 0 */
         double complex d2 = -i_delta * i_delta;
         *sine = *down * k0_d * (1.0 - d2 / 6.0 * (1.0 - d2 / 20.0));
-    } else *sine = complex_of(0.0, 0.5) * (1.0 - twice) / kappa;
+    } else
+        *sine = complex_of(0.0, 0.5) * (1.0 - twice) / kappa;
 }
 
 powers multilayer(double wavelength_nm, double s2, int p, const film *ambient, const film *films, size_t n,

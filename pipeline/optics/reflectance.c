@@ -1,6 +1,7 @@
-/* R of a stack over wavelength. Wavelengths go in blocks of LANES; for each block the angles and polarizations asked
- * for become channels. Planar stacks are exact (multilayer.c); textures are cut ever finer until the extrapolated R of
- * every wavelength and channel of the block stands still. A laminate adds two incoherent interfaces on top. */
+/* R of a stack over wavelength. Wavelengths go in blocks of LANES; for each block the angles and
+ * polarizations asked for become channels. Planar stacks are exact (multilayer.c); textures are cut ever
+ * finer until the extrapolated R of every wavelength and channel of the block stands still. A laminate adds
+ * two incoherent interfaces on top. */
 #include "optics/reflectance.h"
 
 #include <math.h>
@@ -13,15 +14,19 @@
 #include "optics/graded.h"
 #include "optics/multilayer.h"
 
-enum { DIFFUSE_ANGLES = 16, MAX_CHANNELS = 2 * DIFFUSE_ANGLES };
+enum {
+    DIFFUSE_ANGLES = 16,
+    MAX_CHANNELS = 2 * DIFFUSE_ANGLES,
+    LEVELS = 16 /* 1 << 15 is LIMIT_SLABS */
+};
 
 /* One block of wavelengths on its way. */
 typedef struct {
     const stack *stack;
-    size_t n;             /* wavelengths in use */
+    size_t n; /* wavelengths in use */
     double wavelength_nm[LANES], k0[LANES];
-    mixer mix;            /* eps[0] ambient, [1] substrate, [2..] coatings */
-    lanes glass;          /* permittivity, laminate only */
+    mixer mix;   /* eps[0] ambient, [1] substrate, [2..] coatings */
+    lanes glass; /* permittivity, laminate only */
     size_t n_channels;
     double sine[MAX_CHANNELS], weight[MAX_CHANNELS];
     channel channel[MAX_CHANNELS];
@@ -29,13 +34,13 @@ typedef struct {
 
 /* The levels of refinement of one profile, made when first needed. */
 typedef struct {
-    slabs level[16];
+    slabs level[LEVELS];
     int made;
     size_t finest;
 } refinement;
 
 reflect_options reflect_defaults(void) {
-    return (reflect_options){ .angle_deg = 0.0, .polarization = POL_MEAN, .hemispherical = 0, .tolerance = 1e-6 };
+    return (reflect_options){ .polarization = POL_MEAN, .tolerance = 1e-6 }; /* normal incidence */
 }
 
 static int textured(const stack *s) { return s->profile && s->profile->n > 0; }
@@ -45,23 +50,27 @@ static status check(const stack *s, const reflect_options *o, error *e) {
     if (!o->hemispherical && !(o->angle_deg >= 0.0 && o->angle_deg < 90.0))
         return fail(e, ST_BAD_INPUT, "the angle of incidence is %s degrees, expected 0 to below 90",
                     number_text(o->angle_deg, 6, text));
-    if (!(o->tolerance > 0.0)) return fail(e, ST_BAD_INPUT, "the tolerance of the reflectance has to be above 0");
+    if (!(o->tolerance > 0.0))
+        return fail(e, ST_BAD_INPUT, "the tolerance of the reflectance has to be above 0");
     if (!s->substrate || (!s->ambient && !s->front.glass) || (s->front.glass && !s->front.encapsulant))
-        return fail(e, ST_BAD_INPUT, "the stack needs an ambient (or glass with an encapsulant) and a substrate");
+        return fail(e, ST_BAD_INPUT,
+                    "the stack needs an ambient (or glass with an encapsulant) and a substrate");
     if (s->front.glass && !(s->front.glass_mm >= 0.0 && s->front.encapsulant_mm >= 0.0))
         return fail(e, ST_BAD_INPUT, "the thickness of glass and encapsulant has to be 0 mm or above");
     if (s->n_coatings > LIMIT_COATINGS)
         return fail(e, ST_BAD_INPUT, "%zu coatings; at most %d are possible", s->n_coatings, LIMIT_COATINGS);
     for (size_t j = 0; j < s->n_coatings; j++)
         if (!s->coatings[j].material || (!textured(s) && !(s->coatings[j].thickness_nm >= 0.0)))
-            return fail(e, ST_BAD_INPUT, "coating %zu needs a material and a thickness of 0 nm or above", j + 1);
+            return fail(e, ST_BAD_INPUT, "coating %zu needs a material and a thickness of 0 nm or above",
+                        j + 1);
     if (textured(s) && s->profile->n_coatings > s->n_coatings)
-        return fail(e, ST_BAD_INPUT, "the profile has %zu coatings, the stack only %zu", s->profile->n_coatings,
-                    s->n_coatings);
+        return fail(e, ST_BAD_INPUT, "the profile has %zu coatings, the stack only %zu",
+                    s->profile->n_coatings, s->n_coatings);
     return textured(s) ? profile_check(s->profile, e) : ST_OK;
 }
 
-/* Gauss-Legendre nodes and weights on 0..1 (Newton on the Legendre recurrence; Abramowitz, Stegun 25.4.30). */
+/* Gauss-Legendre nodes and weights on 0..1 (Newton on the Legendre recurrence; Abramowitz, Stegun
+ * 25.4.30). */
 static void gauss(size_t n, double *x, double *w) {
     for (size_t i = 0; i < n; i++) {
         double t = cos(PI * ((double)i + 0.75) / ((double)n + 0.5)), slope = 1.0;
@@ -129,11 +138,13 @@ static status load_block(block *b, const stack *s, const double *wavelength_nm, 
     }
     status st = fill(&b->mix.eps[0], s->front.glass ? s->front.encapsulant : s->ambient, b, e);
     if (!st) st = fill(&b->mix.eps[1], s->substrate, b, e);
-    for (size_t j = 0; !st && j < s->n_coatings; j++) st = fill(&b->mix.eps[2 + j], s->coatings[j].material, b, e);
+    for (size_t j = 0; !st && j < s->n_coatings; j++)
+        st = fill(&b->mix.eps[2 + j], s->coatings[j].material, b, e);
     if (!st && s->front.glass) st = fill(&b->glass, s->front.glass, b, e);
     for (size_t c = 0; !st && c < b->n_channels; c++)
         for (size_t i = 0; i < b->n; i++) {
-            /* Behind flat glass the tangential wave number is that of the air; else the angle is in the ambient. */
+            /* Behind flat glass the tangential wave number is that of the air; else the angle is in the
+             * ambient. */
             channel *ch = &b->channel[c];
             double index = s->front.glass ? 1.0 : creal(csqrt(lane_get(&b->mix.eps[0], i)));
             ch->s2[i] = index * b->sine[c] * (index * b->sine[c]);
@@ -148,46 +159,67 @@ static void planar(block *b) {
     const stack *s = b->stack;
     for (size_t c = 0; c < b->n_channels; c++)
         for (size_t i = 0; i < b->n; i++) {
-            film films[LIMIT_COATINGS], ambient = half_space(&b->mix.eps[0], i), floor = half_space(&b->mix.eps[1], i);
+            film films[LIMIT_COATINGS], ambient = half_space(&b->mix.eps[0], i),
+                                        floor = half_space(&b->mix.eps[1], i);
             for (size_t j = 0; j < s->n_coatings; j++) {
                 films[j] = half_space(&b->mix.eps[2 + j], i);
                 films[j].thickness_nm = s->coatings[j].thickness_nm;
             }
             channel *ch = &b->channel[c];
-            ch->R[0][i] = multilayer(b->wavelength_nm[i], ch->s2[i], ch->p_polarized, &ambient, films, s->n_coatings,
-                                     &floor, NULL).R;
+            ch->R[0][i] = multilayer(b->wavelength_nm[i], ch->s2[i], ch->p_polarized, &ambient, films,
+                                     s->n_coatings, &floor, NULL)
+                              .R;
         }
 }
 
-/* Refines until every R stands still. R[0] the last walk, R[1] the one before, R[2] the extrapolated value. */
-static status graded(block *b, refinement *ref, double tolerance, error *e) {
+/* Largest phase of a slab, radian: before it is below 1 the slabs do not resolve the wave, and agreement is
+ * chance. */
+static double coarseness(const block *b, const slabs *cut) {
+    double thick = 0.0, wave = 0.0;
+    for (size_t j = 0; j < cut->n; j++) thick = fmax(thick, cut->thickness_nm[j]);
+    for (size_t p = 0; p < b->mix.phases; p++)
+        for (size_t i = 0; i < b->n; i++)
+            wave = fmax(wave, b->k0[i] * sqrt(cabs(lane_get(&b->mix.eps[p], i))));
+    return thick * wave;
+}
+
+/* Richardson on the walk just made (R[0]) and the one before (R[1]); keeps the result in R[2], returns its
+ * largest move. */
+static double extrapolate(block *b, int level) {
+    double largest = 0.0;
+    for (size_t c = 0; c < b->n_channels; c++)
+        for (size_t i = 0; i < b->n; i++) {
+            channel *ch = &b->channel[c];
+            double now = level ? ch->R[0][i] + (ch->R[0][i] - ch->R[1][i]) / 15.0 : ch->R[0][i];
+            if (level) largest = fmax(largest, fabs(now - ch->R[2][i]));
+            ch->R[1][i] = ch->R[0][i];
+            ch->R[2][i] = now;
+        }
+    return largest;
+}
+
+/* Refines until every R of the block stands still; *settled 0 when LIMIT_SLABS came first. */
+static status graded(block *b, refinement *ref, double tolerance, int *settled, error *e) {
     const profile *p = b->stack->profile;
-    double moved = HUGE_VAL;
+    int done = 0;
     mixing_prepare(&b->mix, b->stack->mixing, p->pores, 2 + p->n_coatings, b->n);
-    for (int level = 0; slabs_count(p, level) <= LIMIT_SLABS; level++) {
+    for (int level = 0; level < LEVELS && !done; level++) {
+        if (level && 2 * ref->level[level - 1].n > LIMIT_SLABS) break;
         if (level >= ref->made) {
             status st = slabs_make(&ref->level[level], p, level, e);
             if (st) return st;
             ref->made = level + 1;
         }
-        graded_walk(&ref->level[level], &b->mix, b->k0, b->channel, b->n_channels);
-        if (ref->level[level].n > ref->finest) ref->finest = ref->level[level].n;
-        double largest = 0.0;
-        for (size_t c = 0; c < b->n_channels; c++)
-            for (size_t i = 0; i < b->n; i++) {
-                channel *ch = &b->channel[c];
-                double now = level ? ch->R[0][i] + (ch->R[0][i] - ch->R[1][i]) / 15.0 : ch->R[0][i];
-                if (level) largest = fmax(largest, fabs(now - ch->R[2][i]));
-                ch->R[1][i] = ch->R[0][i];
-                ch->R[2][i] = now;
-            }
-        if (level) moved = largest;
-        if (level > 1 && moved < tolerance) break;
+        const slabs *cut = &ref->level[level];
+        graded_walk(cut, &b->mix, b->k0, b->channel, b->n_channels);
+        if (cut->n > ref->finest) ref->finest = cut->n;
+        double moved = extrapolate(b, level);
+        done = level > 1 && moved < tolerance && coarseness(b, cut) < 1.0;
     }
     for (size_t c = 0; c < b->n_channels; c++) /* extrapolation may overshoot 0 or 1 by the tolerance */
         for (size_t i = 0; i < b->n; i++) b->channel[c].R[0][i] = fmin(1.0, fmax(0.0, b->channel[c].R[2][i]));
-    if (moved < tolerance) return ST_OK;
-    return fail(e, ST_NO_RESULT, "the reflectance of the texture has not settled with %zu slabs", ref->finest);
+    *settled = *settled && done;
+    return ST_OK;
 }
 
 /* Intensities through a thick slab onto what lies below (Stokes 1862): interface r, single passage t. */
@@ -212,39 +244,43 @@ static void add_front(block *b) {
         }
 }
 
-static status solve_block(block *b, refinement *ref, const reflect_options *o, const double *wavelength_nm, double *R,
-                          error *e) {
+static status solve_block(block *b, refinement *ref, const reflect_options *o, const double *wavelength_nm,
+                          double *R, int *settled, error *e) {
     status st = load_block(b, b->stack, wavelength_nm, e);
     if (st) return st;
-    if (textured(b->stack)) st = graded(b, ref, o->tolerance, e);
-    else planar(b);
-    if (st && st != ST_NO_RESULT) return st;
+    if (textured(b->stack))
+        st = graded(b, ref, o->tolerance, settled, e);
+    else
+        planar(b);
+    if (st) return st;
     if (b->stack->front.glass) add_front(b);
     for (size_t i = 0; i < b->n; i++) {
         double sum = 0.0;
         for (size_t c = 0; c < b->n_channels; c++) sum += b->weight[c] * b->channel[c].R[0][i];
         R[i] = sum;
     }
-    return st;
+    return ST_OK;
 }
 
 status reflectance(const stack *s, const reflect_options *o, const double *wavelength_nm, size_t n, double *R,
                    size_t *slabs_used, error *e) {
     refinement ref = { .made = 0 };
-    status worst = check(s, o, e);
-    if (worst) return worst;
+    int settled = 1;
+    status st = check(s, o, e);
+    if (st) return st;
     block *b = mem_array(1, sizeof *b);
     if (!b) return NO_MEMORY(e, "a reflectance spectrum");
     b->stack = s;
     choose_channels(b, o);
-    for (size_t from = 0; from < n; from += LANES) {
+    for (size_t from = 0; from < n && !st; from += LANES) {
         b->n = n - from < LANES ? n - from : LANES;
-        status st = solve_block(b, &ref, o, wavelength_nm + from, R + from, e);
-        if (st) worst = st;
-        if (st && st != ST_NO_RESULT) break;
+        st = solve_block(b, &ref, o, wavelength_nm + from, R + from, &settled, e);
     }
+    if (!st && !settled)
+        st = fail(e, ST_NO_RESULT, "the reflectance of the texture has not settled with %zu slabs",
+                  ref.finest);
     for (int level = 0; level < ref.made; level++) slabs_free(&ref.level[level]);
     if (slabs_used) *slabs_used = ref.finest;
     free(b);
-    return worst;
+    return st;
 }

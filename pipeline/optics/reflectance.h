@@ -10,7 +10,7 @@ typedef struct {
     polarization polarization;
     int hemispherical;       /* 1: diffuse light, integral of R sin 2theta over 0..90 (Gauss-Legendre in theta, 16 nodes);
                                 angle_deg is then ignored */
-    double tolerance;        /* slabs are doubled (one Richardson step) until R changes less than this at every wavelength */
+    double tolerance;        /* slabs are doubled (with one Richardson step) until R changes less than this at every wavelength */
 } reflect_options;
 
 reflect_options reflect_defaults(void); /* normal, mean, 1e-6 */

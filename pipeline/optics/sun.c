@@ -1,7 +1,8 @@
-/* The solar spectrum as photon flux, and weighted means over it. Between the nodes of the table the irradiance is
- * linear (ASTM G173-03 states it so finely, 0.5 nm below 400 nm and 1 nm above, that the rule matters below 1e-5).
- * A photon carries h c / wavelength, so the flux is irradiance x wavelength / (h c). Integrals are trapezoids on the
- * nodes of the sun inside the band plus the band's two ends; the spectrum y is read off linearly there. */
+/* The solar spectrum as photon flux, and weighted means over it. Between the nodes of the table the
+ * irradiance is linear (ASTM G173-03 states it so finely, 0.5 nm below 400 nm and 1 nm above, that the rule
+ * matters below 1e-5). A photon carries h c / wavelength, so the flux is irradiance x wavelength / (h c).
+ * Integrals are trapezoids on the nodes of the sun inside the band plus the band's two ends; the spectrum y
+ * is read off linearly there. */
 #include "optics/sun.h"
 
 #include <math.h>
@@ -26,10 +27,13 @@ status sun_make(sun *s, const char *source, size_t n, const double *wavelength_n
                 error *e) {
     if (n < 2) return fail(e, ST_BAD_INPUT, "a solar spectrum needs at least two wavelengths, found %zu", n);
     for (size_t i = 0; i < n; i++) {
-        if (!isfinite(wavelength_nm[i]) || wavelength_nm[i] <= 0.0 || (i && wavelength_nm[i] <= wavelength_nm[i - 1]))
-            return fail(e, ST_BAD_INPUT, "solar spectrum, wavelength %zu: wavelengths have to ascend above 0 nm", i + 1);
+        if (!isfinite(wavelength_nm[i]) || wavelength_nm[i] <= 0.0 ||
+            (i && wavelength_nm[i] <= wavelength_nm[i - 1]))
+            return fail(e, ST_BAD_INPUT,
+                        "solar spectrum, wavelength %zu: wavelengths have to ascend above 0 nm", i + 1);
         if (!isfinite(irradiance[i]) || irradiance[i] < 0.0)
-            return fail(e, ST_BAD_INPUT, "solar spectrum, wavelength %zu: the irradiance has to be 0 or above", i + 1);
+            return fail(e, ST_BAD_INPUT,
+                        "solar spectrum, wavelength %zu: the irradiance has to be 0 or above", i + 1);
     }
     sun a = { .source = mem_text(source ? source : ""),
               .n = n,
@@ -52,8 +56,9 @@ static status check_band(const double *w, size_t n, double lo_nm, double hi_nm, 
     if (!(lo_nm < hi_nm))
         return fail(e, ST_BAD_INPUT, "the band %s:%s nm is empty; give the shorter wavelength first", lo, hi);
     if (n < 2 || !(lo_nm >= w[0] && hi_nm <= w[n - 1]))
-        return fail(e, ST_BAD_INPUT, "the band %s:%s nm reaches beyond %s (%s to %s nm); choose a band inside", lo, hi,
-                    what, number_text(n ? w[0] : 0.0, 7, a), number_text(n ? w[n - 1] : 0.0, 7, b));
+        return fail(e, ST_BAD_INPUT,
+                    "the band %s:%s nm reaches beyond %s (%s to %s nm); choose a band inside", lo, hi, what,
+                    number_text(n ? w[0] : 0.0, 7, a), number_text(n ? w[n - 1] : 0.0, 7, b));
     return ST_OK;
 }
 
@@ -65,8 +70,8 @@ static double read_on(const double *x, const double *y, size_t n, double place, 
 }
 
 /* Integrals over the band of the photon flux (times h c) and of flux times y. y NULL: 1. */
-static void integrate(const sun *s, const double *w, const double *y, size_t n, double lo, double hi, double *flux,
-                      double *flux_y) {
+static void integrate(const sun *s, const double *w, const double *y, size_t n, double lo, double hi,
+                      double *flux, double *flux_y) {
     size_t sun_at = 0, y_at = 0, next = 0;
     double x0 = 0.0, f0 = 0.0, g0 = 0.0;
     *flux = *flux_y = 0.0;
@@ -84,15 +89,15 @@ static void integrate(const sun *s, const double *w, const double *y, size_t n, 
     }
 }
 
-status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, size_t n, double lo_nm, double hi_nm,
-                    double *mean, error *e) {
+status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, size_t n, double lo_nm,
+                    double hi_nm, double *mean, error *e) {
     status st = check_band(s->wavelength_nm, s->n, lo_nm, hi_nm, "the solar spectrum", e);
     if (!st) st = check_band(wavelength_nm, n, lo_nm, hi_nm, "the spectrum to be weighted", e);
     if (st) return st;
     for (size_t i = 1; i < n; i++)
         if (!(wavelength_nm[i] > wavelength_nm[i - 1]))
-            return fail(e, ST_BAD_INPUT, "the wavelengths of the spectrum to be weighted do not ascend at number %zu",
-                        i + 1);
+            return fail(e, ST_BAD_INPUT,
+                        "the wavelengths of the spectrum to be weighted do not ascend at number %zu", i + 1);
     double flux, flux_y;
     integrate(s, wavelength_nm, y, n, lo_nm, hi_nm, &flux, &flux_y);
     if (!(flux > 0.0)) return fail(e, ST_BAD_INPUT, "the solar spectrum holds no light in the band");

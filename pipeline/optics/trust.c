@@ -1,11 +1,11 @@
 /* How far a graded-index prediction can be trusted.
  * Model error: differences between the graded index (2-D Bruggeman) and rigorous coupled-wave calculations of
- * hexagonal cones and paraboloids on silicon (Green 2008), pitch 100-1000 nm, height 100-1000 nm, wavelength from
- * 400 nm, normal incidence; own calculations, 127-301 harmonics, 32 slabs, own error 0.1-0.3 points of R. An
- * independent set of disordered textures was covered to 81 % at one u, 98 % at two.
- * Reading: bilinear in (ln p/wl, ln h/wl); below h/wl = 0.1 in proportion to h/wl; never across p/wl = 2/sqrt(3),
- * where diffraction into air opens; held at the ends. Nodes without a calculation carry the nearest one of their row.
- * Not covered: oblique light, other substrates, correlated disorder. */
+ * hexagonal cones and paraboloids on silicon (Green 2008), pitch 100-1000 nm, height 100-1000 nm, wavelength
+ * from 400 nm, normal incidence; own calculations, 127-301 harmonics, 32 slabs, own error 0.1-0.3 points of
+ * R. An independent set of disordered textures was covered to 81 % at one u, 98 % at two. Reading: bilinear
+ * in (ln p/wl, ln h/wl); below h/wl = 0.1 in proportion to h/wl; never across p/wl = 2/sqrt(3), where
+ * diffraction into air opens; held at the ends. Nodes without a calculation carry the nearest one of their
+ * row. Not covered: oblique light, other substrates, correlated disorder. */
 #include "optics/trust.h"
 
 #include <math.h>
@@ -15,7 +15,7 @@
 #include "base/number.h"
 #include "base/quantity.h"
 
-enum { ROWS = 13, COLUMNS = 10, ROWS_BELOW = 9 }; /* rows 0..8 lie below the opening of orders in air */
+enum { ROWS = 13, COLUMNS = 10, ROWS_BELOW = 9 };     /* rows 0..8 lie below the opening of orders in air */
 static const double ORDERS_OPEN = 1.1547005383792515; /* 2/sqrt(3) */
 
 /* clang-format off */
@@ -65,7 +65,8 @@ static size_t place(const double *nodes, size_t from, size_t to, double x, doubl
 
 static double read_table(const double (*table)[COLUMNS], size_t row, double tr, size_t column, double tc) {
     const double *a = table[row], *b = table[row + 1];
-    double low = (1.0 - tc) * a[column] + tc * a[column + 1], high = (1.0 - tc) * b[column] + tc * b[column + 1];
+    double low = (1.0 - tc) * a[column] + tc * a[column + 1],
+           high = (1.0 - tc) * b[column] + tc * b[column + 1];
     return (1.0 - tr) * low + tr * high;
 }
 
@@ -79,8 +80,9 @@ void trust_model(double spacing_nm, double height_nm, double wavelength_nm, doub
     *bias = scale * read_table(bias_points, row, tr, column, tc);
 }
 
-/* Grating equation: the first order runs in a medium of index n while n >= |n_ambient sin - q wavelength|; the worst
- * azimuth puts the order against the incident direction, hence q wavelength <= n + n_ambient sin. */
+/* Grating equation: the first order runs in a medium of index n while n >= |n_ambient sin - q wavelength|;
+ * the worst azimuth puts the order against the incident direction, hence q wavelength <= n + n_ambient sin.
+ */
 order_class trust_orders(double spacing_nm, double wavelength_nm, double angle_deg, double ambient_n,
                          double substrate_n) {
     double q_wavelength = wavelength_nm / (0.5 * sqrt(3.0) * spacing_nm);
@@ -89,11 +91,12 @@ order_class trust_orders(double spacing_nm, double wavelength_nm, double angle_d
     return q_wavelength < substrate_n + tangential ? ORDERS_IN_SUBSTRATE : ORDERS_NONE;
 }
 
-status trust_shares(double spacing_nm, double angle_deg, double ambient_n, const material *substrate, const sun *s,
-                    double lo_nm, double hi_nm, order_shares *out, error *e) {
+status trust_shares(double spacing_nm, double angle_deg, double ambient_n, const material *substrate,
+                    const sun *s, double lo_nm, double hi_nm, order_shares *out, error *e) {
     if (!(spacing_nm > 0.0) || !(angle_deg >= 0.0 && angle_deg < 90.0) || !(ambient_n > 0.0))
-        return fail(e, ST_BAD_INPUT, "orders need a spacing above 0 nm, an angle of 0 to below 90 degrees and an index "
-                                     "above 0");
+        return fail(e, ST_BAD_INPUT,
+                    "orders need a spacing above 0 nm, an angle of 0 to below 90 degrees and an index "
+                    "above 0");
     /* A fine even grid with the band's ends; each class is a 0/1 spectrum, weighted like any other. */
     enum { STEPS = 1800 };
     double *w = mem_array(3 * (STEPS + 1), sizeof *w), none = 0.0, air = 0.0;

@@ -1,12 +1,14 @@
-/* Single interfaces against published formulas and 40-digit values: G-01..G-07, Brewster and total reflection,
- * silicon by angle, incoherent plates (G-18), diffuse light (G-19, G-20), the uniaxial half-space (G-21). */
+/* Single interfaces against published formulas and 40-digit values: G-01..G-07, Brewster and total
+ * reflection, silicon by angle, incoherent plates (G-18), diffuse light (G-19, G-20), the uniaxial half-space
+ * (G-21). */
+#include "base/quantity.h"
 #include "check.h"
 #include "optics/multilayer.h"
-#include "base/quantity.h"
 #include "optics_data.h"
 
 static const char BORN_WOLF[] = "Born & Wolf, Principles of Optics, section 1.5 (40-digit evaluation)";
-static const char GREEN[] = "Fresnel on Green (2008) Sol. Energy Mater. Sol. Cells 92, 1305, computed independently";
+static const char GREEN[] =
+    "Fresnel on Green (2008) Sol. Energy Mater. Sol. Cells 92, 1305, computed independently";
 
 static void interfaces(void) {
     /* clang-format off */
@@ -27,7 +29,8 @@ static void interfaces(void) {
             double Rs = data_R(&s, 600.0, angle[a], POL_S), Rp = data_R(&s, 600.0, angle[a], POL_P);
             CHECK_SOURCE(Rs, rows[i].s[a], 1e-11, rows[i].id);
             CHECK_SOURCE(Rp, rows[i].p[a], 1e-11, rows[i].id);
-            CHECK_SOURCE(data_R(&s, 600.0, angle[a], POL_MEAN), 0.5 * (rows[i].s[a] + rows[i].p[a]), 1e-11, rows[i].id);
+            CHECK_SOURCE(data_R(&s, 600.0, angle[a], POL_MEAN), 0.5 * (rows[i].s[a] + rows[i].p[a]), 1e-11,
+                         rows[i].id);
             if (angle[a] > 44.0 && angle[a] < 46.0)
                 CHECK_SOURCE(Rp, Rs * Rs, 1e-14, "p = s^2 at 45 degrees, Born & Wolf 1.5");
         }
@@ -41,8 +44,10 @@ static double least_p(const stack *s, double nm, double lo, double hi) {
     double g = 0.5 * (sqrt(5.0) - 1.0);
     for (int i = 0; i < 60; i++) {
         double a = hi - g * (hi - lo), b = lo + g * (hi - lo);
-        if (data_R(s, nm, a, POL_P) < data_R(s, nm, b, POL_P)) hi = b;
-        else lo = a;
+        if (data_R(s, nm, a, POL_P) < data_R(s, nm, b, POL_P))
+            hi = b;
+        else
+            lo = a;
     }
     return 0.5 * (lo + hi);
 }
@@ -55,9 +60,12 @@ static void brewster_and_total_reflection(void) {
     stack high = { .ambient = &air, .substrate = &dense }, wafer = { .ambient = &air, .substrate = &si };
     stack g06 = { .ambient = &air, .substrate = &real_si };
     stack gapped = { .ambient = &glass, .substrate = &glass, .coatings = &gap, .n_coatings = 1 };
-    /* Printed to 8 decimals of a degree: Rp there is below (1e-8 rad)^2. The exact angle gives rounding alone. */
-    CHECK_SOURCE(data_R(&up, 633.0, atan(1.5) * 180.0 / PI, POL_P), 0.0, 1e-28, "G-06 Brewster, Born & Wolf 1.5");
-    CHECK_SOURCE(data_R(&g06, 633.0, atan(3.882) * 180.0 / PI, POL_P), 0.0, 1e-28, "G-06 Brewster, Born & Wolf 1.5");
+    /* Printed to 8 decimals of a degree: Rp there is below (1e-8 rad)^2. The exact angle gives rounding
+     * alone. */
+    CHECK_SOURCE(data_R(&up, 633.0, atan(1.5) * 180.0 / PI, POL_P), 0.0, 1e-28,
+                 "G-06 Brewster, Born & Wolf 1.5");
+    CHECK_SOURCE(data_R(&g06, 633.0, atan(3.882) * 180.0 / PI, POL_P), 0.0, 1e-28,
+                 "G-06 Brewster, Born & Wolf 1.5");
     CHECK_SOURCE(atan(1.5) * 180.0 / PI, 56.309932474, 1e-9, "G-06");
     CHECK_SOURCE(atan(3.882) * 180.0 / PI, 75.5547060047, 1e-9, "G-06");
     CHECK_SOURCE(least_p(&up, 633.0, 50.0, 60.0), 56.30993247, 1e-6, "Brewster, 1 to 1.5");
@@ -72,22 +80,30 @@ static void brewster_and_total_reflection(void) {
     }
     CHECK(data_R(&down, 633.0, 41.81, POL_S) < 1.0 - 1e-3); /* critical angle 41.8103148958 */
     CHECK_SOURCE(data_R(&down, 633.0, 41.8103148959, POL_S), 1.0, 1e-12, "G-07 critical angle");
-    CHECK_SOURCE(data_R(&gapped, 633.0, 50.0, POL_P), 0.27436084, 5e-9, "frustrated total reflection, closed form");
-    CHECK_SOURCE(data_R(&gapped, 633.0, 50.0, POL_S), 0.31479937, 5e-9, "frustrated total reflection, closed form");
+    CHECK_SOURCE(data_R(&gapped, 633.0, 50.0, POL_P), 0.27436084, 5e-9,
+                 "frustrated total reflection, closed form");
+    CHECK_SOURCE(data_R(&gapped, 633.0, 50.0, POL_S), 0.31479937, 5e-9,
+                 "frustrated total reflection, closed form");
     CHECK_SOURCE(least_p(&wafer, 633.0, 70.0, 80.0), 75.52480, 5e-5, "pseudo-Brewster angle of silicon");
-    CHECK_SOURCE(data_R(&wafer, 633.0, 75.52480, POL_P), 3.7812e-6, 5e-11, "pseudo-Brewster angle of silicon");
-    material_free(&air), material_free(&glass), material_free(&dense), material_free(&real_si), material_free(&si);
+    CHECK_SOURCE(data_R(&wafer, 633.0, 75.52480, POL_P), 3.7812e-6, 5e-11,
+                 "pseudo-Brewster angle of silicon");
+    material_free(&air), material_free(&glass), material_free(&dense), material_free(&real_si),
+        material_free(&si);
 }
 
 static void silicon(void) {
-    static const struct { double nm, R; } normal[] = {
-        { 300, 0.62892901 }, { 350, 0.56743461 }, { 400, 0.48762403 }, { 500, 0.38719270 }, { 600, 0.35420416 },
-        { 633, 0.34766567 }, { 632.8, 0.34770143 }, { 700, 0.33743469 }, { 800, 0.32740517 }, { 900, 0.32096390 },
-        { 1000, 0.31646778 }, { 1100, 0.31322530 }, { 1200, 0.31083092 } };
-    static const struct { double deg, s, p; } oblique[] = {
-        { 0, 0.34766567, 0.34766567 }, { 30, 0.39948661, 0.29560028 }, { 45, 0.47172530, 0.22252476 },
-        { 60, 0.58693388, 0.10920576 }, { 70, 0.69415634, 0.02389476 }, { 75, 0.75849713, 0.00030413 },
-        { 80, 0.83065919, 0.03225723 }, { 85, 0.91105940, 0.23250556 } };
+    static const struct {
+        double nm, R;
+    } normal[] = { { 300, 0.62892901 }, { 350, 0.56743461 }, { 400, 0.48762403 },   { 500, 0.38719270 },
+                   { 600, 0.35420416 }, { 633, 0.34766567 }, { 632.8, 0.34770143 }, { 700, 0.33743469 },
+                   { 800, 0.32740517 }, { 900, 0.32096390 }, { 1000, 0.31646778 },  { 1100, 0.31322530 },
+                   { 1200, 0.31083092 } };
+    static const struct {
+        double deg, s, p;
+    } oblique[] = { { 0, 0.34766567, 0.34766567 },  { 30, 0.39948661, 0.29560028 },
+                    { 45, 0.47172530, 0.22252476 }, { 60, 0.58693388, 0.10920576 },
+                    { 70, 0.69415634, 0.02389476 }, { 75, 0.75849713, 0.00030413 },
+                    { 80, 0.83065919, 0.03225723 }, { 85, 0.91105940, 0.23250556 } };
     material air = data_constant(1.0, 0.0), si = data_material("silicon");
     stack s = { .ambient = &air, .substrate = &si };
     double n, k;
@@ -143,10 +159,13 @@ static double diffuse(const stack *s, double nm) {
 }
 
 static void diffuse_light(void) {
-    static const char WALSH[] = "G-19 Walsh (1926), Duntley (1942) closed form; Judd (1942) J. Res. NBS 29, 329";
-    static const struct { double n, R; } rows[] = { { 1.5, 0.0917779593424 }, { 4.0 / 3.0, 0.0664584803817 },
-                                                   { 3.5, 0.32420574801 } };
-    material air = data_constant(1.0, 0.0), si = data_constant(3.882, 0.019), nitride = data_constant(2.0, 0.0);
+    static const char WALSH[] =
+        "G-19 Walsh (1926), Duntley (1942) closed form; Judd (1942) J. Res. NBS 29, 329";
+    static const struct {
+        double n, R;
+    } rows[] = { { 1.5, 0.0917779593424 }, { 4.0 / 3.0, 0.0664584803817 }, { 3.5, 0.32420574801 } };
+    material air = data_constant(1.0, 0.0), si = data_constant(3.882, 0.019),
+             nitride = data_constant(2.0, 0.0);
     for (size_t i = 0; i < 3; i++) {
         material m = data_constant(rows[i].n, 0.0);
         stack s = { .ambient = &air, .substrate = &m };
@@ -163,11 +182,18 @@ static void diffuse_light(void) {
 
 static void uniaxial_half_space(void) {
     static const char LEKNER[] = "G-21 uniaxial half-space, Lekner (1991) (from memory)";
-    static const struct { double o, e, brewster, s[3], p[3]; } rows[] = {
-        { 4.0, 6.25, 62.1144331639, { 0.111111111111, 0.203776612387, 0.456203364505 },
-          { 0.111111111111, 0.036760253274, 0.022690899926 } },
-        { 3.0, 8.0, 56.5178420530, { 0.071796769724, 0.145898033750, 0.383587015122 },
-          { 0.071796769724, 0.013680371388, 0.052187951838 } } };
+    static const struct {
+        double o, e, brewster, s[3], p[3];
+    } rows[] = { { 4.0,
+                   6.25,
+                   62.1144331639,
+                   { 0.111111111111, 0.203776612387, 0.456203364505 },
+                   { 0.111111111111, 0.036760253274, 0.022690899926 } },
+                 { 3.0,
+                   8.0,
+                   56.5178420530,
+                   { 0.071796769724, 0.145898033750, 0.383587015122 },
+                   { 0.071796769724, 0.013680371388, 0.052187951838 } } };
     static const double angle[] = { 0.0, 45.0, 70.0 };
     film air = { 1.0, 1.0, 0.0 };
     for (size_t i = 0; i < 2; i++) {
@@ -179,7 +205,8 @@ static void uniaxial_half_space(void) {
         }
         double tan2 = rows[i].e * (rows[i].o - 1.0) / (rows[i].e - 1.0);
         CHECK_SOURCE(atan(sqrt(tan2)) * 180.0 / PI, rows[i].brewster, 1e-9, LEKNER);
-        CHECK_SOURCE(multilayer(600.0, tan2 / (1.0 + tan2), 1, &air, NULL, 0, &m, NULL).R, 0.0, 1e-25, LEKNER);
+        CHECK_SOURCE(multilayer(600.0, tan2 / (1.0 + tan2), 1, &air, NULL, 0, &m, NULL).R, 0.0, 1e-25,
+                     LEKNER);
     }
 }
 

@@ -1,14 +1,15 @@
-/* Graded layers: profiles with an exact answer (G-30..G-35, closed forms of Rayleigh, Epstein, Bessel, Airy), the
- * textured silicon integrated without slabs (G-40..G-43), whole spectra computed by an independent program, and
- * scaling (G-61). A profile n(z) is built as the volume mixture of ambient and substrate that has n(z)^2. */
+/* Graded layers: profiles with an exact answer (G-30..G-35, closed forms of Rayleigh, Epstein, Bessel, Airy),
+ * the textured silicon integrated without slabs (G-40..G-43), whole spectra computed by an independent
+ * program, and scaling (G-61). A profile n(z) is built as the volume mixture of ambient and substrate that
+ * has n(z)^2. */
 #include "base/quantity.h"
 #include "check.h"
 #include "optics/slabs.h"
 #include "optics_data.h"
 
 typedef struct {
-    int kind;          /* 0 linear n, 1 exponential n, 2 Rayleigh, 3 linear eps, 4 cubic, 5 quintic, 6 Epstein */
-    double n1, n2;     /* of the profile's ends */
+    int kind;      /* 0 linear n, 1 exponential n, 2 Rayleigh, 3 linear eps, 4 cubic, 5 quintic, 6 Epstein */
+    double n1, n2; /* of the profile's ends */
     double out, solid; /* ambient and substrate */
     double spread;     /* Epstein: s over the whole depth */
 } graded_index;
@@ -16,16 +17,22 @@ typedef struct {
 static double index_at(double t, const graded_index *g) {
     double d = g->n2 - g->n1;
     switch (g->kind) {
-    case 0: return g->n1 + d * t;
-    case 1: return g->n1 * pow(g->n2 / g->n1, t);
-    case 2: return g->n1 / (1.0 - (1.0 - g->n1 / g->n2) * t);
-    case 4: return g->n1 + d * t * t * (3.0 - 2.0 * t);
-    case 5: return g->n1 + d * t * t * t * (10.0 - 15.0 * t + 6.0 * t * t);
+    case 0:
+        return g->n1 + d * t;
+    case 1:
+        return g->n1 * pow(g->n2 / g->n1, t);
+    case 2:
+        return g->n1 / (1.0 - (1.0 - g->n1 / g->n2) * t);
+    case 4:
+        return g->n1 + d * t * t * (3.0 - 2.0 * t);
+    case 5:
+        return g->n1 + d * t * t * t * (10.0 - 15.0 * t + 6.0 * t * t);
     case 6: {
         double step = g->n2 * g->n2 - g->n1 * g->n1;
         return sqrt(g->n1 * g->n1 + step / (1.0 + exp(-(t - 0.5) / g->spread)));
     }
-    default: return sqrt(g->n1 * g->n1 + (g->n2 * g->n2 - g->n1 * g->n1) * t);
+    default:
+        return sqrt(g->n1 * g->n1 + (g->n2 * g->n2 - g->n1 * g->n1) * t);
     }
 }
 
@@ -36,9 +43,14 @@ static double share_at(double t, const void *context) {
 }
 
 /* R of the profile over the depth in wavelengths. */
-static double graded_R(const graded_index *g, double depth, double wavelength_nm, double deg, polarization pol) {
+static double graded_R(const graded_index *g, double depth, double wavelength_nm, double deg,
+                       polarization pol) {
     material a = data_constant(g->out, 0), b = data_constant(g->solid, 0);
-    profile p = data_profile(depth * wavelength_nm, g->kind == 3 ? 2 : g->kind == 6 ? 20001 : 4001, share_at, g);
+    profile p = data_profile(depth * wavelength_nm,
+                             g->kind == 3   ? 2
+                             : g->kind == 6 ? 20001
+                                            : 4001,
+                             share_at, g);
     stack s = { .ambient = &a, .substrate = &b, .profile = &p, .mixing = MIX_VOLUME };
     double R = data_R(&s, wavelength_nm, deg, pol);
     profile_free(&p);
@@ -72,14 +84,17 @@ static void closed_forms(void) {
             stack s = { .ambient = &a, .substrate = &b, .profile = &p, .mixing = MIX_VOLUME };
             CHECK_SOURCE(data_R(&s, 700, 0, POL_MEAN), stepped[i], 1e-6, "with steps, Airy");
             material_free(&a), material_free(&b);
-        } else CHECK_SOURCE(graded_R(&step, 400.0 / 700.0, 700, 0, POL_MEAN), stepped[i], 1e-6, rows[i].source);
+        } else
+            CHECK_SOURCE(graded_R(&step, 400.0 / 700.0, 700, 0, POL_MEAN), stepped[i], 1e-6, rows[i].source);
     }
     graded_index airy = between(3, 1.0, 3.5);
     static const double deg[] = { 30, 60, 80 };
-    static const double s[] = { 0.07347462, 0.21942658, 0.58912680 }, p[] = { 0.03581422, 0.00979106, 0.24434337 };
+    static const double s[] = { 0.07347462, 0.21942658, 0.58912680 },
+                        p[] = { 0.03581422, 0.00979106, 0.24434337 };
     for (int i = 0; i < 3; i++) {
         CHECK_SOURCE(graded_R(&airy, 0.5, 600, deg[i], POL_S), s[i], 1e-6, "linear eps, s: Airy");
-        CHECK_SOURCE(graded_R(&airy, 0.5, 600, deg[i], POL_P), p[i], 1e-6, "linear eps, p: field equations integrated");
+        CHECK_SOURCE(graded_R(&airy, 0.5, 600, deg[i], POL_P), p[i], 1e-6,
+                     "linear eps, p: field equations integrated");
     }
 }
 
@@ -102,7 +117,8 @@ static void rayleigh_and_bessel(void) {
     for (size_t i = 0; i < 2; i++) {
         graded_index g = between(1, 1.0, g32[i].n2);
         for (size_t j = 0; j < 5; j++)
-            CHECK_SOURCE(graded_R(&g, depth[j + 1], 600, 0, POL_MEAN), g32[i].R[j], 1e-6, "G-32 exponential index");
+            CHECK_SOURCE(graded_R(&g, depth[j + 1], 600, 0, POL_MEAN), g32[i].R[j], 1e-6,
+                         "G-32 exponential index");
     }
     /* G-61: only depth over wavelength counts without dispersion. */
     graded_index g = between(2, 1.0, 3.5);
@@ -124,7 +140,8 @@ static void smooth_step(void) {
     for (size_t i = 0; i < 2; i++)
         for (size_t j = 0; j < 9; j++) {
             graded_index g = { 6, 1.0, rows[i].n2, 1.0, rows[i].n2, 1.0 / 80.0 };
-            CHECK_SOURCE(graded_R(&g, 80 * spread[j / 3], 600, deg[j % 3], POL_S), rows[i].R[j], 1e-6, "G-31 Epstein (1930)");
+            CHECK_SOURCE(graded_R(&g, 80 * spread[j / 3], 600, deg[j % 3], POL_S), rows[i].R[j], 1e-6,
+                         "G-31 Epstein (1930)");
         }
     for (size_t j = 0; j < 2; j++) {
         graded_index g = { 6, 1.0, 3.5, 1.0, 3.5, 1.0 / 80.0 };
@@ -149,7 +166,8 @@ static void airy_complex(void) {
             double z[] = { 0, depth[j] * 600 }, f[] = { 0, 1 };
             profile p = { .n = 2, .depth_nm = z, .solid = f };
             stack s = { .ambient = &air, .substrate = &m, .profile = &p, .mixing = MIX_VOLUME };
-            CHECK_SOURCE(data_R(&s, 600, j == 4 ? 60 : 0, POL_S), rows[i].R[j], 1e-6, "G-33 Airy, complex substrate");
+            CHECK_SOURCE(data_R(&s, 600, j == 4 ? 60 : 0, POL_S), rows[i].R[j], 1e-6,
+                         "G-33 Airy, complex substrate");
         }
         material_free(&m);
     }
@@ -170,7 +188,8 @@ static void index_polynomials(void) {
     for (size_t i = 0; i < 6; i++) {
         graded_index g = between(rows[i].kind, 1.0, rows[i].n2);
         for (size_t j = 0; j < 7; j++)
-            CHECK_SOURCE(graded_R(&g, depth[j], 600, 0, POL_MEAN), rows[i].R[j], 1e-6, "G-34 Southwell (1983), integrated without slabs");
+            CHECK_SOURCE(graded_R(&g, depth[j], 600, 0, POL_MEAN), rows[i].R[j], 1e-6,
+                         "G-34 Southwell (1983), integrated without slabs");
     }
 }
 
@@ -207,14 +226,16 @@ static void textured_silicon(void) {
         profile p = data_profile(rows[i].h, 2001, data_power, &rows[i].power);
         stack s = { .ambient = &air, .substrate = &m, .profile = &p, .mixing = rows[i].rule };
         for (size_t j = 0; j < 5; j++)
-            CHECK_SOURCE(data_R(&s, rows[i].nm, deg[j], pol[j]), rows[i].R[j], 2e-6, "G-40..G-43, integrated without slabs");
+            CHECK_SOURCE(data_R(&s, rows[i].nm, deg[j], pol[j]), rows[i].R[j], 2e-6,
+                         "G-40..G-43, integrated without slabs");
         profile_free(&p);
         material_free(&m);
     }
     material_free(&air);
 }
 
-/* Whole spectra: weighted R and three wavelengths, computed by an independent program (midpoint slabs, 1024-4096). */
+/* Whole spectra: weighted R and three wavelengths, computed by an independent program (midpoint slabs,
+ * 1024-4096). */
 static void end_to_end(void) {
     /* clang-format off */
     static const struct { const char *id; double power, h; mixing rule; double deg; polarization pol; double ambient, R[5]; } rows[] = {
@@ -269,9 +290,11 @@ static void end_to_end(void) {
     material_free(&air), material_free(&si), sun_free(&light);
 }
 
-/* Share of hillocks on one floor whose heights are normal with the given relative spread, cut at 0; mean height 1 and
- * depth t counted over 0..2. */
-typedef struct { double spread, power; } spread_shape;
+/* Share of hillocks on one floor whose heights are normal with the given relative spread, cut at 0; mean
+ * height 1 and depth t counted over 0..2. */
+typedef struct {
+    double spread, power;
+} spread_shape;
 static double spread_share(double t, const void *context) {
     const spread_shape *c = context;
     double z = 2.0 * (1.0 - t), sum = 0, weight = 0;
@@ -286,9 +309,10 @@ static double spread_share(double t, const void *context) {
 
 /* Six standard deviations of 20 % reach above 2 mean heights only with weight 3e-7. */
 static void height_spread(void) {
-    static const struct { double power, h, spread, weighted; } rows[] = {
-        { 1, 300, 0.2, 0.00820 }, { 2, 100, 0.1, 0.23072 }, { 2, 300, 0.2, 0.01857 }, { 1, 200, 0.1, 0.03933 },
-        { 1, 700, 0.2, 0.00015 }, { 2, 200, 0.2, 0.07922 } };
+    static const struct {
+        double power, h, spread, weighted;
+    } rows[] = { { 1, 300, 0.2, 0.00820 }, { 2, 100, 0.1, 0.23072 }, { 2, 300, 0.2, 0.01857 },
+                 { 1, 200, 0.1, 0.03933 }, { 1, 700, 0.2, 0.00015 }, { 2, 200, 0.2, 0.07922 } };
     material air = data_constant(1, 0), si = data_material("silicon");
     sun light = data_sun();
     reflect_options o = reflect_defaults();
@@ -296,19 +320,22 @@ static void height_spread(void) {
         spread_shape c = { rows[i].spread, rows[i].power };
         profile p = data_profile(2 * rows[i].h, 401, spread_share, &c);
         stack s = { .ambient = &air, .substrate = &si, .profile = &p };
-        CHECK_SOURCE(data_weighted(&s, &o, &light, 300, 1200, 5), rows[i].weighted, 4e-5, "height spread, normal, one floor");
+        CHECK_SOURCE(data_weighted(&s, &o, &light, 300, 1200, 5), rows[i].weighted, 4e-5,
+                     "height spread, normal, one floor");
         profile_free(&p);
     }
     material_free(&air), material_free(&si), sun_free(&light);
 }
 
-/* Cones of 300 nm, 300 nm apart, under a conformal film: the cone of the equivalent circular cell is dilated by a ball
- * of the film's thickness and cut at the cell. Three phases in every slab. */
+/* Cones of 300 nm, 300 nm apart, under a conformal film: the cone of the equivalent circular cell is dilated
+ * by a ball of the film's thickness and cut at the cell. Three phases in every slab. */
 static void conformal_film(void) {
-    static const struct { double film, weighted, R[3]; mixing rule; } rows[] = {
-        { 75, 0.012016, { 0.004048, 0.001985, 0.026583 }, MIX_VOLUME },
-        { 75, 0.016554, { 0.003905, 0.000398, 0.043822 }, MIX_BRUGGEMAN_2D },
-        { 20, 0.012525, { 0.000554, 0.001538, 0.027265 }, MIX_BRUGGEMAN_2D } };
+    static const struct {
+        double film, weighted, R[3];
+        mixing rule;
+    } rows[] = { { 75, 0.012016, { 0.004048, 0.001985, 0.026583 }, MIX_VOLUME },
+                 { 75, 0.016554, { 0.003905, 0.000398, 0.043822 }, MIX_BRUGGEMAN_2D },
+                 { 20, 0.012525, { 0.000554, 0.001538, 0.027265 }, MIX_BRUGGEMAN_2D } };
     enum { NODES = 401 };
     static double depth[NODES], solid[NODES], film[NODES];
     material air = data_constant(1, 0), si = data_material("silicon"), two = data_constant(2, 0);
@@ -318,20 +345,62 @@ static void conformal_film(void) {
         double t = rows[i].film, slant = sqrt(1 + cell * cell / (h * h)), rise = t * (cell / h) / slant;
         for (int j = 0; j < NODES; j++) {
             depth[j] = (h + t) * j / (NODES - 1);
-            double z = h + t - depth[j], core = fmax(0, cell * (1 - z / h)), ball = sqrt(fmax(0, t * t - (z - h) * (z - h)));
+            double z = h + t - depth[j], core = fmax(0, cell * (1 - z / h)),
+                   ball = sqrt(fmax(0, t * t - (z - h) * (z - h)));
             double outer = fmin(cell, z - h > rise ? ball : cell * (1 - z / h) + t * slant);
             solid[j] = core * core / (cell * cell);
             film[j] = fmax(0, outer * outer / (cell * cell) - solid[j]);
         }
         profile p = { .n = NODES, .depth_nm = depth, .solid = solid, .coating = { film }, .n_coatings = 1 };
         layer coat = { &two, t };
-        stack s = { .ambient = &air, .substrate = &si, .profile = &p, .coatings = &coat, .n_coatings = 1, .mixing = rows[i].rule };
+        stack s = { .ambient = &air,
+                    .substrate = &si,
+                    .profile = &p,
+                    .coatings = &coat,
+                    .n_coatings = 1,
+                    .mixing = rows[i].rule };
         reflect_options o = reflect_defaults();
         static const double nm[] = { 400, 600, 1000 };
-        CHECK_SOURCE(data_weighted(&s, &o, &light, 300, 1200, 5), rows[i].weighted, 1e-4, "conformal film, good to 1e-4");
-        for (int j = 0; j < 3; j++) CHECK_SOURCE(data_R(&s, nm[j], 0, POL_MEAN), rows[i].R[j], 1e-4, "conformal film, good to 1e-4");
+        CHECK_SOURCE(data_weighted(&s, &o, &light, 300, 1200, 5), rows[i].weighted, 1e-4,
+                     "conformal film, good to 1e-4");
+        for (int j = 0; j < 3; j++)
+            CHECK_SOURCE(data_R(&s, nm[j], 0, POL_MEAN), rows[i].R[j], 1e-4, "conformal film, good to 1e-4");
     }
     material_free(&air), material_free(&si), material_free(&two), sun_free(&light);
+}
+
+/* G-60: R falls exponentially with the depth of the grade, by 1/e in about an eighth of the wavelength. */
+static double grade_depth(double power, mixing rule) {
+    enum { DEPTHS = 28 };
+    double sx = 0, sy = 0, sxx = 0, sxy = 0;
+    material air = data_constant(1, 0), si = data_material("silicon");
+    for (int i = 0; i < DEPTHS; i++) {
+        double h = 30 + 10 * i;
+        profile p = data_profile(h, 401, data_power, &power);
+        stack s = { .ambient = &air, .substrate = &si, .profile = &p, .mixing = rule };
+        double y = log(data_R(&s, 600, 0, POL_MEAN));
+        sx += h, sy += y, sxx += h * h, sxy += h * y;
+        profile_free(&p);
+    }
+    material_free(&air), material_free(&si);
+    return -(DEPTHS * sxx - sx * sx) / (DEPTHS * sxy - sx * sy);
+}
+
+static void exponential_fall(void) {
+    static const struct {
+        double power;
+        mixing rule;
+        double nm;
+    } rows[] = { { 1, MIX_BRUGGEMAN_2D, 62 },
+                 { 1, MIX_LOOYENGA, 106 },
+                 { 2, MIX_BRUGGEMAN_2D, 49 },
+                 { 2, MIX_LOOYENGA, 69 } };
+    static const char BRANZ[] = "G-60 Branz et al. (2009) Appl. Phys. Lett. 94, 231121: about 1/8 wavelength";
+    for (int i = 0; i < 4; i++) {
+        double got = grade_depth(rows[i].power, rows[i].rule);
+        CHECK(got > 0.5 * 75 && got < 2 * 75);
+        CHECK_SOURCE(got, rows[i].nm, 0.05 * rows[i].nm, BRANZ); /* the depths of that fit are not stated */
+    }
 }
 
 int main(void) {
@@ -344,5 +413,6 @@ int main(void) {
     end_to_end();
     height_spread();
     conformal_film();
+    exponential_fall();
     return check_done();
 }

@@ -1,8 +1,8 @@
-/* Mixing rules against tables computed independently from the published formulas (G-50, G-51), and their laws: ends
- * (G-52), duality (G-53, G-54), bounds (G-55), dilute limit (G-56), branch and passivity (G-57), percolation (G-58),
- * three and more phases. */
-#include "optics/bruggeman.h"
+/* Mixing rules against tables computed independently from the published formulas (G-50, G-51), and their
+ * laws: ends (G-52), duality (G-53, G-54), bounds (G-55), dilute limit (G-56), branch and passivity (G-57),
+ * percolation (G-58), three and more phases. */
 #include "optics/mixing.h"
+#include "optics/bruggeman.h"
 
 #include "base/quantity.h"
 #include "check.h"
@@ -19,7 +19,8 @@ static double complex mixed(mixing rule, int pores, double complex air, double c
     return lane_get(&plane, 0);
 }
 
-static double complex mixed_many(mixing rule, int pores, const double complex *eps, const double *share, size_t phases) {
+static double complex mixed_many(mixing rule, int pores, const double complex *eps, const double *share,
+                                 size_t phases) {
     lanes plane, axis;
     for (size_t p = 0; p < phases; p++) lane_set(&m.eps[p], 0, eps[p]);
     mixing_prepare(&m, rule, pores, phases, 1);
@@ -59,8 +60,9 @@ static void silicon_tables(void) {
         error e = { 0 };
         CHECK(material_at(&si, rows[i].nm, &n, &k, &e) == ST_OK);
         for (size_t j = 0; j < 5; j++)
-            check_complex(mixed(rows[i].rule, rows[i].pores, 1, complex_of(n * n - k * k, 2 * n * k), share[j]),
-                          rows[i].eps[2 * j], rows[i].eps[2 * j + 1], 5.1e-7, "silicon in air, independent program");
+            check_complex(
+                mixed(rows[i].rule, rows[i].pores, 1, complex_of(n * n - k * k, 2 * n * k), share[j]),
+                rows[i].eps[2 * j], rows[i].eps[2 * j + 1], 5.1e-7, "silicon in air, independent program");
     }
     material_free(&si);
 }
@@ -103,11 +105,14 @@ static void published_rows(void) {
         check_complex(mixed(MIX_BRUGGEMAN_2D, 0, 1, e * e, f), lossy[i].b2[0], lossy[i].b2[1], tol, G50);
         check_complex(mixed(MIX_BRUGGEMAN_3D, 0, 1, e * e, f), lossy[i].b3[0], lossy[i].b3[1], tol, G50);
         check_complex(mixed(MIX_LOOYENGA, 0, 1, e * e, f), lossy[i].lo[0], lossy[i].lo[1], tol, G50);
-        check_complex(mixed(MIX_MAXWELL_GARNETT_3D, 0, 1, e * e, f), lossy[i].mg3[0], lossy[i].mg3[1], tol, G50);
+        check_complex(mixed(MIX_MAXWELL_GARNETT_3D, 0, 1, e * e, f), lossy[i].mg3[0], lossy[i].mg3[1], tol,
+                      G50);
     }
 }
 
-static const double complex_index[][2] = { { 3.5, 0 }, { 3.882, 0.019 }, { 5.57, 0.387 }, { 5.0, 3.6 }, { 1.2, 4.9 } };
+static const double complex_index[][2] = {
+    { 3.5, 0 }, { 3.882, 0.019 }, { 5.57, 0.387 }, { 5.0, 3.6 }, { 1.2, 4.9 }
+};
 enum { INDICES = 5 };
 static double complex eps_of(int i) {
     double complex n = complex_of(complex_index[i][0], complex_index[i][1]);
@@ -120,12 +125,16 @@ static void laws(void) {
         for (int rule = 0; rule < MIXINGS; rule++)
             for (int pores = 0; pores < 2; pores++) {
                 CHECK_SOURCE(cabs(mixed((mixing)rule, pores, 1, solid, 0) - 1), 0, 1e-14, "G-52 no solid");
-                CHECK_SOURCE(cabs(mixed((mixing)rule, pores, 1, solid, 1) - solid), 0, 1e-14 * cabs(solid), "G-52 all solid");
+                CHECK_SOURCE(cabs(mixed((mixing)rule, pores, 1, solid, 1) - solid), 0, 1e-14 * cabs(solid),
+                             "G-52 all solid");
             }
-        CHECK_SOURCE(cabs(mixed(MIX_BRUGGEMAN_2D, 0, 1, solid, 0.5) - root), 0, 1e-13, "G-53 Dykhne (1970), Keller (1964)");
+        CHECK_SOURCE(cabs(mixed(MIX_BRUGGEMAN_2D, 0, 1, solid, 0.5) - root), 0, 1e-13,
+                     "G-53 Dykhne (1970), Keller (1964)");
         for (double f = 0.03; f < 1; f += 0.07) { /* G-54: the phases exchanged at the same share */
-            double complex b = mixed(MIX_BRUGGEMAN_2D, 0, 1.7, solid, f) * mixed(MIX_BRUGGEMAN_2D, 0, solid, 1.7, f);
-            double complex g = mixed(MIX_MAXWELL_GARNETT_2D, 0, 1.7, solid, f) * mixed(MIX_MAXWELL_GARNETT_2D, 0, solid, 1.7, f);
+            double complex b =
+                mixed(MIX_BRUGGEMAN_2D, 0, 1.7, solid, f) * mixed(MIX_BRUGGEMAN_2D, 0, solid, 1.7, f);
+            double complex g = mixed(MIX_MAXWELL_GARNETT_2D, 0, 1.7, solid, f) *
+                               mixed(MIX_MAXWELL_GARNETT_2D, 0, solid, 1.7, f);
             CHECK_SOURCE(cabs(b / (1.7 * solid) - 1), 0, 1e-12, "G-54 Keller (1964)");
             CHECK_SOURCE(cabs(g / (1.7 * solid) - 1), 0, 1e-12, "G-54 Keller (1964)");
             double complex eps[] = { 1.7, solid };
@@ -148,12 +157,16 @@ static void bounds(void) {
             u[j] = (double)(seed >> 11) / 9007199254740992.0;
         }
         double f = u[0], solid = 1 + 24 * u[1], ser = 1 / (f / solid + 1 - f), par = f * solid + 1 - f;
-        double mg2 = creal(mixed(MIX_MAXWELL_GARNETT_2D, 0, 1, solid, f)), mg3 = creal(mixed(MIX_MAXWELL_GARNETT_3D, 0, 1, solid, f));
-        double mg2i = creal(mixed(MIX_MAXWELL_GARNETT_2D, 1, 1, solid, f)), mg3i = creal(mixed(MIX_MAXWELL_GARNETT_3D, 1, 1, solid, f));
-        double b2 = creal(mixed(MIX_BRUGGEMAN_2D, 0, 1, solid, f)), b3 = creal(mixed(MIX_BRUGGEMAN_3D, 0, 1, solid, f));
+        double mg2 = creal(mixed(MIX_MAXWELL_GARNETT_2D, 0, 1, solid, f)),
+               mg3 = creal(mixed(MIX_MAXWELL_GARNETT_3D, 0, 1, solid, f));
+        double mg2i = creal(mixed(MIX_MAXWELL_GARNETT_2D, 1, 1, solid, f)),
+               mg3i = creal(mixed(MIX_MAXWELL_GARNETT_3D, 1, 1, solid, f));
+        double b2 = creal(mixed(MIX_BRUGGEMAN_2D, 0, 1, solid, f)),
+               b3 = creal(mixed(MIX_BRUGGEMAN_3D, 0, 1, solid, f));
         double lo = creal(mixed(MIX_LOOYENGA, 0, 1, solid, f));
         slack = 1e-12 * solid;
-        CHECK(ser <= mg3 + slack && mg3 <= b3 + slack && b3 <= mg3i + slack && mg3i <= par + slack); /* G-55 */
+        CHECK(ser <= mg3 + slack && mg3 <= b3 + slack && b3 <= mg3i + slack &&
+              mg3i <= par + slack); /* G-55 */
         CHECK(mg3 <= lo + slack && lo <= mg3i + slack);
         CHECK(ser <= mg2 + slack && mg2 <= b2 + slack && b2 <= mg2i + slack && mg2i <= par + slack);
     }
@@ -204,26 +217,30 @@ static void branch(void) {
             memcpy(sorted, step, sizeof step);
             qsort(sorted, 1000, sizeof sorted[0], ascending);
             double second = 0; /* a jump shows as a step unlike both neighbours */
-            for (int i = 1; i + 1 < 1000; i++) second = fmax(second, step[i] - fmax(step[i - 1], step[i + 1]));
+            for (int i = 1; i + 1 < 1000; i++)
+                second = fmax(second, step[i] - fmax(step[i - 1], step[i + 1]));
             CHECK(second < 10 * sorted[500]);
         }
     material_free(&si);
 }
 
 /* Three and more phases. */
-static double bisected(const double *eps, const double *f, size_t n, int d) { /* real phases: the only positive root */
+static double bisected(const double *eps, const double *f, size_t n,
+                       int d) { /* real phases: the only positive root */
     double lo = 1e-3, hi = 1e3;
     for (int i = 0; i < 200; i++) {
         double mid = 0.5 * (lo + hi), sum = 0;
         for (size_t p = 0; p < n; p++) sum += f[p] * (eps[p] - mid) / (eps[p] + (d - 1) * mid);
-        if (sum > 0) lo = mid;
-        else hi = mid;
+        if (sum > 0)
+            lo = mid;
+        else
+            hi = mid;
     }
     return 0.5 * (lo + hi);
 }
 
-/* All roots of the Bruggeman equation of three phases at once (Durand 1960, Kerner 1966) from its cubic; how many lie
- * in the cone of the phases, and which one. */
+/* All roots of the Bruggeman equation of three phases at once (Durand 1960, Kerner 1966) from its cubic; how
+ * many lie in the cone of the phases, and which one. */
 static int roots_in_cone(const double complex *eps, const double *f, int d, double complex *inside) {
     double complex cubic[4] = { 0 }, root[3] = { 0.4 + 0.9 * complex_of(0, 1), 0, 0 };
     for (int p = 0; p < 3; p++) { /* f_p (e_p - e) times the other two (e_q + (d - 1) e) */
@@ -239,7 +256,8 @@ static int roots_in_cone(const double complex *eps, const double *f, int d, doub
     root[1] = root[0] * root[0] * scale, root[2] = root[0] * root[0] * root[0] * scale, root[0] *= scale;
     for (int turn = 0; turn < 500; turn++)
         for (int i = 0; i < 3; i++) {
-            double complex value = ((cubic[3] * root[i] + cubic[2]) * root[i] + cubic[1]) * root[i] + cubic[0];
+            double complex value =
+                ((cubic[3] * root[i] + cubic[2]) * root[i] + cubic[1]) * root[i] + cubic[0];
             root[i] -= value / (cubic[3] * (root[i] - root[(i + 1) % 3]) * (root[i] - root[(i + 2) % 3]));
         }
     int found = 0;
@@ -256,11 +274,14 @@ static int roots_in_cone(const double complex *eps, const double *f, int d, doub
 static void many_phases(void) {
     double real[] = { 1, 15, 4, 2.1 }, share[] = { 0.2, 0.3, 0.35, 0.15 };
     double complex eps[4] = { 1, 15, 4, 2.1 };
-    CHECK_SOURCE(creal(mixed_many(MIX_BRUGGEMAN_2D, 0, eps, share + 1, 4)), bisected(real, share, 4, 2), 1e-11, "the only positive root");
-    CHECK_SOURCE(creal(mixed_many(MIX_BRUGGEMAN_3D, 0, eps, share + 1, 4)), bisected(real, share, 4, 3), 1e-11, "the only positive root");
+    CHECK_SOURCE(creal(mixed_many(MIX_BRUGGEMAN_2D, 0, eps, share + 1, 4)), bisected(real, share, 4, 2),
+                 1e-11, "the only positive root");
+    CHECK_SOURCE(creal(mixed_many(MIX_BRUGGEMAN_3D, 0, eps, share + 1, 4)), bisected(real, share, 4, 3),
+                 1e-11, "the only positive root");
     double looyenga = pow(0.2 + 0.3 * cbrt(15) + 0.35 * cbrt(4) + 0.15 * cbrt(2.1), 3);
     CHECK_SOURCE(creal(mixed_many(MIX_LOOYENGA, 0, eps, share + 1, 4)), looyenga, 1e-12, "Looyenga (1965)");
-    CHECK_SOURCE(creal(mixed_many(MIX_VOLUME, 0, eps, share + 1, 4)), 0.2 + 4.5 + 1.4 + 0.315, 1e-12, "plain mean");
+    CHECK_SOURCE(creal(mixed_many(MIX_VOLUME, 0, eps, share + 1, 4)), 0.2 + 4.5 + 1.4 + 0.315, 1e-12,
+                 "plain mean");
     unsigned long long seed = 5;
     for (int i = 0; i < INDICES; i++)
         for (int d = 2; d <= 3; d++) {
@@ -275,26 +296,34 @@ static void many_phases(void) {
                 f[1] = u[0], f[2] = (1 - u[0]) * u[1], f[0] = 1 - f[1] - f[2];
                 double complex three[] = { 1, eps_of(i), complex_of(4 + 3 * u[2], 0.4 * u[2]) };
                 double complex e = mixed_many(b, 0, three, f + 1, 3);
-                CHECK_SOURCE(cabs(bruggeman_residual(three, f, 3, d, e)), 0, 1e-12, "Bruggeman (1935), three phases");
+                CHECK_SOURCE(cabs(bruggeman_residual(three, f, 3, d, e)), 0, 1e-12,
+                             "Bruggeman (1935), three phases");
                 double complex only = 0;
                 CHECK(roots_in_cone(three, f, d, &only) == 1);
-                CHECK_SOURCE(cabs(e / only - 1), 0, 1e-9, "the one root of the cubic in the cone of the phases");
+                CHECK_SOURCE(cabs(e / only - 1), 0, 1e-9,
+                             "the one root of the cubic in the cone of the phases");
                 CHECK(cimag(e) >= 0 && creal(csqrt(e)) > 0 && cabs(e) <= cabs(three[1]) * (1 + 1e-12));
                 /* A coating of the solid's or the ambient's own material is no third phase. */
                 double complex same[] = { 1, eps_of(i), eps_of(i) }, bare[] = { 1, eps_of(i), 1 };
                 double solid = f[1] + f[2];
-                CHECK_SOURCE(cabs(mixed_many(b, 0, same, f + 1, 3) / mixed(b, 0, 1, same[1], solid) - 1), 0, 1e-11, "two phases");
-                CHECK_SOURCE(cabs(mixed_many(b, 0, bare, f + 1, 3) / mixed(b, 0, 1, same[1], f[1]) - 1), 0, 1e-11, "two phases");
-                CHECK_SOURCE(cabs(mixed_many(g, 0, same, f + 1, 3) / mixed(g, 0, 1, same[1], solid) - 1), 0, 1e-11, "two phases");
-                CHECK_SOURCE(cabs(mixed_many(g, 1, bare, f + 1, 3) / mixed(g, 1, 1, same[1], f[1]) - 1), 0, 1e-11, "two phases");
+                CHECK_SOURCE(cabs(mixed_many(b, 0, same, f + 1, 3) / mixed(b, 0, 1, same[1], solid) - 1), 0,
+                             1e-11, "two phases");
+                CHECK_SOURCE(cabs(mixed_many(b, 0, bare, f + 1, 3) / mixed(b, 0, 1, same[1], f[1]) - 1), 0,
+                             1e-11, "two phases");
+                CHECK_SOURCE(cabs(mixed_many(g, 0, same, f + 1, 3) / mixed(g, 0, 1, same[1], solid) - 1), 0,
+                             1e-11, "two phases");
+                CHECK_SOURCE(cabs(mixed_many(g, 1, bare, f + 1, 3) / mixed(g, 1, 1, same[1], f[1]) - 1), 0,
+                             1e-11, "two phases");
             }
         }
-    /* Duality with three phases: e1 e3 = e2^2 in equal shares leaves e2 (Dykhne 1970 applied to three phases). */
+    /* Duality with three phases: e1 e3 = e2^2 in equal shares leaves e2 (Dykhne 1970 applied to three
+     * phases). */
     for (int i = 0; i < INDICES; i++)
         for (double f = 0.05; f < 0.5; f += 0.06) {
             double complex middle = csqrt(eps_of(i)), three[] = { 1, eps_of(i), middle };
             double part[] = { f, 1 - 2 * f };
-            CHECK_SOURCE(cabs(mixed_many(MIX_BRUGGEMAN_2D, 0, three, part, 3) - middle), 0, 1e-12, "duality, three phases");
+            CHECK_SOURCE(cabs(mixed_many(MIX_BRUGGEMAN_2D, 0, three, part, 3) - middle), 0, 1e-12,
+                         "duality, three phases");
         }
 }
 

@@ -1,6 +1,7 @@
 /* Stacks of plane layers against 40-digit values and identities: quarter waves (G-10, G-11, G-17), nitride on
- * silicon (G-12), two absorbing layers (G-13), thick absorbers (G-14, G-15), frustrated total reflection (G-16),
- * uniaxial code on isotropic layers (G-22), energy and reciprocity (G-23), closed forms of one layer. */
+ * silicon (G-12), two absorbing layers (G-13), thick absorbers (G-14, G-15), frustrated total reflection
+ * (G-16), uniaxial code on isotropic layers (G-22), energy and reciprocity (G-23), closed forms of one layer.
+ */
 #include "optics/multilayer.h"
 
 #include "base/quantity.h"
@@ -28,7 +29,8 @@ static void quarter_waves(void) {
         CHECK_NEAR(ps.R + ps.T, 1.0, 1e-12);
         CHECK_NEAR(pp.R + pp.T, 1.0, 1e-12);
     }
-    static const double stacks[] = { 0.306470358655, 0.672153337121, 0.872431695368, 0.954086816208, 0.98393848685 };
+    static const double stacks[] = { 0.306470358655, 0.672153337121, 0.872431695368, 0.954086816208,
+                                     0.98393848685 };
     film pile[9];
     for (int N = 0; N <= 4; N++) {
         for (int j = 0; j <= 2 * N; j++) {
@@ -40,7 +42,8 @@ static void quarter_waves(void) {
     }
     for (double ns = 1.3; ns < 5.0; ns += 0.37) {
         film sub = of_index(ns, 0, 0), ar = of_index(sqrt(ns), 0, 600.0 / 4 / sqrt(ns));
-        CHECK_SOURCE(multilayer(600, 0, 0, &air, &ar, 1, &sub, NULL).R, 0.0, 1e-14, "n = sqrt(ns), quarter wave");
+        CHECK_SOURCE(multilayer(600, 0, 0, &air, &ar, 1, &sub, NULL).R, 0.0, 1e-14,
+                     "n = sqrt(ns), quarter wave");
     }
 }
 
@@ -58,9 +61,10 @@ static void nitride_on_silicon(void) {
         CHECK_SOURCE(multilayer(600, q, 1, &air, &sin75, 1, &si, NULL).R, p600[a], 1e-10 * p600[a], "G-12");
     }
     /* The tabled silicon, through the public call. */
-    static const struct { double nm, R; } rows[] = { { 300, 0.62892901 }, { 400, 0.33800894 }, { 500, 0.05994321 },
-                                                     { 600, 0.00006341 }, { 700, 0.02494565 }, { 900, 0.10706834 },
-                                                     { 1200, 0.18537374 } };
+    static const struct {
+        double nm, R;
+    } rows[] = { { 300, 0.62892901 }, { 400, 0.33800894 }, { 500, 0.05994321 }, { 600, 0.00006341 },
+                 { 700, 0.02494565 }, { 900, 0.10706834 }, { 1200, 0.18537374 } };
     static const char ONE[] = "75 nm, n = 2.0 on silicon (Green 2008), closed form of one layer";
     material vacuum = data_constant(1, 0), green = data_material("silicon"), two = data_constant(2, 0);
     layer coat = { &two, 75.0 };
@@ -70,9 +74,11 @@ static void nitride_on_silicon(void) {
     CHECK_SOURCE(data_R(&st, 600, 45, POL_S), 0.02312500, 5.1e-9, ONE);
     CHECK_SOURCE(data_R(&st, 600, 45, POL_P), 0.01404348, 5.1e-9, ONE);
     stack bare = { .ambient = &vacuum, .substrate = &green };
-    CHECK_NEAR(data_R(&st, 300, 0, POL_MEAN), data_R(&bare, 300, 0, POL_MEAN), 1e-14); /* a half wave is absent */
+    CHECK_NEAR(data_R(&st, 300, 0, POL_MEAN), data_R(&bare, 300, 0, POL_MEAN),
+               1e-14); /* a half wave is absent */
     film real = of_index(3.94, 0, 0);
-    CHECK_SOURCE(multilayer(600, 0, 0, &air, &sin75, 1, &real, NULL).R, pow((3.94 - 4) / (3.94 + 4), 2), 1e-14, ONE);
+    CHECK_SOURCE(multilayer(600, 0, 0, &air, &sin75, 1, &real, NULL).R, pow((3.94 - 4) / (3.94 + 4), 2),
+                 1e-14, ONE);
     material_free(&vacuum), material_free(&green), material_free(&two);
 }
 
@@ -118,8 +124,10 @@ static void absorbing(void) {
     CHECK_SOURCE(p60.R, 0.22447715, 5.1e-9, MATRIX);
     CHECK_SOURCE(p60.T, 0.52211062, 5.1e-9, MATRIX);
     film uni = { 4, 6, 120 }, on = of_index(3.5, 0, 0);
-    CHECK_SOURCE(multilayer(633, 0.75, 0, &air, &uni, 1, &on, NULL).R, 0.30713057, 5.1e-9, "uniaxial film, closed form");
-    CHECK_SOURCE(multilayer(633, 0.75, 1, &air, &uni, 1, &on, NULL).R, 0.06278040, 5.1e-9, "uniaxial film, closed form");
+    CHECK_SOURCE(multilayer(633, 0.75, 0, &air, &uni, 1, &on, NULL).R, 0.30713057, 5.1e-9,
+                 "uniaxial film, closed form");
+    CHECK_SOURCE(multilayer(633, 0.75, 1, &air, &uni, 1, &on, NULL).R, 0.06278040, 5.1e-9,
+                 "uniaxial film, closed form");
 }
 
 /* Numbers in 0..1 from a fixed start (64-bit linear congruence, Knuth). */
@@ -128,11 +136,13 @@ static double next_random(unsigned long long *state) {
     return (double)(*state >> 11) / 9007199254740992.0;
 }
 
-/* Power absorbed in one film from Im(eps)|E|^2, Gauss-Legendre over depth; F, G at its top. In units in which the
- * flux is Re(conj(F) G). */
+/* Power absorbed in one film from Im(eps)|E|^2, Gauss-Legendre over depth; F, G at its top. In units in which
+ * the flux is Re(conj(F) G). */
 static double absorbed(const film *f, double k0, double s2, int p, double complex F, double complex G) {
-    static const double node[] = { 0.1834346424956498, 0.5255324099163290, 0.7966664774136267, 0.9602898564975363 };
-    static const double weight[] = { 0.3626837833783620, 0.3137066458778873, 0.2223810344533745, 0.1012285362903763 };
+    static const double node[] = { 0.1834346424956498, 0.5255324099163290, 0.7966664774136267,
+                                   0.9602898564975363 };
+    static const double weight[] = { 0.3626837833783620, 0.3137066458778873, 0.2223810344533745,
+                                     0.1012285362903763 };
     enum { PARTS = 40 };
     double sum = 0.0, part = f->thickness_nm / PARTS;
     double complex a = film_a(f, s2, p), b = film_b(f, p), kappa = csqrt(a * b);
@@ -152,7 +162,8 @@ static void identities(void) {
     unsigned long long seed = 20240917;
     static const double angles[] = { 0.0, 35.0, 70.0, 89.0 };
     for (int round = 0; round < 40; round++) {
-        film air = of_index(1, 0, 0), sub = of_index(1.3 + 3 * next_random(&seed), 0, 0), films[12], turned[12];
+        film air = of_index(1, 0, 0), sub = of_index(1.3 + 3 * next_random(&seed), 0, 0), films[12],
+             turned[12];
         int lossless = round % 2;
         for (int j = 0; j < 12; j++) {
             double loss = lossless ? 0.0 : next_random(&seed);
@@ -172,13 +183,14 @@ static void identities(void) {
                 CHECK(w.R >= 0.0 && w.R <= 1.0 + 1e-12 && w.T >= 0.0 && A >= 0.0);
                 CHECK_SOURCE(sum, 1.0, 1e-9, "G-23 energy: R + T + integral of Im(eps)|E|^2");
                 if (lossless) CHECK_SOURCE(w.R + w.T, 1.0, 1e-11, "G-23 energy");
-                CHECK_SOURCE(multilayer(500, s2, p, &sub, turned, 12, &air, NULL).T, w.T, 1e-11, "G-23 reciprocity");
+                CHECK_SOURCE(multilayer(500, s2, p, &sub, turned, 12, &air, NULL).T, w.T, 1e-11,
+                             "G-23 reciprocity");
             }
     }
 }
 
-/* G-22: the in-plane and axial values are used apart; equal ones must give the isotropic answer, here by the closed
- * form of one film with Fresnel coefficients. */
+/* G-22: the in-plane and axial values are used apart; equal ones must give the isotropic answer, here by the
+ * closed form of one film with Fresnel coefficients. */
 static void uniaxial_equals_isotropic(void) {
     film air = of_index(1, 0, 0), si = of_index(3.882, 0.019, 0), nitride = of_index(2, 0, 75);
     for (double deg = 0; deg < 89; deg += 7) {
@@ -186,10 +198,12 @@ static void uniaxial_equals_isotropic(void) {
         double complex k0 = csqrt(1 - s2), k1 = csqrt(nitride.in_plane - s2), k2 = csqrt(si.in_plane - s2);
         for (int p = 0; p < 2; p++) {
             double complex e1 = p ? nitride.in_plane : 1, e2 = p ? si.in_plane : 1;
-            double complex r1 = (k0 - k1 / e1) / (k0 + k1 / e1), r2 = (k1 / e1 - k2 / e2) / (k1 / e1 + k2 / e2);
+            double complex r1 = (k0 - k1 / e1) / (k0 + k1 / e1),
+                           r2 = (k1 / e1 - k2 / e2) / (k1 / e1 + k2 / e2);
             double complex twice = cexp(2 * IM * k1 * (2 * PI / 633) * 75);
             double want = pow(cabs((r1 + r2 * twice) / (1 + r1 * r2 * twice)), 2);
-            CHECK_SOURCE(multilayer(633, s2, p, &air, &nitride, 1, &si, NULL).R, want, 1e-13, "G-22, Airy's formula");
+            CHECK_SOURCE(multilayer(633, s2, p, &air, &nitride, 1, &si, NULL).R, want, 1e-13,
+                         "G-22, Airy's formula");
         }
     }
 }

@@ -1,5 +1,6 @@
-/* The sun and the facts of the trade: spectrum and current (F-01..F-04), polished and coated silicon (F-05..F-08,
- * reference table), two bounces (F-09), windows of a textured wafer (F-20..F-24), diffraction orders (F-26). */
+/* The sun and the facts of the trade: spectrum and current (F-01..F-04), polished and coated silicon
+ * (F-05..F-08, reference table), two bounces (F-09), windows of a textured wafer (F-20..F-24), diffraction
+ * orders (F-26). */
 #include "base/quantity.h"
 #include "check.h"
 #include "optics/trust.h"
@@ -16,8 +17,13 @@ static double weighted(const stack *s, double deg, double lo, double hi, double 
 }
 
 static void spectrum(void) {
-    static const struct { double lo, hi, mA; } current[] = {
-        { 300, 1200, 46.456 }, { 300, 1100, 43.518 }, { 300, 1000, 38.061 }, { 350, 1150, 44.227 }, { 400, 1000, 36.708 } };
+    static const struct {
+        double lo, hi, mA;
+    } current[] = { { 300, 1200, 46.456 },
+                    { 300, 1100, 43.518 },
+                    { 300, 1000, 38.061 },
+                    { 350, 1150, 44.227 },
+                    { 400, 1000, 36.708 } };
     error e = { 0 };
     double mA = 0, sum = 0, visible = 0, total = 0;
     for (size_t i = 0; i < sizeof current / sizeof current[0]; i++) {
@@ -38,7 +44,8 @@ static void spectrum(void) {
     CHECK_SOURCE(sum, 836.09, 0.01, "F-02 ASTM G173-03");
     CHECK_SOURCE(visible, 693.86, 0.01, "F-02 ASTM G173-03");
     CHECK(total > 880 && total < 1000.4); /* F-01 is 1000.37 up to 4000 nm; this table ends at 1460 nm */
-    /* F-04 through the public call: a flat 1 W m-2 nm-1 from 1239.84... - 1 to + 1 nm carries 2 W/m2 of 1 eV photons. */
+    /* F-04 through the public call: a flat 1 W m-2 nm-1 from 1239.84... - 1 to + 1 nm carries 2 W/m2 of 1 eV
+     * photons. */
     double eV = 1239.841984332, w[] = { eV - 1, eV, eV + 1 }, flat[] = { 1, 1, 1 };
     sun one = { 0 };
     CHECK(sun_make(&one, "", 3, w, flat, &e) == ST_OK);
@@ -51,8 +58,12 @@ static void polished_and_coated(void) {
     layer coat = { &two, 75 };
     stack bare = { .ambient = &air, .substrate = &si };
     stack coated = { .ambient = &air, .substrate = &si, .coatings = &coat, .n_coatings = 1 };
-    static const struct { double step, bare, coated; } grids[] = { { 1, 0.349843, 0.095549 }, { 5, 0.349844, 0.095556 },
-                                                                   { 10, 0.349848, 0.095580 }, { 25, 0.349897, 0.095753 } };
+    static const struct {
+        double step, bare, coated;
+    } grids[] = { { 1, 0.349843, 0.095549 },
+                  { 5, 0.349844, 0.095556 },
+                  { 10, 0.349848, 0.095580 },
+                  { 25, 0.349897, 0.095753 } };
     for (size_t i = 0; i < 4; i++) {
         CHECK_SOURCE(weighted(&bare, 0, 300, 1200, grids[i].step), grids[i].bare, 1e-6, TABLE);
         CHECK_SOURCE(weighted(&coated, 0, 300, 1200, grids[i].step), grids[i].coated, 1e-6, TABLE);
@@ -62,8 +73,10 @@ static void polished_and_coated(void) {
     CHECK_SOURCE(weighted(&bare, 0, 400, 1100, 1), 0.345927, 1e-6, TABLE);
     CHECK_SOURCE(weighted(&coated, 0, 400, 1100, 1), 0.077089, 1e-6, TABLE);
     /* The rest of the table is on the 5 nm grid (0.095556, not 0.095549, at 75 nm). */
-    static const struct { double nm, R; } thick[] = { { 60, 0.123654 }, { 65, 0.109984 }, { 70, 0.100710 },
-                                                      { 80, 0.094081 }, { 85, 0.095757 }, { 90, 0.100011 } };
+    static const struct {
+        double nm, R;
+    } thick[] = { { 60, 0.123654 }, { 65, 0.109984 }, { 70, 0.100710 },
+                  { 80, 0.094081 }, { 85, 0.095757 }, { 90, 0.100011 } };
     for (size_t i = 0; i < sizeof thick / sizeof thick[0]; i++) {
         coat.thickness_nm = thick[i].nm;
         CHECK_SOURCE(weighted(&coated, 0, 300, 1200, 5), thick[i].R, 1e-6, TABLE);
@@ -86,10 +99,14 @@ static void trade(void) {
     stack coated = { .ambient = &air, .substrate = &si, .coatings = &coat, .n_coatings = 1 };
     CHECK_SOURCE(weighted(&bare, 0, 300, 1200, 1), 0.34984, 5e-6, "F-05 Green (2008)");
     CHECK_SOURCE(weighted(&other, 0, 300, 1200, 1), 0.34929, 5e-6, "F-05 Schinke et al. (2015)");
-    static const struct { double deg, R; } oblique[] = { { 30, 0.34973 }, { 45, 0.34935 }, { 60, 0.35040 }, { 70, 0.36137 }, { 80, 0.43298 } };
-    for (size_t i = 0; i < 5; i++) CHECK_SOURCE(weighted(&bare, oblique[i].deg, 300, 1200, 1), oblique[i].R, 6e-6, "F-06");
+    static const struct {
+        double deg, R;
+    } oblique[] = { { 30, 0.34973 }, { 45, 0.34935 }, { 60, 0.35040 }, { 70, 0.36137 }, { 80, 0.43298 } };
+    for (size_t i = 0; i < 5; i++)
+        CHECK_SOURCE(weighted(&bare, oblique[i].deg, 300, 1200, 1), oblique[i].R, 6e-6, "F-06");
     static const struct { double deg, R; } film[] = { { 0, 0.10028 }, { 45, 0.11636 }, { 60, 0.16446 } };
-    for (size_t i = 0; i < 3; i++) CHECK_SOURCE(weighted(&coated, film[i].deg, 300, 1200, 1), film[i].R, 6e-6, "F-07");
+    for (size_t i = 0; i < 3; i++)
+        CHECK_SOURCE(weighted(&coated, film[i].deg, 300, 1200, 1), film[i].R, 6e-6, "F-07");
     double least = 1, at = 0;
     for (double w = 500; w <= 800; w++) {
         double R = data_R(&coated, w, 0, POL_MEAN);
@@ -104,7 +121,7 @@ static void trade(void) {
     coat.thickness_nm = 75;
     CHECK_SOURCE(weighted(&bare, 0, 300, 1000, 1), 0.35780, 6e-6, "polished, 300-1000 nm");
     double window = weighted(&bare, 0, 300, 1200, 1), coated_window = weighted(&coated, 0, 300, 1200, 1);
-    CHECK(window > 0.30 && window < 0.36); /* F-20 */
+    CHECK(window > 0.30 && window < 0.36);               /* F-20 */
     CHECK(coated_window > 0.08 && coated_window < 0.12); /* F-21 */
     for (double w = 400; w <= 1100; w += 10) {
         double R = data_R(&bare, w, 0, POL_MEAN);
@@ -115,7 +132,8 @@ static void trade(void) {
 /* F-09: two flat bounces in 54.7356 degree pyramids, s and p followed separately. */
 static double two_bounces(const stack *s, double nm) {
     double sum = 0;
-    for (polarization p = POL_S; p <= POL_P; p++) sum += data_R(s, nm, 54.7356, p) * data_R(s, nm, 15.7932, p);
+    for (polarization p = POL_S; p <= POL_P; p++)
+        sum += data_R(s, nm, 54.7356, p) * data_R(s, nm, 15.7932, p);
     return 0.5 * sum;
 }
 
@@ -152,7 +170,8 @@ static double texture(double power, double height, double deg, double lo, double
     size_t n = (size_t)lround(hi - lo) + 1;
     o.angle_deg = deg;
     for (size_t i = 0; i < n; i++) w[i] = lo + (double)i;
-    if (reflectance(&s, &o, w, n, R, NULL, &e) || sun_weighted(&light, w, R, n, lo, hi, &mean, &e)) printf("%s\n", e.text);
+    if (reflectance(&s, &o, w, n, R, NULL, &e) || sun_weighted(&light, w, R, n, lo, hi, &mean, &e))
+        printf("%s\n", e.text);
     *largest = 0;
     for (size_t i = 0; i < n; i++) *largest = fmax(*largest, R[i]);
     profile_free(&p);
@@ -160,7 +179,8 @@ static double texture(double power, double height, double deg, double lo, double
 }
 
 static void windows(void) {
-    static const double tall[] = { 300, 350, 400 }, cone[] = { 0.00229, 0.00161, 0.00099 }, bowl[] = { 0.00461, 0.00330, 0.00266 };
+    static const double tall[] = { 300, 350, 400 }, cone[] = { 0.00229, 0.00161, 0.00099 },
+                        bowl[] = { 0.00461, 0.00330, 0.00266 };
     double most, largest = 0;
     for (int i = 0; i < 3; i++) {
         CHECK_SOURCE(texture(2, tall[i], 0, 400, 700, &most), cone[i], 1.5e-5, "F-22 (200 slabs, +-1e-5)");
@@ -169,7 +189,11 @@ static void windows(void) {
     }
     /* 0.0033 is stated as the largest single wavelength over the three cones */
     CHECK_SOURCE(largest, 0.0033, 0.6e-4 + 1e-5, "F-22");
-    static const struct { double deg, visible, whole; } oblique[] = { { 45, 0.0119, 0.0299 }, { 50, 0.0190, 0.0413 }, { 60, 0.0503, 0.0846 }, { 70, 0.136, 0.185 } };
+    static const struct {
+        double deg, visible, whole;
+    } oblique[] = {
+        { 45, 0.0119, 0.0299 }, { 50, 0.0190, 0.0413 }, { 60, 0.0503, 0.0846 }, { 70, 0.136, 0.185 }
+    };
     for (int i = 0; i < 4; i++) {
         double digit = oblique[i].visible > 0.1 ? 5.1e-4 : 6e-5;
         CHECK_SOURCE(texture(2, 350, oblique[i].deg, 400, 700, &most), oblique[i].visible, digit, "F-23");
@@ -186,7 +210,8 @@ static void windows(void) {
         before = got;
     }
     CHECK_SOURCE(texture(2, 1e-3, 0, 300, 1200, &most), 0.34984, 6e-6, "F-24, height to 0 is F-05");
-    CHECK(texture(2, 350, 0, 300, 1200, &most) < 0.1003); /* G-63: graded beats the best single layer over a broad band */
+    CHECK(texture(2, 350, 0, 300, 1200, &most) <
+          0.1003); /* G-63: graded beats the best single layer over a broad band */
 }
 
 static void orders(void) {
@@ -197,20 +222,26 @@ static void orders(void) {
     CHECK(trust_orders(350, 303.5, 0, 1, n) == ORDERS_IN_SUBSTRATE);
     CHECK(trust_orders(350, 517, 45, 1, n) == ORDERS_IN_AMBIENT); /* below 517 nm at 45 degrees (517.4) */
     CHECK(trust_orders(350, 518, 45, 1, n) == ORDERS_IN_SUBSTRATE);
-    CHECK(trust_orders(350, 1069, 0, 1, 3.54) == ORDERS_IN_SUBSTRATE); /* up to about 1070 nm in silicon, n = 3.54 */
+    CHECK(trust_orders(350, 1069, 0, 1, 3.54) ==
+          ORDERS_IN_SUBSTRATE); /* up to about 1070 nm in silicon, n = 3.54 */
     CHECK(trust_orders(350, 1075, 0, 1, 3.54) == ORDERS_NONE);
-    static const struct { double pitch, air; } below[] = { { 300, 100 }, { 400, 100 }, { 600, 84 }, { 800, 58 }, { 1000, 33 } };
-    for (int i = 0; i < 5; i++) { /* photons with p/wl < 1.1547, counted on a 25 nm grid: half a step is 1.4 % */
+    static const struct {
+        double pitch, air;
+    } below[] = { { 300, 100 }, { 400, 100 }, { 600, 84 }, { 800, 58 }, { 1000, 33 } };
+    for (int i = 0; i < 5;
+         i++) { /* photons with p/wl < 1.1547, counted on a 25 nm grid: half a step is 1.4 % */
         order_shares o;
         CHECK(trust_shares(below[i].pitch, 0, 1, &si, &light, 300, 1200, &o, &e) == ST_OK);
-        CHECK_SOURCE(100 * (1 - o.in_ambient), below[i].air, 1.5, "share of photons below the opening of orders in air");
+        CHECK_SOURCE(100 * (1 - o.in_ambient), below[i].air, 1.5,
+                     "share of photons below the opening of orders in air");
         CHECK_NEAR(o.none + o.in_substrate + o.in_ambient, 1.0, 1e-12);
     }
 }
 
 int main(void) {
     air = data_constant(1, 0), two = data_constant(2, 0);
-    si = data_material("silicon"), schinke = data_material("silicon-schinke-2015"), nitride = data_material("nitride");
+    si = data_material("silicon"), schinke = data_material("silicon-schinke-2015"),
+    nitride = data_material("nitride");
     light = data_sun();
     spectrum();
     polished_and_coated();
@@ -218,7 +249,8 @@ int main(void) {
     pyramids();
     windows();
     orders();
-    material_free(&air), material_free(&si), material_free(&schinke), material_free(&nitride), material_free(&two);
+    material_free(&air), material_free(&si), material_free(&schinke), material_free(&nitride),
+        material_free(&two);
     sun_free(&light);
     return check_done();
 }

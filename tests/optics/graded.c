@@ -11,7 +11,8 @@ static mixer mix;
 static channel chan[2];
 
 /* One wavelength, two media, both polarizations; R by the walk. */
-static void walk(const profile *p, int level, mixing rule, double complex solid, double nm, double s2, double complex ambient, double R[2]) {
+static void walk(const profile *p, int level, mixing rule, double complex solid, double nm, double s2,
+                 double complex ambient, double R[2]) {
     slabs s = { 0 };
     error e = { 0 };
     double k0[LANES] = { 2 * PI / nm };
@@ -46,7 +47,8 @@ static void even_film(void) { /* half air, half silicon over 160 nm: one film */
 static void order(void) { /* smooth profile, known limit: the error falls 16-fold per doubling */
     double power = 2, R[6][2];
     profile p = data_profile(300, 4001, data_power, &power);
-    for (int level = 0; level < 6; level++) walk(&p, level + 1, MIX_BRUGGEMAN_2D, complex_of(15, 0.125), 633, 0.6, 1, R[level]);
+    for (int level = 0; level < 6; level++)
+        walk(&p, level + 1, MIX_BRUGGEMAN_2D, complex_of(15, 0.125), 633, 0.6, 1, R[level]);
     for (int pol = 0; pol < 2; pol++)
         for (int level = 0; level < 3; level++) {
             double ratio = (R[level][pol] - R[level + 1][pol]) / (R[level + 1][pol] - R[level + 2][pol]);
@@ -59,7 +61,8 @@ static void hard_cases(void) {
     double z[] = { 0, 5e4 }, deep[] = { 0.9, 0.9 }, R[2];
     profile p = { .n = 2, .depth_nm = z, .solid = deep };
     double complex metal = complex_of(5, 3.6) * complex_of(5, 3.6);
-    /* 50 um of an absorber: coarse slabs are far too thick for the step, yet nothing overflows and |r| stays below 1. */
+    /* 50 um of an absorber: coarse slabs are far too thick for the step, yet nothing overflows and |r| stays
+     * below 1. */
     film air = { 1, 1, 0 };
     for (int level = 0; level < 12; level += 3) {
         walk(&p, level, MIX_VOLUME, metal, 300, 0.5, 1, R);
@@ -69,7 +72,8 @@ static void hard_cases(void) {
     film body = { 0.9 * metal + 0.1, 0.9 * metal + 0.1, 5e4 }, sub = { metal, metal, 0 };
     CHECK_NEAR(R[0], multilayer(300, 0.5, 0, &air, &body, 1, &sub, NULL).R, 1e-9);
     CHECK_NEAR(R[1], multilayer(300, 0.5, 1, &air, &body, 1, &sub, NULL).R, 1e-9);
-    /* Beyond total reflection from a dense ambient onto a graded layer of a thinner medium: R = 1 without loss. */
+    /* Beyond total reflection from a dense ambient onto a graded layer of a thinner medium: R = 1 without
+     * loss. */
     double ramp[] = { 0, 1 }, depth[] = { 0, 400 };
     profile q = { .n = 2, .depth_nm = depth, .solid = ramp };
     walk(&q, 5, MIX_BRUGGEMAN_2D, 1.0, 600, 1.7, 2.25, R);

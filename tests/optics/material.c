@@ -55,7 +55,8 @@ static void refusals(void) {
     material m = { 0 };
     error e = { 0 };
     CHECK_FAILS(material_make(&m, "x", "", 0, w, one, one, &e), ST_BAD_INPUT, e, "empty");
-    CHECK_FAILS(material_make(&m, "x", "", 2, back, one, one, &e), ST_BAD_INPUT, e, "x: wavelengths have to ascend, but 400 nm follows 500 nm");
+    CHECK_FAILS(material_make(&m, "x", "", 2, back, one, one, &e), ST_BAD_INPUT, e,
+                "x: wavelengths have to ascend, but 400 nm follows 500 nm");
     CHECK_FAILS(material_make(&m, "x", "", 2, zero, one, one, &e), ST_BAD_INPUT, e, "wavelength 1");
     CHECK_FAILS(material_make(&m, "x", "", 2, w, negative, one, &e), ST_BAD_INPUT, e, "n at 500 nm");
     CHECK_FAILS(material_make(&m, "x", "", 2, w, odd, one, &e), ST_BAD_INPUT, e, "n at 500 nm");
@@ -71,10 +72,21 @@ static void refusals(void) {
 
 /* Every table of the folder, at 633 nm (figures of the sources' tables, linear in wavelength). */
 static void tables(void) {
-    static const struct { const char *name; double n; } rows[] = {
-        { "silicon", 3.8736 }, { "silicon-schinke-2015", 3.8636 }, { "silicon-aspnes-1983", 3.8823 },
-        { "nitride-n1", 1.9047 }, { "nitride", 2.0884 }, { "nitride-n3", 2.1324 }, { "nitride-stoichiometric", 2.0105 },
-        { "oxide", 1.4570 }, { "alumina", 1.6773 }, { "titania", 2.3893 }, { "glass", 1.5120 }, { "encapsulant", 1.4897 } };
+    static const struct {
+        const char *name;
+        double n;
+    } rows[] = { { "silicon", 3.8736 },
+                 { "silicon-schinke-2015", 3.8636 },
+                 { "silicon-aspnes-1983", 3.8823 },
+                 { "nitride-n1", 1.9047 },
+                 { "nitride", 2.0884 },
+                 { "nitride-n3", 2.1324 },
+                 { "nitride-stoichiometric", 2.0105 },
+                 { "oxide", 1.4570 },
+                 { "alumina", 1.6773 },
+                 { "titania", 2.3893 },
+                 { "glass", 1.5120 },
+                 { "encapsulant", 1.4897 } };
     for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
         material m = data_material(rows[i].name);
         error e = { 0 };

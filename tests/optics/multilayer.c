@@ -1,5 +1,5 @@
-/* The fields that multilayer() hands out: continuous through every film by the film's own matrix, right at the ends.
- * Figures: tests/external/multilayer.c. */
+/* The fields that multilayer() hands out: continuous through every film by the film's own matrix, right at
+ * the ends. Figures: tests/external/multilayer.c. */
 #include "optics/multilayer.h"
 
 #include "base/quantity.h"
@@ -8,7 +8,9 @@
 
 int main(void) {
     film air = { 1, 1, 0 }, sub = { complex_of(15, 0.2), complex_of(15, 0.2), 0 };
-    film films[] = { { complex_of(4, 0.1), complex_of(6, 0.2), 83 }, { 1, 1, 140 }, { complex_of(-9, 1.3), complex_of(-9, 1.3), 21 } };
+    film films[] = { { complex_of(4, 0.1), complex_of(6, 0.2), 83 },
+                     { 1, 1, 140 },
+                     { complex_of(-9, 1.3), complex_of(-9, 1.3), 21 } };
     double k0 = 2 * PI / 523;
     double complex im = complex_of(0, 1);
     for (int p = 0; p < 2; p++)
@@ -18,7 +20,8 @@ int main(void) {
             powers w = multilayer(523, s2, p, &air, films, 3, &sub, field);
             for (int j = 0; j < 3; j++) {
                 double complex a = film_a(&films[j], s2, p), b = film_b(&films[j], p), kappa = csqrt(a * b);
-                double complex c = ccos(kappa * k0 * films[j].thickness_nm), s = csin(kappa * k0 * films[j].thickness_nm);
+                double complex c = ccos(kappa * k0 * films[j].thickness_nm),
+                               s = csin(kappa * k0 * films[j].thickness_nm);
                 double complex F = c * field[2 * j] + im * b / kappa * s * field[2 * j + 1];
                 double complex G = c * field[2 * j + 1] + im * a / kappa * s * field[2 * j];
                 CHECK_NEAR(cabs(F - field[2 * j + 2]), 0, 1e-10 * cabs(F));
@@ -32,7 +35,8 @@ int main(void) {
         }
     /* Grazing on the critical angle of a gap: kappa = 0 is a removable 0/0. */
     film dense = { 2.25, 2.25, 0 }, gap = { 1, 1, 300 };
-    powers at = multilayer(600, 1, 0, &dense, &gap, 1, &dense, NULL), near = multilayer(600, 1 + 1e-9, 0, &dense, &gap, 1, &dense, NULL);
+    powers at = multilayer(600, 1, 0, &dense, &gap, 1, &dense, NULL),
+           near = multilayer(600, 1 + 1e-9, 0, &dense, &gap, 1, &dense, NULL);
     CHECK(isfinite(at.R) && isfinite(at.T));
     CHECK_NEAR(at.R, near.R, 1e-8);
     CHECK_NEAR(at.R + at.T, 1, 1e-12);

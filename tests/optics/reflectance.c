@@ -1,5 +1,5 @@
-/* The public call: order of wavelengths, polarizations, hemisphere, laminate, tolerance, properties, each refusal.
- * Figures: tests/external/{fresnel,multilayer,graded,sun}.c. */
+/* The public call: order of wavelengths, polarizations, hemisphere, laminate, tolerance, properties, each
+ * refusal. Figures: tests/external/{fresnel,multilayer,graded,sun}.c. */
 #include "optics/reflectance.h"
 
 #include "base/mem.h"
@@ -72,7 +72,8 @@ static void hemisphere(void) {
 static void steps(void) {
     double z[] = { 0, 0, 90, 90, 90 }, f[] = { 0, 0.4, 0.4, 0.7, 0.7 };
     profile p = { .n = 5, .depth_nm = z, .solid = f };
-    material a = data_constant(1.3, 0), b = data_constant(3.5, 0), mid = data_constant(sqrt(0.4 * 12.25 + 0.6 * 1.69), 0);
+    material a = data_constant(1.3, 0), b = data_constant(3.5, 0),
+             mid = data_constant(sqrt(0.4 * 12.25 + 0.6 * 1.69), 0);
     layer film = { &mid, 90 };
     stack graded = { .ambient = &a, .substrate = &b, .profile = &p, .mixing = MIX_VOLUME };
     stack planar = { .ambient = &a, .substrate = &b, .coatings = &film, .n_coatings = 1 };
@@ -87,14 +88,20 @@ static void coating_as_profile(void) {
     profile p = { .n = 2, .depth_nm = z, .solid = none, .coating = { full }, .n_coatings = 1 };
     layer film = { &nitride, 75 };
     for (int rule = 0; rule < MIXINGS; rule++) {
-        stack shares = { .ambient = &air, .substrate = &si, .coatings = &film, .n_coatings = 1, .profile = &p, .mixing = (mixing)rule };
+        stack shares = { .ambient = &air,
+                         .substrate = &si,
+                         .coatings = &film,
+                         .n_coatings = 1,
+                         .profile = &p,
+                         .mixing = (mixing)rule };
         stack planar = { .ambient = &air, .substrate = &si, .coatings = &film, .n_coatings = 1 };
         CHECK_NEAR(data_R(&shares, 500, 37, POL_P), data_R(&planar, 500, 37, POL_P), 1e-7);
         CHECK_NEAR(data_R(&shares, 500, 37, POL_S), data_R(&planar, 500, 37, POL_S), 1e-7);
     }
 }
 
-/* The laminate by hand: the texture inside the encapsulant at the refracted angle, then two incoherent interfaces. */
+/* The laminate by hand: the texture inside the encapsulant at the refracted angle, then two incoherent
+ * interfaces. */
 static void laminate_by_hand(void) {
     profile p = data_profile(260, 301, data_power, &cone);
     material clear = data_constant(1.5, 0), dense = data_constant(1.48, 0);
@@ -103,8 +110,10 @@ static void laminate_by_hand(void) {
     stack face = { .ambient = &air, .substrate = &clear }, joint = { .ambient = &clear, .substrate = &dense };
     for (double deg = 0; deg < 85; deg += 21)
         for (polarization q = POL_S; q <= POL_P; q++) {
-            double sine = sin(deg * PI / 180), in_glass = asin(sine / 1.5) * 180 / PI, in_eva = asin(sine / 1.48) * 180 / PI;
-            double r1 = data_R(&face, 640, deg, q), r2 = data_R(&joint, 640, in_glass, q), t = data_R(&inner, 640, in_eva, q);
+            double sine = sin(deg * PI / 180), in_glass = asin(sine / 1.5) * 180 / PI,
+                   in_eva = asin(sine / 1.48) * 180 / PI;
+            double r1 = data_R(&face, 640, deg, q), r2 = data_R(&joint, 640, in_glass, q),
+                   t = data_R(&inner, 640, in_eva, q);
             double below = r2 + (1 - r2) * (1 - r2) * t / (1 - r2 * t);
             CHECK_NEAR(data_R(&s, 640, deg, q), r1 + (1 - r1) * (1 - r1) * below / (1 - r1 * below), 2e-6);
         }
@@ -112,7 +121,8 @@ static void laminate_by_hand(void) {
     stack real = { .front = { &glass, 3.2, &eva, 0.45 }, .substrate = &si };
     stack thin = { .front = { &glass, 0, &eva, 0 }, .substrate = &si };
     CHECK(data_R(&real, 320, 0, POL_MEAN) < 0.05);
-    for (double nm = 300; nm <= 1200; nm += 50) CHECK(data_R(&real, nm, 30, POL_MEAN) <= data_R(&thin, nm, 30, POL_MEAN));
+    for (double nm = 300; nm <= 1200; nm += 50)
+        CHECK(data_R(&real, nm, 30, POL_MEAN) <= data_R(&thin, nm, 30, POL_MEAN));
     profile_free(&p);
     material_free(&clear), material_free(&dense);
 }
@@ -161,11 +171,13 @@ static void refusals(void) {
     reflect_options o = reflect_defaults();
     error e = { 0 };
     double nm[] = { 500, 249 }, R[2];
-    CHECK_FAILS(reflectance(&s, &o, nm, 2, R, NULL, &e), ST_BAD_INPUT, e, "silicon is tabled from 250 to 1450 nm, 249 nm was asked for");
+    CHECK_FAILS(reflectance(&s, &o, nm, 2, R, NULL, &e), ST_BAD_INPUT, e,
+                "silicon is tabled from 250 to 1450 nm, 249 nm was asked for");
     nm[1] = -3;
     CHECK_FAILS(reflectance(&s, &o, nm, 2, R, NULL, &e), ST_BAD_INPUT, e, "above 0 nm");
     o.angle_deg = 90;
-    CHECK_FAILS(reflectance(&s, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "the angle of incidence is 90 degrees");
+    CHECK_FAILS(reflectance(&s, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e,
+                "the angle of incidence is 90 degrees");
     o.angle_deg = -1;
     CHECK_FAILS(reflectance(&s, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "angle of incidence");
     o = reflect_defaults();
@@ -175,7 +187,8 @@ static void refusals(void) {
     p.solid[4] = 1.2;
     CHECK_FAILS(reflectance(&s, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "share outside 0..1");
     p.solid[4] = 0.16;
-    stack empty = { .ambient = &air }, open = { .substrate = &si }, half = { .front = { .glass = &glass }, .substrate = &si };
+    stack empty = { .ambient = &air }, open = { .substrate = &si },
+          half = { .front = { .glass = &glass }, .substrate = &si };
     CHECK_FAILS(reflectance(&empty, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "a substrate");
     CHECK_FAILS(reflectance(&open, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "needs an ambient");
     CHECK_FAILS(reflectance(&half, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "encapsulant");
@@ -190,7 +203,8 @@ static void refusals(void) {
     CHECK_FAILS(reflectance(&bad, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "at most");
     p.n_coatings = 1;
     p.coating[0] = calloc(p.n, sizeof(double));
-    CHECK_FAILS(reflectance(&s, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e, "the profile has 1 coatings, the stack only 0");
+    CHECK_FAILS(reflectance(&s, &o, nm, 1, R, NULL, &e), ST_BAD_INPUT, e,
+                "the profile has 1 coatings, the stack only 0");
     p.n_coatings = 0;
     for (size_t i = 1; i <= 7; i++) {
         mem_fail_after(i);
@@ -211,6 +225,7 @@ int main(void) {
     laminate_by_hand();
     properties();
     refusals();
-    material_free(&air), material_free(&si), material_free(&nitride), material_free(&glass), material_free(&eva);
+    material_free(&air), material_free(&si), material_free(&nitride), material_free(&glass),
+        material_free(&eva);
     return check_done();
 }

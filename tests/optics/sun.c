@@ -1,4 +1,5 @@
-/* Weighted means and currents: exact cases, bands between nodes, each refusal. Figures: tests/external/sun.c. */
+/* Weighted means and currents: exact cases, bands between nodes, each refusal. Figures: tests/external/sun.c.
+ */
 #include "optics/sun.h"
 
 #include "base/mem.h"
@@ -7,7 +8,8 @@
 int main(void) {
     /* Irradiance 1/wavelength at the nodes makes the photon flux even there. */
     static const double w[] = { 300, 310, 325, 360, 400 };
-    double irradiance[5], y[] = { 1, 3 }, ends[] = { 300, 400 }, flat[] = { 0.25, 0.25 }, mean = 0, part = 0, whole = 0;
+    double irradiance[5], y[] = { 1, 3 }, ends[] = { 300, 400 }, flat[] = { 0.25, 0.25 }, mean = 0, part = 0,
+                          whole = 0;
     for (int i = 0; i < 5; i++) irradiance[i] = 1 / w[i];
     sun s = { 0 };
     error e = { 0 };
@@ -24,11 +26,15 @@ int main(void) {
     /* A band inside one interval, ends read off linearly. */
     CHECK(sun_current(&s, 301, 302, &part, &e) == ST_OK);
     CHECK_NEAR(part / whole, 1.0 / 100, 1e-4);
-    CHECK_FAILS(sun_weighted(&s, ends, y, 2, 299, 400, &mean, &e), ST_BAD_INPUT, e, "the band 299:400 nm reaches beyond the solar spectrum (300 to 400 nm)");
-    CHECK_FAILS(sun_weighted(&s, ends, y, 2, 400, 300, &mean, &e), ST_BAD_INPUT, e, "the band 400:300 nm is empty");
+    CHECK_FAILS(sun_weighted(&s, ends, y, 2, 299, 400, &mean, &e), ST_BAD_INPUT, e,
+                "the band 299:400 nm reaches beyond the solar spectrum (300 to 400 nm)");
+    CHECK_FAILS(sun_weighted(&s, ends, y, 2, 400, 300, &mean, &e), ST_BAD_INPUT, e,
+                "the band 400:300 nm is empty");
     static const double narrow[] = { 320, 400 }, back[] = { 300, 420, 410 }, three[] = { 1, 1, 1 };
-    CHECK_FAILS(sun_weighted(&s, narrow, y, 2, 310, 400, &mean, &e), ST_BAD_INPUT, e, "the spectrum to be weighted (320 to 400 nm)");
-    CHECK_FAILS(sun_weighted(&s, back, three, 3, 300, 400, &mean, &e), ST_BAD_INPUT, e, "do not ascend at number 3");
+    CHECK_FAILS(sun_weighted(&s, narrow, y, 2, 310, 400, &mean, &e), ST_BAD_INPUT, e,
+                "the spectrum to be weighted (320 to 400 nm)");
+    CHECK_FAILS(sun_weighted(&s, back, three, 3, 300, 400, &mean, &e), ST_BAD_INPUT, e,
+                "do not ascend at number 3");
     CHECK_FAILS(sun_current(&s, 300, 401, &mean, &e), ST_BAD_INPUT, e, "choose a band inside");
     sun_free(&s);
     CHECK_FAILS(sun_make(&s, "", 1, w, irradiance, &e), ST_BAD_INPUT, e, "at least two");

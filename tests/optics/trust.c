@@ -1,4 +1,5 @@
-/* Model error and diffraction orders: nodes, interpolation, clamping, the break at the opening of orders, refusals. */
+/* Model error and diffraction orders: nodes, interpolation, clamping, the break at the opening of orders,
+ * refusals. */
 #include "optics/trust.h"
 
 #include "base/mem.h"
@@ -18,10 +19,12 @@ static double bias_of(double p, double h) {
 
 static void table(void) {
     static const char SOURCE[] = "rigorous coupled-wave calculations, table of u and mean error";
-    static const struct { double p, h, u, bias; } nodes[] = {
-        { 0.10, 0.10, 1.15, 1.1 }, { 0.10, 1.50, 0.17, -0.1 }, { 0.15, 2.0, 0.12, -0.1 }, { 0.40, 0.20, 7.58, -5.8 },
-        { 0.60, 0.60, 1.66, -1.1 }, { 0.90, 0.40, 4.65, -2.8 }, { 1.12, 0.30, 6.35, -4.6 }, { 1.20, 0.30, 24.76, -24.5 },
-        { 1.50, 1.00, 9.38, -8.8 }, { 2.00, 0.15, 20.33, -19.4 }, { 2.50, 2.00, 5.80, -4.7 } };
+    static const struct {
+        double p, h, u, bias;
+    } nodes[] = { { 0.10, 0.10, 1.15, 1.1 },    { 0.10, 1.50, 0.17, -0.1 },   { 0.15, 2.0, 0.12, -0.1 },
+                  { 0.40, 0.20, 7.58, -5.8 },   { 0.60, 0.60, 1.66, -1.1 },   { 0.90, 0.40, 4.65, -2.8 },
+                  { 1.12, 0.30, 6.35, -4.6 },   { 1.20, 0.30, 24.76, -24.5 }, { 1.50, 1.00, 9.38, -8.8 },
+                  { 2.00, 0.15, 20.33, -19.4 }, { 2.50, 2.00, 5.80, -4.7 } };
     for (size_t i = 0; i < sizeof nodes / sizeof nodes[0]; i++) {
         CHECK_SOURCE(u_of(nodes[i].p, nodes[i].h), nodes[i].u, 1e-9, SOURCE);
         CHECK_SOURCE(bias_of(nodes[i].p, nodes[i].h), nodes[i].bias, 1e-9, SOURCE);
@@ -49,10 +52,12 @@ static void table(void) {
 
 static void orders(void) {
     /* sqrt(3)/2 x 400 = 346.41 nm */
-    CHECK(trust_orders(400, 346, 0, 1, 5) == ORDERS_IN_AMBIENT && trust_orders(400, 347, 0, 1, 5) == ORDERS_IN_SUBSTRATE);
+    CHECK(trust_orders(400, 346, 0, 1, 5) == ORDERS_IN_AMBIENT &&
+          trust_orders(400, 347, 0, 1, 5) == ORDERS_IN_SUBSTRATE);
     CHECK(trust_orders(400, 346.41 * 3.5 - 1, 0, 1, 3.5) == ORDERS_IN_SUBSTRATE);
     CHECK(trust_orders(400, 346.41 * 3.5 + 1, 0, 1, 3.5) == ORDERS_NONE);
-    CHECK(trust_orders(400, 346.41 * 1.5 - 1, 0, 1.5, 3.5) == ORDERS_IN_AMBIENT); /* in glass they open earlier */
+    CHECK(trust_orders(400, 346.41 * 1.5 - 1, 0, 1.5, 3.5) ==
+          ORDERS_IN_AMBIENT); /* in glass they open earlier */
     CHECK(trust_orders(400, 346.41 * 1.5 - 1, 30, 1, 3.5) == ORDERS_IN_AMBIENT);
     CHECK(trust_orders(400, 346.41 * 1.5 + 1, 30, 1, 3.5) == ORDERS_IN_SUBSTRATE);
 }
@@ -64,7 +69,8 @@ static void shares(void) {
     error e = { 0 };
     CHECK(trust_shares(60, 0, 1, &si, &s, 300, 1200, &o, &e) == ST_OK);
     CHECK(o.none > 0.95 && o.in_ambient < 1e-12);
-    CHECK(trust_shares(5000, 0, 1, &si, &s, 300, 1200, &o, &e) == ST_OK); /* F-25: pyramids are out of the model */
+    CHECK(trust_shares(5000, 0, 1, &si, &s, 300, 1200, &o, &e) ==
+          ST_OK); /* F-25: pyramids are out of the model */
     CHECK_NEAR(o.in_ambient, 1, 1e-12);
     double before = 1;
     for (double spacing = 60; spacing < 1500; spacing *= 1.3) {
@@ -76,7 +82,8 @@ static void shares(void) {
     }
     CHECK_FAILS(trust_shares(0, 0, 1, &si, &s, 300, 1200, &o, &e), ST_BAD_INPUT, e, "spacing above 0");
     CHECK_FAILS(trust_shares(300, 90, 1, &si, &s, 300, 1200, &o, &e), ST_BAD_INPUT, e, "below 90 degrees");
-    CHECK_FAILS(trust_shares(300, 0, 1, &si, &s, 200, 1200, &o, &e), ST_BAD_INPUT, e, "silicon is tabled from");
+    CHECK_FAILS(trust_shares(300, 0, 1, &si, &s, 200, 1200, &o, &e), ST_BAD_INPUT, e,
+                "silicon is tabled from");
     CHECK_FAILS(trust_shares(300, 0, 1, &si, &s, 270, 1200, &o, &e), ST_BAD_INPUT, e, "solar spectrum");
     mem_fail_after(1);
     CHECK_FAILS(trust_shares(300, 0, 1, &si, &s, 300, 1200, &o, &e), ST_NO_MEMORY, e, "memory");
