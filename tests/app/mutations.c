@@ -62,14 +62,14 @@ static int one_protocol(const char *s, size_t n) {
 
 static int one_sheet(const char *s, size_t n) {
     static const char *const files[] = { "a.png", "x/b.png", "sub/c.png" };
-    sheet sheet_read_in = { 0 };
+    sheet got = { 0 };
     textbuf warnings = { 0 };
     error e = { ST_OK, "" };
-    status st = sheet_parse(s, n, "s", &sheet_read_in, &e);
-    if (st == ST_OK) st = sheet_match(&sheet_read_in, files, 3, &warnings, &e);
+    status st = sheet_parse(s, n, "s", &got, &e);
+    if (st == ST_OK) st = sheet_match(&got, files, 3, &warnings, &e);
     int good = (st == ST_OK) == (e.text[0] == '\0') && st != ST_BUG;
     text_free(&warnings);
-    sheet_free(&sheet_read_in);
+    sheet_free(&got);
     return good;
 }
 
