@@ -238,8 +238,11 @@ static void draw_spectrum(const results *r, size_t from, size_t n, spectrum_curv
     thin_spectrum(s, n, &k->sample);
     text_addf(&title, "%s", text_or_empty(s->sample));
     if (s->angle_deg > 0.0) text_addf(&title, ", %s deg", number_text(s->angle_deg, 4, angle));
-    if (s->polarization && *s->polarization && strcmp(s->polarization, "mean"))
-        text_addf(&title, ", %s polarised", s->polarization);
+    const char *light = text_or_empty(s->polarization);
+    if (!strcmp(light, "diffuse"))
+        text_add(&title, ", diffuse light");
+    else if (*light && strcmp(light, "mean"))
+        text_addf(&title, ", %s polarised", light);
     plot_series series[3] = {
         { .x = k->polished.x, .y = k->polished.y, .n = k->polished.n, .style = PLOT_DASHED, .tone = 2,
           .label = k->polished.n ? "polished" : NULL },

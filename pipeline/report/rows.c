@@ -143,7 +143,8 @@ const column spectrum_columns[] = {
     SPECTRUM(sample, COL_TEXT, "", 0, "sample the spectrum was predicted for"),
     SPECTRUM(wavelength_nm, COL_NUMBER, "nm", 6, "wavelength in vacuum"),
     SPECTRUM(angle_deg, COL_NUMBER, "deg", 4, "angle of incidence from the surface normal"),
-    SPECTRUM(polarization, COL_TEXT, "", 0, "mean (unpolarised), s or p"),
+    SPECTRUM(polarization, COL_TEXT, "", 0,
+             "mean (unpolarised), s or p; diffuse: mean over the half space of incidence, then the angle is empty"),
     SPECTRUM(reflectance, COL_NUMBER, "1", 6,
              "predicted total reflectance of the front surface, 0 to 1; beyond about 1000 nm a measurement adds light from the "
              "rear"),
