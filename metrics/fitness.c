@@ -11,8 +11,8 @@
  * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as noise, so the
  * smaller of the two is taken.
  * Streaks. What charging leaves runs along x: power in the columns |kx| <= 3 of the spectrum beyond that of the columns
- * 8 to 14 (brought to the same |k| by the radial mean). Medians over bands of ky outside 0.45 to 2 per spacing keep the
- * spots of a lattice out; the gap is filled with the mean of its sides.
+ * 8 to 14 (brought to the same |k| by the radial mean). Means without outliers over bands of ky outside 0.45 to 2 per
+ * spacing keep the spots of a lattice out; the gap is filled with the lower of its sides.
  * Line jitter. Shift between neighbouring lines by least squares on the gradient; the second difference keeps what
  * changes from line to line, and the same figure of the columns removes texture and noise. */
 #include "metrics/fitness.h"
@@ -75,33 +75,29 @@ static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
     double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
     if (!(ring > least_z * floor / sqrt(modes)) || !(ring > 0.0)) return MISSING;
     size_t used = 0;
-    double fall = 0.0, level = 0.0;
-    for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end; i++) {
+    double level = 0.0;
+    int hidden = 0; /* nothing beyond the ring stands out of the noise: at least as blurred as the noise allows */
+    for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end && !hidden; i++) {
         double p = power_between(psd, edge[i] / d, edge[i + 1] / d, floor, 0.0);
         double m = PI * (edge[i + 1] * edge[i + 1] - edge[i] * edge[i]) / (d * d) * (double)n_px / 4.0;
         double se = floor / sqrt(m);
         int visible = p > least_z * se && p > 0.3 * floor;
-        if (visible && log(ring / p) <= most_fall) {
+        hidden = i == 0 && !visible;
+        if (i && !visible) break;
+        if (hidden || log(ring / p) <= most_fall) {
             used = i + 1;
-            level = p;
+            level = hidden ? fmax(p, 0.0) + least_z * se : p;
         }
-        if (i == 0 && !visible) { /* nothing beyond the ring: at least as blurred as the noise allows */
-            used = 1;
-            level = fmax(p, 0.0) + least_z * se;
-            break;
-        }
-        if (!visible) break;
     }
     if (!used || !(level > 0.0)) return MISSING;
     double k0 = edge[used - 1] / d, k1 = edge[used] / d, want = creased_fall(edge[used - 1], edge[used]);
-    fall = log(ring / level);
-    if (fall <= want) return 0.0;
-    double shape = level / power_between(psd, k0, k1, floor, 0.0), low = 0.0, high = 0.6 * d;
-    if (!(shape > 0.0)) shape = 1.0;
+    if (log(ring / level) <= want) return 0.0;
+    double low = 0.0, high = 0.6 * d;
     for (int i = 0; i < 50; i++) {
         double b = 0.5 * (low + high), undo = 4.0 * PI * PI * b * b;
-        double top = power_between(psd, 0.8 / d, 1.4 / d, floor, undo), tail = power_between(psd, k0, k1, floor, undo);
-        if (tail > 0.0 && log(top / (shape * tail)) < want) high = b;
+        double top = power_between(psd, 0.8 / d, 1.4 / d, floor, undo);
+        double tail = hidden ? level * exp(undo * k0 * k1) : power_between(psd, k0, k1, floor, undo);
+        if (tail > 0.0 && log(top / tail) < want) high = b;
         else low = b;
     }
     return 0.5 * (low + high);
@@ -148,7 +144,15 @@ static double excess(const float *p, const curve *psd, size_t nx, size_t ny, siz
     return here - (radial > 0.0 ? expected * reference / radial : 0.0);
 }
 
-/* Sum of the excess over ky0 <= j < ky1, as count times median in bands; *last gets the band nearest the gap. */
+/* Mean of v without its outliers: clipped at 6 medians of |v|, which costs an exponential variate 2 %. */
+static double clipped_mean(double *v, size_t n, double *scratch) {
+    for (size_t i = 0; i < n; i++) scratch[i] = fabs(v[i]);
+    double cap = 6.0 * median(scratch, n), sum = 0.0;
+    for (size_t i = 0; i < n; i++) sum += fmax(-cap, fmin(cap, v[i]));
+    return n ? sum / (double)n : 0.0;
+}
+
+/* Sum of the excess over j0 <= j < j1, as count times mean in bands; first and last band on their own, too. */
 static double band_sum(const float *p, const curve *psd, size_t nx, size_t ny, size_t j0, size_t j1, size_t bands,
                        double *v, double *first, double *last) {
     double sum = 0.0;
@@ -156,7 +160,7 @@ static double band_sum(const float *p, const curve *psd, size_t nx, size_t ny, s
     for (size_t b = 0; b < bands && j1 > j0; b++) {
         size_t a = j0 + b * (j1 - j0) / bands, z = j0 + (b + 1) * (j1 - j0) / bands, n = 0;
         for (size_t j = a; j < z; j++) v[n++] = excess(p, psd, nx, ny, j);
-        double m = median(v, n);
+        double m = clipped_mean(v, n, v + ny / 2 + 1);
         if (b == 0) *first = m;
         *last = m;
         sum += m * (double)n;
@@ -169,19 +173,21 @@ static status streak_variance(const float *p, const curve *psd, size_t nx, size_
     size_t nyquist = ny / 2, gap0 = nyquist, gap1 = nyquist;
     *out = 0.0;
     if (nx < 4 * REFERENCE_TO) return ST_OK;
-    double *v = mem_array(nyquist + 1, sizeof *v), last_low, first_high, unused;
+    double *v = mem_array(2 * (nyquist + 1), sizeof *v), last_low, first_high, unused;
     if (!v) return NO_MEMORY(e, "the look for streaks");
     if (d > 0.0) {
         gap0 = (size_t)fmin(0.45 * (double)ny / d, (double)nyquist);
         gap1 = (size_t)fmin(2.0 * (double)ny / d, (double)nyquist);
     }
     size_t first = gap0 > 3 ? 3 : gap0; /* below lies uneven brightness */
-    double sum = band_sum(p, psd, nx, ny, first, gap0, 1 + (gap0 - first) / 64, v, &unused, &last_low);
+    /* Few rows lie below the gap, and the texture's own scatter there is large: only what is beyond its error counts. */
+    double below = band_sum(p, psd, nx, ny, first, gap0, 1 + (gap0 - first) / 64, v, &unused, &last_low);
+    double sum = below * (1.0 - 1.0 / sqrt((double)(gap0 - first + 1)));
     sum += band_sum(p, psd, nx, ny, gap1, nyquist, 8, v, &first_high, &unused);
     if (gap1 > gap0) {
         int low_known = gap0 > first + 3, high_known = nyquist > gap1 + 8;
-        double level = low_known && high_known ? 0.5 * (last_low + first_high) : low_known ? last_low : first_high;
-        sum += level * (double)(gap1 - gap0);
+        double level = low_known && high_known ? fmin(last_low, first_high) : low_known ? last_low : first_high;
+        sum += fmax(0.0, level) * (double)(gap1 - gap0);
     }
     *out = fmax(0.0, 2.0 * sum / ((double)nx * (double)ny));
     free(v);

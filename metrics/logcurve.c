@@ -67,7 +67,7 @@ static int cubic_fit(double m[4][5], double *coef) {
     return 1;
 }
 
-double curve_vertex(const curve *c, double x0, double width, int sign, double *y) {
+double curve_vertex(const curve *c, const double *weight, double x0, double width, int sign, double *y) {
     if (y) *y = curve_at(c, x0);
     if (c->n < 3) return x0;
     double step = (c->points[c->n - 1].x - c->points[1].x) / (double)(c->n - 2);
@@ -76,10 +76,11 @@ double curve_vertex(const curve *c, double x0, double width, int sign, double *y
     for (size_t i = 1; i < c->n; i++) {
         double u = (c->points[i].x - x0) / half, p[4] = { 1.0, u, u * u, u * u * u };
         if (fabs(u) > 1.0) continue;
+        double w = weight ? weight[i] : 1.0;
         used++;
         for (int a = 0; a < 4; a++) {
-            for (int b = 0; b < 4; b++) m[a][b] += p[a] * p[b];
-            m[a][4] += p[a] * c->points[i].y;
+            for (int b = 0; b < 4; b++) m[a][b] += w * p[a] * p[b];
+            m[a][4] += w * p[a] * c->points[i].y;
         }
     }
     if (used < 4 || !cubic_fit(m, k)) return x0;

@@ -17,7 +17,8 @@ void log_curve_make(const curve *c, double x_first, double x_last, double share,
 double curve_at(const curve *c, double x);
 
 /* Vertex of a cubic fitted to the points of c (point 0 left out) within +-width * x0 of x0, but at least 2.2 steps:
- * sign +1 maximum, -1 minimum. x0 itself when the fit has no such vertex in its window; *y gets the fitted value. */
-double curve_vertex(const curve *c, double x0, double width, int sign, double *y);
+ * sign +1 maximum, -1 minimum; weight[c->n] of the points, NULL for equal ones. x0 itself when the fit has no such
+ * vertex in its window; *y (may be NULL) gets the fitted value. */
+double curve_vertex(const curve *c, const double *weight, double x0, double width, int sign, double *y);
 
 #endif

@@ -1,7 +1,7 @@
 /* spacing_acf: the first ring of the autocorrelation of the curvature map K (sigma 0.12 d).
  * 1. The first ring of the radial mean, searched from 0.35 d: the first maximum behind the trough that rises at least
  *    half as far as the highest one (finely sampled curves have small false maxima inside the true ring); vertex of a
- *    cubic on the unsmoothed curve.
+ *    cubic on the mean over circles of the 2-D map, unsmoothed.
  * 2. Stretch: an area-preserving stretch by exp(2 e) along theta turns C0(r) into C0(r (1 - e cos 2(phi - theta))) to
  *    first order, so e follows from the second angular harmonic of C projected on -r C0'(r), iterated with C sampled
  *    in the straightened frame (Gauss-Newton). Trough and ring enter, the self term of the features does not.
@@ -11,18 +11,15 @@
  *    is 1 to 3 % short. The ellipse through the peaks is the stretch.
  * Bias of 1 and its method uncertainty: see the header of the room and measure.c. */
 #include <math.h>
-#include <stdlib.h>
 
-#include "base/mem.h"
 #include "base/quantity.h"
 #include "metrics/logcurve.h"
 #include "metrics/spacing.h"
 
 /* ---- the radial ring ---- */
 
-typedef struct { double r, height, trough_r, trough; } radial_ring;
-
-static int find_ring(const curve *c, double d, radial_ring *out) {
+/* Place of the ring to within the width of its smoothing; 0 none. */
+static double find_ring(const curve *c, double d) {
     log_curve s;
     log_curve_make(c, 0.35 * d, 2.2 * d, 0.04, &s);
     size_t low = 0;
@@ -33,12 +30,9 @@ static int find_ring(const curve *c, double d, radial_ring *out) {
     for (size_t i = low + 1; i + 1 < s.n; i++) {
         if (!(s.y[i] > s.y[i - 1] && s.y[i] >= s.y[i + 1])) continue;
         if (s.y[i] - s.y[low] < 0.5 * (top - s.y[low])) continue;
-        out->trough_r = s.x[low];
-        out->trough = s.y[low];
-        out->r = curve_vertex(c, s.x[i], 0.18, +1, &out->height);
-        return 1;
+        return s.x[i];
     }
-    return 0;
+    return 0.0;
 }
 
 /* ---- stretch ---- */
@@ -106,21 +100,24 @@ static void stretch_report(double e1, double e2, size_t n, ring *out) {
     out->stretch_angle_deg = (measured){ angle, fmin(52.0, 0.5 * u / (2.0 * e) * 180.0 / PI), 0.0, n };
 }
 
-/* Radial mean in the straightened frame, in steps of 1 px from lag 0. */
-static status straight_curve(const acf2d *a, double e1, double e2, double r_max, curve *out, error *e) {
-    shear m = shear_make(e1, e2);
-    curve c = { .name = "acf", .x_unit = "px", .y_unit = "1" };
-    c.points = mem_array((size_t)r_max + 2, sizeof *c.points);
-    if (!c.points) return NO_MEMORY(e, "a radial mean");
-    c.points[c.n++] = (curve_point){ 0.0, 1.0 };
-    for (double r = 1.0; r <= r_max; r += 1.0) {
-        double mean, c2, s2;
-        circle(a, m, r, &mean, &c2, &s2);
-        if (!isfinite(mean)) break;
-        c.points[c.n++] = (curve_point){ r, mean };
+/* Maximum of the mean over circles near r0 in the straightened frame. Circles on the interpolated map, because rings of
+ * whole pixels jump from one lattice point to the next where the shells of an ordered layer are sharp. */
+static double ring_vertex(const acf2d *a, shear m, double r0, double *height) {
+    enum { STEPS = 32 };
+    const double width = 0.13;
+    curve_point p[STEPS + 1] = { { 0.0, 0.0 } };
+    curve c = { .points = p, .n = STEPS + 1 };
+    double r = r0, c2, s2;
+    for (int round = 0; round < 3; round++) {
+        for (int i = 0; i < STEPS; i++) {
+            double at = r * (1.0 + width * (2.0 * i / (STEPS - 1) - 1.0)), mean;
+            circle(a, m, at, &mean, &c2, &s2);
+            if (!isfinite(mean)) return r;
+            p[i + 1] = (curve_point){ at, mean };
+        }
+        r = curve_vertex(&c, NULL, r, width * 1.001, +1, height);
     }
-    *out = c;
-    return ST_OK;
+    return r;
 }
 
 /* ---- the six peaks ---- */
@@ -264,30 +261,25 @@ status spacing_ring(const acf2d *k_acf, const curve *k_radial, double d_px, size
     const double least_z = 3.0;
     ring r = { .second_px = MISSING };
     measured none = { MISSING, MISSING, 0.0, n_features };
-    radial_ring found;
-    r.stretch = r.stretch_angle_deg = none;
-    if (!(d_px > 0.0) || !find_ring(k_radial, d_px, &found))
+    r.spacing = r.stretch = r.stretch_angle_deg = none;
+    double rough = d_px > 0.0 ? find_ring(k_radial, d_px) : 0.0;
+    if (!(rough > 0.0))
         return fail(e, ST_NO_RESULT, "the autocorrelation has no ring between %.3g and %.3g px", 0.35 * d_px,
                     2.2 * d_px);
-    double se = acf_standard_error(k_radial, found.r, k_acf->nx, k_acf->ny);
-    r.radial_ring_px = found.r;
-    r.ring_height = found.height;
-    r.ring_z = found.height / se;
+    double se = acf_standard_error(k_radial, rough, k_acf->nx, k_acf->ny);
+    r.ring_height = curve_at(k_radial, rough);
+    r.radial_ring_px = ring_vertex(k_acf, shear_make(0.0, 0.0), rough, &r.ring_height);
+    r.ring_z = r.ring_height / se;
     if (r.ring_z < least_z)
         return fail(e, ST_NO_RESULT,
-                    "the ring of the autocorrelation at %.3g px is %.1f standard errors high, %.0f are asked for",
-                    found.r, r.ring_z, least_z);
-    r.spacing = none;
-    r.spacing.value = found.r;
-    double e1, e2;
-    if (stretch_fit(k_acf, found.r, &e1, &e2)) {
+                    "the ring of the autocorrelation at %.3g px is %.1f standard errors high, %.0f are asked for", rough,
+                    r.ring_z, least_z);
+    r.spacing.value = r.radial_ring_px;
+    double e1, e2, height;
+    if (stretch_fit(k_acf, r.radial_ring_px, &e1, &e2)) {
         stretch_report(e1, e2, n_features, &r);
-        if (r.stretch.value > 1.03 && r.stretch.value - 1.0 > 3.0 * r.stretch.u_sampling) {
-            curve straight = { 0 };
-            if (straight_curve(k_acf, e1, e2, 2.3 * d_px, &straight, e) != ST_OK) return ST_NO_MEMORY;
-            if (find_ring(&straight, d_px, &found)) r.spacing.value = found.r;
-            free(straight.points);
-        }
+        if (r.stretch.value > 1.03 && r.stretch.value - 1.0 > 3.0 * r.stretch.u_sampling)
+            r.spacing.value = ring_vertex(k_acf, shear_make(e1, e2), r.radial_ring_px, &height);
     }
     from_peaks(k_acf, r.spacing.value, se, n_features, &r);
     if (n_features) r.spacing.u_sampling = 0.17 / sqrt((double)n_features) * r.spacing.value;

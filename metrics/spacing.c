@@ -38,7 +38,7 @@ void spacing_first_scale(const curve *acf, size_t nx, size_t ny, first_scale *ou
     if (s.n < 3 || !(curve_at(acf, 3.0) >= least_at_3px)) return;
     for (size_t i = 1; i + 1 < s.n; i++) {
         if (!(s.y[i] < s.y[i - 1] && s.y[i] <= s.y[i + 1] && s.y[i] < start_share * s.y[0])) continue;
-        double c, r = curve_vertex(acf, s.x[i], 0.20, -1, &c);
+        double c, r = curve_vertex(acf, NULL, s.x[i], 0.20, -1, &c);
         if (!(r >= least_px)) return;
         out->first_minimum_px = r;
         out->scale_px = r / minimum_to_spacing;
@@ -58,16 +58,18 @@ status spacing_psd_peak(const curve *k_psd, double d_px, size_t n_features, meas
     if (s.n < 3 || best == 0 || best == s.n - 1)
         return fail(e, ST_NO_RESULT, "the power spectrum has no peak between periods of %.3g and %.3g px",
                     1.0 / (1.7 * middle), 1.0 / (0.6 * middle));
-    /* ln P, because the peak stands on a steep slope; a power is never below the rounding of its largest. */
+    /* ln P, because the peak stands on a steep slope; weighted with P, so that the feet of a narrow line do not decide. */
     curve_point window[LOG_POINTS];
+    double weight[LOG_POINTS] = { 0.0 };
     curve ln = { .points = window, .n = 1 };
     window[0] = (curve_point){ 0.0, 0.0 };
     for (size_t i = 1; i < k_psd->n && ln.n < LOG_POINTS; i++) {
-        double k = k_psd->points[i].x;
+        double k = k_psd->points[i].x, p = fmax(k_psd->points[i].y, 1e-12 * s.y[best]);
         if (k < 0.5 * middle || k > 2.1 * middle) continue;
-        window[ln.n++] = (curve_point){ k, log(fmax(k_psd->points[i].y, 1e-12 * s.y[best])) };
+        weight[ln.n] = p / s.y[best];
+        window[ln.n++] = (curve_point){ k, log(p) };
     }
-    double k = curve_vertex(&ln, s.x[best], 0.20, +1, NULL);
+    double k = curve_vertex(&ln, weight, s.x[best], 0.20, +1, NULL);
     *out = (measured){ 1.0 / k, MISSING, 0.0, n_features };
     /* 2.7 % at 960 features, 8.5 % at 87 (repetitions on textures of known truth). */
     if (n_features) out->u_sampling = 0.84 / sqrt((double)n_features) / k;

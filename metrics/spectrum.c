@@ -292,11 +292,16 @@ status psd2d_radial(const float *psd, size_t nx, size_t ny, curve *out, error *e
             size_t b = (size_t)(k * (double)longer + 0.5);
             if (b >= n) continue;
             double w = i && 2 * i != nx ? 2.0 : 1.0; /* the other half plane mirrors this one */
+            double power = w * (double)psd[j * kx + i];
             bins[b].weight += w;
-            bins[b].radius += w * k;
-            bins[b].value += w * (double)psd[j * kx + i];
+            bins[b].radius += power * k;
+            bins[b].value += power;
         }
     }
+    /* The abscissa is where the ring's power lies: a single line keeps its frequency. */
+    for (size_t b = 0; b < n; b++)
+        bins[b].radius = bins[b].value > 0.0 ? bins[b].radius / bins[b].value * bins[b].weight
+                                             : (double)b / (double)longer * bins[b].weight;
     status st = radial_curve(bins, n, "psd", "1/px", "px2", out, e);
     free(bins);
     return st;
