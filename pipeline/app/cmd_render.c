@@ -29,7 +29,8 @@ enum { OPT_PICTURE = 0x100, OPT_NAME = 0x200, OPT_COUNT, OPT_FORMAT, OPT_RECIPE,
 /* Rows with a key of OPT_PICTURE + k set the recipe key picture_keys[k]. */
 static const char *const picture_keys[] = {
     "spacing_nm", "px_nm", "size", "pattern", "disorder", "relief", "shape", "fill", "height_spread", "height_by_size",
-    "noise", "blur", "edge", "rough", "contrast", "gradient", "streaks", "stretch", "bits", "label", "seed" };
+    "noise", "blur", "edge", "rough", "contrast", "gradient", "streaks", "stretch", "bits", "label", "seed",
+    "second_share", "second_spacing" };
 
 /* clang-format off */
 static const struct argp_option options[] = {
@@ -56,6 +57,8 @@ static const struct argp_option options[] = {
                                                       "floor (1.15)", 2 },
     { "height-spread",  OPT_PICTURE + 8, "X",      0, "relative standard deviation of the heights (0.1)", 2 },
     { "height-by-size", OPT_PICTURE + 9, "G",      0, "height grows with own cell size to the power G (0.5)", 2 },
+    { "second-share",   OPT_PICTURE + 21, "X",     0, "share of the field under a second population, in patches (0)", 2 },
+    { "second-spacing", OPT_PICTURE + 22, "X",     0, "its spacing / that of the first (2)", 2 },
     { "stretch",        OPT_PICTURE + 17, "X:DEG", 0, "stretched by X along DEG, counter-clockwise from the x axis, as a tilted view (1:0)", 2 },
     { "seed",           OPT_PICTURE + 20, "N",     0, "same seed, same bytes (1)", 2 },
     { NULL, 0, NULL, 0, "The look:", 3 },
@@ -192,6 +195,11 @@ static status add_truth(const recipe_image *image, const rendering *r, int centr
     text_addf(t, ",\n      \"n_features\": %zu,\n      \"n_hidden\": %zu", r->n, r->n_hidden);
     add_number(t, "density_per_um2", r->density_per_px2 / (px * px) * 1e6);
     add_number(t, "spacing_nm", r->spacing_px * px);
+    if (image->options.second_share > 0.0) {
+        text_addf(t, ",\n      \"n_second\": %zu", r->n_second);
+        add_number(t, "first_spacing_nm", r->first_px * px);
+        add_number(t, "second_spacing_nm", r->second_px * px);
+    }
     add_number(t, "size_d10_nm", d[0]);
     add_number(t, "size_d50_nm", d[1]);
     add_number(t, "size_d90_nm", d[2]);

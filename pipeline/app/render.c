@@ -16,7 +16,7 @@
 render_options render_defaults(void) {
     return (render_options){ .spacing_nm = 300.0, .px_nm = 8.0, .nx = 1024, .ny = 768, .pattern = PATTERN_LLOYD,
                              .disorder = MISSING, .exponent = 1.0, .fill = 1.15, .height_spread = 0.10,
-                             .height_by_size = 0.5, .relief = RELIEF_HILLOCK, .blur_px = 0.7, .contrast = 0.7,
+                             .height_by_size = 0.5, .second_spacing = 2.0, .relief = RELIEF_HILLOCK, .blur_px = 0.7, .contrast = 0.7,
                              .stretch = 1.0, .bit_depth = 8, .strip = 1, .show_scale = 1, .seed = 1 };
 }
 
@@ -37,6 +37,8 @@ static status options_check(const render_options *o, error *e) {
         { "fill", o->fill, 0.1, 4.0 },
         { "height_spread", o->height_spread, 0.0, 1.0 },
         { "height_by_size", o->height_by_size, -3.0, 3.0 },
+        { "second_share", o->second_share, 0.0, 0.9 },
+        { "second_spacing", o->second_spacing, 0.25, 4.0 },
         { "edge", o->edge, 0.0, 1.0 },
         { "rough", o->rough, 0.0, 10.0 },
         { "noise (electrons per pixel)", o->electrons, 0.0, 1e9 },

@@ -23,6 +23,9 @@ typedef struct {
     double fill;           /* base radius / half spacing: 1.15, touching; 0.45 leaves a bare floor */
     double height_spread;  /* relative sd of the heights: 0.10 */
     double height_by_size; /* g in height ~ own cell size^g: 0.5 */
+    double second_share;   /* two populations: share of the field that the second one covers, in patches: 0 */
+    double second_spacing; /* spacing of the second population / that of the first: 2. spacing_nm stays that of both
+                              together */
     relief relief;         /* hillock or pore (RELIEF_AUTO: hillock) */
     double edge;           /* edge brightness, share of slope in the signal: 0 */
     double rough;          /* sd of a roughness finer than the features / mean height: 0 */
@@ -48,9 +51,11 @@ typedef struct {
     int bit_depth;
     size_t n;              /* true features inside the plane */
     size_t n_hidden;       /* of these, centres that lie below a neighbour's flank: no top of their own to see */
+    size_t n_second;       /* of these, features of the second population */
     double *x, *y;         /* px, owned */
     double density_per_px2;
     double spacing_px;     /* hexagonal spacing of the true density */
+    double first_px, second_px; /* spacing of each population inside its patches; NAN when there is one only */
     double *basin_ecd_px;  /* [n] equivalent circular diameter of the ideal basins of the noiseless surface; NAN for
                               those that touch the frame or are hidden altogether; owned */
     double *basin_weight;  /* [n] Miles-Lantuejoul border weights, 0 where the diameter is NAN */

@@ -18,6 +18,10 @@
 #define CELL_SAMPLES 12.0
 #define CELL_REACH 1.5 /* spacings; the torus is more than twice as wide */
 #define MOST_FEATURES 2e5
+#define PATCH_LENGTH 14.0 /* of two populations, in spacings: several patches in a frame, many features in a patch */
+/* A cell that is an outlier of a random pattern makes no giant and no needle of its feature. */
+#define LEAST_SIZE 0.4
+#define MOST_SIZE 1.8
 /* The torus is this much larger than the frame and its margin; room for the final scaling to the number asked. */
 #define TORUS_ROOM 1.15
 #define TORUS_MARGIN 3.0
@@ -328,8 +332,8 @@ static status pattern_matern(torus *t, double core, rng *r, error *e) {
     return st;
 }
 
-static status pattern_make(torus *t, const render_options *o, error *e) {
-    rng r = rng_make(o->seed, STREAM_PATTERN);
+static status pattern_make(torus *t, const render_options *o, stream which, error *e) {
+    rng r = rng_make(o->seed, which);
     double own = isnan(o->disorder) ? -1.0 : o->disorder;
     switch (o->pattern) {
     case PATTERN_HEX: return pattern_hex(t, own < 0.0 ? 0.16 : own, &r, e);
@@ -359,7 +363,45 @@ static status scale_to_count(centres *c, double half_w, double half_h, size_t wa
         c->x[k] = c->x[k] * scale + half_w - 0.5;
         c->y[k] = c->y[k] * scale + half_h - 0.5;
     }
+    c->first *= scale;
+    c->other *= scale;
     return ST_OK;
+}
+
+static status centres_room(centres *c, size_t n, error *e) {
+    double *x = mem_grow(c->x, n, sizeof *x);
+    if (x) c->x = x;
+    double *y = mem_grow(c->y, n, sizeof *y);
+    if (y) c->y = y;
+    double *size = mem_grow(c->size, n, sizeof *size);
+    if (size) c->size = size;
+    unsigned char *second = mem_grow(c->second, n, sizeof *second);
+    if (second) c->second = second;
+    return x && y && size && second ? ST_OK : NO_MEMORY(e, "the centres of the features");
+}
+
+/* Makes one population and adds it, stretched, origin in the middle; with patches only what lies on its own side of
+ * them, a quarter of its spacing off the seam. */
+static status add_population(const render_options *o, torus *t, const stretching *s, const patches *p, int second,
+                             centres *c, error *e) {
+    status st = pattern_make(t, o, second ? STREAM_SECOND : STREAM_PATTERN, e);
+    if (st == ST_OK) st = centres_room(c, c->n + t->n, e);
+    double *area = st == ST_OK ? mem_array(t->n, sizeof *area) : NULL, samples = 0.0;
+    if (st == ST_OK) st = area ? cells_sample(t, area, NULL, NULL, e) : NO_MEMORY(e, "the centres of the features");
+    if (st == ST_OK) {
+        for (size_t k = 0; k < t->n; k++) samples += area[k];
+        for (size_t k = 0; k < t->n; k++) {
+            double u = t->x[k] - 0.5 * t->w, v = t->y[k] - 0.5 * t->h;
+            if (p && (second ? 1.0 : -1.0) * patches_distance(p, t->x[k], t->y[k]) < 0.25 * t->d) continue;
+            c->x[c->n] = s->mxx * u + s->mxy * v;
+            c->y[c->n] = s->mxy * u + s->myy * v;
+            double size = sqrt(area[k] * (double)t->n / samples);
+            c->size[c->n] = fmin(fmax(size, LEAST_SIZE), MOST_SIZE) * t->d / c->spacing;
+            c->second[c->n++] = (unsigned char)second;
+        }
+    }
+    free(area);
+    return st;
 }
 
 status centres_make(const render_options *o, centres *out, error *e) {
@@ -368,36 +410,31 @@ status centres_make(const render_options *o, centres *out, error *e) {
     if (!(count >= 3.5) || count > MOST_FEATURES)
         return fail(e, ST_BAD_INPUT, "a spacing of %.4g nm at %.4g nm per pixel puts %.3g features into %zu x %zu px; "
                     "4 to 200000 can be rendered", o->spacing_nm, o->px_nm, count, o->nx, o->ny);
+    int two = o->second_share > 0.0;
+    double f = two ? o->second_share : 0.0, ratio = two ? o->second_spacing : 1.0;
+    double first = d * sqrt(1.0 - f + f / (ratio * ratio)), other = first * ratio, widest = fmax(first, other);
     stretching s = stretching_make(o->stretch, o->stretch_angle_deg);
-    double mx = half_w + TORUS_MARGIN * d, my = half_h + TORUS_MARGIN * d;
+    double mx = half_w + TORUS_MARGIN * widest, my = half_h + TORUS_MARGIN * widest;
     /* The unstretching map is the stretching one with the diagonal exchanged and the other sign of xy (determinant 1). */
     torus t = { .w = 2.0 * TORUS_ROOM * (s.myy * mx + fabs(s.mxy) * my),
-                .h = 2.0 * TORUS_ROOM * (fabs(s.mxy) * mx + s.mxx * my), .d = d };
-    centres c = { .spacing = d };
-    status st = pattern_make(&t, o, e);
-    if (st != ST_OK) goto done;
-    c.n = t.n;
-    c.x = mem_array(c.n, sizeof *c.x);
-    c.y = mem_array(c.n, sizeof *c.y);
-    c.size = mem_array(c.n, sizeof *c.size);
-    st = c.x && c.y && c.size ? cells_sample(&t, c.size, NULL, NULL, e) : NO_MEMORY(e, "the centres of the features");
-    if (st != ST_OK) goto done;
-    double samples = 0.0;
-    for (size_t k = 0; k < c.n; k++) samples += c.size[k];
-    for (size_t k = 0; k < c.n; k++) {
-        double u = t.x[k] - 0.5 * t.w, v = t.y[k] - 0.5 * t.h;
-        c.x[k] = s.mxx * u + s.mxy * v;
-        c.y[k] = s.mxy * u + s.myy * v;
-        c.size[k] = sqrt(c.size[k] * (double)c.n / samples);
-    }
-    st = scale_to_count(&c, half_w, half_h, (size_t)(count + 0.5), e);
+                .h = 2.0 * TORUS_ROOM * (fabs(s.mxy) * mx + s.mxx * my), .d = first };
+    torus t2 = { .w = t.w, .h = t.h, .d = other };
+    centres c = { .spacing = d, .first = two ? first : MISSING, .other = two ? other : MISSING };
+    patches p = { .level = 0.0 };
+    status st = two ? patches_make(o->seed, f, t.w, t.h, PATCH_LENGTH * d, &p, e) : ST_OK;
+    if (st == ST_OK) st = add_population(o, &t, &s, two ? &p : NULL, 0, &c, e);
+    if (st == ST_OK && two) st = add_population(o, &t2, &s, &p, 1, &c, e);
+    size_t wanted = (size_t)(count + 0.5);
+    if (st == ST_OK && c.n <= wanted) st = fail(e, ST_BAD_INPUT, "the two populations leave too few features");
+    if (st == ST_OK) st = scale_to_count(&c, half_w, half_h, wanted, e);
     if (st == ST_OK) {
         *out = c;
         c = (centres){ 0 };
     }
-done:
     free(t.x);
     free(t.y);
+    free(t2.x);
+    free(t2.y);
     centres_free(&c);
     return st;
 }
@@ -406,5 +443,6 @@ void centres_free(centres *c) {
     free(c->x);
     free(c->y);
     free(c->size);
+    free(c->second);
     *c = (centres){ 0 };
 }

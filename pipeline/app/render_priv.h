@@ -7,7 +7,8 @@
 #include "app/render.h"
 
 /* One generator per stage, so that more noise does not move the features. */
-typedef enum { STREAM_PATTERN = 1, STREAM_HEIGHTS, STREAM_ROUGH, STREAM_STREAKS, STREAM_NOISE, STREAM_GRADIENT } stream;
+typedef enum { STREAM_PATTERN = 1, STREAM_HEIGHTS, STREAM_ROUGH, STREAM_STREAKS, STREAM_NOISE, STREAM_GRADIENT,
+               STREAM_SECOND, STREAM_PATCHES } stream;
 typedef struct {
     uint64_t s[4];
     double spare; /* second value of the polar method, NAN: none */
@@ -30,11 +31,23 @@ stretching stretching_make(double stretch, double angle_deg);
 typedef struct {
     size_t n;
     double *x, *y;
-    double *size; /* own cell size / mean: square root of the area ratio */
+    double *size;         /* own cell size / mean: square root of the area ratio, extremes of a random pattern cut off */
+    unsigned char *second; /* 1: of the second population */
     double spacing;
+    double first, other;  /* spacing of each population, NAN when there is one only */
 } centres;
 status centres_make(const render_options *o, centres *out, error *e);
 void centres_free(centres *c);
+
+/* Patches of the second population: a sum of plane waves above a level. */
+enum { PATCH_WAVES = 9 };
+typedef struct {
+    double kx[PATCH_WAVES], ky[PATCH_WAVES], phase[PATCH_WAVES], level;
+} patches;
+/* Patches of about `length` that cover `share` of w x h. err ST_NO_MEMORY */
+status patches_make(uint64_t seed, double share, double w, double h, double length, patches *out, error *e);
+/* Signed distance to the nearest edge, to first order; above 0 inside a patch. */
+double patches_distance(const patches *p, double x, double y);
 
 /* Surface at half-pixel steps, `margin` px around the frame included. */
 typedef struct {

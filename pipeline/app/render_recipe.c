@@ -39,6 +39,8 @@ static const key keys[] = {
     { "fill",           KEY_NUMBER,  AT(fill),           "base radius over half the spacing" },
     { "height_spread",  KEY_NUMBER,  AT(height_spread),  "a relative standard deviation" },
     { "height_by_size", KEY_NUMBER,  AT(height_by_size), "an exponent" },
+    { "second_share",   KEY_NUMBER,  AT(second_share),   "a share of the field" },
+    { "second_spacing", KEY_NUMBER,  AT(second_spacing), "a ratio to the spacing of the first population" },
     { "edge",           KEY_NUMBER,  AT(edge),           "a share from 0 to 1" },
     { "rough",          KEY_NUMBER,  AT(rough),          "a standard deviation over the height" },
     { "noise",          KEY_NUMBER,  AT(electrons),      "electrons per pixel at full signal, 0 for none" },

@@ -53,8 +53,7 @@ static status bodies_make(const render_options *o, const centres *c, body **bodi
     if (!b) return NO_MEMORY(e, "the features");
     double end = 0.0;
     for (size_t k = 0; k < c->n; k++) {
-        /* A cell that is an outlier of a random pattern makes no giant and no needle of its feature. */
-        double size = fmin(fmax(c->size[k], 0.4), 1.8);
+        double size = c->size[k];
         b[k].height = pow(size, o->height_by_size) * fmax(LOWEST_HEIGHT, 1.0 + o->height_spread * rng_normal(&r));
         b[k].radius = 0.5 * c->spacing * o->fill * size;
         b[k].reach = b[k].radius * profile_end(p, b[k].height);
@@ -218,12 +217,15 @@ status surface_truth(const render_options *o, const centres *c, const surface *s
         out->x[m] = c->x[k];
         out->y[m] = c->y[k];
         out->n_hidden += (size_t)hidden(s, c->x[k], c->y[k], k);
+        out->n_second += c->second[k];
         out->basin_ecd_px[m] = whole ? sqrt((double)b->steps / PI) : MISSING; /* 2 sqrt(A / pi), A = steps / 4 */
         out->basin_weight[m] = whole ? w * h / ((w - fx + 1.0) * (h - fy + 1.0)) : 0.0;
         m++;
     }
     free(basins);
     out->n = n;
+    out->first_px = c->first;
+    out->second_px = c->other;
     out->density_per_px2 = (double)n / ((double)o->nx * (double)o->ny);
     out->spacing_px = sqrt(2.0 / (sqrt(3.0) * out->density_per_px2));
     return ST_OK;
