@@ -56,22 +56,6 @@ size_t html_fit(const char *s, size_t letters) {
     return i;
 }
 
-void html_paragraphs(textbuf *out, const char *s) {
-    while (s && *s) {
-        size_t n = strcspn(s, "\n");
-        textbuf line = { 0 };
-        text_add_n(&line, s, n);
-        if (n) {
-            text_add(out, "<p>");
-            html_text(out, line.s);
-            text_add(out, "</p>\n");
-        }
-        if (line.failed) out->failed = 1;
-        text_free(&line);
-        s += n + (s[n] == '\n');
-    }
-}
-
 const column *column_find(const column *columns, size_t n, const char *name) {
     for (size_t i = 0; i < n; i++)
         if (!strcmp(columns[i].name, name)) return &columns[i];

@@ -15,9 +15,6 @@ void html_text(textbuf *out, const char *s);
 /* Bytes of the first `letters` UTF-8 characters of s, never splitting one. */
 size_t html_fit(const char *s, size_t letters);
 
-/* Line feeds become paragraphs. */
-void html_paragraphs(textbuf *out, const char *s);
-
 /* The column of that name, or NULL. */
 const column *column_find(const column *columns, size_t n, const char *name);
 

@@ -143,7 +143,7 @@ static void draw_series(const results *r, const etches *t, const char *name, tex
     plot_series s = { .x = t->x, .y = R ? t->R : t->spacing, .lo = R ? t->R_lo : t->spacing_lo,
                       .hi = R ? t->R_hi : t->spacing_hi, .n = t->n, .style = PLOT_POINTS, .marks = t->mark };
     plot p = { .title = R ? "Weighted reflectance over the etches" : "Spacing over the etches",
-               .x_label = "etches in time order", .y_label = R ? "weighted reflectance (%)" : "spacing (nm)",
+               .x_label = "samples, in time order of the etch", .y_label = R ? "weighted reflectance (%)" : "spacing (nm)",
                .from_zero = R, .y_lo = MISSING, .y_hi = MISSING, .names = t->name, .n_names = t->n, .series = &s, .n_series = 1,
                .width = 1040, .height = 300 };
     if (!any_finite(s.y, t->n)) return;
@@ -277,12 +277,15 @@ static void draw_spectra(const results *r, textbuf *out) {
     thin_reference(r, r->coated_R, &k->coated);
     k->floor = axis_floor(r);
     size_t drawn = 0, curves = 0;
+    char floor_text[NUMBER_TEXT];
     text_add(out, "<div class=\"charts\">\n");
     for (size_t from = 0, to; from < r->n_spectra; from = to, curves++) {
         for (to = from + 1; to < r->n_spectra && same_curve(&r->spectra[from], &r->spectra[to]);) to++;
         if (drawn < MAX_SPECTRA && ++drawn) draw_spectrum(r, from, to - from, k, out);
     }
     text_add(out, "</div>\n");
+    text_addf(out, "<p class=\"small\">All charts have the same axes. A curve that leaves the chart at the bottom lies below "
+                   "%s %%.</p>\n", number_text(k->floor, 3, floor_text));
     if (curves > drawn)
         text_addf(out, "<p class=\"small\">The first %zu of %zu spectra are drawn; spectra.csv holds them all.</p>\n", drawn,
                   curves);

@@ -1,6 +1,6 @@
 /* Every micrograph of the run as a card: its overlay, what became of it and why. Overlays are read back from the output
- * folder, box-averaged, and embedded with 32 levels per channel: camera noise below that compresses badly and shows
- * nothing. The width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one can
+ * folder, box-averaged to the width they are shown at, and embedded with 24 levels per channel: noise below that
+ * compresses badly and shows nothing. The width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one can
  * mail; what is left out is named with its path. */
 #include <math.h>
 #include <stdlib.h>
@@ -13,7 +13,7 @@
 #include "report/page.h"
 #include "report/thumbnail.h"
 
-enum { THUMB_WIDTH = 640, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16, DETAIL_NX = 220, DETAIL_NY = 165 };
+enum { THUMB_WIDTH = 524, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16, DETAIL_NX = 220, DETAIL_NY = 165 };
 enum { MAX_CARDS = 500 };
 static const size_t picture_budget = (size_t)6 << 20; /* bytes of embedded pictures */
 
@@ -126,7 +126,7 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
     const char *word = m->status ? m->status : "";
     small_png whole = { 0 }, detail = { 0 };
     int excluded = !strcmp(word, "excluded"), unreadable = !strcmp(word, "unreadable");
-    text_addf(out, "<article class=\"card %s\"><h3>", excluded ? "excluded" : unreadable ? "unreadable" : "used");
+    text_addf(out, "<article id=\"micrograph-%zu\" class=\"card %s\"><h3>", i + 1, excluded ? "excluded" : unreadable ? "unreadable" : "used");
     html_text(out, m->file);
     text_add(out, "</h3>\n");
     read_picture(r, i, out_dir, width, *spent, &whole, &detail, out);

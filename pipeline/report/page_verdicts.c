@@ -153,6 +153,27 @@ static void add_headline(const results *r, textbuf *out) {
     if (!r->n_samples) text_add(out, "<p><strong>No sample could be formed from these files.</strong></p>\n");
 }
 
+/* Each picture that did not enter its sample, with the reason and a link to its card. */
+static void add_not_used(const results *r, textbuf *out) {
+    enum { MOST = 12 };
+    size_t n = 0;
+    for (size_t i = 0; i < r->n_images; i++) {
+        const image_row *m = &r->images[i];
+        if (is_word(m->status, "ok") || ++n > MOST) continue;
+        text_add(out, n == 1 ? "<p><strong>Not used:</strong> " : "; ");
+        text_addf(out, "<a href=\"#micrograph-%zu\">", i + 1);
+        html_text(out, m->file);
+        text_add(out, "</a> (");
+        if (m->reason && *m->reason)
+            page_flags(out, m->reason);
+        else
+            html_text(out, m->status);
+        text_add(out, ")");
+    }
+    if (n > MOST) text_addf(out, "; and %zu more", n - MOST);
+    if (n) text_add(out, ".</p>\n");
+}
+
 static void add_sample_head(const results *r, size_t i, textbuf *out) {
     const sample_row *s = &r->samples[i];
     const char *detail[][2] = { { "lot ", s->lot }, { "wafer ", s->wafer }, { "position ", s->position },
@@ -203,10 +224,11 @@ static int has_target(const results *r, const char *name) {
 void page_verdicts(const results *r, textbuf *out) {
     text_add(out, "<section id=\"verdicts\" aria-label=\"Verdicts\">\n");
     add_headline(r, out);
+    add_not_used(r, out);
     if (r->summary && *r->summary) {
-        text_add(out, "<div class=\"said\">");
-        html_paragraphs(out, r->summary);
-        text_add(out, "</div>\n");
+        text_add(out, "<details><summary>Summary as the program printed it</summary><pre>");
+        html_text(out, r->summary);
+        text_add(out, "</pre></details>\n");
     }
     if (r->n_samples) {
         text_add(out, "<h2>Verdict per sample</h2>\n<p class=\"lead\">Value \xc2\xb1 expanded uncertainty U (k = 2, about "

@@ -106,7 +106,7 @@ static void settle_y(const plot *p, range *y) {
 
 static int lay_out(const plot *p, frame *f) {
     range x, y;
-    *f = (frame){ .left = 58, .right = p->width - 20.0, .top = 50, .bottom = p->height - 46.0 };
+    *f = (frame){ .left = 58, .right = p->width - 20.0, .top = 50, .bottom = p->height - (p->names ? 60.0 : 46.0) };
     f->log_y = p->log_y;
     if (!find_ranges(p, &x, &y)) return 0;
     settle_y(p, &y);
@@ -162,21 +162,33 @@ static void draw_y_axis(const plot *p, const frame *f, textbuf *out) {
     text_add(out, "</text>\n");
 }
 
-/* Names are thinned so that two never touch, and cut to what fits; the last one is always there. */
-static void draw_names(const plot *p, const frame *f, textbuf *out) {
-    double slot = (f->right - f->left) / ((double)p->n_names + 0.2);
-    size_t step = slot >= 84.0 ? 1 : (size_t)ceil(84.0 / slot);
+enum { NAME_LETTERS = 18 };
+
+static double name_width(const plot *p) {
+    size_t most = 0;
     for (size_t i = 0; i < p->n_names; i++) {
-        size_t back = p->n_names - 1 - i;
-        draw_line(out, at_x(f, (double)i), f->bottom, at_x(f, (double)i), f->bottom + (back % step ? 3 : 6), SOFT, "");
+        size_t n = p->names[i] ? strlen(p->names[i]) : 0;
+        if (n > most) most = n;
+    }
+    return 7.2 * (double)(most < NAME_LETTERS ? most : NAME_LETTERS) + 14.0;
+}
+
+/* Two rows of names when one is too narrow, then thinned so that two never touch; the last one is always there. */
+static void draw_names(const plot *p, const frame *f, textbuf *out) {
+    double slot = (f->right - f->left) / ((double)p->n_names + 0.2), width = name_width(p);
+    size_t rows = slot < width ? 2 : 1, step = (size_t)fmax(1.0, ceil(width / (slot * (double)rows)));
+    for (size_t i = 0; i < p->n_names; i++) {
+        size_t back = p->n_names - 1 - i, row = back / step % rows;
+        double x = at_x(f, (double)i), end = f->bottom + (back % step ? 3.0 : 6.0 + 15.0 * (double)row);
+        draw_line(out, x, f->bottom, x, end, back % step || !row ? SOFT : FAINT, "");
         if (back % step) continue;
         const char *name = p->names[i] ? p->names[i] : "";
         textbuf cut = { 0 };
-        size_t keep = html_fit(name, 16);
+        size_t keep = html_fit(name, NAME_LETTERS);
         text_add_n(&cut, name, keep);
         if (name[keep]) text_add(&cut, "\xe2\x80\xa6");
-        draw_text(out, fmin(fmax(at_x(f, (double)i), f->left + 10), f->right - 30), f->bottom + 18, "middle", SOFT, "",
-                  cut.s ? cut.s : "");
+        draw_text(out, x, f->bottom + 19.0 + 15.0 * (double)row, "middle", SOFT, "", cut.s ? cut.s : "");
+        if (cut.failed) out->failed = 1;
         text_free(&cut);
     }
 }
@@ -218,16 +230,19 @@ static const char *dashes(plot_style style) {
     return style == PLOT_DASHED ? " stroke-dasharray=\"8 4\"" : style == PLOT_DOTTED ? " stroke-dasharray=\"2 4\"" : "";
 }
 
+/* A stretch of the curve below the axis is not drawn along it: that would look like values. */
 static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
-    int pen = 0;
+    int pen = 0, was_below = 0;
     text_add(out, "<path d=\"");
     for (size_t i = 0; i < s->n; i++) {
+        int below = f->log_y ? !(s->y[i] > 0.0) || log10(s->y[i]) < f->y_lo : s->y[i] < f->y_lo;
         if (!isfinite(s->y[i])) {
             pen = 0;
             continue;
         }
-        text_addf(out, "%s%.1f %.1f", pen ? "L" : "M", at_x(f, s->x[i]), at_y(f, s->y[i]));
+        text_addf(out, "%s%.1f %.1f", pen && !(below && was_below) ? "L" : "M", at_x(f, s->x[i]), at_y(f, s->y[i]));
         pen = 1;
+        was_below = below;
     }
     text_addf(out, "\" style=\"fill:none;stroke:%s\" stroke-width=\"%s\"%s/>\n", tone_colour[s->tone],
               s->style == PLOT_LINE ? "2.2" : "1.6", dashes(s->style));

@@ -23,9 +23,9 @@ enum { PLOT_TONES = 4 };
 typedef struct {
     const char *title, *x_label, *y_label; /* with units; escaped here */
     const char *description;  /* for a reader who cannot see the chart; NULL: the title */
-    int log_y;                /* logarithmic axis; values that are not positive lie on its floor */
+    int log_y;                /* logarithmic axis; values that are not positive lie below it */
     int from_zero;            /* the linear axis begins at 0 */
-    double y_lo, y_hi;        /* ends of the axis, values beyond run along its edge; NAN: from the values */
+    double y_lo, y_hi;        /* ends of the axis, NAN: from the values. Points and bands beyond lie on its edge */
     double target_lo, target_hi; /* shaded range with its limits drawn; NAN: open on that side */
     const char *target_label; /* in the legend; NULL: not listed */
     const char *const *names; /* [n_names] an axis of names: series x are 0 .. n_names - 1; NULL: numbers */

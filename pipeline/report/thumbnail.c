@@ -89,9 +89,14 @@ done:
     return st;
 }
 
-/* Encodes with 32 levels per channel; changes the pixels. */
+enum { LEVELS = 24 };
+
+/* Encodes with LEVELS per channel; changes the pixels. */
 static status encode(uint8_t *rgb, size_t nx, size_t ny, small_png *out, error *e) {
-    for (size_t i = 0; i < nx * ny * 3; i++) rgb[i] = (uint8_t)((rgb[i] >> 3) * 255 / 31);
+    for (size_t i = 0; i < nx * ny * 3; i++) {
+        int level = (rgb[i] * (LEVELS - 1) + 127) / 255;
+        rgb[i] = (uint8_t)(level * 255 / (LEVELS - 1));
+    }
     png_format f = { .nx = nx, .ny = ny, .channels = 3, .bit_depth = 8 };
     out->nx = nx;
     out->ny = ny;

@@ -17,7 +17,7 @@ typedef struct {
     size_t n, nx, ny;
 } small_png; /* {0} = empty */
 
-/* Reads a PNG and makes two copies with 32 levels per channel: the whole averaged to at most `width` columns, and the
+/* Reads a PNG and makes two copies with 24 levels per channel: the whole averaged to at most `width` columns, and the
  * middle at full resolution, at most detail_nx x detail_ny.
  *   out  free both with small_png_free, also after a failure
  *   err  ST_IO not readable; ST_BAD_INPUT no PNG; ST_NO_MEMORY */

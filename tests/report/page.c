@@ -47,7 +47,10 @@ static void check_page(demo *d, const char *dir) {
     /* why something is missing */
     CHECK(strstr(page, "<strong>few_pixels</strong>: too few pixels per spacing; <strong>blurred</strong>: "));
     CHECK(strstr(page, "unreadable</span> the file ends after 12 bytes"));
-    CHECK(count_of(page, "<article class=\"card") == DEMO_IMAGES);
+    CHECK(count_of(page, " class=\"card ") == DEMO_IMAGES);
+    CHECK(strstr(page, "<strong>Not used:</strong> <a href=\"#micrograph-2\">b.png</a> (<span class=\"flag\""));
+    CHECK(strstr(page, "<a href=\"#micrograph-3\">c.tif</a> (the file ends after 12 bytes).</p>"));
+    CHECK(strstr(page, "<pre>1 of 2 samples conforms.\nRe-take &lt;c.tif&gt;.</pre>"));
     /* structure: every column explained once, table headers with scope, one h1 */
     CHECK(count_of(page, "<h1>") == 1 && !strstr(page, "<th>Column"));
     CHECK(strstr(page, "<code>weighted_reflectance</code>") && strstr(page, "Front surface only."));
@@ -90,7 +93,7 @@ static void check_empty(const char *dir) {
     }
     results all = { .images = dead, .n_images = 2 };
     page = page_of(&all, dir);
-    CHECK(page && count_of(page, "not a picture") == 2);
+    CHECK(page && count_of(page, "</span> not a picture") == 2);
     CHECK(!strstr(page, "(null)"));
     free(page);
 }
@@ -107,7 +110,7 @@ static void check_picture(demo *d, const char *dir) {
     d->r.overlay_paths = paths;
     char *page = page_of(&d->r, dir);
     d->r.overlay_paths = NULL;
-    CHECK(strstr(page, "<img width=\"640\" height=\"51\"") && strstr(page, "data:image/png;base64,iVBORw0KGgo"));
+    CHECK(strstr(page, "<img width=\"524\" height=\"42\"") && strstr(page, "data:image/png;base64,iVBORw0KGgo"));
     CHECK(strstr(page, "The overlay could not be read: ") && strstr(page, "no overlay"));
     free(page);
     if (path) remove(path);
