@@ -80,7 +80,7 @@ static int in_cone(const lanes *eps, const double *f, size_t phases, size_t i, d
 /* One wavelength, from the pure ambient to the mixture in small steps. */
 static double complex follow(const lanes *eps, const double *f, size_t phases, int dimensions, size_t i) {
     lanes one[PATH_PHASES], e;
-    double g[PATH_PHASES], moved[LANES];
+    double g[PATH_PHASES], moved[LANES] = { 0.0 };
     for (size_t p = 0; p < phases; p++) lane_set(&one[p], 0, lane_get(&eps[p], i));
     lane_set(&e, 0, lane_get(&eps[0], i));
     for (int step = 1; step <= PATH_STEPS; step++) {
@@ -92,7 +92,7 @@ static double complex follow(const lanes *eps, const double *f, size_t phases, i
 }
 
 void bruggeman_solve(const lanes *eps, const double *f, size_t phases, int dimensions, size_t n, lanes *e) {
-    double moved[LANES];
+    double moved[LANES] = { 0.0 };
     newton(eps, f, phases, dimensions, n, e, moved);
     for (size_t i = 0; i < n; i++)
         if (!(moved[i] <= SETTLED) || !in_cone(eps, f, phases, i, e->re[i], e->im[i]))

@@ -69,7 +69,7 @@ static double read_on(const double *x, const double *y, size_t n, double place, 
     return (1.0 - t) * y[*at] + t * y[*at + 1];
 }
 
-/* Integrals over the band of the photon flux (times h c) and of flux times y. y NULL: 1. */
+/* Integrals over the band of the photon flux (times h c) and of flux times y. */
 static void integrate(const sun *s, const double *w, const double *y, size_t n, double lo, double hi,
                       double *flux, double *flux_y) {
     size_t sun_at = 0, y_at = 0, next = 0;
@@ -80,7 +80,7 @@ static void integrate(const sun *s, const double *w, const double *y, size_t n, 
         double x = first ? lo : (next < s->n && s->wavelength_nm[next] < hi) ? s->wavelength_nm[next++] : hi;
         last = !first && x >= hi;
         double f = read_on(s->wavelength_nm, s->irradiance, s->n, x, &sun_at) * x;
-        double g = y ? f * read_on(w, y, n, x, &y_at) : f;
+        double g = f * read_on(w, y, n, x, &y_at);
         if (!first) {
             *flux += 0.5 * (f + f0) * (x - x0);
             *flux_y += 0.5 * (g + g0) * (x - x0);
@@ -108,8 +108,9 @@ status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, 
 status sun_current(const sun *s, double lo_nm, double hi_nm, double *mA_cm2, error *e) {
     status st = check_band(s->wavelength_nm, s->n, lo_nm, hi_nm, "the solar spectrum", e);
     if (st) return st;
+    const double ends[] = { lo_nm, hi_nm }, all[] = { 1.0, 1.0 };
     double flux, unused;
-    integrate(s, NULL, NULL, 0, lo_nm, hi_nm, &flux, &unused);
+    integrate(s, ends, all, 2, lo_nm, hi_nm, &flux, &unused);
     /* W m-2 nm-1 x nm x nm: one nm to m from the wavelength; A m-2 to mA cm-2 is 0.1 */
     *mA_cm2 = flux * 1e-9 * CHARGE_C / (PLANCK_J_S * LIGHT_M_S) * 0.1;
     return ST_OK;

@@ -99,11 +99,12 @@ status trust_shares(double spacing_nm, double angle_deg, double ambient_n, const
                     "above 0");
     /* A fine even grid with the band's ends; each class is a 0/1 spectrum, weighted like any other. */
     enum { STEPS = 1800 };
-    double *w = mem_array(3 * (STEPS + 1), sizeof *w), none = 0.0, air = 0.0;
+    const size_t nodes = STEPS + 1;
+    double *w = mem_array(3 * nodes, sizeof *w), none = 0.0, air = 0.0;
     if (!w) return NO_MEMORY(e, "diffraction orders");
-    double *is_none = w + STEPS + 1, *is_air = w + 2 * (STEPS + 1);
+    double *is_none = w + nodes, *is_air = w + 2 * nodes;
     status st = ST_OK;
-    for (size_t i = 0; i <= STEPS && !st; i++) {
+    for (size_t i = 0; i < nodes && !st; i++) {
         double n, k, t = (double)i / STEPS;
         w[i] = (1.0 - t) * lo_nm + t * hi_nm;
         st = material_at(substrate, w[i], &n, &k, e);
@@ -112,8 +113,8 @@ status trust_shares(double spacing_nm, double angle_deg, double ambient_n, const
         is_none[i] = c == ORDERS_NONE;
         is_air[i] = c == ORDERS_IN_AMBIENT;
     }
-    if (!st) st = sun_weighted(s, w, is_none, STEPS + 1, lo_nm, hi_nm, &none, e);
-    if (!st) st = sun_weighted(s, w, is_air, STEPS + 1, lo_nm, hi_nm, &air, e);
+    if (!st) st = sun_weighted(s, w, is_none, nodes, lo_nm, hi_nm, &none, e);
+    if (!st) st = sun_weighted(s, w, is_air, nodes, lo_nm, hi_nm, &air, e);
     if (!st) *out = (order_shares){ .none = none, .in_substrate = 1.0 - none - air, .in_ambient = air };
     free(w);
     return st;
