@@ -33,24 +33,44 @@ typedef struct {
 static error_t history_option(int key, char *arg, struct argp_state *state) {
     request *q = state->input;
     switch (key) {
-    case OPT_HISTORY: q->path = arg; break;
-    case OPT_SINCE: q->since = arg; break;
-    case OPT_LOT: q->lot = arg; break;
-    case OPT_JSON: q->json = 1; q->csv = 0; break;
-    case OPT_CSV: q->csv = 1; q->json = 0; break;
-    case ARGP_KEY_ARG: argp_error(state, "'%s' is no option; the ledger is named with --history", arg); break;
-    default: return ARGP_ERR_UNKNOWN;
+    case OPT_HISTORY:
+        q->path = arg;
+        break;
+    case OPT_SINCE:
+        q->since = arg;
+        break;
+    case OPT_LOT:
+        q->lot = arg;
+        break;
+    case OPT_JSON:
+        q->json = 1;
+        q->csv = 0;
+        break;
+    case OPT_CSV:
+        q->csv = 1;
+        q->json = 0;
+        break;
+    case ARGP_KEY_ARG:
+        argp_error(state, "'%s' is no option; the ledger is named with --history", arg);
+        break;
+    default:
+        return ARGP_ERR_UNKNOWN;
     }
     return 0;
 }
 
-const struct argp history_argp = { history_options, history_option, "",
-                                   "The ledger of every sample measured so far, one row per sample and run.", NULL, NULL, NULL };
+const struct argp history_argp = { history_options,
+                                   history_option,
+                                   "",
+                                   "The ledger of every sample measured so far, one row per sample and run.",
+                                   NULL,
+                                   NULL,
+                                   NULL };
 
 /* The rows as a table: every key of any row_json is a column, in the order of first appearance, run_at behind
  * etched_at. Used for CSV only; JSON passes the stored objects through. */
 typedef struct {
-    char **names;      /* [n], room for more */
+    char **names; /* [n], room for more */
     size_t n, room;
 } name_list;
 
@@ -85,7 +105,8 @@ static status collect(const history_list *l, csv_row *rows, name_list *names, er
     for (size_t i = 0; i < l->n && st == ST_OK; i++) {
         const cJSON *child;
         rows[i].object = cJSON_Parse(l->rows[i].row_json);
-        if (!rows[i].object) return fail(e, ST_IO, "the ledger holds a damaged row of the sample '%s'", l->rows[i].sample);
+        if (!rows[i].object)
+            return fail(e, ST_IO, "the ledger holds a damaged row of the sample '%s'", l->rows[i].sample);
         cJSON_ArrayForEach(child, rows[i].object) if (st == ST_OK) st = name_add(names, child->string, e);
     }
     return st;
@@ -98,7 +119,8 @@ static status fill(const history_row *r, const name_list *names, csv_row *row, e
     if (!row->cells || !row->numbers) return NO_MEMORY(e, "the history");
     cJSON_ArrayForEach(child, row->object) {
         size_t k = name_index(names, child->string);
-        if (cJSON_IsString(child)) row->cells[k] = child->valuestring;
+        if (cJSON_IsString(child))
+            row->cells[k] = child->valuestring;
         else if (cJSON_IsNumber(child))
             row->cells[k] = number_text(child->valuedouble, 15, row->numbers + k * NUMBER_TEXT);
     }
@@ -116,7 +138,8 @@ static status print_csv(const history_list *l, textbuf *out, error *e) {
     status st = rows ? collect(l, rows, &names, e) : NO_MEMORY(e, "the history");
     for (size_t i = 0; i < l->n && st == ST_OK; i++) st = fill(&l->rows[i], &names, &rows[i], e);
     if (st == ST_OK) {
-        table_view view = { NULL, 0, rows, l->n, sizeof *rows, (const char *const *)names.names, names.n, csv_cell_of };
+        table_view view = { NULL,    0,          rows, l->n, sizeof *rows, (const char *const *)names.names,
+                            names.n, csv_cell_of };
         table_to_csv(&view, out);
     }
     for (size_t i = 0; rows && i < l->n; i++) {
@@ -158,14 +181,16 @@ static void print_text(const history_list *l, textbuf *out) {
     }
     sample = width_of("sample", sample);
     lot = width_of("lot", lot);
-    text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s\n", "etched_at", (int)sample, "sample", (int)lot, "lot",
-              "spacing/nm", "+-", "density/um-2", "D50/nm", "R/%", "verdict", "run_at");
+    text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s\n", "etched_at", (int)sample,
+              "sample", (int)lot, "lot", "spacing/nm", "+-", "density/um-2", "D50/nm", "R/%", "verdict",
+              "run_at");
     for (size_t i = 0; i < l->n; i++) {
         const history_row *r = &l->rows[i];
-        text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s\n", r->etched_at, (int)sample, r->sample, (int)lot,
-                  r->lot, number_text(r->spacing_nm, 5, a), number_text(r->spacing_nm_u, 3, b),
-                  number_text(r->density_per_um2, 5, c), number_text(r->size_d50_nm, 5, d),
-                  number_percent(r->weighted_reflectance, 4, f), r->verdict, r->run_at);
+        text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s\n", r->etched_at, (int)sample,
+                  r->sample, (int)lot, r->lot, number_text(r->spacing_nm, 5, a),
+                  number_text(r->spacing_nm_u, 3, b), number_text(r->density_per_um2, 5, c),
+                  number_text(r->size_d50_nm, 5, d), number_percent(r->weighted_reflectance, 4, f),
+                  r->verdict, r->run_at);
     }
     text_addf(out, "%zu %s\n", l->n, l->n == 1 ? "row" : "rows");
 }
@@ -177,15 +202,21 @@ int cmd_history(int argc, char **argv) {
     textbuf out = { 0 };
     error e = { ST_OK, "" };
     argp_parse(&history_argp, argc, argv, 0, NULL, &q);
-    status st = file_exists(q.path) ? ST_OK
-                                    : fail(&e, ST_BAD_INPUT, "there is no ledger '%s' yet; 'sward run' starts one, or name another with "
-                                           "--history", q.path);
+    status st = file_exists(q.path)
+                    ? ST_OK
+                    : fail(&e, ST_BAD_INPUT,
+                           "there is no ledger '%s' yet; 'sward run' starts one, or name another with "
+                           "--history",
+                           q.path);
     if (st == ST_OK) st = history_open(q.path, 1, &h, &e);
     if (st == ST_OK) st = history_read(h, q.since, q.lot, &rows, &e);
     if (st == ST_OK) {
-        if (q.json) print_json(&rows, &out);
-        else if (q.csv) st = print_csv(&rows, &out, &e);
-        else print_text(&rows, &out);
+        if (q.json)
+            print_json(&rows, &out);
+        else if (q.csv)
+            st = print_csv(&rows, &out, &e);
+        else
+            print_text(&rows, &out);
     }
     history_list_free(&rows);
     history_close(h);

@@ -1,5 +1,5 @@
-/* `sward predict`: reflectance from numbers. The options are keys of a protocol, set and checked through its table, so
- * that a number on the command line and the same number in a file mean the same. */
+/* `sward predict`: reflectance from numbers. The options are keys of a protocol, set and checked through its
+ * table, so that a number on the command line and the same number in a file mean the same. */
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -12,9 +12,28 @@
 #include "io/json.h"
 #include "report/rows.h"
 
-enum { OPT_SPACING = 1, OPT_HEIGHT, OPT_HEIGHT_U, OPT_SHAPE, OPT_SPREAD, OPT_COVERAGE, OPT_MIXING, OPT_COATING,
-       OPT_SUBSTRATE, OPT_AMBIENT, OPT_ANGLE, OPT_POLARIZATION, OPT_HEMISPHERICAL, OPT_BAND, OPT_PORES, OPT_PROFILE,
-       OPT_PROTOCOL, OPT_JSON, OPT_CSV, OPT_MATERIALS };
+enum {
+    OPT_SPACING = 1,
+    OPT_HEIGHT,
+    OPT_HEIGHT_U,
+    OPT_SHAPE,
+    OPT_SPREAD,
+    OPT_COVERAGE,
+    OPT_MIXING,
+    OPT_COATING,
+    OPT_SUBSTRATE,
+    OPT_AMBIENT,
+    OPT_ANGLE,
+    OPT_POLARIZATION,
+    OPT_HEMISPHERICAL,
+    OPT_BAND,
+    OPT_PORES,
+    OPT_PROFILE,
+    OPT_PROTOCOL,
+    OPT_JSON,
+    OPT_CSV,
+    OPT_MATERIALS
+};
 
 /* clang-format off */
 static const struct argp_option predict_options[] = {
@@ -57,7 +76,10 @@ typedef enum { AS_TEXT, AS_JSON, AS_CSV, AS_MATERIALS } output;
 
 /* What stood on the command line, in its order; checked after the protocol is read. */
 typedef struct {
-    struct { int option; const char *text; } given[MAX_GIVEN];
+    struct {
+        int option;
+        const char *text;
+    } given[MAX_GIVEN];
     size_t n_given;
     const char *spacing, *height, *protocol;
     int pores;
@@ -67,17 +89,34 @@ typedef struct {
 static error_t predict_option(int key, char *arg, struct argp_state *state) {
     request *q = state->input;
     switch (key) {
-    case OPT_SPACING: q->spacing = arg; break;
-    case OPT_HEIGHT: q->height = arg; break;
-    case OPT_PROTOCOL: q->protocol = arg; break;
-    case OPT_PORES: q->pores = 1; break;
-    case OPT_JSON: q->as = AS_JSON; break;
-    case OPT_CSV: q->as = AS_CSV; break;
-    case OPT_MATERIALS: q->as = AS_MATERIALS; break;
-    case ARGP_KEY_ARG: argp_error(state, "'%s' is no option; numbers need their names, such as --spacing 350", arg); break;
+    case OPT_SPACING:
+        q->spacing = arg;
+        break;
+    case OPT_HEIGHT:
+        q->height = arg;
+        break;
+    case OPT_PROTOCOL:
+        q->protocol = arg;
+        break;
+    case OPT_PORES:
+        q->pores = 1;
+        break;
+    case OPT_JSON:
+        q->as = AS_JSON;
+        break;
+    case OPT_CSV:
+        q->as = AS_CSV;
+        break;
+    case OPT_MATERIALS:
+        q->as = AS_MATERIALS;
+        break;
+    case ARGP_KEY_ARG:
+        argp_error(state, "'%s' is no option; numbers need their names, such as --spacing 350", arg);
+        break;
     default:
         if (key < OPT_SPACING || key > OPT_MATERIALS) return ARGP_ERR_UNKNOWN;
-        if (q->n_given == MAX_GIVEN) argp_error(state, "more than %d options", MAX_GIVEN);
+        if (q->n_given == MAX_GIVEN)
+            argp_error(state, "more than %d options", MAX_GIVEN);
         else {
             q->given[q->n_given].option = key;
             q->given[q->n_given++].text = arg ? arg : "true";
@@ -87,10 +126,15 @@ static error_t predict_option(int key, char *arg, struct argp_state *state) {
 }
 
 const struct argp predict_argp = {
-    predict_options, predict_option, "",
+    predict_options,
+    predict_option,
+    "",
     "Reflectance of a textured surface from its numbers, with the interval the true value is expected in.\v"
     "Example: sward predict --spacing 350 --height 300 --coating alumina:10 --json",
-    NULL, NULL, NULL };
+    NULL,
+    NULL,
+    NULL
+};
 
 static const char *option_name(int option) {
     for (const struct argp_option *o = predict_options; o->name; o++)
@@ -105,7 +149,8 @@ static int given(const request *q, int option) {
 }
 
 static status apply_options(const request *q, protocol *p, error *e) {
-    for (size_t i = 0; i < p->n_coatings && given(q, OPT_COATING); i++) { /* the command line's replace the protocol's */
+    for (size_t i = 0; i < p->n_coatings && given(q, OPT_COATING);
+         i++) { /* the command line's replace the protocol's */
         free(p->coatings[i].material);
         p->coatings[i] = (protocol_coating){ 0 };
     }
@@ -126,8 +171,8 @@ static status apply_options(const request *q, protocol *p, error *e) {
 
 static status length_option(const char *option, const char *text, int zero_allowed, double *out, error *e) {
     if (!number_parse(text, out) || !(zero_allowed ? *out >= 0.0 : *out > 0.0) || *out > 1e5)
-        return fail(e, ST_BAD_INPUT, "%s: found %s, expected a number %s 0 and at most 100000 (nm)", option, text,
-                    zero_allowed ? "of at least" : "above");
+        return fail(e, ST_BAD_INPUT, "%s: found %s, expected a number %s 0 and at most 100000 (nm)", option,
+                    text, zero_allowed ? "of at least" : "above");
     return ST_OK;
 }
 
@@ -141,7 +186,9 @@ static status surface_of(const request *q, const protocol *p, const setup *s, su
     if (q->spacing) in->spacing_nm.u = 0.0;
     if (st != ST_OK) return st;
     if (s->measured.n) {
-        if (q->height) return fail(e, ST_BAD_INPUT, "--height: a measured profile already holds the height; give one of the two");
+        if (q->height)
+            return fail(e, ST_BAD_INPUT,
+                        "--height: a measured profile already holds the height; give one of the two");
         in->measured = &s->measured;
         return ST_OK;
     }
@@ -149,8 +196,10 @@ static status surface_of(const request *q, const protocol *p, const setup *s, su
         st = length_option("--height", q->height, 1, &in->height_nm.value, e);
         in->height_nm.u = given(q, OPT_HEIGHT_U) ? p->link.height_nm_u : 0.0;
     } else if (!q->protocol)
-        return fail(e, ST_BAD_INPUT, "--height is missing; a top view does not show it: give it in nm, or a measured profile with "
-                    "--profile");
+        return fail(
+            e, ST_BAD_INPUT,
+            "--height is missing; a top view does not show it: give it in nm, or a measured profile with "
+            "--profile");
     if (st != ST_OK) return st;
     if (!q->spacing && !(q->height && in->height_nm.value <= 0.0))
         return fail(e, ST_BAD_INPUT, "--spacing is missing; it decides where the model holds: give it in nm");
@@ -200,9 +249,11 @@ static void print_json(const surface_input *in, const prediction *r, textbuf *ou
     json_number(out, r->shares.in_substrate, 4);
     text_add(out, ", \"in_ambient\": ");
     json_number(out, r->shares.in_ambient, 4);
-    const struct { const char *name; double v; } parts[] = {
-        { "height", r->u_height }, { "shape", r->u_shape }, { "height_spread", r->u_spread }, { "mixing", r->u_mixing },
-        { "model", r->u_model }, { "model_bias", r->model_bias } };
+    const struct {
+        const char *name;
+        double v;
+    } parts[] = { { "height", r->u_height }, { "shape", r->u_shape }, { "height_spread", r->u_spread },
+                  { "mixing", r->u_mixing }, { "model", r->u_model }, { "model_bias", r->model_bias } };
     text_add(out, "},\n  \"budget\": {");
     for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
         text_addf(out, "%s\"%s\": ", i ? ", " : "", parts[i].name);
@@ -229,34 +280,47 @@ static void print_csv(const prediction *r, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT], d[NUMBER_TEXT];
     text_add(out, "wavelength_nm,reflectance,reflectance_lo,reflectance_hi\n");
     for (size_t i = 0; i < r->n; i++)
-        text_addf(out, "%s,%s,%s,%s\n", number_text(r->wavelength_nm[i], 7, a), number_text(r->R[i], SPECTRUM_DIGITS, b),
-                  number_text(r->R_lo[i], SPECTRUM_DIGITS, c), number_text(r->R_hi[i], SPECTRUM_DIGITS, d));
+        text_addf(out, "%s,%s,%s,%s\n", number_text(r->wavelength_nm[i], 7, a),
+                  number_text(r->R[i], SPECTRUM_DIGITS, b), number_text(r->R_lo[i], SPECTRUM_DIGITS, c),
+                  number_text(r->R_hi[i], SPECTRUM_DIGITS, d));
 }
 
 static void print_surface(const surface_input *in, const prediction *r, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
-    if (in->measured) text_add(out, "Surface: measured profile");
-    else if (!(in->height_nm.value > 0.0)) text_add(out, "Surface: planar");
+    if (in->measured)
+        text_add(out, "Surface: measured profile");
+    else if (!(in->height_nm.value > 0.0))
+        text_add(out, "Surface: planar");
     else {
-        text_addf(out, "Surface: %s of height %s", in->pores ? "pores" : "features", number_text(in->height_nm.value, 5, a));
+        text_addf(out, "Surface: %s of height %s", in->pores ? "pores" : "features",
+                  number_text(in->height_nm.value, 5, a));
         if (in->height_nm.u > 0.0) text_addf(out, " +- %s", number_text(in->height_nm.u, 3, a));
-        text_addf(out, " nm, aspect %s, area %s times the flat one", number_text(r->aspect, 4, a), number_text(r->area_ratio, 4, b));
+        text_addf(out, " nm, aspect %s, area %s times the flat one", number_text(r->aspect, 4, a),
+                  number_text(r->area_ratio, 4, b));
     }
-    if (isfinite(in->spacing_nm.value)) text_addf(out, ", spacing %s nm", number_text(in->spacing_nm.value, 5, a));
+    if (isfinite(in->spacing_nm.value))
+        text_addf(out, ", spacing %s nm", number_text(in->spacing_nm.value, 5, a));
     text_add(out, "\n");
 }
 
 /* A share of the photons; what rounds to nothing prints as 0. */
-static const char *share_text(double share, char *buffer) { return number_percent(share < 5e-4 ? 0.0 : share, 3, buffer); }
+static const char *share_text(double share, char *buffer) {
+    return number_percent(share < 5e-4 ? 0.0 : share, 3, buffer);
+}
 
 static void print_text(const surface_input *in, const protocol *p, const prediction *r, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT];
     print_surface(in, r, out);
-    text_addf(out, "Light: %s to %s nm of the sun, ", number_text(p->band_lo_nm, 6, a), number_text(p->band_hi_nm, 6, b));
-    if (p->hemispherical) text_add(out, "diffuse");
-    else text_addf(out, "%s deg", number_text(p->angle_deg, 4, a));
-    text_addf(out, ", %s, from %s\n\n", p->polarization == POL_MEAN ? "unpolarised" : polarization_name(p->polarization), p->ambient);
-    if (r->refused) text_add(out, "Weighted reflectance     not given: the texture lies outside the model\n");
+    text_addf(out, "Light: %s to %s nm of the sun, ", number_text(p->band_lo_nm, 6, a),
+              number_text(p->band_hi_nm, 6, b));
+    if (p->hemispherical)
+        text_add(out, "diffuse");
+    else
+        text_addf(out, "%s deg", number_text(p->angle_deg, 4, a));
+    text_addf(out, ", %s, from %s\n\n",
+              p->polarization == POL_MEAN ? "unpolarised" : polarization_name(p->polarization), p->ambient);
+    if (r->refused)
+        text_add(out, "Weighted reflectance     not given: the texture lies outside the model\n");
     else {
         int digits = digits_of("weighted_reflectance");
         text_addf(out, "Weighted reflectance     %s %%", number_percent(r->weighted, digits, a));
@@ -266,11 +330,16 @@ static void print_text(const surface_input *in, const protocol *p, const predict
         text_addf(out, "\nCurrent it costs         %s mA/cm2\n",
                   number_text(r->current_loss_mA_cm2, digits_of("current_loss_mA_cm2"), a));
     }
-    text_addf(out, "Polished                 %s %%\n", number_percent(r->polished, digits_of("polished_reflectance"), a));
-    text_addf(out, "Polished, 75 nm nitride  %s %%\n", number_percent(r->coated, digits_of("coated_reflectance"), a));
+    text_addf(out, "Polished                 %s %%\n",
+              number_percent(r->polished, digits_of("polished_reflectance"), a));
+    text_addf(out, "Polished, 75 nm nitride  %s %%\n",
+              number_percent(r->coated, digits_of("coated_reflectance"), a));
     if (isfinite(r->shares.none))
-        text_addf(out, "Photons                  %s %% see no diffraction, %s %% are diffracted into the substrate only, %s %% also above it\n",
-                  share_text(r->shares.none, a), share_text(r->shares.in_substrate, b), share_text(r->shares.in_ambient, c));
+        text_addf(out,
+                  "Photons                  %s %% see no diffraction, %s %% are diffracted into the "
+                  "substrate only, %s %% also above it\n",
+                  share_text(r->shares.none, a), share_text(r->shares.in_substrate, b),
+                  share_text(r->shares.in_ambient, c));
     if (r->note[0]) text_addf(out, "\n%s\n", r->note);
 }
 
@@ -285,9 +354,12 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     if (st == ST_OK) st = surface_of(q, &p, &s, &in, e);
     if (st == ST_OK) st = predict(&in, &s.optics, &r, e);
     if (st != ST_OK) goto done;
-    if (q->as == AS_JSON) print_json(&in, &r, out);
-    else if (q->as == AS_CSV) print_csv(&r, out);
-    else print_text(&in, &p, &r, out);
+    if (q->as == AS_JSON)
+        print_json(&in, &r, out);
+    else if (q->as == AS_CSV)
+        print_csv(&r, out);
+    else
+        print_text(&in, &p, &r, out);
 done:
     prediction_free(&r);
     setup_free(&s);

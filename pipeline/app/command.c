@@ -1,5 +1,5 @@
-/* What all commands share: version, exit status of wrong use, failures and results on their streams, hints for
- * mistyped options. */
+/* What all commands share: version, exit status of wrong use, failures and results on their streams, hints
+ * for mistyped options. */
 #include "app/command.h"
 
 #include <errno.h>
@@ -13,14 +13,16 @@ const char *argp_program_version = "sward " SWARD_VERSION;
 error_t argp_err_exit_status = EXIT_USAGE;
 
 int command_failed(const char *name, const error *e) {
-    fprintf(stderr, "sward %s: %s\n", name, e->text[0] ? e->text : "failed without a reason; please report this");
+    fprintf(stderr, "sward %s: %s\n", name,
+            e->text[0] ? e->text : "failed without a reason; please report this");
     return e->code == ST_BAD_INPUT ? EXIT_USAGE : EXIT_FAILED;
 }
 
 int command_print(const char *name, textbuf *t) {
     error e = { ST_OK, "" };
     int code = EXIT_DONE;
-    if (text_check(t, "the output", &e) != ST_OK) code = command_failed(name, &e);
+    if (text_check(t, "the output", &e) != ST_OK)
+        code = command_failed(name, &e);
     else if (t->n && (fwrite(t->s, 1, t->n, stdout) != t->n || fflush(stdout) != 0)) {
         fail(&e, ST_IO, "cannot write the output: %s", strerror(errno));
         code = command_failed(name, &e);
@@ -38,7 +40,8 @@ enum { MAX_OPTIONS = 64 };
 /* argp's own. */
 static const char *const common[] = { "help", "usage", "version" };
 
-/* The option a "--word" (n bytes) names, also abbreviated as getopt allows: 1, and whether it takes a value. */
+/* The option a "--word" (n bytes) names, also abbreviated as getopt allows: 1, and whether it takes a value.
+ */
 static int option_known(const struct argp_option *o, const char *word, size_t n, int *takes_value) {
     *takes_value = 0;
     for (size_t i = 0; i < sizeof common / sizeof common[0]; i++)
@@ -64,7 +67,8 @@ int command_check_options(const command *c, int argc, char **argv) {
         }
         const char *names[MAX_OPTIONS];
         size_t n_names = 0;
-        for (const struct argp_option *o = c->argp->options; o && (o->name || o->key || o->doc || o->group); o++)
+        for (const struct argp_option *o = c->argp->options; o && (o->name || o->key || o->doc || o->group);
+             o++)
             if (o->name && !(o->flags & OPTION_HIDDEN) && n_names < MAX_OPTIONS) names[n_names++] = o->name;
         char typed[80];
         snprintf(typed, sizeof typed, "%.*s", (int)(n < 79 ? n : 79), word);

@@ -24,19 +24,20 @@ int cmd_render(int argc, char **argv);
 int cmd_history(int argc, char **argv);
 int cmd_protocol(int argc, char **argv);
 
-/* Prints "sward NAME: sentence" to stderr. Returns EXIT_USAGE when the user's input is at fault, else EXIT_FAILED. */
+/* Prints "sward NAME: sentence" to stderr. Returns EXIT_USAGE when the user's input is at fault, else
+ * EXIT_FAILED. */
 int command_failed(const char *name, const error *e);
 
-/* Prints the text to stdout and frees it. Returns EXIT_DONE, or EXIT_FAILED with a sentence on stderr. main checks
- * stdout once more when the program ends. */
+/* Prints the text to stdout and frees it. Returns EXIT_DONE, or EXIT_FAILED with a sentence on stderr. main
+ * checks stdout once more when the program ends. */
 int command_print(const char *name, textbuf *t);
 
-/* The first long option in argv that the command does not have: EXIT_USAGE with a hint on stderr; EXIT_DONE: all known. argp
- * alone names the option but no near one. */
+/* The first long option in argv that the command does not have: EXIT_USAGE with a hint on stderr; EXIT_DONE:
+ * all known. argp alone names the option but no near one. */
 int command_check_options(const command *c, int argc, char **argv);
 
-/* A file the user named and that is not there is wrong use, not an I/O failure: ST_BAD_INPUT "PATH: there is no such
- * file", else ST_OK. */
+/* A file the user named and that is not there is wrong use, not an I/O failure: ST_BAD_INPUT "PATH: there is
+ * no such file", else ST_OK. */
 status input_wanted(const char *path, error *e);
 
 /* Overview of all commands for `sward --help`; the manual page in man(7) macros; completion for bash. */

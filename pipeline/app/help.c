@@ -1,5 +1,5 @@
-/* Overview, manual page and bash completion, all written from the command table and the option rows of argp, so that
- * they cannot fall behind the program. */
+/* Overview, manual page and bash completion, all written from the command table and the option rows of argp,
+ * so that they cannot fall behind the program. */
 #include <ctype.h>
 #include <string.h>
 
@@ -14,7 +14,8 @@ void help_overview(const command *commands, size_t n, textbuf *out) {
     for (size_t i = 0; i < n; i++) text_addf(out, "  %-10s %s\n", commands[i].name, commands[i].summary);
     text_add(out, "\n  sward COMMAND --help   what a command takes (also: sward help COMMAND)\n"
                   "  sward --version        the version\n\n"
-                  "Exit status: 0 done; 1 internal or I/O failure; 2 wrong use or wrong protocol; 3 done, but some inputs could\n"
+                  "Exit status: 0 done; 1 internal or I/O failure; 2 wrong use or wrong protocol; 3 done, "
+                  "but some inputs could\n"
                   "not be used; 4 done, and a target is missed (with --gate).\n");
 }
 
@@ -23,9 +24,12 @@ static void roff(textbuf *out, const char *s) {
     int line_start = out->n == 0 || out->s[out->n - 1] == '\n';
     for (; *s; s++) {
         if (line_start && (*s == '.' || *s == '\'')) text_add(out, "\\&");
-        if (*s == '\\') text_add(out, "\\e");
-        else if (*s == '-') text_add(out, "\\-");
-        else text_add_n(out, s, 1);
+        if (*s == '\\')
+            text_add(out, "\\e");
+        else if (*s == '-')
+            text_add(out, "\\-");
+        else
+            text_add_n(out, s, 1);
         line_start = *s == '\n';
     }
 }
@@ -79,12 +83,15 @@ static void manual_option(const struct argp_option *o, textbuf *out) {
 }
 
 void help_manual(const command *commands, size_t n, textbuf *out) {
-    text_add(out, ".TH SWARD 1 \"\" \"sward " SWARD_VERSION "\" \"User Commands\"\n.SH NAME\n"
-                  "sward \\- texture numbers and reflectance from micrographs of black silicon\n.SH SYNOPSIS\n"
-                  ".B sward\n\\fICOMMAND\\fR [\\fIOPTION\\fR...] [\\fIFILE\\fR...]\n.SH DESCRIPTION\n"
-                  "Turns a folder of top\\-view micrographs of nanotextured silicon into spacing, density and sizes with their "
-                  "uncertainty, predicts the reflectance with a graded\\-index model, judges both against targets and keeps a "
-                  "history.\n.SH COMMANDS\n");
+    text_add(out,
+             ".TH SWARD 1 \"\" \"sward " SWARD_VERSION "\" \"User Commands\"\n.SH NAME\n"
+             "sward \\- texture numbers and reflectance from micrographs of black silicon\n.SH SYNOPSIS\n"
+             ".B sward\n\\fICOMMAND\\fR [\\fIOPTION\\fR...] [\\fIFILE\\fR...]\n.SH DESCRIPTION\n"
+             "Turns a folder of top\\-view micrographs of nanotextured silicon into spacing, density and "
+             "sizes with their "
+             "uncertainty, predicts the reflectance with a graded\\-index model, judges both against targets "
+             "and keeps a "
+             "history.\n.SH COMMANDS\n");
     for (size_t i = 0; i < n; i++) {
         const struct argp *a = commands[i].argp;
         manual_heading(commands[i].name, a->args_doc ? a->args_doc : "", out);
@@ -92,16 +99,22 @@ void help_manual(const command *commands, size_t n, textbuf *out) {
         for (const struct argp_option *o = a->options; o && !option_ends(o); o++)
             if (option_shown(o)) manual_option(o, out);
     }
-    text_add(out, ".SH EXIT STATUS\n.TP\n0\ndone\n.TP\n1\ninternal or I/O failure\n.TP\n2\nwrong use or wrong protocol\n.TP\n3\n"
-                  "done, but some inputs could not be used\n.TP\n4\ndone, and a target is missed (with \\fB\\-\\-gate\\fR)\n"
-                  ".SH ENVIRONMENT\n.TP\nSWARD_MATERIALS\nfolder with the optical materials, instead of the one beside the program\n");
+    text_add(out, ".SH EXIT STATUS\n.TP\n0\ndone\n.TP\n1\ninternal or I/O failure\n.TP\n2\nwrong use or "
+                  "wrong protocol\n.TP\n3\n"
+                  "done, but some inputs could not be used\n.TP\n4\ndone, and a target is missed (with "
+                  "\\fB\\-\\-gate\\fR)\n"
+                  ".SH ENVIRONMENT\n.TP\nSWARD_MATERIALS\nfolder with the optical materials, instead of the "
+                  "one beside the program\n");
 }
 
 void help_completion(const command *commands, size_t n, textbuf *out) {
-    text_add(out, "# bash completion for sward\n_sward() {\n    local word=${COMP_WORDS[COMP_CWORD]} options=\n"
-                  "    if [ \"$COMP_CWORD\" -eq 1 ]; then\n        COMPREPLY=($(compgen -W \"");
+    text_add(out,
+             "# bash completion for sward\n_sward() {\n    local word=${COMP_WORDS[COMP_CWORD]} options=\n"
+             "    if [ \"$COMP_CWORD\" -eq 1 ]; then\n        COMPREPLY=($(compgen -W \"");
     for (size_t i = 0; i < n; i++) text_addf(out, "%s ", commands[i].name);
-    text_add(out, "help --help --version\" -- \"$word\"))\n        return\n    fi\n    case ${COMP_WORDS[1]} in\n");
+    text_add(
+        out,
+        "help --help --version\" -- \"$word\"))\n        return\n    fi\n    case ${COMP_WORDS[1]} in\n");
     for (size_t i = 0; i < n; i++) {
         text_addf(out, "    %s) options=\"", commands[i].name);
         for (const struct argp_option *o = commands[i].argp->options; o && !option_ends(o); o++)
@@ -110,6 +123,9 @@ void help_completion(const command *commands, size_t n, textbuf *out) {
     }
     text_add(out, "    help) options=\"");
     for (size_t i = 0; i < n; i++) text_addf(out, "%s%s", i ? " " : "", commands[i].name);
-    text_add(out, "\" ;;\n    esac\n    case ${COMP_WORDS[1]} in\n    protocol) options=\"$options print check explain\" ;;\n    esac\n"
-                  "    COMPREPLY=($(compgen -W \"$options\" -- \"$word\"))\n}\ncomplete -o default -F _sward sward\n");
+    text_add(
+        out,
+        "\" ;;\n    esac\n    case ${COMP_WORDS[1]} in\n    protocol) options=\"$options print check "
+        "explain\" ;;\n    esac\n"
+        "    COMPREPLY=($(compgen -W \"$options\" -- \"$word\"))\n}\ncomplete -o default -F _sward sward\n");
 }

@@ -1,11 +1,11 @@
-/* The command table, dispatch, and the promise that exit 0 means the results were written. Everything else lives in
- * the cmd_ files. */
+/* The command table, dispatch, and the promise that exit 0 means the results were written. Everything else
+ * lives in the cmd_ files. */
 #include <errno.h>
 #include <fftw3.h>
 #include <signal.h>
 #include <stdio.h>
-#include <string.h>
 #include <stdlib.h>
+#include <string.h>
 #include <unistd.h>
 
 #include "app/command.h"
@@ -39,8 +39,8 @@ static int unknown(const char *name) {
     const char *names[N_COMMANDS];
     for (size_t i = 0; i < N_COMMANDS; i++) names[i] = commands[i].name;
     const char *near = json_nearest(name, names, N_COMMANDS);
-    fprintf(stderr, "sward: unknown command '%.80s'%s%s%s; see 'sward --help'\n", name, near ? ", did you mean '" : "",
-            near ? near : "", near ? "'?" : "");
+    fprintf(stderr, "sward: unknown command '%.80s'%s%s%s; see 'sward --help'\n", name,
+            near ? ", did you mean '" : "", near ? near : "", near ? "'?" : "");
     return EXIT_USAGE;
 }
 

@@ -1,6 +1,6 @@
-/* Materials, the sun and measured profiles from CSV files, and the optical set-up a protocol asks for. A known
- * material is a file of the materials folder; its comment lines "name:", "title:", "source:" describe it. The room
- * optics reads no file, so everything it needs is loaded here. */
+/* Materials, the sun and measured profiles from CSV files, and the optical set-up a protocol asks for. A
+ * known material is a file of the materials folder; its comment lines "name:", "title:", "source:" describe
+ * it. The room optics reads no file, so everything it needs is loaded here. */
 #include "app/materials.h"
 
 #include <math.h>
@@ -27,7 +27,8 @@ status materials_folder(char **out, error *e) {
     const char *named = getenv("SWARD_MATERIALS");
     char *found = NULL;
     if (named && named[0]) {
-        if (!folder_exists(named)) return fail(e, ST_IO, "SWARD_MATERIALS names '%.200s', which is no folder", named);
+        if (!folder_exists(named))
+            return fail(e, ST_IO, "SWARD_MATERIALS names '%.200s', which is no folder", named);
         found = mem_text(named);
     } else {
         ssize_t n = readlink("/proc/self/exe", exe, sizeof exe - 1);
@@ -43,8 +44,10 @@ status materials_folder(char **out, error *e) {
             found = NULL;
         }
         if (!found)
-            return fail(e, ST_IO, "no folder with the optical materials beside the program (%.200s); set SWARD_MATERIALS to it",
-                        exe);
+            return fail(
+                e, ST_IO,
+                "no folder with the optical materials beside the program (%.200s); set SWARD_MATERIALS to it",
+                exe);
     }
     if (!found) return NO_MEMORY(e, "a path");
     *out = found;
@@ -68,7 +71,10 @@ static status material_from_csv(const char *path, const char *name, material *ou
     if (st == ST_OK) st = csv_read(path, &c, e);
     if (st != ST_OK) goto done;
     v = mem_array(c.n_rows, 3 * sizeof *v);
-    if (!v) { st = NO_MEMORY(e, "a material"); goto done; }
+    if (!v) {
+        st = NO_MEMORY(e, "a material");
+        goto done;
+    }
     st = csv_numbers(&c, "wavelength_nm", path, v, e);
     if (st == ST_OK) st = csv_numbers(&c, "n", path, v + c.n_rows, e);
     if (st == ST_OK && csv_column(&c, "k") >= 0) st = csv_numbers(&c, "k", path, v + 2 * c.n_rows, e);
@@ -102,9 +108,11 @@ static status unknown_material(const char *folder, const char *name, error *e) {
         text_addf(&known, " %s", files.paths[i]);
     }
     const char *near = json_nearest(name, (const char *const *)files.paths, files.n);
-    st = fail(e, ST_BAD_INPUT, "unknown material '%.60s'%s%s%s; known are air%.250s, a CSV with wavelength_nm, n and k, or an index "
-              "such as 2 or 2+0.1i", name, near ? ", did you mean '" : "", near ? near : "", near ? "'?" : "",
-              known.s ? known.s : "");
+    st = fail(
+        e, ST_BAD_INPUT,
+        "unknown material '%.60s'%s%s%s; known are air%.250s, a CSV with wavelength_nm, n and k, or an index "
+        "such as 2 or 2+0.1i",
+        name, near ? ", did you mean '" : "", near ? near : "", near ? "'?" : "", known.s ? known.s : "");
     text_free(&known);
     file_list_free(&files);
     return st;
@@ -141,8 +149,10 @@ status material_load(const char *name, material *out, error *e) {
         path = path_join(folder, file);
         if (!path) st = NO_MEMORY(e, "a path");
     }
-    if (st == ST_OK && path && is_material_file(file) && file_exists(path)) st = material_from_csv(path, name, out, e);
-    else if (st == ST_OK) st = unknown_material(folder, name, e);
+    if (st == ST_OK && path && is_material_file(file) && file_exists(path))
+        st = material_from_csv(path, name, out, e);
+    else if (st == ST_OK)
+        st = unknown_material(folder, name, e);
     free(path);
     free(folder);
     return st;
@@ -161,8 +171,8 @@ static status list_one(const char *folder, const char *file, textbuf *out, error
     if (st == ST_OK && c.n_rows) {
         number_text(nm[0], 6, lo);
         number_text(nm[c.n_rows - 1], 6, hi);
-        text_addf(out, "%-24.*s %s; %s to %s nm\n%-24s %s\n", (int)(strlen(file) - 4), file, comment_value(&c, "title"), lo, hi,
-                  "", comment_value(&c, "source"));
+        text_addf(out, "%-24.*s %s; %s to %s nm\n%-24s %s\n", (int)(strlen(file) - 4), file,
+                  comment_value(&c, "title"), lo, hi, "", comment_value(&c, "source"));
     }
     free(nm);
     free(path);
@@ -178,7 +188,8 @@ status materials_list(textbuf *out, error *e) {
     if (st == ST_OK) text_addf(out, "%-24s index 1 at every wavelength\n", "air");
     for (size_t i = 0; i < files.n && st == ST_OK; i++) st = list_one(folder, files.paths[i], out, e);
     if (st == ST_OK)
-        text_add(out, "Beside these: a path to a CSV with wavelength_nm, n and k, or a constant index such as 2 or 2+0.1i.\n");
+        text_add(out, "Beside these: a path to a CSV with wavelength_nm, n and k, or a constant index such "
+                      "as 2 or 2+0.1i.\n");
     file_list_free(&files);
     free(folder);
     return st;
@@ -194,7 +205,10 @@ static status sun_load(sun *out, error *e) {
     st = path ? csv_read(path, &c, e) : NO_MEMORY(e, "a path");
     if (st != ST_OK) goto done;
     v = mem_array(c.n_rows, 2 * sizeof *v);
-    if (!v) { st = NO_MEMORY(e, "the sun"); goto done; }
+    if (!v) {
+        st = NO_MEMORY(e, "the sun");
+        goto done;
+    }
     st = csv_numbers(&c, "wavelength_nm", path, v, e);
     if (st == ST_OK) st = csv_numbers(&c, "irradiance_W_m2_nm", path, v + c.n_rows, e);
     if (st == ST_OK) st = sun_make(out, comment_value(&c, "source"), c.n_rows, v, v + c.n_rows, e);
@@ -212,11 +226,15 @@ static status profile_check(const csv *c, const char *path, double *depth, const
     size_t n = c->n_rows;
     for (size_t i = 0; i < n; i++) {
         if (!(solid[i] >= 0.0 && solid[i] <= 1.0))
-            return fail(e, ST_BAD_INPUT, "%s line %zu, solid_fraction: found %s, expected a share from 0 to 1", path, c->lines[i],
-                        number_text(solid[i], 6, one));
+            return fail(e, ST_BAD_INPUT,
+                        "%s line %zu, solid_fraction: found %s, expected a share from 0 to 1", path,
+                        c->lines[i], number_text(solid[i], 6, one));
         if (i && !(depth[i] >= depth[i - 1]))
-            return fail(e, ST_BAD_INPUT, "%s line %zu, depth_nm: found %s after %s, expected depths in ascending order, from the "
-                        "tips down", path, c->lines[i], number_text(depth[i], 6, one), number_text(depth[i - 1], 6, two));
+            return fail(
+                e, ST_BAD_INPUT,
+                "%s line %zu, depth_nm: found %s after %s, expected depths in ascending order, from the "
+                "tips down",
+                path, c->lines[i], number_text(depth[i], 6, one), number_text(depth[i - 1], 6, two));
     }
     if (n < 2 || !(depth[n - 1] > depth[0]))
         return fail(e, ST_BAD_INPUT, "%s: a profile needs at least two different depths", path);
@@ -233,7 +251,10 @@ status profile_read(const char *path, profile *out, error *e) {
     if (st != ST_OK) goto done;
     p.depth_nm = mem_array(c.n_rows, sizeof *p.depth_nm);
     p.solid = mem_array(c.n_rows, sizeof *p.solid);
-    if (!p.depth_nm || !p.solid) { st = NO_MEMORY(e, "a profile"); goto done; }
+    if (!p.depth_nm || !p.solid) {
+        st = NO_MEMORY(e, "a profile");
+        goto done;
+    }
     p.n = c.n_rows;
     st = csv_numbers(&c, "depth_nm", path, p.depth_nm, e);
     if (st == ST_OK) st = csv_numbers(&c, "solid_fraction", path, p.solid, e);
@@ -264,7 +285,8 @@ static status load_all(const protocol *p, setup *s, error *e) {
 
 /* Every table must reach over the band, the sun's too: found here once instead of in the middle of a run. */
 static status check_band(const protocol *p, const setup *s, error *e) {
-    const material *all[5 + LIMIT_COATINGS] = { &s->substrate, &s->ambient, &s->nitride, &s->glass, &s->encapsulant };
+    const material *all[5 + LIMIT_COATINGS] = { &s->substrate, &s->ambient, &s->nitride, &s->glass,
+                                                &s->encapsulant };
     double n, k, ignored;
     for (size_t i = 0; i < p->n_coatings; i++) all[5 + i] = &s->coating[i];
     for (size_t i = 0; i < 5 + p->n_coatings; i++) {
@@ -285,8 +307,7 @@ static void wire(const protocol *p, setup *s) {
     o->substrate = &s->substrate;
     o->air = &s->air;
     o->nitride = &s->nitride;
-    if (s->glass.n)
-        o->front = (laminate){ &s->glass, p->glass_mm, &s->encapsulant, p->encapsulant_mm };
+    if (s->glass.n) o->front = (laminate){ &s->glass, p->glass_mm, &s->encapsulant, p->encapsulant_mm };
     o->coatings = s->layers;
     o->n_coatings = p->n_coatings;
     o->mixing = p->mixing;
@@ -303,12 +324,16 @@ static void wire(const protocol *p, setup *s) {
 status setup_make(const protocol *p, setup *out, error *e) {
     *out = (setup){ 0 };
     if (p->profile && p->n_coatings)
-        return fail(e, ST_BAD_INPUT, "a measured profile says nothing of where a coating lies; take the coatings out, or give height "
-                    "and shape instead of the profile");
+        return fail(
+            e, ST_BAD_INPUT,
+            "a measured profile says nothing of where a coating lies; take the coatings out, or give height "
+            "and shape instead of the profile");
     status st = load_all(p, out, e);
     if (st == ST_OK) st = check_band(p, out, e);
-    if (st == ST_OK) wire(p, out);
-    else setup_free(out);
+    if (st == ST_OK)
+        wire(p, out);
+    else
+        setup_free(out);
     return st;
 }
 

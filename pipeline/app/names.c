@@ -1,6 +1,6 @@
-/* Sample from a file name: the protocol's template, else the sub-folder, else the stem without its number. A template
- * is literal text and fields in braces; it matches as a whole, fields take as little as they can ({n}: digits only),
- * and a table of hopeless (part, position) pairs keeps the search polynomial. */
+/* Sample from a file name: the protocol's template, else the sub-folder, else the stem without its number. A
+ * template is literal text and fields in braces; it matches as a whole, fields take as little as they can
+ * ({n}: digits only), and a table of hopeless (part, position) pairs keeps the search polynomial. */
 #include "app/names.h"
 
 #include <stdio.h>
@@ -11,7 +11,16 @@
 #include "base/text.h"
 #include "io/json.h"
 
-typedef enum { FIELD_LOT, FIELD_WAFER, FIELD_POSITION, FIELD_SAMPLE, FIELD_N, FIELD_ANY, FIELD_UNKNOWN, LITERAL } part_kind;
+typedef enum {
+    FIELD_LOT,
+    FIELD_WAFER,
+    FIELD_POSITION,
+    FIELD_SAMPLE,
+    FIELD_N,
+    FIELD_ANY,
+    FIELD_UNKNOWN,
+    LITERAL
+} part_kind;
 static const char *const field_names[] = { "lot", "wafer", "position", "sample", "n" };
 enum { N_FIELDS = 5, MAX_PARTS = 32 };
 _Static_assert((int)FIELD_N + 1 == N_FIELDS, "one name per field");
@@ -20,35 +29,44 @@ typedef struct {
     part_kind kind;
     const char *text; /* LITERAL: in the template, not terminated */
     size_t n;
-    size_t from, to;  /* where it matched */
+    size_t from, to; /* where it matched */
 } part;
 
-/* The template cut into parts; 0 with a sentence when it is none. */
-static size_t pattern_parts(const char *s, part *parts, error *e) {
-    size_t n = 0;
+/* A field's kind by the n bytes between its braces. */
+static part_kind field_kind(const char *s, size_t n) {
+    if (!n) return FIELD_ANY;
+    for (int f = 0; f < N_FIELDS; f++)
+        if (strlen(field_names[f]) == n && memcmp(field_names[f], s, n) == 0) return (part_kind)f;
+    return FIELD_UNKNOWN;
+}
+
+static status unknown_field(const part *q, error *e) {
+    char word[40];
+    snprintf(word, sizeof word, "%.*s", (int)(q->n < 39 ? q->n : 39), q->text);
+    const char *near = json_nearest(word, field_names, N_FIELDS);
+    return fail(e, ST_BAD_INPUT,
+                "unknown field '{%s}'%s%s%s; fields are {lot} {wafer} {position} {sample} {n} {}", word,
+                near ? ", did you mean '{" : "", near ? near : "", near ? "}'?" : "");
+}
+
+/* The template cut into at most MAX_PARTS parts. */
+static status pattern_parts(const char *s, part *parts, size_t *n, error *e) {
+    *n = 0;
     while (*s) {
-        if (n == MAX_PARTS) return fail(e, ST_BAD_INPUT, "the template has more than %d parts", MAX_PARTS), (size_t)0;
-        part *q = &parts[n++];
+        if (*n == MAX_PARTS) return fail(e, ST_BAD_INPUT, "the template has more than %d parts", MAX_PARTS);
+        part *q = &parts[(*n)++];
         if (*s != '{') {
             *q = (part){ .kind = LITERAL, .text = s, .n = strcspn(s, "{") };
             s += q->n;
             continue;
         }
         size_t inside = strcspn(s + 1, "{}");
-        if (s[1 + inside] != '}') return fail(e, ST_BAD_INPUT, "a brace is opened and not closed"), (size_t)0;
-        *q = (part){ .kind = inside ? FIELD_UNKNOWN : FIELD_ANY, .text = s + 1, .n = inside };
-        for (int f = 0; f < N_FIELDS && inside; f++)
-            if (strlen(field_names[f]) == inside && memcmp(field_names[f], s + 1, inside) == 0) q->kind = (part_kind)f;
-        if (inside && q->kind == FIELD_UNKNOWN) {
-            char word[40];
-            snprintf(word, sizeof word, "%.*s", (int)(inside < 39 ? inside : 39), s + 1);
-            const char *near = json_nearest(word, field_names, N_FIELDS);
-            return fail(e, ST_BAD_INPUT, "unknown field '{%s}'%s%s%s; fields are {lot} {wafer} {position} {sample} {n} {}",
-                        word, near ? ", did you mean '{" : "", near ? near : "", near ? "}'?" : ""), (size_t)0;
-        }
+        if (s[1 + inside] != '}') return fail(e, ST_BAD_INPUT, "a brace is opened and not closed");
+        *q = (part){ .kind = field_kind(s + 1, inside), .text = s + 1, .n = inside };
+        if (q->kind == FIELD_UNKNOWN) return unknown_field(q, e);
         s += inside + 2;
     }
-    return n;
+    return ST_OK;
 }
 
 static int ends_like_image(const char *s) {
@@ -65,21 +83,26 @@ status pattern_check(const char *pattern, error *e) {
     part parts[MAX_PARTS];
     error inner = { ST_OK, "" };
     int seen[N_FIELDS + 1] = { 0 }, naming = 0;
-    size_t n = pattern_parts(pattern, parts, &inner);
-    if (inner.code != ST_OK) return fail(e, ST_BAD_INPUT, "'%.100s': %s", pattern, inner.text);
+    size_t n = 0;
+    if (pattern_parts(pattern, parts, &n, &inner) != ST_OK)
+        return fail(e, ST_BAD_INPUT, "'%.100s': %s", pattern, inner.text);
     if (ends_like_image(pattern))
-        return fail(e, ST_BAD_INPUT, "'%.100s': leave the extension out, the template is matched without it", pattern);
+        return fail(e, ST_BAD_INPUT, "'%.100s': leave the extension out, the template is matched without it",
+                    pattern);
     for (size_t i = 0; i < n; i++) {
         if (parts[i].kind == LITERAL) continue;
         if (i && parts[i - 1].kind != LITERAL)
-            return fail(e, ST_BAD_INPUT, "'%.100s': two fields without text between them cannot be told apart", pattern);
+            return fail(e, ST_BAD_INPUT,
+                        "'%.100s': two fields without text between them cannot be told apart", pattern);
         if (parts[i].kind == FIELD_ANY) continue;
         if (seen[parts[i].kind]++)
-            return fail(e, ST_BAD_INPUT, "'%.100s': the field '{%s}' stands twice", pattern, field_names[parts[i].kind]);
+            return fail(e, ST_BAD_INPUT, "'%.100s': the field '{%s}' stands twice", pattern,
+                        field_names[parts[i].kind]);
         naming += parts[i].kind != FIELD_N;
     }
     if (!naming)
-        return fail(e, ST_BAD_INPUT, "'%.100s': no field that names a sample; take {sample}, {lot}, {wafer} or {position}",
+        return fail(e, ST_BAD_INPUT,
+                    "'%.100s': no field that names a sample; take {sample}, {lot}, {wafer} or {position}",
                     pattern);
     return ST_OK;
 }
@@ -98,10 +121,12 @@ static int match_from(search *m, size_t i, size_t at) {
     part *q = &m->parts[i];
     if (m->hopeless[i * (m->n + 1) + at]) return 0;
     if (q->kind == LITERAL) {
-        if (at + q->n <= m->n && memcmp(m->s + at, q->text, q->n) == 0 && match_from(m, i + 1, at + q->n)) return 1;
+        if (at + q->n <= m->n && memcmp(m->s + at, q->text, q->n) == 0 && match_from(m, i + 1, at + q->n))
+            return 1;
     } else {
         size_t end = at;
-        while (end < m->n && m->s[end] != '/' && (q->kind != FIELD_N || (m->s[end] >= '0' && m->s[end] <= '9'))) {
+        while (end < m->n && m->s[end] != '/' &&
+               (q->kind != FIELD_N || (m->s[end] >= '0' && m->s[end] <= '9'))) {
             q->from = at;
             q->to = ++end;
             if (match_from(m, i + 1, end)) return 1;
@@ -111,8 +136,8 @@ static int match_from(search *m, size_t i, size_t at) {
     return 0;
 }
 
-/* What the matched parts say. Without {sample} the sample is the matched text from the first to the last naming field;
- * {n}, {} and the text before them are left out. */
+/* What the matched parts say. Without {sample} the sample is the matched text from the first to the last
+ * naming field; {n}, {} and the text before them are left out. */
 static int take_parts(const search *m, name_parts *out) {
     char **slots[N_FIELDS] = { &out->lot, &out->wafer, &out->position, &out->sample, NULL };
     textbuf joined = { 0 };
@@ -137,12 +162,13 @@ static int take_parts(const search *m, name_parts *out) {
     return ok;
 }
 
-static status by_pattern(const char *text, size_t n, const char *pattern, name_parts *out, int *found, error *e) {
+static status by_pattern(const char *text, size_t n, const char *pattern, name_parts *out, int *found,
+                         error *e) {
     part parts[MAX_PARTS];
     search m = { .parts = parts, .s = text, .n = n };
-    status st = ST_OK;
     *found = 0;
-    m.n_parts = pattern_parts(pattern, parts, NULL);
+    status st = pattern_parts(pattern, parts, &m.n_parts, e);
+    if (st != ST_OK) return st;
     m.hopeless = mem_array(m.n_parts, n + 1);
     if (!m.hopeless) return NO_MEMORY(e, "the sample names");
     if (match_from(&m, 0, 0)) {
@@ -153,7 +179,8 @@ static status by_pattern(const char *text, size_t n, const char *pattern, name_p
     return st;
 }
 
-/* Length of the stem without its trailing number, a closing bracket around it and the separators before it. */
+/* Length of the stem without its trailing number, a closing bracket around it and the separators before it.
+ */
 static size_t without_number(const char *s, size_t n) {
     size_t end = n;
     while (end && s[end - 1] == ')') end--;
@@ -174,16 +201,20 @@ status name_sample(const char *relative, const char *pattern, name_parts *out, e
     status st = ST_OK;
     if (pattern && strchr(pattern, '/'))
         st = by_pattern(relative, (size_t)(bare - relative) + stem, pattern, &got, &found, e);
-    else if (pattern) st = by_pattern(bare, stem, pattern, &got, &found, e);
+    else if (pattern)
+        st = by_pattern(bare, stem, pattern, &got, &found, e);
     if (st == ST_OK && !found)
         got.sample = slash ? mem_text_n(relative, (size_t)(slash - relative))
                            : mem_text_n(bare, without_number(bare, stem));
     if (!got.lot) got.lot = mem_text("");
     if (!got.wafer) got.wafer = mem_text("");
     if (!got.position) got.position = mem_text("");
-    if (st == ST_OK && (!got.sample || !got.lot || !got.wafer || !got.position)) st = NO_MEMORY(e, "the sample names");
-    if (st == ST_OK) *out = got;
-    else name_parts_free(&got);
+    if (st == ST_OK && (!got.sample || !got.lot || !got.wafer || !got.position))
+        st = NO_MEMORY(e, "the sample names");
+    if (st == ST_OK)
+        *out = got;
+    else
+        name_parts_free(&got);
     return st;
 }
 

@@ -1,6 +1,6 @@
-/* Reading and checking a protocol: JSON after line comments are blanked, then one walk over its keys against the
- * table in protocol_keys.c. Every mistake is named with file, line, key, what was found and what was expected.
- * Does not look into the files a protocol names; materials.c does. */
+/* Reading and checking a protocol: JSON after line comments are blanked, then one walk over its keys against
+ * the table in protocol_keys.c. Every mistake is named with file, line, key, what was found and what was
+ * expected. Does not look into the files a protocol names; materials.c does. */
 #include "app/protocol.h"
 
 #include <cjson/cJSON.h>
@@ -70,12 +70,14 @@ void protocol_free(protocol *p) {
 static size_t line_of(const reader *r, const cJSON *node) { return r->doc ? json_line(r->doc, node) : 0; }
 
 /* The sentence of every wrong value: where, what was found, what was expected. */
-static status wrong(const reader *r, size_t line, const char *where, const cJSON *found, const char *expected) {
+static status wrong(const reader *r, size_t line, const char *where, const cJSON *found,
+                    const char *expected) {
     char *text = cJSON_PrintUnformatted(found);
     const char *shown = text ? text : "?", *more = text && strlen(text) > 60 ? "..." : "";
-    status st = r->doc ? fail(r->e, ST_BAD_INPUT, "%s line %zu, %s: found %.60s%s, expected %s", r->what, line, where,
-                              shown, more, expected)
-                       : fail(r->e, ST_BAD_INPUT, "%s: found %.60s%s, expected %s", r->what, shown, more, expected);
+    status st =
+        r->doc ? fail(r->e, ST_BAD_INPUT, "%s line %zu, %s: found %.60s%s, expected %s", r->what, line, where,
+                      shown, more, expected)
+               : fail(r->e, ST_BAD_INPUT, "%s: found %.60s%s, expected %s", r->what, shown, more, expected);
     cJSON_free(text);
     return st;
 }
@@ -101,7 +103,8 @@ static status replace(const reader *r, char **slot, char *text) {
 static char *material_text(const reader *r, const cJSON *node) {
     char number[NUMBER_TEXT];
     if (cJSON_IsNumber(node)) return mem_text(number_text(node->valuedouble, 15, number));
-    return material_is_path(node->valuestring) ? path_join(r->folder, node->valuestring) : mem_text(node->valuestring);
+    return material_is_path(node->valuestring) ? path_join(r->folder, node->valuestring)
+                                               : mem_text(node->valuestring);
 }
 
 static status read_text(const reader *r, const cJSON *node, const protocol_key *k) {
@@ -145,10 +148,14 @@ static status read_index(const reader *r, const cJSON *node, const protocol_key 
 }
 
 static status read_shape(const reader *r, const cJSON *node, const protocol_key *k) {
-    if (cJSON_IsString(node) && strcmp(node->valuestring, "cone") == 0) put_number(r, k, 0, 1.0);
-    else if (cJSON_IsString(node) && strcmp(node->valuestring, "paraboloid") == 0) put_number(r, k, 0, 2.0);
-    else if (in_range(node, k)) put_number(r, k, 0, node->valuedouble);
-    else return wrong_value(r, node, k);
+    if (cJSON_IsString(node) && strcmp(node->valuestring, "cone") == 0)
+        put_number(r, k, 0, 1.0);
+    else if (cJSON_IsString(node) && strcmp(node->valuestring, "paraboloid") == 0)
+        put_number(r, k, 0, 2.0);
+    else if (in_range(node, k))
+        put_number(r, k, 0, node->valuedouble);
+    else
+        return wrong_value(r, node, k);
     return ST_OK;
 }
 
@@ -159,7 +166,8 @@ static void hint(const char *word, const char *const *words, size_t n, char *out
     if (near) snprintf(out, size, "; did you mean '%s'?", near);
 }
 
-static status unknown(const reader *r, const cJSON *node, const char *where, const char *const *words, size_t n) {
+static status unknown(const reader *r, const cJSON *node, const char *where, const char *const *words,
+                      size_t n) {
     char near[120];
     hint(node->string, words, n, near, sizeof near);
     return fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s%s", r->what, line_of(r, node),
@@ -169,16 +177,19 @@ static status unknown(const reader *r, const cJSON *node, const char *where, con
 static status read_coating(const reader *r, const cJSON *item, size_t line, protocol_coating *c) {
     static const char *const words[] = { "material", "thickness_nm" };
     const cJSON *name = NULL, *thickness = NULL, *child;
-    if (!cJSON_IsObject(item)) return wrong(r, line, "optics.coatings", item, "{ \"material\": ..., \"thickness_nm\": ... }");
+    if (!cJSON_IsObject(item))
+        return wrong(r, line, "optics.coatings", item, "{ \"material\": ..., \"thickness_nm\": ... }");
     cJSON_ArrayForEach(child, item) {
-        if (strcmp(child->string, words[0]) == 0) name = child;
-        else if (strcmp(child->string, words[1]) == 0) thickness = child;
-        else return unknown(r, child, "optics.coatings", words, 2);
+        if (strcmp(child->string, words[0]) == 0)
+            name = child;
+        else if (strcmp(child->string, words[1]) == 0)
+            thickness = child;
+        else
+            return unknown(r, child, "optics.coatings", words, 2);
     }
     if (!name || !thickness)
         return wrong(r, line, "optics.coatings", item, "both \"material\" and \"thickness_nm\"");
-    if (!(cJSON_IsString(name) && name->valuestring[0]) &&
-        !(cJSON_IsNumber(name) && name->valuedouble > 0.0))
+    if (!(cJSON_IsString(name) && name->valuestring[0]) && !(cJSON_IsNumber(name) && name->valuedouble > 0.0))
         return wrong(r, line_of(r, name), "optics.coatings.material", name,
                      "a material name, a CSV path or a refractive index");
     if (!cJSON_IsNumber(thickness) || !(thickness->valuedouble >= 0.0 && thickness->valuedouble <= 1e5))
@@ -214,9 +225,10 @@ static status target_column(const reader *r, const cJSON *node) {
     if (!known) {
         char near[120];
         hint(node->string, words, n, near, sizeof near);
-        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: targets: '%.60s' is no quantity of samples.csv%s%s", r->what,
-                  line_of(r, node), node->string, near,
-                  near[0] ? "" : "; take one of its numeric columns, such as spacing_nm or weighted_reflectance");
+        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: targets: '%.60s' is no quantity of samples.csv%s%s",
+                  r->what, line_of(r, node), node->string, near,
+                  near[0] ? ""
+                          : "; take one of its numeric columns, such as spacing_nm or weighted_reflectance");
     }
     free(words);
     return st;
@@ -233,9 +245,12 @@ static status read_target_part(const reader *r, const cJSON *child, const char *
         return ST_OK;
     }
     if (strcmp(child->string, "error") != 0) return unknown(r, child, where, words, 3);
-    if (cJSON_IsString(child) && strcmp(child->valuestring, "repeat") == 0) t->error = ERROR_REPEAT;
-    else if (cJSON_IsString(child) && strcmp(child->valuestring, "full") == 0) t->error = ERROR_FULL;
-    else return wrong(r, line, where, child, "\"full\" or \"repeat\"");
+    if (cJSON_IsString(child) && strcmp(child->valuestring, "repeat") == 0)
+        t->error = ERROR_REPEAT;
+    else if (cJSON_IsString(child) && strcmp(child->valuestring, "full") == 0)
+        t->error = ERROR_FULL;
+    else
+        return wrong(r, line, where, child, "\"full\" or \"repeat\"");
     return ST_OK;
 }
 
@@ -245,7 +260,8 @@ static status read_target(const reader *r, const cJSON *node, target *t) {
     status st = target_column(r, node);
     if (st != ST_OK) return st;
     snprintf(where, sizeof where, "targets.%s", node->string);
-    if (!cJSON_IsObject(node)) return wrong(r, line_of(r, node), where, node, "{ \"min\": ..., \"max\": ... }");
+    if (!cJSON_IsObject(node))
+        return wrong(r, line_of(r, node), where, node, "{ \"min\": ..., \"max\": ... }");
     *t = (target){ .min = MISSING, .max = MISSING, .error = ERROR_FULL };
     cJSON_ArrayForEach(child, node) {
         st = read_target_part(r, child, where, t);
@@ -277,17 +293,23 @@ static status read_key(const reader *r, const cJSON *node, const protocol_key *k
     switch (k->kind) {
     case KEY_TEXT:
     case KEY_PATH:
-    case KEY_MATERIAL: return read_text(r, node, k);
+    case KEY_MATERIAL:
+        return read_text(r, node, k);
     case KEY_NUMBER:
         if (!in_range(node, k)) return wrong_value(r, node, k);
         put_number(r, k, 0, node->valuedouble);
         return ST_OK;
     case KEY_SWITCH:
-    case KEY_WORD: return read_index(r, node, k);
-    case KEY_SHAPE: return read_shape(r, node, k);
-    case KEY_BAND: return read_band(r, node, k);
-    case KEY_COATINGS: return read_coatings(r, node, k);
-    case KEY_TARGETS: return read_targets(r, node, k);
+    case KEY_WORD:
+        return read_index(r, node, k);
+    case KEY_SHAPE:
+        return read_shape(r, node, k);
+    case KEY_BAND:
+        return read_band(r, node, k);
+    case KEY_COATINGS:
+        return read_coatings(r, node, k);
+    case KEY_TARGETS:
+        return read_targets(r, node, k);
     }
     return fail(r->e, ST_BUG, "a key of the protocol has no reader");
 }
@@ -299,8 +321,10 @@ static status unknown_key(const reader *r, const cJSON *node, const char *group)
     size_t n = 0;
     if (!words) return NO_MEMORY(r->e, "the protocol");
     for (size_t i = 0; i < n_protocol_keys; i++) {
-        if (strcmp(protocol_keys[i].group, group) == 0) words[n++] = protocol_keys[i].name;
-        else if (strcmp(protocol_keys[i].name, node->string) == 0) elsewhere = &protocol_keys[i];
+        if (strcmp(protocol_keys[i].group, group) == 0)
+            words[n++] = protocol_keys[i].name;
+        else if (strcmp(protocol_keys[i].name, node->string) == 0)
+            elsewhere = &protocol_keys[i];
     }
     for (size_t i = 0; i < PROTOCOL_GROUPS && !group[0]; i++) words[n++] = protocol_groups[i];
     status st;
@@ -308,9 +332,10 @@ static status unknown_key(const reader *r, const cJSON *node, const char *group)
         st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s; it belongs in \"%s\"", r->what,
                   line_of(r, node), node->string, group[0] ? " in " : "", group, elsewhere->group);
     else if (elsewhere)
-        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s' in %s; it belongs to the top level", r->what,
-                  line_of(r, node), node->string, group);
-    else st = unknown(r, node, group, words, n);
+        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s' in %s; it belongs to the top level",
+                  r->what, line_of(r, node), node->string, group);
+    else
+        st = unknown(r, node, group, words, n);
     free(words);
     return st;
 }
@@ -323,11 +348,14 @@ static status read_group(const reader *r, const cJSON *object, const char *group
         for (size_t i = 0; i < PROTOCOL_GROUPS && !group[0]; i++)
             if (strcmp(protocol_groups[i], node->string) == 0) inner = protocol_groups[i];
         status st;
-        if (k) st = read_key(r, node, k);
-        else if (!inner) st = unknown_key(r, node, group);
+        if (k)
+            st = read_key(r, node, k);
+        else if (!inner)
+            st = unknown_key(r, node, group);
         else if (!cJSON_IsObject(node))
             st = wrong(r, line_of(r, node), inner, node, "an object in braces with keys of its own");
-        else st = read_group(r, node, inner);
+        else
+            st = read_group(r, node, inner);
         if (st != ST_OK) return st;
     }
     return ST_OK;
@@ -340,11 +368,15 @@ static status check_whole(const reader *r) {
     if (p->pattern && pattern_check(p->pattern, &inner) != ST_OK)
         return fail(r->e, inner.code, "%s: samples.pattern: %s", r->what, inner.text);
     if (isfinite(p->link.height_nm_u) && !isfinite(p->link.height_nm))
-        return fail(r->e, ST_BAD_INPUT, "%s: link.height_nm_u stands without link.height_nm; add the height or take the "
-                    "uncertainty out", r->what);
+        return fail(r->e, ST_BAD_INPUT,
+                    "%s: link.height_nm_u stands without link.height_nm; add the height or take the "
+                    "uncertainty out",
+                    r->what);
     if (isfinite(p->link.aspect_u) && !isfinite(p->link.aspect))
-        return fail(r->e, ST_BAD_INPUT, "%s: link.aspect_u stands without link.aspect; add the aspect ratio or take the "
-                    "uncertainty out", r->what);
+        return fail(r->e, ST_BAD_INPUT,
+                    "%s: link.aspect_u stands without link.aspect; add the aspect ratio or take the "
+                    "uncertainty out",
+                    r->what);
     return ST_OK;
 }
 
@@ -360,21 +392,24 @@ static cJSON *option_value(const protocol_key *k, const char *text) {
         v = cJSON_CreateDoubleArray((const double[]){ lo, hi }, 2);
     else if (k->kind == KEY_COATINGS && colon && number_parse(colon + 1, &hi)) {
         v = cJSON_CreateObject();
-        if (!cJSON_AddStringToObject(v, "material", head) || !cJSON_AddNumberToObject(v, "thickness_nm", hi)) {
+        if (!cJSON_AddStringToObject(v, "material", head) ||
+            !cJSON_AddNumberToObject(v, "thickness_nm", hi)) {
             cJSON_Delete(v);
             v = NULL;
         }
-    } else if (takes_number && number_parse(text, &lo)) v = cJSON_CreateNumber(lo);
-    else if (k->kind == KEY_SWITCH && strcmp(text, "true") == 0) v = cJSON_CreateTrue();
-    else v = cJSON_CreateString(text);
+    } else if (takes_number && number_parse(text, &lo))
+        v = cJSON_CreateNumber(lo);
+    else if (k->kind == KEY_SWITCH && strcmp(text, "true") == 0)
+        v = cJSON_CreateTrue();
+    else
+        v = cJSON_CreateString(text);
     free(head);
     return v;
 }
 
 static status option_coating(const reader *r, const cJSON *v) {
     protocol *p = r->p;
-    if (!cJSON_IsObject(v))
-        return wrong(r, 0, "", v, "MATERIAL:NM, such as alumina:10");
+    if (!cJSON_IsObject(v)) return wrong(r, 0, "", v, "MATERIAL:NM, such as alumina:10");
     if (p->n_coatings == LIMIT_COATINGS)
         return fail(r->e, ST_BAD_INPUT, "%s: at most %d coatings", r->what, LIMIT_COATINGS);
     status st = read_coating(r, v, 0, &p->coatings[p->n_coatings]);
@@ -382,7 +417,8 @@ static status option_coating(const reader *r, const cJSON *v) {
     return st;
 }
 
-status protocol_set(protocol *p, const char *group, const char *name, const char *text, const char *option, error *e) {
+status protocol_set(protocol *p, const char *group, const char *name, const char *text, const char *option,
+                    error *e) {
     const protocol_key *k = protocol_key_find(group, name);
     reader r = { NULL, option, "", p, e };
     if (!k) return fail(e, ST_BUG, "%s sets no key of a protocol", option);
@@ -397,14 +433,17 @@ status protocol_set(protocol *p, const char *group, const char *name, const char
 static void blank_comments(char *s, size_t n) {
     int in_string = 0;
     for (size_t i = 0; i < n; i++) {
-        if (in_string && s[i] == '\\') i++;
-        else if (s[i] == '"') in_string = !in_string;
+        if (in_string && s[i] == '\\')
+            i++;
+        else if (s[i] == '"')
+            in_string = !in_string;
         else if (!in_string && s[i] == '/' && i + 1 < n && s[i + 1] == '/')
             while (i < n && s[i] != '\n') s[i++] = ' ';
     }
 }
 
-status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out, error *e) {
+status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out,
+                      error *e) {
     protocol p = { 0 };
     json doc = { 0 };
     char *text = mem_text_n(bytes, n);
@@ -433,7 +472,8 @@ status protocol_read(const char *path, protocol *out, error *e) {
     const char *slash = strrchr(path, '/');
     char *folder = slash ? mem_text_n(path, slash == path ? 1 : (size_t)(slash - path)) : mem_text("");
     status st = folder ? input_wanted(path, e) : NO_MEMORY(e, "the protocol");
-    if (st == ST_OK && (st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e)) != ST_OK) fail_within(e, st, path);
+    if (st == ST_OK && (st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e)) != ST_OK)
+        fail_within(e, st, path);
     if (st == ST_OK) st = protocol_parse(bytes, n, path, folder, out, e);
     free(bytes);
     free(folder);

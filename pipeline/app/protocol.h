@@ -1,5 +1,6 @@
-/* The protocol: how to measure, how to link, which optical stack, which targets. JSON, plus line comments that begin
- * with two slashes. One table of keys in protocol_keys.c drives reading, checking, printing and explaining. */
+/* The protocol: how to measure, how to link, which optical stack, which targets. JSON, plus line comments
+ * that begin with two slashes. One table of keys in protocol_keys.c drives reading, checking, printing and
+ * explaining. */
 #ifndef SWARD_APP_PROTOCOL_H
 #define SWARD_APP_PROTOCOL_H
 #include <stddef.h>
@@ -14,7 +15,7 @@
 typedef enum { SPACING_AUTOCORRELATION, SPACING_DENSITY } spacing_choice;
 
 typedef struct {
-    char *material;        /* a known name, a path that exists from here, or a number "2" or "2+0.1i"; owned */
+    char *material; /* a known name, a path that exists from here, or a number "2" or "2+0.1i"; owned */
     double thickness_nm;
 } protocol_coating;
 
@@ -23,11 +24,12 @@ typedef struct {
     char *name;              /* key "protocol"; "built-in" */
     spacing_choice spacing;  /* which spacing is the sample's spacing_nm */
     measure_options measure; /* measure.relief is the key "relief" */
-    double px_u_rel;         /* relative standard uncertainty of every pixel size; NAN: what the source of each says */
-    char *pattern;           /* sample name from file names, see names.h; NULL: none */
+    double
+        px_u_rel;  /* relative standard uncertainty of every pixel size; NAN: what the source of each says */
+    char *pattern; /* sample name from file names, see names.h; NULL: none */
     link_options link;
-    char *profile;           /* measured profile: CSV path, usable from here; NULL: none */
-    char *ambient;           /* "air", "laminate", or as a material */
+    char *profile; /* measured profile: CSV path, usable from here; NULL: none */
+    char *ambient; /* "air", "laminate", or as a material */
     double glass_mm, encapsulant_mm;
     protocol_coating coatings[LIMIT_COATINGS]; /* outermost first */
     size_t n_coatings;
@@ -37,32 +39,35 @@ typedef struct {
     polarization polarization;
     int hemispherical;
     double band_lo_nm, band_hi_nm, step_nm;
-    target *targets;         /* [n_targets], in the order of the file; owned */
+    target *targets; /* [n_targets], in the order of the file; owned */
     size_t n_targets;
-    char *history;           /* path, usable from here; NULL: OUT/history.sqlite */
-} protocol;                  /* {0} = empty; strings owned */
+    char *history; /* path, usable from here; NULL: OUT/history.sqlite */
+} protocol;        /* {0} = empty; strings owned */
 
 /* The built-in protocol. err ST_NO_MEMORY */
 status protocol_defaults(protocol *out, error *e);
 
 /* Reads a protocol file; what it does not say is as in protocol_defaults.
  *   out  untouched on failure; paths in it are joined to the file's folder
- *   err  ST_BAD_INPUT with file and line: not JSON, unknown key (with the nearest known one), wrong type, out of range,
- *        a target on no numeric column of samples.csv; there is no such file; ST_IO it cannot be read; ST_NO_MEMORY */
+ *   err  ST_BAD_INPUT with file and line: not JSON, unknown key (with the nearest known one), wrong type, out
+ * of range, a target on no numeric column of samples.csv; there is no such file; ST_IO it cannot be read;
+ * ST_NO_MEMORY */
 status protocol_read(const char *path, protocol *out, error *e);
 
 /* The same from memory; `what` names the source in sentences, `folder` is what paths are relative to. */
-status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out, error *e);
+status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out,
+                      error *e);
 
-/* One key from the text of a command-line option, checked like the same key of a file: protocol_set(p, "link", "coverage",
- * "0.8", "--coverage", e). A band is "300:1200"; a coating "alumina:10" is added below the ones before.
- *   err  ST_BAD_INPUT "--coverage: found 2, expected a number from 0 to 1"; ST_NO_MEMORY */
-status protocol_set(protocol *p, const char *group, const char *name, const char *text, const char *option, error *e);
+/* One key from the text of a command-line option, checked like the same key of a file: protocol_set(p,
+ * "link", "coverage", "0.8", "--coverage", e). A band is "300:1200"; a coating "alumina:10" is added below
+ * the ones before. err  ST_BAD_INPUT "--coverage: found 2, expected a number from 0 to 1"; ST_NO_MEMORY */
+status protocol_set(protocol *p, const char *group, const char *name, const char *text, const char *option,
+                    error *e);
 void protocol_free(protocol *p);
 
-/* Canonical text for fingerprints: same meaning, same text; numbers with 17 digits. The first holds everything that changes what
- * is measured on one micrograph, the second everything except names and paths of files (see setup_text in materials.h for
- * the contents behind material names). */
+/* Canonical text for fingerprints: same meaning, same text; numbers with 17 digits. The first holds
+ * everything that changes what is measured on one micrograph, the second everything except names and paths of
+ * files (see setup_text in materials.h for the contents behind material names). */
 void protocol_measuring_text(const protocol *p, textbuf *out);
 void protocol_full_text(const protocol *p, textbuf *out);
 

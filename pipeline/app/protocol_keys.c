@@ -1,6 +1,6 @@
-/* Every key of a protocol in one table: where it goes, unit, range, meaning. Reading, checking, printing, explaining
- * and fingerprints walk this table, so a new key is one line here and one member in protocol.h. Defaults are not
- * repeated: they are what protocol_defaults() holds. */
+/* Every key of a protocol in one table: where it goes, unit, range, meaning. Reading, checking, printing,
+ * explaining and fingerprints walk this table, so a new key is one line here and one member in protocol.h.
+ * Defaults are not repeated: they are what protocol_defaults() holds. */
 #include "app/protocol_keys.h"
 
 #include <math.h>
@@ -33,17 +33,23 @@ _Static_assert(sizeof(relief) == sizeof(int) && sizeof(spacing_choice) == sizeof
 
 #define AT(member) offsetof(protocol, member)
 #define OPEN HUGE_VAL
-#define TEXT(group, key, member, help) { group, key, KEY_TEXT, AT(member), "", 0, 0, 0, NULL, 0, help }
-#define PATH(group, key, member, help) { group, key, KEY_PATH, AT(member), "", 0, 0, 0, NULL, 0, help }
-#define MATERIAL(group, key, member, help) { group, key, KEY_MATERIAL, AT(member), "", 0, 0, 0, NULL, 0, help }
-#define WORD(group, key, member, word, m, help) { group, key, KEY_WORD, AT(member), "", 0, 0, 0, word, m, help }
-#define SWITCH(group, key, member, help) { group, key, KEY_SWITCH, AT(member), "", 0, 1, 0, NULL, 0, help }
+#define TEXT(group, key, member, help)                                                                       \
+    { group, key, KEY_TEXT, AT(member), "", 0, 0, 0, NULL, 0, help }
+#define PATH(group, key, member, help)                                                                       \
+    { group, key, KEY_PATH, AT(member), "", 0, 0, 0, NULL, 0, help }
+#define MATERIAL(group, key, member, help)                                                                   \
+    { group, key, KEY_MATERIAL, AT(member), "", 0, 0, 0, NULL, 0, help }
+#define WORD(group, key, member, word, m, help)                                                              \
+    { group, key, KEY_WORD, AT(member), "", 0, 0, 0, word, m, help }
+#define SWITCH(group, key, member, help)                                                                     \
+    { group, key, KEY_SWITCH, AT(member), "", 0, 1, 0, NULL, 0, help }
 /* number from lo to hi; number above lo; limit of fitness */
-#define NUMBER(group, key, member, unit, lo, hi, help) \
+#define NUMBER(group, key, member, unit, lo, hi, help)                                                       \
     { group, key, KEY_NUMBER, AT(member), unit, lo, hi, 0, NULL, 0, help }
-#define ABOVE(group, key, member, unit, lo, hi, help) \
+#define ABOVE(group, key, member, unit, lo, hi, help)                                                        \
     { group, key, KEY_NUMBER, AT(member), unit, lo, hi, 1, NULL, 0, help }
-#define LIMIT(key, lo, hi, help) { "fitness", #key, KEY_NUMBER, AT(measure.key), "", lo, hi, 0, NULL, 1, help }
+#define LIMIT(key, lo, hi, help)                                                                             \
+    { "fitness", #key, KEY_NUMBER, AT(measure.key), "", lo, hi, 0, NULL, 1, help }
 
 /* clang-format off */
 const protocol_key protocol_keys[] = {
@@ -135,30 +141,50 @@ const char *key_text(const protocol *p, const protocol_key *k) {
 }
 
 static void number_expected(const protocol_key *k, const char *noun, textbuf *out) {
-    if (k->above_lo && isfinite(k->hi)) text_addf(out, "%s above %g and at most %g", noun, k->lo, k->hi);
-    else if (k->above_lo) text_addf(out, "%s above %g", noun, k->lo);
-    else if (isfinite(k->hi)) text_addf(out, "%s from %g to %g", noun, k->lo, k->hi);
-    else text_addf(out, "%s of at least %g", noun, k->lo);
+    if (k->above_lo && isfinite(k->hi))
+        text_addf(out, "%s above %g and at most %g", noun, k->lo, k->hi);
+    else if (k->above_lo)
+        text_addf(out, "%s above %g", noun, k->lo);
+    else if (isfinite(k->hi))
+        text_addf(out, "%s from %g to %g", noun, k->lo, k->hi);
+    else
+        text_addf(out, "%s of at least %g", noun, k->lo);
     if (k->unit[0]) text_addf(out, " (%s)", k->unit);
 }
 
 void key_expected(const protocol_key *k, textbuf *out) {
     switch (k->kind) {
-    case KEY_TEXT: text_add(out, "a text in quotes"); break;
-    case KEY_PATH: text_add(out, "a path in quotes"); break;
-    case KEY_MATERIAL: text_add(out, "a material name, a CSV path or a refractive index"); break;
-    case KEY_NUMBER: number_expected(k, "a number", out); break;
-    case KEY_SWITCH: text_add(out, "true or false"); break;
+    case KEY_TEXT:
+        text_add(out, "a text in quotes");
+        break;
+    case KEY_PATH:
+        text_add(out, "a path in quotes");
+        break;
+    case KEY_MATERIAL:
+        text_add(out, "a material name, a CSV path or a refractive index");
+        break;
+    case KEY_NUMBER:
+        number_expected(k, "a number", out);
+        break;
+    case KEY_SWITCH:
+        text_add(out, "true or false");
+        break;
     case KEY_WORD:
         text_add(out, "one of");
         for (int i = 0; k->word(i); i++) text_addf(out, "%s \"%s\"", i ? "," : "", k->word(i));
         break;
-    case KEY_SHAPE: number_expected(k, "\"cone\", \"paraboloid\" or a number", out); break;
-    case KEY_BAND: number_expected(k, "[low, high], low below high, each", out); break;
+    case KEY_SHAPE:
+        number_expected(k, "\"cone\", \"paraboloid\" or a number", out);
+        break;
+    case KEY_BAND:
+        number_expected(k, "[low, high], low below high, each", out);
+        break;
     case KEY_COATINGS:
         text_addf(out, "a list of at most %d { \"material\": ..., \"thickness_nm\": ... }", LIMIT_COATINGS);
         break;
-    case KEY_TARGETS: text_add(out, "an object of { \"min\": ..., \"max\": ... } by quantity"); break;
+    case KEY_TARGETS:
+        text_add(out, "an object of { \"min\": ..., \"max\": ... } by quantity");
+        break;
     }
 }
 

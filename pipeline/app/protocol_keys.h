@@ -20,13 +20,13 @@ typedef struct {
     const char *group; /* "" = top level */
     const char *name;
     key_kind kind;
-    size_t offset;     /* in protocol */
-    const char *unit;  /* "" = none */
-    double lo, hi;     /* range of numbers; -+INFINITY open */
-    int above_lo;      /* 1: lo itself is not allowed */
+    size_t offset;              /* in protocol */
+    const char *unit;           /* "" = none */
+    double lo, hi;              /* range of numbers; -+INFINITY open */
+    int above_lo;               /* 1: lo itself is not allowed */
     const char *(*word)(int i); /* of KEY_WORD; NULL after the last */
-    int measuring;     /* 1: changes what is measured on one micrograph */
-    const char *help;  /* one sentence without a final stop */
+    int measuring;              /* 1: changes what is measured on one micrograph */
+    const char *help;           /* one sentence without a final stop */
 } protocol_key;
 
 extern const protocol_key protocol_keys[]; /* groups are contiguous, in the order they print */
@@ -40,8 +40,8 @@ enum { PROTOCOL_GROUPS = 4 };
 const protocol_key *protocol_key_find(const char *group, const char *name);
 
 /* Members of a protocol by key. */
-double key_number(const protocol *p, const protocol_key *k); /* NUMBER, SHAPE, first of BAND */
-int key_index(const protocol *p, const protocol_key *k);     /* WORD, SWITCH */
+double key_number(const protocol *p, const protocol_key *k);    /* NUMBER, SHAPE, first of BAND */
+int key_index(const protocol *p, const protocol_key *k);        /* WORD, SWITCH */
 const char *key_text(const protocol *p, const protocol_key *k); /* TEXT, PATH, MATERIAL; may be NULL */
 
 /* "a number above 0 (nm)", "one of auto, hillock, pore": what a key accepts. */

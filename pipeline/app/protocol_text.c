@@ -13,19 +13,28 @@ static void canonical_key(const protocol *p, const protocol_key *k, textbuf *out
     text_addf(out, "%s.%s=", k->group, k->name);
     switch (k->kind) {
     case KEY_TEXT:
-    case KEY_PATH: text_add(out, key_text(p, k) ? key_text(p, k) : "-"); break;
-    case KEY_MATERIAL: text_add(out, material_is_path(key_text(p, k)) ? "file" : key_text(p, k)); break;
+    case KEY_PATH:
+        text_add(out, key_text(p, k) ? key_text(p, k) : "-");
+        break;
+    case KEY_MATERIAL:
+        text_add(out, material_is_path(key_text(p, k)) ? "file" : key_text(p, k));
+        break;
     case KEY_NUMBER:
-    case KEY_SHAPE: text_add(out, number_text(key_number(p, k), 17, number)); break;
+    case KEY_SHAPE:
+        text_add(out, number_text(key_number(p, k), 17, number));
+        break;
     case KEY_SWITCH:
-    case KEY_WORD: text_addf(out, "%d", key_index(p, k)); break;
+    case KEY_WORD:
+        text_addf(out, "%d", key_index(p, k));
+        break;
     case KEY_BAND:
         text_addf(out, "%s,", number_text(p->band_lo_nm, 17, number));
         text_add(out, number_text(p->band_hi_nm, 17, number));
         break;
     case KEY_COATINGS:
         for (size_t i = 0; i < p->n_coatings; i++)
-            text_addf(out, "%s:%s;", material_is_path(p->coatings[i].material) ? "file" : p->coatings[i].material,
+            text_addf(out, "%s:%s;",
+                      material_is_path(p->coatings[i].material) ? "file" : p->coatings[i].material,
                       number_text(p->coatings[i].thickness_nm, 17, number));
         break;
     case KEY_TARGETS:
@@ -51,23 +60,38 @@ void protocol_full_text(const protocol *p, textbuf *out) {
     }
 }
 
-/* The value as JSON, as a protocol would state it. Only used for the built-in one: no coatings, no targets. */
+/* The value as JSON, as a protocol would state it. Only used for the built-in one: no coatings, no targets.
+ */
 static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
     char number[NUMBER_TEXT];
     switch (k->kind) {
     case KEY_TEXT:
     case KEY_PATH:
-    case KEY_MATERIAL: json_string(out, key_text(p, k)); break;
-    case KEY_NUMBER: json_number(out, key_number(p, k), 15); break;
-    case KEY_SHAPE: text_add(out, "\"cone\""); break;
-    case KEY_SWITCH: text_add(out, key_index(p, k) ? "true" : "false"); break;
-    case KEY_WORD: json_string(out, k->word(key_index(p, k))); break;
+    case KEY_MATERIAL:
+        json_string(out, key_text(p, k));
+        break;
+    case KEY_NUMBER:
+        json_number(out, key_number(p, k), 15);
+        break;
+    case KEY_SHAPE:
+        text_add(out, "\"cone\"");
+        break;
+    case KEY_SWITCH:
+        text_add(out, key_index(p, k) ? "true" : "false");
+        break;
+    case KEY_WORD:
+        json_string(out, k->word(key_index(p, k)));
+        break;
     case KEY_BAND:
         text_addf(out, "[%s, ", number_text(p->band_lo_nm, 15, number));
         text_addf(out, "%s]", number_text(p->band_hi_nm, 15, number));
         break;
-    case KEY_COATINGS: text_add(out, "[]"); break;
-    case KEY_TARGETS: text_add(out, "{}"); break;
+    case KEY_COATINGS:
+        text_add(out, "[]");
+        break;
+    case KEY_TARGETS:
+        text_add(out, "{}");
+        break;
     }
 }
 
@@ -96,8 +120,10 @@ static void print_group(const protocol *p, const char *group, const char *indent
         text_addf(&about, "%s; ", k->help);
         key_expected(k, &about);
         if (!first) text_add(out, ",\n");
-        if (text_check(&about, "the protocol", NULL) == ST_OK) comment(about.s, indent, out);
-        else out->failed = 1;
+        if (text_check(&about, "the protocol", NULL) == ST_OK)
+            comment(about.s, indent, out);
+        else
+            out->failed = 1;
         text_free(&about);
         text_addf(out, "%s\"%s\": ", indent, k->name);
         json_value(p, k, out);
@@ -111,7 +137,8 @@ void protocol_print(textbuf *out) {
         out->failed = 1;
         return;
     }
-    text_add(out, "// The built-in protocol. Every key may be left out; null stands for the default. Comments like this one are\n"
+    text_add(out, "// The built-in protocol. Every key may be left out; null stands for the default. "
+                  "Comments like this one are\n"
                   "// allowed in a protocol.\n{\n");
     print_group(&p, "", "  ", out);
     for (size_t g = 0; g < PROTOCOL_GROUPS; g++) {
@@ -138,16 +165,21 @@ static void say_with_u(textbuf *out, double v, double u, const char *unit) {
 }
 
 static void explain_measuring(const protocol *p, textbuf *out) {
-    static const char *const features[] = { "Whether features are bright hillocks or dark pores is found in each micrograph.\n",
-                                            "Features are bright hillocks.\n", "Features are dark pores.\n" };
+    static const char *const features[] = {
+        "Whether features are bright hillocks or dark pores is found in each micrograph.\n",
+        "Features are bright hillocks.\n", "Features are dark pores.\n"
+    };
     text_add(out, features[p->measure.relief]);
-    text_add(out, p->spacing == SPACING_DENSITY
-                      ? "The spacing of a sample is the hexagonal spacing of its feature density.\n"
-                      : "The spacing of a sample is the first ring of the autocorrelation of its curvature map.\n");
+    text_add(
+        out,
+        p->spacing == SPACING_DENSITY
+            ? "The spacing of a sample is the hexagonal spacing of its feature density.\n"
+            : "The spacing of a sample is the first ring of the autocorrelation of its curvature map.\n");
     if (isfinite(p->px_u_rel)) {
         text_add(out, "Every pixel size carries a standard uncertainty of ");
         say(out, 100.0 * p->px_u_rel, "%.\n");
-    } else text_add(out, "The uncertainty of a pixel size is what its source says, else 1 %.\n");
+    } else
+        text_add(out, "The uncertainty of a pixel size is what its source says, else 1 %.\n");
     if (p->pattern) text_addf(out, "A file without a row in the sample sheet is read as %s.\n", p->pattern);
     text_add(out, "A micrograph is left out of its sample below ");
     say(out, p->measure.min_px_per_spacing, "pixels per spacing or ");
@@ -157,9 +189,13 @@ static void explain_measuring(const protocol *p, textbuf *out) {
 
 static void explain_shape(const link_options *o, textbuf *out) {
     char number[NUMBER_TEXT];
-    if (fabs(o->exponent - 1.0) < 1e-12) text_add(out, "Features are cones");
-    else if (fabs(o->exponent - 2.0) < 1e-12) text_add(out, "Features are paraboloids");
-    else text_addf(out, "Features have the solid share (1 - z/h)^(2/q) with q = %s", number_text(o->exponent, 6, number));
+    if (fabs(o->exponent - 1.0) < 1e-12)
+        text_add(out, "Features are cones");
+    else if (fabs(o->exponent - 2.0) < 1e-12)
+        text_add(out, "Features are paraboloids");
+    else
+        text_addf(out, "Features have the solid share (1 - z/h)^(2/q) with q = %s",
+                  number_text(o->exponent, 6, number));
     if (o->exponent_u > 0.0) text_addf(out, " (exponent +- %s)", number_text(o->exponent_u, 6, number));
     if (o->height_spread > 0.0) {
         text_add(out, ", their heights spread by ");
@@ -167,7 +203,8 @@ static void explain_shape(const link_options *o, textbuf *out) {
         text_add(out, o->level_at_tips ? ", level at the tips" : ", on one floor");
     }
     if (o->height_by_size > 0.0 || o->height_by_size < 0.0)
-        text_addf(out, ", and heights follow cell diameters with power %s", number_text(o->height_by_size, 6, number));
+        text_addf(out, ", and heights follow cell diameters with power %s",
+                  number_text(o->height_by_size, 6, number));
     if (o->coverage < 1.0) {
         text_add(out, ", and at the floor ");
         say(out, 100.0 * o->coverage, "% of the ground is covered");
@@ -178,7 +215,9 @@ static void explain_shape(const link_options *o, textbuf *out) {
 static void explain_link(const protocol *p, textbuf *out) {
     const link_options *o = &p->link;
     if (p->profile) {
-        text_addf(out, "The solid fraction against depth is the measured profile in %s; heights are not used.\n", p->profile);
+        text_addf(out,
+                  "The solid fraction against depth is the measured profile in %s; heights are not used.\n",
+                  p->profile);
         return;
     }
     text_add(out, "The height of a sample is the one of its sample sheet; without one it is assumed: ");
@@ -187,7 +226,8 @@ static void explain_link(const protocol *p, textbuf *out) {
     } else if (isfinite(o->aspect)) {
         say_with_u(out, o->aspect, o->aspect_u, "");
         text_add(out, " times the spacing");
-    } else text_add(out, "1.0 +- 0.3 times the spacing");
+    } else
+        text_add(out, "1.0 +- 0.3 times the spacing");
     text_add(out, ".\n");
     explain_shape(o, out);
 }
@@ -197,19 +237,25 @@ static void explain_optics(const protocol *p, textbuf *out) {
         text_add(out, "Light comes through ");
         say(out, p->glass_mm, "mm of glass and ");
         say(out, p->encapsulant_mm, "mm of encapsulant.\n");
-    } else text_addf(out, "Light comes from %s.\n", p->ambient);
+    } else
+        text_addf(out, "Light comes from %s.\n", p->ambient);
     for (size_t i = 0; i < p->n_coatings; i++) {
         text_add(out, i ? "Below it lies " : "The surface is coated with ");
         say(out, p->coatings[i].thickness_nm, "nm of ");
         text_addf(out, "%s.\n", p->coatings[i].material);
     }
-    text_addf(out, "The texture is made of %s; its slabs are mixed by the rule %s.\n", p->substrate, mixing_name(p->mixing));
-    if (p->hemispherical) text_add(out, "The light is diffuse, from the whole half space");
+    text_addf(out, "The texture is made of %s; its slabs are mixed by the rule %s.\n", p->substrate,
+              mixing_name(p->mixing));
+    if (p->hemispherical)
+        text_add(out, "The light is diffuse, from the whole half space");
     else {
         text_add(out, "The light comes at ");
         say(out, p->angle_deg, "deg");
     }
-    text_addf(out, ", %s.\n", p->polarization == POL_MEAN ? "unpolarised" : p->polarization == POL_S ? "polarised s" : "polarised p");
+    text_addf(out, ", %s.\n",
+              p->polarization == POL_MEAN ? "unpolarised"
+              : p->polarization == POL_S  ? "polarised s"
+                                          : "polarised p");
     text_add(out, "Reflectance is weighted with the photons of the sun from ");
     say(out, p->band_lo_nm, "to ");
     say(out, p->band_hi_nm, "nm, on a grid of ");
@@ -231,7 +277,8 @@ static void explain_targets(const protocol *p, textbuf *out) {
             text_add(out, "at most ");
             say(out, t->max, "");
         }
-        text_add(out, t->error == ERROR_REPEAT ? " beyond what varies from run to run.\n" : " with 95 % probability, all uncertainty counted.\n");
+        text_add(out, t->error == ERROR_REPEAT ? " beyond what varies from run to run.\n"
+                                               : " with 95 % probability, all uncertainty counted.\n");
     }
 }
 
@@ -241,6 +288,8 @@ void protocol_explain(const protocol *p, textbuf *out) {
     explain_link(p, out);
     explain_optics(p, out);
     explain_targets(p, out);
-    if (p->history) text_addf(out, "Samples are kept in the ledger %s.\n", p->history);
-    else text_add(out, "Samples are kept in history.sqlite of the output folder.\n");
+    if (p->history)
+        text_addf(out, "Samples are kept in the ledger %s.\n", p->history);
+    else
+        text_add(out, "Samples are kept in history.sqlite of the output folder.\n");
 }

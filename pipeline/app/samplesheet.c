@@ -1,6 +1,6 @@
-/* The sample sheet: read and check every row, then match rows to files. Matching sorts the files once by path and
- * once by bare name, so that large folders cost n log n. Does not decide the sample of a file without a row
- * (names.c) and opens no micrograph. */
+/* The sample sheet: read and check every row, then match rows to files. Matching sorts the files once by path
+ * and once by bare name, so that large folders cost n log n. Does not decide the sample of a file without a
+ * row (names.c) and opens no micrograph. */
 #include "app/samplesheet.h"
 
 #include <math.h>
@@ -32,7 +32,10 @@ static const struct { const char *name; size_t offset; int positive; } number_co
     { "height_nm_u", offsetof(sheet_row, height_nm_u), 2 }, /* 0 is fine */
 };
 /* clang-format on */
-enum { N_TEXT = sizeof text_columns / sizeof text_columns[0], N_NUMBER = sizeof number_columns / sizeof number_columns[0] };
+enum {
+    N_TEXT = sizeof text_columns / sizeof text_columns[0],
+    N_NUMBER = sizeof number_columns / sizeof number_columns[0]
+};
 
 /* Exactly n digits as a number, or -1. */
 static int digits(const char *s, int n) {
@@ -120,7 +123,8 @@ int iso_time(const char *text, char out[32]) {
     if (zoned && !zone(s, &east)) return 0;
     int at = 60 * hour + minute;
     shift_minutes(&year, &month, &day, &at, -east);
-    snprintf(out, 32, "%04d-%02d-%02dT%02d:%02d:%02d%s", year, month, day, at / 60, at % 60, second, zoned ? "Z" : "");
+    snprintf(out, 32, "%04d-%02d-%02dT%02d:%02d:%02d%s", year, month, day, at / 60, at % 60, second,
+             zoned ? "Z" : "");
     return 1;
 }
 
@@ -139,14 +143,20 @@ static status row_numbers(const csv *c, size_t row, const char *what, sheet_row 
         int rule = number_columns[i].positive;
         double v = MISSING;
         if (cell[0] && (!number_parse(cell, &v) || (rule == 1 && !(v > 0.0)) || (rule == 2 && !(v >= 0.0))))
-            return fail(e, ST_BAD_INPUT, "%s line %zu, %s: found '%.60s', expected a number%s; correct the sample sheet or "
-                        "leave the cell empty", what, c->lines[row], number_columns[i].name, cell,
-                        rule == 1 ? " above 0" : rule == 2 ? " of at least 0" : "");
+            return fail(e, ST_BAD_INPUT,
+                        "%s line %zu, %s: found '%.60s', expected a number%s; correct the sample sheet or "
+                        "leave the cell empty",
+                        what, c->lines[row], number_columns[i].name, cell,
+                        rule == 1   ? " above 0"
+                        : rule == 2 ? " of at least 0"
+                                    : "");
         memcpy((char *)r + number_columns[i].offset, &v, sizeof v);
     }
     if (isfinite(r->height_nm_u) && !isfinite(r->height_nm))
-        return fail(e, ST_BAD_INPUT, "%s line %zu: height_nm_u stands without height_nm; add the height or leave the cell "
-                    "empty", what, c->lines[row]);
+        return fail(e, ST_BAD_INPUT,
+                    "%s line %zu: height_nm_u stands without height_nm; add the height or leave the cell "
+                    "empty",
+                    what, c->lines[row]);
     return ST_OK;
 }
 
@@ -165,11 +175,15 @@ static status row_read(const csv *c, size_t row, const char *what, const sheet *
     char normal[32] = "";
     r->line = c->lines[row];
     if (!file[0])
-        return fail(e, ST_BAD_INPUT, "%s line %zu, file: the cell is empty, expected a file name; name the micrograph or "
-                    "take the row out", what, r->line);
+        return fail(e, ST_BAD_INPUT,
+                    "%s line %zu, file: the cell is empty, expected a file name; name the micrograph or "
+                    "take the row out",
+                    what, r->line);
     if (time[0] && !iso_time(time, normal))
-        return fail(e, ST_BAD_INPUT, "%s line %zu, etched_at: found '%.60s', expected a time like 2026-03-14 or "
-                    "2026-03-14T09:30:00Z (ISO 8601)", what, r->line, time);
+        return fail(e, ST_BAD_INPUT,
+                    "%s line %zu, etched_at: found '%.60s', expected a time like 2026-03-14 or "
+                    "2026-03-14T09:30:00Z (ISO 8601)",
+                    what, r->line, time);
     status st = row_numbers(c, row, what, r, e);
     if (st != ST_OK) return st;
     int ok = (r->file = normal_path(file)) != NULL && (r->etched_at = mem_text(normal)) != NULL;
@@ -184,7 +198,8 @@ static status row_read(const csv *c, size_t row, const char *what, const sheet *
     return ok ? ST_OK : NO_MEMORY(e, "the sample sheet");
 }
 
-/* A text and the row (or file) it belongs to; sorted by text, then number, so that results do not depend on qsort. */
+/* A text and the row (or file) it belongs to; sorted by text, then number, so that results do not depend on
+ * qsort. */
 typedef struct {
     const char *text;
     size_t i;
@@ -201,8 +216,10 @@ static const entry *entry_first(const entry *a, size_t n, const char *text) {
     size_t lo = 0, hi = n;
     while (lo < hi) {
         size_t mid = lo + (hi - lo) / 2;
-        if (strcmp(a[mid].text, text) < 0) lo = mid + 1;
-        else hi = mid;
+        if (strcmp(a[mid].text, text) < 0)
+            lo = mid + 1;
+        else
+            hi = mid;
     }
     return lo < n && strcmp(a[lo].text, text) == 0 ? &a[lo] : NULL;
 }
@@ -214,7 +231,8 @@ static status two_rows(const sheet *s, size_t a, size_t b, const char *file, err
         first = second;
         second = swap;
     }
-    return fail(e, ST_BAD_INPUT, "%s lines %zu and %zu both describe '%.120s'; keep one of them", s->path, first, second, file);
+    return fail(e, ST_BAD_INPUT, "%s lines %zu and %zu both describe '%.120s'; keep one of them", s->path,
+                first, second, file);
 }
 
 static status check_duplicates(const sheet *s, error *e) {
@@ -244,9 +262,12 @@ static status check_heights(const sheet *s, entry *a, size_t n, error *e) {
         const sheet_row *q = &s->rows[first->i];
         char one[NUMBER_TEXT], two[NUMBER_TEXT];
         if (q->height_nm < r->height_nm || q->height_nm > r->height_nm)
-            return fail(e, ST_BAD_INPUT, "%s lines %zu and %zu give the sample '%.80s' two heights (%s and %s nm); a sample has "
-                        "one height: correct one of them or name two samples", s->path, q->line, r->line, a[i].text,
-                        number_text(q->height_nm, 6, one), number_text(r->height_nm, 6, two));
+            return fail(
+                e, ST_BAD_INPUT,
+                "%s lines %zu and %zu give the sample '%.80s' two heights (%s and %s nm); a sample has "
+                "one height: correct one of them or name two samples",
+                s->path, q->line, r->line, a[i].text, number_text(q->height_nm, 6, one),
+                number_text(r->height_nm, 6, two));
     }
     return ST_OK;
 }
@@ -262,7 +283,8 @@ static status check_named_heights(const sheet *s, error *e) {
     return st;
 }
 
-status sheet_check_samples(const sheet *s, const sheet_row *const *rows, const char *const *samples, size_t n, error *e) {
+status sheet_check_samples(const sheet *s, const sheet_row *const *rows, const char *const *samples, size_t n,
+                           error *e) {
     entry *a = mem_array(n, sizeof *a);
     size_t m = 0;
     if (!a) return NO_MEMORY(e, "the sample sheet");
@@ -275,8 +297,10 @@ status sheet_check_samples(const sheet *s, const sheet_row *const *rows, const c
 
 static status sheet_fill(const csv *c, const char *what, sheet *s, error *e) {
     if (csv_column(c, "file") < 0)
-        return fail(e, ST_BAD_INPUT, "%s: no column 'file' in the header; a sample sheet needs it (and may have sample, lot, "
-                    "wafer, position, etched_at, px_nm, height_nm ...)", what);
+        return fail(e, ST_BAD_INPUT,
+                    "%s: no column 'file' in the header; a sample sheet needs it (and may have sample, lot, "
+                    "wafer, position, etched_at, px_nm, height_nm ...)",
+                    what);
     s->path = mem_text(what);
     s->extra_names = mem_array(c->n_columns, sizeof *s->extra_names);
     s->rows = mem_array(c->n_rows, sizeof *s->rows);
@@ -300,8 +324,10 @@ status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, er
     sheet s = { 0 };
     status st = csv_parse(bytes, n, what, &c, e);
     if (st == ST_OK) st = sheet_fill(&c, what, &s, e);
-    if (st == ST_OK) *out = s;
-    else sheet_free(&s);
+    if (st == ST_OK)
+        *out = s;
+    else
+        sheet_free(&s);
     csv_free(&c);
     return st;
 }
@@ -326,8 +352,10 @@ static status row_file(const sheet *s, const sheet_row *r, const char *const *fi
     if (!hit && !strchr(r->file, '/')) {
         hit = entry_first(bares, n, r->file);
         if (hit && hit + 1 < bares + n && strcmp(hit[1].text, r->file) == 0)
-            return fail(e, ST_BAD_INPUT, "%s line %zu, file: '%.80s' fits '%.120s' and '%.120s'; write the path from the folder",
-                        s->path, r->line, r->file, files[hit[0].i], files[hit[1].i]);
+            return fail(
+                e, ST_BAD_INPUT,
+                "%s line %zu, file: '%.80s' fits '%.120s' and '%.120s'; write the path from the folder",
+                s->path, r->line, r->file, files[hit[0].i], files[hit[1].i]);
     }
     if (hit) {
         *found = 1;
@@ -355,10 +383,12 @@ status sheet_match(sheet *s, const char *const *files, size_t n, textbuf *warnin
         st = row_file(s, &s->rows[i], files, paths, bares, n, &file, &found, e);
         if (st != ST_OK) break;
         if (!found)
-            text_addf(warnings, "%s line %zu: there is no file '%s' in the folder\n", s->path, s->rows[i].line,
-                      s->rows[i].file);
-        else if (of_file[file]) st = two_rows(s, of_file[file] - 1, i, files[file], e);
-        else of_file[file] = i + 1;
+            text_addf(warnings, "%s line %zu: there is no file '%s' in the folder\n", s->path,
+                      s->rows[i].line, s->rows[i].file);
+        else if (of_file[file])
+            st = two_rows(s, of_file[file] - 1, i, files[file], e);
+        else
+            of_file[file] = i + 1;
     }
     free(paths);
     free(bares);

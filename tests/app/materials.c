@@ -41,24 +41,30 @@ static void loads_materials(void) {
     index_of("1.5e0+1e-3i", 555, 1.5, 0.001);
     index_of("silicon", 300, 4.976, 4.234); /* M. A. Green (2008), as tabled */
     index_of("silicon", 250, 1.665, 3.665);
-    index_of(file("own.csv", "# source: own film\nwavelength_nm,n,k\n300,2.1,0.1\n400,2.3,0.3\n"), 350, 2.2, 0.2);
+    index_of(file("own.csv", "# source: own film\nwavelength_nm,n,k\n300,2.1,0.1\n400,2.3,0.3\n"), 350, 2.2,
+             0.2);
     index_of(file("lossless.csv", "wavelength_nm,n\n300,2.1\n400,2.3\n"), 350, 2.2, 0);
-    CHECK_FAILS(material_load("silicn", &m, &e), ST_BAD_INPUT, e, "unknown material 'silicn', did you mean 'silicon'?");
+    CHECK_FAILS(material_load("silicn", &m, &e), ST_BAD_INPUT, e,
+                "unknown material 'silicn', did you mean 'silicon'?");
     CHECK(strstr(e.text, "alumina") && strstr(e.text, "nitride") && !strstr(e.text, "am15g"));
     CHECK_FAILS(material_load("am15g", &m, &e), ST_BAD_INPUT, e, "unknown material");
     CHECK_FAILS(material_load("-2", &m, &e), ST_BAD_INPUT, e, "-2");
     CHECK_FAILS(material_load("2+i", &m, &e), ST_BAD_INPUT, e, "unknown material");
     CHECK_FAILS(material_load("nowhere/film.csv", &m, &e), ST_BAD_INPUT, e, "nowhere/film.csv");
-    CHECK_FAILS(material_load(file("bad.csv", "wavelength_nm,n,k\n300,2.1,0.1\n400,x,0.3\n"), &m, &e), ST_BAD_INPUT, e, "line 3");
-    CHECK_FAILS(material_load(file("down.csv", "wavelength_nm,n,k\n400,2.1,0.1\n300,2,0.3\n"), &m, &e), ST_BAD_INPUT, e, "down.csv");
-    CHECK_FAILS(material_load(file("nok.csv", "wavelength_nm,k\n400,2.1\n"), &m, &e), ST_BAD_INPUT, e, "nok.csv");
+    CHECK_FAILS(material_load(file("bad.csv", "wavelength_nm,n,k\n300,2.1,0.1\n400,x,0.3\n"), &m, &e),
+                ST_BAD_INPUT, e, "line 3");
+    CHECK_FAILS(material_load(file("down.csv", "wavelength_nm,n,k\n400,2.1,0.1\n300,2,0.3\n"), &m, &e),
+                ST_BAD_INPUT, e, "down.csv");
+    CHECK_FAILS(material_load(file("nok.csv", "wavelength_nm,k\n400,2.1\n"), &m, &e), ST_BAD_INPUT, e,
+                "nok.csv");
 }
 
 static void lists_materials(void) {
     textbuf t = { 0 };
     error e = { ST_OK, "" };
     CHECK(materials_list(&t, &e) == ST_OK);
-    CHECK(t.s && strstr(t.s, "silicon ") && strstr(t.s, "Green") && strstr(t.s, "nitride") && strstr(t.s, "air"));
+    CHECK(t.s && strstr(t.s, "silicon ") && strstr(t.s, "Green") && strstr(t.s, "nitride") &&
+          strstr(t.s, "air"));
     text_free(&t);
     char *found = NULL;
     setenv("SWARD_MATERIALS", "no/such/folder", 1);
@@ -70,7 +76,8 @@ static void lists_materials(void) {
 static void reads_profiles(void) {
     profile p = { 0 };
     error e = { ST_OK, "" };
-    CHECK(profile_read(file("p.csv", "depth_nm,solid_fraction\n5,0\n105,0.4\n105,0.7\n305,1\n"), &p, &e) == ST_OK);
+    CHECK(profile_read(file("p.csv", "depth_nm,solid_fraction\n5,0\n105,0.4\n105,0.7\n305,1\n"), &p, &e) ==
+          ST_OK);
     CHECK(p.n == 4 && p.n_coatings == 0);
     if (p.n == 4) {
         CHECK_NEAR(p.depth_nm[0], 0, 0);
@@ -82,8 +89,10 @@ static void reads_profiles(void) {
                 "line 3, solid_fraction: found 1.2, expected a share from 0 to 1");
     CHECK_FAILS(profile_read(file("p.csv", "depth_nm,solid_fraction\n9,0\n3,1\n"), &p, &e), ST_BAD_INPUT, e,
                 "line 3, depth_nm: found 3 after 9");
-    CHECK_FAILS(profile_read(file("p.csv", "depth_nm,solid_fraction\n9,0\n"), &p, &e), ST_BAD_INPUT, e, "at least two");
-    CHECK_FAILS(profile_read(file("p.csv", "depth,solid_fraction\n9,0\n"), &p, &e), ST_BAD_INPUT, e, "depth_nm");
+    CHECK_FAILS(profile_read(file("p.csv", "depth_nm,solid_fraction\n9,0\n"), &p, &e), ST_BAD_INPUT, e,
+                "at least two");
+    CHECK_FAILS(profile_read(file("p.csv", "depth,solid_fraction\n9,0\n"), &p, &e), ST_BAD_INPUT, e,
+                "depth_nm");
     CHECK_FAILS(profile_read("nowhere/p.csv", &p, &e), ST_BAD_INPUT, e, "nowhere/p.csv");
 }
 
@@ -94,7 +103,8 @@ static void makes_setups(void) {
     textbuf one = { 0 }, two = { 0 };
     CHECK(protocol_defaults(&p, &e) == ST_OK && setup_make(&p, &s, &e) == ST_OK);
     if (e.text[0]) printf("%s\n", e.text);
-    CHECK(s.optics.substrate == &s.substrate && s.optics.front.glass == NULL && s.optics.n_coatings == 0 && s.measured.n == 0);
+    CHECK(s.optics.substrate == &s.substrate && s.optics.front.glass == NULL && s.optics.n_coatings == 0 &&
+          s.measured.n == 0);
     CHECK_NEAR(s.optics.band_hi_nm, 1200, 0);
     setup_text(&s, &one);
     setup_free(&s);
@@ -102,7 +112,8 @@ static void makes_setups(void) {
     CHECK(protocol_set(&p, "optics", "coatings", "alumina:10", "--coating", &e) == ST_OK);
     CHECK(protocol_set(&p, "optics", "angle_deg", "8", "--angle", &e) == ST_OK);
     CHECK(setup_make(&p, &s, &e) == ST_OK);
-    CHECK(s.optics.front.glass == &s.glass && s.optics.front.encapsulant == &s.encapsulant && s.optics.n_coatings == 1);
+    CHECK(s.optics.front.glass == &s.glass && s.optics.front.encapsulant == &s.encapsulant &&
+          s.optics.n_coatings == 1);
     CHECK_NEAR(s.optics.front.glass_mm, 3.2, 0);
     CHECK_NEAR(s.optics.coatings[0].thickness_nm, 10, 0);
     CHECK_NEAR(s.optics.reflect.angle_deg, 8, 0);
@@ -130,7 +141,8 @@ static void survives_no_memory(void) {
     error e = { ST_OK, "" };
     CHECK(protocol_defaults(&p, &e) == ST_OK);
     CHECK(protocol_set(&p, "optics", "ambient", "2.1+0.1i", "--ambient", &e) == ST_OK);
-    CHECK(protocol_set(&p, "link", "profile", file("p.csv", "depth_nm,solid_fraction\n0,0\n9,1\n"), "--profile", &e) == ST_OK);
+    CHECK(protocol_set(&p, "link", "profile", file("p.csv", "depth_nm,solid_fraction\n0,0\n9,1\n"),
+                       "--profile", &e) == ST_OK);
     for (size_t n = 1; n < 40000 && st != ST_OK; n += n < 40 ? 1 : 97) {
         setup s = { 0 };
         e = (error){ ST_OK, "" };
@@ -154,7 +166,9 @@ int main(void) {
     reads_profiles();
     makes_setups();
     survives_no_memory();
-    static const char *const made[] = { "own.csv", "lossless.csv", "bad.csv", "down.csv", "nok.csv", "p.csv" };
+    static const char *const made[] = {
+        "own.csv", "lossless.csv", "bad.csv", "down.csv", "nok.csv", "p.csv"
+    };
     for (size_t i = 0; i < sizeof made / sizeof made[0]; i++) {
         char path[300];
         snprintf(path, sizeof path, "%s/%s", folder, made[i]);

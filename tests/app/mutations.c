@@ -1,5 +1,5 @@
-/* Protocols and sheets with random damage: whatever stands in the text, there is a result or a sentence, and nothing is
- * left behind (the sanitizer looks). The generator is fixed, so a failure repeats. */
+/* Protocols and sheets with random damage: whatever stands in the text, there is a result or a sentence, and
+ * nothing is left behind (the sanitizer looks). The generator is fixed, so a failure repeats. */
 #include <stdint.h>
 
 #include "app/names.h"
@@ -9,11 +9,14 @@
 
 enum { ROUNDS = 6000, ROOM = 1200 };
 
-static const char a_protocol[] =
-    "{ \"protocol\": \"line 3\", \"relief\": \"pore\", \"px_u_rel\": 0.013, \"history\": \"l.sqlite\", // ledger\n"
-    "  \"samples\": { \"pattern\": \"{lot}_W{wafer}_{n}\" }, \"targets\": { \"spacing_nm\": { \"min\": 280, \"error\": \"repeat\" } },\n"
-    "  \"link\": { \"height_nm\": 351, \"shape\": \"paraboloid\", \"profile\": \"d.csv\" }, \"fitness\": { \"max_blur\": 0.2 },\n"
-    "  \"optics\": { \"substrate\": 3.5, \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 11 } ], \"band_nm\": [350, 1100] } }";
+static const char a_protocol[] = "{ \"protocol\": \"line 3\", \"relief\": \"pore\", \"px_u_rel\": 0.013, "
+                                 "\"history\": \"l.sqlite\", // ledger\n"
+                                 "  \"samples\": { \"pattern\": \"{lot}_W{wafer}_{n}\" }, \"targets\": { "
+                                 "\"spacing_nm\": { \"min\": 280, \"error\": \"repeat\" } },\n"
+                                 "  \"link\": { \"height_nm\": 351, \"shape\": \"paraboloid\", \"profile\": "
+                                 "\"d.csv\" }, \"fitness\": { \"max_blur\": 0.2 },\n"
+                                 "  \"optics\": { \"substrate\": 3.5, \"coatings\": [ { \"material\": "
+                                 "\"alumina\", \"thickness_nm\": 11 } ], \"band_nm\": [350, 1100] } }";
 static const char a_sheet[] = "file,sample,lot,etched_at,height_nm,px_nm,power\n"
                               "a.png,S1,L,2026-03-14T09:30:05+01:00,300,4,7\nb.png,S1,,2026-03-14,,,\"8,9\"\n"
                               "sub/c.png,S2,,,310,,\n";
@@ -29,12 +32,16 @@ static size_t wound(char *s, size_t n, uint32_t *state) {
     for (uint32_t wounds = 1 + next(state) % 4; wounds && n > 1; wounds--) {
         size_t at = next(state) % n, from = next(state) % n, run = next(state) % 20;
         switch (next(state) % 4) {
-        case 0: s[at] = (char)(next(state) & 0x7f); break;
+        case 0:
+            s[at] = (char)(next(state) & 0x7f);
+            break;
         case 1:
             memmove(s + at, s + at + 1, n - at - 1);
             n--;
             break;
-        case 2: s[at] = s[from]; break;
+        case 2:
+            s[at] = s[from];
+            break;
         default:
             if (from + run < n && at + run < n) memmove(s + at, s + from, run);
         }

@@ -11,7 +11,8 @@ static void gives(const char *relative, const char *pattern, const char *want) {
     CHECK(name_sample(relative, pattern, &p, &e) == ST_OK);
     if (p.sample) snprintf(got, sizeof got, "%s|%s|%s|%s", p.sample, p.lot, p.wafer, p.position);
     CHECK(strcmp(got, want) == 0);
-    if (strcmp(got, want) != 0) printf("  %s with %s: got %s, wanted %s\n", relative, pattern ? pattern : "-", got, want);
+    if (strcmp(got, want) != 0)
+        printf("  %s with %s: got %s, wanted %s\n", relative, pattern ? pattern : "-", got, want);
     name_parts_free(&p);
     name_parts_free(&p);
 }
@@ -38,9 +39,11 @@ int main(void) {
     gives("run5/w3/k.png", "{lot}/w{wafer}/{}", "run5/w3|run5|3|");
     gives("c-A7-L3.png", "c-{sample}-{lot}", "A7|L3||");
     /* A name made to look everywhere: must end at once. */
-    gives("aaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaab.png",
+    gives("aaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaa"
+          "aaaaaaaaaaaaab.png",
           "{lot}a{}a{}a{}a{}a{}a{}a{}a{wafer}c",
-          "aaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaab|||");
+          "aaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaaa"
+          "aaaaaaaaaaaaab|||");
     CHECK(pattern_check(usual, &e) == ST_OK && pattern_check("{sample}", &e) == ST_OK);
     CHECK_FAILS(pattern_check("{waferr}_{n}", &e), ST_BAD_INPUT, e, "did you mean '{wafer}'?");
     CHECK_FAILS(pattern_check("{lot", &e), ST_BAD_INPUT, e, "opened and not closed");
@@ -49,6 +52,7 @@ int main(void) {
     CHECK_FAILS(pattern_check("image_{n}", &e), ST_BAD_INPUT, e, "no field that names a sample");
     CHECK_FAILS(pattern_check("plain", &e), ST_BAD_INPUT, e, "no field that names a sample");
     CHECK_FAILS(pattern_check("{lot}_{n}.tif", &e), ST_BAD_INPUT, e, "leave the extension out");
-    CHECK_FAILS(pattern_check("{lot}a{}b{}c{}d{}e{}f{}g{}h{}i{}j{}k{}l{}m{}n{}o{}p{}q", &e), ST_BAD_INPUT, e, "more than");
+    CHECK_FAILS(pattern_check("{lot}a{}b{}c{}d{}e{}f{}g{}h{}i{}j{}k{}l{}m{}n{}o{}p{}q", &e), ST_BAD_INPUT, e,
+                "more than");
     return check_done();
 }

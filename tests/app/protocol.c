@@ -26,17 +26,24 @@ static void fails_with(const char *text, const char *words) {
 static const char every_key[] =
     "{ \"protocol\": \"line 3\", \"relief\": \"pore\", \"spacing\": \"density\", \"px_u_rel\": 0.013,\n"
     "  \"history\": \"line3.sqlite\", \"samples\": { \"pattern\": \"{lot}_W{wafer}_{n}\" },\n"
-    "  \"fitness\": { \"min_px_per_spacing\": 7.5, \"warn_px_per_spacing\": 11, \"min_features\": 61, \"warn_features\": 190,\n"
-    "    \"max_blur\": 0.21, \"warn_blur\": 0.11, \"max_clipped\": 0.031, \"warn_clipped\": 0.011, \"max_noise\": 1.7,\n"
-    "    \"warn_noise\": 0.7, \"max_streaks\": 0.41, \"warn_streaks\": 0.13, \"max_stretch\": 1.31, \"warn_stretch\": 1.07,\n"
+    "  \"fitness\": { \"min_px_per_spacing\": 7.5, \"warn_px_per_spacing\": 11, \"min_features\": 61, "
+    "\"warn_features\": 190,\n"
+    "    \"max_blur\": 0.21, \"warn_blur\": 0.11, \"max_clipped\": 0.031, \"warn_clipped\": 0.011, "
+    "\"max_noise\": 1.7,\n"
+    "    \"warn_noise\": 0.7, \"max_streaks\": 0.41, \"warn_streaks\": 0.13, \"max_stretch\": 1.31, "
+    "\"warn_stretch\": 1.07,\n"
     "    \"bright_level\": 0.47, \"min_ring_z\": 5.5 },\n"
     "  \"targets\": { \"spacing_nm\": { \"min\": 280, \"max\": 420 },\n"
     "    \"weighted_reflectance\": { \"max\": 0.02, \"error\": \"repeat\" } },\n"
-    "  \"link\": { \"height_nm\": 351, \"height_nm_u\": 31, \"aspect\": 1.3, \"aspect_u\": 0.2, \"shape\": \"paraboloid\",\n"
-    "    \"exponent_u\": 0.3, \"height_spread\": 0.15, \"height_by_size\": 0.4, \"level\": \"tips\", \"coverage\": 0.93,\n"
+    "  \"link\": { \"height_nm\": 351, \"height_nm_u\": 31, \"aspect\": 1.3, \"aspect_u\": 0.2, \"shape\": "
+    "\"paraboloid\",\n"
+    "    \"exponent_u\": 0.3, \"height_spread\": 0.15, \"height_by_size\": 0.4, \"level\": \"tips\", "
+    "\"coverage\": 0.93,\n"
     "    \"profile\": \"depth.csv\" },\n"
-    "  \"optics\": { \"ambient\": \"laminate\", \"glass_mm\": 2.1, \"encapsulant_mm\": 0.6, \"substrate\": 3.5,\n"
-    "    \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 11 }, { \"material\": \"my.csv\", \"thickness_nm\": 70.5 } ],\n"
+    "  \"optics\": { \"ambient\": \"laminate\", \"glass_mm\": 2.1, \"encapsulant_mm\": 0.6, \"substrate\": "
+    "3.5,\n"
+    "    \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 11 }, { \"material\": \"my.csv\", "
+    "\"thickness_nm\": 70.5 } ],\n"
     "    \"mixing\": \"looyenga\", \"angle_deg\": 8, \"polarization\": \"s\", \"hemispherical\": true,\n"
     "    \"band_nm\": [350, 1100], \"step_nm\": 2.5 } }\n";
 
@@ -45,27 +52,56 @@ static void reads_every_key(void) {
     error e = { ST_OK, "" };
     CHECK(parse(every_key, &p, &e) == ST_OK);
     if (e.text[0]) printf("%s\n", e.text);
-    CHECK(p.name && strcmp(p.name, "line 3") == 0 && p.measure.relief == RELIEF_PORE && p.spacing == SPACING_DENSITY);
+    CHECK(p.name && strcmp(p.name, "line 3") == 0 && p.measure.relief == RELIEF_PORE &&
+          p.spacing == SPACING_DENSITY);
     CHECK_NEAR(p.px_u_rel, 0.013, 0);
     CHECK(p.history && strcmp(p.history, "dir/line3.sqlite") == 0);
     CHECK(p.pattern && strcmp(p.pattern, "{lot}_W{wafer}_{n}") == 0);
     const measure_options *m = &p.measure;
-    const double got[] = { m->min_px_per_spacing, m->warn_px_per_spacing, m->min_features, m->warn_features, m->max_blur,
-                           m->warn_blur, m->max_clipped, m->warn_clipped, m->max_noise, m->warn_noise, m->max_streaks,
-                           m->warn_streaks, m->max_stretch, m->warn_stretch, m->bright_level, m->min_ring_z,
-                           p.link.height_nm, p.link.height_nm_u, p.link.aspect, p.link.aspect_u, p.link.exponent,
-                           p.link.exponent_u, p.link.height_spread, p.link.height_by_size, p.link.coverage,
-                           p.glass_mm, p.encapsulant_mm, p.angle_deg, p.band_lo_nm, p.band_hi_nm, p.step_nm };
-    const double want[] = { 7.5, 11, 61, 190, 0.21, 0.11, 0.031, 0.011, 1.7, 0.7, 0.41, 0.13, 1.31, 1.07, 0.47, 5.5,
-                            351, 31, 1.3, 0.2, 2, 0.3, 0.15, 0.4, 0.93, 2.1, 0.6, 8, 350, 1100, 2.5 };
+    const double got[] = { m->min_px_per_spacing,
+                           m->warn_px_per_spacing,
+                           m->min_features,
+                           m->warn_features,
+                           m->max_blur,
+                           m->warn_blur,
+                           m->max_clipped,
+                           m->warn_clipped,
+                           m->max_noise,
+                           m->warn_noise,
+                           m->max_streaks,
+                           m->warn_streaks,
+                           m->max_stretch,
+                           m->warn_stretch,
+                           m->bright_level,
+                           m->min_ring_z,
+                           p.link.height_nm,
+                           p.link.height_nm_u,
+                           p.link.aspect,
+                           p.link.aspect_u,
+                           p.link.exponent,
+                           p.link.exponent_u,
+                           p.link.height_spread,
+                           p.link.height_by_size,
+                           p.link.coverage,
+                           p.glass_mm,
+                           p.encapsulant_mm,
+                           p.angle_deg,
+                           p.band_lo_nm,
+                           p.band_hi_nm,
+                           p.step_nm };
+    const double want[] = { 7.5,  11,   61,   190,  0.21, 0.11, 0.031, 0.011, 1.7, 0.7, 0.41,
+                            0.13, 1.31, 1.07, 0.47, 5.5,  351,  31,    1.3,   0.2, 2,   0.3,
+                            0.15, 0.4,  0.93, 2.1,  0.6,  8,    350,   1100,  2.5 };
     for (size_t i = 0; i < sizeof want / sizeof want[0]; i++) CHECK_NEAR(got[i], want[i], 0);
-    CHECK(p.link.level_at_tips == 1 && p.hemispherical == 1 && p.polarization == POL_S && p.mixing == MIX_LOOYENGA);
+    CHECK(p.link.level_at_tips == 1 && p.hemispherical == 1 && p.polarization == POL_S &&
+          p.mixing == MIX_LOOYENGA);
     CHECK(p.profile && strcmp(p.profile, "dir/depth.csv") == 0);
     CHECK(p.ambient && strcmp(p.ambient, "laminate") == 0 && p.substrate && strcmp(p.substrate, "3.5") == 0);
     CHECK(p.n_coatings == 2 && strcmp(p.coatings[0].material, "alumina") == 0 &&
           strcmp(p.coatings[1].material, "dir/my.csv") == 0);
     CHECK_NEAR(p.coatings[1].thickness_nm, 70.5, 0);
-    CHECK(p.n_targets == 2 && strcmp(p.targets[0].quantity, "spacing_nm") == 0 && p.targets[0].error == ERROR_FULL);
+    CHECK(p.n_targets == 2 && strcmp(p.targets[0].quantity, "spacing_nm") == 0 &&
+          p.targets[0].error == ERROR_FULL);
     if (p.n_targets == 2) {
         CHECK_NEAR(p.targets[0].min, 280, 0);
         CHECK_NEAR(p.targets[0].max, 420, 0);
@@ -79,16 +115,21 @@ static void reads_every_key(void) {
 static void names_each_mistake(void) {
     fails_with("{\n\"link\": {\n\n\"height_spred\": 0.1 } }",
                "p.json line 4: unknown key 'height_spred' in link; did you mean 'height_spread'?");
-    fails_with("{\n\"spacng\": \"density\" }", "p.json line 2: unknown key 'spacng'; did you mean 'spacing'?");
+    fails_with("{\n\"spacng\": \"density\" }",
+               "p.json line 2: unknown key 'spacng'; did you mean 'spacing'?");
     fails_with("{ \"optic\": {} }", "did you mean 'optics'?");
     fails_with("{ \"height_nm\": 300 }", "unknown key 'height_nm'; it belongs in \"link\"");
-    fails_with("{ \"link\": { \"relief\": \"pore\" } }", "unknown key 'relief' in link; it belongs to the top level");
+    fails_with("{ \"link\": { \"relief\": \"pore\" } }",
+               "unknown key 'relief' in link; it belongs to the top level");
     fails_with("{ \"qqqqqqqqqq\": 1 }", "unknown key 'qqqqqqqqqq'");
-    fails_with("{ \"link\":\n { \"height_nm\": \"tall\" } }",
-               "p.json line 2, link.height_nm: found \"tall\", expected a number above 0 and at most 100000 (nm)");
+    fails_with(
+        "{ \"link\":\n { \"height_nm\": \"tall\" } }",
+        "p.json line 2, link.height_nm: found \"tall\", expected a number above 0 and at most 100000 (nm)");
     fails_with("{ \"link\": { \"height_nm\": 0 } }", "link.height_nm: found 0, expected a number above 0");
-    fails_with("{ \"link\": { \"coverage\": 1.01 } }", "link.coverage: found 1.01, expected a number from 0 to 1");
-    fails_with("{ \"link\": { \"shape\": \"pyramid\" } }", "expected \"cone\", \"paraboloid\" or a number from 0.05 to 20");
+    fails_with("{ \"link\": { \"coverage\": 1.01 } }",
+               "link.coverage: found 1.01, expected a number from 0 to 1");
+    fails_with("{ \"link\": { \"shape\": \"pyramid\" } }",
+               "expected \"cone\", \"paraboloid\" or a number from 0.05 to 20");
     fails_with("{ \"link\": [] }", "link: found [], expected an object in braces");
     fails_with("{ \"link\": { \"height_nm_u\": 30 } }", "height_nm_u stands without link.height_nm");
     fails_with("{ \"link\": { \"aspect_u\": 0.3 } }", "aspect_u stands without link.aspect");
@@ -98,26 +139,33 @@ static void names_each_mistake(void) {
     fails_with("{ \"optics\": { \"hemispherical\": 1 } }", "expected true or false");
     fails_with("{ \"optics\": { \"band_nm\": [1200, 300] } }", "expected [low, high], low below high");
     fails_with("{ \"optics\": { \"band_nm\": 300 } }", "expected [low, high]");
-    fails_with("{ \"optics\": { \"ambient\": -1 } }", "expected a material name, a CSV path or a refractive index");
+    fails_with("{ \"optics\": { \"ambient\": -1 } }",
+               "expected a material name, a CSV path or a refractive index");
     fails_with("{ \"optics\": { \"coatings\": { } } }", "expected a list of at most 8");
     fails_with("{ \"optics\": {\n \"coatings\": [ 3 ] } }", "p.json line 2, optics.coatings: found 3");
-    fails_with("{ \"optics\": { \"coatings\": [ { \"material\": \"alumina\" } ] } }", "both \"material\" and \"thickness_nm\"");
+    fails_with("{ \"optics\": { \"coatings\": [ { \"material\": \"alumina\" } ] } }",
+               "both \"material\" and \"thickness_nm\"");
     fails_with("{ \"optics\": { \"coatings\": [ { \"material\": \"alumina\",\n \"thickness\": 3 } ] } }",
                "line 2: unknown key 'thickness' in optics.coatings; did you mean 'thickness_nm'?");
     fails_with("{ \"optics\": { \"coatings\": [ { \"material\": 2, \"thickness_nm\": -3 } ] } }",
                "coatings.thickness_nm: found -3, expected a number from 0");
-    fails_with("{ \"optics\": { \"coatings\": [ { \"material\": true, \"thickness_nm\": 3 } ] } }", "coatings.material: found true");
+    fails_with("{ \"optics\": { \"coatings\": [ { \"material\": true, \"thickness_nm\": 3 } ] } }",
+               "coatings.material: found true");
     fails_with("{ \"targets\": [] }", "expected an object of");
-    fails_with("{ \"targets\": {\n \"spacing\": { \"min\": 1 } } }", "p.json line 2: targets: 'spacing' is no quantity of samples.csv");
+    fails_with("{ \"targets\": {\n \"spacing\": { \"min\": 1 } } }",
+               "p.json line 2: targets: 'spacing' is no quantity of samples.csv");
     fails_with("{ \"targets\": { \"spacing_mm\": { \"min\": 1 } } }", "did you mean 'spacing_nm'?");
     fails_with("{ \"targets\": { \"sample\": { \"min\": 1 } } }", "is no quantity of samples.csv");
     fails_with("{ \"targets\": { \"spacing_nm\": { } } }", "expected \"min\", \"max\" or both");
     fails_with("{ \"targets\": { \"spacing_nm\": 300 } }", "targets.spacing_nm: found 300");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"max\": 2 } } }", "expected min below max");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": \"a\" } } }", "expected a number as limit");
-    fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"error\": \"none\" } } }", "expected \"full\" or \"repeat\"");
-    fails_with("{ \"targets\": { \"spacing_nm\": { \"mn\": 3 } } }", "unknown key 'mn' in targets.spacing_nm; did you mean 'min'?");
-    fails_with("{ \"samples\": { \"pattern\": \"{lott}\" } }", "unknown field '{lott}', did you mean '{lot}'?");
+    fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"error\": \"none\" } } }",
+               "expected \"full\" or \"repeat\"");
+    fails_with("{ \"targets\": { \"spacing_nm\": { \"mn\": 3 } } }",
+               "unknown key 'mn' in targets.spacing_nm; did you mean 'min'?");
+    fails_with("{ \"samples\": { \"pattern\": \"{lott}\" } }",
+               "unknown field '{lott}', did you mean '{lot}'?");
     fails_with("{ \"spacing\": \"density\",\n \"spacing\": \"density\" }", "line 2");
     fails_with("{ \"spacing\": }", "p.json");
 }
@@ -125,8 +173,10 @@ static void names_each_mistake(void) {
 static void comments_and_null(void) {
     protocol p = { 0 };
     error e = { ST_OK, "" };
-    CHECK(parse("// head\n{ // tail \"spacng\": 1\n \"protocol\": \"a // b \\\" // c\", // more\n \"px_u_rel\": null,"
-                " \"link\": { \"height_nm\": null } }\n// end", &p, &e) == ST_OK);
+    CHECK(parse("// head\n{ // tail \"spacng\": 1\n \"protocol\": \"a // b \\\" // c\", // more\n "
+                "\"px_u_rel\": null,"
+                " \"link\": { \"height_nm\": null } }\n// end",
+                &p, &e) == ST_OK);
     CHECK(p.name && strcmp(p.name, "a // b \" // c") == 0);
     CHECK(isnan(p.px_u_rel) && isnan(p.link.height_nm));
     protocol_free(&p);
@@ -156,7 +206,8 @@ static void prints_what_it_reads(void) {
     protocol_free(&b);
 }
 
-/* Same meaning, same text; another meaning, another text; the measuring part only moves with the measuring keys. */
+/* Same meaning, same text; another meaning, another text; the measuring part only moves with the measuring
+ * keys. */
 static void fingerprint(const char *one, const char *two, int same_measuring, int same_full) {
     textbuf m1 = { 0 }, m2 = { 0 }, f1 = { 0 }, f2 = { 0 };
     protocol a = { 0 }, b = { 0 };
@@ -182,10 +233,11 @@ static void explains(void) {
     textbuf t = { 0 };
     CHECK(parse("{ \"relief\": \"hillock\", \"targets\": { \"spacing_nm\": { \"min\": 280, \"max\": 420 } },"
                 " \"link\": { \"height_nm\": 350, \"height_nm_u\": 30 }, \"history\": \"/x/l.sqlite\","
-                " \"optics\": { \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 10 } ] } }", &p, &e) == ST_OK);
+                " \"optics\": { \"coatings\": [ { \"material\": \"alumina\", \"thickness_nm\": 10 } ] } }",
+                &p, &e) == ST_OK);
     protocol_explain(&p, &t);
-    static const char *const words[] = { "bright hillocks", "350 +- 30 nm", "10 nm of alumina", "300 to 1200 nm", "/x/l.sqlite",
-                                         "spacing_nm is 280 to 420" };
+    static const char *const words[] = { "bright hillocks", "350 +- 30 nm", "10 nm of alumina",
+                                         "300 to 1200 nm",  "/x/l.sqlite",  "spacing_nm is 280 to 420" };
     for (size_t i = 0; i < sizeof words / sizeof words[0]; i++) CHECK(t.s && strstr(t.s, words[i]));
     text_free(&t);
     protocol_free(&p);
@@ -206,13 +258,17 @@ static void options(void) {
     CHECK_NEAR(p.link.coverage, 0.8, 0);
     CHECK_NEAR(p.link.exponent, 1.5, 0);
     CHECK_NEAR(p.band_hi_nm, 1100, 0);
-    CHECK(p.n_coatings == 2 && strcmp(p.coatings[1].material, "2.1+0.1i") == 0 && p.hemispherical && p.mixing == MIX_VOLUME);
+    CHECK(p.n_coatings == 2 && strcmp(p.coatings[1].material, "2.1+0.1i") == 0 && p.hemispherical &&
+          p.mixing == MIX_VOLUME);
     CHECK(strcmp(p.ambient, "1.33") == 0);
     CHECK_FAILS(protocol_set(&p, "link", "coverage", "2", "--coverage", &e), ST_BAD_INPUT, e,
                 "--coverage: found 2, expected a number from 0 to 1");
-    CHECK_FAILS(protocol_set(&p, "optics", "band_nm", "300-1200", "--band", &e), ST_BAD_INPUT, e, "--band: found \"300-1200\"");
-    CHECK_FAILS(protocol_set(&p, "optics", "coatings", "alumina", "--coating", &e), ST_BAD_INPUT, e, "MATERIAL:NM");
-    CHECK_FAILS(protocol_set(&p, "optics", "mixing", "mean", "--mixing", &e), ST_BAD_INPUT, e, "maxwell-garnett-2d");
+    CHECK_FAILS(protocol_set(&p, "optics", "band_nm", "300-1200", "--band", &e), ST_BAD_INPUT, e,
+                "--band: found \"300-1200\"");
+    CHECK_FAILS(protocol_set(&p, "optics", "coatings", "alumina", "--coating", &e), ST_BAD_INPUT, e,
+                "MATERIAL:NM");
+    CHECK_FAILS(protocol_set(&p, "optics", "mixing", "mean", "--mixing", &e), ST_BAD_INPUT, e,
+                "maxwell-garnett-2d");
     protocol_free(&p);
 }
 
