@@ -77,7 +77,7 @@ int image_stem(const results *r, size_t i, textbuf *out) {
         text_add(out, given);
         return 1;
     }
-    const char *slash = strrchr(given, '/'), *name = slash ? slash + 1 : given, *dot = strrchr(name, '.');
+    const char *slash = strchr(given, '/'), *name = slash ? slash + 1 : given, *dot = strrchr(name, '.');
     text_add_n(out, name, dot ? (size_t)(dot - name) : strlen(name));
     return 1;
 }

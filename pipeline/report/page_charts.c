@@ -21,7 +21,7 @@ typedef struct {
     double x[MAX_ETCHES];
     double spacing[MAX_ETCHES], spacing_lo[MAX_ETCHES], spacing_hi[MAX_ETCHES];
     double R[MAX_ETCHES], R_lo[MAX_ETCHES], R_hi[MAX_ETCHES];
-    plot_mark mark[MAX_ETCHES];
+    plot_mark spacing_mark[MAX_ETCHES], R_mark[MAX_ETCHES];
     size_t n, left_out;
 } etches;
 
@@ -50,7 +50,8 @@ static size_t next_place(etches *t, const char *name, const char *time) {
         t->R[i - 1] = t->R[i];
         t->R_lo[i - 1] = t->R_lo[i];
         t->R_hi[i - 1] = t->R_hi[i];
-        t->mark[i - 1] = t->mark[i];
+        t->spacing_mark[i - 1] = t->spacing_mark[i];
+        t->R_mark[i - 1] = t->R_mark[i];
     }
     t->left_out++;
     return MAX_ETCHES - 1;
@@ -66,7 +67,7 @@ static void add_etch(etches *t, const char *name, const char *time, double spaci
     t->spacing_hi[i] = spacing + 2.0 * spacing_u;
     t->R[i] = 100.0 * R;
     t->R_lo[i] = t->R_hi[i] = MISSING;
-    t->mark[i] = mark_of(verdict);
+    t->spacing_mark[i] = t->R_mark[i] = mark_of(verdict);
 }
 
 static double member_number(const cJSON *o, const char *key) {
@@ -111,14 +112,17 @@ static void from_samples(etches *t, const results *r, textbuf *out) {
     free(order);
 }
 
-/* The ledger keeps no interval of R: take it from this run's samples where it is the same etch. */
-static void add_intervals(etches *t, const results *r) {
+/* The ledger keeps no interval of R and no verdict per quantity: taken from this run's samples where it is the same
+ * etch. Other points carry the verdict of the whole sample. */
+static void add_details(etches *t, const results *r) {
     for (size_t i = 0; i < t->n; i++)
         for (size_t k = 0; k < r->n_samples; k++) {
             const sample_row *s = &r->samples[k];
             if (strcmp(t->name[i], text_or_empty(s->sample)) || strcmp(t->time[i], text_or_empty(s->etched_at))) continue;
             t->R_lo[i] = 100.0 * s->weighted_reflectance_lo;
             t->R_hi[i] = 100.0 * s->weighted_reflectance_hi;
+            t->spacing_mark[i] = mark_of(page_extra(r, s, "verdict_spacing_nm"));
+            t->R_mark[i] = mark_of(page_extra(r, s, "verdict_weighted_reflectance"));
         }
 }
 
@@ -141,7 +145,7 @@ static int any_finite(const double *v, size_t n) {
 static void draw_series(const results *r, const etches *t, const char *name, textbuf *out) {
     int R = !strcmp(name, "weighted_reflectance");
     plot_series s = { .x = t->x, .y = R ? t->R : t->spacing, .lo = R ? t->R_lo : t->spacing_lo,
-                      .hi = R ? t->R_hi : t->spacing_hi, .n = t->n, .style = PLOT_POINTS, .marks = t->mark };
+                      .hi = R ? t->R_hi : t->spacing_hi, .n = t->n, .style = PLOT_POINTS, .marks = R ? t->R_mark : t->spacing_mark };
     plot p = { .title = R ? "Weighted reflectance over the etches" : "Spacing over the etches",
                .x_label = "samples, in time order of the etch", .y_label = R ? "weighted reflectance (%)" : "spacing (nm)",
                .from_zero = R, .y_lo = MISSING, .y_hi = MISSING, .names = t->name, .n_names = t->n, .series = &s, .n_series = 1,
@@ -165,12 +169,13 @@ void page_series(const results *r, textbuf *out) {
         from_ledger(t, ledger);
     else
         from_samples(t, r, out);
-    add_intervals(t, r);
+    add_details(t, r);
     if (!any_finite(t->spacing, t->n) && !any_finite(t->R, t->n)) goto done;
     text_add(out, "<section id=\"series\"><h2>Etch series</h2>\n<ul class=\"key\">"
                   "<li><span class=\"good\">\xe2\x97\x8f</span> conforms</li>"
                   "<li><span class=\"open\">\xe2\x97\x86</span> undecided</li>"
-                  "<li><span class=\"bad\">\xe2\x96\xb2</span> fails</li><li>\xe2\x96\xa1 no target</li></ul>\n");
+                  "<li><span class=\"bad\">\xe2\x96\xb2</span> fails</li><li>\xe2\x96\xa1 no target</li>"
+                  "<li>on this quantity; etches of earlier runs: of the whole sample</li></ul>\n");
     draw_series(r, t, "spacing_nm", out);
     draw_series(r, t, "weighted_reflectance", out);
     if (t->left_out)
