@@ -19,7 +19,7 @@
 
 #include "base/mem.h"
 
-enum { MIN_ROWS = 8, LEVELS = 65536, PARTS = 8 };
+enum { MIN_ROWS = 8, LEVELS = 65536, PARTS = 8, REACH = 16 };
 
 typedef struct {
     int mode;            /* commonest level */
@@ -31,8 +31,9 @@ typedef struct {
 } row_facts;
 
 typedef struct {
-    size_t nx, ny, first; /* rows first .. ny - 1 are described */
-    row_facts *rows;      /* [ny - first] */
+    size_t nx, ny, first; /* rows first .. ny - 1 have room for their facts */
+    size_t lowest;        /* no strip begins above this row */
+    row_facts *rows;      /* [ny - first], described from 17 rows above `lowest` on */
     int window;           /* levels that count as one, each way; 0: exact */
     int small, large;     /* steps, in levels */
     int exempt;           /* rows of specimen below a frame, at most */
@@ -104,6 +105,9 @@ static row_facts describe_row(const float *px, const view *v, const scratch *w) 
 
 static int one_level(const row_facts *f) { return f->share >= 0.95f; }
 
+/* No strip has such a row: specimen. */
+static int blocks(const row_facts *f) { return f->equal < 0.25f || f->share < 0.3f; }
+
 /* Sums over the rows t .. end - 1 of a block that may be the strip. */
 typedef struct {
     double share, equal, other, second; /* means of the shares; of pixels off the row's level, sum and next level */
@@ -116,7 +120,7 @@ static block_facts describe_block(const view *v, size_t t, size_t end) {
     block_facts b = { 0 };
     for (size_t y = t; y < end; y++) {
         const row_facts *f = &v->rows[y - v->first];
-        if (f->equal < 0.25f || f->share < 0.3f) {
+        if (blocks(f)) {
             b.blocked = 1;
             return b;
         }
@@ -153,7 +157,7 @@ static int strip_like(const view *v, const block_facts *b) {
 
 /* Share of level `mode` in the rows above t, and how many of them are of one level without exception. */
 static void look_above(const view *v, size_t t, int mode, double *share, double *exact) {
-    size_t n = t - v->first < 16 ? t - v->first : 16;
+    size_t n = t - v->first < REACH ? t - v->first : REACH;
     *share = *exact = 0.0;
     for (size_t y = t - n; y < t; y++) {
         const row_facts *f = &v->rows[y - v->first];
@@ -207,8 +211,8 @@ static int is_specimen(const view *v, size_t unsure, size_t sure) {
 }
 
 static size_t search(const view *v) {
-    size_t highest = v->ny - v->ny / 3 > v->first ? v->ny - v->ny / 3 : v->first + 1, unsure = 0;
-    for (size_t t = highest; t + MIN_ROWS <= v->ny; t++) {
+    size_t unsure = 0;
+    for (size_t t = v->lowest; t + MIN_ROWS <= v->ny; t++) {
         beginning kind = begins(v, t);
         if (kind == BEGINS_NOT || (unsure && kind != BEGINS)) continue;
         size_t rows = v->ny - t, exempt = rows / 8 < (size_t)v->exempt ? rows / 8 : (size_t)v->exempt;
@@ -225,9 +229,23 @@ static size_t search(const view *v) {
     return unsure ? v->ny - unsure : 0;
 }
 
+/* Describes rows from the bottom up, as far as a strip can reach and its surroundings are looked at: mostly a few rows,
+ * since the first row of noisy specimen ends the search. */
+static void describe(view *v, const float *px, const scratch *w) {
+    size_t y = v->ny, top = v->first;
+    v->lowest = v->ny - v->ny / 3;
+    while (y > top) {
+        y--;
+        v->rows[y - v->first] = describe_row(px + y * v->nx, v, w);
+        if (y < v->lowest || y + (size_t)v->exempt >= v->ny || !blocks(&v->rows[y - v->first])) continue;
+        v->lowest = y + 1;
+        top = y > v->first + REACH ? y - REACH : v->first;
+    }
+}
+
 size_t strip_find(const float *px, size_t nx, size_t ny) {
     if (nx < 32 || ny < 32) return 0;
-    size_t first = ny - ny / 3 > 17 ? ny - ny / 3 - 17 : 0, found = 0;
+    size_t first = ny - ny / 3 - REACH - 1, found = 0; /* ny >= 32: at least 4 */
     view v = { .nx = nx, .ny = ny, .first = first, .exempt = 4 };
     scratch w = { mem_array(nx, sizeof *w.level), mem_array(LEVELS, sizeof *w.count) };
     v.rows = mem_array(ny - first, sizeof *v.rows);
@@ -235,7 +253,7 @@ size_t strip_find(const float *px, size_t nx, size_t ny) {
         v.window = pass ? 4 : 0;
         v.small = pass ? 16 : 13 * 257;
         v.large = pass ? 31 : 31 * 257;
-        for (size_t y = first; y < ny; y++) v.rows[y - first] = describe_row(px + y * nx, &v, &w);
+        describe(&v, px, &w);
         found = search(&v);
     }
     free(w.level);

@@ -248,10 +248,10 @@ static void sweep_bare(size_t nx, size_t ny, double levels) {
 
 int main(void) {
     seed = 20260314;
-    sweep_strips(512, 384, 255.0);
-    sweep_strips(400, 480, 65535.0);
-    sweep_bare(512, 384, 255.0);
-    sweep_bare(400, 300, 65535.0);
+    sweep_strips(400, 300, 255.0);
+    sweep_strips(256, 360, 65535.0);
+    sweep_bare(320, 240, 255.0);
+    sweep_bare(256, 300, 65535.0);
     canvas tiny = canvas_make(31, 31);
     CHECK(strip_find(tiny.px, 31, 31) == 0);
     free(tiny.px);
