@@ -1,6 +1,6 @@
-/* Writers over a column table: CSV (RFC 4180, LF) and JSON (RFC 8259). Both print a number through column_cell,
- * so that they agree to the digit. Text a spreadsheet would run as a formula is defused in CSV only; JSON keeps
- * it exact. */
+/* Writers over a column table: CSV (RFC 4180, LF) and JSON (RFC 8259). Both print a number through
+ * column_cell, so that they agree to the digit. Text a spreadsheet would run as a formula is defused in CSV
+ * only; JSON keeps it exact. */
 #include "io/column.h"
 
 #include <math.h>
@@ -66,8 +66,10 @@ void table_to_csv(const table_view *t, textbuf *out) {
         for (size_t c = 0; c < t->n_columns; c++) {
             if (c) text_add(out, ",");
             const char *s = column_cell(&t->columns[c], row, buffer);
-            if (t->columns[c].kind == COL_TEXT) csv_text(out, s);
-            else text_add(out, s);
+            if (t->columns[c].kind == COL_TEXT)
+                csv_text(out, s);
+            else
+                text_add(out, s);
         }
         for (size_t k = 0; k < t->n_extra; k++) {
             if (k || t->n_columns) text_add(out, ",");
@@ -81,9 +83,12 @@ void table_to_csv(const table_view *t, textbuf *out) {
 static void json_cell(const column *c, const void *row, textbuf *out) {
     char buffer[NUMBER_TEXT];
     const char *s = column_cell(c, row, buffer);
-    if (!s[0]) text_add(out, "null");
-    else if (c->kind == COL_TEXT) json_string(out, s);
-    else text_add(out, s);
+    if (!s[0])
+        text_add(out, "null");
+    else if (c->kind == COL_TEXT)
+        json_string(out, s);
+    else
+        text_add(out, s);
 }
 
 void table_row_to_json(const table_view *t, size_t r, textbuf *out) {

@@ -1,5 +1,6 @@
-/* Files and folders over POSIX: read whole, write atomically (temporary name, fsync, rename, fsync of the folder),
- * walk in byte order. Names are bytes; no encoding is assumed. Does not: lock, watch, follow links out of a root. */
+/* Files and folders over POSIX: read whole, write atomically (temporary name, fsync, rename, fsync of the
+ * folder), walk in byte order. Names are bytes; no encoding is assumed. Does not: lock, watch, follow links
+ * out of a root. */
 #include "io/file.h"
 
 #include <errno.h>
@@ -25,7 +26,8 @@ static status read_all(int fd, size_t limit, char **bytes, size_t *n, error *e) 
     if (fstat(fd, &info)) return fail(e, ST_IO, "cannot be read: %s", REASON(errno));
     if (!S_ISREG(info.st_mode)) return fail(e, ST_IO, "is not a regular file");
     size_t size = (size_t)info.st_size;
-    if (size > limit) return fail(e, ST_NO_MEMORY, "holds %zu bytes, more than the limit of %zu", size, limit);
+    if (size > limit)
+        return fail(e, ST_NO_MEMORY, "holds %zu bytes, more than the limit of %zu", size, limit);
     char *s = mem_array(size + 1, 1);
     if (!s) return NO_MEMORY(e, "the file");
     size_t got = 0;
@@ -71,7 +73,8 @@ static int write_all(int fd, const char *bytes, size_t n) {
     return 1;
 }
 
-/* A new file in the folder of `path`; its name does not contain the last part, which may already be 255 bytes. */
+/* A new file in the folder of `path`; its name does not contain the last part, which may already be 255
+ * bytes. */
 static int open_temporary(const char *path, char **name) {
     size_t folder = folder_length(path), room = folder + 64;
     *name = mem_array(room, 1);
@@ -111,8 +114,10 @@ status file_write(const char *path, const void *bytes, size_t n, error *e) {
     code = errno;
     if (close(fd) && ok) ok = 0, code = errno;
     if (ok && rename(part, path)) ok = 0, code = errno;
-    if (ok) sync_folder(path);
-    else (void)unlink(part);
+    if (ok)
+        sync_folder(path);
+    else
+        (void)unlink(part);
     free(part);
     return ok ? ST_OK : fail(e, ST_IO, "%s: cannot be written: %s", path, REASON(code));
 }

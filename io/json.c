@@ -1,6 +1,6 @@
 /* JSON in through cJSON, with the line of every key; JSON out as an emitter of strings and numbers.
- * cJSON keeps no positions: a scan of the text finds the keys in document order (a string followed by a colon),
- * the tree walked in the same order gives the nodes, and the two lists belong together item by item.
+ * cJSON keeps no positions: a scan of the text finds the keys in document order (a string followed by a
+ * colon), the tree walked in the same order gives the nodes, and the two lists belong together item by item.
  * Does not: comments, NaN, several documents in one text. */
 #include "io/json.h"
 
@@ -44,7 +44,8 @@ static int add_key(key_scan *k, size_t line) {
 static int scan_keys(const char *s, size_t n, key_scan *k) {
     size_t line = 1, depth = 0;
     for (size_t i = 0; i < n && !k->depth_line; i++) {
-        if (s[i] == '\n') line++;
+        if (s[i] == '\n')
+            line++;
         else if (s[i] == '{' || s[i] == '[') {
             if (++depth > LIMIT_JSON_DEPTH) k->depth_line = line;
         } else if (s[i] == '}' || s[i] == ']') {
@@ -111,15 +112,16 @@ static status attach_lines(json *j, const char *what, error *e) {
         goto done;
     }
     if (w.bad_number) {
-        st = fail(e, ST_BAD_INPUT, "%s line %zu, '%s': the number is too large", what, j->lines[w.bad_number - 1],
-                  j->nodes[w.bad_number - 1]->string);
+        st = fail(e, ST_BAD_INPUT, "%s line %zu, '%s': the number is too large", what,
+                  j->lines[w.bad_number - 1], j->nodes[w.bad_number - 1]->string);
         goto done;
     }
     qsort(w.names, w.n, sizeof *w.names, compare_names);
     for (size_t i = 1; i < w.n; i++) {
         const key_name *a = &w.names[i - 1], *b = &w.names[i];
         if (a->object == b->object && !strcmp(a->name, b->name)) {
-            st = fail(e, ST_BAD_INPUT, "%s line %zu: '%s' stands here and already in line %zu; keep one of them", what,
+            st = fail(e, ST_BAD_INPUT,
+                      "%s line %zu: '%s' stands here and already in line %zu; keep one of them", what,
                       j->lines[b->index], b->name, j->lines[a->index]);
             break;
         }
@@ -134,10 +136,12 @@ static status parse_tree(const char *bytes, size_t n, const char *what, json *ou
     out->root = cJSON_ParseWithLengthOpts(bytes, n, &end, 0);
     size_t at = end && end >= bytes && end <= bytes + n ? (size_t)(end - bytes) : n;
     if (!out->root)
-        return fail(e, ST_BAD_INPUT, "%s line %zu: not JSON here; look for a missing comma, quote or bracket", what,
-                    line_at(bytes, at));
+        return fail(e, ST_BAD_INPUT, "%s line %zu: not JSON here; look for a missing comma, quote or bracket",
+                    what, line_at(bytes, at));
     while (at < n && isspace((unsigned char)bytes[at])) at++;
-    if (at < n) return fail(e, ST_BAD_INPUT, "%s line %zu: text behind the end of the JSON", what, line_at(bytes, at));
+    if (at < n)
+        return fail(e, ST_BAD_INPUT, "%s line %zu: text behind the end of the JSON", what,
+                    line_at(bytes, at));
     if (!cJSON_IsObject(out->root))
         return fail(e, ST_BAD_INPUT, "%s line 1: found no object; expected { \"key\": value, ... }", what);
     return ST_OK;
@@ -152,10 +156,13 @@ status json_parse(const char *bytes, size_t n, const char *what, json *out, erro
     if (zero)
         st = fail(e, ST_BAD_INPUT, "%s line %zu: a zero byte; save the file as UTF-8 text", what,
                   line_at(bytes, (size_t)(zero - bytes)));
-    else if (!scan_keys(bytes, n, &keys)) st = NO_MEMORY(e, what);
+    else if (!scan_keys(bytes, n, &keys))
+        st = NO_MEMORY(e, what);
     else if (keys.depth_line)
-        st = fail(e, ST_BAD_INPUT, "%s line %zu: brackets nested deeper than %d", what, keys.depth_line, LIMIT_JSON_DEPTH);
-    else st = parse_tree(bytes, n, what, &j, e);
+        st = fail(e, ST_BAD_INPUT, "%s line %zu: brackets nested deeper than %d", what, keys.depth_line,
+                  LIMIT_JSON_DEPTH);
+    else
+        st = parse_tree(bytes, n, what, &j, e);
     if (st == ST_OK) {
         j.lines = keys.lines;
         j.n_keys = keys.n;
@@ -192,18 +199,26 @@ void json_string(textbuf *out, const char *s) {
     text_add(out, "\"");
     while (*s) {
         size_t run = 0, step = 1;
-        while ((unsigned char)s[run] >= 0x20 && s[run] != '"' && s[run] != '\\' && (step = utf8_step(s + run)) != 0)
+        while ((unsigned char)s[run] >= 0x20 && s[run] != '"' && s[run] != '\\' &&
+               (step = utf8_step(s + run)) != 0)
             run += step;
         text_add_n(out, s, run);
         s += run;
         if (!*s) break;
-        if (*s == '"') text_add(out, "\\\"");
-        else if (*s == '\\') text_add(out, "\\\\");
-        else if (*s == '\n') text_add(out, "\\n");
-        else if (*s == '\t') text_add(out, "\\t");
-        else if (*s == '\r') text_add(out, "\\r");
-        else if ((unsigned char)*s < 0x20) text_addf(out, "\\u%04x", (unsigned)*s);
-        else text_add(out, UTF8_REPLACEMENT);
+        if (*s == '"')
+            text_add(out, "\\\"");
+        else if (*s == '\\')
+            text_add(out, "\\\\");
+        else if (*s == '\n')
+            text_add(out, "\\n");
+        else if (*s == '\t')
+            text_add(out, "\\t");
+        else if (*s == '\r')
+            text_add(out, "\\r");
+        else if ((unsigned char)*s < 0x20)
+            text_addf(out, "\\u%04x", (unsigned)*s);
+        else
+            text_add(out, UTF8_REPLACEMENT);
         s++;
     }
     text_add(out, "\"");

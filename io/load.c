@@ -1,5 +1,5 @@
-/* An image file's bytes become a micrograph: told apart by content, decoded, strip cropped, clipping counted on the
- * file's own levels, pixel size chosen. The name of a file decides nothing here. */
+/* An image file's bytes become a micrograph: told apart by content, decoded, strip cropped, clipping counted
+ * on the file's own levels, pixel size chosen. The name of a file decides nothing here. */
 #include "io/load.h"
 
 #include <ctype.h>
@@ -17,9 +17,11 @@
 #include "io/strip_priv.h"
 
 load_options load_defaults(void) {
-    return (load_options){
-        .px_nm_option = MISSING, .px_nm_sheet = MISSING, .px_u_rel = 0.01, .crop_strip = 1, .max_pixels = LIMIT_PIXELS
-    };
+    return (load_options){ .px_nm_option = MISSING,
+                           .px_nm_sheet = MISSING,
+                           .px_u_rel = 0.01,
+                           .crop_strip = 1,
+                           .max_pixels = LIMIT_PIXELS };
 }
 
 int load_knows_name(const char *path) {
@@ -46,12 +48,18 @@ static status refuse(const uint8_t *bytes, size_t n, error *e) {
         size_t n;
         const char *kind;
     } known[] = {
-        { "\xff\xd8\xff", 3, "a JPEG" }, { "GIF8", 4, "a GIF" }, { "BM", 2, "a BMP" }, { "%PDF", 4, "a PDF" },
-        { "PK\x03\x04", 4, "a ZIP archive" }, { "\x1f\x8b", 2, "a gzip archive" }, { "RIFF", 4, "a RIFF file (WebP?)" },
+        { "\xff\xd8\xff", 3, "a JPEG" },
+        { "GIF8", 4, "a GIF" },
+        { "BM", 2, "a BMP" },
+        { "%PDF", 4, "a PDF" },
+        { "PK\x03\x04", 4, "a ZIP archive" },
+        { "\x1f\x8b", 2, "a gzip archive" },
+        { "RIFF", 4, "a RIFF file (WebP?)" },
     };
     for (size_t k = 0; k < sizeof known / sizeof known[0]; k++)
         if (starts_with(bytes, n, known[k].magic, known[k].n))
-            return fail(e, ST_BAD_INPUT, "is %s; only PNG and TIFF are read: export the micrograph as TIFF or PNG",
+            return fail(e, ST_BAD_INPUT,
+                        "is %s; only PNG and TIFF are read: export the micrograph as TIFF or PNG",
                         known[k].kind);
     size_t text = 0, look = n < 512 ? n : 512;
     while (text < look && (bytes[text] >= 0x20 || isspace(bytes[text]))) text++;
@@ -62,8 +70,8 @@ static status refuse(const uint8_t *bytes, size_t n, error *e) {
 static status decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *p, error *e) {
     if (!n) return fail(e, ST_BAD_INPUT, "the file is empty");
     if (starts_with(bytes, n, "\x89PNG\r\n\x1a\n", 8)) return png_decode(bytes, n, max_pixels, p, e);
-    if (starts_with(bytes, n, "II*\0", 4) || starts_with(bytes, n, "MM\0*", 4) || starts_with(bytes, n, "II+\0", 4) ||
-        starts_with(bytes, n, "MM\0+", 4))
+    if (starts_with(bytes, n, "II*\0", 4) || starts_with(bytes, n, "MM\0*", 4) ||
+        starts_with(bytes, n, "II+\0", 4) || starts_with(bytes, n, "MM\0+", 4))
         return tiff_decode(bytes, n, max_pixels, p, e);
     if (n < 8 && (!memcmp(bytes, "\x89PNG\r\n\x1a", n) || !memcmp(bytes, "II*", n < 3 ? n : 3) ||
                   !memcmp(bytes, "MM\0", n < 3 ? n : 3)))
@@ -76,7 +84,8 @@ static size_t strip_rows(picture *p) {
     size_t found = strip_find(p->px, p->nx, p->ny);
     if (p->strip_stated && p->strip_stated < p->ny / 3) {
         if (found && found != p->strip_stated)
-            note_add(p->note, "The file states %zu rows of info strip, the pixels show %zu; the file's were cropped.",
+            note_add(p->note,
+                     "The file states %zu rows of info strip, the pixels show %zu; the file's were cropped.",
                      p->strip_stated, found);
         return p->strip_stated;
     }
@@ -93,7 +102,8 @@ static void count_clipped(micrograph *m) {
     m->clipped_high = (double)high / (double)n;
 }
 
-static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_options *o, micrograph *m, error *e) {
+static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_options *o,
+                         micrograph *m, error *e) {
     picture p = { 0 };
     micrograph r = { 0 };
     status st = decode(bytes, n, o->max_pixels, &p, e);
@@ -103,8 +113,8 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
     r.strip_rows = o->crop_strip ? strip_rows(&p) : 0;
     r.ny = p.ny - r.strip_rows;
     if (r.nx < LIMIT_MIN_SIDE || r.ny < LIMIT_MIN_SIDE) {
-        st = fail(e, ST_BAD_INPUT, "the picture has only %zu x %zu pixels; at least %zu a side are needed", r.nx, r.ny,
-                  LIMIT_MIN_SIDE);
+        st = fail(e, ST_BAD_INPUT, "the picture has only %zu x %zu pixels; at least %zu a side are needed",
+                  r.nx, r.ny, LIMIT_MIN_SIDE);
         goto done;
     }
     r.px = p.px;

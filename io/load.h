@@ -16,7 +16,9 @@ typedef struct {
 
 load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, LIMIT_PIXELS */
 
-/* Reads, decodes, finds pixel size (sidecar beside `path` included) and strip.
+/* Reads, decodes, finds pixel size (sidecar beside `path` included) and strip. The pixel size is that of the most
+ * specific source: option, sheet, sidecar, instrument tags, description, sCAL, and TIFF resolution or PNG pHYs only below
+ * 1 um. Of pixels that are not square the width counts for both sides and PX_UNEQUAL says so.
  *   out  m   as described in micrograph.h; untouched on failure
  *   own  caller frees m with micrograph_free
  *   err  ST_IO cannot be read; ST_BAD_INPUT empty, truncated, not an image, a variant that is not read (says which);

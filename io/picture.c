@@ -11,7 +11,8 @@
 
 void scales_add(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm) {
     if (isnan(y_nm)) y_nm = x_nm;
-    size_t room = rank <= SCALE_SIDECAR ? MAX_SCALES : MAX_SCALES - 4; /* the file never crowds the user out */
+    size_t room =
+        rank <= SCALE_SIDECAR ? MAX_SCALES : MAX_SCALES - 4; /* the file never crowds the user out */
     if (s->n >= room || !(x_nm > 0.0) || !(y_nm > 0.0) || !isfinite(x_nm) || !isfinite(y_nm)) return;
     scale *k = &s->list[s->n++];
     *k = (scale){ .rank = rank, .x_nm = x_nm, .y_nm = y_nm, .u_rel = (double)NAN };
@@ -40,8 +41,9 @@ void picture_free(picture *p) {
 status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *e) {
     if (!nx || !ny) return fail(e, ST_BAD_INPUT, "the picture has no pixels (%zu x %zu)", nx, ny);
     if (nx > LIMIT_SIDE || ny > LIMIT_SIDE || nx > max_pixels / ny)
-        return fail(e, ST_NO_MEMORY, "the picture is too large: %zu x %zu pixels, at most %zu a side and %zu in all", nx,
-                    ny, LIMIT_SIDE, max_pixels);
+        return fail(e, ST_NO_MEMORY,
+                    "the picture is too large: %zu x %zu pixels, at most %zu a side and %zu in all", nx, ny,
+                    LIMIT_SIDE, max_pixels);
     p->px = mem_array(nx * ny, sizeof *p->px);
     if (!p->px) return fail(e, ST_NO_MEMORY, "not enough memory for %zu x %zu pixels", nx, ny);
     p->nx = nx;
@@ -50,10 +52,11 @@ status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *
 }
 
 void picture_set_time(picture *p, int year, int month, int day, int hour, int minute, int second) {
-    if (year < 1980 || year > 9999 || month < 1 || month > 12 || day < 1 || day > 31 || hour < 0 || hour > 23 ||
-        minute < 0 || minute > 59 || second < 0 || second > 60)
+    if (year < 1980 || year > 9999 || month < 1 || month > 12 || day < 1 || day > 31 || hour < 0 ||
+        hour > 23 || minute < 0 || minute > 59 || second < 0 || second > 60)
         return;
-    snprintf(p->acquired_at, sizeof p->acquired_at, "%04d-%02d-%02dT%02d:%02d:%02d", year, month, day, hour, minute, second);
+    snprintf(p->acquired_at, sizeof p->acquired_at, "%04d-%02d-%02dT%02d:%02d:%02d", year, month, day, hour,
+             minute, second);
 }
 
 void level_table(int bits, float table[256]) {

@@ -1,5 +1,5 @@
-/* What a decoder hands to load.c: the plane as stored, and every statement about the pixel size it met. Not for
- * other rooms. */
+/* What a decoder hands to load.c: the plane as stored, and every statement about the pixel size it met. Not
+ * for other rooms. */
 #ifndef SWARD_IO_PICTURE_PRIV_H
 #define SWARD_IO_PICTURE_PRIV_H
 #include <stddef.h>
@@ -44,8 +44,8 @@ typedef struct {
     float *px; /* [ny][nx], 0..1, owned */
     size_t nx, ny;
     int bit_depth;
-    flags flags;          /* COLOUR, MANY_PAGES */
-    size_t strip_stated;  /* rows the file itself says are strip, 0: it does not say */
+    flags flags;         /* COLOUR, MANY_PAGES */
+    size_t strip_stated; /* rows the file itself says are strip, 0: it does not say */
     char acquired_at[32];
     char note[MAX_NOTE];
     scales scales;

@@ -1,7 +1,7 @@
 /* PNG in, through libpng: every colour type and depth, interlaced or not, to one plane of levels.
  * gAMA, sRGB, iCCP and the like do not touch the levels: they are data of a detector, not light for an eye.
- * Transparency is ignored. A file that ends early or whose image data do not pass their checks is refused, never
- * filled up. The only place where libpng's longjmp exists: png_decode is the frame it returns to.
+ * Transparency is ignored. A file that ends early or whose image data do not pass their checks is refused,
+ * never filled up. The only place where libpng's longjmp exists: png_decode is the frame it returns to.
  * Source: PNG (ISO/IEC 15948:2004; W3C third edition, 2025). */
 #include <png.h>
 #include <setjmp.h>
@@ -44,7 +44,8 @@ static void on_read(png_structp png, png_bytep to, size_t n) {
 }
 
 /* One grey row. `step` samples per pixel (1 grey, 3 RGB), 8-bit table or 16 bits in file order. */
-static void row_to_grey(decoder *d, const uint8_t *row, size_t y, int depth, int channels, const float *table) {
+static void row_to_grey(decoder *d, const uint8_t *row, size_t y, int depth, int channels,
+                        const float *table) {
     float *to = d->p.px + y * d->p.nx;
     size_t nx = d->p.nx;
     if (channels == 1 && depth <= 8) {
@@ -64,7 +65,8 @@ static void row_to_grey(decoder *d, const uint8_t *row, size_t y, int depth, int
     } else {
         for (size_t x = 0; x < nx; x++) {
             const uint8_t *c = row + 6 * x;
-            unsigned r = (unsigned)c[0] << 8 | c[1], g = (unsigned)c[2] << 8 | c[3], b = (unsigned)c[4] << 8 | c[5];
+            unsigned r = (unsigned)c[0] << 8 | c[1], g = (unsigned)c[2] << 8 | c[3],
+                     b = (unsigned)c[4] << 8 | c[5];
             if (r != g || g != b) d->p.flags |= FLAG(COLOUR);
             to[x] = r == g && g == b ? level_of_16(r)
                                      : picture_luminance(level_of_16(r), level_of_16(g), level_of_16(b));
@@ -73,8 +75,8 @@ static void row_to_grey(decoder *d, const uint8_t *row, size_t y, int depth, int
 }
 
 /* A palette entry is 8 bits a channel; `known` entries exist. Returns 0 at an index beyond them. */
-static int row_of_palette(decoder *d, const uint8_t *row, size_t y, const float *grey, const uint8_t *coloured,
-                          unsigned known) {
+static int row_of_palette(decoder *d, const uint8_t *row, size_t y, const float *grey,
+                          const uint8_t *coloured, unsigned known) {
     float *to = d->p.px + y * d->p.nx;
     for (size_t x = 0; x < d->p.nx; x++) {
         if (row[x] >= known) return 0;
@@ -120,7 +122,8 @@ static void read_texts(png_structp png, png_infop info, picture *p) {
 }
 
 /* Everything that may longjmp. Returns a status; libpng's own errors leave through the jump. */
-static status decode(png_structp png, png_infop info, png_infop end, decoder *d, size_t max_pixels, error *e) {
+static status decode(png_structp png, png_infop info, png_infop end, decoder *d, size_t max_pixels,
+                     error *e) {
     float table[256], grey[256];
     uint8_t coloured[256] = { 0 };
     png_set_read_fn(png, d, on_read);
@@ -131,9 +134,11 @@ static status decode(png_structp png, png_infop info, png_infop end, decoder *d,
     png_uint_32 nx = png_get_image_width(png, info), ny = png_get_image_height(png, info);
     int depth = png_get_bit_depth(png, info), type = png_get_color_type(png, info);
     int bits = depth * png_get_channels(png, info);
-    /* Deflate cannot pack more than 1032 to 1 (RFC 1951): a claim beyond that is a lie, refuse before allocating. */
+    /* Deflate cannot pack more than 1032 to 1 (RFC 1951): a claim beyond that is a lie, refuse before
+     * allocating. */
     if ((double)nx * ny * bits / 8.0 > 1100.0 * (double)d->left + 65536.0)
-        return fail(e, ST_BAD_INPUT, "the file is too short for the %u x %u pixels it claims; it is truncated", nx, ny);
+        return fail(e, ST_BAD_INPUT,
+                    "the file is too short for the %u x %u pixels it claims; it is truncated", nx, ny);
     status st = picture_make(&d->p, nx, ny, max_pixels, e);
     if (st != ST_OK) return st;
     d->p.bit_depth = depth;
@@ -156,9 +161,11 @@ static status decode(png_structp png, png_infop info, png_infop end, decoder *d,
     for (size_t y = 0; y < ny; y++) {
         const uint8_t *row = d->row + (passes > 1 ? y * row_bytes : 0);
         if (passes == 1) png_read_row(png, d->row, NULL);
-        if (!palette) row_to_grey(d, row, y, depth, channels, table);
+        if (!palette)
+            row_to_grey(d, row, y, depth, channels, table);
         else if (!row_of_palette(d, row, y, grey, coloured, known))
-            return fail(e, ST_BAD_INPUT, "the PNG is damaged: a pixel names a colour its palette does not hold");
+            return fail(e, ST_BAD_INPUT,
+                        "the PNG is damaged: a pixel names a colour its palette does not hold");
     }
     png_read_end(png, end);
     read_scale(png, info, &d->p);
@@ -177,11 +184,13 @@ status png_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *ou
     png_structp png = png_create_read_struct(PNG_LIBPNG_VER_STRING, d, on_error, on_warning);
     png_infop info = png ? png_create_info_struct(png) : NULL;
     png_infop end = info ? png_create_info_struct(png) : NULL;
-    if (!end) fail(e, st, "not enough memory for the PNG");
+    if (!end)
+        fail(e, st, "not enough memory for the PNG");
     else if (setjmp(png_jmpbuf(png)))
         st = d->ran_out ? fail(e, ST_BAD_INPUT, "the PNG is truncated: the file ends inside its data")
                         : fail(e, ST_BAD_INPUT, "the PNG is damaged: %s", d->what);
-    else st = decode(png, info, end, d, max_pixels, e);
+    else
+        st = decode(png, info, end, d, max_pixels, e);
     png_destroy_read_struct(&png, &info, &end);
     if (st == ST_OK) {
         *out = d->p;

@@ -1,6 +1,6 @@
-/* PNG out, through libpng, into memory and from there to disk in one rename. Settings are fixed and no time or text
- * chunk is written, so the same pixels give the same bytes (for one version of zlib). The second place with libpng's
- * longjmp; png_encode is the frame it returns to. */
+/* PNG out, through libpng, into memory and from there to disk in one rename. Settings are fixed and no time
+ * or text chunk is written, so the same pixels give the same bytes (for one version of zlib). The second
+ * place with libpng's longjmp; png_encode is the frame it returns to. */
 #include "io/png_write.h"
 
 #include <math.h>
@@ -44,8 +44,8 @@ static void on_write(png_structp png, png_bytep from, size_t n) {
 
 static void on_flush(png_structp png) { (void)png; }
 
-/* pHYs holds whole pixels per metre up to 2^31 - 1 (0.466 nm) and readers take it for a screen's above 1 um; sCAL
- * says the same of the specimen in full digits and is written beyond those two ends. */
+/* pHYs holds whole pixels per metre up to 2^31 - 1 (0.466 nm) and readers take it for a screen's above 1 um;
+ * sCAL says the same of the specimen in full digits and is written beyond those two ends. */
 static void put_scale(png_structp png, png_infop info, double px_nm) {
     if (!(px_nm > 0.0) || !isfinite(px_nm)) return;
     double per_metre = 1e9 / px_nm;
@@ -82,10 +82,11 @@ static void encode(png_structp png, png_infop info, const uint8_t *samples, cons
 
 static status check_format(const png_format *f, error *e) {
     if ((f->channels != 1 && f->channels != 3) || (f->bit_depth != 8 && f->bit_depth != 16))
-        return fail(e, ST_BUG, "no picture is written with %d channels of %d bits", f->channels, f->bit_depth);
+        return fail(e, ST_BUG, "no picture is written with %d channels of %d bits", f->channels,
+                    f->bit_depth);
     if (!f->nx || !f->ny || f->nx > LIMIT_SIDE || f->ny > LIMIT_SIDE)
-        return fail(e, ST_BAD_INPUT, "a picture of %zu x %zu pixels cannot be written; a side is 1 to %zu", f->nx, f->ny,
-                    LIMIT_SIDE);
+        return fail(e, ST_BAD_INPUT, "a picture of %zu x %zu pixels cannot be written; a side is 1 to %zu",
+                    f->nx, f->ny, LIMIT_SIDE);
     return ST_OK;
 }
 
@@ -96,8 +97,10 @@ status png_encode(const void *samples, const png_format *f, uint8_t **bytes, siz
     if (!s) return NO_MEMORY(e, "the PNG");
     png_structp png = png_create_write_struct(PNG_LIBPNG_VER_STRING, s, on_error, on_warning);
     png_infop info = png ? png_create_info_struct(png) : NULL;
-    if (!info) st = NO_MEMORY(e, "the PNG");
-    else if (setjmp(png_jmpbuf(png))) st = fail(e, ST_NO_MEMORY, "the PNG cannot be written: %s", s->what);
+    if (!info)
+        st = NO_MEMORY(e, "the PNG");
+    else if (setjmp(png_jmpbuf(png)))
+        st = fail(e, ST_NO_MEMORY, "the PNG cannot be written: %s", s->what);
     else {
         png_set_write_fn(png, s, on_write, on_flush);
         encode(png, info, samples, f);

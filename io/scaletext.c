@@ -1,6 +1,7 @@
 /* A pixel size written for people: the generic forms that sidecars, descriptions and text chunks share.
- * Numbers are read in the C locale by hand-checked grammar; a decimal comma is accepted when no point is there; a
- * value without a unit is refused, because 5.58 of what? No form of magnification is ever turned into a scale. */
+ * Numbers are read in the C locale by hand-checked grammar; a decimal comma is accepted when no point is
+ * there; a value without a unit is refused, because 5.58 of what? No form of magnification is ever turned
+ * into a scale. */
 #include "io/scaletext_priv.h"
 
 #include <cjson/cJSON.h>
@@ -29,47 +30,36 @@ int scaletext_number(const char *s, double *out) {
     return number_parse(text, out);
 }
 
-/* nm per unit. The micro sign as the encodings in use write it: Latin-1, UTF-8 (both code points), UTF-8 taken for
- * Latin-1 and saved again, code page 437, Shift-JIS, GBK, and escapes. Case matters: Mm is not mm. */
+/* nm per unit. The micro sign as the encodings in use write it: Latin-1, UTF-8 (both code points), UTF-8
+ * taken for Latin-1 and saved again, code page 437, Shift-JIS, GBK, and escapes. Case matters: Mm is not mm.
+ */
 static const struct {
     const char *text;
     double nm;
 } units[] = {
-    { "nm", 1.0 },
-    { "um", 1e3 },
-    { "\xb5m", 1e3 },
-    { "\xc2\xb5m", 1e3 },
-    { "\xce\xbcm", 1e3 },
-    { "\xc3\x82\xc2\xb5m", 1e3 },
-    { "\xe6m", 1e3 },
-    { "\x83\xcam", 1e3 },
-    { "\xa6\xccm", 1e3 },
-    { "\\u00B5m", 1e3 },
-    { "\\u00b5m", 1e3 },
-    { "&#181;m", 1e3 },
-    { "&#xb5;m", 1e3 },
-    { "&#xB5;m", 1e3 },
-    { "&micro;m", 1e3 },
-    { "mcm", 1e3 },
-    { "pm", 1e-3 },
-    { "fm", 1e-6 },
-    { "mm", 1e6 },
-    { "cm", 1e7 },
-    { "m", 1e9 },
-    { "in", 2.54e7 },
-    { "A", 0.1 },
-    { "\xc5", 0.1 },
-    { "\xc3\x85", 0.1 },
-    { "\xe2\x84\xab", 0.1 },
+    { "nm", 1.0 },        { "um", 1e3 },
+    { "\xb5m", 1e3 },     { "\xc2\xb5m", 1e3 },
+    { "\xce\xbcm", 1e3 }, { "\xc3\x82\xc2\xb5m", 1e3 },
+    { "\xe6m", 1e3 },     { "\x83\xcam", 1e3 },
+    { "\xa6\xccm", 1e3 }, { "\\u00B5m", 1e3 },
+    { "\\u00b5m", 1e3 },  { "&#181;m", 1e3 },
+    { "&#xb5;m", 1e3 },   { "&#xB5;m", 1e3 },
+    { "&micro;m", 1e3 },  { "mcm", 1e3 },
+    { "pm", 1e-3 },       { "fm", 1e-6 },
+    { "mm", 1e6 },        { "cm", 1e7 },
+    { "m", 1e9 },         { "in", 2.54e7 },
+    { "A", 0.1 },         { "\xc5", 0.1 },
+    { "\xc3\x85", 0.1 },  { "\xe2\x84\xab", 0.1 },
 };
 static const struct {
     const char *word;
     double nm;
 } unit_words[] = {
-    { "nanometer", 1.0 },   { "nanometers", 1.0 },   { "nanometre", 1.0 },  { "nanometres", 1.0 }, { "micron", 1e3 },
-    { "microns", 1e3 },     { "micrometer", 1e3 },   { "micrometers", 1e3 }, { "micrometre", 1e3 }, { "micrometres", 1e3 },
-    { "millimeter", 1e6 },  { "millimetre", 1e6 },   { "meter", 1e9 },      { "metre", 1e9 },      { "inch", 2.54e7 },
-    { "angstrom", 0.1 },    { "picometer", 1e-3 },   { "picometre", 1e-3 },
+    { "nanometer", 1.0 },  { "nanometers", 1.0 },  { "nanometre", 1.0 },  { "nanometres", 1.0 },
+    { "micron", 1e3 },     { "microns", 1e3 },     { "micrometer", 1e3 }, { "micrometers", 1e3 },
+    { "micrometre", 1e3 }, { "micrometres", 1e3 }, { "millimeter", 1e6 }, { "millimetre", 1e6 },
+    { "meter", 1e9 },      { "metre", 1e9 },       { "inch", 2.54e7 },    { "angstrom", 0.1 },
+    { "picometer", 1e-3 }, { "picometre", 1e-3 },
 };
 
 static int equal_letters(const char *a, const char *b) {
@@ -130,14 +120,18 @@ static key_kind know_key(const char *s, size_t n, double *unit) {
         key_kind kind;
         double unit;
     } keys[] = {
-        { "pixelsize", KEY_BOTH, 0.0 },     { "imagepixelsize", KEY_BOTH, 0.0 }, { "pixelwidth", KEY_X, 0.0 },
-        { "pixelheight", KEY_Y, 0.0 },      { "nmperpixel", KEY_BOTH, 1.0 },     { "nmperpx", KEY_BOTH, 1.0 },
-        { "nm/px", KEY_BOTH, 1.0 },         { "nm/pixel", KEY_BOTH, 1.0 },       { "pxnm", KEY_BOTH, 1.0 },
-        { "pixelsizenm", KEY_BOTH, 1.0 },   { "pixelwidthnm", KEY_X, 1.0 },      { "pixelheightnm", KEY_Y, 1.0 },
-        { "pixelsize(nm)", KEY_BOTH, 1.0 }, { "pixelsize[nm]", KEY_BOTH, 1.0 },  { "umperpixel", KEY_BOTH, 1e3 },
-        { "um/px", KEY_BOTH, 1e3 },         { "um/pixel", KEY_BOTH, 1e3 },       { "pxum", KEY_BOTH, 1e3 },
-        { "pixelsizeum", KEY_BOTH, 1e3 },   { "pixelsize(um)", KEY_BOTH, 1e3 },  { "pixelsize[um]", KEY_BOTH, 1e3 },
-        { "scale", KEY_SCALE, 0.0 },        { "pixelsizex", KEY_X, 0.0 },        { "pixelsizey", KEY_Y, 0.0 },
+        { "pixelsize", KEY_BOTH, 0.0 },     { "imagepixelsize", KEY_BOTH, 0.0 },
+        { "pixelwidth", KEY_X, 0.0 },       { "pixelheight", KEY_Y, 0.0 },
+        { "nmperpixel", KEY_BOTH, 1.0 },    { "nmperpx", KEY_BOTH, 1.0 },
+        { "nm/px", KEY_BOTH, 1.0 },         { "nm/pixel", KEY_BOTH, 1.0 },
+        { "pxnm", KEY_BOTH, 1.0 },          { "pixelsizenm", KEY_BOTH, 1.0 },
+        { "pixelwidthnm", KEY_X, 1.0 },     { "pixelheightnm", KEY_Y, 1.0 },
+        { "pixelsize(nm)", KEY_BOTH, 1.0 }, { "pixelsize[nm]", KEY_BOTH, 1.0 },
+        { "umperpixel", KEY_BOTH, 1e3 },    { "um/px", KEY_BOTH, 1e3 },
+        { "um/pixel", KEY_BOTH, 1e3 },      { "pxum", KEY_BOTH, 1e3 },
+        { "pixelsizeum", KEY_BOTH, 1e3 },   { "pixelsize(um)", KEY_BOTH, 1e3 },
+        { "pixelsize[um]", KEY_BOTH, 1e3 }, { "scale", KEY_SCALE, 0.0 },
+        { "pixelsizex", KEY_X, 0.0 },       { "pixelsizey", KEY_Y, 0.0 },
     };
     char key[KEY_ROOM];
     size_t k = 0;
@@ -167,7 +161,8 @@ static double ratio_unit(const char *s, int *inverse) {
     (void)copy_trimmed(slash + 1, strlen(slash + 1), second, sizeof second);
     *inverse = equal_letters(first, "px") || equal_letters(first, "pixel") || equal_letters(first, "pixels");
     const char *pixel = *inverse ? first : second, *length = *inverse ? second : first;
-    if (!equal_letters(pixel, "px") && !equal_letters(pixel, "pixel") && !equal_letters(pixel, "pixels")) return 0.0;
+    if (!equal_letters(pixel, "px") && !equal_letters(pixel, "pixel") && !equal_letters(pixel, "pixels"))
+        return 0.0;
     return scaletext_unit(length);
 }
 
@@ -200,16 +195,20 @@ static void read_line(const char *line, const char *where, found_sizes *f, scale
     if (kind == KEY_NONE) return;
     double nm = value_nm(line + n + 1, unit, kind, &unitless);
     if (unitless)
-        note_add(s->note, "%s: '%.60s' has no unit and was not used; write it as 'px_nm = VALUE'.", where, line);
+        note_add(s->note, "%s: '%.60s' has no unit and was not used; write it as 'px_nm = VALUE'.", where,
+                 line);
     double *slot = kind == KEY_X ? &f->x : kind == KEY_Y ? &f->y : &f->both;
     if (nm > 0.0 && !(*slot > 0.0)) *slot = nm; /* the first of a key wins */
 }
 
 static int add_found(const found_sizes *f, scale_rank rank, const char *name, scales *s) {
     size_t before = s->n;
-    if (f->both > 0.0) scales_add(s, rank, name, f->both, f->both);
-    else if (f->x > 0.0) scales_add(s, rank, name, f->x, f->y > 0.0 ? f->y : f->x);
-    else scales_add(s, rank, name, f->y, f->y);
+    if (f->both > 0.0)
+        scales_add(s, rank, name, f->both, f->both);
+    else if (f->x > 0.0)
+        scales_add(s, rank, name, f->x, f->y > 0.0 ? f->y : f->x);
+    else
+        scales_add(s, rank, name, f->y, f->y);
     return s->n > before;
 }
 
@@ -218,7 +217,8 @@ int scaletext_lines(const char *text, scale_rank rank, const char *name, const c
     for (int line = 0; *text && line < MAX_LINES; line++) {
         size_t n = strcspn(text, "\r\n");
         char copy[LINE_ROOM];
-        if (copy_trimmed(text, n, copy, sizeof copy) && copy[0] != '#' && copy[0] != ';') read_line(copy, where, &f, s);
+        if (copy_trimmed(text, n, copy, sizeof copy) && copy[0] != '#' && copy[0] != ';')
+            read_line(copy, where, &f, s);
         text += n;
         while (*text == '\r' || *text == '\n') text++;
     }
@@ -238,11 +238,13 @@ static int size_in_object(const cJSON *o, found_sizes *f) {
     double nm = number_of(o, "px_nm"), um = number_of(o, "PixelSizeUm"), hfw = number_of(o, "hfw");
     const cJSON *size = cJSON_GetObjectItemCaseSensitive(o, "pixel_size");
     const cJSON *resolution = cJSON_GetObjectItemCaseSensitive(o, "resolution");
-    if (nm > 0.0) f->both = nm;
+    if (nm > 0.0)
+        f->both = nm;
     else if (cJSON_IsObject(size) && number_of(size, "x") > 0.0) {
         f->x = number_of(size, "x") * 1e9;
         f->y = number_of(size, "y") * 1e9;
-    } else if (um > 0.0) f->both = um * 1e3;
+    } else if (um > 0.0)
+        f->both = um * 1e3;
     else if (hfw > 0.0 && cJSON_IsArray(resolution)) {
         const cJSON *width = cJSON_GetArrayItem(resolution, 0);
         if (cJSON_IsNumber(width) && width->valuedouble >= 1.0) f->both = hfw * 1e9 / width->valuedouble;
@@ -250,7 +252,8 @@ static int size_in_object(const cJSON *o, found_sizes *f) {
     return f->both > 0.0 || f->x > 0.0;
 }
 
-int scaletext_json(const char *text, size_t n, scale_rank rank, const char *name, const char *where, scales *s) {
+int scaletext_json(const char *text, size_t n, scale_rank rank, const char *name, const char *where,
+                   scales *s) {
     json j = { 0 };
     error e = { 0 };
     if (json_parse(text, n, where, &j, &e) != ST_OK) {
@@ -273,7 +276,8 @@ void scaletext_keyword(const char *keyword, const char *text, scales *s) {
         int unitless = 0;
         double nm = value_nm(text, unit, kind, &unitless);
         if (nm > 0.0) scales_add(s, SCALE_DESCRIPTION, "description", nm, nm);
-    } else if (*first == '{') (void)scaletext_json(first, strlen(first), SCALE_DESCRIPTION, "description", "description", s);
+    } else if (*first == '{')
+        (void)scaletext_json(first, strlen(first), SCALE_DESCRIPTION, "description", "description", s);
     else if (!strcmp(keyword, "Description") || !strcmp(keyword, "Comment"))
         (void)scaletext_lines(text, SCALE_DESCRIPTION, "description", "description", s);
 }

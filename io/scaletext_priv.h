@@ -1,13 +1,13 @@
-/* A pixel size in words: numbers, units, `key = value unit` lines, JSON keys. Shared by sidecars, TIFF descriptions
- * and PNG texts. Not for other rooms. */
+/* A pixel size in words: numbers, units, `key = value unit` lines, JSON keys. Shared by sidecars, TIFF
+ * descriptions and PNG texts. Not for other rooms. */
 #ifndef SWARD_IO_SCALETEXT_PRIV_H
 #define SWARD_IO_SCALETEXT_PRIV_H
 #include <stddef.h>
 
 #include "io/picture_priv.h"
 
-/* A number as instruments write them: blanks around, exponent of any length, a decimal comma when the text has no
- * point. 1 and *out, else 0. */
+/* A number as instruments write them: blanks around, exponent of any length, a decimal comma when the text
+ * has no point. 1 and *out, else 0. */
 int scaletext_number(const char *s, double *out);
 
 /* nm per unit of the length unit that is the whole of s (blanks around allowed), or 0: no length. */
@@ -16,12 +16,14 @@ double scaletext_unit(const char *s);
 /* "12.33 nm" -> nm. 1 and *nm, 0: no number or no length unit. */
 int scaletext_length(const char *s, double *nm);
 
-/* Lines in the generic forms (pixel size = 2.5 nm; px_nm = 5.58). A value without a unit is refused with a sentence
- * in s->note, which begins with `where`. Text is NUL-terminated. Returns 1 when a size was added. */
+/* Lines in the generic forms (pixel size = 2.5 nm; px_nm = 5.58). A value without a unit is refused with a
+ * sentence in s->note, which begins with `where`. Text is NUL-terminated. Returns 1 when a size was added. */
 int scaletext_lines(const char *text, scale_rank rank, const char *name, const char *where, scales *s);
 
-/* JSON with px_nm, pixel_size {x, y} in metres, PixelSizeUm, or hfw in metres with resolution [w, h]. 1: added. */
-int scaletext_json(const char *text, size_t n, scale_rank rank, const char *name, const char *where, scales *s);
+/* JSON with px_nm, pixel_size {x, y} in metres, PixelSizeUm, or hfw in metres with resolution [w, h]. 1:
+ * added. */
+int scaletext_json(const char *text, size_t n, scale_rank rank, const char *name, const char *where,
+                   scales *s);
 
 /* A PNG text chunk: keyword that names the pixel size itself, or a description in lines or JSON. */
 void scaletext_keyword(const char *keyword, const char *text, scales *s);

@@ -1,5 +1,5 @@
-/* Finds and reads the text file that belongs to a micrograph by its name. Only beside the picture, never along a
- * path written inside a file. UTF-8, Latin-1 and UTF-16 texts are read. */
+/* Finds and reads the text file that belongs to a micrograph by its name. Only beside the picture, never
+ * along a path written inside a file. UTF-8, Latin-1 and UTF-16 texts are read. */
 #include "io/sidecar_priv.h"
 
 #include <ctype.h>
@@ -27,7 +27,8 @@ static int equal_letters_n(const char *a, const char *b, size_t n) {
 /* Does `entry` read `name` (its first n letters) plus `ending`? 2: letter for letter, 1: but for the case. */
 static int is_beside(const char *entry, const char *name, size_t n, const char *ending) {
     size_t more = strlen(ending);
-    if (strlen(entry) != n + more || !equal_letters_n(entry, name, n) || !equal_letters_n(entry + n, ending, more))
+    if (strlen(entry) != n + more || !equal_letters_n(entry, name, n) ||
+        !equal_letters_n(entry + n, ending, more))
         return 0;
     return !strncmp(entry, name, n) && !strcmp(entry + n, ending) ? 2 : 1;
 }
@@ -61,7 +62,8 @@ static int read_one(const char *folder, const char *name, scales *s) {
         while (isspace((unsigned char)*start)) start++;
         if (*start == '{')
             (void)scaletext_json(start, n - (size_t)(start - text), SCALE_SIDECAR, "sidecar", name, s);
-        else (void)scaletext_lines(start, SCALE_SIDECAR, "sidecar", name, s);
+        else
+            (void)scaletext_lines(start, SCALE_SIDECAR, "sidecar", name, s);
     }
     free(text);
     free(path);
@@ -80,7 +82,8 @@ void sidecar_read(const char *path, scales *s) {
         for (int k = 0; k < KINDS; k++) {
             int match = is_beside(entry->d_name, name, kinds[k].whole_name ? whole : stem, kinds[k].ending);
             /* Of names that differ only in case: the exact one, else the first in byte order. */
-            if (match > exact[k] || (match && match == exact[k] && found[k] && strcmp(entry->d_name, found[k]) < 0)) {
+            if (match > exact[k] ||
+                (match && match == exact[k] && found[k] && strcmp(entry->d_name, found[k]) < 0)) {
                 free(found[k]);
                 found[k] = mem_text(entry->d_name);
                 exact[k] = match;

@@ -1,15 +1,15 @@
-/* Finds the info strip by what instruments paint: from its first row down, rows own few exact grey levels in long
- * runs, with crisp writing of a few levels in them, while rows of specimen carry noise or shading.
+/* Finds the info strip by what instruments paint: from its first row down, rows own few exact grey levels in
+ * long runs, with crisp writing of a few levels in them, while rows of specimen carry noise or shading.
  *
- * Every row of the lower part is described by the share of its commonest level, the share of equal neighbours, and its
- * small and large steps. A candidate is a row of (nearly) one level that the row above does not share; it is the
- * strip's first row when everything below is strip-like and holds writing. The topmost candidate that passes is taken,
- * so a line above the writing, or a frame around it, belongs to the strip. A frame may leave a few rows of specimen
- * below it. Where the exact search finds nothing it is repeated with a tolerance for strips that went through noise or
- * lossy compression.
+ * Every row of the lower part is described by the share of its commonest level, the share of equal
+ * neighbours, and its small and large steps. A candidate is a row of (nearly) one level that the row above
+ * does not share; it is the strip's first row when everything below is strip-like and holds writing. The
+ * topmost candidate that passes is taken, so a line above the writing, or a frame around it, belongs to the
+ * strip. A frame may leave a few rows of specimen below it. Where the exact search finds nothing it is
+ * repeated with a tolerance for strips that went through noise or lossy compression.
  *
- * The figures below are rules of this project, tried on the styles in tests/io/strip.c. Does not: read the writing, or
- * crop a block without any (a saturated band of specimen looks the same). */
+ * The figures below are rules of this project, tried on the styles in tests/io/strip.c. Does not: read the
+ * writing, or crop a block without any (a saturated band of specimen looks the same). */
 #include "io/strip_priv.h"
 
 #include <math.h>
@@ -27,7 +27,7 @@ typedef struct {
     float equal;         /* of neighbours: the same level */
     int large;           /* steps between neighbours as writing makes them */
     uint16_t small_in[PARTS], large_in[PARTS]; /* shading or noise, and writing, in eight parts of the row */
-    int exact;           /* one level, no exception */
+    int exact;                                 /* one level, no exception */
 } row_facts;
 
 typedef struct {
@@ -110,7 +110,8 @@ static int blocks(const row_facts *f) { return f->equal < 0.25f || f->share < 0.
 
 /* Sums over the rows t .. end - 1 of a block that may be the strip. */
 typedef struct {
-    double share, equal, other, second; /* means of the shares; of pixels off the row's level, sum and next level */
+    double share, equal, other,
+        second; /* means of the shares; of pixels off the row's level, sum and next level */
     long small[PARTS], large[PARTS];
     size_t written; /* rows with writing */
     int blocked;    /* a row that no strip has */
@@ -170,8 +171,8 @@ static void look_above(const view *v, size_t t, int mode, double *share, double 
 
 typedef enum { BEGINS_NOT, BEGINS_UNSURE, BEGINS } beginning;
 
-/* Row t begins something: it is of one level and the row above is not, or is of another. Unsure when the rows above
- * hold much of that level: black pores over a black strip, but also a flat ground between hillocks. */
+/* Row t begins something: it is of one level and the row above is not, or is of another. Unsure when the rows
+ * above hold much of that level: black pores over a black strip, but also a flat ground between hillocks. */
 static beginning begins(const view *v, size_t t) {
     const row_facts *f = &v->rows[t - v->first], *above = f - 1;
     if (!one_level(f)) return BEGINS_NOT;
@@ -181,7 +182,8 @@ static beginning begins(const view *v, size_t t) {
     double share, exact;
     look_above(v, t, f->mode, &share, &exact);
     if (share < 0.3) return BEGINS;
-    return share < 0.7 || (!v->window && f->exact && !above->exact && exact < 0.3) ? BEGINS_UNSURE : BEGINS_NOT;
+    return share < 0.7 || (!v->window && f->exact && !above->exact && exact < 0.3) ? BEGINS_UNSURE
+                                                                                   : BEGINS_NOT;
 }
 
 /* The level of most rows from t on: the paper of the strip. */
@@ -197,8 +199,9 @@ static int paper(const view *v, size_t t) {
     return level;
 }
 
-/* Are the rows from an unsure beginning to a sure one specimen? They are when they are shaded, or when they are no mere
- * line and have another level than the paper below; a line within a strip has the same paper around it. */
+/* Are the rows from an unsure beginning to a sure one specimen? They are when they are shaded, or when they
+ * are no mere line and have another level than the paper below; a line within a strip has the same paper
+ * around it. */
 static int is_specimen(const view *v, size_t unsure, size_t sure) {
     long small = 0, large = 0;
     for (size_t y = unsure; y < sure; y++) {
@@ -222,15 +225,18 @@ static size_t search(const view *v) {
             like = strip_like(v, &b);
         }
         if (!like) continue;
-        if (kind == BEGINS_UNSURE) unsure = t;
-        else if (!unsure) return rows;
-        else return is_specimen(v, unsure, t) ? rows : v->ny - unsure;
+        if (kind == BEGINS_UNSURE)
+            unsure = t;
+        else if (!unsure)
+            return rows;
+        else
+            return is_specimen(v, unsure, t) ? rows : v->ny - unsure;
     }
     return unsure ? v->ny - unsure : 0;
 }
 
-/* Describes rows from the bottom up, as far as a strip can reach and its surroundings are looked at: mostly a few rows,
- * since the first row of noisy specimen ends the search. */
+/* Describes rows from the bottom up, as far as a strip can reach and its surroundings are looked at: mostly a
+ * few rows, since the first row of noisy specimen ends the search. */
 static void describe(view *v, const float *px, const scratch *w) {
     size_t y = v->ny, top = v->first;
     v->lowest = v->ny - v->ny / 3;

@@ -1,6 +1,6 @@
-/* CSV reading after RFC 4180 (2005), tolerant where spreadsheets are: LF, CRLF or CR, semicolons or tabs, a byte
- * order mark, blank lines, empty cells behind the last column. All cells live in one copy of the text, which is
- * unquoted in place. Does not: guess encodings, types or decimal commas. */
+/* CSV reading after RFC 4180 (2005), tolerant where spreadsheets are: LF, CRLF or CR, semicolons or tabs, a
+ * byte order mark, blank lines, empty cells behind the last column. All cells live in one copy of the text,
+ * which is unquoted in place. Does not: guess encodings, types or decimal commas. */
 #include "io/table.h"
 
 #include <stdint.h>
@@ -46,13 +46,16 @@ static void skip_break(reader *r) {
     }
 }
 
-/* The character that separates most cells of the first line, quoted text aside; a comma when there is none. */
+/* The character that separates most cells of the first line, quoted text aside; a comma when there is none.
+ */
 static char find_separator(const char *s, const char *end) {
     size_t n[3] = { 0 };
     int quoted = 0;
     for (; s < end && (quoted || !is_break(*s)); s++) {
-        if (*s == '"') quoted = !quoted;
-        else if (!quoted) n[0] += *s == ',', n[1] += *s == ';', n[2] += *s == '\t';
+        if (*s == '"')
+            quoted = !quoted;
+        else if (!quoted)
+            n[0] += *s == ',', n[1] += *s == ';', n[2] += *s == '\t';
     }
     if (n[1] > n[0] && n[1] >= n[2]) return ';';
     return n[2] > n[0] ? '\t' : ',';
@@ -67,19 +70,23 @@ static status next_cell(reader *r, char **cell, int *last, error *e) {
     if (quoted) {
         for (r->next++;; r->next++) {
             if (r->next >= r->end)
-                return fail(e, ST_BAD_INPUT, "%s line %zu: a quote is opened here and never closed", r->what, start);
+                return fail(e, ST_BAD_INPUT, "%s line %zu: a quote is opened here and never closed", r->what,
+                            start);
             if (*r->next == '"') {
                 if (r->next + 1 >= r->end || r->next[1] != '"') break;
                 r->next++;
-            } else if (*r->next == '\n' || (*r->next == '\r' && r->next + 1 < r->end && r->next[1] != '\n')) r->line++;
+            } else if (*r->next == '\n' || (*r->next == '\r' && r->next + 1 < r->end && r->next[1] != '\n'))
+                r->line++;
             *to++ = *r->next;
         }
         r->next++;
     }
     while (r->next < r->end && *r->next != r->separator && !is_break(*r->next)) *to++ = *r->next++;
     *last = r->next >= r->end || is_break(*r->next);
-    if (*last) skip_break(r); /* before the terminator may overwrite the break */
-    else r->next++;
+    if (*last)
+        skip_break(r); /* before the terminator may overwrite the break */
+    else
+        r->next++;
     *cell = trimmed(from, to);
     return ST_OK;
 }
@@ -110,8 +117,10 @@ static int at_record(reader *r, status *st, error *e) {
         if (is_break(*p)) {
             r->next = p;
             skip_break(r);
-        } else if (*r->next == '#') *st = keep_comment(r, e);
-        else return 1;
+        } else if (*r->next == '#')
+            *st = keep_comment(r, e);
+        else
+            return 1;
     }
     return 0;
 }
@@ -127,19 +136,21 @@ static status read_header(reader *r, error *e) {
         status st = next_cell(r, &cell, &last, e);
         if (st != ST_OK) return st;
         if (c->n_columns == LIMIT_CSV_COLUMNS)
-            return fail(e, ST_BAD_INPUT, "%s line %zu: more than %zu columns", r->what, line, LIMIT_CSV_COLUMNS);
+            return fail(e, ST_BAD_INPUT, "%s line %zu: more than %zu columns", r->what, line,
+                        LIMIT_CSV_COLUMNS);
         c->names[c->n_columns++] = cell;
     }
     while (c->n_columns && !c->names[c->n_columns - 1][0]) c->n_columns--;
     if (!c->n_columns)
-        return fail(e, ST_BAD_INPUT, "%s line %zu: no header; the first line must name the columns", r->what, line);
+        return fail(e, ST_BAD_INPUT, "%s line %zu: no header; the first line must name the columns", r->what,
+                    line);
     for (size_t i = 0; i < c->n_columns; i++) {
         if (!c->names[i][0])
             return fail(e, ST_BAD_INPUT, "%s line %zu: column %zu has no name", r->what, line, i + 1);
         for (size_t k = 0; k < i; k++)
             if (!strcmp(c->names[i], c->names[k]))
-                return fail(e, ST_BAD_INPUT, "%s line %zu: column '%s' stands twice; rename or remove one", r->what,
-                            line, c->names[i]);
+                return fail(e, ST_BAD_INPUT, "%s line %zu: column '%s' stands twice; rename or remove one",
+                            r->what, line, c->names[i]);
     }
     return ST_OK;
 }
@@ -172,10 +183,12 @@ static status read_row(reader *r, char *empty, error *e) {
         char *cell;
         st = next_cell(r, &cell, &last, e);
         if (st != ST_OK) return st;
-        if (n < c->n_columns) row[n] = cell;
+        if (n < c->n_columns)
+            row[n] = cell;
         else if (cell[0])
-            return fail(e, ST_BAD_INPUT, "%s line %zu: more cells than the header has columns (%zu); from '%.40s' on",
-                        r->what, c->lines[c->n_rows], c->n_columns, cell);
+            return fail(e, ST_BAD_INPUT,
+                        "%s line %zu: more cells than the header has columns (%zu); from '%.40s' on", r->what,
+                        c->lines[c->n_rows], c->n_columns, cell);
     }
     for (; n < c->n_columns; n++) row[n] = empty;
     c->n_rows++;
@@ -199,7 +212,8 @@ status csv_parse(const char *bytes, size_t n, const char *what, csv *out, error 
     if (at_record(&r, &st, e)) {
         c.separator = r.separator = find_separator(r.next, r.end);
         st = read_header(&r, e);
-    } else if (st == ST_OK) st = fail(e, ST_BAD_INPUT, "%s: the table is empty; expected a header line", what);
+    } else if (st == ST_OK)
+        st = fail(e, ST_BAD_INPUT, "%s: the table is empty; expected a header line", what);
     while (st == ST_OK && at_record(&r, &st, e)) st = read_row(&r, empty, e);
     if (st == ST_OK) {
         *out = c;
@@ -244,8 +258,8 @@ status csv_numbers(const csv *c, const char *name, const char *what, double *out
     for (size_t i = 0; i < c->n_rows; i++) {
         const char *cell = csv_cell(c, i, column);
         if (!number_parse(cell, &out[i]))
-            return fail(e, ST_BAD_INPUT, "%s line %zu, %s: found '%.60s', expected a number", what, c->lines[i], name,
-                        cell);
+            return fail(e, ST_BAD_INPUT, "%s line %zu, %s: found '%.60s', expected a number", what,
+                        c->lines[i], name, cell);
     }
     return ST_OK;
 }

@@ -1,8 +1,8 @@
-/* TIFF in, through libtiff on the bytes in memory: strips and tiles, both byte orders, BigTIFF, every compression
- * libtiff was built with; grey, palette and RGB of 1, 2, 4, 8 or 16 bits, alpha ignored, chunky or separate planes.
- * Anything else (float, signed, 32 bit, CMYK, Lab ...) is refused by name. Of several pages the largest that is no
- * thumbnail or mask, the first of equals. Errors go to a handler of the one handle, never to a global or a terminal.
- * Source: TIFF 6.0 (1992); libtiff 4.5. */
+/* TIFF in, through libtiff on the bytes in memory: strips and tiles, both byte orders, BigTIFF, every
+ * compression libtiff was built with; grey, palette and RGB of 1, 2, 4, 8 or 16 bits, alpha ignored, chunky
+ * or separate planes. Anything else (float, signed, 32 bit, CMYK, Lab ...) is refused by name. Of several
+ * pages the largest that is no thumbnail or mask, the first of equals. Errors go to a handler of the one
+ * handle, never to a global or a terminal. Source: TIFF 6.0 (1992); libtiff 4.5. */
 #include <stdarg.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -64,8 +64,8 @@ static int on_map(thandle_t h, void **base, toff_t *size) {
 
 static void on_unmap(thandle_t h, void *base, toff_t size) { (void)h, (void)base, (void)size; }
 
-__attribute__((format(printf, 4, 0))) static int on_error(TIFF *tif, void *user, const char *module, const char *fmt,
-                                                          va_list args) {
+__attribute__((format(printf, 4, 0))) static int on_error(TIFF *tif, void *user, const char *module,
+                                                          const char *fmt, va_list args) {
     source *s = user;
     (void)tif, (void)module;
     if (!s->what[0]) vsnprintf(s->what, sizeof s->what, fmt, args);
@@ -73,8 +73,8 @@ __attribute__((format(printf, 4, 0))) static int on_error(TIFF *tif, void *user,
 }
 
 /* A JPEG stream that breaks off is only a warning to its decoder, which paints the rest grey. */
-__attribute__((format(printf, 4, 0))) static int on_warning(TIFF *tif, void *user, const char *module, const char *fmt,
-                                                            va_list args) {
+__attribute__((format(printf, 4, 0))) static int on_warning(TIFF *tif, void *user, const char *module,
+                                                            const char *fmt, va_list args) {
     source *s = user;
     (void)tif;
     if (module && strstr(module, "JPEG")) {
@@ -87,11 +87,13 @@ __attribute__((format(printf, 4, 0))) static int on_warning(TIFF *tif, void *use
 static TIFF *open_source(source *s, size_t max_pixels) {
     TIFFOpenOptions *o = TIFFOpenOptionsAlloc();
     if (!o) return NULL;
-    size_t ceiling = max_pixels > LIMIT_ALLOCATION_BYTES / 8 ? LIMIT_ALLOCATION_BYTES : max_pixels * 8 + (1u << 20);
+    size_t ceiling =
+        max_pixels > LIMIT_ALLOCATION_BYTES / 8 ? LIMIT_ALLOCATION_BYTES : max_pixels * 8 + (1u << 20);
     TIFFOpenOptionsSetMaxSingleMemAlloc(o, (tmsize_t)ceiling);
     TIFFOpenOptionsSetErrorHandlerExtR(o, on_error, s);
     TIFFOpenOptionsSetWarningHandlerExtR(o, on_warning, s);
-    TIFF *tif = TIFFClientOpenExt("picture", "r", s, on_read, on_write, on_seek, on_close, on_size, on_map, on_unmap, o);
+    TIFF *tif = TIFFClientOpenExt("picture", "r", s, on_read, on_write, on_seek, on_close, on_size, on_map,
+                                  on_unmap, o);
     TIFFOpenOptionsFree(o);
     return tif;
 }
@@ -99,14 +101,14 @@ static TIFF *open_source(source *s, size_t max_pixels) {
 typedef struct {
     uint32_t nx, ny, tile_nx, tile_ny; /* tile_nx 0: strips */
     uint16_t bits, samples, photometric, compression;
-    int planes;            /* 1 grey or palette, 3 RGB */
+    int planes; /* 1 grey or palette, 3 RGB */
     int separate;
     float grey[256];       /* level of each code up to 8 bits, palette included */
     uint8_t coloured[256]; /* palette entries that are no grey */
 } layout;
 
-/* Level of a palette: entries are 16 bits; writers of grey ramps put the 8-bit level in the high byte, with or without
- * a copy in the low one, and sloppy ones in the low byte alone. */
+/* Level of a palette: entries are 16 bits; writers of grey ramps put the 8-bit level in the high byte, with
+ * or without a copy in the low one, and sloppy ones in the low byte alone. */
 static int read_palette(TIFF *tif, layout *l) {
     uint16_t *r, *g, *b;
     if (!TIFFGetField(tif, TIFFTAG_COLORMAP, &r, &g, &b)) return 0;
@@ -125,29 +127,40 @@ static int read_palette(TIFF *tif, layout *l) {
 
 static const char *photometric_name(uint16_t p) {
     switch (p) {
-    case PHOTOMETRIC_MASK: return "a transparency mask";
-    case PHOTOMETRIC_SEPARATED: return "CMYK inks";
-    case PHOTOMETRIC_YCBCR: return "YCbCr colour";
+    case PHOTOMETRIC_MASK:
+        return "a transparency mask";
+    case PHOTOMETRIC_SEPARATED:
+        return "CMYK inks";
+    case PHOTOMETRIC_YCBCR:
+        return "YCbCr colour";
     case PHOTOMETRIC_CIELAB:
     case PHOTOMETRIC_ICCLAB:
-    case PHOTOMETRIC_ITULAB: return "Lab colour";
-    case PHOTOMETRIC_CFA: return "a colour filter array";
+    case PHOTOMETRIC_ITULAB:
+        return "Lab colour";
+    case PHOTOMETRIC_CFA:
+        return "a colour filter array";
     case PHOTOMETRIC_LOGL:
-    case PHOTOMETRIC_LOGLUV: return "logarithmic light";
-    default: return "an unknown colour space";
+    case PHOTOMETRIC_LOGLUV:
+        return "logarithmic light";
+    default:
+        return "an unknown colour space";
     }
 }
 
 static status check_samples(TIFF *tif, const layout *l, error *e) {
     uint16_t format = SAMPLEFORMAT_UINT;
-    static const char *const kinds[] = { "", "unsigned", "signed", "floating-point", "untyped", "complex integer", "complex" };
+    static const char *const kinds[] = { "",        "unsigned",        "signed", "floating-point",
+                                         "untyped", "complex integer", "complex" };
     (void)TIFFGetFieldDefaulted(tif, TIFFTAG_SAMPLEFORMAT, &format);
     int known = l->bits == 1 || l->bits == 2 || l->bits == 4 || l->bits == 8 || l->bits == 16;
     if ((format != SAMPLEFORMAT_UINT && format != SAMPLEFORMAT_VOID) || !known)
-        return fail(e, ST_BAD_INPUT, "holds %s samples of %u bits; unsigned 1, 2, 4, 8 or 16 bits are read: export as 8 or "
-                    "16 bit grey", format < 7 ? kinds[format] : "unknown", l->bits);
+        return fail(e, ST_BAD_INPUT,
+                    "holds %s samples of %u bits; unsigned 1, 2, 4, 8 or 16 bits are read: export as 8 or "
+                    "16 bit grey",
+                    format < 7 ? kinds[format] : "unknown", l->bits);
     if (!TIFFIsCODECConfigured(l->compression))
-        return fail(e, ST_BAD_INPUT, "uses TIFF compression %u, which is not read; export without compression",
+        return fail(e, ST_BAD_INPUT,
+                    "uses TIFF compression %u, which is not read; export without compression",
                     l->compression);
     return ST_OK;
 }
@@ -164,15 +177,17 @@ static status read_layout(TIFF *tif, layout *l, error *e) {
     if (st != ST_OK) return st;
     if (!TIFFGetField(tif, TIFFTAG_PHOTOMETRIC, &l->photometric))
         l->photometric = l->samples >= 3 ? PHOTOMETRIC_RGB : PHOTOMETRIC_MINISBLACK;
-    if (l->photometric == PHOTOMETRIC_YCBCR && l->compression == COMPRESSION_JPEG && config == PLANARCONFIG_CONTIG &&
-        TIFFSetField(tif, TIFFTAG_JPEGCOLORMODE, JPEGCOLORMODE_RGB))
+    if (l->photometric == PHOTOMETRIC_YCBCR && l->compression == COMPRESSION_JPEG &&
+        config == PLANARCONFIG_CONTIG && TIFFSetField(tif, TIFFTAG_JPEGCOLORMODE, JPEGCOLORMODE_RGB))
         l->photometric = PHOTOMETRIC_RGB; /* the codec converts */
     l->separate = config == PLANARCONFIG_SEPARATE && l->samples > 1;
     l->planes = l->photometric == PHOTOMETRIC_RGB ? 3 : 1;
     if (l->bits <= 8) level_table(l->bits, l->grey);
     if (l->photometric > PHOTOMETRIC_PALETTE || l->samples < l->planes || (l->planes == 3 && l->bits < 8))
-        return fail(e, ST_BAD_INPUT, "holds %s in %u samples of %u bits, which is not read; export as grey or RGB",
-                    l->photometric > PHOTOMETRIC_PALETTE ? photometric_name(l->photometric) : "colour", l->samples, l->bits);
+        return fail(e, ST_BAD_INPUT,
+                    "holds %s in %u samples of %u bits, which is not read; export as grey or RGB",
+                    l->photometric > PHOTOMETRIC_PALETTE ? photometric_name(l->photometric) : "colour",
+                    l->samples, l->bits);
     if (l->photometric == PHOTOMETRIC_PALETTE && (l->bits > 8 || !read_palette(tif, l)))
         return fail(e, ST_BAD_INPUT, "is damaged: a palette picture without a usable palette");
     if (TIFFIsTiled(tif)) {
@@ -188,7 +203,8 @@ static float level16(const layout *l, unsigned v) {
 }
 
 /* n grey pixels from the rows of one to three planes; `step` samples from pixel to pixel. */
-static void to_grey(const layout *l, const uint8_t *const plane[3], size_t step, size_t n, float *to, flags *f) {
+static void to_grey(const layout *l, const uint8_t *const plane[3], size_t step, size_t n, float *to,
+                    flags *f) {
     if (l->planes == 1 && l->bits == 16) {
         for (size_t x = 0; x < n; x++) {
             uint16_t v;
@@ -196,7 +212,8 @@ static void to_grey(const layout *l, const uint8_t *const plane[3], size_t step,
             to[x] = level16(l, v);
         }
     } else if (l->planes == 1) {
-        unsigned bits = l->bits, mask = (1u << bits) - 1u, flip = l->photometric == PHOTOMETRIC_MINISWHITE ? mask : 0;
+        unsigned bits = l->bits, mask = (1u << bits) - 1u,
+                 flip = l->photometric == PHOTOMETRIC_MINISWHITE ? mask : 0;
         unsigned colour = 0;
         for (size_t x = 0; x < n && bits == 8; x++) {
             unsigned v = plane[0][x * step] ^ flip;
@@ -241,22 +258,27 @@ static status read_strips(TIFF *const tif[3], const layout *l, const source *s, 
     for (uint32_t y = 0; st == ST_OK && y < l->ny; y++) {
         const uint8_t *plane[3];
         for (int k = 0; k < handles; k++)
-            if (TIFFReadScanline(tif[k], row + (size_t)k * bytes, y, (uint16_t)k) != 1) st = broken(s, "row", y, e);
+            if (TIFFReadScanline(tif[k], row + (size_t)k * bytes, y, (uint16_t)k) != 1)
+                st = broken(s, "row", y, e);
         if (st == ST_OK && s->lossy_warning) st = broken(s, "row", y, e);
         for (int k = 0; k < 3; k++) plane[k] = row + (size_t)k * (l->separate ? bytes : width);
-        if (st == ST_OK) to_grey(l, plane, l->separate ? 1 : l->samples, l->nx, p->px + (size_t)y * l->nx, &p->flags);
+        if (st == ST_OK)
+            to_grey(l, plane, l->separate ? 1 : l->samples, l->nx, p->px + (size_t)y * l->nx, &p->flags);
     }
     free(row);
     return st;
 }
 
-static void place_tile(const layout *l, const uint8_t *tile, size_t size, uint32_t x0, uint32_t y0, picture *p) {
+static void place_tile(const layout *l, const uint8_t *tile, size_t size, uint32_t x0, uint32_t y0,
+                       picture *p) {
     size_t samples = l->separate ? 1 : l->samples, width = l->bits / 8u;
     size_t row_bytes = ((size_t)l->tile_nx * samples * l->bits + 7) / 8;
-    uint32_t nx = l->nx - x0 < l->tile_nx ? l->nx - x0 : l->tile_nx, ny = l->ny - y0 < l->tile_ny ? l->ny - y0 : l->tile_ny;
+    uint32_t nx = l->nx - x0 < l->tile_nx ? l->nx - x0 : l->tile_nx,
+             ny = l->ny - y0 < l->tile_ny ? l->ny - y0 : l->tile_ny;
     for (uint32_t y = 0; y < ny; y++) {
         const uint8_t *plane[3];
-        for (int k = 0; k < 3; k++) plane[k] = tile + (size_t)k * (l->separate ? size : width) + y * row_bytes;
+        for (int k = 0; k < 3; k++)
+            plane[k] = tile + (size_t)k * (l->separate ? size : width) + y * row_bytes;
         to_grey(l, plane, samples, nx, p->px + (size_t)(y0 + y) * l->nx + x0, &p->flags);
     }
 }
@@ -271,7 +293,8 @@ static status read_tiles(TIFF *tif, const layout *l, const source *s, picture *p
         (double)l->tile_nx * l->tile_ny > 64.0 * ((double)l->nx + 1024.0) * ((double)l->ny + 1024.0))
         return fail(e, ST_NO_MEMORY, "its tiles of %u x %u pixels are too large", l->tile_nx, l->tile_ny);
     uint8_t *tile = mem_array((size_t)planes, size);
-    if (!tile) return fail(e, ST_NO_MEMORY, "not enough memory for tiles of %u x %u pixels", l->tile_nx, l->tile_ny);
+    if (!tile)
+        return fail(e, ST_NO_MEMORY, "not enough memory for tiles of %u x %u pixels", l->tile_nx, l->tile_ny);
     status st = ST_OK;
     for (uint32_t y = 0; st == ST_OK && y < l->ny; y += l->tile_ny)
         for (uint32_t x = 0; st == ST_OK && x < l->nx; x += l->tile_nx) {
@@ -299,7 +322,8 @@ static tdir_t choose_page(TIFF *tif, size_t *pages) {
         (void)TIFFGetField(tif, TIFFTAG_IMAGELENGTH, &ny);
         (void)TIFFGetField(tif, TIFFTAG_SUBFILETYPE, &kind);
         (void)TIFFGetField(tif, TIFFTAG_OSUBFILETYPE, &old_kind);
-        int secondary = (kind & (FILETYPE_REDUCEDIMAGE | FILETYPE_MASK)) || old_kind == OFILETYPE_REDUCEDIMAGE;
+        int secondary =
+            (kind & (FILETYPE_REDUCEDIMAGE | FILETYPE_MASK)) || old_kind == OFILETYPE_REDUCEDIMAGE;
         double area = secondary ? 0.0 : (double)nx * ny;
         if (area > best_area) {
             best_area = area;
@@ -326,7 +350,8 @@ static status read_page(TIFF *const tif[3], const source *s, size_t max_pixels, 
     status st = read_layout(tif[0], &l, e);
     if (st != ST_OK) return st;
     if (claims_too_much(&l, s->n))
-        return fail(e, ST_BAD_INPUT, "the file is too short for the %u x %u pixels it claims; it is truncated", l.nx, l.ny);
+        return fail(e, ST_BAD_INPUT,
+                    "the file is too short for the %u x %u pixels it claims; it is truncated", l.nx, l.ny);
     st = picture_make(p, l.nx, l.ny, max_pixels, e);
     if (st != ST_OK) return st;
     p->bit_depth = l.bits;

@@ -1,9 +1,10 @@
-/* Instrument blocks in private TIFF tags, told by tag number: 34118 (pairs of lines: item, then `Label = value unit`)
- * and 34682 (INI sections, SI units). The layouts are no published standard; what is read here was seen in files.
+/* Instrument blocks in private TIFF tags, told by tag number: 34118 (pairs of lines: item, then `Label =
+ * value unit`) and 34682 (INI sections, SI units). The layouts are no published standard; what is read here
+ * was seen in files.
  *
- * 34118: the key that looks right, and the numbers before the first pair, refer to a display 1024 pixels wide, not to
- * the stored picture; only `AP_IMAGE_PIXEL_SIZE` and the field width do. 34682: metres per pixel; the strip is appended
- * below the rows that `ResolutionY` counts. Magnification is never used. */
+ * 34118: the key that looks right, and the numbers before the first pair, refer to a display 1024 pixels
+ * wide, not to the stored picture; only `AP_IMAGE_PIXEL_SIZE` and the field width do. 34682: metres per
+ * pixel; the strip is appended below the rows that `ResolutionY` counts. Magnification is never used. */
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -64,7 +65,8 @@ static double leading_number(const char *text, int k) {
 }
 
 static void item_time(const char *text, picture *p) {
-    static const char *const months[] = { "Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec" };
+    static const char *const months[] = { "Jan", "Feb", "Mar", "Apr", "May", "Jun",
+                                          "Jul", "Aug", "Sep", "Oct", "Nov", "Dec" };
     char date[LINE], clock[LINE], name[4] = "";
     int y, d, h = 0, mi = 0, s = 0;
     if (!item_value(text, "AP_DATE", date) || sscanf(date, "%2d %3s %4d", &d, name, &y) != 3) return;
@@ -77,25 +79,30 @@ void tag_34118_read(const char *text, size_t nx, picture *p) {
     static const char name[] = "tag 34118";
     char value[LINE], a[NUMBER_TEXT], b[NUMBER_TEXT];
     double width = (double)nx, display = 1024.0 / width, store = width;
-    if (item_value(text, "DP_IMAGE_STORE", value) && sscanf(value, "%lf", &store) == 1 && !(store >= 1.0)) store = width;
-    const double from[] = { item_length(text, "AP_IMAGE_PIXEL_SIZE") * store / width, item_length(text, "AP_WIDTH") / width,
-                            leading_number(text, 3) * 1e9 * display, item_length(text, "AP_PIXEL_SIZE") * display };
+    if (item_value(text, "DP_IMAGE_STORE", value) && sscanf(value, "%lf", &store) == 1 && !(store >= 1.0))
+        store = width;
+    const double from[] = { item_length(text, "AP_IMAGE_PIXEL_SIZE") * store / width,
+                            item_length(text, "AP_WIDTH") / width, leading_number(text, 3) * 1e9 * display,
+                            item_length(text, "AP_PIXEL_SIZE") * display };
     int best = -1;
     for (int k = 0; k < 4; k++) {
         if (!(from[k] > 0.0)) continue;
-        if (best < 0) best = k;
+        if (best < 0)
+            best = k;
         else if (k < 3 && fabs(from[k] / from[best] - 1.0) > 0.002 && fabs(store - width) < 0.5)
-            note_add(p->note, "%s: its own keys disagree, %s and %s nm per pixel; was the picture resized or cropped?", name,
-                     number_text(from[best], 5, a), number_text(from[k], 5, b));
+            note_add(p->note,
+                     "%s: its own keys disagree, %s and %s nm per pixel; was the picture resized or cropped?",
+                     name, number_text(from[best], 5, a), number_text(from[k], 5, b));
     }
     if (best >= 0) scales_add(&p->scales, SCALE_TAG, name, from[best], from[best]);
     if (fabs(store - width) > 0.5)
-        note_add(p->note, "%s: stored %s pixels wide, now %s; the pixel size was scaled.", name, number_text(store, 6, a),
-                 number_text(width, 6, b));
+        note_add(p->note, "%s: stored %s pixels wide, now %s; the pixel size was scaled.", name,
+                 number_text(store, 6, a), number_text(width, 6, b));
     item_time(text, p);
 }
 
-/* The value of `key` in the first section called `section` (a trailing '*' matches any ending). 0: absent or empty. */
+/* The value of `key` in the first section called `section` (a trailing '*' matches any ending). 0: absent or
+ * empty. */
 static int ini_value(const char *text, const char *section, const char *key, char value[LINE]) {
     char line[LINE];
     int inside = 0;
@@ -141,7 +148,8 @@ static void ini_time(const char *text, picture *p) {
 void tag_34682_read(const char *text, size_t nx, size_t ny, picture *p) {
     static const char name[] = "tag 34682";
     char scan[LINE] = "", beam[LINE] = "", a[NUMBER_TEXT], b[NUMBER_TEXT];
-    double columns = ini_number(text, "Image", "ResolutionX"), rows = ini_number(text, "Image", "ResolutionY");
+    double columns = ini_number(text, "Image", "ResolutionX"),
+           rows = ini_number(text, "Image", "ResolutionY");
     (void)ini_value(text, "Beam", "Scan", scan);
     (void)ini_value(text, "Beam", "Beam", beam);
     double x = ini_number(text, "Scan", "PixelWidth"), y = ini_number(text, "Scan", "PixelHeight");
@@ -150,8 +158,9 @@ void tag_34682_read(const char *text, size_t nx, size_t ny, picture *p) {
     double resized = columns > 0.0 ? columns / (double)nx : 1.0;
     scales_add(&p->scales, SCALE_TAG, name, x * 1e9 * resized, y * 1e9 * resized);
     if (fabs(resized - 1.0) > 1e-6)
-        note_add(p->note, "%s: recorded %s pixels wide, now %s; the pixel size was scaled.", name, number_text(columns, 6, a),
-                 number_text((double)nx, 6, b));
-    else if (rows < (double)ny && (double)ny - rows < (double)ny / 3.0) p->strip_stated = ny - (size_t)rows;
+        note_add(p->note, "%s: recorded %s pixels wide, now %s; the pixel size was scaled.", name,
+                 number_text(columns, 6, a), number_text((double)nx, 6, b));
+    else if (rows < (double)ny && (double)ny - rows < (double)ny / 3.0)
+        p->strip_stated = ny - (size_t)rows;
     ini_time(text, p);
 }

@@ -1,6 +1,6 @@
-/* What the tags of a TIFF say beside its pixels: resolution (TIFF 6.0, 1992, tags 282, 283, 296), description (270),
- * date (306), and private instrument blocks, which their own file understands.
- * A description with a line `unit=` redefines the resolution: pixels per that unit, whatever tag 296 says. */
+/* What the tags of a TIFF say beside its pixels: resolution (TIFF 6.0, 1992, tags 282, 283, 296), description
+ * (270), date (306), and private instrument blocks, which their own file understands. A description with a
+ * line `unit=` redefines the resolution: pixels per that unit, whatever tag 296 says. */
 #include "io/tiff_tags_priv.h"
 
 #include <math.h>
@@ -32,7 +32,8 @@ static int description_unit(const char *text, const char *key, double *nm) {
 
 static void read_resolution(TIFF *tif, double unit_nm, scale_rank rank, const char *name, picture *p) {
     float x = 0.0f, y = 0.0f;
-    if (!TIFFGetField(tif, TIFFTAG_XRESOLUTION, &x) || !(x > 0.0f)) return; /* a denominator of 0 reads as 0 */
+    if (!TIFFGetField(tif, TIFFTAG_XRESOLUTION, &x) || !(x > 0.0f))
+        return; /* a denominator of 0 reads as 0 */
     if (!TIFFGetField(tif, TIFFTAG_YRESOLUTION, &y) || !(y > 0.0f)) y = x;
     scales_add(&p->scales, rank, name, unit_nm / (double)x, unit_nm / (double)y);
 }
@@ -47,12 +48,16 @@ static void read_texts(TIFF *tif, picture *p) {
         read_resolution(tif, nm, SCALE_DESCRIPTION, "description", p);
         return;
     }
-    read_resolution(tif, unit == RESUNIT_INCH ? 2.54e7 : unit == RESUNIT_CENTIMETER ? 1e7 : 0.0, SCALE_RESOLUTION,
-                    "resolution", p);
+    read_resolution(tif,
+                    unit == RESUNIT_INCH         ? 2.54e7
+                    : unit == RESUNIT_CENTIMETER ? 1e7
+                                                 : 0.0,
+                    SCALE_RESOLUTION, "resolution", p);
     if (!text) return;
     const char *first = text + strspn(text, " \t\r\n");
     if (*first == '{')
-        (void)scaletext_json(first, strlen(first), SCALE_DESCRIPTION, "description", "ImageDescription", &p->scales);
+        (void)scaletext_json(first, strlen(first), SCALE_DESCRIPTION, "description", "ImageDescription",
+                             &p->scales);
     else if (*first != '<')
         (void)scaletext_lines(text, SCALE_DESCRIPTION, "description", "ImageDescription", &p->scales);
 }

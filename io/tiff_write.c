@@ -1,6 +1,6 @@
-/* A grey TIFF, uncompressed, one strip, little endian: the plainest file every program reads. The ten tags of a
- * baseline grey picture (TIFF 6.0, 1992, section 4) are laid down by hand: bytes then depend on nothing but the
- * pixels. Resolution is in pixels per centimetre. */
+/* A grey TIFF, uncompressed, one strip, little endian: the plainest file every program reads. The ten tags of
+ * a baseline grey picture (TIFF 6.0, 1992, section 4) are laid down by hand: bytes then depend on nothing but
+ * the pixels. Resolution is in pixels per centimetre. */
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -37,8 +37,8 @@ static void put_rational(cursor *c, double v) {
 
 status tiff_write(const char *path, const void *samples, const png_format *f, error *e) {
     if (f->channels != 1 || (f->bit_depth != 8 && f->bit_depth != 16))
-        return fail(e, ST_BUG, "TIFF is written in grey of 8 or 16 bits, not %d channels of %d bits", f->channels,
-                    f->bit_depth);
+        return fail(e, ST_BUG, "TIFF is written in grey of 8 or 16 bits, not %d channels of %d bits",
+                    f->channels, f->bit_depth);
     if (!f->nx || !f->ny || f->nx > LIMIT_SIDE || f->ny > LIMIT_SIDE || f->nx * f->ny > LIMIT_PIXELS)
         return fail(e, ST_BAD_INPUT, "a picture of %zu x %zu pixels cannot be written", f->nx, f->ny);
     double per_cm = f->px_nm > 0.0 ? 1e7 / f->px_nm : 0.0;
@@ -71,7 +71,8 @@ status tiff_write(const char *path, const void *samples, const png_format *f, er
     put(&c, 0, 4);
     put_rational(&c, scaled ? per_cm : 1.0);
     put_rational(&c, scaled ? per_cm : 1.0);
-    if (width == 1) memcpy(c.to, samples, data);
+    if (width == 1)
+        memcpy(c.to, samples, data);
     else
         for (size_t i = 0; i < f->nx * f->ny; i++) put(&c, ((const uint16_t *)samples)[i], 2);
     status st = file_write(path, bytes, head + data, e);

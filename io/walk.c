@@ -1,5 +1,6 @@
-/* The walk through a folder of micrographs: every regular file that is wanted, in byte order of the relative names,
- * whatever order the file system keeps. Links are followed only within the root and never in a circle. */
+/* The walk through a folder of micrographs: every regular file that is wanted, in byte order of the relative
+ * names, whatever order the file system keeps. Links are followed only within the root and never in a circle.
+ */
 #define _XOPEN_SOURCE 700 /* realpath */
 #include <dirent.h>
 #include <errno.h>
@@ -26,12 +27,13 @@ typedef struct {
     place above[LIMIT_FOLDER_DEPTH + 1]; /* the folders we stand in */
 } walker;
 
-/* sward's own description of an output folder names the program in its first lines; a data package of somebody
- * else is an ordinary folder. */
+/* sward's own description of an output folder names the program in its first lines; a data package of
+ * somebody else is an ordinary folder. */
 static int is_own_output(const char *folder) {
     char *path = path_join(folder, "datapackage.json"), *text = NULL;
     size_t n = 0;
-    int own = path && file_read(path, LIMIT_TEXT_FILE_BYTES, &text, &n, NULL) == ST_OK && strstr(text, "sward") != NULL;
+    int own = path && file_read(path, LIMIT_TEXT_FILE_BYTES, &text, &n, NULL) == ST_OK &&
+              strstr(text, "sward") != NULL;
     free(text);
     free(path);
     return own;
@@ -49,7 +51,8 @@ static int link_stays_inside(const walker *w, const char *path) {
 static status take_file(walker *w, char **relative, error *e) {
     if (w->keep && !w->keep(*relative)) return ST_OK;
     if (w->list.n == LIMIT_FOLDER_FILES)
-        return fail(e, ST_NO_MEMORY, "%s: more than %zu files; split the folder", w->root, LIMIT_FOLDER_FILES);
+        return fail(e, ST_NO_MEMORY, "%s: more than %zu files; split the folder", w->root,
+                    LIMIT_FOLDER_FILES);
     if (w->list.n == w->room) {
         size_t room = w->room ? 2 * w->room : 64;
         char **paths = mem_grow(w->list.paths, room, sizeof *paths);
@@ -75,7 +78,8 @@ static status visit(walker *w, const char *folder, const char *name, int depth, 
     }
     if (lstat(path, &info)) goto done; /* gone since we listed it */
     if (S_ISLNK(info.st_mode) && (!link_stays_inside(w, path) || stat(path, &info))) goto done;
-    if (S_ISREG(info.st_mode)) st = take_file(w, &relative, e);
+    if (S_ISREG(info.st_mode))
+        st = take_file(w, &relative, e);
     else if (S_ISDIR(info.st_mode) && depth < LIMIT_FOLDER_DEPTH) {
         for (int i = 0; i <= depth; i++)
             if (w->above[i].device == info.st_dev && w->above[i].node == info.st_ino) goto done;
@@ -117,7 +121,8 @@ status folder_walk(const char *root, int (*keep)(const char *relative), file_lis
     struct stat info;
     w.real_root = realpath(w.root, NULL);
     status st = ST_OK;
-    if (!w.real_root || stat(w.root, &info)) st = fail(e, ST_IO, "%s: no such folder", w.root);
+    if (!w.real_root || stat(w.root, &info))
+        st = fail(e, ST_IO, "%s: no such folder", w.root);
     else {
         w.above[0] = (place){ info.st_dev, info.st_ino };
         st = walk_folder(&w, "", 0, e);

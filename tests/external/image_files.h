@@ -1,4 +1,5 @@
-/* Public image files of two Debian packages, found where those packages put them; programs that judge from outside. */
+/* Public image files of two Debian packages, found where those packages put them; programs that judge from
+ * outside. */
 #ifndef SWARD_TESTS_EXTERNAL_IMAGE_FILES_H
 #define SWARD_TESTS_EXTERNAL_IMAGE_FILES_H
 #include <fcntl.h>
@@ -41,7 +42,8 @@ static inline int run_program(const char *const *arguments) {
 
 typedef status decoder_fn(const uint8_t *, size_t, size_t, picture *, error *);
 
-static inline status decode_path(decoder_fn *decode, const char *folder, const char *name, picture *p, error *e) {
+static inline status decode_path(decoder_fn *decode, const char *folder, const char *name, picture *p,
+                                 error *e) {
     char *path = path_join(folder, name), *bytes = NULL;
     size_t n = 0;
     status st = file_read(path, LIMIT_FILE_BYTES, &bytes, &n, e);
@@ -65,7 +67,8 @@ static inline double mean_level(const picture *p) {
 }
 
 static inline int same_plane(const picture *a, const picture *b) {
-    return a->px && b->px && a->nx == b->nx && a->ny == b->ny && !memcmp(a->px, b->px, a->nx * a->ny * sizeof *a->px);
+    return a->px && b->px && a->nx == b->nx && a->ny == b->ny &&
+           !memcmp(a->px, b->px, a->nx * a->ny * sizeof *a->px);
 }
 
 #endif

@@ -14,10 +14,12 @@ static void grey_sums(const char *suite) {
         size_t nx;
         int bits;
         double sum;
-    } t[] = { { "basn0g01.png", 32, 1, 500 },        { "basn0g02.png", 32, 2, 1536 },    { "basn0g04.png", 32, 4, 7168 },
-              { "basn0g08.png", 32, 8, 130056 },     { "basn0g16.png", 32, 16, 37857070 }, { "basn0g01-30.png", 30, 1, 498 },
-              { "basn0g02-29.png", 29, 2, 1266 },    { "basn0g04-31.png", 31, 4, 6510 },  { "basn4a08.png", 32, 8, 130080 },
-              { "basn4a16.png", 32, 16, 33242928 },  { "ftbbn0g04.png", 32, 4, 10343 },   { "ftbwn0g16.png", 32, 16, 45185017 },
+    } t[] = { { "basn0g01.png", 32, 1, 500 },       { "basn0g02.png", 32, 2, 1536 },
+              { "basn0g04.png", 32, 4, 7168 },      { "basn0g08.png", 32, 8, 130056 },
+              { "basn0g16.png", 32, 16, 37857070 }, { "basn0g01-30.png", 30, 1, 498 },
+              { "basn0g02-29.png", 29, 2, 1266 },   { "basn0g04-31.png", 31, 4, 6510 },
+              { "basn4a08.png", 32, 8, 130080 },    { "basn4a16.png", 32, 16, 33242928 },
+              { "ftbbn0g04.png", 32, 4, 10343 },    { "ftbwn0g16.png", 32, 16, 45185017 },
               { "ftp0n0g08.png", 32, 8, 117825 } };
     for (size_t i = 0; i < sizeof t / sizeof t[0]; i++) {
         picture p = { 0 };
@@ -35,14 +37,18 @@ static void colour_sums(const char *suite) {
     static const struct {
         const char *name;
         double top, r, g, b;
-    } t[] = { { "basn2c08.png", 255, 195840, 195840, 195840 },       { "basn2c16.png", 65535, 33553920, 33553920, 11534120 },
-              { "basn6a08.png", 255, 103072, 195840, 96992 },        { "basn6a16.png", 65535, 33553652, 33553652, 16776692 },
-              { "basn3p08.png", 255, 138560, 138560, 114112 },       { "basn3p04-31i.png", 255, 66351, 177480, 125579 } };
+    } t[] = { { "basn2c08.png", 255, 195840, 195840, 195840 },
+              { "basn2c16.png", 65535, 33553920, 33553920, 11534120 },
+              { "basn6a08.png", 255, 103072, 195840, 96992 },
+              { "basn6a16.png", 65535, 33553652, 33553652, 16776692 },
+              { "basn3p08.png", 255, 138560, 138560, 114112 },
+              { "basn3p04-31i.png", 255, 66351, 177480, 125579 } };
     for (size_t i = 0; i < sizeof t / sizeof t[0]; i++) {
         picture p = { 0 };
         error e = { 0 };
         CHECK(decode_path(png_decode, suite, t[i].name, &p, &e) == ST_OK && p.flags == FLAG(COLOUR));
-        double n = (double)(p.nx * p.ny), want = (0.2126 * t[i].r + 0.7152 * t[i].g + 0.0722 * t[i].b) / (n * t[i].top);
+        double n = (double)(p.nx * p.ny),
+               want = (0.2126 * t[i].r + 0.7152 * t[i].g + 0.0722 * t[i].b) / (n * t[i].top);
         CHECK_SOURCE(mean_level(&p), want, 1e-6, "D-01: " SUITE ", luminance weights of Rec. ITU-R BT.709");
         picture_free(&p);
     }
@@ -60,7 +66,8 @@ static void every_pixel(const char *suite) {
         char *next = NULL;
         double want = (double)strtoul(at, &next, 16);
         if (next == at) break;
-        CHECK_SOURCE(round((double)p.px[seen] * 65535.0), want, 0.0, "D-01: basn0g16.sng, the file's pixels as text");
+        CHECK_SOURCE(round((double)p.px[seen] * 65535.0), want, 0.0,
+                     "D-01: basn0g16.sng, the file's pixels as text");
         at = next;
     }
     CHECK(seen == 32 * 32);
@@ -86,11 +93,12 @@ static void scales_and_damage(const char *folder, const char *suite) {
     CHECK(isnan(m.px_nm) && strstr(m.note, "screen or print resolution"));
     picture_free(&a);
 
-    static const char *const broken[] = { "invalid-crc32.png", "invalid-noend.png", "invalid-palette.png", "invalid-trunc.png",
-                                          "invalid-zlib.png" };
+    static const char *const broken[] = { "invalid-crc32.png", "invalid-noend.png", "invalid-palette.png",
+                                          "invalid-trunc.png", "invalid-zlib.png" };
     for (size_t i = 0; i < sizeof broken / sizeof broken[0]; i++) { /* D-09 */
         e = (error){ 0 };
-        CHECK(decode_path(png_decode, folder, broken[i], &a, &e) == ST_BAD_INPUT && strlen(e.text) > 20 && !a.px);
+        CHECK(decode_path(png_decode, folder, broken[i], &a, &e) == ST_BAD_INPUT && strlen(e.text) > 20 &&
+              !a.px);
     }
 }
 
@@ -104,18 +112,22 @@ static void own_output(void) {
         error e = { 0 };
         CHECK(png_write(name, samples, &f, &e) == ST_OK);
         int code = run_program((const char *const[]){ "pngcheck", "-q", name, NULL });
-        if (code < 0) printf("skipped: pngcheck is not installed\n");
-        else CHECK_SOURCE((double)code, 0.0, 0.0, "D-16: pngcheck");
+        if (code < 0)
+            printf("skipped: pngcheck is not installed\n");
+        else
+            CHECK_SOURCE((double)code, 0.0, 0.0, "D-16: pngcheck");
         picture p = { 0 };
         CHECK(decode_path(png_decode, "", name, &p, &e) == ST_OK && p.scales.n == 1);
-        CHECK_SOURCE(p.scales.list[0].x_nm, f.px_nm, 1e-12, "D-06: px_nm = 1e9 / pixels per metre; sCAL in metres");
+        CHECK_SOURCE(p.scales.list[0].x_nm, f.px_nm, 1e-12,
+                     "D-06: px_nm = 1e9 / pixels per metre; sCAL in metres");
         picture_free(&p);
         unlink(name);
     }
 }
 
 int main(void) {
-    static const char *const folders[] = { "/usr/share/go-1.19/src/image/png/testdata", "/usr/lib/go-1.19/src/image/png/testdata", NULL };
+    static const char *const folders[] = { "/usr/share/go-1.19/src/image/png/testdata",
+                                           "/usr/lib/go-1.19/src/image/png/testdata", NULL };
     own_output();
     const char *folder = first_folder(folders, "golang-1.19-src");
     if (!folder) return check_done() ? 1 : 77;

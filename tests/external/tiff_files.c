@@ -1,5 +1,5 @@
-/* D-10 .. D-13, D-15: TIFF files of others against their PNG counterparts and sums by other libraries, and every layout
- * that tiffcp can write of one picture. */
+/* D-10 .. D-13, D-15: TIFF files of others against their PNG counterparts and sums by other libraries, and
+ * every layout that tiffcp can write of one picture. */
 #include "image_files.h"
 #include "io/png_write.h"
 
@@ -42,7 +42,8 @@ static void sums(const char *folder) {
     for (size_t i = 0; i < sizeof t / sizeof t[0]; i++) {
         picture p = { 0 };
         error e = { 0 };
-        CHECK(decode_path(tiff_decode, folder, t[i].name, &p, &e) == ST_OK && p.bit_depth == t[i].bits && p.flags == 0);
+        CHECK(decode_path(tiff_decode, folder, t[i].name, &p, &e) == ST_OK && p.bit_depth == t[i].bits &&
+              p.flags == 0);
         CHECK_SOURCE(level_sum(&p), t[i].sum, 0.0, t[i].source);
         picture_free(&p);
     }
@@ -58,12 +59,22 @@ static void sums(const char *folder) {
 /* One 16-bit picture in every layout. Returns 0 when the program is absent. */
 static int layouts(void) {
     static const char *const options[][10] = {
-        { "-c", "none", NULL },         { "-c", "packbits", NULL },       { "-c", "lzw:2", NULL },     { "-c", "zip:2", NULL },
-        { "-c", "zip", "-r", "7", NULL }, { "-t", "-w", "64", "-l", "64", NULL }, { "-B", NULL },      { "-L", NULL },
-        { "-f", "lsb2msb", NULL },      { "-8", NULL },                   { "-8", "-B", "-c", "lzw", "-t", "-w", "16", "-l", "32", NULL },
-        { "-r", "7", NULL } }; /* tiffcp separates planes of 8 bits only: tests/io/tiff.c writes those */
+        { "-c", "none", NULL },
+        { "-c", "packbits", NULL },
+        { "-c", "lzw:2", NULL },
+        { "-c", "zip:2", NULL },
+        { "-c", "zip", "-r", "7", NULL },
+        { "-t", "-w", "64", "-l", "64", NULL },
+        { "-B", NULL },
+        { "-L", NULL },
+        { "-f", "lsb2msb", NULL },
+        { "-8", NULL },
+        { "-8", "-B", "-c", "lzw", "-t", "-w", "16", "-l", "32", NULL },
+        { "-r", "7", NULL }
+    }; /* tiffcp separates planes of 8 bits only: tests/io/tiff.c writes those */
     static uint16_t samples[61 * 90];
-    for (size_t i = 0; i < sizeof samples / sizeof samples[0]; i++) samples[i] = (uint16_t)(i * i * 40503u >> 5);
+    for (size_t i = 0; i < sizeof samples / sizeof samples[0]; i++)
+        samples[i] = (uint16_t)(i * i * 40503u >> 5);
     png_format f = { 90, 61, 1, 16, 5.0 };
     picture want = { 0 };
     error e = { 0 };

@@ -1,4 +1,5 @@
-/* Runs a fuzz target once over every file named: the committed corpus, in every test run, under any compiler. */
+/* Runs a fuzz target once over every file named: the committed corpus, in every test run, under any compiler.
+ */
 #include <stdio.h>
 #include <stdlib.h>
 

@@ -18,7 +18,9 @@ static const column columns[] = {
 };
 static const char *const extra_names[] = { "operator, shift" };
 
-static const char *extra(const void *r, size_t k) { return k == 0 && ((const row *)r)->n > 0 ? "=SUM(A1)" : NULL; }
+static const char *extra(const void *r, size_t k) {
+    return k == 0 && ((const row *)r)->n > 0 ? "=SUM(A1)" : NULL;
+}
 
 int main(void) {
     const row rows[] = {
@@ -43,10 +45,12 @@ int main(void) {
                          "'-dash,1,,\n"));
     text_free(&out);
     table_row_to_json(&t, 0, &out);
-    CHECK(!strcmp(out.s, "{\"file\": \"a \\\"b\\\",\\nc\", \"spacing_nm\": 312.35, \"n\": 7, \"operator, shift\": \"=SUM(A1)\"}"));
+    CHECK(!strcmp(out.s, "{\"file\": \"a \\\"b\\\",\\nc\", \"spacing_nm\": 312.35, \"n\": 7, \"operator, "
+                         "shift\": \"=SUM(A1)\"}"));
     text_free(&out);
     table_row_to_json(&t, 1, &out);
-    CHECK(!strcmp(out.s, "{\"file\": \"=cmd()\", \"spacing_nm\": null, \"n\": null, \"operator, shift\": null}"));
+    CHECK(!strcmp(out.s,
+                  "{\"file\": \"=cmd()\", \"spacing_nm\": null, \"n\": null, \"operator, shift\": null}"));
     text_free(&out);
     table_to_json(&t, 2, &out);
     error e = { 0 };
@@ -62,6 +66,7 @@ int main(void) {
     CHECK(!strcmp(out.s, "[]"));
     text_free(&out);
     char cell[NUMBER_TEXT];
-    CHECK(!strcmp(column_cell(&columns[1], &rows[0], cell), "312.35") && !strcmp(column_cell(&columns[2], &rows[1], cell), ""));
+    CHECK(!strcmp(column_cell(&columns[1], &rows[0], cell), "312.35") &&
+          !strcmp(column_cell(&columns[2], &rows[1], cell), ""));
     return check_done();
 }

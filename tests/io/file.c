@@ -32,11 +32,13 @@ static void read_and_write(void) {
     CHECK_FAILS(file_read(scratch("none"), 8, &bytes, &n, &e), ST_IO, e, "No such file");
     CHECK_FAILS(file_read(scratch_root, 8, &bytes, &n, &e), ST_IO, e, "not a regular file");
     CHECK(mkfifo(scratch("pipe"), 0600) == 0);
-    CHECK_FAILS(file_read(scratch("pipe"), 8, &bytes, &n, &e), ST_IO, e, "not a regular file"); /* and does not wait */
+    CHECK_FAILS(file_read(scratch("pipe"), 8, &bytes, &n, &e), ST_IO, e,
+                "not a regular file"); /* and does not wait */
 
     CHECK_FAILS(file_write(scratch("no/such/folder"), "x", 1, &e), ST_IO, e, "no/such/folder");
     CHECK(folder_make(scratch("taken"), &e) == ST_OK);
-    CHECK_FAILS(file_write(scratch("taken"), "x", 1, &e), ST_IO, e, "taken"); /* rename fails: the part is gone again */
+    CHECK_FAILS(file_write(scratch("taken"), "x", 1, &e), ST_IO, e,
+                "taken"); /* rename fails: the part is gone again */
     CHECK(count_entries(scratch_root) == 4);
 
     char longest[256], name[256];
@@ -61,7 +63,8 @@ static void folders(void) {
 
     static const struct {
         const char *dir, *name, *want;
-    } joins[] = { { "a", "b", "a/b" }, { "a/", "b", "a/b" }, { "", "b", "b" }, { NULL, "b", "b" }, { "a", "/b", "/b" }, { "/", "b", "/b" } };
+    } joins[] = { { "a", "b", "a/b" }, { "a/", "b", "a/b" }, { "", "b", "b" },
+                  { NULL, "b", "b" },  { "a", "/b", "/b" },  { "/", "b", "/b" } };
     for (size_t i = 0; i < sizeof joins / sizeof joins[0]; i++) {
         char *got = path_join(joins[i].dir, joins[i].name);
         CHECK(got && !strcmp(got, joins[i].want));

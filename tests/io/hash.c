@@ -8,7 +8,8 @@ int main(void) {
     static const struct {
         const char *text, *digest;
     } examples[] = {
-        /* FIPS 180-4 examples ("abc", two blocks) as published by NIST with the standard; the empty message: NIST CAVP */
+        /* FIPS 180-4 examples ("abc", two blocks) as published by NIST with the standard; the empty message:
+           NIST CAVP */
         { "abc", "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad" },
         { "abcdbcdecdefdefgefghfghighijhijkijkljklmklmnlmnomnopnopq",
           "248d6a61d20638b8e5c026930c3e6039a33ce45964ff2167f6ecedd419db06c1" },

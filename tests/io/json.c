@@ -11,7 +11,9 @@ static status parse(const char *s, json *j, error *e) { return json_parse(s, str
 static void reading(void) {
     json j = { 0 };
     error e = { 0 };
-    CHECK(parse("\xef\xbb\xbf{\n \"a\": 1,\n \"b\": { \"c\\\"\": [1, {\"d\":\n 2}],\n\n \"e\" : \"x\\n:\" },\n \"a2\": null }\n", &j, &e) == ST_OK);
+    CHECK(parse("\xef\xbb\xbf{\n \"a\": 1,\n \"b\": { \"c\\\"\": [1, {\"d\":\n 2}],\n\n \"e\" : \"x\\n:\" "
+                "},\n \"a2\": null }\n",
+                &j, &e) == ST_OK);
     CHECK(j.n_keys == 6);
     const cJSON *b = cJSON_GetObjectItem(j.root, "b");
     CHECK(json_line(&j, b) == 3 && json_line(&j, cJSON_GetObjectItem(b, "e")) == 6);
@@ -27,7 +29,8 @@ static void reading(void) {
     CHECK_FAILS(parse("", &j, &e), ST_BAD_INPUT, e, "not JSON");
     CHECK_FAILS(parse("{\n\"a\": 1\n\"b\": 2}", &j, &e), ST_BAD_INPUT, e, "p.json line 3: not JSON");
     CHECK_FAILS(parse("{\"a\": tru}", &j, &e), ST_BAD_INPUT, e, "line 1");
-    CHECK_FAILS(parse("{\n\"a\": 1,\n\"b\": 2,\n\"a\": 3}", &j, &e), ST_BAD_INPUT, e, "line 4: 'a' stands here and already in line 2");
+    CHECK_FAILS(parse("{\n\"a\": 1,\n\"b\": 2,\n\"a\": 3}", &j, &e), ST_BAD_INPUT, e,
+                "line 4: 'a' stands here and already in line 2");
     CHECK_FAILS(parse("[1]", &j, &e), ST_BAD_INPUT, e, "no object");
     CHECK_FAILS(parse("{}\n{}", &j, &e), ST_BAD_INPUT, e, "line 2: text behind");
     CHECK_FAILS(parse("{\n\"a\": 1e999}", &j, &e), ST_BAD_INPUT, e, "line 2, 'a': the number is too large");
@@ -42,8 +45,9 @@ static void reading(void) {
 static void writing(void) {
     textbuf t = { 0 };
     json_string(&t, "a\"\\\n\t\r\x01 \xc2\xb5 \xff \xe0\x80\x80 \xed\xa0\x80 \xf4\x90\x80\x80");
-    CHECK(!strcmp(t.s, "\"a\\\"\\\\\\n\\t\\r\\u0001 \xc2\xb5 \xef\xbf\xbd \xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd "
-                       "\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd \xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\""));
+    CHECK(!strcmp(t.s,
+                  "\"a\\\"\\\\\\n\\t\\r\\u0001 \xc2\xb5 \xef\xbf\xbd \xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd "
+                  "\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd \xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\""));
     text_free(&t);
     json_string(&t, NULL);
     json_number(&t, 0.0183112, 4);

@@ -1,4 +1,5 @@
-/* The whole loader: told apart by content, clipping, strip, sources of the pixel size, sidecars, hash, sentences. */
+/* The whole loader: told apart by content, clipping, strip, sources of the pixel size, sidecars, hash,
+ * sentences. */
 #include "io/load.h"
 
 #include <stdint.h>
@@ -41,7 +42,8 @@ static void contents(void) {
     put_png("a.png", 5.0);
     put_png("b.tif", 5.0); /* a PNG by content */
     micrograph a = load("a.png"), b = load("b.tif");
-    CHECK(a.nx == NX && a.ny == NY && a.file_nx == NX && a.file_ny == NY && a.strip_rows == 0 && a.bit_depth == 8);
+    CHECK(a.nx == NX && a.ny == NY && a.file_nx == NX && a.file_ny == NY && a.strip_rows == 0 &&
+          a.bit_depth == 8);
     CHECK(!strcmp(a.hash, b.hash) && strlen(a.hash) == 64 && !strcmp(a.px_source, "pHYs"));
     CHECK_NEAR(a.px_nm, 5.0, 1e-12);
     CHECK_NEAR(a.px_u_rel, 0.01, 0.0);
@@ -55,7 +57,8 @@ static void contents(void) {
     error e = { 0 };
     CHECK(tiff_write(scratch("c.png"), pixels, &f, &e) == ST_OK);
     micrograph c = load("c.png");
-    CHECK(isnan(c.px_nm) && isnan(c.px_u_rel) && !strcmp(c.px_source, "none") && c.flags == FLAG(NO_PIXEL_SIZE));
+    CHECK(isnan(c.px_nm) && isnan(c.px_u_rel) && !strcmp(c.px_source, "none") &&
+          c.flags == FLAG(NO_PIXEL_SIZE));
     micrograph_free(&c);
 
     CHECK_FAILS(refuse("", 0, &e), ST_BAD_INPUT, e, "empty");
@@ -86,11 +89,13 @@ static void names(void) {
 }
 
 /* What a sidecar called `name` with this text makes of a picture `image` without a scale of its own. */
-static void sidecar(const char *image, const char *name, const char *text, size_t n, double want_nm, const char *note) {
+static void sidecar(const char *image, const char *name, const char *text, size_t n, double want_nm,
+                    const char *note) {
     put_png(image, 0.0);
     scratch_put(name, text, n);
     micrograph m = load(image);
-    if (isnan(want_nm)) CHECK(isnan(m.px_nm));
+    if (isnan(want_nm))
+        CHECK(isnan(m.px_nm));
     else {
         CHECK_NEAR(m.px_nm, want_nm, 1e-9);
         CHECK(!strcmp(m.px_source, "sidecar"));
@@ -108,10 +113,20 @@ static void sidecars(void) {
     sidecar("s.png", "S.TXT", TEXT("px_nm = 5.58"), 5.58, "");
     sidecar("s.png", "s.json", TEXT("{\"px_nm\": 4.5}"), 4.5, "");
     sidecar("s.PNG", "S.png.Json", TEXT("\xef\xbb\xbf {\"px_nm\": 4.5}"), 4.5, "");
-    sidecar("s.png", "s.txt", TEXT("\xff\xfep\0x\0_\0n\0m\0=\0" "3\0"), 3.0, "");
-    sidecar("s.png", "s.txt", TEXT("p\0i\0x\0e\0l\0 \0s\0i\0z\0e\0=\0" "3\0 \0\xbc\x03m\0"), 3000.0, "");
-    sidecar("s.png", "s.txt", TEXT("\xfe\xff\0p\0x\0_\0n\0m\0=\0" "3"), 3.0, "");
-    sidecar("s.png", "s.txt", TEXT("pixel size = 5.58"), (double)NAN, "s.txt: 'pixel size = 5.58' has no unit");
+    sidecar("s.png", "s.txt",
+            TEXT("\xff\xfep\0x\0_\0n\0m\0=\0"
+                 "3\0"),
+            3.0, "");
+    sidecar("s.png", "s.txt",
+            TEXT("p\0i\0x\0e\0l\0 \0s\0i\0z\0e\0=\0"
+                 "3\0 \0\xbc\x03m\0"),
+            3000.0, "");
+    sidecar("s.png", "s.txt",
+            TEXT("\xfe\xff\0p\0x\0_\0n\0m\0=\0"
+                 "3"),
+            3.0, "");
+    sidecar("s.png", "s.txt", TEXT("pixel size = 5.58"), (double)NAN,
+            "s.txt: 'pixel size = 5.58' has no unit");
     sidecar("s.png", "s.json", TEXT("{\"px_nm\": }"), (double)NAN, "s.json line 1: not JSON");
     sidecar("s.png", "t.txt", TEXT("px_nm = 5.58"), (double)NAN, "");
     sidecar("s.png", "s.tif.txt", TEXT("px_nm = 5.58"), (double)NAN, "");
@@ -136,8 +151,10 @@ static void precedence(void) {
     micrograph m = { 0 };
     error e = { 0 };
     o.px_nm_sheet = 6.0;
-    CHECK(load_file(scratch("p.png"), &o, &m, &e) == ST_OK && !strcmp(m.px_source, "sheet") && m.flags == FLAG(PX_DISAGREE));
-    CHECK(strstr(m.note, "6 nm (sheet)") && strstr(m.note, "sidecar says 5.05 nm") && strstr(m.note, "pHYs says 5 nm"));
+    CHECK(load_file(scratch("p.png"), &o, &m, &e) == ST_OK && !strcmp(m.px_source, "sheet") &&
+          m.flags == FLAG(PX_DISAGREE));
+    CHECK(strstr(m.note, "6 nm (sheet)") && strstr(m.note, "sidecar says 5.05 nm") &&
+          strstr(m.note, "pHYs says 5 nm"));
     micrograph_free(&m);
     o.px_nm_option = 5.04;
     o.px_u_rel = 0.003;

@@ -13,11 +13,15 @@ int main(void) {
     static const struct {
         scale_rank rank;
         const char *name;
-    } ranks[] = { { SCALE_RESOLUTION, "pHYs" }, { SCALE_SCAL, "sCAL" },       { SCALE_DESCRIPTION, "description" }, { SCALE_OME, "ome-xml" },
-                  { SCALE_TAG, "tag 34118" },   { SCALE_SIDECAR, "sidecar" }, { SCALE_SHEET, "sheet" },             { SCALE_OPTION, "option" } };
+    } ranks[] = {
+        { SCALE_RESOLUTION, "pHYs" }, { SCALE_SCAL, "sCAL" },     { SCALE_DESCRIPTION, "description" },
+        { SCALE_OME, "ome-xml" },     { SCALE_TAG, "tag 34118" }, { SCALE_SIDECAR, "sidecar" },
+        { SCALE_SHEET, "sheet" },     { SCALE_OPTION, "option" }
+    };
     scales s = { 0 };
     micrograph m = choose(&s);
-    CHECK(isnan(m.px_nm) && isnan(m.px_u_rel) && !strcmp(m.px_source, "none") && m.flags == FLAG(NO_PIXEL_SIZE) && !m.note[0]);
+    CHECK(isnan(m.px_nm) && isnan(m.px_u_rel) && !strcmp(m.px_source, "none") &&
+          m.flags == FLAG(NO_PIXEL_SIZE) && !m.note[0]);
     for (size_t i = 0; i < sizeof ranks / sizeof ranks[0]; i++) { /* each outranks all before it */
         scales_add(&s, ranks[i].rank, ranks[i].name, 5.0 + 0.001 * (double)i, (double)NAN);
         m = choose(&s);
@@ -28,13 +32,15 @@ int main(void) {
     s = (scales){ 0 };
     scales_add(&s, SCALE_RESOLUTION, "pHYs", 2.54e7 / 72.0, 2.54e7 / 72.0); /* a screen's */
     m = choose(&s);
-    CHECK(m.flags == FLAG(NO_PIXEL_SIZE) && strstr(m.note, "352.8 um per pixel: a screen or print resolution"));
+    CHECK(m.flags == FLAG(NO_PIXEL_SIZE) &&
+          strstr(m.note, "352.8 um per pixel: a screen or print resolution"));
     scales_add(&s, SCALE_SHEET, "sheet", 5.0, 5.0);
     m = choose(&s);
     CHECK(m.flags == 0); /* and no contradiction either */
     scales_add(&s, SCALE_TAG, "tag 34118", 5.2, 5.2);
     m = choose(&s);
-    CHECK(m.flags == FLAG(PX_DISAGREE) && !strcmp(m.note, "Pixel size 5 nm (sheet) was used, but tag 34118 says 5.2 nm."));
+    CHECK(m.flags == FLAG(PX_DISAGREE) &&
+          !strcmp(m.note, "Pixel size 5 nm (sheet) was used, but tag 34118 says 5.2 nm."));
     s.list[2].x_nm = 12.7;
     CHECK(strstr(choose(&s).note, "inch taken for centimetre"));
     s.list[2].x_nm = 10.0;

@@ -1,4 +1,5 @@
-/* PNG in: every colour type and depth from our own encoder and from libpng directly, interlaced, damaged, cut. */
+/* PNG in: every colour type and depth from our own encoder and from libpng directly, interlaced, damaged,
+ * cut. */
 #include <png.h>
 #include <stdint.h>
 #include <stdlib.h>
@@ -44,16 +45,23 @@ static void make(memory *m, int type, int depth, int interlace, int coloured) {
             for (int k = 0; k < samples; k++) {
                 unsigned v = k == colours ? 9u : level(x + (coloured ? (size_t)k : 0), y, depth);
                 size_t at = x * (size_t)samples + (size_t)k;
-                if (depth == 16) rows[y][2 * at] = (uint8_t)(v >> 8), rows[y][2 * at + 1] = (uint8_t)v;
-                else if (depth == 8) rows[y][at] = (uint8_t)v;
-                else rows[y][at * (size_t)depth / 8] |= (uint8_t)(v << (8 - depth - (int)(at * (size_t)depth % 8)));
+                if (depth == 16)
+                    rows[y][2 * at] = (uint8_t)(v >> 8), rows[y][2 * at + 1] = (uint8_t)v;
+                else if (depth == 8)
+                    rows[y][at] = (uint8_t)v;
+                else
+                    rows[y][at * (size_t)depth / 8] |=
+                        (uint8_t)(v << (8 - depth - (int)(at * (size_t)depth % 8)));
             }
     }
     png_set_write_fn(png, m, to_memory, NULL);
-    png_set_IHDR(png, info, NX, NY, depth, type, interlace, PNG_COMPRESSION_TYPE_DEFAULT, PNG_FILTER_TYPE_DEFAULT);
+    png_set_IHDR(png, info, NX, NY, depth, type, interlace, PNG_COMPRESSION_TYPE_DEFAULT,
+                 PNG_FILTER_TYPE_DEFAULT);
     if (type == PNG_COLOR_TYPE_PALETTE) {
         png_color p[256];
-        for (int i = 0; i < 256; i++) p[i] = (png_color){ (png_byte)(255 - i), (png_byte)(255 - i), (png_byte)(255 - (coloured ? i / 2 : i)) };
+        for (int i = 0; i < 256; i++)
+            p[i] = (png_color){ (png_byte)(255 - i), (png_byte)(255 - i),
+                                (png_byte)(255 - (coloured ? i / 2 : i)) };
         png_set_PLTE(png, info, p, 1 << depth);
     }
     png_set_gAMA(png, info, 0.45455);
@@ -66,10 +74,12 @@ static void variants(void) {
     static memory m;
     static const struct {
         int type, depth;
-    } kinds[] = { { PNG_COLOR_TYPE_GRAY, 1 },       { PNG_COLOR_TYPE_GRAY, 2 },        { PNG_COLOR_TYPE_GRAY, 4 },
-                  { PNG_COLOR_TYPE_GRAY, 8 },       { PNG_COLOR_TYPE_GRAY, 16 },       { PNG_COLOR_TYPE_GRAY_ALPHA, 8 },
-                  { PNG_COLOR_TYPE_GRAY_ALPHA, 16 }, { PNG_COLOR_TYPE_RGB, 8 },        { PNG_COLOR_TYPE_RGB, 16 },
-                  { PNG_COLOR_TYPE_RGB_ALPHA, 8 },  { PNG_COLOR_TYPE_RGB_ALPHA, 16 } };
+    } kinds[] = { { PNG_COLOR_TYPE_GRAY, 1 },        { PNG_COLOR_TYPE_GRAY, 2 },
+                  { PNG_COLOR_TYPE_GRAY, 4 },        { PNG_COLOR_TYPE_GRAY, 8 },
+                  { PNG_COLOR_TYPE_GRAY, 16 },       { PNG_COLOR_TYPE_GRAY_ALPHA, 8 },
+                  { PNG_COLOR_TYPE_GRAY_ALPHA, 16 }, { PNG_COLOR_TYPE_RGB, 8 },
+                  { PNG_COLOR_TYPE_RGB, 16 },        { PNG_COLOR_TYPE_RGB_ALPHA, 8 },
+                  { PNG_COLOR_TYPE_RGB_ALPHA, 16 } };
     for (size_t i = 0; i < sizeof kinds / sizeof kinds[0]; i++)
         for (int interlace = 0; interlace < 2; interlace++) {
             int depth = kinds[i].depth, wrong = 0;
@@ -80,7 +90,8 @@ static void variants(void) {
             CHECK(p.nx == NX && p.ny == NY && p.bit_depth == depth && p.flags == 0);
             for (size_t k = 0; p.px && k < NX * NY; k++) {
                 float want = (float)((double)level(k % NX, k / NX, depth) / (double)((1u << depth) - 1u));
-                wrong += memcmp(&p.px[k], &want, sizeof want) != 0; /* equal channels: that channel, exactly */
+                wrong +=
+                    memcmp(&p.px[k], &want, sizeof want) != 0; /* equal channels: that channel, exactly */
             }
             CHECK(wrong == 0);
             picture_free(&p);
@@ -98,7 +109,8 @@ static void colours(void) {
     picture_free(&p);
     for (int depth = 1; depth <= 8; depth *= 2) {
         make(&m, PNG_COLOR_TYPE_PALETTE, depth, 1, 0);
-        CHECK(png_decode(m.bytes, m.n, LIMIT_PIXELS, &p, &e) == ST_OK && p.flags == 0 && p.bit_depth == depth);
+        CHECK(png_decode(m.bytes, m.n, LIMIT_PIXELS, &p, &e) == ST_OK && p.flags == 0 &&
+              p.bit_depth == depth);
         CHECK_NEAR((double)p.px[3 * NX + 5], (255.0 - level(5, 3, depth)) / 255.0, 1e-7);
         picture_free(&p);
     }

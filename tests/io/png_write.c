@@ -23,10 +23,12 @@ static void round_trips(void) {
             const void *samples = depth == 8 ? (const void *)small : (const void *)wide;
             uint8_t *a = NULL, *b = NULL;
             size_t na = 0, nb = 0;
-            CHECK(png_encode(samples, &f, &a, &na, &e) == ST_OK && png_encode(samples, &f, &b, &nb, &e) == ST_OK);
+            CHECK(png_encode(samples, &f, &a, &na, &e) == ST_OK &&
+                  png_encode(samples, &f, &b, &nb, &e) == ST_OK);
             CHECK(na == nb && !memcmp(a, b, na));
             picture p = { 0 };
-            CHECK(png_decode(a, na, LIMIT_PIXELS, &p, &e) == ST_OK && p.nx == NX && p.ny == NY && p.bit_depth == depth);
+            CHECK(png_decode(a, na, LIMIT_PIXELS, &p, &e) == ST_OK && p.nx == NX && p.ny == NY &&
+                  p.bit_depth == depth);
             int wrong = 0;
             for (size_t i = 0; p.px && channels == 1 && i < NX * NY; i++) {
                 float want = (float)(depth == 8 ? small[i] / 255.0 : wide[i] / 65535.0);
@@ -45,20 +47,28 @@ static void scales_survive(void) {
     static const struct {
         double px_nm, tolerance;
         const char *source;
-    } t[] = { { 5.58, 1e-7, "pHYs" }, { 0.31, 1e-9, "sCAL" }, { 2615.0, 1e-9, "sCAL" }, { 999.0, 1e-6, "pHYs" }, { 0.0, 0.0, "none" } };
+    } t[] = { { 5.58, 1e-7, "pHYs" },
+              { 0.31, 1e-9, "sCAL" },
+              { 2615.0, 1e-9, "sCAL" },
+              { 999.0, 1e-6, "pHYs" },
+              { 0.0, 0.0, "none" } };
     error e = { 0 };
     load_options o = load_defaults();
     for (size_t i = 0; i < sizeof t / sizeof t[0]; i++) {
         png_format f = { NX, NY, 1, 16, t[i].px_nm };
         micrograph m = { 0 };
-        CHECK(png_write(scratch("a.png"), wide, &f, &e) == ST_OK && load_file(scratch("a.png"), &o, &m, &e) == ST_OK);
+        CHECK(png_write(scratch("a.png"), wide, &f, &e) == ST_OK &&
+              load_file(scratch("a.png"), &o, &m, &e) == ST_OK);
         CHECK(!strcmp(m.px_source, t[i].source));
         if (t[i].px_nm > 0.0) CHECK_NEAR(m.px_nm / t[i].px_nm, 1.0, t[i].tolerance);
         micrograph_free(&m);
-        CHECK(tiff_write(scratch("a.tif"), wide, &f, &e) == ST_OK && load_file(scratch("a.tif"), &o, &m, &e) == ST_OK);
+        CHECK(tiff_write(scratch("a.tif"), wide, &f, &e) == ST_OK &&
+              load_file(scratch("a.tif"), &o, &m, &e) == ST_OK);
         CHECK(m.bit_depth == 16 && m.nx == NX && m.ny == NY);
-        if (t[i].px_nm > 0.0 && t[i].px_nm < 1000.0) CHECK_NEAR(m.px_nm / t[i].px_nm, 1.0, 1e-6);
-        else CHECK(isnan(m.px_nm)); /* TIFF has no field for a specimen above the screen's range */
+        if (t[i].px_nm > 0.0 && t[i].px_nm < 1000.0)
+            CHECK_NEAR(m.px_nm / t[i].px_nm, 1.0, 1e-6);
+        else
+            CHECK(isnan(m.px_nm)); /* TIFF has no field for a specimen above the screen's range */
         int wrong = 0;
         for (size_t k = 0; k < NX * NY; k++) wrong += fabs((double)m.px[k] * 65535.0 - wide[k]) > 0.01;
         CHECK(wrong == 0);

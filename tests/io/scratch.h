@@ -43,8 +43,10 @@ static inline void scratch_remove(const char *folder) {
         struct stat info;
         int n = snprintf(path, sizeof path, "%s/%s", folder, entry->d_name);
         if (n < 0 || (size_t)n >= sizeof path) continue;
-        if (!lstat(path, &info) && S_ISDIR(info.st_mode)) scratch_remove(path);
-        else unlink(path);
+        if (!lstat(path, &info) && S_ISDIR(info.st_mode))
+            scratch_remove(path);
+        else
+            unlink(path);
     }
     if (d) closedir(d);
     rmdir(folder);

@@ -1,5 +1,5 @@
-/* The strip on pictures of known truth: many kinds of specimen under many styles of strip, rows exact; the same
- * specimens without a strip, with writing on the picture, with saturated bands: no rows. */
+/* The strip on pictures of known truth: many kinds of specimen under many styles of strip, rows exact; the
+ * same specimens without a strip, with writing on the picture, with saturated bands: no rows. */
 #include "io/strip_priv.h"
 
 #include <stdint.h>
@@ -35,15 +35,15 @@ static double gauss(void) {
 /* ---- specimens ---- */
 
 typedef enum {
-    NOISY,       /* dense hillocks, shot noise */
-    NOISELESS,   /* the same without */
-    CLIPPED,     /* pores at level 0 over half of the field */
-    SATURATED,   /* tops at level 1 */
-    DARK,        /* levels 0 to 4 */
-    BLANK,       /* one level */
-    QUIET,       /* one level, noise of one level */
-    SPARSE,      /* a few smooth hillocks on a flat ground, noiseless */
-    GRADIENT,    /* brightness falls from top to bottom, noise */
+    NOISY,        /* dense hillocks, shot noise */
+    NOISELESS,    /* the same without */
+    CLIPPED,      /* pores at level 0 over half of the field */
+    SATURATED,    /* tops at level 1 */
+    DARK,         /* levels 0 to 4 */
+    BLANK,        /* one level */
+    QUIET,        /* one level, noise of one level */
+    SPARSE,       /* a few smooth hillocks on a flat ground, noiseless */
+    GRADIENT,     /* brightness falls from top to bottom, noise */
     LOW_CONTRAST, /* 20 levels in all */
     SPECIMENS
 } specimen;
@@ -69,21 +69,38 @@ static void paint_specimen(canvas *c, specimen kind, double pitch, double levels
         for (size_t x = 0; x < c->nx; x++) {
             double h = kind == BLANK || kind == QUIET ? 0.0 : hillocks((double)x, (double)y, pitch), v = 0.45;
             switch (kind) {
-            case NOISY: v = 0.15 + 0.7 * h + 0.05 * gauss(); break;
-            case NOISELESS: v = 0.15 + 0.7 * h; break;
-            case CLIPPED: v = 1.6 * h - 0.6 + 0.03 * gauss(); break;
-            case SATURATED: v = 1.6 * h + 0.1 + 0.03 * gauss(); break;
-            case DARK: v = (2.0 * h - 0.5 + 0.7 * gauss()) / 255.0; break;
-            case QUIET: v = 0.4 + 1.0 / 255.0 * gauss(); break;
+            case NOISY:
+                v = 0.15 + 0.7 * h + 0.05 * gauss();
+                break;
+            case NOISELESS:
+                v = 0.15 + 0.7 * h;
+                break;
+            case CLIPPED:
+                v = 1.6 * h - 0.6 + 0.03 * gauss();
+                break;
+            case SATURATED:
+                v = 1.6 * h + 0.1 + 0.03 * gauss();
+                break;
+            case DARK:
+                v = (2.0 * h - 0.5 + 0.7 * gauss()) / 255.0;
+                break;
+            case QUIET:
+                v = 0.4 + 1.0 / 255.0 * gauss();
+                break;
             case SPARSE: {
                 double s = hillocks((double)x, (double)y, 5.0 * pitch);
                 v = 0.2 + 0.7 * (s > 0.6 ? (s - 0.6) / 0.4 : 0.0);
                 break;
             }
-            case GRADIENT: v = 0.8 - 0.6 * (double)y / (double)c->ny + 0.1 * h + 0.03 * gauss(); break;
-            case LOW_CONTRAST: v = 0.4 + 0.06 * h + 0.008 * gauss(); break;
+            case GRADIENT:
+                v = 0.8 - 0.6 * (double)y / (double)c->ny + 0.1 * h + 0.03 * gauss();
+                break;
+            case LOW_CONTRAST:
+                v = 0.4 + 0.06 * h + 0.008 * gauss();
+                break;
             case BLANK:
-            case SPECIMENS: break;
+            case SPECIMENS:
+                break;
             }
             v = v < 0.0 ? 0.0 : v > 1.0 ? 1.0 : v;
             c->px[y * c->nx + x] = (float)(floor(v * levels + 0.5) / levels);
@@ -164,7 +181,10 @@ static void paint_table(canvas *c, size_t top, size_t rows) {
 
 static void paint_strip(canvas *c, style s, size_t rows, int soft) {
     size_t top = c->ny - rows;
-    double paper = s == BLACK_ON_WHITE || s == FRAMED ? 1.0 : s == GREY_TWO_LINES ? 128.0 / 255.0 : s == THICK_LINE ? 0.2 : 0.0;
+    double paper = s == BLACK_ON_WHITE || s == FRAMED ? 1.0
+                   : s == GREY_TWO_LINES              ? 128.0 / 255.0
+                   : s == THICK_LINE                  ? 0.2
+                                                      : 0.0;
     double ink = paper > 0.6 ? 0.0 : 1.0;
     if (s == TABLE) {
         paint_table(c, top, rows);
@@ -189,7 +209,8 @@ static void paint_strip(canvas *c, style s, size_t rows, int soft) {
     if (s == LOGO)
         for (size_t y = top + 2; y + 2 < c->ny; y++)
             for (size_t x = c->nx - rows - 4; x < c->nx - 4; x++)
-                c->px[y * c->nx + x] = (float)(floor(128.0 + 90.0 * sin((double)x * 0.3) * cos((double)y * 0.2)) / 255.0);
+                c->px[y * c->nx + x] =
+                    (float)(floor(128.0 + 90.0 * sin((double)x * 0.3) * cos((double)y * 0.2)) / 255.0);
     if (s == NOISY_BLACK)
         for (size_t i = top * c->nx; i < c->ny * c->nx; i++) {
             double v = (double)c->px[i] + floor(gauss() + 0.5) / 255.0;
@@ -204,9 +225,7 @@ static canvas canvas_make(size_t nx, size_t ny) {
 }
 
 /* Pairs that no one could tell apart: the paper continues the specimen without a trace. */
-static int invisible(specimen k, style s) {
-    return (k == DARK && s == NOISY_BLACK);
-}
+static int invisible(specimen k, style s) { return (k == DARK && s == NOISY_BLACK); }
 
 static void sweep_strips(size_t nx, size_t ny, double levels) {
     canvas clean = canvas_make(nx, ny), c = canvas_make(nx, ny);
@@ -222,7 +241,8 @@ static void sweep_strips(size_t nx, size_t ny, double levels) {
                 paint_strip(&c, (style)s, rows, r % 2);
                 size_t got = strip_find(c.px, nx, ny);
                 CHECK(got == rows);
-                if (got != rows) printf("  specimen %d style %d %zux%zu: %zu rows, found %zu\n", k, s, nx, ny, rows, got);
+                if (got != rows)
+                    printf("  specimen %d style %d %zux%zu: %zu rows, found %zu\n", k, s, nx, ny, rows, got);
             }
     }
     free(clean.px);
@@ -235,10 +255,10 @@ static void sweep_bare(size_t nx, size_t ny, double levels) {
         for (int trap = 0; trap < 4; trap++) {
             paint_specimen(&c, (specimen)k, 9.0 + 4.0 * trap, levels);
             size_t y = ny - ny / 10;
-            if (trap == 1) write_text(&c, 10, y, 20, 2, 1.0, 1);                       /* writing on the picture */
-            if (trap == 1) fill(&c, nx / 2, y + 10, nx / 2 + nx / 4, y + 13, 1.0);     /* and a bar */
-            if (trap == 2) fill(&c, 0, ny - 12, nx, ny, 1.0);                          /* saturated to the end */
-            if (trap == 3) fill(&c, 0, y, nx, y + 5, 1.0);                             /* saturated band */
+            if (trap == 1) write_text(&c, 10, y, 20, 2, 1.0, 1); /* writing on the picture */
+            if (trap == 1) fill(&c, nx / 2, y + 10, nx / 2 + nx / 4, y + 13, 1.0); /* and a bar */
+            if (trap == 2) fill(&c, 0, ny - 12, nx, ny, 1.0);                      /* saturated to the end */
+            if (trap == 3) fill(&c, 0, y, nx, y + 5, 1.0);                         /* saturated band */
             size_t got = strip_find(c.px, nx, ny);
             CHECK(got == 0);
             if (got) printf("  specimen %d trap %d %zux%zu: found %zu\n", k, trap, nx, ny, got);

@@ -13,12 +13,15 @@ static status parse(const char *s, csv *c, error *e) { return csv_parse(s, strle
 static void forms(void) {
     csv c = { 0 };
     error e = { 0 };
-    CHECK(parse("\xef\xbb\xbf# made by hand\r\nfile, sample ,px_nm\r\n\r\na.png,\"x, \"\"y\"\"\",5.5\r\n  \r\n#two\nb.png\r\n"
+    CHECK(parse("\xef\xbb\xbf# made by hand\r\nfile, sample ,px_nm\r\n\r\na.png,\"x, \"\"y\"\"\",5.5\r\n  "
+                "\r\n#two\nb.png\r\n"
                 "\"c\nd\",,7,,\nlast,1,2",
                 &c, &e) == ST_OK);
     CHECK(c.n_columns == 3 && c.n_rows == 4 && c.separator == ',' && c.n_comments == 2);
-    CHECK(!strcmp(c.names[1], "sample") && !strcmp(c.comments[0], "made by hand") && !strcmp(c.comments[1], "two"));
-    CHECK(!strcmp(csv_cell(&c, 0, 1), "x, \"y\"") && !strcmp(csv_cell(&c, 1, 2), "") && !strcmp(csv_cell(&c, 2, 0), "c\nd"));
+    CHECK(!strcmp(c.names[1], "sample") && !strcmp(c.comments[0], "made by hand") &&
+          !strcmp(c.comments[1], "two"));
+    CHECK(!strcmp(csv_cell(&c, 0, 1), "x, \"y\"") && !strcmp(csv_cell(&c, 1, 2), "") &&
+          !strcmp(csv_cell(&c, 2, 0), "c\nd"));
     CHECK(!strcmp(csv_cell(&c, 3, 2), "2") && !strcmp(csv_cell(&c, 0, -1), ""));
     CHECK(c.lines[0] == 4 && c.lines[1] == 7 && c.lines[2] == 8 && c.lines[3] == 10);
     CHECK(csv_column(&c, "px_nm") == 2 && csv_column(&c, "PX_NM") == -1);
@@ -58,7 +61,8 @@ static void numbers(void) {
     csv c = { 0 };
     error e = { 0 };
     double v[2];
-    CHECK(parse("nm,R\n400, 0.01 \n410,1e-3\n", &c, &e) == ST_OK && csv_numbers(&c, "R", "r.csv", v, &e) == ST_OK);
+    CHECK(parse("nm,R\n400, 0.01 \n410,1e-3\n", &c, &e) == ST_OK &&
+          csv_numbers(&c, "R", "r.csv", v, &e) == ST_OK);
     CHECK_NEAR(v[0], 0.01, 0.0);
     CHECK_NEAR(v[1], 1e-3, 0.0);
     CHECK_FAILS(csv_numbers(&c, "T", "r.csv", v, &e), ST_BAD_INPUT, e, "no column 'T'");

@@ -17,7 +17,9 @@ typedef struct {
     const char *mode; /* wl wb w8 */
 } form;
 
-static const form plain = { 8, 1, PHOTOMETRIC_MINISBLACK, COMPRESSION_NONE, PLANARCONFIG_CONTIG, 0, SAMPLEFORMAT_UINT, 0, 7, "wl" };
+static const form plain = {
+    8, 1, PHOTOMETRIC_MINISBLACK, COMPRESSION_NONE, PLANARCONFIG_CONTIG, 0, SAMPLEFORMAT_UINT, 0, 7, "wl"
+};
 
 static unsigned level(size_t x, size_t y, int bits) {
     unsigned v = (unsigned)(x * 7919 + y * 104729 + x * y * 31);
@@ -35,7 +37,8 @@ static void pack(const form *f, uint8_t *to, size_t x0, size_t nx, size_t y, int
             if (f->bits == 16) {
                 uint16_t wide = (uint16_t)v;
                 memcpy(to + bit / 8, &wide, 2);
-            } else to[bit / 8] = (uint8_t)(to[bit / 8] | v << (8u - f->bits - bit % 8));
+            } else
+                to[bit / 8] = (uint8_t)(to[bit / 8] | v << (8u - f->bits - bit % 8));
         }
 }
 
@@ -51,8 +54,10 @@ static void put_page(TIFF *tif, const form *f, uint32_t nx, uint32_t ny, uint32_
     TIFFSetField(tif, TIFFTAG_SAMPLEFORMAT, f->format);
     if (f->predictor) TIFFSetField(tif, TIFFTAG_PREDICTOR, f->predictor);
     if (kind) TIFFSetField(tif, TIFFTAG_SUBFILETYPE, kind);
-    if (f->tiled) TIFFSetField(tif, TIFFTAG_TILEWIDTH, TILE), TIFFSetField(tif, TIFFTAG_TILELENGTH, TILE);
-    else TIFFSetField(tif, TIFFTAG_ROWSPERSTRIP, f->rows_per_strip);
+    if (f->tiled)
+        TIFFSetField(tif, TIFFTAG_TILEWIDTH, TILE), TIFFSetField(tif, TIFFTAG_TILELENGTH, TILE);
+    else
+        TIFFSetField(tif, TIFFTAG_ROWSPERSTRIP, f->rows_per_strip);
     int planes = f->planar == PLANARCONFIG_SEPARATE ? f->samples : 1;
     for (int k = 0; k < planes; k++) {
         int plane = planes > 1 ? k : -1;
@@ -101,24 +106,28 @@ static void check_form(const form *f) {
     picture p = { 0 };
     error e = { 0 };
     CHECK(tiff_decode((const uint8_t *)bytes, n, LIMIT_PIXELS, &p, &e) == ST_OK);
-    int ok = p.nx == NX && p.ny == NY && p.bit_depth == f->bits && p.flags == 0 && wrong_pixels(&p, f->bits) == 0;
+    int ok =
+        p.nx == NX && p.ny == NY && p.bit_depth == f->bits && p.flags == 0 && wrong_pixels(&p, f->bits) == 0;
     CHECK(ok);
-    if (!ok) printf("  bits %d samples %d compression %d planar %d tiled %d mode %s: %s\n", f->bits, f->samples,
-                    f->compression, f->planar, f->tiled, f->mode, e.text);
+    if (!ok)
+        printf("  bits %d samples %d compression %d planar %d tiled %d mode %s: %s\n", f->bits, f->samples,
+               f->compression, f->planar, f->tiled, f->mode, e.text);
     picture_free(&p);
     free(bytes);
 }
 
 static void layouts(void) {
-    static const uint16_t codecs[] = { COMPRESSION_NONE, COMPRESSION_LZW, COMPRESSION_PACKBITS, COMPRESSION_ADOBE_DEFLATE,
-                                       COMPRESSION_DEFLATE };
+    static const uint16_t codecs[] = { COMPRESSION_NONE, COMPRESSION_LZW, COMPRESSION_PACKBITS,
+                                       COMPRESSION_ADOBE_DEFLATE, COMPRESSION_DEFLATE };
     static const char *const modes[] = { "wl", "wb", "w8" };
     static const struct {
         uint16_t bits, samples, photometric;
-    } kinds[] = { { 1, 1, PHOTOMETRIC_MINISBLACK },  { 1, 1, PHOTOMETRIC_MINISWHITE }, { 2, 1, PHOTOMETRIC_MINISBLACK },
-                  { 4, 1, PHOTOMETRIC_MINISWHITE },  { 8, 1, PHOTOMETRIC_MINISBLACK }, { 8, 1, PHOTOMETRIC_MINISWHITE },
-                  { 16, 1, PHOTOMETRIC_MINISBLACK }, { 16, 1, PHOTOMETRIC_MINISWHITE }, { 8, 2, PHOTOMETRIC_MINISBLACK },
-                  { 16, 2, PHOTOMETRIC_MINISBLACK }, { 8, 3, PHOTOMETRIC_RGB },        { 8, 4, PHOTOMETRIC_RGB },
+    } kinds[] = { { 1, 1, PHOTOMETRIC_MINISBLACK },  { 1, 1, PHOTOMETRIC_MINISWHITE },
+                  { 2, 1, PHOTOMETRIC_MINISBLACK },  { 4, 1, PHOTOMETRIC_MINISWHITE },
+                  { 8, 1, PHOTOMETRIC_MINISBLACK },  { 8, 1, PHOTOMETRIC_MINISWHITE },
+                  { 16, 1, PHOTOMETRIC_MINISBLACK }, { 16, 1, PHOTOMETRIC_MINISWHITE },
+                  { 8, 2, PHOTOMETRIC_MINISBLACK },  { 16, 2, PHOTOMETRIC_MINISBLACK },
+                  { 8, 3, PHOTOMETRIC_RGB },         { 8, 4, PHOTOMETRIC_RGB },
                   { 16, 3, PHOTOMETRIC_RGB },        { 16, 4, PHOTOMETRIC_RGB } };
     for (size_t k = 0; k < sizeof kinds / sizeof kinds[0]; k++)
         for (size_t c = 0; c < sizeof codecs / sizeof codecs[0]; c++)
@@ -129,7 +138,8 @@ static void layouts(void) {
                 f.mode = modes[(k + c + (size_t)variant) % 3];
                 f.tiled = variant & 1;
                 f.planar = variant & 2 ? PLANARCONFIG_SEPARATE : PLANARCONFIG_CONTIG;
-                if (codecs[c] != COMPRESSION_NONE && codecs[c] != COMPRESSION_PACKBITS && f.bits >= 8) f.predictor = 2;
+                if (codecs[c] != COMPRESSION_NONE && codecs[c] != COMPRESSION_PACKBITS && f.bits >= 8)
+                    f.predictor = 2;
                 check_form(&f);
             }
 }
@@ -147,7 +157,8 @@ static void pages(void) {
     char *bytes = slurp(&n);
     picture p = { 0 };
     error e = { 0 };
-    CHECK(tiff_decode((const uint8_t *)bytes, n, LIMIT_PIXELS, &p, &e) == ST_OK && p.flags == FLAG(MANY_PAGES));
+    CHECK(tiff_decode((const uint8_t *)bytes, n, LIMIT_PIXELS, &p, &e) == ST_OK &&
+          p.flags == FLAG(MANY_PAGES));
     CHECK(p.nx == NX && p.bit_depth == 16 && wrong_pixels(&p, 16) == 0 && strstr(p.note, "Page 3 of 4"));
     picture_free(&p);
     free(bytes);
@@ -183,7 +194,8 @@ static void refusals(void) {
 }
 
 static void cuts(void) {
-    static const uint16_t codecs[] = { COMPRESSION_NONE, COMPRESSION_LZW, COMPRESSION_PACKBITS, COMPRESSION_ADOBE_DEFLATE };
+    static const uint16_t codecs[] = { COMPRESSION_NONE, COMPRESSION_LZW, COMPRESSION_PACKBITS,
+                                       COMPRESSION_ADOBE_DEFLATE };
     for (size_t c = 0; c < sizeof codecs / sizeof codecs[0]; c++)
         for (int tiled = 0; tiled < 2; tiled++) {
             form f = plain;

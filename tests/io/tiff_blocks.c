@@ -60,16 +60,35 @@ static void resolutions(void) {
         double nm; /* NAN: none */
         const char *source;
     } r[] = {
-        { { .x_resolution = 5080000.0f, .y_resolution = 5080000.0f, .unit = RESUNIT_INCH }, 5.0, "resolution" },
-        { { .x_resolution = 5080000.0f, .y_resolution = 5080000.0f }, 5.0, "resolution" }, /* inch is the default */
-        { { .x_resolution = 2000000.0f, .y_resolution = 2000000.0f, .unit = RESUNIT_CENTIMETER }, 5.0, "resolution" },
+        { { .x_resolution = 5080000.0f, .y_resolution = 5080000.0f, .unit = RESUNIT_INCH },
+          5.0,
+          "resolution" },
+        { { .x_resolution = 5080000.0f, .y_resolution = 5080000.0f },
+          5.0,
+          "resolution" }, /* inch is the default */
+        { { .x_resolution = 2000000.0f, .y_resolution = 2000000.0f, .unit = RESUNIT_CENTIMETER },
+          5.0,
+          "resolution" },
         { { .x_resolution = 72.0f, .y_resolution = 72.0f, .unit = RESUNIT_INCH }, (double)NAN, "none" },
         { { .x_resolution = 72.0f, .y_resolution = 72.0f, .unit = RESUNIT_NONE }, (double)NAN, "none" },
-        { { .x_resolution = 5080000.0f, .y_resolution = 5080000.0f, .unit = RESUNIT_NONE }, (double)NAN, "none" },
-        { { .description = "x=1\nunit=nm\nmin=0\n", .x_resolution = 0.2f, .y_resolution = 0.2f, .unit = RESUNIT_NONE }, 5.0, "description" },
-        { { .description = "x=1\nunit=\\u00B5m\n", .x_resolution = 200.0f, .unit = RESUNIT_INCH }, 5.0, "description" },
-        { { .description = "x=1\nunit=\nmin=0", .x_resolution = 5080000.0f, .unit = RESUNIT_INCH }, (double)NAN, "none" },
-        { { .description = "x=1\nunit=pixel", .x_resolution = 5080000.0f, .unit = RESUNIT_INCH }, (double)NAN, "none" },
+        { { .x_resolution = 5080000.0f, .y_resolution = 5080000.0f, .unit = RESUNIT_NONE },
+          (double)NAN,
+          "none" },
+        { { .description = "x=1\nunit=nm\nmin=0\n",
+            .x_resolution = 0.2f,
+            .y_resolution = 0.2f,
+            .unit = RESUNIT_NONE },
+          5.0,
+          "description" },
+        { { .description = "x=1\nunit=\\u00B5m\n", .x_resolution = 200.0f, .unit = RESUNIT_INCH },
+          5.0,
+          "description" },
+        { { .description = "x=1\nunit=\nmin=0", .x_resolution = 5080000.0f, .unit = RESUNIT_INCH },
+          (double)NAN,
+          "none" },
+        { { .description = "x=1\nunit=pixel", .x_resolution = 5080000.0f, .unit = RESUNIT_INCH },
+          (double)NAN,
+          "none" },
         { { .description = "Pixel size: 2.5 nm" }, 2.5, "description" },
         { { .description = "{\"pixel_size\": {\"x\": 2.5e-9, \"y\": 2.5e-9}}" }, 2.5, "description" },
         { { .description = "no words of size" }, (double)NAN, "none" },
@@ -77,17 +96,22 @@ static void resolutions(void) {
     for (size_t i = 0; i < sizeof r / sizeof r[0]; i++) {
         micrograph m = load_with(&r[i].t);
         CHECK(!strcmp(m.px_source, r[i].source));
-        if (isnan(r[i].nm)) CHECK(isnan(m.px_nm));
-        else CHECK_NEAR(m.px_nm, r[i].nm, 1e-6 * r[i].nm);
+        if (isnan(r[i].nm))
+            CHECK(isnan(m.px_nm));
+        else
+            CHECK_NEAR(m.px_nm, r[i].nm, 1e-6 * r[i].nm);
         micrograph_free(&m);
     }
-    micrograph m = load_with(&(tags){ .x_resolution = 2000000.0f, .y_resolution = 1000000.0f, .unit = RESUNIT_CENTIMETER });
+    micrograph m = load_with(
+        &(tags){ .x_resolution = 2000000.0f, .y_resolution = 1000000.0f, .unit = RESUNIT_CENTIMETER });
     CHECK(m.flags == FLAG(PX_UNEQUAL) && strstr(m.note, "not square"));
     micrograph_free(&m);
 }
 
-static const char block_34118[] = "0\r\n0\r\n0\r\n5.825e-009\r\n20000\r\n0\r\n1\r\nDP_TILT\r\nTilt = Off\r\nAP_PIXEL_SIZE\r\nPixel Size = 5.825 nm\r\n"
-                                  "AP_WIDTH\r\nWidth = 5.965 \xb5m\r\nAP_DATE\r\nDate :23 Dec 2015\r\nAP_TIME\r\nTime : 8:40:47\r\n";
+static const char block_34118[] =
+    "0\r\n0\r\n0\r\n5.825e-009\r\n20000\r\n0\r\n1\r\nDP_TILT\r\nTilt = Off\r\nAP_PIXEL_SIZE\r\nPixel Size = "
+    "5.825 nm\r\n"
+    "AP_WIDTH\r\nWidth = 5.965 \xb5m\r\nAP_DATE\r\nDate :23 Dec 2015\r\nAP_TIME\r\nTime : 8:40:47\r\n";
 
 static void pairs(void) {
     micrograph m = load_with(&(tags){ .tag = 34118, .text = block_34118, .date = "2020:01:01 00:00:00" });
@@ -97,11 +121,15 @@ static void pairs(void) {
     micrograph_free(&m);
 
     picture p = { 0 };
-    tag_34118_read("0\n0\n0\n2.5e-9\nAP_IMAGE_PIXEL_SIZE\nImage Pixel Size = 0.0 fm\nAP_FIB_PIXEL_SIZE\nFIB = 7 nm\n", 2048, &p);
+    tag_34118_read(
+        "0\n0\n0\n2.5e-9\nAP_IMAGE_PIXEL_SIZE\nImage Pixel Size = 0.0 fm\nAP_FIB_PIXEL_SIZE\nFIB = 7 nm\n",
+        2048, &p);
     CHECK(p.scales.n == 1);
     CHECK_NEAR(p.scales.list[0].x_nm, 1.25, 1e-12); /* zero is absent; 1024 display pixels over 2048 stored */
     p = (picture){ 0 };
-    tag_34118_read("AP_IMAGE_PIXEL_SIZE\nImage Pixel Size = 558.2 pm\nDP_IMAGE_STORE\nStore resolution = 2048 * 1536\n", 1024, &p);
+    tag_34118_read(
+        "AP_IMAGE_PIXEL_SIZE\nImage Pixel Size = 558.2 pm\nDP_IMAGE_STORE\nStore resolution = 2048 * 1536\n",
+        1024, &p);
     CHECK_NEAR(p.scales.list[0].x_nm, 2.0 * 0.5582, 1e-12); /* resized since */
     CHECK(strstr(p.note, "stored 2048 pixels wide, now 1024"));
     p = (picture){ 0 };
@@ -119,20 +147,26 @@ static void pairs(void) {
 }
 
 static void sections(void) {
-    static const char block[] = "[User]\r\nDate=06/30/2024\r\nTime=05:06:40 PM\r\n[Beam]\r\nBeam=EBeam\r\nScan=EScan\r\n[Scan]\r\n"
-                                "PixelWidth=2.5e-009\r\nPixelHeight=2.5e-009\r\n[Image]\r\nResolutionX=512\r\nResolutionY=50\r\n";
+    static const char block[] =
+        "[User]\r\nDate=06/30/2024\r\nTime=05:06:40 PM\r\n[Beam]\r\nBeam=EBeam\r\nScan=EScan\r\n[Scan]\r\n"
+        "PixelWidth=2.5e-009\r\nPixelHeight=2.5e-009\r\n[Image]\r\nResolutionX=512\r\nResolutionY=50\r\n";
     micrograph m = load_with(&(tags){ .tag = 34682, .text = block });
     CHECK(!strcmp(m.px_source, "tag 34682") && m.flags == 0);
     CHECK_NEAR(m.px_nm, 2.5, 1e-9);
-    CHECK(m.strip_rows == NY - 50 && m.ny == 50 && m.file_ny == NY && !strcmp(m.acquired_at, "2024-06-30T17:06:40"));
+    CHECK(m.strip_rows == NY - 50 && m.ny == 50 && m.file_ny == NY &&
+          !strcmp(m.acquired_at, "2024-06-30T17:06:40"));
     micrograph_free(&m);
 
     picture p = { 0 };
-    tag_34682_read("[Beam]\nScan=EScan\n[EScan]\nPixelWidth=3e-9\nPixelHeight=3.1e-9\n[Private X]\nTimeOfCreation=13.06.2016 08:00:01\n", 512, 400, &p);
+    tag_34682_read("[Beam]\nScan=EScan\n[EScan]\nPixelWidth=3e-9\nPixelHeight=3.1e-9\n[Private "
+                   "X]\nTimeOfCreation=13.06.2016 08:00:01\n",
+                   512, 400, &p);
     CHECK(p.scales.n == 1 && p.strip_stated == 0 && !strcmp(p.acquired_at, "2016-06-13T08:00:01"));
     CHECK_NEAR(p.scales.list[0].y_nm, 3.1, 1e-9);
     p = (picture){ 0 };
-    tag_34682_read("[Beam]\nBeam=EBeam\n[EBeam]\nHFW=1.28e-6\nVFW=1e-6\n[Image]\nResolutionX=1024\nResolutionY=800\n", 512, 400, &p);
+    tag_34682_read(
+        "[Beam]\nBeam=EBeam\n[EBeam]\nHFW=1.28e-6\nVFW=1e-6\n[Image]\nResolutionX=1024\nResolutionY=800\n",
+        512, 400, &p);
     CHECK_NEAR(p.scales.list[0].x_nm, 2.5, 1e-9); /* 1.25 at 1024 columns, now 512 */
     CHECK(p.strip_stated == 0 && strstr(p.note, "recorded 1024 pixels wide, now 512"));
     p = (picture){ 0 };

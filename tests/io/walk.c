@@ -20,9 +20,12 @@ int main(void) {
     file_list l = { 0 };
     scratch_make();
     static const char *const made[] = { "in", "in/sub", "in/sub/.hidden", "in/done", "in/foreign", "out" };
-    for (size_t i = 0; i < sizeof made / sizeof made[0]; i++) CHECK(folder_make(scratch(made[i]), &e) == ST_OK);
-    static const char *const images[] = { "in/b.png", "in/a.TIF", "in/B.tiff", "in/sub/c.tif", "in/sub/.hidden/d.png",
-                                          "in/.e.png", "in/done/f.png", "in/foreign/g.png", "out/h.png", "in/\xff\x01.png" };
+    for (size_t i = 0; i < sizeof made / sizeof made[0]; i++)
+        CHECK(folder_make(scratch(made[i]), &e) == ST_OK);
+    static const char *const images[] = {
+        "in/b.png",  "in/a.TIF",      "in/B.tiff",        "in/sub/c.tif", "in/sub/.hidden/d.png",
+        "in/.e.png", "in/done/f.png", "in/foreign/g.png", "out/h.png",    "in/\xff\x01.png"
+    };
     for (size_t i = 0; i < sizeof images / sizeof images[0]; i++) put(images[i]);
     put("in/notes.txt");
     static const char own[] = "{ \"name\": \"sward-results\" }", other[] = "{ \"name\": \"weather\" }";
@@ -34,7 +37,8 @@ int main(void) {
     CHECK(!symlink("nowhere.png", scratch("in/broken.png")));
 
     CHECK(folder_walk(scratch("in"), load_knows_name, &l, &e) == ST_OK);
-    static const char *const want[] = { "B.tiff", "a.TIF", "b.png", "foreign/g.png", "sub/c.tif", "z.png", "\xff\x01.png" };
+    static const char *const want[] = { "B.tiff",    "a.TIF", "b.png",       "foreign/g.png",
+                                        "sub/c.tif", "z.png", "\xff\x01.png" };
     CHECK(l.n == sizeof want / sizeof want[0]);
     for (size_t i = 0; i < l.n && i < sizeof want / sizeof want[0]; i++) CHECK(!strcmp(l.paths[i], want[i]));
     file_list_free(&l);
@@ -47,7 +51,8 @@ int main(void) {
     }
     memcpy(deep + strlen(deep), "/x.png", 7);
     put(deep);
-    CHECK(folder_walk(scratch("in"), load_knows_name, &l, &e) == ST_OK && !walked(&l, deep + 3) && walked(&l, "b.png"));
+    CHECK(folder_walk(scratch("in"), load_knows_name, &l, &e) == ST_OK && !walked(&l, deep + 3) &&
+          walked(&l, "b.png"));
     file_list_free(&l);
     CHECK_FAILS(folder_walk(scratch("absent"), load_knows_name, &l, &e), ST_IO, e, "no such folder");
     CHECK_FAILS(folder_walk(scratch("in/b.png"), load_knows_name, &l, &e), ST_IO, e, "cannot be read");
