@@ -22,6 +22,7 @@
 
 #include "base/mem.h"
 #include "link/predict_priv.h"
+#include "link/surface_priv.h"
 
 static const double OBLIQUE = 0.065;   /* per sin^2 of the angle, absolute R */
 static const double RESIDUAL = 0.5;    /* least share of u that is not bias */
@@ -88,8 +89,8 @@ static status add_inputs(workspace *w, prediction *out, error *e) {
     if (in->height_nm.u > 0.0) st = add_height(w, in->height_nm.u, &out->u_height, e);
     if (st == ST_OK && l->exponent_u > 0.0) {
         variant a = *w->central, b = *w->central;
-        a.exponent = fmax(a.exponent - l->exponent_u, 0.25 * a.exponent);
-        b.exponent += l->exponent_u;
+        a.exponent = fmax(fmax(a.exponent - l->exponent_u, 0.25 * a.exponent), EXPONENT_MIN);
+        b.exponent = fmin(b.exponent + l->exponent_u, EXPONENT_MAX);
         st = add_input(w, &a, &b, 2.0, &out->u_shape, e);
     }
     if (st == ST_OK && l->height_spread > 0.0) {

@@ -12,7 +12,7 @@
 #include "link/surface_priv.h"
 
 const char *height_source_name(height_source s) {
-    static const char *const names[] = { "sheet", "calibrated", "protocol", "aspect", "default" };
+    static const char names[][12] = { "sheet", "calibrated", "protocol", "aspect", "default" };
     return names[s];
 }
 
@@ -27,7 +27,7 @@ link_options link_defaults(void) {
 status link_check(double height_nm, const link_options *o, error *e) {
     if (!(height_nm >= 0.0) || !isfinite(height_nm))
         return fail(e, ST_BAD_INPUT, "height_nm: found %g, expected a height of 0 nm or more", height_nm);
-    if (!(o->exponent >= 0.05 && o->exponent <= 20.0))
+    if (!(o->exponent >= EXPONENT_MIN && o->exponent <= EXPONENT_MAX))
         return fail(e, ST_BAD_INPUT, "shape: found the exponent %g, expected a number above 0 (0.05 to 20; 1 is the "
                                      "cone, 2 the paraboloid)",
                     o->exponent);
@@ -90,7 +90,7 @@ double link_area_ratio(double height_nm, double spacing_nm, const link_options *
     error ignored = { 0 };
     if (!(spacing_nm > 0.0) || link_check(height_nm, o, &ignored) != ST_OK) return MISSING;
     if (!(height_nm > 0.0) || !(o->coverage > 0.0)) return 1.0;
-    if (heights_make(height_nm, NULL, 0, o, &c, &ignored) != ST_OK) return MISSING;
+    if (heights_make(height_nm, NULL, 0, o, HEIGHT_CLASSES, &c, &ignored) != ST_OK) return MISSING;
     double base = sqrt(o->coverage * sqrt(3.0) / 2.0 * spacing_nm * spacing_nm / PI), sum = 0.0;
     for (size_t i = 0; i < c.n; i++) sum += c.weight[i] * lateral(c.height_nm[i] / base, o->exponent);
     return 1.0 - o->coverage + o->coverage * sum;
