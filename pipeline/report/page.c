@@ -33,6 +33,7 @@ status report_write(const results *r, const char *out_dir, error *e) {
     add_head(r, &page);
     page_verdicts(r, &page);
     page_series(r, &page);
+    page_maps(r, &page);
     page_spectra(r, &page);
     page_texture(r, &page);
     page_pictures(r, out_dir, &page);

@@ -8,6 +8,7 @@ extern const char page_script[];             /* sorting of tables; the page is c
 
 void page_verdicts(const results *r, textbuf *out);  /* headline, verdict per sample and target */
 void page_series(const results *r, textbuf *out);    /* spacing and reflectance over the etches */
+void page_maps(const results *r, textbuf *out);      /* spacing over the wafer, where positions are known */
 void page_spectra(const results *r, textbuf *out);   /* optics table, one chart per sample */
 void page_texture(const results *r, textbuf *out);   /* all texture numbers of the samples */
 void page_pictures(const results *r, const char *out_dir, textbuf *out); /* overlays, status, reasons */

@@ -54,6 +54,8 @@ static const char pictures[] =
     "svg{display:block;width:100%;height:auto;min-width:520px;max-width:1072px}.wide svg{min-width:760px}\n"
     ".charts{display:grid;grid-template-columns:repeat(auto-fill,minmax(min(100%,440px),1fr));gap:10px 28px}\n"
     ".charts figure{overflow-x:auto}.charts svg{min-width:400px}\n"
+    ".maps{display:grid;grid-template-columns:repeat(auto-fill,minmax(min(100%,300px),1fr));gap:10px 28px}"
+    ".maps svg{min-width:0;max-width:340px}\n"
     ".cards{display:grid;grid-template-columns:repeat(auto-fill,minmax(min(100%,430px),1fr));gap:30px 28px;margin:16px 0}\n"
     ".card{border-top:3px solid var(--teal);padding-top:8px;min-width:0}\n"
     ".card.excluded{border-color:var(--amber)}.card.unreadable{border-color:var(--red)}\n"

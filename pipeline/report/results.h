@@ -23,6 +23,7 @@ typedef struct {
     const double *reference_wavelength_nm, *polished_R, *coated_R; size_t n_reference; /* flat references; may be NULL */
     const char *const *overlay_paths; /* [n_images] relative to out_dir, or NULL */
     const char *history_note;     /* where the ledger is, one sentence */
+    const double *sample_x_mm, *sample_y_mm; /* [n_samples] from the middle of the wafer, NAN unknown; NULL: no maps */
     const char *const *image_stems; /* [n_images] stem of features/<stem>.csv, profiles/<stem>.csv, NULL entries where
                                        none was written; may be NULL: then the stems of overlay_paths */
 } results;

@@ -118,6 +118,30 @@ static void check_picture(demo *d, const char *dir) {
     free(rgb);
 }
 
+/* Three located samples: 300 in the middle, 360 and 380 outside; sd 41.6 of 346.7. Two samples are no map. */
+static void check_map(const char *dir) {
+    static char names[4][4] = { "a", "b", "c", "d" }, wafer[] = "W<7>";
+    static const double spacing[4] = { 300.0, 360.0, 380.0, 340.0 };
+    const double x[4] = { 0.0, 50.0, -50.0, MISSING }, y[4] = { 0.0, 0.0, 0.0, 1.0 };
+    sample_row rows[4];
+    for (size_t i = 0; i < 4; i++) {
+        demo_sample_empty(&rows[i]);
+        rows[i].sample = names[i];
+        rows[i].wafer = wafer;
+        rows[i].spacing_nm = spacing[i];
+    }
+    results r = { .samples = rows, .n_samples = 4, .sample_x_mm = x, .sample_y_mm = y };
+    char *page = page_of(&r, dir);
+    CHECK(strstr(page, "Spacing in nm at 3 positions; outermost at 50 mm."));
+    CHECK(strstr(page, "(1 sd): 12 % of the mean; the edge is wider than the centre by 23 %."));
+    CHECK(strstr(page, "Map of the spacing on wafer W&lt;7&gt;") && strstr(page, ">360</text>"));
+    free(page);
+    r.n_samples = 2;
+    page = page_of(&r, dir);
+    CHECK(!strstr(page, "Wafer maps"));
+    free(page);
+}
+
 static void check_html(void) {
     textbuf t = { 0 };
     html_text(&t, "a\xc3\xa9\xe2\x82\xac\xf0\x9f\x98\x80\xc0\xaf\xed\xa0\x80\x01\t\n");
@@ -146,6 +170,7 @@ int main(void) {
     check_empty(dir);
     demo_make(&d);
     check_picture(&d, dir);
+    check_map(dir);
     check_html();
     CHECK(rmdir(dir) == 0);
     CHECK_FAILS(report_write(&d.r, "no/such/folder", &e), ST_IO, e, "report.html");
