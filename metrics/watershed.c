@@ -20,7 +20,7 @@ static const double cell_scale = 0.06; /* sigma of the smoothing / d */
 static const double max_climb = 0.30;  /* from a marker to the top its flood starts at / d */
 enum { LEVELS = 65536 };
 #define NO_PIXEL UINT32_MAX
-#define WAITING UINT32_MAX /* label of a pixel in a list; labels are far below */
+#define WAITING ((uint32_t)1 << 31) /* mark of a pixel in a list, beside the label of what reached it */
 
 typedef struct {
     uint32_t *next;         /* [pixels] */
@@ -72,25 +72,26 @@ static uint32_t queue_pop(queue *q) {
     return pixel;
 }
 
-static void reach(queue *q, uint32_t *cells, uint32_t to) {
+static void reach(queue *q, uint32_t *cells, uint32_t label, uint32_t to) {
     if (cells[to]) return;
-    cells[to] = WAITING;
+    cells[to] = WAITING | label;
     queue_push(q, to, q->level[to]);
 }
 
-/* Label of the steepest way up from a pixel to one that has a label. The first flood to arrive would be the
- * usual choice; but along a crease it leaks to the other side, a little further with every pixel. */
+/* Label of the steepest way up from a waiting pixel to one that has a label; of equals (plateaus) what
+ * reached it first. The first to arrive alone would be the usual choice; but along a crease it leaks to the
+ * other side, a little further with every pixel. */
 static uint32_t label_uphill(const float *g, const uint32_t *cells, size_t nx, size_t ny, uint32_t pixel) {
     const float diagonal = 0.70710678f;
     size_t x = pixel % nx, y = pixel / nx;
-    uint32_t best = 0;
+    uint32_t first = cells[pixel] & ~WAITING, best = first;
     float steepest = -HUGE_VALF;
     for (size_t yy = y ? y - 1 : 0; yy <= y + 1 && yy < ny; yy++)
         for (size_t xx = x ? x - 1 : 0; xx <= x + 1 && xx < nx; xx++) {
             size_t i = yy * nx + xx;
-            if (!cells[i] || cells[i] == WAITING) continue;
+            if (!cells[i] || (cells[i] & WAITING)) continue;
             float slope = (g[i] - g[pixel]) * (xx != x && yy != y ? diagonal : 1.0f);
-            if (slope > steepest) {
+            if (slope > steepest || (cells[i] == first && !(slope < steepest))) {
                 steepest = slope;
                 best = cells[i];
             }
@@ -117,11 +118,11 @@ static void flood(queue *q, const float *g, size_t nx, size_t ny, const detectio
     }
     for (uint32_t p = queue_pop(q); p != NO_PIXEL; p = queue_pop(q)) {
         size_t x = p % nx, y = p / nx;
-        if (cells[p] == WAITING) cells[p] = label_uphill(g, cells, nx, ny, p);
-        if (y) reach(q, cells, (uint32_t)(p - nx));
-        if (x) reach(q, cells, p - 1);
-        if (x + 1 < nx) reach(q, cells, p + 1);
-        if (y + 1 < ny) reach(q, cells, (uint32_t)(p + nx));
+        if (cells[p] & WAITING) cells[p] = label_uphill(g, cells, nx, ny, p);
+        if (y) reach(q, cells, cells[p], (uint32_t)(p - nx));
+        if (x) reach(q, cells, cells[p], p - 1);
+        if (x + 1 < nx) reach(q, cells, cells[p], p + 1);
+        if (y + 1 < ny) reach(q, cells, cells[p], (uint32_t)(p + nx));
     }
 }
 
