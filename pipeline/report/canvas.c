@@ -29,7 +29,8 @@ static long inside(double v, size_t n) {
 }
 
 static box touched(const canvas *c, double x0, double y0, double x1, double y1) {
-    if (!(x1 >= -1.0 && y1 >= -1.0 && x0 <= (double)c->nx && y0 <= (double)c->ny)) return (box){ 0, 0, -1, -1 };
+    if (!(x1 >= -1.0 && y1 >= -1.0 && x0 <= (double)c->nx && y0 <= (double)c->ny))
+        return (box){ 0, 0, -1, -1 };
     return (box){ inside(floor(x0), c->nx), inside(floor(y0), c->ny), inside(ceil(x1), c->nx),
                   inside(ceil(y1), c->ny) };
 }
@@ -54,7 +55,8 @@ void canvas_ring(canvas *c, double x, double y, double radius, double width, ink
 
 void canvas_line(canvas *c, double x0, double y0, double x1, double y1, double width, ink i) {
     double reach = 0.5 * width + 1.0, dx = x1 - x0, dy = y1 - y0, length2 = dx * dx + dy * dy;
-    box b = touched(c, fmin(x0, x1) - reach, fmin(y0, y1) - reach, fmax(x0, x1) + reach, fmax(y0, y1) + reach);
+    box b =
+        touched(c, fmin(x0, x1) - reach, fmin(y0, y1) - reach, fmax(x0, x1) + reach, fmax(y0, y1) + reach);
     for (long v = b.y0; v <= b.y1; v++)
         for (long u = b.x0; u <= b.x1; u++) {
             double px = (double)u - x0, py = (double)v - y0;

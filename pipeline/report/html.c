@@ -23,12 +23,18 @@ static size_t utf8_length(const unsigned char *s) {
 
 static const char *entity(unsigned char c) {
     switch (c) {
-    case '&': return "&amp;";
-    case '<': return "&lt;";
-    case '>': return "&gt;";
-    case '"': return "&quot;";
-    case '\'': return "&#39;";
-    default: return (c < 0x20 && c != '\n' && c != '\t') || c == 0x7f ? "\xef\xbf\xbd" : NULL;
+    case '&':
+        return "&amp;";
+    case '<':
+        return "&lt;";
+    case '>':
+        return "&gt;";
+    case '"':
+        return "&quot;";
+    case '\'':
+        return "&#39;";
+    default:
+        return (c < 0x20 && c != '\n' && c != '\t') || c == 0x7f ? "\xef\xbf\xbd" : NULL;
     }
 }
 
@@ -117,8 +123,8 @@ void html_badge(textbuf *out, const char *word) {
     };
     for (size_t i = 0; i < sizeof badge / sizeof badge[0]; i++)
         if (word && !strcmp(badge[i].word, word)) {
-            text_addf(out, "<span class=\"badge %s\"><span aria-hidden=\"true\">%s</span> %s</span>", badge[i].class_name,
-                      badge[i].sign, badge[i].shown);
+            text_addf(out, "<span class=\"badge %s\"><span aria-hidden=\"true\">%s</span> %s</span>",
+                      badge[i].class_name, badge[i].sign, badge[i].shown);
             return;
         }
     text_add(out, "<span class=\"badge none\">");

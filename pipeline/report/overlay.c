@@ -115,7 +115,8 @@ static void draw_guard(canvas *c, const texture *t, double scale) {
 }
 
 static double spacing_px(const texture *t) {
-    return isfinite(t->spacing_acf.value) && t->spacing_acf.value > 0.0 ? t->spacing_acf.value : t->spacing_hex.value;
+    return isfinite(t->spacing_acf.value) && t->spacing_acf.value > 0.0 ? t->spacing_acf.value
+                                                                        : t->spacing_hex.value;
 }
 
 /* Lines and markers grow with the picture, because a large one is looked at scaled down. */
@@ -196,8 +197,8 @@ static void add_legend(canvas *c, const micrograph *m, const texture *t, int uni
     line[n].i = paper_ink;
     line[n++].length_px = bar / px;
     if (isfinite(d) && d > 0.0 && d < (double)c->nx) {
-        snprintf(line[n].label, sizeof line[n].label, "spacing %s %s", number_text(d * px, spacing_digits(), number),
-                 length_unit);
+        snprintf(line[n].label, sizeof line[n].label, "spacing %s %s",
+                 number_text(d * px, spacing_digits(), number), length_unit);
         line[n].i = marker_ink;
         line[n++].length_px = d;
     }
@@ -248,10 +249,12 @@ static int lettering(size_t nx) {
 }
 
 status overlay_draw(const micrograph *m, const texture *t, uint8_t **rgb, error *e) {
-    if (!m->px || !m->nx || !m->ny) return fail(e, ST_BAD_INPUT, "the overlay needs a picture, this one is empty");
+    if (!m->px || !m->nx || !m->ny)
+        return fail(e, ST_BAD_INPUT, "the overlay needs a picture, this one is empty");
     if (m->nx > LIMIT_PIXELS / m->ny) return fail(e, ST_NO_MEMORY, "the picture is too large for an overlay");
     if (t->cells && (t->nx != m->nx || t->ny != m->ny))
-        return fail(e, ST_BUG, "cells of %zu x %zu px do not fit a picture of %zu x %zu px", t->nx, t->ny, m->nx, m->ny);
+        return fail(e, ST_BUG, "cells of %zu x %zu px do not fit a picture of %zu x %zu px", t->nx, t->ny,
+                    m->nx, m->ny);
     stretch s;
     status st = find_stretch(m, &s, e);
     if (st) return st;

@@ -57,4 +57,5 @@ const uint8_t overlay_glyphs[][9] = {
     { 0x00, 0x00, 0x11, 0x11, 0x11, 0x11, 0x0f, 0x01, 0x0e }, /* y */
     { 0x00, 0x00, 0x1f, 0x02, 0x04, 0x08, 0x1f, 0x00, 0x00 }, /* z */
 };
-_Static_assert(sizeof overlay_glyphs / sizeof overlay_glyphs[0] == sizeof overlay_characters - 1, "one glyph per character");
+_Static_assert(sizeof overlay_glyphs / sizeof overlay_glyphs[0] == sizeof overlay_characters - 1,
+               "one glyph per character");

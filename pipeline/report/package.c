@@ -10,9 +10,12 @@
 
 static const char *field_type(column_kind kind) {
     switch (kind) {
-    case COL_NUMBER: return "number";
-    case COL_COUNT: return "integer";
-    default: return "string";
+    case COL_NUMBER:
+        return "number";
+    case COL_COUNT:
+        return "integer";
+    default:
+        return "string";
     }
 }
 
@@ -56,10 +59,12 @@ static void add_resource(textbuf *out, int first, const resource *s) {
     json_string(out, s->path);
     text_add(out, ", \"title\": ");
     json_string(out, s->title);
-    text_add(out, ",\n      \"profile\": \"tabular-data-resource\", \"format\": \"csv\", \"mediatype\": \"text/csv\", "
-                  "\"encoding\": \"utf-8\",\n      \"dialect\": {\"delimiter\": \",\", \"lineTerminator\": \"\\n\", "
-                  "\"quoteChar\": \"\\\"\", \"doubleQuote\": true, \"header\": true},\n      \"schema\": {"
-                  "\"missingValues\": [\"\"], ");
+    text_add(
+        out,
+        ",\n      \"profile\": \"tabular-data-resource\", \"format\": \"csv\", \"mediatype\": \"text/csv\", "
+        "\"encoding\": \"utf-8\",\n      \"dialect\": {\"delimiter\": \",\", \"lineTerminator\": \"\\n\", "
+        "\"quoteChar\": \"\\\"\", \"doubleQuote\": true, \"header\": true},\n      \"schema\": {"
+        "\"missingValues\": [\"\"], ");
     if (s->key) text_addf(out, "\"primaryKey\": \"%s\", ", s->key);
     text_add(out, "\"fields\": [");
     for (size_t i = 0; i < s->n_columns; i++) {
@@ -83,8 +88,8 @@ int image_stem(const results *r, size_t i, textbuf *out) {
 }
 
 /* features/<stem>.csv or profiles/<stem>.csv of image i, if it is there. */
-static void add_image_resource(const results *r, size_t i, const char *folder, const column *columns, size_t n_columns,
-                               const char *out_dir, textbuf *out) {
+static void add_image_resource(const results *r, size_t i, const char *folder, const column *columns,
+                               size_t n_columns, const char *out_dir, textbuf *out) {
     textbuf path = { 0 }, name = { 0 }, title = { 0 };
     char *full = NULL;
     text_addf(&path, "%s/", folder);
@@ -96,7 +101,10 @@ static void add_image_resource(const results *r, size_t i, const char *folder, c
         out->failed = 1;
     else if (file_exists(full))
         add_resource(out, 0,
-                     &(resource){ .name = name.s, .path = path.s, .title = title.s, .columns = columns,
+                     &(resource){ .name = name.s,
+                                  .path = path.s,
+                                  .title = title.s,
+                                  .columns = columns,
                                   .n_columns = n_columns });
 done:
     free(full);
@@ -106,20 +114,35 @@ done:
 }
 
 void package_json(const results *r, const char *out_dir, textbuf *out) {
-    text_add(out, "{\n  \"profile\": \"tabular-data-package\",\n  \"name\": \"sward-results\",\n  \"title\": ");
+    text_add(out,
+             "{\n  \"profile\": \"tabular-data-package\",\n  \"name\": \"sward-results\",\n  \"title\": ");
     json_string(out, r->title ? r->title : "sward results");
-    text_add(out, ",\n  \"description\": \"Texture of etched silicon measured on top-view micrographs, and the reflectance "
-                  "predicted from it. An empty cell means not measured; reason or flags says why.\",\n  \"resources\": [");
+    text_add(out, ",\n  \"description\": \"Texture of etched silicon measured on top-view micrographs, and "
+                  "the reflectance "
+                  "predicted from it. An empty cell means not measured; reason or flags says why.\",\n  "
+                  "\"resources\": [");
     add_resource(out, 1,
-                 &(resource){ .name = "images", .path = "images.csv", .title = "one row per micrograph", .key = "file",
-                              .columns = image_columns, .n_columns = n_image_columns });
+                 &(resource){ .name = "images",
+                              .path = "images.csv",
+                              .title = "one row per micrograph",
+                              .key = "file",
+                              .columns = image_columns,
+                              .n_columns = n_image_columns });
     add_resource(out, 0,
-                 &(resource){ .name = "samples", .path = "samples.csv", .title = "one row per sample", .key = "sample",
-                              .columns = sample_columns, .n_columns = n_sample_columns, .extra = r->sample_extra,
+                 &(resource){ .name = "samples",
+                              .path = "samples.csv",
+                              .title = "one row per sample",
+                              .key = "sample",
+                              .columns = sample_columns,
+                              .n_columns = n_sample_columns,
+                              .extra = r->sample_extra,
                               .n_extra = r->n_sample_extra });
     add_resource(out, 0,
-                 &(resource){ .name = "spectra", .path = "spectra.csv", .title = "predicted reflectance spectra",
-                              .columns = spectrum_columns, .n_columns = n_spectrum_columns });
+                 &(resource){ .name = "spectra",
+                              .path = "spectra.csv",
+                              .title = "predicted reflectance spectra",
+                              .columns = spectrum_columns,
+                              .n_columns = n_spectrum_columns });
     for (size_t i = 0; out_dir && i < r->n_images; i++) {
         add_image_resource(r, i, "features", feature_columns, n_feature_columns, out_dir, out);
         add_image_resource(r, i, "profiles", profile_columns, n_profile_columns, out_dir, out);

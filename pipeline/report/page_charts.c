@@ -36,7 +36,8 @@ static const char *text_or_empty(const char *s) { return s ? s : ""; }
 
 /* The place for the next etch; a further measurement of the last one replaces it, the oldest gives way when full. */
 static size_t next_place(etches *t, const char *name, const char *time) {
-    if (t->n && *time && !strcmp(t->name[t->n - 1], name) && !strcmp(t->time[t->n - 1], time)) return t->n - 1;
+    if (t->n && *time && !strcmp(t->name[t->n - 1], name) && !strcmp(t->time[t->n - 1], time))
+        return t->n - 1;
     if (t->n < MAX_ETCHES) {
         t->x[t->n] = (double)t->n;
         return t->n++;
@@ -57,8 +58,8 @@ static size_t next_place(etches *t, const char *name, const char *time) {
     return MAX_ETCHES - 1;
 }
 
-static void add_etch(etches *t, const char *name, const char *time, double spacing, double spacing_u, double R,
-                     const char *verdict) {
+static void add_etch(etches *t, const char *name, const char *time, double spacing, double spacing_u,
+                     double R, const char *verdict) {
     size_t i = next_place(t, text_or_empty(name), text_or_empty(time));
     t->name[i] = text_or_empty(name);
     t->time[i] = text_or_empty(time);
@@ -83,9 +84,9 @@ static const char *member_text(const cJSON *o, const char *key) {
 static void from_ledger(etches *t, const cJSON *list) {
     const cJSON *row;
     cJSON_ArrayForEach(row, list) {
-        add_etch(t, member_text(row, "sample"), member_text(row, "etched_at"), member_number(row, "spacing_nm"),
-                 member_number(row, "spacing_nm_u"), member_number(row, "weighted_reflectance"),
-                 member_text(row, "verdict"));
+        add_etch(t, member_text(row, "sample"), member_text(row, "etched_at"),
+                 member_number(row, "spacing_nm"), member_number(row, "spacing_nm_u"),
+                 member_number(row, "weighted_reflectance"), member_text(row, "verdict"));
     }
 }
 
@@ -107,7 +108,8 @@ static void from_samples(etches *t, const results *r, textbuf *out) {
     qsort(order, r->n_samples, sizeof(sample_row *), by_time);
     for (size_t i = 0; i < r->n_samples; i++) {
         const sample_row *s = order[i];
-        add_etch(t, s->sample, s->etched_at, s->spacing_nm, s->spacing_nm_u, s->weighted_reflectance, s->verdict);
+        add_etch(t, s->sample, s->etched_at, s->spacing_nm, s->spacing_nm_u, s->weighted_reflectance,
+                 s->verdict);
     }
     free(order);
 }
@@ -118,7 +120,9 @@ static void add_details(etches *t, const results *r) {
     for (size_t i = 0; i < t->n; i++)
         for (size_t k = 0; k < r->n_samples; k++) {
             const sample_row *s = &r->samples[k];
-            if (strcmp(t->name[i], text_or_empty(s->sample)) || strcmp(t->time[i], text_or_empty(s->etched_at))) continue;
+            if (strcmp(t->name[i], text_or_empty(s->sample)) ||
+                strcmp(t->time[i], text_or_empty(s->etched_at)))
+                continue;
             t->R_lo[i] = 100.0 * s->weighted_reflectance_lo;
             t->R_hi[i] = 100.0 * s->weighted_reflectance_hi;
             t->spacing_mark[i] = mark_of(page_extra(r, s, "verdict_spacing_nm"));
@@ -144,17 +148,31 @@ static int any_finite(const double *v, size_t n) {
 
 static void draw_series(const results *r, const etches *t, const char *name, textbuf *out) {
     int R = !strcmp(name, "weighted_reflectance");
-    plot_series s = { .x = t->x, .y = R ? t->R : t->spacing, .lo = R ? t->R_lo : t->spacing_lo,
-                      .hi = R ? t->R_hi : t->spacing_hi, .n = t->n, .style = PLOT_POINTS, .marks = R ? t->R_mark : t->spacing_mark };
+    plot_series s = { .x = t->x,
+                      .y = R ? t->R : t->spacing,
+                      .lo = R ? t->R_lo : t->spacing_lo,
+                      .hi = R ? t->R_hi : t->spacing_hi,
+                      .n = t->n,
+                      .style = PLOT_POINTS,
+                      .marks = R ? t->R_mark : t->spacing_mark };
     plot p = { .title = R ? "Weighted reflectance over the etches" : "Spacing over the etches",
-               .x_label = "samples, in time order of the etch", .y_label = R ? "weighted reflectance (%)" : "spacing (nm)",
-               .from_zero = R, .y_lo = MISSING, .y_hi = MISSING, .names = t->name, .n_names = t->n, .series = &s, .n_series = 1,
-               .width = 1040, .height = 300 };
+               .x_label = "samples, in time order of the etch",
+               .y_label = R ? "weighted reflectance (%)" : "spacing (nm)",
+               .from_zero = R,
+               .y_lo = MISSING,
+               .y_hi = MISSING,
+               .names = t->name,
+               .n_names = t->n,
+               .series = &s,
+               .n_series = 1,
+               .width = 1040,
+               .height = 300 };
     if (!any_finite(s.y, t->n)) return;
     find_target(r, name, R ? 100.0 : 1.0, &p);
     text_add(out, "<figure><div class=\"scroll wide\" tabindex=\"0\">\n");
     plot_svg(&p, out);
-    text_add(out, R ? "</div><figcaption>Bars: 95 % interval of the prediction, where this run made it.</figcaption></figure>\n"
+    text_add(out, R ? "</div><figcaption>Bars: 95 % interval of the prediction, where this run made "
+                      "it.</figcaption></figure>\n"
                     : "</div><figcaption>Bars: \xc2\xb1 U (k = 2).</figcaption></figure>\n");
 }
 
@@ -179,8 +197,9 @@ void page_series(const results *r, textbuf *out) {
     draw_series(r, t, "spacing_nm", out);
     draw_series(r, t, "weighted_reflectance", out);
     if (t->left_out)
-        text_addf(out, "<p class=\"small\">The last %zu etches are drawn; %zu older ones are in the ledger.</p>\n", t->n,
-                  t->left_out);
+        text_addf(out,
+                  "<p class=\"small\">The last %zu etches are drawn; %zu older ones are in the ledger.</p>\n",
+                  t->n, t->left_out);
     if (r->history_note && *r->history_note) {
         text_add(out, "<p class=\"small\">");
         html_text(out, r->history_note);
@@ -214,7 +233,8 @@ static void thin_spectrum(const spectrum_row *s, size_t n, thin_curve *c) {
 static void thin_reference(const results *r, const double *R, thin_curve *c) {
     size_t step = stride(r->n_reference);
     c->n = 0;
-    for (size_t i = 0; R && r->reference_wavelength_nm && i < r->n_reference && c->n < MAX_POINTS; i += step) {
+    for (size_t i = 0; R && r->reference_wavelength_nm && i < r->n_reference && c->n < MAX_POINTS;
+         i += step) {
         c->x[c->n] = r->reference_wavelength_nm[i];
         c->y[c->n++] = 100.0 * R[i];
     }
@@ -249,16 +269,38 @@ static void draw_spectrum(const results *r, size_t from, size_t n, spectrum_curv
     else if (*light && strcmp(light, "mean"))
         text_addf(&title, ", %s polarised", light);
     plot_series series[3] = {
-        { .x = k->polished.x, .y = k->polished.y, .n = k->polished.n, .style = PLOT_DASHED, .tone = 2,
+        { .x = k->polished.x,
+          .y = k->polished.y,
+          .n = k->polished.n,
+          .style = PLOT_DASHED,
+          .tone = 2,
           .label = k->polished.n ? "polished" : NULL },
-        { .x = k->coated.x, .y = k->coated.y, .n = k->coated.n, .style = PLOT_DOTTED, .tone = 1,
+        { .x = k->coated.x,
+          .y = k->coated.y,
+          .n = k->coated.n,
+          .style = PLOT_DOTTED,
+          .tone = 1,
           .label = k->coated.n ? "75 nm nitride" : NULL },
-        { .x = k->sample.x, .y = k->sample.y, .lo = k->sample.lo, .hi = k->sample.hi, .n = k->sample.n, .tone = 0,
+        { .x = k->sample.x,
+          .y = k->sample.y,
+          .lo = k->sample.lo,
+          .hi = k->sample.hi,
+          .n = k->sample.n,
+          .tone = 0,
           .label = "this texture, 95 % band" },
     };
-    plot p = { .title = title.s ? title.s : "", .x_label = "wavelength (nm)", .y_label = "reflectance (%), log scale",
-               .log_y = 1, .y_lo = k->floor, .y_hi = 100.0, .target_lo = MISSING, .target_hi = MISSING, .series = series, .n_series = 3,
-               .width = 520, .height = 330 };
+    plot p = { .title = title.s ? title.s : "",
+               .x_label = "wavelength (nm)",
+               .y_label = "reflectance (%), log scale",
+               .log_y = 1,
+               .y_lo = k->floor,
+               .y_hi = 100.0,
+               .target_lo = MISSING,
+               .target_hi = MISSING,
+               .series = series,
+               .n_series = 3,
+               .width = 520,
+               .height = 330 };
     text_add(out, "<figure>");
     plot_svg(&p, out);
     text_add(out, "</figure>\n");
@@ -268,8 +310,8 @@ static void draw_spectrum(const results *r, size_t from, size_t n, spectrum_curv
 
 static int same_curve(const spectrum_row *a, const spectrum_row *b) {
     return !strcmp(text_or_empty(a->sample), text_or_empty(b->sample)) &&
-           !strcmp(text_or_empty(a->polarization), text_or_empty(b->polarization)) && !(a->angle_deg < b->angle_deg) &&
-           !(a->angle_deg > b->angle_deg);
+           !strcmp(text_or_empty(a->polarization), text_or_empty(b->polarization)) &&
+           !(a->angle_deg < b->angle_deg) && !(a->angle_deg > b->angle_deg);
 }
 
 static void draw_spectra(const results *r, textbuf *out) {
@@ -289,17 +331,28 @@ static void draw_spectra(const results *r, textbuf *out) {
         if (drawn < MAX_SPECTRA && ++drawn) draw_spectrum(r, from, to - from, k, out);
     }
     text_add(out, "</div>\n");
-    text_addf(out, "<p class=\"small\">All charts have the same axes. A curve that leaves the chart at the bottom lies below "
-                   "%s %%.</p>\n", number_text(k->floor, 3, floor_text));
+    text_addf(out,
+              "<p class=\"small\">All charts have the same axes. A curve that leaves the chart at the bottom "
+              "lies below "
+              "%s %%.</p>\n",
+              number_text(k->floor, 3, floor_text));
     if (curves > drawn)
-        text_addf(out, "<p class=\"small\">The first %zu of %zu spectra are drawn; spectra.csv holds them all.</p>\n", drawn,
-                  curves);
+        text_addf(
+            out,
+            "<p class=\"small\">The first %zu of %zu spectra are drawn; spectra.csv holds them all.</p>\n",
+            drawn, curves);
     free(k);
 }
 
-static const char *const optics_shown[] = { "weighted_reflectance", "current_loss_mA_cm2", "polished_reflectance",
-                                            "coated_reflectance",   "subwavelength_share", "height_nm",
-                                            "height_source",        "aspect",              "area_ratio" };
+static const char *const optics_shown[] = { "weighted_reflectance",
+                                            "current_loss_mA_cm2",
+                                            "polished_reflectance",
+                                            "coated_reflectance",
+                                            "subwavelength_share",
+                                            "height_nm",
+                                            "height_source",
+                                            "aspect",
+                                            "area_ratio" };
 enum { OPTICS_SHOWN = sizeof optics_shown / sizeof optics_shown[0] };
 
 static const char *optics_heading(const char *name) {
@@ -309,7 +362,9 @@ static const char *optics_heading(const char *name) {
     return page_quantity(name);
 }
 
-static const column *sample_column(const char *name) { return column_find(sample_columns, n_sample_columns, name); }
+static const column *sample_column(const char *name) {
+    return column_find(sample_columns, n_sample_columns, name);
+}
 
 static void optics_cell(textbuf *out, const sample_row *s, const char *name) {
     const column *c = sample_column(name), *lo = sample_column("weighted_reflectance_lo");
@@ -322,7 +377,8 @@ static void optics_cell(textbuf *out, const sample_row *s, const char *name) {
         return;
     }
     text_add(out, "<td class=\"n\">");
-    html_value(out, c, strcmp(name, "height_nm") ? NULL : sample_column("height_nm_u"), s, page_percent(name));
+    html_value(out, c, strcmp(name, "height_nm") ? NULL : sample_column("height_nm_u"), s,
+               page_percent(name));
     text_add(out, "</td>");
     if (strcmp(name, "weighted_reflectance")) return;
     text_add(out, "<td class=\"n\">");
@@ -333,7 +389,8 @@ static void optics_cell(textbuf *out, const sample_row *s, const char *name) {
 }
 
 static void optics_table(const results *r, textbuf *out) {
-    text_add(out, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Predicted reflectance of the samples\">"
+    text_add(out, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Predicted reflectance "
+                  "of the samples\">"
                   "<table class=\"sort\"><thead><tr><th scope=\"col\">Sample</th>");
     for (size_t k = 0; k < OPTICS_SHOWN; k++) {
         const column *c = sample_column(optics_shown[k]);
@@ -344,7 +401,9 @@ static void optics_table(const results *r, textbuf *out) {
         else if (c && c->unit[0] && strcmp(c->unit, "1"))
             text_addf(out, "<br><span class=\"unit\">%s</span>", c->unit);
         text_add(out, "</th>");
-        if (!k) text_add(out, "<th scope=\"col\" class=\"n\">95 % interval<br><span class=\"unit\">%</span></th>");
+        if (!k)
+            text_add(out,
+                     "<th scope=\"col\" class=\"n\">95 % interval<br><span class=\"unit\">%</span></th>");
     }
     text_add(out, "</tr></thead><tbody>\n");
     for (size_t i = 0; i < r->n_samples; i++) {
@@ -359,10 +418,14 @@ static void optics_table(const results *r, textbuf *out) {
 
 void page_spectra(const results *r, textbuf *out) {
     if (!r->n_samples) return;
-    text_add(out, "<section id=\"optics\"><h2>Predicted reflectance</h2>\n<p class=\"lead\">Of the front surface only, by the "
-                  "graded-index model; averaged over the photon flux of the sun (AM1.5G). Light that a measurement gets back "
-                  "from the rear beyond about 1000 nm is not in these figures. Where the height is assumed, so is the "
-                  "reflectance.</p>\n");
+    text_add(
+        out,
+        "<section id=\"optics\"><h2>Predicted reflectance</h2>\n<p class=\"lead\">Of the front surface only, "
+        "by the "
+        "graded-index model; averaged over the photon flux of the sun (AM1.5G). Light that a measurement "
+        "gets back "
+        "from the rear beyond about 1000 nm is not in these figures. Where the height is assumed, so is the "
+        "reflectance.</p>\n");
     optics_table(r, out);
     if (r->n_spectra) draw_spectra(r, out);
     text_add(out, "</section>\n");

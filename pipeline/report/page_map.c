@@ -21,7 +21,8 @@ static int located(const results *r, size_t i) {
 static int same_text(const char *a, const char *b) { return !strcmp(a ? a : "", b ? b : ""); }
 
 static int same_wafer(const results *r, size_t i, size_t k) {
-    return same_text(r->samples[i].lot, r->samples[k].lot) && same_text(r->samples[i].wafer, r->samples[k].wafer);
+    return same_text(r->samples[i].lot, r->samples[k].lot) &&
+           same_text(r->samples[i].wafer, r->samples[k].wafer);
 }
 
 /* What the map says in figures. Centre: within a third of the outermost radius; edge: beyond two thirds. */
@@ -41,7 +42,8 @@ static wafer_figures figures_of(const results *r, const size_t *at, size_t n) {
         f.outermost_mm = fmax(f.outermost_mm, radius_mm(r, at[k]));
     }
     for (size_t k = 0; k < n; k++) {
-        double v = r->samples[at[k]].spacing_nm, share = f.outermost_mm > 0.0 ? radius_mm(r, at[k]) / f.outermost_mm : 0.0;
+        double v = r->samples[at[k]].spacing_nm,
+               share = f.outermost_mm > 0.0 ? radius_mm(r, at[k]) / f.outermost_mm : 0.0;
         squares += (v - f.mean) * (v - f.mean);
         f.worst = fmax(f.worst, fabs(v - f.mean));
         if (share <= 1.0 / 3.0) {
@@ -66,10 +68,13 @@ static void draw_point(const results *r, size_t i, const wafer_figures *f, textb
     double depth = f->worst > 0.0 ? fabs(s->spacing_nm - f->mean) / f->worst : 0.0;
     text_add(out, "<g><title>");
     html_text(out, s->sample);
-    text_addf(out, "</title><circle cx=\"%.1f\" cy=\"%.1f\" r=\"9\" style=\"fill:var(%s);stroke:var(--ink,#1b2430)\" "
-                   "fill-opacity=\"%.2f\"/>", x, y, s->spacing_nm < f->mean ? "--blue,#1660a8" : "--amber,#a85d00",
-              0.12 + 0.78 * depth);
-    text_addf(out, "<text x=\"%.1f\" y=\"%.1f\" text-anchor=\"middle\" style=\"fill:var(--ink,#1b2430)\">", x, y + 24.0);
+    text_addf(
+        out,
+        "</title><circle cx=\"%.1f\" cy=\"%.1f\" r=\"9\" style=\"fill:var(%s);stroke:var(--ink,#1b2430)\" "
+        "fill-opacity=\"%.2f\"/>",
+        x, y, s->spacing_nm < f->mean ? "--blue,#1660a8" : "--amber,#a85d00", 0.12 + 0.78 * depth);
+    text_addf(out, "<text x=\"%.1f\" y=\"%.1f\" text-anchor=\"middle\" style=\"fill:var(--ink,#1b2430)\">", x,
+              y + 24.0);
     if (c) html_cell(out, c, s);
     text_add(out, "</text></g>\n");
 }
@@ -81,13 +86,15 @@ static void add_percent(textbuf *out, double v) {
 
 static void add_caption(const wafer_figures *f, textbuf *out) {
     char text[NUMBER_TEXT];
-    text_addf(out, "<figcaption>Spacing in nm at %zu positions; outermost at %s mm. Spread over the wafer (1 sd): ", f->n,
-              number_text(f->outermost_mm, 4, text));
+    text_addf(
+        out, "<figcaption>Spacing in nm at %zu positions; outermost at %s mm. Spread over the wafer (1 sd): ",
+        f->n, number_text(f->outermost_mm, 4, text));
     add_percent(out, f->sd / f->mean);
     text_add(out, " % of the mean");
     if (isfinite(f->centre) && isfinite(f->edge)) {
-        text_add(out, f->edge < f->centre ? "; the edge is narrower than the centre by " : "; the edge is wider than the "
-                                                                                           "centre by ");
+        text_add(out, f->edge < f->centre ? "; the edge is narrower than the centre by "
+                                          : "; the edge is wider than the "
+                                            "centre by ");
         add_percent(out, fabs(f->edge / f->centre - 1.0));
         text_add(out, " %");
     }
@@ -97,12 +104,17 @@ static void add_caption(const wafer_figures *f, textbuf *out) {
 static void draw_map(const results *r, const size_t *at, size_t n, textbuf *out) {
     const sample_row *s = &r->samples[at[0]];
     wafer_figures f = figures_of(r, at, n);
-    text_addf(out, "<figure><svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 %d %d\" role=\"img\" font-size=\"12.5\" "
-                   "font-family=\"system-ui,sans-serif\" aria-label=\"Map of the spacing on wafer ", SIDE, SIDE);
+    text_addf(out,
+              "<figure><svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 %d %d\" role=\"img\" "
+              "font-size=\"12.5\" "
+              "font-family=\"system-ui,sans-serif\" aria-label=\"Map of the spacing on wafer ",
+              SIDE, SIDE);
     html_text(out, s->wafer);
-    text_addf(out, "\"><circle cx=\"%.1f\" cy=\"%.1f\" r=\"%d\" style=\"fill:none;stroke:var(--rule,#d5dbe3)\" "
-                   "stroke-dasharray=\"5 4\"/>\n<text x=\"4\" y=\"16\" font-size=\"14\" font-weight=\"600\" "
-                   "style=\"fill:var(--ink,#1b2430)\">", 0.5 * SIDE, 0.5 * SIDE, RADIUS);
+    text_addf(out,
+              "\"><circle cx=\"%.1f\" cy=\"%.1f\" r=\"%d\" style=\"fill:none;stroke:var(--rule,#d5dbe3)\" "
+              "stroke-dasharray=\"5 4\"/>\n<text x=\"4\" y=\"16\" font-size=\"14\" font-weight=\"600\" "
+              "style=\"fill:var(--ink,#1b2430)\">",
+              0.5 * SIDE, 0.5 * SIDE, RADIUS);
     if (s->lot && *s->lot) {
         html_text(out, s->lot);
         text_add(out, " ");
@@ -138,8 +150,10 @@ void page_maps(const results *r, textbuf *out) {
         size_t n = wafer_members(r, i, at);
         if (n < LEAST_POINTS) continue;
         if (!maps++)
-            text_add(out, "<section id=\"maps\"><h2>Wafer maps</h2>\n<p class=\"lead\">Blue: narrower than the mean of the "
-                          "wafer, amber: wider; the deeper, the further. Small differences may lie within U: compare.</p>\n"
+            text_add(out, "<section id=\"maps\"><h2>Wafer maps</h2>\n<p class=\"lead\">Blue: narrower than "
+                          "the mean of the "
+                          "wafer, amber: wider; the deeper, the further. Small differences may lie within U: "
+                          "compare.</p>\n"
                           "<div class=\"maps\">\n");
         draw_map(r, at, n, out);
     }

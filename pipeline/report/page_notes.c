@@ -28,7 +28,8 @@ static void add_flag_list(const results *r, textbuf *out) {
     for (int bit = 0; bit < FLAG_COUNT; bit++) {
         if (!flag_occurs(r, flag_word(bit))) continue;
         if (!n++)
-            text_add(out, "<h3>Remarks and reasons on this page</h3>\n<div class=\"scroll\" tabindex=\"0\"><table><thead><tr>"
+            text_add(out, "<h3>Remarks and reasons on this page</h3>\n<div class=\"scroll\" "
+                          "tabindex=\"0\"><table><thead><tr>"
                           "<th scope=\"col\">Word</th><th scope=\"col\">Meaning</th></tr></thead><tbody>\n");
         text_addf(out, "<tr><th scope=\"row\"><code>%s</code></th><td>", flag_word(bit));
         html_text(out, flag_meaning(bit));
@@ -44,9 +45,13 @@ static int is_twin(const column *c, size_t i) {
 }
 
 static void add_columns(const column *c, size_t n, const char *heading, textbuf *out) {
-    text_addf(out, "<h3>%s</h3>\n<div class=\"scroll\" tabindex=\"0\"><table><thead><tr><th scope=\"col\">Column</th>"
-                   "<th scope=\"col\">Unit</th><th scope=\"col\">Meaning, and where it stops being true</th></tr></thead>"
-                   "<tbody>\n", heading);
+    text_addf(
+        out,
+        "<h3>%s</h3>\n<div class=\"scroll\" tabindex=\"0\"><table><thead><tr><th scope=\"col\">Column</th>"
+        "<th scope=\"col\">Unit</th><th scope=\"col\">Meaning, and where it stops being "
+        "true</th></tr></thead>"
+        "<tbody>\n",
+        heading);
     for (size_t i = 0; i < n; i++) {
         if (is_twin(c, i)) continue;
         text_addf(out, "<tr><th scope=\"row\"><code>%s</code></th><td>", c[i].name);
@@ -59,28 +64,39 @@ static void add_columns(const column *c, size_t n, const char *heading, textbuf 
 }
 
 void page_meaning(const results *r, textbuf *out) {
-    text_add(out, "<section id=\"validity\"><h2>What the prediction leaves out</h2>\n"
-                  "<p><strong>Front surface only.</strong> Beyond about 1000 nm silicon lets light through to the rear and "
-                  "back out; a sphere measures that light as reflectance, these figures leave it out. Compare with a "
-                  "measurement over 300 to 1000 nm, total (diffuse and specular) reflectance.</p>\n"
-                  "<p><strong>Height is not in a top view.</strong> Below the diffraction limit height rules reflectance and "
-                  "spacing rules whether the model holds. The column <em>Height from</em> says whether the height was "
-                  "measured; if not, the reflectance is a scenario.</p>\n"
-                  "<p><strong>Graded index.</strong> The texture is taken as a layer whose index changes with depth. That is "
-                  "true for light that cannot resolve the features; the sub-wavelength share says for how much of the light. "
-                  "Where the texture is too coarse no figure is given.</p>\n"
-                  "<p><strong>Area is not recombination.</strong> A larger surface costs voltage only as far as it is badly "
-                  "passivated; the area ratio says nothing about that.</p></section>\n"
-                  "<section id=\"meaning\"><h2>What the numbers mean</h2>\n<p>Every measured quantity has a twin with "
-                  "<code>_u</code>: its combined standard uncertainty (JCGM 100) as an estimate of the mean of the etch's "
-                  "texture. This page prints twice that, U (k = 2).</p>\n");
+    text_add(
+        out,
+        "<section id=\"validity\"><h2>What the prediction leaves out</h2>\n"
+        "<p><strong>Front surface only.</strong> Beyond about 1000 nm silicon lets light through to the rear "
+        "and "
+        "back out; a sphere measures that light as reflectance, these figures leave it out. Compare with a "
+        "measurement over 300 to 1000 nm, total (diffuse and specular) reflectance.</p>\n"
+        "<p><strong>Height is not in a top view.</strong> Below the diffraction limit height rules "
+        "reflectance and "
+        "spacing rules whether the model holds. The column <em>Height from</em> says whether the height was "
+        "measured; if not, the reflectance is a scenario.</p>\n"
+        "<p><strong>Graded index.</strong> The texture is taken as a layer whose index changes with depth. "
+        "That is "
+        "true for light that cannot resolve the features; the sub-wavelength share says for how much of the "
+        "light. "
+        "Where the texture is too coarse no figure is given.</p>\n"
+        "<p><strong>Area is not recombination.</strong> A larger surface costs voltage only as far as it is "
+        "badly "
+        "passivated; the area ratio says nothing about that.</p></section>\n"
+        "<section id=\"meaning\"><h2>What the numbers mean</h2>\n<p>Every measured quantity has a twin with "
+        "<code>_u</code>: its combined standard uncertainty (JCGM 100) as an estimate of the mean of the "
+        "etch's "
+        "texture. This page prints twice that, U (k = 2).</p>\n");
     add_flag_list(r, out);
     add_columns(sample_columns, n_sample_columns, "Per sample (samples.csv)", out);
     add_columns(image_columns, n_image_columns, "Per micrograph (images.csv)", out);
     text_add(out, "</section>\n"
-                  "<section class=\"caution\" id=\"caution\"><h2>Before an etch is changed</h2>\n<p>Numbers on this page may "
-                  "suggest another time, gas or bath. Wet etchants (HF above all), plasma gases and silane can kill. Local "
-                  "codes, safety data sheets and licensed practice decide what may be done; this program advises, a person "
+                  "<section class=\"caution\" id=\"caution\"><h2>Before an etch is changed</h2>\n<p>Numbers "
+                  "on this page may "
+                  "suggest another time, gas or bath. Wet etchants (HF above all), plasma gases and silane "
+                  "can kill. Local "
+                  "codes, safety data sheets and licensed practice decide what may be done; this program "
+                  "advises, a person "
                   "decides.</p></section>\n");
 }
 
@@ -147,8 +163,10 @@ static void add_node(textbuf *out, const cJSON *node) {
 void page_inputs(const results *r, textbuf *out) {
     if (!r->manifest_json) return;
     cJSON *manifest = cJSON_Parse(r->manifest_json);
-    text_add(out, "<section id=\"inputs\" class=\"inputs\"><h2>Where these numbers come from</h2>\n<p class=\"lead\">Program, "
-                  "protocol and the SHA-256 of every input: the same inputs give the same digits again.</p>\n");
+    text_add(out,
+             "<section id=\"inputs\" class=\"inputs\"><h2>Where these numbers come from</h2>\n<p "
+             "class=\"lead\">Program, "
+             "protocol and the SHA-256 of every input: the same inputs give the same digits again.</p>\n");
     if (manifest) {
         cJSON_DeleteItemFromObjectCaseSensitive(manifest, "flags"); /* the list stands above */
         add_node(out, manifest);

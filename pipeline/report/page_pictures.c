@@ -55,7 +55,8 @@ static void add_reason(textbuf *out, const char *reason) {
     if (!known) html_text(out, reason);
 }
 
-static void add_fact(textbuf *out, const image_row *m, const char *name, const char *twin, const char *label) {
+static void add_fact(textbuf *out, const image_row *m, const char *name, const char *twin,
+                     const char *label) {
     const column *c = column_find(image_columns, n_image_columns, name);
     const column *u = twin ? column_find(image_columns, n_image_columns, twin) : NULL;
     char cell[NUMBER_TEXT];
@@ -71,7 +72,8 @@ static void add_fact(textbuf *out, const image_row *m, const char *name, const c
     text_add(out, "</dd>\n");
 }
 
-static void add_image(textbuf *out, const small_png *p, const char *lead, const char *file, const char *tail) {
+static void add_image(textbuf *out, const small_png *p, const char *lead, const char *file,
+                      const char *tail) {
     text_addf(out, "<img width=\"%zu\" height=\"%zu\" loading=\"lazy\" alt=\"%s", p->nx, p->ny, lead);
     html_text(out, file);
     text_addf(out, "%s\" src=\"data:image/png;base64,", tail);
@@ -80,8 +82,8 @@ static void add_image(textbuf *out, const small_png *p, const char *lead, const 
 }
 
 /* Reads the overlay of image i; otherwise says in its place why there is none. */
-static void read_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t spent, small_png *whole,
-                         small_png *detail, textbuf *out) {
+static void read_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t spent,
+                         small_png *whole, small_png *detail, textbuf *out) {
     const char *relative = r->overlay_paths ? r->overlay_paths[i] : NULL;
     error e = { 0 };
     char *path = relative ? path_join(out_dir, relative) : NULL;
@@ -121,12 +123,16 @@ static void add_facts(const image_row *m, textbuf *out) {
     text_add(out, "</dl>\n");
 }
 
-static void add_card(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent, textbuf *out) {
+static void add_card(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent,
+                     textbuf *out) {
     const image_row *m = &r->images[i];
     const char *word = m->status ? m->status : "";
     small_png whole = { 0 }, detail = { 0 };
     int excluded = !strcmp(word, "excluded"), unreadable = !strcmp(word, "unreadable");
-    text_addf(out, "<article id=\"micrograph-%zu\" class=\"card %s\"><h3>", i + 1, excluded ? "excluded" : unreadable ? "unreadable" : "used");
+    text_addf(out, "<article id=\"micrograph-%zu\" class=\"card %s\"><h3>", i + 1,
+              excluded     ? "excluded"
+              : unreadable ? "unreadable"
+                           : "used");
     html_text(out, m->file);
     text_add(out, "</h3>\n");
     read_picture(r, i, out_dir, width, *spent, &whole, &detail, out);
@@ -164,14 +170,19 @@ static int is_used(const image_row *m) { return m->status && !strcmp(m->status, 
 /* All that were not used are shown, whatever their number; of the others as many as a page can bear. */
 void page_pictures(const results *r, const char *out_dir, textbuf *out) {
     size_t spent = 0, width = thumb_width(r);
-    text_add(out, "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you trust the "
-                  "numbers: one marker per feature, none missing, none on nothing; borders in the valleys.</p>\n"
-                  "<ul class=\"key\"><li>filled marker: counted</li><li>hollow marker: outside the guard frame, not counted"
-                  "</li><li>thin lines: cells, faint where the frame cuts them</li><li>dashes: guard frame</li></ul>\n");
+    text_add(out,
+             "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you "
+             "trust the "
+             "numbers: one marker per feature, none missing, none on nothing; borders in the valleys.</p>\n"
+             "<ul class=\"key\"><li>filled marker: counted</li><li>hollow marker: outside the guard frame, "
+             "not counted"
+             "</li><li>thin lines: cells, faint where the frame cuts them</li><li>dashes: guard "
+             "frame</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
     text_add(out, "<div class=\"cards\">\n");
     size_t room = MAX_CARDS, left_out = 0;
-    for (size_t i = 0; i < r->n_images; i++) if (room && !is_used(&r->images[i])) room--;
+    for (size_t i = 0; i < r->n_images; i++)
+        if (room && !is_used(&r->images[i])) room--;
     for (size_t i = 0; i < r->n_images; i++) {
         int used = is_used(&r->images[i]);
         if (used && !room) {
@@ -183,7 +194,10 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
     }
     text_add(out, "</div>\n");
     if (left_out)
-        text_addf(out, "<p class=\"small\">%zu more micrographs were used and are not shown here; images.csv lists them "
-                       "all.</p>\n", left_out);
+        text_addf(
+            out,
+            "<p class=\"small\">%zu more micrographs were used and are not shown here; images.csv lists them "
+            "all.</p>\n",
+            left_out);
     text_add(out, "</section>\n");
 }

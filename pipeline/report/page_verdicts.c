@@ -7,7 +7,9 @@
 #include "report/html.h"
 #include "report/page.h"
 
-int page_percent(const char *name) { return strstr(name, "reflectance") || !strcmp(name, "subwavelength_share"); }
+int page_percent(const char *name) {
+    return strstr(name, "reflectance") || !strcmp(name, "subwavelength_share");
+}
 
 const char *page_quantity(const char *name) {
     static const char *const known[][2] = {
@@ -61,7 +63,8 @@ static void add_unit(textbuf *out, const column *c) {
 
 /* Value with U (k = 2), or with its 95 % interval where the table has one. */
 static void add_sample_value(textbuf *out, const sample_row *s, const char *name) {
-    const column *c = sample_column(name, ""), *lo = sample_column(name, "_lo"), *hi = sample_column(name, "_hi");
+    const column *c = sample_column(name, ""), *lo = sample_column(name, "_lo"),
+                 *hi = sample_column(name, "_hi");
     if (!c) {
         text_add(out, "\xe2\x80\x93");
         return;
@@ -87,7 +90,8 @@ static void add_limit(textbuf *out, const column *c, const char *name, double v)
 static void add_range(textbuf *out, const results *r, size_t k) {
     const char *name = r->target_quantity[k];
     const column *c = sample_column(name, "");
-    double lo = r->target_min ? r->target_min[k] : (double)NAN, hi = r->target_max ? r->target_max[k] : (double)NAN;
+    double lo = r->target_min ? r->target_min[k] : (double)NAN,
+           hi = r->target_max ? r->target_max[k] : (double)NAN;
     if (isfinite(lo) && isfinite(hi)) {
         add_limit(out, c, name, lo);
         text_add(out, " to ");
@@ -140,11 +144,14 @@ static void add_headline(const results *r, textbuf *out) {
     size_t undecided = count_verdicts(r, "undecided"), used = count_status(r, "ok");
     text_add(out, "<div class=\"headline\">\n");
     if (r->n_targets) {
-        add_tile(out, "good", conforms, r->n_samples, r->n_samples == 1 ? "sample conforms" : "samples conform");
+        add_tile(out, "good", conforms, r->n_samples,
+                 r->n_samples == 1 ? "sample conforms" : "samples conform");
         add_tile(out, fails ? "bad" : "none", fails, 0, "outside its target");
-        add_tile(out, undecided ? "open" : "none", undecided, 0, "undecided: the uncertainty straddles a limit");
+        add_tile(out, undecided ? "open" : "none", undecided, 0,
+                 "undecided: the uncertainty straddles a limit");
     } else {
-        add_tile(out, "none", r->n_samples, 0, r->n_samples == 1 ? "sample, no targets set" : "samples, no targets set");
+        add_tile(out, "none", r->n_samples, 0,
+                 r->n_samples == 1 ? "sample, no targets set" : "samples, no targets set");
     }
     add_tile(out, used < r->n_images ? "open" : "good", used, r->n_images, "micrographs used");
     text_add(out, "</div>\n");
@@ -176,9 +183,11 @@ static void add_not_used(const results *r, textbuf *out) {
 
 static void add_sample_head(const results *r, size_t i, textbuf *out) {
     const sample_row *s = &r->samples[i];
-    const char *detail[][2] = { { "lot ", s->lot }, { "wafer ", s->wafer }, { "position ", s->position },
-                                { "etched ", s->etched_at } };
-    text_addf(out, "<tbody class=\"sample\" id=\"sample-%zu\"><tr><th scope=\"rowgroup\" colspan=\"3\">", i + 1);
+    const char *detail[][2] = {
+        { "lot ", s->lot }, { "wafer ", s->wafer }, { "position ", s->position }, { "etched ", s->etched_at }
+    };
+    text_addf(out, "<tbody class=\"sample\" id=\"sample-%zu\"><tr><th scope=\"rowgroup\" colspan=\"3\">",
+              i + 1);
     html_text(out, s->sample);
     text_add(out, "<small>");
     for (size_t k = 0; k < 4; k++)
@@ -231,12 +240,16 @@ void page_verdicts(const results *r, textbuf *out) {
         text_add(out, "</pre></details>\n");
     }
     if (r->n_samples) {
-        text_add(out, "<h2>Verdict per sample</h2>\n<p class=\"lead\">Value \xc2\xb1 expanded uncertainty U (k = 2, about "
-                      "95 %); a range in brackets is a 95 % interval that need not be centred. A value conforms or fails "
-                      "only when its uncertainty is clear of the limit (ISO 14253-1).</p>\n"
-                      "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Verdict per sample\"><table>"
-                      "<thead><tr><th scope=\"col\">Quantity</th><th scope=\"col\">Value \xc2\xb1 U</th>"
-                      "<th scope=\"col\">Target</th><th scope=\"col\">Verdict</th></tr></thead>\n");
+        text_add(
+            out,
+            "<h2>Verdict per sample</h2>\n<p class=\"lead\">Value \xc2\xb1 expanded uncertainty U (k = 2, "
+            "about "
+            "95 %); a range in brackets is a 95 % interval that need not be centred. A value conforms or "
+            "fails "
+            "only when its uncertainty is clear of the limit (ISO 14253-1).</p>\n"
+            "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Verdict per sample\"><table>"
+            "<thead><tr><th scope=\"col\">Quantity</th><th scope=\"col\">Value \xc2\xb1 U</th>"
+            "<th scope=\"col\">Target</th><th scope=\"col\">Verdict</th></tr></thead>\n");
         for (size_t i = 0; i < r->n_samples; i++) {
             const sample_row *s = &r->samples[i];
             add_sample_head(r, i, out);
@@ -258,14 +271,17 @@ void page_verdicts(const results *r, textbuf *out) {
 }
 
 void page_texture(const results *r, textbuf *out) {
-    static const char *const shown[] = { "spacing_nm",  "density_per_um2", "size_d10_nm", "size_d50_nm", "size_d90_nm",
-                                         "size_gsd",    "clark_evans",     "bright_share" };
+    static const char *const shown[] = { "spacing_nm",  "density_per_um2", "size_d10_nm", "size_d50_nm",
+                                         "size_d90_nm", "size_gsd",        "clark_evans", "bright_share" };
     enum { SHOWN = sizeof shown / sizeof shown[0] };
     if (!r->n_samples) return;
-    text_add(out, "<section id=\"texture\"><h2>Texture</h2>\n<p class=\"lead\">Mean of the micrographs used \xc2\xb1 U (k = "
-                  "2). Sizes are equivalent circular diameters of the cells.</p>\n<div class=\"scroll\" tabindex=\"0\" "
-                  "role=\"region\" aria-label=\"Texture of the samples\"><table class=\"sort\"><thead><tr><th "
-                  "scope=\"col\">Sample</th>");
+    text_add(
+        out,
+        "<section id=\"texture\"><h2>Texture</h2>\n<p class=\"lead\">Mean of the micrographs used \xc2\xb1 U "
+        "(k = "
+        "2). Sizes are equivalent circular diameters of the cells.</p>\n<div class=\"scroll\" tabindex=\"0\" "
+        "role=\"region\" aria-label=\"Texture of the samples\"><table class=\"sort\"><thead><tr><th "
+        "scope=\"col\">Sample</th>");
     for (size_t k = 0; k < SHOWN; k++) {
         const column *c = sample_column(shown[k], "");
         text_addf(out, "<th scope=\"col\" class=\"n\">%s", page_quantity(shown[k]));

@@ -10,15 +10,15 @@
 #include "base/quantity.h"
 #include "report/html.h"
 
-static const char *const tone_colour[PLOT_TONES] = { "var(--blue,#1660a8)", "var(--amber,#a85d00)", "var(--grey,#6b7280)",
-                                                     "var(--teal,#00756a)" };
+static const char *const tone_colour[PLOT_TONES] = { "var(--blue,#1660a8)", "var(--amber,#a85d00)",
+                                                     "var(--grey,#6b7280)", "var(--teal,#00756a)" };
 #define INK "var(--ink,#1b2430)"
 #define FAINT "var(--rule,#d5dbe3)"
 #define SOFT "var(--soft,#56606e)"
 
 typedef struct {
-    double left, right, top, bottom;     /* of the plotting area, px */
-    double x_lo, x_hi, y_lo, y_hi;       /* shown range; y in log10 when log_y */
+    double left, right, top, bottom; /* of the plotting area, px */
+    double x_lo, x_hi, y_lo, y_hi;   /* shown range; y in log10 when log_y */
     int log_y;
 } frame;
 
@@ -106,7 +106,9 @@ static void settle_y(const plot *p, range *y) {
 
 static int lay_out(const plot *p, frame *f) {
     range x, y;
-    *f = (frame){ .left = 58, .right = p->width - 20.0, .top = 50, .bottom = p->height - (p->names ? 60.0 : 46.0) };
+    *f = (frame){
+        .left = 58, .right = p->width - 20.0, .top = 50, .bottom = p->height - (p->names ? 60.0 : 46.0)
+    };
     f->log_y = p->log_y;
     if (!find_ranges(p, &x, &y)) return 0;
     settle_y(p, &y);
@@ -119,23 +121,27 @@ static int lay_out(const plot *p, frame *f) {
     return 1;
 }
 
-static void draw_text(textbuf *out, double x, double y, const char *anchor, const char *colour, const char *more,
-                      const char *text) {
-    text_addf(out, "<text x=\"%.1f\" y=\"%.1f\" text-anchor=\"%s\" style=\"fill:%s\"%s>", x, y, anchor, colour, more);
+static void draw_text(textbuf *out, double x, double y, const char *anchor, const char *colour,
+                      const char *more, const char *text) {
+    text_addf(out, "<text x=\"%.1f\" y=\"%.1f\" text-anchor=\"%s\" style=\"fill:%s\"%s>", x, y, anchor,
+              colour, more);
     html_text(out, text);
     text_add(out, "</text>\n");
 }
 
-static void draw_line(textbuf *out, double x0, double y0, double x1, double y1, const char *colour, const char *more) {
-    text_addf(out, "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\"%s/>\n", x0, y0, x1, y1,
-              colour, more);
+static void draw_line(textbuf *out, double x0, double y0, double x1, double y1, const char *colour,
+                      const char *more) {
+    text_addf(out, "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\"%s/>\n", x0, y0,
+              x1, y1, colour, more);
 }
 
 static void draw_target(const plot *p, const frame *f, textbuf *out) {
     if (!isfinite(p->target_lo) && !isfinite(p->target_hi)) return;
     double top = isfinite(p->target_hi) ? at_y(f, p->target_hi) : f->top;
     double bottom = isfinite(p->target_lo) ? at_y(f, p->target_lo) : f->bottom;
-    text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" style=\"fill:%s\" fill-opacity=\"0.13\"/>\n",
+    text_addf(out,
+              "<rect x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" style=\"fill:%s\" "
+              "fill-opacity=\"0.13\"/>\n",
               f->left, top, f->right - f->left, fmax(0.0, bottom - top), tone_colour[3]);
     const char *dash = " stroke-width=\"1.2\" stroke-dasharray=\"7 4\"";
     if (isfinite(p->target_hi)) draw_line(out, f->left, top, f->right, top, tone_colour[3], dash);
@@ -149,15 +155,17 @@ static void draw_y_axis(const plot *p, const frame *f, textbuf *out) {
     char number[NUMBER_TEXT];
     size_t room = (size_t)fmax(3.0, (f->bottom - f->top) / 34.0);
     if (room > MAX_TICKS) room = MAX_TICKS;
-    size_t n = f->log_y ? log_ticks(f->y_lo, f->y_hi, MAX_TICKS, tick) : plot_ticks(f->y_lo, f->y_hi, room, tick);
+    size_t n =
+        f->log_y ? log_ticks(f->y_lo, f->y_hi, MAX_TICKS, tick) : plot_ticks(f->y_lo, f->y_hi, room, tick);
     for (size_t i = 0; i < n; i++) {
         double y = at_y(f, tick[i]);
         draw_line(out, f->left, y, f->right, y, FAINT, "");
         draw_text(out, f->left - 7, y + 4, "end", SOFT, "", number_text(tick[i], 6, number));
     }
     double middle = 0.5 * (f->top + f->bottom);
-    text_addf(out, "<text transform=\"translate(15 %.1f) rotate(-90)\" text-anchor=\"middle\" style=\"fill:%s\">", middle,
-              INK);
+    text_addf(out,
+              "<text transform=\"translate(15 %.1f) rotate(-90)\" text-anchor=\"middle\" style=\"fill:%s\">",
+              middle, INK);
     html_text(out, p->y_label);
     text_add(out, "</text>\n");
 }
@@ -227,7 +235,9 @@ static void draw_band(const plot_series *s, const frame *f, textbuf *out) {
 }
 
 static const char *dashes(plot_style style) {
-    return style == PLOT_DASHED ? " stroke-dasharray=\"8 4\"" : style == PLOT_DOTTED ? " stroke-dasharray=\"2 4\"" : "";
+    return style == PLOT_DASHED   ? " stroke-dasharray=\"8 4\""
+           : style == PLOT_DOTTED ? " stroke-dasharray=\"2 4\""
+                                  : "";
 }
 
 /* A stretch of the curve below the axis is not drawn along it: that would look like values. */
@@ -240,7 +250,8 @@ static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
             pen = 0;
             continue;
         }
-        text_addf(out, "%s%.1f %.1f", pen && !(below && was_below) ? "L" : "M", at_x(f, s->x[i]), at_y(f, s->y[i]));
+        text_addf(out, "%s%.1f %.1f", pen && !(below && was_below) ? "L" : "M", at_x(f, s->x[i]),
+                  at_y(f, s->y[i]));
         pen = 1;
         was_below = below;
     }
@@ -251,14 +262,20 @@ static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
 static void draw_mark(textbuf *out, plot_mark mark, double x, double y) {
     switch (mark) {
     case MARK_DIAMOND:
-        text_addf(out, "<path d=\"M%.1f %.1fl6.5 6.5l-6.5 6.5l-6.5 -6.5Z\" style=\"fill:var(--amber,#a85d00)\"/>", x, y - 6.5);
+        text_addf(out,
+                  "<path d=\"M%.1f %.1fl6.5 6.5l-6.5 6.5l-6.5 -6.5Z\" style=\"fill:var(--amber,#a85d00)\"/>",
+                  x, y - 6.5);
         break;
     case MARK_TRIANGLE:
-        text_addf(out, "<path d=\"M%.1f %.1fl6.8 11.6h-13.6Z\" style=\"fill:var(--red,#b02a1c)\"/>", x, y - 7.4);
+        text_addf(out, "<path d=\"M%.1f %.1fl6.8 11.6h-13.6Z\" style=\"fill:var(--red,#b02a1c)\"/>", x,
+                  y - 7.4);
         break;
     case MARK_SQUARE:
-        text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"9\" height=\"9\" style=\"fill:var(--paper,#fff);stroke:%s\" "
-                       "stroke-width=\"2\"/>", x - 4.5, y - 4.5, SOFT);
+        text_addf(
+            out,
+            "<rect x=\"%.1f\" y=\"%.1f\" width=\"9\" height=\"9\" style=\"fill:var(--paper,#fff);stroke:%s\" "
+            "stroke-width=\"2\"/>",
+            x - 4.5, y - 4.5, SOFT);
         break;
     case MARK_DISC:
     default:
@@ -291,14 +308,18 @@ static void draw_legend(const plot *p, const frame *f, textbuf *out) {
     for (size_t i = 0; i < p->n_series; i++) {
         const plot_series *s = &p->series[i];
         if (!s->label) continue;
-        text_addf(out, "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\" stroke-width=\"2.4\"%s/>\n",
+        text_addf(out,
+                  "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\" "
+                  "stroke-width=\"2.4\"%s/>\n",
                   x, y - 4, x + 24, y - 4, tone_colour[s->tone], dashes(s->style));
         draw_text(out, x + 30, y, "start", SOFT, "", s->label);
         x += 44.0 + 6.4 * (double)strlen(s->label);
     }
     if (p->target_label && (isfinite(p->target_lo) || isfinite(p->target_hi))) {
-        text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"24\" height=\"11\" style=\"fill:%s;stroke:%s\" "
-                       "fill-opacity=\"0.13\" stroke-dasharray=\"5 3\"/>\n", x, y - 10, tone_colour[3], tone_colour[3]);
+        text_addf(out,
+                  "<rect x=\"%.1f\" y=\"%.1f\" width=\"24\" height=\"11\" style=\"fill:%s;stroke:%s\" "
+                  "fill-opacity=\"0.13\" stroke-dasharray=\"5 3\"/>\n",
+                  x, y - 10, tone_colour[3], tone_colour[3]);
         draw_text(out, x + 30, y, "start", SOFT, "", p->target_label);
     }
 }
@@ -308,8 +329,11 @@ void plot_svg(const plot *given, textbuf *out) {
     frame f;
     if (p.width <= 0) p.width = 720;
     if (p.height <= 0) p.height = 320;
-    text_addf(out, "<svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 %d %d\" role=\"img\" font-size=\"12.5\" "
-                   "font-family=\"system-ui,sans-serif\" aria-label=\"", p.width, p.height);
+    text_addf(
+        out,
+        "<svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 %d %d\" role=\"img\" font-size=\"12.5\" "
+        "font-family=\"system-ui,sans-serif\" aria-label=\"",
+        p.width, p.height);
     html_text(out, p.description ? p.description : p.title);
     text_add(out, "\">\n");
     draw_text(out, 4, 18, "start", INK, " font-size=\"14\" font-weight=\"600\"", p.title);
@@ -322,7 +346,8 @@ void plot_svg(const plot *given, textbuf *out) {
     draw_y_axis(&p, &f, out);
     draw_x_axis(&p, &f, out);
     for (size_t i = 0; i < p.n_series; i++)
-        if (p.series[i].style != PLOT_POINTS && p.series[i].lo && p.series[i].hi) draw_band(&p.series[i], &f, out);
+        if (p.series[i].style != PLOT_POINTS && p.series[i].lo && p.series[i].hi)
+            draw_band(&p.series[i], &f, out);
     for (size_t i = 0; i < p.n_series; i++)
         if (p.series[i].style == PLOT_POINTS)
             draw_points(&p, &p.series[i], &f, out);

@@ -7,32 +7,37 @@
 #include "base/text.h"
 
 typedef enum { PLOT_LINE, PLOT_DASHED, PLOT_DOTTED, PLOT_POINTS } plot_style;
-typedef enum { MARK_DISC, MARK_DIAMOND, MARK_TRIANGLE, MARK_SQUARE } plot_mark; /* of a point: shape and colour */
+typedef enum {
+    MARK_DISC,
+    MARK_DIAMOND,
+    MARK_TRIANGLE,
+    MARK_SQUARE
+} plot_mark; /* of a point: shape and colour */
 
 typedef struct {
-    const double *x, *y;      /* [n]; a value that is not finite breaks the line or leaves the point out */
-    const double *lo, *hi;    /* [n] a band behind a line, error bars on points; NULL: none */
+    const double *x, *y;   /* [n]; a value that is not finite breaks the line or leaves the point out */
+    const double *lo, *hi; /* [n] a band behind a line, error bars on points; NULL: none */
     size_t n;
     plot_style style;
-    int tone;                 /* colour of a line, 0 .. PLOT_TONES - 1 */
-    const char *label;        /* in the legend; NULL: not listed */
-    const plot_mark *marks;   /* [n] for PLOT_POINTS; NULL: discs of the tone */
+    int tone;               /* colour of a line, 0 .. PLOT_TONES - 1 */
+    const char *label;      /* in the legend; NULL: not listed */
+    const plot_mark *marks; /* [n] for PLOT_POINTS; NULL: discs of the tone */
 } plot_series;
 enum { PLOT_TONES = 4 };
 
 typedef struct {
     const char *title, *x_label, *y_label; /* with units; escaped here */
-    const char *description;  /* for a reader who cannot see the chart; NULL: the title */
-    int log_y;                /* logarithmic axis; values that are not positive lie below it */
-    int from_zero;            /* the linear axis begins at 0 */
-    double y_lo, y_hi;        /* ends of the axis, NAN: from the values. Points and bands beyond lie on its edge */
+    const char *description;               /* for a reader who cannot see the chart; NULL: the title */
+    int log_y;                             /* logarithmic axis; values that are not positive lie below it */
+    int from_zero;                         /* the linear axis begins at 0 */
+    double y_lo, y_hi; /* ends of the axis, NAN: from the values. Points and bands beyond lie on its edge */
     double target_lo, target_hi; /* shaded range with its limits drawn; NAN: open on that side */
-    const char *target_label; /* in the legend; NULL: not listed */
+    const char *target_label;    /* in the legend; NULL: not listed */
     const char *const *names; /* [n_names] an axis of names: series x are 0 .. n_names - 1; NULL: numbers */
     size_t n_names;
     const plot_series *series;
     size_t n_series;
-    int width, height;        /* of the view box, px; 0: 720 x 320 */
+    int width, height; /* of the view box, px; 0: 720 x 320 */
 } plot;
 
 /* Appends one <svg> element; failure is remembered in `out` (text_check). Without any finite value the chart says so. */

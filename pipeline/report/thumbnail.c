@@ -22,7 +22,8 @@ static double average(const float *src, size_t n, size_t step, double from, doub
     return sum / (to - from);
 }
 
-status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8_t **small, size_t *small_ny, error *e) {
+status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8_t **small, size_t *small_ny,
+                   error *e) {
     double ratio = (double)nx / (double)width;
     size_t height = (size_t)lround((double)ny / ratio);
     if (!height) height = 1;
@@ -43,8 +44,8 @@ status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8
     }
     for (size_t y = 0; y < height; y++)
         for (size_t i = 0; i < width * 3; i++)
-            out[y * width * 3 + i] = (uint8_t)lround(
-                average(half + i, ny, width * 3, (double)y * ratio_y, fmin((double)ny, ((double)y + 1.0) * ratio_y)));
+            out[y * width * 3 + i] = (uint8_t)lround(average(half + i, ny, width * 3, (double)y * ratio_y,
+                                                             fmin((double)ny, ((double)y + 1.0) * ratio_y)));
     *small = out;
     *small_ny = height;
     out = NULL;
@@ -103,14 +104,15 @@ static status encode(uint8_t *rgb, size_t nx, size_t ny, small_png *out, error *
     return png_encode(rgb, &f, &out->png, &out->n, e);
 }
 
-static status encode_middle(const uint8_t *rgb, size_t nx, size_t ny, size_t cut_nx, size_t cut_ny, small_png *out,
-                            error *e) {
+static status encode_middle(const uint8_t *rgb, size_t nx, size_t ny, size_t cut_nx, size_t cut_ny,
+                            small_png *out, error *e) {
     if (cut_nx > nx) cut_nx = nx;
     if (cut_ny > ny) cut_ny = ny;
     uint8_t *cut = mem_array(cut_nx * cut_ny, 3);
     if (!cut) return NO_MEMORY(e, "a detail of the overlay");
     size_t x0 = (nx - cut_nx) / 2, y0 = (ny - cut_ny) / 2;
-    for (size_t y = 0; y < cut_ny; y++) memcpy(cut + y * cut_nx * 3, rgb + ((y0 + y) * nx + x0) * 3, cut_nx * 3);
+    for (size_t y = 0; y < cut_ny; y++)
+        memcpy(cut + y * cut_nx * 3, rgb + ((y0 + y) * nx + x0) * 3, cut_nx * 3);
     status st = encode(cut, cut_nx, cut_ny, out, e);
     free(cut);
     return st;

@@ -10,7 +10,8 @@
  *   in   rgb [ny][nx][3], 0 < width <= nx
  *   out  *small [*small_ny][width][3], the caller frees it; the shape of the picture is kept
  *   err  ST_NO_MEMORY */
-status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8_t **small, size_t *small_ny, error *e);
+status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8_t **small, size_t *small_ny,
+                   error *e);
 
 typedef struct {
     uint8_t *png; /* owned */

@@ -44,9 +44,12 @@ static inline void demo_sample_empty(sample_row *s) {
 }
 
 static inline void demo_make(demo *d) {
-    static char used[] = "ok", excluded[] = "excluded", unreadable[] = "unreadable", few[] = "few_pixels blurred";
-    static char hostile[] = "=a/<img src=x onerror=\"alert(1)\">&'\xff.tif", second[] = "b.png", third[] = "c.tif";
-    static char broken[] = "the file ends after 12 bytes", s1[] = "etch 1", s2[] = "@etch <2>", tag[] = "tag 34118";
+    static char used[] = "ok", excluded[] = "excluded", unreadable[] = "unreadable",
+                few[] = "few_pixels blurred";
+    static char hostile[] = "=a/<img src=x onerror=\"alert(1)\">&'\xff.tif", second[] = "b.png",
+                third[] = "c.tif";
+    static char broken[] = "the file ends after 12 bytes", s1[] = "etch 1", s2[] = "@etch <2>",
+                tag[] = "tag 34118";
     static char conforms[] = "conforms", undecided[] = "undecided", mean[] = "mean", sheet[] = "sheet";
     static char t1[] = "2026-03-14T09:30:00Z", t2[] = "2026-03-13T09:30:00Z", why[] = "inside <280..420> nm";
     memset(d, 0, sizeof *d);
@@ -95,8 +98,13 @@ static inline void demo_make(demo *d) {
         s[i].n_extra = 2;
     }
     for (size_t i = 0; i < DEMO_WAVELENGTHS; i++)
-        d->spectra[i] = (spectrum_row){ s1, 300.0 + 100.0 * (double)i, 0.0, mean, 0.0123456 + 0.001 * (double)i,
-                                        i == 2 ? MISSING : 0.01, i == 2 ? MISSING : 0.02 };
+        d->spectra[i] = (spectrum_row){ s1,
+                                        300.0 + 100.0 * (double)i,
+                                        0.0,
+                                        mean,
+                                        0.0123456 + 0.001 * (double)i,
+                                        i == 2 ? MISSING : 0.01,
+                                        i == 2 ? MISSING : 0.02 };
     d->extra_names[0] = "verdict_spacing_nm";
     d->extra_names[1] = "operator";
     d->target_quantity[0] = "spacing_nm";
@@ -112,7 +120,8 @@ static inline void demo_make(demo *d) {
                       .n_sample_extra = 2,
                       .spectra = d->spectra,
                       .n_spectra = DEMO_WAVELENGTHS,
-                      .manifest_json = "{\"program\": \"sward\", \"inputs\": [{\"file\": \"<b>\", \"sha256\": \"ab\"}]}",
+                      .manifest_json =
+                          "{\"program\": \"sward\", \"inputs\": [{\"file\": \"<b>\", \"sha256\": \"ab\"}]}",
                       .summary = "1 of 2 samples conforms.\nRe-take <c.tif>.",
                       .title = "line 3 & <grass>",
                       .target_quantity = d->target_quantity,

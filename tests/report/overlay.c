@@ -33,7 +33,8 @@ static void scene_make(scene *s, float level) {
     s->f[1] = (feature){ .x = 240.4, .y = 60.7, .weight = 1.0, .in_guard = 1 };
     s->f[2] = (feature){ .x = 318.0, .y = 120.0, .weight = 1.0 };
     s->m = (micrograph){ .px = s->px, .nx = NX, .ny = NY, .px_nm = 4.0 };
-    s->t = (texture){ .features = s->f, .n_found = 3, .n_features = 2, .cells = s->cells, .nx = NX, .ny = NY };
+    s->t =
+        (texture){ .features = s->f, .n_found = 3, .n_features = 2, .cells = s->cells, .nx = NX, .ny = NY };
     s->t.spacing_acf.value = 30.0;
     s->t.spacing_hex.value = 29.0;
 }
@@ -41,7 +42,8 @@ static void scene_make(scene *s, float level) {
 static int is_marker(const uint8_t *p) { return p[0] > 230 && p[1] > 160 && p[1] < 215 && p[2] < 90; }
 
 /* Centroid and area of the marker's colour in a window. */
-static void marker_look(const uint8_t *rgb, long x0, long y0, long x1, long y1, double *x, double *y, double *area) {
+static void marker_look(const uint8_t *rgb, long x0, long y0, long x1, long y1, double *x, double *y,
+                        double *area) {
     *x = *y = *area = 0.0;
     for (long v = y0; v < y1; v++)
         for (long u = x0; u < x1; u++) {
@@ -144,7 +146,7 @@ static void check_box(void) {
     CHECK(ny == 1 && small[0] == 25 && small[3] == 45); /* means of {0,10,40,50} and {20,30,60,70} */
     free(small);
     CHECK(box_average(rgb, 4, 2, 3, &small, &ny, &e) == ST_OK); /* a third of the width: 4/3 px each */
-    CHECK(ny == 2 && small[0] == 3); /* (0 + 10/3) / (4/3) = 2.5, rounded */
+    CHECK(ny == 2 && small[0] == 3);                            /* (0 + 10/3) / (4/3) = 2.5, rounded */
     free(small);
 }
 

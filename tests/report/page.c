@@ -31,24 +31,29 @@ static void check_page(demo *d, const char *dir) {
     char *page = page_of(&d->r, dir);
     CHECK(page && strstr(page, "<title>line 3 &amp; &lt;grass&gt;</title>"));
     CHECK(strstr(page, "351.23 <span class=\"u\">\xc2\xb1 16.2</span>")); /* twice the 8.12 of the table */
-    CHECK(strstr(page, "1.2346 <span class=\"u\">(1.01 to 1.72)</span>")); /* the digits of 0.012346, in percent */
+    CHECK(strstr(page,
+                 "1.2346 <span class=\"u\">(1.01 to 1.72)</span>")); /* the digits of 0.012346, in percent */
     CHECK(strstr(page, "280 to 420 <span class=\"unit\">nm</span>"));
     CHECK(strstr(page, "inside &lt;280..420&gt; nm"));
     /* hostile names stay text */
-    CHECK(!strstr(page, "<img src=x") && !strstr(page, "<grass>") && !strstr(page, "<c.tif>") && !strstr(page, "<b>ab"));
+    CHECK(!strstr(page, "<img src=x") && !strstr(page, "<grass>") && !strstr(page, "<c.tif>") &&
+          !strstr(page, "<b>ab"));
     CHECK(strstr(page, "=a/&lt;img src=x onerror=&quot;alert(1)&quot;&gt;&amp;&#39;\xef\xbf\xbd.tif"));
     CHECK(strstr(page, "<td>&lt;b&gt;</td>")); /* from the manifest */
     /* nothing is fetched */
-    CHECK(!strstr(page, "src=\"http") && !strstr(page, "href=\"http") && !strstr(page, "url(") && !strstr(page, "@import"));
+    CHECK(!strstr(page, "src=\"http") && !strstr(page, "href=\"http") && !strstr(page, "url(") &&
+          !strstr(page, "@import"));
     CHECK(strstr(page, "default-src 'none'"));
     /* verdicts by word and sign */
     CHECK(strstr(page, "\xe2\x9c\x93</span> conforms</span>") && strstr(page, "?</span> undecided</span>"));
     CHECK(strstr(page, "<strong>Undecided:</strong> <a href=\"#sample-2\">@etch &lt;2&gt;</a>"));
     /* why something is missing */
-    CHECK(strstr(page, "<strong>few_pixels</strong>: too few pixels per spacing; <strong>blurred</strong>: "));
+    CHECK(
+        strstr(page, "<strong>few_pixels</strong>: too few pixels per spacing; <strong>blurred</strong>: "));
     CHECK(strstr(page, "unreadable</span> the file ends after 12 bytes"));
     CHECK(count_of(page, " class=\"card ") == DEMO_IMAGES);
-    CHECK(strstr(page, "<strong>Not used:</strong> <a href=\"#micrograph-2\">b.png</a> (<span class=\"flag\""));
+    CHECK(
+        strstr(page, "<strong>Not used:</strong> <a href=\"#micrograph-2\">b.png</a> (<span class=\"flag\""));
     CHECK(strstr(page, "<a href=\"#micrograph-3\">c.tif</a> (the file ends after 12 bytes).</p>"));
     CHECK(strstr(page, "<pre>1 of 2 samples conforms.\nRe-take &lt;c.tif&gt;.</pre>"));
     /* structure: every column explained once, table headers with scope, one h1 */
@@ -68,8 +73,9 @@ static void check_order(demo *d, const char *dir) {
     const char *second = strstr(page, "<title>etch 1: 351.235</title>");
     CHECK(first && second && first < second);
     free(page);
-    d->r.history_json = "[{\"sample\": \"old\", \"etched_at\": \"2026-01-01\", \"spacing_nm\": 300.5, \"spacing_nm_u\": 4, "
-                        "\"weighted_reflectance\": null, \"verdict\": \"fails\"}]";
+    d->r.history_json =
+        "[{\"sample\": \"old\", \"etched_at\": \"2026-01-01\", \"spacing_nm\": 300.5, \"spacing_nm_u\": 4, "
+        "\"weighted_reflectance\": null, \"verdict\": \"fails\"}]";
     page = page_of(&d->r, dir);
     CHECK(strstr(page, "<title>old: 300.5</title>"));
     free(page);
@@ -110,7 +116,8 @@ static void check_picture(demo *d, const char *dir) {
     d->r.overlay_paths = paths;
     char *page = page_of(&d->r, dir);
     d->r.overlay_paths = NULL;
-    CHECK(strstr(page, "<img width=\"524\" height=\"42\"") && strstr(page, "data:image/png;base64,iVBORw0KGgo"));
+    CHECK(strstr(page, "<img width=\"524\" height=\"42\"") &&
+          strstr(page, "data:image/png;base64,iVBORw0KGgo"));
     CHECK(strstr(page, "The overlay could not be read: ") && strstr(page, "no overlay"));
     free(page);
     if (path) remove(path);
@@ -145,13 +152,17 @@ static void check_map(const char *dir) {
 static void check_html(void) {
     textbuf t = { 0 };
     html_text(&t, "a\xc3\xa9\xe2\x82\xac\xf0\x9f\x98\x80\xc0\xaf\xed\xa0\x80\x01\t\n");
-    CHECK(!strcmp(t.s, "a\xc3\xa9\xe2\x82\xac\xf0\x9f\x98\x80\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd"
-                       "\xef\xbf\xbd\t\n"));
+    CHECK(!strcmp(
+        t.s,
+        "a\xc3\xa9\xe2\x82\xac\xf0\x9f\x98\x80\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd\xef\xbf\xbd"
+        "\xef\xbf\xbd\t\n"));
     text_free(&t);
     CHECK(html_fit("a\xc3\xa9z", 2) == 3 && html_fit("ab", 9) == 2);
     static const struct {
         const char *plain, *coded;
-    } rfc[] = { { "f", "Zg==" }, { "fo", "Zm8=" }, { "foo", "Zm9v" }, { "foob", "Zm9vYg==" }, { "foobar", "Zm9vYmFy" } };
+    } rfc[] = {
+        { "f", "Zg==" }, { "fo", "Zm8=" }, { "foo", "Zm9v" }, { "foob", "Zm9vYg==" }, { "foobar", "Zm9vYmFy" }
+    };
     for (size_t i = 0; i < sizeof rfc / sizeof rfc[0]; i++) { /* RFC 4648, section 10 */
         text_base64(&t, (const uint8_t *)rfc[i].plain, strlen(rfc[i].plain));
         CHECK(!strcmp(t.s, rfc[i].coded));

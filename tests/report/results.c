@@ -14,8 +14,12 @@
 static const cJSON *row_of(const cJSON *root, const char *table, int i) {
     return cJSON_GetArrayItem(cJSON_GetObjectItemCaseSensitive(root, table), i);
 }
-static const cJSON *cell_of(const cJSON *row, const char *name) { return cJSON_GetObjectItemCaseSensitive(row, name); }
-static int is_text(const cJSON *v, const char *want) { return cJSON_IsString(v) && !strcmp(v->valuestring, want); }
+static const cJSON *cell_of(const cJSON *row, const char *name) {
+    return cJSON_GetObjectItemCaseSensitive(row, name);
+}
+static int is_text(const cJSON *v, const char *want) {
+    return cJSON_IsString(v) && !strcmp(v->valuestring, want);
+}
 
 static void check_csv(const demo *d) {
     textbuf t = { 0 };
@@ -48,8 +52,10 @@ static void check_json(const demo *d) {
     cJSON *root = cJSON_ParseWithOpts(t.s, NULL, 1);
     CHECK(root != NULL);
     CHECK(strstr(t.s, "\"spacing_nm\": 351.23, ") || strstr(t.s, "\"spacing_nm\":351.23,"));
-    const cJSON *good = row_of(root, "images", 0), *bad = row_of(root, "images", 1), *dead = row_of(root, "images", 2);
-    CHECK(is_text(cell_of(good, "file"), "=a/<img src=x onerror=\"alert(1)\">&'\xef\xbf\xbd.tif")); /* no apostrophe */
+    const cJSON *good = row_of(root, "images", 0), *bad = row_of(root, "images", 1),
+                *dead = row_of(root, "images", 2);
+    CHECK(is_text(cell_of(good, "file"),
+                  "=a/<img src=x onerror=\"alert(1)\">&'\xef\xbf\xbd.tif")); /* no apostrophe */
     CHECK(cJSON_GetArraySize(good) == (int)n_image_columns + 1);
     CHECK_NEAR(cell_of(cell_of(good, "pixels"), "spacing_px")->valuedouble, 85.6, 1e-12);
     CHECK(cJSON_IsNull(cell_of(bad, "spacing_acf_nm")) && cJSON_IsNull(cell_of(bad, "n_features")));
@@ -75,8 +81,10 @@ static void check_json(const demo *d) {
 /* Two samples, two angles: one group each, in order. */
 static void check_groups(void) {
     static char a[] = "a", b[] = "b", mean[] = "mean", s[] = "s";
-    spectrum_row rows[] = { { a, 400, 0, mean, 0.1, 0.1, 0.1 }, { a, 500, 0, mean, 0.2, 0.2, 0.2 },
-                            { a, 400, 8, mean, 0.3, 0.3, 0.3 }, { a, 400, 8, s, 0.4, 0.4, 0.4 },
+    spectrum_row rows[] = { { a, 400, 0, mean, 0.1, 0.1, 0.1 },
+                            { a, 500, 0, mean, 0.2, 0.2, 0.2 },
+                            { a, 400, 8, mean, 0.3, 0.3, 0.3 },
+                            { a, 400, 8, s, 0.4, 0.4, 0.4 },
                             { b, 400, 8, s, 0.5, 0.5, 0.5 } };
     results r = { .spectra = rows, .n_spectra = 5 };
     textbuf t = { 0 };
@@ -115,8 +123,14 @@ static void check_files(demo *d) {
     CHECK(folder_make(features, &e) == ST_OK);
     char *one = path_join(features, "a.csv");
     textbuf body = { 0 };
-    feature_row f = { .feature = 1, .x_px = 1.5, .y_px = 2.25, .x_nm = MISSING, .y_nm = MISSING, .cell_ecd_nm = 101.26,
-                      .n_neighbours = 6, .in_guard = 1 };
+    feature_row f = { .feature = 1,
+                      .x_px = 1.5,
+                      .y_px = 2.25,
+                      .x_nm = MISSING,
+                      .y_nm = MISSING,
+                      .cell_ecd_nm = 101.26,
+                      .n_neighbours = 6,
+                      .in_guard = 1 };
     features_csv(&f, 1, &body);
     CHECK(!strncmp(body.s, "feature,x_px,y_px,x_nm,y_nm,cell_ecd_nm,", 40));
     CHECK(strstr(body.s, "\n1,1.5,2.25,,,101.26,"));
@@ -135,7 +149,8 @@ static void check_files(demo *d) {
     char *text = read_out(dir, "datapackage.json");
     cJSON *package = cJSON_Parse(text);
     CHECK(package != NULL);
-    CHECK(cJSON_GetArraySize(cJSON_GetObjectItem(package, "resources")) == 4); /* three tables, one features file */
+    CHECK(cJSON_GetArraySize(cJSON_GetObjectItem(package, "resources")) ==
+          4); /* three tables, one features file */
     const cJSON *fields = cell_of(cell_of(resource_named(package, "samples"), "schema"), "fields");
     CHECK(cJSON_GetArraySize(fields) == (int)n_sample_columns + 2);
     const cJSON *spacing =
