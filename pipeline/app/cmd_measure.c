@@ -154,6 +154,5 @@ int cmd_measure(int argc, char **argv) {
     free(all);
     protocol_free(&p);
     if (st == ST_OK) return unusable ? EXIT_PARTIAL : EXIT_DONE;
-    fprintf(stderr, "sward: %s\n", e.text);
-    return st == ST_BAD_INPUT ? EXIT_USAGE : EXIT_FAILED;
+    return command_failed("measure", &e);
 }

@@ -77,10 +77,7 @@ int cmd_run(int argc, char **argv) {
     run_outcome outcome = { 0, 0 };
     error e = { 0 };
     if (argp_parse(&run_argp, argc, argv, 0, NULL, &o) != 0) return EXIT_USAGE;
-    if (run_folder(&o, &outcome, &e) != ST_OK) {
-        fprintf(stderr, "sward: %s\n", e.text);
-        return e.code == ST_BAD_INPUT ? EXIT_USAGE : EXIT_FAILED;
-    }
+    if (run_folder(&o, &outcome, &e) != ST_OK) return command_failed("run", &e);
     if (o.gate && outcome.missed) return EXIT_TARGET_MISSED;
     return outcome.unusable ? EXIT_PARTIAL : EXIT_DONE;
 }

@@ -167,8 +167,9 @@ status folder_open(const char *root, const char *sheet_path, folder *out, error 
 
 /* --- samples --- */
 
+/* Micrographs of one sample mostly follow each other: the newest group is looked at first. */
 static sample_group *group_named(sample_group *groups, size_t n, const char *name) {
-    for (size_t i = 0; i < n; i++)
+    for (size_t i = n; i-- > 0;)
         if (!strcmp(groups[i].name, name)) return &groups[i];
     return NULL;
 }
@@ -213,6 +214,17 @@ static status join_member(sample_group *g, const folder *f, const name_parts *pa
     return ST_OK;
 }
 
+/* Two heights in one sample, also where the sample comes from the file's name. */
+static status check_heights(const folder *f, const examined *all, error *e) {
+    if (!f->sheet.n) return ST_OK;
+    const char **names = mem_array(f->n, sizeof *names);
+    if (!names) return NO_MEMORY(e, "the samples");
+    for (size_t i = 0; i < f->n; i++) names[i] = all[i].row.sample;
+    status st = sheet_check_samples(&f->sheet, f->rows, names, f->n, e);
+    free(names);
+    return st;
+}
+
 status folder_samples(const folder *f, const protocol *p, examined *all, sample_group **groups, size_t *n, error *e) {
     sample_group *list = mem_array(f->n, sizeof *list);
     size_t count = 0;
@@ -235,6 +247,7 @@ status folder_samples(const folder *f, const protocol *p, examined *all, sample_
         if (st == ST_OK) st = join_member(g, f, &parts, &all[i], i, e);
         name_parts_free(&parts);
     }
+    if (st == ST_OK) st = check_heights(f, all, e);
     *groups = list;
     *n = count;
     return st;

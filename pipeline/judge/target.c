@@ -116,7 +116,7 @@ static void explain(const target *g, const reading *r, const reach *w, verdict v
     text_add(t, g->quantity);
     text_add(t, " ");
     text_add(t, number_text(r->value, r->digits, a));
-    if (isfinite(w->u)) text_addf(t, " +- %s%s%s", rough(w->u, b), unit[0] ? " " : "", unit);
+    if (isfinite(w->u)) text_addf(t, " +- %s%s%s (k = 2)", rough(2.0 * w->u, b), unit[0] ? " " : "", unit);
     else {
         text_addf(t, "%s%s", unit[0] ? " " : "", unit);
         text_addf(t, " (95 %% interval %s..%s)", number_text(w->lo, r->digits, a), number_text(w->hi, r->digits, b));

@@ -30,7 +30,7 @@ typedef struct {
 typedef struct {
     verdict verdict;
     double conformance_probability; /* normal, JCGM 106; NAN unknown */
-    char sentence[400];             /* "spacing_nm 351.2 +- 8.1 nm lies inside 280..420 nm" */
+    char sentence[400];             /* "spacing_nm 351.2 +- 16 nm (k = 2) lies inside 280..420 nm" */
 } judgement;
 
 /* Conformance probability at least 95 % per limit: conforms; the same for the outside: fails; else undecided. No u:

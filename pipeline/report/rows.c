@@ -35,7 +35,7 @@ const column image_columns[] = {
           "relative standard uncertainty of the pixel size; common to all pictures of one instrument, so more pictures "
           "do not lower it"),
     IMAGE(width_px, COL_COUNT, "px", 0, "columns of the measured field"),
-    IMAGE(height_px, COL_COUNT, "px", 0, "rows of the measured field, without the info strip"),
+    IMAGE(height_px, COL_COUNT, "px", 0, "rows of the picture in the file, info strip included"),
     IMAGE(strip_px, COL_COUNT, "px", 0, "rows of the info strip at the bottom that were cropped"),
     IMAGE(bit_depth, COL_COUNT, "", 0, "bits of one grey level in the file"),
     IMAGE(relief, COL_TEXT, "", 0,
