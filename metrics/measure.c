@@ -273,7 +273,7 @@ static void complete_uncertainties(texture *t) {
 static void judge(job *j, const sharpness *s) {
     const double low_order = 1.5, known_ratio = 0.15, wide_gsd = 1.35;
     texture *t = &j->t;
-    statistics_method(t, &j->det);
+    statistics_uncertainty(t, &j->det);
     fitness_judge(s, j->p, j->o, t);
     complete_uncertainties(t);
     if (t->clark_evans.value < low_order) t->flags |= FLAG(LOW_ORDER);

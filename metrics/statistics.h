@@ -7,10 +7,10 @@
  * top_d50, lognormal_ad, n_features, with u_sampling. in d the detection they come from. err ST_NO_MEMORY */
 status statistics_fill(texture *t, size_t nx, size_t ny, const detection *d, error *e);
 
-/* The method parts of every uncertainty of t: how far each number is off as an estimate of its definition,
- * found on rendered micrographs of known truth; the count also by how much it depends on the detector's
- * criterion. */
-void statistics_method(texture *t, const detection *d);
+/* What the order of the texture and the detector say about u: the method parts of every uncertainty of t (how far each
+ * number is off as an estimate of its definition, found on rendered micrographs of known truth; of the count also how much it
+ * depends on the detector's criterion), and the sampling part of spacing_acf. */
+void statistics_uncertainty(texture *t, const detection *d);
 
 /* Share of the field above a level of the flattened picture: `level` of the way from its 1 % to its 99 %
  * quantile. A figure for comparing like micrographs, never a solid share. in  unit_px length over which
