@@ -3,10 +3,10 @@
  * Blur. A surface of hillocks that touch has creases; the power of a crease falls as k^-5 in two dimensions. On
  * rendered cones, paraboloids and bells (hexagonal to nearly random, 12 to 110 px, no blur) the mean power of the band
  * 0.8 to 1.4 per spacing exceeds that of a band about x per spacing by exp(0.65 + 5 ln x), +-0.8, from x = 1.8 to 14.
- * A probe of sd b multiplies the spectrum by exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the highest
- * band above the noise to come back to that law. Textures without blur come out below 0.08 spacings; rendered blurs of
+ * A probe of sd b multiplies the spectrum by exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the
+ * highest band above the noise to come back to that law. Textures without blur come out below 0.08 spacings; rendered blurs of
  * 0.12, 0.20, 0.25 and 0.35 spacings within 0.03. Rough or edge-bright pictures fall more slowly and look sharper than
- * they are, never blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side lobes of
+ * they are, never blurrier. Only bands within exp(9.5) of the ring are believed: below that lie the side lobes of
  * windows and of truncated filters.
  * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as noise, so the
  * smaller of the two is taken.
@@ -34,15 +34,16 @@ measure_options measure_defaults(void) {
         .warn_features = 200.0,
         .max_blur = 0.25, /* spacings: close features merge and the count drops */
         .warn_blur = 0.12,
-        /* Saturated tops flatten the brightest few percent and leave places and cells; with a fifth of the field at an end
-         * of the scale tops become plateaus whose centre is arbitrary. */
-        .max_clipped = 0.20,
+        /* Saturated tops flatten the brightest few percent. Up to a third of the field at the ends of the scale the density
+         * stays within 0.2 % and spacing_acf within 4 %; beyond a half there is more plateau than texture. */
+        .max_clipped = 0.50,
         .warn_clipped = 0.02,
-        /* Noise is averaged over (0.17 d)^2: at 24 px, twice the texture's own sd still gives the spacing within 2 %. */
-        .max_noise = 8.0,
-        .warn_noise = 2.5,
-        /* Of the texture's variance: at 1 the streaks carry as much of the picture as the texture. */
-        .max_streaks = 1.0,
+        /* At 24 px per spacing; noise is averaged over the detector's width, so that d / 24 times as much is borne. At 2.2
+         * the density is 7 % off, from 2.7 on features are invented or lost by the score. */
+        .max_noise = 2.5,
+        .warn_noise = 1.25,
+        /* Of the texture's variance. At 0.3 the density is 6 % off, at 0.5 the streaks decide stretch and spacing. */
+        .max_streaks = 0.40,
         .warn_streaks = 0.02,
         .max_stretch = 1.6, /* a tilt of 51 degrees */
         .warn_stretch = 1.06,
@@ -68,39 +69,39 @@ static double creased_fall(double x0, double x1) {
     return x0 < 1.8 ? 2.5 : 0.65 + 5.0 * log(sqrt(x0 * x1));
 }
 
-static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
-    static const double edge[] = { 1.4, 1.8, 2.2, 2.8, 3.5, 4.5, 5.6, 7.0, 9.0, 11.0, 14.0 };
-    const double least_z = 3.0, most_fall = 10.5, end = 0.45;
-    double ring = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
-    double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
-    if (!(ring > least_z * floor / sqrt(modes)) || !(ring > 0.0)) return MISSING;
-    size_t used = 0;
-    double level = 0.0;
-    int hidden = 0; /* nothing beyond the ring stands out of the noise: at least as blurred as the noise allows */
-    for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end && !hidden; i++) {
-        double p = power_between(psd, edge[i] / d, edge[i + 1] / d, floor, 0.0);
-        double m = PI * (edge[i + 1] * edge[i + 1] - edge[i] * edge[i]) / (d * d) * (double)n_px / 4.0;
-        double se = floor / sqrt(m);
-        int visible = p > least_z * se && p > 0.3 * floor;
-        hidden = i == 0 && !visible;
-        if (i && !visible) break;
-        if (hidden || log(ring / p) <= most_fall) {
-            used = i + 1;
-            level = hidden ? fmax(p, 0.0) + least_z * se : p;
-        }
-    }
-    if (!used || !(level > 0.0)) return MISSING;
-    double k0 = edge[used - 1] / d, k1 = edge[used] / d, want = creased_fall(edge[used - 1], edge[used]);
-    if (log(ring / level) <= want) return 0.0;
-    double low = 0.0, high = 0.6 * d;
+/* Blur to be undone for the band k0 .. k1 to obey the law. level > 0 stands for a band drowned in noise. */
+static double undone(const curve *psd, double d, double floor, double k0, double k1, double level) {
+    double want = creased_fall(k0 * d, k1 * d), low = 0.0, high = 0.6 * d;
     for (int i = 0; i < 50; i++) {
-        double b = 0.5 * (low + high), undo = 4.0 * PI * PI * b * b;
+        double b = i ? 0.5 * (low + high) : 0.0, undo = 4.0 * PI * PI * b * b;
         double top = power_between(psd, 0.8 / d, 1.4 / d, floor, undo);
-        double tail = hidden ? level * exp(undo * k0 * k1) : power_between(psd, k0, k1, floor, undo);
-        if (tail > 0.0 && log(top / tail) < want) high = b;
+        double tail = level > 0.0 ? level * exp(undo * k0 * k1) : power_between(psd, k0, k1, floor, undo);
+        int enough = tail > 0.0 && log(top / tail) < want;
+        if (!i && enough) return 0.0;
+        if (enough) high = b;
         else low = b;
     }
     return 0.5 * (low + high);
+}
+
+static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
+    static const double edge[] = { 1.4, 1.8, 2.2, 2.8, 3.5, 4.5, 5.6, 7.0, 9.0, 11.0, 14.0 };
+    const double least_z = 3.0, most_fall = 9.5, end = 0.45;
+    double ring = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
+    double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
+    if (!(ring > least_z * floor / sqrt(modes)) || !(ring > 0.0)) return MISSING;
+    double blur = MISSING;
+    for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end; i++) {
+        double k0 = edge[i] / d, k1 = edge[i + 1] / d, p = power_between(psd, k0, k1, floor, 0.0);
+        double se = floor / sqrt(PI * (k1 * k1 - k0 * k0) * (double)n_px / 4.0);
+        int visible = p > least_z * se && p > 0.3 * floor;
+        if (!visible && i) break;
+        /* Nothing beyond the ring stands out of the noise: at least as blurred as the noise allows. */
+        if (!visible) return undone(psd, d, floor, k0, k1, fmax(p, 0.0) + least_z * se);
+        if (log(ring / p) > most_fall) break;
+        blur = undone(psd, d, floor, k0, k1, 0.0); /* the highest band decides: there blur weighs most, order least */
+    }
+    return blur;
 }
 
 /* ---- streaks ---- */
@@ -289,7 +290,17 @@ static void judge_stretch(const sharpness *s, const measure_options *o, double d
     if (s->line_jitter_px > jitter_warn * d && s->line_jitter_px > 0.3) t->flags |= FLAG(DRIFT);
 }
 
+/* Blur merges features, and the spacing it is compared with grows with it: a ratio well below the limit together with
+ * sizes spread too widely, or a relief that has lost its sign, is as bad as one above. */
+static void judge_blur(double blur, const measure_options *o, texture *t) {
+    const double merged_gsd = 1.35;
+    limit(t, blur, o->warn_blur, o->max_blur, FLAG(UNSHARP), FLAG(BLURRED));
+    if (blur > o->warn_blur && (t->size_gsd.value > merged_gsd || (t->flags & FLAG(RELIEF_UNSURE))))
+        t->reasons |= FLAG(BLURRED);
+}
+
 void fitness_judge(const sharpness *s, const plane *p, const measure_options *o, texture *t) {
+    const double noise_at_px = 24.0; /* spacing at which the limits of noise hold */
     const double random_order = 1.3; /* Clark-Evans index below which a missing ring means random placement */
     double d = t->spacing_hex.value, n = (double)t->n_features;
     t->sharpness = (measured){ s->blur_sd_px, MISSING, isfinite(d) ? 0.03 * d : MISSING, t->n_features };
@@ -306,8 +317,8 @@ void fitness_judge(const sharpness *s, const plane *p, const measure_options *o,
         if (t->clark_evans.value >= random_order) t->flags |= FLAG(NO_RING);
         else t->reasons |= FLAG(NO_RING);
     }
-    limit(t, s->blur_sd_px / d, o->warn_blur, o->max_blur, FLAG(UNSHARP), FLAG(BLURRED));
-    limit(t, t->noise_rel.value, o->warn_noise, o->max_noise, FLAG(NOISY), FLAG(NOISY));
+    judge_blur(s->blur_sd_px / d, o, t);
+    limit(t, t->noise_rel.value * noise_at_px / d, o->warn_noise, o->max_noise, FLAG(NOISY), FLAG(NOISY));
     limit(t, s->streaks, o->warn_streaks, o->max_streaks, FLAG(STREAKS), FLAG(STREAKS));
     if (isfinite(t->second_spacing_px)) t->flags |= FLAG(TWO_SPACINGS);
     judge_stretch(s, o, d, t);

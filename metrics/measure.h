@@ -11,7 +11,7 @@ typedef struct {
     double min_features, warn_features;             /* 50, 200 */
     double max_blur, warn_blur;                     /* sd of the blur / spacing: 0.25, 0.12 */
     double max_clipped, warn_clipped;               /* share of the plane: documented in fitness.h */
-    double max_noise, warn_noise;                   /* noise sd / texture sd */
+    double max_noise, warn_noise;                   /* noise sd / texture sd at 24 px per spacing; scales with it */
     double max_streaks, warn_streaks;               /* see fitness.h */
     double max_stretch, warn_stretch;               /* ratio: see fitness.h */
     double bright_level;       /* level of bright_share: fraction of the way from the 1 % to the 99 % grey quantile */

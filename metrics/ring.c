@@ -1,10 +1,10 @@
 /* spacing_acf: the first ring of the autocorrelation of the curvature map K (sigma 0.12 d).
- * 1. The first ring of the radial mean, searched from 0.35 d: the first maximum behind the trough that rises at least
- *    half as far as the highest one (finely sampled curves have small false maxima inside the true ring); vertex of a
- *    cubic on the mean over circles of the 2-D map, unsmoothed.
+ * 1. The first ring of the radial mean, searched from 0.35 d; vertex of a cubic on the mean over circles of the 2-D map,
+ *    unsmoothed.
  * 2. Stretch: an area-preserving stretch by exp(2 e) along theta turns C0(r) into C0(r (1 - e cos 2(phi - theta))) to
  *    first order, so e follows from the second angular harmonic of C projected on -r C0'(r), iterated with C sampled
- *    in the straightened frame (Gauss-Newton). Trough and ring enter, the self term of the features does not.
+ *    in the straightened frame (Gauss-Newton). The steep part of the self term takes part: it halves the scatter, and what stretches a picture stretches
+ *    its features too.
  *    A stretched texture's ring is then read off the straightened radial mean.
  * 3. Where the first shell shows six distinct peaks (ordered layers), their mean distance counts instead: bright rims
  *    raise the ground between the peaks and push the radial mean out by 1 to 5 %, and a radial mean of a lattice
@@ -18,20 +18,24 @@
 
 /* ---- the radial ring ---- */
 
-/* Place of the ring to within the width of its smoothing; 0 none. */
+static int is_maximum(const log_curve *s, size_t i) {
+    return i > 0 && i + 1 < s->n && s->y[i] > s->y[i - 1] && s->y[i] >= s->y[i + 1];
+}
+
+/* Place of the ring to within the width of its smoothing; 0 none. The first maximum behind the trough that is at least
+ * half as high as the highest: spheres with bright rims have a smaller one at rim to rim, inside the true ring. */
 static double find_ring(const curve *c, double d) {
+    const double near = 0.35, far = 1.8, trough_before = 0.95, least = 0.5;
     log_curve s;
-    log_curve_make(c, 0.35 * d, 2.2 * d, 0.04, &s);
+    log_curve_make(c, near * d, far * d, 0.04, &s);
     size_t low = 0;
-    for (size_t i = 0; i < s.n && s.x[i] < 0.95 * d; i++)
+    for (size_t i = 0; i < s.n && s.x[i] < trough_before * d; i++)
         if (s.y[i] < s.y[low]) low = i;
     double top = -HUGE_VAL;
-    for (size_t i = low; i < s.n; i++) top = fmax(top, s.y[i]);
-    for (size_t i = low + 1; i + 1 < s.n; i++) {
-        if (!(s.y[i] > s.y[i - 1] && s.y[i] >= s.y[i + 1])) continue;
-        if (s.y[i] - s.y[low] < 0.5 * (top - s.y[low])) continue;
-        return s.x[i];
-    }
+    for (size_t i = low; i < s.n; i++)
+        if (is_maximum(&s, i)) top = fmax(top, s.y[i]);
+    for (size_t i = low; i < s.n; i++)
+        if (is_maximum(&s, i) && s.y[i] >= least * top) return s.x[i];
     return 0.0;
 }
 
@@ -87,12 +91,12 @@ static int stretch_step(const acf2d *a, double r0, double r1, double *e1, double
 static int stretch_fit(const acf2d *a, double ring_px, double *e1, double *e2) {
     *e1 = *e2 = 0.0;
     for (int i = 0; i < 8; i++)
-        if (!stretch_step(a, 0.40 * ring_px, 1.35 * ring_px, e1, e2)) return 0;
+        if (!stretch_step(a, 0.25 * ring_px, 1.35 * ring_px, e1, e2)) return 0;
     return 1;
 }
 
 static void stretch_report(double e1, double e2, size_t n, ring *out) {
-    double e = sqrt(e1 * e1 + e2 * e2), u = n ? 0.36 / sqrt((double)n) : MISSING;
+    double e = sqrt(e1 * e1 + e2 * e2), u = n ? 0.45 / sqrt((double)n) : MISSING; /* rms on unstretched textures */
     double angle = -0.5 * atan2(e2, e1) * 180.0 / PI; /* y up */
     if (angle < 0.0) angle += 180.0;
     out->stretch = (measured){ exp(2.0 * e), u * exp(2.0 * e), 0.0, n };
@@ -185,7 +189,9 @@ static double angle_of(const peak *p) {
 
 /* Three peaks about 60 degrees apart, alike in height, clear of the next one and of the ground between them. */
 static int distinct(const acf2d *a, const peak *p, size_t n, double se) {
-    const double least = 0.5, ground = 0.5, gap_deg = 20.0;
+    /* Ordered layers: peaks of 0.3 to 0.8 over a ground of -0.3 to -0.08. The three highest bumps on the ring of a
+     * disordered layer of 75 features reach 0.3, but the ground between them stays above 0. */
+    const double least = 0.5, ground = 0.0, gap_deg = 20.0;
     if (n < 3 || p[2].height < least * p[0].height || p[2].height < 6.0 * se) return 0;
     if (n > 3 && p[3].height > 0.6 * p[2].height) return 0;
     double t[3] = { angle_of(&p[0]), angle_of(&p[1]), angle_of(&p[2]) };
@@ -206,7 +212,7 @@ static int distinct(const acf2d *a, const peak *p, size_t n, double se) {
         if (fabs(next - t[i] - PI / 3.0) > gap_deg * PI / 180.0) return 0;
         valley += acf2d_at(a, r * cos(mid), r * sin(mid)) / 3.0;
     }
-    return valley < ground * height;
+    return valley < ground * height - 2.0 * se;
 }
 
 /* q1 x^2 + q2 x y + q3 y^2 = 1 through three points; 0 when that is no ellipse. */
@@ -265,7 +271,7 @@ status spacing_ring(const acf2d *k_acf, const curve *k_radial, double d_px, size
     double rough = d_px > 0.0 ? find_ring(k_radial, d_px) : 0.0;
     if (!(rough > 0.0))
         return fail(e, ST_NO_RESULT, "the autocorrelation has no ring between %.3g and %.3g px", 0.35 * d_px,
-                    2.2 * d_px);
+                    1.8 * d_px);
     double se = acf_standard_error(k_radial, rough, k_acf->nx, k_acf->ny);
     r.ring_height = curve_at(k_radial, rough);
     r.radial_ring_px = ring_vertex(k_acf, shear_make(0.0, 0.0), rough, &r.ring_height);

@@ -126,12 +126,19 @@ static void check_verdict(void) {
     IS(judged(&s, &p, t), 0, FLAG(UNSHARP));
     s.blur_sd_px = 0.26 * 24.0;
     IS(judged(&s, &p, t), FLAG(BLURRED), 0);
+    s.blur_sd_px = 0.16 * 24.0;
+    t.size_gsd.value = 1.5;
+    IS(judged(&s, &p, t), FLAG(BLURRED), FLAG(UNSHARP));
+    t = sound();
     s.blur_sd_px = (double)NAN;
     IS(judged(&s, &p, t), 0, 0);
-    s.noise_sd = 0.6;
+    s.noise_sd = 0.4;
     IS(judged(&s, &p, t), 0, FLAG(NOISY));
-    s.noise_sd = 2.0;
+    s.noise_sd = 0.6;
     IS(judged(&s, &p, t), FLAG(NOISY), 0);
+    t.spacing_hex.value = 60.0; /* the same noise over wider features */
+    IS(judged(&s, &p, t), 0, 0);
+    t = sound();
     s.noise_sd = 0.01;
     s.streaks = 0.1;
     IS(judged(&s, &p, t), 0, FLAG(STREAKS));
@@ -141,7 +148,7 @@ static void check_verdict(void) {
     p.clipped_low = 0.01;
     p.clipped_high = 0.02;
     IS(judged(&s, &p, t), 0, FLAG(CLIPPED));
-    p.clipped_high = 0.3;
+    p.clipped_high = 0.5;
     IS(judged(&s, &p, t), FLAG(CLIPPED), 0);
     p.clipped_low = p.clipped_high = 0.0;
     t.stretch.value = 1.15;
