@@ -1,5 +1,6 @@
 #include "app/publish.h"
 
+#include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -25,6 +26,7 @@ typedef struct {
     const char **target_quantity;
     double *target_min, *target_max;
     double *reference_nm, *polished, *coated;
+    double *x_mm, *y_mm; /* [n_groups] */
     size_t n_reference;
     textbuf manifest, summary, note;
 } material_for;
@@ -46,6 +48,8 @@ static void material_free_all(material_for *m, size_t n_targets) {
     free(m->reference_nm);
     free(m->polished);
     free(m->coated);
+    free(m->x_mm);
+    free(m->y_mm);
     text_free(&m->manifest);
     text_free(&m->summary);
     text_free(&m->note);
@@ -70,6 +74,23 @@ static status gather_rows(const publication *p, material_for *m, error *e) {
     for (size_t i = 0; i < k; i++) {
         m->samples[i] = p->samples[i].row;
         m->sample_json[i] = p->samples[i].json;
+    }
+    return ST_OK;
+}
+
+/* Places on the wafer, from the first micrograph of the sample whose sheet row says one. */
+static status gather_places(const publication *p, material_for *m, error *e) {
+    m->x_mm = mem_array(p->n_groups, sizeof(double));
+    m->y_mm = mem_array(p->n_groups, sizeof(double));
+    if (!m->x_mm || !m->y_mm) return NO_MEMORY(e, "the places on the wafer");
+    for (size_t k = 0; k < p->n_groups; k++) {
+        m->x_mm[k] = m->y_mm[k] = MISSING;
+        for (size_t i = 0; i < p->groups[k].n_members && !isfinite(m->x_mm[k]); i++) {
+            const sheet_row *row = p->folder->rows[p->groups[k].members[i]];
+            if (!row || !isfinite(row->y_mm)) continue;
+            m->x_mm[k] = row->x_mm;
+            m->y_mm[k] = row->y_mm;
+        }
     }
     return ST_OK;
 }
@@ -219,7 +240,8 @@ static status write_all(const publication *p, material_for *m, error *e) {
                   .n_targets = p->protocol->n_targets, .history_json = p->ledger->json,
                   .reference_wavelength_nm = m->reference_nm, .polished_R = m->polished, .coated_R = m->coated,
                   .n_reference = m->n_reference, .overlay_paths = m->overlays, .history_note = m->note.s,
-                  .image_stems = m->stems };
+                  .image_stems = m->stems,
+                  .sample_x_mm = m->x_mm, .sample_y_mm = m->y_mm };
     status st = results_write(&r, p->out, e);
     if (st == ST_OK && p->page) st = report_write(&r, p->out, e);
     return st;
@@ -228,6 +250,7 @@ static status write_all(const publication *p, material_for *m, error *e) {
 status publish(const publication *p, error *e) {
     material_for m = { 0 };
     status st = gather_rows(p, &m, e);
+    if (st == ST_OK) st = gather_places(p, &m, e);
     if (st == ST_OK) st = gather_targets(p, &m, e);
     if (st == ST_OK) st = gather_spectra(p, &m, e);
     if (st == ST_OK) st = gather_references(p, &m, e);
