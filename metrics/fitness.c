@@ -6,7 +6,7 @@
  * A probe of sd b multiplies the spectrum by exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the
  * highest band above the noise to come back to that law. Textures without blur come out below 0.08 spacings; rendered blurs of
  * 0.12, 0.20, 0.25 and 0.35 spacings within 0.03. Rough or edge-bright pictures fall more slowly and look sharper than
- * they are, never blurrier. Only bands within exp(9.5) of the ring are believed: below that lie the side lobes of
+ * they are, never blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side lobes of
  * windows and of truncated filters.
  * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as noise, so the
  * smaller of the two is taken.
@@ -66,7 +66,7 @@ static double power_between(const curve *psd, double k0, double k1, double floor
 }
 
 static double creased_fall(double x0, double x1) {
-    return x0 < 1.8 ? 2.5 : 0.65 + 5.0 * log(sqrt(x0 * x1));
+    return x0 < 1.6 ? 2.5 : 0.65 + 5.0 * log(sqrt(x0 * x1));
 }
 
 /* Blur to be undone for the band k0 .. k1 to obey the law. level > 0 stands for a band drowned in noise. */
@@ -86,7 +86,7 @@ static double undone(const curve *psd, double d, double floor, double k0, double
 
 static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
     static const double edge[] = { 1.4, 1.8, 2.2, 2.8, 3.5, 4.5, 5.6, 7.0, 9.0, 11.0, 14.0 };
-    const double least_z = 3.0, most_fall = 9.5, end = 0.45;
+    const double least_z = 3.0, most_fall = 10.5, end = 0.45;
     double ring = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
     double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
     if (!(ring > least_z * floor / sqrt(modes)) || !(ring > 0.0)) return MISSING;
