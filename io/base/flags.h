@@ -38,7 +38,11 @@
     X(HEIGHT_ASSUMED,  height_assumed,  "height from the protocol or the default aspect, not measured")                  \
     X(ONE_MICROGRAPH,  one_micrograph,  "the sample rests on a single micrograph")                                       \
     X(BEYOND_MODEL,    beyond_model,    "texture too coarse for the graded-index model: no reflectance is given")        \
-    X(DIFFRACTS,       diffracts,       "part of the light is diffracted into air: the model says nothing there")
+    X(DIFFRACTS,       diffracts,       "part of the light is diffracted into air: the model says nothing there")             \
+    X(LOSSY,           lossy,           "a lossy file: brightness statistics are altered")                              \
+    X(TILT_CORRECTED,  tilt_corrected,  "a tilted view: y was stretched by 1/cos(tilt) before measuring")               \
+    X(TILT_KNOWN,      tilt_known,      "a tilted view by the file's own word, not corrected")                          \
+    X(FILLED,          pixels_filled,   "pixels without a value (NaN) were filled from their neighbours")
 /* clang-format on */
 
 enum {
