@@ -25,6 +25,7 @@
 #include "metrics/watershed.h"
 
 static const double ring_scale = 0.12; /* sigma of the curvature map behind spacing_acf / d */
+static const double clear_score = 0.5; /* of relief_look: never wrong on rendered textures above this */
 static const double ring_lags = 4.0;   /* its autocorrelation reaches this far, / d */
 
 typedef struct {
@@ -153,6 +154,8 @@ static status feature_stage(job *j, error *e) {
     status st = relief_stage(j, j->first.scale_px, &at_first, e);
     relief first = j->t.relief;
     if (st == ST_OK) st = detect_again(j, e);
+    int near = j->det.scale_px > 0.75 * j->first.scale_px && j->det.scale_px < 1.33 * j->first.scale_px;
+    if (st != ST_OK || (fabs(at_first) > clear_score && near)) return st;
     if (st == ST_OK) st = relief_stage(j, j->det.scale_px, &at_own, e);
     relief second = j->t.relief;
     if (st != ST_OK || second == first) return st;

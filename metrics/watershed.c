@@ -1,129 +1,170 @@
-/* Watershed by flooding from markers (Meyer F. 1991; Vincent L., Soille P. 1991, IEEE Trans. Pattern Anal.
- * 13:583).
+/* Watershed from markers (Meyer F. 1991; Vincent L., Soille P. 1991, IEEE Trans. Pattern Anal. 13:583) by steepest ascent.
  *
- * The flood starts at the markers and takes the highest open pixel first; pixels of one level in the order in
- * which they were reached, so the result does not depend on memory or machine. Levels are the 65536 steps
- * between the lowest and the highest value of the smoothed picture (finer than any micrograph's own steps),
- * each a first-in first-out list threaded through one array: no heap, cost proportional to the number of
- * pixels. There is no mask: the cells partition the field, because touching hillocks leave no floor to see.
- * Description of the cells: see cells.c. */
+ * Every pixel points to its steepest higher neighbour; on a plateau to the neighbour through which a flood from the
+ * higher rim would reach it first, so that bare ground is shared by distance. Following the pointers gives one basin per
+ * top. A feature owns the basin its marker leads to; a marker on the slope of another feature owns what drains to it. Basins
+ * without a feature join, highest pass first, the side that has one. The result is that of a flood that takes the highest
+ * open pixel first, except that a pixel takes the label of its steepest way up and not of the first arrival (along a
+ * crease the latter leaks to the other side, a little further with every pixel); and the picture is read row by row
+ * and not in the order of its levels, which is ten times faster on large ones. There is no mask: the cells partition the
+ * field, because touching hillocks leave no floor to see. Description of the cells: cells.c. */
 #include "metrics/watershed.h"
 
 #include <math.h>
 #include <stdlib.h>
 
 #include "base/mem.h"
+#include "base/quantity.h"
+#include "metrics/basins.h"
 #include "metrics/filter.h"
-#include "metrics/maxima.h"
 
 static const double cell_scale = 0.06; /* sigma of the smoothing / d */
-static const double max_climb = 0.30;  /* from a marker to the top its flood starts at / d */
-enum { LEVELS = 65536 };
-#define NO_PIXEL UINT32_MAX
-#define WAITING ((uint32_t)1 << 31) /* mark of a pixel in a list, beside the label of what reached it */
+static const double max_climb = 0.30;  /* from a marker to the top of its basin / d */
+#define NO_OWNER UINT32_MAX
 
-typedef struct {
-    uint32_t *next;         /* [pixels] */
-    uint32_t *first, *last; /* [LEVELS] */
-    uint16_t *level;        /* [pixels] */
-    size_t top;             /* no list above this level holds a pixel */
-} queue;
-
-static void queue_free(queue *q) {
-    free(q->next);
-    free(q->first);
-    free(q->last);
-    free(q->level);
+/* The steepest strictly higher neighbour, or the pixel itself; of equals the first in row-major order. */
+static uint32_t steepest_up(const float *g, size_t nx, size_t ny, size_t x, size_t y) {
+    const float diagonal = 0.70710678f;
+    size_t here = y * nx + x, best = here;
+    size_t x0 = x ? x - 1 : 0, x1 = x + 1 < nx ? x + 1 : x, y0 = y ? y - 1 : 0, y1 = y + 1 < ny ? y + 1 : y;
+    float steepest = 0.0f;
+    for (size_t yy = y0; yy <= y1; yy++)
+        for (size_t xx = x0; xx <= x1; xx++) {
+            float slope = (g[yy * nx + xx] - g[here]) * (xx != x && yy != y ? diagonal : 1.0f);
+            if (slope > steepest) {
+                steepest = slope;
+                best = yy * nx + xx;
+            }
+        }
+    return (uint32_t)best;
 }
 
-static status queue_make(const float *g, size_t n, queue *q, error *e) {
-    *q = (queue){ mem_array(n, sizeof *q->next), mem_array(LEVELS, sizeof *q->first),
-                  mem_array(LEVELS, sizeof *q->last), mem_array(n, sizeof *q->level), 0 };
-    if (!q->next || !q->first || !q->last || !q->level) return NO_MEMORY(e, "the watershed");
-    float low = g[0], high = g[0];
-    for (size_t i = 1; i < n; i++) {
-        low = g[i] < low ? g[i] : low;
-        high = g[i] > high ? g[i] : high;
+/* Visits the neighbours of pixel i (sharing an edge: steps of one length, a fair distance) that are as high and have
+ * no way up yet: they get `to` and enter the list. */
+static size_t spread(const float *g, size_t nx, size_t ny, size_t i, uint32_t to, char *open, uint32_t *up,
+                     uint32_t *list, size_t n) {
+    size_t x = i % nx, y = i / nx, near[4], m = 0;
+    if (y) near[m++] = i - nx;
+    if (x) near[m++] = i - 1;
+    if (x + 1 < nx) near[m++] = i + 1;
+    if (y + 1 < ny) near[m++] = i + nx;
+    for (size_t k = 0; k < m; k++) {
+        size_t j = near[k];
+        if (!open[j] || g[j] < g[i] || g[j] > g[i]) continue;
+        open[j] = 0;
+        up[j] = to;
+        list[n++] = (uint32_t)j;
     }
-    double step = high > low ? (LEVELS - 1) / ((double)high - (double)low) : 0.0;
-    for (size_t i = 0; i < n; i++) q->level[i] = (uint16_t)(((double)g[i] - (double)low) * step + 0.5);
-    for (size_t i = 0; i < LEVELS; i++) q->first[i] = NO_PIXEL;
+    return n;
+}
+
+/* Ways up on plateaus, breadth first from their higher rim. A plateau without one is a top: the markers on it share it by
+ * distance; without a marker its first pixel is the root. open[i]: 1 where no neighbour is higher. */
+static status plateaus_resolve(const float *g, size_t nx, size_t ny, const detection *d, char *open,
+                               uint32_t *up, error *e) {
+    size_t n_px = nx * ny, n = 0;
+    uint32_t *list = mem_array(n_px, sizeof *list);
+    if (!list) return NO_MEMORY(e, "the watershed");
+    for (size_t i = 0; i < n_px; i++) /* rim pixels are not in the list: they know their way */
+        if (!open[i]) n = spread(g, nx, ny, i, (uint32_t)i, open, up, list, n);
+    size_t done = 0;
+    for (; done < n; done++) n = spread(g, nx, ny, list[done], list[done], open, up, list, n);
+    for (size_t k = 0; k < d->n; k++)
+        if (open[d->marker[k]]) {
+            open[d->marker[k]] = 0;
+            list[n++] = d->marker[k];
+        }
+    for (; done < n; done++) n = spread(g, nx, ny, list[done], list[done], open, up, list, n);
+    for (size_t i = 0; i < n_px; i++) {
+        if (!open[i]) continue;
+        open[i] = 0;
+        size_t k = n;
+        n = spread(g, nx, ny, i, (uint32_t)i, open, up, list, n);
+        for (; k < n; k++) n = spread(g, nx, ny, list[k], (uint32_t)i, open, up, list, n);
+    }
+    free(list);
     return ST_OK;
 }
 
-static void queue_push(queue *q, uint32_t pixel, size_t level) {
-    q->next[pixel] = NO_PIXEL;
-    if (q->first[level] == NO_PIXEL)
-        q->first[level] = pixel;
-    else
-        q->next[q->last[level]] = pixel;
-    q->last[level] = pixel;
-    if (level > q->top) q->top = level;
-}
-
-/* Highest pixel first; NO_PIXEL when empty. */
-static uint32_t queue_pop(queue *q) {
-    while (q->first[q->top] == NO_PIXEL) {
-        if (q->top == 0) return NO_PIXEL;
-        q->top--;
-    }
-    uint32_t pixel = q->first[q->top];
-    q->first[q->top] = q->next[pixel];
-    return pixel;
-}
-
-static void reach(queue *q, uint32_t *cells, uint32_t label, uint32_t to) {
-    if (cells[to]) return;
-    cells[to] = WAITING | label;
-    queue_push(q, to, q->level[to]);
-}
-
-/* Label of the steepest way up from a waiting pixel to one that has a label; of equals (plateaus) what
- * reached it first. The first to arrive alone would be the usual choice; but along a crease it leaks to the
- * other side, a little further with every pixel. */
-static uint32_t label_uphill(const float *g, const uint32_t *cells, size_t nx, size_t ny, uint32_t pixel) {
-    const float diagonal = 0.70710678f;
-    size_t x = pixel % nx, y = pixel / nx;
-    uint32_t first = cells[pixel] & ~WAITING, best = first;
-    float steepest = -HUGE_VALF;
-    for (size_t yy = y ? y - 1 : 0; yy <= y + 1 && yy < ny; yy++)
-        for (size_t xx = x ? x - 1 : 0; xx <= x + 1 && xx < nx; xx++) {
-            size_t i = yy * nx + xx;
-            if (!cells[i] || (cells[i] & WAITING)) continue;
-            float slope = (g[i] - g[pixel]) * (xx != x && yy != y ? diagonal : 1.0f);
-            if (slope > steepest || (cells[i] == first && !(slope < steepest))) {
-                steepest = slope;
-                best = cells[i];
-            }
+static status ways_up(const float *g, size_t nx, size_t ny, const detection *d, uint32_t *up, error *e) {
+    char *open = mem_array(nx * ny, sizeof *open);
+    if (!open) return NO_MEMORY(e, "the watershed");
+    for (size_t y = 0; y < ny; y++)
+        for (size_t x = 0; x < nx; x++) {
+            size_t i = y * nx + x;
+            up[i] = steepest_up(g, nx, ny, x, y);
+            open[i] = up[i] == i;
         }
-    return best;
+    status st = plateaus_resolve(g, nx, ny, d, open, up, e);
+    free(open);
+    return st;
 }
 
-/* Where the flood of a feature starts: the top that is reached uphill from its marker, unless another feature
- * has it. From a marker on a slope a neighbour's flood would be there first and leave a cell of a few pixels.
- */
-static uint32_t seed_of(const float *g, size_t nx, size_t ny, uint32_t marker, double reach_px,
-                        const uint32_t *cells) {
+/* The pixel at which the basin of a marker has its root: the top it leads to, unless that is far or taken; then the marker
+ * becomes a root itself. */
+static uint32_t root_of(uint32_t *up, size_t nx, uint32_t marker, double reach_px, const char *taken) {
     uint32_t top = marker;
-    return maximum_uphill(g, nx, ny, reach_px, &top) && !cells[top] ? top : marker;
+    while (up[top] != top) top = up[top];
+    double dx = (double)(top % nx) - (double)(marker % nx), dy = (double)(top / nx) - (double)(marker / nx);
+    if (!taken[top] && dx * dx + dy * dy <= reach_px * reach_px) return top;
+    if (!taken[marker]) up[marker] = marker;
+    return marker;
 }
 
-static void flood(queue *q, const float *g, size_t nx, size_t ny, const detection *d, uint32_t *cells) {
-    for (size_t i = 0; i < nx * ny; i++) cells[i] = 0;
+static status roots_choose(uint32_t *up, size_t nx, size_t ny, const detection *d, uint32_t *root, error *e) {
+    char *taken = mem_array(nx * ny, sizeof *taken);
+    if (!taken) return NO_MEMORY(e, "the watershed");
     for (size_t k = 0; k < d->n; k++) {
-        uint32_t seed = seed_of(g, nx, ny, d->marker[k], max_climb * d->scale_px, cells);
-        if (cells[seed]) continue;
-        cells[seed] = (uint32_t)(k + 1);
-        queue_push(q, seed, q->level[seed]);
+        root[k] = root_of(up, nx, d->marker[k], max_climb * d->scale_px, taken);
+        taken[root[k]] = 1;
     }
-    for (uint32_t p = queue_pop(q); p != NO_PIXEL; p = queue_pop(q)) {
-        size_t x = p % nx, y = p / nx;
-        if (cells[p] & WAITING) cells[p] = label_uphill(g, cells, nx, ny, p);
-        if (y) reach(q, cells, cells[p], (uint32_t)(p - nx));
-        if (x) reach(q, cells, cells[p], p - 1);
-        if (x + 1 < nx) reach(q, cells, cells[p], p + 1);
-        if (y + 1 < ny) reach(q, cells, cells[p], (uint32_t)(p + nx));
+    free(taken);
+    return ST_OK;
+}
+
+/* Owner of every basin: of its feature, or of the side over the highest pass that has one. */
+static status owners_find(const float *g, const uint32_t *basin, size_t nx, size_t ny, size_t n_basins,
+                          const uint32_t *root, size_t n, uint32_t *owner, error *e) {
+    pass *p = NULL;
+    size_t n_pass = 0;
+    uint32_t *parent = mem_array(n_basins, sizeof *parent);
+    status st =
+        parent ? passes_find(g, basin, nx, ny, n_basins, &p, &n_pass, e) : NO_MEMORY(e, "the watershed");
+    if (st == ST_OK) {
+        for (size_t i = 0; i < n_basins; i++) {
+            parent[i] = (uint32_t)i;
+            owner[i] = NO_OWNER;
+        }
+        for (size_t k = n; k-- > 0;)
+            owner[basin[root[k]]] = (uint32_t)k; /* of two on one root the first has it */
+        for (size_t i = 0; i < n_pass; i++) {
+            uint32_t a = set_find(parent, p[i].a), b = set_find(parent, p[i].b);
+            if (a == b || (owner[a] != NO_OWNER && owner[b] != NO_OWNER)) continue;
+            uint32_t into = owner[a] != NO_OWNER ? a : b;
+            parent[into == a ? b : a] = into;
+        }
+        for (size_t i = 0; i < n_basins; i++) owner[i] = owner[set_find(parent, (uint32_t)i)];
     }
+    free(p);
+    free(parent);
+    return st;
+}
+
+static status cells_make(const float *g, size_t nx, size_t ny, const detection *d, uint32_t *cells,
+                         error *e) {
+    uint32_t *root = mem_array(d->n, sizeof *root), *owner = NULL;
+    status st = root ? ways_up(g, nx, ny, d, cells, e) : NO_MEMORY(e, "the watershed");
+    if (st == ST_OK) st = roots_choose(cells, nx, ny, d, root, e);
+    if (st == ST_OK) {
+        size_t n_basins = basins_number(cells, nx * ny);
+        owner = mem_array(n_basins, sizeof *owner);
+        st = owner ? owners_find(g, cells, nx, ny, n_basins, root, d->n, owner, e)
+                   : NO_MEMORY(e, "the watershed");
+    }
+    for (size_t i = 0; st == ST_OK && i < nx * ny; i++) cells[i] = owner[cells[i]] + 1;
+    free(root);
+    free(owner);
+    return st;
 }
 
 /* Tops: the part of a cell above the middle between its lowest and its highest value. */
@@ -144,8 +185,7 @@ static status tops_measure(const float *g, const uint32_t *cells, size_t n_px, f
         }
         for (size_t k = 0; k < n; k++) low[k] = 0.5f * (low[k] + high[k]);
         for (size_t i = 0; i < n_px; i++) area[cells[i] - 1] += g[i] > low[cells[i] - 1];
-        for (size_t k = 0; k < n; k++)
-            features[k].top_ecd_px = 2.0 * sqrt((double)area[k] / 3.14159265358979323846);
+        for (size_t k = 0; k < n; k++) features[k].top_ecd_px = 2.0 * sqrt((double)area[k] / PI);
     }
     free(low);
     free(area);
@@ -155,17 +195,12 @@ static status tops_measure(const float *g, const uint32_t *cells, size_t n_px, f
 status watershed(const float *f, size_t nx, size_t ny, int sign, detection *d, uint32_t *cells, error *e) {
     if (!d->n) return fail(e, ST_BAD_INPUT, "watershed without a single feature; detect features first");
     float *g = mem_array(nx * ny, sizeof *g);
-    queue q = { 0 };
     status st = g ? filter_gauss(f, nx, ny, cell_scale * d->scale_px, g, e) : NO_MEMORY(e, "the watershed");
     if (st == ST_OK && sign < 0)
         for (size_t i = 0; i < nx * ny; i++) g[i] = -g[i];
-    if (st == ST_OK) st = queue_make(g, nx * ny, &q, e);
-    if (st == ST_OK) {
-        flood(&q, g, nx, ny, d, cells);
-        st = tops_measure(g, cells, nx * ny, d->features, d->n, e);
-    }
+    if (st == ST_OK) st = cells_make(g, nx, ny, d, cells, e);
+    if (st == ST_OK) st = tops_measure(g, cells, nx * ny, d->features, d->n, e);
     if (st == ST_OK) st = cells_describe(cells, nx, ny, d->features, d->n, e);
-    queue_free(&q);
     free(g);
     return st;
 }

@@ -1,4 +1,4 @@
-/* Cells: priority-flood watershed of Gaussian 0.06 d smoothed sign * f from the markers, no mask.
+/* Cells: watershed of Gaussian 0.06 d smoothed sign * f from the markers, no mask.
  * Deterministic. */
 #ifndef SWARD_METRICS_WATERSHED_H
 #define SWARD_METRICS_WATERSHED_H
