@@ -92,7 +92,8 @@ static status read_number(history *h, const char *sql, int *out, error *e) {
 
 typedef enum { LEDGER_OURS, LEDGER_EMPTY } ledger;
 
-/* Ours, or empty and free to become ours; everything else is refused. */
+/* Ours, or empty and free to become ours; everything else is refused. Called inside a transaction: while another
+ * program makes the ledger, the marks must not be read half before and half after. */
 static status identify(history *h, ledger *out, error *e) {
     int id = 0, version = 0, tables = 0;
     status st = read_number(h, "PRAGMA application_id", &id, e);
@@ -143,7 +144,9 @@ status history_open(const char *path, int read_only, history **out, error *e) {
     if (st == ST_OK) {
         sqlite3_busy_timeout(h->db, WAIT_MS);
         ledger found = LEDGER_OURS;
-        st = identify(h, &found, e);
+        st = run_sql(h, "BEGIN", "opening it", e);
+        if (st == ST_OK) st = identify(h, &found, e);
+        sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
         if (st == ST_OK && found == LEDGER_EMPTY)
             st = read_only ? fail(e, ST_IO, "history %s: the file is empty, not a ledger", path) : create(h, e);
     }

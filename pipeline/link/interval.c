@@ -3,11 +3,11 @@
  * Model. Rigorous coupled-wave calculations of ordered cones and paraboloids give, against the graded index with the
  * 2-D Bruggeman rule, a mean error b(p/wl, h/wl) and a standard uncertainty u (which contains b): optics/trust.h.
  * The best estimate of the truth is therefore R(Bruggeman 2-D) - b with the residual standard uncertainty
- * sqrt(u^2 - b^2), kept at half of u at least (a square lattice, which took no part in the tables, needs that much). The two ends of the bracket of mixing rules, Bruggeman 2-D and
- * Maxwell Garnett 2-D, give u_mix = |difference| (over a spectrum: its rms over +-20 % in wavelength, because R
- * oscillates); the table holds that error already, so the larger of both counts, not their sum. Errors of the model
- * hang together over the spectrum: they are summed linearly for the weighted value and taken times 0.75 (rms of
- * error over that sum: 0.73).
+ * sqrt(u^2 - b^2), kept at half of u at least (a square lattice, which took no part in the tables, needs that
+ * much). The two ends of the bracket of mixing rules, Bruggeman 2-D and Maxwell Garnett 2-D, give u_mix =
+ * |difference| (over a spectrum: its rms over +-20 % in wavelength, because R oscillates); the table holds that error
+ * already, so the larger of both counts, not their sum. Errors of the model hang together over the spectrum: they are
+ * summed linearly for the weighted value and taken times 0.75 (rms of error over that sum: 0.73).
  *   Elsewhere than in air the table is entered with p n and scaled by the polished reflectance at normal incidence in
  * that ambient. R passes the polished value only in p-polarized light, near whose Brewster angle that vanishes: the
  * cap is the larger of the polished values at the angle and at 0. Oblique light: 48 rigorous spectral points (pitch 100
@@ -43,8 +43,11 @@ typedef struct {
 
 static double sq(double x) { return x * x; }
 
+/* An end of an input may be an odd texture that does not quite settle: the best values do for a width. */
 static status spectrum(workspace *w, const variant *v, double *R, error *e) {
-    return variant_spectrum(w->in, w->o, v, w->g, R, NULL, e);
+    error own = { 0 };
+    status st = variant_spectrum(w->in, w->o, v, w->g, R, NULL, &own);
+    return st == ST_OK || st == ST_NO_RESULT ? ST_OK : fail(e, st, "%s", own.text);
 }
 
 /* ---- inputs ---- */

@@ -136,8 +136,9 @@ static void add_percent(textbuf *t, double share) {
 
 static void say_interval(textbuf *t, const surface_input *in, const optics_setup *o) {
     char shown[NUMBER_TEXT];
-    if (in->measured) text_add(t, "The interval holds the mixing rule and the model's own error, not that of the profile.");
-    else {
+    if (in->measured) {
+        text_add(t, "The interval holds the mixing rule and the model's own error, not that of the profile.");
+    } else {
         text_add(t, "The interval holds the model's own error, the mixing rule");
         if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", rough(in->height_nm.u, shown));
         if (in->link.exponent_u > 0.0) text_add(t, ", the shape");
@@ -147,7 +148,8 @@ static void say_interval(textbuf *t, const surface_input *in, const optics_setup
     }
     int far = o->reflect.hemispherical || o->reflect.angle_deg > 0.0 || o->n_coatings || in->pores ||
               strncmp(o->substrate->name ? o->substrate->name : "", "silicon", 7) != 0;
-    if (far) text_add(t, " The model's error was studied on bare silicon hillocks at normal incidence and is carried over.");
+    if (far)
+        text_add(t, " The model's error was studied on bare silicon hillocks at normal incidence and is carried over.");
 }
 
 static void say(prediction *out, const surface_input *in, const optics_setup *o, double beyond, int planar) {
@@ -156,8 +158,8 @@ static void say(prediction *out, const surface_input *in, const optics_setup *o,
     if (out->refused) {
         text_addf(&t, "No reflectance: with a spacing of %s nm ", rough(in->spacing_nm.value, shown));
         add_percent(&t, beyond);
-        text_add(&t, " of the photons have a wavelength below spacing/2.5, where the graded-index model says nothing; such "
-                     "a texture reflects by geometric optics.");
+        text_add(&t, " of the photons have a wavelength below spacing/2.5, where the graded-index model says nothing; "
+                     "such a texture reflects by geometric optics.");
     } else if (planar) {
         text_add(&t, "Planar layers: exact, no model error.");
     } else if (!(in->spacing_nm.value > 0.0)) {
@@ -186,8 +188,8 @@ static status check(const surface_input *in, const optics_setup *o, error *e) {
         return fail(e, ST_BAD_INPUT, "band: found %s to %s nm, expected an ascending band such as 300 to 1200",
                     number_text(o->band_lo_nm, 6, a), number_text(o->band_hi_nm, 6, b));
     if (!(o->step_nm > 0.0) || (o->band_hi_nm - o->band_lo_nm) / o->step_nm > GRID_MAX)
-        return fail(e, ST_BAD_INPUT, "step: found %s nm, expected a step above 0 with at most 100000 wavelengths in the "
-                                     "band",
+        return fail(e, ST_BAD_INPUT, "step: found %s nm, expected a step above 0 with at most 100000 wavelengths in "
+                                     "the band",
                     number_text(o->step_nm, 6, a));
     if (isfinite(in->spacing_nm.value) && !(in->spacing_nm.value > 0.0))
         return fail(e, ST_BAD_INPUT, "spacing: found %s nm, expected a spacing above 0",
@@ -252,8 +254,8 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
     if (st != ST_OK) return st;
     variant v = { .height_nm = texture_height(in), .spacing_nm = in->spacing_nm.value, .exponent = in->link.exponent,
                   .level_at_tips = in->link.level_at_tips, .mixing = o->mixing };
-    prediction p = { .weighted = MISSING, .weighted_lo = MISSING, .weighted_hi = MISSING, .current_loss_mA_cm2 = MISSING,
-                     .polished = MISSING, .coated = MISSING, .model = "graded" };
+    prediction p = { .weighted = MISSING, .weighted_lo = MISSING, .weighted_hi = MISSING, .polished = MISSING,
+                     .current_loss_mA_cm2 = MISSING, .coated = MISSING, .model = "graded" };
     grid fine = { 0 }, coarse = { 0 };
     int planar = !(v.height_nm > 0.0);
     double beyond = 0.0;

@@ -7,8 +7,8 @@
  * all films up to j covers beyond what lies under it. Steps (film on a free floor, rim of a pore) become two nodes at
  * one depth.
  * Nodes: for one height u = t^k (k = q within 1..8) with so many steps that linear interpolation errs below 1e-7
- * (exponents 0.5 to 3), but no two nodes within 0.01 nm: within the first nm of blunter tips the error reaches 2e-5; for
- * many heights or films evenly spaced.
+ * (exponents 0.5 to 3), but no two nodes within 0.01 nm: within the first nm of blunter tips the error reaches 2e-5;
+ * for many heights or films evenly spaced.
  * What this file does not do: cells of different area carry the same film thickness but share one mean radius. */
 #include <math.h>
 #include <stdlib.h>
@@ -180,15 +180,16 @@ status link_profile(double height_nm, double spacing_nm, const double *cell_area
     status st = link_check(height_nm, o, e);
     if (st == ST_OK) st = check_coatings(coatings, n_coatings, e);
     if (st != ST_OK || !(height_nm > 0.0)) return st; /* height 0: planar, no profile */
-    st = heights_make(height_nm, cell_area_nm2, n_cells, o, n_coatings ? HEIGHT_CLASSES_FILM : HEIGHT_CLASSES, &heights, e);
+    size_t bins = n_coatings ? HEIGHT_CLASSES_FILM : HEIGHT_CLASSES;
+    st = heights_make(height_nm, cell_area_nm2, n_cells, o, bins, &heights, e);
     if (st != ST_OK) return st;
     texture_model m = { .heights = &heights, .o = o, .n_films = n_coatings, .pores = pores != 0 };
     for (size_t k = 0; k < n_coatings; k++)
         m.film_nm[k + 1] = m.film_nm[k] + coatings[n_coatings - 1 - k].thickness_nm;
     m.cell_radius_nm = sqrt(mean_cell_nm2(spacing_nm, cell_area_nm2, n_cells) / PI);
     if (n_coatings && !(m.cell_radius_nm > 0.0))
-        return fail(e, ST_BAD_INPUT, "a conformal coating needs the spacing of the features, and none is known; give a "
-                                     "spacing");
+        return fail(e, ST_BAD_INPUT, "a conformal coating needs the spacing of the features, and none is known; give "
+                                     "a spacing");
     st = heights.n == 1 && !n_coatings ? closed_form(&m, &made, e) : summed(&m, &made, e);
     if (st != ST_OK) {
         profile_free(&made);

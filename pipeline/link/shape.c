@@ -2,9 +2,9 @@
  *
  * Shape: solid share of the cell u^(2/q), u = depth below the tip / height; q = 1 cone, q = 2 paraboloid. As a solid
  * of revolution on the circular cell of radius R its radius is R sqrt(F) u^(1/q).
- * Heights: h_i = h (d_i/d_mean)^g by cell, then a normal spread of relative sd s, cut at 4 sd and at h/20 (what
- * is cut goes to the others in proportion), in 121 steps, gathered in classes that keep each bin's mean height
- * (129; 33 under a film, which is smooth itself).
+ * Heights: h_i = h (d_i/d_mean)^g by cell, then a normal spread of relative sd s, cut at 4 sd and at h/20 (what is
+ * cut goes to the others in proportion), in 121 steps, gathered in classes that keep each bin's mean height (129; 33
+ * under a film, which is smooth itself).
  * Film: every point within t of the solid (dilation by a ball), found by searching the point of the wall that
  * reaches farthest at the level asked for: a scan, then a golden section.
  * What this file does not do: shadowing, corners rounded by the film's own growth, cells that are not circles. */
@@ -139,7 +139,8 @@ static double reach(const solid *f, double t, double v, double sign, double x) {
 static double farthest(const solid *f, double t, double v, double sign, double from, double to) {
     enum { SCAN = 24, GOLDEN_STEPS = 22 };
     const double golden = 0.6180339887498949;
-    double base = f->cell_radius_nm * sqrt(f->coverage), best = fmax(reach(f, t, v, sign, from), reach(f, t, v, sign, to));
+    double base = f->cell_radius_nm * sqrt(f->coverage);
+    double best = fmax(reach(f, t, v, sign, from), reach(f, t, v, sign, to));
     if (fabs(f->exponent - 1.0) < 1e-12) {
         double tangent = -sign * base / hypot(base, f->height_nm);
         return tangent > from && tangent < to ? fmax(best, reach(f, t, v, sign, tangent)) : best;
@@ -189,7 +190,8 @@ double coated_share(const solid *f, double t_nm, double y_nm) {
 
 double coated_pore_share(const solid *f, double t_nm, double x_nm) {
     if (x_nm < -t_nm) return 0.0;
-    if (!(t_nm > 0.0)) return x_nm < 0.0 ? 0.0 : 1.0 - f->coverage * shape_share(1.0 - x_nm / f->height_nm, f->exponent);
+    if (!(t_nm > 0.0))
+        return x_nm < 0.0 ? 0.0 : 1.0 - f->coverage * shape_share(1.0 - x_nm / f->height_nm, f->exponent);
     double from = x_nm < 0.0 ? fmin(1.0, -x_nm / t_nm) : 0.0;
     double r = -farthest(f, t_nm, x_nm, -1.0, from, 1.0) / f->cell_radius_nm;
     return r > 0.0 ? 1.0 - r * r : 1.0;

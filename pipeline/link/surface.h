@@ -8,14 +8,14 @@
 #include "optics/stack.h"
 
 typedef enum { HEIGHT_SHEET, HEIGHT_CALIBRATED, HEIGHT_PROTOCOL, HEIGHT_ASPECT, HEIGHT_DEFAULT } height_source;
-const char *height_source_name(height_source s); /* sheet calibrated protocol aspect default; the last three are assumed */
-int height_is_assumed(height_source s);
+const char *height_source_name(height_source s); /* sheet calibrated protocol aspect default */
+int height_is_assumed(height_source s);          /* the last three */
 
 /* What the protocol (or the command line) says of the link; NAN = not said. */
 typedef struct {
     double height_nm, height_nm_u;
     double aspect, aspect_u;   /* height / spacing */
-    double exponent;           /* q in s(zeta) = (1 - zeta)^(2/q): 1 cone (default), 2 paraboloid */
+    double exponent;           /* 0.05..20; q in s(zeta) = (1 - zeta)^(2/q): 1 cone (default), 2 paraboloid */
     double exponent_u;         /* 0: the shape is given. Default 0.5 in `run`, 0 in `predict` */
     double height_spread;      /* relative sd of the heights (normal), default 0 */
     double height_by_size;     /* g in h_i = h (d_i / d_mean)^g, default 0 */
@@ -24,7 +24,9 @@ typedef struct {
 } link_options;
 link_options link_defaults(void);
 
-/* Picks the height: sheet (value, u; NAN if none) > protocol height > protocol aspect x spacing > 1.0 +- 0.3 x spacing. */
+/* Picks the height: sheet (value NAN if none) > protocol height > protocol aspect x spacing > 1.0 +- 0.3 x spacing.
+ *   out  height_nm (u NAN where nobody stated one), *src where it comes from
+ *   err  ST_BAD_INPUT a negative height or aspect; ST_NO_RESULT neither height nor spacing */
 status link_height(quantity sheet, const link_options *o, quantity spacing_nm, quantity *height_nm, height_source *src,
                    error *e);
 
@@ -33,11 +35,13 @@ status link_height(quantity sheet, const link_options *o, quantity spacing_nm, q
  *        coatings[n_coatings] conformal, outermost first, thickness_nm used to dilate the equivalent circular cell
  *        pores: the complement
  *   out  p owned by the caller (profile_free)
- *   err  ST_BAD_INPUT height < 0, exponent <= 0, coverage outside 0..1 ...; ST_NO_MEMORY */
+ *   err  ST_BAD_INPUT height < 0, an option outside its range, a cell without area, too many coatings or one below
+ *        0 nm, a coating without spacing and cells; ST_NO_MEMORY
+ *   src  design of the family and of the film: shape.c; height 0 gives an empty profile (planar) */
 status link_profile(double height_nm, double spacing_nm, const double *cell_area_nm2, size_t n_cells, int pores,
                     const link_options *o, const layer *coatings, size_t n_coatings, profile *p, error *e);
 
-/* Solid of revolution on the hexagonal cell: true area / projected area. */
+/* Solid of revolution on the hexagonal cell: true area / projected area; NAN where an input is out of range. */
 double link_area_ratio(double height_nm, double spacing_nm, const link_options *o);
 
 #endif

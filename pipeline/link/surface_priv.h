@@ -17,7 +17,7 @@ typedef struct {
 /* Options in their ranges. err ST_BAD_INPUT with the option's name. */
 status link_check(double height_nm, const link_options *o, error *e);
 
-/* Solid share of the cell at u = depth below the feature's own tip / its height: 0 above, u^(2/q), 1 below the floor. */
+/* Solid share of the cell at u = depth below the feature's own tip / its height: 0 above, u^(2/q), 1 below. */
 double shape_share(double u, double exponent);
 
 /* h_i = h (d_i / d_mean)^g, then the normal spread, cut at 4 sd and at a twentieth of h, in at

@@ -6,7 +6,8 @@
 #include "optical_tables.h"
 #include "optics/reflectance.h"
 
-static const char source[] = "independent slab recursion, cone 300 nm, spacing 300 nm hexagonal, conformal film n = 2.0";
+static const char source[] =
+    "independent slab recursion, cone 300 nm, spacing 300 nm hexagonal, conformal film n = 2.0";
 
 int main(void) {
     static const struct { double film_nm; mixing rule; double weighted, current, at400, at600, at1000; } cases[] = {

@@ -70,8 +70,9 @@ static const struct { double pitch, angle, wavelength, height; int exponent; dou
 };
 /* clang-format on */
 
-static const char source[] = "rigorous coupled-wave reference, hexagonal lattice", other[] = "the same, square lattice",
-                  tilted[] = "the same, hexagonal lattice, oblique";
+static const char source[] = "rigorous coupled-wave reference, hexagonal lattice";
+static const char other[] = "rigorous coupled-wave reference, square lattice";
+static const char tilted[] = "rigorous coupled-wave reference, hexagonal lattice, oblique";
 
 static material silicon, air, nitride;
 static sun am15g;
@@ -84,7 +85,8 @@ static prediction ask(double height, int exponent, double spacing, double angle,
     o.reflect.angle_deg = angle;
     o.reflect.polarization = pol;
     o.reflect.tolerance = 1e-5;
-    surface_input in = { .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, 0.0, 1 }, .link = link_defaults() };
+    surface_input in = { .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, 0.0, 1 },
+                         .link = link_defaults() };
     in.link.exponent = exponent;
     prediction p = { 0 };
     CHECK(predict(&in, &o, &p, &e) == ST_OK && !p.refused);
@@ -121,8 +123,8 @@ static void weighted(void) {
     CHECK_SOURCE((double)in_coarse / (3.0 * (double)n), 1.0, 0.05, source);
     CHECK(median(half, wide) <= 2.0);      /* and still of use: points of R, pitch up to 310 nm */
     CHECK(median(half_tall, tall) <= 1.0); /* the same with a height of 350 nm or more */
-    printf("held: %zu of %zu up to 400 nm, %zu of %zu above; median half-width %.2f, tall %.2f points\n", in_fine, 4 * n,
-           in_coarse, 3 * n, median(half, wide), median(half_tall, tall));
+    printf("held: %zu of %zu up to 400 nm, %zu of %zu above; median half-width %.2f, tall %.2f points\n", in_fine,
+           4 * n, in_coarse, 3 * n, median(half, wide), median(half_tall, tall));
 }
 
 static void square_lattice(void) {
@@ -140,7 +142,8 @@ static void oblique_points(void) {
     size_t n = sizeof oblique / sizeof oblique[0], in = 0;
     for (size_t i = 0; i < n; i++)
         for (int k = 0; k < 2; k++) {
-            prediction p = ask(oblique[i].height, oblique[i].exponent, oblique[i].pitch, oblique[i].angle, k ? POL_P : POL_S);
+            prediction p = ask(oblique[i].height, oblique[i].exponent, oblique[i].pitch, oblique[i].angle,
+                               k ? POL_P : POL_S);
             size_t at = (size_t)((oblique[i].wavelength - 300.0) / 20.0);
             CHECK_NEAR(p.wavelength_nm[at], oblique[i].wavelength, 1e-9);
             in += (size_t)inside(k ? oblique[i].p : oblique[i].s, p.R_lo[at], p.R_hi[at]);

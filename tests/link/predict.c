@@ -15,7 +15,8 @@ static optics_setup setup(void) {
                            .band_lo_nm = 300.0, .band_hi_nm = 1200.0, .step_nm = 10.0 };
 }
 static surface_input cones(double height, double spacing) {
-    return (surface_input){ .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, 0.0, 1 }, .link = link_defaults() };
+    return (surface_input){ .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, 0.0, 1 },
+                            .link = link_defaults() };
 }
 static prediction ask(const surface_input *in, const optics_setup *o) {
     error e = { 0 };
@@ -253,8 +254,8 @@ static void errors(void) {
 
 int main(void) {
     error e = { 0 };
-    CHECK(table_material("silicon", &silicon) && table_material("nitride", &nitride) && table_material("glass", &glass) &&
-          table_material("encapsulant", &encapsulant) && table_sun(&am15g) &&
+    CHECK(table_material("silicon", &silicon) && table_material("nitride", &nitride) &&
+          table_material("glass", &glass) && table_material("encapsulant", &encapsulant) && table_sun(&am15g) &&
           material_constant(&air, 1.0, 0.0, &e) == ST_OK);
     usual();
     budget();

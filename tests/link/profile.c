@@ -141,7 +141,8 @@ static void films(void) {
     o.exponent = 8.0;
     one = make(300.0, &o, 0, &thick, 1);
     CHECK(sound(&one));
-    CHECK(at(&one, one.coating[0], 299.0) < 0.7 && at(&one, one.coating[0], 301.0) + at(&one, one.solid, 301.0) > 1.0 - 1e-9);
+    CHECK(at(&one, one.coating[0], 299.0) < 0.7);
+    CHECK_NEAR(at(&one, one.coating[0], 301.0) + at(&one, one.solid, 301.0), 1.0, 1e-9);
     profile_free(&one);
     /* pores: the film stands on the rim, narrows the mouth and closes the bottom */
     one = make(300.0, &o, 1, &thick, 1);

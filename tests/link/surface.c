@@ -36,11 +36,14 @@ static void heights(void) {
     CHECK_FAILS(link_height(sheet, &o, spacing, &h, &src, &e), ST_BAD_INPUT, e, "sample sheet");
     CHECK(!height_is_assumed(HEIGHT_SHEET) && !height_is_assumed(HEIGHT_CALIBRATED));
     CHECK(height_is_assumed(HEIGHT_PROTOCOL) && height_is_assumed(HEIGHT_ASPECT) && height_is_assumed(HEIGHT_DEFAULT));
-    CHECK(!strcmp(height_source_name(HEIGHT_CALIBRATED), "calibrated") && !strcmp(height_source_name(HEIGHT_DEFAULT), "default"));
+    CHECK(!strcmp(height_source_name(HEIGHT_CALIBRATED), "calibrated"));
+    CHECK(!strcmp(height_source_name(HEIGHT_DEFAULT), "default"));
 }
 
 /* Lateral area of a paraboloid of revolution, r = b at the foot, over its base area. */
-static double paraboloid(double h, double b) { return b * (pow(b * b + 4 * h * h, 1.5) - b * b * b) / (6 * h * h) / (b * b); }
+static double paraboloid(double h, double b) {
+    return (pow(b * b + 4.0 * h * h, 1.5) - b * b * b) / (6.0 * h * h * b);
+}
 
 static void area(void) {
     link_options o = link_defaults();
