@@ -14,8 +14,8 @@
  * and 200 nm, heights 200 and 500 nm) deviate by 3.1 points rms at 45 degrees and 6.1 at 70: 0.065 sin^2 is added in
  * quadrature.
  * Inputs. Height by evaluation at +- 2 u (R falls about exponentially with height: the ends are lopsided), shape at
- * exponent +- u and spacing (where a film or the model needs it) at +- u, doubled; a spread of heights reaches to the
- * other alignment (all on one floor, all tips level), on that side only.
+ * the exponent times and over (1 + u/q)^2, spacing (where a film or the model needs it) at +- u, doubled; a spread of
+ * heights reaches to the other alignment (all on one floor, all tips level), on that side only.
  * What is not in it: a wrong kind of shape, correlated disorder, the optical constants, the rear side. */
 #include <math.h>
 #include <stdlib.h>
@@ -84,18 +84,25 @@ static status add_height(workspace *w, double u, double *budget, error *e) {
     return st == ST_OK ? add_input(w, &a, &b, 0.0, budget, e) : st;
 }
 
+/* An exponent is positive: its u works as a factor 1 + u/q either way, squared for the ends of 95 %. */
+static status add_shape(workspace *w, double u, double *budget, error *e) {
+    double q = w->central->exponent, factor = 1.0 + u / q, ignored;
+    variant a = *w->central, b = *w->central;
+    a.exponent = fmax(q / (factor * factor), EXPONENT_MIN);
+    b.exponent = fmin(q * factor * factor, EXPONENT_MAX);
+    status st = add_input(w, &a, &b, 1.0, &ignored, e);
+    a.exponent = fmax(q / factor, EXPONENT_MIN);
+    b.exponent = fmin(q * factor, EXPONENT_MAX);
+    return st == ST_OK ? add_input(w, &a, &b, 0.0, budget, e) : st;
+}
+
 static status add_inputs(workspace *w, prediction *out, error *e) {
     const surface_input *in = w->in;
     const link_options *l = &in->link;
     status st = ST_OK;
     if (in->measured) return st; /* the profile is given, with all it holds */
     if (in->height_nm.u > 0.0) st = add_height(w, in->height_nm.u, &out->u_height, e);
-    if (st == ST_OK && l->exponent_u > 0.0) {
-        variant a = *w->central, b = *w->central;
-        a.exponent = fmax(fmax(a.exponent - l->exponent_u, 0.25 * a.exponent), EXPONENT_MIN);
-        b.exponent = fmin(b.exponent + l->exponent_u, EXPONENT_MAX);
-        st = add_input(w, &a, &b, 2.0, &out->u_shape, e);
-    }
+    if (st == ST_OK && l->exponent_u > 0.0) st = add_shape(w, l->exponent_u, &out->u_shape, e);
     if (st == ST_OK && l->height_spread > 0.0) {
         variant other = *w->central;
         other.level_at_tips = !other.level_at_tips;

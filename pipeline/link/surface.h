@@ -16,7 +16,8 @@ typedef struct {
     double height_nm, height_nm_u;
     double aspect, aspect_u;   /* height / spacing */
     double exponent;           /* 0.05..20; q in s(zeta) = (1 - zeta)^(2/q): 1 cone (default), 2 paraboloid */
-    double exponent_u;         /* 0: the shape is given. Default 0.5 in `run`, 0 in `predict` */
+    double exponent_u;         /* standard, as a factor 1 + u/q; 0: the shape is given. Default 0.5 in `run`, 0 in
+                                  `predict` */
     double height_spread;      /* relative sd of the heights (normal), default 0 */
     double height_by_size;     /* g in h_i = h (d_i / d_mean)^g, default 0 */
     int level_at_tips;         /* spread: 0 one floor (default), 1 tips in one plane */
