@@ -24,6 +24,7 @@
 #include "base/mem.h"
 #include "base/quantity.h"
 #include "metrics/filter.h"
+#include "metrics/spacing.h"
 
 measure_options measure_defaults(void) {
     return (measure_options){
@@ -87,9 +88,9 @@ static double undone(const curve *psd, double d, double floor, double k0, double
 static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
     static const double edge[] = { 1.4, 1.8, 2.2, 2.8, 3.5, 4.5, 5.6, 7.0, 9.0, 11.0, 14.0 };
     const double least_z = 3.0, most_fall = 10.5, end = 0.45;
-    double ring = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
+    double first = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
     double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
-    if (!(ring > least_z * floor / sqrt(modes)) || !(ring > 0.0)) return MISSING;
+    if (!(first > least_z * floor / sqrt(modes)) || !(first > 0.0)) return MISSING;
     double blur = MISSING;
     for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end; i++) {
         double k0 = edge[i] / d, k1 = edge[i + 1] / d, p = power_between(psd, k0, k1, floor, 0.0);
@@ -98,7 +99,7 @@ static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
         if (!visible && i) break;
         /* Nothing beyond the ring stands out of the noise: at least as blurred as the noise allows. */
         if (!visible) return undone(psd, d, floor, k0, k1, fmax(p, 0.0) + least_z * se);
-        if (log(ring / p) > most_fall) break;
+        if (log(first / p) > most_fall) break;
         blur = undone(psd, d, floor, k0, k1, 0.0); /* the highest band decides: there blur weighs most, order least */
     }
     return blur;
@@ -248,7 +249,7 @@ static status line_jitter(const float *f, size_t nx, size_t ny, double d, double
 
 status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e) {
     size_t nx = p->nx, ny = p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
     curve radial = { 0 };
     double sum = 0.0, streaks = 0.0;
     float *psd = mem_array(ny * (nx / 2 + 1), sizeof *psd);
@@ -263,6 +264,7 @@ status fitness_look(const float *f, const plane *p, double d_px, sharpness *out,
         s.texture_sd = sqrt(fmax(0.0, sum / (double)(nx * ny) - s.noise_sd * s.noise_sd));
         if (s.texture_sd > 0.0) s.streaks = streaks / (s.texture_sd * s.texture_sd);
         if (d_px > 0.0) s.blur_sd_px = blur_of(&radial, d_px, floor, nx * ny);
+        s.second_px = spacing_second(&radial, d_px, nx, ny);
         *out = s;
     }
     free(radial.points);
@@ -306,6 +308,7 @@ void fitness_judge(const sharpness *s, const plane *p, const measure_options *o,
     t->sharpness = (measured){ s->blur_sd_px, MISSING, isfinite(d) ? 0.03 * d : MISSING, t->n_features };
     t->noise_rel = (measured){ s->noise_sd / s->texture_sd, MISSING, 0.0, p->nx * p->ny };
     if (!(s->texture_sd > 0.0)) t->noise_rel.value = MISSING;
+    t->second_spacing_px = s->second_px;
     t->clipped_share = p->clipped_low + p->clipped_high;
     limit(t, t->clipped_share, o->warn_clipped, o->max_clipped, FLAG(CLIPPED), FLAG(CLIPPED));
     if (t->ring_z < o->min_ring_z && !(t->reasons & FLAG(FEATURELESS))) t->reasons |= FLAG(NO_RING);

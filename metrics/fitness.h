@@ -12,13 +12,14 @@ typedef struct {
     double noise_sd;       /* grey; level of the end of the spectrum, or Immerkaer's when that is lower */
     double texture_sd;     /* grey, noise removed */
     double streaks;        /* variance of what runs along the scan lines beyond the texture's own / texture variance */
+    double second_px;      /* spacing of a second population; NAN none */
     double line_jitter_px; /* rms shift between neighbouring lines beyond that between columns; NAN unknown */
 } sharpness;
 
 /* f flattened, d_px the scale (NAN unknown). err ST_NO_MEMORY */
 status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e);
 
-/* Sets reasons, flags, sharpness and noise_rel of t from s, its numbers and the limits. Adds to what is set already. */
+/* Sets reasons, flags, sharpness, noise_rel and second_spacing_px of t from s, its numbers and the limits. Adds to what is set already. */
 void fitness_judge(const sharpness *s, const plane *p, const measure_options *o, texture *t);
 
 #endif

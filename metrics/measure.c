@@ -198,7 +198,6 @@ static status ring_stage(job *j, error *e) {
             j->t.spacing_acf = r.spacing;
             j->t.stretch = r.stretch;
             j->t.stretch_angle_deg = r.stretch_angle_deg;
-            j->t.second_spacing_px = r.second_px;
         }
         st = forgive(st, e, &before);
     }
@@ -291,7 +290,7 @@ static void judge(job *j, const sharpness *s) {
 static status run(job *j, error *e) {
     const plane *p = j->p;
     size_t n = p->nx * p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
     j->f = mem_array(n, sizeof *j->f);
     j->work = mem_array(n, sizeof *j->work);
     status st = j->f && j->work ? flatten(p, j->f, e) : NO_MEMORY(e, "the micrograph");

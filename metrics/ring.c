@@ -265,7 +265,7 @@ static int from_peaks(const acf2d *a, double ring_px, double se, size_t n_featur
 
 status spacing_ring(const acf2d *k_acf, const curve *k_radial, double d_px, size_t n_features, ring *out, error *e) {
     const double least_z = 3.0;
-    ring r = { .second_px = MISSING };
+    ring r = { 0 };
     measured none = { MISSING, MISSING, 0.0, n_features };
     r.spacing = r.stretch = r.stretch_angle_deg = none;
     double rough = d_px > 0.0 ? find_ring(k_radial, d_px) : 0.0;

@@ -89,8 +89,7 @@ static void check_jitter(float *f) {
 /* A texture without fault, to be spoilt one figure at a time. */
 static texture sound(void) {
     measured m = { 24.0, 0.1, 0.0, 900 };
-    texture t = { .spacing_acf = m, .spacing_hex = m, .n_features = 900, .ring_z = 30.0,
-                  .second_spacing_px = (double)NAN };
+    texture t = { .spacing_acf = m, .spacing_hex = m, .n_features = 900, .ring_z = 30.0 };
     t.stretch = (measured){ 1.01, 0.01, 0.0, 900 };
     t.stretch_angle_deg = (measured){ 33.0, 20.0, 0.0, 900 };
     t.clark_evans = (measured){ 1.6, 0.01, 0.0, 900 };
@@ -109,7 +108,7 @@ static verdict judged(const sharpness *s, const plane *p, texture t) {
 static void check_verdict(void) {
     float px[4] = { 0 };
     plane p = { .px = px, .nx = 2, .ny = 2, .bit_depth = 8 };
-    sharpness s = { 0.7, 0.01, 0.2, 0.0, 0.0 };
+    sharpness s = { .blur_sd_px = 0.7, .noise_sd = 0.01, .texture_sd = 0.2, .second_px = (double)NAN };
     texture t = sound();
     IS(judged(&s, &p, t), 0, 0);
     t.n_features = 199;
@@ -163,8 +162,9 @@ static void check_verdict(void) {
     s.line_jitter_px = 2.0;
     IS(judged(&s, &p, t), 0, FLAG(DRIFT));
     s.line_jitter_px = 0.0;
-    t.second_spacing_px = 60.0;
+    s.second_px = 60.0;
     IS(judged(&s, &p, t), 0, FLAG(TWO_SPACINGS));
+    s.second_px = (double)NAN;
     t = sound();
     t.spacing_acf.value = (double)NAN;
     IS(judged(&s, &p, t), 0, FLAG(NO_RING));

@@ -51,7 +51,6 @@ static void check_lattices(void) {
     CHECK_NEAR(l.first.first_minimum_px / 23.3, 0.528, 0.012); /* J0: 3.8317 / 7.0156 of 0.967 */
     CHECK(l.first.z > 20.0);
     CHECK_NEAR(l.psd.value / 23.3, 0.866, 0.02);
-    CHECK(isnan(l.r.second_px));
 
     memset(f, 0, N * N * sizeof *f);
     hexagonal(f, N, N, 21.7, 0.14, 1.0, 0.25 * 21.7, add_bump, &d);
@@ -105,6 +104,26 @@ static void check_nothing_there(void) {
     free(f);
 }
 
+static void check_two_populations(void) {
+    enum { N = 512 };
+    dice d = { 31337 };
+    error e = { 0 };
+    float *f = plane_new(N, N), *g = plane_new(N, N);
+    curve c = { 0 };
+    hexagonal(f, N, N, 19.0, 0.14, 1.0, 0.62 * 19.0, raise_cone, &d);
+    hexagonal(g, N, N, 44.0, 0.14, 1.0, 0.62 * 44.0, raise_cone, &d);
+    CHECK(psd_radial(f, N, N, &c, &e) == ST_OK);
+    CHECK(isnan(spacing_second(&c, 19.0, N, N)) && isnan(spacing_second(&c, (double)NAN, N, N)));
+    free(c.points);
+    for (size_t i = 0; i < N * N; i++) f[i] += 1.5f * g[i];
+    CHECK(psd_radial(f, N, N, &c, &e) == ST_OK);
+    CHECK_NEAR(spacing_second(&c, 19.0, N, N), 44.0, 2.5);
+    CHECK_NEAR(spacing_second(&c, 44.0, N, N), 19.0, 1.2);
+    free(c.points);
+    free(f);
+    free(g);
+}
+
 static void check_refusals(void) {
     error e;
     ring r = { 0 };
@@ -144,6 +163,7 @@ int main(void) {
     check_lattices();
     check_stretch();
     check_nothing_there();
+    check_two_populations();
     check_refusals();
     check_formulas();
     return check_done();
