@@ -11,21 +11,27 @@
 #include "base/number.h"
 #include "base/quantity.h"
 #include "io/file.h"
+#include "io/levels_priv.h"
 #include "io/picture_priv.h"
 #include "io/pixelsize_priv.h"
+#include "io/resample_priv.h"
 #include "io/sidecar_priv.h"
 #include "io/strip_priv.h"
+
+static const double worth_correcting = 0.001, steepest_tilt_deg = 60.0;
 
 load_options load_defaults(void) {
     return (load_options){ .px_nm_option = MISSING,
                            .px_nm_sheet = MISSING,
                            .px_u_rel = 0.01,
+                           .bar_nm = MISSING,
                            .crop_strip = 1,
+                           .correct_tilt = 1,
                            .max_pixels = LIMIT_PIXELS };
 }
 
 int load_knows_name(const char *path) {
-    static const char *const endings[] = { ".png", ".tif", ".tiff" };
+    static const char *const endings[] = { ".png", ".tif", ".tiff", ".jpg", ".jpeg" };
     size_t n = strlen(path);
     for (size_t k = 0; k < sizeof endings / sizeof endings[0]; k++) {
         size_t m = strlen(endings[k]);
@@ -48,7 +54,6 @@ static status refuse(const uint8_t *bytes, size_t n, error *e) {
         size_t n;
         const char *kind;
     } known[] = {
-        { "\xff\xd8\xff", 3, "a JPEG" },
         { "GIF8", 4, "a GIF" },
         { "BM", 2, "a BMP" },
         { "%PDF", 4, "a PDF" },
@@ -59,12 +64,12 @@ static status refuse(const uint8_t *bytes, size_t n, error *e) {
     for (size_t k = 0; k < sizeof known / sizeof known[0]; k++)
         if (starts_with(bytes, n, known[k].magic, known[k].n))
             return fail(e, ST_BAD_INPUT,
-                        "is %s; only PNG and TIFF are read: export the micrograph as TIFF or PNG",
+                        "is %s; only TIFF, PNG and JPEG are read: export the micrograph as TIFF or PNG",
                         known[k].kind);
     size_t text = 0, look = n < 512 ? n : 512;
     while (text < look && (bytes[text] >= 0x20 || isspace(bytes[text]))) text++;
-    if (text == look) return fail(e, ST_BAD_INPUT, "is text, not a picture; expected PNG or TIFF");
-    return fail(e, ST_BAD_INPUT, "is neither PNG nor TIFF (by its first bytes)");
+    if (text == look) return fail(e, ST_BAD_INPUT, "is text, not a picture; expected TIFF, PNG or JPEG");
+    return fail(e, ST_BAD_INPUT, "is neither TIFF nor PNG nor JPEG (by its first bytes)");
 }
 
 static status decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *p, error *e) {
@@ -73,6 +78,7 @@ static status decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture 
     if (starts_with(bytes, n, "II*\0", 4) || starts_with(bytes, n, "MM\0*", 4) ||
         starts_with(bytes, n, "II+\0", 4) || starts_with(bytes, n, "MM\0+", 4))
         return tiff_decode(bytes, n, max_pixels, p, e);
+    if (starts_with(bytes, n, "\xff\xd8\xff", 3)) return jpeg_decode(bytes, n, max_pixels, p, e);
     if (n < 8 && (!memcmp(bytes, "\x89PNG\r\n\x1a", n) || !memcmp(bytes, "II*", n < 3 ? n : 3) ||
                   !memcmp(bytes, "MM\0", n < 3 ? n : 3)))
         return fail(e, ST_BAD_INPUT, "the file is truncated after %zu bytes", n);
@@ -102,12 +108,49 @@ static void count_clipped(micrograph *m) {
     m->clipped_high = (double)high / (double)n;
 }
 
+/* A 16-bit file may hold a detector of fewer bits; a luminance has no levels of its own. */
+static void find_true_levels(picture *p) {
+    unsigned top;
+    if (p->bit_depth != 16 || p->flags & FLAG(COLOUR)) return;
+    p->bit_depth = levels_find(p->px, p->nx * p->ny, &top);
+    if (p->bit_depth < 16)
+        note_add(p->note, "A 16-bit file with the levels of %d bits: the top is %u.", p->bit_depth, top);
+}
+
+/* A tilted view shows y shortened by cos(tilt); the tilt axis is the picture's x unless the scan was turned. */
+static void judge_tilt(const load_options *o, micrograph *m) {
+    const facts *f = &m->facts;
+    double stretch = 1.0 / cos(f->tilt_deg * PI / 180.0);
+    if (!f->tilt_known || f->tilt_in_pixels || fabs(stretch - 1.0) < worth_correcting) return;
+    if (o->correct_tilt && !f->turned && fabs(f->tilt_deg) <= steepest_tilt_deg) {
+        m->y_stretch *= stretch;
+        m->flags |= FLAG(TILT_CORRECTED);
+        note_add(m->note, "The stage was tilted by %.1f degrees; the rows were stretched %.3f times.",
+                 f->tilt_deg, stretch);
+        return;
+    }
+    m->flags |= FLAG(TILT_KNOWN);
+    note_add(m->note, "The stage was tilted by %.1f degrees%s; lengths along the tilt are too short.",
+             f->tilt_deg, f->turned ? " and the scan turned" : "");
+}
+
+static void keep_facts(const picture *p, micrograph *m) {
+    m->bit_depth = p->bit_depth;
+    m->flags = p->flags;
+    m->facts = p->facts;
+    m->pages = p->pages;
+    memcpy(m->compression, p->compression, sizeof m->compression);
+    memcpy(m->acquired_at, p->acquired_at, sizeof m->acquired_at);
+    memcpy(m->note, p->note, sizeof m->note);
+}
+
 static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_options *o,
                          micrograph *m, error *e) {
     picture p = { 0 };
     micrograph r = { 0 };
     status st = decode(bytes, n, o->max_pixels, &p, e);
     if (st != ST_OK) goto done;
+    find_true_levels(&p);
     r.file_nx = r.nx = p.nx;
     r.file_ny = p.ny;
     r.strip_rows = o->crop_strip ? strip_rows(&p) : 0;
@@ -119,16 +162,23 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
     }
     r.px = p.px;
     p.px = NULL;
-    r.bit_depth = p.bit_depth;
-    r.flags = p.flags;
-    memcpy(r.acquired_at, p.acquired_at, sizeof r.acquired_at);
-    memcpy(r.note, p.note, sizeof r.note);
+    keep_facts(&p, &r);
     count_clipped(&r);
     sha256_hex(bytes, n, r.hash);
     scales_add(&p.scales, SCALE_OPTION, "option", o->px_nm_option, o->px_nm_option);
     scales_add(&p.scales, SCALE_SHEET, "sheet", o->px_nm_sheet, o->px_nm_sheet);
     if (path) sidecar_read(path, &p.scales);
     pixelsize_choose(&p.scales, o->px_u_rel, &r);
+    judge_tilt(o, &r);
+    if (fabs(r.y_stretch - 1.0) >= worth_correcting)
+        st = resample_rows(&r.px, r.nx, &r.ny, r.y_stretch, o->max_pixels, e);
+    else
+        r.y_stretch = 1.0;
+    if (st == ST_OK && r.ny < LIMIT_MIN_SIDE)
+        st = fail(e, ST_BAD_INPUT,
+                  "the picture has only %zu x %zu square pixels; at least %zu a side are needed", r.nx, r.ny,
+                  LIMIT_MIN_SIDE);
+    if (st != ST_OK) goto done;
     *m = r;
     r = (micrograph){ 0 };
 done:

@@ -10,7 +10,9 @@ typedef struct {
     double px_nm_option; /* --px, nm per pixel; NAN: none. Outranks all */
     double px_nm_sheet;  /* sample sheet column px_nm; NAN: none */
     double px_u_rel;     /* relative standard uncertainty of a stated pixel size when the source gives none */
-    int crop_strip;      /* find and crop the info strip at the bottom */
+    double bar_nm;       /* what the burnt-in scale bar stands for, nm; NAN: the user does not say */
+    int crop_strip;      /* find and crop the info strip */
+    int correct_tilt;    /* stretch the rows of a tilted view the instrument has not corrected */
     size_t max_pixels;   /* refuse larger pictures */
 } load_options;
 
@@ -18,7 +20,9 @@ load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, LIM
 
 /* Reads, decodes, finds pixel size (sidecar beside `path` included) and strip. The pixel size is that of the most
  * specific source: option, sheet, sidecar, instrument tags, description, sCAL, and TIFF resolution or PNG pHYs only below
- * 1 um. Of pixels that are not square the width counts for both sides and PX_UNEQUAL says so.
+ * 1 um. Of pixels that are not square the rows are resampled to the width and PX_UNEQUAL says so. A tilted view
+ * (up to 60 degrees, by the file's own word, not corrected by the instrument) gets its rows stretched by 1/cos(tilt) and the
+ * flag TILT_CORRECTED; what cannot be corrected gets TILT_KNOWN. A 16-bit file of a detector of fewer bits counts by its levels.
  *   out  m   as described in micrograph.h; untouched on failure
  *   own  caller frees m with micrograph_free
  *   err  ST_IO cannot be read; ST_BAD_INPUT empty, truncated, not an image, a variant that is not read (says which);
@@ -28,7 +32,7 @@ status load_file(const char *path, const load_options *o, micrograph *m, error *
 /* The same for bytes in memory, without sidecar (used by the fuzz targets). */
 status load_memory(const uint8_t *bytes, size_t n, const load_options *o, micrograph *m, error *e);
 
-/* 1 when the file name ends like an image this program reads (png tif tiff, any case). */
+/* 1 when the file name ends like an image this program reads (png tif tiff jpg jpeg, any case). */
 int load_knows_name(const char *path);
 
 #endif

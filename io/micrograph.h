@@ -5,12 +5,35 @@
 
 #include "base/flags.h"
 
+/* What the file says of how the picture was taken. Reported, never used to compute a scale. */
+typedef struct {
+    double magnification;       /* nominal; 0: not said */
+    double voltage_V;           /* acceleration; 0: not said */
+    double working_distance_mm; /* 0: not said */
+    double tilt_deg;            /* of the stage; meaningful with tilt_known */
+    int tilt_known;
+    int tilt_in_pixels; /* 1: the instrument has already stretched y by 1/cos(tilt) */
+    int turned;         /* 1: the scan was rotated: the tilt axis is not the picture's x */
+    char detector[48];  /* "" not said */
+    char software[48];
+} facts;                /* {0}: nothing is said */
+
+/* One statement about the pixel size, used or not. */
+typedef struct {
+    char source[24];
+    double x_nm, y_nm;
+} px_statement;
+enum { MAX_STATEMENTS = 12 };
+
 typedef struct {
     float *px;             /* [ny][nx] grey levels 0..1, row by row, info strip already cropped; owned */
     size_t nx, ny;         /* of the measured plane */
     size_t file_nx, file_ny;
-    size_t strip_rows;     /* rows cropped at the bottom; file_ny = ny + strip_rows */
-    int bit_depth;         /* of one sample in the file: 1 2 4 8 16 */
+    size_t strip_rows;     /* rows of info strip cropped, at the bottom and at the top */
+    size_t strip_top;      /* those of them at the top */
+    double y_stretch;      /* rows per row of the file: pixels that are not square, tilted views; else 1.
+                              ny = round((file_ny - strip_rows) y_stretch) */
+    int bit_depth;         /* of one grey level: 1 to 16, 24, 32, 64; 12 where a 12-bit detector fills 16-bit samples */
     double clipped_low, clipped_high; /* share of the plane's pixels at the lowest / highest level the file can hold */
     double px_nm;          /* pixel size, nm; NAN: unknown */
     double px_u_rel;       /* relative standard uncertainty of px_nm; NAN with it */
@@ -19,6 +42,11 @@ typedef struct {
     char hash[65];         /* SHA-256 of the file's bytes, lower-case hex */
     flags flags;           /* PX_DISAGREE, PX_UNEQUAL, COLOUR ... */
     char note[480];        /* sentences behind the flags, "" if none */
+    facts facts;
+    px_statement statements[MAX_STATEMENTS]; /* the most specific first */
+    size_t n_statements;
+    size_t pages;          /* of the file; 0: its format has none */
+    char compression[16];  /* "lzw", "jpeg" ...; "" not known */
 } micrograph;              /* {0} = empty */
 
 void micrograph_free(micrograph *m); /* accepts {0}, clears */

@@ -8,6 +8,7 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/picture_priv.h"
+#include "io/utf8_priv.h"
 
 void scales_add(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm) {
     if (isnan(y_nm)) y_nm = x_nm;
@@ -48,6 +49,53 @@ status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *
     if (!p->px) return fail(e, ST_NO_MEMORY, "not enough memory for %zu x %zu pixels", nx, ny);
     p->nx = nx;
     p->ny = ny;
+    return ST_OK;
+}
+
+void picture_set_text(char *to, size_t size, const char *text) {
+    size_t n = 0;
+    while (*text && n + 1 < size) {
+        size_t k = utf8_step(text);
+        if (k > 1 && n + k >= size) break;
+        if (k <= 1)
+            to[n++] = (unsigned char)*text < 0x20 || *text == 0x7f ? ' ' : k ? *text : '?', text++;
+        else
+            memcpy(to + n, text, k), n += k, text += k;
+    }
+    while (n && to[n - 1] == ' ') n--;
+    to[n] = '\0';
+}
+
+static void swap_scales(scales *s) {
+    for (size_t i = 0; i < s->n; i++) {
+        double x = s->list[i].x_nm;
+        s->list[i].x_nm = s->list[i].y_nm;
+        s->list[i].y_nm = x;
+    }
+}
+
+status picture_turn(picture *p, int orientation, error *e) {
+    if (orientation <= 1 || orientation > 8) return ST_OK;
+    size_t nx = p->nx, ny = p->ny;
+    int transposed = orientation >= 5;
+    float *to = mem_array(nx * ny, sizeof *to);
+    if (!to) return NO_MEMORY(e, "the turned picture");
+    /* Stored column 0 is seen at the right in 2, 3; row 0 at the bottom in 3, 4; in 5 to 8 rows are columns. */
+    int from_right = orientation == 2 || orientation == 3 || orientation == 7 || orientation == 8;
+    int from_bottom = orientation == 3 || orientation == 4 || orientation == 6 || orientation == 7;
+    for (size_t y = 0; y < ny; y++)
+        for (size_t x = 0; x < nx; x++) {
+            size_t u = from_right ? nx - 1 - x : x, v = from_bottom ? ny - 1 - y : y;
+            to[transposed ? u * ny + v : v * nx + u] = p->px[y * nx + x];
+        }
+    free(p->px);
+    p->px = to;
+    p->strip_stated = 0; /* its rows are no longer at the bottom */
+    if (transposed) {
+        p->nx = ny;
+        p->ny = nx;
+        swap_scales(&p->scales);
+    }
     return ST_OK;
 }
 

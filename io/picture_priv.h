@@ -7,11 +7,13 @@
 
 #include "base/flags.h"
 #include "base/status.h"
+#include "io/micrograph.h"
 
-/* Order of trust, the most specific first; `option` and `sheet` come from the caller. */
+/* Order of trust, the most specific first; `option`, `sheet` and `bar` come from the caller. */
 typedef enum {
     SCALE_OPTION,
     SCALE_SHEET,
+    SCALE_BAR, /* the user says what the burnt-in bar stands for */
     SCALE_SIDECAR,
     SCALE_TAG,
     SCALE_OME,
@@ -27,7 +29,7 @@ typedef struct {
     double u_rel;      /* relative standard uncertainty the source itself implies; NAN: none */
 } scale;
 
-enum { MAX_SCALES = 12, MAX_NOTE = 480 };
+enum { MAX_SCALES = MAX_STATEMENTS, MAX_NOTE = 480 };
 
 typedef struct {
     scale list[MAX_SCALES];
@@ -46,7 +48,10 @@ typedef struct {
     int bit_depth;
     flags flags;         /* COLOUR, MANY_PAGES */
     size_t strip_stated; /* rows the file itself says are strip, 0: it does not say */
+    size_t pages;        /* of the file; 0: its format has none */
+    char compression[16];
     char acquired_at[32];
+    facts facts;
     char note[MAX_NOTE];
     scales scales;
 } picture; /* {0} = empty */
@@ -55,6 +60,13 @@ void picture_free(picture *p);
 
 /* acquired_at as ISO 8601 without a zone (instruments write local time); an impossible date is left out. */
 void picture_set_time(picture *p, int year, int month, int day, int hour, int minute, int second);
+
+/* Copies what fits, never half a UTF-8 sequence; control characters become blanks. */
+void picture_set_text(char *to, size_t size, const char *text);
+
+/* Turns a plane stored in `orientation` (1 to 8, TIFF 6.0 tag 274; others count as 1) the way it is to be
+ * seen, and the statements of its scale with it. err ST_NO_MEMORY */
+status picture_turn(picture *p, int orientation, error *e);
 
 /* Refuses sizes outside the limits before anything is allocated. */
 status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *e);
@@ -67,6 +79,7 @@ static inline float picture_luminance(float r, float g, float b) {
 }
 
 status png_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
+status jpeg_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
 status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
 
 /* Levels 0..1 of every code of a sample with `bits` bits (1, 2, 4, 8): table[v] = v / (2^bits - 1). */

@@ -90,14 +90,14 @@ static void read_blocks(TIFF *tif, size_t nx, size_t ny, picture *p) {
     free(b);
 }
 
-void tiff_tags_read(TIFF *tif, tdir_t page, picture *p) {
+void tiff_tags_read(TIFF *tif, toff_t at, picture *p) {
     uint32_t nx = 0, ny = 0, first_nx = 0;
-    if (!TIFFSetDirectory(tif, page)) return;
+    if (!TIFFSetSubDirectory(tif, at)) return;
     (void)TIFFGetField(tif, TIFFTAG_IMAGEWIDTH, &nx);
     (void)TIFFGetField(tif, TIFFTAG_IMAGELENGTH, &ny);
     read_texts(tif, p);
     read_date(tif, p);
-    if (page && !TIFFSetDirectory(tif, 0)) return;
+    if (!TIFFSetDirectory(tif, 0)) return;
     (void)TIFFGetField(tif, TIFFTAG_IMAGEWIDTH, &first_nx);
     if (first_nx != nx) return;
     p->acquired_at[0] = '\0'; /* an instrument's own date outranks that of the export */

@@ -11,7 +11,7 @@
 
 /* Pictures this program does not read still get a row with the reason: nothing is skipped in silence. */
 static int looks_like_picture(const char *relative) {
-    static const char *const endings[] = { ".jpg", ".jpeg", ".bmp", ".gif", ".webp", ".jp2" };
+    static const char *const endings[] = { ".bmp", ".gif", ".webp", ".jp2" };
     size_t n = strlen(relative);
     if (load_knows_name(relative)) return 1;
     for (size_t i = 0; i < sizeof endings / sizeof endings[0]; i++) {

@@ -1,4 +1,5 @@
 /* Whatever the bytes: no crash, bounded memory, levels in 0..1, and a sentence exactly when it fails. */
+#include <math.h>
 #include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
@@ -17,7 +18,8 @@ int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t n) {
     if (st != ST_OK && m.px) abort();
     for (size_t i = 0; st == ST_OK && i < m.nx * m.ny; i++)
         if (!(m.px[i] >= 0.0f && m.px[i] <= 1.0f)) abort(); /* NaN fails too */
-    if (st == ST_OK && (m.ny + m.strip_rows != m.file_ny || !memchr(m.note, 0, sizeof m.note))) abort();
+    if (st == ST_OK && !memchr(m.note, 0, sizeof m.note)) abort();
+    if (st == ST_OK && fabs((double)m.ny - (double)(m.file_ny - m.strip_rows) * m.y_stretch) > 0.6) abort();
     micrograph_free(&m);
     return 0;
 }

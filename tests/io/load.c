@@ -63,8 +63,9 @@ static void contents(void) {
 
     CHECK_FAILS(refuse("", 0, &e), ST_BAD_INPUT, e, "empty");
     CHECK_FAILS(refuse("file,sample\n", 12, &e), ST_BAD_INPUT, e, "is text, not a picture");
-    CHECK_FAILS(refuse("\xff\xd8\xff\xe0zz", 6, &e), ST_BAD_INPUT, e, "is a JPEG");
-    CHECK_FAILS(refuse("\x01\x02\x03\x04\x05\x06\x07\x08", 8, &e), ST_BAD_INPUT, e, "neither PNG nor TIFF");
+    CHECK_FAILS(refuse("\xff\xd8\xff\xe0zz", 6, &e), ST_BAD_INPUT, e, "the JPEG is truncated or damaged");
+    CHECK_FAILS(refuse("GIF89a", 6, &e), ST_BAD_INPUT, e, "is a GIF");
+    CHECK_FAILS(refuse("\x01\x02\x03\x04\x05\x06\x07\x08", 8, &e), ST_BAD_INPUT, e, "neither TIFF nor PNG nor JPEG");
     CHECK_FAILS(refuse("\x89PNG", 4, &e), ST_BAD_INPUT, e, "truncated");
     CHECK_FAILS(refuse("\x89PNG\r\n\x1a\n", 8, &e), ST_BAD_INPUT, e, "truncated");
     CHECK_FAILS(refuse("II", 2, &e), ST_BAD_INPUT, e, "truncated");
@@ -82,8 +83,8 @@ static void contents(void) {
 }
 
 static void names(void) {
-    static const char *const good[] = { "a.png", "d/a.TIF", "x.y.Tiff", ".a.png" };
-    static const char *const bad[] = { "png", ".png", "d/.tif", "a.png.txt", "a.jpg", "", "a.tif/" };
+    static const char *const good[] = { "a.png", "d/a.TIF", "x.y.Tiff", ".a.png", "a.jpg", "a.JPEG" };
+    static const char *const bad[] = { "png", ".png", "d/.tif", "a.png.txt", "a.bmp", "", "a.tif/" };
     for (size_t i = 0; i < sizeof good / sizeof good[0]; i++) CHECK(load_knows_name(good[i]));
     for (size_t i = 0; i < sizeof bad / sizeof bad[0]; i++) CHECK(!load_knows_name(bad[i]));
 }

@@ -177,17 +177,14 @@ static void refuse(form f, const char *words) {
 
 static void refusals(void) {
     form f = plain;
-    f.format = SAMPLEFORMAT_INT;
-    refuse(f, "signed samples of 8 bits");
-    f = plain;
-    f.bits = 16, f.format = SAMPLEFORMAT_IEEEFP;
-    refuse(f, "floating-point samples of 16 bits");
-    f = plain;
-    f.samples = 4, f.photometric = PHOTOMETRIC_SEPARATED;
-    refuse(f, "CMYK inks");
-    f = plain;
-    f.samples = 3, f.photometric = PHOTOMETRIC_CIELAB;
+    f.bits = 16, f.samples = 3, f.photometric = PHOTOMETRIC_ICCLAB;
     refuse(f, "Lab colour");
+    f = plain;
+    f.photometric = PHOTOMETRIC_MASK;
+    refuse(f, "a transparency mask");
+    f = plain;
+    f.bits = 16, f.format = SAMPLEFORMAT_COMPLEXINT;
+    refuse(f, "complex integer samples of 16 bits");
     f = plain;
     f.photometric = PHOTOMETRIC_RGB;
     refuse(f, "colour in 1 samples");
