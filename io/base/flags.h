@@ -37,7 +37,7 @@
     X(TIME_FROM_FILE,  time_from_file,  "etched_at is the file's own time")                                              \
     X(HEIGHT_ASSUMED,  height_assumed,  "height from the protocol or the default aspect, not measured")                  \
     X(ONE_MICROGRAPH,  one_micrograph,  "the sample rests on a single micrograph")                                       \
-    X(BEYOND_MODEL,    beyond_model,    "texture too coarse for the graded-index model: no reflectance is given")        \
+    X(BEYOND_MODEL,    beyond_model,    "texture too coarse for the graded-index model and not steep enough for facets: no reflectance is given") \
     X(DIFFRACTS,       diffracts,       "part of the light is diffracted into air: the model says nothing there")             \
     X(LOSSY,           lossy,           "a lossy file: brightness statistics are altered")                              \
     X(TILT_CORRECTED,  tilt_corrected,  "a tilted view: y was stretched by 1/cos(tilt) before measuring")               \

@@ -20,6 +20,8 @@ enum {
     OPT_SPREAD,
     OPT_COVERAGE,
     OPT_MIXING,
+    OPT_MODEL,
+    OPT_FACET_ANGLE,
     OPT_COATING,
     OPT_SUBSTRATE,
     OPT_AMBIENT,
@@ -49,6 +51,8 @@ static const struct argp_option predict_options[] = {
     { "substrate",     OPT_SUBSTRATE,     "MATERIAL", 0, "what the features are made of (default: silicon)", 0 },
     { "ambient",       OPT_AMBIENT,       "MEDIUM",   0, "air (default), laminate (air, glass, encapsulant), a material or an index", 0 },
     { "mixing",        OPT_MIXING,        "RULE",     0, "bruggeman-2d (default), maxwell-garnett-2d, bruggeman-3d, maxwell-garnett-3d, looyenga, volume", 0 },
+    { "model",         OPT_MODEL,         "MODEL",    0, "graded (index), facets (geometric optics), or auto (default): whichever is valid", 0 },
+    { "facet-angle",   OPT_FACET_ANGLE,   "DEG",      0, "inclination of the facets, 54.74 for alkaline pyramids (default: from height and spacing)", 0 },
     { "angle",         OPT_ANGLE,         "DEG",      0, "angle of incidence in air (default: 0)", 0 },
     { "polarization",  OPT_POLARIZATION,  "P",        0, "mean (default, unpolarised), s or p", 0 },
     { "hemispherical", OPT_HEMISPHERICAL, NULL,       0, "diffuse light from the whole half space", 0 },
@@ -65,6 +69,7 @@ static const struct { int option; const char *group, *name; } sets[] = {
     { OPT_SPREAD,        "link",   "height_spread" }, { OPT_COVERAGE, "link",  "coverage" },
     { OPT_PROFILE,       "link",   "profile" },       { OPT_COATING, "optics", "coatings" },
     { OPT_SUBSTRATE,     "optics", "substrate" },     { OPT_AMBIENT, "optics", "ambient" },
+    { OPT_MODEL,         "optics", "model" },         { OPT_FACET_ANGLE, "optics", "facet_angle_deg" },
     { OPT_MIXING,        "optics", "mixing" },        { OPT_ANGLE,   "optics", "angle_deg" },
     { OPT_POLARIZATION,  "optics", "polarization" },  { OPT_BAND,    "optics", "band_nm" },
     { OPT_HEMISPHERICAL, "optics", "hemispherical" },
@@ -195,6 +200,9 @@ static status surface_of(const request *q, const protocol *p, const setup *s, su
     if (q->height) {
         st = length_option("--height", q->height, 1, &in->height_nm.value, e);
         in->height_nm.u = given(q, OPT_HEIGHT_U) ? p->link.height_nm_u : 0.0;
+    } else if (q->spacing && p->facet_angle_deg > 0.0) { /* the facets say how tall they are */
+        in->height_nm.value = 0.5 * in->spacing_nm.value * tan(p->facet_angle_deg * PI / 180.0);
+        in->height_nm.u = 0.0;
     } else if (!q->protocol)
         return fail(
             e, ST_BAD_INPUT,
@@ -203,7 +211,7 @@ static status surface_of(const request *q, const protocol *p, const setup *s, su
     if (st != ST_OK) return st;
     if (!q->spacing && !(q->height && in->height_nm.value <= 0.0))
         return fail(e, ST_BAD_INPUT, "--spacing is missing; it decides where the model holds: give it in nm");
-    if (!q->height) {
+    if (!isfinite(in->height_nm.value)) {
         height_source source;
         st = link_height(quantity_missing(), &p->link, in->spacing_nm, &in->height_nm, &source, e);
     }

@@ -130,7 +130,7 @@ static status link_and_predict(const sample_group *g, const examined *all, const
     r->subwavelength_share = d->shares.none;
     if (height_is_assumed(source)) *f |= FLAG(HEIGHT_ASSUMED);
     if (d->refused) *f |= FLAG(BEYOND_MODEL);
-    else if (d->shares.in_ambient > 0.0) *f |= FLAG(DIFFRACTS);
+    else if (d->shares.in_ambient > 0.0 && strcmp(d->model, "graded") == 0) *f |= FLAG(DIFFRACTS);
     return r->height_source && r->optics_model ? ST_OK : NO_MEMORY(e, "a sample");
 }
 

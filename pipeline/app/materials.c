@@ -311,6 +311,8 @@ static void wire(const protocol *p, setup *s) {
     o->coatings = s->layers;
     o->n_coatings = p->n_coatings;
     o->mixing = p->mixing;
+    o->model = p->model;
+    o->facet_angle_deg = p->facet_angle_deg;
     o->reflect = reflect_defaults();
     o->reflect.angle_deg = p->angle_deg;
     o->reflect.polarization = p->polarization;

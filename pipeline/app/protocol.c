@@ -40,6 +40,8 @@ status protocol_defaults(protocol *out, error *e) {
     p.glass_mm = 3.2;
     p.encapsulant_mm = 0.45;
     p.mixing = MIX_BRUGGEMAN_2D;
+    p.model = OPTICS_AUTO;
+    p.facet_angle_deg = MISSING;
     p.polarization = POL_MEAN;
     p.band_lo_nm = 300.0;
     p.band_hi_nm = 1200.0;

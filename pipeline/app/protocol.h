@@ -8,7 +8,7 @@
 #include "base/status.h"
 #include "base/text.h"
 #include "judge/target.h"
-#include "link/surface.h"
+#include "link/predict.h"
 #include "metrics/measure.h"
 #include "optics/stack.h"
 
@@ -35,6 +35,8 @@ typedef struct {
     size_t n_coatings;
     char *substrate;
     mixing mixing;
+    optics_choice model;
+    double facet_angle_deg; /* NAN: from height and spacing */
     double angle_deg;
     polarization polarization;
     int hemispherical;

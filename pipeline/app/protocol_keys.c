@@ -22,13 +22,17 @@ static const char *level_word(int i) {
     return pick(words, 2, i);
 }
 static const char *mixing_word(int i) { return i >= 0 && i < MIXINGS ? mixing_name((mixing)i) : NULL; }
+static const char *model_word(int i) {
+    static const char *const words[] = { "graded", "facets", "auto" }; /* optics_choice */
+    return pick(words, 3, i);
+}
 static const char *polarization_word(int i) {
     return i >= POL_MEAN && i <= POL_P ? polarization_name((polarization)i) : NULL;
 }
 
 /* Enums and switches are read and written as int. */
 _Static_assert(sizeof(relief) == sizeof(int) && sizeof(spacing_choice) == sizeof(int) &&
-                   sizeof(mixing) == sizeof(int) && sizeof(polarization) == sizeof(int),
+                   sizeof(mixing) == sizeof(int) && sizeof(optics_choice) == sizeof(int) && sizeof(polarization) == sizeof(int),
                "enum members must have the size of int");
 
 #define AT(member) offsetof(protocol, member)
@@ -97,6 +101,8 @@ const protocol_key protocol_keys[] = {
     { "optics", "coatings", KEY_COATINGS, AT(coatings), "", 0, 0, 0, NULL, 0, "conformal coatings, outermost first: { \"material\": \"alumina\", \"thickness_nm\": 10 }" },
     MATERIAL("optics", "substrate", substrate, "what the features are made of: a material, a CSV (wavelength_nm, n, k), or an index"),
     WORD("optics", "mixing", mixing, mixing_word, 0, "mixing rule of solid and ambient within one slab"),
+    WORD("optics", "model", model, model_word, 0, "graded index for fine textures, geometric optics of facets for large steep ones, or auto: the one that is valid, else none"),
+    ABOVE("optics", "facet_angle_deg", facet_angle_deg, "deg", 0, 89, "inclination of the facets, 54.74 for alkaline pyramids; null: from height and spacing"),
     NUMBER("optics", "angle_deg", angle_deg, "deg", 0, 89, "angle of incidence in air"),
     WORD("optics", "polarization", polarization, polarization_word, 0, "mean is unpolarised light"),
     SWITCH("optics", "hemispherical", hemispherical, "true: diffuse light from the whole half space; the angle is then unused"),

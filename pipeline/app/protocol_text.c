@@ -246,6 +246,11 @@ static void explain_optics(const protocol *p, textbuf *out) {
     }
     text_addf(out, "The texture is made of %s; its slabs are mixed by the rule %s.\n", p->substrate,
               mixing_name(p->mixing));
+    static const char *const models[] = { "Textures too coarse for the graded index get no reflectance.\n",
+                                          "Reflectance comes from geometric optics of steep facets.\n",
+                                          "Textures too coarse for the graded index are taken as facets where steep enough, "
+                                          "else they get no reflectance.\n" };
+    text_add(out, models[p->model]);
     if (p->hemispherical)
         text_add(out, "The light is diffuse, from the whole half space");
     else {

@@ -1,8 +1,7 @@
 /* One prediction: spectrum, weighted value, current, references, shares of photons, interval, and what to say of it.
  *
  * The plain value is the graded index on the grid asked for; everything that moves an input runs on a 10 nm grid
- * (weighted R within 2e-5 of the fine one). A texture for which more than half of the photons have spacing/wavelength
- * above 2.5, where the tables of the model's error end, is refused: there is no number to believe.
+ * (weighted R within 2e-5 of the fine one). Which model serves, if any: route.c.
  * What this file does not do: light that returns from the rear of the wafer. */
 #include "link/predict.h"
 
@@ -17,7 +16,6 @@
 #include "link/surface_priv.h"
 
 static const double COARSE_NM = 10.0, COARSE_TOLERANCE = 1e-5;
-static const double TABLE_END = 2.5; /* spacing / wavelength */
 static const double NITRIDE_NM = 75.0, GRID_MAX = 1e5;
 
 /* ---- grids ---- */
@@ -109,21 +107,10 @@ double texture_angle_deg(const optics_setup *o) {
     return asin(sin(angle * PI / 180.0) / fmax(1.0, ambient_index(o))) * 180.0 / PI;
 }
 
-/* Share of the photons with spacing / wavelength above the tables' end. */
-static status share_beyond(double spacing_nm, const optics_setup *o, double *share, error *e) {
-    double edge = spacing_nm / TABLE_END, all = 0.0, above = 0.0;
-    *share = edge >= o->band_hi_nm ? 1.0 : 0.0;
-    if (!(edge > o->band_lo_nm) || !(edge < o->band_hi_nm)) return ST_OK;
-    status st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &all, e);
-    if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, edge, &above, e);
-    if (st == ST_OK) *share = above / all;
-    return st;
-}
-
 /* ---- words ---- */
 
 /* Two digits, but never fewer than stand before the point. */
-static const char *rough(double v, char *shown) {
+const char *rough_text(double v, char *shown) {
     int digits = 2;
     for (double top = 99.5; v >= top && digits < 12; top *= 10.0) digits++;
     return number_text(v, digits, shown);
@@ -131,7 +118,7 @@ static const char *rough(double v, char *shown) {
 
 static void add_percent(textbuf *t, double share) {
     char shown[NUMBER_TEXT];
-    text_addf(t, "%s %%", rough(100.0 * share, shown));
+    text_addf(t, "%s %%", rough_text(100.0 * share, shown));
 }
 
 static void say_interval(textbuf *t, const surface_input *in, const optics_setup *o) {
@@ -140,7 +127,7 @@ static void say_interval(textbuf *t, const surface_input *in, const optics_setup
         text_add(t, "The interval holds the mixing rule and the model's own error, not that of the profile.");
     } else {
         text_add(t, "The interval holds the model's own error, the mixing rule");
-        if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", rough(in->height_nm.u, shown));
+        if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", rough_text(in->height_nm.u, shown));
         if (in->link.exponent_u > 0.0) text_add(t, ", the shape");
         if (in->link.height_spread > 0.0) text_add(t, ", level floor or level tips");
         text_add(t, ".");
@@ -152,14 +139,10 @@ static void say_interval(textbuf *t, const surface_input *in, const optics_setup
         text_add(t, " The model's error was studied on bare silicon hillocks at normal incidence and is carried over.");
 }
 
-static void say(prediction *out, const surface_input *in, const optics_setup *o, double beyond, int planar) {
+static void say(prediction *out, const surface_input *in, const optics_setup *o, const route *r, int planar) {
     textbuf t = { 0 };
-    char shown[NUMBER_TEXT];
-    if (out->refused) {
-        text_addf(&t, "No reflectance: with a spacing of %s nm ", rough(in->spacing_nm.value, shown));
-        add_percent(&t, beyond);
-        text_add(&t, " of the photons have a wavelength below spacing/2.5, where the graded-index model says nothing; "
-                     "such a texture reflects by geometric optics.");
+    if (r->refused || r->facets) {
+        route_say(r, in, o, &t);
     } else if (planar) {
         text_add(&t, "Planar layers: exact, no model error.");
     } else if (!(in->spacing_nm.value > 0.0)) {
@@ -258,7 +241,7 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
                      .current_loss_mA_cm2 = MISSING, .coated = MISSING, .model = "graded" };
     grid fine = { 0 }, coarse = { 0 };
     int planar = !(v.height_nm > 0.0);
-    double beyond = 0.0;
+    route r = { 0 };
     st = grid_make(o->band_lo_nm, o->band_hi_nm, o->step_nm, o->reflect.tolerance, &fine, e);
     if (st == ST_OK)
         st = grid_make(o->band_lo_nm, o->band_hi_nm, fmin(fmax(COARSE_NM, o->step_nm), o->band_hi_nm - o->band_lo_nm),
@@ -266,18 +249,19 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
     if (st == ST_OK) st = allocate(&p, &fine, e);
     if (st == ST_OK) st = references(o, &fine, p.R, &p, e); /* R serves as work space first */
     if (st == ST_OK) st = geometry(in, o, &v, planar, &p, e);
-    if (st == ST_OK && !planar && v.spacing_nm > 0.0) st = share_beyond(v.spacing_nm, o, &beyond, e);
-    if (st == ST_OK && beyond > 0.5) {
-        p.refused = 1;
-        p.model = "none";
+    if (st == ST_OK && !planar) st = route_choose(in, o, &v, &r, e);
+    if (st == ST_OK && (r.refused || r.facets)) {
+        p.refused = r.refused;
+        p.model = r.refused ? "none" : "facets";
         for (size_t i = 0; i < p.n; i++) p.R[i] = MISSING;
+        if (r.facets) st = facets_fill(in, o, &r, &fine, &p, e);
     } else {
         if (st == ST_OK) st = central(in, o, &v, &fine, &p, e);
         if (st == ST_OK && planar) exact(&p);
         else if (st == ST_OK) st = interval_fill(in, o, &v, &coarse, &p, e);
     }
     if (st == ST_OK) {
-        say(&p, in, o, beyond, planar);
+        say(&p, in, o, &r, planar);
         *out = p;
         p = (prediction){ 0 };
     }

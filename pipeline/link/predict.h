@@ -5,6 +5,9 @@
 #include "optics/reflectance.h"
 #include "optics/trust.h"
 
+/* Which model: the graded index for textures finer than the waves, geometric optics for large steep facets. */
+typedef enum { OPTICS_GRADED, OPTICS_FACETS, OPTICS_AUTO } optics_choice;
+
 /* The optical set-up; borrowed pointers. */
 typedef struct {
     const material *ambient, *substrate, *air;
@@ -17,6 +20,8 @@ typedef struct {
     const sun *sun;
     double band_lo_nm, band_hi_nm; /* 300..1200 */
     double step_nm;                /* grid of the spectrum, 1 */
+    optics_choice model;           /* auto: graded inside its validity, else facets where steep enough, else refused */
+    double facet_angle_deg;        /* of the facets; not above 0: from height and spacing (optics/facets.h) */
 } optics_setup;
 
 typedef struct {
@@ -37,12 +42,12 @@ typedef struct {
     double polished, coated;       /* references, same ambient, angle and polarization */
     order_shares shares;           /* NAN when spacing is unknown */
     double area_ratio, aspect;
-    const char *model;             /* "graded", or "none" when refused */
-    char note[480];                /* what the interval holds, what is outside validity; sentences for a person */
+    const char *model;             /* "graded", "facets", or "none" when refused */
+    char note[960];                /* which model and why, what the interval holds, what is outside validity */
     /* budget of the weighted reflectance, standard uncertainties, absolute */
     double u_height, u_shape, u_spread, u_mixing, u_model, model_bias;
     size_t slabs;
-    int refused;                   /* 1: too coarse for the graded model */
+    int refused;                   /* 1: no model serves, the note says why */
 } prediction;
 
 /*   err as in reflectance(); a texture outside the model is no error but `refused`. */

@@ -1,6 +1,7 @@
 /* What predict.c and interval.c share: one texture under variation, on one grid. */
 #ifndef SWARD_LINK_PREDICT_PRIV_H
 #define SWARD_LINK_PREDICT_PRIV_H
+#include "base/text.h"
 #include "link/predict.h"
 
 /* The texture as predicted, or with one input moved. */
@@ -23,6 +24,27 @@ status variant_spectrum(const surface_input *in, const optics_setup *o, const va
 /* R of the polished substrate in an ambient; in_air: without the sample's ambient or laminate. */
 status polished_spectrum(const optics_setup *o, int in_air, const grid *g, double *R, error *e);
 status photon_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e);
+
+/* Which model serves this texture. */
+typedef struct {
+    double beyond;    /* share of the photons with spacing / wavelength above 2.5: no table of the model's error */
+    int facets;       /* 1: geometric optics, else the graded index */
+    int refused;      /* 1: neither */
+    double angle_deg; /* of the facets */
+    const char *why;  /* why facets do not serve, "" where they were not needed */
+} route;
+/* err ST_BAD_INPUT from the sun's band */
+status route_choose(const surface_input *in, const optics_setup *o, const variant *v, route *out, error *e);
+
+/* Spectrum, weighted value, interval and budget of *out by geometric optics, on its own grid. err as reflectance() */
+status facets_fill(const surface_input *in, const optics_setup *o, const route *r, const grid *g, prediction *out,
+                   error *e);
+
+/* The sentences on the choice. */
+void route_say(const route *r, const surface_input *in, const optics_setup *o, textbuf *t);
+
+/* A number for a sentence: two digits, but never fewer than stand before the point; shown[NUMBER_TEXT]. */
+const char *rough_text(double v, char *shown);
 
 /* Index of the ambient the texture lies in, and the angle there (a diffuse sky counts as 45 degrees). */
 double ambient_index(const optics_setup *o);

@@ -117,8 +117,8 @@ const column sample_columns[] = {
     SAMPLE(area_ratio, COL_NUMBER, "1", 4,
            "true surface area / projected area, from the modelled shape; enlargement of the area, not a recombination factor"),
     SAMPLE(weighted_reflectance, COL_NUMBER, "1", 5,
-           "predicted front-surface reflectance averaged over the AM1.5G photon flux; graded-index model, light from the rear "
-           "(beyond about 1000 nm) left out; empty where the texture is too coarse for the model"),
+           "predicted front-surface reflectance averaged over the AM1.5G photon flux; graded-index model (large steep "
+           "facets: geometric optics), light from the rear (beyond about 1000 nm) left out; empty where no model serves"),
     SAMPLE(weighted_reflectance_lo, COL_NUMBER, "1", 5,
            "lower end of the 95 % interval of weighted_reflectance; need not be centred, the known bias of the model is in it"),
     SAMPLE(weighted_reflectance_hi, COL_NUMBER, "1", 5, "upper end of the 95 % interval of weighted_reflectance"),
@@ -131,7 +131,7 @@ const column sample_columns[] = {
     SAMPLE(subwavelength_share, COL_NUMBER, "1", 4,
            "share of the weighted photons for which the texture makes no diffraction order, the domain of the graded-index "
            "model"),
-    SAMPLE(optics_model, COL_TEXT, "", 0, "graded, or none where the model was refused"),
+    SAMPLE(optics_model, COL_TEXT, "", 0, "graded (index), facets (geometric optics of large steep textures), or none where neither serves"),
     SAMPLE(verdict, COL_TEXT, "", 0,
            "worst of fails, undecided (the uncertainty straddles a limit), conforms; no_target and not_measured where that is so"),
     SAMPLE(verdict_reasons, COL_TEXT, "", 0, "one sentence per target: value, uncertainty, range"),
