@@ -275,8 +275,8 @@ static void complete_uncertainties(texture *t) {
 static void judge(job *j, const sharpness *s) {
     const double low_order = 1.5, known_ratio = 0.15, wide_gsd = 1.35;
     texture *t = &j->t;
-    statistics_uncertainty(t, &j->det);
     fitness_judge(s, j->p, j->o, t);
+    statistics_uncertainty(t, &j->det);
     complete_uncertainties(t);
     if (t->clark_evans.value < low_order) t->flags |= FLAG(LOW_ORDER);
     if (fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > known_ratio)

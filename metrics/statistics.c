@@ -66,8 +66,9 @@ static status density_fill(texture *t, size_t nx, size_t ny, columns *c, error *
         }
     status st = field_sum_sd(x, y, one, inside, w, c->unit, &sd, e);
     free(x);
-    double n = (double)t->n_features;
-    double rel = isfinite(sd) ? sd / n : 1.0 / sqrt(n);
+    /* Too small for tiles: 0.28 features of variance per spacing of perimeter, as on rendered ordered textures. */
+    if (!isfinite(sd)) sd = sqrt(0.28 * 2.0 * (w.x1 - w.x0 + w.y1 - w.y0) / c->unit);
+    double rel = sd / (double)t->n_features;
     t->density = (measured){ density, density * rel, 0.0, t->n_features };
     t->spacing_hex = (measured){ spacing_hex(density), 0.5 * rel * spacing_hex(density), 0.0, t->n_features };
     return st;
@@ -148,8 +149,10 @@ void statistics_uncertainty(texture *t, const detection *d) {
     double count = fmax(0.005, 0.5 * d->merged_share);
     method(&t->density, count);
     method(&t->spacing_hex, 0.5 * count);
-    method(&t->nn_mean, 0.005 + 0.5 * count);
-    method(&t->clark_evans, 0.005 + 0.5 * count);
+    /* Noise moves centres, which shortens the mean of nearest distances. */
+    double shifted = t->noise_rel.value > 0.0 ? 0.015 * fmin(t->noise_rel.value, 2.0) : 0.0;
+    method(&t->nn_mean, 0.005 + 0.5 * count + shifted);
+    method(&t->clark_evans, 0.005 + 0.5 * count + shifted);
     method(&t->spacing_acf, ordered ? 0.04 : 0.08);
     if (isfinite(t->spacing_acf
                      .value)) { /* the ring of weakly ordered textures is broad and wanders: 4 % at N = 550 */
