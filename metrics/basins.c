@@ -89,6 +89,10 @@ static status passes_collect(const float *map, const uint32_t *basin, size_t nx,
     for (size_t y = 0; y < ny && st == ST_OK; y++)
         for (size_t x = 0; x < nx && st == ST_OK; x++) {
             size_t i = y * nx + x, n = 0, near[4];
+            const uint32_t *b = basin + i; /* most pixels lie inside a basin */
+            if (x && x + 1 < nx && y + 1 < ny && b[0] == b[1] && b[0] == b[nx - 1] && b[0] == b[nx] &&
+                b[0] == b[nx + 1])
+                continue;
             if (x + 1 < nx) near[n++] = i + 1;
             if (y + 1 < ny) {
                 near[n++] = i + nx;

@@ -18,9 +18,10 @@
 #include "metrics/filter.h"
 #include "metrics/maxima.h"
 
-static const double min_sigma_px = 0.8;   /* a LoG below this is not sampled */
-static const double count_scale = 0.12;   /* sigma of the Gaussian before counting / d */
-static const double count_dynamic = 0.15; /* what stands out, / sd of the smoothed picture */
+static const double min_sigma_px = 0.8;     /* a LoG below this is not sampled */
+static const double count_scale = 0.12;     /* sigma of the Gaussian before counting / d */
+static const double count_dynamic = 0.15;   /* what stands out, / sd of the smoothed picture */
+static const double thinned_sigma_px = 1.5; /* of that Gaussian on the grid the extrema are looked for */
 static const double count_weight = 0.75;
 static const double least_score = 0.15; /* below: unsure */
 static const double loud_skew = 0.3;    /* a skewness that contradicts the score and is above this: unsure */
@@ -42,6 +43,15 @@ static double skewness(const float *v, size_t nx, size_t ny, size_t margin) {
     double mean = s1 / (double)n, var = s2 / (double)n - mean * mean;
     double third = s3 / (double)n - 3.0 * mean * s2 / (double)n + 2.0 * mean * mean * mean;
     return var > 0.0 ? third / (var * sqrt(var)) : 0.0;
+}
+
+/* Keeps every step-th pixel of every step-th row, in place: the smoothed picture has nothing finer to lose. */
+static void thin_out(float *map, size_t *nx, size_t *ny, size_t step) {
+    size_t w = (*nx + step - 1) / step, h = (*ny + step - 1) / step;
+    for (size_t y = 0; y < h; y++)
+        for (size_t x = 0; x < w; x++) map[y * w + x] = map[y * step * *nx + x * step];
+    *nx = w;
+    *ny = h;
 }
 
 static double standard_deviation(const float *g, size_t n) {
@@ -85,6 +95,9 @@ status relief_look(const float *f, size_t nx, size_t ny, double d_px, relief_evi
     status st = filter_curvature(f, nx, ny, sigma, 1, map, e);
     if (st == ST_OK) r.skew = skewness(map, nx, ny, (size_t)(2.0 * sigma));
     if (st == ST_OK) st = filter_gauss(f, nx, ny, count_scale * d_px, map, e);
+    double fine = count_scale * d_px / thinned_sigma_px;
+    if (st == ST_OK && fine >= 2.0) thin_out(map, &nx, &ny, (size_t)fine);
+    n = nx * ny;
     double least = st == ST_OK ? count_dynamic * standard_deviation(map, n) : 0.0;
     if (st == ST_OK) st = extrema_sum(map, nx, ny, least, &up, e);
     for (size_t i = 0; st == ST_OK && i < n; i++) map[i] = -map[i];
