@@ -309,7 +309,7 @@ static status run(job *j, error *e) {
     else if (st == ST_OK)
         j->t.reasons |= FLAG(NO_RING);
     if (st == ST_OK) st = bright_share(j->f, p->nx, p->ny, j->o->bright_level, j->d, &j->t.bright_share, e);
-    if (st == ST_OK) st = fitness_look(j->f, p, j->d, &s, e);
+    if (st == ST_OK) st = fitness_look(j->f, p, j->d > 0.0 ? j->d : 0.0, &s, e); /* 0: no scale */
     if (st == ST_OK) judge(j, &s);
     return st;
 }
