@@ -1,11 +1,11 @@
-/* Autocorrelation length and texture aspect ratio by the definitions of ISO 25178-2 (Sal, Str; level 0.2), applied to
- * the brightness map: they describe the picture, not a height map.
- * Along every degree of the half plane, the first distance at which the autocorrelation falls to the level, on the
- * bicubic surface through the lags. Over a direction in which it never falls within the known lags Str is 0 (a
- * grating), never a number made from the field size. A perfectly isotropic field shows Str 0.95 to 0.97, because the
- * extremes of many noisy directions are taken: no verdict should be based on Str alone.
- * u_sampling: 1.5 / sqrt(n) of Sal and 2.5 / sqrt(n) of Str with n = field area / correlation area (2 pi integral
- * C^2 r dr); repetitions on random fields gave 1.2 to 1.8 and 2.3. */
+/* Autocorrelation length and texture aspect ratio by the definitions of ISO 25178-2 (Sal, Str; level 0.2),
+ * applied to the brightness map: they describe the picture, not a height map.
+ * Along every degree of the half plane, the first distance at which the autocorrelation falls to the level,
+ * on the bicubic surface through the lags. Over a direction in which it never falls within the known lags
+ * Str is 0 (a grating), never a number made from the field size. A perfectly isotropic field shows Str 0.95
+ * to 0.97, because the extremes of many noisy directions are taken: no verdict should be based on Str alone.
+ * u_sampling: 1.5 / sqrt(n) of Sal and 2.5 / sqrt(n) of Str with n = field area / correlation area (2 pi
+ * integral C^2 r dr); repetitions on random fields gave 1.2 to 1.8 and 2.3. */
 #include "metrics/direction.h"
 
 #include <math.h>
@@ -59,7 +59,8 @@ void texture_decay(const acf2d *acf, double s, measured *sal, measured *str, dou
     double shortest = HUGE_VAL, longest = 0.0, angle = MISSING, endless_c = 0.0, endless_s = 0.0;
     size_t endless = 0;
     for (int i = 0; i < DIRECTIONS; i++) {
-        double phi = PI * i / DIRECTIONS, r = decay_along(acf, cos(phi), -sin(phi), s); /* y of the lags is down */
+        double phi = PI * i / DIRECTIONS,
+               r = decay_along(acf, cos(phi), -sin(phi), s); /* y of the lags is down */
         if (!isfinite(r)) {
             endless++;
             endless_c += cos(2.0 * phi);

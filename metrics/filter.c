@@ -1,9 +1,10 @@
-/* Flattening, noise and Gaussian filters on a float plane; edges are mirrored (half-sample symmetric: ..1 0 | 0 1..).
- * Method: sampled kernels cut at 5 sigma. From 4 px on, the smoothing is split into three (variances add): down to
- * a grid m px wide with sigma m, the rest on the coarse grid, up again with sigma m, m = floor(sigma / 2). What
- * aliasing leaves is below 1e-6 of the amplitude, and the cost per pixel no longer grows with sigma. The down and up
- * steps use the full-resolution mirrored plane, so that the edge is exact too.
- * Sums over a neighbourhood run in a fixed order: same input, same bits. Not for planes with missing pixels. */
+/* Flattening, noise and Gaussian filters on a float plane; edges are mirrored (half-sample symmetric: ..1 0
+ * | 0 1..). Method: sampled kernels cut at 5 sigma. From 4 px on, the smoothing is split into three
+ * (variances add): down to a grid m px wide with sigma m, the rest on the coarse grid, up again with sigma
+ * m, m = floor(sigma / 2). What aliasing leaves is below 1e-6 of the amplitude, and the cost per pixel no
+ * longer grows with sigma. The down and up steps use the full-resolution mirrored plane, so that the edge is
+ * exact too. Sums over a neighbourhood run in a fixed order: same input, same bits. Not for planes with
+ * missing pixels. */
 #include "metrics/filter.h"
 
 #include <math.h>
@@ -40,7 +41,8 @@ static void cubic_terms(double u, double v, double *t) {
     t[9] = v * v * v;
 }
 
-/* Solves the normal equations by Cholesky; a direction the data do not span (a plane one block wide) gets 0. */
+/* Solves the normal equations by Cholesky; a direction the data do not span (a plane one block wide) gets 0.
+ * */
 static void solve_normal(double a[TERMS][TERMS], const double *b, double *x) {
     double y[TERMS];
     for (int i = 0; i < TERMS; i++) {
@@ -48,8 +50,10 @@ static void solve_normal(double a[TERMS][TERMS], const double *b, double *x) {
         for (int j = 0; j <= i; j++) {
             double s = a[i][j];
             for (int k = 0; k < j; k++) s -= a[i][k] * a[j][k];
-            if (j < i) a[i][j] = a[j][j] > 0.0 ? s / a[j][j] : 0.0;
-            else a[i][i] = s > 1e-9 * diagonal ? sqrt(s) : 0.0;
+            if (j < i)
+                a[i][j] = a[j][j] > 0.0 ? s / a[j][j] : 0.0;
+            else
+                a[i][i] = s > 1e-9 * diagonal ? sqrt(s) : 0.0;
         }
         double s = b[i];
         for (int k = 0; k < i; k++) s -= a[i][k] * y[k];
@@ -78,7 +82,8 @@ static void fit_cubic(const plane *p, double *coef) {
     size_t bx = p->nx < BLOCKS ? p->nx : BLOCKS, by = p->ny < BLOCKS ? p->ny : BLOCKS;
     for (size_t j = 0; j < by; j++)
         for (size_t i = 0; i < bx; i++) {
-            size_t x0 = i * p->nx / bx, x1 = (i + 1) * p->nx / bx, y0 = j * p->ny / by, y1 = (j + 1) * p->ny / by;
+            size_t x0 = i * p->nx / bx, x1 = (i + 1) * p->nx / bx, y0 = j * p->ny / by,
+                   y1 = (j + 1) * p->ny / by;
             double w = (double)((x1 - x0) * (y1 - y0)), sum = block_sum(p, x0, x1, y0, y1);
             cubic_terms((double)(x0 + x1) / (double)p->nx - 1.0, (double)(y0 + y1) / (double)p->ny - 1.0, t);
             for (int r = 0; r < TERMS; r++) {
@@ -137,8 +142,8 @@ double noise_after_log(double s, double sigma_px) { return s / (sigma_px * sqrt(
 
 /* ---- kernels and passes ---- */
 
-/* Symmetric kernel, k[0..r] = weights at 0, 1, ... r. `second` is the second derivative of `smooth`, corrected so that
- * a constant gives 0 and x^2 gives exactly 2 (sampling alone misses both below sigma 1). */
+/* Symmetric kernel, k[0..r] = weights at 0, 1, ... r. `second` is the second derivative of `smooth`,
+ * corrected so that a constant gives 0 and x^2 gives exactly 2 (sampling alone misses both below sigma 1). */
 typedef struct {
     float *smooth, *second;
     size_t r;
@@ -203,8 +208,8 @@ static void filter_row(const float *row, size_t n, const float *k, size_t r, flo
 enum { TILE = 512 };
 
 /* to[n] += k * rows of `in` about y, for columns x0 .. x0 + n. */
-static void filter_column_tile(const float *in, size_t nx, size_t ny, size_t y, const float *k, size_t r, size_t x0,
-                               size_t n, float *to) {
+static void filter_column_tile(const float *in, size_t nx, size_t ny, size_t y, const float *k, size_t r,
+                               size_t x0, size_t n, float *to) {
     const float *mid = in + y * nx + x0;
     for (size_t x = 0; x < n; x++) to[x] += k[0] * mid[x];
     for (size_t t = 1; t <= r; t++) {
@@ -216,8 +221,8 @@ static void filter_column_tile(const float *in, size_t nx, size_t ny, size_t y, 
 }
 
 /* out = ka down the columns of a, plus kb down the columns of b (b may be NULL). out differs from both. */
-static void filter_columns(const float *a, const float *ka, const float *b, const float *kb, size_t r, size_t nx,
-                           size_t ny, float scale, float *out) {
+static void filter_columns(const float *a, const float *ka, const float *b, const float *kb, size_t r,
+                           size_t nx, size_t ny, float scale, float *out) {
     for (size_t x0 = 0; x0 < nx; x0 += TILE) {
         size_t n = nx - x0 < TILE ? nx - x0 : TILE;
         float acc[TILE];
@@ -231,9 +236,10 @@ static void filter_columns(const float *a, const float *ka, const float *b, cons
     }
 }
 
-/* The whole filter at one resolution: Gaussian (curvature 0) or scale * Laplacian of Gaussian (curvature 1). */
-static status filter_here(const float *in, size_t nx, size_t ny, double sigma, int curvature, float scale, float *out,
-                          error *e) {
+/* The whole filter at one resolution: Gaussian (curvature 0) or scale * Laplacian of Gaussian (curvature 1).
+ * */
+static status filter_here(const float *in, size_t nx, size_t ny, double sigma, int curvature, float scale,
+                          float *out, error *e) {
     kernel k = { 0 };
     status st = ST_OK;
     float *ext = NULL, *a = NULL, *b = NULL;
@@ -252,8 +258,10 @@ static status filter_here(const float *in, size_t nx, size_t ny, double sigma, i
         filter_row(in + y * nx, nx, k.smooth, k.r, ext, a + y * nx);
         if (curvature) filter_row(in + y * nx, nx, k.second, k.r, ext, b + y * nx);
     }
-    if (curvature) filter_columns(a, k.second, b, k.smooth, k.r, nx, ny, scale, out);
-    else filter_columns(a, k.smooth, NULL, NULL, k.r, nx, ny, scale, out);
+    if (curvature)
+        filter_columns(a, k.second, b, k.smooth, k.r, nx, ny, scale, out);
+    else
+        filter_columns(a, k.smooth, NULL, NULL, k.r, nx, ny, scale, out);
 done:
     kernel_free(&k);
     free(ext);
@@ -264,16 +272,17 @@ done:
 
 /* ---- the coarse grid ---- */
 
-/* Grid points lie at m j + (m - 1) / 2 - lead, so that block centres of the mirrored plane map onto each other. */
+/* Grid points lie at m j + (m - 1) / 2 - lead, so that block centres of the mirrored plane map onto each
+ * other. */
 typedef struct {
-    size_t m;       /* px per grid step */
-    size_t lead;    /* px before the plane, a multiple of m */
-    size_t n;       /* grid points along this axis */
-    size_t taps;    /* per grid point */
-    float *down;    /* [taps], centre at (taps - 1) / 2 */
-    float *up;      /* [m][up_taps] */
+    size_t m;    /* px per grid step */
+    size_t lead; /* px before the plane, a multiple of m */
+    size_t n;    /* grid points along this axis */
+    size_t taps; /* per grid point */
+    float *down; /* [taps], centre at (taps - 1) / 2 */
+    float *up;   /* [m][up_taps] */
     size_t up_taps;
-    long up_first;  /* grid offset of the first tap */
+    long up_first; /* grid offset of the first tap */
 } coarse;
 
 static void coarse_free(coarse *c) {
@@ -299,16 +308,20 @@ static int coarse_make(size_t n, size_t m, double reach, coarse *c) {
     for (int pass = 0; pass < 2; pass++)
         for (size_t i = 0; i < c->taps; i++) {
             double x = ((double)i - mid) / dm, g = exp(-0.5 * x * x);
-            if (!pass) sum += g;
-            else c->down[i] = (float)(g / sum);
+            if (!pass)
+                sum += g;
+            else
+                c->down[i] = (float)(g / sum);
         }
     for (size_t p = 0; p < m; p++) {
         double at = ((double)p - 0.5 * (dm - 1.0)) / dm, s = 0.0;
         for (int pass = 0; pass < 2; pass++)
             for (size_t i = 0; i < c->up_taps; i++) {
                 double x = (double)((long)i + c->up_first) - at, g = exp(-0.5 * x * x);
-                if (!pass) s += g;
-                else c->up[p * c->up_taps + i] = (float)(g / s);
+                if (!pass)
+                    s += g;
+                else
+                    c->up[p * c->up_taps + i] = (float)(g / s);
             }
     }
     return 1;
@@ -381,7 +394,8 @@ static status filter_coarse(const float *in, size_t nx, size_t ny, double sigma,
     status st = ST_OK;
     size_t m = (size_t)(sigma / 2.0);
     /* Second derivatives are taken on the grid, per step squared. */
-    double dm = (double)m, per_step = curvature ? dm * dm : 1.0, rest = sqrt(sigma * sigma - 2.0 * dm * dm) / dm;
+    double dm = (double)m, per_step = curvature ? dm * dm : 1.0,
+           rest = sqrt(sigma * sigma - 2.0 * dm * dm) / dm;
     double reach = ceil(cut * rest) * dm + (ceil(cut) + 1.0) * dm;
     coarse cx = { 0 }, cy = { 0 };
     float *rows = NULL, *grid = NULL;
@@ -420,7 +434,8 @@ status filter_gauss(const float *in, size_t nx, size_t ny, double sigma_px, floa
     return filter_coarse(in, nx, ny, sigma_px, 0, 1.0f, out, e);
 }
 
-status filter_curvature(const float *in, size_t nx, size_t ny, double sigma_px, int sign, float *out, error *e) {
+status filter_curvature(const float *in, size_t nx, size_t ny, double sigma_px, int sign, float *out,
+                        error *e) {
     float scale = (float)((sign < 0 ? 1.0 : -1.0) * sigma_px * sigma_px);
     if (sigma_px < COARSE_FROM) return filter_here(in, nx, ny, sigma_px, 1, scale, out, e);
     return filter_coarse(in, nx, ny, sigma_px, 1, scale, out, e);

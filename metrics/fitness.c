@@ -1,20 +1,24 @@
 /* Blur, noise, streaks, line jitter; and the verdict on a micrograph.
  *
- * Blur. A surface of hillocks that touch has creases; the power of a crease falls as k^-5 in two dimensions. On
- * rendered cones, paraboloids and bells (hexagonal to nearly random, 12 to 110 px, no blur) the mean power of the band
- * 0.8 to 1.4 per spacing exceeds that of a band about x per spacing by exp(0.65 + 5 ln x), +-0.8, from x = 1.8 to 14.
- * A probe of sd b multiplies the spectrum by exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the
- * highest band above the noise to come back to that law. Textures without blur come out below 0.08 spacings; rendered blurs of
- * 0.12, 0.20, 0.25 and 0.35 spacings within 0.03. Rough or edge-bright pictures fall more slowly and look sharper than
- * they are, never blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side lobes of
- * windows and of truncated filters.
- * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as noise, so the
- * smaller of the two is taken.
- * Streaks. What charging leaves runs along x: power in the columns |kx| <= 3 of the spectrum beyond that of the columns
- * 8 to 14 (brought to the same |k| by the radial mean). Means without outliers over bands of ky outside 0.45 to 2 per
- * spacing keep the spots of a lattice out; the gap is filled with the lower of its sides.
- * Line jitter. Shift between neighbouring lines by least squares on the gradient; the second difference keeps what
- * changes from line to line, and the same figure of the columns removes texture and noise. */
+ * Blur. A surface of hillocks that touch has creases; the power of a crease falls as k^-5 in two dimensions.
+ * On rendered cones, paraboloids and bells (hexagonal to nearly random, 12 to 110 px, no blur) the mean
+ * power of the band 0.8 to 1.4 per spacing exceeds that of a band about x per spacing by
+ * exp(0.65 + 5 ln x), +-0.8, from x = 1.8 to 14. A probe of sd b multiplies the spectrum by
+ * exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the highest band above the noise to come back to
+ * that law. Textures without blur come out below 0.06 spacings (0.11 in strong noise); rendered blurs of 0.12,
+ * 0.20 and 0.30 spacings within 0.04 (a blurred picture clipped afterwards: 0.15 instead of 0.30, the edges of
+ * the clipping look sharp). Rough or edge-bright pictures fall more slowly and look sharper than they are, never
+ * blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side lobes of windows and
+ * of truncated filters.
+ * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as
+ * noise, so the smaller of the two is taken.
+ * Streaks. What charging leaves runs along x: power in the columns |kx| <= 3 of the spectrum beyond that of
+ * the columns 8 to 14 (brought to the same |k| by the radial mean). Means without outliers over bands of ky
+ * outside 0.45 to 2 per spacing keep the spots of a lattice out; the gap is filled with the lower of its
+ * sides.
+ * Line jitter. Shift between neighbouring lines by least squares on the gradient; the second
+ * difference keeps what changes from line to line, and the same figure of the columns removes texture and
+ * noise. */
 #include "metrics/fitness.h"
 
 #include <math.h>
@@ -35,15 +39,17 @@ measure_options measure_defaults(void) {
         .warn_features = 200.0,
         .max_blur = 0.25, /* spacings: close features merge and the count drops */
         .warn_blur = 0.12,
-        /* Saturated tops flatten the brightest few percent. Up to a third of the field at the ends of the scale the density
-         * stays within 0.2 % and spacing_acf within 4 %; beyond a half there is more plateau than texture. */
+        /* Saturated tops flatten the brightest few percent. Up to a third of the field at the ends of the
+         * scale the density stays within 0.2 % and spacing_acf within 4 %; beyond a half there is more
+         * plateau than texture. */
         .max_clipped = 0.50,
         .warn_clipped = 0.02,
-        /* At 24 px per spacing; noise is averaged over the detector's width, so that d / 24 times as much is borne. At 2.2
-         * the density is 7 % off, from 2.7 on features are invented or lost by the score. */
+        /* At 24 px per spacing; noise is averaged over the detector's width, so that d / 24 times as much is
+         * borne. At 2.2 the density is 7 % off, from 2.7 on features are invented or lost by the score. */
         .max_noise = 2.5,
         .warn_noise = 1.25,
-        /* Of the texture's variance. At 0.3 the density is 6 % off, at 0.5 the streaks decide stretch and spacing. */
+        /* Of the texture's variance. At 0.3 the density is 6 % off, at 0.5 the streaks decide stretch and
+         * spacing. */
         .max_streaks = 0.40,
         .warn_streaks = 0.02,
         .max_stretch = 1.6, /* a tilt of 51 degrees */
@@ -66,9 +72,7 @@ static double power_between(const curve *psd, double k0, double k1, double floor
     return weight > 0.0 ? sum / weight : MISSING;
 }
 
-static double creased_fall(double x0, double x1) {
-    return x0 < 1.6 ? 2.5 : 0.65 + 5.0 * log(sqrt(x0 * x1));
-}
+static double creased_fall(double x0, double x1) { return x0 < 1.6 ? 2.5 : 0.65 + 5.0 * log(sqrt(x0 * x1)); }
 
 /* Blur to be undone for the band k0 .. k1 to obey the law. level > 0 stands for a band drowned in noise. */
 static double undone(const curve *psd, double d, double floor, double k0, double k1, double level) {
@@ -79,8 +83,10 @@ static double undone(const curve *psd, double d, double floor, double k0, double
         double tail = level > 0.0 ? level * exp(undo * k0 * k1) : power_between(psd, k0, k1, floor, undo);
         int enough = tail > 0.0 && log(top / tail) < want;
         if (!i && enough) return 0.0;
-        if (enough) high = b;
-        else low = b;
+        if (enough)
+            high = b;
+        else
+            low = b;
     }
     return 0.5 * (low + high);
 }
@@ -89,7 +95,8 @@ static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
     static const double edge[] = { 1.4, 1.8, 2.2, 2.8, 3.5, 4.5, 5.6, 7.0, 9.0, 11.0, 14.0 };
     const double least_z = 3.0, most_fall = 10.5, end = 0.45;
     double first = power_between(psd, 0.8 / d, 1.4 / d, floor, 0.0);
-    double modes = PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
+    double modes =
+        PI * (1.4 * 1.4 - 0.8 * 0.8) / (d * d) * (double)n_px / 4.0; /* half plane; the window costs half */
     if (!(first > least_z * floor / sqrt(modes)) || !(first > 0.0)) return MISSING;
     double blur = MISSING;
     for (size_t i = 0; i + 1 < sizeof edge / sizeof *edge && edge[i + 1] / d <= end; i++) {
@@ -100,7 +107,8 @@ static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
         /* Nothing beyond the ring stands out of the noise: at least as blurred as the noise allows. */
         if (!visible) return undone(psd, d, floor, k0, k1, fmax(p, 0.0) + least_z * se);
         if (log(first / p) > most_fall) break;
-        blur = undone(psd, d, floor, k0, k1, 0.0); /* the highest band decides: there blur weighs most, order least */
+        blur = undone(psd, d, floor, k0, k1,
+                      0.0); /* the highest band decides: there blur weighs most, order least */
     }
     return blur;
 }
@@ -122,8 +130,10 @@ static double radial_power(const curve *psd, double k) {
     size_t low = 0, high = psd->n - 1;
     while (high - low > 1) {
         size_t mid = (low + high) / 2;
-        if (psd->points[mid].x <= k) low = mid;
-        else high = mid;
+        if (psd->points[mid].x <= k)
+            low = mid;
+        else
+            high = mid;
     }
     return psd->points[k - psd->points[low].x < psd->points[high].x - k ? low : high].y;
 }
@@ -154,9 +164,10 @@ static double clipped_mean(double *v, size_t n, double *scratch) {
     return n ? sum / (double)n : 0.0;
 }
 
-/* Sum of the excess over j0 <= j < j1, as count times mean in bands; first and last band on their own, too. */
-static double band_sum(const float *p, const curve *psd, size_t nx, size_t ny, size_t j0, size_t j1, size_t bands,
-                       double *v, double *first, double *last) {
+/* Sum of the excess over j0 <= j < j1, as count times mean in bands; first and last band on their own, too.
+ * */
+static double band_sum(const float *p, const curve *psd, size_t nx, size_t ny, size_t j0, size_t j1,
+                       size_t bands, double *v, double *first, double *last) {
     double sum = 0.0;
     *first = *last = 0.0;
     for (size_t b = 0; b < bands && j1 > j0; b++) {
@@ -182,13 +193,16 @@ static status streak_variance(const float *p, const curve *psd, size_t nx, size_
         gap1 = (size_t)fmin(2.0 * (double)ny / d, (double)nyquist);
     }
     size_t first = gap0 > 3 ? 3 : gap0; /* below lies uneven brightness */
-    /* Few rows lie below the gap, and the texture's own scatter there is large: only what is beyond its error counts. */
+    /* Few rows lie below the gap, and the texture's own scatter there is large: only what is beyond its
+     * error counts. */
     double below = band_sum(p, psd, nx, ny, first, gap0, 1 + (gap0 - first) / 64, v, &unused, &last_low);
     double sum = below * (1.0 - 1.0 / sqrt((double)(gap0 - first + 1)));
     sum += band_sum(p, psd, nx, ny, gap1, nyquist, 8, v, &first_high, &unused);
     if (gap1 > gap0) {
         int low_known = gap0 > first + 3, high_known = nyquist > gap1 + 8;
-        double level = low_known && high_known ? fmin(last_low, first_high) : low_known ? last_low : first_high;
+        double level = low_known && high_known ? fmin(last_low, first_high)
+                       : low_known             ? last_low
+                                               : first_high;
         sum += fmax(0.0, level) * (double)(gap1 - gap0);
     }
     *out = fmax(0.0, 2.0 * sum / ((double)nx * (double)ny));
@@ -220,8 +234,8 @@ static double line_shift(const double *a, const double *b, size_t n) {
 }
 
 /* Mean square of the second difference of the shifts, over groups of four lines spread over the field. */
-static double shift_power(const float *f, size_t lines, size_t along, size_t line_step, size_t step, size_t half,
-                          double *buffer) {
+static double shift_power(const float *f, size_t lines, size_t along, size_t line_step, size_t step,
+                          size_t half, double *buffer) {
     enum { GROUPS = 160 };
     size_t n = along - 2 * half, groups = lines / 4 < GROUPS ? lines / 4 : GROUPS;
     double sum = 0.0, *l[4] = { buffer, buffer + along, buffer + 2 * along, buffer + 3 * along };
@@ -240,8 +254,10 @@ static status line_jitter(const float *f, size_t nx, size_t ny, double d, double
     if (!(d > 0.0) || shorter < 4 * half + 16) return ST_OK;
     double *buffer = mem_array(4 * longer, sizeof *buffer);
     if (!buffer) return NO_MEMORY(e, "the look for line jitter");
-    double rows = shift_power(f, ny, nx, nx, 1, half, buffer), columns = shift_power(f, nx, ny, 1, nx, half, buffer);
-    /* The scatter of a shift falls with the length of the line. Independent line offsets of variance v: the second difference has 5 v, a shift between neighbours 2 v. */
+    double rows = shift_power(f, ny, nx, nx, 1, half, buffer),
+           columns = shift_power(f, nx, ny, 1, nx, half, buffer);
+    /* The scatter of a shift falls with the length of the line. Independent line offsets of variance v: the
+     * second difference has 5 v, a shift between neighbours 2 v. */
     *out = sqrt(fmax(0.0, rows - columns * (double)ny / (double)nx) * 2.0 / 5.0);
     free(buffer);
     return ST_OK;
@@ -275,8 +291,10 @@ status fitness_look(const float *f, const plane *p, double d_px, sharpness *out,
 /* ---- the verdict ---- */
 
 static void limit(texture *t, double value, double warn, double max, flags remark, flags reason) {
-    if (value > max) t->reasons |= reason;
-    else if (value > warn) t->flags |= remark;
+    if (value > max)
+        t->reasons |= reason;
+    else if (value > warn)
+        t->flags |= remark;
 }
 
 static void judge_stretch(const sharpness *s, const measure_options *o, double d, texture *t) {
@@ -292,8 +310,8 @@ static void judge_stretch(const sharpness *s, const measure_options *o, double d
     if (s->line_jitter_px > jitter_warn * d && s->line_jitter_px > 0.3) t->flags |= FLAG(DRIFT);
 }
 
-/* Blur merges features, and the spacing it is compared with grows with it: a ratio well below the limit together with
- * sizes spread too widely, or a relief that has lost its sign, is as bad as one above. */
+/* Blur merges features, and the spacing it is compared with grows with it: a ratio well below the limit
+ * together with sizes spread too widely, or a relief that has lost its sign, is as bad as one above. */
 static void judge_blur(double blur, const measure_options *o, texture *t) {
     const double merged_gsd = 1.35;
     limit(t, blur, o->warn_blur, o->max_blur, FLAG(UNSHARP), FLAG(BLURRED));
@@ -312,13 +330,16 @@ void fitness_judge(const sharpness *s, const plane *p, const measure_options *o,
     t->clipped_share = p->clipped_low + p->clipped_high;
     limit(t, t->clipped_share, o->warn_clipped, o->max_clipped, FLAG(CLIPPED), FLAG(CLIPPED));
     if (t->ring_z < o->min_ring_z && !(t->reasons & FLAG(FEATURELESS))) t->reasons |= FLAG(NO_RING);
-    if (t->reasons & (FLAG(FEATURELESS) | FLAG(NO_RING))) return; /* further figures would describe the noise */
+    if (t->reasons & (FLAG(FEATURELESS) | FLAG(NO_RING)))
+        return; /* further figures would describe the noise */
     limit(t, -n, -o->warn_features, -o->min_features, FLAG(SMALL_COUNT), FLAG(FEW_FEATURES));
     if (!isfinite(d)) return;
     limit(t, -d, -o->warn_px_per_spacing, -o->min_px_per_spacing, FLAG(LOW_RESOLUTION), FLAG(FEW_PIXELS));
     if (!isfinite(t->spacing_acf.value)) {
-        if (t->clark_evans.value >= random_order) t->flags |= FLAG(NO_RING);
-        else t->reasons |= FLAG(NO_RING);
+        if (t->clark_evans.value >= random_order)
+            t->flags |= FLAG(NO_RING);
+        else
+            t->reasons |= FLAG(NO_RING);
     }
     judge_blur(s->blur_sd_px / d, o, t);
     limit(t, t->noise_rel.value * noise_at_px / d, o->warn_noise, o->max_noise, FLAG(NOISY), FLAG(NOISY));

@@ -1,25 +1,31 @@
-/* Can this micrograph carry the numbers? Measures of blur, noise, streaks and line jitter, and the verdict. The limits live
- * in measure_options; their defaults are set and justified in the .c. A refused micrograph costs the user a sample, a
- * flagged one a glance: limits of exclusion are wide, those of remarks narrow. */
+/* Can this micrograph carry the numbers? Measures of blur, noise, streaks and line jitter, and the verdict.
+ * The limits live
+ * in measure_options; their defaults are set and justified in the .c. A refused micrograph costs the user a
+ * sample, a flagged one a glance: limits of exclusion are wide, those of remarks narrow. */
 #ifndef SWARD_METRICS_FITNESS_H
 #define SWARD_METRICS_FITNESS_H
 #include "metrics/measure.h"
 #include "metrics/spectrum.h"
 
 typedef struct {
-    double blur_sd_px;     /* sd of the blur that must be undone for the noise-corrected spectrum to fall like that of a
-                              surface with creases; 0 none, NAN unknown (no scale, or nothing above the noise) */
-    double noise_sd;       /* grey; level of the end of the spectrum, or Immerkaer's when that is lower */
-    double texture_sd;     /* grey, noise removed */
-    double streaks;        /* variance of what runs along the scan lines beyond the texture's own / texture variance */
-    double second_px;      /* spacing of a second population; NAN none */
-    double line_jitter_px; /* rms shift between neighbouring lines beyond that between columns; NAN unknown */
+    /* sd of the blur that must be undone for the noise-corrected spectrum to fall like that of a surface with
+     * creases; 0 none, NAN unknown (no scale, or nothing above the noise) */
+    double blur_sd_px;
+    /* grey; level of the end of the spectrum, or Immerkaer's when that is lower */
+    double noise_sd;
+    double texture_sd; /* grey, noise removed */
+    /* variance of what runs along the scan lines beyond the texture's own / texture variance */
+    double streaks;
+    double second_px; /* spacing of a second population; NAN none */
+    /* rms shift between neighbouring lines beyond that between columns; NAN unknown */
+    double line_jitter_px;
 } sharpness;
 
 /* f flattened, d_px the scale (NAN unknown). err ST_NO_MEMORY */
 status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e);
 
-/* Sets reasons, flags, sharpness, noise_rel and second_spacing_px of t from s, its numbers and the limits. Adds to what is set already. */
+/* Sets reasons, flags, sharpness, noise_rel and second_spacing_px of t from s, its numbers and the limits.
+ * Adds to what is set already. */
 void fitness_judge(const sharpness *s, const plane *p, const measure_options *o, texture *t);
 
 #endif

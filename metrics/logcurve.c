@@ -1,6 +1,7 @@
-/* Radial curves are noisy at their far end and coarse at their near end. On ln x with a fixed number of points per
- * factor e, one smoothing width is a fixed share of x and serves every scale. The place of an extremum is then refined
- * on the unsmoothed points by the vertex of a least-squares cubic (a parabola is biased on a skew ring). */
+/* Radial curves are noisy at their far end and coarse at their near end. On ln x with a fixed number of
+ * points per factor e, one smoothing width is a fixed share of x and serves every scale. The place of an
+ * extremum is then refined on the unsmoothed points by the vertex of a least-squares cubic (a parabola is
+ * biased on a skew ring). */
 #include "metrics/logcurve.h"
 
 #include <math.h>
@@ -12,8 +13,10 @@ double curve_at(const curve *c, double x) {
     size_t low = 1, high = c->n - 1;
     while (high - low > 1) {
         size_t mid = (low + high) / 2;
-        if (c->points[mid].x <= x) low = mid;
-        else high = mid;
+        if (c->points[mid].x <= x)
+            low = mid;
+        else
+            high = mid;
     }
     double t = (x - c->points[low].x) / (c->points[high].x - c->points[low].x);
     return c->points[low].y + t * (c->points[high].y - c->points[low].y);
@@ -84,7 +87,8 @@ double curve_vertex(const curve *c, const double *weight, double x0, double widt
         }
     }
     if (used < 4 || !cubic_fit(m, k)) return x0;
-    /* k1 + 2 k2 u + 3 k3 u^2 = 0; the root whose second derivative has the wanted sign, written without cancellation. */
+    /* k1 + 2 k2 u + 3 k3 u^2 = 0; the root whose second derivative has the wanted sign, written without
+     * cancellation. */
     double root = k[2] * k[2] - 3.0 * k[1] * k[3];
     if (!(root >= 0.0) || (sign > 0) != (k[2] < 0.0)) return x0;
     double u = -k[1] / (k[2] + (k[2] > 0.0 ? 1.0 : -1.0) * sqrt(root));

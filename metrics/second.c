@@ -1,11 +1,12 @@
 /* A second population of another spacing.
- * The first ring of the curvature map stands at its own scale: with sigma 0.12 D it lies at D when features of the
- * spacing D are there, and follows neither D nor a harmonic when they are not. So D runs over a ladder, and every D whose
- * map has its FIRST significant ring within 9 % of D is a spacing of the picture. A single population has one such D: at
- * the second shell of an ordered layer (1.8 to 2 spacings) the first shell is still the higher ring, and on finer maps
- * the ring stays where it was. Two populations 24 and 45 to 90 px apart, added, merged or side by side, give both.
- * The maps need not be made: the autocorrelation of K at sigma is the Hankel transform of the radial PSD times
- * (2 pi k sigma)^4 exp(-(2 pi k sigma)^2). Not seen: spacings nearer than a factor 1.4. */
+ * The first ring of the curvature map stands at its own scale: with sigma 0.12 D it lies at D when features
+ * of the spacing D are there, and follows neither D nor a harmonic when they are not. So D runs over a
+ * ladder, and every D whose map has its FIRST significant ring within 9 % of D is a spacing of the picture.
+ * A single population has one such D: at the second shell of an ordered layer (1.8 to 2 spacings) the first
+ * shell is still the higher ring, and on finer maps the ring stays where it was. Two populations 24 and 45
+ * to 90 px apart, added, merged or side by side, give both. The maps need not be made: the autocorrelation
+ * of K at sigma is the Hankel transform of the radial PSD times (2 pi k sigma)^4 exp(-(2 pi k sigma)^2). Not
+ * seen: spacings nearer than a factor 1.4. */
 #include <math.h>
 
 #include "base/quantity.h"
@@ -13,7 +14,8 @@
 
 enum { RADII = 54, RADII_PER_D = 36 };
 
-/* Autocorrelation of the curvature map of sigma at RADII radii in steps of d / RADII_PER_D, into c (point 0: lag 0). */
+/* Autocorrelation of the curvature map of sigma at RADII radii in steps of d / RADII_PER_D, into c (point 0:
+ * lag 0). */
 static void curvature_acf(const curve *psd, double sigma, double d, curve *c) {
     double norm = 0.0;
     for (int j = 0; j < RADII; j++) c->points[j] = (curve_point){ j * d / RADII_PER_D, 0.0 };
@@ -30,27 +32,33 @@ static void curvature_acf(const curve *psd, double sigma, double d, curve *c) {
 
 /* First significant ring of the map of d; 0 none. */
 static double ring_at(const curve *psd, double d, size_t nx, size_t ny) {
-    const double least_height = 0.045, least_z = 5.0, least_trough = 0.08, near = 0.3, far = 1.45, share = 0.5;
+    const double least_height = 0.045, least_z = 5.0, least_trough = 0.08, near = 0.3, far = 1.45,
+                 share = 0.5;
     curve_point points[RADII];
     curve c = { .points = points };
     curvature_acf(psd, 0.12 * d, d, &c);
     double top = 0.0, trough = 1.0;
     for (size_t j = 1; j + 1 < c.n; j++) {
         double x = points[j].x / d;
-        if (x > near && x < far && points[j].y > points[j - 1].y && points[j].y >= points[j + 1].y) top = fmax(top, points[j].y);
+        if (x > near && x < far && points[j].y > points[j - 1].y && points[j].y >= points[j + 1].y)
+            top = fmax(top, points[j].y);
     }
     for (size_t j = 1; j + 1 < c.n; j++) {
         double y = points[j].y, x = points[j].x / d, a = points[j - 1].y, b = points[j + 1].y;
         trough = fmin(trough, y);
         if (!(x > near && x < far && y > a && y >= b && y >= share * top)) continue;
-        if (y < least_height || -trough < least_trough || y < least_z * acf_standard_error(&c, points[j].x, nx, ny)) return 0.0;
+        if (y < least_height || -trough < least_trough ||
+            y < least_z * acf_standard_error(&c, points[j].x, nx, ny))
+            return 0.0;
         return points[j].x + 0.5 * (b - a) / (2.0 * y - a - b) * d / RADII_PER_D;
     }
     return 0.0;
 }
 
-/* Spacings at which the ring stands at its own scale, ascending, each the best of its neighbours on the ladder. */
-static size_t own_scales(const curve *psd, double from, double to, size_t nx, size_t ny, double *found, size_t room) {
+/* Spacings at which the ring stands at its own scale, ascending, each the best of its neighbours on the
+ * ladder. */
+static size_t own_scales(const curve *psd, double from, double to, size_t nx, size_t ny, double *found,
+                         size_t room) {
     const double step = 0.08, agree = 0.09, same = 1.25;
     double off_of_last = 0.0;
     size_t n = 0;

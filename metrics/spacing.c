@@ -1,12 +1,15 @@
 /* First scale, spectral peak, hexagonal spacing, and the standard error of an autocorrelation.
- * First scale: the first minimum of the plain radial autocorrelation lies at 0.61 of the spacing for a narrow spectral
- * ring (C = J0(k r): minimum at 3.8317/k, maximum at 7.0156/k; Abramowitz and Stegun 1964, table 9.5); on disordered
- * textures the guess is 9 % short to 28 % long, enough to start the detection and no more. The first MAXIMUM of the
- * plain curve is not used: the falling self term of broad features pushes it out by tens of percent.
- * Standard error after Bartlett (1946), Suppl. J. R. Stat. Soc. 8:27: products of a texture are correlated over the
- * area A2 = 1 + 2 pi integral C^2 r dr; a ring of radius r averages pi r / sqrt(A2) independent directions.
- * spacing_psd: 1/k at the peak of the radial spectrum of the curvature map. It is the distance of ROWS, 0.866 of the
- * hexagonal spacing on a lattice, 0.92 to 1 on disordered textures: never to be compared with a spacing 1:1. */
+ * First scale: the first minimum of the plain radial autocorrelation lies at 0.61 of the spacing for a
+ * narrow spectral ring (C = J0(k r): minimum at 3.8317/k, maximum at 7.0156/k; Abramowitz and Stegun 1964,
+ * table 9.5); on disordered textures the guess is 9 % short to 28 % long, enough to start the detection and
+ * no more. The first MAXIMUM of the plain curve is not used: the falling self term of broad features pushes
+ * it out by tens of percent.
+ * Standard error after Bartlett (1946), Suppl. J. R. Stat. Soc. 8:27: products of
+ * a texture are correlated over the area A2 = 1 + 2 pi integral C^2 r dr; a ring of radius r averages pi r /
+ * sqrt(A2) independent directions.
+ * spacing_psd: 1/k at the peak of the radial spectrum of the curvature map.
+ * It is the distance of ROWS, 0.866 of the hexagonal spacing on a lattice, 0.92 to 1 on disordered textures:
+ * never to be compared with a spacing 1:1. */
 #include "metrics/spacing.h"
 
 #include <math.h>
@@ -58,7 +61,8 @@ status spacing_psd_peak(const curve *k_psd, double d_px, size_t n_features, meas
     if (s.n < 3 || best == 0 || best == s.n - 1)
         return fail(e, ST_NO_RESULT, "the power spectrum has no peak between periods of %.3g and %.3g px",
                     1.0 / (1.7 * middle), 1.0 / (0.6 * middle));
-    /* ln P, because the peak stands on a steep slope; weighted with P, so that the feet of a narrow line do not decide. */
+    /* ln P, because the peak stands on a steep slope; weighted with P, so that the feet of a narrow line do
+     * not decide. */
     curve_point window[LOG_POINTS];
     double weight[LOG_POINTS] = { 0.0 };
     curve ln = { .points = window, .n = 1 };

@@ -6,9 +6,9 @@
 
 /* First guess of the scale from the plain radial autocorrelation. */
 typedef struct {
-    double first_minimum_px;  /* NAN: none */
-    double scale_px;          /* first_minimum / 0.61, good to -9..+28 % */
-    double z;                 /* significance of the trough, -C(r_min) / se */
+    double first_minimum_px; /* NAN: none */
+    double scale_px;         /* first_minimum / 0.61, good to -9..+28 % */
+    double z;                /* significance of the trough, -C(r_min) / se */
 } first_scale;
 void spacing_first_scale(const curve *acf, size_t nx, size_t ny, first_scale *out);
 
@@ -17,16 +17,17 @@ double acf_standard_error(const curve *acf, double r_px, size_t nx, size_t ny);
 
 /* spacing_acf: ring of the autocorrelation of the curvature map K made at sigma = 0.12 d.
  *   in  k_acf its 2-D autocorrelation, d_px the scale (hexagonal spacing), n_features behind it
- *   out spacing (sub-pixel; of the six first-shell peaks where they are distinct, else of the radial ring), the
- *       radial curve's ring, stretch (>= 1) and direction of the longer spacing (deg, y up) when found from peaks or
- *       from the ring's ellipse. u_sampling 0.17/sqrt(N).
+ *   out spacing (sub-pixel; of the six first-shell peaks where they are distinct, else of the radial ring),
+ *       the radial curve's ring, stretch (>= 1) and direction of the longer spacing (deg, y up) when found
+ *       from peaks or from the ring's ellipse. u_sampling 0.17/sqrt(N).
  *   err ST_NO_RESULT no ring (the sentence says why); ST_NO_MEMORY */
 typedef struct {
     measured spacing, stretch, stretch_angle_deg;
     double radial_ring_px, ring_height, ring_z;
     int from_peaks;
 } ring;
-status spacing_ring(const acf2d *k_acf, const curve *k_radial, double d_px, size_t n_features, ring *out, error *e);
+status spacing_ring(const acf2d *k_acf, const curve *k_radial, double d_px, size_t n_features, ring *out,
+                    error *e);
 
 /* spacing_psd: 1 / spatial frequency at the peak of the radial PSD of K, searched 0.6..1.7 of 1.1/d. */
 status spacing_psd_peak(const curve *k_psd, double d_px, size_t n_features, measured *out, error *e);

@@ -1,12 +1,13 @@
 /* Autocorrelation and power spectral density by FFT.
- * Autocorrelation: Wiener (1930), Khinchin (1934). The mean-removed plane is zero-padded to at least nx + max_lag by
- * ny + max_lag, so that no wrapped product enters; sums are divided by the overlap count. Row transforms skip the
- * padding, columns are taken in strips that stay in the cache: forward, squared modulus, and back as a real
- * transform, because the squared modulus is real; only the rows of lag 0 .. max_lag are transformed back.
- * PSD: periodic Hann window w, |FFT(w f)|^2 / sum w^2 (px2), so that the sum over all bins / (nx ny) is the weighted
- * mean square exactly (Parseval).
- * FFTW plans are made with ESTIMATE on aligned memory for one thread: the same bits every time. Making plans from
- * several threads needs fftwf_make_planner_thread_safe() once in the program. */
+ * Autocorrelation: Wiener (1930), Khinchin (1934). The mean-removed plane is zero-padded to at least nx +
+ * max_lag by ny + max_lag, so that no wrapped product enters; sums are divided by the overlap count. Row
+ * transforms skip the padding, columns are taken in strips that stay in the cache: forward, squared modulus,
+ * and back as a real transform, because the squared modulus is real; only the rows of lag 0 .. max_lag are
+ * transformed back.
+ * PSD: periodic Hann window w, |FFT(w f)|^2 / sum w^2 (px2), so that the sum over all bins
+ * / (nx ny) is the weighted mean square exactly (Parseval).
+ * FFTW plans are made with ESTIMATE on aligned memory for one thread: the same bits every time. Making plans
+ * from several threads needs fftwf_make_planner_thread_safe() once in the program. */
 #include "metrics/spectrum.h"
 
 #include <fftw3.h>
@@ -37,14 +38,14 @@ static size_t good_size(size_t n) {
 /* ---- autocorrelation ---- */
 
 typedef struct {
-    size_t nx, ny, lag;   /* of the field; lags kept */
-    size_t px, py, kx;    /* padded size, columns of the half spectrum */
-    float *line;          /* [px] */
-    fftwf_complex *half;  /* [kx] */
+    size_t nx, ny, lag;      /* of the field; lags kept */
+    size_t px, py, kx;       /* padded size, columns of the half spectrum */
+    float *line;             /* [px] */
+    fftwf_complex *half;     /* [kx] */
     fftwf_complex *spectrum; /* [max(ny, lag + 1)][kx] */
-    fftwf_complex *strip; /* [py][STRIP] */
-    float *power;         /* [py][STRIP] */
-    fftwf_complex *back;  /* [py / 2 + 1][STRIP] */
+    fftwf_complex *strip;    /* [py][STRIP] */
+    float *power;            /* [py][STRIP] */
+    fftwf_complex *back;     /* [py / 2 + 1][STRIP] */
     fftwf_plan rows, columns, columns_back, rows_back;
 } transform;
 
@@ -79,8 +80,8 @@ static status transform_make(size_t nx, size_t ny, size_t lag, transform *t, err
     int n = (int)t->py;
     t->rows = fftwf_plan_dft_r2c_1d((int)t->px, t->line, t->half, FFTW_ESTIMATE);
     t->rows_back = fftwf_plan_dft_c2r_1d((int)t->px, t->half, t->line, FFTW_ESTIMATE);
-    t->columns = fftwf_plan_many_dft(1, &n, STRIP, t->strip, NULL, STRIP, 1, t->strip, NULL, STRIP, 1, FFTW_FORWARD,
-                                     FFTW_ESTIMATE);
+    t->columns = fftwf_plan_many_dft(1, &n, STRIP, t->strip, NULL, STRIP, 1, t->strip, NULL, STRIP, 1,
+                                     FFTW_FORWARD, FFTW_ESTIMATE);
     t->columns_back = fftwf_plan_many_dft_r2c(1, &n, STRIP, t->power, NULL, STRIP, 1, t->back, NULL, STRIP, 1,
                                               FFTW_ESTIMATE);
     if (t->rows && t->rows_back && t->columns && t->columns_back) return ST_OK;
@@ -204,11 +205,13 @@ double acf2d_at(const acf2d *a, double dx, double dy) {
 
 /* ---- radial means ---- */
 
-typedef struct { double weight, radius, value; } radial_bin;
+typedef struct {
+    double weight, radius, value;
+} radial_bin;
 
 /* Bins -> curve; empty bins are left out. */
-static status radial_curve(const radial_bin *bins, size_t n, const char *name, const char *x_unit, const char *y_unit,
-                           curve *out, error *e) {
+static status radial_curve(const radial_bin *bins, size_t n, const char *name, const char *x_unit,
+                           const char *y_unit, curve *out, error *e) {
     curve c = { .name = name, .x_unit = x_unit, .y_unit = y_unit };
     size_t filled = 0;
     for (size_t i = 0; i < n; i++) filled += bins[i].weight > 0.0;
@@ -216,7 +219,8 @@ static status radial_curve(const radial_bin *bins, size_t n, const char *name, c
     if (!c.points) return NO_MEMORY(e, "a radial mean");
     for (size_t i = 0; i < n; i++)
         if (bins[i].weight > 0.0)
-            c.points[c.n++] = (curve_point){ bins[i].radius / bins[i].weight, bins[i].value / bins[i].weight };
+            c.points[c.n++] =
+                (curve_point){ bins[i].radius / bins[i].weight, bins[i].value / bins[i].weight };
     *out = c;
     return ST_OK;
 }

@@ -1,13 +1,13 @@
 /* B-01 .. B-24: autocorrelation, power spectrum, Sal and Str against closed forms and direct sums.
  * The transforms are single precision, so that identities hold to a few 1e-7 of the variance, not to 1e-12.
- * B-04 (units) is a matter of the caller: this room knows px only. B-12 documents a parabola that is not used here.
- * B-25 and the tail probabilities are checked where series are. */
+ * B-04 (units) is a matter of the caller: this room knows px only. B-12 documents a parabola that is not
+ * used here. B-25 and the tail probabilities are checked where series are. */
 #include "check.h"
 #include "metrics/direction.h"
 #include "metrics/filter.h"
+#include "metrics/planes.h"
 #include "metrics/spacing.h"
 #include "metrics/spectrum.h"
-#include "metrics/planes.h"
 
 static const char *const wiener = "B-01 Wiener (1930), Khinchin (1934); direct sums";
 static const char *const bessel = "B-07 Abramowitz and Stegun (1964), table 9.5: zeros of J1";
@@ -20,9 +20,15 @@ static void small_image(float *f) {
 
 static void b01_b03(void) {
     /* The image is 8 x 6, lags reach 3: those of B-01 within them. */
-    static const struct { int dy, dx; double c; } t[] = {
-        { 0, 0, 1.0 }, { 0, 1, -0.110357727379 }, { 1, 0, 0.031423895254 }, { 1, 1, 0.071826046294 },
-        { 1, -1, -0.014589665653 }, { 2, 3, 0.326022913257 } };
+    static const struct {
+        int dy, dx;
+        double c;
+    } t[] = { { 0, 0, 1.0 },
+              { 0, 1, -0.110357727379 },
+              { 1, 0, 0.031423895254 },
+              { 1, 1, 0.071826046294 },
+              { 1, -1, -0.014589665653 },
+              { 2, 3, 0.326022913257 } };
     float f[48], p[30];
     error e = { 0 };
     acf2d a = { 0 };
@@ -34,7 +40,10 @@ static void b01_b03(void) {
     acf2d_free(&a);
 
     /* Longer lags: repeat the image in an empty frame of its own mean, where the sums are the same. */
-    static const struct { int dy, dx; double sum; } far[] = { { 5, 0, 21.0 }, { 0, 7, 0.0 }, { 5, 7, 28.0 }, { 3, -4, -101.0 } };
+    static const struct {
+        int dy, dx;
+        double sum;
+    } far[] = { { 5, 0, 21.0 }, { 0, 7, 0.0 }, { 5, 7, 28.0 }, { 3, -4, -101.0 } };
     float g[24 * 24];
     for (int i = 0; i < 24 * 24; i++) g[i] = 7.0f;
     for (int y = 0; y < 6; y++) memcpy(g + (y + 9) * 24 + 8, f + 8 * y, 8 * sizeof *f);
@@ -50,7 +59,8 @@ static void b01_b03(void) {
     double sum = 0.0;
     for (int j = 0; j < 6; j++)
         for (int i = 0; i < 5; i++) sum += (i && i < 4 ? 2.0 : 1.0) * (double)p[5 * j + i] / 48.0;
-    CHECK_SOURCE(sum, 25.14583516716, 25.0 * 1e-6, "B-02, B-03 Parseval with a periodic Hann window, direct sum");
+    CHECK_SOURCE(sum, 25.14583516716, 25.0 * 1e-6,
+                 "B-02, B-03 Parseval with a periodic Hann window, direct sum");
 }
 
 static void b05_b06(void) {
@@ -83,7 +93,8 @@ static void b05_b06(void) {
     free(p);
 }
 
-/* Ring of the radial autocorrelation itself: no curvature map, d chosen so that the search begins below the minimum. */
+/* Ring of the radial autocorrelation itself: no curvature map, d chosen so that the search begins below the
+ * minimum. */
 static ring ring_of(const float *f, size_t n, size_t lag, double d, curve *radial, acf2d *a) {
     ring r = { 0 };
     error e = { 0 };
@@ -147,8 +158,9 @@ static void b07_b08_b18(void) {
         drop(&c, &a);
     }
     CHECK_SOURCE(ring_sum / 12.0, 1.1165652972, 1.1166 * 0.01, "B-08 Berry (1977): autocorrelation J0");
-    /* The field holds about pi L / p = 270 independent directions: the power of a direction scatters, the second
-     * harmonic of C by sqrt(2 / 135) J2 = 0.04, and the shortest of all directions lies that much low: -6 .. +2 %. */
+    /* The field holds about pi L / p = 270 independent directions: the power of a direction scatters, the
+     * second harmonic of C by sqrt(2 / 135) J2 = 0.04, and the shortest of all directions lies that much
+     * low: -6 .. +2 %. */
     CHECK_SOURCE(sal_sum / 12.0, 0.98 * 0.324919525484, 0.04 * 0.325, "B-18 J0 falls to 0.2");
     free(f);
 }
@@ -188,9 +200,12 @@ static void square(float *f, size_t n, double a, double sd) {
 
 static void b10_b11(void) {
     enum { N = 768 };
-    static const struct { double sd, hex, height, square; } t[] = {
-        { 0.30, 0.966987, 0.300099, 1.115141 }, { 0.20, 0.969196, 0.296715, 1.099506 },
-        { 0.15, 0.977668, 0.279041, 1.042943 }, { 0.10, 0.989846, 0.228254, 0.994068 } };
+    static const struct {
+        double sd, hex, height, square;
+    } t[] = { { 0.30, 0.966987, 0.300099, 1.115141 },
+              { 0.20, 0.969196, 0.296715, 1.099506 },
+              { 0.15, 0.977668, 0.279041, 1.042943 },
+              { 0.10, 0.989846, 0.228254, 0.994068 } };
     const double a0 = 24.0;
     const char *src = "B-10, B-11 sum over the reciprocal lattice of |F|^2 J0(G r)";
     float *f = plane_new(N, N);
@@ -269,9 +284,12 @@ static double crossed(double x, double y) { return 0.5 * (cos(TAU * x / 80.0) + 
 
 static void decay_of(formula f, measured *sal, measured *str, double *angle) {
     enum { LAG = 120 };
-    acf2d a = { .values = plane_new(2 * LAG + 1, LAG + 1), .max_lag = LAG, .variance = 1.0, .nx = 512, .ny = 512 };
+    acf2d a = {
+        .values = plane_new(2 * LAG + 1, LAG + 1), .max_lag = LAG, .variance = 1.0, .nx = 512, .ny = 512
+    };
     for (int y = 0; y <= LAG; y++)
-        for (int x = -LAG; x <= LAG; x++) a.values[y * (2 * LAG + 1) + x + LAG] = (float)f((double)x, (double)y);
+        for (int x = -LAG; x <= LAG; x++)
+            a.values[y * (2 * LAG + 1) + x + LAG] = (float)f((double)x, (double)y);
     texture_decay(&a, 0.2, sal, str, angle);
     acf2d_free(&a);
 }
@@ -291,7 +309,8 @@ static void b16_b21(void) {
     CHECK_SOURCE(sal.value / 80.0, 0.308231935225, 1e-3, "B-21 crossed gratings");
     CHECK_SOURCE(str.value, 0.874624309941, 1e-3, "B-21 crossed gratings");
 
-    /* B-16, B-19 on random fields: smoothed white noise, whose autocorrelation is exp(-r^2 / 4 s^2): L = 2 s. */
+    /* B-16, B-19 on random fields: smoothed white noise, whose autocorrelation is exp(-r^2 / 4 s^2): L = 2
+     * s. */
     enum { N = 384, FIELDS = 6 };
     error e = { 0 };
     dice d = { 60221 };
@@ -306,7 +325,8 @@ static void b16_b21(void) {
         mean += sal.value / 5.0 / FIELDS;
         acf2d_free(&a);
     }
-    CHECK_SOURCE(mean / 1.268636241180, 0.985, 0.025, "B-16 -4 .. +1 %: a minimum over directions is biased low");
+    CHECK_SOURCE(mean / 1.268636241180, 0.985, 0.025,
+                 "B-16 -4 .. +1 %: a minimum over directions is biased low");
     free(f);
 }
 
@@ -324,14 +344,17 @@ static void b23(void) {
     CHECK(acf2d_make(f, N, N, 90, &a, &e) == ST_OK && acf_radial(&a, &c, &e) == ST_OK);
     CHECK(spacing_ring(&a, &c, 22.0, 600, &r, &e) == ST_OK);
     CHECK_SOURCE(1.0 / r.stretch.value, 0.866025403784, 0.866 * 0.03, "B-23 cos 30 deg");
-    CHECK_SOURCE(fmod(r.stretch_angle_deg.value + 90.0, 180.0), 90.0, 5.0, "B-23 the shorter spacing is along y");
+    CHECK_SOURCE(fmod(r.stretch_angle_deg.value + 90.0, 180.0), 90.0, 5.0,
+                 "B-23 the shorter spacing is along y");
     drop(&c, &a);
     free(f);
 }
 
 static void b24(void) {
     enum { N = 512 };
-    static const struct { double r, share; } t[] = { { 0.5, 0.685037642474 }, { 1.0, 0.391002218956 }, { 1.5, 0.144293612814 } };
+    static const struct {
+        double r, share;
+    } t[] = { { 0.5, 0.685037642474 }, { 1.0, 0.391002218956 }, { 1.5, 0.144293612814 } };
     float *f = plane_new(N, N);
     acf2d a = { 0 };
     curve c = { 0 };
@@ -344,7 +367,8 @@ static void b24(void) {
         }
     CHECK(acf2d_make(f, N, N, 200, &a, &e) == ST_OK);
     double mean = area / (N * N);
-    for (size_t i = 0; i < 3; i++) { /* undo mean removal and overlap: sum f f = C v n + mean terms over the overlap */
+    for (size_t i = 0; i < 3;
+         i++) { /* undo mean removal and overlap: sum f f = C v n + mean terms over the overlap */
         int lag = (int)(100.0 * t[i].r);
         double overlap = (double)(N - lag) * N, c0 = (double)a.values[lag + 200] * a.variance * overlap;
         double both = 2.0 * area; /* the disc lies in the overlap of either copy */

@@ -1,4 +1,5 @@
-/* Flattening removes what it says and no more; filters agree with their closed forms at every scale and at the edge. */
+/* Flattening removes what it says and no more; filters agree with their closed forms at every scale and at
+ * the edge. */
 #include "metrics/filter.h"
 
 #include "base/mem.h"
@@ -11,7 +12,8 @@ static double mirrored_gauss(double at, double x, double n, double sd, double *s
     double g = 0.0, s = 0.0;
     for (int k = -4; k <= 4; k++)
         for (int flip = 0; flip < 2; flip++) {
-            double u = ((flip ? -1.0 - at : at) + 2.0 * k * n - x) / sd, w = exp(-0.5 * u * u) / (sd * sqrt(TAU));
+            double u = ((flip ? -1.0 - at : at) + 2.0 * k * n - x) / sd,
+                   w = exp(-0.5 * u * u) / (sd * sqrt(TAU));
             g += w;
             s += (u * u - 1.0) / (sd * sd) * w;
         }
@@ -30,7 +32,8 @@ static void impulse_errors(double sd, double px, double py, double *gauss, doubl
     *gauss = *curvature = 0.0;
     for (size_t y = 0; y < NY; y++)
         for (size_t x = 0; x < NX; x++) {
-            double sx, sy, gx = mirrored_gauss(px, (double)x, NX, sd, &sx), gy = mirrored_gauss(py, (double)y, NY, sd, &sy);
+            double sx, sy, gx = mirrored_gauss(px, (double)x, NX, sd, &sx),
+                           gy = mirrored_gauss(py, (double)y, NY, sd, &sy);
             double want = -sd * sd * (sx * gy + gx * sy);
             *gauss = fmax(*gauss, fabs((double)g[y * NX + x] - gx * gy) / peak);
             *curvature = fmax(*curvature, fabs((double)k[y * NX + x] - want) / (2.0 * peak));
@@ -57,7 +60,9 @@ static void check_filters(void) {
     CHECK_NEAR((double)g[NX * 50 + 70], 0.0, 1e-6);
     for (size_t y = 0; y < NY; y++) /* a paraboloid has one curvature: -sigma^2 (2 + 2) / 1000 */
         for (size_t x = 0; x < NX; x++)
-            f[y * NX + x] = (float)((((double)x - 70.0) * ((double)x - 70.0) + ((double)y - 50.0) * ((double)y - 50.0)) / 1000.0);
+            f[y * NX + x] =
+                (float)((((double)x - 70.0) * ((double)x - 70.0) + ((double)y - 50.0) * ((double)y - 50.0)) /
+                        1000.0);
     CHECK(filter_curvature(f, NX, NY, 0.8, 1, g, &e) == ST_OK);
     CHECK_NEAR((double)g[NX * 50 + 70], -0.64 * 4.0 / 1000.0, 2e-6);
     CHECK(filter_curvature(f, NX, NY, 5.2, -1, g, &e) == ST_OK);
@@ -74,7 +79,8 @@ static void check_filters(void) {
     }
     CHECK(filter_gauss(f, NX, NY, 0.0, h, &e) == ST_OK && !memcmp(f, h, NX * NY * sizeof *f));
     /* a kernel wider than the picture */
-    CHECK(filter_gauss(f, 33, 32, 40.0, h, &e) == ST_OK && isfinite(h[0]) && fabsf(h[0] - h[33 * 32 - 1]) < 0.02f);
+    CHECK(filter_gauss(f, 33, 32, 40.0, h, &e) == ST_OK && isfinite(h[0]) &&
+          fabsf(h[0] - h[33 * 32 - 1]) < 0.02f);
     free(f);
     free(g);
     free(h);
@@ -92,10 +98,13 @@ static void check_noise(void) {
         for (int curved = 0; curved < 2; curved++) {
             size_t edge = (size_t)(4.0 * sd[i]), n = 0; /* mirrored noise is stronger near the edge */
             double ss = 0.0;
-            if (curved) CHECK(filter_curvature(f, N, N, sd[i], 1, g, &e) == ST_OK);
-            else CHECK(filter_gauss(f, N, N, sd[i], g, &e) == ST_OK);
+            if (curved)
+                CHECK(filter_curvature(f, N, N, sd[i], 1, g, &e) == ST_OK);
+            else
+                CHECK(filter_gauss(f, N, N, sd[i], g, &e) == ST_OK);
             for (size_t y = edge; y < N - edge; y++)
-                for (size_t x = edge; x < N - edge; x++, n++) ss += (double)g[y * N + x] * (double)g[y * N + x];
+                for (size_t x = edge; x < N - edge; x++, n++)
+                    ss += (double)g[y * N + x] * (double)g[y * N + x];
             double want = curved ? noise_after_log(0.173, sd[i]) : noise_after_gauss(0.173, sd[i]);
             CHECK_NEAR(sqrt(ss / (double)n) / want, 1.0, 0.08);
         }
@@ -111,7 +120,8 @@ static void check_flatten(void) {
     for (size_t y = 0; y < NY; y++)
         for (size_t x = 0; x < NX; x++) {
             double u = (double)x / NX, v = (double)y / NY;
-            f[y * NX + x] = (float)(0.3 + 0.2 * u - 0.1 * v + 0.4 * u * v * v - 0.3 * u * u * u + 0.1 * v * v);
+            f[y * NX + x] =
+                (float)(0.3 + 0.2 * u - 0.1 * v + 0.4 * u * v * v - 0.3 * u * u * u + 0.1 * v * v);
         }
     CHECK(flatten(&p, g, &e) == ST_OK);
     double most = 0.0, mean = 0.0;

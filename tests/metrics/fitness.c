@@ -1,4 +1,5 @@
-/* Blur, noise, streaks and jitter put into planes on purpose come back; verdicts follow the limits on both sides. */
+/* Blur, noise, streaks and jitter put into planes on purpose come back; verdicts follow the limits on both
+ * sides. */
 #include "metrics/fitness.h"
 
 #include "base/flags.h"
@@ -35,16 +36,20 @@ static void check_blur(float *f) {
             CHECK(filter_gauss(f, NX, NY, blur[i] * d_px, f, &e) == ST_OK);
             add_noise(f, NX * NY, noisy ? 0.10 : 0.002, &d); /* the second: steps of 8 bit */
             sharpness s = looked(f);
-            if (i == 4 && noisy) CHECK(s.blur_sd_px / d_px > 0.15 && s.blur_sd_px / d_px < 0.33); /* drowned: a lower limit */
-            else if (i) CHECK_NEAR(s.blur_sd_px / d_px, blur[i], noisy ? 0.05 : 0.035);
-            else CHECK(s.blur_sd_px / d_px < 0.10);
+            if (i == 4 && noisy)
+                CHECK(s.blur_sd_px / d_px > 0.15 && s.blur_sd_px / d_px < 0.33); /* drowned: a lower limit */
+            else if (i)
+                CHECK_NEAR(s.blur_sd_px / d_px, blur[i], noisy ? 0.05 : 0.035);
+            else
+                CHECK(s.blur_sd_px / d_px < 0.10);
             CHECK_NEAR(s.noise_sd / (noisy ? 0.10 : 0.002), 1.0, noisy ? 0.03 : 0.6);
         }
     dice d = { 5 };
     memset(f, 0, NX * NY * sizeof *f);
     add_noise(f, NX * NY, 0.1, &d);
     sharpness s = looked(f);
-    CHECK(isnan(s.blur_sd_px) && s.texture_sd < 0.02 && s.streaks < 0.05 * 0.1 * 0.1 / (s.texture_sd * s.texture_sd));
+    CHECK(isnan(s.blur_sd_px) && s.texture_sd < 0.02 &&
+          s.streaks < 0.05 * 0.1 * 0.1 / (s.texture_sd * s.texture_sd));
 }
 
 static void check_streaks(float *f) {
@@ -59,8 +64,10 @@ static void check_streaks(float *f) {
         }
         sharpness s = looked(f);
         double want = share / (1.0 + share); /* the streaks are part of the variance they are divided by */
-        if (i) CHECK_NEAR(s.streaks / want, 0.8, 0.35); /* cautious: what the gap may hide is left out */
-        else CHECK(s.streaks < 0.01);
+        if (i)
+            CHECK_NEAR(s.streaks / want, 0.8, 0.35); /* cautious: what the gap may hide is left out */
+        else
+            CHECK(s.streaks < 0.01);
     }
     float *g = plane_new(NX, NY); /* rows of a perfect lattice are no streaks */
     dice d = { 3 };
@@ -96,7 +103,9 @@ static texture sound(void) {
     return t;
 }
 
-typedef struct { flags reasons, remarks; } verdict;
+typedef struct {
+    flags reasons, remarks;
+} verdict;
 static verdict judged(const sharpness *s, const plane *p, texture t) {
     measure_options o = measure_defaults();
     fitness_judge(s, p, &o, &t);

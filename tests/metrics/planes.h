@@ -7,7 +7,9 @@
 
 #define TAU 6.28318530717958647692
 
-typedef struct { uint64_t s; } dice;
+typedef struct {
+    uint64_t s;
+} dice;
 static inline double dice_uniform(dice *d) { /* xorshift64, Marsaglia 2003, J. Stat. Softw. 8(14) */
     d->s ^= d->s << 13;
     d->s ^= d->s >> 7;
@@ -56,8 +58,8 @@ static inline void raise_cone(float *f, size_t nx, size_t ny, double x, double y
 /* Hexagonal lattice, rows along x: constant a, normal jitter (share of a), stretched along x by `stretch` at
  * constant density about the middle. Calls put for every point. */
 typedef void (*put_point)(float *f, size_t nx, size_t ny, double x, double y, double size, double h);
-static inline void hexagonal(float *f, size_t nx, size_t ny, double a, double jitter, double stretch, double size,
-                             put_point put, dice *d) {
+static inline void hexagonal(float *f, size_t nx, size_t ny, double a, double jitter, double stretch,
+                             double size, put_point put, dice *d) {
     double q = sqrt(stretch), mx = 0.5 * (double)nx, my = 0.5 * (double)ny, row = 0.5 * sqrt(3.0) * a;
     long rows = (long)(my * 1.5 / row) + 4, cols = (long)(mx * 1.5 / a) + 4;
     for (long j = -rows; j <= rows; j++)

@@ -1,4 +1,5 @@
-/* First scale, ring, stretch, peaks and spectral peak on lattices, jittered lattices, random placement and noise. */
+/* First scale, ring, stretch, peaks and spectral peak on lattices, jittered lattices, random placement and
+ * noise. */
 #include "metrics/spacing.h"
 
 #include "base/mem.h"
@@ -25,7 +26,8 @@ static look look_at(const float *f, size_t nx, size_t ny, double d) {
     CHECK(acf2d_make(f, nx, ny, 256, &plain, &e) == ST_OK && acf_radial(&plain, &pc, &e) == ST_OK);
     spacing_first_scale(&pc, nx, ny, &l.first);
     CHECK(filter_curvature(f, nx, ny, 0.12 * d, 1, k, &e) == ST_OK);
-    CHECK(acf2d_make(k, nx, ny, (size_t)(4.0 * d), &curved, &e) == ST_OK && acf_radial(&curved, &kc, &e) == ST_OK);
+    CHECK(acf2d_make(k, nx, ny, (size_t)(4.0 * d), &curved, &e) == ST_OK &&
+          acf_radial(&curved, &kc, &e) == ST_OK);
     CHECK(psd_radial(k, nx, ny, &sc, &e) == ST_OK);
     l.found = spacing_ring(&curved, &kc, d, n, &l.r, &l.why);
     l.psd_found = spacing_psd_peak(&sc, d, n, &l.psd, &e);
@@ -97,8 +99,7 @@ static void check_nothing_there(void) {
     l = look_at(f, N, N, 20.0);
     CHECK(!(l.first.z >= 6.0));
     memset(f, 0, N * N * sizeof *f);
-    for (int i = 0; i < 500; i++)
-        add_bump(f, N, N, N * dice_uniform(&d), N * dice_uniform(&d), 5.0, 1.0);
+    for (int i = 0; i < 500; i++) add_bump(f, N, N, N * dice_uniform(&d), N * dice_uniform(&d), 5.0, 1.0);
     l = look_at(f, N, N, 24.0);
     CHECK(!(l.first.z >= 6.0) || l.found == ST_NO_RESULT);
     free(f);
@@ -135,7 +136,8 @@ static void check_refusals(void) {
     CHECK_FAILS(spacing_ring(&a, &c, 20.0, 100, &r, &e), ST_NO_RESULT, e, "no ring");
     CHECK_FAILS(spacing_ring(&a, &empty, 20.0, 100, &r, &e), ST_NO_RESULT, e, "no ring");
     CHECK_FAILS(spacing_ring(&a, &c, (double)NAN, 100, &r, &e), ST_NO_RESULT, e, "no");
-    for (int i = 0; i < 60; i++) falling[i].y = 1e-3 * cos(TAU * i / 20.0); /* a ring far below its standard error */
+    for (int i = 0; i < 60; i++)
+        falling[i].y = 1e-3 * cos(TAU * i / 20.0); /* a ring far below its standard error */
     CHECK_FAILS(spacing_ring(&a, &c, 20.0, 100, &r, &e), ST_NO_RESULT, e, "standard error");
     for (int i = 0; i < 60; i++) falling[i] = (curve_point){ i / 120.0, 1.0 / (1.0 + i) };
     CHECK_FAILS(spacing_psd_peak(&c, 20.0, 9, &m, &e), ST_NO_RESULT, e, "no peak");
@@ -152,10 +154,12 @@ static void check_formulas(void) {
     curve c = { .points = p, .n = 200 };
     /* C = exp(-r^2 / 2 s^2), s = 10: 2 pi integral C^2 r dr = pi s^2 */
     double a2 = 1.0 + TAU / 2.0 * 100.0;
-    CHECK_NEAR(acf_standard_error(&c, 100.0, 500, 400) / sqrt(a2 / 2e5 / (TAU / 2.0 * 100.0 / sqrt(a2))), 1.0, 0.01);
+    CHECK_NEAR(acf_standard_error(&c, 100.0, 500, 400) / sqrt(a2 / 2e5 / (TAU / 2.0 * 100.0 / sqrt(a2))), 1.0,
+               0.01);
     /* up to r = 3: 2 pi 50 (1 - exp(-0.09)) */
     a2 = 1.0 + TAU * 50.0 * (1.0 - exp(-0.09));
-    CHECK_NEAR(acf_standard_error(&c, 3.0, 500, 400) / sqrt(a2 / 2e5 / (TAU / 2.0 * 3.0 / sqrt(a2))), 1.0, 0.03);
+    CHECK_NEAR(acf_standard_error(&c, 3.0, 500, 400) / sqrt(a2 / 2e5 / (TAU / 2.0 * 3.0 / sqrt(a2))), 1.0,
+               0.03);
     CHECK_NEAR(spacing_hex(1.0), 1.0745699318, 1e-9);
 }
 

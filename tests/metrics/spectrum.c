@@ -54,7 +54,8 @@ static void check_interpolation(void) {
     curve c = { 0 };
     add_grating(f, N, N, 20.0, 0.0, 1.0);
     CHECK(acf2d_make(f, N, N, 60, &a, &e) == ST_OK);
-    CHECK_NEAR(acf2d_at(&a, 7.3, 4.6), cos(TAU * 7.3 / 20.0), 0.015); /* unbiased up to whole periods in the overlap */
+    CHECK_NEAR(acf2d_at(&a, 7.3, 4.6), cos(TAU * 7.3 / 20.0),
+               0.015); /* unbiased up to whole periods in the overlap */
     CHECK(acf_radial(&a, &c, &e) == ST_OK);
     CHECK(c.n == 61 && fabs(c.points[0].x) < 1e-12 && fabs(c.points[0].y - 1.0) < 1e-6);
     int rising = 1, near_middle = 1;
@@ -80,7 +81,8 @@ static void check_psd(size_t nx, size_t ny) {
     for (size_t i = 0; i < nx * ny; i++) mean += (double)f[i] / (double)(nx * ny);
     for (size_t y = 0; y < ny; y++)
         for (size_t x = 0; x < nx; x++) {
-            double w = (0.5 - 0.5 * cos(TAU * (double)x / (double)nx)) * (0.5 - 0.5 * cos(TAU * (double)y / (double)ny));
+            double w = (0.5 - 0.5 * cos(TAU * (double)x / (double)nx)) *
+                       (0.5 - 0.5 * cos(TAU * (double)y / (double)ny));
             double z = w * ((double)f[y * nx + x] - mean);
             want += z * z;
             norm += w * w;
@@ -92,8 +94,8 @@ static void check_psd(size_t nx, size_t ny) {
     CHECK(psd_radial(f, nx, ny, &c, &e) == ST_OK);
     double level = 0.0;
     for (size_t i = 4; i < c.n; i++) level += c.points[i].y / (double)(c.n - 4);
-    CHECK_NEAR(level / (want / norm), 1.0, 0.08); /* white: the variance, px2, at every frequency;
-                                                   the inner rings have few bins and count as much: s.e. 3 % */
+    /* White: the variance, px2, at every frequency; the inner rings have few bins: s.e. 3 %. */
+    CHECK_NEAR(level / (want / norm), 1.0, 0.08);
     CHECK(c.points[c.n - 1].x <= 0.51 && c.points[c.n - 1].x > 0.45);
     free(c.points);
     free(f);
