@@ -4,12 +4,12 @@
  * On rendered cones, paraboloids and bells (hexagonal to nearly random, 12 to 110 px, no blur) the mean
  * power of the band 0.8 to 1.4 per spacing exceeds that of a band about x per spacing by
  * exp(0.65 + 5 ln x), +-0.8, from x = 1.8 to 14. A probe of sd b multiplies the spectrum by
- * exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the highest band above the noise to come back to
- * that law. Textures without blur come out below 0.06 spacings (0.11 in strong noise); rendered blurs of 0.12,
- * 0.20 and 0.30 spacings within 0.04 (a blurred picture clipped afterwards: 0.15 instead of 0.30, the edges of
- * the clipping look sharp). Rough or edge-bright pictures fall more slowly and look sharper than they are, never
- * blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side lobes of windows and
- * of truncated filters.
+ * exp(-4 pi^2 b^2 k^2): b is the blur that must be undone for the highest band above the noise to come back
+ * to that law. Textures without blur come out below 0.06 spacings (0.11 in strong noise); rendered blurs of
+ * 0.12, 0.20 and 0.30 spacings within 0.04 (a blurred picture clipped afterwards: 0.15 instead of 0.30, the
+ * edges of the clipping look sharp). Rough or edge-bright pictures fall more slowly and look sharper than
+ * they are, never blurrier. Only bands within exp(10.5) of the ring are believed: below that lie the side
+ * lobes of windows and of truncated filters.
  * Noise. Level of the spectrum between 0.46 and 0.5 per px. Immerkaer's estimate counts sharp texture as
  * noise, so the smaller of the two is taken.
  * Streaks. What charging leaves runs along x: power in the columns |kx| <= 3 of the spectrum beyond that of

@@ -4,14 +4,15 @@
  * 2. Stretch: an area-preserving stretch by exp(2 e) along theta turns C0(r) into C0(r (1 - e cos 2(phi -
  *    theta))) to first order, so e follows from the second angular harmonic of C projected on -r C0'(r),
  *    iterated with C sampled in the straightened frame (Gauss-Newton). The steep part of the self term takes
- *    part: it halves the scatter, and what stretches a picture stretches its features too. A stretched texture's
- *    ring is then read off circles of the straightened frame.
+ *    part: it halves the scatter, and what stretches a picture stretches its features too. A stretched
+ *    texture's ring is then read off circles of the straightened frame.
  * 3. Where the first shell shows six distinct peaks (ordered layers), their mean distance counts instead:
  *    bright rims raise the ground between the peaks and push the radial mean out by 1 to 5 %, and a radial
  *    mean of a lattice is 1 to 3 % short. The ellipse through the peaks is the stretch.
  * Renders of 19 to 110 px spacing, three shapes, 75 to 2500 features: within 2.5 % of the hexagonal spacing
  * on jittered lattices, -3 to +4 % on relaxed and -7 to +6 % on hard-core patterns, +4 to +16 % on weakly
- * ordered ones; stretch of 1.15 within 0.02 (300 features: 0.06) and 4 degrees. Method uncertainty: measure.c. */
+ * ordered ones; stretch of 1.15 within 0.02 (300 features: 0.06) and 4 degrees.
+ * Method uncertainty: measure.c. */
 #include <math.h>
 
 #include "base/quantity.h"
