@@ -29,6 +29,9 @@ enum {
     OPT_POLARIZATION,
     OPT_HEMISPHERICAL,
     OPT_BAND,
+    OPT_SUN,
+    OPT_WEIGHT,
+    OPT_REAR,
     OPT_PORES,
     OPT_PROFILE,
     OPT_PROTOCOL,
@@ -57,6 +60,9 @@ static const struct argp_option predict_options[] = {
     { "polarization",  OPT_POLARIZATION,  "P",        0, "mean (default, unpolarised), s or p", 0 },
     { "hemispherical", OPT_HEMISPHERICAL, NULL,       0, "diffuse light from the whole half space", 0 },
     { "band",          OPT_BAND,          "LO:HI",    0, "wavelengths for the weighting, nm (default: 300:1200)", 0 },
+    { "sun",           OPT_SUN,           "FILE",     0, "own spectrum for the weighting: CSV with wavelength_nm and irradiance_W_m2_nm (default: AM1.5G)", 0 },
+    { "weight",        OPT_WEIGHT,        "WHAT",     0, "photons (default) or energy", 0 },
+    { "rear",          OPT_REAR,          "UM",       0, "wafer thickness in um: adds the light returning from a bare rear, scattered inside; other rears: optics.rear of a protocol", 0 },
     { "protocol",      OPT_PROTOCOL,      "FILE",     0, "link and optics of a protocol; options outrank it", 0 },
     { "json",          OPT_JSON,          NULL,       0, "one JSON object with the spectrum", 0 },
     { "csv",           OPT_CSV,           NULL,       0, "the spectrum as CSV", 0 },
@@ -72,7 +78,8 @@ static const struct { int option; const char *group, *name; } sets[] = {
     { OPT_MODEL,         "optics", "model" },         { OPT_FACET_ANGLE, "optics", "facet_angle_deg" },
     { OPT_MIXING,        "optics", "mixing" },        { OPT_ANGLE,   "optics", "angle_deg" },
     { OPT_POLARIZATION,  "optics", "polarization" },  { OPT_BAND,    "optics", "band_nm" },
-    { OPT_HEMISPHERICAL, "optics", "hemispherical" },
+    { OPT_HEMISPHERICAL, "optics", "hemispherical" }, { OPT_SUN,     "optics", "sun" },
+    { OPT_WEIGHT,        "optics", "weight" },        { OPT_REAR,    "optics", "rear" },
 };
 /* clang-format on */
 
@@ -249,6 +256,7 @@ static void print_json(const surface_input *in, const prediction *r, textbuf *ou
     sample_member(out, "polished_reflectance", r->polished);
     sample_member(out, "coated_reflectance", r->coated);
     sample_member(out, "subwavelength_share", r->shares.none);
+    member(out, "rear_escape", r->rear_escape, digits_of("weighted_reflectance"));
     text_add(out, "  \"optics_model\": ");
     json_string(out, r->model);
     text_add(out, ",\n  \"orders\": {\"none\": ");
@@ -319,8 +327,9 @@ static const char *share_text(double share, char *buffer) {
 static void print_text(const surface_input *in, const protocol *p, const prediction *r, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT];
     print_surface(in, r, out);
-    text_addf(out, "Light: %s to %s nm of the sun, ", number_text(p->band_lo_nm, 6, a),
-              number_text(p->band_hi_nm, 6, b));
+    text_addf(out, "Light: %s to %s nm of %s, by %s, ", number_text(p->band_lo_nm, 6, a),
+              number_text(p->band_hi_nm, 6, b), p->sun ? p->sun : "the sun (AM1.5G)",
+              p->weight == WEIGHT_ENERGY ? "energy" : "photons");
     if (p->hemispherical)
         text_add(out, "diffuse");
     else

@@ -195,13 +195,14 @@ status materials_list(textbuf *out, error *e) {
     return st;
 }
 
-static status sun_load(sun *out, error *e) {
+/* AM1.5G, or the table at `own`. */
+static status sun_load(const char *own, sun *out, error *e) {
     char *folder = NULL, *path = NULL;
     double *v = NULL;
     csv c = { 0 };
-    status st = materials_folder(&folder, e);
+    status st = own ? input_wanted(own, e) : materials_folder(&folder, e);
     if (st != ST_OK) goto done;
-    path = path_join(folder, SUN_FILE);
+    path = own ? mem_text(own) : path_join(folder, SUN_FILE);
     st = path ? csv_read(path, &c, e) : NO_MEMORY(e, "a path");
     if (st != ST_OK) goto done;
     v = mem_array(c.n_rows, 2 * sizeof *v);
@@ -211,7 +212,10 @@ static status sun_load(sun *out, error *e) {
     }
     st = csv_numbers(&c, "wavelength_nm", path, v, e);
     if (st == ST_OK) st = csv_numbers(&c, "irradiance_W_m2_nm", path, v + c.n_rows, e);
-    if (st == ST_OK) st = sun_make(out, comment_value(&c, "source"), c.n_rows, v, v + c.n_rows, e);
+    if (st == ST_OK) {
+        st = sun_make(out, comment_value(&c, "source"), c.n_rows, v, v + c.n_rows, e);
+        if (st != ST_OK) st = fail_within(e, st, path);
+    }
 done:
     free(v);
     csv_free(&c);
@@ -278,7 +282,7 @@ static status load_all(const protocol *p, setup *s, error *e) {
     if (st == ST_OK && laminated) st = material_load("encapsulant", &s->encapsulant, e);
     for (size_t i = 0; i < p->n_coatings && st == ST_OK; i++)
         st = material_load(p->coatings[i].material, &s->coating[i], e);
-    if (st == ST_OK) st = sun_load(&s->sun, e);
+    if (st == ST_OK) st = sun_load(p->sun, &s->sun, e);
     if (st == ST_OK && p->profile) st = profile_read(p->profile, &s->measured, e);
     return st;
 }
@@ -317,7 +321,9 @@ static void wire(const protocol *p, setup *s) {
     o->reflect.angle_deg = p->angle_deg;
     o->reflect.polarization = p->polarization;
     o->reflect.hemispherical = p->hemispherical;
+    s->sun.weight = p->weight;
     o->sun = &s->sun;
+    o->rear = p->rear;
     o->band_lo_nm = p->band_lo_nm;
     o->band_hi_nm = p->band_hi_nm;
     o->step_nm = p->step_nm;

@@ -43,6 +43,7 @@ status protocol_defaults(protocol *out, error *e) {
     p.model = OPTICS_AUTO;
     p.facet_angle_deg = MISSING;
     p.polarization = POL_MEAN;
+    p.rear = (rear_side){ 0.0, MISSING, 1 };
     p.band_lo_nm = 300.0;
     p.band_hi_nm = 1200.0;
     p.step_nm = 1.0;
@@ -62,7 +63,7 @@ static void targets_free(protocol *p) {
 }
 
 void protocol_free(protocol *p) {
-    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->ambient, p->substrate, p->history };
+    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->ambient, p->substrate, p->sun, p->history };
     for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
     for (size_t i = 0; i < LIMIT_COATINGS; i++) free(p->coatings[i].material);
     targets_free(p);
@@ -201,6 +202,41 @@ static status read_coating(const reader *r, const cJSON *item, size_t line, prot
     return replace(r, &c->material, material_text(r, name));
 }
 
+static status read_rear_part(const reader *r, const cJSON *child, rear_side *rear) {
+    static const char *const words[] = { "thickness_um", "rear_reflectance", "lambertian" };
+    int number = cJSON_IsNumber(child);
+    double v = number ? child->valuedouble : 0.0;
+    if (strcmp(child->string, words[0]) == 0) {
+        if (!number || !(v >= 1.0 && v <= 1e4))
+            return wrong(r, line_of(r, child), "optics.rear.thickness_um", child, "a number from 1 to 10000 (um)");
+        rear->thickness_um = v;
+    } else if (strcmp(child->string, words[1]) == 0) {
+        if (cJSON_IsNull(child)) return ST_OK;
+        if (!number || !(v >= 0.0 && v <= 1.0))
+            return wrong(r, line_of(r, child), "optics.rear.rear_reflectance", child, "a share from 0 to 1");
+        rear->rear_reflectance = v;
+    } else if (strcmp(child->string, words[2]) == 0) {
+        if (!cJSON_IsBool(child)) return wrong(r, line_of(r, child), "optics.rear.lambertian", child, "true or false");
+        rear->lambertian = cJSON_IsTrue(child) ? 1 : 0;
+    } else
+        return unknown(r, child, "optics.rear", words, 3);
+    return ST_OK;
+}
+
+static status read_rear(const reader *r, const cJSON *node, const protocol_key *k) {
+    rear_side rear = { 0.0, MISSING, 1 };
+    const cJSON *child;
+    if (cJSON_IsNumber(node)) rear.thickness_um = node->valuedouble;
+    else if (!cJSON_IsObject(node)) return wrong_value(r, node, k);
+    else cJSON_ArrayForEach(child, node) {
+        status st = read_rear_part(r, child, &rear);
+        if (st != ST_OK) return st;
+    }
+    if (!(rear.thickness_um >= 1.0 && rear.thickness_um <= 1e4)) return wrong_value(r, node, k);
+    r->p->rear = rear;
+    return ST_OK;
+}
+
 static status read_coatings(const reader *r, const cJSON *node, const protocol_key *k) {
     const cJSON *item;
     if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) > LIMIT_COATINGS) return wrong_value(r, node, k);
@@ -310,6 +346,8 @@ static status read_key(const reader *r, const cJSON *node, const protocol_key *k
         return read_band(r, node, k);
     case KEY_COATINGS:
         return read_coatings(r, node, k);
+    case KEY_REAR:
+        return read_rear(r, node, k);
     case KEY_TARGETS:
         return read_targets(r, node, k);
     }
@@ -389,7 +427,8 @@ static cJSON *option_value(const protocol_key *k, const char *text) {
     char *head = mem_text_n(text, colon ? (size_t)(colon - text) : strlen(text));
     cJSON *v = NULL;
     if (!head) return NULL;
-    int takes_number = k->kind == KEY_NUMBER || k->kind == KEY_SHAPE || k->kind == KEY_MATERIAL;
+    int takes_number = k->kind == KEY_NUMBER || k->kind == KEY_SHAPE || k->kind == KEY_MATERIAL ||
+                       k->kind == KEY_REAR;
     if (k->kind == KEY_BAND && colon && number_parse(head, &lo) && number_parse(colon + 1, &hi))
         v = cJSON_CreateDoubleArray((const double[]){ lo, hi }, 2);
     else if (k->kind == KEY_COATINGS && colon && number_parse(colon + 1, &hi)) {

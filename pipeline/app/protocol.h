@@ -34,6 +34,9 @@ typedef struct {
     protocol_coating coatings[LIMIT_COATINGS]; /* outermost first */
     size_t n_coatings;
     char *substrate;
+    char *sun; /* CSV path, usable from here; NULL: AM1.5G */
+    sun_weight weight;
+    rear_side rear; /* thickness 0: none */
     mixing mixing;
     optics_choice model;
     double facet_angle_deg; /* NAN: from height and spacing */

@@ -26,13 +26,17 @@ static const char *model_word(int i) {
     static const char *const words[] = { "graded", "facets", "auto" }; /* optics_choice */
     return pick(words, 3, i);
 }
+static const char *weight_word(int i) {
+    static const char *const words[] = { "photons", "energy" }; /* sun_weight */
+    return pick(words, 2, i);
+}
 static const char *polarization_word(int i) {
     return i >= POL_MEAN && i <= POL_P ? polarization_name((polarization)i) : NULL;
 }
 
 /* Enums and switches are read and written as int. */
 _Static_assert(sizeof(relief) == sizeof(int) && sizeof(spacing_choice) == sizeof(int) &&
-                   sizeof(mixing) == sizeof(int) && sizeof(optics_choice) == sizeof(int) && sizeof(polarization) == sizeof(int),
+                   sizeof(mixing) == sizeof(int) && sizeof(optics_choice) == sizeof(int) && sizeof(sun_weight) == sizeof(int) && sizeof(polarization) == sizeof(int),
                "enum members must have the size of int");
 
 #define AT(member) offsetof(protocol, member)
@@ -107,6 +111,9 @@ const protocol_key protocol_keys[] = {
     WORD("optics", "polarization", polarization, polarization_word, 0, "mean is unpolarised light"),
     SWITCH("optics", "hemispherical", hemispherical, "true: diffuse light from the whole half space; the angle is then unused"),
     { "optics", "band_nm", KEY_BAND, AT(band_lo_nm), "nm", 100, 20000, 0, NULL, 0, "wavelengths over which reflectance is weighted" },
+    PATH("optics", "sun", sun, "your own sun or lamp: CSV with wavelength_nm and irradiance_W_m2_nm, relative to this file; null: AM1.5G (ASTM G173-03)"),
+    WORD("optics", "weight", weight, weight_word, 0, "weighted reflectance counts photons (what a current sees) or energy"),
+    { "optics", "rear", KEY_REAR, AT(rear), "", 0, 0, 0, NULL, 0, "light returning from the rear, for comparing with a spectrometer beyond 1000 nm: { \"thickness_um\": 170, \"rear_reflectance\": 0.9, \"lambertian\": true }; null: front surface only; without rear_reflectance the rear is bare" },
     NUMBER("optics", "step_nm", step_nm, "nm", 0.1, 50, "grid of the spectrum"),
 };
 /* clang-format on */
@@ -187,6 +194,10 @@ void key_expected(const protocol_key *k, textbuf *out) {
         break;
     case KEY_COATINGS:
         text_addf(out, "a list of at most %d { \"material\": ..., \"thickness_nm\": ... }", LIMIT_COATINGS);
+        break;
+    case KEY_REAR:
+        text_add(out, "an object of thickness_um (1 to 10000), rear_reflectance (0 to 1) and lambertian (true, false), or a "
+                      "thickness in um");
         break;
     case KEY_TARGETS:
         text_add(out, "an object of { \"min\": ..., \"max\": ... } by quantity");

@@ -13,6 +13,7 @@ typedef enum {
     KEY_SHAPE,    /* double exponent, or the words cone and paraboloid */
     KEY_BAND,     /* two doubles one after the other: [lo, hi] */
     KEY_COATINGS, /* the coatings of a protocol */
+    KEY_REAR,     /* the rear side of the wafer */
     KEY_TARGETS   /* the targets of a protocol */
 } key_kind;
 

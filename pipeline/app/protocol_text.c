@@ -37,6 +37,10 @@ static void canonical_key(const protocol *p, const protocol_key *k, textbuf *out
                       material_is_path(p->coatings[i].material) ? "file" : p->coatings[i].material,
                       number_text(p->coatings[i].thickness_nm, 17, number));
         break;
+    case KEY_REAR:
+        text_addf(out, "%s;", number_text(p->rear.thickness_um, 17, number));
+        text_addf(out, "%s;%d", number_text(p->rear.rear_reflectance, 17, number), p->rear.lambertian);
+        break;
     case KEY_TARGETS:
         for (size_t i = 0; i < p->n_targets; i++) {
             text_addf(out, "%s:%s..", p->targets[i].quantity, number_text(p->targets[i].min, 17, number));
@@ -60,8 +64,8 @@ void protocol_full_text(const protocol *p, textbuf *out) {
     }
 }
 
-/* The value as JSON, as a protocol would state it. Only used for the built-in one: no coatings, no targets.
- */
+/* The value as JSON, as a protocol would state it. Only used for the built-in one: no coatings, no targets, no
+ * rear. */
 static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
     char number[NUMBER_TEXT];
     switch (k->kind) {
@@ -88,6 +92,9 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
         break;
     case KEY_COATINGS:
         text_add(out, "[]");
+        break;
+    case KEY_REAR:
+        text_add(out, "null");
         break;
     case KEY_TARGETS:
         text_add(out, "{}");
@@ -261,7 +268,13 @@ static void explain_optics(const protocol *p, textbuf *out) {
               p->polarization == POL_MEAN ? "unpolarised"
               : p->polarization == POL_S  ? "polarised s"
                                           : "polarised p");
-    text_add(out, "Reflectance is weighted with the photons of the sun from ");
+    if (p->rear.thickness_um > 0.0) {
+        text_add(out, "Light returning from the rear of a wafer of ");
+        say(out, p->rear.thickness_um, "um");
+        text_addf(out, " is added, %s.\n", p->rear.lambertian ? "scattered inside (Lambertian)" : "in a straight double pass");
+    }
+    text_addf(out, "Reflectance is weighted with the %s of %s from ",
+              p->weight == WEIGHT_ENERGY ? "energy" : "photons", p->sun ? p->sun : "the sun (AM1.5G)");
     say(out, p->band_lo_nm, "to ");
     say(out, p->band_hi_nm, "nm, on a grid of ");
     say(out, p->step_nm, "nm.\n");

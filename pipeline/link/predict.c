@@ -2,7 +2,7 @@
  *
  * The plain value is the graded index on the grid asked for; everything that moves an input runs on a 10 nm grid
  * (weighted R within 2e-5 of the fine one). Which model serves, if any: route.c.
- * What this file does not do: light that returns from the rear of the wafer. */
+ * Light that returns from the rear of the wafer: rear.c. */
 #include "link/predict.h"
 
 #include <math.h>
@@ -35,6 +35,14 @@ static status grid_make(double lo, double hi, double step, double tolerance, gri
 
 status photon_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e) {
     return sun_weighted(o->sun, g->wavelength_nm, y, g->n, o->band_lo_nm, o->band_hi_nm, mean, e);
+}
+
+status current_of(const optics_setup *o, const grid *g, const double *R, double *mA_cm2, error *e) {
+    double all = 0.0, mean = 0.0;
+    status st = sun_photon_mean(o->sun, g->wavelength_nm, R, g->n, o->band_lo_nm, o->band_hi_nm, &mean, e);
+    if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &all, e);
+    if (st == ST_OK) *mA_cm2 = mean * all;
+    return st;
 }
 
 /* ---- stacks ---- */
@@ -155,8 +163,7 @@ static void say(prediction *out, const surface_input *in, const optics_setup *o,
         }
         say_interval(&t, in, o);
     }
-    if (!out->refused && o->band_hi_nm > 1000.0)
-        text_add(&t, " Front surface only: light returning from the rear beyond about 1000 nm is not included.");
+    if (!out->refused) rear_say(o, out, &t);
     size_t n = t.n < sizeof out->note - 1 ? t.n : sizeof out->note - 1;
     if (!t.failed && t.s) memcpy(out->note, t.s, n);
     out->note[t.failed ? 0 : n] = '\0';
@@ -211,12 +218,9 @@ static status geometry(const surface_input *in, const optics_setup *o, const var
 
 static status central(const surface_input *in, const optics_setup *o, const variant *v, const grid *fine, prediction *p,
                       error *e) {
-    double current = 0.0;
     status st = variant_spectrum(in, o, v, fine, p->R, &p->slabs, e);
     if (st == ST_OK) st = photon_mean(o, fine, p->R, &p->weighted, e);
-    if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &current, e);
-    if (st == ST_OK) p->current_loss_mA_cm2 = p->weighted * current;
-    return st;
+    return st == ST_OK ? current_of(o, fine, p->R, &p->current_loss_mA_cm2, e) : st;
 }
 
 static void exact(prediction *p) {
@@ -238,7 +242,8 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
     variant v = { .height_nm = texture_height(in), .spacing_nm = in->spacing_nm.value, .exponent = in->link.exponent,
                   .level_at_tips = in->link.level_at_tips, .mixing = o->mixing };
     prediction p = { .weighted = MISSING, .weighted_lo = MISSING, .weighted_hi = MISSING, .polished = MISSING,
-                     .current_loss_mA_cm2 = MISSING, .coated = MISSING, .model = "graded" };
+                     .current_loss_mA_cm2 = MISSING, .coated = MISSING, .rear_escape = MISSING,
+                     .model = "graded" };
     grid fine = { 0 }, coarse = { 0 };
     int planar = !(v.height_nm > 0.0);
     route r = { 0 };
@@ -260,6 +265,7 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
         if (st == ST_OK && planar) exact(&p);
         else if (st == ST_OK) st = interval_fill(in, o, &v, &coarse, &p, e);
     }
+    if (st == ST_OK && !p.refused) st = rear_add(in, o, &v, &fine, r.facets, &p, e);
     if (st == ST_OK) {
         say(&p, in, o, &r, planar);
         *out = p;

@@ -2,6 +2,7 @@
 #ifndef SWARD_LINK_PREDICT_H
 #define SWARD_LINK_PREDICT_H
 #include "link/surface.h"
+#include "optics/escape.h"
 #include "optics/reflectance.h"
 #include "optics/trust.h"
 
@@ -21,6 +22,7 @@ typedef struct {
     double band_lo_nm, band_hi_nm; /* 300..1200 */
     double step_nm;                /* grid of the spectrum, 1 */
     optics_choice model;           /* auto: graded inside its validity, else facets where steep enough, else refused */
+    rear_side rear;                /* thickness 0: front surface only */
     double facet_angle_deg;        /* of the facets; not above 0: from height and spacing (optics/facets.h) */
 } optics_setup;
 
@@ -41,6 +43,7 @@ typedef struct {
     double current_loss_mA_cm2;
     double polished, coated;       /* references, same ambient, angle and polarization */
     order_shares shares;           /* NAN when spacing is unknown */
+    double rear_escape;            /* of the weighted value, from the rear; NAN: front surface only */
     double area_ratio, aspect;
     const char *model;             /* "graded", "facets", or "none" when refused */
     char note[960];                /* which model and why, what the interval holds, what is outside validity */

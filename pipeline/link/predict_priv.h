@@ -43,6 +43,16 @@ status facets_fill(const surface_input *in, const optics_setup *o, const route *
 /* The sentences on the choice. */
 void route_say(const route *r, const surface_input *in, const optics_setup *o, textbuf *t);
 
+/* Adds what returns from the rear to spectrum, interval, weighted value and current; nothing without a rear.
+ * err as reflectance() */
+status rear_add(const surface_input *in, const optics_setup *o, const variant *v, const grid *fine, int facets,
+                prediction *out, error *e);
+/* The sentence on it: included or not. */
+void rear_say(const optics_setup *o, const prediction *p, textbuf *t);
+
+/* Current that a spectrum costs, by photon flux. */
+status current_of(const optics_setup *o, const grid *g, const double *R, double *mA_cm2, error *e);
+
 /* A number for a sentence: two digits, but never fewer than stand before the point; shown[NUMBER_TEXT]. */
 const char *rough_text(double v, char *shown);
 

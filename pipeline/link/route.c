@@ -136,7 +136,6 @@ status facets_fill(const surface_input *in, const optics_setup *o, const route *
                 .flat = { .ambient = o->ambient, .coatings = o->coatings, .n_coatings = o->n_coatings,
                           .substrate = o->substrate } };
     facet_path path;
-    double current = 0.0;
     facets_path(r->angle_deg, &path);
     double *block = mem_array(3 * g->n, sizeof *block);
     if (!block) return NO_MEMORY(e, "the reflectance of facets");
@@ -144,8 +143,7 @@ status facets_fill(const surface_input *in, const optics_setup *o, const route *
     w.up2 = block + g->n;
     w.down2 = block + 2 * g->n;
     status st = evaluate(&w, &path, out->R, &out->weighted, e);
-    if (st == ST_OK) st = sun_current(o->sun, o->band_lo_nm, o->band_hi_nm, &current, e);
-    if (st == ST_OK) out->current_loss_mA_cm2 = out->weighted * current;
+    if (st == ST_OK) st = current_of(o, g, out->R, &out->current_loss_mA_cm2, e);
     if (st == ST_OK && r->beyond > 0.5) {
         st = add_ends(&w, in, r, out, e);
         for (size_t i = 0; i < g->n && st == ST_OK; i++) {

@@ -2,12 +2,11 @@
  * irradiance is linear (ASTM G173-03 states it so finely, 0.5 nm below 400 nm and 1 nm above, that the rule
  * matters below 1e-5). A photon carries h c / wavelength, so the flux is irradiance x wavelength / (h c).
  * Integrals are trapezoids on the nodes of the sun inside the band plus the band's two ends; the spectrum y
- * is read off linearly there. */
+ * is read off linearly there. A spectrum of sunlight with far nodes is filled up to 1 nm when it is made. */
 #include "optics/sun.h"
 
 #include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
 #include "base/mem.h"
 #include "base/number.h"
@@ -23,6 +22,11 @@ void sun_free(sun *s) {
     *s = (sun){ 0 };
 }
 
+/* Steps of at most 1 nm between two nodes (a little slack keeps tables on 1 nm as they are; 100 um hold the rest). */
+static size_t pieces(double gap_nm) {
+    return (size_t)fmin(1e5, fmax(1.0, ceil(gap_nm - 1e-6)));
+}
+
 status sun_make(sun *s, const char *source, size_t n, const double *wavelength_nm, const double *irradiance,
                 error *e) {
     if (n < 2) return fail(e, ST_BAD_INPUT, "a solar spectrum needs at least two wavelengths, found %zu", n);
@@ -35,16 +39,25 @@ status sun_make(sun *s, const char *source, size_t n, const double *wavelength_n
             return fail(e, ST_BAD_INPUT,
                         "solar spectrum, wavelength %zu: the irradiance has to be 0 or above", i + 1);
     }
-    sun a = { .source = mem_text(source ? source : ""),
-              .n = n,
-              .wavelength_nm = mem_array(n, sizeof(double)),
-              .irradiance = mem_array(n, sizeof(double)) };
+    sun a = { .source = mem_text(source ? source : "") };
+    size_t filled = 1;
+    for (size_t i = 1; i < n; i++) filled += pieces(wavelength_nm[i] - wavelength_nm[i - 1]);
+    a.wavelength_nm = mem_array(filled, sizeof(double));
+    a.irradiance = mem_array(filled, sizeof(double));
     if (!a.source || !a.wavelength_nm || !a.irradiance) {
         sun_free(&a);
         return NO_MEMORY(e, "the solar spectrum");
     }
-    memcpy(a.wavelength_nm, wavelength_nm, n * sizeof(double));
-    memcpy(a.irradiance, irradiance, n * sizeof(double));
+    for (size_t i = 0; i + 1 < n; i++) {
+        size_t steps = pieces(wavelength_nm[i + 1] - wavelength_nm[i]);
+        for (size_t k = 0; k < steps; k++) {
+            double t = (double)k / (double)steps;
+            a.wavelength_nm[a.n] = (1.0 - t) * wavelength_nm[i] + t * wavelength_nm[i + 1];
+            a.irradiance[a.n++] = (1.0 - t) * irradiance[i] + t * irradiance[i + 1];
+        }
+    }
+    a.wavelength_nm[a.n] = wavelength_nm[n - 1];
+    a.irradiance[a.n++] = irradiance[n - 1];
     *s = a;
     return ST_OK;
 }
@@ -69,8 +82,8 @@ static double read_on(const double *x, const double *y, size_t n, double place, 
     return (1.0 - t) * y[*at] + t * y[*at + 1];
 }
 
-/* Integrals over the band of the photon flux (times h c) and of flux times y. */
-static void integrate(const sun *s, const double *w, const double *y, size_t n, double lo, double hi,
+/* Integrals over the band of the photon flux (times h c), or of the irradiance, and of it times y. */
+static void integrate(const sun *s, sun_weight weight, const double *w, const double *y, size_t n, double lo, double hi,
                       double *flux, double *flux_y) {
     size_t sun_at = 0, y_at = 0, next = 0;
     double x0 = 0.0, f0 = 0.0, g0 = 0.0;
@@ -79,7 +92,7 @@ static void integrate(const sun *s, const double *w, const double *y, size_t n, 
     for (int first = 1, last = 0; !last; first = 0) {
         double x = first ? lo : (next < s->n && s->wavelength_nm[next] < hi) ? s->wavelength_nm[next++] : hi;
         last = !first && x >= hi;
-        double f = read_on(s->wavelength_nm, s->irradiance, s->n, x, &sun_at) * x;
+        double f = read_on(s->wavelength_nm, s->irradiance, s->n, x, &sun_at) * (weight == WEIGHT_ENERGY ? 1.0 : x);
         double g = f * read_on(w, y, n, x, &y_at);
         if (!first) {
             *flux += 0.5 * (f + f0) * (x - x0);
@@ -89,8 +102,8 @@ static void integrate(const sun *s, const double *w, const double *y, size_t n, 
     }
 }
 
-status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, size_t n, double lo_nm,
-                    double hi_nm, double *mean, error *e) {
+static status mean_over(const sun *s, sun_weight weight, const double *wavelength_nm, const double *y, size_t n,
+                        double lo_nm, double hi_nm, double *mean, error *e) {
     status st = check_band(s->wavelength_nm, s->n, lo_nm, hi_nm, "the solar spectrum", e);
     if (!st) st = check_band(wavelength_nm, n, lo_nm, hi_nm, "the spectrum to be weighted", e);
     if (st) return st;
@@ -99,10 +112,20 @@ status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, 
             return fail(e, ST_BAD_INPUT,
                         "the wavelengths of the spectrum to be weighted do not ascend at number %zu", i + 1);
     double flux, flux_y;
-    integrate(s, wavelength_nm, y, n, lo_nm, hi_nm, &flux, &flux_y);
+    integrate(s, weight, wavelength_nm, y, n, lo_nm, hi_nm, &flux, &flux_y);
     if (!(flux > 0.0)) return fail(e, ST_BAD_INPUT, "the solar spectrum holds no light in the band");
     *mean = flux_y / flux;
     return ST_OK;
+}
+
+status sun_weighted(const sun *s, const double *wavelength_nm, const double *y, size_t n, double lo_nm, double hi_nm,
+                    double *mean, error *e) {
+    return mean_over(s, s->weight, wavelength_nm, y, n, lo_nm, hi_nm, mean, e);
+}
+
+status sun_photon_mean(const sun *s, const double *wavelength_nm, const double *y, size_t n, double lo_nm, double hi_nm,
+                       double *mean, error *e) {
+    return mean_over(s, WEIGHT_PHOTONS, wavelength_nm, y, n, lo_nm, hi_nm, mean, e);
 }
 
 status sun_current(const sun *s, double lo_nm, double hi_nm, double *mA_cm2, error *e) {
@@ -110,7 +133,7 @@ status sun_current(const sun *s, double lo_nm, double hi_nm, double *mA_cm2, err
     if (st) return st;
     const double ends[] = { lo_nm, hi_nm }, all[] = { 1.0, 1.0 };
     double flux, unused;
-    integrate(s, ends, all, 2, lo_nm, hi_nm, &flux, &unused);
+    integrate(s, WEIGHT_PHOTONS, ends, all, 2, lo_nm, hi_nm, &flux, &unused);
     /* W m-2 nm-1 x nm x nm: one nm to m from the wavelength; A m-2 to mA cm-2 is 0.1 */
     *mA_cm2 = flux * 1e-9 * CHARGE_C / (PLANCK_J_S * LIGHT_M_S) * 0.1;
     return ST_OK;

@@ -62,6 +62,37 @@ says "$out" silicon alumina nitride "M. A. Green"
 run 0 predict --spacing 3000 --height 300 --json
 checks=$((checks + 1)); ! grep -q '"note": ""' "$out" || miss "a coarse texture needs its note"
 
+# Own sun and weight. Polished silicon by energy: 0.364426 (independent). A sun of two far nodes at 600 nm sees R there.
+run 0 predict --height 0 --weight energy --json
+near weighted_reflectance 0.364426 1e-5
+near current_loss_mA_cm2 16.25 5e-3
+printf 'wavelength_nm,irradiance_W_m2_nm\n250,0\n599,0\n600,1\n601,0\n1300,0\n' >"$work/lamp.csv"
+run 0 predict --height 0 --sun "$work/lamp.csv" --json
+near weighted_reflectance 0.35420 1e-4
+printf 'wavelength_nm,irradiance_W_m2_nm\n250,0\n200,1\n' >"$work/back.csv"
+run 2 predict --height 0 --sun "$work/back.csv"
+says "$err" "back.csv" "ascend"
+run 2 predict --height 0 --sun "$work/gone.csv"
+run 2 predict --height 0 --weight lumen
+says "$err" '"photons", "energy"'
+# The rear: off by default and said, on: more beyond 1000 nm only.
+run 0 predict --height 0 --json
+says "$out" '"rear_escape": null'
+run 0 predict --spacing 350 --height 350 --json
+says "$out" "Front surface only"
+run 0 predict --spacing 350 --height 350 --rear 170 --json
+says "$out" "returning from the rear of a wafer of 170 um is included"
+run 0 predict --spacing 350 --height 350 --rear 170 --band 300:900 --json
+near rear_escape 0 1e-5
+run 2 predict --height 0 --rear 0
+says "$err" "thickness_um (1 to 10000)"
+printf '{ "optics": { "rear": { "thickness_um": 180, "rear_reflectance": 1.5 } } }' >"$work/rear.json"
+run 2 predict --height 0 --protocol "$work/rear.json"
+says "$err" "optics.rear.rear_reflectance: found 1.5, expected a share from 0 to 1"
+printf '{ "optics": { "rear": { "thickness_um": 180, "rear_reflectance": 0.9, "lambertian": false } } }' >"$work/rear.json"
+run 0 predict --height 0 --protocol "$work/rear.json"
+says "$out" "straight double pass" "the rear reflects 90 %"
+
 # Micrometre pyramids go by geometric optics: two bounces leave 0.12703 of bare silicon, 0.02262 under the nitride (Campbell, Green
 # 1987 for the geometry, Green 2008 for silicon); the ninth that meets a third facet lowers both a little.
 run 0 predict --spacing 5000 --height 3535.5 --json
