@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "app/angles.h"
 #include "app/command.h"
 #include "app/materials.h"
 #include "base/number.h"
@@ -26,6 +27,8 @@ enum {
     OPT_SUBSTRATE,
     OPT_AMBIENT,
     OPT_ANGLE,
+    OPT_ANGLES,
+    OPT_LIMIT,
     OPT_POLARIZATION,
     OPT_HEMISPHERICAL,
     OPT_BAND,
@@ -57,6 +60,8 @@ static const struct argp_option predict_options[] = {
     { "model",         OPT_MODEL,         "MODEL",    0, "graded (index), facets (geometric optics), or auto (default): whichever is valid", 0 },
     { "facet-angle",   OPT_FACET_ANGLE,   "DEG",      0, "inclination of the facets, 54.74 for alkaline pyramids (default: from height and spacing)", 0 },
     { "angle",         OPT_ANGLE,         "DEG",      0, "angle of incidence in air (default: 0)", 0 },
+    { "angles",        OPT_ANGLES,        "FROM:TO:STEP", 0, "weighted reflectance against the angle, s, p and unpolarised, such as 0:80:5", 0 },
+    { "limit",         OPT_LIMIT,         "R",        0, "with --angles: up to which angle the reflectance stays at or below this, such as 0.02", 0 },
     { "polarization",  OPT_POLARIZATION,  "P",        0, "mean (default, unpolarised), s or p", 0 },
     { "hemispherical", OPT_HEMISPHERICAL, NULL,       0, "diffuse light from the whole half space", 0 },
     { "band",          OPT_BAND,          "LO:HI",    0, "wavelengths for the weighting, nm (default: 300:1200)", 0 },
@@ -93,7 +98,7 @@ typedef struct {
         const char *text;
     } given[MAX_GIVEN];
     size_t n_given;
-    const char *spacing, *height, *protocol;
+    const char *spacing, *height, *protocol, *angles, *limit;
     int pores;
     output as;
 } request;
@@ -109,6 +114,12 @@ static error_t predict_option(int key, char *arg, struct argp_state *state) {
         break;
     case OPT_PROTOCOL:
         q->protocol = arg;
+        break;
+    case OPT_ANGLES:
+        q->angles = arg;
+        break;
+    case OPT_LIMIT:
+        q->limit = arg;
         break;
     case OPT_PORES:
         q->pores = 1;
@@ -360,6 +371,27 @@ static void print_text(const surface_input *in, const protocol *p, const predict
     if (r->note[0]) text_addf(out, "\n%s\n", r->note);
 }
 
+/* The sweep over angles instead of one prediction. */
+static status predict_angles(const request *q, const surface_input *in, const optics_setup *o, textbuf *out, error *e) {
+    angle_sweep s = { 0 };
+    double from, to, step, limit = MISSING;
+    static const int clash[] = { OPT_ANGLE, OPT_POLARIZATION, OPT_HEMISPHERICAL };
+    for (size_t i = 0; i < sizeof clash / sizeof clash[0]; i++)
+        if (given(q, clash[i]))
+            return fail(e, ST_BAD_INPUT, "--%s: --angles already says which light; take one of the two out",
+                        option_name(clash[i]));
+    status st = angles_parse("--angles", q->angles, &from, &to, &step, e);
+    if (st == ST_OK && q->limit && !(number_parse(q->limit, &limit) && limit > 0.0 && limit <= 1.0))
+        st = fail(e, ST_BAD_INPUT, "--limit: found %.40s, expected a reflectance above 0 and at most 1, such as 0.02", q->limit);
+    if (st == ST_OK) st = angles_sweep(in, o, from, to, step, &s, e);
+    if (st != ST_OK) return st;
+    if (q->as == AS_JSON) angles_json(&s, limit, out);
+    else if (q->as == AS_CSV) angles_csv(&s, out);
+    else angles_text(&s, limit, out);
+    angle_sweep_free(&s);
+    return ST_OK;
+}
+
 static status predict_all(const request *q, textbuf *out, error *e) {
     protocol p = { 0 };
     setup s = { 0 };
@@ -369,6 +401,12 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     if (st == ST_OK) st = apply_options(q, &p, e);
     if (st == ST_OK) st = setup_make(&p, &s, e);
     if (st == ST_OK) st = surface_of(q, &p, &s, &in, e);
+    if (st == ST_OK && q->limit && !q->angles)
+        st = fail(e, ST_BAD_INPUT, "--limit: it needs --angles, such as 0:80:5");
+    if (st == ST_OK && q->angles) {
+        st = predict_angles(q, &in, &s.optics, out, e);
+        goto done;
+    }
     if (st == ST_OK) st = predict(&in, &s.optics, &r, e);
     if (st != ST_OK) goto done;
     if (q->as == AS_JSON)

@@ -93,6 +93,24 @@ printf '{ "optics": { "rear": { "thickness_um": 180, "rear_reflectance": 0.9, "l
 run 0 predict --height 0 --protocol "$work/rear.json"
 says "$out" "straight double pass" "the rear reflects 90 %"
 
+# Cones of 350 nm against the angle, computed independently: weighted 0.0299, 0.0413, 0.0846, 0.185 at 45, 50, 60, 70 degrees.
+run 0 predict --spacing 300 --height 350 --angles 0:70:5 --limit 0.0299 --csv
+says "$out" "angle_deg,weighted_reflectance_s,weighted_reflectance_p,weighted_reflectance,weighted_reflectance_lo,weighted_reflectance_hi"
+for pair in 45:0.0299 50:0.0413 60:0.0846 70:0.185; do
+    at=$(awk -F, -v a="${pair%:*}" '$1 == a { print $4 }' "$out")
+    checks=$((checks + 1)); awk -v g="$at" -v w="${pair#*:}" 'BEGIN { exit !(g - w < 3e-4 && w - g < 3e-4) }' || miss "angle $pair: $at"
+done
+run 0 predict --spacing 300 --height 350 --angles 0:70:5 --limit 0.0299 --json
+near angle_under_limit_deg 45 0.1
+run 0 predict --spacing 300 --height 350 --angles 0:10:10 --limit 0.0001
+says "$out" "Above 0.01 % already at the first angle"
+run 2 predict --spacing 300 --height 350 --angles 0:95:5
+says "$err" "--angles: found 0:95:5, expected FROM:TO:STEP"
+run 2 predict --spacing 300 --height 350 --angles 0:40
+run 2 predict --spacing 300 --height 350 --angles 0:40:5 --angle 3
+run 2 predict --spacing 300 --height 350 --limit 0.02
+says "$err" "--limit: it needs --angles"
+
 # Micrometre pyramids go by geometric optics: two bounces leave 0.12703 of bare silicon, 0.02262 under the nitride (Campbell, Green
 # 1987 for the geometry, Green 2008 for silicon); the ninth that meets a third facet lowers both a little.
 run 0 predict --spacing 5000 --height 3535.5 --json
