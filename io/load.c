@@ -151,6 +151,7 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
     status st = decode(bytes, n, o->max_pixels, &p, e);
     if (st != ST_OK) goto done;
     find_true_levels(&p);
+    if (path) sidecar_read(path, &p);
     r.file_nx = r.nx = p.nx;
     r.file_ny = p.ny;
     r.strip_rows = o->crop_strip ? strip_rows(&p) : 0;
@@ -167,7 +168,6 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
     sha256_hex(bytes, n, r.hash);
     scales_add(&p.scales, SCALE_OPTION, "option", o->px_nm_option, o->px_nm_option);
     scales_add(&p.scales, SCALE_SHEET, "sheet", o->px_nm_sheet, o->px_nm_sheet);
-    if (path) sidecar_read(path, &p.scales);
     pixelsize_choose(&p.scales, o->px_u_rel, &r);
     judge_tilt(o, &r);
     if (fabs(r.y_stretch - 1.0) >= worth_correcting)

@@ -11,12 +11,16 @@
 #include "io/utf8_priv.h"
 
 void scales_add(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm) {
+    scales_add_u(s, rank, name, x_nm, y_nm, (double)NAN);
+}
+
+void scales_add_u(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm, double u_rel) {
     if (isnan(y_nm)) y_nm = x_nm;
     size_t room =
         rank <= SCALE_SIDECAR ? MAX_SCALES : MAX_SCALES - 4; /* the file never crowds the user out */
     if (s->n >= room || !(x_nm > 0.0) || !(y_nm > 0.0) || !isfinite(x_nm) || !isfinite(y_nm)) return;
     scale *k = &s->list[s->n++];
-    *k = (scale){ .rank = rank, .x_nm = x_nm, .y_nm = y_nm, .u_rel = (double)NAN };
+    *k = (scale){ .rank = rank, .x_nm = x_nm, .y_nm = y_nm, .u_rel = u_rel };
     snprintf(k->name, sizeof k->name, "%s", name);
 }
 

@@ -39,6 +39,8 @@ typedef struct {
 
 /* Adds a statement; zero, negative or not finite means "unknown" and is dropped. y_nm NAN: as x. */
 void scales_add(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm);
+/* The same with the relative standard uncertainty the statement itself implies; NAN: none. */
+void scales_add_u(scales *s, scale_rank rank, const char *name, double x_nm, double y_nm, double u_rel);
 /* Appends a sentence, cut at a blank when the room ends. */
 void note_add(char note[MAX_NOTE], const char *fmt, ...) __attribute__((format(printf, 2, 3)));
 

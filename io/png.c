@@ -13,6 +13,7 @@
 #include "base/mem.h"
 #include "io/picture_priv.h"
 #include "io/scaletext_priv.h"
+#include "io/xml_scale_priv.h"
 
 typedef struct {
     const uint8_t *next;
@@ -113,12 +114,20 @@ static void read_scale(png_structp png, png_infop info, picture *p) {
         scales_add(&p->scales, SCALE_RESOLUTION, "pHYs", 1e9 / x, 1e9 / y);
 }
 
+static int is_ome(const char *text) {
+    text += strspn(text, " \t\r\n");
+    return !strncmp(text, "<?xml", 5) || !strncmp(text, "<OME", 4);
+}
+
 static void read_texts(png_structp png, png_infop info, picture *p) {
     png_textp texts = NULL;
     int n = 0;
     png_get_text(png, info, &texts, &n);
     for (int i = 0; i < n; i++)
-        if (texts[i].text) scaletext_keyword(texts[i].key, texts[i].text, &p->scales);
+        if (texts[i].text && is_ome(texts[i].text))
+            ome_read(texts[i].text, strlen(texts[i].text), p->nx, p);
+        else if (texts[i].text)
+            scaletext_keyword(texts[i].key, texts[i].text, &p->scales);
 }
 
 /* Everything that may longjmp. Returns a status; libpng's own errors leave through the jump. */

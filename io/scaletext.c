@@ -88,8 +88,7 @@ double scaletext_unit(const char *s) {
     return 0.0;
 }
 
-/* Splits "12.33 nm/px" into its number and the rest, which starts behind the blanks. */
-static int split_number(const char *s, double *value, const char **rest) {
+int scaletext_split(const char *s, double *value, const char **rest) {
     while (isspace((unsigned char)*s)) s++;
     size_t n = strspn(s, "+-0123456789.,");
     if (n && (s[n] == 'e' || s[n] == 'E') && strspn(s + n + 1, "+-0123456789"))
@@ -102,10 +101,28 @@ static int split_number(const char *s, double *value, const char **rest) {
     return 1;
 }
 
+double scaletext_u_rel(const char *s) {
+    double value;
+    const char *rest;
+    if (!scaletext_split(s, &value, &rest) || !(fabs(value) > 0.0)) return (double)NAN;
+    const char *number = s + strcspn(s, "0123456789.,");
+    size_t n = strspn(number, "0123456789.,");
+    int behind = 0, seen = 0;
+    for (size_t i = 0; i < n; i++)
+        if (number[i] == '.' || number[i] == ',')
+            seen = 1;
+        else
+            behind += seen;
+    double mantissa = 0.0;
+    char text[64];
+    if (copy_trimmed(number, n, text, sizeof text)) (void)scaletext_number(text, &mantissa);
+    return mantissa > 0.0 ? 0.5 * pow(10.0, -behind) / sqrt(3.0) / mantissa : (double)NAN;
+}
+
 int scaletext_length(const char *s, double *nm) {
     double value;
     const char *rest;
-    if (!split_number(s, &value, &rest)) return 0;
+    if (!scaletext_split(s, &value, &rest)) return 0;
     double unit = scaletext_unit(rest);
     *nm = value * unit;
     return unit > 0.0;
@@ -171,7 +188,7 @@ static double value_nm(const char *text, double key_unit, key_kind kind, int *un
     double value;
     const char *rest;
     int inverse = 0;
-    if (!split_number(text, &value, &rest) || !(value > 0.0)) return 0.0;
+    if (!scaletext_split(text, &value, &rest) || !(value > 0.0)) return 0.0;
     double ratio = ratio_unit(rest, &inverse);
     if (ratio > 0.0) return inverse ? ratio / value : ratio * value;
     double unit = kind == KEY_SCALE ? 0.0 : scaletext_unit(rest);

@@ -13,6 +13,13 @@ int scaletext_number(const char *s, double *out);
 /* nm per unit of the length unit that is the whole of s (blanks around allowed), or 0: no length. */
 double scaletext_unit(const char *s);
 
+/* Splits "12.33 nm/px" into its number and the rest, which starts behind the blanks. 0: no number in front. */
+int scaletext_split(const char *s, double *value, const char **rest);
+
+/* Relative standard uncertainty that the digits of the number imply: half a step of the last one, uniform.
+ * NAN: no number. */
+double scaletext_u_rel(const char *s);
+
 /* "12.33 nm" -> nm. 1 and *nm, 0: no number or no length unit. */
 int scaletext_length(const char *s, double *nm);
 

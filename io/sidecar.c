@@ -10,13 +10,18 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/file.h"
+#include "io/instrument_priv.h"
+#include "io/keytext_priv.h"
 #include "io/scaletext_priv.h"
 
-enum { KINDS = 4 };
+enum { KINDS = 6 };
+typedef enum { WHOLE, STEM, DASHED } stem_kind;
 static const struct {
     const char *ending;
-    int whole_name; /* NAME.EXT + ending, else NAME + ending */
-} kinds[KINDS] = { { ".txt", 1 }, { ".txt", 0 }, { ".json", 1 }, { ".json", 0 } };
+    stem_kind stem; /* NAME.EXT, NAME or NAME-EXT in front of the ending */
+    int hdr;
+} kinds[KINDS] = { { ".txt", WHOLE, 0 }, { ".txt", STEM, 0 },   { ".hdr", DASHED, 1 },
+                   { ".hdr", STEM, 1 },  { ".json", WHOLE, 0 }, { ".json", STEM, 0 } };
 
 static int equal_letters_n(const char *a, const char *b, size_t n) {
     for (size_t i = 0; i < n; i++)
@@ -33,54 +38,58 @@ static int is_beside(const char *entry, const char *name, size_t n, const char *
     return !strncmp(entry, name, n) && !strcmp(entry + n, ending) ? 2 : 1;
 }
 
-/* UTF-16 text to its low bytes in place (a scale needs no more than Latin-1); the result is terminated. */
-static void narrow_utf16(char *text, size_t *n) {
-    const unsigned char *p = (const unsigned char *)text;
-    int little = *n >= 2 && ((p[0] == 0xff && p[1] == 0xfe) || (p[0] && !p[1]));
-    int big = *n >= 2 && ((p[0] == 0xfe && p[1] == 0xff) || (!p[0] && p[1]));
-    if (!little && !big) return;
-    size_t k = 0;
-    for (size_t i = p[0] >= 0xfe || p[1] >= 0xfe ? 2 : 0; i + 1 < *n; i += 2) {
-        unsigned code = little ? p[i] | (unsigned)p[i + 1] << 8 : p[i + 1] | (unsigned)p[i] << 8;
-        if (code == 0x3bc) code = 0xb5;
-        if (code) text[k++] = (char)(code < 256 ? code : '?');
-    }
-    text[k] = '\0';
-    *n = k;
+/* Told apart by what stands in it, not by its ending; a .hdr without [MAIN] is a map's or a high-range
+ * picture's, and none of ours. */
+static void read_text(const char *text, size_t n, const char *name, const char *image, int hdr, picture *p) {
+    char value[KEYTEXT_LINE];
+    if (keytext_ini_has(text, "MAIN"))
+        main_block_read(text, SCALE_SIDECAR, "sidecar", p->nx, p->ny, p);
+    else if (hdr)
+        return;
+    else if (keytext_ini_has(text, "SemImageFile") || keytext_ini_has(text, "TemImageFile"))
+        sem_image_file_read(text, image, p->nx, p->ny, p);
+    else if (keytext_dollar(text, "CM_FORMAT", value) || keytext_dollar(text, "CM_MAG", value) ||
+             keytext_dollar(text, "CM_ACCEL_VOLT", value))
+        dollar_block_read(text, p->nx, p);
+    else if (*text == '{')
+        (void)scaletext_json(text, n, SCALE_SIDECAR, "sidecar", name, &p->scales);
+    else
+        (void)scaletext_lines(text, SCALE_SIDECAR, "sidecar", name, &p->scales);
 }
 
-static int read_one(const char *folder, const char *name, scales *s) {
+static int read_one(const char *folder, const char *name, const char *image, int hdr, picture *p) {
     char *path = path_join(folder, name), *text = NULL;
-    size_t n = 0, before = s->n;
+    size_t n = 0, before = p->scales.n;
     error e = { 0 };
     if (!path) return 0;
     if (file_read(path, LIMIT_SIDECAR_BYTES, &text, &n, &e) != ST_OK)
-        note_add(s->note, "Sidecar %.80s %.120s.", name, e.text);
+        note_add(p->scales.note, "Sidecar %.80s %.120s.", name, e.text);
     else {
-        narrow_utf16(text, &n);
+        keytext_narrow(text, &n);
         const char *start = text + (n >= 3 && !memcmp(text, "\xef\xbb\xbf", 3) ? 3 : 0);
         while (isspace((unsigned char)*start)) start++;
-        if (*start == '{')
-            (void)scaletext_json(start, n - (size_t)(start - text), SCALE_SIDECAR, "sidecar", name, s);
-        else
-            (void)scaletext_lines(start, SCALE_SIDECAR, "sidecar", name, s);
+        read_text(start, n - (size_t)(start - text), name, image, hdr, p);
     }
     free(text);
     free(path);
-    return s->n > before;
+    return p->scales.n > before;
 }
 
-void sidecar_read(const char *path, scales *s) {
+void sidecar_read(const char *path, picture *p) {
     const char *slash = strrchr(path, '/'), *name = slash ? slash + 1 : path;
     const char *dot = strrchr(name, '.');
     size_t whole = strlen(name), stem = dot && dot > name ? (size_t)(dot - name) : whole;
     char *folder = slash ? mem_text_n(path, (size_t)(slash - path) + 1) : mem_text(".");
-    char *found[KINDS] = { NULL };
+    char *dashed = mem_text(name), *found[KINDS] = { NULL };
+    if (dashed && stem < whole) dashed[stem] = '-';
     int exact[KINDS] = { 0 };
     DIR *d = folder ? opendir(folder) : NULL;
     for (const struct dirent *entry; d && (entry = readdir(d)) != NULL;)
         for (int k = 0; k < KINDS; k++) {
-            int match = is_beside(entry->d_name, name, kinds[k].whole_name ? whole : stem, kinds[k].ending);
+            int dash = kinds[k].stem == DASHED;
+            if (dash && !dashed) continue;
+            int match = is_beside(entry->d_name, dash ? dashed : name, kinds[k].stem == STEM ? stem : whole,
+                                  kinds[k].ending);
             /* Of names that differ only in case: the exact one, else the first in byte order. */
             if (match > exact[k] ||
                 (match && match == exact[k] && found[k] && strcmp(entry->d_name, found[k]) < 0)) {
@@ -92,8 +101,9 @@ void sidecar_read(const char *path, scales *s) {
     if (d) closedir(d);
     int done = 0;
     for (int k = 0; k < KINDS; k++) {
-        if (found[k] && !done) done = read_one(folder, found[k], s);
+        if (found[k] && !done) done = read_one(folder, found[k], name, kinds[k].hdr, p);
         free(found[k]);
     }
+    free(dashed);
     free(folder);
 }

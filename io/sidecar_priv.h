@@ -3,8 +3,9 @@
 #define SWARD_IO_SIDECAR_PRIV_H
 #include "io/picture_priv.h"
 
-/* Looks beside `path` for NAME.EXT.txt, NAME.txt, NAME.EXT.json, NAME.json (letters of either case) and adds
- * what the first of them that states a size says. A sidecar that cannot be used is named in s->note. */
-void sidecar_read(const char *path, scales *s);
+/* Looks beside `path` for NAME.EXT.txt, NAME.txt, NAME-EXT.hdr, NAME.hdr, NAME.EXT.json, NAME.json (letters of
+ * either case) and adds to the decoded picture what the first of them that states a size says: size, strip
+ * rows, facts. A sidecar that cannot be used is named in p->scales.note. */
+void sidecar_read(const char *path, picture *p);
 
 #endif

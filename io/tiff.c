@@ -207,7 +207,7 @@ status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *o
         goto done;
     }
     best = choose_page(tif[0], &number, &pages);
-    tiff_tags_read(tif[0], best.at, &p);
+    tiff_tags_read(tif[0], best.at, bytes, n, &p);
     s[0].watch = (tiff_watch){ 0 };
     if (!TIFFSetSubDirectory(tif[0], best.at)) {
         st = fail(e, ST_BAD_INPUT, "the TIFF is damaged: page %zu cannot be read", number);

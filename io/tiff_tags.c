@@ -8,10 +8,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "base/mem.h"
 #include "io/scaletext_priv.h"
-
-enum { MAX_BLOCK = 4 << 20 };
+#include "io/xml_scale_priv.h"
 
 /* The unit of a description line `unit=...`; 0 no such line, 1 there is one (*nm 0: it names no length). */
 static int description_unit(const char *text, const char *key, double *nm) {
@@ -30,12 +28,13 @@ static int description_unit(const char *text, const char *key, double *nm) {
     return 0;
 }
 
-static void read_resolution(TIFF *tif, double unit_nm, scale_rank rank, const char *name, picture *p) {
+static void read_resolution(TIFF *tif, double x_nm, double y_nm, scale_rank rank, const char *name,
+                            picture *p) {
     float x = 0.0f, y = 0.0f;
     if (!TIFFGetField(tif, TIFFTAG_XRESOLUTION, &x) || !(x > 0.0f))
         return; /* a denominator of 0 reads as 0 */
     if (!TIFFGetField(tif, TIFFTAG_YRESOLUTION, &y) || !(y > 0.0f)) y = x;
-    scales_add(&p->scales, rank, name, unit_nm / (double)x, unit_nm / (double)y);
+    scales_add(&p->scales, rank, name, x_nm / (double)x, y_nm / (double)y);
 }
 
 static void read_texts(TIFF *tif, picture *p) {
@@ -44,15 +43,14 @@ static void read_texts(TIFF *tif, picture *p) {
     uint16_t unit = RESUNIT_INCH;
     (void)TIFFGetFieldDefaulted(tif, TIFFTAG_RESOLUTIONUNIT, &unit);
     if (!TIFFGetField(tif, TIFFTAG_IMAGEDESCRIPTION, &text) || !text) text = NULL;
-    if (text && description_unit(text, "unit=", &nm)) {
-        read_resolution(tif, nm, SCALE_DESCRIPTION, "description", p);
+    if (text && (description_unit(text, "unit=", &nm) || description_unit(text, "xunit=", &nm))) {
+        double y_nm = nm;
+        (void)description_unit(text, "yunit=", &y_nm);
+        read_resolution(tif, nm, y_nm, SCALE_DESCRIPTION, "description", p);
         return;
     }
-    read_resolution(tif,
-                    unit == RESUNIT_INCH         ? 2.54e7
-                    : unit == RESUNIT_CENTIMETER ? 1e7
-                                                 : 0.0,
-                    SCALE_RESOLUTION, "resolution", p);
+    double per = unit == RESUNIT_INCH ? 2.54e7 : unit == RESUNIT_CENTIMETER ? 1e7 : 0.0;
+    read_resolution(tif, per, per, SCALE_RESOLUTION, "resolution", p);
     if (!text) return;
     const char *first = text + strspn(text, " \t\r\n");
     if (*first == '{')
@@ -70,37 +68,37 @@ static void read_date(TIFF *tif, picture *p) {
     if (n >= 5) picture_set_time(p, y, mo, d, h, mi, s);
 }
 
-/* A copy of a private text tag of this directory, or NULL. */
-static char *private_text(TIFF *tif, uint32_t tag) {
-    const TIFFField *field = TIFFFindField(tif, tag, TIFF_ANY);
-    uint32_t n = 0;
-    void *bytes = NULL;
-    if (!field || !TIFFFieldPassCount(field)) return NULL;
-    TIFFDataType type = TIFFFieldDataType(field);
-    if (type != TIFF_ASCII && type != TIFF_BYTE && type != TIFF_UNDEFINED) return NULL;
-    if (!TIFFGetField(tif, tag, &n, &bytes) || !bytes || n > MAX_BLOCK) return NULL;
-    return mem_text_n(bytes, n);
+static void read_facts(TIFF *tif, picture *p) {
+    char *text = NULL;
+    if (!p->facts.software[0] && TIFFGetField(tif, TIFFTAG_SOFTWARE, &text) && text)
+        picture_set_text(p->facts.software, sizeof p->facts.software, text);
 }
 
-static void read_blocks(TIFF *tif, size_t nx, size_t ny, picture *p) {
-    char *a = private_text(tif, 34118), *b = private_text(tif, 34682);
-    if (a) tag_34118_read(a, nx, p);
-    if (b) tag_34682_read(b, nx, ny, p);
-    free(a);
-    free(b);
+/* OME-XML stands on the first directory, whatever page it speaks of. */
+static void read_ome(TIFF *tif, size_t nx, picture *p) {
+    char *text = NULL;
+    if (!TIFFGetField(tif, TIFFTAG_IMAGEDESCRIPTION, &text) || !text) return;
+    const char *first = text + (!strncmp(text, "\xef\xbb\xbf", 3) ? 3 : 0);
+    first += strspn(first, " \t\r\n");
+    if (*first == '<') ome_read(first, strlen(first), nx, p);
 }
 
-void tiff_tags_read(TIFF *tif, toff_t at, picture *p) {
+void tiff_tags_read(TIFF *tif, toff_t at, const uint8_t *file, size_t n_file, picture *p) {
     uint32_t nx = 0, ny = 0, first_nx = 0;
     if (!TIFFSetSubDirectory(tif, at)) return;
     (void)TIFFGetField(tif, TIFFTAG_IMAGEWIDTH, &nx);
     (void)TIFFGetField(tif, TIFFTAG_IMAGELENGTH, &ny);
+    if (!nx || !ny) return;
     read_texts(tif, p);
     read_date(tif, p);
+    read_facts(tif, p);
     if (!TIFFSetDirectory(tif, 0)) return;
     (void)TIFFGetField(tif, TIFFTAG_IMAGEWIDTH, &first_nx);
-    if (first_nx != nx) return;
-    p->acquired_at[0] = '\0'; /* an instrument's own date outranks that of the export */
-    read_blocks(tif, nx, ny, p);
-    read_date(tif, p);
+    read_ome(tif, nx, p);
+    if (first_nx == nx) {
+        tiff_private_read(tif, nx, ny, p); /* the instrument's own date replaces that of the export */
+        read_date(tif, p);
+        read_facts(tif, p);
+    }
+    tiff_private_table(tif, file, n_file, nx, p);
 }
