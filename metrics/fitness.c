@@ -249,7 +249,7 @@ static double shift_power(const float *f, size_t lines, size_t along, size_t lin
 }
 
 static status line_jitter(const float *f, size_t nx, size_t ny, double d, double *out, error *e) {
-    size_t half = (size_t)(d / 12.0), longer = nx > ny ? nx : ny, shorter = nx < ny ? nx : ny;
+    size_t half = d > 0.0 ? (size_t)(d / 12.0) : 0, longer = nx > ny ? nx : ny, shorter = nx < ny ? nx : ny;
     *out = MISSING;
     if (!(d > 0.0) || shorter < 4 * half + 16) return ST_OK;
     double *buffer = mem_array(4 * longer, sizeof *buffer);

@@ -272,6 +272,22 @@ static void complete_uncertainties(texture *t) {
         t->noise_rel.u_sampling = t->noise_rel.value / sqrt(2.0 * n);
 }
 
+/* A scale that only the second look showed must be that of the features found. Where these keep less distance than
+ * detection itself imposes on random points (Clark-Evans 1.36 to 1.43), their ring tells the detector, not the texture:
+ * no spacing by autocorrelation is given. */
+static void judge_second_look(job *j) {
+    const double nearest = 0.7, farthest = 1.45, random_order = 1.45;
+    texture *t = &j->t;
+    double ratio = t->spacing_hex.value / j->first.scale_px;
+    int scattered = (t->flags & FLAG(WIDE_SIZES)) && t->clark_evans.value < 1.5; /* grain, rims, several things at once */
+    if (!(ratio > nearest && ratio < farthest) || scattered) t->reasons |= FLAG(NO_RING);
+    if (t->clark_evans.value < random_order) {
+        t->spacing_acf = not_measured;
+        t->flags |= FLAG(NO_RING);
+        t->flags &= ~FLAG(CONTRADICTION);
+    }
+}
+
 static void judge(job *j, const sharpness *s) {
     const double low_order = 1.5, known_ratio = 0.15, wide_gsd = 1.35;
     texture *t = &j->t;
@@ -282,9 +298,7 @@ static void judge(job *j, const sharpness *s) {
     if (fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > known_ratio)
         t->flags |= FLAG(CONTRADICTION);
     if (t->size_gsd.value > wide_gsd) t->flags |= FLAG(WIDE_SIZES);
-    /* A scale that only the second look showed must lead to a texture that agrees with itself. */
-    if (j->second_look && (t->flags & (FLAG(CONTRADICTION) | FLAG(WIDE_SIZES) | FLAG(RELIEF_UNSURE))))
-        t->reasons |= FLAG(NO_RING);
+    if (j->second_look) judge_second_look(j);
 }
 
 static status run(job *j, error *e) {

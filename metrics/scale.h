@@ -3,12 +3,13 @@
 #define SWARD_METRICS_SCALE_H
 #include "metrics/spacing.h"
 
-/* A texture with islands, voids or a broad mixture of sizes has brightness that varies over many spacings;
- * its plain autocorrelation then has no significant trough although the spacing is plain to see. This looks
- * at the picture without what is wider than a length, for a row of lengths, and accepts a trough that stays
- * where it is while the length grows. (The trough of noise or of randomly placed features moves with the
- * length.) in  f flattened; min_z significance that is asked for out first_minimum_px, scale_px and z of the
- * trough; NAN, NAN, 0 when there is none err ST_NO_MEMORY */
+/* A weakly ordered texture, or one with islands, voids or a broad mixture of sizes, has brightness that varies over
+ * many spacings; its plain autocorrelation then has no significant trough although the spacing is plain to see. This
+ * looks at the picture without what is wider than a length, for a row of lengths, and takes the length at which the
+ * trough is deepest.
+ *   in   f flattened; min_z significance that is asked for
+ *   out  first_minimum_px, scale_px and z of the trough; NAN, NAN, 0 when there is none
+ *   err  ST_NO_MEMORY */
 status scale_without_background(const float *f, size_t nx, size_t ny, double min_z, first_scale *out,
                                 error *e);
 
