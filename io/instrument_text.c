@@ -61,7 +61,6 @@ void main_block_read(const char *text, scale_rank rank, const char *name, size_t
     f->tilt_in_pixels = fabs(keytext_ini_number(text, "SEM", "TiltCorrection")) > 0.0;
     f->turned = fabs(keytext_ini_number(text, "SEM", "ScanRotation")) > 0.5;
     if (keytext_ini(text, "SEM", "Detector", value)) picture_set_text(f->detector, sizeof f->detector, value);
-    if (keytext_ini(text, "MAIN", "Device", value)) picture_set_text(f->software, sizeof f->software, value);
     if (keytext_ini(text, "MAIN", "Date", value))
         instrument_time(value, keytext_ini(text, "MAIN", "Time", clock) ? clock : NULL, 1, p);
 }

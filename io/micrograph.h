@@ -4,6 +4,7 @@
 #include <stddef.h>
 
 #include "base/flags.h"
+#include "base/text.h"
 
 /* What the file says of how the picture was taken. Reported, never used to compute a scale. */
 typedef struct {
@@ -50,5 +51,8 @@ typedef struct {
 } micrograph;              /* {0} = empty */
 
 void micrograph_free(micrograph *m); /* accepts {0}, clears */
+
+/* Two members of a JSON object: "sources": [...], "facts": {...}; null where the file does not say. */
+void micrograph_facts_json(const micrograph *m, textbuf *out);
 
 #endif

@@ -36,7 +36,8 @@ static void missing_row(image_row *r) {
 /* What changes a measurement: the pixels, the measuring protocol, the program; and what the overlay shows. */
 static status cache_key(const micrograph *m, const protocol *p, char key[65], error *e) {
     textbuf t = { 0 };
-    text_addf(&t, "%s|%zu|%.17g|%.17g|%s|", m->hash, m->strip_rows, m->px_nm, m->px_u_rel, SWARD_VERSION);
+    text_addf(&t, "%s|%zu|%zu|%.17g|%.17g|%.17g|%s|", m->hash, m->strip_rows, m->strip_top, m->y_stretch, m->px_nm, m->px_u_rel,
+              SWARD_VERSION);
     protocol_measuring_text(p, &t);
     status st = text_check(&t, "a key", e);
     if (st == ST_OK) sha256_hex(t.s, t.n, key);
@@ -232,6 +233,8 @@ static status fill_json(examined *x, const micrograph *m, const texture *t, erro
     text_add(&j, "\"detail\": ");
     json_string(&j, m->note);
     text_addf(&j, ", \"sha256\": \"%s\", ", m->hash);
+    micrograph_facts_json(m, &j);
+    text_add(&j, ", ");
     figures_json(x->figures, &j);
     text_add(&j, ", ");
     texture_px_json(t, &j);

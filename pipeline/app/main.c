@@ -14,6 +14,7 @@
 static const command commands[] = {
     { "run", cmd_run, &run_argp, "the whole pipeline on a folder" },
     { "measure", cmd_measure, &measure_argp, "texture numbers only" },
+    { "inspect", cmd_inspect, &inspect_argp, "what a file itself says: pixel size, strip, facts" },
     { "predict", cmd_predict, &predict_argp, "reflectance from numbers" },
     { "render", cmd_render, &render_argp, "micrographs of known truth" },
     { "history", cmd_history, &history_argp, "the ledger of every sample measured so far" },
