@@ -8,6 +8,12 @@
  * |difference| (over a spectrum: its rms over +-20 % in wavelength, because R oscillates); the table holds that error
  * already, so the larger of both counts, not their sum. Errors of the model hang together over the spectrum: they are
  * summed linearly for the weighted value and taken times 0.75 (rms of error over that sum: 0.73).
+ *   The weighted value of what the calculations were made for (bare features in air, normal incidence, photons of
+ * 300-1200 nm, one height, solid floor) has a sharper table, case by case: trust_weighted(). A square lattice, which
+ * took no part in it, reflects more than the hexagonal one, by 0.13 of its value in the mean of 20 cases, sd 0.2 (0.07
+ * above a R of 3 %); not knowing which lattice it is, the truth is looked for 0.06 above the hexagonal value, with the
+ * standard uncertainty 0.14 of it and 0.25 points. Features that merge into ridges come close to the plain graded index,
+ * which the interval holds too. Valid up to a spacing of 450 nm; up to 600 nm it gives way to the general recipe.
  *   Elsewhere than in air the table is entered with p n and scaled by the polished reflectance at normal incidence in
  * that ambient. R passes the polished value only in p-polarized light, near whose Brewster angle that vanishes: the
  * cap is the larger of the polished values at the angle and at 0. Oblique light: 48 rigorous spectral points (pitch 100
@@ -19,6 +25,7 @@
  * What is not in it: a wrong kind of shape, correlated disorder, the optical constants, the rear side. */
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
 #include "base/mem.h"
 #include "link/predict_priv.h"
@@ -27,6 +34,8 @@
 static const double OBLIQUE = 0.065;   /* per sin^2 of the angle, absolute R */
 static const double RESIDUAL = 0.5;    /* least share of u that is not bias */
 static const double TOGETHER = 0.75;   /* weighted error over the linear sum of u */
+static const double LATTICE = 0.06, LATTICE_U = 0.14, LATTICE_FLOOR = 0.0025; /* of the weighted R; absolute */
+static const double STUDIED_NM = 450.0, GENERAL_NM = 600.0;                  /* spacings */
 static const double MIX_WINDOW = 0.2;  /* relative wavelength */
 
 typedef struct {
@@ -38,7 +47,7 @@ typedef struct {
     double *u, *bias, *truth;                    /* [n] model */
     double *up2, *down2;                         /* [n] squared reaches of the inputs, 95 % */
     double *one, *two;                           /* [n] work */
-    double weighted, weighted_up2, weighted_down2;
+    double weighted, weighted_b2d, weighted_up2, weighted_down2;
 } workspace;
 
 static double sq(double x) { return x * x; }
@@ -48,6 +57,29 @@ static status spectrum(workspace *w, const variant *v, double *R, error *e) {
     error own = { 0 };
     status st = variant_spectrum(w->in, w->o, v, w->g, R, NULL, &own);
     return st == ST_OK || st == ST_NO_RESULT ? ST_OK : fail(e, st, "%s", own.text);
+}
+
+/* ---- what was calculated case by case ---- */
+
+/* 1: the weighted table was made for this. */
+static int studied(const workspace *w) {
+    const optics_setup *o = w->o;
+    const link_options *l = &w->in->link;
+    int light = !(o->reflect.angle_deg > 0.0) && !o->reflect.hemispherical && !o->front.glass &&
+                o->sun->weight == WEIGHT_PHOTONS && fabs(o->band_lo_nm - 300.0) < 0.5 && fabs(o->band_hi_nm - 1200.0) < 0.5;
+    int surface = !w->in->measured && !w->in->pores && !o->n_coatings && !(l->coverage < 1.0) &&
+                  !(fabs(l->height_by_size) > 0.0) && w->central->exponent >= 0.8 && w->central->exponent <= 2.5 &&
+                  !strncmp(o->substrate->name ? o->substrate->name : "", "silicon", 7) && fabs(ambient_index(o) - 1.0) < 0.01;
+    return light && surface && w->in->spacing_nm.value > 0.0 && w->in->spacing_nm.value < GENERAL_NM;
+}
+
+/* Weighted truth of a graded index value, and its standard uncertainty (u may be NULL). */
+static double studied_truth(double b2d, const variant *v, double *u) {
+    double shift, read;
+    trust_weighted(v->spacing_nm, v->height_nm, v->exponent, &shift, &read);
+    double hexagonal = fmax(0.0, b2d + shift);
+    if (u) *u = hypot(hypot(LATTICE_U * hexagonal, LATTICE_FLOOR), read);
+    return (1.0 + LATTICE) * hexagonal;
 }
 
 /* ---- inputs ---- */
@@ -66,10 +98,15 @@ static status add_input(workspace *w, const variant *a, const variant *b, double
     if (st == ST_OK) st = photon_mean(w->o, w->g, w->one, &wa, e);
     if (st == ST_OK) st = photon_mean(w->o, w->g, w->two, &wb, e);
     if (st != ST_OK) return st;
+    *half_difference = 0.5 * fabs(wa - wb); /* of the plain value */
+    if (studied(w)) { /* the model's error moves with the input */
+        double here = studied_truth(w->weighted, w->central, NULL) - w->weighted;
+        wa = studied_truth(wa, a, NULL) - here;
+        wb = studied_truth(wb, b, NULL) - here;
+    }
     for (size_t i = 0; i < w->g->n; i++)
         reach_of(w->plain[i], w->one[i], w->two[i], k, &w->up2[i], &w->down2[i]);
     reach_of(w->weighted, wa, wb, k, &w->weighted_up2, &w->weighted_down2);
-    *half_difference = 0.5 * fabs(wa - wb);
     return ST_OK;
 }
 
@@ -156,10 +193,10 @@ static status rules(workspace *w, double *u_mixing, error *e) {
     for (size_t i = 0; i < w->g->n && st == ST_OK; i++) /* no texture reflects more than these */
         w->cap[i] = fmax(fmax(w->cap[i], w->normal[i]), fmax(w->plain[i], w->b2d[i]));
     if (st == ST_OK) st = photon_mean(w->o, w->g, w->plain, &w->weighted, e);
-    double b2d = 0.0, mg2d = 0.0;
-    if (st == ST_OK) st = photon_mean(w->o, w->g, w->b2d, &b2d, e);
+    double mg2d = 0.0;
+    if (st == ST_OK) st = photon_mean(w->o, w->g, w->b2d, &w->weighted_b2d, e);
     if (st == ST_OK) st = photon_mean(w->o, w->g, w->mg2d, &mg2d, e);
-    if (st == ST_OK) *u_mixing = fabs(mg2d - b2d);
+    if (st == ST_OK) *u_mixing = fabs(mg2d - w->weighted_b2d);
     return st;
 }
 
@@ -202,6 +239,16 @@ static range join(double plain, double truth, double res, double up2, double dow
     return r;
 }
 
+/* Half the change of the sharp truth over the spacing's +- u. */
+static double studied_spacing(const workspace *w) {
+    variant a = *w->central, b = *w->central;
+    double u = w->in->spacing_nm.u;
+    if (!(u > 0.0)) return 0.0;
+    a.spacing_nm = fmax(a.spacing_nm - u, 0.5 * a.spacing_nm);
+    b.spacing_nm += u;
+    return 0.5 * fabs(studied_truth(w->weighted_b2d, &a, NULL) - studied_truth(w->weighted_b2d, &b, NULL));
+}
+
 static status weighted_range(workspace *w, prediction *out, error *e) {
     double truth = 0.0, u_spacing = 0.0, cap = 0.0;
     status st = photon_mean(w->o, w->g, w->truth, &truth, e);
@@ -209,7 +256,18 @@ static status weighted_range(workspace *w, prediction *out, error *e) {
     if (st == ST_OK) st = spacing_part(w, &u_spacing, e);
     if (st != ST_OK) return st;
     double res = hypot(residual(fmax(out->u_model, out->u_mixing), out->model_bias), u_spacing);
-    range r = join(out->weighted, truth + (out->weighted - w->weighted), res, w->weighted_up2, w->weighted_down2, cap);
+    double to_fine = out->weighted - w->weighted;
+    range r = join(out->weighted, truth + to_fine, res, w->weighted_up2, w->weighted_down2, cap);
+    if (studied(w)) {
+        double u = 0.0, spacing_nm = w->in->spacing_nm.value;
+        double sharp = studied_truth(w->weighted_b2d, w->central, &u);
+        double general = fmax(0.0, (spacing_nm - STUDIED_NM) / (GENERAL_NM - STUDIED_NM));
+        range s = join(out->weighted, sharp + to_fine, hypot(u, studied_spacing(w)), w->weighted_up2, w->weighted_down2, cap);
+        r.lo = general * r.lo + (1.0 - general) * s.lo;
+        r.hi = general * r.hi + (1.0 - general) * s.hi;
+        out->u_model = general * out->u_model + (1.0 - general) * u;
+        out->model_bias = general * out->model_bias + (1.0 - general) * (w->weighted_b2d - sharp);
+    }
     out->weighted_lo = r.lo;
     out->weighted_hi = r.hi;
     return ST_OK;

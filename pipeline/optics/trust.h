@@ -12,6 +12,12 @@
  * spacing_nm is the hexagonal mean spacing. Table, interpolation and clamping as documented in the .c. */
 void trust_model(double spacing_nm, double height_nm, double wavelength_nm, double *u, double *bias);
 
+/* The same for the reflectance weighted with AM1.5G photons over 300..1200 nm, bare silicon in air, normal incidence:
+ * what has to be added to the graded index (2-D Bruggeman) to meet the rigorous value of a hexagonal lattice, and the
+ * standard uncertainty of that by reading between the nodes. Absolute R.
+ *   in   exponent of the shape family, 1 cone, 2 paraboloid; held there outside */
+void trust_weighted(double spacing_nm, double height_nm, double exponent, double *shift, double *u);
+
 typedef enum { ORDERS_NONE, ORDERS_IN_SUBSTRATE, ORDERS_IN_AMBIENT } order_class;
 /* Hexagonal pattern, spatial frequency q = 1/(sqrt(3)/2 spacing): which side carries propagating orders.
  * ambient_n 1 for air. */

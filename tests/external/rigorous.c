@@ -77,7 +77,7 @@ static const char tilted[] = "rigorous coupled-wave reference, hexagonal lattice
 static material silicon, air, nitride;
 static sun am15g;
 
-static prediction ask(double height, int exponent, double spacing, double angle, polarization pol) {
+static prediction ask(double height, double exponent, double spacing, double angle, polarization pol) {
     error e = { 0 };
     optics_setup o = { .ambient = &air, .substrate = &silicon, .air = &air, .nitride = &nitride,
                        .mixing = MIX_BRUGGEMAN_2D, .reflect = reflect_defaults(), .sun = &am15g, .band_lo_nm = 300.0,
@@ -127,6 +127,52 @@ static void weighted(void) {
            4 * n, in_coarse, 3 * n, median(half, wide), median(half_tall, tall));
 }
 
+/* The widths between the nodes: pitches, heights and shapes that nothing was calculated for. */
+static void between(void) {
+    static const double spacing[] = { 150, 180, 220, 260, 300 }, height[] = { 120, 180, 250, 320, 350, 400, 450, 550, 700 };
+    static const double exponent[] = { 1.0, 1.5, 2.0 };
+    double half[135], half_tall[135];
+    size_t all = 0, tall = 0;
+    for (size_t i = 0; i < 5; i++)
+        for (size_t k = 0; k < 9; k++)
+            for (size_t q = 0; q < 3; q++) {
+                prediction p = ask(height[k], exponent[q], spacing[i], 0.0, POL_MEAN);
+                CHECK(p.weighted_lo <= p.weighted && p.weighted <= p.weighted_hi && p.weighted_hi > p.weighted_lo + 0.002);
+                half[all++] = 50.0 * (p.weighted_hi - p.weighted_lo);
+                if (height[k] >= 350.0) half_tall[tall++] = half[all - 1];
+                prediction_free(&p);
+            }
+    printf("between the nodes: median half-width %.2f, tall %.2f points\n", median(half, all), median(half_tall, tall));
+    CHECK(median(half, all) <= 2.0 && median(half_tall, tall) <= 1.0);
+}
+
+/* What a node would be held to be, were it not in the table: its neighbours in height and in pitch, twice as far apart as
+ * any reading of the table has to bridge. */
+static void left_out(void) {
+    size_t n = sizeof hexagonal / sizeof hexagonal[0], in = 0, cases = 0;
+    for (size_t i = 2; i + 2 < n; i++)
+        for (size_t k = 1; k <= 3; k++) {
+            double nearest = pitch[k], low = hexagonal[i - 2].height, high = hexagonal[i + 2].height, t, shift[4], u;
+            t = (hexagonal[i].height - low) / (high - low);
+            trust_weighted(nearest, low, hexagonal[i].exponent, &shift[0], &u);
+            trust_weighted(nearest, high, hexagonal[i].exponent, &shift[1], &u);
+            trust_weighted(pitch[k - 1], hexagonal[i].height, hexagonal[i].exponent, &shift[2], &u);
+            trust_weighted(pitch[k + 1], hexagonal[i].height, hexagonal[i].exponent, &shift[3], &u);
+            double a = (nearest - pitch[k - 1]) / (pitch[k + 1] - pitch[k - 1]);
+            double by_height = (1.0 - t) * shift[0] + t * shift[1], by_pitch = (1.0 - a) * shift[2] + a * shift[3];
+            prediction p = ask(hexagonal[i].height, hexagonal[i].exponent, nearest, 0.0, POL_MEAN);
+            trust_weighted(nearest, hexagonal[i].height, hexagonal[i].exponent, &t, &u);
+            /* a chord over two cells misses four times as much as over one */
+            double off_h = 25.0 * (by_height - t), off_p = 25.0 * (by_pitch - t);
+            in += (size_t)inside(hexagonal[i].R[k] + off_h, p.weighted_lo, p.weighted_hi);
+            in += (size_t)inside(hexagonal[i].R[k] + off_p, p.weighted_lo, p.weighted_hi);
+            cases += 2;
+            prediction_free(&p);
+        }
+    printf("read between the nodes: %zu of %zu\n", in, cases);
+    CHECK_SOURCE((double)in / (double)cases, 1.0, 0.05, source);
+}
+
 static void square_lattice(void) {
     size_t n = sizeof square / sizeof square[0], in = 0;
     for (size_t i = 0; i < n; i++) {
@@ -158,6 +204,8 @@ int main(void) {
     CHECK(table_material("silicon", &silicon) && table_material("nitride", &nitride) && table_sun(&am15g) &&
           material_constant(&air, 1.0, 0.0, &e) == ST_OK);
     weighted();
+    between();
+    left_out();
     square_lattice();
     oblique_points();
     material_free(&silicon);

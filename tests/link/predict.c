@@ -180,8 +180,9 @@ static void others(void) {
     prediction_free(&p);
     in.spacing_nm.value = 290.0;
     p = ask(&in, &o);
-    CHECK_NEAR(p.weighted_hi, bare.weighted_hi, 1e-12);
+    CHECK(p.weighted_hi > bare.weighted_hi); /* no shape that was calculated case by case */
     CHECK(strstr(p.note, "not that of the profile"));
+    double general = p.weighted_hi - p.weighted_lo;
     prediction_free(&p);
     profile_free(&measured);
 
@@ -189,7 +190,7 @@ static void others(void) {
     in = cones(300.0, 290.0);
     p = ask(&in, &o); /* glass face above 0.04, less contrast below */
     CHECK(holds(&p) && p.weighted > 0.03 && p.polished < bare.polished && p.polished > p.coated);
-    CHECK(p.weighted_hi - p.weighted_lo < bare.weighted_hi - bare.weighted_lo);
+    CHECK(p.weighted_hi - p.weighted_lo < general);
     prediction_free(&p);
     o = setup();
     o.reflect.angle_deg = 60.0;
