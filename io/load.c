@@ -85,7 +85,7 @@ static status decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture 
     return refuse(bytes, n, e);
 }
 
-/* Rows of strip: what the file states when the pixels allow it, else what the pixels show. */
+/* Rows of strip at the bottom: what the file states when the pixels allow it, else what the pixels show. */
 static size_t strip_rows(picture *p) {
     size_t found = strip_find(p->px, p->nx, p->ny);
     if (p->strip_stated && p->strip_stated < p->ny / 3) {
@@ -154,13 +154,18 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
     if (path) sidecar_read(path, &p);
     r.file_nx = r.nx = p.nx;
     r.file_ny = p.ny;
-    r.strip_rows = o->crop_strip ? strip_rows(&p) : 0;
+    if (o->crop_strip) {
+        r.strip_rows = strip_rows(&p);
+        r.strip_top = strip_find_top(p.px, p.nx, p.ny - r.strip_rows);
+        r.strip_rows += r.strip_top;
+    }
     r.ny = p.ny - r.strip_rows;
     if (r.nx < LIMIT_MIN_SIDE || r.ny < LIMIT_MIN_SIDE) {
         st = fail(e, ST_BAD_INPUT, "the picture has only %zu x %zu pixels; at least %zu a side are needed",
                   r.nx, r.ny, LIMIT_MIN_SIDE);
         goto done;
     }
+    if (r.strip_top) memmove(p.px, p.px + r.strip_top * r.nx, r.nx * r.ny * sizeof *p.px);
     r.px = p.px;
     p.px = NULL;
     keep_facts(&p, &r);

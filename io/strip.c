@@ -6,7 +6,8 @@
  * does not share; it is the strip's first row when everything below is strip-like and holds writing. The
  * topmost candidate that passes is taken, so a line above the writing, or a frame around it, belongs to the
  * strip. A frame may leave a few rows of specimen below it. Where the exact search finds nothing it is
- * repeated with a tolerance for strips that went through noise or lossy compression.
+ * repeated with a tolerance for noise, then with one for lossy compression. A strip at the top is the same
+ * upside down; a box narrower than the picture is searched in its own columns and must have side edges.
  *
  * The figures below are rules of this project, tried on the styles in tests/io/strip.c. Does not: read the
  * writing, or crop a block without any (a saturated band of specimen looks the same). */
@@ -34,21 +35,29 @@ typedef struct {
     size_t nx, ny, first; /* rows first .. ny - 1 have room for their facts */
     size_t lowest;        /* no strip begins above this row */
     row_facts *rows;      /* [ny - first], described from 17 rows above `lowest` on */
-    int window;           /* levels that count as one, each way; 0: exact */
-    int small, large;     /* steps, in levels */
-    int exempt;           /* rows of specimen below a frame, at most */
+    const float *px;      /* rows of `stride` pixels, nx of them looked at */
+    size_t stride;
+    int from_top;     /* the picture is looked at upside down */
+    int window;       /* levels that count as one, each way; 0: exact */
+    int small, large; /* steps, in levels */
+    int exempt;       /* rows of specimen below a frame, at most */
 } view;
 
 /* Room for one row's work. */
 typedef struct {
     uint16_t *level;
-    uint32_t *count; /* [LEVELS], all 0 between rows */
+    uint32_t *count;     /* [LEVELS], all 0 between rows */
+    uint32_t below[257]; /* of a windowed row: pixels below each level */
 } scratch;
 
-static uint32_t around(const uint32_t *count, int v, int window) {
-    uint32_t n = 0;
-    for (int k = v - window < 0 ? 0 : v - window; k <= v + window && k < LEVELS; k++) n += count[k];
-    return n;
+/* Pixels within the window of level v. Windowed levels are at most 255. */
+static uint32_t around(const scratch *w, int v, int window) {
+    int low = v - window < 0 ? 0 : v - window, high = v + window > 255 ? 255 : v + window;
+    return w->below[high + 1] - w->below[low];
+}
+
+static void sum_up(scratch *w) {
+    for (int v = 0; v < 256; v++) w->below[v + 1] = w->below[v] + w->count[v];
 }
 
 /* Commonest level but those within `window` of `except` (negative: none). */
@@ -59,7 +68,7 @@ static int commonest(const scratch *w, size_t nx, int window, int except, uint32
         int v = w->level[x];
         if (v == last || (except >= 0 && abs(v - except) <= window)) continue;
         last = v;
-        uint32_t k = window ? around(w->count, v, window) : w->count[v];
+        uint32_t k = window ? around(w, v, window) : w->count[v];
         if (k > *n || (k == *n && v < best)) {
             *n = k;
             best = v;
@@ -68,7 +77,7 @@ static int commonest(const scratch *w, size_t nx, int window, int except, uint32
     return best;
 }
 
-static row_facts describe_row(const float *px, const view *v, const scratch *w) {
+static row_facts describe_row(const float *px, const view *v, scratch *w) {
     row_facts f = { 0 };
     size_t nx = v->nx, equal = 0;
     float top = v->window ? 255.0f : 65535.0f;
@@ -93,6 +102,7 @@ static row_facts describe_row(const float *px, const view *v, const scratch *w) 
         f.large += large;
     }
     uint32_t n, next;
+    if (v->window) sum_up(w);
     f.mode = commonest(w, nx, v->window, -1, &n);
     (void)commonest(w, nx, v->window, f.mode, &next);
     f.share = (float)n / (float)nx;
@@ -237,33 +247,108 @@ static size_t search(const view *v) {
 
 /* Describes rows from the bottom up, as far as a strip can reach and its surroundings are looked at: mostly a
  * few rows, since the first row of noisy specimen ends the search. */
-static void describe(view *v, const float *px, const scratch *w) {
+static void describe(view *v, scratch *w) {
     size_t y = v->ny, top = v->first;
     v->lowest = v->ny - v->ny / 3;
     while (y > top) {
         y--;
-        v->rows[y - v->first] = describe_row(px + y * v->nx, v, w);
+        v->rows[y - v->first] = describe_row(v->px + (v->from_top ? v->ny - 1 - y : y) * v->stride, v, w);
         if (y < v->lowest || y + (size_t)v->exempt >= v->ny || !blocks(&v->rows[y - v->first])) continue;
         v->lowest = y + 1;
         top = y > v->first + REACH ? y - REACH : v->first;
     }
 }
 
-size_t strip_find(const float *px, size_t nx, size_t ny) {
-    if (nx < 32 || ny < 32) return 0;
+/* Lossy compression spreads specimen over the strip's first block of 8 rows: those that still hold much of the
+ * paper belong to the strip. */
+static size_t grow(const view *v, size_t rows) {
+    size_t t = v->ny - rows, more = 0;
+    int level = paper(v, t);
+    while (more < 7 && t > v->first + more) {
+        const row_facts *f = &v->rows[t - 1 - more - v->first];
+        if (abs(f->mode - level) > v->window || f->share < 0.4f) break;
+        more++;
+    }
+    return rows + more;
+}
+
+/* Three passes: exact levels, a tolerance for noise, a tolerance for lossy compression. */
+static const struct {
+    int window, small, large;
+} passes[] = { { 0, 13 * 257, 31 * 257 }, { 4, 16, 31 }, { 16, 40, 64 } };
+
+static size_t find_in(const float *px, size_t stride, size_t nx, size_t ny, int from_top, int n_passes) {
     size_t first = ny - ny / 3 - REACH - 1, found = 0; /* ny >= 32: at least 4 */
-    view v = { .nx = nx, .ny = ny, .first = first, .exempt = 4 };
-    scratch w = { mem_array(nx, sizeof *w.level), mem_array(LEVELS, sizeof *w.count) };
+    view v = {
+        .px = px, .stride = stride, .nx = nx, .ny = ny, .first = first, .from_top = from_top, .exempt = 4
+    };
+    scratch w = { mem_array(nx, sizeof *w.level), mem_array(LEVELS, sizeof *w.count), { 0 } };
     v.rows = mem_array(ny - first, sizeof *v.rows);
-    for (int pass = 0; pass < 2 && !found && w.level && w.count && v.rows; pass++) {
-        v.window = pass ? 4 : 0;
-        v.small = pass ? 16 : 13 * 257;
-        v.large = pass ? 31 : 31 * 257;
-        describe(&v, px, &w);
+    for (int pass = 0; pass < n_passes && !found && w.level && w.count && v.rows; pass++) {
+        v.window = passes[pass].window;
+        v.small = passes[pass].small;
+        v.large = passes[pass].large;
+        describe(&v, &w);
         found = search(&v);
+        if (found && pass == 2) found = grow(&v, found);
     }
     free(w.level);
     free(w.count);
     free(v.rows);
     return found;
+}
+
+/* ---- a strip narrower than the picture ---- */
+
+typedef struct {
+    size_t x0, x1;
+} span;
+
+static int same_level(float a, float b) { return fabsf(a - b) < 0.5f / 65535.0f; }
+
+static span longest_run(const float *row, size_t nx) {
+    span best = { 0, 0 };
+    for (size_t x = 0; x < nx;) {
+        size_t end = x + 1;
+        while (end < nx && same_level(row[end], row[x])) end++;
+        if (end - x > best.x1 - best.x0) best = (span){ x, end };
+        x = end;
+    }
+    return best;
+}
+
+/* The box has an edge: beside its first and last column, over nearly all of its height, the picture is not of
+ * the paper's level. A flat ground with writing on it has none. */
+static int has_edges(const float *px, size_t nx, size_t ny, size_t rows, span b, float level) {
+    size_t left = 0, right = 0;
+    for (size_t y = ny - rows; y < ny; y++) {
+        const float *row = px + y * nx;
+        left += !b.x0 || !same_level(row[b.x0 - 1], level);
+        right += b.x1 == nx || !same_level(row[b.x1], level);
+    }
+    return 10 * left >= 9 * rows && 10 * right >= 9 * rows;
+}
+
+static size_t find_narrow(const float *px, size_t nx, size_t ny) {
+    static const size_t offsets[] = { 1, 3, 6, 12 };
+    for (size_t k = 0; k < sizeof offsets / sizeof offsets[0]; k++) {
+        const float *row = px + (ny - offsets[k]) * nx;
+        span b = longest_run(row, nx);
+        size_t width = b.x1 - b.x0;
+        if (width < nx * 3 / 10 || width < 32 || width == nx) continue;
+        size_t rows = find_in(px + b.x0, nx, width, ny - offsets[k] + 1, 0, 1);
+        if (rows && has_edges(px, nx, ny - offsets[k] + 1, rows, b, row[b.x0])) return rows + offsets[k] - 1;
+    }
+    return 0;
+}
+
+size_t strip_find(const float *px, size_t nx, size_t ny) {
+    if (nx < 32 || ny < 32) return 0;
+    size_t rows = find_in(px, nx, nx, ny, 0, 3);
+    return rows ? rows : find_narrow(px, nx, ny);
+}
+
+size_t strip_find_top(const float *px, size_t nx, size_t ny) {
+    if (nx < 32 || ny < 32) return 0;
+    return find_in(px, nx, nx, ny, 1, 3);
 }
