@@ -39,6 +39,7 @@
     X(ONE_MICROGRAPH,  one_micrograph,  "the sample rests on a single micrograph")                                       \
     X(BEYOND_MODEL,    beyond_model,    "texture too coarse for the graded-index model and not steep enough for facets: no reflectance is given") \
     X(DIFFRACTS,       diffracts,       "part of the light is diffracted into air: the model says nothing there")             \
+    X(OUTSIDE_CALIBRATION, outside_calibration, "the sample lies outside what the link was calibrated on")               \
     X(LOSSY,           lossy,           "a lossy file: brightness statistics are altered")                              \
     X(TILT_CORRECTED,  tilt_corrected,  "a tilted view: y was stretched by 1/cos(tilt) before measuring")               \
     X(TILT_KNOWN,      tilt_known,      "a tilted view by the file's own word, not corrected")                          \

@@ -199,8 +199,25 @@ static status length_option(const char *option, const char *text, int zero_allow
     return ST_OK;
 }
 
-static status surface_of(const request *q, const protocol *p, const setup *s, surface_input *in, error *e) {
+/* The calibrated link of the protocol, NULL: none; a measured profile needs none. */
+static const calibration *link_of(const setup *s) {
+    return s->calibrated.link.n_samples && !s->measured.n ? &s->calibrated.link : NULL;
+}
+
+/* Options outrank the calibrated shape. */
+static void shape_given(const request *q, const link_options *said, link_options *l) {
+    if (given(q, OPT_SHAPE)) {
+        l->exponent = said->exponent;
+        l->exponent_u = said->exponent_u;
+    }
+    if (given(q, OPT_SPREAD)) l->height_spread = said->height_spread;
+    if (given(q, OPT_COVERAGE)) l->coverage = said->coverage;
+}
+
+static status surface_of(const request *q, const protocol *p, const setup *s, surface_input *in,
+                         height_source *source, error *e) {
     status st = ST_OK;
+    *source = HEIGHT_SHEET;
     in->spacing_nm = quantity_missing();
     in->height_nm = quantity_missing();
     in->pores = p->measure.relief == RELIEF_PORE;
@@ -229,10 +246,8 @@ static status surface_of(const request *q, const protocol *p, const setup *s, su
     if (st != ST_OK) return st;
     if (!q->spacing && !(q->height && in->height_nm.value <= 0.0))
         return fail(e, ST_BAD_INPUT, "--spacing is missing; it decides where the model holds: give it in nm");
-    if (!isfinite(in->height_nm.value)) {
-        height_source source;
-        st = link_height(quantity_missing(), &p->link, in->spacing_nm, &in->height_nm, &source, e);
-    }
+    st = calibrated_height(link_of(s), in->height_nm, &in->link, in->spacing_nm, &in->height_nm, source, e);
+    shape_given(q, &p->link, &in->link);
     return st;
 }
 
@@ -397,10 +412,11 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     setup s = { 0 };
     prediction r = { 0 };
     surface_input in = { 0 };
+    height_source source = HEIGHT_SHEET;
     status st = q->protocol ? protocol_read(q->protocol, &p, e) : protocol_defaults(&p, e);
     if (st == ST_OK) st = apply_options(q, &p, e);
     if (st == ST_OK) st = setup_make(&p, &s, e);
-    if (st == ST_OK) st = surface_of(q, &p, &s, &in, e);
+    if (st == ST_OK) st = surface_of(q, &p, &s, &in, &source, e);
     if (st == ST_OK && q->limit && !q->angles)
         st = fail(e, ST_BAD_INPUT, "--limit: it needs --angles, such as 0:80:5");
     if (st == ST_OK && q->angles) {
@@ -409,6 +425,8 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     }
     if (st == ST_OK) st = predict(&in, &s.optics, &r, e);
     if (st != ST_OK) goto done;
+    if (link_of(&s))
+        calibration_apply(link_of(&s), source == HEIGHT_CALIBRATED, in.spacing_nm, in.pores, MISSING, &r);
     if (q->as == AS_JSON)
         print_json(&in, &r, out);
     else if (q->as == AS_CSV)

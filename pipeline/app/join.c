@@ -101,18 +101,24 @@ static status link_and_predict(const sample_group *g, const examined *all, const
     surface_input in = { .link = p->link, .measured = s->measured.n ? &s->measured : NULL };
     double *areas = NULL;
     height_source source = HEIGHT_DEFAULT;
+    const calibration *c = s->calibrated.link.n_samples && !in.measured ? &s->calibrated.link : NULL;
     in.spacing_nm = (quantity){ spacing->m.value, figure_u(spacing), spacing->m.n };
     for (size_t i = 0; i < g->n_members; i++)
         if (used(&all[g->members[i]])) in.pores = all[g->members[i]].relief == RELIEF_PORE;
 
-    status st = link_height(g->height_nm, &p->link, in.spacing_nm, &in.height_nm, &source, e);
-    if (st == ST_OK && fabs(p->link.height_by_size) > 0.0) {
+    status st = calibrated_height(c, g->height_nm, &in.link, in.spacing_nm, &in.height_nm, &source, e);
+    if (st == ST_OK && fabs(in.link.height_by_size) > 0.0) {
         st = gather_cells(g, all, &areas, &in.n_cells, e);
         in.cell_area_nm2 = areas;
     }
     if (st == ST_OK) st = predict(&in, &s->optics, &out->prediction, e);
     free(areas);
     if (st != ST_OK) return fail_within(e, st, g->name);
+    if (c) {
+        calibration_apply(c, source == HEIGHT_CALIBRATED, in.spacing_nm, in.pores,
+                          linkfile_age_days(&s->calibrated, g->etched_at), &out->prediction);
+        if (calibration_outside(c, in.spacing_nm, in.pores)) *f |= FLAG(OUTSIDE_CALIBRATION);
+    }
 
     const prediction *d = &out->prediction;
     r->height_nm = in.height_nm.value;

@@ -284,6 +284,8 @@ static status load_all(const protocol *p, setup *s, error *e) {
         st = material_load(p->coatings[i].material, &s->coating[i], e);
     if (st == ST_OK) st = sun_load(p->sun, &s->sun, e);
     if (st == ST_OK && p->profile) st = profile_read(p->profile, &s->measured, e);
+    if (st == ST_OK && p->calibration) st = linkfile_read(p->calibration, &s->calibrated, e);
+    if (st == ST_OK) st = linkfile_fits(&s->calibrated, p, e);
     return st;
 }
 
@@ -351,6 +353,7 @@ void setup_free(setup *s) {
     for (size_t i = 0; i < LIMIT_COATINGS; i++) material_free(&s->coating[i]);
     sun_free(&s->sun);
     profile_free(&s->measured);
+    linkfile_free(&s->calibrated);
     *s = (setup){ 0 };
 }
 
@@ -380,4 +383,5 @@ void setup_text(const setup *s, textbuf *out) {
     numbers_text(out, "sun", s->sun.irradiance, s->sun.n);
     numbers_text(out, "depth_nm", s->measured.depth_nm, s->measured.n);
     numbers_text(out, "solid", s->measured.solid, s->measured.n);
+    linkfile_text(&s->calibrated, out);
 }

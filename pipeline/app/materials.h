@@ -1,7 +1,7 @@
 /* Materials from files and the optical set-up a protocol asks for. */
 #ifndef SWARD_APP_MATERIALS_H
 #define SWARD_APP_MATERIALS_H
-#include "app/protocol.h"
+#include "app/linkfile.h"
 #include "link/predict.h"
 
 /* Where the tables lie: $SWARD_MATERIALS, else `materials` beside the executable, else
@@ -26,10 +26,11 @@ typedef struct {
     layer layers[LIMIT_COATINGS];
     sun sun;
     profile measured;    /* n = 0: none */
+    linkfile calibrated; /* link.n_samples = 0: none */
     optics_setup optics; /* ready for predict() */
 } setup;                 /* {0} = empty */
 
-/*   err  as material_load, profile_read; ST_BAD_INPUT a band outside a material's table, coatings on a
+/*   err  as material_load, profile_read, linkfile_read, linkfile_fits; ST_BAD_INPUT a band outside a material's table, coatings on a
  *        measured profile */
 status setup_make(const protocol *p, setup *out, error *e);
 void setup_free(setup *s);

@@ -28,6 +28,7 @@ typedef struct {
         px_u_rel;  /* relative standard uncertainty of every pixel size; NAN: what the source of each says */
     char *pattern; /* sample name from file names, see names.h; NULL: none */
     link_options link;
+    char *calibration; /* link file of `sward fit`, usable from here; NULL: none */
     char *profile; /* measured profile: CSV path, usable from here; NULL: none */
     char *ambient; /* "air", "laminate", or as a material */
     double glass_mm, encapsulant_mm;

@@ -97,6 +97,7 @@ const protocol_key protocol_keys[] = {
     NUMBER("link", "height_by_size", link.height_by_size, "", -5, 5, "power g by which heights follow cell diameters: h (d / d_mean)^g"),
     WORD("link", "level", link.level_at_tips, level_word, 0, "where features of unequal height are level: at the floor or at the tips"),
     NUMBER("link", "coverage", link.coverage, "", 0, 1, "solid share at the floor; below 1 there is flat ground between features"),
+    PATH("link", "calibration", calibration, "link file that sward fit saved: height from the spacing, and the shape; outranks the heights and the shape written here, relative to this file"),
     PATH("link", "profile", profile, "measured profile instead of height and shape: CSV with depth_nm and solid_fraction, relative to this file"),
 
     MATERIAL("optics", "ambient", ambient, "above the texture: air, laminate (air, glass, encapsulant), a material or an index"),

@@ -227,6 +227,13 @@ static void explain_link(const protocol *p, textbuf *out) {
                   p->profile);
         return;
     }
+    if (p->calibration) {
+        text_addf(out,
+                  "The height of a sample is the one of its sample sheet; without one it follows from its spacing by the "
+                  "calibrated link in %s, which also gives the shape.\n",
+                  p->calibration);
+        return;
+    }
     text_add(out, "The height of a sample is the one of its sample sheet; without one it is assumed: ");
     if (isfinite(o->height_nm)) {
         say_with_u(out, o->height_nm, o->height_nm_u, "nm");
