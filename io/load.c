@@ -10,6 +10,7 @@
 #include "base/limits.h"
 #include "base/number.h"
 #include "base/quantity.h"
+#include "io/bar_priv.h"
 #include "io/file.h"
 #include "io/levels_priv.h"
 #include "io/picture_priv.h"
@@ -134,6 +135,16 @@ static void judge_tilt(const load_options *o, micrograph *m) {
              f->tilt_deg, f->turned ? " and the scan turned" : "");
 }
 
+/* The user says what the bar stands for; one pixel either way, uniform, is the uncertainty of its length. */
+static void measure_bar(double bar_nm, size_t top, size_t bottom, picture *p) {
+    size_t n = bar_find(p->px, p->nx, p->ny, top, bottom);
+    if (n)
+        scales_add_u(&p->scales, SCALE_BAR, "bar", bar_nm / (double)n, bar_nm / (double)n,
+                     1.0 / sqrt(3.0) / (double)n);
+    else
+        note_add(p->scales.note, "No scale bar was found, so its length could not be used.");
+}
+
 static void keep_facts(const picture *p, micrograph *m) {
     m->bit_depth = p->bit_depth;
     m->flags = p->flags;
@@ -160,6 +171,7 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
         r.strip_rows += r.strip_top;
     }
     r.ny = p.ny - r.strip_rows;
+    if (o->bar_nm > 0.0) measure_bar(o->bar_nm, r.strip_top, r.strip_rows - r.strip_top, &p);
     if (r.nx < LIMIT_MIN_SIDE || r.ny < LIMIT_MIN_SIDE) {
         st = fail(e, ST_BAD_INPUT, "the picture has only %zu x %zu pixels; at least %zu a side are needed",
                   r.nx, r.ny, LIMIT_MIN_SIDE);

@@ -29,7 +29,7 @@ status batch_examine(const batch_item *items, size_t n, const examine_options *o
     for (long k = 0; k < count; k++) {
         size_t i = (size_t)k;
         const batch_item *item = &items[i];
-        examine(item->path, item->relative, item->stem, item->sheet_px_nm, o, &out[i], &errors[i]);
+        examine(item->path, item->relative, item->stem, item->sheet_px_nm, item->sheet_bar_nm, o, &out[i], &errors[i]);
         if (progress) {
 #pragma omp critical(progress)
             {

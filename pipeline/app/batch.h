@@ -9,7 +9,7 @@ typedef struct {
     const char *path;      /* to open */
     const char *relative;  /* as in the tables */
     const char *stem;      /* of the output files */
-    double sheet_px_nm;
+    double sheet_px_nm, sheet_bar_nm; /* NAN: the sheet does not say */
 } batch_item;
 
 /* jobs 0 = one per core. `progress` 1: a line on stderr that counts.

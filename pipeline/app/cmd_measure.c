@@ -6,16 +6,17 @@
 
 #include "app/batch.h"
 #include "app/command.h"
+#include "app/length.h"
 #include "app/names.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
 
-enum { OPT_PX = 0x200, OPT_RELIEF, OPT_PROTOCOL, OPT_JOBS, OPT_JSON, OPT_CSV };
+enum { OPT_PX = 0x200, OPT_BAR, OPT_RELIEF, OPT_PROTOCOL, OPT_JOBS, OPT_JSON, OPT_CSV };
 typedef enum { AS_LINES, AS_JSON, AS_CSV } form;
 
 typedef struct {
-    double px_nm;
+    double px_nm, bar_nm;
     int jobs, relief_given;
     relief relief;
     const char *protocol;
@@ -27,6 +28,7 @@ typedef struct {
 /* clang-format off */
 static const struct argp_option options[] = {
     { "px",       OPT_PX,       "NM",   0, "pixel size, nm; outranks all other sources", 0 },
+    { "bar",      OPT_BAR,      "LENGTH", 0, "what the burnt-in scale bar stands for, such as 5um; its length is found in the picture", 0 },
     { "relief",   OPT_RELIEF,   "hillock|pore|auto", 0, "what a feature is (default: as the protocol says, else found)", 0 },
     { "protocol", OPT_PROTOCOL, "FILE", 0, "measuring limits from a protocol (default: built in)", 0 },
     { "jobs",     OPT_JOBS,     "N",    0, "workers, 0 = one per core (default)", 0 },
@@ -44,6 +46,10 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
         if (!number_parse(arg, &v) || !(v > 0.0))
             argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
         u->px_nm = v;
+        break;
+    case OPT_BAR:
+        if (!length_parse(arg, &u->bar_nm))
+            argp_error(state, "--bar: found '%s', expected a length with its unit, such as 5um or 500nm", arg);
         break;
     case OPT_RELIEF:
         u->relief_given = 1;
@@ -120,8 +126,8 @@ static status print_rows(const measure_use *u, const examined *all, error *e) {
 static status measure_files(const measure_use *u, const protocol *p, examined *all, error *e) {
     batch_item *items = mem_array(u->n, sizeof *items);
     if (!items) return NO_MEMORY(e, "the batch");
-    for (size_t i = 0; i < u->n; i++) items[i] = (batch_item){ u->files[i], u->files[i], "", MISSING };
-    examine_options o = { p, u->px_nm, NULL, 1 };
+    for (size_t i = 0; i < u->n; i++) items[i] = (batch_item){ u->files[i], u->files[i], "", MISSING, MISSING };
+    examine_options o = { p, u->px_nm, u->bar_nm, NULL, 1 };
     status st = batch_examine(items, u->n, &o, u->jobs, 0, all, e);
     if (st == ST_OK) st = batch_mark_duplicates(all, u->n, e);
     for (size_t i = 0; st == ST_OK && i < u->n; i++) {
@@ -137,7 +143,7 @@ static status measure_files(const measure_use *u, const protocol *p, examined *a
 }
 
 int cmd_measure(int argc, char **argv) {
-    measure_use u = { .px_nm = MISSING };
+    measure_use u = { .px_nm = MISSING, .bar_nm = MISSING };
     protocol p = { 0 };
     error e = { 0 };
     int unusable = 0;

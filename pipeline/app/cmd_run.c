@@ -4,11 +4,12 @@
 #include <string.h>
 
 #include "app/command.h"
+#include "app/length.h"
 #include "app/run.h"
 #include "base/number.h"
 #include "base/quantity.h"
 
-enum { OPT_PROTOCOL = 0x200, OPT_SHEET, OPT_OUT, OPT_HISTORY, OPT_JOBS, OPT_PX, OPT_GATE, OPT_NO_REPORT, OPT_FRESH,
+enum { OPT_PROTOCOL = 0x200, OPT_SHEET, OPT_OUT, OPT_HISTORY, OPT_JOBS, OPT_PX, OPT_BAR, OPT_GATE, OPT_NO_REPORT, OPT_FRESH,
        OPT_QUIET, OPT_VERBOSE };
 
 /* clang-format off */
@@ -19,6 +20,7 @@ static const struct argp_option options[] = {
     { "history",   OPT_HISTORY,   "FILE", 0, "the ledger of all samples (default: as the protocol says, else DIR/history.sqlite)", 0 },
     { "jobs",      OPT_JOBS,      "N",    0, "workers, 0 = one per core (default)", 0 },
     { "px",        OPT_PX,        "NM",   0, "pixel size of every micrograph, nm; outranks all other sources", 0 },
+    { "bar",       OPT_BAR,       "LENGTH", 0, "what the burnt-in scale bar of every micrograph stands for, such as 5um; the sheet's bar_nm outranks it", 0 },
     { "gate",      OPT_GATE,      NULL,   0, "exit with 4 when a target is missed", 0 },
     { "no-report", OPT_NO_REPORT, NULL,   0, "tables only, no page", 0 },
     { "fresh",     OPT_FRESH,     NULL,   0, "measure everything again, even what is remembered", 0 },
@@ -45,6 +47,10 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
         if (!number_parse(arg, &v) || !(v > 0.0))
             argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
         o->px_nm = v;
+        break;
+    case OPT_BAR:
+        if (!length_parse(arg, &o->bar_nm))
+            argp_error(state, "--bar: found '%s', expected a length with its unit, such as 5um or 500nm", arg);
         break;
     case OPT_GATE: o->gate = 1; break;
     case OPT_NO_REPORT: o->no_report = 1; break;
@@ -73,7 +79,7 @@ const struct argp run_argp = {
 };
 
 int cmd_run(int argc, char **argv) {
-    run_options o = { .px_nm = MISSING };
+    run_options o = { .px_nm = MISSING, .bar_nm = MISSING };
     run_outcome outcome = { 0, 0 };
     error e = { 0 };
     if (argp_parse(&run_argp, argc, argv, 0, NULL, &o) != 0) return EXIT_USAGE;

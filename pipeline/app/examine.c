@@ -268,8 +268,8 @@ static status unreadable(examined *x, const error *why, error *e) {
     return text_check(&j, "a row", e);
 }
 
-status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, const examine_options *o,
-               examined *out, error *e) {
+status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, double sheet_bar_nm,
+               const examine_options *o, examined *out, error *e) {
     micrograph m = { 0 };
     texture t = { 0 };
     char *overlay = NULL;
@@ -277,6 +277,7 @@ status examine(const char *path, const char *relative, const char *stem, double 
     load_options load = load_defaults();
     load.px_nm_option = o->px_nm_option;
     load.px_nm_sheet = sheet_px_nm;
+    load.bar_nm = isfinite(sheet_bar_nm) ? sheet_bar_nm : o->bar_nm_option;
 
     missing_row(&out->row);
     out->row.file = mem_text(relative);

@@ -7,6 +7,7 @@
 typedef struct {
     const protocol *protocol;
     double px_nm_option;  /* --px; NAN: none */
+    double bar_nm_option; /* --bar; NAN: none */
     const char *out;      /* output folder; NULL: no files (the command `measure`) */
     int fresh;            /* 1: what was remembered is not used */
 } examine_options;
@@ -27,11 +28,11 @@ typedef struct {
 } examined;
 
 /*   in   path opened; relative as it stands in the tables; stem of the output files ("sub/name")
- *        sheet_px_nm NAN when the sheet says nothing
+ *        sheet_px_nm, sheet_bar_nm NAN when the sheet says nothing
  *   out  always filled, also for a file that cannot be read (status unreadable, reason = the sentence)
  *   err  only what concerns the outputs: ST_IO a result could not be written, ST_NO_MEMORY */
-status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, const examine_options *o,
-               examined *out, error *e);
+status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, double sheet_bar_nm,
+               const examine_options *o, examined *out, error *e);
 
 /* Prints status, reason and flags into the row, after duplicates and times are known. err ST_NO_MEMORY */
 status examine_finish(examined *x, error *e);

@@ -92,8 +92,9 @@ static status measure_all(run *r, error *e) {
         return NO_MEMORY(e, "the batch");
     }
     for (size_t i = 0; i < f->n; i++)
-        items[i] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING };
-    examine_options x = { &r->protocol, r->o->px_nm, r->out, r->o->fresh };
+        items[i] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING,
+                                 f->rows[i] ? f->rows[i]->bar_nm : MISSING };
+    examine_options x = { &r->protocol, r->o->px_nm, r->o->bar_nm, r->out, r->o->fresh };
     int progress = !r->o->quiet && (r->o->verbose || isatty(STDERR_FILENO));
     status st = batch_examine(items, f->n, &x, r->o->jobs, progress, r->images, e);
     free(items);

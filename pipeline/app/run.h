@@ -6,6 +6,7 @@
 typedef struct {
     const char *folder, *protocol, *sheet, *out, *history; /* NULL: the default */
     double px_nm;        /* --px, NAN: none */
+    double bar_nm;       /* --bar, NAN: none */
     int jobs;            /* 0 = one per core */
     int gate, no_report, fresh, quiet, verbose;
 } run_options;
