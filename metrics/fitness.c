@@ -113,6 +113,18 @@ static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
     return blur;
 }
 
+/* Creases keep the spectrum of a texture above its noise far beyond the ring; where it ends early although the ring
+ * stands high, the picture has lost its detail. */
+static double finest_detail(const curve *psd, double d, double floor) {
+    const double from = 1.2, step = 1.05, band = 1.04, end = 0.45;
+    double x = from;
+    for (; x / d < end; x *= step) {
+        double p = power_between(psd, x / d / band, x / d * band, 0.0, 0.0);
+        if (isfinite(p) && !(p > 2.0 * floor)) break;
+    }
+    return x;
+}
+
 /* ---- streaks ---- */
 
 static int by_value(const void *a, const void *b) {
@@ -265,7 +277,7 @@ static status line_jitter(const float *f, size_t nx, size_t ny, double d, double
 
 status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e) {
     size_t nx = p->nx, ny = p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
     curve radial = { 0 };
     double sum = 0.0, streaks = 0.0;
     float *psd = mem_array(ny * (nx / 2 + 1), sizeof *psd);
@@ -279,7 +291,11 @@ status fitness_look(const float *f, const plane *p, double d_px, sharpness *out,
         s.noise_sd = fmin(sqrt(floor), noise_sd(f, nx, ny));
         s.texture_sd = sqrt(fmax(0.0, sum / (double)(nx * ny) - s.noise_sd * s.noise_sd));
         if (s.texture_sd > 0.0) s.streaks = streaks / (s.texture_sd * s.texture_sd);
-        if (d_px > 0.0) s.blur_sd_px = blur_of(&radial, d_px, floor, nx * ny);
+        if (d_px > 0.0) {
+            s.blur_sd_px = blur_of(&radial, d_px, floor, nx * ny);
+            s.detail = finest_detail(&radial, d_px, floor);
+            s.ring_over_noise = log(power_between(&radial, 0.8 / d_px, 1.4 / d_px, floor, 0.0) / fmax(floor, 1e-30));
+        }
         s.second_px = spacing_second(&radial, d_px, nx, ny);
         *out = s;
     }
@@ -311,9 +327,19 @@ static void judge_stretch(const sharpness *s, const measure_options *o, double d
 }
 
 /* Blur merges features, and the spacing it is compared with grows with it: a ratio well below the limit
- * together with sizes spread too widely, or a relief that has lost its sign, is as bad as one above. */
-static void judge_blur(double blur, const measure_options *o, texture *t) {
-    const double merged_gsd = 1.35;
+ * together with sizes spread too widely, or a relief that has lost its sign, is as bad as one above. Once most features
+ * have merged, what is left looks like a coarser, smooth texture without blur; it gives itself away by lacking detail
+ * that its noise would let through, by sizes wider than an ordered texture has, or by two spacings that disagree. */
+static void judge_blur(const sharpness *s, double d, const measure_options *o, texture *t) {
+    const double merged_gsd = 1.35, coarse_gsd = 1.26, disagree = 0.15, least_ring = 2.5, end = 0.45;
+    /* Sharp textures with strong to weak noise: detail = exp(0.16 + 0.17 ln(ring / noise)), +-6 %; merged ones 9 to 35 % less. */
+    const double shortfall = 0.925;
+    double expected = fmin(6.0, exp(0.16 + 0.17 * s->ring_over_noise));
+    double blur = s->blur_sd_px / d;
+    int seen_to_end = s->detail / d >= end;
+    int bare = s->detail < shortfall * expected && !seen_to_end && s->ring_over_noise > least_ring;
+    int odd = t->size_gsd.value > coarse_gsd || fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > disagree;
+    if (bare && odd) t->reasons |= FLAG(BLURRED);
     limit(t, blur, o->warn_blur, o->max_blur, FLAG(UNSHARP), FLAG(BLURRED));
     if (blur > o->warn_blur && (t->size_gsd.value > merged_gsd || (t->flags & FLAG(RELIEF_UNSURE))))
         t->reasons |= FLAG(BLURRED);
@@ -341,7 +367,7 @@ void fitness_judge(const sharpness *s, const plane *p, const measure_options *o,
         else
             t->reasons |= FLAG(NO_RING);
     }
-    judge_blur(s->blur_sd_px / d, o, t);
+    judge_blur(s, d, o, t);
     limit(t, t->noise_rel.value * noise_at_px / d, o->warn_noise, o->max_noise, FLAG(NOISY), FLAG(NOISY));
     limit(t, s->streaks, o->warn_streaks, o->max_streaks, FLAG(STREAKS), FLAG(STREAKS));
     if (isfinite(t->second_spacing_px)) t->flags |= FLAG(TWO_SPACINGS);

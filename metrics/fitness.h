@@ -1,6 +1,5 @@
 /* Can this micrograph carry the numbers? Measures of blur, noise, streaks and line jitter, and the verdict.
- * The limits live
- * in measure_options; their defaults are set and justified in the .c. A refused micrograph costs the user a
+ * The limits live in measure_options; their defaults are set and justified in the .c. A refused micrograph costs the user a
  * sample, a flagged one a glance: limits of exclusion are wide, those of remarks narrow. */
 #ifndef SWARD_METRICS_FITNESS_H
 #define SWARD_METRICS_FITNESS_H
@@ -11,6 +10,8 @@ typedef struct {
     /* sd of the blur that must be undone for the noise-corrected spectrum to fall like that of a surface with
      * creases; 0 none, NAN unknown (no scale, or nothing above the noise) */
     double blur_sd_px;
+    double detail; /* finest spatial frequency at which the texture equals the noise, in 1 / spacing; NAN unknown */
+    double ring_over_noise; /* ln of the power at the ring / noise */
     /* grey; level of the end of the spectrum, or Immerkaer's when that is lower */
     double noise_sd;
     double texture_sd; /* grey, noise removed */
