@@ -1,6 +1,6 @@
 /* Layers from below: stretched grey levels, cell borders (half transparent, one pixel per 1200 px of width), guard
- * frame (dark and bright dashes, so that it shows on any ground), markers (bright core, dark rim), legend panel, reason
- * band. The hues differ in brightness too and stay apart for colour-blind eyes. The picture is for people: no number is
+ * frame (dark and bright dashes, so that it shows on any ground), markers (bright core, dark rim). Legend and reasons
+ * stand below the picture, never on it. The hues differ in brightness too and stay apart for colour-blind eyes. The picture is for people: no number is
  * ever read back from it. */
 #include "report/overlay.h"
 
@@ -168,16 +168,15 @@ typedef struct {
     ink i;
 } legend_line;
 
-static void draw_legend(canvas *c, const legend_line *line, size_t n, int unit) {
-    long measure = 0, text = 0, row = (FONT_HEIGHT + 3L) * unit, pad = 4L * unit;
+static long legend_height(size_t n, int unit) { return (long)n * (FONT_HEIGHT + 3L) * unit + 6L * unit; }
+
+static void draw_legend(canvas *c, long top, const legend_line *line, size_t n, int unit) {
+    long measure = 0, row = (FONT_HEIGHT + 3L) * unit, pad = 4L * unit;
     for (size_t k = 0; k < n; k++) {
-        long l = (long)ceil(line[k].length_px), w = canvas_text_width(line[k].label, unit);
+        long l = (long)ceil(line[k].length_px);
         if (l > measure) measure = l;
-        if (w > text) text = w;
     }
-    long width = pad + measure + 2L * pad + text + pad, height = (long)n * row + 2L * pad - 2L * unit;
-    long top = (long)c->ny - height;
-    canvas_fill(c, 0, top, width, (long)c->ny, panel_ink);
+    canvas_fill(c, 0, top, (long)c->nx, top + legend_height(n, unit), panel_ink);
     for (size_t k = 0; k < n; k++) {
         long y = top + pad + (long)k * row;
         if (line[k].length_px > 0.0)
@@ -186,17 +185,18 @@ static void draw_legend(canvas *c, const legend_line *line, size_t n, int unit) 
     }
 }
 
-static void add_legend(canvas *c, const micrograph *m, const texture *t, int unit) {
-    legend_line line[3] = { 0 };
+enum { LEGEND_LINES = 3 };
+
+static size_t make_legend(const micrograph *m, const texture *t, legend_line line[LEGEND_LINES]) {
     size_t n = 0;
     char number[NUMBER_TEXT];
     int known = isfinite(m->px_nm) && m->px_nm > 0.0;
-    double px = known ? m->px_nm : 1.0, bar = round_length(0.22 * (double)c->nx * px), d = spacing_px(t);
+    double px = known ? m->px_nm : 1.0, bar = round_length(0.22 * (double)m->nx * px), d = spacing_px(t);
     const char *length_unit = known ? "nm" : "px";
     snprintf(line[n].label, sizeof line[n].label, "%s %s", number_text(bar, 4, number), length_unit);
     line[n].i = paper_ink;
     line[n++].length_px = bar / px;
-    if (isfinite(d) && d > 0.0 && d < (double)c->nx) {
+    if (isfinite(d) && d > 0.0 && d < (double)m->nx) {
         snprintf(line[n].label, sizeof line[n].label, "spacing %s %s",
                  number_text(d * px, spacing_digits(), number), length_unit);
         line[n].i = marker_ink;
@@ -204,11 +204,12 @@ static void add_legend(canvas *c, const micrograph *m, const texture *t, int uni
     }
     snprintf(line[n].label, sizeof line[n].label, "%zu features counted", t->n_features);
     line[n++].i = paper_ink;
-    draw_legend(c, line, n, unit);
+    return n;
 }
 
-/* "excluded: few pixels, blurred", broken at blanks into lines that fit. */
-static void draw_reasons(canvas *c, flags reasons, int unit) {
+/* "excluded: few pixels, blurred", broken at blanks into lines that fit, from row `top` of the picture on. Returns the
+ * rows it takes; draws nothing where c->rgb is NULL. */
+static long draw_reasons(canvas *c, long top, flags reasons, int unit) {
     char text[1200] = "excluded: ";
     size_t n = strlen(text);
     for (int bit = 0, first = 1; bit < FLAG_COUNT; bit++) {
@@ -223,6 +224,7 @@ static void draw_reasons(canvas *c, flags reasons, int unit) {
     long pad = 4L * unit, row = (FONT_HEIGHT + 2L) * unit;
     size_t fit = (size_t)fmax(4.0, ((double)c->nx - 2.0 * (double)pad) / (FONT_ADVANCE * unit));
     long y = 0;
+    if (!reasons) return 0;
     for (char *line = text; *line;) {
         size_t length = strlen(line), take = length <= fit ? length : fit;
         if (length > fit)
@@ -233,13 +235,14 @@ static void draw_reasons(canvas *c, flags reasons, int unit) {
                 }
         char kept = line[take];
         line[take] = '\0';
-        canvas_fill(c, 0, y, (long)c->nx, y + row + (y ? 0 : pad), band_ink);
-        canvas_text(c, pad, y ? y : pad, unit, line, paper_ink);
+        if (c->rgb) canvas_fill(c, 0, top + y, (long)c->nx, top + y + row + (y ? 0 : pad), band_ink);
+        if (c->rgb) canvas_text(c, pad, top + (y ? y : pad), unit, line, paper_ink);
         y += row + (y ? 0 : pad);
         line[take] = kept;
         line += take;
         while (*line == ' ') line++;
     }
+    return y;
 }
 
 /* One unit of the lettering: letters about 10 px high when the picture is looked at 640 px wide. */
@@ -248,7 +251,7 @@ static int lettering(size_t nx) {
     return nx < 500 ? 1 : unit < 2 ? 2 : unit;
 }
 
-status overlay_draw(const micrograph *m, const texture *t, uint8_t **rgb, error *e) {
+status overlay_draw(const micrograph *m, const texture *t, uint8_t **rgb, size_t *ny, error *e) {
     if (!m->px || !m->nx || !m->ny)
         return fail(e, ST_BAD_INPUT, "the overlay needs a picture, this one is empty");
     if (m->nx > LIMIT_PIXELS / m->ny) return fail(e, ST_NO_MEMORY, "the picture is too large for an overlay");
@@ -258,17 +261,23 @@ status overlay_draw(const micrograph *m, const texture *t, uint8_t **rgb, error 
     stretch s;
     status st = find_stretch(m, &s, e);
     if (st) return st;
-    canvas c = { mem_array(m->nx * m->ny, 3), m->nx, m->ny };
-    if (!c.rgb) return NO_MEMORY(e, "the overlay");
     double scale = line_scale(m->nx);
     int unit = lettering(m->nx);
     flags reasons = t->reasons | (isfinite(m->px_nm) ? 0 : FLAG(NO_PIXEL_SIZE));
+    legend_line line[LEGEND_LINES] = { 0 };
+    size_t n = make_legend(m, t, line);
+    canvas whole = { NULL, m->nx, m->ny };
+    whole.ny += (size_t)(legend_height(n, unit) + draw_reasons(&whole, 0, reasons, unit));
+    whole.rgb = mem_array(m->nx * whole.ny, 3);
+    if (!whole.rgb) return NO_MEMORY(e, "the overlay");
+    canvas c = { whole.rgb, m->nx, m->ny }; /* the picture: nothing is written over it but what was found */
     draw_grey(&c, m, &s);
     draw_borders(&c, t, (size_t)lround(scale));
     draw_guard(&c, t, scale);
     draw_markers(&c, t, scale);
-    add_legend(&c, m, t, unit);
-    if (reasons) draw_reasons(&c, reasons, unit);
-    *rgb = c.rgb;
+    draw_legend(&whole, (long)m->ny, line, n, unit);
+    draw_reasons(&whole, (long)m->ny + legend_height(n, unit), reasons, unit);
+    *rgb = whole.rgb;
+    *ny = whole.ny;
     return ST_OK;
 }

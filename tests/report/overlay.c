@@ -57,11 +57,12 @@ static void marker_look(const uint8_t *rgb, long x0, long y0, long x1, long y1, 
 }
 
 static void check_marker(scene *s) {
+    size_t rows = 0;
     uint8_t *rgb = NULL;
     error e = { 0 };
     double x, y, area, r = overlay_marker_radius_px(&s->t, NX);
     CHECK_NEAR(r, 2.7, 1e-12); /* 0.09 of 30 px */
-    CHECK(overlay_draw(&s->m, &s->t, &rgb, &e) == ST_OK);
+    CHECK(overlay_draw(&s->m, &s->t, &rgb, &rows, &e) == ST_OK);
     marker_look(rgb, 70, 90, 90, 110, &x, &y, &area);
     CHECK_NEAR(x, 80.0, 0.01);
     CHECK_NEAR(y, 100.0, 0.01);
@@ -81,9 +82,10 @@ static void check_marker(scene *s) {
 static void check_grounds(scene *s) {
     for (int k = 0; k <= 4; k++) {
         uint8_t *rgb = NULL;
+        size_t rows = 0;
         error e = { 0 };
         scene_make(s, (float)k / 4.0f);
-        CHECK(overlay_draw(&s->m, &s->t, &rgb, &e) == ST_OK);
+        CHECK(overlay_draw(&s->m, &s->t, &rgb, &rows, &e) == ST_OK);
         const uint8_t *core = rgb + 3 * (100 * NX + 80), *ground = rgb + 3 * (100 * NX + 60);
         CHECK(abs(core[2] - ground[2]) > 60 || abs(core[0] - ground[0]) > 60);
         free(rgb);
@@ -91,35 +93,40 @@ static void check_grounds(scene *s) {
 }
 
 static void check_band(scene *s) {
+    size_t rows = 0;
     uint8_t *plain = NULL, *band = NULL;
     error e = { 0 };
     scene_make(s, 0.5f);
-    CHECK(overlay_draw(&s->m, &s->t, &plain, &e) == ST_OK);
+    CHECK(overlay_draw(&s->m, &s->t, &plain, &rows, &e) == ST_OK);
+    size_t without = rows;
+    CHECK(without > NY && without < NY + 60); /* the legend stands below the picture */
     s->t.reasons = FLAG(FEW_PIXELS) | FLAG(BLURRED);
-    CHECK(overlay_draw(&s->m, &s->t, &band, &e) == ST_OK);
-    const uint8_t *a = plain + 3 * (2 * NX + 200), *b = band + 3 * (2 * NX + 200);
-    CHECK(a[0] == a[1] && b[0] > b[1] + 60);
+    CHECK(overlay_draw(&s->m, &s->t, &band, &rows, &e) == ST_OK);
+    CHECK(rows > without && !memcmp(plain, band, (size_t)NX * NY * 3)); /* and so do the reasons */
+    const uint8_t *b = band + 3 * ((rows - 2) * NX + 300);
+    CHECK(b[0] > b[1] + 60);
     free(band);
     s->t.reasons = 0;
     s->m.px_nm = MISSING; /* no scale is a reason too */
-    CHECK(overlay_draw(&s->m, &s->t, &band, &e) == ST_OK);
-    CHECK(band[3 * (2 * NX + 200)] > band[3 * (2 * NX + 200) + 1] + 60);
+    CHECK(overlay_draw(&s->m, &s->t, &band, &rows, &e) == ST_OK);
+    CHECK(band[3 * ((rows - 2) * NX + 300)] > band[3 * ((rows - 2) * NX + 300) + 1] + 60);
     free(band);
     free(plain);
 }
 
 static void check_errors(scene *s) {
+    size_t rows = 0;
     uint8_t *rgb = NULL;
     error e = { 0 };
     scene_make(s, 0.5f);
-    CHECK_FAILS(overlay_draw(&(micrograph){ 0 }, &s->t, &rgb, &e), ST_BAD_INPUT, e, "empty");
+    CHECK_FAILS(overlay_draw(&(micrograph){ 0 }, &s->t, &rgb, &rows, &e), ST_BAD_INPUT, e, "empty");
     s->t.nx = NX - 1;
-    CHECK_FAILS(overlay_draw(&s->m, &s->t, &rgb, &e), ST_BUG, e, "319 x 240");
+    CHECK_FAILS(overlay_draw(&s->m, &s->t, &rgb, &rows, &e), ST_BUG, e, "319 x 240");
     s->t.nx = NX;
     mem_fail_after(1);
-    CHECK_FAILS(overlay_draw(&s->m, &s->t, &rgb, &e), ST_NO_MEMORY, e, "overlay");
+    CHECK_FAILS(overlay_draw(&s->m, &s->t, &rgb, &rows, &e), ST_NO_MEMORY, e, "overlay");
     mem_fail_after(2);
-    CHECK_FAILS(overlay_draw(&s->m, &s->t, &rgb, &e), ST_NO_MEMORY, e, "overlay");
+    CHECK_FAILS(overlay_draw(&s->m, &s->t, &rgb, &rows, &e), ST_NO_MEMORY, e, "overlay");
     mem_fail_after(0);
     /* nothing found, no spacing, no cells, tiny and flat */
     texture none = { 0 };
@@ -127,13 +134,13 @@ static void check_errors(scene *s) {
     for (size_t i = 0; i < (size_t)NX * NY; i++) s->px[i] = 0.25f;
     micrograph tiny = { .px = s->px, .nx = 32, .ny = 32, .px_nm = 4.0 };
     none.reasons = FLAG(FEATURELESS) | FLAG(NOISY) | FLAG(STREAKS);
-    CHECK(overlay_draw(&tiny, &none, &rgb, &e) == ST_OK);
+    CHECK(overlay_draw(&tiny, &none, &rgb, &rows, &e) == ST_OK);
     free(rgb);
     /* features outside the picture are clipped */
     s->f[0].x = -1e9;
     s->f[1].y = 1e9;
     s->f[2].x = MISSING;
-    CHECK(overlay_draw(&s->m, &s->t, &rgb, &e) == ST_OK);
+    CHECK(overlay_draw(&s->m, &s->t, &rgb, &rows, &e) == ST_OK);
     free(rgb);
 }
 
