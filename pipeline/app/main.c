@@ -16,6 +16,7 @@ static const command commands[] = {
     { "measure", cmd_measure, &measure_argp, "texture numbers only" },
     { "inspect", cmd_inspect, &inspect_argp, "what a file itself says: pixel size, strip, facts" },
     { "predict", cmd_predict, &predict_argp, "reflectance from numbers" },
+    { "fit", cmd_fit, &fit_argp, "the link calibrated on measured spectra" },
     { "window", cmd_window, &window_argp, "process window: reflectance over spacing and height" },
     { "render", cmd_render, &render_argp, "micrographs of known truth" },
     { "history", cmd_history, &history_argp, "the ledger of every sample measured so far" },
