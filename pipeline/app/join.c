@@ -25,7 +25,19 @@ void joined_free(joined *j) {
     *j = (joined){ 0 };
 }
 
-static int used(const examined *x) { return x->readable && !x->reasons && !(x->flags & FLAG(DUPLICATE)); }
+static int fit(const examined *x) { return x->readable && !x->reasons; }
+
+/* Whether member i counts: fit, and not the same bytes as a fit one before it in this sample. */
+static int enters(const sample_group *g, const examined *all, size_t i) {
+    const examined *x = &all[g->members[i]];
+    if (!fit(x)) return 0;
+    if (!(x->flags & FLAG(DUPLICATE))) return 1;
+    for (size_t k = 0; k < i; k++) {
+        const examined *before = &all[g->members[k]];
+        if (fit(before) && !strcmp(before->hash, x->hash)) return 0;
+    }
+    return 1;
+}
 
 static status pool(const sample_group *g, const examined *all, figure out[QUANTITIES], flags *seen, size_t *n_used,
                    error *e) {
@@ -34,18 +46,23 @@ static status pool(const sample_group *g, const examined *all, figure out[QUANTI
     status st = m && weight ? ST_OK : NO_MEMORY(e, "a sample");
     for (int q = 0; st == ST_OK && q < QUANTITIES; q++) {
         size_t n = 0;
-        double u_px_rel = 0.0;
+        double u_px_rel = 0.0, count_u_rel = 0.0, features = 0.0;
         for (size_t i = 0; i < g->n_members; i++) {
             const examined *x = &all[g->members[i]];
-            if (!used(x)) continue;
+            if (!enters(g, all, i)) continue;
             m[n] = x->figures[q].m;
             weight[n++] = (double)x->row.n_features;
+            features += (double)x->row.n_features;
+            count_u_rel += x->count_u_rel * (double)x->row.n_features;
             if (x->px_u_rel > u_px_rel) u_px_rel = x->px_u_rel;
             *seen |= x->flags;
         }
         *n_used = n;
-        out[q] = (figure){ { MISSING, MISSING, MISSING, 0 }, 0.0 };
-        pool_quantity(m, weight, n, &out[q].m); /* nowhere measured: stays missing */
+        pooled joint;
+        pool_parts(m, weight, n, &joint); /* nowhere measured: stays missing */
+        out[q] = (figure){ .m = joint.m, .u_within = joint.within, .u_between = joint.between,
+                           .dof_sampling = joint.dof, .micrographs = joint.micrographs };
+        figure_detection(&out[q], q, features > 0.0 ? count_u_rel / features : 0.0);
         out[q].u_px = fabs(quantity_table[q].power * out[q].m.value) * u_px_rel;
     }
     free(weight);
@@ -88,7 +105,7 @@ static status gather_cells(const sample_group *g, const examined *all, double **
     if (!*areas) return NO_MEMORY(e, "the cells of a sample");
     for (size_t i = 0; i < g->n_members; i++) {
         const examined *x = &all[g->members[i]];
-        if (!used(x)) continue;
+        if (!enters(g, all, i)) continue;
         memcpy(*areas + *n, x->cell_area_nm2, x->n_cells * sizeof **areas);
         *n += x->n_cells;
     }
@@ -104,7 +121,7 @@ static status link_and_predict(const sample_group *g, const examined *all, const
     const calibration *c = s->calibrated.link.n_samples && !in.measured ? &s->calibrated.link : NULL;
     in.spacing_nm = (quantity){ spacing->m.value, figure_u(spacing), spacing->m.n };
     for (size_t i = 0; i < g->n_members; i++)
-        if (used(&all[g->members[i]])) in.pores = all[g->members[i]].relief == RELIEF_PORE;
+        if (enters(g, all, i)) in.pores = all[g->members[i]].relief == RELIEF_PORE;
 
     status st = calibrated_height(c, g->height_nm, &in.link, in.spacing_nm, &in.height_nm, &source, e);
     if (st == ST_OK && fabs(in.link.height_by_size) > 0.0) {
@@ -230,7 +247,7 @@ static status fingerprint(const sample_group *g, const examined *all, const char
     text_addf(&t, "%s|%s|%s|%.17g|%.17g", basis, g->name, g->etched_at, g->height_nm.value, g->height_nm.u);
     for (size_t i = 0; i < g->n_members; i++) {
         const examined *x = &all[g->members[i]];
-        text_addf(&t, "|%s|%d|%.17g", x->hash, used(x), x->row.px_nm);
+        text_addf(&t, "|%s|%d|%.17g", x->hash, enters(g, all, i), x->row.px_nm);
     }
     status st = text_check(&t, "a fingerprint", e);
     if (st == ST_OK) sha256_hex(t.s, t.n, out);
