@@ -19,7 +19,7 @@
 #include "io/sidecar_priv.h"
 #include "io/strip_priv.h"
 
-static const double worth_correcting = 0.001, steepest_tilt_deg = 60.0;
+static const double worth_correcting = 0.001, steepest_tilt_deg = 60.0, same_nominal = 0.005;
 
 load_options load_defaults(void) {
     return (load_options){ .px_nm_option = MISSING,
@@ -135,6 +135,29 @@ static void judge_tilt(const load_options *o, micrograph *m) {
              f->tilt_deg, f->turned ? " and the scan turned" : "");
 }
 
+/* The standard speaks for a micrograph of the same nominal pixel size, or, where the file does not say that, of
+ * the same magnification and width. */
+static int standard_applies(const scale_standard *k, const picture *p) {
+    double nominal = MISSING;
+    scale_rank best = SCALE_RESOLUTION;
+    for (size_t i = 0; i < p->scales.n; i++) {
+        const scale *s = &p->scales.list[i];
+        if (s->rank <= SCALE_BAR || s->rank > best || (s->rank == best && isfinite(nominal))) continue;
+        best = s->rank;
+        nominal = s->x_nm;
+    }
+    if (k->nominal_px_nm > 0.0 && isfinite(nominal))
+        return fabs(nominal / k->nominal_px_nm - 1.0) <= same_nominal;
+    return k->magnification > 0.0 && fabs(p->facts.magnification / k->magnification - 1.0) <= same_nominal &&
+           p->nx == k->width_px;
+}
+
+static void apply_standard(const scale_standard *k, picture *p) {
+    if (!standard_applies(k, p)) return;
+    scales_add_u(&p->scales, SCALE_STANDARD, "standard", k->px_x_nm, k->px_y_nm, k->u_rel);
+    note_add(p->note, "Pixel size by the standard '%.120s' of %s.", k->name, k->date);
+}
+
 /* The user says what the bar stands for; one pixel either way, uniform, is the uncertainty of its length. */
 static void measure_bar(double bar_nm, size_t top, size_t bottom, picture *p) {
     size_t n = bar_find(p->px, p->nx, p->ny, top, bottom);
@@ -171,6 +194,7 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
         r.strip_rows += r.strip_top;
     }
     r.ny = p.ny - r.strip_rows;
+    if (o->standard) apply_standard(o->standard, &p);
     if (o->bar_nm > 0.0) measure_bar(o->bar_nm, r.strip_top, r.strip_rows - r.strip_top, &p);
     if (r.nx < LIMIT_MIN_SIDE || r.ny < LIMIT_MIN_SIDE) {
         st = fail(e, ST_BAD_INPUT, "the picture has only %zu x %zu pixels; at least %zu a side are needed",

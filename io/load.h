@@ -6,6 +6,14 @@
 #include "base/status.h"
 #include "io/micrograph.h"
 
+/* What a standard of known pitch said about the pixels of one magnification. */
+typedef struct {
+    char name[160], date[32];
+    double px_x_nm, px_y_nm, u_rel;
+    double nominal_px_nm, magnification; /* of the micrographs it is for; NAN or 0: not known, at least one is */
+    size_t width_px;
+} scale_standard;
+
 typedef struct {
     double px_nm_option; /* --px, nm per pixel; NAN: none. Outranks all */
     double px_nm_sheet;  /* sample sheet column px_nm; NAN: none */
@@ -13,6 +21,7 @@ typedef struct {
     double bar_nm;       /* what the burnt-in scale bar stands for, nm; NAN: the user does not say */
     int crop_strip;      /* find and crop the info strip */
     int correct_tilt;    /* stretch the rows of a tilted view the instrument has not corrected */
+    const scale_standard *standard; /* replaces the instrument's own pixel size where it applies; NULL: none; borrowed */
     size_t max_pixels;   /* refuse larger pictures */
 } load_options;
 

@@ -38,7 +38,7 @@ typedef struct {
     double clipped_low, clipped_high; /* share of the plane's pixels at the lowest / highest level the file can hold */
     double px_nm;          /* pixel size, nm; NAN: unknown */
     double px_u_rel;       /* relative standard uncertainty of px_nm; NAN with it */
-    char px_source[24];    /* option sheet bar sidecar "tag N" ome-xml description sCAL resolution pHYs none */
+    char px_source[24];    /* option sheet standard bar sidecar "tag N" ome-xml description sCAL resolution pHYs none */
     char acquired_at[32];  /* ISO 8601 when the file says so, else "" */
     char hash[65];         /* SHA-256 of the file's bytes, lower-case hex */
     flags flags;           /* PX_DISAGREE, PX_UNEQUAL, COLOUR ... */

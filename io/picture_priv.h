@@ -9,10 +9,11 @@
 #include "base/status.h"
 #include "io/micrograph.h"
 
-/* Order of trust, the most specific first; `option`, `sheet` and `bar` come from the caller. */
+/* Order of trust, the most specific first; `option`, `sheet`, `standard` and `bar` come from the caller. */
 typedef enum {
     SCALE_OPTION,
     SCALE_SHEET,
+    SCALE_STANDARD, /* a grating measured at the same nominal pixel size */
     SCALE_BAR, /* the user says what the burnt-in bar stands for */
     SCALE_SIDECAR,
     SCALE_TAG,

@@ -10,6 +10,8 @@
 #include "io/pixelsize_priv.h"
 
 static const double gate_nm = 1000.0, agree = 0.02, square = 0.001, smallest_nm = 0.01, largest_nm = 1e5;
+static const double day_to_day =
+    0.001; /* of a magnification since its standard was measured; a rule of ours */
 static const double most_unequal = 4.0; /* beyond: two different axes, not a picture of a surface */
 
 static int is_screens(const scale *k) {
@@ -78,7 +80,8 @@ void pixelsize_choose(const scales *s, double px_u_rel, micrograph *m) {
         return;
     }
     m->px_nm = best->x_nm;
-    m->px_u_rel = isfinite(best->u_rel) && best->u_rel > px_u_rel ? best->u_rel : px_u_rel;
+    double least = best->rank == SCALE_STANDARD ? day_to_day : px_u_rel;
+    m->px_u_rel = isfinite(best->u_rel) && best->u_rel > least ? best->u_rel : least;
     memcpy(m->px_source, best->name, sizeof m->px_source);
     if (fabs(best->y_nm / best->x_nm - 1.0) > square) {
         m->flags |= FLAG(PX_UNEQUAL);

@@ -12,6 +12,7 @@
 #include "io/json.h"
 #include "io/load.h"
 #include "io/png_write.h"
+#include "metrics/uncertainty.h"
 #include "report/overlay.h"
 #include "report/results.h"
 
@@ -206,6 +207,8 @@ static status fill_row(examined *x, const micrograph *m, const texture *t, doubl
     if (!r->px_source || !r->relief) return NO_MEMORY(e, "a row");
     for (int q = 0; q < QUANTITIES; q++) {
         x->figures[q] = figure_in_nm(texture_figure(t, q), quantity_table[q].power, m->px_nm, px_u_rel);
+        x->figures[q].dof_sampling = field_dof((double)t->n_features);
+        figure_detection(&x->figures[q], q, t->count_u_rel);
         double *v = (double *)(void *)((char *)r + quantity_table[q].in_image);
         v[0] = x->figures[q].m.value;
         v[1] = figure_u(&x->figures[q]);
@@ -213,6 +216,7 @@ static status fill_row(examined *x, const micrograph *m, const texture *t, doubl
     x->readable = 1;
     x->relief = t->relief;
     x->px_u_rel = px_u_rel;
+    x->count_u_rel = t->count_u_rel;
     x->reasons = t->reasons;
     x->flags = t->flags | m->flags;
     if (!isfinite(m->px_nm)) x->reasons |= FLAG(NO_PIXEL_SIZE);
@@ -278,6 +282,7 @@ status examine(const char *path, const char *relative, const char *stem, double 
     load.px_nm_option = o->px_nm_option;
     load.px_nm_sheet = sheet_px_nm;
     load.bar_nm = isfinite(sheet_bar_nm) ? sheet_bar_nm : o->bar_nm_option;
+    load.standard = o->standard;
 
     missing_row(&out->row);
     out->row.file = mem_text(relative);

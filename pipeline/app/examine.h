@@ -3,11 +3,13 @@
 #define SWARD_APP_EXAMINE_H
 #include "app/protocol.h"
 #include "app/quantities.h"
+#include "io/load.h"
 
 typedef struct {
     const protocol *protocol;
     double px_nm_option;  /* --px; NAN: none */
     double bar_nm_option; /* --bar; NAN: none */
+    const scale_standard *standard; /* --scale; NULL: none */
     const char *out;      /* output folder; NULL: no files (the command `measure`) */
     int fresh;            /* 1: what was remembered is not used */
 } examine_options;
@@ -24,7 +26,7 @@ typedef struct {
     figure figures[QUANTITIES];
     double *cell_area_nm2; /* [n_cells] of the features, owned */
     size_t n_cells;
-    double px_u_rel;
+    double px_u_rel, count_u_rel; /* of the pixel size; of the number of features */
 } examined;
 
 /*   in   path opened; relative as it stands in the tables; stem of the output files ("sub/name")

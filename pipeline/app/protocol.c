@@ -63,7 +63,7 @@ static void targets_free(protocol *p) {
 }
 
 void protocol_free(protocol *p) {
-    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->calibration, p->ambient, p->substrate, p->sun, p->history };
+    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->calibration, p->ambient, p->substrate, p->sun, p->scale, p->history };
     for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
     for (size_t i = 0; i < LIMIT_COATINGS; i++) free(p->coatings[i].material);
     targets_free(p);

@@ -47,6 +47,7 @@ typedef struct {
     double band_lo_nm, band_hi_nm, step_nm;
     target *targets; /* [n_targets], in the order of the file; owned */
     size_t n_targets;
+    char *scale;   /* scale file of `sward scale`, usable from here; NULL: none */
     char *history; /* path, usable from here; NULL: OUT/history.sqlite */
 } protocol;        /* {0} = empty; strings owned */
 

@@ -65,6 +65,7 @@ const protocol_key protocol_keys[] = {
     WORD("", "relief", measure.relief, relief_word, 1, "what a feature is: a bright hillock, a dark pore, or auto: found in each picture"),
     WORD("", "spacing", spacing, spacing_word, 0, "which spacing is the sample's spacing_nm: first ring of the autocorrelation, or hexagonal spacing of the density"),
     { "", "px_u_rel", KEY_NUMBER, AT(px_u_rel), "", 0.0, 0.5, 0, NULL, 1, "relative standard uncertainty of every pixel size; null: what its source says, else 0.01" },
+    PATH("", "scale", scale, "scale file that sward scale saved: replaces the instrument's pixel size where it applies, relative to this file"),
     PATH("", "history", history, "ledger of all samples, relative to this file; null: history.sqlite in the output folder"),
     { "", "targets", KEY_TARGETS, AT(targets), "", 0, 0, 0, NULL, 0, "a quantity of samples.csv with min, max or both, and \"error\": \"repeat\" when only what varies from run to run counts" },
 

@@ -8,9 +8,11 @@
 #include <unistd.h>
 
 #include "app/batch.h"
+#include "app/dryrun.h"
 #include "app/folder.h"
 #include "app/ledger.h"
 #include "app/publish.h"
+#include "app/scalefile.h"
 #include "base/mem.h"
 #include "io/file.h"
 
@@ -18,6 +20,8 @@
 typedef struct {
     const run_options *o;
     protocol protocol;
+    scale_standard standard;
+    int has_standard;
     setup *setup;
     folder folder;
     examined *images;
@@ -59,6 +63,11 @@ static status read_protocol(run *r, error *e) {
                 : file_exists(beside) ? protocol_read(beside, &r->protocol, e)
                                       : protocol_defaults(&r->protocol, e);
     free(beside);
+    const char *scale = o->scale ? o->scale : r->protocol.scale;
+    if (st == ST_OK && scale) {
+        st = scalefile_read(scale, &r->standard, e);
+        r->has_standard = st == ST_OK;
+    }
     return st;
 }
 
@@ -74,12 +83,15 @@ static status prepare(run *r, error *e) {
     st = setup_make(&r->protocol, r->setup, e);
     if (st == ST_OK) st = folder_open(o->folder, o->sheet, &r->folder, e);
     if (st == ST_OK && !r->folder.n)
-        st = fail(e, ST_BAD_INPUT, "'%s' holds no micrograph: no file below it is named like a picture (.png, .tif, .tiff)",
+        st = fail(e, ST_BAD_INPUT, "'%s' holds no micrograph: no file below it is named like a picture (.tif, .tiff, .png, .jpg)",
                   o->folder);
-    if (st == ST_OK) st = folder_make(r->out, e);
+    if (st == ST_OK && !o->dry_run) st = folder_make(r->out, e);
     text_addf(&r->basis, "%s|", SWARD_VERSION);
     protocol_full_text(&r->protocol, &r->basis);
     setup_text(r->setup, &r->basis);
+    if (r->has_standard)
+        text_addf(&r->basis, "|%s|%s|%.17g|%.17g|%.17g", r->standard.name, r->standard.date, r->standard.px_x_nm,
+                  r->standard.px_y_nm, r->standard.u_rel);
     return st == ST_OK ? text_check(&r->basis, "the protocol's fingerprint", e) : st;
 }
 
@@ -94,7 +106,7 @@ static status measure_all(run *r, error *e) {
     for (size_t i = 0; i < f->n; i++)
         items[i] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING,
                                  f->rows[i] ? f->rows[i]->bar_nm : MISSING };
-    examine_options x = { &r->protocol, r->o->px_nm, r->o->bar_nm, r->out, r->o->fresh };
+    examine_options x = { &r->protocol, r->o->px_nm, r->o->bar_nm, r->has_standard ? &r->standard : NULL, r->out, r->o->fresh };
     int progress = !r->o->quiet && (r->o->verbose || isatty(STDERR_FILENO));
     status st = batch_examine(items, f->n, &x, r->o->jobs, progress, r->images, e);
     free(items);
@@ -135,6 +147,13 @@ status run_folder(const run_options *o, run_outcome *outcome, error *e) {
     double t0 = now_s();
     utc_now(run_at);
     status st = prepare(&r, e);
+    if (st == ST_OK && o->dry_run) {
+        examine_options x = { &r.protocol, o->px_nm, o->bar_nm, r.has_standard ? &r.standard : NULL, NULL, 1 };
+        *outcome = (run_outcome){ 0, 0 };
+        st = dry_run(&r.folder, &x, &outcome->unusable, e);
+        run_free(&r);
+        return st;
+    }
     double t1 = now_s();
     if (st == ST_OK) st = measure_all(&r, e);
     double t2 = now_s();

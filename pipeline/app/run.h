@@ -4,10 +4,11 @@
 #include "base/status.h"
 
 typedef struct {
-    const char *folder, *protocol, *sheet, *out, *history; /* NULL: the default */
+    const char *folder, *protocol, *sheet, *out, *history, *scale; /* NULL: the default */
     double px_nm;        /* --px, NAN: none */
     double bar_nm;       /* --bar, NAN: none */
     int jobs;            /* 0 = one per core */
+    int dry_run;         /* say what would be measured, write nothing */
     int gate, no_report, fresh, quiet, verbose;
 } run_options;
 
