@@ -22,7 +22,7 @@ static const double CONVERGED = 1e-6;     /* of the sum of squares: a thousandth
 static const double ROUGH = 1e-3;         /* of the same, on the way from the starts */
 static const double SAME_POINT = 0.01;    /* of a parameter's own size: two starts ended in one valley */
 static const double TOGETHER_MOST = 0.98;
-enum { STARTS = 6, EVALUATIONS = 200, EVALUATIONS_ROUGH = 25 };
+enum { EVALUATIONS = 200 };
 
 static const char *const kind_names[FIT_KINDS] = { "height", "exponent", "spread", "floor", "offset" };
 
@@ -80,8 +80,8 @@ static void model_free(fit_model *f) {
     f->up = f->down = NULL;
 }
 
-static status fit_from(const fit_model *f, const double *starts, size_t n_starts, int rough, least_fit *out,
-                       error *e) {
+static status fit_from(const fit_model *f, const double *starts, size_t n_starts, int evaluations,
+                       least_fit *out, error *e) {
     size_t n = fit_parameters(f);
     double *bounds = mem_array(n, 2 * sizeof *bounds);
     if (!bounds) return NO_MEMORY(e, "a fit");
@@ -94,6 +94,7 @@ static status fit_from(const fit_model *f, const double *starts, size_t n_starts
         }
     least_problem p = least_defaults();
     fit_model own = *f;
+    int rough = evaluations < EVALUATIONS;
     if (rough) own.tolerance = 100.0 * FIT_TOLERANCE;
     p.n = n;
     p.m = f->m;
@@ -105,7 +106,7 @@ static status fit_from(const fit_model *f, const double *starts, size_t n_starts
     p.starts = starts;
     p.n_starts = n_starts;
     p.tolerance = rough ? ROUGH : CONVERGED;
-    p.max_evaluations = rough ? EVALUATIONS_ROUGH : EVALUATIONS;
+    p.max_evaluations = evaluations;
     status st = least_squares(&p, out, e);
     free(bounds);
     return st;
@@ -117,32 +118,49 @@ static int same_point(const double *a, const double *b, size_t n) {
     return 1;
 }
 
-/* The different ends of the rough fit, back into starts; those far worse than the best are left. */
-static size_t different_ends(const least_fit *rough, double *starts) {
-    size_t n = rough->n, kept = 0;
-    for (size_t s = 0; s < rough->n_starts; s++) {
-        const double *x = rough->end_x + s * n;
-        int known = !(rough->end_sum[s] <= 4.0 * rough->sum_of_squares);
-        for (size_t k = 0; k < kept; k++) known = known || same_point(starts + k * n, x, n);
+/* The different ends of a heat, best first and at most `most`, back into starts; those whose sum of squares is `hopeless`
+ * times the best one's are left. */
+static size_t different_ends(const least_fit *heat, size_t most, double hopeless, double *starts) {
+    size_t n = heat->n, kept = 0;
+    double least = MISSING;
+    for (double last = -1.0; kept < most;) {
+        size_t best = heat->n_starts;
+        for (size_t s = 0; s < heat->n_starts; s++)
+            if (heat->end_sum[s] > last && (best == heat->n_starts || heat->end_sum[s] < heat->end_sum[best]))
+                best = s;
+        if (best == heat->n_starts || (kept && heat->end_sum[best] > hopeless * least)) break;
+        if (!kept) least = heat->end_sum[best];
+        const double *x = heat->end_x + best * n;
+        int known = 0;
+        for (size_t k = 0; k < kept && !known; k++) known = same_point(starts + k * n, x, n);
         if (!known) memcpy(starts + kept++ * n, x, n * sizeof *x);
+        last = heat->end_sum[best];
     }
     return kept;
 }
 
-/* All starts roughly, then to the minimum from where they differ. */
+/* Few steps from many starts, more from the best of them, then to the minimum from those still apart. */
 static status fit_all(fit_model *f, least_fit *out, error *e) {
-    double *starts = mem_array(fit_parameters(f), STARTS * sizeof *starts);
-    least_fit rough = { 0 };
-    error own = { 0 };
+    static const struct {
+        int evaluations;
+        size_t most;
+        double hopeless;
+    } heats[] = { { 8, 8, 4.0 }, { 30, 4, 1.5 } };
+    double *starts = mem_array(fit_parameters(f), FIT_STARTS * sizeof *starts);
     size_t n = 0;
-    status st = starts ? fit_starts(f, STARTS, starts, &n, e) : NO_MEMORY(e, "the starts of a fit");
-    if (st == ST_OK) {
-        st = fit_from(f, starts, n, 1, &rough, &own);
-        if (st == ST_NO_RESULT && rough.n) st = ST_OK; /* it may still be on its way */
-        if (st != ST_OK) fail(e, st, "%s", own.text);
+    status st = starts ? fit_starts(f, starts, &n, e) : NO_MEMORY(e, "the starts of a fit");
+    for (size_t h = 0; h < sizeof heats / sizeof heats[0] && st == ST_OK; h++) {
+        least_fit heat = { 0 };
+        error own = { 0 };
+        st = fit_from(f, starts, n, heats[h].evaluations, &heat, &own);
+        if (st == ST_NO_RESULT && heat.n) st = ST_OK; /* still on its way */
+        if (st == ST_OK)
+            n = different_ends(&heat, heats[h].most, heats[h].hopeless, starts);
+        else
+            fail(e, st, "%s", own.text);
+        least_free(&heat);
     }
-    if (st == ST_OK) st = fit_from(f, starts, different_ends(&rough, starts), 0, out, e);
-    least_free(&rough);
+    if (st == ST_OK) st = fit_from(f, starts, n, EVALUATIONS, out, e);
     free(starts);
     return st;
 }
@@ -315,7 +333,7 @@ static status leave_out(const fit_model *f, const least_fit *all, size_t out, fi
             long from = fit_index(f, (fit_kind)k, s), to = fit_index(&rest, (fit_kind)k, s > out ? s - 1 : s);
             if (from >= 0 && (k != FIT_HEIGHT || s != out)) start[to] = all->x[from];
         }
-    if (st == ST_OK) st = fit_from(&rest, start, 1, 0, &fit, e);
+    if (st == ST_OK) st = fit_from(&rest, start, 1, EVALUATIONS, &fit, e);
     for (size_t s = 0; st == ST_OK && s < rest.n; s++) {
         fit_point p = fit_point_at(&rest, fit.x, s);
         aspect += p.value[FIT_HEIGHT] / rest.data[s].from->spacing_nm.value / (double)rest.n;

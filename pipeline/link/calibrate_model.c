@@ -3,8 +3,9 @@
  * Values closer than 5 nm are averaged in groups: the reflectance of such a texture has no finer structure, and the noise
  * averages out. Noise: each value against the straight line through its neighbours, median (robust against the texture's
  * own bends) over 0.6745, the deviation's variance being 1 + w^2 + (1 - w)^2 of one value's.
- * Starts: a scan over 48 heights (20 to 4000 nm) and eight exponents on 36 wavelengths, the offset by its mean.
- * For every exponent the best height of each sample, and the second best minimum; the best six go on.
+ * Starts: a scan over 56 heights (20 to 3000 nm) and 14 exponents on 72 wavelengths, the offset by its mean. For every
+ * exponent the best height of each sample, and the second best minimum. Tall and blunt at once (height x exponent above
+ * 5000 nm) is left out, here and in the fit: such profiles need thousands of slabs, and no etch makes them.
  * What this file does not do: light from the rear, diffuse scattering, the model's own error. */
 #include <math.h>
 #include <stdlib.h>
@@ -15,9 +16,10 @@
 #include "link/calibrate_priv.h"
 
 static const double GROUP_NM = 5.0;
-static const double SCAN_LO_NM = 20.0, SCAN_HI_NM = 4000.0, SCAN_TOLERANCE = 1e-3;
-static const double MAD = 0.6744897501960817; /* median of |normal| */
-enum { FEWEST = 8, SCAN_HEIGHTS = 48, SCAN_POINTS = 36, SCAN_EXPONENTS = 8 };
+static const double SCAN_LO_NM = 20.0, SCAN_HI_NM = 3000.0, SCAN_TOLERANCE = 1e-3;
+static const double TALL_AND_BLUNT_NM = 5000.0; /* height x exponent */
+static const double MAD = 0.6744897501960817;   /* median of |normal| */
+enum { FEWEST = 8, SCAN_HEIGHTS = 56, SCAN_POINTS = 72, SCAN_EXPONENTS = FIT_STARTS / 2 };
 
 const double fit_lower[FIT_KINDS] = { 10.0, 0.25, 0.0, 0.2, -0.05 };
 const double fit_upper[FIT_KINDS] = { 5000.0, 5.0, 0.5, 1.0, 0.05 };
@@ -147,6 +149,10 @@ status fit_residuals(void *user, const double *x, double *r, error *e) {
     for (size_t s = 0; s < f->n; s++) {
         const fit_data *d = &f->data[s];
         fit_point p = fit_point_at(f, x, s);
+        if (p.value[FIT_HEIGHT] * p.value[FIT_EXPONENT] > TALL_AND_BLUNT_NM) {
+            r[d->first] = MISSING; /* no place to go: the solver turns back */
+            continue;
+        }
         status st = fit_spectrum(f, &p, d->from->spacing_nm.value, d->wavelength_nm, d->n, r + d->first, e);
         if (st != ST_OK) return st;
         for (size_t i = 0; i < d->n; i++) r[d->first + i] -= d->R[i];
@@ -215,13 +221,15 @@ static status scan(const fit_model *f, size_t sample, const fit_point *shape, mi
     for (int i = 0; i < steps; i++) {
         fit_point p = *shape;
         p.value[FIT_HEIGHT] = steps > 1 ? scan_height(i) : d->from->height_nm.value;
+        at[i] = (double)INFINITY;
+        if (steps > 1 && p.value[FIT_HEIGHT] * p.value[FIT_EXPONENT] > TALL_AND_BLUNT_NM) continue;
         if (fit_is_free(f->o, FIT_SPREAD)) p.value[FIT_SPREAD] = 0.0; /* moves no minimum far, and is quick */
         status st = fit_spectrum(f, &p, d->from->spacing_nm.value, nm, n, R, e);
         if (st != ST_OK) return st;
         at[i] = misfit(f, R, measured, n);
     }
     for (int i = 0; i < steps; i++) {
-        if ((i > 0 && at[i - 1] <= at[i]) || (i + 1 < steps && at[i + 1] < at[i])) continue;
+        if (isinf(at[i]) || (i > 0 && at[i - 1] <= at[i]) || (i + 1 < steps && at[i + 1] < at[i])) continue;
         int place = at[i] < out->sum[0] ? 0 : at[i] < out->sum[1] ? 1 : 2;
         if (place == 2) continue;
         out->x[1] = place == 0 ? out->x[0] : out->x[1];
@@ -242,29 +250,14 @@ static void write_start(const fit_model *f, const fit_point *shape, const minima
         }
 }
 
-/* Puts a start into the list ordered by its sum; the list keeps the best `max`. */
-static void keep(const double *x, double sum, size_t n_x, size_t max, double *starts, double *sums,
-                 size_t *n) {
-    size_t at = *n;
-    while (at > 0 && sums[at - 1] > sum) at--;
-    if (at >= max) return;
-    size_t last = *n < max ? *n : max - 1;
-    for (size_t i = last; i > at; i--) {
-        sums[i] = sums[i - 1];
-        memcpy(starts + i * n_x, starts + (i - 1) * n_x, n_x * sizeof *x);
-    }
-    sums[at] = sum;
-    memcpy(starts + at * n_x, x, n_x * sizeof *x);
-    if (*n < max) ++*n;
-}
-
-status fit_starts(const fit_model *f, size_t max, double *starts, size_t *n, error *e) {
-    static const double exponents[SCAN_EXPONENTS] = { 1.0, 0.4, 0.7, 1.4, 1.8, 2.3, 3.0, 4.0 };
+status fit_starts(const fit_model *f, double *starts, size_t *n, error *e) {
+    static const double exponents[] = { 1.0,  0.35, 0.5, 0.7, 0.85, 1.2, 1.4,
+                                        1.65, 1.9,  2.2, 2.6, 3.0,  3.5, 4.2 };
+    _Static_assert(sizeof exponents / sizeof exponents[0] == SCAN_EXPONENTS, "two starts for every exponent");
     size_t n_x = fit_parameters(f);
     int shapes = fit_is_free(f->o, FIT_EXPONENT) ? SCAN_EXPONENTS : 1;
     minima *m = mem_array(f->n, sizeof *m);
-    double *x = mem_array(n_x, sizeof *x), *sums = mem_array(max, sizeof *sums);
-    status st = m && x && sums ? ST_OK : NO_MEMORY(e, "the starts of a fit");
+    status st = m ? ST_OK : NO_MEMORY(e, "the starts of a fit");
     fit_model coarse = *f;
     coarse.tolerance = SCAN_TOLERANCE;
     *n = 0;
@@ -272,24 +265,16 @@ status fit_starts(const fit_model *f, size_t max, double *starts, size_t *n, err
         const link_options *l = &f->o->link;
         fit_point shape = { { 0.0, shapes > 1 ? exponents[q] : l->exponent, l->height_spread, l->coverage,
                               0.0 } };
+        int second = 0;
         if (fit_is_free(f->o, FIT_SPREAD)) shape.value[FIT_SPREAD] = fmin(fmax(l->height_spread, 0.1), 0.4);
         if (fit_is_free(f->o, FIT_FLOOR)) shape.value[FIT_FLOOR] = fmin(fmax(l->coverage, 0.3), 0.9);
-        double sum[2] = { 0.0, 0.0 };
-        int second = 0;
         for (size_t s = 0; s < f->n && st == ST_OK; s++) {
             st = scan(&coarse, s, &shape, &m[s], e);
-            int has = isfinite(m[s].sum[1]);
-            second = second || has;
-            sum[0] += m[s].sum[0];
-            sum[1] += has ? m[s].sum[1] : m[s].sum[0];
+            second = second || isfinite(m[s].sum[1]);
         }
-        for (int which = 0; which <= second && st == ST_OK; which++) {
-            write_start(f, &shape, m, which, x);
-            keep(x, sum[which], n_x, max, starts, sums, n);
-        }
+        for (int which = 0; which <= second && st == ST_OK; which++)
+            write_start(f, &shape, m, which, starts + n_x * (*n)++);
     }
     free(m);
-    free(x);
-    free(sums);
     return st;
 }

@@ -47,8 +47,9 @@ status fit_spectrum(const fit_model *f, const fit_point *p, double spacing_nm, c
 status fit_residuals(void *user, const double *x, double *r, error *e);
 status fit_jacobian(void *user, const double *x, double *j, error *e);
 
-/* starts[max * parameters], the best minima of a scan over height and exponent; *n of them. */
-status fit_starts(const fit_model *f, size_t max, double *starts, size_t *n, error *e);
+/* starts[FIT_STARTS * parameters]: minima of a scan over height and exponent; *n of them. */
+enum { FIT_STARTS = 28 };
+status fit_starts(const fit_model *f, double *starts, size_t *n, error *e);
 
 /* The sentences of a fit that stands; fills remarks and determined. */
 void fit_remarks(const fit_sample *samples, const fit_options *o, const optics_setup *optics,
