@@ -9,11 +9,13 @@
 #include <math.h>
 
 #include "base/quantity.h"
+#include "metrics/student.h"
+#include "metrics/uncertainty.h"
 
 static int takes_part(const measured *m, double weight) { return isfinite(m->value) && weight > 0.0; }
 
 typedef struct {
-    double mean, within, between, method;
+    double mean, within, between, method, dof_within;
     size_t n, micrographs;
 } joined;
 
@@ -23,7 +25,8 @@ static double unwrapped(double value, double axis) {
 }
 
 static joined join(const measured *m, const double *weight, size_t n, double axis) {
-    joined j = { MISSING, 0.0, 0.0, 0.0, 0, 0 };
+    joined j = { MISSING, 0.0, 0.0, 0.0, MISSING, 0, 0 };
+    double fourths = 0.0;
     double sw = 0.0, sv = 0.0;
     for (size_t i = 0; i < n; i++) {
         if (!takes_part(&m[i], weight[i])) continue;
@@ -45,7 +48,9 @@ static joined join(const measured *m, const double *weight, size_t n, double axi
         double r = share * (unwrapped(m[i].value, axis) - j.mean);
         j.within += u * u; /* NAN when one micrograph does not know its own */
         j.between += r * r;
+        fourths += u * u * u * u / field_dof(weight[i]);
     }
+    j.dof_within = fourths > 0.0 ? j.within * j.within / fourths : HUGE_VAL; /* Welch-Satterthwaite */
     double k = (double)j.micrographs;
     j.within = sqrt(j.within);
     j.between = k > 1.0 ? sqrt(j.between * k / (k - 1.0)) : MISSING;
@@ -54,6 +59,21 @@ static joined join(const measured *m, const double *weight, size_t n, double axi
 
 static measured from_joined(const joined *j) {
     return (measured){ j->mean, fmax(j->within, j->between), j->method, j->n }; /* fmax passes over a NAN */
+}
+
+/* How well the larger of the two is known. */
+static double sampling_dof(const joined *j) {
+    double others = (double)j->micrographs - 1.0;
+    if (!(others > 0.0) || isnan(j->between)) return j->dof_within;
+    if (isnan(j->within)) return others;
+    double f = j->between / j->within;
+    return fisher_above(f * f, others, j->dof_within) < 0.05 ? others : others + j->dof_within;
+}
+
+status pool_parts(const measured *m, const double *weight, size_t n, pooled *out) {
+    joined j = join(m, weight, n, MISSING);
+    *out = (pooled){ from_joined(&j), j.within, j.between, j.micrographs ? sampling_dof(&j) : MISSING, j.micrographs };
+    return j.micrographs ? ST_OK : ST_NO_RESULT;
 }
 
 status pool_quantity(const measured *m, const double *weight, size_t n, measured *out) {

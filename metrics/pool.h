@@ -13,6 +13,18 @@
  * average out n          sum of n err ST_NO_RESULT no micrograph has the quantity (out is then NAN) */
 status pool_quantity(const measured *m, const double *weight, size_t n, measured *out);
 
+/* The same with the parts of u_sampling and how well it is known.
+ *   in  weight[n] the number of features, from which field_dof() tells how well each knows its own part
+ *   out m as from pool_quantity; within, between (NAN from one micrograph); dof of u_sampling: where the scatter agrees with what the
+ * micrographs know themselves (F test, 5 %), both speak for it and their degrees of freedom add; else it is the
+ * scatter's, one less than the micrographs */
+typedef struct {
+    measured m;
+    double within, between, dof;
+    size_t micrographs;
+} pooled;
+status pool_parts(const measured *m, const double *weight, size_t n, pooled *out);
+
 /* The same for a direction with period 180 deg (weighted mean of the doubled angle). */
 status pool_axis(const measured *m, const double *weight, size_t n, measured *out);
 

@@ -147,6 +147,7 @@ static void method(measured *m, double relative) {
 void statistics_uncertainty(texture *t, const detection *d) {
     int ordered = t->clark_evans.value >= 1.5;
     double count = fmax(0.005, 0.5 * d->merged_share);
+    t->count_u_rel = count;
     method(&t->density, count);
     method(&t->spacing_hex, 0.5 * count);
     /* Noise moves centres, which shortens the mean of nearest distances. */

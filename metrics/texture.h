@@ -53,6 +53,7 @@ typedef struct {
     measured stretch, stretch_angle_deg; /* longer / shorter spacing >= 1; direction of the longer one, 0..180, y up */
     measured sharpness;    /* sd of the blur, px */
     measured noise_rel;    /* noise sd / texture sd */
+    double count_u_rel;    /* relative u of the number of features by the detector: part of many u_method */
     double clipped_share;
     double lognormal_ad;   /* Anderson-Darling A2* of the log-normal fit of cell ECD; NAN none */
     double ring_z;         /* significance of the trough before the first ring */

@@ -162,6 +162,8 @@ status field_sum_sd(const double *x, const double *y, const double *mark, size_t
     return ST_OK;
 }
 
+double field_dof(double n_features) { return fmax(1.0, n_features / 16.0); }
+
 /* From the influences to u. Without tiles: as if independent. */
 static status u_from_marks(const sample_of_features *s, const double *mark, double *u, error *e) {
     status st = field_sum_sd(s->x, s->y, mark, s->n, s->field, s->unit, u, e);

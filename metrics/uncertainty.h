@@ -18,6 +18,10 @@
 status field_sum_sd(const double *x, const double *y, const double *mark, size_t n, window w, double unit,
                     double *sd, error *e);
 
+/* Degrees of freedom of an u_sampling that one field of so many features found by itself: it scatters from field to field
+ * by about 100 %/sqrt(n / 8), found on repeated renders (1/2 (u / scatter of u)^2, JCGM 100 G.4.2). At least 1. */
+double field_dof(double n_features);
+
 /* u_sampling of weighted statistics of values v at x, y (weights w; 0 leaves a feature out). The influence of
  * each feature on the statistic is its mark in field_sum_sd; where the field is too small for tiles, features
  * count as independent. err ST_NO_MEMORY */

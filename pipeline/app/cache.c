@@ -13,7 +13,7 @@
 #include "base/text.h"
 #include "io/file.h"
 
-static const char head[] = "sward texture 1\n";
+static const char head[] = "sward texture 2\n";
 enum { HASH = 64 };
 
 /* Either appends to `out` or takes from bytes[at..n). */
@@ -88,7 +88,8 @@ static void pass_texture(stream *s, texture *t) {
         pass_number(s, &m->u_method);
         pass_count(s, &m->n);
     }
-    double *numbers[] = { &t->relief_skew, &t->clipped_share, &t->lognormal_ad, &t->ring_z, &t->second_spacing_px };
+    double *numbers[] = { &t->relief_skew, &t->clipped_share, &t->lognormal_ad, &t->ring_z, &t->second_spacing_px,
+                          &t->count_u_rel };
     for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) pass_number(s, numbers[i]);
     pass_count(s, &t->n_features);
     pass(s, &t->reasons, sizeof t->reasons);

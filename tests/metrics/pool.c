@@ -3,6 +3,7 @@
 
 #include "base/quantity.h"
 #include "check.h"
+#include "metrics/uncertainty.h"
 
 int main(void) {
     measured out;
@@ -34,6 +35,21 @@ int main(void) {
     const measured half[] = { { 1.0, MISSING, 0.0, 5 }, { 2.0, 0.1, 0.0, 5 } };
     CHECK(pool_quantity(half, even, 2, &out) == ST_OK);
     CHECK_NEAR(out.u_sampling, 0.5, 1e-12);
+    /* The parts: scatter far beyond what each knows has its own freedom, agreement joins both. */
+    pooled p;
+    static const measured three[] = { { 100.0, 0.5, 0.0, 400 }, { 106.0, 0.5, 0.0, 400 }, { 97.0, 0.5, 0.0, 400 } };
+    static const double equal[] = { 400.0, 400.0, 400.0 };
+    CHECK(pool_parts(three, equal, 3, &p) == ST_OK && p.micrographs == 3);
+    CHECK_NEAR(p.within, 0.5 / sqrt(3.0), 1e-12);
+    CHECK_NEAR(p.between, sqrt(42.0 / 2.0 / 3.0), 1e-12);
+    CHECK_NEAR(p.m.u_sampling, p.between, 0.0);
+    CHECK_NEAR(p.dof, 2.0, 0.0);
+    CHECK(pool_parts(near, equal, 2, &p) == ST_OK);
+    CHECK_NEAR(p.within, 2.5, 1e-12);
+    CHECK_NEAR(p.dof, 1.0 + pow(6.25, 2) / ((pow(1.5, 4) + pow(2.0, 4)) / field_dof(400.0)), 1e-9);
+    CHECK(pool_parts(&gaps[1], equal, 1, &p) == ST_OK && isnan(p.between));
+    CHECK_NEAR(p.dof, field_dof(400.0), 1e-9);
+    CHECK(pool_parts(gaps, gap_w, 1, &p) == ST_NO_RESULT && isnan(p.dof) && p.micrographs == 0);
     /* Axes: 179 and 3 deg are 4 deg apart. */
     static const measured axes[] = { { 179.0, 1.0, 0.5, 10 }, { 3.0, 1.0, 0.5, 10 } };
     CHECK(pool_axis(axes, even, 2, &out) == ST_OK);
