@@ -29,7 +29,7 @@
     X(WIDE_SIZES,      wide_sizes,      "sizes spread so much that one spacing says little")                             \
     X(STRETCHED,       stretched,       "spacing depends on direction")                                                  \
     X(PX_DISAGREE,     px_sources_disagree, "two sources of the pixel size differ by more than 2 %")                    \
-    X(PX_UNEQUAL,      px_unequal,      "pixels are not square")                                                         \
+    X(PX_UNEQUAL,      px_unequal,      "pixels are not square: rows were resampled")                                        \
     X(PX_ODD,          px_implausible,  "the pixel size lies outside 0.01 nm to 100 um")                                 \
     X(COLOUR,          colour,          "colour file: measured by luminance")                                            \
     X(MANY_PAGES,      many_pages,      "more than one page: the largest was measured")                                  \

@@ -36,8 +36,8 @@ const column image_columns[] = {
           "do not lower it"),
     IMAGE(width_px, COL_COUNT, "px", 0, "columns of the measured field"),
     IMAGE(height_px, COL_COUNT, "px", 0, "rows of the picture in the file, info strip included"),
-    IMAGE(strip_px, COL_COUNT, "px", 0, "rows of the info strip at the bottom that were cropped"),
-    IMAGE(bit_depth, COL_COUNT, "", 0, "bits of one grey level in the file"),
+    IMAGE(strip_px, COL_COUNT, "px", 0, "rows of the info strip that were cropped, at the bottom or the top"),
+    IMAGE(bit_depth, COL_COUNT, "", 0, "bits of one grey level in the file; of the detector where it fills 16-bit samples with fewer"),
     IMAGE(relief, COL_TEXT, "", 0,
           "what a feature is: hillock (bright) or pore (dark); told from the picture unless the protocol says it, and not "
           "certain where rims are bright (flag relief_unsure)"),
