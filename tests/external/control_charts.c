@@ -2,6 +2,7 @@
  * worked examples. */
 #include "base/quantity.h"
 #include "check.h"
+#include "judge/chart.h"
 #include "judge/factors.h"
 
 static void quantiles(void) {
@@ -54,8 +55,122 @@ static void factors(void) {
     CHECK_SOURCE(factors_of(25).c4, 0.9896, 5e-5, "ISO 7870-2 table of factors, n = 25 (from memory)");
 }
 
+/* NIST StRD Michelso: 299 + v / 1000. */
+static const int michelso[100] = {
+    850, 740, 900, 1070, 930, 850, 950, 980, 980, 880, 1000, 980, 930, 650, 760, 810, 1000, 1000, 960, 960, 960, 940, 960,
+    940, 880, 800, 850, 880, 900, 840, 830, 790, 810, 880, 880, 830, 800, 790, 760, 800, 880, 880, 880, 860, 720, 720, 620,
+    860, 970, 950, 880, 910, 850, 870, 840, 840, 850, 840, 840, 840, 890, 810, 810, 820, 800, 770, 760, 740, 750, 760, 910,
+    920, 890, 860, 880, 720, 840, 850, 850, 780, 890, 840, 780, 810, 760, 810, 790, 810, 820, 850, 870, 870, 810, 740, 810,
+    940, 950, 800, 810, 870 };
+
+static void individuals(void) {
+    /* the figures were made with d2 = 1.128379, E2 = 2.6587, D4 = 3.2665: five digits of the factors, hence 2e-6 */
+    static const char source[] = "E-23 ISO 7870-2 on NIST StRD Michelso, factors of five digits";
+    double v[100];
+    chart c = { 0 };
+    error e = { 0 };
+    chart_options o = chart_defaults();
+    o.baseline = 0;
+    o.rules = RULE(BEYOND) | RULE(SPREAD);
+    for (size_t i = 0; i < 100; i++) v[i] = 299.0 + michelso[i] / 1000.0;
+    CHECK(chart_individuals(v, NULL, 100, &o, &c, &e) == ST_OK && c.n_phases == 1);
+    CHECK_SOURCE(c.phases[0].centre, 299.8524, 1e-9, source);
+    CHECK_SOURCE(c.phases[0].spread_mean, 0.0525252525, 1e-9, source);
+    CHECK_SOURCE(c.phases[0].sigma, 0.0465492999, 1e-8, source);
+    CHECK_SOURCE(c.phases[0].lag1, 0.535199668621283, 1e-11, "E-01 NIST StRD Michelso, certified");
+    CHECK_SOURCE(c.points[50].lo, 299.7127511, 2e-6, source);
+    CHECK_SOURCE(c.points[50].hi, 299.9920489, 2e-6, source);
+    CHECK_SOURCE(c.points[50].spread_hi, 0.1715737, 2e-6, source);
+    static const size_t beyond[] = { 4, 11, 14, 17, 18, 47 };
+    size_t found = 0;
+    for (size_t i = 0; i < 100; i++)
+        if (c.points[i].alarms & RULE(BEYOND)) {
+            CHECK_SOURCE((double)(i + 1), found < 6 ? (double)beyond[found] : 0.0, 0.0, source);
+            found++;
+        }
+    CHECK_SOURCE((double)found, 6.0, 0.0, source);
+    chart_free(&c);
+}
+
+static void ewma(void) {
+    static const char source[] = "E-24 NIST/SEMATECH e-Handbook 6.3.2.4 (data from memory, all results agree)";
+    static const double v[] = { 52.0, 47.0, 53.0, 49.3, 50.1, 47.0, 51.0, 50.1, 51.2, 50.5,
+                                49.6, 47.6, 49.9, 51.3, 47.8, 51.2, 52.6, 52.4, 53.6, 52.1 };
+    static const double want[] = { 50.60, 49.52, 50.56, 50.18, 50.16, 49.21, 49.75, 49.85, 50.26, 50.33,
+                                   50.11, 49.36, 49.52, 50.05, 49.38, 49.92, 50.73, 51.23, 51.94, 51.99 };
+    chart c = { 0 };
+    error e = { 0 };
+    chart_options o = { .centre = 50.0, .sigma = 2.0539, .lambda = 0.3, .ewma_k = 3.0, .rules = RULE(EWMA) };
+    CHECK(chart_individuals(v, NULL, 20, &o, &c, &e) == ST_OK);
+    for (size_t i = 0; i < 20; i++) CHECK_SOURCE(c.points[i].ewma, want[i], 0.005, source);
+    CHECK_SOURCE(c.points[19].ewma_hi, 52.5884, 1e-4, source);
+    CHECK_SOURCE(c.points[19].ewma_lo, 47.4115, 2e-4, source);
+    chart_free(&c);
+    static const char exact[] = "E-25 ISO 7870-6; Lucas and Saccucci (1990), exact limits";
+    static const size_t at[] = { 1, 2, 5, 10 };
+    static const double reach[2][4] = { { 0.9, 1.0985900054, 1.2423250694, 1.2597491834 },
+                                        { 0.6, 0.7683749085, 0.9447887688, 0.9942186807 } };
+    for (size_t k = 0; k < 2; k++) {
+        o = (chart_options){ .centre = 0.0, .sigma = 1.0, .lambda = k ? 0.2 : 0.3, .ewma_k = 3.0 };
+        CHECK(chart_individuals(v, NULL, 20, &o, &c, &e) == ST_OK);
+        for (size_t i = 0; i < 4; i++) {
+            CHECK_SOURCE(c.points[at[i] - 1].ewma_hi, reach[k][i], 1e-9, exact);
+            CHECK_SOURCE(c.points[at[i] - 1].ewma_lo, -reach[k][i], 1e-9, exact);
+        }
+        chart_free(&c);
+    }
+}
+
+/* Simulated; four standard errors of the simulation are allowed. */
+static void run_lengths(void) {
+    enum { R1 = RULE(BEYOND), R2 = RULE(TWO_OF_THREE), R3 = RULE(FOUR_OF_FIVE), R4 = RULE(RUN_8) };
+    static const char champ[] = "E-27..E-29 Champ and Woodall (1987), table 1, exact by Markov chain";
+    static const char others[] = "E-30 Markov chain; E-31 ISO 7870-2; E-32 Nelson (1984) tests 1 to 3";
+    static const struct { unsigned rules; double shift, length; size_t runs; const char *source; } cases[] = {
+        { R1, 0.0, 370.398, 1500, champ }, { R1, 1.0, 43.895, 3000, champ }, { R1, 2.0, 6.303, 3000, champ },
+        { R1, 3.0, 2.000, 3000, champ }, { R1 | R2, 0.0, 225.44, 1500, champ }, { R1 | R3, 0.0, 166.05, 1500, champ },
+        { R1 | R4, 0.0, 152.73, 1500, champ }, { R1 | R2 | R3, 0.0, 132.89, 1500, champ },
+        { R1 | R2 | R4, 0.0, 122.05, 1500, champ }, { R1 | R3 | R4, 0.0, 105.78, 1500, champ },
+        { RULES_ZONE, 0.0, 91.75, 4000, champ }, { RULES_ZONE, 0.4, 36.606, 3000, champ },
+        { RULES_ZONE, 1.0, 9.222, 3000, champ }, { RULES_ZONE, 2.0, 3.128, 3000, champ },
+        { RULES_ZONE, 3.0, 1.667, 3000, champ }, { R1 | RULE(RUN_7), 0.0, 95.731, 1500, others },
+        { R1 | RULE(RUN_9), 0.0, 216.696, 1500, others }, { R1 | R2 | R3 | RULE(RUN_9), 0.0, 109.049, 1500, others },
+        { RULES_ISO, 0.0, 92.6, 4000, others }, { RULES_NELSON, 0.0, 148.4, 2000, others } };
+    for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
+        double se = MISSING, got = chart_run_length(cases[i].rules, cases[i].shift, cases[i].runs, &se);
+        CHECK_SOURCE(got, cases[i].length, 4.0 * se, cases[i].source);
+        if (!(cases[i].shift > 0.0)) CHECK_SOURCE(chart_false_alarm_length(cases[i].rules), cases[i].length, 0.01, cases[i].source);
+    }
+    static const char lucas[] = "E-26 Lucas and Saccucci (1990), designs of ARL 500 (spc 0.6.7)";
+    static const struct { double lambda, k, length[3]; } designs[] = {
+        { 0.1, 2.814, { 499.58, 10.331, 4.362 } }, { 0.2, 2.962, { 499.74, 10.542, 3.743 } },
+        { 0.4, 3.054, { 499.95, 14.263, 3.522 } }, { 0.05, 2.615, { 499.93, 11.383, 5.225 } } };
+    for (size_t i = 0; i < 4; i++)
+        for (int shift = 0; shift < 3; shift++) {
+            double se = MISSING, got = chart_ewma_run_length(designs[i].lambda, designs[i].k, 0, shift, shift ? 4000 : 1000, &se);
+            CHECK_SOURCE(got, designs[i].length[shift], 4.0 * se, lucas);
+        }
+}
+
+static void rules_fire(void) {
+    static const char source[] = "E-33 definition of the zone rules";
+    static const double two[] = { 0.5, 2.1, 0.3, 2.2 }, four[] = { 1.2, 1.1, -0.2, 1.3, 1.4 },
+                        sides[] = { 2.1, -2.2, 0.1, 2.3 }, above[] = { 3.01 },
+                        run[] = { 0.1, 0.1, 0.1, 0.1, 0.1, 0.1, 0.1, 0.1 };
+    static const struct { const double *z; size_t n; unsigned last; } cases[] = {
+        { two, 4, RULE(TWO_OF_THREE) }, { four, 5, RULE(FOUR_OF_FIVE) }, { sides, 4, 0 }, { above, 1, RULE(BEYOND) },
+        { run, 8, RULE(RUN_8) } };
+    for (size_t k = 0; k < sizeof cases / sizeof cases[0]; k++)
+        for (size_t i = 0; i < cases[k].n; i++)
+            CHECK_SOURCE(chart_rules_at(cases[k].z, i, RULES_ZONE), i + 1 == cases[k].n ? cases[k].last : 0, 0.0, source);
+}
+
 int main(void) {
     quantiles();
     factors();
+    individuals();
+    ewma();
+    run_lengths();
+    rules_fire();
     return check_done();
 }
