@@ -25,8 +25,9 @@ typedef struct {
     char **paths; /* [n] relative to the root, '/' between parts, exact bytes, in byte order of the names */
     size_t n;
 } file_list;
-/* Every regular file below `root` for which keep(relative path) is true. Left out: names that begin with a dot,
- * folders that hold sward's own datapackage.json, links that leave the root or loop, folders deeper than
+/* Every file below `root` for which keep(relative path) is true; pipes, devices and links that lead nowhere count as
+ * files, so that opening them tells why they cannot be read. Left out: names that begin with a dot,
+ * folders that hold sward's own datapackage.json, links that leave the root or lead to a folder around them, folders deeper than
  * LIMIT_FOLDER_DEPTH. The root itself is always walked. err ST_IO the folder cannot be read; ST_NO_MEMORY more than LIMIT_FOLDER_FILES. */
 status folder_walk(const char *root, int (*keep)(const char *relative), file_list *out, error *e);
 void file_list_free(file_list *l);

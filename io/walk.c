@@ -41,7 +41,7 @@ static int is_own_output(const char *folder) {
 
 static int link_stays_inside(const walker *w, const char *path) {
     char *target = realpath(path, NULL);
-    if (!target) return 0;
+    if (!target) return 1; /* leads nowhere: whoever opens it will say so */
     size_t n = strlen(w->real_root);
     int inside = !strncmp(target, w->real_root, n) && (target[n] == '/' || w->real_root[n - 1] == '/');
     free(target);
@@ -77,10 +77,11 @@ static status visit(walker *w, const char *folder, const char *name, int depth, 
         goto done;
     }
     if (lstat(path, &info)) goto done; /* gone since we listed it */
-    if (S_ISLNK(info.st_mode) && (!link_stays_inside(w, path) || stat(path, &info))) goto done;
-    if (S_ISREG(info.st_mode))
+    if (S_ISLNK(info.st_mode) && !link_stays_inside(w, path)) goto done;
+    if (S_ISLNK(info.st_mode) && stat(path, &info)) info.st_mode = S_IFLNK;
+    if (!S_ISDIR(info.st_mode)) /* pipes, sockets and broken links too: refused when opened, but not left out */
         st = take_file(w, &relative, e);
-    else if (S_ISDIR(info.st_mode) && depth < LIMIT_FOLDER_DEPTH) {
+    else if (depth < LIMIT_FOLDER_DEPTH) {
         for (int i = 0; i <= depth; i++)
             if (w->above[i].device == info.st_dev && w->above[i].node == info.st_ino) goto done;
         w->above[depth + 1] = (place){ info.st_dev, info.st_ino };

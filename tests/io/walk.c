@@ -34,11 +34,12 @@ int main(void) {
     scratch_put("in/foreign/datapackage.json", other, sizeof other - 1);
     CHECK(!symlink("../out/h.png", scratch("in/leaves.png")) && !symlink("../out", scratch("in/leaves")));
     CHECK(!symlink("..", scratch("in/sub/loop")) && !symlink("b.png", scratch("in/z.png")));
-    CHECK(!symlink("nowhere.png", scratch("in/broken.png")));
+    CHECK(!symlink("nowhere.png", scratch("in/broken.png")) && !symlink("self.png", scratch("in/self.png")));
+    CHECK(!mkfifo(scratch("in/pipe.png"), 0600));
 
     CHECK(folder_walk(scratch("in"), load_knows_name, &l, &e) == ST_OK);
-    static const char *const want[] = { "B.tiff",    "a.TIF", "b.png",       "foreign/g.png",
-                                        "sub/c.tif", "z.png", "\xff\x01.png" };
+    static const char *const want[] = { "B.tiff",   "a.TIF",    "b.png",     "broken.png", "foreign/g.png",
+                                        "pipe.png", "self.png", "sub/c.tif", "z.png",      "\xff\x01.png" };
     CHECK(l.n == sizeof want / sizeof want[0]);
     for (size_t i = 0; i < l.n && i < sizeof want / sizeof want[0]; i++) CHECK(!strcmp(l.paths[i], want[i]));
     file_list_free(&l);
