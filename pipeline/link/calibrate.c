@@ -145,7 +145,7 @@ static status fit_all(fit_model *f, least_fit *out, error *e) {
         int evaluations;
         size_t most;
         double hopeless;
-    } heats[] = { { 8, 8, 4.0 }, { 30, 4, 1.5 } };
+    } heats[] = { { 5, 5, 4.0 }, { 25, 3, 1.5 } };
     double *starts = mem_array(fit_parameters(f), FIT_STARTS * sizeof *starts);
     size_t n = 0;
     status st = starts ? fit_starts(f, starts, &n, e) : NO_MEMORY(e, "the starts of a fit");

@@ -4,7 +4,7 @@
  * averages out. Noise: each value against the straight line through its neighbours, median (robust against the texture's
  * own bends) over 0.6745, the deviation's variance being 1 + w^2 + (1 - w)^2 of one value's.
  * Starts: a scan over 56 heights (20 to 3000 nm) and 14 exponents on 72 wavelengths, the offset by its mean. For every
- * exponent the best height of each sample, and the second best minimum. Tall and blunt at once (height x exponent above
+ * exponent the best height of each sample, and the second best minimum; the better half goes on. Tall and blunt at once (height x exponent above
  * 5000 nm) is left out, here and in the fit: such profiles need thousands of slabs, and no etch makes them.
  * What this file does not do: light from the rear, diffuse scattering, the model's own error. */
 #include <math.h>
@@ -19,7 +19,7 @@ static const double GROUP_NM = 5.0;
 static const double SCAN_LO_NM = 20.0, SCAN_HI_NM = 3000.0, SCAN_TOLERANCE = 1e-3;
 static const double TALL_AND_BLUNT_NM = 5000.0; /* height x exponent */
 static const double MAD = 0.6744897501960817;   /* median of |normal| */
-enum { FEWEST = 8, SCAN_HEIGHTS = 56, SCAN_POINTS = 72, SCAN_EXPONENTS = FIT_STARTS / 2 };
+enum { FEWEST = 8, SCAN_HEIGHTS = 56, SCAN_POINTS = 72, SCAN_EXPONENTS = FIT_STARTS };
 
 const double fit_lower[FIT_KINDS] = { 10.0, 0.25, 0.0, 0.2, -0.05 };
 const double fit_upper[FIT_KINDS] = { 5000.0, 5.0, 0.5, 1.0, 0.05 };
@@ -240,6 +240,18 @@ static status scan(const fit_model *f, size_t sample, const fit_point *shape, mi
     return ST_OK;
 }
 
+/* A start and what the scan says of it. */
+typedef struct {
+    double sum;
+    size_t at; /* in the list */
+} rank;
+
+static int by_sum(const void *a, const void *b) {
+    const rank *x = a, *y = b;
+    if (x->sum < y->sum || x->sum > y->sum) return x->sum < y->sum ? -1 : 1;
+    return (x->at > y->at) - (x->at < y->at);
+}
+
 static void write_start(const fit_model *f, const fit_point *shape, const minima *m, int second, double *x) {
     for (int k = 0; k < FIT_KINDS; k++)
         for (size_t s = 0; s < f->n; s++) {
@@ -250,14 +262,26 @@ static void write_start(const fit_model *f, const fit_point *shape, const minima
         }
 }
 
+/* The best half of all[n], best first. */
+static size_t best_half(const double *all, rank *ranks, size_t n, size_t n_x, double *starts) {
+    size_t keep = n > FIT_STARTS ? FIT_STARTS : n;
+    qsort(ranks, n, sizeof *ranks, by_sum);
+    for (size_t i = 0; i < keep; i++) memcpy(starts + i * n_x, all + ranks[i].at * n_x, n_x * sizeof *all);
+    return keep;
+}
+
 status fit_starts(const fit_model *f, double *starts, size_t *n, error *e) {
     static const double exponents[] = { 1.0,  0.35, 0.5, 0.7, 0.85, 1.2, 1.4,
                                         1.65, 1.9,  2.2, 2.6, 3.0,  3.5, 4.2 };
-    _Static_assert(sizeof exponents / sizeof exponents[0] == SCAN_EXPONENTS, "two starts for every exponent");
+    _Static_assert(sizeof exponents / sizeof exponents[0] == SCAN_EXPONENTS,
+                   "the better half of two starts for every exponent");
     size_t n_x = fit_parameters(f);
     int shapes = fit_is_free(f->o, FIT_EXPONENT) ? SCAN_EXPONENTS : 1;
     minima *m = mem_array(f->n, sizeof *m);
-    status st = m ? ST_OK : NO_MEMORY(e, "the starts of a fit");
+    double *all = mem_array(n_x, 2 * SCAN_EXPONENTS * sizeof *all);
+    rank ranks[2 * SCAN_EXPONENTS];
+    size_t n_all = 0;
+    status st = m && all ? ST_OK : NO_MEMORY(e, "the starts of a fit");
     fit_model coarse = *f;
     coarse.tolerance = SCAN_TOLERANCE;
     *n = 0;
@@ -265,16 +289,25 @@ status fit_starts(const fit_model *f, double *starts, size_t *n, error *e) {
         const link_options *l = &f->o->link;
         fit_point shape = { { 0.0, shapes > 1 ? exponents[q] : l->exponent, l->height_spread, l->coverage,
                               0.0 } };
+        double sum[2] = { 0.0, 0.0 };
         int second = 0;
         if (fit_is_free(f->o, FIT_SPREAD)) shape.value[FIT_SPREAD] = fmin(fmax(l->height_spread, 0.1), 0.4);
         if (fit_is_free(f->o, FIT_FLOOR)) shape.value[FIT_FLOOR] = fmin(fmax(l->coverage, 0.3), 0.9);
         for (size_t s = 0; s < f->n && st == ST_OK; s++) {
             st = scan(&coarse, s, &shape, &m[s], e);
-            second = second || isfinite(m[s].sum[1]);
+            int has = isfinite(m[s].sum[1]);
+            second = second || has;
+            sum[0] += m[s].sum[0];
+            sum[1] += m[s].sum[has];
         }
-        for (int which = 0; which <= second && st == ST_OK; which++)
-            write_start(f, &shape, m, which, starts + n_x * (*n)++);
+        for (int which = 0; which <= second && st == ST_OK; which++) {
+            write_start(f, &shape, m, which, all + n_x * n_all);
+            ranks[n_all] = (rank){ sum[which], n_all };
+            n_all++;
+        }
     }
+    if (st == ST_OK) *n = best_half(all, ranks, n_all, n_x, starts);
     free(m);
+    free(all);
     return st;
 }
