@@ -6,9 +6,11 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "app/planning.h"
 #include "base/mem.h"
 #include "io/file.h"
 #include "io/json.h"
+#include "metrics/plan.h"
 #include "metrics/pool.h"
 
 void sample_group_free(sample_group *g) {
@@ -201,14 +203,22 @@ static status judge_sample(const protocol *p, const figure *f, const figure *spa
         all[i] = j.verdict;
         r->extra[i] = mem_text(verdict_word(j.verdict));
         if (!r->extra[i]) st = NO_MEMORY(e, "a verdict");
-        text_addf(&reasons, "%s%s", i ? "; " : "", j.sentence);
+        textbuf advice = { 0 };
+        long more = j.verdict == VERDICT_UNDECIDED ? plan_verdict(&p->targets[i], f, spacing, &advice) : PLAN_NEVER;
+        if (text_check(&advice, "a plan", e) != ST_OK) st = ST_NO_MEMORY;
+        text_addf(&reasons, "%s%s%s%s", i ? "; " : "", j.sentence, advice.n ? ": " : "", advice.n ? advice.s : "");
         text_addf(members, "%s{\"quantity\": ", i ? ", " : "");
         json_string(members, p->targets[i].quantity);
         text_addf(members, ", \"verdict\": \"%s\", \"conformance_probability\": ", verdict_word(j.verdict));
         json_number(members, j.conformance_probability, 4);
         text_add(members, ", \"sentence\": ");
         json_string(members, j.sentence);
+        text_add(members, ", \"advice\": ");
+        json_string(members, advice.n ? advice.s : NULL);
+        text_add(members, ", \"more_micrographs\": ");
+        json_number(members, more > 0 && more < PLAN_MOST ? (double)more : MISSING, 6);
         text_add(members, "}");
+        text_free(&advice);
     }
     text_add(members, "]");
     if (st == ST_OK) {
@@ -304,6 +314,8 @@ status join_sample(const sample_group *g, const examined *all, const protocol *p
     text_add(&members, ", ");
     if (st == ST_OK) {
         figures_json(f, &members);
+        text_add(&members, ", ");
+        plan_json(p, f, &spacing, &members);
         text_add(&members, ", ");
         st = judge_sample(p, f, &spacing, &made, &members, e);
     }

@@ -11,6 +11,7 @@
 
 #include "app/command.h"
 #include "app/names.h"
+#include "app/planning.h"
 #include "app/protocol_keys.h"
 #include "base/limits.h"
 #include "base/mem.h"
@@ -62,11 +63,19 @@ static void targets_free(protocol *p) {
     p->n_targets = 0;
 }
 
+static void goals_free(protocol *p) {
+    for (size_t i = 0; i < p->n_goals; i++) free(p->goals[i].quantity);
+    free(p->goals);
+    p->goals = NULL;
+    p->n_goals = 0;
+}
+
 void protocol_free(protocol *p) {
     char *owned[] = { p->path, p->name, p->pattern, p->profile, p->calibration, p->ambient, p->substrate, p->sun, p->scale, p->history };
     for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
     for (size_t i = 0; i < LIMIT_COATINGS; i++) free(p->coatings[i].material);
     targets_free(p);
+    goals_free(p);
     *p = (protocol){ 0 };
 }
 
@@ -326,6 +335,28 @@ static status read_targets(const reader *r, const cJSON *node, const protocol_ke
     return ST_OK;
 }
 
+static status read_goals(const reader *r, const cJSON *node, const protocol_key *k) {
+    const cJSON *child;
+    if (!cJSON_IsObject(node)) return wrong_value(r, node, k);
+    goals_free(r->p);
+    r->p->goals = mem_array((size_t)cJSON_GetArraySize(node), sizeof *r->p->goals);
+    if (!r->p->goals) return NO_MEMORY(r->e, "the plan");
+    cJSON_ArrayForEach(child, node) {
+        char where[120];
+        snprintf(where, sizeof where, "plan.half_width.%.60s", child->string);
+        if (!planned_quantity(child->string))
+            return fail(r->e, ST_BAD_INPUT, "%s line %zu: %s is no quantity that micrographs give; take spacing_nm, density_per_um2, size_d50_nm or another of images.csv",
+                        r->what, line_of(r, child), where);
+        if (!cJSON_IsNumber(child) || !(child->valuedouble > 0.0) || !isfinite(child->valuedouble))
+            return wrong(r, line_of(r, child), where, child, "a half-width above 0");
+        width_goal *g = &r->p->goals[r->p->n_goals];
+        *g = (width_goal){ mem_text(child->string), child->valuedouble };
+        if (!g->quantity) return NO_MEMORY(r->e, "the plan");
+        r->p->n_goals++;
+    }
+    return ST_OK;
+}
+
 static status read_key(const reader *r, const cJSON *node, const protocol_key *k) {
     if (cJSON_IsNull(node)) return ST_OK; /* the default */
     switch (k->kind) {
@@ -350,6 +381,8 @@ static status read_key(const reader *r, const cJSON *node, const protocol_key *k
         return read_rear(r, node, k);
     case KEY_TARGETS:
         return read_targets(r, node, k);
+    case KEY_GOALS:
+        return read_goals(r, node, k);
     }
     return fail(r->e, ST_BUG, "a key of the protocol has no reader");
 }

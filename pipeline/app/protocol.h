@@ -19,6 +19,12 @@ typedef struct {
     double thickness_nm;
 } protocol_coating;
 
+/* A 95 % interval no wider than value -+ half_width is wanted. */
+typedef struct {
+    char *quantity; /* spacing_nm or a texture quantity; owned */
+    double half_width;
+} width_goal;
+
 typedef struct {
     char *path;              /* the file it came from, "" for the built-in one */
     char *name;              /* key "protocol"; "built-in" */
@@ -47,6 +53,8 @@ typedef struct {
     double band_lo_nm, band_hi_nm, step_nm;
     target *targets; /* [n_targets], in the order of the file; owned */
     size_t n_targets;
+    width_goal *goals; /* [n_goals], in the order of the file; owned */
+    size_t n_goals;
     char *scale;   /* scale file of `sward scale`, usable from here; NULL: none */
     char *history; /* path, usable from here; NULL: OUT/history.sqlite */
 } protocol;        /* {0} = empty; strings owned */

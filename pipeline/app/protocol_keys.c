@@ -117,16 +117,19 @@ const protocol_key protocol_keys[] = {
     WORD("optics", "weight", weight, weight_word, 0, "weighted reflectance counts photons (what a current sees) or energy"),
     { "optics", "rear", KEY_REAR, AT(rear), "", 0, 0, 0, NULL, 0, "light returning from the rear, for comparing with a spectrometer beyond 1000 nm: { \"thickness_um\": 170, \"rear_reflectance\": 0.9, \"lambertian\": true }; null: front surface only; without rear_reflectance the rear is bare" },
     NUMBER("optics", "step_nm", step_nm, "nm", 0.1, 50, "grid of the spectrum"),
+
+    { "plan", "half_width", KEY_GOALS, AT(goals), "", 0, 0, 0, NULL, 0, "half of the 95 % interval you want, by quantity, such as { \"spacing_nm\": 5 }; results.json then says for every sample how many more micrographs that takes" },
 };
 /* clang-format on */
 const size_t n_protocol_keys = sizeof protocol_keys / sizeof protocol_keys[0];
 
-const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "fitness", "link", "optics" };
+const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "fitness", "link", "optics", "plan" };
 const char *const protocol_group_help[PROTOCOL_GROUPS] = {
     "which sample a file belongs to",
     "can a micrograph carry the numbers?",
     "from the top view to the surface that optics needs",
     "what the light meets",
+    "how many micrographs are enough?",
 };
 
 const protocol_key *protocol_key_find(const char *group, const char *name) {
@@ -203,6 +206,9 @@ void key_expected(const protocol_key *k, textbuf *out) {
         break;
     case KEY_TARGETS:
         text_add(out, "an object of { \"min\": ..., \"max\": ... } by quantity");
+        break;
+    case KEY_GOALS:
+        text_add(out, "an object of half-widths above 0 by quantity");
         break;
     }
 }

@@ -14,7 +14,8 @@ typedef enum {
     KEY_BAND,     /* two doubles one after the other: [lo, hi] */
     KEY_COATINGS, /* the coatings of a protocol */
     KEY_REAR,     /* the rear side of the wafer */
-    KEY_TARGETS   /* the targets of a protocol */
+    KEY_TARGETS,  /* the targets of a protocol */
+    KEY_GOALS     /* half-widths wanted */
 } key_kind;
 
 typedef struct {
@@ -35,7 +36,7 @@ extern const size_t n_protocol_keys;
 
 extern const char *const protocol_groups[]; /* names of the groups that are objects of their own keys */
 extern const char *const protocol_group_help[];
-enum { PROTOCOL_GROUPS = 4 };
+enum { PROTOCOL_GROUPS = 5 };
 
 /* The key, or NULL. */
 const protocol_key *protocol_key_find(const char *group, const char *name);

@@ -47,6 +47,8 @@ static void canonical_key(const protocol *p, const protocol_key *k, textbuf *out
             text_addf(out, "%s:%d;", number_text(p->targets[i].max, 17, number), (int)p->targets[i].error);
         }
         break;
+    case KEY_GOALS: /* asks, changes no result */
+        break;
     }
     text_add(out, "\n");
 }
@@ -59,7 +61,7 @@ void protocol_measuring_text(const protocol *p, textbuf *out) {
 void protocol_full_text(const protocol *p, textbuf *out) {
     for (size_t i = 0; i < n_protocol_keys; i++) {
         const protocol_key *k = &protocol_keys[i];
-        int name_only = k->kind == KEY_PATH || k->offset == offsetof(protocol, name);
+        int name_only = k->kind == KEY_PATH || k->kind == KEY_GOALS || k->offset == offsetof(protocol, name);
         if (!name_only) canonical_key(p, k, out);
     }
 }
@@ -97,6 +99,7 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
         text_add(out, "null");
         break;
     case KEY_TARGETS:
+    case KEY_GOALS:
         text_add(out, "{}");
         break;
     }
@@ -307,12 +310,21 @@ static void explain_targets(const protocol *p, textbuf *out) {
     }
 }
 
+static void explain_goals(const protocol *p, textbuf *out) {
+    for (size_t i = 0; i < p->n_goals; i++) {
+        text_addf(out, "results.json says how many more micrographs bring the 95 %% interval of %s to -+ ", p->goals[i].quantity);
+        say(out, p->goals[i].half_width, "");
+        text_add(out, ".\n");
+    }
+}
+
 void protocol_explain(const protocol *p, textbuf *out) {
     text_addf(out, "Protocol \"%s\"%s%s.\n", p->name, p->path[0] ? ", from " : "", p->path);
     explain_measuring(p, out);
     explain_link(p, out);
     explain_optics(p, out);
     explain_targets(p, out);
+    explain_goals(p, out);
     if (p->history)
         text_addf(out, "Samples are kept in the ledger %s.\n", p->history);
     else

@@ -160,6 +160,9 @@ static void names_each_mistake(void) {
     fails_with("{ \"targets\": { \"spacing_nm\": 300 } }", "targets.spacing_nm: found 300");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"max\": 2 } } }", "expected min below max");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": \"a\" } } }", "expected a number as limit");
+    fails_with("{ \"plan\": { \"half_width\": { \"spacing_mn\": 3 } } }", "plan.half_width.spacing_mn is no quantity");
+    fails_with("{ \"plan\": { \"half_width\": { \"spacing_nm\": 0 } } }", "a half-width above 0");
+    fails_with("{ \"plan\": { \"half_width\": [3] } }", "an object of half-widths above 0");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"error\": \"none\" } } }",
                "expected \"full\" or \"repeat\"");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"mn\": 3 } } }",
