@@ -8,6 +8,7 @@
 #include "app/angles.h"
 #include "app/command.h"
 #include "app/materials.h"
+#include "app/trial_print.h"
 #include "base/number.h"
 #include "base/quantity.h"
 #include "io/json.h"
@@ -29,6 +30,8 @@ enum {
     OPT_ANGLE,
     OPT_ANGLES,
     OPT_LIMIT,
+    OPT_TRIALS,
+    OPT_SEED,
     OPT_POLARIZATION,
     OPT_HEMISPHERICAL,
     OPT_BAND,
@@ -62,6 +65,8 @@ static const struct argp_option predict_options[] = {
     { "angle",         OPT_ANGLE,         "DEG",      0, "angle of incidence in air (default: 0)", 0 },
     { "angles",        OPT_ANGLES,        "FROM:TO:STEP", 0, "weighted reflectance against the angle, s, p and unpolarised, such as 0:80:5", 0 },
     { "limit",         OPT_LIMIT,         "R",        0, "with --angles: up to which angle the reflectance stays at or below this, such as 0.02", 0 },
+    { "trials",        OPT_TRIALS,        NULL,       0, "carry the distributions of the inputs through by Monte Carlo (JCGM 101), with a ranked budget", 0 },
+    { "seed",          OPT_SEED,          "N",        0, "of the trials: same seed, same result (default: 1)", 0 },
     { "polarization",  OPT_POLARIZATION,  "P",        0, "mean (default, unpolarised), s or p", 0 },
     { "hemispherical", OPT_HEMISPHERICAL, NULL,       0, "diffuse light from the whole half space", 0 },
     { "band",          OPT_BAND,          "LO:HI",    0, "wavelengths for the weighting, nm (default: 300:1200)", 0 },
@@ -98,7 +103,8 @@ typedef struct {
         const char *text;
     } given[MAX_GIVEN];
     size_t n_given;
-    const char *spacing, *height, *protocol, *angles, *limit;
+    const char *spacing, *height, *protocol, *angles, *limit, *seed;
+    int trials;
     int pores;
     output as;
 } request;
@@ -117,6 +123,12 @@ static error_t predict_option(int key, char *arg, struct argp_state *state) {
         break;
     case OPT_ANGLES:
         q->angles = arg;
+        break;
+    case OPT_TRIALS:
+        q->trials = 1;
+        break;
+    case OPT_SEED:
+        q->seed = arg;
         break;
     case OPT_LIMIT:
         q->limit = arg;
@@ -268,7 +280,8 @@ static void sample_member(textbuf *out, const char *name, double v) { member(out
 
 enum { SPECTRUM_DIGITS = 6 };
 
-static void print_json(const surface_input *in, const prediction *r, textbuf *out) {
+/* more: further members, each with its comma; may be NULL. */
+static void print_json(const surface_input *in, const prediction *r, const char *more, textbuf *out) {
     text_add(out, "{\n");
     sample_member(out, "spacing_nm", in->spacing_nm.value);
     sample_member(out, "height_nm", in->height_nm.value);
@@ -283,6 +296,7 @@ static void print_json(const surface_input *in, const prediction *r, textbuf *ou
     sample_member(out, "coated_reflectance", r->coated);
     sample_member(out, "subwavelength_share", r->shares.none);
     member(out, "rear_escape", r->rear_escape, digits_of("weighted_reflectance"));
+    if (more) text_add(out, more);
     text_add(out, "  \"optics_model\": ");
     json_string(out, r->model);
     text_add(out, ",\n  \"orders\": {\"none\": ");
@@ -407,11 +421,33 @@ static status predict_angles(const request *q, const surface_input *in, const op
     return ST_OK;
 }
 
+/* --trials: printed behind the prediction, or as members of its object. */
+static status predict_trials_text(const request *q, const surface_input *in, const optics_setup *o, textbuf *out, error *e) {
+    trial_options t = trial_defaults();
+    distribution d = { 0 };
+    double seed = 1.0;
+    if (q->seed && !(number_parse(q->seed, &seed) && seed >= 0.0 && seed < 9e15 && !(fabs(seed - floor(seed)) > 0.0)))
+        return fail(e, ST_BAD_INPUT, "--seed: found %.40s, expected a whole number from 0", q->seed);
+    if (q->seed && !q->trials) return fail(e, ST_BAD_INPUT, "--seed: it needs --trials");
+    if (!q->trials) return ST_OK;
+    if (q->angles || q->as == AS_CSV)
+        return fail(e, ST_BAD_INPUT, "--trials: not together with %s", q->angles ? "--angles" : "--csv");
+    t.seed = (uint64_t)seed;
+    error own = { 0 };
+    status st = predict_trials(in, o, &t, &d, &own);
+    if (st == ST_OK && q->as == AS_JSON) trials_json(&d, &t, out);
+    else if (st == ST_OK) trials_text(&d, &t, out);
+    else fail(e, st == ST_NO_RESULT ? ST_BAD_INPUT : st, "--trials: %s", own.text);
+    distribution_free(&d);
+    return st == ST_OK ? ST_OK : e->code;
+}
+
 static status predict_all(const request *q, textbuf *out, error *e) {
     protocol p = { 0 };
     setup s = { 0 };
     prediction r = { 0 };
     surface_input in = { 0 };
+    textbuf trials = { 0 };
     height_source source = HEIGHT_SHEET;
     status st = q->protocol ? protocol_read(q->protocol, &p, e) : protocol_defaults(&p, e);
     if (st == ST_OK) st = apply_options(q, &p, e);
@@ -419,6 +455,8 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     if (st == ST_OK) st = surface_of(q, &p, &s, &in, &source, e);
     if (st == ST_OK && q->limit && !q->angles)
         st = fail(e, ST_BAD_INPUT, "--limit: it needs --angles, such as 0:80:5");
+    if (st == ST_OK) st = predict_trials_text(q, &in, &s.optics, &trials, e);
+    if (st == ST_OK) st = text_check(&trials, "the trials", e);
     if (st == ST_OK && q->angles) {
         st = predict_angles(q, &in, &s.optics, out, e);
         goto done;
@@ -428,12 +466,14 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     if (link_of(&s))
         calibration_apply(link_of(&s), source == HEIGHT_CALIBRATED, in.spacing_nm, in.pores, MISSING, &r);
     if (q->as == AS_JSON)
-        print_json(&in, &r, out);
+        print_json(&in, &r, trials.s, out);
     else if (q->as == AS_CSV)
         print_csv(&r, out);
     else
         print_text(&in, &p, &r, out);
+    if (q->as == AS_TEXT && trials.s) text_add(out, trials.s);
 done:
+    text_free(&trials);
     prediction_free(&r);
     setup_free(&s);
     protocol_free(&p);

@@ -82,6 +82,18 @@ static double studied_truth(double b2d, const variant *v, double *u) {
     return (1.0 + LATTICE) * hexagonal;
 }
 
+/* Share of the general recipe: 0 up to STUDIED_NM, 1 from GENERAL_NM. */
+static double general_share(double spacing_nm) {
+    return fmin(1.0, fmax(0.0, (spacing_nm - STUDIED_NM) / (GENERAL_NM - STUDIED_NM)));
+}
+
+double interval_truth(const model_parts *m, const variant *v, double b2d, double *u) {
+    double general = m->studied ? general_share(v->spacing_nm) : 1.0, sharp_u = 0.0;
+    double sharp = m->studied ? studied_truth(b2d, v, &sharp_u) : 0.0;
+    *u = general * m->res + (1.0 - general) * sharp_u;
+    return fmin(m->cap, fmax(0.0, general * fmax(0.0, b2d - m->bias) + (1.0 - general) * sharp));
+}
+
 /* ---- inputs ---- */
 
 static void reach_of(double plain, double a, double b, double k, double *up2, double *down2) {
@@ -249,19 +261,25 @@ static double studied_spacing(const workspace *w) {
     return 0.5 * fabs(studied_truth(w->weighted_b2d, &a, NULL) - studied_truth(w->weighted_b2d, &b, NULL));
 }
 
-static status weighted_range(workspace *w, prediction *out, error *e) {
+static status weighted_range(workspace *w, prediction *out, model_parts *parts, error *e) {
     double truth = 0.0, u_spacing = 0.0, cap = 0.0;
     status st = photon_mean(w->o, w->g, w->truth, &truth, e);
     if (st == ST_OK) st = photon_mean(w->o, w->g, w->cap, &cap, e);
     if (st == ST_OK) st = spacing_part(w, &u_spacing, e);
     if (st != ST_OK) return st;
-    double res = hypot(residual(fmax(out->u_model, out->u_mixing), out->model_bias), u_spacing);
+    double own = residual(fmax(out->u_model, out->u_mixing), out->model_bias), res = hypot(own, u_spacing);
+    if (parts) {
+        parts->bias = out->model_bias;
+        parts->res = own;
+        parts->cap = cap;
+        parts->studied = studied(w);
+    }
     double to_fine = out->weighted - w->weighted;
     range r = join(out->weighted, truth + to_fine, res, w->weighted_up2, w->weighted_down2, cap);
     if (studied(w)) {
         double u = 0.0, spacing_nm = w->in->spacing_nm.value;
         double sharp = studied_truth(w->weighted_b2d, w->central, &u);
-        double general = fmax(0.0, (spacing_nm - STUDIED_NM) / (GENERAL_NM - STUDIED_NM));
+        double general = general_share(spacing_nm);
         range s = join(out->weighted, sharp + to_fine, hypot(u, studied_spacing(w)), w->weighted_up2, w->weighted_down2, cap);
         r.lo = general * r.lo + (1.0 - general) * s.lo;
         r.hi = general * r.hi + (1.0 - general) * s.hi;
@@ -274,10 +292,15 @@ static status weighted_range(workspace *w, prediction *out, error *e) {
 }
 
 /* Ends on the coarse grid relative to the plain value, carried to the fine one. */
-static void spectral_range(workspace *w, prediction *out) {
+static void spectral_range(workspace *w, prediction *out, model_parts *parts) {
     size_t n = w->g->n;
     for (size_t i = 0; i < n; i++) {
         double res = residual(fmax(w->u[i], mix_around(w, i)), w->bias[i]);
+        if (parts) {
+            parts->bias_at[i] = w->bias[i];
+            parts->res_at[i] = res;
+            parts->cap_at[i] = w->cap[i];
+        }
         range r = join(w->plain[i], w->truth[i], res, w->up2[i], w->down2[i], w->cap[i]);
         w->one[i] = r.lo - w->plain[i];
         w->two[i] = r.hi - w->plain[i];
@@ -294,7 +317,7 @@ static void spectral_range(workspace *w, prediction *out) {
 }
 
 status interval_fill(const surface_input *in, const optics_setup *o, const variant *central, const grid *coarse,
-                     prediction *out, error *e) {
+                     prediction *out, model_parts *parts_out, error *e) {
     workspace w = { .in = in, .o = o, .central = central, .g = coarse };
     double **const parts[] = { &w.plain, &w.b2d, &w.mg2d, &w.cap, &w.normal, &w.air, &w.u, &w.bias, &w.truth,
                                &w.up2, &w.down2, &w.one, &w.two };
@@ -306,8 +329,8 @@ status interval_fill(const surface_input *in, const optics_setup *o, const varia
     if (st == ST_OK) st = add_inputs(&w, out, e);
     if (st == ST_OK && in->spacing_nm.value > 0.0) {
         st = model(&w, out, e);
-        if (st == ST_OK) st = weighted_range(&w, out, e);
-        if (st == ST_OK) spectral_range(&w, out);
+        if (st == ST_OK) st = weighted_range(&w, out, parts_out, e);
+        if (st == ST_OK) spectral_range(&w, out, parts_out);
     }
     free(block);
     return st;

@@ -20,7 +20,7 @@ static const double NITRIDE_NM = 75.0, GRID_MAX = 1e5;
 
 /* ---- grids ---- */
 
-static status grid_make(double lo, double hi, double step, double tolerance, grid *g, error *e) {
+status grid_make(double lo, double hi, double step, double tolerance, grid *g, error *e) {
     double steps = floor((hi - lo) / step + 1e-9);
     size_t n = (size_t)steps + 1;
     int more = lo + steps * step < hi - 1e-9 * hi; /* the last step is shorter */
@@ -31,6 +31,11 @@ static status grid_make(double lo, double hi, double step, double tolerance, gri
     for (size_t i = 0; i < n; i++) g->wavelength_nm[i] = lo + step * (double)i;
     g->wavelength_nm[g->n - 1] = hi;
     return ST_OK;
+}
+
+status grid_coarse(const optics_setup *o, grid *g, error *e) {
+    return grid_make(o->band_lo_nm, o->band_hi_nm, fmin(fmax(COARSE_NM, o->step_nm), o->band_hi_nm - o->band_lo_nm),
+                     fmax(o->reflect.tolerance, COARSE_TOLERANCE), g, e);
 }
 
 status photon_mean(const optics_setup *o, const grid *g, const double *y, double *mean, error *e) {
@@ -248,9 +253,7 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
     int planar = !(v.height_nm > 0.0);
     route r = { 0 };
     st = grid_make(o->band_lo_nm, o->band_hi_nm, o->step_nm, o->reflect.tolerance, &fine, e);
-    if (st == ST_OK)
-        st = grid_make(o->band_lo_nm, o->band_hi_nm, fmin(fmax(COARSE_NM, o->step_nm), o->band_hi_nm - o->band_lo_nm),
-                       fmax(o->reflect.tolerance, COARSE_TOLERANCE), &coarse, e);
+    if (st == ST_OK) st = grid_coarse(o, &coarse, e);
     if (st == ST_OK) st = allocate(&p, &fine, e);
     if (st == ST_OK) st = references(o, &fine, p.R, &p, e); /* R serves as work space first */
     if (st == ST_OK) st = geometry(in, o, &v, planar, &p, e);
@@ -263,7 +266,7 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
     } else {
         if (st == ST_OK) st = central(in, o, &v, &fine, &p, e);
         if (st == ST_OK && planar) exact(&p);
-        else if (st == ST_OK) st = interval_fill(in, o, &v, &coarse, &p, e);
+        else if (st == ST_OK) st = interval_fill(in, o, &v, &coarse, &p, NULL, e);
     }
     if (st == ST_OK && !p.refused) st = rear_add(in, o, &v, &fine, r.facets, &p, e);
     if (st == ST_OK) {

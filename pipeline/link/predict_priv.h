@@ -18,6 +18,11 @@ typedef struct {
     double tolerance; /* of reflectance on it */
 } grid;
 
+/* From lo to hi in steps, the last one shorter. err ST_NO_MEMORY; free(g->wavelength_nm) */
+status grid_make(double lo, double hi, double step, double tolerance, grid *g, error *e);
+/* The grid of the variations. */
+status grid_coarse(const optics_setup *o, grid *g, error *e);
+
 /* R of a variant on a grid. slabs may be NULL. err as in link_profile(), reflectance() */
 status variant_spectrum(const surface_input *in, const optics_setup *o, const variant *v, const grid *g, double *R,
                         size_t *slabs, error *e);
@@ -60,9 +65,19 @@ const char *rough_text(double v, char *shown);
 double ambient_index(const optics_setup *o);
 double texture_angle_deg(const optics_setup *o);
 
+/* The model's error as the interval uses it: bias is graded minus true, res the standard uncertainty of what is left. */
+typedef struct {
+    double bias, res, cap; /* weighted; the general recipe; no texture reflects more than cap */
+    int studied;           /* 1: calculated case by case, see interval.c */
+    double *bias_at, *res_at, *cap_at; /* [grid n] the caller's */
+} model_parts;
+
 /* Fills the interval and the budget of *out, whose spectrum and weighted value are there. `coarse`: grid of the
- * variations. Leaves lo/hi NAN when the spacing is unknown. */
+ * variations; parts may be NULL. Leaves lo/hi NAN (and parts untouched) when the spacing is unknown. */
 status interval_fill(const surface_input *in, const optics_setup *o, const variant *central, const grid *coarse,
-                     prediction *out, error *e);
+                     prediction *out, model_parts *parts, error *e);
+
+/* Weighted truth of a variant whose graded index (2-D Bruggeman) gives b2d, and its standard uncertainty. */
+double interval_truth(const model_parts *m, const variant *v, double b2d, double *u);
 
 #endif

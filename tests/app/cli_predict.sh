@@ -111,6 +111,23 @@ run 2 predict --spacing 300 --height 350 --angles 0:40:5 --angle 3
 run 2 predict --spacing 300 --height 350 --limit 0.02
 says "$err" "--limit: it needs --angles"
 
+# Monte Carlo: repeatable, ranked, beside the interval.
+run 0 predict --spacing 300 --height 350 --height-u 30 --trials --json
+says "$out" '"monte_carlo": {"median": ' '"seed": 1, "settled": true' '"budget": [{"input": "height", "sd": '
+cp "$out" "$work/trials.json"
+run 0 predict --spacing 300 --height 350 --height-u 30 --trials --seed 1 --json
+checks=$((checks + 1)); cmp -s "$out" "$work/trials.json" || miss "the same seed gives something else"
+run 0 predict --spacing 300 --height 350 --height-u 30 --trials --seed 2 --json
+checks=$((checks + 1)); ! cmp -s "$out" "$work/trials.json" || miss "another seed changes nothing"
+run 0 predict --spacing 300 --height 350 --height-u 30 --trials
+says "$out" "Monte Carlo (JCGM 101)" "What contributes         height +- "
+run 2 predict --spacing 300 --height 350 --seed 2
+says "$err" "--seed: it needs --trials"
+run 2 predict --spacing 300 --height 350 --trials --seed 1.5
+run 2 predict --spacing 300 --height 0 --trials
+says "$err" "--trials: no trials: the surface is planar"
+run 2 predict --spacing 300 --height 350 --trials --csv
+
 # Micrometre pyramids go by geometric optics: two bounces leave 0.12703 of bare silicon, 0.02262 under the nitride (Campbell, Green
 # 1987 for the geometry, Green 2008 for silicon); the ninth that meets a third facet lowers both a little.
 run 0 predict --spacing 5000 --height 3535.5 --json
