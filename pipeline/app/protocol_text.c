@@ -265,8 +265,7 @@ static void explain_optics(const protocol *p, textbuf *out) {
               mixing_name(p->mixing));
     static const char *const models[] = { "Textures too coarse for the graded index get no reflectance.\n",
                                           "Reflectance comes from geometric optics of steep facets.\n",
-                                          "Textures too coarse for the graded index are taken as facets where steep enough, "
-                                          "else they get no reflectance.\n" };
+                                          "Textures too coarse for the graded index count as facets where steep enough.\n" };
     text_add(out, models[p->model]);
     if (p->hemispherical)
         text_add(out, "The light is diffuse, from the whole half space");
