@@ -13,11 +13,12 @@
 #include "base/number.h"
 #include "base/quantity.h"
 
-enum { OPT_PX = 0x200, OPT_BAR, OPT_SCALE, OPT_RELIEF, OPT_PROTOCOL, OPT_JOBS, OPT_JSON, OPT_CSV };
+enum { OPT_PX = 0x200, OPT_BAR, OPT_SCALE, OPT_KEEP_TILT, OPT_RELIEF, OPT_PROTOCOL, OPT_JOBS, OPT_JSON, OPT_CSV };
 typedef enum { AS_LINES, AS_JSON, AS_CSV } form;
 
 typedef struct {
     double px_nm, bar_nm;
+    int keep_tilt;
     const char *scale;
     scale_standard standard;
     int jobs, relief_given;
@@ -33,6 +34,7 @@ static const struct argp_option options[] = {
     { "px",       OPT_PX,       "NM",   0, "pixel size, nm; outranks all other sources", 0 },
     { "bar",      OPT_BAR,      "LENGTH", 0, "what the burnt-in scale bar stands for, such as 5um; its length is found in the picture", 0 },
     { "scale",    OPT_SCALE,    "FILE", 0, "scale file of 'sward scale --save': replaces the instrument's pixel size where it applies", 0 },
+    { "keep-tilt", OPT_KEEP_TILT, NULL, 0, "flag tilted views, do not stretch them (a holder that tilts back by itself)", 0 },
     { "relief",   OPT_RELIEF,   "hillock|pore|auto", 0, "what a feature is (default: as the protocol says, else found)", 0 },
     { "protocol", OPT_PROTOCOL, "FILE", 0, "measuring limits from a protocol (default: built in)", 0 },
     { "jobs",     OPT_JOBS,     "N",    0, "workers, 0 = one per core (default)", 0 },
@@ -56,6 +58,7 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
             argp_error(state, "--bar: found '%s', expected a length with its unit, such as 5um or 500nm", arg);
         break;
     case OPT_SCALE: u->scale = arg; break;
+    case OPT_KEEP_TILT: u->keep_tilt = 1; break;
     case OPT_RELIEF:
         u->relief_given = 1;
         if (!strcmp(arg, "hillock")) u->relief = RELIEF_HILLOCK;
@@ -132,7 +135,7 @@ static status measure_files(const measure_use *u, const protocol *p, examined *a
     batch_item *items = mem_array(u->n, sizeof *items);
     if (!items) return NO_MEMORY(e, "the batch");
     for (size_t i = 0; i < u->n; i++) items[i] = (batch_item){ u->files[i], u->files[i], "", MISSING, MISSING };
-    examine_options o = { p, u->px_nm, u->bar_nm, u->scale ? &u->standard : NULL, NULL, 1 };
+    examine_options o = { p, u->px_nm, u->bar_nm, u->scale ? &u->standard : NULL, u->keep_tilt, NULL, 1 };
     status st = batch_examine(items, u->n, &o, u->jobs, 0, all, e);
     if (st == ST_OK) st = batch_mark_duplicates(all, u->n, e);
     for (size_t i = 0; st == ST_OK && i < u->n; i++) {

@@ -9,7 +9,7 @@
 #include "base/number.h"
 #include "base/quantity.h"
 
-enum { OPT_PROTOCOL = 0x200, OPT_SHEET, OPT_OUT, OPT_HISTORY, OPT_JOBS, OPT_PX, OPT_BAR, OPT_SCALE, OPT_DRY_RUN, OPT_GATE, OPT_NO_REPORT, OPT_FRESH,
+enum { OPT_PROTOCOL = 0x200, OPT_SHEET, OPT_OUT, OPT_HISTORY, OPT_JOBS, OPT_PX, OPT_BAR, OPT_SCALE, OPT_KEEP_TILT, OPT_DRY_RUN, OPT_GATE, OPT_NO_REPORT, OPT_FRESH,
        OPT_QUIET, OPT_VERBOSE };
 
 /* clang-format off */
@@ -22,6 +22,7 @@ static const struct argp_option options[] = {
     { "px",        OPT_PX,        "NM",   0, "pixel size of every micrograph, nm; outranks all other sources", 0 },
     { "bar",       OPT_BAR,       "LENGTH", 0, "what the burnt-in scale bar of every micrograph stands for, such as 5um; the sheet's bar_nm outranks it", 0 },
     { "scale",     OPT_SCALE,     "FILE", 0, "scale file of 'sward scale --save': replaces the instrument's pixel size where it applies", 0 },
+    { "keep-tilt", OPT_KEEP_TILT, NULL,   0, "flag tilted views, do not stretch them (a holder that tilts back by itself)", 0 },
     { "dry-run",   OPT_DRY_RUN,   NULL,   0, "say which file belongs to which sample and what its pixel size is; measure and write nothing", 0 },
     { "gate",      OPT_GATE,      NULL,   0, "exit with 4 when a target is missed", 0 },
     { "no-report", OPT_NO_REPORT, NULL,   0, "tables only, no page", 0 },
@@ -55,6 +56,7 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
             argp_error(state, "--bar: found '%s', expected a length with its unit, such as 5um or 500nm", arg);
         break;
     case OPT_SCALE: o->scale = arg; break;
+    case OPT_KEEP_TILT: o->keep_tilt = 1; break;
     case OPT_DRY_RUN: o->dry_run = 1; break;
     case OPT_GATE: o->gate = 1; break;
     case OPT_NO_REPORT: o->no_report = 1; break;

@@ -32,6 +32,7 @@ static int say_one(const folder *f, size_t i, const examine_options *o, const na
     load.px_nm_sheet = row ? row->px_nm : MISSING;
     load.bar_nm = row && isfinite(row->bar_nm) ? row->bar_nm : o->bar_nm_option;
     load.standard = o->standard;
+    load.correct_tilt = !o->keep_tilt;
     int read = load_file(f->paths[i], &load, &m, &why) == ST_OK, known = read && isfinite(m.px_nm);
     print_name(f->relative[i], width);
     printf("  ");

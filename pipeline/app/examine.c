@@ -283,6 +283,7 @@ status examine(const char *path, const char *relative, const char *stem, double 
     load.px_nm_sheet = sheet_px_nm;
     load.bar_nm = isfinite(sheet_bar_nm) ? sheet_bar_nm : o->bar_nm_option;
     load.standard = o->standard;
+    load.correct_tilt = !o->keep_tilt;
 
     missing_row(&out->row);
     out->row.file = mem_text(relative);

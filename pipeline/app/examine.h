@@ -10,6 +10,7 @@ typedef struct {
     double px_nm_option;  /* --px; NAN: none */
     double bar_nm_option; /* --bar; NAN: none */
     const scale_standard *standard; /* --scale; NULL: none */
+    int keep_tilt;        /* 1: tilted views are flagged, not stretched */
     const char *out;      /* output folder; NULL: no files (the command `measure`) */
     int fresh;            /* 1: what was remembered is not used */
 } examine_options;

@@ -106,7 +106,7 @@ static status measure_all(run *r, error *e) {
     for (size_t i = 0; i < f->n; i++)
         items[i] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING,
                                  f->rows[i] ? f->rows[i]->bar_nm : MISSING };
-    examine_options x = { &r->protocol, r->o->px_nm, r->o->bar_nm, r->has_standard ? &r->standard : NULL, r->out, r->o->fresh };
+    examine_options x = { &r->protocol, r->o->px_nm, r->o->bar_nm, r->has_standard ? &r->standard : NULL, r->o->keep_tilt, r->out, r->o->fresh };
     int progress = !r->o->quiet && (r->o->verbose || isatty(STDERR_FILENO));
     status st = batch_examine(items, f->n, &x, r->o->jobs, progress, r->images, e);
     free(items);
@@ -148,7 +148,7 @@ status run_folder(const run_options *o, run_outcome *outcome, error *e) {
     utc_now(run_at);
     status st = prepare(&r, e);
     if (st == ST_OK && o->dry_run) {
-        examine_options x = { &r.protocol, o->px_nm, o->bar_nm, r.has_standard ? &r.standard : NULL, NULL, 1 };
+        examine_options x = { &r.protocol, o->px_nm, o->bar_nm, r.has_standard ? &r.standard : NULL, o->keep_tilt, NULL, 1 };
         *outcome = (run_outcome){ 0, 0 };
         st = dry_run(&r.folder, &x, &outcome->unusable, e);
         run_free(&r);

@@ -8,6 +8,7 @@ typedef struct {
     double px_nm;        /* --px, NAN: none */
     double bar_nm;       /* --bar, NAN: none */
     int jobs;            /* 0 = one per core */
+    int keep_tilt;       /* flag tilted views, do not stretch them */
     int dry_run;         /* say what would be measured, write nothing */
     int gate, no_report, fresh, quiet, verbose;
 } run_options;

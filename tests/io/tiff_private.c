@@ -85,6 +85,11 @@ static void pairs(void) {
     CHECK_NEAR(m.y_stretch, 1.0 / cos(20.0 * PI / 180.0), 1e-12);
     CHECK(m.ny == 106 && m.file_ny == NY); /* 100 / cos 20 = 106.4 */
     micrograph_free(&m);
+    load_options keep = load_defaults();
+    error e = { 0 };
+    keep.correct_tilt = 0;
+    CHECK(load_file(scratch("t.tif"), &keep, &m, &e) == ST_OK && m.flags == FLAG(TILT_KNOWN) && m.ny == NY);
+    micrograph_free(&m);
     char copy[sizeof block];
     memcpy(copy, block, sizeof block);
     memcpy(strstr(copy, "= Off"), "= On ", 5);
