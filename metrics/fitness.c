@@ -115,8 +115,8 @@ static double blur_of(const curve *psd, double d, double floor, size_t n_px) {
 
 /* Creases keep the spectrum of a texture above its noise far beyond the ring; where it ends early although the ring
  * stands high, the picture has lost its detail. */
-static double finest_detail(const curve *psd, double d, double floor) {
-    const double from = 1.2, step = 1.05, band = 1.04, end = 0.45;
+static double finest_detail(const curve *psd, double d, double from, double floor) {
+    const double step = 1.05, band = 1.04, end = 0.45;
     double x = from;
     for (; x / d < end; x *= step) {
         double p = power_between(psd, x / d / band, x / d * band, 0.0, 0.0);
@@ -277,7 +277,7 @@ static status line_jitter(const float *f, size_t nx, size_t ny, double d, double
 
 status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e) {
     size_t nx = p->nx, ny = p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
     curve radial = { 0 };
     double sum = 0.0, streaks = 0.0;
     float *psd = mem_array(ny * (nx / 2 + 1), sizeof *psd);
@@ -293,9 +293,10 @@ status fitness_look(const float *f, const plane *p, double d_px, sharpness *out,
         if (s.texture_sd > 0.0) s.streaks = streaks / (s.texture_sd * s.texture_sd);
         if (d_px > 0.0) {
             s.blur_sd_px = blur_of(&radial, d_px, floor, nx * ny);
-            s.detail = finest_detail(&radial, d_px, floor);
+            s.detail = finest_detail(&radial, d_px, 1.2, floor);
             s.ring_over_noise = log(power_between(&radial, 0.8 / d_px, 1.4 / d_px, floor, 0.0) / fmax(floor, 1e-30));
         }
+        s.finest_per_px = finest_detail(&radial, 1.0, 0.02, floor);
         s.second_px = spacing_second(&radial, d_px, nx, ny);
         *out = s;
     }
@@ -356,6 +357,10 @@ void fitness_judge(const sharpness *s, const plane *p, const measure_options *o,
     t->clipped_share = p->clipped_low + p->clipped_high;
     limit(t, t->clipped_share, o->warn_clipped, o->max_clipped, FLAG(CLIPPED), FLAG(CLIPPED));
     if (t->ring_z < o->min_ring_z && !(t->reasons & FLAG(FEATURELESS))) t->reasons |= FLAG(NO_RING);
+    /* No ring in a picture of good contrast that holds nothing finer than ten pixels: blur has taken it. */
+    const double coarse_per_px = 0.1, low_noise = 1.0;
+    if ((t->reasons & FLAG(NO_RING)) && s->finest_per_px > 0.0 && s->finest_per_px < coarse_per_px && t->noise_rel.value < low_noise)
+        t->reasons |= FLAG(BLURRED);
     if (t->reasons & (FLAG(FEATURELESS) | FLAG(NO_RING)))
         return; /* further figures would describe the noise */
     limit(t, -n, -o->warn_features, -o->min_features, FLAG(SMALL_COUNT), FLAG(FEW_FEATURES));

@@ -11,6 +11,7 @@ typedef struct {
      * creases; 0 none, NAN unknown (no scale, or nothing above the noise) */
     double blur_sd_px;
     double detail; /* finest spatial frequency at which the texture equals the noise, in 1 / spacing; NAN unknown */
+    double finest_per_px; /* the same without a spacing, 1/px */
     double ring_over_noise; /* ln of the power at the ring / noise */
     /* grey; level of the end of the spectrum, or Immerkaer's when that is lower */
     double noise_sd;

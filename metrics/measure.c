@@ -304,7 +304,7 @@ static void judge(job *j, const sharpness *s) {
 static status run(job *j, error *e) {
     const plane *p = j->p;
     size_t n = p->nx * p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
     j->f = mem_array(n, sizeof *j->f);
     j->work = mem_array(n, sizeof *j->work);
     status st = j->f && j->work ? flatten(p, j->f, e) : NO_MEMORY(e, "the micrograph");
