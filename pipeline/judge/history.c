@@ -7,10 +7,9 @@
  * Missing numbers are NULL in the file and NAN outside. Times are compared as points in time (SQLite julianday), so
  * that time zones do not disturb the order; a row without etched_at stands at its run_at.
  * What this file does not do: charts and capability, which read a history_list. */
-#include "judge/history.h"
+#include "judge/history_priv.h"
 
 #include <math.h>
-#include <sqlite3.h>
 #include <stdlib.h>
 #include <string.h>
 #include <unistd.h>
@@ -18,12 +17,7 @@
 #include "base/mem.h"
 #include "base/text.h"
 
-enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 1, WAIT_MS = 30000 };
-
-struct history {
-    sqlite3 *db;
-    char *path;
-};
+enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 2, WAIT_MS = 30000 };
 
 static const char schema[] =
     "CREATE TABLE runs("
@@ -33,8 +27,16 @@ static const char schema[] =
     " spacing_nm REAL, spacing_nm_u REAL, density_per_um2 REAL, size_d50_nm REAL, weighted_reflectance REAL,"
     " verdict TEXT NOT NULL, row_json TEXT NOT NULL,"
     " UNIQUE(sample, fingerprint));"
-    "PRAGMA application_id = 1398231620;" /* LEDGER_ID */
-    "PRAGMA user_version = 1;";           /* LEDGER_VERSION */
+    "PRAGMA application_id = 1398231620;"; /* LEDGER_ID */
+
+/* Version 2 added what people say: notes and exclusions, both only ever appended to. */
+static const char second_version[] =
+    "CREATE TABLE notes("
+    " id INTEGER PRIMARY KEY, at TEXT NOT NULL, text TEXT NOT NULL, kind TEXT NOT NULL, initials TEXT NOT NULL);"
+    "CREATE TABLE exclusions("
+    " id INTEGER PRIMARY KEY, sample TEXT NOT NULL, etched_at TEXT NOT NULL, fingerprint TEXT NOT NULL,"
+    " excluded INTEGER NOT NULL, reason TEXT NOT NULL, initials TEXT NOT NULL, at TEXT NOT NULL);"
+    "PRAGMA user_version = 2;"; /* LEDGER_VERSION */
 
 static const char insert_sql[] =
     "INSERT INTO runs(sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, spacing_nm, spacing_nm_u,"
@@ -42,14 +44,17 @@ static const char insert_sql[] =
     " VALUES(?,?,?,?,?,?,?,?,?,?,?,?,?,?,?) ON CONFLICT(sample, fingerprint) DO NOTHING";
 
 #define WHEN "coalesce(julianday(nullif(etched_at, '')), julianday(run_at))"
-static const char select_sql[] =
-    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict, row_json,"
-    " spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance FROM runs"
-    " WHERE (?1 IS NULL OR " WHEN " >= julianday(?1)) AND (?2 IS NULL OR lot = ?2)"
-    " ORDER BY " WHEN ", sample, run_at, id";
+#define SELECT_RUNS(excluded)                                                                               \
+    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict, row_json, "     \
+    excluded ", spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance, " WHEN        \
+    " FROM runs WHERE (?1 IS NULL OR " WHEN " >= julianday(?1)) AND (?2 IS NULL OR lot = ?2)"               \
+    " ORDER BY " WHEN ", sample, run_at, id"
+static const char select_old_sql[] = SELECT_RUNS("''");
+static const char select_sql[] = SELECT_RUNS(
+    "coalesce((SELECT CASE WHEN x.excluded THEN x.reason || ' (' || x.initials || ')' ELSE '' END FROM exclusions x"
+    " WHERE x.sample = runs.sample AND x.etched_at = runs.etched_at ORDER BY x.id DESC LIMIT 1), '')");
 
-/* One sentence for whatever SQLite says. */
-static status say(history *h, const char *doing, error *e) {
+status history_say(history *h, const char *doing, error *e) {
     int code = sqlite3_errcode(h->db) & 0xff;
     switch (code) {
     case SQLITE_BUSY:
@@ -76,23 +81,23 @@ static status say(history *h, const char *doing, error *e) {
     }
 }
 
-static status run_sql(history *h, const char *sql, const char *doing, error *e) {
-    return sqlite3_exec(h->db, sql, NULL, NULL, NULL) == SQLITE_OK ? ST_OK : say(h, doing, e);
+status history_run_sql(history *h, const char *sql, const char *doing, error *e) {
+    return sqlite3_exec(h->db, sql, NULL, NULL, NULL) == SQLITE_OK ? ST_OK : history_say(h, doing, e);
 }
 
 static status read_number(history *h, const char *sql, int *out, error *e) {
     sqlite3_stmt *st = NULL;
     status s = ST_OK;
     if (sqlite3_prepare_v2(h->db, sql, -1, &st, NULL) != SQLITE_OK || sqlite3_step(st) != SQLITE_ROW)
-        s = say(h, "opening it", e);
+        s = history_say(h, "opening it", e);
     else *out = sqlite3_column_int(st, 0);
     sqlite3_finalize(st);
     return s;
 }
 
-typedef enum { LEDGER_OURS, LEDGER_EMPTY } ledger;
+typedef enum { LEDGER_OURS, LEDGER_OLDER, LEDGER_EMPTY } ledger;
 
-/* Ours, or empty and free to become ours; everything else is refused. Called inside a transaction: while another
+/* Ours (of this or an older version), or empty and free to become ours; everything else is refused. Called inside a transaction: while another
  * program makes the ledger, the marks must not be read half before and half after. */
 static status identify(history *h, ledger *out, error *e) {
     int id = 0, version = 0, tables = 0;
@@ -109,19 +114,23 @@ static status identify(history *h, ledger *out, error *e) {
         return fail(e, ST_IO, "history %s: written by a newer version of this program (ledger version %d, this one "
                               "knows %d); update the program",
                     h->path, version, (int)LEDGER_VERSION);
-    *out = LEDGER_OURS;
+    h->version = version;
+    *out = version < LEDGER_VERSION ? LEDGER_OLDER : LEDGER_OURS;
     return ST_OK;
 }
 
-/* Two programs may meet here: the second finds the ledger made when it gets the lock. */
-static status create(history *h, error *e) {
-    status st = run_sql(h, "BEGIN IMMEDIATE", "creating it", e);
+/* Makes the ledger, or brings an older one up to date. Two programs may meet here: the second finds the work done when
+ * it gets the lock. */
+static status bring_up(history *h, error *e) {
+    status st = history_run_sql(h, "BEGIN IMMEDIATE", "creating it", e);
     if (st != ST_OK) return st;
     ledger found = LEDGER_OURS;
     st = identify(h, &found, e);
-    if (st == ST_OK && found == LEDGER_EMPTY) st = run_sql(h, schema, "creating it", e);
-    if (st == ST_OK) st = run_sql(h, "COMMIT", "creating it", e);
+    if (st == ST_OK && found == LEDGER_EMPTY) st = history_run_sql(h, schema, "creating it", e);
+    if (st == ST_OK && found != LEDGER_OURS) st = history_run_sql(h, second_version, "bringing it up to date", e);
+    if (st == ST_OK) st = history_run_sql(h, "COMMIT", "creating it", e);
     if (st != ST_OK) sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
+    else h->version = LEDGER_VERSION;
     return st;
 }
 
@@ -139,16 +148,17 @@ status history_open(const char *path, int read_only, history **out, error *e) {
     if (st == ST_OK && (!h || !h->path)) st = NO_MEMORY(e, "the history");
     if (st == ST_OK) {
         int mode = read_only ? SQLITE_OPEN_READONLY : SQLITE_OPEN_READWRITE | SQLITE_OPEN_CREATE;
-        if (sqlite3_open_v2(name.s, &h->db, mode, NULL) != SQLITE_OK) st = say(h, "opening it", e);
+        if (sqlite3_open_v2(name.s, &h->db, mode, NULL) != SQLITE_OK) st = history_say(h, "opening it", e);
     }
     if (st == ST_OK) {
         sqlite3_busy_timeout(h->db, WAIT_MS);
         ledger found = LEDGER_OURS;
-        st = run_sql(h, "BEGIN", "opening it", e);
+        st = history_run_sql(h, "BEGIN", "opening it", e);
         if (st == ST_OK) st = identify(h, &found, e);
         sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
-        if (st == ST_OK && found == LEDGER_EMPTY)
-            st = read_only ? fail(e, ST_IO, "history %s: the file is empty, not a ledger", path) : create(h, e);
+        if (st == ST_OK && found == LEDGER_EMPTY && read_only)
+            st = fail(e, ST_IO, "history %s: the file is empty, not a ledger", path);
+        if (st == ST_OK && found != LEDGER_OURS && !read_only) st = bring_up(h, e);
     }
     text_free(&name);
     if (st != ST_OK) {
@@ -161,7 +171,7 @@ status history_open(const char *path, int read_only, history **out, error *e) {
 
 void history_set_wait(history *h, int wait_ms) { sqlite3_busy_timeout(h->db, wait_ms); }
 
-static int bind_text(sqlite3_stmt *s, int at, const char *text) {
+int history_bind(sqlite3_stmt *s, int at, const char *text) {
     return sqlite3_bind_text(s, at, text ? text : "", -1, SQLITE_STATIC);
 }
 static int bind_number(sqlite3_stmt *s, int at, double v) {
@@ -174,10 +184,10 @@ static int insert_row(sqlite3_stmt *s, const history_row *r) {
     const double numbers[] = { r->spacing_nm, r->spacing_nm_u, r->density_per_um2, r->size_d50_nm,
                                r->weighted_reflectance };
     int at = 1, bad = 0;
-    for (size_t i = 0; i < sizeof head / sizeof head[0]; i++) bad |= bind_text(s, at++, head[i]);
+    for (size_t i = 0; i < sizeof head / sizeof head[0]; i++) bad |= history_bind(s, at++, head[i]);
     for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) bad |= bind_number(s, at++, numbers[i]);
-    bad |= bind_text(s, at++, r->verdict);
-    bad |= bind_text(s, at, r->row_json);
+    bad |= history_bind(s, at++, r->verdict);
+    bad |= history_bind(s, at, r->row_json);
     if (bad) return 0;
     int ok = sqlite3_step(s) == SQLITE_DONE;
     return sqlite3_reset(s) == SQLITE_OK && ok;
@@ -187,16 +197,16 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
     static const char doing[] = "adding samples";
     size_t count = 0;
     *added = 0;
-    status st = run_sql(h, "BEGIN IMMEDIATE", doing, e);
+    status st = history_run_sql(h, "BEGIN IMMEDIATE", doing, e);
     if (st != ST_OK) return st;
     sqlite3_stmt *s = NULL;
-    if (sqlite3_prepare_v2(h->db, insert_sql, -1, &s, NULL) != SQLITE_OK) st = say(h, doing, e);
+    if (sqlite3_prepare_v2(h->db, insert_sql, -1, &s, NULL) != SQLITE_OK) st = history_say(h, doing, e);
     for (size_t i = 0; i < n && st == ST_OK; i++) {
-        if (!insert_row(s, &rows[i])) st = say(h, doing, e);
+        if (!insert_row(s, &rows[i])) st = history_say(h, doing, e);
         else count += sqlite3_changes(h->db) > 0;
     }
     sqlite3_finalize(s);
-    if (st == ST_OK) st = run_sql(h, "COMMIT", doing, e);
+    if (st == ST_OK) st = history_run_sql(h, "COMMIT", doing, e);
     if (st != ST_OK) {
         sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
         return st;
@@ -207,33 +217,36 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
 
 /* ---- reading ---- */
 
-enum { TEXTS = 10, NUMBERS = 5 };
+enum { TEXTS = 11, NUMBERS = 6 };
 
-/* One block per row holds all its strings. */
-static status take_row(sqlite3_stmt *s, history_row *r, char **block, error *e) {
-    const char *text[TEXTS];
-    size_t length[TEXTS], total = 0;
-    for (int i = 0; i < TEXTS; i++) {
-        text[i] = (const char *)sqlite3_column_text(s, i);
-        length[i] = text[i] ? (size_t)sqlite3_column_bytes(s, i) : 0;
-        total += length[i] + 1;
+status history_take_texts(sqlite3_stmt *s, const char **const *into, size_t n, char **block, error *e) {
+    size_t total = 0;
+    for (size_t i = 0; i < n; i++) {
+        const char *text = (const char *)sqlite3_column_text(s, (int)i);
+        total += (text ? (size_t)sqlite3_column_bytes(s, (int)i) : 0) + 1;
     }
     *block = mem_array(total, 1);
     if (!*block) return NO_MEMORY(e, "the history");
-    const char **const into[TEXTS] = { &r->sample,  &r->lot,      &r->wafer,   &r->etched_at, &r->run_at,
-                                       &r->fingerprint, &r->version, &r->protocol, &r->verdict, &r->row_json };
     char *p = *block;
-    for (int i = 0; i < TEXTS; i++) {
-        if (length[i]) memcpy(p, text[i], length[i]);
+    for (size_t i = 0; i < n; i++) {
+        const char *text = (const char *)sqlite3_column_text(s, (int)i);
+        size_t length = text ? (size_t)sqlite3_column_bytes(s, (int)i) : 0;
+        if (length) memcpy(p, text, length);
         *into[i] = p;
-        p += length[i] + 1;
+        p += length + 1;
     }
+    return ST_OK;
+}
+
+static status take_row(sqlite3_stmt *s, history_row *r, char **block, error *e) {
+    const char **const into[TEXTS] = { &r->sample,  &r->lot,      &r->wafer,   &r->etched_at, &r->run_at, &r->fingerprint,
+                                       &r->version, &r->protocol, &r->verdict, &r->row_json,  &r->excluded };
     double *const numbers[NUMBERS] = { &r->spacing_nm, &r->spacing_nm_u, &r->density_per_um2, &r->size_d50_nm,
-                                       &r->weighted_reflectance };
+                                       &r->weighted_reflectance, &r->day };
     for (int i = 0; i < NUMBERS; i++)
         *numbers[i] = sqlite3_column_type(s, TEXTS + i) == SQLITE_NULL ? (double)NAN
                                                                        : sqlite3_column_double(s, TEXTS + i);
-    return ST_OK;
+    return history_take_texts(s, into, TEXTS, block, e);
 }
 
 static status grow(history_list *l, size_t *room, error *e) {
@@ -248,28 +261,27 @@ static status grow(history_list *l, size_t *room, error *e) {
     return ST_OK;
 }
 
-/* A date or date with time that SQLite reads, not one of its own words such as "now". */
-static status check_time(history *h, const char *since, error *e) {
+status history_check_time(history *h, const char *time, const char *what, error *e) {
     sqlite3_stmt *s = NULL;
-    int good = strlen(since) >= 10 && strspn(since, "0123456789") == 4 && since[4] == '-';
+    int good = strlen(time) >= 10 && strspn(time, "0123456789") == 4 && time[4] == '-';
     if (good && sqlite3_prepare_v2(h->db, "SELECT julianday(?1) IS NOT NULL", -1, &s, NULL) == SQLITE_OK)
-        good = bind_text(s, 1, since) == SQLITE_OK && sqlite3_step(s) == SQLITE_ROW && sqlite3_column_int(s, 0);
+        good = history_bind(s, 1, time) == SQLITE_OK && sqlite3_step(s) == SQLITE_ROW && sqlite3_column_int(s, 0);
     sqlite3_finalize(s);
     return good ? ST_OK
-                : fail(e, ST_BAD_INPUT, "history since '%s': expected a date such as 2026-03-01 or a time such as "
+                : fail(e, ST_BAD_INPUT, "history %s '%s': expected a date such as 2026-03-01 or a time such as "
                                         "2026-03-01T08:00:00Z",
-                       since);
+                       what, time);
 }
 
 status history_read(history *h, const char *since, const char *lot, history_list *out, error *e) {
     history_list l = { 0 };
     size_t room = 0;
     sqlite3_stmt *s = NULL;
-    status st = since ? check_time(h, since, e) : ST_OK;
+    status st = since ? history_check_time(h, since, "since", e) : ST_OK;
     if (st != ST_OK) return st;
-    if (sqlite3_prepare_v2(h->db, select_sql, -1, &s, NULL) != SQLITE_OK ||
-        (since && bind_text(s, 1, since) != SQLITE_OK) || (lot && bind_text(s, 2, lot) != SQLITE_OK))
-        st = say(h, "reading it", e);
+    if (sqlite3_prepare_v2(h->db, h->version < 2 ? select_old_sql : select_sql, -1, &s, NULL) != SQLITE_OK ||
+        (since && history_bind(s, 1, since) != SQLITE_OK) || (lot && history_bind(s, 2, lot) != SQLITE_OK))
+        st = history_say(h, "reading it", e);
     int code = SQLITE_DONE;
     while (st == ST_OK && (code = sqlite3_step(s)) == SQLITE_ROW) {
         st = grow(&l, &room, e);
@@ -279,7 +291,7 @@ status history_read(history *h, const char *since, const char *lot, history_list
             l.n_storage++;
         }
     }
-    if (st == ST_OK && code != SQLITE_DONE) st = say(h, "reading it", e);
+    if (st == ST_OK && code != SQLITE_DONE) st = history_say(h, "reading it", e);
     sqlite3_finalize(s);
     if (st != ST_OK) history_list_free(&l);
     else *out = l;

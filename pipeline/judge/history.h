@@ -16,7 +16,10 @@ typedef struct {
     const char *protocol;     /* its name */
     double spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance; /* NAN missing */
     const char *verdict;
-    const char *row_json;     /* the whole samples.csv row as one JSON object */
+    const char *row_json;     /* the whole samples.csv row as one JSON object, sheet columns included */
+    /* for reading only */
+    double day;               /* when etched (where unknown: run), in days; differences count, not the origin */
+    const char *excluded;     /* "": counts; else the reason and, in brackets, the initials */
 } history_row;
 
 typedef struct {
@@ -28,6 +31,7 @@ typedef struct {
 
 /* Opens or creates (read_only: never creates).
  *   out  *h the caller's (history_close), NULL on failure
+ * An older ledger is brought up to date in one transaction when it is opened for writing, and read as it is otherwise.
  *   err  ST_IO no name, not a ledger of this program, a newer ledger, not writable, absent when read_only, locked for
  *        more than 30 s; ST_NO_MEMORY */
 status history_open(const char *path, int read_only, history **h, error *e);
@@ -43,6 +47,33 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
  *   err  ST_BAD_INPUT `since` is no date; ST_IO damaged, locked; ST_NO_MEMORY */
 status history_read(history *h, const char *since, const char *lot, history_list *out, error *e);
 void history_list_free(history_list *l);
+
+/* What happened to the process, by people. A change starts a new phase of every chart; a remark does not. */
+typedef struct {
+    const char *at, *text, *kind, *initials; /* ISO 8601; kind "change" or "remark"; initials "" unknown */
+    double day;                              /* for reading only, as in history_row */
+} history_note;
+
+typedef struct {
+    history_note *notes; /* in order of time */
+    size_t n;
+    char **storage; /* private, [n] */
+} history_notes;
+
+/* err  ST_BAD_INPUT no text, no such kind, `at` is no time; ST_IO; ST_NO_MEMORY */
+status history_note_add(history *h, const history_note *note, error *e);
+/* out  the caller's (history_notes_free), untouched on failure
+ * err  ST_IO damaged, locked; ST_NO_MEMORY */
+status history_notes_read(history *h, history_notes *out, error *e);
+void history_notes_free(history_notes *n);
+
+/* Takes an etch out of charts and comparisons, or back in. Nothing is deleted: each decision is one more row with its
+ * reason, the newest counts, and the rows of the runs stay as they are.
+ *   in   sample; etched_at NULL: the sample has one time of etching; excluded 1 out, 0 in; at: now, ISO 8601
+ *   err  ST_BAD_INPUT no reason or initials, no such sample (at that time), several times and none named; ST_IO;
+ *        ST_NO_MEMORY */
+status history_exclude(history *h, const char *sample, const char *etched_at, int excluded, const char *reason,
+                       const char *initials, const char *at, error *e);
 void history_close(history *h); /* NULL is fine */
 
 #endif

@@ -49,12 +49,12 @@ static void fill_ledger(void) {
                                           "conforms",
                                           "{\"sample\": \"S2\", \"lot\": \"L2\", \"etched_at\": "
                                           "\"2026-03-15T08:00:00Z\", \"spacing_nm\": 355.25, "
-                                          "\"weighted_reflectance\": 0.01831, \"note\": \"=1+1\"}" },
+                                          "\"weighted_reflectance\": 0.01831, \"note\": \"=1+1\"}", MISSING, "" },
                                         { "S1", "L1", "3", "2026-03-14T08:00:00Z", "2026-04-01T10:00:00Z",
                                           "f1", "0.1.0", "line 3", 351.2, 7.7, 9.3, 338.1, MISSING, "fails",
                                           "{\"sample\": \"S1\", \"lot\": \"L1\", \"etched_at\": "
                                           "\"2026-03-14T08:00:00Z\", \"spacing_nm\": 351.2, "
-                                          "\"weighted_reflectance\": null, \"x_mm\": \"-3.5\"}" } };
+                                          "\"weighted_reflectance\": null, \"x_mm\": \"-3.5\"}", MISSING, "" } };
     history *h = NULL;
     size_t added = 0;
     error e = { ST_OK, "" };

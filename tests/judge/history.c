@@ -237,6 +237,107 @@ static void no_memory(void) {
     }
 }
 
+/* A ledger of the first version, as it was written: read as it is, brought up to date for writing, nothing lost. */
+static void older(void) {
+    static const char first[] =
+        "CREATE TABLE runs(id INTEGER PRIMARY KEY, sample TEXT NOT NULL, lot TEXT NOT NULL, wafer TEXT NOT NULL,"
+        " etched_at TEXT NOT NULL, run_at TEXT NOT NULL, fingerprint TEXT NOT NULL, version TEXT NOT NULL, protocol TEXT NOT"
+        " NULL, spacing_nm REAL, spacing_nm_u REAL, density_per_um2 REAL, size_d50_nm REAL, weighted_reflectance REAL,"
+        " verdict TEXT NOT NULL, row_json TEXT NOT NULL, UNIQUE(sample, fingerprint));"
+        "INSERT INTO runs VALUES(1, 'old', 'L0', '', '2026-01-05T08:00:00Z', '2026-01-05T12:00:00Z', 'f0', '0.1.0', 'p',"
+        " 340.5, 7, 9, 300, 0.02, 'conforms', '{}');"
+        "PRAGMA application_id = 1398231620; PRAGMA user_version = 1;";
+    error e = { 0 };
+    sqlite3 *db = NULL;
+    history *h = NULL, *second = NULL;
+    history_list l = { 0 };
+    history_notes n = { 0 };
+    size_t added = 0;
+    CHECK(sqlite3_open(in_folder("older.sqlite"), &db) == SQLITE_OK && sqlite3_exec(db, first, NULL, NULL, NULL) == SQLITE_OK);
+    sqlite3_close(db);
+    CHECK(history_open(in_folder("older.sqlite"), 1, &h, &e) == ST_OK); /* looking changes nothing */
+    CHECK(history_read(h, NULL, NULL, &l, &e) == ST_OK && l.n == 1 && !strcmp(l.rows[0].excluded, ""));
+    CHECK(history_notes_read(h, &n, &e) == ST_OK && n.n == 0);
+    history_list_free(&l);
+    history_close(h);
+    CHECK(history_open(in_folder("older.sqlite"), 0, &h, &e) == ST_OK);
+    CHECK(history_open(in_folder("older.sqlite"), 0, &second, &e) == ST_OK); /* the second finds it done */
+    history_row more = row("new", "2026-03-02T10:00:00Z", "f1");
+    history_note note = { .at = "2026-02-01", .text = "chamber clean", .kind = "change", .initials = "AB" };
+    CHECK(history_add(h, &more, 1, &added, &e) == ST_OK && added == 1);
+    CHECK(history_note_add(second, &note, &e) == ST_OK);
+    CHECK(history_read(h, NULL, NULL, &l, &e) == ST_OK && l.n == 2 && !strcmp(l.rows[0].sample, "old"));
+    if (l.n == 2) {
+        CHECK_NEAR(l.rows[0].spacing_nm, 340.5, 0.0);
+        CHECK_NEAR(l.rows[1].day - l.rows[0].day, 56.0 + 2.0 / 24.0, 1e-6);
+    }
+    CHECK(history_notes_read(h, &n, &e) == ST_OK && n.n == 1 && !strcmp(n.notes[0].text, "chamber clean"));
+    history_notes_free(&n);
+    history_list_free(&l);
+    history_close(h);
+    history_close(second);
+}
+
+static void people(void) {
+    error e = { 0 };
+    history *h = NULL;
+    history_list l = { 0 };
+    history_notes n = { 0 };
+    size_t added = 0;
+    CHECK(history_open(in_folder("people.sqlite"), 0, &h, &e) == ST_OK);
+    history_row rows[4] = { row("a", "2026-03-02T10:00:00Z", "f1"), row("b", "2026-03-03T10:00:00Z", "f1"),
+                            row("b", "2026-03-04T10:00:00Z", "f2"), row("a", "2026-03-02T10:00:00Z", "f9") };
+    CHECK(history_add(h, rows, 3, &added, &e) == ST_OK && added == 3);
+    CHECK(history_exclude(h, "a", NULL, 1, "lamp failed", "KL", "2026-03-05T00:00:00Z", &e) == ST_OK);
+    CHECK(history_exclude(h, "b", "2026-03-04T11:00:00+01:00", 1, "wrong gas", "KL", "2026-03-05T00:00:00Z", &e) == ST_OK);
+    CHECK(history_add(h, &rows[3], 1, &added, &e) == ST_OK && added == 1); /* measured again: still out */
+    CHECK(history_read(h, NULL, NULL, &l, &e) == ST_OK && l.n == 4);
+    if (l.n == 4) {
+        CHECK(!strcmp(l.rows[0].excluded, "lamp failed (KL)") && !strcmp(l.rows[1].excluded, "lamp failed (KL)"));
+        CHECK(!strcmp(l.rows[2].excluded, "") && !strcmp(l.rows[3].excluded, "wrong gas (KL)"));
+    }
+    history_list_free(&l);
+    CHECK(history_exclude(h, "a", NULL, 0, "the lamp was fine", "MN", "2026-03-06T00:00:00Z", &e) == ST_OK);
+    CHECK(history_read(h, NULL, NULL, &l, &e) == ST_OK && l.n == 4 && !strcmp(l.rows[0].excluded, ""));
+    history_list_free(&l);
+    CHECK_FAILS(history_exclude(h, "a", NULL, 1, " ", "KL", "", &e), ST_BAD_INPUT, e, "needs a reason");
+    CHECK_FAILS(history_exclude(h, "a", NULL, 1, "x", "", "", &e), ST_BAD_INPUT, e, "initials");
+    CHECK_FAILS(history_exclude(h, "c", NULL, 1, "x", "K", "", &e), ST_BAD_INPUT, e, "no sample 'c'");
+    CHECK_FAILS(history_exclude(h, "a", "2026-03-09", 1, "x", "K", "", &e), ST_BAD_INPUT, e, "etched at 2026-03-09");
+    CHECK_FAILS(history_exclude(h, "b", NULL, 1, "x", "K", "", &e), ST_BAD_INPUT, e, "at 2 times");
+    history_note note = { .at = "2026-03-09T08:00:00Z", .text = "new bath", .kind = "change", .initials = "" };
+    CHECK(history_note_add(h, &note, &e) == ST_OK);
+    note = (history_note){ .at = "2026-03-01T08:00:00+02:00", .text = "cold \"day\"; --", .kind = "remark", .initials = "KL" };
+    CHECK(history_note_add(h, &note, &e) == ST_OK);
+    CHECK(history_notes_read(h, &n, &e) == ST_OK && n.n == 2);
+    if (n.n == 2)
+        CHECK(!strcmp(n.notes[0].text, "cold \"day\"; --") && !strcmp(n.notes[1].kind, "change") && n.notes[0].day < n.notes[1].day);
+    history_notes_free(&n);
+    history_notes_free(&n);
+    note.text = "";
+    CHECK_FAILS(history_note_add(h, &note, &e), ST_BAD_INPUT, e, "needs a text");
+    note.text = "x";
+    note.kind = "party";
+    CHECK_FAILS(history_note_add(h, &note, &e), ST_BAD_INPUT, e, "not 'party'");
+    note.kind = "change";
+    note.at = "yesterday";
+    CHECK_FAILS(history_note_add(h, &note, &e), ST_BAD_INPUT, e, "expected a date");
+    for (size_t k = 1; k <= 3; k++) {
+        mem_fail_after(k);
+        CHECK_FAILS(history_notes_read(h, &n, &e), ST_NO_MEMORY, e, "not enough memory");
+        mem_fail_after(0);
+    }
+    mem_fail_after(1);
+    CHECK_FAILS(history_exclude(h, "a", NULL, 1, "x", "K", "", &e), ST_NO_MEMORY, e, "not enough memory");
+    mem_fail_after(0);
+    history_close(h);
+    CHECK(history_open(in_folder("people.sqlite"), 1, &h, &e) == ST_OK);
+    note.at = "2026-03-09";
+    CHECK_FAILS(history_note_add(h, &note, &e), ST_IO, e, "may be written");
+    CHECK_FAILS(history_exclude(h, "a", NULL, 1, "x", "K", "", &e), ST_IO, e, "may be written");
+    history_close(h);
+}
+
 int main(void) {
     char home[250];
     if (!getcwd(home, sizeof home)) return 1;
@@ -250,7 +351,9 @@ int main(void) {
     locked();
     read_only_folder();
     no_memory();
-    static const char *const made[] = { "a.sqlite", "notes.txt", "other.sqlite", "app.sqlite", "newer.sqlite",
+    older();
+    people();
+    static const char *const made[] = { "a.sqlite", "notes.txt", "other.sqlite", "app.sqlite", "newer.sqlite", "older.sqlite", "people.sqlite",
                                         "empty.sqlite", ":memory:" };
     for (size_t i = 0; i < sizeof made / sizeof made[0]; i++) unlink(in_folder(made[i]));
     rmdir(in_folder("sealed"));
