@@ -1,0 +1,33 @@
+/* What charts, drift, capability and comparisons mean, in sentences for the person at the bench. Pure. */
+#ifndef SWARD_JUDGE_SENTENCE_H
+#define SWARD_JUDGE_SENTENCE_H
+#include "base/text.h"
+#include "judge/capability.h"
+#include "judge/chart.h"
+#include "judge/trend.h"
+
+/* What is spoken about. Every function adds one sentence or more, without a line break at the end; a failed append stays
+ * in the text (text_check). */
+typedef struct {
+    const char *quantity, *unit; /* column name ("spacing_nm" is spoken as "spacing"); "" without unit */
+    int digits;                  /* as the column prints */
+    double min, max;             /* target range, NAN open */
+} sentence_subject;
+
+/* "spacing drifts by +11.2 nm per etch (95 %: 8.1 to 14.3); at this rate it leaves its target in 5 etches"; per_day may be
+ * NULL. Without a clear drift says that, with the interval. */
+void sentence_drift(const sentence_subject *s, const trend_slope *per_etch, const trend_slope *per_day, textbuf *t);
+/* Centre, limits and what they rest on; a phase without limits says what is missing. */
+void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart_options *o, textbuf *t);
+/* "W7 lies beyond 3 sigma (high side: 402 nm, 4.1 sigma from the centre)"; every rule that fired. */
+void sentence_alarm(const sentence_subject *s, const char *sample, const chart_point *p, textbuf *t);
+/* How often the rules cry wolf on a steady process. */
+void sentence_false_alarms(const chart_options *o, textbuf *t);
+void sentence_capability(const sentence_subject *s, const capability *c, textbuf *t);
+void sentence_step(const sentence_subject *s, const char *a, const char *b, const trend_step *d, textbuf *t);
+/* The straight line on a setting: how much it moves the quantity. */
+void sentence_line(const sentence_subject *s, const char *setting, const trend_line *l, textbuf *t);
+/* "the etch_time_s that brings spacing to 350 nm: 212 (198 to 226)", from the data, with the cautions. */
+void sentence_setting(const sentence_subject *s, const char *setting, double wanted, const trend_setting *r, textbuf *t);
+
+#endif
