@@ -47,7 +47,7 @@ typedef struct {
 /*   out  the best converged point, or the best point reached; owned (least_free), filled on ST_NO_RESULT too
  *   err  ST_BAD_INPUT no parameter, fewer residuals than parameters, no start, bounds out of order, a start outside
  *        them; ST_NO_RESULT no start arrived at a minimum; what the callbacks return; ST_NO_MEMORY
- *   src  More J.J. (1978), Lecture Notes in Mathematics 630, 105 (MINPACK's lmder, through cminpack) */
+ *   src  More J.J. (1978), in Numerical Analysis (ed. Watson G.A.), Springer, 105 (MINPACK's lmder, through cminpack) */
 status least_squares(const least_problem *p, least_fit *out, error *e);
 void least_free(least_fit *f);
 

@@ -7,6 +7,8 @@ home=$(cd "$(dirname "$0")/../.." && pwd)
 . "$home/pipeline/setup.sh"
 # shellcheck disable=SC2086
 sward_setup $sward_build_packages
+SWARD_MATERIALS="$home/pipeline/optics/materials"
+export SWARD_MATERIALS
 make_bench() { # source, build folder
     cmake -S "$1" -B "$2" -G Ninja -DCMAKE_BUILD_TYPE=Release >/dev/null && cmake --build "$2" --target sward_bench >/dev/null \
         || sward_die "the benchmark does not build in $2"
