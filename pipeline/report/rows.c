@@ -118,7 +118,8 @@ const column sample_columns[] = {
            "true surface area / projected area, from the modelled shape; enlargement of the area, not a recombination factor"),
     SAMPLE(weighted_reflectance, COL_NUMBER, "1", 5,
            "predicted front-surface reflectance averaged over the AM1.5G photon flux; graded-index model (large steep "
-           "facets: geometric optics), light from the rear (beyond about 1000 nm) left out; empty where no model serves"),
+           "facets: geometric optics), light from the rear (beyond about 1000 nm) left out unless the "
+           "protocol describes it; empty where no model serves"),
     SAMPLE(weighted_reflectance_lo, COL_NUMBER, "1", 5,
            "lower end of the 95 % interval of weighted_reflectance; need not be centred, the known bias of the model is in it"),
     SAMPLE(weighted_reflectance_hi, COL_NUMBER, "1", 5, "upper end of the 95 % interval of weighted_reflectance"),

@@ -1,8 +1,10 @@
 /* Does the interval hold the truth? Reference: rigorous coupled-wave calculations, hexagonal lattice, one hillock per
  * cell, discs cut at the cell edge so that the solid share is exactly that of a cone or paraboloid, silicon of Green
  * (2008), weighted with the AM1.5G photon flux over 300-1200 nm; 127 to 301 harmonics, 32 slabs, own error of the
- * weighted R 0.1-0.2 points up to a pitch of 400 nm, 0.5 above. A square lattice (which took no part in the tables of
- * the model's error) and single wavelengths at oblique incidence (91 harmonics, 20 slabs) stand beside it. */
+ * weighted R 0.1-0.2 points up to a pitch of 400 nm, 0.5 above. The tables of the model's error come from the hexagonal
+ * values; how far a lattice may differ comes from the square ones (interval.c). What is asked here is therefore that the
+ * interval holds its own sources and stays narrow between them; single wavelengths at oblique incidence (91 harmonics, 20
+ * slabs) set only the width of slanted light. */
 #include <stdlib.h>
 
 #include "base/quantity.h"
