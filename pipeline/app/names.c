@@ -2,6 +2,7 @@
  * template is literal text and fields in braces; it matches as a whole, fields take as little as they can
  * ({n}: digits only), and a table of hopeless (part, position) pairs keeps the search polynomial. */
 #include "app/names.h"
+#include "app/regexname.h"
 
 #include <stdio.h>
 #include <stdlib.h>
@@ -79,7 +80,12 @@ static int ends_like_image(const char *s) {
     return 0;
 }
 
+static const char *regex_of(const char *pattern) {
+    return pattern && !strncmp(pattern, "re:", 3) ? pattern + 3 : NULL;
+}
+
 status pattern_check(const char *pattern, error *e) {
+    if (regex_of(pattern)) return regex_check(regex_of(pattern), e);
     part parts[MAX_PARTS];
     error inner = { ST_OK, "" };
     int seen[N_FIELDS + 1] = { 0 }, naming = 0;
@@ -199,7 +205,9 @@ status name_sample(const char *relative, const char *pattern, name_parts *out, e
     name_parts got = { 0 };
     int found = 0;
     status st = ST_OK;
-    if (pattern && strchr(pattern, '/'))
+    if (regex_of(pattern))
+        st = regex_sample(relative, (size_t)(bare - relative) + stem, regex_of(pattern), &got, &found, e);
+    else if (pattern && strchr(pattern, '/'))
         st = by_pattern(relative, (size_t)(bare - relative) + stem, pattern, &got, &found, e);
     else if (pattern)
         st = by_pattern(bare, stem, pattern, &got, &found, e);

@@ -8,7 +8,9 @@ typedef struct {
     char *sample, *lot, *wafer, *position;
 } name_parts;
 
-/* The template's own fault: err ST_BAD_INPUT unknown field (with the nearest), no field at all, unclosed
+/* A template, or "re:" and a regular expression (PCRE2) with named groups lot wafer position sample, matched
+ * against the relative path without its extension: see regexname.h.
+ * The template's own fault: err ST_BAD_INPUT unknown field (with the nearest), no field at all, unclosed
  * brace, two fields without text between them. Fields: lot wafer position sample n, each at most once; {}
  * skips anything. */
 status pattern_check(const char *pattern, error *e);

@@ -69,7 +69,7 @@ const protocol_key protocol_keys[] = {
     PATH("", "history", history, "ledger of all samples, relative to this file; null: history.sqlite in the output folder"),
     { "", "targets", KEY_TARGETS, AT(targets), "", 0, 0, 0, NULL, 0, "a quantity of samples.csv with min, max or both, and \"error\": \"repeat\" when only what varies from run to run counts" },
 
-    TEXT("samples", "pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{n}; null: sub-folder, else name without its number"),
+    TEXT("samples", "pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{n}, or re: and a regular expression with groups (?<wafer>...); null: sub-folder, else name without its number"),
 
     LIMIT(min_px_per_spacing, 2, OPEN, "pixels per spacing below which a micrograph is excluded"),
     LIMIT(warn_px_per_spacing, 2, OPEN, "the same, flagged only"),
