@@ -14,6 +14,7 @@
 static const command commands[] = {
     { "run", cmd_run, &run_argp, "the whole pipeline on a folder" },
     { "measure", cmd_measure, &measure_argp, "texture numbers only" },
+    { "repeat", cmd_repeat, &repeat_argp, "how well the measurement repeats, against the targets" },
     { "inspect", cmd_inspect, &inspect_argp, "what a file itself says: pixel size, strip, facts" },
     { "predict", cmd_predict, &predict_argp, "reflectance from numbers" },
     { "fit", cmd_fit, &fit_argp, "the link calibrated on measured spectra" },
