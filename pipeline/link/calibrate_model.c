@@ -3,7 +3,7 @@
  * Values closer than 5 nm are averaged in groups: the reflectance of such a texture has no finer structure, and the noise
  * averages out. Noise: each value against the straight line through its neighbours, median (robust against the texture's
  * own bends) over 0.6745, the deviation's variance being 1 + w^2 + (1 - w)^2 of one value's.
- * Starts: a scan over 56 heights (20 to 3000 nm) and 14 exponents on 72 wavelengths, the offset by its mean. For every
+ * Starts: a scan over 46 heights (25 to 3000 nm) and 12 exponents on 48 wavelengths, the offset by its mean. For every
  * exponent the best height of each sample, and the second best minimum; the better half goes on. Tall and blunt at once (height x exponent above
  * 5000 nm) is left out, here and in the fit: such profiles need thousands of slabs, and no etch makes them.
  * What this file does not do: light from the rear, diffuse scattering, the model's own error. */
@@ -16,10 +16,10 @@
 #include "link/calibrate_priv.h"
 
 static const double GROUP_NM = 5.0;
-static const double SCAN_LO_NM = 20.0, SCAN_HI_NM = 3000.0, SCAN_TOLERANCE = 1e-3;
+static const double SCAN_LO_NM = 25.0, SCAN_HI_NM = 3000.0, SCAN_TOLERANCE = 1e-3;
 static const double TALL_AND_BLUNT_NM = 5000.0; /* height x exponent */
 static const double MAD = 0.6744897501960817;   /* median of |normal| */
-enum { FEWEST = 8, SCAN_HEIGHTS = 56, SCAN_POINTS = 72, SCAN_EXPONENTS = FIT_STARTS };
+enum { FEWEST = 8, SCAN_HEIGHTS = 46, SCAN_POINTS = 48, SCAN_EXPONENTS = FIT_STARTS };
 
 const double fit_lower[FIT_KINDS] = { 10.0, 0.25, 0.0, 0.2, -0.05 };
 const double fit_upper[FIT_KINDS] = { 5000.0, 5.0, 0.5, 1.0, 0.05 };
@@ -271,8 +271,7 @@ static size_t best_half(const double *all, rank *ranks, size_t n, size_t n_x, do
 }
 
 status fit_starts(const fit_model *f, double *starts, size_t *n, error *e) {
-    static const double exponents[] = { 1.0,  0.35, 0.5, 0.7, 0.85, 1.2, 1.4,
-                                        1.65, 1.9,  2.2, 2.6, 3.0,  3.5, 4.2 };
+    static const double exponents[] = { 1.0, 0.5, 0.7, 0.85, 1.2, 1.4, 1.65, 1.9, 2.2, 2.6, 3.2, 4.2 };
     _Static_assert(sizeof exponents / sizeof exponents[0] == SCAN_EXPONENTS,
                    "the better half of two starts for every exponent");
     size_t n_x = fit_parameters(f);

@@ -48,7 +48,7 @@ status fit_residuals(void *user, const double *x, double *r, error *e);
 status fit_jacobian(void *user, const double *x, double *j, error *e);
 
 /* starts[FIT_STARTS * parameters]: minima of a scan over height and exponent; *n of them. */
-enum { FIT_STARTS = 14 };
+enum { FIT_STARTS = 12 };
 status fit_starts(const fit_model *f, double *starts, size_t *n, error *e);
 
 /* The sentences of a fit that stands; fills remarks and determined. */
