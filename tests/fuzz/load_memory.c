@@ -11,6 +11,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t n);
 int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t n) {
     load_options o = load_defaults();
     o.max_pixels = (size_t)1 << 20;
+    o.bar_nm = 1000.0; /* look for a scale bar too */
     micrograph m = { 0 };
     error e = { 0 };
     status st = load_memory(bytes, n, &o, &m, &e);
