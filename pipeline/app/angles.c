@@ -28,15 +28,17 @@ status angles_parse(const char *option, const char *text, double *from, double *
         ok = ok && number_parse(one, parts[i]);
         if (end) at = end + 1;
     }
-    if (!ok || !(*from >= 0.0 && *to <= 89.0 && *from <= *to && *step > 0.0) || (*to - *from) / *step >= MAX_ANGLES)
-        return fail(e, ST_BAD_INPUT, "%s: found %.40s, expected FROM:TO:STEP in degrees, 0 to 89, at most %d angles, such "
-                                     "as 0:80:5",
+    if (!ok || !(*from >= 0.0 && *to <= 89.0 && *from <= *to && *step > 0.0) ||
+        (*to - *from) / *step >= MAX_ANGLES)
+        return fail(e, ST_BAD_INPUT,
+                    "%s: found %.40s, expected FROM:TO:STEP in degrees, 0 to 89, at most %d angles, such "
+                    "as 0:80:5",
                     option, text, MAX_ANGLES);
     return ST_OK;
 }
 
-static status one_angle(const surface_input *in, const optics_setup *set, angle_row *row, char *note, size_t room,
-                        error *e) {
+static status one_angle(const surface_input *in, const optics_setup *set, angle_row *row, char *note,
+                        size_t room, error *e) {
     optics_setup o = *set;
     double *values[3] = { &row->mean, &row->s, &row->p };
     static const polarization which[3] = { POL_MEAN, POL_S, POL_P };
@@ -60,10 +62,12 @@ static status one_angle(const surface_input *in, const optics_setup *set, angle_
     return st;
 }
 
-status angles_sweep(const surface_input *in, const optics_setup *o, double from, double to, double step, angle_sweep *out,
-                    error *e) {
+status angles_sweep(const surface_input *in, const optics_setup *o, double from, double to, double step,
+                    angle_sweep *out, error *e) {
     size_t n = (size_t)floor((to - from) / step + 1e-9) + 1;
-    angle_sweep s = { .n = n, .spacing_nm = in->spacing_nm.value, .height_nm = in->height_nm.value,
+    angle_sweep s = { .n = n,
+                      .spacing_nm = in->spacing_nm.value,
+                      .height_nm = in->height_nm.value,
                       .rows = mem_array(n, sizeof *s.rows) };
     status st = s.rows ? ST_OK : NO_MEMORY(e, "the angles");
     for (size_t i = 0; i < n && st == ST_OK; i++) {
@@ -71,8 +75,10 @@ status angles_sweep(const surface_input *in, const optics_setup *o, double from,
         s.rows[i].angle_deg = from + step * (double)i;
         st = one_angle(in, o, &s.rows[i], i < 2 ? s.note : ignored, sizeof s.note, e);
     }
-    if (st == ST_OK) *out = s;
-    else angle_sweep_free(&s);
+    if (st == ST_OK)
+        *out = s;
+    else
+        angle_sweep_free(&s);
     return st;
 }
 
@@ -90,7 +96,8 @@ double angles_under(const angle_sweep *s, double limit, int upper) {
             reached = b->angle_deg;
             continue;
         }
-        if (i && vb > limit) reached = a->angle_deg + (limit - va) / (vb - va) * (b->angle_deg - a->angle_deg);
+        if (i && vb > limit)
+            reached = a->angle_deg + (limit - va) / (vb - va) * (b->angle_deg - a->angle_deg);
         break;
     }
     return reached;
@@ -119,9 +126,12 @@ void angles_json(const angle_sweep *s, double limit, textbuf *out) {
         const struct {
             const char *name;
             double v;
-        } members[] = { { "angle_deg", r->angle_deg },  { "weighted_reflectance_s", r->s },
-                        { "weighted_reflectance_p", r->p }, { "weighted_reflectance", r->mean },
-                        { "weighted_reflectance_lo", r->mean_lo }, { "weighted_reflectance_hi", r->mean_hi } };
+        } members[] = { { "angle_deg", r->angle_deg },
+                        { "weighted_reflectance_s", r->s },
+                        { "weighted_reflectance_p", r->p },
+                        { "weighted_reflectance", r->mean },
+                        { "weighted_reflectance_lo", r->mean_lo },
+                        { "weighted_reflectance_hi", r->mean_hi } };
         text_add(out, i ? ",\n    {" : "\n    {");
         for (size_t k = 0; k < sizeof members / sizeof members[0]; k++) {
             text_addf(out, "%s\"%s\": ", k ? ", " : "", members[k].name);
@@ -134,7 +144,8 @@ void angles_json(const angle_sweep *s, double limit, textbuf *out) {
 
 void angles_csv(const angle_sweep *s, textbuf *out) {
     char t[NUMBER_TEXT];
-    text_add(out, "angle_deg,weighted_reflectance_s,weighted_reflectance_p,weighted_reflectance,weighted_reflectance_lo,"
+    text_add(out, "angle_deg,weighted_reflectance_s,weighted_reflectance_p,weighted_reflectance,weighted_"
+                  "reflectance_lo,"
                   "weighted_reflectance_hi\n");
     for (size_t i = 0; i < s->n; i++) {
         const angle_row *r = &s->rows[i];
@@ -145,8 +156,9 @@ void angles_csv(const angle_sweep *s, textbuf *out) {
 
 void angles_text(const angle_sweep *s, double limit, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT], d[NUMBER_TEXT];
-    text_addf(out, "Features of height %s nm, spacing %s nm; weighted reflectance in %%\n\n"
-                   "angle        s        p     mean   95 %% interval of the mean\n",
+    text_addf(out,
+              "Features of height %s nm, spacing %s nm; weighted reflectance in %%\n\n"
+              "angle        s        p     mean   95 %% interval of the mean\n",
               number_text(s->height_nm, 5, a), number_text(s->spacing_nm, 5, b));
     for (size_t i = 0; i < s->n; i++) {
         const angle_row *r = &s->rows[i];
@@ -157,10 +169,14 @@ void angles_text(const angle_sweep *s, double limit, textbuf *out) {
     if (isfinite(limit)) {
         double at = angles_under(s, limit, 0), sure = angles_under(s, limit, 1);
         number_percent(limit, 4, a);
-        if (isfinite(at)) text_addf(out, "\nAt most %s %% up to %s deg", a, number_text(at, 3, b));
-        else text_addf(out, "\nAbove %s %% already at the first angle", a);
-        if (isfinite(sure)) text_addf(out, "; with 95 %% confidence up to %s deg.\n", number_text(sure, 3, b));
-        else text_add(out, "; at no angle with 95 % confidence.\n");
+        if (isfinite(at))
+            text_addf(out, "\nAt most %s %% up to %s deg", a, number_text(at, 3, b));
+        else
+            text_addf(out, "\nAbove %s %% already at the first angle", a);
+        if (isfinite(sure))
+            text_addf(out, "; with 95 %% confidence up to %s deg.\n", number_text(sure, 3, b));
+        else
+            text_add(out, "; at no angle with 95 % confidence.\n");
     }
     text_addf(out, "\n%s\n", s->note);
 }

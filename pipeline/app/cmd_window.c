@@ -75,18 +75,23 @@ typedef struct {
 
 static error_t window_option(int key, char *arg, struct argp_state *state) {
     request *q = state->input;
-    const char **texts[] = { NULL, &q->spacing, &q->height, &q->exponent, &q->thickness, &q->target, &q->results,
-                             &q->protocol };
+    const char **texts[] = { NULL,          &q->spacing, &q->height,  &q->exponent,
+                             &q->thickness, &q->target,  &q->results, &q->protocol };
     if (key == ARGP_KEY_ARG) {
         argp_error(state, "'%s' is no option; ranges need their names, such as --spacing 150:500:25", arg);
         return 0;
     }
     if (key < OPT_SPACING || key > OPT_CSV) return ARGP_ERR_UNKNOWN;
-    if (key <= OPT_PROTOCOL) *texts[key] = arg;
-    else if (key == OPT_PORES) q->pores = 1;
-    else if (key == OPT_JSON) q->as = AS_JSON;
-    else if (key == OPT_CSV) q->as = AS_CSV;
-    else if (q->n_given == MAX_GIVEN) argp_error(state, "more than %d options", MAX_GIVEN);
+    if (key <= OPT_PROTOCOL)
+        *texts[key] = arg;
+    else if (key == OPT_PORES)
+        q->pores = 1;
+    else if (key == OPT_JSON)
+        q->as = AS_JSON;
+    else if (key == OPT_CSV)
+        q->as = AS_CSV;
+    else if (q->n_given == MAX_GIVEN)
+        argp_error(state, "more than %d options", MAX_GIVEN);
     else {
         q->given[q->n_given].option = key;
         q->given[q->n_given++].text = arg;
@@ -98,7 +103,8 @@ const struct argp window_argp = {
     window_options,
     window_option,
     "",
-    "The process window: weighted reflectance over height and spacing (or shape, or coating thickness), the contour of a "
+    "The process window: weighted reflectance over height and spacing (or shape, or coating thickness), the "
+    "contour of a "
     "target, and today's samples in it.\v"
     "Example: sward window --results sward-out --target 0.02\n"
     "The plain value of a bare texture does not depend on the spacing; how sure it is does.",
@@ -112,7 +118,8 @@ static status apply_options(const request *q, protocol *p, error *e) {
     for (size_t i = 0; i < q->n_given; i++)
         for (size_t k = 0; k < sizeof sets / sizeof sets[0]; k++) {
             if (sets[k].option != q->given[i].option) continue;
-            if (q->given[i].option == OPT_COATING && first_coating) { /* the command line's replace the protocol's */
+            if (q->given[i].option == OPT_COATING &&
+                first_coating) { /* the command line's replace the protocol's */
                 for (size_t c = 0; c < p->n_coatings; c++) {
                     free(p->coatings[c].material);
                     p->coatings[c] = (protocol_coating){ 0 };
@@ -135,7 +142,8 @@ static status target_of(const request *q, const protocol *p, double *limit, erro
         if (!strcmp(p->targets[i].quantity, "weighted_reflectance") && isfinite(p->targets[i].max))
             *limit = p->targets[i].max;
     if (q->target && !(number_parse(q->target, limit) && *limit > 0.0 && *limit <= 1.0))
-        return fail(e, ST_BAD_INPUT, "--target: found %.40s, expected a reflectance above 0 and at most 1, such as 0.02",
+        return fail(e, ST_BAD_INPUT,
+                    "--target: found %.40s, expected a reflectance above 0 and at most 1, such as 0.02",
                     q->target);
     return ST_OK;
 }
@@ -143,7 +151,9 @@ static status target_of(const request *q, const protocol *p, double *limit, erro
 static status axes(const request *q, window *w, error *e) {
     axis one;
     if (q->exponent && q->thickness)
-        return fail(e, ST_BAD_INPUT, "--thickness: a map has two axes, height and one more; take --exponent or --thickness out");
+        return fail(
+            e, ST_BAD_INPUT,
+            "--thickness: a map has two axes, height and one more; take --exponent or --thickness out");
     w->across = q->exponent ? ACROSS_EXPONENT : q->thickness ? ACROSS_THICKNESS : ACROSS_SPACING;
     status st = axis_parse("--height", q->height ? q->height : "100:600:25", 1.0, 1e5, &w->height, e);
     if (st != ST_OK) return st;
@@ -151,8 +161,8 @@ static status axes(const request *q, window *w, error *e) {
         return axis_parse("--spacing", q->spacing ? q->spacing : "150:500:25", 1.0, 1e5, &w->x, e);
     st = axis_parse("--spacing", q->spacing ? q->spacing : "350", 1.0, 1e5, &one, e);
     if (st == ST_OK && one.n != 1)
-        return fail(e, ST_BAD_INPUT, "--spacing: found %.60s, expected one spacing (nm) beside %s", q->spacing,
-                    q->exponent ? "--exponent" : "--thickness");
+        return fail(e, ST_BAD_INPUT, "--spacing: found %.60s, expected one spacing (nm) beside %s",
+                    q->spacing, q->exponent ? "--exponent" : "--thickness");
     if (st == ST_OK) w->spacing_nm = one.v[0];
     if (st == ST_OK && q->exponent) st = axis_parse("--exponent", q->exponent, 0.05, 20.0, &w->x, e);
     if (st == ST_OK && q->thickness) st = axis_parse("--thickness", q->thickness, 0.0, 1e4, &w->x, e);
@@ -175,9 +185,12 @@ static status make(const request *q, textbuf *out, error *e) {
         surface_input base = { .pores = p.measure.relief == RELIEF_PORE, .link = p.link };
         st = window_fill(&w, &base, &s.optics, e);
     }
-    if (st == ST_OK && q->as == AS_JSON) window_json(&w, out);
-    else if (st == ST_OK && q->as == AS_CSV) window_csv(&w, out);
-    else if (st == ST_OK) window_text(&w, out);
+    if (st == ST_OK && q->as == AS_JSON)
+        window_json(&w, out);
+    else if (st == ST_OK && q->as == AS_CSV)
+        window_csv(&w, out);
+    else if (st == ST_OK)
+        window_text(&w, out);
     window_free(&w);
     setup_free(&s);
     protocol_free(&p);

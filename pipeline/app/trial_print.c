@@ -31,8 +31,8 @@ void trials_json(const distribution *d, const trial_options *t, textbuf *out) {
     member(out, ", ", "sd", d->sd);
     member(out, ", ", "lo", d->lo);
     member(out, ", ", "hi", d->hi);
-    text_addf(out, ", \"trials\": %zu, \"seed\": %llu, \"settled\": %s", d->trials, (unsigned long long)t->seed,
-              d->settled ? "true" : "false");
+    text_addf(out, ", \"trials\": %zu, \"seed\": %llu, \"settled\": %s", d->trials,
+              (unsigned long long)t->seed, d->settled ? "true" : "false");
     member(out, ", ", "tolerance", d->tolerance);
     text_add(out, ",\n    \"budget\": [");
     for (int i = 0; i < INPUTS; i++) {
@@ -54,10 +54,11 @@ void trials_text(const distribution *d, const trial_options *t, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT];
     int order[INPUTS];
     rank(d, order);
-    text_addf(out, "\nMonte Carlo (JCGM 101)   median %s %%, 95 %% of the trials from %s to %s %%\n", number_percent(d->median, 4, a),
-              number_percent(d->lo, 4, b), number_percent(d->hi, 4, c));
-    text_addf(out, "                         %zu trials, seed %llu, ends within %s %%%s\n", d->trials, (unsigned long long)t->seed,
-              number_percent(d->tolerance, 2, a), d->settled ? "" : " not reached");
+    text_addf(out, "\nMonte Carlo (JCGM 101)   median %s %%, 95 %% of the trials from %s to %s %%\n",
+              number_percent(d->median, 4, a), number_percent(d->lo, 4, b), number_percent(d->hi, 4, c));
+    text_addf(out, "                         %zu trials, seed %llu, ends within %s %%%s\n", d->trials,
+              (unsigned long long)t->seed, number_percent(d->tolerance, 2, a),
+              d->settled ? "" : " not reached");
     text_add(out, "What contributes         ");
     for (int i = 0, shown = 0; i < INPUTS; i++)
         if (d->sd_of[order[i]] > 1e-6)

@@ -50,11 +50,13 @@ status axis_parse(const char *option, const char *text, double lo, double hi, ax
     int n = numbers(text, v);
     axis a = { 0 };
     char from[NUMBER_TEXT], to[NUMBER_TEXT];
-    int ok = n == 1 ? v[0] >= lo && v[0] <= hi : n == 3 && v[0] >= lo && v[1] <= hi && v[0] <= v[1] && v[2] > 0.0;
+    int ok =
+        n == 1 ? v[0] >= lo && v[0] <= hi : n == 3 && v[0] >= lo && v[1] <= hi && v[0] <= v[1] && v[2] > 0.0;
     if (ok && n == 3) ok = (v[1] - v[0]) / v[2] < WINDOW_VALUES - 1;
     if (!ok)
-        return fail(e, ST_BAD_INPUT, "%s: found %.60s, expected a number from %s to %s or FROM:TO:STEP with at most %d "
-                                     "values, such as 150:500:50",
+        return fail(e, ST_BAD_INPUT,
+                    "%s: found %.60s, expected a number from %s to %s or FROM:TO:STEP with at most %d "
+                    "values, such as 150:500:50",
                     option, text, number_text(lo, 6, from), number_text(hi, 6, to), WINDOW_VALUES);
     a.n = n == 1 ? 1 : (size_t)floor((v[1] - v[0]) / v[2] + 1e-9) + 1;
     for (size_t i = 0; i < a.n; i++) a.v[i] = n == 1 ? v[0] : v[0] + v[2] * (double)i;
@@ -69,8 +71,8 @@ const char *across_name(across a) {
 
 /* ---- cells ---- */
 
-static status fill_cell(window *w, size_t row, size_t column, const surface_input *base, const optics_setup *set,
-                        error *e) {
+static status fill_cell(window *w, size_t row, size_t column, const surface_input *base,
+                        const optics_setup *set, error *e) {
     surface_input in = *base;
     optics_setup o = *set;
     layer layers[LIMIT_COATINGS];
@@ -121,16 +123,18 @@ window_edge window_edge_of(const window *w, size_t column) {
 
 status window_fill(window *w, const surface_input *base, const optics_setup *o, error *e) {
     if (w->x.n * w->height.n > WINDOW_CELLS)
-        return fail(e, ST_BAD_INPUT, "the map would have %zu cells, at most %d; take larger steps", w->x.n * w->height.n,
-                    WINDOW_CELLS);
+        return fail(e, ST_BAD_INPUT, "the map would have %zu cells, at most %d; take larger steps",
+                    w->x.n * w->height.n, WINDOW_CELLS);
     if (w->across == ACROSS_THICKNESS && !o->n_coatings)
         return fail(e, ST_BAD_INPUT, "a map over coating thickness needs a coating: --coating MATERIAL:NM");
     w->cells = mem_array(w->x.n * w->height.n, sizeof *w->cells);
     w->edges = mem_array(w->x.n, sizeof *w->edges);
     status st = w->cells && w->edges ? ST_OK : NO_MEMORY(e, "the map");
     for (size_t row = 0; row < w->height.n; row++)
-        for (size_t column = 0; column < w->x.n && st == ST_OK; column++) st = fill_cell(w, row, column, base, o, e);
-    for (size_t column = 0; column < w->x.n && st == ST_OK; column++) w->edges[column] = window_edge_of(w, column);
+        for (size_t column = 0; column < w->x.n && st == ST_OK; column++)
+            st = fill_cell(w, row, column, base, o, e);
+    for (size_t column = 0; column < w->x.n && st == ST_OK; column++)
+        w->edges[column] = window_edge_of(w, column);
     return st;
 }
 
@@ -147,7 +151,8 @@ status window_samples(const char *folder, window *w, error *e) {
     status st = path ? input_wanted(path, e) : NO_MEMORY(e, "a path");
     if (st == ST_OK) st = csv_read(path, &c, e);
     if (st == ST_OK && (csv_column(&c, "sample") < 0 || csv_column(&c, "spacing_nm") < 0))
-        st = fail(e, ST_BAD_INPUT, "%s: no columns sample and spacing_nm; name a folder that 'sward run --out' wrote", path);
+        st = fail(e, ST_BAD_INPUT,
+                  "%s: no columns sample and spacing_nm; name a folder that 'sward run --out' wrote", path);
     if (st == ST_OK) w->samples = mem_array(c.n_rows, sizeof *w->samples);
     if (st == ST_OK && !w->samples) st = NO_MEMORY(e, "the samples");
     for (size_t i = 0; i < c.n_rows && st == ST_OK; i++) {

@@ -35,8 +35,8 @@ typedef struct {
     axis x, height;
     double spacing_nm; /* where spacing is not the axis */
     double target;
-    window_cell *cells;  /* [height.n * x.n], one row per height; owned */
-    window_edge *edges;  /* [x.n]; owned */
+    window_cell *cells;     /* [height.n * x.n], one row per height; owned */
+    window_edge *edges;     /* [x.n]; owned */
     window_sample *samples; /* [n_samples]; owned */
     size_t n_samples;
     char note[960]; /* of the prediction in the middle of the map */

@@ -8,12 +8,13 @@
 #include "io/json.h"
 
 enum { DIGITS = 5 };
-static const char caution[] =
-    "Wet etchants (hydrofluoric acid above all), plasma gases and silane can kill: local codes, safety data sheets and "
-    "licensed practice rule. The map says what a surface would reflect, not how to make it; a person decides what is "
-    "changed at a tool or bath.";
-static const char passivation[] =
-    "Every area is that of the surface over the flat one: passivation has to cover it, and recombination grows with it.";
+static const char caution[] = "Wet etchants (hydrofluoric acid above all), plasma gases and silane can kill: "
+                              "local codes, safety data sheets and "
+                              "licensed practice rule. The map says what a surface would reflect, not how to "
+                              "make it; a person decides what is "
+                              "changed at a tool or bath.";
+static const char passivation[] = "Every area is that of the surface over the flat one: passivation has to "
+                                  "cover it, and recombination grows with it.";
 
 /* How the cell stands to the target, as a verdict would say it. */
 static const char *standing(const window *w, const window_cell *c) {
@@ -38,12 +39,14 @@ static void member(textbuf *out, int first, const char *name, double v) {
 static window_edge edge_at(const window *w, double spacing_nm) {
     window_edge none = { MISSING, MISSING, MISSING, MISSING };
     size_t i = 0;
-    if (w->across != ACROSS_SPACING || !(spacing_nm >= w->x.v[0] && spacing_nm <= w->x.v[w->x.n - 1])) return none;
+    if (w->across != ACROSS_SPACING || !(spacing_nm >= w->x.v[0] && spacing_nm <= w->x.v[w->x.n - 1]))
+        return none;
     if (w->x.n == 1) return w->edges[0];
     while (i + 2 < w->x.n && w->x.v[i + 1] <= spacing_nm) i++;
     const window_edge *a = &w->edges[i], *b = a + 1;
     double t = (spacing_nm - w->x.v[i]) / (w->x.v[i + 1] - w->x.v[i]);
-    return (window_edge){ (1.0 - t) * a->height_nm + t * b->height_nm, (1.0 - t) * a->area_ratio + t * b->area_ratio,
+    return (window_edge){ (1.0 - t) * a->height_nm + t * b->height_nm,
+                          (1.0 - t) * a->area_ratio + t * b->area_ratio,
                           (1.0 - t) * a->sure_height_nm + t * b->sure_height_nm,
                           (1.0 - t) * a->sure_area_ratio + t * b->sure_area_ratio };
 }
@@ -127,7 +130,9 @@ void window_json(const window *w, textbuf *out) {
 
 void window_csv(const window *w, textbuf *out) {
     char t[NUMBER_TEXT];
-    text_addf(out, "%s,height_nm,weighted_reflectance,weighted_reflectance_lo,weighted_reflectance_hi,area_ratio,verdict\n",
+    text_addf(out,
+              "%s,height_nm,weighted_reflectance,weighted_reflectance_lo,weighted_reflectance_hi,area_ratio,"
+              "verdict\n",
               across_name(w->across));
     for (size_t row = 0; row < w->height.n; row++)
         for (size_t i = 0; i < w->x.n; i++) {
@@ -155,7 +160,9 @@ static int inside(const axis *a, double v) { /* half a step beyond the ends stil
 /* The letter of sample i, 0 when it has none in the map. */
 static char letter(const window *w, size_t i) {
     const window_sample *s = &w->samples[i];
-    if (w->across != ACROSS_SPACING || i >= 52 || !inside(&w->x, s->spacing_nm) || !inside(&w->height, s->height_nm)) return 0;
+    if (w->across != ACROSS_SPACING || i >= 52 || !inside(&w->x, s->spacing_nm) ||
+        !inside(&w->height, s->height_nm))
+        return 0;
     return (char)(i < 26 ? 'A' + (int)i : 'a' + (int)i - 26);
 }
 
@@ -177,7 +184,8 @@ static void map(const window *w, textbuf *out) {
         }
         text_add(out, "\n");
     }
-    text_add(out, "\n# conforms (the upper end too)   + below the target, not yet sure   - above, not yet sure   . fails   "
+    text_add(out, "\n# conforms (the upper end too)   + below the target, not yet sure   - above, not yet "
+                  "sure   . fails   "
                   "? no model\n\n");
 }
 
@@ -188,7 +196,8 @@ static void heights(double least, double area, double sure, double sure_area, te
     else
         text_add(out, "no height of the map");
     if (isfinite(sure))
-        text_addf(out, "; with 95 %% confidence %s nm (area %s)", number_text(sure, 3, a), number_text(sure_area, 3, b));
+        text_addf(out, "; with 95 %% confidence %s nm (area %s)", number_text(sure, 3, a),
+                  number_text(sure_area, 3, b));
     else
         text_add(out, "; with 95 % confidence no height of the map");
 }
@@ -222,14 +231,17 @@ static void answers(const window *w, textbuf *out) {
         text_addf(out, w->across == ACROSS_EXPONENT ? " and an exponent of %s" : " and a film of %s nm",
                   number_text(w->x.v[middle], 4, a));
     text_addf(out, ", for a weighted reflectance of at most %s %%: ", number_percent(w->target, 4, b));
-    if (w->across == ACROSS_SPACING && n > 0.0 && !inside(&w->x, at)) text_add(out, "outside the map");
-    else heights(g.height_nm, g.area_ratio, g.sure_height_nm, g.sure_area_ratio, out);
+    if (w->across == ACROSS_SPACING && n > 0.0 && !inside(&w->x, at))
+        text_add(out, "outside the map");
+    else
+        heights(g.height_nm, g.area_ratio, g.sure_height_nm, g.sure_area_ratio, out);
     text_add(out, ".");
 }
 
 static void samples_text(const window *w, textbuf *out) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT];
-    text_add(out, "\nToday's samples (reflectance and verdict as their own run gave them; the map follows --protocol):\n");
+    text_add(out, "\nToday's samples (reflectance and verdict as their own run gave them; the map follows "
+                  "--protocol):\n");
     for (size_t i = 0; i < w->n_samples; i++) {
         const window_sample *s = &w->samples[i];
         window_edge g = edge_at(w, s->spacing_nm);

@@ -25,8 +25,8 @@ static status first_open(const optics_setup *o, const grid *g, size_t *first, er
 }
 
 /* Hemispherical R from grid node `first` on, every STEP_NM and at the end, straight lines between. */
-static status diffuse_front(const surface_input *in, const optics_setup *o, const variant *v, const grid *g, size_t first,
-                            double *diffuse, error *e) {
+static status diffuse_front(const surface_input *in, const optics_setup *o, const variant *v, const grid *g,
+                            size_t first, double *diffuse, error *e) {
     double lo = g->wavelength_nm[first], hi = g->wavelength_nm[g->n - 1];
     size_t n = (size_t)ceil((hi - lo) / STEP_NM) + 1;
     double *nodes = mem_array(2 * n, sizeof *nodes), *R = nodes ? nodes + n : NULL;
@@ -49,22 +49,24 @@ static status diffuse_front(const surface_input *in, const optics_setup *o, cons
 }
 
 /* R plus its escape, in place; *mean of what was added. NAN stays. */
-static status add_to(const optics_setup *o, double ambient_n, const grid *g, size_t first, double *R, const double *diffuse,
-                     double *added, double *mean, error *e) {
+static status add_to(const optics_setup *o, double ambient_n, const grid *g, size_t first, double *R,
+                     const double *diffuse, double *added, double *mean, error *e) {
     for (size_t i = 0; i < g->n; i++) added[i] = 0.0;
-    status st = escape_share(o->substrate, &o->rear, ambient_n, g->wavelength_nm + first, g->n - first, R + first,
-                             diffuse + first, added + first, e);
+    status st = escape_share(o->substrate, &o->rear, ambient_n, g->wavelength_nm + first, g->n - first,
+                             R + first, diffuse + first, added + first, e);
     for (size_t i = 0; i < g->n && st == ST_OK; i++) R[i] += added[i];
     return st == ST_OK ? photon_mean(o, g, added, mean, e) : st;
 }
 
-status rear_add(const surface_input *in, const optics_setup *o, const variant *v, const grid *fine, int facets,
-                prediction *out, error *e) {
+status rear_add(const surface_input *in, const optics_setup *o, const variant *v, const grid *fine,
+                int facets, prediction *out, error *e) {
     if (!(o->rear.thickness_um > 0.0)) return ST_OK;
     size_t n = fine->n, first = 0;
-    double *diffuse = mem_array(2 * n, sizeof *diffuse), *added = diffuse ? diffuse + n : NULL, low = 0.0, high = 0.0;
+    double *diffuse = mem_array(2 * n, sizeof *diffuse), *added = diffuse ? diffuse + n : NULL, low = 0.0,
+           high = 0.0;
     if (!diffuse) return NO_MEMORY(e, "the rear side");
-    double outside = o->front.glass ? 1.0 : ambient_index(o); /* behind flat glass the outer cone is that of air */
+    double outside =
+        o->front.glass ? 1.0 : ambient_index(o); /* behind flat glass the outer cone is that of air */
     for (size_t i = 0; i < n; i++) diffuse[i] = out->R[i];
     status st = first_open(o, fine, &first, e);
     if (st == ST_OK && first < n && o->rear.lambertian && !facets)
@@ -86,7 +88,8 @@ status rear_add(const surface_input *in, const optics_setup *o, const variant *v
 void rear_say(const optics_setup *o, const prediction *p, textbuf *t) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
     if (o->rear.thickness_um > 0.0) {
-        text_addf(t, " Light returning from the rear of a wafer of %s um is included (%s; %s %% of all", number_text(o->rear.thickness_um, 5, a),
+        text_addf(t, " Light returning from the rear of a wafer of %s um is included (%s; %s %% of all",
+                  number_text(o->rear.thickness_um, 5, a),
                   o->rear.lambertian ? "scattered inside, Lambertian" : "straight double pass",
                   rough_text(100.0 * p->rear_escape, b));
         if (isfinite(o->rear.rear_reflectance))
@@ -94,5 +97,6 @@ void rear_say(const optics_setup *o, const prediction *p, textbuf *t) {
         else
             text_add(t, "; bare rear).");
     } else if (o->band_hi_nm > 1000.0)
-        text_add(t, " Front surface only: light returning from the rear beyond about 1000 nm is not included.");
+        text_add(t,
+                 " Front surface only: light returning from the rear beyond about 1000 nm is not included.");
 }

@@ -20,9 +20,10 @@
 #include "link/predict_priv.h"
 #include "optics/facets.h"
 
-static const double TABLE_END = 2.5;                          /* spacing / wavelength */
-static const double STEEP_DEG = 45.0, ANGLE_U_DEG = 1.5;      /* least angle for two bounces; real against nominal */
-static const double GOES_ON = 0.5, FLAT_SHARE = 0.04;         /* ends of the interval */
+static const double TABLE_END = 2.5; /* spacing / wavelength */
+static const double STEEP_DEG = 45.0,
+                    ANGLE_U_DEG = 1.5;                /* least angle for two bounces; real against nominal */
+static const double GOES_ON = 0.5, FLAT_SHARE = 0.04; /* ends of the interval */
 
 static double sq(double x) { return x * x; }
 
@@ -40,9 +41,11 @@ static status share_beyond(double spacing_nm, const optics_setup *o, double *sha
 static const char *why_no_facets(const surface_input *in, const optics_setup *o, double angle_deg) {
     if (in->measured) return "a measured profile has no facets";
     if (!(in->spacing_nm.value > 0.0)) return "the spacing is unknown";
-    if (o->reflect.hemispherical || o->reflect.angle_deg > 0.0) return "the facet model knows vertical light only";
+    if (o->reflect.hemispherical || o->reflect.angle_deg > 0.0)
+        return "the facet model knows vertical light only";
     if (o->front.glass) return "the facet model knows no laminate";
-    if (!(angle_deg >= STEEP_DEG)) return "its facets are flatter than 45 degrees, so that part of the light meets one only";
+    if (!(angle_deg >= STEEP_DEG))
+        return "its facets are flatter than 45 degrees, so that part of the light meets one only";
     return "";
 }
 
@@ -51,7 +54,8 @@ status route_choose(const surface_input *in, const optics_setup *o, const varian
     status st = v->spacing_nm > 0.0 ? share_beyond(v->spacing_nm, o, &out->beyond, e) : ST_OK;
     if (st != ST_OK) return st;
     int coarse = out->beyond > 0.5, asked = o->model == OPTICS_FACETS;
-    out->angle_deg = o->facet_angle_deg > 0.0 ? o->facet_angle_deg : facets_angle_deg(v->height_nm, v->spacing_nm);
+    out->angle_deg =
+        o->facet_angle_deg > 0.0 ? o->facet_angle_deg : facets_angle_deg(v->height_nm, v->spacing_nm);
     if (!asked && !coarse) return ST_OK;
     out->why = !asked && o->model == OPTICS_GRADED ? "the protocol asks for the graded index only"
                                                    : why_no_facets(in, o, out->angle_deg);
@@ -80,7 +84,8 @@ static void extend(double plain, double end, double *up2, double *down2) {
 }
 
 /* One end of an input: the path as it would be, `once` of it replaced by single bounces. */
-static status add_end(reach *w, const prediction *p, const facet_path *path, double once, double *moved, error *e) {
+static status add_end(reach *w, const prediction *p, const facet_path *path, double once, double *moved,
+                      error *e) {
     facet_path single = *path;
     double mean = 0.0, flat_mean = 0.0, ignored = 0.0;
     status st = evaluate(w, path, w->end, &mean, e);
@@ -130,10 +135,13 @@ static status add_ends(reach *w, const surface_input *in, const route *r, predic
     return st;
 }
 
-status facets_fill(const surface_input *in, const optics_setup *o, const route *r, const grid *g, prediction *out,
-                   error *e) {
-    reach w = { .o = o, .g = g,
-                .flat = { .ambient = o->ambient, .coatings = o->coatings, .n_coatings = o->n_coatings,
+status facets_fill(const surface_input *in, const optics_setup *o, const route *r, const grid *g,
+                   prediction *out, error *e) {
+    reach w = { .o = o,
+                .g = g,
+                .flat = { .ambient = o->ambient,
+                          .coatings = o->coatings,
+                          .n_coatings = o->n_coatings,
                           .substrate = o->substrate } };
     facet_path path;
     facets_path(r->angle_deg, &path);
@@ -161,8 +169,9 @@ status facets_fill(const surface_input *in, const optics_setup *o, const route *
 
 static void say_beyond(const route *r, const surface_input *in, textbuf *t) {
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
-    text_addf(t, "with a spacing of %s nm %s %% of the photons have a wavelength below spacing/2.5, where the "
-                 "graded-index model says nothing",
+    text_addf(t,
+              "with a spacing of %s nm %s %% of the photons have a wavelength below spacing/2.5, where the "
+              "graded-index model says nothing",
               rough_text(in->spacing_nm.value, a), rough_text(100.0 * r->beyond, b));
 }
 
@@ -184,11 +193,14 @@ void route_say(const route *r, const surface_input *in, const optics_setup *o, t
     if (r->beyond > 0.5) {
         text_add(t, "Chosen because ");
         say_beyond(r, in, t);
-        text_add(t, ", and because facets this steep send all light on to a second one. The interval holds the "
-                    "angle, more or fewer bounces and 4 % of flat ground; a second, finer texture on the facets "
-                    "would lower the value.");
+        text_add(t,
+                 ", and because facets this steep send all light on to a second one. The interval holds the "
+                 "angle, more or fewer bounces and 4 % of flat ground; a second, finer texture on the facets "
+                 "would lower the value.");
     } else
-        text_addf(t, "Asked for, but only %s %% of the photons have a wavelength below spacing/2.5: the facets are not "
-                     "large against the waves, so no interval is given.",
+        text_addf(t,
+                  "Asked for, but only %s %% of the photons have a wavelength below spacing/2.5: the facets "
+                  "are not "
+                  "large against the waves, so no interval is given.",
                   rough_text(100.0 * r->beyond, a));
 }

@@ -25,11 +25,11 @@ typedef struct {
     grid g;
     model_parts model;
     size_t n_heights, n_shapes, n_levels;
-    double factor;          /* of the exponent, one u */
-    double *spectra;        /* [levels][shapes][heights][n], ln(R + SMALL) */
-    double *weighted;       /* [levels][shapes][heights], the same of the weighted R */
-    double *block;          /* what the pointers of model and scratch stand in */
-    double *one;            /* [n] */
+    double factor;    /* of the exponent, one u */
+    double *spectra;  /* [levels][shapes][heights][n], ln(R + SMALL) */
+    double *weighted; /* [levels][shapes][heights], the same of the weighted R */
+    double *block;    /* what the pointers of model and scratch stand in */
+    double *one;      /* [n] */
 } field;
 
 const char *input_name(input_kind k) {
@@ -64,7 +64,9 @@ static double normal(uint64_t *state) { /* cut at REACH */
 
 /* ---- the surface ---- */
 
-static double node(size_t i, size_t n) { return n > 1 ? REACH * (2.0 * (double)i / (double)(n - 1) - 1.0) : 0.0; }
+static double node(size_t i, size_t n) {
+    return n > 1 ? REACH * (2.0 * (double)i / (double)(n - 1) - 1.0) : 0.0;
+}
 
 static double height_at(const field *f, double z) {
     double u = f->in->height_nm.u > 0.0 ? f->in->height_nm.u : 0.0;
@@ -93,7 +95,9 @@ static size_t lagrange(double z, size_t n, double w[3]) {
     return (size_t)first;
 }
 
-typedef struct { double height, shape, level, spacing, model; } draw; /* in standard uncertainties; level 0..1 */
+typedef struct {
+    double height, shape, level, spacing, model;
+} draw; /* in standard uncertainties; level 0..1 */
 
 /* `width` values at a time: the weighted one, or the spectrum. */
 static void read_surface(const field *f, const double *table, size_t width, const draw *d, double *out) {
@@ -106,7 +110,8 @@ static void read_surface(const field *f, const double *table, size_t width, cons
             double sum = 0.0;
             for (size_t b = 0; b < ns; b++)
                 for (size_t a = 0; a < nh; a++)
-                    sum += ws[b] * wh[a] * table[(((l * f->n_shapes) + s + b) * f->n_heights + h + a) * width + i];
+                    sum += ws[b] * wh[a] *
+                           table[(((l * f->n_shapes) + s + b) * f->n_heights + h + a) * width + i];
             level[l] = fmax(0.0, exp(sum) - SMALL);
         }
         out[i] = f->n_levels > 1 ? (1.0 - d->level) * level[0] + d->level * level[1] : level[0];
@@ -222,11 +227,16 @@ static void run_alone(const field *f, uint64_t seed, double sd_of[INPUTS]) {
         uint64_t state = seed;
         for (size_t i = 0; i < ALONE; i++) {
             draw all = draw_all(f, &state), d = { .level = f->n_levels > 1 ? 0.5 : 0.0 };
-            if (k == INPUT_HEIGHT) d.height = all.height;
-            else if (k == INPUT_SHAPE) d.shape = all.shape;
-            else if (k == INPUT_LEVEL) d.level = all.level;
-            else if (k == INPUT_SPACING) d.spacing = all.spacing;
-            else d.model = all.model;
+            if (k == INPUT_HEIGHT)
+                d.height = all.height;
+            else if (k == INPUT_SHAPE)
+                d.shape = all.shape;
+            else if (k == INPUT_LEVEL)
+                d.level = all.level;
+            else if (k == INPUT_SPACING)
+                d.spacing = all.spacing;
+            else
+                d.model = all.model;
             double v = trial(f, &d), off = v - mean;
             mean += off / (double)(i + 1); /* Welford */
             square += off * (v - mean);
@@ -274,15 +284,19 @@ static status prepare(field *f, error *e) {
     exact.link.exponent_u = 0.0;
     status st = predict(&exact, f->o, &p, e);
     if (st != ST_OK) return st;
-    if (strcmp(p.model, "graded") != 0 || !isfinite(p.weighted_hi) || !(f->central.height_nm > 0.0) || f->in->measured) {
+    if (strcmp(p.model, "graded") != 0 || !isfinite(p.weighted_hi) || !(f->central.height_nm > 0.0) ||
+        f->in->measured) {
         prediction_free(&p);
-        return fail(e, ST_NO_RESULT, "no trials: the surface is planar, goes by facets, is refused, or lacks a spacing or a shape");
+        return fail(
+            e, ST_NO_RESULT,
+            "no trials: the surface is planar, goes by facets, is refused, or lacks a spacing or a shape");
     }
     st = grid_coarse(f->o, &f->g, e);
     if (st == ST_OK) {
         size_t n = f->g.n, nodes = f->n_heights * f->n_shapes * f->n_levels;
         f->block = mem_array(nodes * (n + 1) + 4 * n, sizeof *f->block);
-        if (!f->block) st = NO_MEMORY(e, "the trials");
+        if (!f->block)
+            st = NO_MEMORY(e, "the trials");
         else {
             f->spectra = f->block;
             f->weighted = f->spectra + nodes * n;
@@ -297,16 +311,24 @@ static status prepare(field *f, error *e) {
     return st;
 }
 
-status predict_trials(const surface_input *in, const optics_setup *o, const trial_options *t, distribution *out, error *e) {
+status predict_trials(const surface_input *in, const optics_setup *o, const trial_options *t,
+                      distribution *out, error *e) {
     const link_options *l = &in->link;
     distribution d = { 0 };
-    field f = { .in = in, .o = o,
-                .central = { .height_nm = in->height_nm.value, .spacing_nm = in->spacing_nm.value, .exponent = l->exponent,
-                             .level_at_tips = l->level_at_tips, .mixing = o->mixing },
-                .n_heights = in->height_nm.u > 0.0 ? HEIGHTS : 1, .n_shapes = l->exponent_u > 0.0 ? SHAPES : 1,
-                .n_levels = l->height_spread > 0.0 ? LEVELS : 1, .factor = 1.0 + l->exponent_u / l->exponent };
+    field f = { .in = in,
+                .o = o,
+                .central = { .height_nm = in->height_nm.value,
+                             .spacing_nm = in->spacing_nm.value,
+                             .exponent = l->exponent,
+                             .level_at_tips = l->level_at_tips,
+                             .mixing = o->mixing },
+                .n_heights = in->height_nm.u > 0.0 ? HEIGHTS : 1,
+                .n_shapes = l->exponent_u > 0.0 ? SHAPES : 1,
+                .n_levels = l->height_spread > 0.0 ? LEVELS : 1,
+                .factor = 1.0 + l->exponent_u / l->exponent };
     *out = (distribution){ 0 };
-    status st = t->tolerance > 0.0 ? ST_OK : fail(e, ST_BAD_INPUT, "the tolerance of the trials has to be above 0");
+    status st =
+        t->tolerance > 0.0 ? ST_OK : fail(e, ST_BAD_INPUT, "the tolerance of the trials has to be above 0");
     if (st == ST_OK) st = prepare(&f, e);
     if (st == ST_OK) st = fill_surface(&f, e);
     if (st == ST_OK) st = run_weighted(&f, t, &d, e);

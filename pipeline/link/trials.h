@@ -8,9 +8,10 @@
 typedef enum { INPUT_HEIGHT, INPUT_SHAPE, INPUT_LEVEL, INPUT_SPACING, INPUT_MODEL, INPUTS } input_kind;
 const char *input_name(input_kind k); /* height shape level spacing model */
 
+/* Batches of trials are added until the ends of the weighted interval are known to the tolerance, or to a twentieth of
+ * the sd where that is more (about the second digit of u, JCGM 101, 7.9.2). */
 typedef struct {
-    double tolerance; /* of the ends of the weighted interval, absolute R; batches are added until it, or a twentieth of
-                         the sd where that is more (about the second digit of u, JCGM 101, 7.9.2), is met */
+    double tolerance; /* absolute R */
     uint64_t seed;    /* same seed, same result */
 } trial_options;
 trial_options trial_defaults(void); /* 0.0005, seed 1 */
@@ -19,8 +20,8 @@ typedef struct {
     double mean, sd, median, lo, hi; /* weighted; lo, hi: 2.5 and 97.5 % */
     double sd_of[INPUTS];            /* sd with only this input free */
     size_t trials;
-    double tolerance;                /* that was asked of the ends */
-    int settled;                     /* 0: it was not met with the most trials */
+    double tolerance; /* that was asked of the ends */
+    int settled;      /* 0: it was not met with the most trials */
     size_t n;
     double *wavelength_nm, *R_lo, *R_hi; /* [n] spectrum on the 10 nm grid, 2.5 and 97.5 %; owned */
 } distribution;
@@ -31,7 +32,8 @@ typedef struct {
  *   err  ST_NO_RESULT planar, refused, by facets, without a spacing or with a measured profile: nothing to vary;
  *        as predict()
  *   src  JCGM 101:2008 (propagation of distributions, 7.9 adaptive procedure) */
-status predict_trials(const surface_input *in, const optics_setup *o, const trial_options *t, distribution *out, error *e);
+status predict_trials(const surface_input *in, const optics_setup *o, const trial_options *t,
+                      distribution *out, error *e);
 void distribution_free(distribution *d);
 
 #endif

@@ -32,7 +32,8 @@ double escape_diffuse_pass(double x) {
 
 static status rear_check(const rear_side *rear, error *e) {
     char text[NUMBER_TEXT];
-    if (isnan(rear->rear_reflectance) || (rear->rear_reflectance >= 0.0 && rear->rear_reflectance <= 1.0)) return ST_OK;
+    if (isnan(rear->rear_reflectance) || (rear->rear_reflectance >= 0.0 && rear->rear_reflectance <= 1.0))
+        return ST_OK;
     return fail(e, ST_BAD_INPUT, "the rear reflects %s, expected a share from 0 to 1",
                 number_text(rear->rear_reflectance, 6, text));
 }
@@ -40,7 +41,8 @@ static status rear_check(const rear_side *rear, error *e) {
 static double one(const rear_side *rear, double ambient_n, double wavelength_nm, double n, double k, double R,
                   double diffuse) {
     double x = 4.0 * PI * k * rear->thickness_um * 1e3 / wavelength_nm;
-    double fresnel = ((n - 1.0) * (n - 1.0) + k * k) / ((n + 1.0) * (n + 1.0) + k * k), back = rear->rear_reflectance;
+    double fresnel = ((n - 1.0) * (n - 1.0) + k * k) / ((n + 1.0) * (n + 1.0) + k * k),
+           back = rear->rear_reflectance;
     if (!rear->lambertian) {
         if (isnan(back)) back = fresnel;
         double round = back * exp(-2.0 * x);
@@ -52,8 +54,9 @@ static double one(const rear_side *rear, double ambient_n, double wavelength_nm,
     return kept > 0.0 ? (1.0 - R) * round * out / kept : 1.0 - R; /* nothing absorbs, nothing else lets out */
 }
 
-status escape_share(const material *wafer, const rear_side *rear, double ambient_n, const double *wavelength_nm, size_t n,
-                    const double *front, const double *diffuse, double *escape, error *e) {
+status escape_share(const material *wafer, const rear_side *rear, double ambient_n,
+                    const double *wavelength_nm, size_t n, const double *front, const double *diffuse,
+                    double *escape, error *e) {
     status st = rear_check(rear, e);
     for (size_t i = 0; i < n && st == ST_OK; i++) {
         double index, k;

@@ -18,8 +18,9 @@ typedef struct {
  *   err  ST_BAD_INPUT a wavelength outside the table, a rear reflectance outside 0..1
  *   src  Lambertian: Yablonovitch (1982) J. Opt. Soc. Am. 72, 899 and Green (2002) Prog. Photovolt. 10, 235;
  *        straight: the incoherent double pass (Airy's sum of intensities); from memory */
-status escape_share(const material *wafer, const rear_side *rear, double ambient_n, const double *wavelength_nm, size_t n,
-                    const double *front, const double *diffuse, double *escape, error *e);
+status escape_share(const material *wafer, const rear_side *rear, double ambient_n,
+                    const double *wavelength_nm, size_t n, const double *front, const double *diffuse,
+                    double *escape, error *e);
 
 /* Transmittance of a layer of optical thickness x for Lambertian light, 2 E3(x) (Abramowitz, Stegun 5.1). */
 double escape_diffuse_pass(double x);

@@ -37,8 +37,8 @@ double facets_angle_deg(double height_nm, double spacing_nm) {
     return atan2(2.0 * height_nm, spacing_nm) * 180.0 / PI;
 }
 
-status facets_reflectance(const stack *s, const facet_path *p, const double *wavelength_nm, size_t n, double *R,
-                          error *e) {
+status facets_reflectance(const stack *s, const facet_path *p, const double *wavelength_nm, size_t n,
+                          double *R, error *e) {
     stack flat = *s;
     flat.profile = NULL;
     flat.front = (laminate){ 0 };

@@ -30,7 +30,7 @@ double facets_angle_deg(double height_nm, double spacing_nm);
  *   out  R[n] 0..1
  *   err  as reflectance()
  *   src  Campbell, Green (1987) J. Appl. Phys. 62, 243 (the geometry); shares: facets.c */
-status facets_reflectance(const stack *s, const facet_path *p, const double *wavelength_nm, size_t n, double *R,
-                          error *e);
+status facets_reflectance(const stack *s, const facet_path *p, const double *wavelength_nm, size_t n,
+                          double *R, error *e);
 
 #endif

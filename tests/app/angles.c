@@ -23,8 +23,10 @@ int main(void) {
     for (size_t i = 0; i < sizeof wrong / sizeof wrong[0]; i++) CHECK(!parses(wrong[i]));
     CHECK_FAILS(angles_parse("--angles", "0:95:5", &from, &to, &step, &e), ST_BAD_INPUT, e, "such as 0:80:5");
 
-    angle_row rows[4] = { { .angle_deg = 0, .mean = 0.01, .mean_hi = 0.03 }, { .angle_deg = 10, .mean = 0.02, .mean_hi = 0.05 },
-                          { .angle_deg = 20, .mean = 0.06, .mean_hi = 0.09 }, { .angle_deg = 30, .mean = 0.01, .mean_hi = 0.02 } };
+    angle_row rows[4] = { { .angle_deg = 0, .mean = 0.01, .mean_hi = 0.03 },
+                          { .angle_deg = 10, .mean = 0.02, .mean_hi = 0.05 },
+                          { .angle_deg = 20, .mean = 0.06, .mean_hi = 0.09 },
+                          { .angle_deg = 30, .mean = 0.01, .mean_hi = 0.02 } };
     angle_sweep s = { .n = 4, .rows = rows };
     CHECK_NEAR(angles_under(&s, 0.03, 0), 12.5, 1e-12); /* the dip behind the rise does not count */
     CHECK_NEAR(angles_under(&s, 0.04, 1), 5.0, 1e-12);

@@ -13,9 +13,17 @@ static material silicon, air, nitride;
 static sun am15g;
 
 static optics_setup setup(void) {
-    return (optics_setup){ .ambient = &air, .substrate = &silicon, .air = &air, .nitride = &nitride,
-                           .mixing = MIX_BRUGGEMAN_2D, .reflect = reflect_defaults(), .sun = &am15g,
-                           .band_lo_nm = 300.0, .band_hi_nm = 1200.0, .step_nm = 10.0, .model = OPTICS_AUTO };
+    return (optics_setup){ .ambient = &air,
+                           .substrate = &silicon,
+                           .air = &air,
+                           .nitride = &nitride,
+                           .mixing = MIX_BRUGGEMAN_2D,
+                           .reflect = reflect_defaults(),
+                           .sun = &am15g,
+                           .band_lo_nm = 300.0,
+                           .band_hi_nm = 1200.0,
+                           .step_nm = 10.0,
+                           .model = OPTICS_AUTO };
 }
 
 static void axes(void) {
@@ -25,15 +33,21 @@ static void axes(void) {
     CHECK_NEAR(a.v[14], 500.0, 1e-9);
     CHECK(axis_parse("--spacing", "1:2:0.3", 0.05, 20.0, &a, &e) == ST_OK && a.n == 4);
     CHECK(axis_parse("--spacing", "333.3", 1.0, 1e5, &a, &e) == ST_OK && a.n == 1);
-    static const char *const wrong[] = { "", "a", "500:150:25", "0:500:25", "150:500:0", "150:500", "1:2:3:4", "150:500:1e-3", "150:500:25:" };
+    static const char *const wrong[] = { "",        "a",       "500:150:25",   "0:500:25",   "150:500:0",
+                                         "150:500", "1:2:3:4", "150:500:1e-3", "150:500:25:" };
     for (size_t i = 0; i < sizeof wrong / sizeof wrong[0]; i++)
         CHECK_FAILS(axis_parse("--spacing", wrong[i], 1.0, 1e5, &a, &e), ST_BAD_INPUT, e, "--spacing: found");
 }
 
 /* Heights 100, 200, 300, 400; limit crossed at 250 by the value, at 350 by the upper end. */
 static void edges(void) {
-    window_cell cells[4] = { { 0.10, 0.08, 0.12, 1.5 }, { 0.03, 0.02, 0.05, 2.0 }, { 0.01, 0.0, 0.03, 3.0 }, { 0.005, 0.0, 0.01, 4.0 } };
-    window w = { .x = { 1, { 300.0 } }, .height = { 4, { 100, 200, 300, 400 } }, .target = 0.02, .cells = cells };
+    window_cell cells[4] = { { 0.10, 0.08, 0.12, 1.5 },
+                             { 0.03, 0.02, 0.05, 2.0 },
+                             { 0.01, 0.0, 0.03, 3.0 },
+                             { 0.005, 0.0, 0.01, 4.0 } };
+    window w = {
+        .x = { 1, { 300.0 } }, .height = { 4, { 100, 200, 300, 400 } }, .target = 0.02, .cells = cells
+    };
     window_edge g = window_edge_of(&w, 0);
     CHECK_NEAR(g.height_nm, 250.0, 1e-9);
     CHECK_NEAR(g.area_ratio, 2.5, 1e-9);
@@ -48,7 +62,7 @@ static void edges(void) {
     CHECK(isnan(g.sure_height_nm) && isnan(g.sure_area_ratio));
     for (int i = 0; i < 4; i++) cells[i].R = 0.01;
     CHECK_NEAR(window_edge_of(&w, 0).height_nm, 100.0, 0.0); /* kept everywhere: the lowest of the map */
-    cells[1].R = MISSING;                                     /* no model there: nothing is claimed across it */
+    cells[1].R = MISSING; /* no model there: nothing is claimed across it */
     CHECK_NEAR(window_edge_of(&w, 0).height_nm, 300.0, 0.0);
 }
 
@@ -64,24 +78,31 @@ static void real_map(void) {
     CHECK_SOURCE(w.cells[2].R, 0.0183, 1e-4, source);
     CHECK_SOURCE(w.cells[5].R, 0.0076, 1e-4, source);
     CHECK(w.edges[0].height_nm > 250.0 && w.edges[0].height_nm < 300.0);
-    CHECK_NEAR(w.edges[0].height_nm, w.edges[1].height_nm, 1e-6); /* the plain value does not see the spacing */
+    CHECK_NEAR(w.edges[0].height_nm, w.edges[1].height_nm,
+               1e-6); /* the plain value does not see the spacing */
     CHECK(!(w.edges[1].sure_height_nm <= w.edges[1].height_nm));
     window_json(&w, &json);
     window_csv(&w, &csv);
     window_text(&w, &text);
-    CHECK(strstr(json.s, "\"contour\": [") && strstr(json.s, "a person decides") && strstr(json.s, "\"area_ratio\": "));
-    CHECK(strstr(csv.s, "spacing_nm,height_nm,weighted_reflectance") && strstr(text.s, "at least ") && strstr(text.s, "silane"));
+    CHECK(strstr(json.s, "\"contour\": [") && strstr(json.s, "a person decides") &&
+          strstr(json.s, "\"area_ratio\": "));
+    CHECK(strstr(csv.s, "spacing_nm,height_nm,weighted_reflectance") && strstr(text.s, "at least ") &&
+          strstr(text.s, "silane"));
     text_free(&json);
     text_free(&csv);
     text_free(&text);
     window_free(&w);
-    w = (window){ .across = ACROSS_THICKNESS, .spacing_nm = 300.0, .x = { 1, { 10.0 } }, .height = { 1, { 300.0 } } };
+    w = (window){
+        .across = ACROSS_THICKNESS, .spacing_nm = 300.0, .x = { 1, { 10.0 } }, .height = { 1, { 300.0 } }
+    };
     CHECK_FAILS(window_fill(&w, &base, &o, &e), ST_BAD_INPUT, e, "needs a coating");
     window_free(&w);
     layer film = { &nitride, 75.0 };
     o.coatings = &film;
     o.n_coatings = 1;
-    w = (window){ .across = ACROSS_THICKNESS, .spacing_nm = 300.0, .x = { 2, { 0.0, 40.0 } }, .height = { 1, { 300.0 } } };
+    w = (window){
+        .across = ACROSS_THICKNESS, .spacing_nm = 300.0, .x = { 2, { 0.0, 40.0 } }, .height = { 1, { 300.0 } }
+    };
     CHECK(window_fill(&w, &base, &o, &e) == ST_OK);
     CHECK_NEAR(w.cells[0].R, 0.0183, 2e-4); /* no film, no effect */
     CHECK(fabs(w.cells[1].R - w.cells[0].R) > 1e-3);
@@ -101,7 +122,9 @@ static void samples(void) {
     CHECK_FAILS(window_samples(folder, &w, &e), ST_BAD_INPUT, e, "there is no such file");
     FILE *f = fopen(path, "w");
     if (f) {
-        fputs("sample,spacing_nm,height_nm,weighted_reflectance,verdict\nW1,250.5,380,0.0123,conforms\nW2,,,,not_measured\n", f);
+        fputs("sample,spacing_nm,height_nm,weighted_reflectance,verdict\nW1,250.5,380,0.0123,conforms\nW2,,,,"
+              "not_measured\n",
+              f);
         fclose(f);
     }
     CHECK(window_samples(folder, &w, &e) == ST_OK && w.n_samples == 2);

@@ -13,12 +13,22 @@ static material silicon, air, nitride, alumina, two, fluoride, cover;
 static sun am15g;
 
 static optics_setup setup(double lo, double hi) {
-    return (optics_setup){ .ambient = &air, .substrate = &silicon, .air = &air, .nitride = &nitride,
-                           .mixing = MIX_BRUGGEMAN_2D, .reflect = reflect_defaults(), .sun = &am15g, .band_lo_nm = lo,
-                           .band_hi_nm = hi, .step_nm = 5.0, .model = OPTICS_AUTO };
+    return (optics_setup){ .ambient = &air,
+                           .substrate = &silicon,
+                           .air = &air,
+                           .nitride = &nitride,
+                           .mixing = MIX_BRUGGEMAN_2D,
+                           .reflect = reflect_defaults(),
+                           .sun = &am15g,
+                           .band_lo_nm = lo,
+                           .band_hi_nm = hi,
+                           .step_nm = 5.0,
+                           .model = OPTICS_AUTO };
 }
 static surface_input shape(double height, double spacing, double exponent) {
-    surface_input in = { .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, 0.0, 1 }, .link = link_defaults() };
+    surface_input in = { .spacing_nm = { spacing, 0.0, 1 },
+                         .height_nm = { height, 0.0, 1 },
+                         .link = link_defaults() };
     in.link.exponent = exponent;
     return in;
 }
@@ -29,10 +39,15 @@ static prediction ask(const surface_input *in, const optics_setup *o) {
     return p;
 }
 
-typedef struct { double mean, largest, weighted, lo, hi; int refused; } figures; /* %, mean not weighted */
+typedef struct {
+    double mean, largest, weighted, lo, hi;
+    int refused;
+} figures; /* %, mean not weighted */
 static figures of(surface_input in, optics_setup o) {
     prediction p = ask(&in, &o);
-    figures f = { .weighted = 100.0 * p.weighted, .lo = 100.0 * p.weighted_lo, .hi = 100.0 * p.weighted_hi,
+    figures f = { .weighted = 100.0 * p.weighted,
+                  .lo = 100.0 * p.weighted_lo,
+                  .hi = 100.0 * p.weighted_hi,
                   .refused = p.refused };
     for (size_t i = 0; i < p.n; i++) {
         f.largest = fmax(f.largest, 100.0 * p.R[i]);
@@ -51,22 +66,31 @@ static void baselines(void) {
     layer one = { &two, 69.1 }, both[2] = { { &fluoride, 56.0 }, { &two, 69.1 } };
     optics_setup red = setup(400.0, 1000.0), blue = setup(300.0, 1000.0);
     surface_input flat = shape(0.0, 300.0, 1.0);
-    between(of(flat, red).mean, 35.61, of(flat, blue).mean, "Sahoo et al. (2009) Nanoscale Res. Lett., table 1: bare, read");
+    between(of(flat, red).mean, 35.61, of(flat, blue).mean,
+            "Sahoo et al. (2009) Nanoscale Res. Lett., table 1: bare, read");
     red.coatings = blue.coatings = &one;
     red.n_coatings = blue.n_coatings = 1;
-    between(of(flat, red).mean, 11.22, of(flat, blue).mean, "Sahoo et al. (2009): 69.1 nm silicon nitride, read");
+    between(of(flat, red).mean, 11.22, of(flat, blue).mean,
+            "Sahoo et al. (2009): 69.1 nm silicon nitride, read");
     red.coatings = blue.coatings = both;
     red.n_coatings = blue.n_coatings = 2;
-    between(of(flat, red).mean, 7.64, of(flat, blue).mean, "Sahoo et al. (2009): 56 nm MgF2 on 69.1 nm nitride, read");
-    CHECK_SOURCE(of(flat, setup(300.0, 1200.0)).weighted, 35.0, 1.0, "polished silicon, photon weighted, from memory");
+    between(of(flat, red).mean, 7.64, of(flat, blue).mean,
+            "Sahoo et al. (2009): 56 nm MgF2 on 69.1 nm nitride, read");
+    CHECK_SOURCE(of(flat, setup(300.0, 1200.0)).weighted, 35.0, 1.0,
+                 "polished silicon, photon weighted, from memory");
 }
 
 /* Wires of one thickness lie between a flat-topped layer (share 0.45) and a smooth grade: uneven tops grade them. */
 static void wires(void) {
-    static const struct { double length, lo, hi, R; const char *source; } rows[] = {
-        { 600.0, 400.0, 1000.0, 5.0, "Hsu et al. (2012) Int. J. Photoenergy, 197514: etched wires of 600 nm, grain A, read" },
+    static const struct {
+        double length, lo, hi, R;
+        const char *source;
+    } rows[] = {
+        { 600.0, 400.0, 1000.0, 5.0,
+          "Hsu et al. (2012) Int. J. Photoenergy, 197514: etched wires of 600 nm, grain A, read" },
         { 600.0, 400.0, 1000.0, 4.0, "Hsu et al. (2012): the same wafer, grain B, read" },
-        { 1000.0, 300.0, 1100.0, 2.0, "Ding et al. (2014) Curr. Nanosci. 10, 402: filling 0.45, pitch 110 nm, read; length not stated" },
+        { 1000.0, 300.0, 1100.0, 2.0,
+          "Ding et al. (2014) Curr. Nanosci. 10, 402: filling 0.45, pitch 110 nm, read; length not stated" },
     };
     for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
         double depth[2] = { 0.0, rows[i].length }, share[2] = { 0.45, 0.45 };
@@ -80,15 +104,25 @@ static void wires(void) {
 
 /* Upper bounds of needle fields: the model keeps them too. Largest: at every wavelength of the range. */
 static void bounds(void) {
-    static const struct { double height, spacing, exponent, lo, hi, bound; int largest; const char *source; } rows[] = {
-        { 800.0, 200.0, 1.0, 300.0, 1000.0, 0.7, 1, "Ortega et al. (2015) Prog. Photovolt.: below 0.7 %, read; height and spacing from memory" },
-        { 350.0, 100.0, 1.0, 400.0, 800.0, 2.6, 1, "Kanamori et al. (2001) Appl. Phys. Lett. 78, 142: from memory, 1.6 +- 1" },
-        { 1600.0, 140.0, 1.0, 300.0, 1000.0, 1.8, 1, "Huang et al. (2007) Nat. Nanotechnol. 2, 770: from memory, 1.0 +- 0.8" },
-        { 500.0, 100.0, 1.0, 400.0, 1000.0, 5.0, 0, "Yoo et al. (2006) Sol. Energy Mater. Sol. Cells 90, 3085: from memory" },
-        { 1800.0, 300.0, 1.0, 400.0, 950.0, 1.0, 0, "Nguyen et al. (2013) J. Appl. Phys. 113, 194903: from memory" },
+    static const struct {
+        double height, spacing, exponent, lo, hi, bound;
+        int largest;
+        const char *source;
+    } rows[] = {
+        { 800.0, 200.0, 1.0, 300.0, 1000.0, 0.7, 1,
+          "Ortega et al. (2015) Prog. Photovolt.: below 0.7 %, read; height and spacing from memory" },
+        { 350.0, 100.0, 1.0, 400.0, 800.0, 2.6, 1,
+          "Kanamori et al. (2001) Appl. Phys. Lett. 78, 142: from memory, 1.6 +- 1" },
+        { 1600.0, 140.0, 1.0, 300.0, 1000.0, 1.8, 1,
+          "Huang et al. (2007) Nat. Nanotechnol. 2, 770: from memory, 1.0 +- 0.8" },
+        { 500.0, 100.0, 1.0, 400.0, 1000.0, 5.0, 0,
+          "Yoo et al. (2006) Sol. Energy Mater. Sol. Cells 90, 3085: from memory" },
+        { 1800.0, 300.0, 1.0, 400.0, 950.0, 1.0, 0,
+          "Nguyen et al. (2013) J. Appl. Phys. 113, 194903: from memory" },
     };
     for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
-        figures f = of(shape(rows[i].height, rows[i].spacing, rows[i].exponent), setup(rows[i].lo, rows[i].hi));
+        figures f =
+            of(shape(rows[i].height, rows[i].spacing, rows[i].exponent), setup(rows[i].lo, rows[i].hi));
         between(0.0, rows[i].largest ? f.largest : f.mean, rows[i].bound, rows[i].source);
         printf("%4.0f nm at %3.0f nm: %.2f %% (bound %.1f)\n", rows[i].height, rows[i].spacing,
                rows[i].largest ? f.largest : f.mean, rows[i].bound);
@@ -108,8 +142,9 @@ static void trends(void) {
     double bare = of(full, o).mean;
     CHECK(of(gaps, o).mean > 1.5 * bare);
     o.ambient = &cover;
-    between(0.0, of(full, o).mean / bare, 0.63, "hydrogen-etched pyramids under n = 1.4: 4.3/6.8 = 0.63 with the cover's own face "
-                                                "and flat gaps in it, read (authors not shown); without both it must be less");
+    between(0.0, of(full, o).mean / bare, 0.63,
+            "hydrogen-etched pyramids under n = 1.4: 4.3/6.8 = 0.63 with the cover's own face "
+            "and flat gaps in it, read (authors not shown); without both it must be less");
     /* a coating helps a dark texture by little: 0.84 points measured, against 25 on flat silicon */
     layer film = { &alumina, 75.0 };
     optics_setup plain = setup(400.0, 800.0), coated = plain;
@@ -141,13 +176,15 @@ static void validity(void) {
     surface_input pyramids = shape(4000.0 * 0.7071, 4000.0, 1.0);
     figures f = of(pyramids, o);
     between(f.lo, 11.5, f.hi, "alkaline random pyramids, bare: 10 to 13 %, textbook value from memory");
-    between(f.lo, 10.4, f.hi, "Chen et al. (2019) Solar Energy 186, 392: inverted pyramids, traced 10.11 to 10.64 %, read");
+    between(f.lo, 10.4, f.hi,
+            "Chen et al. (2019) Solar Energy 186, 392: inverted pyramids, traced 10.11 to 10.64 %, read");
     printf("pyramids 300-1000 nm: %.2f %% (%.2f to %.2f)\n", f.weighted, f.lo, f.hi);
     layer film = { &nitride, 75.0 };
     o.coatings = &film;
     o.n_coatings = 1;
     f = of(pyramids, o);
-    between(1.5, f.weighted, 3.5, "alkaline random pyramids with 75 nm nitride: 2.5 +- 1 %, textbook value from memory");
+    between(1.5, f.weighted, 3.5,
+            "alkaline random pyramids with 75 nm nitride: 2.5 +- 1 %, textbook value from memory");
     o = setup(300.0, 1000.0);
     o.model = OPTICS_GRADED;
     CHECK(of(pyramids, o).refused);
@@ -161,9 +198,11 @@ static void validity(void) {
 
 int main(void) {
     error e = { 0 };
-    CHECK(table_material("silicon", &silicon) && table_material("nitride", &nitride) && table_material("alumina", &alumina) &&
-          table_sun(&am15g) && material_constant(&air, 1.0, 0.0, &e) == ST_OK && material_constant(&two, 2.0, 0.0, &e) == ST_OK &&
-          material_constant(&fluoride, 1.38, 0.0, &e) == ST_OK && material_constant(&cover, 1.4, 0.0, &e) == ST_OK);
+    CHECK(table_material("silicon", &silicon) && table_material("nitride", &nitride) &&
+          table_material("alumina", &alumina) && table_sun(&am15g) &&
+          material_constant(&air, 1.0, 0.0, &e) == ST_OK && material_constant(&two, 2.0, 0.0, &e) == ST_OK &&
+          material_constant(&fluoride, 1.38, 0.0, &e) == ST_OK &&
+          material_constant(&cover, 1.4, 0.0, &e) == ST_OK);
     baselines();
     wires();
     bounds();

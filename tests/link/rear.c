@@ -7,12 +7,22 @@
 static material silicon, air, nitride;
 static sun am15g;
 
-static prediction ask(double thickness, double back, int lambertian, double height, double spacing, double height_u) {
-    optics_setup o = { .ambient = &air, .substrate = &silicon, .air = &air, .nitride = &nitride,
-                       .mixing = MIX_BRUGGEMAN_2D, .reflect = reflect_defaults(), .sun = &am15g, .band_lo_nm = 300.0,
-                       .band_hi_nm = 1200.0, .step_nm = 10.0, .model = OPTICS_AUTO,
+static prediction ask(double thickness, double back, int lambertian, double height, double spacing,
+                      double height_u) {
+    optics_setup o = { .ambient = &air,
+                       .substrate = &silicon,
+                       .air = &air,
+                       .nitride = &nitride,
+                       .mixing = MIX_BRUGGEMAN_2D,
+                       .reflect = reflect_defaults(),
+                       .sun = &am15g,
+                       .band_lo_nm = 300.0,
+                       .band_hi_nm = 1200.0,
+                       .step_nm = 10.0,
+                       .model = OPTICS_AUTO,
                        .rear = { thickness, back, lambertian } };
-    surface_input in = { .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, height_u, 1 },
+    surface_input in = { .spacing_nm = { spacing, 0.0, 1 },
+                         .height_nm = { height, height_u, 1 },
                          .link = link_defaults() };
     error e = { 0 };
     prediction p = { 0 };
@@ -27,15 +37,19 @@ static prediction ask(double thickness, double back, int lambertian, double heig
 }
 
 static void compare(double height, double spacing) {
-    prediction off = ask(0.0, MISSING, 1, height, spacing, 20.0), on = ask(170.0, MISSING, 1, height, spacing, 20.0);
-    prediction straight = ask(170.0, MISSING, 0, height, spacing, 20.0), mirror = ask(170.0, 1.0, 0, height, spacing, 20.0);
+    prediction off = ask(0.0, MISSING, 1, height, spacing, 20.0),
+               on = ask(170.0, MISSING, 1, height, spacing, 20.0);
+    prediction straight = ask(170.0, MISSING, 0, height, spacing, 20.0),
+               mirror = ask(170.0, 1.0, 0, height, spacing, 20.0);
     CHECK(isnan(off.rear_escape) && strstr(off.note, "Front surface only"));
-    CHECK(strstr(on.note, "Lambertian") && strstr(on.note, "bare rear") && !strstr(on.note, "Front surface only"));
+    CHECK(strstr(on.note, "Lambertian") && strstr(on.note, "bare rear") &&
+          !strstr(on.note, "Front surface only"));
     CHECK(strstr(straight.note, "straight double pass") && strstr(mirror.note, "the rear reflects 100 %"));
     CHECK_NEAR(on.weighted - off.weighted, on.rear_escape, 1e-12);
     CHECK(on.rear_escape > 0.005 && on.rear_escape < 0.08);
     CHECK(straight.rear_escape < mirror.rear_escape);
-    CHECK(on.weighted_lo <= on.weighted && on.weighted <= on.weighted_hi && on.weighted_lo >= off.weighted_lo);
+    CHECK(on.weighted_lo <= on.weighted && on.weighted <= on.weighted_hi &&
+          on.weighted_lo >= off.weighted_lo);
     for (size_t i = 0; i < on.n; i++) {
         if (on.wavelength_nm[i] <= 880.0) CHECK_NEAR(on.R[i], off.R[i], 1e-4);
         if (on.wavelength_nm[i] >= 1150.0) CHECK(on.R[i] > off.R[i] + 0.1);

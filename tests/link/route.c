@@ -8,12 +8,21 @@ static material silicon, air, nitride;
 static sun am15g;
 
 static optics_setup setup(void) {
-    return (optics_setup){ .ambient = &air, .substrate = &silicon, .air = &air, .nitride = &nitride,
-                           .mixing = MIX_BRUGGEMAN_2D, .reflect = reflect_defaults(), .sun = &am15g,
-                           .band_lo_nm = 300.0, .band_hi_nm = 1200.0, .step_nm = 10.0, .model = OPTICS_AUTO };
+    return (optics_setup){ .ambient = &air,
+                           .substrate = &silicon,
+                           .air = &air,
+                           .nitride = &nitride,
+                           .mixing = MIX_BRUGGEMAN_2D,
+                           .reflect = reflect_defaults(),
+                           .sun = &am15g,
+                           .band_lo_nm = 300.0,
+                           .band_hi_nm = 1200.0,
+                           .step_nm = 10.0,
+                           .model = OPTICS_AUTO };
 }
 static prediction ask(const optics_setup *o, double height, double spacing, double height_u) {
-    surface_input in = { .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, height_u, 1 },
+    surface_input in = { .spacing_nm = { spacing, 0.0, 1 },
+                         .height_nm = { height, height_u, 1 },
                          .link = link_defaults() };
     error e = { 0 };
     prediction p = { 0 };
@@ -53,16 +62,20 @@ static void choice(void) {
     o.reflect.angle_deg = 30.0;
     CHECK(is(&o, 3535.5, 5000.0, "none", "vertical light only"));
     o.reflect = reflect_defaults();
-    o.front = (laminate){ .glass = &nitride, .glass_mm = 3.2, .encapsulant = &nitride, .encapsulant_mm = 0.45 };
+    o.front =
+        (laminate){ .glass = &nitride, .glass_mm = 3.2, .encapsulant = &nitride, .encapsulant_mm = 0.45 };
     CHECK(is(&o, 3535.5, 5000.0, "none", "no laminate"));
     double depth[2] = { 0.0, 3535.5 }, solid[2] = { 0.0, 1.0 };
     profile flank = { .n = 2, .depth_nm = depth, .solid = solid };
-    surface_input in = { .spacing_nm = { 5000.0, 0.0, 1 }, .height_nm = quantity_missing(), .measured = &flank,
+    surface_input in = { .spacing_nm = { 5000.0, 0.0, 1 },
+                         .height_nm = quantity_missing(),
+                         .measured = &flank,
                          .link = link_defaults() };
     prediction p = { 0 };
     error e = { 0 };
     o = setup();
-    CHECK(predict(&in, &o, &p, &e) == ST_OK && p.refused && strstr(p.note, "a measured profile has no facets"));
+    CHECK(predict(&in, &o, &p, &e) == ST_OK && p.refused &&
+          strstr(p.note, "a measured profile has no facets"));
     prediction_free(&p);
 }
 
@@ -77,8 +90,8 @@ static void interval(void) {
     error e = { 0 };
     CHECK(sun_current(&am15g, 300.0, 1200.0, &current, &e) == ST_OK);
     CHECK_NEAR(p.current_loss_mA_cm2, p.weighted * current, 1e-12);
-    printf("pyramids: %.4f, %.4f to %.4f; height +- 500: %.4f to %.4f\n", p.weighted, p.weighted_lo, p.weighted_hi,
-           wide.weighted_lo, wide.weighted_hi);
+    printf("pyramids: %.4f, %.4f to %.4f; height +- 500: %.4f to %.4f\n", p.weighted, p.weighted_lo,
+           p.weighted_hi, wide.weighted_lo, wide.weighted_hi);
     prediction_free(&p);
     prediction_free(&wide);
     layer film = { &nitride, 75.0 };
@@ -88,7 +101,8 @@ static void interval(void) {
     CHECK(holds(&p) && p.weighted_lo < 0.02262 && p.weighted_hi > 0.02262);
     printf("with nitride: %.4f, %.4f to %.4f\n", p.weighted, p.weighted_lo, p.weighted_hi);
     prediction_free(&p);
-    for (double h = 2600.0; h < 20000.0; h *= 1.2) { /* every steepness: a value between 0 and one bounce, inside its interval */
+    for (double h = 2600.0; h < 20000.0;
+         h *= 1.2) { /* every steepness: a value between 0 and one bounce, inside its interval */
         p = ask(&o, h, 5000.0, 0.0);
         CHECK(!strcmp(p.model, "facets") && holds(&p) && p.weighted < p.coated);
         prediction_free(&p);

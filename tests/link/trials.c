@@ -13,12 +13,21 @@ static material silicon, air, nitride;
 static sun am15g;
 
 static optics_setup setup(void) {
-    return (optics_setup){ .ambient = &air, .substrate = &silicon, .air = &air, .nitride = &nitride,
-                           .mixing = MIX_BRUGGEMAN_2D, .reflect = reflect_defaults(), .sun = &am15g,
-                           .band_lo_nm = 300.0, .band_hi_nm = 1200.0, .step_nm = 10.0, .model = OPTICS_AUTO };
+    return (optics_setup){ .ambient = &air,
+                           .substrate = &silicon,
+                           .air = &air,
+                           .nitride = &nitride,
+                           .mixing = MIX_BRUGGEMAN_2D,
+                           .reflect = reflect_defaults(),
+                           .sun = &am15g,
+                           .band_lo_nm = 300.0,
+                           .band_hi_nm = 1200.0,
+                           .step_nm = 10.0,
+                           .model = OPTICS_AUTO };
 }
 static surface_input cones(double height, double height_u, double spacing) {
-    return (surface_input){ .spacing_nm = { spacing, 0.0, 1 }, .height_nm = { height, height_u, 1 },
+    return (surface_input){ .spacing_nm = { spacing, 0.0, 1 },
+                            .height_nm = { height, height_u, 1 },
                             .link = link_defaults() };
 }
 static distribution ask(const surface_input *in, const optics_setup *o, uint64_t seed) {
@@ -28,7 +37,8 @@ static distribution ask(const surface_input *in, const optics_setup *o, uint64_t
     t.seed = seed;
     CHECK(predict_trials(in, o, &t, &d, &e) == ST_OK);
     if (e.text[0]) printf("%s\n", e.text);
-    CHECK(d.settled && d.trials >= 20000 && d.lo >= 0.0 && d.lo <= d.median && d.median <= d.hi && d.hi < 1.0);
+    CHECK(d.settled && d.trials >= 20000 && d.lo >= 0.0 && d.lo <= d.median && d.median <= d.hi &&
+          d.hi < 1.0);
     for (size_t i = 0; i < d.n; i++) CHECK(d.R_lo[i] >= 0.0 && d.R_lo[i] <= d.R_hi[i] && d.R_hi[i] <= 1.0);
     return d;
 }
@@ -37,9 +47,11 @@ static void repeats(void) {
     optics_setup o = setup();
     surface_input in = cones(350.0, 30.0, 320.0);
     distribution a = ask(&in, &o, 7), b = ask(&in, &o, 7), c = ask(&in, &o, 8);
-    CHECK(!memcmp(&a.mean, &b.mean, sizeof a.mean) && !memcmp(&a.lo, &b.lo, sizeof a.lo) && !memcmp(&a.hi, &b.hi, sizeof a.hi));
+    CHECK(!memcmp(&a.mean, &b.mean, sizeof a.mean) && !memcmp(&a.lo, &b.lo, sizeof a.lo) &&
+          !memcmp(&a.hi, &b.hi, sizeof a.hi));
     CHECK(!memcmp(a.R_hi, b.R_hi, a.n * sizeof *a.R_hi) && !memcmp(a.sd_of, b.sd_of, sizeof a.sd_of));
-    CHECK(fabs(a.mean - c.mean) > 0.0 && fabs(a.lo - c.lo) < 1.5e-3 && fabs(a.hi - c.hi) < 1.5e-3); /* three times the tolerance */
+    CHECK(fabs(a.mean - c.mean) > 0.0 && fabs(a.lo - c.lo) < 1.5e-3 &&
+          fabs(a.hi - c.hi) < 1.5e-3); /* three times the tolerance */
     CHECK(a.n == 91);
     CHECK_NEAR(a.wavelength_nm[90], 1200.0, 0.0);
     distribution_free(&a);
@@ -61,7 +73,8 @@ static void model_only(void) {
     CHECK_NEAR(d.hi, p.weighted - p.model_bias + 1.95 * p.u_model, 0.05 * p.u_model);
     CHECK(d.hi <= p.weighted_hi && d.lo >= p.weighted_lo);
     CHECK_NEAR(d.sd_of[INPUT_MODEL], d.sd, 0.03 * d.sd);
-    CHECK(d.sd_of[INPUT_HEIGHT] + d.sd_of[INPUT_SHAPE] + d.sd_of[INPUT_LEVEL] + d.sd_of[INPUT_SPACING] < 1e-12);
+    CHECK(d.sd_of[INPUT_HEIGHT] + d.sd_of[INPUT_SHAPE] + d.sd_of[INPUT_LEVEL] + d.sd_of[INPUT_SPACING] <
+          1e-12);
     prediction_free(&p);
     distribution_free(&d);
 }
@@ -69,7 +82,8 @@ static void model_only(void) {
 /* A small height error is linear: the sd is the slope, which two predictions give. */
 static void linear(void) {
     optics_setup o = setup();
-    surface_input in = cones(250.0, 4.0, 250.0), low = cones(246.0, 0.0, 250.0), high = cones(254.0, 0.0, 250.0);
+    surface_input in = cones(250.0, 4.0, 250.0), low = cones(246.0, 0.0, 250.0),
+                  high = cones(254.0, 0.0, 250.0);
     distribution d = ask(&in, &o, 1);
     prediction a = { 0 }, b = { 0 };
     error e = { 0 };
@@ -91,8 +105,8 @@ static void budget(void) {
     in.link.height_spread = 0.2;
     in.spacing_nm.u = 40.0;
     distribution all = ask(&in, &o, 1);
-    CHECK(height.sd_of[INPUT_HEIGHT] > 0.003 && shape.sd_of[INPUT_SHAPE] > 1e-4 && all.sd_of[INPUT_LEVEL] > 1e-5 &&
-          all.sd_of[INPUT_SPACING] > 1e-4);
+    CHECK(height.sd_of[INPUT_HEIGHT] > 0.003 && shape.sd_of[INPUT_SHAPE] > 1e-4 &&
+          all.sd_of[INPUT_LEVEL] > 1e-5 && all.sd_of[INPUT_SPACING] > 1e-4);
     CHECK(height.sd_of[INPUT_HEIGHT] > height.sd_of[INPUT_SPACING]);
     CHECK(all.hi > height.hi - 1e-3 && all.sd > 0.9 * height.sd);
     for (int k = 0; k < INPUTS; k++) printf("%s %.5f\n", input_name((input_kind)k), all.sd_of[k]);
@@ -106,7 +120,8 @@ static void refusals(void) {
     trial_options t = trial_defaults();
     distribution d = { 0 };
     error e = { 0 };
-    surface_input planar = cones(0.0, 0.0, 300.0), coarse = cones(3000.0, 0.0, 5000.0), lost = cones(300.0, 10.0, MISSING);
+    surface_input planar = cones(0.0, 0.0, 300.0), coarse = cones(3000.0, 0.0, 5000.0),
+                  lost = cones(300.0, 10.0, MISSING);
     CHECK_FAILS(predict_trials(&planar, &o, &t, &d, &e), ST_NO_RESULT, e, "planar");
     CHECK_FAILS(predict_trials(&coarse, &o, &t, &d, &e), ST_NO_RESULT, e, "facets");
     CHECK_FAILS(predict_trials(&lost, &o, &t, &d, &e), ST_NO_RESULT, e, "spacing");
@@ -118,7 +133,8 @@ static void refusals(void) {
     CHECK_FAILS(predict_trials(&in, &o, &t, &d, &e), ST_BAD_INPUT, e, "angle");
     o = setup();
     t.tolerance = 1e-2;
-    CHECK(predict_trials(&in, &o, &t, &d, &e) == ST_OK && d.settled && d.trials == 20000 && d.tolerance >= 1e-2);
+    CHECK(predict_trials(&in, &o, &t, &d, &e) == ST_OK && d.settled && d.trials == 20000 &&
+          d.tolerance >= 1e-2);
     distribution_free(&d);
     for (size_t n = 1; n < 2000; n += 37) {
         t.tolerance = 1e-2;

@@ -1,8 +1,8 @@
 /* Light from the rear: exponential integral, limits, energy, the published statistical limit. */
+#include "optics/escape.h"
 #include "base/quantity.h"
 #include "check.h"
 #include "optical_tables.h"
-#include "optics/escape.h"
 
 static double escape(double n, double k, double wl, rear_side r, double front, double diffuse) {
     material m = { 0 };
@@ -20,7 +20,8 @@ static void integral(void) {
     CHECK_SOURCE(escape_diffuse_pass(1.0) / 2.0, 0.1096920, 1e-7, table);
     CHECK_SOURCE(escape_diffuse_pass(2.0) / 2.0, 0.0301334, 1e-7, table);
     CHECK_NEAR(escape_diffuse_pass(0.0), 1.0, 0.0);
-    CHECK_NEAR(escape_diffuse_pass(1.0 - 1e-9), escape_diffuse_pass(1.0 + 1e-9), 1e-8); /* where the two ways meet */
+    CHECK_NEAR(escape_diffuse_pass(1.0 - 1e-9), escape_diffuse_pass(1.0 + 1e-9),
+               1e-8); /* where the two ways meet */
     CHECK(escape_diffuse_pass(1e6) <= 0.0);
     for (double x = 0.01; x < 40.0; x *= 1.3) { /* Simpson over the cosine */
         double sum = 0.0;
@@ -45,8 +46,8 @@ static void closed_forms(void) {
     CHECK(escape(3.5, 1.0, 1150.0, mirror, 0.1, 0.1) < 1e-100);
     /* weak absorption without front reflection: absorbed 4 n^2 a W / (1 + 4 n^2 a W), the rest escapes */
     double W = 180e3, n = 3.5, aW = 1e-3, k = aW * 1150.0 / (4.0 * PI * W);
-    CHECK_SOURCE(1.0 - escape(n, k, 1150.0, mirror, 0.0, 0.0), 4.0 * n * n * aW / (1.0 + 4.0 * n * n * aW), 5e-4,
-                 "Yablonovitch (1982); Tiedje et al. (1984): statistical limit, from memory");
+    CHECK_SOURCE(1.0 - escape(n, k, 1150.0, mirror, 0.0, 0.0), 4.0 * n * n * aW / (1.0 + 4.0 * n * n * aW),
+                 5e-4, "Yablonovitch (1982); Tiedje et al. (1984): statistical limit, from memory");
     CHECK(escape(n, k, 1150.0, mirror, 0.0, 0.0) < escape(n, k, 1150.0, straight, 0.0, 0.0));
 }
 
@@ -78,7 +79,8 @@ static void silicon_wafer(void) {
     CHECK_SOURCE(out[1], 0.11, 0.015, "double pass of 170 um, common figure");
     CHECK_SOURCE(out[2], 0.89, 0.01, "double pass of 170 um, common figure");
     r.rear_reflectance = 1.2;
-    CHECK_FAILS(escape_share(&silicon, &r, 1.0, wl, 4, R, R, out, &e), ST_BAD_INPUT, e, "the rear reflects 1.2");
+    CHECK_FAILS(escape_share(&silicon, &r, 1.0, wl, 4, R, R, out, &e), ST_BAD_INPUT, e,
+                "the rear reflects 1.2");
     r.rear_reflectance = 0.9;
     wl[0] = 100.0;
     CHECK_FAILS(escape_share(&silicon, &r, 1.0, wl, 4, R, R, out, &e), ST_BAD_INPUT, e, "silicon");

@@ -7,7 +7,8 @@
 #include "optics/facets.h"
 #include "optics/reflectance.h"
 
-static const char pyramids[] = "F-09: Campbell, Green (1987) J. Appl. Phys. 62, 243 for the geometry; silicon Green (2008)";
+static const char pyramids[] =
+    "F-09: Campbell, Green (1987) J. Appl. Phys. 62, 243 for the geometry; silicon Green (2008)";
 static material silicon, nitride, air;
 static sun am15g;
 
@@ -23,7 +24,8 @@ static void path(void) {
     CHECK_NEAR(p.share[2], 1.0 / 9.0, 1e-6); /* cos 86.32 / cos 54.7356 */
     facets_path(25.0, &p);
     CHECK(p.n == 1);
-    facets_path(40.0, &p); /* the reflected light still rises: a part meets the other side, under 60 degrees */
+    facets_path(40.0,
+                &p); /* the reflected light still rises: a part meets the other side, under 60 degrees */
     CHECK(p.n == 2);
     CHECK_NEAR(p.incidence_deg[1], 60.0, 1e-9);
     CHECK_NEAR(p.share[1], cos(60.0 * PI / 180.0) / cos(40.0 * PI / 180.0), 1e-12);
@@ -70,7 +72,8 @@ static void published(void) {
     CHECK_SOURCE(weighted(NULL, 1), 0.12703, 5e-5, pyramids);
     CHECK_SOURCE(weighted(&film, 1), 0.02262, 5e-5, pyramids);
     double with_third = weighted(NULL, 0);
-    CHECK(with_third < 0.12703 && with_third > 0.12); /* the third facet is met at grazing: it mirrors nearly all */
+    CHECK(with_third < 0.12703 &&
+          with_third > 0.12); /* the third facet is met at grazing: it mirrors nearly all */
     material_free(&fixed);
 }
 
@@ -79,7 +82,8 @@ static void squares(void) {
     material glassy = { 0 };
     error e = { 0 };
     double n = (1.0 + sqrt(0.1)) / (1.0 - sqrt(0.1)), R = 0.0, one[2], wl = 500.0;
-    facet_path twice = { .n = 2, .incidence_deg = { 0.0, 0.0 }, .share = { 1.0, 1.0 } }, once = { .n = 1, .share = { 1.0 } };
+    facet_path twice = { .n = 2, .incidence_deg = { 0.0, 0.0 }, .share = { 1.0, 1.0 } },
+               once = { .n = 1, .share = { 1.0 } };
     CHECK(material_constant(&glassy, n, 0.0, &e) == ST_OK);
     stack s = { .ambient = &air, .substrate = &glassy };
     CHECK(facets_reflectance(&s, &twice, &wl, 1, &R, &e) == ST_OK);
