@@ -53,6 +53,18 @@ void html_text(textbuf *out, const char *s) {
     }
 }
 
+void html_href(textbuf *out, const char *path) {
+    static const char plain[] = "ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789-._~/";
+    if (!path) return;
+    text_add(out, "./");
+    for (const unsigned char *p = (const unsigned char *)path; *p; p++) {
+        if (strchr(plain, *p))
+            text_add_n(out, (const char *)p, 1);
+        else
+            text_addf(out, "%%%02X", (unsigned)*p);
+    }
+}
+
 size_t html_fit(const char *s, size_t letters) {
     size_t i = 0;
     for (size_t seen = 0; s[i] && seen < letters; seen++) {

@@ -12,6 +12,10 @@
  * and for quoted attributes. NULL adds nothing. */
 void html_text(textbuf *out, const char *s);
 
+/* A relative path as the value of href: bytes that a URL gives another meaning, or that are no ASCII, as %XX (RFC 3986),
+ * with "./" in front. */
+void html_href(textbuf *out, const char *path);
+
 /* Bytes of the first `letters` UTF-8 characters of s, never splitting one. */
 size_t html_fit(const char *s, size_t letters);
 

@@ -1,6 +1,6 @@
 /* report.html: one file that opens anywhere, says first what an engineer asks first, and carries its own pictures, charts
- * and explanations. Nothing is fetched; a security policy in the head forbids it. Without scripts only the sorting of two
- * tables is missing. The parts are in page_*.c. */
+ * and explanations. Nothing is fetched; a security policy in the head forbids it. Without scripts only sorting,
+ * filtering and copying are missing. The parts are in page_*.c, in the reader's order. */
 #include "report/page.h"
 
 #include <stdlib.h>
@@ -24,11 +24,11 @@ static void add_head(const results *r, textbuf *out) {
     text_add(out,
              "</h1>\n<p class=\"lead\">Texture of etched silicon from top-view micrographs, and the "
              "reflectance predicted "
-             "from it.</p>\n<nav aria-label=\"On this page\"><ul><li><a href=\"#verdicts\">Verdicts</a></li>"
-             "<li><a href=\"#series\">Etch series</a></li><li><a href=\"#optics\">Reflectance</a></li>"
-             "<li><a href=\"#texture\">Texture</a></li><li><a href=\"#micrographs\">Micrographs</a></li>"
-             "<li><a href=\"#meaning\">Meaning</a></li><li><a "
-             "href=\"#inputs\">Inputs</a></li></ul></nav></header>\n"
+             "from it.</p>\n<nav aria-label=\"On this page\"><ul><li><a href=\"#verdicts\">Verdict</a></li>"
+             "<li><a href=\"#samples\">Samples</a></li><li><a href=\"#series\">Etch series</a></li>"
+             "<li><a href=\"#optics\">Reflectance</a></li><li><a href=\"#texture\">Texture</a></li>"
+             "<li><a href=\"#micrographs\">Micrographs</a></li><li><a href=\"#budgets\">Uncertainty</a></li>"
+             "<li><a href=\"#meaning\">Meaning</a></li><li><a href=\"#inputs\">How it was measured</a></li></ul></nav></header>\n"
              "<main>\n");
 }
 
@@ -37,11 +37,13 @@ status report_write(const results *r, const char *out_dir, error *e) {
     char *path = NULL;
     add_head(r, &page);
     page_verdicts(r, &page);
+    page_samples(r, &page);
     page_series(r, &page);
-    page_maps(r, &page);
     page_spectra(r, &page);
-    page_texture(r, &page);
+    page_texture(r, out_dir, &page);
     page_pictures(r, out_dir, &page);
+    page_maps(r, &page);
+    page_budgets(r, &page);
     page_meaning(r, &page);
     page_inputs(r, &page);
     text_add(&page, "</main>\n<footer>The same figures, to the digit: samples.csv, images.csv, spectra.csv, "

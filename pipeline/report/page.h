@@ -4,16 +4,34 @@
 #include "report/results.h"
 
 extern const char *const page_style_parts[]; /* the style sheet, NULL behind the last part */
-extern const char page_script[];             /* sorting of tables; the page is complete without it */
+extern const char page_script[];             /* sorting, filtering, copying; the page is complete without it */
 
-void page_verdicts(const results *r, textbuf *out); /* headline, verdict per sample and target */
+/* In the order of the page. */
+void page_verdicts(const results *r, textbuf *out); /* the run's verdict, its reasons, what to do next */
+void page_samples(const results *r, textbuf *out);  /* one line a sample, with pictures of value and target */
 void page_series(const results *r, textbuf *out);   /* spacing and reflectance over the etches */
 void page_maps(const results *r, textbuf *out);     /* spacing over the wafer, where positions are known */
 void page_spectra(const results *r, textbuf *out);  /* optics table, one chart per sample */
-void page_texture(const results *r, textbuf *out);  /* all texture numbers of the samples */
+void page_texture(const results *r, const char *out_dir, textbuf *out); /* sizes, autocorrelation, all texture numbers */
 void page_pictures(const results *r, const char *out_dir, textbuf *out); /* overlays, status, reasons */
+void page_budgets(const results *r, textbuf *out); /* where the uncertainty comes from */
 void page_meaning(const results *r, textbuf *out); /* what the numbers mean, flags, validity */
-void page_inputs(const results *r, textbuf *out);  /* the manifest */
+void page_inputs(const results *r, textbuf *out);  /* methods with their sources, and the manifest */
+
+/* Parts of those: the list of advice inside the verdict, the charts inside the texture. */
+void page_advice(const results *r, textbuf *out);
+void page_profiles(const results *r, const char *out_dir, textbuf *out);
+
+/* Column name + suffix of the sample table, or NULL. */
+const column *page_sample_column(const char *name, const char *suffix);
+/* Value with U (k = 2), or with its 95 % interval where the table has one, and its unit. */
+void page_sample_value(textbuf *out, const sample_row *s, const char *name);
+/* "280 to 420 nm" of target k. */
+void page_range(textbuf *out, const results *r, size_t k);
+/* "Spacing 468.07 +- 40 nm is above the limit 420 nm", for the words fails and undecided. */
+void page_reason(textbuf *out, const results *r, size_t sample, size_t target, const char *word);
+/* The further members of a row in results.json as an object, which the caller deletes; NULL where there are none. */
+struct cJSON *page_members(const char *json);
 
 /* A flag or reason cell: known words with their meaning, anything else as it is. */
 void page_flags(textbuf *out, const char *words);

@@ -29,7 +29,7 @@ static void add_flag_list(const results *r, textbuf *out) {
         if (!flag_occurs(r, flag_word(bit))) continue;
         if (!n++)
             text_add(out, "<h3>Remarks and reasons on this page</h3>\n<div class=\"scroll\" "
-                          "tabindex=\"0\"><table><thead><tr>"
+                          "tabindex=\"0\" role=\"region\" aria-label=\"Remarks and reasons\"><table><thead><tr>"
                           "<th scope=\"col\">Word</th><th scope=\"col\">Meaning</th></tr></thead><tbody>\n");
         text_addf(out, "<tr><th scope=\"row\"><code>%s</code></th><td>", flag_word(bit));
         html_text(out, flag_meaning(bit));
@@ -47,11 +47,11 @@ static int is_twin(const column *c, size_t i) {
 static void add_columns(const column *c, size_t n, const char *heading, textbuf *out) {
     text_addf(
         out,
-        "<h3>%s</h3>\n<div class=\"scroll\" tabindex=\"0\"><table><thead><tr><th scope=\"col\">Column</th>"
+        "<h3>%s</h3>\n<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"%s\"><table><thead><tr><th scope=\"col\">Column</th>"
         "<th scope=\"col\">Unit</th><th scope=\"col\">Meaning, and where it stops being "
         "true</th></tr></thead>"
         "<tbody>\n",
-        heading);
+        heading, heading);
     for (size_t i = 0; i < n; i++) {
         if (is_twin(c, i)) continue;
         text_addf(out, "<tr><th scope=\"row\"><code>%s</code></th><td>", c[i].name);
@@ -115,7 +115,9 @@ static void add_scalar(textbuf *out, const cJSON *node) {
 /* An array of objects: one row each, the members of the first one as columns. */
 static void add_rows(textbuf *out, const cJSON *list) {
     const cJSON *row, *head;
-    text_add(out, "<div class=\"scroll\" tabindex=\"0\"><table><thead><tr>");
+    text_add(out, "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"");
+    html_text(out, list->string ? list->string : "list");
+    text_add(out, "\"><table><thead><tr>");
     cJSON_ArrayForEach(head, list->child) {
         text_add(out, "<th scope=\"col\">");
         html_text(out, head->string);
@@ -160,13 +162,34 @@ static void add_node(textbuf *out, const cJSON *node) {
     }
 }
 
+static void add_methods(textbuf *out) {
+    static const char *const method[][2] = {
+        { "Uncertainty", "JCGM 100:2008, parts combined as variances; U = 2 u" },
+        { "Verdicts", "ISO 14253-1 (decision rule), JCGM 106:2012 (conformance probability 95 % per limit)" },
+        { "Sizes", "equivalent circular diameter of watershed cells (Meyer 1991; Vincent, Soille 1991, IEEE Trans. Pattern "
+                   "Anal. 13:583); border weighting ISO 13322-1" },
+        { "Order", "Clark, Evans 1954, Ecology 35:445, edge correction of Donnelly 1978; nearest neighbours after Hanisch 1984" },
+        { "Autocorrelation length, texture aspect", "ISO 25178-2, applied to brightness, not to heights" },
+        { "Solid share against depth", "Bruggeman 1935, Ann. Phys. 416:636, in two dimensions" },
+        { "Layer stack", "characteristic matrix (Abeles 1950)" },
+        { "Steep coarse facets", "geometric optics, Campbell, Green 1987, J. Appl. Phys. 62:243" },
+    };
+    text_add(out, "<h3>Methods</h3>\n<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Methods and their "
+                  "sources\"><table><thead><tr><th scope=\"col\">What</th><th scope=\"col\">Method and source</th></tr></thead>"
+                  "<tbody>\n");
+    for (size_t i = 0; i < sizeof method / sizeof method[0]; i++)
+        text_addf(out, "<tr><th scope=\"row\">%s</th><td>%s</td></tr>\n", method[i][0], method[i][1]);
+    text_add(out, "</tbody></table></div>\n<h3>Program, protocol, inputs</h3>\n");
+}
+
 void page_inputs(const results *r, textbuf *out) {
     if (!r->manifest_json) return;
     cJSON *manifest = cJSON_Parse(r->manifest_json);
     text_add(out,
-             "<section id=\"inputs\" class=\"inputs\"><h2>Where these numbers come from</h2>\n<p "
-             "class=\"lead\">Program, "
+             "<section id=\"inputs\" class=\"inputs\"><h2>How it was measured</h2>\n<p "
+             "class=\"lead\">Methods with their sources, program, "
              "protocol and the SHA-256 of every input: the same inputs give the same digits again.</p>\n");
+    add_methods(out);
     if (manifest) {
         cJSON_DeleteItemFromObjectCaseSensitive(manifest, "flags"); /* the list stands above */
         add_node(out, manifest);

@@ -1,7 +1,7 @@
 /* Every micrograph of the run as a card: its overlay, what became of it and why. Overlays are read back from the output
- * folder, box-averaged to the width they are shown at, and embedded with 24 levels per channel: noise below that
- * compresses badly and shows nothing. The width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one can
- * mail; what is left out is named with its path. */
+ * folder, box-averaged to the width they are shown at and embedded as JPEG; a relative link leads to the overlay itself. The
+ * width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one can mail; what is
+ * left out is named with its path. */
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -13,9 +13,9 @@
 #include "report/page.h"
 #include "report/thumbnail.h"
 
-enum { THUMB_WIDTH = 524, THUMB_LEAST = 240, FULL_SIZE_PICTURES = 16, DETAIL_NX = 220, DETAIL_NY = 165 };
-enum { MAX_CARDS = 500 };
-static const size_t picture_budget = (size_t)6 << 20; /* bytes of embedded pictures */
+enum { THUMB_WIDTH = 524, THUMB_LEAST = 260, FULL_SIZE_PICTURES = 16, DETAIL_NX = 200, DETAIL_NY = 150 };
+enum { MAX_CARDS = 500, MOST_DETAILS = 40 };
+static const size_t picture_budget = (size_t)5 << 19; /* bytes of embedded pictures */
 
 void page_flags(textbuf *out, const char *words) {
     size_t n = 0;
@@ -72,18 +72,18 @@ static void add_fact(textbuf *out, const image_row *m, const char *name, const c
     text_add(out, "</dd>\n");
 }
 
-static void add_image(textbuf *out, const small_png *p, const char *lead, const char *file,
+static void add_image(textbuf *out, const small_picture *p, const char *lead, const char *file,
                       const char *tail) {
     text_addf(out, "<img width=\"%zu\" height=\"%zu\" loading=\"lazy\" alt=\"%s", p->nx, p->ny, lead);
     html_text(out, file);
-    text_addf(out, "%s\" src=\"data:image/png;base64,", tail);
-    text_base64(out, p->png, p->n);
+    text_addf(out, "%s\" src=\"data:image/jpeg;base64,", tail);
+    text_base64(out, p->jpeg, p->n);
     text_add(out, "\">\n");
 }
 
 /* Reads the overlay of image i; otherwise says in its place why there is none. */
 static void read_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t spent,
-                         small_png *whole, small_png *detail, textbuf *out) {
+                         small_picture *whole, small_picture *detail, textbuf *out) {
     const char *relative = r->overlay_paths ? r->overlay_paths[i] : NULL;
     error e = { 0 };
     char *path = relative ? path_join(out_dir, relative) : NULL;
@@ -95,7 +95,7 @@ static void read_picture(const results *r, size_t i, const char *out_dir, size_t
         text_add(out, "<div class=\"blank\">Left out to keep the page small: ");
         html_text(out, relative);
         text_add(out, "</div>\n");
-    } else if (thumbnail_make(path, width, DETAIL_NX, DETAIL_NY, whole, detail, &e)) {
+    } else if (thumbnail_make(path, width, r->n_images > MOST_DETAILS ? 0 : DETAIL_NX, DETAIL_NY, whole, detail, &e)) {
         text_add(out, "<div class=\"blank\">The overlay could not be read: ");
         html_text(out, e.text);
         text_add(out, "</div>\n");
@@ -127,7 +127,7 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
                      textbuf *out) {
     const image_row *m = &r->images[i];
     const char *word = m->status ? m->status : "";
-    small_png whole = { 0 }, detail = { 0 };
+    small_picture whole = { 0 }, detail = { 0 };
     int excluded = !strcmp(word, "excluded"), unreadable = !strcmp(word, "unreadable");
     text_addf(out, "<article id=\"micrograph-%zu\" class=\"card %s\"><h3>", i + 1,
               excluded     ? "excluded"
@@ -137,7 +137,13 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
     text_add(out, "</h3>\n");
     read_picture(r, i, out_dir, width, *spent, &whole, &detail, out);
     *spent += whole.n + detail.n;
-    if (whole.n) add_image(out, &whole, "Overlay of ", m->file, ": detected features and their cells");
+    if (whole.n) {
+        text_add(out, "<a href=\"");
+        html_href(out, r->overlay_paths[i]);
+        text_add(out, "\">");
+        add_image(out, &whole, "Overlay of ", m->file, ": detected features and their cells; opens at full size");
+        text_add(out, "</a>");
+    }
     text_add(out, "<p class=\"reason\">");
     html_badge(out, word);
     if (m->reason && *m->reason) {
@@ -146,14 +152,14 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
     }
     text_add(out, "</p>\n<div class=\"facts\">");
     add_facts(m, out);
-    if (detail.n) {
+    if (detail.n) { /* none where there are too many for one page: the link leads to every pixel */
         text_add(out, "<figure>");
         add_image(out, &detail, "Middle of ", m->file, " at full resolution");
         text_add(out, "<figcaption>the middle, pixel by pixel</figcaption></figure>");
     }
     text_add(out, "</div></article>\n");
-    small_png_free(&whole);
-    small_png_free(&detail);
+    small_picture_free(&whole);
+    small_picture_free(&detail);
 }
 
 static size_t thumb_width(const results *r) {
@@ -176,7 +182,7 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
              "numbers: one marker per feature, none missing, none on nothing; borders in the valleys.</p>\n"
              "<ul class=\"key\"><li>filled marker: counted</li><li>hollow marker: outside the guard frame, "
              "not counted"
-             "</li><li>thin lines: cells, faint where the frame cuts them</li><li>dashes: guard "
+             "</li><li>thin lines: cells, faint where the frame cuts them</li><li>a picture opens its overlay at full size</li><li>dashes: guard "
              "frame</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
     text_add(out, "<div class=\"cards\">\n");

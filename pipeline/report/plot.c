@@ -107,7 +107,7 @@ static void settle_y(const plot *p, range *y) {
 static int lay_out(const plot *p, frame *f) {
     range x, y;
     *f = (frame){
-        .left = 58, .right = p->width - 20.0, .top = 50, .bottom = p->height - (p->names ? 60.0 : 46.0)
+        .left = 58, .right = p->width - 20.0, .top = p->no_legend ? 30 : 50, .bottom = p->height - (p->names ? 60.0 : 46.0)
     };
     f->log_y = p->log_y;
     if (!find_ranges(p, &x, &y)) return 0;
@@ -208,7 +208,7 @@ static void draw_x_axis(const plot *p, const frame *f, textbuf *out) {
     if (p->names) {
         draw_names(p, f, out);
     } else {
-        size_t room = (size_t)fmin(MAX_TICKS, fmax(3.0, (f->right - f->left) / 58.0));
+        size_t room = (size_t)fmin(MAX_TICKS, fmax(3.0, (f->right - f->left) / 44.0));
         size_t n = plot_ticks(f->x_lo, f->x_hi, room, tick);
         for (size_t i = 0; i < n; i++) {
             double x = at_x(f, tick[i]);
@@ -353,6 +353,6 @@ void plot_svg(const plot *given, textbuf *out) {
             draw_points(&p, &p.series[i], &f, out);
         else
             draw_curve(&p.series[i], &f, out);
-    draw_legend(&p, &f, out);
+    if (!p.no_legend) draw_legend(&p, &f, out);
     text_add(out, "</svg>\n");
 }

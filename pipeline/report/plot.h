@@ -38,10 +38,15 @@ typedef struct {
     const plot_series *series;
     size_t n_series;
     int width, height; /* of the view box, px; 0: 720 x 320 */
+    int no_legend;     /* the page says once for many charts what their lines are */
 } plot;
 
 /* Appends one <svg> element; failure is remembered in `out` (text_check). Without any finite value the chart says so. */
 void plot_svg(const plot *p, textbuf *out);
+
+/* The same values as a folded table, one line a point: series, x, y and the ends of its band or bar. Series before `first`
+ * and points without a value are left out; `first` keeps a reference that many charts share from being told again. */
+void plot_table(const plot *p, size_t first, textbuf *out);
 
 /* Up to `max` round ticks (1, 2, 5 x 10^k) that cover lo..hi from inside; returns how many. For tests and for maps. */
 size_t plot_ticks(double lo, double hi, size_t max, double *ticks);

@@ -42,9 +42,9 @@ void samples_csv(const results *r, textbuf *out);
 void spectra_csv(const results *r, textbuf *out);
 void results_json(const results *r, textbuf *out);
 
-/* report.html, self-contained: styles, charts and overlays (box-averaged to at most 640 px) are inside, nothing is
- * fetched, nothing needs a script. An overlay that cannot be read leaves a sentence in its place.
- *   in   out_dir exists and holds the overlays that overlay_paths names
+/* report.html, self-contained: styles, charts and small overlays are inside, nothing is fetched, nothing needs a script. An
+ * overlay or a table that cannot be read leaves a sentence in its place.
+ *   in   out_dir exists and holds the overlays that overlay_paths names, and features/ and profiles/ of image_stems
  *   err  ST_IO report.html cannot be written; ST_NO_MEMORY */
 status report_write(const results *r, const char *out_dir, error *e);
 

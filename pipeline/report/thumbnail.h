@@ -14,16 +14,16 @@ status box_average(const uint8_t *rgb, size_t nx, size_t ny, size_t width, uint8
                    error *e);
 
 typedef struct {
-    uint8_t *png; /* owned */
+    uint8_t *jpeg; /* owned */
     size_t n, nx, ny;
-} small_png; /* {0} = empty */
+} small_picture; /* {0} = empty */
 
-/* Reads a PNG and makes two copies with 24 levels per channel: the whole averaged to at most `width` columns, and the
- * middle at full resolution, at most detail_nx x detail_ny.
- *   out  free both with small_png_free, also after a failure
+/* Reads a PNG and makes two JPEG copies: the whole averaged to at most `width` columns, and the middle at full resolution,
+ * at most detail_nx x detail_ny (0: none).
+ *   out  free both with small_picture_free, also after a failure
  *   err  ST_IO not readable; ST_BAD_INPUT no PNG; ST_NO_MEMORY */
-status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t detail_ny, small_png *whole,
-                      small_png *detail, error *e);
-void small_png_free(small_png *s);
+status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t detail_ny, small_picture *whole,
+                      small_picture *detail, error *e);
+void small_picture_free(small_picture *s);
 
 #endif

@@ -34,7 +34,8 @@ static void check_page(demo *d, const char *dir) {
     CHECK(strstr(page,
                  "1.2346 <span class=\"u\">(1.01 to 1.72)</span>")); /* the digits of 0.012346, in percent */
     CHECK(strstr(page, "280 to 420 <span class=\"unit\">nm</span>"));
-    CHECK(strstr(page, "inside &lt;280..420&gt; nm"));
+    CHECK(strstr(page, "Verdict as in samples.csv: inside &lt;280..420&gt; nm"));
+    CHECK(strstr(page, "1 of 2 samples conform; 1 undecided.</p>"));
     /* hostile names stay text */
     CHECK(!strstr(page, "<img src=x") && !strstr(page, "<grass>") && !strstr(page, "<c.tif>") &&
           !strstr(page, "<b>ab"));
@@ -55,7 +56,7 @@ static void check_page(demo *d, const char *dir) {
     CHECK(
         strstr(page, "<strong>Not used:</strong> <a href=\"#micrograph-2\">b.png</a> (<span class=\"flag\""));
     CHECK(strstr(page, "<a href=\"#micrograph-3\">c.tif</a> (the file ends after 12 bytes).</p>"));
-    CHECK(strstr(page, "<pre>1 of 2 samples conforms.\nRe-take &lt;c.tif&gt;.</pre>"));
+    CHECK(strstr(page, "<pre tabindex=\"0\">1 of 2 samples conforms.\nRe-take &lt;c.tif&gt;.</pre>"));
     /* structure: every column explained once, table headers with scope, one h1 */
     CHECK(count_of(page, "<h1>") == 1 && !strstr(page, "<th>Column"));
     CHECK(strstr(page, "<code>weighted_reflectance</code>") && strstr(page, "Front surface only."));
@@ -116,8 +117,8 @@ static void check_picture(demo *d, const char *dir) {
     d->r.overlay_paths = paths;
     char *page = page_of(&d->r, dir);
     d->r.overlay_paths = NULL;
-    CHECK(strstr(page, "<img width=\"524\" height=\"42\"") &&
-          strstr(page, "data:image/png;base64,iVBORw0KGgo"));
+    CHECK(strstr(page, "<a href=\"./o.png\"><img width=\"524\" height=\"42\"") &&
+          strstr(page, "data:image/jpeg;base64,/9j/"));
     CHECK(strstr(page, "The overlay could not be read: ") && strstr(page, "no overlay"));
     free(page);
     if (path) remove(path);

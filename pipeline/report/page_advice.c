@@ -1,0 +1,119 @@
+/* What to do next, in plain words: for every micrograph that was not used the remedy of its reason, for every missed or
+ * undecided target what its own uncertainty budget suggests, and for an assumed height the one measurement that matters
+ * most. Advice about the measurement, never a recipe for the process. */
+#include <cjson/cJSON.h>
+#include <string.h>
+
+#include "base/flags.h"
+#include "report/html.h"
+#include "report/page.h"
+
+static const struct {
+    int bit;
+    const char *todo;
+} remedy[] = {
+    { FLAG_BIT_NO_PIXEL_SIZE, "give the pixel size (px_nm in samples.csv, or --px) and run again; nothing needs to be re-taken" },
+    { FLAG_BIT_FEW_PIXELS, "re-take at a higher magnification, at least 10 px per spacing" },
+    { FLAG_BIT_FEW_FEATURES, "re-take at a lower magnification, 15 to 30 spacings across" },
+    { FLAG_BIT_NO_RING, "look at the picture: another spot or a focus problem? Re-take; if it looks the same, the texture has no spacing" },
+    { FLAG_BIT_BLURRED, "refocus and correct the astigmatism, then re-take" },
+    { FLAG_BIT_CLIPPED, "lower the contrast or shift the brightness, then re-take" },
+    { FLAG_BIT_NOISY, "scan slower or average more frames, then re-take" },
+    { FLAG_BIT_STREAKS, "charging: lower the voltage or scan faster with averaging, then re-take" },
+    { FLAG_BIT_DRIFT, "wait until the stage is still, then re-take" },
+    { FLAG_BIT_TILTED, "take the view from straight above, or say the tilt" },
+    { FLAG_BIT_FEATURELESS, "the field shows nothing: check detector and spot, then re-take" },
+};
+enum { REMEDIES = sizeof remedy / sizeof remedy[0], MOST = 12 };
+
+static int has_word(const char *text, const char *word) {
+    size_t n = strlen(word);
+    for (const char *p = text; p && (p = strstr(p, word)); p += n)
+        if ((p == text || p[-1] == ' ') && (!p[n] || p[n] == ' ')) return 1;
+    return 0;
+}
+
+static const char *remedy_of(const image_row *m) {
+    for (size_t k = 0; k < REMEDIES; k++)
+        if (has_word(m->reason, flag_word(remedy[k].bit))) return remedy[k].todo;
+    return m->status && !strcmp(m->status, "unreadable") ? "the file cannot be read: save or copy it again" : NULL;
+}
+
+static void advise_pictures(const results *r, size_t *n, textbuf *out) {
+    size_t more = 0;
+    for (size_t i = 0; i < r->n_images; i++) {
+        const image_row *m = &r->images[i];
+        const char *todo = m->status && strcmp(m->status, "ok") ? remedy_of(m) : NULL;
+        if (!todo) continue;
+        if (*n >= MOST) {
+            more++;
+            continue;
+        }
+        ++*n;
+        text_addf(out, "<li><a href=\"#micrograph-%zu\">", i + 1);
+        html_text(out, m->file);
+        text_addf(out, "</a>: %s.</li>\n", todo);
+    }
+    if (more) text_addf(out, "<li>%zu more micrographs were not used; their cards below say what helps.</li>\n", more);
+}
+
+/* The budget's own answer to "would more micrographs decide it?" */
+static const char *what_narrows(const results *r, size_t sample, const char *quantity) {
+    cJSON *o = page_members(r->sample_json ? r->sample_json[sample] : NULL);
+    const cJSON *budget = cJSON_GetObjectItemCaseSensitive(o, "budget");
+    const char *name = !strcmp(quantity, "spacing_nm") ? "spacing_acf_nm" : quantity;
+    const cJSON *q = cJSON_GetObjectItemCaseSensitive(budget, name);
+    const cJSON *sampling = cJSON_GetObjectItemCaseSensitive(q, "sampling"), *all = cJSON_GetObjectItemCaseSensitive(q, "combined");
+    const char *answer = NULL;
+    if (!strcmp(quantity, "weighted_reflectance"))
+        answer = "its interval is the model's and the height's: measure the height in a cross-section, or the reflectance itself";
+    else if (cJSON_IsNumber(sampling) && cJSON_IsNumber(all))
+        answer = sampling->valuedouble * sampling->valuedouble > 0.5 * all->valuedouble * all->valuedouble
+                     ? "take more micrographs: most of its uncertainty is sampling"
+                     : "more micrographs will not decide it, method and pixel size rule its uncertainty; to compare like with like "
+                       "set \"error\": \"repeat\" in the target";
+    cJSON_Delete(o);
+    return answer;
+}
+
+static void advise_sample(const results *r, size_t i, size_t *n, textbuf *out) {
+    const sample_row *s = &r->samples[i];
+    for (size_t k = 0; k < r->n_targets; k++) {
+        textbuf name = { 0 };
+        text_addf(&name, "verdict_%s", r->target_quantity[k]);
+        const char *word = name.failed ? NULL : page_extra(r, s, name.s);
+        text_free(&name);
+        const char *todo = word && !strcmp(word, "fails")
+                               ? "look at its micrographs, then at its place on the wafer and in the series: one spot, one wafer or a trend?"
+                           : word && !strcmp(word, "undecided") ? what_narrows(r, i, r->target_quantity[k])
+                                                                : NULL;
+        if (!todo || *n >= MOST) continue;
+        ++*n;
+        text_addf(out, "<li><a href=\"#sample-%zu\">", i + 1);
+        html_text(out, s->sample);
+        text_addf(out, "</a>, %s %s: %s%s</li>\n", page_quantity(r->target_quantity[k]),
+                  !strcmp(word, "fails") ? "outside its target" : "undecided", todo, !strcmp(word, "fails") ? "" : ".");
+    }
+}
+
+void page_advice(const results *r, textbuf *out) {
+    textbuf list = { 0 };
+    size_t n = 0, assumed = 0;
+    for (size_t i = 0; i < r->n_samples; i++) {
+        advise_sample(r, i, &n, &list);
+        assumed += (size_t)has_word(r->samples[i].flags, flag_word(FLAG_BIT_HEIGHT_ASSUMED));
+    }
+    advise_pictures(r, &n, &list);
+    if (assumed)
+        text_addf(&list, "<li>%zu of %zu samples rest on an assumed height: one cross-section (height_nm and height_nm_u in "
+                         "samples.csv) turns their reflectance from a scenario into a prediction.</li>\n", assumed, r->n_samples);
+    if (!r->n_targets && r->n_samples)
+        text_add(&list, "<li>Name targets in protocol.json to get verdicts.</li>\n");
+    if (list.failed) out->failed = 1;
+    if (list.n) {
+        text_add(out, "<h2 class=\"quiet\">What to do next</h2>\n<ul class=\"todo\">\n");
+        text_add_n(out, list.s, list.n);
+        text_add(out, "</ul>\n");
+    }
+    text_free(&list);
+}
