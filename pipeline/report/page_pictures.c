@@ -74,7 +74,7 @@ static void add_fact(textbuf *out, const image_row *m, const char *name, const c
 
 static void add_image(textbuf *out, const small_picture *p, const char *lead, const char *file,
                       const char *tail) {
-    text_addf(out, "<img width=\"%zu\" height=\"%zu\" loading=\"lazy\" alt=\"%s", p->nx, p->ny, lead);
+    text_addf(out, "<img width=\"%zu\" height=\"%zu\" alt=\"%s", p->nx, p->ny, lead);
     html_text(out, file);
     text_addf(out, "%s\" src=\"data:image/jpeg;base64,", tail);
     text_base64(out, p->jpeg, p->n);
