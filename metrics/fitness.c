@@ -35,7 +35,7 @@ measure_options measure_defaults(void) {
         .relief = RELIEF_AUTO,
         .min_px_per_spacing = 8.0, /* at 6 px the density is 5 % off, at 8 px 1 % */
         .warn_px_per_spacing = 12.0,
-        .min_features = 50.0, /* sampling sd of the density 5 % */
+        .min_features = 50.0, /* in the whole field: sampling sd of the density 5 % */
         .warn_features = 200.0,
         .max_blur = 0.25, /* spacings: close features merge and the count drops */
         .warn_blur = 0.12,
@@ -349,7 +349,8 @@ static void judge_blur(const sharpness *s, double d, const measure_options *o, t
 void fitness_judge(const sharpness *s, const plane *p, const measure_options *o, texture *t) {
     const double noise_at_px = 24.0; /* spacing at which the limits of noise hold */
     const double random_order = 1.3; /* Clark-Evans index below which a missing ring means random placement */
-    double d = t->spacing_hex.value, n = (double)t->n_features;
+    double d = t->spacing_hex.value;
+    double n = fmax((double)t->n_found, (double)t->n_features); /* of the whole field, guard included */
     t->sharpness = (measured){ s->blur_sd_px, MISSING, isfinite(d) ? 0.03 * d : MISSING, t->n_features };
     t->noise_rel = (measured){ s->noise_sd / s->texture_sd, MISSING, 0.0, p->nx * p->ny };
     if (!(s->texture_sd > 0.0)) t->noise_rel.value = MISSING;
