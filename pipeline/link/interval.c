@@ -61,6 +61,14 @@ static status spectrum(workspace *w, const variant *v, double *R, error *e) {
 
 /* ---- what was calculated case by case ---- */
 
+/* 1: by its currents this is AM1.5G (46.456 and 38.061 mA/cm2 up to 1200 and 1000 nm, ASTM G173-03), not an own lamp. */
+static int is_am15g(const sun *s) {
+    double red = 0.0, all = 0.0;
+    error ignored = { 0 };
+    return sun_current(s, 300.0, 1200.0, &all, &ignored) == ST_OK && sun_current(s, 300.0, 1000.0, &red, &ignored) == ST_OK &&
+           fabs(all - 46.456) < 0.1 && fabs(red - 38.061) < 0.1;
+}
+
 /* 1: the weighted table was made for this. */
 static int studied(const workspace *w) {
     const optics_setup *o = w->o;
@@ -70,7 +78,7 @@ static int studied(const workspace *w) {
     int surface = !w->in->measured && !w->in->pores && !o->n_coatings && !(l->coverage < 1.0) &&
                   !(fabs(l->height_by_size) > 0.0) && w->central->exponent >= 0.8 && w->central->exponent <= 2.5 &&
                   !strncmp(o->substrate->name ? o->substrate->name : "", "silicon", 7) && fabs(ambient_index(o) - 1.0) < 0.01;
-    return light && surface && w->in->spacing_nm.value > 0.0 && w->in->spacing_nm.value < GENERAL_NM;
+    return light && surface && w->in->spacing_nm.value > 0.0 && w->in->spacing_nm.value < GENERAL_NM && is_am15g(o->sun);
 }
 
 /* Weighted truth of a graded index value, and its standard uncertainty (u may be NULL). */

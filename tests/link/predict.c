@@ -102,6 +102,28 @@ static void budget(void) {
     prediction_free(&plain);
 }
 
+/* The sharp interval is made for AM1.5G from 300 to 1200 nm: another sun or band gets the general, wider one. */
+static void sharp(void) {
+    optics_setup o = setup();
+    surface_input in = cones(350.0, 290.0);
+    prediction own = ask(&in, &o), p;
+    double ends[2] = { 250.0, 1300.0 }, even[2] = { 1.0, 1.0 };
+    sun lamp = { 0 };
+    error e = { 0 };
+    CHECK(sun_make(&lamp, "a lamp", 2, ends, even, &e) == ST_OK);
+    o.sun = &lamp;
+    p = ask(&in, &o);
+    CHECK(p.weighted_hi - p.weighted_lo > 1.3 * (own.weighted_hi - own.weighted_lo));
+    prediction_free(&p);
+    sun_free(&lamp);
+    o = setup();
+    o.band_hi_nm = 1190.0;
+    p = ask(&in, &o);
+    CHECK(p.weighted_hi - p.weighted_lo > 1.3 * (own.weighted_hi - own.weighted_lo));
+    prediction_free(&p);
+    prediction_free(&own);
+}
+
 static void mixings(void) {
     optics_setup o = setup();
     surface_input in = cones(300.0, 290.0);
@@ -260,6 +282,7 @@ int main(void) {
           material_constant(&air, 1.0, 0.0, &e) == ST_OK);
     usual();
     budget();
+    sharp();
     mixings();
     planar();
     refused();
