@@ -23,6 +23,7 @@ typedef struct {
     double cell_ecd_px;    /* 2 sqrt(area / pi) */
     double top_ecd_px;     /* part of the cell above half height */
     double feret_max_px, feret_min_px; /* of the cell, from pixel corners (pixels are squares) */
+    double perimeter_px;   /* of the cell, by intercept counts in four directions (Crofton) */
     double nn_px;          /* nearest neighbour over all features; NAN when there is none */
     double weight;         /* border weight (Miles-Lantuejoul); 0: the cell touches the frame and is left out */
     int box_x0, box_y0, box_x1, box_y1; /* bounding box of the cell, inclusive */

@@ -13,7 +13,7 @@
 #include "base/text.h"
 #include "io/file.h"
 
-static const char head[] = "sward texture 2\n";
+static const char head[] = "sward texture 3\n";
 enum { HASH = 64 };
 
 /* Either appends to `out` or takes from bytes[at..n). */
@@ -47,7 +47,7 @@ static void pass_int(stream *s, int *v) { pass(s, v, sizeof *v); }
 
 static void pass_feature(stream *s, feature *f) {
     double *numbers[] = { &f->x, &f->y, &f->response, &f->cell_area_px2, &f->cell_ecd_px, &f->top_ecd_px,
-                          &f->feret_max_px, &f->feret_min_px, &f->nn_px, &f->weight };
+                          &f->feret_max_px, &f->feret_min_px, &f->perimeter_px, &f->nn_px, &f->weight };
     int *whole[] = { &f->box_x0, &f->box_y0, &f->box_x1, &f->box_y1, &f->n_neighbours, &f->in_guard };
     for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) pass_number(s, numbers[i]);
     for (size_t i = 0; i < sizeof whole / sizeof whole[0]; i++) pass_int(s, whole[i]);

@@ -12,6 +12,7 @@
 #include "io/json.h"
 #include "io/load.h"
 #include "io/png_write.h"
+#include "metrics/sizedist.h"
 #include "metrics/uncertainty.h"
 #include "report/overlay.h"
 #include "report/results.h"
@@ -64,6 +65,8 @@ static void features_text(const texture *t, double px_nm, textbuf *out, int *no_
                                  .feret_max_nm = f->feret_max_px * px_nm,
                                  .feret_min_nm = f->feret_min_px * px_nm,
                                  .aspect = f->feret_max_px / f->feret_min_px,
+                                 .perimeter_nm = f->perimeter_px * px_nm,
+                                 .circularity = 4.0 * PI * f->cell_area_px2 / (f->perimeter_px * f->perimeter_px),
                                  .nn_nm = f->nn_px * px_nm,
                                  .border_weight = f->weight,
                                  .n_neighbours = f->n_neighbours,
@@ -75,15 +78,19 @@ static void features_text(const texture *t, double px_nm, textbuf *out, int *no_
 
 /* A curve over px turns into one over nm (or 1/um) where the pixel size is known. */
 static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_memory) {
+    enum { DENSITY_POINTS = 101 };
     size_t n = 0, k = 0;
     for (size_t c = 0; c < t->n_curves; c++) n += t->curves[c].n;
-    profile_row *rows = mem_array(n, sizeof *rows);
-    if (!rows) {
+    profile_row *rows = mem_array(n + DENSITY_POINTS, sizeof *rows);
+    double sizes[DENSITY_POINTS], density[DENSITY_POINTS];
+    size_summary s = { 0 };
+    if (!rows || size_summarise(t, &s, NULL) != ST_OK || size_density(t, &s, sizes, density, DENSITY_POINTS, NULL) != ST_OK) {
+        free(rows);
         *no_memory = 1;
         return;
     }
     static char names[][20] = { "acf", "acf_curvature", "psd_curvature", "pair_correlation", "curve" };
-    static char nm[] = "nm", per_um[] = "1/um", px[] = "px", per_px[] = "1/px", nm2[] = "nm2", px2[] = "px2", one[] = "1";
+    static char size_name[] = "size_density", per_nm[] = "1/nm", nm[] = "nm", per_um[] = "1/um", px[] = "px", per_px[] = "1/px", nm2[] = "nm2", px2[] = "px2", one[] = "1";
     int scaled = isfinite(px_nm);
     for (size_t c = 0; c < t->n_curves; c++) {
         const curve *from = &t->curves[c];
@@ -96,7 +103,10 @@ static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_
         for (size_t i = 0; i < from->n; i++)
             rows[k++] = (profile_row){ names[name], from->points[i].x * sx, x_unit, from->points[i].y * sy, y_unit };
     }
-    profiles_csv(rows, n, out);
+    for (size_t i = 0; s.bandwidth > 0.0 && i < DENSITY_POINTS; i++)
+        rows[k++] = (profile_row){ size_name, scaled ? sizes[i] * px_nm : sizes[i], scaled ? nm : px, scaled ? density[i] / px_nm : density[i],
+                                   scaled ? per_nm : per_px };
+    profiles_csv(rows, k, out);
     free(rows);
 }
 
@@ -231,6 +241,45 @@ static status fill_row(examined *x, const micrograph *m, const texture *t, doubl
     return ST_OK;
 }
 
+/* "sizes": moment means, area weighting, fit, shape, order; lengths in nm, null without a pixel size. */
+static status sizes_json(const texture *t, double px_nm, textbuf *j, error *e) {
+    size_summary s;
+    status st = size_summarise(t, &s, e);
+    if (st != ST_OK) return st;
+    const struct {
+        const char *name;
+        double v;
+    } members[] = { { "mean_1_0_nm", s.d10 * px_nm },
+                    { "mean_2_0_nm", s.d20 * px_nm },
+                    { "mean_3_0_nm", s.d30 * px_nm },
+                    { "mean_2_1_nm", s.d21 * px_nm },
+                    { "mean_3_2_nm", s.d32 * px_nm },
+                    { "mean_4_3_nm", s.d43 * px_nm },
+                    { "area_d10_nm", s.area_d10 * px_nm },
+                    { "area_d50_nm", s.area_d50 * px_nm },
+                    { "area_d90_nm", s.area_d90 * px_nm },
+                    { "span", s.span },
+                    { "lognormal_median_nm", s.lognormal_median * px_nm },
+                    { "lognormal_gsd", s.lognormal_gsd },
+                    { "lognormal_a2", s.a2 },
+                    { "density_bandwidth_nm", s.bandwidth * px_nm },
+                    { "circularity", s.circularity },
+                    { "aspect", s.aspect },
+                    { "psi6", s.psi6 } };
+    text_addf(j, "\"sizes\": {\"n\": %zu", s.n);
+    for (size_t i = 0; i < sizeof members / sizeof members[0]; i++) {
+        text_addf(j, ", \"%s\": ", members[i].name);
+        json_number(j, members[i].v, 5);
+    }
+    text_add(j, ", \"neighbour_shares\": [");
+    for (int k = 0; k < NEIGHBOUR_BINS; k++) {
+        text_addf(j, "%s", k ? ", " : "");
+        json_number(j, s.neighbours[k], 4);
+    }
+    text_add(j, "]}");
+    return ST_OK;
+}
+
 static status fill_json(examined *x, const micrograph *m, const texture *t, error *e) {
     textbuf j = { 0 };
     double px = m->px_nm;
@@ -250,6 +299,8 @@ static status fill_json(examined *x, const micrograph *m, const texture *t, erro
     json_number(&j, t->relief_skew, 4);
     text_add(&j, ", \"lognormal_anderson_darling\": ");
     json_number(&j, t->lognormal_ad, 4);
+    text_add(&j, ", ");
+    status st = sizes_json(t, px, &j, e);
     if (x->overlay) {
         text_add(&j, ", \"overlay\": ");
         json_string(&j, x->overlay);
@@ -257,7 +308,7 @@ static status fill_json(examined *x, const micrograph *m, const texture *t, erro
     x->json = j.s;
     x->detail = mem_text(m->note);
     if (!x->detail) return NO_MEMORY(e, "a row");
-    return text_check(&j, "a row", e);
+    return st == ST_OK ? text_check(&j, "a row", e) : st;
 }
 
 /* A file without a plane: the sentence is the reason. */
