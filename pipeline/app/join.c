@@ -252,9 +252,10 @@ static void prediction_json(const prediction *d, textbuf *members) {
     text_add(members, "}");
 }
 
-static status fingerprint(const sample_group *g, const examined *all, const char *basis, char out[65], error *e) {
+static status fingerprint(const sample_group *g, const examined *all, size_t n_extra, const char *basis, char out[65], error *e) {
     textbuf t = { 0 };
     text_addf(&t, "%s|%s|%s|%.17g|%.17g", basis, g->name, g->etched_at, g->height_nm.value, g->height_nm.u);
+    for (size_t k = 0; g->extra && k < n_extra; k++) text_addf(&t, "|%s", g->extra[k]); /* the history keeps these too */
     for (size_t i = 0; i < g->n_members; i++) {
         const examined *x = &all[g->members[i]];
         text_addf(&t, "|%s|%d|%.17g", x->hash, enters(g, all, i), x->row.px_nm);
@@ -319,7 +320,7 @@ status join_sample(const sample_group *g, const examined *all, const protocol *p
         text_add(&members, ", ");
         st = judge_sample(p, f, &spacing, &made, &members, e);
     }
-    if (st == ST_OK) st = fingerprint(g, all, basis, made.fingerprint, e);
+    if (st == ST_OK) st = fingerprint(g, all, n_extra, basis, made.fingerprint, e);
     if (st == ST_OK) {
         r->flags = mem_text(flags_text(seen, words, sizeof words));
         if (!r->height_source) r->height_source = mem_text("");

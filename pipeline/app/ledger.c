@@ -3,6 +3,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "app/process.h"
 #include "base/mem.h"
 #include "io/file.h"
 #include "io/json.h"
@@ -11,19 +12,43 @@
 void ledger_free(ledger_result *r) {
     free(r->path);
     free(r->json);
+    free(r->process);
     *r = (ledger_result){ 0 };
 }
 
-/* The samples.csv row as one JSON object, in an array of its own. */
-static status rows_json(const joined *samples, size_t n, char **out, error *e) {
+static const char *extra_cell(const void *row, size_t k) {
+    const sample_row *r = row;
+    return k < r->n_extra ? r->extra[k] : NULL;
+}
+
+/* Names of the columns behind the fixed ones: verdicts, then what the sheet carries along. */
+static status extra_names(const protocol *p, const sheet *columns, char **names, error *e) {
     status st = ST_OK;
+    for (size_t i = 0; st == ST_OK && i < p->n_targets + columns->n_extra; i++) {
+        textbuf name = { 0 };
+        if (i < p->n_targets) text_addf(&name, "verdict_%s", p->targets[i].quantity);
+        else text_add(&name, columns->extra_names[i - p->n_targets]);
+        st = text_check(&name, "the history", e);
+        names[i] = name.s;
+    }
+    return st;
+}
+
+/* The samples.csv row as one JSON object, in an array of its own. */
+static status rows_json(const joined *samples, size_t n, const protocol *p, const sheet *columns, char **out, error *e) {
+    size_t n_extra = p->n_targets + columns->n_extra;
+    char **names = mem_array(n_extra, sizeof *names);
+    status st = names ? extra_names(p, columns, names, e) : NO_MEMORY(e, "the history");
     for (size_t i = 0; st == ST_OK && i < n; i++) {
         textbuf t = { 0 };
-        table_view view = { sample_columns, n_sample_columns, &samples[i].row, 1, sizeof samples[i].row, NULL, 0, NULL };
+        table_view view = { sample_columns, n_sample_columns, &samples[i].row, 1, sizeof samples[i].row,
+                            (const char *const *)names, n_extra, extra_cell };
         table_row_to_json(&view, 0, &t);
         st = text_check(&t, "a row of the history", e);
         out[i] = t.s;
     }
+    for (size_t i = 0; names && i < n_extra; i++) free(names[i]);
+    free(names);
     return st;
 }
 
@@ -38,7 +63,7 @@ static void series_json(const history_list *l, textbuf *t) {
     text_add(t, "[");
     for (size_t i = 0; i < l->n; i++) {
         const history_row *r = &l->rows[i];
-        if (superseded(l, i)) continue;
+        if (superseded(l, i) || r->excluded[0]) continue;
         text_addf(t, "%s{\"sample\": ", separator);
         json_string(t, r->sample);
         text_add(t, ", \"lot\": ");
@@ -68,14 +93,15 @@ static history_row entry(const joined *j, const protocol *p, const char *run_at,
                           .weighted_reflectance = r->weighted_reflectance, .verdict = r->verdict, .row_json = row_json };
 }
 
-status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p,
+status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p, const sheet *columns,
                    const joined *samples, size_t n, ledger_result *result, error *e) {
     history *h = NULL;
     history_list list = { 0 };
+    history_notes notes = { 0 };
     history_row *rows = mem_array(n, sizeof *rows);
     char **row_json = mem_array(n, sizeof *row_json);
-    textbuf series = { 0 };
-    status st = rows && row_json ? rows_json(samples, n, row_json, e) : NO_MEMORY(e, "the history");
+    textbuf series = { 0 }, process = { 0 };
+    status st = rows && row_json ? rows_json(samples, n, p, columns, row_json, e) : NO_MEMORY(e, "the history");
     result->stays_with_output = !path;
     result->path = path ? mem_text(path) : path_join(out, "history.sqlite");
     if (st == ST_OK && !result->path) st = NO_MEMORY(e, "a path");
@@ -90,6 +116,14 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
         result->json = series.s;
         series = (textbuf){ 0 };
     }
+    if (st == ST_OK) st = history_notes_read(h, &notes, e);
+    if (st == ST_OK) st = process_sentences(&list, &notes, p, &process, e);
+    if (st == ST_OK) {
+        result->process = process.s;
+        process = (textbuf){ 0 };
+    }
+    text_free(&process);
+    history_notes_free(&notes);
     history_list_free(&list);
     history_close(h);
     text_free(&series);

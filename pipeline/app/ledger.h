@@ -6,14 +6,15 @@
 typedef struct {
     char *path;        /* of the ledger */
     char *json;        /* array of {sample, etched_at, spacing_nm, spacing_nm_u, weighted_reflectance, verdict} in time
-                          order, one entry per sample: its newest run */
+                          order, one entry per sample: its newest run; excluded etches are left out */
+    char *process;     /* what the history says of the process, lines; NULL: too few etches */
     size_t added, total;
     int stays_with_output; /* no place was named: the ledger lies in OUT */
 } ledger_result;
 
-/* Adds every sample once and reads the ledger back. `path` NULL: OUT/history.sqlite.
+/* Adds every sample once, the sheet's carried-along columns included, and reads the ledger back. `path` NULL: OUT/history.sqlite.
  * err ST_IO, ST_NO_MEMORY; ST_BAD_INPUT the file is no ledger */
-status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p,
+status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p, const sheet *columns,
                    const joined *samples, size_t n, ledger_result *result, error *e);
 void ledger_free(ledger_result *r);
 

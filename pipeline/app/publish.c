@@ -257,6 +257,7 @@ status publish(const publication *p, error *e) {
     if (st == ST_OK) {
         write_manifest(p, &m.manifest);
         summary_text(p, &m.summary);
+        if (p->ledger->process) text_add(&m.note, p->ledger->process);
         if (p->ledger->stays_with_output)
             text_add(&m.note, "The history lies with this output (history.sqlite); name one place for it in the protocol "
                               "(\"history\") or with --history so that later runs add to it.");

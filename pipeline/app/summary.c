@@ -61,6 +61,7 @@ void summary_text(const publication *p, textbuf *out) {
         text_add(out, ". No targets: name them in the protocol to get verdicts.\n");
     text_addf(out, "  %-*s  %-20s  %-28s  %s\n", width, "sample", "spacing (k = 2)", "weighted reflectance (95 %)", "verdict");
     for (size_t k = 0; k < p->n_groups; k++) one_sample(p, k, width, out);
+    if (p->ledger->process) text_addf(out, "The process, by the history:\n%s", p->ledger->process);
     if (ok < p->folder->n) {
         text_add(out, "Not used:\n");
         unusable(p, out);

@@ -1,0 +1,32 @@
+/* The verbs of `sward history` that compute. Each writes its answer into a text; cmd_history.c opens the ledger and prints. */
+#ifndef SWARD_APP_HISTORY_VERBS_H
+#define SWARD_APP_HISTORY_VERBS_H
+#include "base/text.h"
+#include "judge/chart.h"
+#include "judge/history.h"
+
+typedef struct {
+    const history_list *rows;
+    const history_notes *notes;
+    const char *quantity;     /* of samples.csv */
+    chart_options options;    /* of a chart */
+    double min, max, target;  /* NAN unknown */
+    int subgroups, json;
+} history_question;
+
+/* The series with limits, alarms in words, drift and capability of the newest phase.
+ *   err  ST_BAD_INPUT no such quantity, bad options, an empty history; ST_IO a damaged row; ST_NO_MEMORY */
+status history_chart(const history_question *q, textbuf *out, error *e);
+/* b against a: two lots, or two values of the sheet column `recipe`, whichever they are.
+ *   err  as above; ST_BAD_INPUT no such lot or recipe; ST_NO_RESULT too few samples */
+status history_change(const history_question *q, const char *a, const char *b, textbuf *out, error *e);
+/* The straight line of the quantity on a numeric column, and the setting that reaches the target if one is given.
+ *   err  as above; ST_NO_RESULT too few samples, or all at one setting */
+status history_setting(const history_question *q, const char *setting, textbuf *out, error *e);
+/* Are the micrographs behind the results in `dir` still the ones that were measured? Compares SHA-256 with results.json.
+ *   in   folder NULL: where run.json says they were
+ *   out  *unlike files that are gone or differ
+ *   err  ST_BAD_INPUT no results there; ST_IO; ST_NO_MEMORY */
+status history_verify(const char *dir, const char *folder, textbuf *out, size_t *unlike, error *e);
+
+#endif
