@@ -1,8 +1,8 @@
 /* What a fit's numbers mean, in sentences: which parameters the data do not tell, which cannot be told apart, whether
  * the model describes the spectra, and whether it may at all.
  *
- * Not determined: expanded uncertainty (twice u) above a fifth of the height, a third of the exponent, 0.1 in spread or
- * floor share, 0.01 in offset. Not to be told apart: then also a correlation of 0.9 or more with another parameter.
+ * Not determined: expanded uncertainty (twice u) above a twentieth of the height, an eighth of the exponent, 0.1 in
+ * spread or floor share, 0.01 in offset. Not to be told apart: then also a correlation of 0.9 or more with another one.
  * Below that, from 0.95 on, two parameters are known but not one without the other. */
 #include <math.h>
 
@@ -18,9 +18,9 @@ static const double ALTERNATIVE =
 static double tells(const fit_number *v) {
     switch (v->kind) {
     case FIT_HEIGHT:
-        return 0.2 * v->value;
+        return v->value / 20.0;
     case FIT_EXPONENT:
-        return v->value / 3.0;
+        return v->value / 8.0;
     case FIT_OFFSET:
         return 0.01;
     default:

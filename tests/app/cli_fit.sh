@@ -24,7 +24,7 @@ says "$out" '"correlation": [' '"covariance": [' '"remarks": [' '"residual": '
 near exponent 1.3 0.04
 near offset 0.002 0.0005
 near aspect 1.118 0.03354
-run 0 fit --spacing 220 W1.csv --csv
+run 0 fit --spacing 220 --shape 1.3 W1.csv --csv
 says "$out" "sample,wavelength_nm,measured,fitted,residual" "W1,300," "W1,1000,"
 
 # Three samples of one run; the same file on every call.
