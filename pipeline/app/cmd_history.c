@@ -23,7 +23,7 @@ static const struct argp_option history_options[] = {
     { "history",   OPT_HISTORY,   "FILE", 0, "the ledger (default: " DEFAULT_LEDGER ")", 0 },
     { "since",     OPT_SINCE,     "T",    0, "only etches at or after this time (ISO 8601)", 0 },
     { "lot",       OPT_LOT,       "L",    0, "only this lot", 0 },
-    { "json",      OPT_JSON,      NULL,   0, "JSON; the list: rows as in samples.csv with run_at", 0 },
+    { "json",      OPT_JSON,      NULL,   0, "JSON; the list: rows as in samples.csv with run_at and excluded", 0 },
     { "csv",       OPT_CSV,       NULL,   0, "the list as CSV", 0 },
     { "rules",     OPT_RULES,     "LIST", 0, "chart: pattern tests, joined by commas: zone (default, with spread), iso, nelson, limits, none, or beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7; spread and ewma are charts of their own", 0 },
     { "baseline",  OPT_BASELINE,  "N",    0, "chart: the first N etches of a phase set its limits, 0 = all (default 20)", 0 },
@@ -141,8 +141,8 @@ const struct argp history_argp = {
     NULL
 };
 
-/* The rows as a table: every key of any row_json is a column, in the order of first appearance, run_at behind
- * etched_at. Used for CSV only; JSON passes the stored objects through. */
+/* The rows as a table: every key of any row_json is a column, in the order of first appearance, run_at and
+ * excluded behind etched_at. Used for CSV only; JSON passes the stored objects through. */
 typedef struct {
     char **names; /* [n], room for more */
     size_t n, room;
@@ -176,6 +176,7 @@ static status collect(const history_list *l, csv_row *rows, name_list *names, er
     status st = name_add(names, "sample", e);
     if (st == ST_OK) st = name_add(names, "etched_at", e);
     if (st == ST_OK) st = name_add(names, "run_at", e);
+    if (st == ST_OK) st = name_add(names, "excluded", e);
     for (size_t i = 0; i < l->n && st == ST_OK; i++) {
         const cJSON *child;
         rows[i].object = cJSON_Parse(l->rows[i].row_json);
@@ -201,6 +202,7 @@ static status fill(const history_row *r, const name_list *names, csv_row *row, e
     row->cells[name_index(names, "sample")] = r->sample;
     row->cells[name_index(names, "etched_at")] = r->etched_at;
     row->cells[name_index(names, "run_at")] = r->run_at;
+    row->cells[name_index(names, "excluded")] = r->excluded;
     return ST_OK;
 }
 
@@ -227,13 +229,15 @@ static status print_csv(const history_list *l, textbuf *out, error *e) {
     return st;
 }
 
-/* The stored objects, byte for byte, with run_at in front. */
+/* The stored objects, byte for byte, with run_at and excluded in front. */
 static void print_json(const history_list *l, textbuf *out) {
     text_add(out, "[");
     for (size_t i = 0; i < l->n; i++) {
         const char *body = l->rows[i].row_json + strspn(l->rows[i].row_json, " \t\r\n");
         text_addf(out, "%s{\"run_at\": ", i ? ",\n  " : "\n  ");
         json_string(out, l->rows[i].run_at);
+        text_add(out, ", \"excluded\": ");
+        json_string(out, l->rows[i].excluded[0] ? l->rows[i].excluded : NULL);
         if (*body == '{') body++;
         text_addf(out, "%s%s", body[strspn(body, " ")] == '}' ? "" : ", ", body);
     }
@@ -260,11 +264,11 @@ static void print_text(const history_list *l, textbuf *out) {
               "run_at");
     for (size_t i = 0; i < l->n; i++) {
         const history_row *r = &l->rows[i];
-        text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s\n", r->etched_at, (int)sample,
+        text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s%s%s\n", r->etched_at, (int)sample,
                   r->sample, (int)lot, r->lot, number_text(r->spacing_nm, 5, a),
                   number_text(r->spacing_nm_u, 3, b), number_text(r->density_per_um2, 5, c),
                   number_text(r->size_d50_nm, 5, d), number_percent(r->weighted_reflectance, 4, f),
-                  r->verdict, r->run_at);
+                  r->verdict, r->run_at, r->excluded[0] ? "  excluded: " : "", r->excluded);
     }
     text_addf(out, "%zu %s\n", l->n, l->n == 1 ? "row" : "rows");
 }

@@ -15,16 +15,15 @@
 static char folder[200], ledger[300], output[300];
 
 /* Runs the command with stdout in a file; its text (caller frees) and its exit code. */
-static char *run(int *code, const char *a, const char *b, const char *c) {
+static char *run_words(int *code, const char *const *words, size_t n_words) {
     char name[] = "sward history", option[] = "--history";
-    char first[120], second[120], third[120];
-    char *argv[] = { name, option, ledger, first, second, third, NULL };
+    char room[8][120];
+    char *argv[12] = { name, option, ledger };
     int argc = 3;
-    snprintf(first, sizeof first, "%s", a ? a : "");
-    snprintf(second, sizeof second, "%s", b ? b : "");
-    snprintf(third, sizeof third, "%s", c ? c : "");
-    argc += (a != NULL) + (b != NULL) + (c != NULL);
-    argv[argc] = NULL;
+    for (size_t i = 0; i < n_words && i < 8; i++) {
+        snprintf(room[i], sizeof room[i], "%s", words[i]);
+        argv[argc++] = room[i];
+    }
     fflush(stdout);
     int kept = dup(STDOUT_FILENO);
     FILE *f = fopen(output, "w");
@@ -41,6 +40,20 @@ static char *run(int *code, const char *a, const char *b, const char *c) {
     error e = { ST_OK, "" };
     CHECK(file_read(output, LIMIT_TEXT_FILE_BYTES, &text, &n, &e) == ST_OK);
     return text;
+}
+
+static char *run(int *code, const char *a, const char *b, const char *c) {
+    const char *words[] = { a, b, c };
+    return run_words(code, words, (size_t)((a != NULL) + (b != NULL) + (c != NULL)));
+}
+#define RUN(code, ...)                                                                                       \
+    run_words((code), (const char *const[]){ __VA_ARGS__ },                                                  \
+              sizeof((const char *const[]){ __VA_ARGS__ }) / sizeof(const char *))
+
+static int holds(const char *text, const char *words) {
+    int there = text && strstr(text, words) != NULL;
+    if (!there) printf("'%s' is not in:\n%s\n", words, text ? text : "(nothing)");
+    return there;
 }
 
 static void fill_ledger(void) {
@@ -100,6 +113,117 @@ static void prints_csv(void) {
     free(text);
 }
 
+/* Twelve etches: 350 -+ 2, from the eighth on 4 nm more each; etch_s 100 + 10 i is a carried-along column, so text. */
+static void fill_process(void) {
+    history *h = NULL;
+    size_t added = 0;
+    error e = { ST_OK, "" };
+    CHECK(history_open(ledger, 0, &h, &e) == ST_OK);
+    for (int i = 0; i < 12; i++) {
+        char sample[8], time[32], json[300];
+        double v = 350.0 + (i % 2 ? 2.0 : -2.0) + (i >= 7 ? 4.0 * (i - 6) : 0.0);
+        snprintf(sample, sizeof sample, "P%02d", i);
+        snprintf(time, sizeof time, "2026-05-%02dT08:00:00Z", i + 1);
+        snprintf(json, sizeof json, "{\"sample\": \"%s\", \"lot\": \"%s\", \"spacing_nm\": %.1f, \"etch_s\": \"%d\", \"recipe\": \"%s\"}",
+                 sample, i < 6 ? "M1" : "M2", v, 100 + 10 * i, i < 5 ? "R1" : "R2");
+        history_row row = { .sample = sample, .lot = i < 6 ? "M1" : "M2", .wafer = "", .etched_at = time, .run_at = "2026-06-01T00:00:00Z",
+                            .fingerprint = "f", .version = "0.1.0", .protocol = "p", .spacing_nm = v, .spacing_nm_u = 8.0,
+                            .density_per_um2 = MISSING, .size_d50_nm = MISSING, .weighted_reflectance = MISSING,
+                            .verdict = "conforms", .row_json = json };
+        CHECK(history_add(h, &row, 1, &added, &e) == ST_OK && added == 1);
+    }
+    history_close(h);
+}
+
+static void follows_the_process(void) {
+    int code = -1;
+    fill_process();
+    char *text = RUN(&code, "chart", "spacing_nm", "--since", "2026-05-01", "--baseline=5");
+    CHECK(code == EXIT_DONE && holds(text, "Phase 2, from: recipe R2. spacing: centre") && holds(text, "one false alarm in about 92"));
+    CHECK(holds(text, "ALARM: P11") && holds(text, "no clear drift: +4 nm per etch (95 %: 0 to 8)") && holds(text, "newest phase"));
+    free(text);
+    text = RUN(&code, "exclude", "P11", "--reason", "wrong gas", "--by", "KL");
+    CHECK(code == EXIT_DONE && holds(text, "P11 is excluded from charts"));
+    free(text);
+    text = RUN(&code, "chart", "--since=2026-05-01", "--baseline=5", "--min=300", "--max=420");
+    CHECK(code == EXIT_DONE && holds(text, "excluded: wrong gas (KL)") && text && !strstr(text, "ALARM: P11") && holds(text, "Ppk "));
+    free(text);
+    text = RUN(&code, "--since", "2026-05-01");
+    CHECK(code == EXIT_DONE && holds(text, "12 rows") && holds(text, "excluded: wrong gas (KL)")); /* nothing is deleted */
+    free(text);
+    text = RUN(&code, "include", "P11", "--reason=it was right", "--by=KL");
+    CHECK(code == EXIT_DONE && holds(text, "back in"));
+    free(text);
+    text = RUN(&code, "note", "--at=2026-05-09T00:00:00Z", "--text=chamber clean");
+    CHECK(code == EXIT_DONE && holds(text, "noted at 2026-05-09T00:00:00Z (change): chamber clean"));
+    free(text);
+    text = RUN(&code, "note", "--at=2026-05-10T00:00:00Z", "--text=warm", "--kind=remark", "--by=KL");
+    CHECK(code == EXIT_DONE);
+    free(text);
+    text = RUN(&code, "notes");
+    CHECK(code == EXIT_DONE && holds(text, "remark  warm (KL)") && holds(text, "2 notes"));
+    free(text);
+    text = RUN(&code, "chart", "--since=2026-05-01", "--json", "--rules=iso,ewma");
+    cJSON *chart = cJSON_Parse(text);
+    const cJSON *phases = cJSON_GetObjectItem(chart, "phases"), *rules = cJSON_GetObjectItem(chart, "rules");
+    CHECK(code == EXIT_DONE && cJSON_GetArraySize(phases) == 3 && cJSON_GetArraySize(rules) == 4);
+    CHECK(cJSON_GetArraySize(cJSON_GetObjectItem(chart, "points")) == 12);
+    const cJSON *why = cJSON_GetObjectItem(cJSON_GetArrayItem(phases, 2), "why");
+    CHECK(cJSON_IsString(why) && !strcmp(why->valuestring, "chamber clean")); /* the remark starts none */
+    cJSON_Delete(chart);
+    free(text);
+}
+
+static void compares(void) {
+    int code = -1;
+    char *text = RUN(&code, "change", "M1", "M2");
+    CHECK(code == EXIT_DONE && holds(text, "spacing of M2: 360 nm (6), of M1: 350 nm (6)"));
+    free(text);
+    text = RUN(&code, "change", "R1", "R2", "spacing_nm", "--json");
+    CHECK(code == EXIT_DONE && holds(text, "\"n_a\": 5, \"n_b\": 7"));
+    free(text);
+    text = RUN(&code, "setting", "etch_s", "--target=360");
+    CHECK(code == EXIT_DONE && holds(text, "the etch_s that brings spacing to 360 nm: ") && holds(text, "a qualified person decides"));
+    free(text);
+    text = RUN(&code, "setting", "etch_s", "--target=700");
+    CHECK(code == EXIT_DONE && holds(text, "outside the data"));
+    free(text);
+    static const char *const wrong[][4] = { { "chrt" }, { "chart", "spacing" }, { "chart", "a", "b" }, { "change", "M1" },
+                                            { "change", "M1", "nowhere" }, { "exclude", "P11" }, { "note" },
+                                            { "setting", "etch" }, { "chart", "--rules=zoned" }, { "verify", "nowhere" } };
+    for (size_t i = 0; i < sizeof wrong / sizeof wrong[0]; i++) {
+        size_t n = 0;
+        while (n < 4 && wrong[i][n]) n++;
+        text = run_words(&code, wrong[i], n);
+        CHECK(code == EXIT_USAGE && text && !text[0]);
+        free(text);
+    }
+}
+
+static void verifies(void) {
+    int code = -1;
+    error e = { ST_OK, "" };
+    char path[4][300], json[600], hash[65];
+    static const char *const names[] = { "results.json", "run.json", "a.png", "b.png" };
+    for (size_t i = 0; i < 4; i++) snprintf(path[i], sizeof path[i], "%s/%s", folder, names[i]);
+    sha256_hex("abc", 3, hash);
+    snprintf(json, sizeof json, "{\"manifest\": {\"inputs\": [{\"file\": \"a.png\", \"sha256\": \"%s\"}, {\"file\": \"b.png\", "
+             "\"sha256\": \"%s\"}, {\"file\": \"broken.png\", \"sha256\": null}]}}", hash, hash);
+    CHECK(file_write(path[0], json, strlen(json), &e) == ST_OK && file_write(path[2], "abc", 3, &e) == ST_OK);
+    snprintf(json, sizeof json, "{\"folder\": \"%s\"}", folder);
+    CHECK(file_write(path[1], json, strlen(json), &e) == ST_OK && file_write(path[3], "abc", 3, &e) == ST_OK);
+    char *text = RUN(&code, "verify", folder);
+    CHECK(code == EXIT_DONE && holds(text, "2 micrographs are the ones that were measured, 0 are not"));
+    free(text);
+    CHECK(file_write(path[3], "abd", 3, &e) == ST_OK && unlink(path[2]) == 0);
+    text = RUN(&code, "verify", folder, "--folder", folder);
+    CHECK(code == EXIT_PARTIAL && holds(text, "a.png is gone") && holds(text, "b.png differs") && holds(text, "2 are not"));
+    free(text);
+    unlink(path[0]);
+    unlink(path[1]);
+    unlink(path[3]);
+}
+
 int main(void) {
     int code = -1;
     const char *tmp = getenv("TMPDIR");
@@ -128,11 +252,14 @@ int main(void) {
     CHECK(code == EXIT_DONE && text && strcmp(text, "[\n]\n") == 0);
     free(text);
     text = run(&code, "--lot", "none", "--csv");
-    CHECK(code == EXIT_DONE && text && strcmp(text, "sample,etched_at,run_at\n") == 0);
+    CHECK(code == EXIT_DONE && text && strcmp(text, "sample,etched_at,run_at,excluded\n") == 0);
     free(text);
     text = run(&code, "--since", "last week", NULL);
     CHECK(code == EXIT_USAGE && text && !text[0]);
     free(text);
+    follows_the_process();
+    compares();
+    verifies();
     unlink(ledger);
     unlink(output);
     CHECK(rmdir(folder) == 0);
