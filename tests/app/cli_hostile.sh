@@ -35,7 +35,6 @@ printf 'GIF89a' >in/x.gif
 cp r/render_001.png "in/$(printf 'esc\033[2Japed.png')"
 cp r/render_001.png "in/$(printf 'new\nline.png')"
 cp r/render_001.png "in/$(printf 'bytes\377\376.png')"
-ulimit -v 4000000 2>/dev/null
 timeout 120 "$SWARD" run in --out out --quiet >text 2>err; code=$?
 check "the run ends with 3" '[ $code -eq 3 ]'
 check "the good one is used" '[ "$(status_of good.png)" = ok ]'
