@@ -313,7 +313,7 @@ static void draw_legend(const plot *p, const frame *f, textbuf *out) {
                   "stroke-width=\"2.4\"%s/>\n",
                   x, y - 4, x + 24, y - 4, tone_colour[s->tone], dashes(s->style));
         draw_text(out, x + 30, y, "start", SOFT, "", s->label);
-        x += 44.0 + 6.4 * (double)strlen(s->label);
+        x += 46.0 + 7.4 * (double)strlen(s->label);
     }
     if (p->target_label && (isfinite(p->target_lo) || isfinite(p->target_hi))) {
         text_addf(out,
