@@ -17,7 +17,7 @@ typedef struct {
 
 /* argp needs its GNU long options only; every command parses with this: exit status 2 on wrong use. */
 extern const struct argp run_argp, measure_argp, predict_argp, fit_argp, window_argp, render_argp, history_argp, protocol_argp,
-    repeat_argp, inspect_argp, scale_argp, figure_argp;
+    repeat_argp, inspect_argp, scale_argp, figure_argp, compare_argp;
 int cmd_run(int argc, char **argv);
 int cmd_measure(int argc, char **argv);
 int cmd_repeat(int argc, char **argv);
@@ -25,6 +25,7 @@ int cmd_inspect(int argc, char **argv);
 int cmd_predict(int argc, char **argv);
 int cmd_fit(int argc, char **argv);
 int cmd_window(int argc, char **argv);
+int cmd_compare(int argc, char **argv);
 int cmd_figure(int argc, char **argv);
 int cmd_render(int argc, char **argv);
 int cmd_scale(int argc, char **argv);

@@ -19,6 +19,7 @@ static const command commands[] = {
     { "predict", cmd_predict, &predict_argp, "reflectance from numbers" },
     { "fit", cmd_fit, &fit_argp, "the link calibrated on measured spectra" },
     { "window", cmd_window, &window_argp, "process window: reflectance over spacing and height" },
+    { "compare", cmd_compare, &compare_argp, "two runs over the same samples: what changed, and is it real?" },
     { "figure", cmd_figure, &figure_argp, "one chart of a run as an SVG file" },
     { "render", cmd_render, &render_argp, "micrographs of known truth" },
     { "scale", cmd_scale, &scale_argp, "pixel size from a grating or grid of known pitch" },
