@@ -7,7 +7,7 @@
 
 #include "base/number.h"
 
-static void add_name(const sentence_subject *s, textbuf *t) {
+void sentence_name(const sentence_subject *s, textbuf *t) {
     static const char *const units[] = { "_nm", "_per_um2", "_mA_cm2", "_px", "_deg" };
     size_t n = strlen(s->quantity);
     for (size_t i = 0; i < sizeof units / sizeof units[0]; i++) {
@@ -56,7 +56,7 @@ static void add_time_left(const sentence_subject *s, const trend_slope *d, textb
 }
 
 void sentence_drift(const sentence_subject *s, const trend_slope *d, const trend_slope *day, textbuf *t) {
-    add_name(s, t);
+    sentence_name(s, t);
     if (!is_clear(d)) text_add(t, " shows no clear drift: ");
     else text_add(t, " drifts by ");
     if (d->slope > 0.0) text_add(t, "+");
@@ -73,7 +73,7 @@ void sentence_drift(const sentence_subject *s, const trend_slope *d, const trend
 }
 
 void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart_options *o, textbuf *t) {
-    add_name(s, t);
+    sentence_name(s, t);
     if (!isfinite(p->sigma) || !isfinite(p->centre)) {
         text_addf(t, ": no limits, %s", p->n_used < CHART_LEAST_BASELINE ? "the phase holds fewer than 5 etches" : "the etches do not scatter");
         return;
@@ -136,7 +136,7 @@ static void add_index(const char *name, const capability_index *c, textbuf *t) {
 }
 
 void sentence_capability(const sentence_subject *s, const capability *c, textbuf *t) {
-    add_name(s, t);
+    sentence_name(s, t);
     text_add(t, " against its target: ");
     add_index("Ppk", &c->Ppk, t);
     add_index(", Pp", &c->Pp, t);
@@ -154,7 +154,7 @@ void sentence_capability(const sentence_subject *s, const capability *c, textbuf
 
 void sentence_step(const sentence_subject *s, const char *a, const char *b, const trend_step *d, textbuf *t) {
     int real = d->lo > 0.0 || d->hi < 0.0;
-    add_name(s, t);
+    sentence_name(s, t);
     text_addf(t, " of %s: ", b);
     add_value(s, d->mean_b, s->digits, t);
     text_addf(t, " (%zu), of %s: ", d->n_b, a);
@@ -172,7 +172,7 @@ void sentence_step(const sentence_subject *s, const char *a, const char *b, cons
 }
 
 void sentence_line(const sentence_subject *s, const char *setting, const trend_line *l, textbuf *t) {
-    add_name(s, t);
+    sentence_name(s, t);
     text_addf(t, l->slope_p < 0.05 ? " changes by %s" : " does not clearly depend on it: %s", l->slope > 0.0 ? "+" : "");
     add_value(s, l->slope, 3, t);
     text_addf(t, " per unit of %s (standard uncertainty ", setting);
@@ -189,7 +189,7 @@ void sentence_line(const sentence_subject *s, const char *setting, const trend_l
 
 void sentence_setting(const sentence_subject *s, const char *setting, double wanted, const trend_setting *r, textbuf *t) {
     text_addf(t, "the %s that brings ", setting);
-    add_name(s, t);
+    sentence_name(s, t);
     text_add(t, " to ");
     add_value(s, wanted, s->digits, t);
     text_add(t, ": ");

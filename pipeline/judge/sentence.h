@@ -14,6 +14,8 @@ typedef struct {
     double min, max;             /* target range, NAN open */
 } sentence_subject;
 
+/* "spacing", as spoken. */
+void sentence_name(const sentence_subject *s, textbuf *t);
 /* "spacing drifts by +11.2 nm per etch (95 %: 8.1 to 14.3); at this rate it leaves its target in 5 etches"; per_day may be
  * NULL. Without a clear drift says that, with the interval. */
 void sentence_drift(const sentence_subject *s, const trend_slope *per_etch, const trend_slope *per_day, textbuf *t);
