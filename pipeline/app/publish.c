@@ -7,6 +7,7 @@
 #include <time.h>
 
 #include "app/summary.h"
+#include "app/wafers.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "io/file.h"
@@ -28,7 +29,7 @@ typedef struct {
     double *reference_nm, *polished, *coated;
     double *x_mm, *y_mm; /* [n_groups] */
     size_t n_reference;
-    textbuf manifest, summary, note;
+    textbuf manifest, summary, note, wafers;
 } material_for;
 
 static void material_free_all(material_for *m, size_t n_targets) {
@@ -53,6 +54,7 @@ static void material_free_all(material_for *m, size_t n_targets) {
     text_free(&m->manifest);
     text_free(&m->summary);
     text_free(&m->note);
+    text_free(&m->wafers);
 }
 
 static status gather_rows(const publication *p, material_for *m, error *e) {
@@ -235,7 +237,7 @@ static status write_all(const publication *p, material_for *m, error *e) {
                   .samples = m->samples, .n_samples = p->n_groups, .sample_json = m->sample_json,
                   .sample_extra = m->extra_names, .n_sample_extra = m->n_extra,
                   .spectra = m->spectra, .n_spectra = m->n_spectra,
-                  .manifest_json = m->manifest.s, .summary = m->summary.s, .title = p->protocol->name,
+                  .manifest_json = m->manifest.s, .wafers_json = m->wafers.s, .summary = m->summary.s, .title = p->protocol->name,
                   .target_quantity = m->target_quantity, .target_min = m->target_min, .target_max = m->target_max,
                   .n_targets = p->protocol->n_targets, .history_json = p->ledger->json,
                   .reference_wavelength_nm = m->reference_nm, .polished_R = m->polished, .coated_R = m->coated,
@@ -257,13 +259,14 @@ status publish(const publication *p, error *e) {
     if (st == ST_OK) {
         write_manifest(p, &m.manifest);
         summary_text(p, &m.summary);
+        st = wafers_describe(m.samples, m.x_mm, m.y_mm, p->n_groups, &m.wafers, &m.summary, e);
         if (p->ledger->process) text_add(&m.note, p->ledger->process);
         if (p->ledger->stays_with_output)
             text_add(&m.note, "The history lies with this output (history.sqlite); name one place for it in the protocol "
                               "(\"history\") or with --history so that later runs add to it.");
         else
             text_add(&m.note, "The history is kept where the protocol or --history says.");
-        st = text_check(&m.manifest, "the manifest", e);
+        if (st == ST_OK) st = text_check(&m.manifest, "the manifest", e);
     }
     if (st == ST_OK) st = text_check(&m.summary, "the summary", e);
     if (st == ST_OK) st = write_all(p, &m, e);
