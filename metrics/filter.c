@@ -187,8 +187,16 @@ static int kernel_make(double sigma, kernel *k) {
     return ok;
 }
 
+/* Wide registers where the machine has them. Every output is its own sum in a fixed order and nothing is contracted, so the bits are
+ * the same on every machine. Sanitizers instrument the choice that runs before they are ready, so not with them. */
+#if defined(__x86_64__) && defined(__GNUC__) && !defined(__clang__) && !defined(__SANITIZE_ADDRESS__) && !defined(__SANITIZE_THREAD__)
+#define WIDE __attribute__((target_clones("default", "arch=x86-64-v3")))
+#else
+#define WIDE
+#endif
+
 /* out[n] (+)= k * row, row mirrored; ext holds n + 2 r floats. */
-static void filter_row(const float *row, size_t n, const float *k, size_t r, float *ext, float *out) {
+WIDE static void filter_row(const float *row, size_t n, const float *k, size_t r, float *ext, float *out) {
     for (size_t i = 0; i < r; i++) {
         ext[i] = row[mirror((long)i - (long)r, n)];
         ext[r + n + i] = row[mirror((long)(n + i), n)];
@@ -208,7 +216,7 @@ static void filter_row(const float *row, size_t n, const float *k, size_t r, flo
 enum { TILE = 512 };
 
 /* to[n] += k * rows of `in` about y, for columns x0 .. x0 + n. */
-static void filter_column_tile(const float *in, size_t nx, size_t ny, size_t y, const float *k, size_t r,
+static inline void filter_column_tile(const float *in, size_t nx, size_t ny, size_t y, const float *k, size_t r,
                                size_t x0, size_t n, float *to) {
     const float *mid = in + y * nx + x0;
     for (size_t x = 0; x < n; x++) to[x] += k[0] * mid[x];
@@ -221,7 +229,7 @@ static void filter_column_tile(const float *in, size_t nx, size_t ny, size_t y, 
 }
 
 /* out = ka down the columns of a, plus kb down the columns of b (b may be NULL). out differs from both. */
-static void filter_columns(const float *a, const float *ka, const float *b, const float *kb, size_t r,
+WIDE static void filter_columns(const float *a, const float *ka, const float *b, const float *kb, size_t r,
                            size_t nx, size_t ny, float scale, float *out) {
     for (size_t x0 = 0; x0 < nx; x0 += TILE) {
         size_t n = nx - x0 < TILE ? nx - x0 : TILE;
@@ -332,7 +340,7 @@ static long coarse_first(const coarse *c, size_t j) {
     return (long)(j * c->m) - (long)c->lead - (long)((c->taps - c->m) / 2);
 }
 
-static void down_columns(const float *in, size_t nx, size_t ny, const coarse *c, float *out) {
+WIDE static void down_columns(const float *in, size_t nx, size_t ny, const coarse *c, float *out) {
     for (size_t x0 = 0; x0 < nx; x0 += TILE) {
         size_t n = nx - x0 < TILE ? nx - x0 : TILE;
         for (size_t j = 0; j < c->n; j++) {
@@ -372,7 +380,7 @@ static void up_row(const float *row, size_t nx, const coarse *c, float *out) {
     }
 }
 
-static void up_columns(const float *in, size_t nx, size_t ny, const coarse *c, float *out) {
+WIDE static void up_columns(const float *in, size_t nx, size_t ny, const coarse *c, float *out) {
     for (size_t x0 = 0; x0 < nx; x0 += TILE) {
         size_t n = nx - x0 < TILE ? nx - x0 : TILE;
         for (size_t y = 0; y < ny; y++) {

@@ -39,6 +39,21 @@ static uint32_t steepest_up(const float *g, size_t nx, size_t ny, size_t x, size
     return (uint32_t)best;
 }
 
+/* The same inside the frame, without bounds: the eight neighbours in row-major order. */
+static uint32_t steepest_inside(const float *g, size_t nx, size_t i) {
+    const float diagonal = 0.70710678f, *p = g + i, here = p[0];
+    const ptrdiff_t w = (ptrdiff_t)nx, step[8] = { -w - 1, -w, -w + 1, -1, 1, w - 1, w, w + 1 };
+    const float slope[8] = { (p[step[0]] - here) * diagonal, p[step[1]] - here, (p[step[2]] - here) * diagonal, p[step[3]] - here,
+                             p[step[4]] - here, (p[step[5]] - here) * diagonal, p[step[6]] - here, (p[step[7]] - here) * diagonal };
+    float steepest = 0.0f;
+    ptrdiff_t best = 0;
+    for (int k = 0; k < 8; k++) {
+        best = slope[k] > steepest ? step[k] : best;
+        steepest = slope[k] > steepest ? slope[k] : steepest;
+    }
+    return (uint32_t)((ptrdiff_t)i + best);
+}
+
 /* Visits the neighbours of pixel i (sharing an edge: steps of one length, a fair distance) that are as high and have
  * no way up yet: they get `to` and enter the list. */
 static size_t spread(const float *g, size_t nx, size_t ny, size_t i, uint32_t to, char *open, uint32_t *up,
@@ -92,7 +107,8 @@ static status ways_up(const float *g, size_t nx, size_t ny, const detection *d, 
     for (size_t y = 0; y < ny; y++)
         for (size_t x = 0; x < nx; x++) {
             size_t i = y * nx + x;
-            up[i] = steepest_up(g, nx, ny, x, y);
+            int inside = x && y && x + 1 < nx && y + 1 < ny;
+            up[i] = inside ? steepest_inside(g, nx, i) : steepest_up(g, nx, ny, x, y);
             open[i] = up[i] == i;
         }
     status st = plateaus_resolve(g, nx, ny, d, open, up, e);
