@@ -1,11 +1,13 @@
 #include "app/batch.h"
 
+#include <math.h>
 #include <omp.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "base/mem.h"
+#include "base/number.h"
 
 static int workers(int jobs, size_t n) {
     int w = jobs > 0 ? jobs : omp_get_num_procs();
@@ -19,11 +21,22 @@ static status first_error(const error *errors, size_t n, error *e) {
     return ST_OK;
 }
 
+/* "12 of 200 micrographs, 3.1 per s, about 61 s left", over the line before; the ending is there when something is left. */
+static void say_progress(size_t done, size_t n, double seconds) {
+    double rate = seconds > 0.0 ? (double)done / seconds : 0.0;
+    char a[NUMBER_TEXT], b[NUMBER_TEXT];
+    fprintf(stderr, "\r%zu of %zu micrographs", done, n);
+    if (rate > 0.0 && done < n)
+        fprintf(stderr, ", %s per s, about %s s left   ", number_text(rate, 2, a), number_text(ceil((double)(n - done) / rate), 6, b));
+    if (done == n) fprintf(stderr, " in %s s%30s\n", number_text(seconds, 3, a), "");
+}
+
 status batch_examine(const batch_item *items, size_t n, const examine_options *o, int jobs, int progress, examined *out,
                      error *e) {
     error *errors = mem_array(n, sizeof *errors);
     if (!errors) return NO_MEMORY(e, "the batch");
     size_t done = 0;
+    double start = omp_get_wtime();
     long count = (long)n;
 #pragma omp parallel for schedule(dynamic, 1) num_threads(workers(jobs, n))
     for (long k = 0; k < count; k++) {
@@ -34,8 +47,7 @@ status batch_examine(const batch_item *items, size_t n, const examine_options *o
 #pragma omp critical(progress)
             {
                 done++;
-                fprintf(stderr, "\r%zu of %zu micrographs", done, n);
-                if (done == n) fputc('\n', stderr);
+                say_progress(done, n, omp_get_wtime() - start);
             }
         }
     }

@@ -272,7 +272,10 @@ status publish(const publication *p, error *e) {
     if (st == ST_OK) st = write_all(p, &m, e);
     if (st == ST_OK) st = write_run_json(p, e);
     if (st == ST_OK && !p->quiet) {
-        fputs(m.summary.s, stdout);
+        textbuf coloured = { 0 };
+        if (colour_wanted()) summary_colour(m.summary.s, &coloured);
+        fputs(coloured.s && !coloured.failed ? coloured.s : m.summary.s, stdout);
+        text_free(&coloured);
         fprintf(stdout, "%s\n", m.note.s);
         if (p->page) fprintf(stdout, "Report: %s/report.html\n", p->out);
         else fprintf(stdout, "Tables: %s\n", p->out);

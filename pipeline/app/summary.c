@@ -2,7 +2,9 @@
 
 #include <math.h>
 #include <stdio.h>
+#include <stdlib.h>
 #include <string.h>
+#include <unistd.h>
 
 #include "base/number.h"
 
@@ -68,4 +70,28 @@ void summary_text(const publication *p, textbuf *out) {
     }
     if (p->folder->n_other) text_addf(out, "%zu other files are no pictures.\n", p->folder->n_other);
     if (p->folder->warnings.n) text_addf(out, "Sample sheet:\n%s", p->folder->warnings.s);
+}
+
+int colour_wanted(void) {
+    const char *no = getenv("NO_COLOR"), *term = getenv("TERM");
+    return isatty(STDOUT_FILENO) && !(no && *no) && term && strcmp(term, "dumb") != 0;
+}
+
+void summary_colour(const char *summary, textbuf *out) {
+    static const char *const colour[][2] = { { "  conforms", "32" }, { "  fails", "1;31" }, { "  undecided", "33" } };
+    for (const char *line = summary; *line;) {
+        size_t n = strcspn(line, "\n"), k = 0, word = 0;
+        for (; k < sizeof colour / sizeof colour[0]; k++) {
+            word = strlen(colour[k][0]);
+            if (n > word && !strncmp(line + n - word, colour[k][0], word)) break;
+        }
+        if (k < sizeof colour / sizeof colour[0]) {
+            text_add_n(out, line, n - word);
+            text_addf(out, "  \033[%sm%s\033[0m", colour[k][1], colour[k][0] + 2);
+        } else {
+            text_add_n(out, line, n);
+        }
+        if (line[n]) text_add(out, "\n");
+        line += n + (line[n] != '\0');
+    }
 }

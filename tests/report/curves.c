@@ -64,7 +64,7 @@ static void check_tables(const char *dir) {
 
 /* A chart's table holds every finite point of the series asked for, and no other. */
 static void check_plot_table(void) {
-    const double x[3] = { 1, 2, 3 }, y[3] = { 10.5, NAN, 30 }, lo[3] = { 9, 0, 29 }, hi[3] = { 12, 0, 31 };
+    const double x[3] = { 1, 2, 3 }, y[3] = { 10.5, (double)NAN, 30 }, lo[3] = { 9, 0, 29 }, hi[3] = { 12, 0, 31 };
     plot_series s[2] = { { .x = x, .y = y, .n = 3, .label = "reference" }, { .x = x, .y = y, .lo = lo, .hi = hi, .n = 3, .label = "<own>" } };
     plot p = { .title = "t & u", .x_label = "x (nm)", .y_label = "y (%)", .series = s, .n_series = 2 };
     textbuf t = { 0 };
