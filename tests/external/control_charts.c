@@ -127,15 +127,15 @@ static void run_lengths(void) {
     static const char champ[] = "E-27..E-29 Champ and Woodall (1987), table 1, exact by Markov chain";
     static const char others[] = "E-30 Markov chain; E-31 ISO 7870-2; E-32 Nelson (1984) tests 1 to 3";
     static const struct { unsigned rules; double shift, length; size_t runs; const char *source; } cases[] = {
-        { R1, 0.0, 370.398, 1500, champ }, { R1, 1.0, 43.895, 3000, champ }, { R1, 2.0, 6.303, 3000, champ },
-        { R1, 3.0, 2.000, 3000, champ }, { R1 | R2, 0.0, 225.44, 1500, champ }, { R1 | R3, 0.0, 166.05, 1500, champ },
-        { R1 | R4, 0.0, 152.73, 1500, champ }, { R1 | R2 | R3, 0.0, 132.89, 1500, champ },
-        { R1 | R2 | R4, 0.0, 122.05, 1500, champ }, { R1 | R3 | R4, 0.0, 105.78, 1500, champ },
-        { RULES_ZONE, 0.0, 91.75, 4000, champ }, { RULES_ZONE, 0.4, 36.606, 3000, champ },
-        { RULES_ZONE, 1.0, 9.222, 3000, champ }, { RULES_ZONE, 2.0, 3.128, 3000, champ },
-        { RULES_ZONE, 3.0, 1.667, 3000, champ }, { R1 | RULE(RUN_7), 0.0, 95.731, 1500, others },
-        { R1 | RULE(RUN_9), 0.0, 216.696, 1500, others }, { R1 | R2 | R3 | RULE(RUN_9), 0.0, 109.049, 1500, others },
-        { RULES_ISO, 0.0, 92.6, 4000, others }, { RULES_NELSON, 0.0, 148.4, 2000, others } };
+        { R1, 0.0, 370.398, 700, champ }, { R1, 1.0, 43.895, 1500, champ }, { R1, 2.0, 6.303, 1500, champ },
+        { R1, 3.0, 2.000, 1500, champ }, { R1 | R2, 0.0, 225.44, 700, champ }, { R1 | R3, 0.0, 166.05, 700, champ },
+        { R1 | R4, 0.0, 152.73, 700, champ }, { R1 | R2 | R3, 0.0, 132.89, 700, champ },
+        { R1 | R2 | R4, 0.0, 122.05, 700, champ }, { R1 | R3 | R4, 0.0, 105.78, 700, champ },
+        { RULES_ZONE, 0.0, 91.75, 2000, champ }, { RULES_ZONE, 0.4, 36.606, 1500, champ },
+        { RULES_ZONE, 1.0, 9.222, 1500, champ }, { RULES_ZONE, 2.0, 3.128, 1500, champ },
+        { RULES_ZONE, 3.0, 1.667, 1500, champ }, { R1 | RULE(RUN_7), 0.0, 95.731, 700, others },
+        { R1 | RULE(RUN_9), 0.0, 216.696, 700, others }, { R1 | R2 | R3 | RULE(RUN_9), 0.0, 109.049, 700, others },
+        { RULES_ISO, 0.0, 92.6, 2000, others }, { RULES_NELSON, 0.0, 148.4, 1000, others } };
     for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
         double se = MISSING, got = chart_run_length(cases[i].rules, cases[i].shift, cases[i].runs, &se);
         CHECK_SOURCE(got, cases[i].length, 4.0 * se, cases[i].source);
@@ -147,7 +147,7 @@ static void run_lengths(void) {
         { 0.4, 3.054, { 499.95, 14.263, 3.522 } }, { 0.05, 2.615, { 499.93, 11.383, 5.225 } } };
     for (size_t i = 0; i < 4; i++)
         for (int shift = 0; shift < 3; shift++) {
-            double se = MISSING, got = chart_ewma_run_length(designs[i].lambda, designs[i].k, 0, shift, shift ? 4000 : 1000, &se);
+            double se = MISSING, got = chart_ewma_run_length(designs[i].lambda, designs[i].k, 0, shift, shift ? 2000 : 400, &se);
             CHECK_SOURCE(got, designs[i].length[shift], 4.0 * se, lucas);
         }
 }
