@@ -145,7 +145,8 @@ void sentence_capability(const sentence_subject *s, const capability *c, textbuf
     text_addf(t, ", %zu etches", c->n);
     if (isfinite(c->expected_outside)) {
         char share[NUMBER_TEXT];
-        text_addf(t, "; about %s %% of such etches lie outside", number_percent(c->expected_outside, 2, share));
+        if (c->expected_outside < 1e-4) text_add(t, "; fewer than 0.01 % of such etches lie outside");
+        else text_addf(t, "; about %s %% of such etches lie outside", number_percent(c->expected_outside, 2, share));
     }
     if (c->form == CAPABLE_LOG_NORMAL) text_add(t, "; not normal, so Ppk and Pp are those of a log-normal law");
     if (c->form == CAPABLE_NEITHER) text_add(t, "; neither normal nor log-normal, so the indices say little");

@@ -74,6 +74,9 @@ int main(void) {
     sentence_capability(&s, &c, &t);
     CHECK(says("spacing against its target: Ppk 1.23 (95 %: 0.81 to 1.7), Pp 1.5 (95 %: 1 to 2), 20 etches; about 0.12 % of such "
                "etches lie outside"));
+    c.expected_outside = 3e-12;
+    sentence_capability(&s, &c, &t);
+    CHECK(holds("; fewer than 0.01 % of such etches lie outside"));
     c.form = CAPABLE_NEITHER;
     c.normality_p = MISSING;
     sentence_capability(&s, &c, &t);
