@@ -32,6 +32,15 @@ void text_add_n(textbuf *t, const char *s, size_t n) {
 
 void text_add(textbuf *t, const char *s) { text_add_n(t, s, strlen(s)); }
 
+void text_add_plain(textbuf *t, const char *s) {
+    for (const unsigned char *p = (const unsigned char *)s; *p; p++) {
+        int c1 = p[0] == 0xc2 && p[1] >= 0x80 && p[1] < 0xa0; /* U+0080 to U+009F */
+        if (*p < 0x20 || *p == 0x7f || c1) text_add_n(t, "?", 1);
+        else text_add_n(t, (const char *)p, 1);
+        p += c1;
+    }
+}
+
 void text_addf(textbuf *t, const char *fmt, ...) {
     va_list args, again;
     va_start(args, fmt);

@@ -14,6 +14,8 @@ typedef struct {
 
 void text_add(textbuf *t, const char *s);
 void text_add_n(textbuf *t, const char *s, size_t n);
+/* The same with control characters shown as '?': names of files reach a terminal through this. */
+void text_add_plain(textbuf *t, const char *s);
 void text_addf(textbuf *t, const char *fmt, ...) __attribute__((format(printf, 2, 3)));
 /* ST_NO_MEMORY when any append failed (or passed LIMIT_OUTPUT_BYTES), else ST_OK. */
 status text_check(const textbuf *t, const char *what, error *e);

@@ -94,8 +94,11 @@ const struct argp measure_argp = {
 static void print_lines(const image_row *rows, size_t n) {
     char v[NUMBER_TEXT], u[NUMBER_TEXT];
     for (size_t i = 0; i < n; i++) {
-        printf("%s: %s%s%s%s%s%s\n", rows[i].file, rows[i].status, rows[i].reason[0] ? ", " : "", rows[i].reason,
+        textbuf name = { 0 };
+        text_add_plain(&name, rows[i].file);
+        printf("%s: %s%s%s%s%s%s\n", name.s ? name.s : "", rows[i].status, rows[i].reason[0] ? ", " : "", rows[i].reason,
                rows[i].flags[0] ? " (" : "", rows[i].flags, rows[i].flags[0] ? ")" : "");
+        text_free(&name);
         for (size_t c = 0; c < n_image_columns; c++) {
             const column *col = &image_columns[c];
             if (col->kind != COL_NUMBER) continue;

@@ -30,14 +30,22 @@ static void one_sample(const publication *p, size_t k, int width, textbuf *out) 
     char spacing[64], R[96];
     spacing_cell(r, spacing, sizeof spacing);
     reflectance_cell(r, R, sizeof R);
-    text_addf(out, "  %-*s  %-20s  %-28s  %s\n", width, r->sample, spacing, R, r->verdict);
+    size_t before = out->n;
+    text_add(out, "  ");
+    text_add_plain(out, r->sample);
+    int pad = width + 2 - (int)(out->n - before);
+    text_addf(out, "%*s  %-20s  %-28s  %s\n", pad > 0 ? pad : 0, "", spacing, R, r->verdict);
 }
 
 static void unusable(const publication *p, textbuf *out) {
     for (size_t i = 0; i < p->folder->n; i++) {
         const examined *x = &p->images[i];
         if (x->readable && !x->reasons) continue;
-        text_addf(out, "  %s: %s (%s)\n", x->row.file, x->row.status, x->row.reason);
+        text_add(out, "  ");
+        text_add_plain(out, x->row.file);
+        text_addf(out, ": %s (", x->row.status);
+        text_add_plain(out, x->row.reason);
+        text_add(out, ")\n");
     }
 }
 

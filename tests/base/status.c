@@ -25,6 +25,9 @@ int main(void) {
     for (int i = 0; i < 1000; i++) text_addf(&t, "%03d", i);
     CHECK(t.n == 3000 && !strcmp(t.s + 2997, "999") && text_check(&t, "text", &e) == ST_OK);
     text_free(&t);
+    text_add_plain(&t, "a\x1b[31m\n\xc2\x9b" "b\xc3\xa9");
+    CHECK(!strcmp(t.s, "a?[31m??b\xc3\xa9"));
+    text_free(&t);
 
     double v = 0.0;
     char out[NUMBER_TEXT];
