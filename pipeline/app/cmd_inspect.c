@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "app/command.h"
+#include "app/options.h"
 #include "app/length.h"
 #include "base/number.h"
 #include "base/quantity.h"
@@ -36,8 +37,7 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
         u->json = 1;
         break;
     case OPT_PX:
-        if (!number_parse(arg, &u->load.px_nm_option) || !(u->load.px_nm_option > 0.0))
-            argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
+        u->load.px_nm_option = option_px_nm(arg, state);
         break;
     case OPT_BAR:
         if (!length_parse(arg, &u->load.bar_nm))

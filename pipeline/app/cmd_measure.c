@@ -6,6 +6,7 @@
 
 #include "app/batch.h"
 #include "app/command.h"
+#include "app/options.h"
 #include "app/length.h"
 #include "app/names.h"
 #include "app/scalefile.h"
@@ -46,13 +47,8 @@ static const struct argp_option options[] = {
 
 static error_t parse(int key, char *arg, struct argp_state *state) {
     measure_use *u = state->input;
-    double v = 0.0;
     switch (key) {
-    case OPT_PX:
-        if (!number_parse(arg, &v) || !(v > 0.0))
-            argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
-        u->px_nm = v;
-        break;
+    case OPT_PX: u->px_nm = option_px_nm(arg, state); break;
     case OPT_BAR:
         if (!length_parse(arg, &u->bar_nm))
             argp_error(state, "--bar: found '%s', expected a length with its unit, such as 5um or 500nm", arg);
@@ -67,11 +63,7 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
         else argp_error(state, "--relief: found '%s', expected hillock, pore or auto", arg);
         break;
     case OPT_PROTOCOL: u->protocol = arg; break;
-    case OPT_JOBS:
-        if (!number_parse(arg, &v) || v < 0.0 || v > 1024.0 || v > (double)(int)v || v < (double)(int)v)
-            argp_error(state, "--jobs: found '%s', expected a whole number from 0 to 1024", arg);
-        u->jobs = (int)v;
-        break;
+    case OPT_JOBS: u->jobs = option_jobs(arg, state); break;
     case OPT_JSON: u->form = AS_JSON; break;
     case OPT_CSV: u->form = AS_CSV; break;
     case ARGP_KEY_ARGS:

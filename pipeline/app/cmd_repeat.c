@@ -7,10 +7,10 @@
 
 #include "app/batch.h"
 #include "app/command.h"
+#include "app/options.h"
 #include "app/folder.h"
 #include "app/repeat.h"
 #include "base/mem.h"
-#include "base/number.h"
 #include "base/quantity.h"
 #include "io/json.h"
 
@@ -36,19 +36,11 @@ static const struct argp_option options[] = {
 
 static error_t parse(int key, char *arg, struct argp_state *state) {
     repeat_use *u = state->input;
-    double v = 0.0;
     switch (key) {
     case OPT_PROTOCOL: u->protocol = arg; break;
     case OPT_SHEET: u->sheet = arg; break;
-    case OPT_PX:
-        if (!number_parse(arg, &v) || !(v > 0.0)) argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
-        u->px_nm = v;
-        break;
-    case OPT_JOBS:
-        if (!number_parse(arg, &v) || v < 0.0 || v > 1024.0 || v > (double)(int)v || v < (double)(int)v)
-            argp_error(state, "--jobs: found '%s', expected a whole number from 0 to 1024", arg);
-        u->jobs = (int)v;
-        break;
+    case OPT_PX: u->px_nm = option_px_nm(arg, state); break;
+    case OPT_JOBS: u->jobs = option_jobs(arg, state); break;
     case OPT_QUANTITY: u->quantity = arg; break;
     case OPT_JSON: u->json = 1; break;
     case ARGP_KEY_ARG:

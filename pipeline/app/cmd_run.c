@@ -4,9 +4,9 @@
 #include <string.h>
 
 #include "app/command.h"
+#include "app/options.h"
 #include "app/length.h"
 #include "app/run.h"
-#include "base/number.h"
 #include "base/quantity.h"
 
 enum { OPT_PROTOCOL = 0x200, OPT_SHEET, OPT_OUT, OPT_HISTORY, OPT_JOBS, OPT_PX, OPT_BAR, OPT_SCALE, OPT_KEEP_TILT, OPT_DRY_RUN, OPT_GATE, OPT_NO_REPORT, OPT_FRESH,
@@ -35,22 +35,13 @@ static const struct argp_option options[] = {
 
 static error_t parse(int key, char *arg, struct argp_state *state) {
     run_options *o = state->input;
-    double v = 0.0;
     switch (key) {
     case OPT_PROTOCOL: o->protocol = arg; break;
     case OPT_SHEET: o->sheet = arg; break;
     case OPT_OUT: o->out = arg; break;
     case OPT_HISTORY: o->history = arg; break;
-    case OPT_JOBS:
-        if (!number_parse(arg, &v) || v < 0.0 || v > 1024.0 || v > (double)(int)v || v < (double)(int)v)
-            argp_error(state, "--jobs: found '%s', expected a whole number from 0 to 1024", arg);
-        o->jobs = (int)v;
-        break;
-    case OPT_PX:
-        if (!number_parse(arg, &v) || !(v > 0.0))
-            argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
-        o->px_nm = v;
-        break;
+    case OPT_JOBS: o->jobs = option_jobs(arg, state); break;
+    case OPT_PX: o->px_nm = option_px_nm(arg, state); break;
     case OPT_BAR:
         if (!length_parse(arg, &o->bar_nm))
             argp_error(state, "--bar: found '%s', expected a length with its unit, such as 5um or 500nm", arg);

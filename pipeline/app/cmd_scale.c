@@ -7,6 +7,7 @@
 #include <time.h>
 
 #include "app/command.h"
+#include "app/options.h"
 #include "app/length.h"
 #include "app/scalefile.h"
 #include "base/number.h"
@@ -66,8 +67,7 @@ static error_t parse(int key, char *arg, struct argp_state *state) {
         u->date = arg;
         break;
     case OPT_PX:
-        if (!number_parse(arg, &u->px_nm) || !(u->px_nm > 0.0))
-            argp_error(state, "--px: found '%s', expected nanometres per pixel, above 0", arg);
+        u->px_nm = option_px_nm(arg, state);
         break;
     case OPT_JSON:
         u->json = 1;
