@@ -16,6 +16,7 @@
 #include "base/quantity.h"
 #include "metrics/filter.h"
 #include "metrics/spectrum.h"
+#include "metrics/linear.h"
 
 typedef struct {
     double x, y;
@@ -341,21 +342,9 @@ static int metric(const lattice_fit *f, double cosine, double out[3]) {
     double rows[3][4] = { { a.x * a.x, 2.0 * a.x * a.y, a.y * a.y, 1.0 },
                           { b.x * b.x, 2.0 * b.x * b.y, b.y * b.y, 1.0 },
                           { a.x * b.x, a.x * b.y + a.y * b.x, a.y * b.y, cosine } };
-    for (int c = 0; c < 3; c++) {
-        int top = c;
-        for (int r = c + 1; r < 3; r++)
-            if (fabs(rows[r][c]) > fabs(rows[top][c])) top = r;
-        if (!(fabs(rows[top][c]) > 1e-12)) return 0;
-        for (int k = 0; k < 4; k++) {
-            double t = rows[c][k];
-            rows[c][k] = rows[top][k], rows[top][k] = t;
-        }
-        for (int r = 0; r < 3; r++) {
-            double k = r == c ? 0.0 : rows[r][c] / rows[c][c];
-            for (int q = 0; q < 4; q++) rows[r][q] -= k * rows[c][q];
-        }
-    }
-    double xx = rows[0][3] / rows[0][0], xy = rows[1][3] / rows[1][1], yy = rows[2][3] / rows[2][2];
+    double x[3];
+    if (!linear_solve(&rows[0][0], 3, 1e-12, x)) return 0;
+    double xx = x[0], xy = x[1], yy = x[2];
     if (!(xx > 0.0) || !(yy > 0.0) || !(xx * yy > xy * xy)) return 0;
     out[0] = sqrt(xx);
     out[1] = sqrt(yy);

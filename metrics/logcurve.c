@@ -7,6 +7,7 @@
 #include <math.h>
 
 #include "base/quantity.h"
+#include "metrics/linear.h"
 
 double curve_at(const curve *c, double x) {
     if (c->n < 3 || !(x >= c->points[1].x && x <= c->points[c->n - 1].x)) return MISSING;
@@ -48,28 +49,6 @@ void log_curve_make(const curve *c, double x_first, double x_last, double share,
     }
 }
 
-/* Least squares of y = c0 + c1 u + c2 u^2 + c3 u^3; 0 when singular. */
-static int cubic_fit(double m[4][5], double *coef) {
-    for (int i = 0; i < 4; i++) {
-        int pivot = i;
-        for (int r = i + 1; r < 4; r++)
-            if (fabs(m[r][i]) > fabs(m[pivot][i])) pivot = r;
-        if (!(fabs(m[pivot][i]) > 1e-12)) return 0;
-        for (int k = 0; k < 5; k++) {
-            double t = m[i][k];
-            m[i][k] = m[pivot][k];
-            m[pivot][k] = t;
-        }
-        for (int r = 0; r < 4; r++) {
-            if (r == i) continue;
-            double q = m[r][i] / m[i][i];
-            for (int k = i; k < 5; k++) m[r][k] -= q * m[i][k];
-        }
-    }
-    for (int i = 0; i < 4; i++) coef[i] = m[i][4] / m[i][i];
-    return 1;
-}
-
 double curve_vertex(const curve *c, const double *weight, double x0, double width, int sign, double *y) {
     if (y) *y = curve_at(c, x0);
     if (c->n < 3) return x0;
@@ -86,7 +65,7 @@ double curve_vertex(const curve *c, const double *weight, double x0, double widt
             m[a][4] += w * p[a] * c->points[i].y;
         }
     }
-    if (used < 4 || !cubic_fit(m, k)) return x0;
+    if (used < 4 || !linear_solve(&m[0][0], 4, 1e-12, k)) return x0;
     /* k1 + 2 k2 u + 3 k3 u^2 = 0; the root whose second derivative has the wanted sign, written without
      * cancellation. */
     double root = k[2] * k[2] - 3.0 * k[1] * k[3];

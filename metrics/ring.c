@@ -16,6 +16,7 @@
 #include <math.h>
 
 #include "base/quantity.h"
+#include "metrics/linear.h"
 #include "metrics/logcurve.h"
 #include "metrics/spacing.h"
 
@@ -236,23 +237,7 @@ static int ellipse_through(const peak *p, double *q) {
         m[i][2] = p[i].y * p[i].y;
         m[i][3] = 1.0;
     }
-    for (int i = 0; i < 3; i++) {
-        int pivot = i;
-        for (int r = i + 1; r < 3; r++)
-            if (fabs(m[r][i]) > fabs(m[pivot][i])) pivot = r;
-        if (!(fabs(m[pivot][i]) > 0.0)) return 0;
-        for (int k = 0; k < 4; k++) {
-            double t = m[i][k];
-            m[i][k] = m[pivot][k];
-            m[pivot][k] = t;
-        }
-        for (int r = 0; r < 3; r++) {
-            if (r == i) continue;
-            double f = m[r][i] / m[i][i];
-            for (int k = i; k < 4; k++) m[r][k] -= f * m[i][k];
-        }
-    }
-    for (int i = 0; i < 3; i++) q[i] = m[i][3] / m[i][i];
+    if (!linear_solve(&m[0][0], 3, 0.0, q)) return 0;
     return q[0] > 0.0 && 4.0 * q[0] * q[2] - q[1] * q[1] > 0.0;
 }
 
