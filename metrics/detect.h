@@ -17,9 +17,10 @@ typedef struct {
 
 /* Iterates the scale from d0 (two rounds, stop at 2 %), then detects with the dynamic criterion (height above
  * the saddle to a higher maximum >= 0.10 of the median response), above 4 noise sd, and refines each centre
- * on Gaussian 0.10 d. Fills x, y, response and in_guard (guard d/2 with the final d) of the features; nn_px
- * NAN, the rest 0. in  f flattened, sign +1 hillock, -1 pore, noise sd of f, grey err ST_NO_RESULT fewer than
- * 5 features; ST_BAD_INPUT d0 not above 0; ST_NO_MEMORY. out untouched on failure */
+ * on Gaussian 0.10 d.
+ *   in   f flattened, sign +1 hillock, -1 pore, noise sd of f, grey
+ *   out  x, y, response and in_guard (guard d/2 with the final d) of the features; nn_px NAN, the rest 0. Untouched on failure
+ *   err  ST_NO_RESULT fewer than 5 features; ST_BAD_INPUT d0 not above 0; ST_NO_MEMORY */
 status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, double noise, detection *out,
               error *e);
 void detection_free(detection *d);

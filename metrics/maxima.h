@@ -14,9 +14,10 @@ typedef struct {
 } maximum;
 
 /* All maxima of map[ny][nx] (8 neighbours; of equal pixels the first in the row-major order is the higher, so
- * a plateau has one maximum that survives any dynamic above 0), in row-major order. in  with_dynamics 0:
- * dynamic is left 0 and the call is several times cheaper out *out [*n], owned by the caller err ST_NO_MEMORY
- */
+ * a plateau has one maximum that survives any dynamic above 0), in row-major order.
+ *   in   with_dynamics 0: dynamic is left 0 and the call is several times cheaper
+ *   out  *out [*n], owned by the caller
+ *   err  ST_NO_MEMORY */
 status maxima_find(const float *map, size_t nx, size_t ny, int with_dynamics, maximum **out, size_t *n,
                    error *e);
 

@@ -30,9 +30,9 @@ typedef struct {
 status lognormal(const double *x, size_t n, lognormal_fit *out, error *e);
 
 /* Diameters between parallel tangents (Feret) of a set of points in the plane: the largest, and the smallest,
- * which has one tangent along an edge of the convex hull. For pixels as areas pass their corners. in  xy[2 n]
- * pairs x, y; sorted by the call. hull[2 n + 2] working memory of the caller out *max, *min; 0 for fewer than
- * two distinct points */
+ * which has one tangent along an edge of the convex hull. For pixels as areas pass their corners.
+ *   in   xy[2 n] pairs x, y; sorted by the call. hull[2 n + 2] working memory of the caller
+ *   out  *max, *min; 0 for fewer than two distinct points */
 void feret_diameters(double *xy, size_t n, double *hull, double *max, double *min);
 
 #endif

@@ -13,8 +13,9 @@ status statistics_fill(texture *t, size_t nx, size_t ny, const detection *d, err
 void statistics_uncertainty(texture *t, const detection *d);
 
 /* Share of the field above a level of the flattened picture: `level` of the way from its 1 % to its 99 %
- * quantile. A figure for comparing like micrographs, never a solid share. in  unit_px length over which
- * pixels are alike (the spacing), NAN: a sixteenth of the shorter side err ST_NO_MEMORY */
+ * quantile. A figure for comparing like micrographs, never a solid share.
+ *   in   unit_px length over which pixels are alike (the spacing), NAN: a sixteenth of the shorter side
+ *   err  ST_NO_MEMORY */
 status bright_share(const float *f, size_t nx, size_t ny, double level, double unit_px, measured *out,
                     error *e);
 

@@ -10,11 +10,11 @@
 /* Standard deviation that the sum of the marks over the window would show from field to field of the same
  * texture, found inside the one field: the variance of the sum over tiles of several sizes follows V(tile) =
  * a * area + b * perimeter (a: randomness; b: order, a regular texture varies only where the border cuts it),
- * extrapolated to the window. in  x, y, mark[n] in the window; unit a length of the order of the spacing, > 0
- *   out sd; NAN with fewer than 4 points or a window narrower than four units
- *   err ST_NO_MEMORY
- *   src number variance of ordered patterns: Torquato S., Stillinger F.H. (2003) Phys. Rev. E 68:041113 (from
- * memory) */
+ * extrapolated to the window.
+ *   in   x, y, mark[n] in the window; unit a length of the order of the spacing, > 0
+ *   out  sd; NAN with fewer than 4 points or a window narrower than four units
+ *   err  ST_NO_MEMORY
+ *   src  number variance of ordered patterns: Torquato S., Stillinger F.H. (2003) Phys. Rev. E 68:041113 (from memory) */
 status field_sum_sd(const double *x, const double *y, const double *mark, size_t n, window w, double unit,
                     double *sd, error *e);
 

@@ -40,8 +40,9 @@ status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, er
 status sheet_match(sheet *s, const char *const *files, size_t n, textbuf *warnings, error *e);
 
 /* Two heights in one sample, once every file has its sample (sheet_read sees only the samples the sheet
- * names). in   rows[n] the row of each file, NULL: none; samples[n] the sample of each file err  ST_BAD_INPUT
- * both lines and heights; ST_NO_MEMORY */
+ * names).
+ *   in   rows[n] the row of each file, NULL: none; samples[n] the sample of each file
+ *   err  ST_BAD_INPUT both lines and heights; ST_NO_MEMORY */
 status sheet_check_samples(const sheet *s, const sheet_row *const *rows, const char *const *samples, size_t n,
                            error *e);
 
