@@ -6,6 +6,7 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "base/limits.h"
 #include "io/file.h"
 #include "io/json.h"
 
@@ -34,6 +35,14 @@ int command_print(const char *name, textbuf *t) {
 
 status input_wanted(const char *path, error *e) {
     return file_exists(path) ? ST_OK : fail(e, ST_BAD_INPUT, "%s: there is no such file", path);
+}
+
+status input_read(const char *path, char **bytes, size_t *n, error *e) {
+    *bytes = NULL;
+    status st = input_wanted(path, e);
+    if (st != ST_OK) return st;
+    st = file_read(path, LIMIT_TEXT_FILE_BYTES, bytes, n, e);
+    return st == ST_OK ? ST_OK : fail_within(e, st, path);
 }
 
 enum { MAX_OPTIONS = 64 };

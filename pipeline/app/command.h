@@ -48,6 +48,10 @@ int command_check_options(const command *c, int argc, char **argv);
  * no such file", else ST_OK. */
 status input_wanted(const char *path, error *e);
 
+/* A text file the user named, whole (LIMIT_TEXT_FILE_BYTES), NUL behind the n bytes; the sentence of a failure begins with the
+ * path. Caller frees *bytes, NULL on failure. err as input_wanted; ST_IO; ST_NO_MEMORY */
+status input_read(const char *path, char **bytes, size_t *n, error *e);
+
 /* Overview of all commands for `sward --help`; the manual page in man(7) macros; completion for bash. */
 void help_overview(const command *commands, size_t n, textbuf *out);
 void help_manual(const command *commands, size_t n, textbuf *out);

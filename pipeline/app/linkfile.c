@@ -10,7 +10,6 @@
 
 #include "app/command.h"
 #include "app/samplesheet.h"
-#include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "io/file.h"
@@ -224,10 +223,8 @@ status linkfile_read(const char *path, linkfile *out, error *e) {
     char *bytes = NULL;
     size_t n = 0;
     *out = (linkfile){ 0 };
-    status st = input_wanted(path, e);
+    status st = input_read(path, &bytes, &n, e);
     if (st != ST_OK) return st;
-    st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e);
-    if (st != ST_OK) return fail_within(e, st, path);
     st = json_parse(bytes, n, path, &j, e);
     if (st == ST_OK) st = read_head(path, &j, &l, e);
     if (st == ST_OK) st = read_numbers(path, &j, &l.link, e);

@@ -545,9 +545,7 @@ status protocol_read(const char *path, protocol *out, error *e) {
     size_t n = 0;
     const char *slash = strrchr(path, '/');
     char *folder = slash ? mem_text_n(path, slash == path ? 1 : (size_t)(slash - path)) : mem_text("");
-    status st = folder ? input_wanted(path, e) : NO_MEMORY(e, "the protocol");
-    if (st == ST_OK && (st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e)) != ST_OK)
-        fail_within(e, st, path);
+    status st = folder ? input_read(path, &bytes, &n, e) : NO_MEMORY(e, "the protocol");
     if (st == ST_OK) st = protocol_parse(bytes, n, path, folder, out, e);
     free(bytes);
     free(folder);

@@ -9,7 +9,6 @@
 #include <string.h>
 
 #include "app/command.h"
-#include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
@@ -335,10 +334,8 @@ status sheet_parse(const char *bytes, size_t n, const char *what, sheet *out, er
 status sheet_read(const char *path, sheet *out, error *e) {
     char *bytes = NULL;
     size_t n = 0;
-    status st = input_wanted(path, e);
+    status st = input_read(path, &bytes, &n, e);
     if (st != ST_OK) return st;
-    st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e);
-    if (st != ST_OK) return fail_within(e, st, path);
     st = sheet_parse(bytes, n, path, out, e);
     free(bytes);
     return st;

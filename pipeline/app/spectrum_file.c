@@ -10,11 +10,9 @@
 #include <string.h>
 
 #include "app/command.h"
-#include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/text.h"
-#include "io/file.h"
 
 static const double UM_BELOW = 10.0, PERCENT_ABOVE = 1.5, SHARE_MOST = 1.05, LEAST = -0.02;
 static const double NM_LO = 100.0, NM_HI = 20000.0, APART = 0.05;
@@ -409,10 +407,8 @@ status spectrum_read(const char *path, spectrum *out, error *e) {
     char *bytes = NULL;
     size_t n = 0;
     *out = (spectrum){ 0 };
-    status st = input_wanted(path, e);
+    status st = input_read(path, &bytes, &n, e);
     if (st != ST_OK) return st;
-    st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, e);
-    if (st != ST_OK) return fail_within(e, st, path);
     st = spectrum_parse(bytes, n, path, out, e);
     free(bytes);
     return st;
