@@ -6,25 +6,8 @@
 #include <unistd.h>
 
 #include "base/quantity.h"
+#include "bare_silicon.h"
 #include "check.h"
-#include "optical_tables.h"
-
-static material silicon, air, nitride;
-static sun am15g;
-
-static optics_setup setup(void) {
-    return (optics_setup){ .ambient = &air,
-                           .substrate = &silicon,
-                           .air = &air,
-                           .nitride = &nitride,
-                           .mixing = MIX_BRUGGEMAN_2D,
-                           .reflect = reflect_defaults(),
-                           .sun = &am15g,
-                           .band_lo_nm = 300.0,
-                           .band_hi_nm = 1200.0,
-                           .step_nm = 10.0,
-                           .model = OPTICS_AUTO };
-}
 
 static void axes(void) {
     axis a;

@@ -1,26 +1,13 @@
 /* The rear side in a prediction: only where the wafer is clear, in the interval, in the current, never beyond 1. */
 #include "base/quantity.h"
+#include "bare_silicon.h"
 #include "check.h"
 #include "link/predict.h"
-#include "optical_tables.h"
-
-static material silicon, air, nitride;
-static sun am15g;
 
 static prediction ask(double thickness, double back, int lambertian, double height, double spacing,
                       double height_u) {
-    optics_setup o = { .ambient = &air,
-                       .substrate = &silicon,
-                       .air = &air,
-                       .nitride = &nitride,
-                       .mixing = MIX_BRUGGEMAN_2D,
-                       .reflect = reflect_defaults(),
-                       .sun = &am15g,
-                       .band_lo_nm = 300.0,
-                       .band_hi_nm = 1200.0,
-                       .step_nm = 10.0,
-                       .model = OPTICS_AUTO,
-                       .rear = { thickness, back, lambertian } };
+    optics_setup o = setup();
+    o.rear = (rear_side){ thickness, back, lambertian };
     surface_input in = { .spacing_nm = { spacing, 0.0, 1 },
                          .height_nm = { height, height_u, 1 },
                          .link = link_defaults() };

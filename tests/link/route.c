@@ -1,25 +1,9 @@
 /* Which model serves: graded inside its validity, facets for large steep textures, else none; and the interval of facets. */
 #include "base/mem.h"
+#include "bare_silicon.h"
 #include "check.h"
 #include "link/predict.h"
-#include "optical_tables.h"
 
-static material silicon, air, nitride;
-static sun am15g;
-
-static optics_setup setup(void) {
-    return (optics_setup){ .ambient = &air,
-                           .substrate = &silicon,
-                           .air = &air,
-                           .nitride = &nitride,
-                           .mixing = MIX_BRUGGEMAN_2D,
-                           .reflect = reflect_defaults(),
-                           .sun = &am15g,
-                           .band_lo_nm = 300.0,
-                           .band_hi_nm = 1200.0,
-                           .step_nm = 10.0,
-                           .model = OPTICS_AUTO };
-}
 static prediction ask(const optics_setup *o, double height, double spacing, double height_u) {
     surface_input in = { .spacing_nm = { spacing, 0.0, 1 },
                          .height_nm = { height, height_u, 1 },
