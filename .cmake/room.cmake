@@ -1,9 +1,13 @@
-# room(name folder [USES rooms...] [LIBS libraries...] [EXCEPT files...])
-# Every .c of the folder belongs to the room. Its include root is a link in the build tree, so that
+# room(name folder [CORNERS folders...] [USES rooms...] [LIBS libraries...] [EXCEPT files...])
+# Every .c of the folder belongs to the room, and every .c of its corners, folders below it that share its law. Its include root is a link in the build tree, so that
 # #include "metrics/spacing.h" works only for rooms that list metrics behind USES.
 function(room name folder)
-  cmake_parse_arguments(R "" "" "USES;LIBS;EXCEPT" ${ARGN})
+  cmake_parse_arguments(R "" "" "CORNERS;USES;LIBS;EXCEPT" ${ARGN})
   file(GLOB sources CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/${folder}/*.c)
+  foreach(corner ${R_CORNERS})
+    file(GLOB more CONFIGURE_DEPENDS ${CMAKE_CURRENT_SOURCE_DIR}/${folder}/${corner}/*.c)
+    list(APPEND sources ${more})
+  endforeach()
   foreach(file ${R_EXCEPT})
     list(REMOVE_ITEM sources ${CMAKE_CURRENT_SOURCE_DIR}/${folder}/${file})
   endforeach()

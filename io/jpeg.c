@@ -16,7 +16,7 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/picture_priv.h"
-#include "io/scaletext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 enum { MAX_SCANS = 200, MAX_COMMENT = 65535 };
 

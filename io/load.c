@@ -16,7 +16,7 @@
 #include "io/picture_priv.h"
 #include "io/pixelsize_priv.h"
 #include "io/resample_priv.h"
-#include "io/sidecar_priv.h"
+#include "io/metadata/sidecar_priv.h"
 #include "io/strip_priv.h"
 
 static const double worth_correcting = 0.001, steepest_tilt_deg = 60.0, same_nominal = 0.005;

@@ -12,8 +12,8 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/picture_priv.h"
-#include "io/scaletext_priv.h"
-#include "io/xml_scale_priv.h"
+#include "io/metadata/scaletext_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
 typedef struct {
     const uint8_t *next;

@@ -8,8 +8,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "io/scaletext_priv.h"
-#include "io/xml_scale_priv.h"
+#include "io/metadata/scaletext_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
 /* The unit of a description line `unit=...`; 0 no such line, 1 there is one (*nm 0: it names no length). */
 static int description_unit(const char *text, const char *key, double *nm) {

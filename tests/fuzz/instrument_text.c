@@ -5,9 +5,9 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "io/instrument_priv.h"
-#include "io/keytext_priv.h"
-#include "io/scaletext_priv.h"
+#include "io/metadata/instrument_priv.h"
+#include "io/metadata/keytext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t n);
 

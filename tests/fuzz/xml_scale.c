@@ -4,7 +4,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "io/xml_scale_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
 int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t n);
 

@@ -1,5 +1,5 @@
 /* Numbers, units and lines that state a pixel size, in every spelling and every trap. */
-#include "io/scaletext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 #include "check.h"
 

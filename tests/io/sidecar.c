@@ -1,9 +1,9 @@
 /* Instrument texts beside a picture: sections, [SemImageFile], dollar keys; which file is looked at, what it may
  * not do. */
-#include "io/sidecar_priv.h"
+#include "io/metadata/sidecar_priv.h"
 
 #include "check.h"
-#include "io/instrument_priv.h"
+#include "io/metadata/instrument_priv.h"
 #include "scratch.h"
 
 static picture read_beside(const char *image, const char *name, const char *text) {

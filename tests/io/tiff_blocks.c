@@ -7,7 +7,7 @@
 #include "check.h"
 #include "io/load.h"
 #include "io/picture_priv.h"
-#include "io/instrument_priv.h"
+#include "io/metadata/instrument_priv.h"
 #include "scratch.h"
 
 enum { NX = 512, NY = 64 };

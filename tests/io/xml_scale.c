@@ -1,11 +1,11 @@
 /* Pixel sizes in XML: the OME model in all its spellings, <Metadata>, items in base64; and XML that attacks. */
-#include "io/xml_scale_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
 #include <stdlib.h>
 
 #include "base/text.h"
 #include "check.h"
-#include "io/xml_priv.h"
+#include "io/metadata/xml_priv.h"
 
 static picture ome(const char *text) {
     picture p = { 0 };

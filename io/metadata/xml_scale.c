@@ -1,6 +1,6 @@
 /* Pixel sizes in XML: the OME data model (Open Microscopy Environment, schema 2016-06 and before), the
  * <Metadata> block of tag 34683 (SI units), and the key and value items of tag 34680 (base64). */
-#include "io/xml_scale_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
 #include <math.h>
 #include <stdio.h>
@@ -11,9 +11,9 @@
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
-#include "io/instrument_priv.h"
-#include "io/scaletext_priv.h"
-#include "io/xml_priv.h"
+#include "io/metadata/instrument_priv.h"
+#include "io/metadata/scaletext_priv.h"
+#include "io/metadata/xml_priv.h"
 
 static double positive(const char *text) {
     double v;

@@ -1,6 +1,6 @@
 /* A walk through an XML text. Not for other rooms. */
-#ifndef SWARD_IO_XML_PRIV_H
-#define SWARD_IO_XML_PRIV_H
+#ifndef SWARD_IO_METADATA_XML_PRIV_H
+#define SWARD_IO_METADATA_XML_PRIV_H
 #include <stddef.h>
 
 enum { XML_DEPTH = 64, XML_NAME = 64, XML_TEXT = 512 };

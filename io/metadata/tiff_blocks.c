@@ -14,9 +14,9 @@
 
 #include "base/number.h"
 #include "base/quantity.h"
-#include "io/instrument_priv.h"
-#include "io/keytext_priv.h"
-#include "io/scaletext_priv.h"
+#include "io/metadata/instrument_priv.h"
+#include "io/metadata/keytext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 enum { LINE = KEYTEXT_LINE };
 

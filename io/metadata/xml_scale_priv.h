@@ -1,6 +1,6 @@
 /* XML texts that state a pixel size. Not for other rooms. */
-#ifndef SWARD_IO_XML_SCALE_PRIV_H
-#define SWARD_IO_XML_SCALE_PRIV_H
+#ifndef SWARD_IO_METADATA_XML_SCALE_PRIV_H
+#define SWARD_IO_METADATA_XML_SCALE_PRIV_H
 #include "io/picture_priv.h"
 
 /* Each adds scale, time, facts, notes; a text that is no XML of its kind adds a note or nothing. nx: columns of

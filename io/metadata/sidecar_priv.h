@@ -1,6 +1,6 @@
 /* Text files beside a micrograph. Not for other rooms. */
-#ifndef SWARD_IO_SIDECAR_PRIV_H
-#define SWARD_IO_SIDECAR_PRIV_H
+#ifndef SWARD_IO_METADATA_SIDECAR_PRIV_H
+#define SWARD_IO_METADATA_SIDECAR_PRIV_H
 #include "io/picture_priv.h"
 
 /* Looks beside `path` for NAME.EXT.txt, NAME.txt, NAME-EXT.hdr, NAME.hdr, NAME.EXT.json, NAME.json (letters of

@@ -1,6 +1,6 @@
 /* Finds and reads the text file that belongs to a micrograph by its name. Only beside the picture, never
  * along a path written inside a file. UTF-8, Latin-1 and UTF-16 texts are read. */
-#include "io/sidecar_priv.h"
+#include "io/metadata/sidecar_priv.h"
 
 #include <ctype.h>
 #include <dirent.h>
@@ -10,9 +10,9 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/file.h"
-#include "io/instrument_priv.h"
-#include "io/keytext_priv.h"
-#include "io/scaletext_priv.h"
+#include "io/metadata/instrument_priv.h"
+#include "io/metadata/keytext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 enum { KINDS = 6 };
 typedef enum { WHOLE, STEM, DASHED } stem_kind;

@@ -1,7 +1,7 @@
 /* A pixel size in words: numbers, units, `key = value unit` lines, JSON keys. Shared by sidecars, TIFF
  * descriptions and PNG texts. Not for other rooms. */
-#ifndef SWARD_IO_SCALETEXT_PRIV_H
-#define SWARD_IO_SCALETEXT_PRIV_H
+#ifndef SWARD_IO_METADATA_SCALETEXT_PRIV_H
+#define SWARD_IO_METADATA_SCALETEXT_PRIV_H
 #include <stddef.h>
 
 #include "io/picture_priv.h"

@@ -1,13 +1,13 @@
 /* Keys and values as instruments write them: lines that end in CR, LF or both, sections in brackets, the
  * first '=' separates, blanks around everything, letters of either case. */
-#include "io/keytext_priv.h"
+#include "io/metadata/keytext_priv.h"
 
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
 #include <strings.h>
 
-#include "io/scaletext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 enum { LINE = KEYTEXT_LINE };
 

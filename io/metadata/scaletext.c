@@ -2,7 +2,7 @@
  * Numbers are read in the C locale by hand-checked grammar; a decimal comma is accepted when no point is
  * there; a value without a unit is refused, because 5.58 of what? No form of magnification is ever turned
  * into a scale. */
-#include "io/scaletext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 
 #include <cjson/cJSON.h>
 #include <ctype.h>

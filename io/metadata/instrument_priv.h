@@ -1,7 +1,7 @@
 /* Text blocks of instruments, wherever they stand: in a private TIFF tag or in a file beside the picture. Not
  * for other rooms. */
-#ifndef SWARD_IO_INSTRUMENT_PRIV_H
-#define SWARD_IO_INSTRUMENT_PRIV_H
+#ifndef SWARD_IO_METADATA_INSTRUMENT_PRIV_H
+#define SWARD_IO_METADATA_INSTRUMENT_PRIV_H
 #include "io/picture_priv.h"
 
 /* All take NUL-terminated copies; the stored picture is p->nx x p->ny, or nx x ny where the picture is not

@@ -2,7 +2,7 @@
  * Untrusted: a document type ends the walk (so no entity is ever defined, let alone expanded), depth and size
  * are bounded, names and texts are cut to fixed rooms. A text that claims to be UTF-8 and is not is read once
  * more as Latin-1, which is what instruments then wrote. */
-#include "io/xml_priv.h"
+#include "io/metadata/xml_priv.h"
 
 #include <expat.h>
 #include <stdio.h>

@@ -1,6 +1,6 @@
 /* Keys and values in the text blocks of instruments. Not for other rooms. */
-#ifndef SWARD_IO_KEYTEXT_PRIV_H
-#define SWARD_IO_KEYTEXT_PRIV_H
+#ifndef SWARD_IO_METADATA_KEYTEXT_PRIV_H
+#define SWARD_IO_METADATA_KEYTEXT_PRIV_H
 #include <stddef.h>
 
 enum { KEYTEXT_LINE = 256 };

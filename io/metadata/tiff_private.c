@@ -10,11 +10,11 @@
 #include "base/mem.h"
 #include "base/quantity.h"
 #include "base/text.h"
-#include "io/instrument_priv.h"
-#include "io/keytext_priv.h"
-#include "io/scaletext_priv.h"
+#include "io/metadata/instrument_priv.h"
+#include "io/metadata/keytext_priv.h"
+#include "io/metadata/scaletext_priv.h"
 #include "io/tiff_tags_priv.h"
-#include "io/xml_scale_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
 enum { MAX_BLOCK = 4 << 20, MAX_CHUNKS = 1000, MAX_ENTRIES = 256 };
 
