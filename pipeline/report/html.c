@@ -53,6 +53,16 @@ void html_text(textbuf *out, const char *s) {
     }
 }
 
+void text_safe(textbuf *out, const char *s) {
+    for (const unsigned char *p = (const unsigned char *)(s ? s : ""); *p;) {
+        size_t n = utf8_length(p);
+        if (*p == '\n' || *p == '\t') text_add(out, " ");
+        else if (!n || *p < 0x20 || *p == 0x7f) text_add(out, "\xef\xbf\xbd");
+        else text_add_n(out, (const char *)p, n);
+        p += n ? n : 1;
+    }
+}
+
 void html_href(textbuf *out, const char *path) {
     static const char plain[] = "ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789-._~/";
     if (!path) return;

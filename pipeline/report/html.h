@@ -12,6 +12,9 @@
  * and for quoted attributes. NULL adds nothing. */
 void html_text(textbuf *out, const char *s);
 
+/* The same without escaping, for text that is drawn; tab and line feed become blanks. */
+void text_safe(textbuf *out, const char *s);
+
 /* A relative path as the value of href: bytes that a URL gives another meaning, or that are no ASCII, as %XX (RFC 3986),
  * with "./" in front. */
 void html_href(textbuf *out, const char *path);
