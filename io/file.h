@@ -21,16 +21,37 @@ int folder_exists(const char *path);
 /* Modification time as ISO 8601 UTC ("2026-03-14T09:30:00Z"), "" if unknown. `out` holds 32 bytes. */
 void file_time(const char *path, char *out);
 
+/* What a walk left alone, and why. */
 typedef struct {
-    char **paths; /* [n] relative to the root, '/' between parts, exact bytes, in byte order of the names */
+    char *path;      /* relative to the root */
+    const char *why; /* half a sentence; static */
+    int matters;     /* 1: it may hide micrographs that somebody misses */
+} left_file;
+
+typedef struct {
+    char **paths; /* [n] relative to the root, '/' between parts, exact bytes, in the order of compare_natural */
     size_t n;
+    left_file *left; /* [n_left], in the same order */
+    size_t n_left;
 } file_list;
 /* Every file below `root` for which keep(relative path) is true; pipes, devices and links that lead nowhere count as
- * files, so that opening them tells why they cannot be read. Left out: names that begin with a dot,
- * folders that hold sward's own datapackage.json, links that leave the root or lead to a folder around them, folders deeper than
- * LIMIT_FOLDER_DEPTH. The root itself is always walked. err ST_IO the folder cannot be read; ST_NO_MEMORY more than LIMIT_FOLDER_FILES. */
+ * files, so that opening them tells why they cannot be read. Left alone, and listed as that: names that begin with a dot or
+ * are those of temporary files, folders that hold sward's own datapackage.json or cannot be read, links that leave the root
+ * or lead to a folder around them, folders deeper than LIMIT_FOLDER_DEPTH. The root itself is always walked.
+ *   err ST_IO the root cannot be read; ST_NO_MEMORY more than LIMIT_FOLDER_FILES. */
 status folder_walk(const char *root, int (*keep)(const char *relative), file_list *out, error *e);
+status file_list_leave(file_list *l, const char *path, const char *why, int matters, error *e);
 void file_list_free(file_list *l);
+
+/* Order of names as people count: digits by their value (img2 before img10), the rest by bytes, a folder's own files
+ * together. Names that are equal so far: by bytes. <0, 0, >0 as strcmp. */
+int compare_natural(const char *a, const char *b);
+
+/* Size in bytes and time of last change of what `path` leads to. 0: there is nothing. */
+typedef struct {
+    long long bytes, seconds, nanoseconds;
+} file_state;
+int file_state_of(const char *path, file_state *out);
 
 /* dir + "/" + name; `name` alone when it is absolute or dir is "" or NULL. Caller frees; NULL: no memory. */
 char *path_join(const char *dir, const char *name);

@@ -28,7 +28,8 @@ load_options load_defaults(void) {
                            .bar_nm = MISSING,
                            .crop_strip = 1,
                            .correct_tilt = 1,
-                           .max_pixels = LIMIT_PIXELS };
+                           .max_pixels = LIMIT_PIXELS,
+                           .max_bytes = LIMIT_FILE_BYTES };
 }
 
 int load_knows_name(const char *path) {
@@ -73,12 +74,13 @@ static status refuse(const uint8_t *bytes, size_t n, error *e) {
     return fail(e, ST_BAD_INPUT, "is neither TIFF nor PNG nor JPEG (by its first bytes)");
 }
 
-static status decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *p, error *e) {
+static status decode(const uint8_t *bytes, size_t n, const load_options *o, picture *p, error *e) {
+    size_t max_pixels = o->max_pixels;
     if (!n) return fail(e, ST_BAD_INPUT, "the file is empty");
     if (starts_with(bytes, n, "\x89PNG\r\n\x1a\n", 8)) return png_decode(bytes, n, max_pixels, p, e);
     if (starts_with(bytes, n, "II*\0", 4) || starts_with(bytes, n, "MM\0*", 4) ||
         starts_with(bytes, n, "II+\0", 4) || starts_with(bytes, n, "MM\0+", 4))
-        return tiff_decode(bytes, n, max_pixels, p, e);
+        return tiff_decode_page(bytes, n, o->page, max_pixels, p, e);
     if (starts_with(bytes, n, "\xff\xd8\xff", 3)) return jpeg_decode(bytes, n, max_pixels, p, e);
     if (n < 8 && (!memcmp(bytes, "\x89PNG\r\n\x1a", n) || !memcmp(bytes, "II*", n < 3 ? n : 3) ||
                   !memcmp(bytes, "MM\0", n < 3 ? n : 3)))
@@ -182,7 +184,7 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
                          micrograph *m, error *e) {
     picture p = { 0 };
     micrograph r = { 0 };
-    status st = decode(bytes, n, o->max_pixels, &p, e);
+    status st = decode(bytes, n, o, &p, e);
     if (st != ST_OK) goto done;
     find_true_levels(&p);
     if (path) sidecar_read(path, &p);
@@ -235,7 +237,7 @@ status load_memory(const uint8_t *bytes, size_t n, const load_options *o, microg
 status load_file(const char *path, const load_options *o, micrograph *m, error *e) {
     char *bytes = NULL;
     size_t n = 0;
-    status st = file_read(path, LIMIT_FILE_BYTES, &bytes, &n, e);
+    status st = file_read(path, o->max_bytes, &bytes, &n, e);
     if (st == ST_OK) st = load_bytes((const uint8_t *)bytes, n, path, o, m, e);
     free(bytes);
     return st;

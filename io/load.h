@@ -22,10 +22,12 @@ typedef struct {
     int crop_strip;      /* find and crop the info strip */
     int correct_tilt;    /* stretch the rows of a tilted view the instrument has not corrected */
     const scale_standard *standard; /* replaces the instrument's own pixel size where it applies; NULL: none; borrowed */
+    size_t page;         /* of a file with several pages, from 1; 0: the largest that is no thumbnail */
     size_t max_pixels;   /* refuse larger pictures */
+    size_t max_bytes;    /* refuse larger files */
 } load_options;
 
-load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, LIMIT_PIXELS */
+load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, the limits of base/limits.h */
 
 /* Reads, decodes, finds pixel size (sidecar beside `path` included) and strip. The pixel size is that of the most
  * specific source: option, sheet, sidecar, instrument tags, description, sCAL, and TIFF resolution or PNG pHYs only below

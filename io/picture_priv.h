@@ -84,6 +84,9 @@ static inline float picture_luminance(float r, float g, float b) {
 status png_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
 status jpeg_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
 status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e);
+/* The same with a page the user names, from 1; 0: the largest that is no thumbnail. A file of one page has no choice.
+ * err ST_BAD_INPUT too: no such page, or a thumbnail, of which nothing is measured */
+status tiff_decode_page(const uint8_t *bytes, size_t n, size_t page, size_t max_pixels, picture *out, error *e);
 
 /* Levels 0..1 of every code of a sample with `bits` bits (1, 2, 4, 8): table[v] = v / (2^bits - 1). */
 void level_table(int bits, float table[256]);

@@ -158,6 +158,18 @@ static page choose_page(TIFF *tif, size_t *number, size_t *pages) {
     return best;
 }
 
+/* The page the user names instead of the one that would be chosen. */
+static status take_page(TIFF *tif, size_t wanted, size_t pages, page *best, size_t *number, error *e) {
+    if (wanted > pages)
+        return fail(e, ST_BAD_INPUT, "page %zu was asked for, but the file has %zu", wanted, pages);
+    if (!TIFFSetDirectory(tif, (tdir_t)(wanted - 1)))
+        return fail(e, ST_BAD_INPUT, "the TIFF is damaged: page %zu cannot be read", wanted);
+    *best = look_at(tif);
+    *number = wanted;
+    return best->secondary ? fail(e, ST_BAD_INPUT, "page %zu, which was asked for, is a thumbnail or a mask by its own word", wanted)
+                           : ST_OK;
+}
+
 static status damaged(const source *s, error *e) {
     return fail(e, ST_BAD_INPUT, "the TIFF cannot be opened, it is truncated or damaged: %s",
                 s->watch.what[0] ? s->watch.what : "no directory");
@@ -193,7 +205,8 @@ static status open_planes(source s[3], TIFF *tif[3], toff_t at, size_t max_pixel
     return ST_OK;
 }
 
-status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e) {
+status tiff_decode_page(const uint8_t *bytes, size_t n, size_t wanted, size_t max_pixels, picture *out,
+                        error *e) {
     source s[3];
     TIFF *tif[3] = { NULL };
     picture p = { 0 };
@@ -207,6 +220,8 @@ status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *o
         goto done;
     }
     best = choose_page(tif[0], &number, &pages);
+    if (wanted && pages > 1) st = take_page(tif[0], wanted, pages, &best, &number, e);
+    if (st != ST_OK) goto done;
     tiff_tags_read(tif[0], best.at, bytes, n, &p);
     s[0].watch = (tiff_watch){ 0 };
     if (!TIFFSetSubDirectory(tif[0], best.at)) {
@@ -226,4 +241,8 @@ done:
         if (tif[k]) TIFFClose(tif[k]);
     picture_free(&p);
     return st;
+}
+
+status tiff_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e) {
+    return tiff_decode_page(bytes, n, 0, max_pixels, out, e);
 }

@@ -44,35 +44,6 @@ typedef struct {
 
 static const measured not_measured = { (double)NAN, (double)NAN, 0.0, 0 };
 
-static texture texture_empty(void) {
-    const measured m = not_measured;
-    texture t = { .relief_skew = MISSING,
-                  .spacing_acf = m,
-                  .spacing_psd = m,
-                  .nn_mean = m,
-                  .spacing_hex = m,
-                  .density = m,
-                  .bright_share = m,
-                  .size_d10 = m,
-                  .size_d50 = m,
-                  .size_d90 = m,
-                  .size_mean = m,
-                  .size_gsd = m,
-                  .top_d50 = m,
-                  .clark_evans = m,
-                  .sal = m,
-                  .str = m,
-                  .stretch = m,
-                  .stretch_angle_deg = m,
-                  .sharpness = m,
-                  .noise_rel = m,
-                  .clipped_share = MISSING,
-                  .lognormal_ad = MISSING,
-                  .ring_z = MISSING,
-                  .second_spacing_px = MISSING };
-    return t;
-}
-
 /* A stage without an answer is no failure of the measurement; the error it recorded is dropped. */
 static status forgive(status st, error *e, const error *before) {
     if (st != ST_NO_RESULT) return st;

@@ -70,6 +70,7 @@ typedef struct {
     size_t n_curves;
 } texture;                 /* {0} = empty */
 
+texture texture_empty(void);         /* nothing measured: every figure NAN */
 void texture_free(texture *t);
 void texture_drop_cells(texture *t); /* frees the label map only */
 

@@ -18,6 +18,7 @@
     X(STREAKS,         streaks,         "charging streaks along the scan lines")                                         \
     X(DRIFT,           drift,           "drift, vibration or astigmatism: anisotropy that follows the scan axes")        \
     X(TILTED,          tilted,          "the texture is stretched as by a tilted view")                                  \
+    X(PX_WINDOW,       outside_px_window, "the pixel size lies outside the protocol's measure_between_px_nm: kept out, not measured") \
     X(FEATURELESS,     featureless,     "the picture has no contrast")                                                   \
     X(LOW_RESOLUTION,  low_resolution,  "few pixels per spacing: 8 to 12")                                               \
     X(SMALL_COUNT,     small_count,     "few features: statistics are wide")                                             \
@@ -43,6 +44,7 @@
     X(LOSSY,           lossy,           "a lossy file: brightness statistics are altered")                              \
     X(TILT_CORRECTED,  tilt_corrected,  "a tilted view: y was stretched by 1/cos(tilt) before measuring")               \
     X(TILT_KNOWN,      tilt_known,      "a tilted view by the file's own word, not corrected")                          \
+    X(NAME_UNMATCHED,  name_unmatched,  "the name does not match the protocol's name_pattern: sample from its folder or its own name") \
     X(FILLED,          pixels_filled,   "pixels without a value (NaN) were filled from their neighbours")
 /* clang-format on */
 

@@ -137,6 +137,7 @@ static status measure_files(const measure_use *u, const protocol *p, examined *a
         name_parts parts = { 0 };
         const char *base = strrchr(u->files[i], '/');
         st = name_sample(base ? base + 1 : u->files[i], p->pattern, &parts, e);
+        if (p->pattern && st == ST_OK && !parts.matched) all[i].flags |= FLAG(NAME_UNMATCHED);
         if (st == ST_OK && !(all[i].row.sample = mem_text(parts.sample))) st = NO_MEMORY(e, "the rows");
         if (st == ST_OK) st = examine_finish(&all[i], e);
         name_parts_free(&parts);

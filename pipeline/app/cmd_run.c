@@ -28,7 +28,7 @@ static const struct argp_option options[] = {
     { "no-report", OPT_NO_REPORT, NULL,   0, "tables only, no page", 0 },
     { "fresh",     OPT_FRESH,     NULL,   0, "measure everything again, even what is remembered", 0 },
     { "quiet",     OPT_QUIET,     NULL,   0, "no summary, no progress", 0 },
-    { "verbose",   OPT_VERBOSE,   NULL,   0, "progress also when the output is no terminal", 0 },
+    { "verbose",   OPT_VERBOSE,   NULL,   0, "a line for each file left alone, and progress also when the output is no terminal", 0 },
     { 0 }
 };
 /* clang-format on */

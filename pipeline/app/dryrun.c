@@ -24,16 +24,13 @@ static int longest(const folder *f) {
 
 static int say_one(const folder *f, size_t i, const examine_options *o, const name_parts *parts, int width) {
     const sheet_row *row = f->rows[i];
-    load_options load = load_defaults();
     micrograph m = { 0 };
     error why = { 0 };
     char number[NUMBER_TEXT], words[1024];
-    load.px_nm_option = o->px_nm_option;
-    load.px_nm_sheet = row ? row->px_nm : MISSING;
-    load.bar_nm = row && isfinite(row->bar_nm) ? row->bar_nm : o->bar_nm_option;
-    load.standard = o->standard;
-    load.correct_tilt = !o->keep_tilt;
+    load_options load = examine_loading(o, row ? row->px_nm : MISSING, row ? row->bar_nm : MISSING);
     int read = load_file(f->paths[i], &load, &m, &why) == ST_OK, known = read && isfinite(m.px_nm);
+    int unmatched = o->protocol->pattern && !(row && row->sample[0]) && !parts->matched;
+    int kept_out = known && examine_keeps_out(o->protocol, m.px_nm);
     print_name(f->relative[i], width);
     printf("  ");
     print_name(row && row->sample[0] ? row->sample : parts->sample, 20);
@@ -46,9 +43,10 @@ static int say_one(const folder *f, size_t i, const examine_options *o, const na
     if (!read)
         printf("  unreadable: %s\n", why.text);
     else
-        printf("  %s\n", flags_text(m.flags, words, sizeof words));
+        printf("  %s%s\n", kept_out ? "kept out: outside_px_window " : "",
+               flags_text(unmatched ? m.flags | FLAG(NAME_UNMATCHED) : m.flags, words, sizeof words));
     micrograph_free(&m);
-    return !known;
+    return !known || kept_out;
 }
 
 status dry_run(const folder *f, const examine_options *o, int *unusable, error *e) {

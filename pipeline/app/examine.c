@@ -323,18 +323,32 @@ static status unreadable(examined *x, const error *why, error *e) {
     return text_check(&j, "a row", e);
 }
 
+load_options examine_loading(const examine_options *o, double sheet_px_nm, double sheet_bar_nm) {
+    const protocol *p = o->protocol;
+    load_options load = load_defaults();
+    double pixels = 1e6 * p->max_megapixels, fit = 1e6 * p->max_memory_mb / LIMIT_BYTES_PER_PIXEL;
+    load.px_nm_option = o->px_nm_option;
+    load.px_nm_sheet = sheet_px_nm;
+    load.bar_nm = isfinite(sheet_bar_nm) ? sheet_bar_nm : o->bar_nm_option;
+    load.standard = o->standard;
+    load.correct_tilt = !o->keep_tilt && !p->keep_tilt;
+    load.page = isfinite(p->page) ? (size_t)p->page : 0;
+    load.max_pixels = (size_t)(fit < pixels ? fit : pixels);
+    load.max_bytes = (size_t)(1e6 * p->max_file_mb);
+    return load;
+}
+
+int examine_keeps_out(const protocol *p, double px_nm) {
+    return px_nm < p->window_lo_nm || px_nm > p->window_hi_nm;
+}
+
 status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, double sheet_bar_nm,
                const examine_options *o, examined *out, error *e) {
     micrograph m = { 0 };
     texture t = { 0 };
     char *overlay = NULL;
     error why = { 0 };
-    load_options load = load_defaults();
-    load.px_nm_option = o->px_nm_option;
-    load.px_nm_sheet = sheet_px_nm;
-    load.bar_nm = isfinite(sheet_bar_nm) ? sheet_bar_nm : o->bar_nm_option;
-    load.standard = o->standard;
-    load.correct_tilt = !o->keep_tilt;
+    load_options load = examine_loading(o, sheet_px_nm, sheet_bar_nm);
 
     missing_row(&out->row);
     out->row.file = mem_text(relative);
@@ -343,8 +357,15 @@ status examine(const char *path, const char *relative, const char *stem, double 
         st = unreadable(out, &why, e);
         goto done;
     }
-    if (st == ST_OK && o->out) st = output_path(o->out, "overlays", stem, ".png", &overlay, &out->overlay, e);
-    if (st == ST_OK && measure_or_recall(&m, o, overlay, &t, &why) != ST_OK) {
+    int kept_out = st == ST_OK && examine_keeps_out(o->protocol, m.px_nm);
+    if (kept_out) {
+        t = texture_empty();
+        t.clipped_share = m.clipped_low + m.clipped_high;
+        t.reasons = FLAG(PX_WINDOW);
+    }
+    const char *folder = kept_out ? NULL : o->out;
+    if (st == ST_OK && folder) st = output_path(folder, "overlays", stem, ".png", &overlay, &out->overlay, e);
+    if (st == ST_OK && !kept_out && measure_or_recall(&m, o, overlay, &t, &why) != ST_OK) {
         free(out->overlay);
         out->overlay = NULL;
         if (why.code == ST_IO) st = fail(e, ST_IO, "%s", why.text);
@@ -354,8 +375,9 @@ status examine(const char *path, const char *relative, const char *stem, double 
     if (st == ST_OK)
         st = fill_row(out, &m, &t, isfinite(o->protocol->px_u_rel) ? o->protocol->px_u_rel : m.px_u_rel, e);
     if (st == ST_OK) st = fill_json(out, &m, &t, e);
-    if (st == ST_OK && o->out) st = write_table(o->out, "features", stem, &t, m.px_nm, features_text, e);
-    if (st == ST_OK && o->out) st = write_table(o->out, "profiles", stem, &t, m.px_nm, profiles_text, e);
+    if (kept_out) out->row.n_features = -1;
+    if (st == ST_OK && folder) st = write_table(folder, "features", stem, &t, m.px_nm, features_text, e);
+    if (st == ST_OK && folder) st = write_table(folder, "profiles", stem, &t, m.px_nm, profiles_text, e);
 done:
     free(overlay);
     texture_free(&t);

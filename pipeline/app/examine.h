@@ -10,7 +10,7 @@ typedef struct {
     double px_nm_option;  /* --px; NAN: none */
     double bar_nm_option; /* --bar; NAN: none */
     const scale_standard *standard; /* --scale; NULL: none */
-    int keep_tilt;        /* 1: tilted views are flagged, not stretched */
+    int keep_tilt;        /* 1: tilted views are flagged, not stretched; so does the protocol's key */
     const char *out;      /* output folder; NULL: no files (the command `measure`) */
     int fresh;            /* 1: what was remembered is not used */
 } examine_options;
@@ -36,6 +36,12 @@ typedef struct {
  *   err  only what concerns the outputs: ST_IO a result could not be written, ST_NO_MEMORY */
 status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, double sheet_bar_nm,
                const examine_options *o, examined *out, error *e);
+
+/* How a file of this run is loaded; the sheet's figures NAN when it says nothing. */
+load_options examine_loading(const examine_options *o, double sheet_px_nm, double sheet_bar_nm);
+
+/* 1 when the protocol keeps micrographs of this pixel size out (key measure_between_px_nm); NAN: no. */
+int examine_keeps_out(const protocol *p, double px_nm);
 
 /* Prints status, reason and flags into the row, after duplicates and times are known. err ST_NO_MEMORY */
 status examine_finish(examined *x, error *e);

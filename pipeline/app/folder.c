@@ -4,6 +4,7 @@
 #include <stdlib.h>
 #include <string.h>
 #include <strings.h>
+#include <time.h>
 
 #include "app/names.h"
 #include "base/mem.h"
@@ -38,6 +39,7 @@ void folder_close(folder *f) {
     free(f->rows);
     free(f->root);
     sheet_free(&f->sheet);
+    file_list_free(&f->left);
     text_free(&f->warnings);
     *f = (folder){ 0 };
 }
@@ -106,6 +108,61 @@ done:
     return st;
 }
 
+/* Copying takes a while, and so does an instrument that writes: a file that was changed just now is looked at twice. Half
+ * a micrograph is no micrograph: it is left alone and said. */
+typedef struct {
+    file_state state;
+    int fresh; /* changed within the last seconds */
+} first_look;
+
+static int changes(const char *path, const first_look *l) {
+    file_state now;
+    return l->fresh && file_state_of(path, &now) &&
+           (now.bytes != l->state.bytes || now.seconds != l->state.seconds || now.nanoseconds != l->state.nanoseconds);
+}
+
+static status look_first(const char *root, const file_list *pictures, first_look *looks, size_t *n_fresh, error *e) {
+    enum { FRESH_S = 3 };
+    long long since = (long long)time(NULL) - FRESH_S;
+    for (size_t i = 0; i < pictures->n; i++) {
+        char *path = path_join(root, pictures->paths[i]);
+        if (!path) return NO_MEMORY(e, "the folder");
+        looks[i].fresh = file_state_of(path, &looks[i].state) && looks[i].state.seconds >= since;
+        *n_fresh += (size_t)looks[i].fresh;
+        free(path);
+    }
+    return ST_OK;
+}
+
+static status leave_growing(const char *root, file_list *pictures, error *e) {
+    const struct timespec pause = { 0, 150000000 };
+    first_look *looks = mem_array(pictures->n, sizeof *looks);
+    size_t n_fresh = 0, kept = 0;
+    status st = looks ? look_first(root, pictures, looks, &n_fresh, e) : NO_MEMORY(e, "the folder");
+    if (st == ST_OK && n_fresh) (void)nanosleep(&pause, NULL);
+    for (size_t i = 0; st == ST_OK && n_fresh && i < pictures->n; i++) {
+        char *name = pictures->paths[i], *path = path_join(root, name);
+        int growing = path && changes(path, &looks[i]);
+        if (!path) st = NO_MEMORY(e, "the folder");
+        free(path);
+        if (growing && st == ST_OK) st = file_list_leave(pictures, name, "still being written", 1, e);
+        pictures->paths[i] = NULL;
+        if (growing) free(name);
+        else pictures->paths[kept++] = name;
+    }
+    if (st == ST_OK && n_fresh) pictures->n = kept;
+    free(looks);
+    return st;
+}
+
+static void warn_left(folder *f) {
+    for (size_t i = 0; i < f->left.n_left; i++) {
+        if (!f->left.left[i].matters) continue;
+        text_add_plain(&f->warnings, f->left.left[i].path);
+        text_addf(&f->warnings, ": left alone, %s\n", f->left.left[i].why);
+    }
+}
+
 static status adopt(folder *f, char **names, size_t n, const char *sheet_path, error *e) {
     place *order = mem_array(n, sizeof *order);
     status st = order ? ST_OK : NO_MEMORY(e, "the folder");
@@ -140,23 +197,36 @@ done:
     return st;
 }
 
+/* Pictures stay in the list, everything else is left alone. Whatever fails, each name has one owner. */
+static status keep_pictures(folder *f, file_list *list, error *e) {
+    size_t n = 0;
+    status st = ST_OK;
+    for (size_t i = 0; i < list->n; i++) {
+        char *name = list->paths[i];
+        int picture = looks_like_picture(name);
+        list->paths[i] = NULL;
+        if (picture) list->paths[n++] = name;
+        else if (st == ST_OK) st = file_list_leave(list, name, "no picture by its name", 0, e);
+        if (!picture) free(name);
+    }
+    f->n_other = list->n - n;
+    list->n = n;
+    return st;
+}
+
 status folder_open(const char *root, const char *sheet_path, folder *out, error *e) {
     folder f = { 0 };
     file_list list = { 0 };
-    size_t n = 0;
     f.root = mem_text(root);
     status st = f.root ? folder_walk(root, any_file, &list, e) : NO_MEMORY(e, "a path");
+    if (st == ST_OK) st = keep_pictures(&f, &list, e);
+    if (st == ST_OK) st = leave_growing(root, &list, e);
+    if (st == ST_OK) st = adopt(&f, list.paths, list.n, sheet_path, e);
     if (st == ST_OK) {
-        for (size_t i = 0; i < list.n; i++)
-            if (looks_like_picture(list.paths[i])) {
-                char *p = list.paths[i];
-                list.paths[i] = list.paths[n];
-                list.paths[n++] = p;
-            }
-        f.n_other = list.n - n;
-        st = adopt(&f, list.paths, n, sheet_path, e);
-    }
-    if (st == ST_OK) {
+        f.left = (file_list){ .left = list.left, .n_left = list.n_left };
+        list.left = NULL;
+        list.n_left = 0;
+        warn_left(&f);
         *out = f;
         f = (folder){ 0 };
     }
@@ -234,7 +304,9 @@ status folder_samples(const folder *f, const protocol *p, examined *all, sample_
         const sheet_row *row = f->rows[i];
         st = name_sample(f->relative[i], p->pattern, &parts, e);
         if (st != ST_OK) break;
-        const char *name = row && row->sample[0] ? row->sample : parts.sample;
+        int named = row && row->sample[0];
+        const char *name = named ? row->sample : parts.sample;
+        if (p->pattern && !named && !parts.matched) all[i].flags |= FLAG(NAME_UNMATCHED);
         sample_group *g = group_named(list, count, name);
         if (!g) {
             g = &list[count];

@@ -8,13 +8,14 @@
 typedef struct {
     char *root;
     char **paths;          /* [n] to open */
-    char **relative;       /* [n] below root; sheet order first, then byte order */
+    char **relative;       /* [n] below root; sheet order first, then natural order */
     char **stems;          /* [n] unique names of output files */
     const sheet_row **rows; /* [n] of the sheet, or NULL */
     size_t n;
     size_t n_other;        /* files that are no pictures */
+    file_list left;        /* its left: everything that was left alone, with the reason */
     sheet sheet;
-    textbuf warnings;      /* lines: rows of the sheet without a file */
+    textbuf warnings;      /* lines: rows of the sheet without a file, micrographs that are still being written ... */
 } folder;                  /* {0} = empty */
 
 /* Walks, reads the sheet (NULL: root/samples.csv if there), orders.

@@ -17,14 +17,16 @@ typedef enum {
     FIELD_WAFER,
     FIELD_POSITION,
     FIELD_SAMPLE,
-    FIELD_N,
+    FIELD_N,             /* from here on: told apart, but no part of the sample's name */
+    FIELD_MAGNIFICATION,
+    FIELD_IMAGE,
     FIELD_ANY,
     FIELD_UNKNOWN,
     LITERAL
 } part_kind;
-static const char *const field_names[] = { "lot", "wafer", "position", "sample", "n" };
-enum { N_FIELDS = 5, MAX_PARTS = 32 };
-_Static_assert((int)FIELD_N + 1 == N_FIELDS, "one name per field");
+static const char *const field_names[] = { "lot", "wafer", "position", "sample", "n", "magnification", "image" };
+enum { N_FIELDS = 7, MAX_PARTS = 32 };
+_Static_assert((int)FIELD_IMAGE + 1 == N_FIELDS, "one name per field");
 
 typedef struct {
     part_kind kind;
@@ -46,7 +48,7 @@ static status unknown_field(const part *q, error *e) {
     snprintf(word, sizeof word, "%.*s", (int)(q->n < 39 ? q->n : 39), q->text);
     const char *near = json_nearest(word, field_names, N_FIELDS);
     return fail(e, ST_BAD_INPUT,
-                "unknown field '{%s}'%s%s%s; fields are {lot} {wafer} {position} {sample} {n} {}", word,
+                "unknown field '{%s}'%s%s%s; fields are {lot} {wafer} {position} {sample} {n} {magnification} {image} {}", word,
                 near ? ", did you mean '{" : "", near ? near : "", near ? "}'?" : "");
 }
 
@@ -104,7 +106,7 @@ status pattern_check(const char *pattern, error *e) {
         if (seen[parts[i].kind]++)
             return fail(e, ST_BAD_INPUT, "'%.100s': the field '{%s}' stands twice", pattern,
                         field_names[parts[i].kind]);
-        naming += parts[i].kind != FIELD_N;
+        naming += parts[i].kind < FIELD_N;
     }
     if (!naming)
         return fail(e, ST_BAD_INPUT,
@@ -145,7 +147,7 @@ static int match_from(search *m, size_t i, size_t at) {
 /* What the matched parts say. Without {sample} the sample is the matched text from the first to the last
  * naming field; {n}, {} and the text before them are left out. */
 static int take_parts(const search *m, name_parts *out) {
-    char **slots[N_FIELDS] = { &out->lot, &out->wafer, &out->position, &out->sample, NULL };
+    char **slots[FIELD_N] = { &out->lot, &out->wafer, &out->position, &out->sample };
     textbuf joined = { 0 };
     const part *before = NULL;
     for (size_t i = 0; i < m->n_parts; i++) {
@@ -219,6 +221,7 @@ status name_sample(const char *relative, const char *pattern, name_parts *out, e
     if (!got.position) got.position = mem_text("");
     if (st == ST_OK && (!got.sample || !got.lot || !got.wafer || !got.position))
         st = NO_MEMORY(e, "the sample names");
+    got.matched = found;
     if (st == ST_OK)
         *out = got;
     else

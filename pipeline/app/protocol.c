@@ -36,6 +36,9 @@ status protocol_defaults(protocol *out, error *e) {
     p.substrate = mem_text("silicon");
     p.measure = measure_defaults();
     p.px_u_rel = MISSING;
+    p.window_lo_nm = p.window_hi_nm = p.page = p.max_memory_mb = MISSING;
+    p.max_megapixels = (double)LIMIT_PIXELS / 1e6;
+    p.max_file_mb = (double)LIMIT_FILE_BYTES / 1e6;
     p.link = link_defaults();
     p.link.exponent_u = 0.5; /* the shape of real features is not seen from above */
     p.glass_mm = 3.2;
@@ -439,7 +442,9 @@ static status check_whole(const reader *r) {
     const protocol *p = r->p;
     error inner = { ST_OK, "" };
     if (p->pattern && pattern_check(p->pattern, &inner) != ST_OK)
-        return fail(r->e, inner.code, "%s: samples.pattern: %s", r->what, inner.text);
+        return fail(r->e, inner.code, "%s: name_pattern: %s", r->what, inner.text);
+    if (isfinite(p->page) && fabs(p->page - round(p->page)) > 0.0)
+        return fail(r->e, ST_BAD_INPUT, "%s: page: found %g, expected a whole number", r->what, p->page);
     if (isfinite(p->link.height_nm_u) && !isfinite(p->link.height_nm))
         return fail(r->e, ST_BAD_INPUT,
                     "%s: link.height_nm_u stands without link.height_nm; add the height or take the "

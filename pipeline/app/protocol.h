@@ -33,6 +33,10 @@ typedef struct {
     double
         px_u_rel;  /* relative standard uncertainty of every pixel size; NAN: what the source of each says */
     char *pattern; /* sample name from file names, see names.h; NULL: none */
+    double window_lo_nm, window_hi_nm; /* pixel sizes that are measured; NAN: all */
+    double page;                       /* of a file with several, from 1; NAN: the largest */
+    int keep_tilt;                     /* tilted views are flagged, not stretched */
+    double max_megapixels, max_file_mb, max_memory_mb; /* of one file; the last NAN: as the pixels allow */
     link_options link;
     char *calibration; /* link file of `sward fit`, usable from here; NULL: none */
     char *profile; /* measured profile: CSV path, usable from here; NULL: none */

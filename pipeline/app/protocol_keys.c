@@ -65,11 +65,19 @@ const protocol_key protocol_keys[] = {
     WORD("", "relief", measure.relief, relief_word, 1, "what a feature is: a bright hillock, a dark pore, or auto: found in each picture"),
     WORD("", "spacing", spacing, spacing_word, 0, "which spacing is the sample's spacing_nm: first ring of the autocorrelation, or hexagonal spacing of the density"),
     { "", "px_u_rel", KEY_NUMBER, AT(px_u_rel), "", 0.0, 0.5, 0, NULL, 1, "relative standard uncertainty of every pixel size; null: what its source says, else 0.01" },
+    { "", "measure_between_px_nm", KEY_BAND, AT(window_lo_nm), "nm", 1e-6, 1e9, 0, NULL, 0, "pixel sizes that are measured; a micrograph outside, such as an overview, is kept out of its sample and listed; null: all" },
+    { "", "page", KEY_NUMBER, AT(page), "", 1, 65535, 0, NULL, 1, "which page of a file with several is measured, from 1; null: the largest that is no thumbnail" },
+    { "", "keep_tilt", KEY_SWITCH, AT(keep_tilt), "", 0, 1, 0, NULL, 1, "true: tilted views are flagged, not stretched (a holder that tilts back by itself)" },
+    TEXT("", "name_pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{magnification}_{image}, or re: and a regular expression with groups (?<wafer>...); null: sub-folder, else name without its number"),
     PATH("", "scale", scale, "scale file that sward scale saved: replaces the instrument's pixel size where it applies, relative to this file"),
     PATH("", "history", history, "ledger of all samples, relative to this file; null: history.sqlite in the output folder"),
     { "", "targets", KEY_TARGETS, AT(targets), "", 0, 0, 0, NULL, 0, "a quantity of samples.csv with min, max or both, and \"error\": \"repeat\" when only what varies from run to run counts" },
 
-    TEXT("samples", "pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{n}, or re: and a regular expression with groups (?<wafer>...); null: sub-folder, else name without its number"),
+    TEXT("samples", "pattern", pattern, "the same as name_pattern"),
+
+    ABOVE("limits", "max_megapixels", max_megapixels, "million pixels", 0, 4294, "a larger picture is refused before memory is taken"),
+    ABOVE("limits", "max_file_mb", max_file_mb, "MB", 0, 4000, "a larger file is refused before it is read"),
+    ABOVE("limits", "max_memory_mb", max_memory_mb, "MB", 0, 1e6, "what one micrograph may take while it is measured, at 32 bytes a pixel; null: as the pixels allow"),
 
     LIMIT(min_px_per_spacing, 2, OPEN, "pixels per spacing below which a micrograph is excluded"),
     LIMIT(warn_px_per_spacing, 2, OPEN, "the same, flagged only"),
@@ -123,9 +131,10 @@ const protocol_key protocol_keys[] = {
 /* clang-format on */
 const size_t n_protocol_keys = sizeof protocol_keys / sizeof protocol_keys[0];
 
-const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "fitness", "link", "optics", "plan" };
+const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "limits", "fitness", "link", "optics", "plan" };
 const char *const protocol_group_help[PROTOCOL_GROUPS] = {
     "which sample a file belongs to",
+    "what one file may ask for",
     "can a micrograph carry the numbers?",
     "from the top view to the surface that optics needs",
     "what the light meets",
@@ -143,6 +152,12 @@ const protocol_key *protocol_key_find(const char *group, const char *name) {
 double key_number(const protocol *p, const protocol_key *k) {
     double v;
     memcpy(&v, (const char *)p + k->offset, sizeof v);
+    return v;
+}
+
+double key_high(const protocol *p, const protocol_key *k) {
+    double v;
+    memcpy(&v, (const char *)p + k->offset + sizeof v, sizeof v);
     return v;
 }
 

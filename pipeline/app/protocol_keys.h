@@ -36,13 +36,14 @@ extern const size_t n_protocol_keys;
 
 extern const char *const protocol_groups[]; /* names of the groups that are objects of their own keys */
 extern const char *const protocol_group_help[];
-enum { PROTOCOL_GROUPS = 5 };
+enum { PROTOCOL_GROUPS = 6 };
 
 /* The key, or NULL. */
 const protocol_key *protocol_key_find(const char *group, const char *name);
 
 /* Members of a protocol by key. */
 double key_number(const protocol *p, const protocol_key *k);    /* NUMBER, SHAPE, first of BAND */
+double key_high(const protocol *p, const protocol_key *k);      /* second of BAND */
 int key_index(const protocol *p, const protocol_key *k);        /* WORD, SWITCH */
 const char *key_text(const protocol *p, const protocol_key *k); /* TEXT, PATH, MATERIAL; may be NULL */
 

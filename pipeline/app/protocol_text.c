@@ -28,8 +28,8 @@ static void canonical_key(const protocol *p, const protocol_key *k, textbuf *out
         text_addf(out, "%d", key_index(p, k));
         break;
     case KEY_BAND:
-        text_addf(out, "%s,", number_text(p->band_lo_nm, 17, number));
-        text_add(out, number_text(p->band_hi_nm, 17, number));
+        text_addf(out, "%s,", number_text(key_number(p, k), 17, number));
+        text_add(out, number_text(key_high(p, k), 17, number));
         break;
     case KEY_COATINGS:
         for (size_t i = 0; i < p->n_coatings; i++)
@@ -89,8 +89,12 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
         json_string(out, k->word(key_index(p, k)));
         break;
     case KEY_BAND:
-        text_addf(out, "[%s, ", number_text(p->band_lo_nm, 15, number));
-        text_addf(out, "%s]", number_text(p->band_hi_nm, 15, number));
+        if (isnan(key_number(p, k))) {
+            text_add(out, "null");
+            break;
+        }
+        text_addf(out, "[%s, ", number_text(key_number(p, k), 15, number));
+        text_addf(out, "%s]", number_text(key_high(p, k), 15, number));
         break;
     case KEY_COATINGS:
         text_add(out, "[]");
@@ -191,6 +195,16 @@ static void explain_measuring(const protocol *p, textbuf *out) {
     } else
         text_add(out, "The uncertainty of a pixel size is what its source says, else 1 %.\n");
     if (p->pattern) text_addf(out, "A file without a row in the sample sheet is read as %s.\n", p->pattern);
+    if (isfinite(p->window_lo_nm)) {
+        text_add(out, "Only micrographs with pixels from ");
+        say(out, p->window_lo_nm, "to ");
+        say(out, p->window_hi_nm, "nm are measured; the others are listed.\n");
+    }
+    if (isfinite(p->page)) {
+        text_add(out, "Of a file with several pages page ");
+        say(out, p->page, "is measured.\n");
+    }
+    if (p->keep_tilt) text_add(out, "Tilted views are flagged, not stretched.\n");
     text_add(out, "A micrograph is left out of its sample below ");
     say(out, p->measure.min_px_per_spacing, "pixels per spacing or ");
     say(out, p->measure.min_features, "features, and with a blur above ");

@@ -93,7 +93,7 @@ status regex_sample(const char *path, size_t n, const char *expression, name_par
                 name_parts_free(&got);
         } else if (code != PCRE2_ERROR_NOMATCH)
             st = fail(e, ST_BAD_INPUT,
-                      "samples.pattern takes too many steps on the name '%.*s'; make it simpler",
+                      "name_pattern takes too many steps on the name '%.*s'; make it simpler",
                       (int)(n < 120 ? n : 120), path);
     }
     pcre2_match_context_free(limits);

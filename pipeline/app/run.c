@@ -95,6 +95,18 @@ static status prepare(run *r, error *e) {
     return st == ST_OK ? text_check(&r->basis, "the protocol's fingerprint", e) : st;
 }
 
+/* A line for every file and folder that is left alone, and why. */
+static void say_left(const folder *f) {
+    textbuf t = { 0 };
+    for (size_t i = 0; i < f->left.n_left; i++) {
+        text_add(&t, "left alone: ");
+        text_add_plain(&t, f->left.left[i].path);
+        text_addf(&t, " (%s)\n", f->left.left[i].why);
+    }
+    if (t.s) fputs(t.s, stderr);
+    text_free(&t);
+}
+
 static status measure_all(run *r, error *e) {
     const folder *f = &r->folder;
     batch_item *items = mem_array(f->n, sizeof *items);
@@ -147,6 +159,7 @@ status run_folder(const run_options *o, run_outcome *outcome, error *e) {
     double t0 = now_s();
     utc_now(run_at);
     status st = prepare(&r, e);
+    if (st == ST_OK && o->verbose) say_left(&r.folder);
     if (st == ST_OK && o->dry_run) {
         examine_options x = { &r.protocol, o->px_nm, o->bar_nm, r.has_standard ? &r.standard : NULL, o->keep_tilt, NULL, 1 };
         *outcome = (run_outcome){ 0, 0 };

@@ -77,7 +77,7 @@ void summary_text(const publication *p, textbuf *out) {
         unusable(p, out);
     }
     if (p->folder->n_other) text_addf(out, "%zu other files are no pictures.\n", p->folder->n_other);
-    if (p->folder->warnings.n) text_addf(out, "Sample sheet:\n%s", p->folder->warnings.s);
+    if (p->folder->warnings.n) text_addf(out, "Noted:\n%s", p->folder->warnings.s);
 }
 
 int colour_wanted(void) {

@@ -35,6 +35,7 @@ int main(void) {
     gives("L7_W03_centre_x.tif", usual, "L7_W03_centre_x|||"); /* {n} is digits: no match, stem */
     gives("deep/other.tif", usual, "deep|||");
     gives("L7_anything_9.png", "{lot}_{}_{n}", "L7|L7||");
+    gives("L7_W03_centre_20k_2b.png", "{lot}_W{wafer}_{position}_{magnification}_{image}", "L7_W03_centre|L7|03|centre");
     gives("x_9_L7.png", "x_{n}_{lot}", "L7|L7||");
     gives("run5/w3/k.png", "{lot}/w{wafer}/{}", "run5/w3|run5|3|");
     gives("c-A7-L3.png", "c-{sample}-{lot}", "A7|L3||");
@@ -49,6 +50,7 @@ int main(void) {
     CHECK_FAILS(pattern_check("{lot", &e), ST_BAD_INPUT, e, "opened and not closed");
     CHECK_FAILS(pattern_check("{lot}{wafer}", &e), ST_BAD_INPUT, e, "cannot be told apart");
     CHECK_FAILS(pattern_check("{lot}_{lot}", &e), ST_BAD_INPUT, e, "stands twice");
+    CHECK_FAILS(pattern_check("{magnification}_{image}", &e), ST_BAD_INPUT, e, "no field that names a sample");
     CHECK_FAILS(pattern_check("image_{n}", &e), ST_BAD_INPUT, e, "no field that names a sample");
     CHECK_FAILS(pattern_check("plain", &e), ST_BAD_INPUT, e, "no field that names a sample");
     CHECK_FAILS(pattern_check("{lot}_{n}.tif", &e), ST_BAD_INPUT, e, "leave the extension out");

@@ -161,6 +161,19 @@ static void pages(void) {
           p.flags == FLAG(MANY_PAGES));
     CHECK(p.nx == NX && p.bit_depth == 16 && wrong_pixels(&p, 16) == 0 && strstr(p.note, "Page 3 of 4"));
     picture_free(&p);
+    const uint8_t *file = (const uint8_t *)bytes;
+    CHECK(tiff_decode_page(file, n, 2, LIMIT_PIXELS, &p, &e) == ST_OK && p.nx == 40 && strstr(p.note, "Page 2 of 4"));
+    picture_free(&p);
+    CHECK(tiff_decode_page(file, n, 4, LIMIT_PIXELS, &p, &e) == ST_OK && p.nx == NX && p.bit_depth == 8);
+    picture_free(&p);
+    CHECK_FAILS(tiff_decode_page(file, n, 1, LIMIT_PIXELS, &p, &e), ST_BAD_INPUT, e, "thumbnail");
+    e = (error){ 0 };
+    CHECK_FAILS(tiff_decode_page(file, n, 5, LIMIT_PIXELS, &p, &e), ST_BAD_INPUT, e, "the file has 4");
+    free(bytes);
+    bytes = make(&plain, &n); /* one page: no choice */
+    e = (error){ 0 };
+    CHECK(tiff_decode_page((const uint8_t *)bytes, n, 3, LIMIT_PIXELS, &p, &e) == ST_OK && p.nx == NX);
+    picture_free(&p);
     free(bytes);
 }
 

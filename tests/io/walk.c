@@ -1,4 +1,5 @@
-/* The walk: byte order, what is left out, links that leave or loop. */
+/* The walk: natural order, what is left alone and why, links that leave or loop. */
+#include <sys/stat.h>
 #include <unistd.h>
 
 #include "base/limits.h"
@@ -8,6 +9,30 @@
 #include "scratch.h"
 
 static void put(const char *name) { scratch_put(name, "x", 1); }
+
+static const char *left_because(const file_list *l, const char *name) {
+    for (size_t i = 0; i < l->n_left; i++)
+        if (!strcmp(l->left[i].path, name)) return l->left[i].why;
+    return "";
+}
+
+static void test_order(void) {
+    static const char *const some[] = { "",    "a",      "a/z",  "a1",    "a01",     "a1b",     "a2",     "a10",
+                                        "a10.1", "a10.09", "a10x", "a-b/c", "img9/x1", "img10/x", "img10y", "\xff\x01" };
+    enum { N = sizeof some / sizeof some[0] };
+    CHECK(compare_natural("img2.png", "img10.png") < 0 && compare_natural("img10.png", "img2.png") > 0);
+    CHECK(compare_natural("W3_9", "W03_10") < 0 && compare_natural("W03_9", "W3_10") < 0);
+    CHECK(compare_natural("a/b", "a-c") < 0 && compare_natural("a/b10", "a/b9") > 0);
+    CHECK(compare_natural("x1", "x01") != 0 && compare_natural("x1", "x1") == 0);
+    CHECK(compare_natural("99999999999999999999998", "99999999999999999999999") < 0);
+    for (int i = 0; i < N; i++)
+        for (int j = 0; j < N; j++) {
+            int ij = compare_natural(some[i], some[j]), ji = compare_natural(some[j], some[i]);
+            CHECK((ij > 0) == (ji < 0) && (ij == 0) == (i == j));
+            for (int k = 0; k < N; k++) /* an order that qsort can live with */
+                if (ij < 0 && compare_natural(some[j], some[k]) < 0) CHECK(compare_natural(some[i], some[k]) < 0);
+        }
+}
 
 static int walked(const file_list *l, const char *name) {
     for (size_t i = 0; i < l->n; i++)
@@ -19,6 +44,7 @@ int main(void) {
     error e = { 0 };
     file_list l = { 0 };
     scratch_make();
+    test_order();
     static const char *const made[] = { "in", "in/sub", "in/sub/.hidden", "in/done", "in/foreign", "out" };
     for (size_t i = 0; i < sizeof made / sizeof made[0]; i++)
         CHECK(folder_make(scratch(made[i]), &e) == ST_OK);
@@ -28,6 +54,8 @@ int main(void) {
     };
     for (size_t i = 0; i < sizeof images / sizeof images[0]; i++) put(images[i]);
     put("in/notes.txt");
+    put("in/~$b.png");
+    put("in/b.png.Part");
     static const char own[] = "{ \"name\": \"sward-results\" }", other[] = "{ \"name\": \"weather\" }";
     scratch_put("in/done/datapackage.json", own, sizeof own - 1);
     scratch_put("in/datapackage.json", own, sizeof own - 1); /* the root is walked all the same */
@@ -42,8 +70,20 @@ int main(void) {
                                         "pipe.png", "self.png", "sub/c.tif", "z.png",      "\xff\x01.png" };
     CHECK(l.n == sizeof want / sizeof want[0]);
     for (size_t i = 0; i < l.n && i < sizeof want / sizeof want[0]; i++) CHECK(!strcmp(l.paths[i], want[i]));
+    CHECK(!strcmp(left_because(&l, ".e.png"), "hidden") && !strcmp(left_because(&l, "sub/.hidden"), "hidden"));
+    CHECK(strstr(left_because(&l, "~$b.png"), "temporary") && strstr(left_because(&l, "b.png.Part"), "temporary"));
+    CHECK(strstr(left_because(&l, "leaves.png"), "out of the folder") && strstr(left_because(&l, "leaves"), "out of"));
+    CHECK(strstr(left_because(&l, "done"), "earlier run") && strstr(left_because(&l, "sub/loop"), "around it"));
+    CHECK(l.n_left == 8);
     file_list_free(&l);
     file_list_free(&l);
+    if (geteuid() != 0) { /* the superuser reads everything */
+        CHECK(folder_make(scratch("in/shut"), &e) == ST_OK && !chmod(scratch("in/shut"), 0));
+        CHECK(folder_walk(scratch("in"), load_knows_name, &l, &e) == ST_OK &&
+              strstr(left_because(&l, "shut"), "cannot be read"));
+        CHECK(!chmod(scratch("in/shut"), 0700));
+        file_list_free(&l);
+    }
 
     char deep[400] = "in";
     for (int i = 0; i < LIMIT_FOLDER_DEPTH + 2; i++) {
