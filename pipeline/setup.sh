@@ -2,7 +2,7 @@
 # Use: . pipeline/setup.sh; sward_setup PACKAGE...
 # Idempotent: with everything there it does nothing and needs neither network nor root.
 
-sward_build_packages="gcc libc6-dev cmake ninja-build pkg-config libpng-dev libtiff-dev libjpeg62-turbo-dev libexpat1-dev libpcre2-dev libfftw3-dev libcjson-dev libsqlite3-dev libcminpack-dev libcairo2-dev libfreetype-dev fonts-dejavu-core"
+sward_build_packages="gcc libc6-dev cmake ninja-build pkg-config libpng-dev libtiff-dev libjpeg62-turbo-dev libexpat1-dev libpcre2-dev libfftw3-dev libcjson-dev libsqlite3-dev libcminpack-dev libjs-chart.js libcairo2-dev libfreetype-dev fonts-dejavu-core"
 
 sward_die() {
     echo "sward: $*" >&2

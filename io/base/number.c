@@ -28,6 +28,26 @@ const char *number_text(double v, int digits, char *out) {
     return out;
 }
 
+enum { MOST_PLACES = 15 };
+
+const char *number_places(double v, int places, char *out) {
+    out[0] = '\0';
+    if (!isfinite(v) || fabs(v) > 1e15) return isfinite(v) ? number_text(v, MOST_PLACES, out) : out;
+    if (places > MOST_PLACES) places = MOST_PLACES;
+    double unit = pow(10.0, -places), rounded = places < 0 ? round(v / unit) * unit : v;
+    snprintf(out, NUMBER_TEXT, "%.*f", places < 0 ? 0 : places, rounded);
+    if (out[0] == '-' && strspn(out + 1, "0.") == strlen(out + 1)) memmove(out, out + 1, strlen(out)); /* no "-0.0" */
+    return out;
+}
+
+int number_places_of(double v, int digits) {
+    double size = fabs(v);
+    if (!(size > 0.0) || !isfinite(size)) return 0;
+    int places = digits - 1 - (int)floor(log10(size));
+    double rounded = round(size * pow(10.0, places)); /* 0.996 with two digits is 1.0, one place less */
+    return rounded >= pow(10.0, digits) ? places - 1 : places;
+}
+
 const char *number_percent(double v, int digits, char *out) {
     char shown[NUMBER_TEXT];
     number_text(v, digits, shown);

@@ -12,6 +12,13 @@ int number_parse(const char *s, double *out);
  * `out` holds NUMBER_TEXT bytes; returned for convenience. */
 const char *number_text(double v, int digits, char *out);
 
+/* Rounded to 10^-places (places may be negative) and printed with exactly that many decimals: what an uncertainty leaves of a
+ * value. "" for a missing value. */
+const char *number_places(double v, int places, char *out);
+
+/* Places that keep `digits` significant digits of v; 0 for a value that is 0 or missing. */
+int number_places_of(double v, int digits);
+
 /* The same value times 100 with exactly the digits that number_text(v, digits) shows, without rounding again. */
 const char *number_percent(double v, int digits, char *out);
 

@@ -107,27 +107,36 @@ static int shown_number(const column *c, const void *row, double *v) {
     return c && number_parse(column_cell(c, row, buffer), v);
 }
 
-static void add_number(textbuf *out, double v, int digits, int percent) {
-    char text[NUMBER_TEXT];
-    text_add(out, percent ? number_percent(v, digits, text) : number_text(v, digits, text));
+/* The cell of the tables in the attribute, what is left of it by rounding as the text. */
+static void add_data(textbuf *out, const column *c, const void *row, int percent, const char *shown) {
+    char cell[NUMBER_TEXT];
+    text_addf(out, "<data%s value=\"%s\">%s</data>", percent ? " class=\"percent\"" : "", column_cell(c, row, cell), shown);
 }
 
-void html_number(textbuf *out, const column *c, const void *row, int percent) {
+void html_number(textbuf *out, const column *c, const void *row, int percent, int digits) {
+    char text[NUMBER_TEXT];
     double v;
-    if (shown_number(c, row, &v))
-        add_number(out, v, c->kind == COL_COUNT ? 15 : c->digits, percent);
-    else
+    if (!shown_number(c, row, &v)) {
         text_add(out, EN_DASH);
+        return;
+    }
+    if (c->kind == COL_COUNT) digits = 15;
+    else if (digits > c->digits) digits = c->digits;
+    add_data(out, c, row, percent, percent ? number_percent(v, digits, text) : number_text(v, digits, text));
 }
 
 void html_value(textbuf *out, const column *c, const column *twin, const void *row, int percent) {
-    double v, u;
-    html_number(out, c, row, percent);
-    if (!shown_number(c, row, &v)) return;
-    if (!shown_number(twin, row, &u)) return;
-    text_add(out, " <span class=\"u\">\xc2\xb1 ");
-    add_number(out, 2.0 * u, twin->digits, percent);
-    text_add(out, "</span>");
+    enum { OF_UNCERTAINTY = 2, WITHOUT = 4 };
+    char text[NUMBER_TEXT];
+    double v, u, scale = percent ? 100.0 : 1.0;
+    if (!shown_number(c, row, &v) || !shown_number(twin, row, &u) || !(u > 0.0)) {
+        html_number(out, c, row, percent, WITHOUT);
+        return;
+    }
+    double U = 2.0 * u * scale;
+    int places = number_places_of(U, OF_UNCERTAINTY);
+    add_data(out, c, row, percent, number_places(v * scale, places, text));
+    text_addf(out, " <span class=\"u\">\xc2\xb1 %s</span>", number_places(U, places, text));
 }
 
 void html_badge(textbuf *out, const char *word) {

@@ -28,12 +28,14 @@ const column *column_find(const column *columns, size_t n, const char *name);
 /* The cell as the CSV prints it, escaped; an en dash when empty. */
 void html_cell(textbuf *out, const column *c, const void *row);
 
-/* "value +- U (k = 2)" of a column and its twin: U is twice the uncertainty that the CSV prints. `percent` multiplies both
- * by 100. The twin may be NULL. */
+/* "value +- U (k = 2)" of a column and its twin, both with the digits that U leaves: two of U. The value stands in a <data>
+ * element whose attribute holds the cell of the tables, all digits, so that page and results.json can be compared; U is twice
+ * the uncertainty that the CSV prints. `percent` shows both times 100. The twin may be NULL. */
 void html_value(textbuf *out, const column *c, const column *twin, const void *row, int percent);
 
-/* A number of a column as printed, times 100 when `percent`; an en dash when empty. */
-void html_number(textbuf *out, const column *c, const void *row, int percent);
+/* A number of a column in a <data> element likewise, shown with at most `digits` significant digits, times 100 when
+ * `percent`; an en dash when empty. */
+void html_number(textbuf *out, const column *c, const void *row, int percent, int digits);
 
 /* Verdict or status as sign + word + colour, never by colour alone. */
 void html_badge(textbuf *out, const char *word);

@@ -3,9 +3,6 @@
 #define SWARD_REPORT_PAGE_H
 #include "report/results.h"
 
-extern const char *const page_style_parts[]; /* the style sheet, NULL behind the last part */
-extern const char page_script[];             /* sorting, filtering, copying; the page is complete without it */
-
 /* In the order of the page. */
 void page_verdicts(const results *r, textbuf *out); /* the run's verdict, its reasons, what to do next */
 void page_samples(const results *r, textbuf *out);  /* one line a sample, with pictures of value and target */
@@ -33,6 +30,8 @@ void page_reason(textbuf *out, const results *r, size_t sample, size_t target, c
 /* The further members of a row in results.json as an object, which the caller deletes; NULL where there are none. */
 struct cJSON *page_members(const char *json);
 
+/* A flag as a person writes it: "no pixel size". */
+void page_flag_name(textbuf *out, int bit);
 /* A flag or reason cell: known words with their meaning, anything else as it is. */
 void page_flags(textbuf *out, const char *words);
 

@@ -31,7 +31,9 @@ static void add_flag_list(const results *r, textbuf *out) {
             text_add(out, "<h3>Remarks and reasons on this page</h3>\n<div class=\"scroll\" "
                           "tabindex=\"0\" role=\"region\" aria-label=\"Remarks and reasons\"><table><thead><tr>"
                           "<th scope=\"col\">Word</th><th scope=\"col\">Meaning</th></tr></thead><tbody>\n");
-        text_addf(out, "<tr><th scope=\"row\"><code>%s</code></th><td>", flag_word(bit));
+        text_add(out, "<tr><th scope=\"row\">");
+        page_flag_name(out, bit);
+        text_addf(out, "<br><code>%s</code></th><td>", flag_word(bit));
         html_text(out, flag_meaning(bit));
         text_add(out, "</td></tr>\n");
     }

@@ -17,6 +17,10 @@ enum { THUMB_WIDTH = 524, THUMB_LEAST = 260, FULL_SIZE_PICTURES = 16, DETAIL_NX 
 enum { MAX_CARDS = 500, MOST_DETAILS = 40 };
 static const size_t picture_budget = (size_t)5 << 19; /* bytes of embedded pictures */
 
+void page_flag_name(textbuf *out, int bit) {
+    for (const char *c = flag_word(bit); *c; c++) text_add_n(out, *c == '_' ? " " : c, 1);
+}
+
 void page_flags(textbuf *out, const char *words) {
     size_t n = 0;
     for (const char *p = words; p && *p; p += n) {
@@ -33,7 +37,8 @@ void page_flags(textbuf *out, const char *words) {
             html_text(out, flag_meaning(bit));
             text_add(out, "\">");
         }
-        html_text(out, word.s);
+        if (bit < FLAG_COUNT) page_flag_name(out, bit);
+        else html_text(out, word.s);
         if (bit < FLAG_COUNT) text_add(out, "</span>");
         if (word.failed) out->failed = 1;
         text_free(&word);
@@ -47,7 +52,9 @@ static void add_reason(textbuf *out, const char *reason) {
         size_t n = strlen(flag_word(bit));
         for (const char *p = reason; (p = strstr(p, flag_word(bit))); p += n) {
             if ((p > reason && p[-1] != ' ') || (p[n] && p[n] != ' ')) continue;
-            text_addf(out, "%s<strong>%s</strong>: ", known++ ? "; " : "", flag_word(bit));
+            text_addf(out, "%s<strong>", known++ ? "; " : "");
+            page_flag_name(out, bit);
+            text_add(out, "</strong>: ");
             html_text(out, flag_meaning(bit));
             break;
         }

@@ -101,60 +101,44 @@ static plot small_chart(const char *title, const char *x_label, const char *y_la
                    .no_legend = 1 };
 }
 
-/* The outline of the bins as one line with the area below it; dashes at D10, D50 and D90. */
+/* Shares of the bins; dashes at D10, D50 and D90. */
 static void draw_sizes(const sample_row *s, const gathered *g, const axes *a, textbuf *out) {
-    double share[MAX_BINS], x[2 * MAX_BINS + 2], y[2 * MAX_BINS + 2], zero[2 * MAX_BINS + 2], middle[MAX_BINS];
-    double at[3][2], end[2] = { 0.0, a->share_hi };
-    const double d[3] = { s->size_d10_nm, s->size_d50_nm, s->size_d90_nm };
-    size_t n = 0;
+    double share[MAX_BINS], middle[MAX_BINS];
+    const plot_rule quantiles[3] = { { s->size_d10_nm, "D10", 1 }, { s->size_d50_nm, "D50", 1 }, { s->size_d90_nm, "D90", 1 } };
     sizes_histogram(&g->sizes, a->size_lo, a->size_step, a->bins, share);
     for (size_t k = 0; k < a->bins; k++) {
-        double left = a->size_lo + (double)k * a->size_step;
         share[k] *= 100.0;
-        middle[k] = left + 0.5 * a->size_step;
-        x[n] = left;
-        y[n++] = share[k];
-        x[n] = left + a->size_step;
-        y[n++] = share[k];
+        middle[k] = a->size_lo + ((double)k + 0.5) * a->size_step;
     }
-    for (size_t i = 0; i < n; i++) zero[i] = 0.0;
-    plot_series lines[4] = { { .x = x, .y = y, .lo = zero, .hi = y, .n = n } };
-    for (size_t k = 0; k < 3; k++) {
-        at[k][0] = at[k][1] = d[k];
-        lines[k + 1] = (plot_series){ .x = at[k], .y = end, .n = isfinite(d[k]) ? 2 : 0, .style = PLOT_DASHED, .tone = 1 };
-    }
-    plot p = small_chart(s->sample, "cell diameter (nm)", "share of features (%)", lines, 4);
+    plot_series bins = { .x = middle, .y = share, .n = a->bins, .style = PLOT_STEPS };
+    plot p = small_chart(s->sample, "cell diameter, middle of the bin (nm)", "share of features (%)", &bins, 1);
     p.from_zero = 1;
     p.y_lo = 0.0;
     p.y_hi = a->share_hi;
-    plot_series bins = { .x = middle, .y = share, .n = a->bins };
-    plot table = small_chart(s->sample, "middle of the bin (nm)", "share of features (%)", &bins, 1);
+    p.rules = quantiles;
+    p.n_rules = 3;
     text_add(out, "<figure>");
-    plot_svg(&p, out);
-    plot_table(&table, 0, out);
+    plot_chart(&p, 0, NULL, out);
     text_add(out, "</figure>\n");
 }
 
 static void draw_acf(const sample_row *s, const gathered *g, const axes *a, textbuf *out) {
-    plot_series lines[2 * MAX_LINES];
-    double at[MAX_LINES][2], end[2] = { a->acf_lo, 1.0 };
+    plot_series lines[MAX_LINES];
+    plot_rule rings[MAX_LINES];
     static const char *const label[MAX_LINES] = { "micrograph 1", "micrograph 2", "micrograph 3", "micrograph 4" };
     for (size_t k = 0; k < g->n_acf; k++) {
         size_t n = 0;
         while (n < g->acf[k].n && g->acf[k].x[n] <= a->lag_hi) n++;
         lines[k] = (plot_series){ .x = g->acf[k].x, .y = g->acf[k].y, .n = n, .tone = (int)k, .label = label[k] };
-        at[k][0] = at[k][1] = g->ring[k];
-        lines[g->n_acf + k] =
-            (plot_series){ .x = at[k], .y = end, .n = isfinite(g->ring[k]) ? 2 : 0, .style = PLOT_DASHED, .tone = (int)k };
+        rings[k] = (plot_rule){ g->ring[k], "ring", (int)k };
     }
-    plot p = small_chart(s->sample, "distance (nm)", "autocorrelation", lines, 2 * g->n_acf);
+    plot p = small_chart(s->sample, "distance (nm)", "autocorrelation", lines, g->n_acf);
     p.y_lo = a->acf_lo;
     p.y_hi = 1.0;
-    plot table = p;
-    table.n_series = g->n_acf;
+    p.rules = rings;
+    p.n_rules = g->n_acf;
     text_add(out, "<figure>");
-    plot_svg(&p, out);
-    plot_table(&table, 0, out);
+    plot_chart(&p, 0, NULL, out);
     text_add(out, "</figure>\n");
 }
 

@@ -1,6 +1,6 @@
 /* One line a sample: verdict, every targeted quantity with its uncertainty and a small picture of value, interval and target,
- * height, remarks. All pictures of a column share their axis. The digits are those of samples.csv and results.json, never
- * fewer: what the uncertainty makes meaningless stays visible, so that page and tables can be compared. */
+ * height, remarks. All pictures of a column share their axis. Values show
+ * the digits their uncertainty leaves; all digits of samples.csv and results.json stand behind them in the page (report/html.h). */
 #include <math.h>
 #include <string.h>
 
@@ -35,13 +35,16 @@ void page_sample_value(textbuf *out, const sample_row *s, const char *name) {
         text_add(out, "\xe2\x80\x93");
         return;
     }
-    html_value(out, c, page_sample_column(name, "_u"), s, page_percent(name));
-    if (lo && hi && *column_cell(lo, s, cell) && *column_cell(hi, s, cell)) {
+    int interval = lo && hi && *column_cell(lo, s, cell) && *column_cell(hi, s, cell);
+    if (interval) { /* of no common place where it spans decades: two digits each */
+        html_number(out, c, s, page_percent(name), 2);
         text_add(out, " <span class=\"u\">(");
-        html_number(out, lo, s, page_percent(name));
+        html_number(out, lo, s, page_percent(name), 2);
         text_add(out, " to ");
-        html_number(out, hi, s, page_percent(name));
+        html_number(out, hi, s, page_percent(name), 2);
         text_add(out, ")</span>");
+    } else {
+        html_value(out, c, page_sample_column(name, "_u"), s, page_percent(name));
     }
     if (*column_cell(c, s, cell)) add_unit(out, c);
 }
@@ -248,8 +251,8 @@ void page_samples(const results *r, textbuf *out) {
     text_add(out, "<section id=\"samples\"><h2>Samples</h2>\n<p class=\"lead\">Value \xc2\xb1 expanded uncertainty U (k = 2, about 95 %); "
                   "a range in brackets is a 95 % interval that need not be centred. In the pictures: dot and line are value and "
                   "interval, the shaded part is the target. A value conforms or fails only when its uncertainty is clear of the "
-                  "limit (ISO 14253-1). The digits are those of samples.csv and results.json; the uncertainty says how many of "
-                  "them mean something.</p>\n"
+                  "limit (ISO 14253-1). Values are rounded to what their uncertainty leaves; copies and samples.csv "
+                  "hold all digits.</p>\n"
                   "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Samples with verdicts\"><table class=\"sort filter "
                   "samples\">");
     table_head(r, q, n, out);

@@ -189,10 +189,8 @@ static void draw_series(const results *r, const etches *t, const char *name, tex
                .height = 300 };
     if (!any_finite(s.y, t->n)) return;
     find_target(r, name, R ? 100.0 : 1.0, &p);
-    text_addf(out, "<figure><div class=\"scroll wide\" tabindex=\"0\" role=\"region\" aria-label=\"Chart: %s\">\n", p.title);
-    plot_svg(&p, out);
-    text_add(out, "</div>\n");
-    plot_table(&p, 0, out);
+    text_add(out, "<figure class=\"wide\">");
+    plot_chart(&p, 0, NULL, out);
     text_add(out, R ? "<figcaption>Bars: 95 % interval of the prediction, where this run made "
                       "it.</figcaption></figure>\n"
                     : "<figcaption>Bars: \xc2\xb1 U (k = 2).</figcaption></figure>\n");

@@ -107,8 +107,7 @@ static void draw_spectrum(const results *r, size_t from, size_t n, spectrum_curv
                .height = 240,
                .no_legend = 1 };
     text_add(out, "<figure>");
-    plot_svg(&p, out);
-    plot_table(&p, 2, out);
+    plot_chart(&p, 2, "references", out);
     text_add(out, "</figure>\n");
     if (title.failed) out->failed = 1;
     text_free(&title);
@@ -120,7 +119,7 @@ static void draw_references(const spectrum_curves *k, textbuf *out) {
                               { .x = k->coated.x, .y = k->coated.y, .n = k->coated.n, .label = "75 nm nitride" } };
     plot p = { .title = "polished and coated silicon", .x_label = "wavelength (nm)", .y_label = "reflectance (%)",
                .series = series, .n_series = 2 };
-    if (k->polished.n || k->coated.n) plot_table(&p, 0, out);
+    plot_table(&p, 0, "references", out);
 }
 
 static int same_curve(const spectrum_row *a, const spectrum_row *b) {
@@ -195,15 +194,18 @@ static void optics_cell(textbuf *out, const sample_row *s, const char *name) {
         text_add(out, "</td>");
         return;
     }
+    int weighted = !strcmp(name, "weighted_reflectance");
     text_add(out, "<td class=\"n\">");
-    html_value(out, c, strcmp(name, "height_nm") ? NULL : sample_column("height_nm_u"), s,
-               page_percent(name));
+    if (weighted || !strcmp(name, "current_loss_mA_cm2"))
+        html_number(out, c, s, page_percent(name), 2);
+    else
+        html_value(out, c, strcmp(name, "height_nm") ? NULL : sample_column("height_nm_u"), s, page_percent(name));
     text_add(out, "</td>");
-    if (strcmp(name, "weighted_reflectance")) return;
+    if (!weighted) return;
     text_add(out, "<td class=\"n\">");
-    html_number(out, lo, s, 1);
+    html_number(out, lo, s, 1, 2);
     text_add(out, " to ");
-    html_number(out, hi, s, 1);
+    html_number(out, hi, s, 1, 2);
     text_add(out, "</td>");
 }
 

@@ -72,6 +72,8 @@ static void widen_y(const plot *p, range *r, double v) {
         widen(r, log10(v));
 }
 
+static double bin_step(const plot_series *s) { return s->n > 1 ? s->x[1] - s->x[0] : 1.0; }
+
 /* The range of what is drawn; 0 when nothing is. */
 static int find_ranges(const plot *p, range *x, range *y) {
     *x = *y = (range){ HUGE_VAL, -HUGE_VAL };
@@ -79,7 +81,9 @@ static int find_ranges(const plot *p, range *x, range *y) {
         for (size_t i = 0; i < p->series[s].n; i++) {
             const plot_series *q = &p->series[s];
             if (!isfinite(q->y[i])) continue;
-            widen(x, q->x[i]);
+            double half = q->style == PLOT_STEPS ? 0.5 * bin_step(q) : 0.0;
+            widen(x, q->x[i] - half);
+            widen(x, q->x[i] + half);
             widen_y(p, y, q->y[i]);
             if (q->lo) widen_y(p, y, q->lo[i]);
             if (q->hi) widen_y(p, y, q->hi[i]);
@@ -259,6 +263,25 @@ static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
               s->style == PLOT_LINE ? "2.2" : "1.6", dashes(s->style));
 }
 
+/* The outline of the bins and the area below it. */
+static void draw_steps(const plot_series *s, const frame *f, textbuf *out) {
+    double half = 0.5 * bin_step(s), floor_y = at_y(f, f->y_lo);
+    if (!s->n) return;
+    text_addf(out, "<path d=\"M%.1f %.1f", at_x(f, s->x[0] - half), floor_y);
+    for (size_t i = 0; i < s->n; i++)
+        text_addf(out, "V%.1fH%.1f", at_y(f, isfinite(s->y[i]) ? s->y[i] : f->y_lo), at_x(f, s->x[i] + half));
+    text_addf(out, "V%.1f\" style=\"fill:%s;stroke:%s\" fill-opacity=\"0.22\" stroke-width=\"1.8\"/>\n", floor_y, tone_colour[s->tone],
+              tone_colour[s->tone]);
+}
+
+static void draw_rules(const plot *p, const frame *f, textbuf *out) {
+    for (size_t k = 0; k < p->n_rules; k++) {
+        double x = at_x(f, p->rules[k].at);
+        if (isfinite(x) && x >= f->left && x <= f->right)
+            draw_line(out, x, f->top, x, f->bottom, tone_colour[p->rules[k].tone], " stroke-width=\"1.6\" stroke-dasharray=\"8 4\"");
+    }
+}
+
 static void draw_mark(textbuf *out, plot_mark mark, double x, double y) {
     switch (mark) {
     case MARK_DIAMOND:
@@ -349,10 +372,11 @@ void plot_svg(const plot *given, textbuf *out) {
         if (p.series[i].style != PLOT_POINTS && p.series[i].lo && p.series[i].hi)
             draw_band(&p.series[i], &f, out);
     for (size_t i = 0; i < p.n_series; i++)
-        if (p.series[i].style == PLOT_POINTS)
-            draw_points(&p, &p.series[i], &f, out);
-        else
-            draw_curve(&p.series[i], &f, out);
+        if (p.series[i].style == PLOT_STEPS) draw_steps(&p.series[i], &f, out);
+        else if (p.series[i].style != PLOT_POINTS) draw_curve(&p.series[i], &f, out);
+    draw_rules(&p, &f, out);
+    for (size_t i = 0; i < p.n_series; i++)
+        if (p.series[i].style == PLOT_POINTS) draw_points(&p, &p.series[i], &f, out);
     if (!p.no_legend) draw_legend(&p, &f, out);
     text_add(out, "</svg>\n");
 }

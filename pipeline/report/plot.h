@@ -6,7 +6,13 @@
 
 #include "base/text.h"
 
-typedef enum { PLOT_LINE, PLOT_DASHED, PLOT_DOTTED, PLOT_POINTS } plot_style;
+typedef enum {
+    PLOT_LINE,
+    PLOT_DASHED,
+    PLOT_DOTTED,
+    PLOT_POINTS,
+    PLOT_STEPS /* a histogram: x are the middles of equal bins; the area below is filled */
+} plot_style;
 typedef enum {
     MARK_DISC,
     MARK_DIAMOND,
@@ -26,6 +32,12 @@ typedef struct {
 enum { PLOT_TONES = 4 };
 
 typedef struct {
+    double at; /* of x; not finite: not drawn */
+    const char *label;
+    int tone;
+} plot_rule; /* a dashed line from bottom to top */
+
+typedef struct {
     const char *title, *x_label, *y_label; /* with units; escaped here */
     const char *description;               /* for a reader who cannot see the chart; NULL: the title */
     int log_y;                             /* logarithmic axis; values that are not positive lie below it */
@@ -37,6 +49,8 @@ typedef struct {
     size_t n_names;
     const plot_series *series;
     size_t n_series;
+    const plot_rule *rules;
+    size_t n_rules;
     int width, height; /* of the view box, px; 0: 720 x 320 */
     int no_legend;     /* the page says once for many charts what their lines are */
 } plot;
@@ -44,9 +58,15 @@ typedef struct {
 /* Appends one <svg> element; failure is remembered in `out` (text_check). Without any finite value the chart says so. */
 void plot_svg(const plot *p, textbuf *out);
 
-/* The same values as a folded table, one line a point: series, x, y and the ends of its band or bar. Series before `first`
- * and points without a value are left out; `first` keeps a reference that many charts share from being told again. */
-void plot_table(const plot *p, size_t first, textbuf *out);
+/* The same values as a folded table, one line a point: series, x, y and the ends of its band or bar, the verdict of marked
+ * points. One tbody a series. Series before `first` and points without a value are left out; `first` keeps a reference that
+ * many charts share from being told again. `id` of the table, NULL: none. */
+void plot_table(const plot *p, size_t first, const char *id, textbuf *out);
+
+/* Chart of the page: the static drawing in a box whose attribute data-plot describes it, followed by its table. The page's
+ * script draws the same anew, to be asked point by point, from that description and the numbers of the table.
+ *   in   first, shared: series before `first` stand in the table with the id `shared` (NULL when first is 0) */
+void plot_chart(const plot *p, size_t first, const char *shared, textbuf *out);
 
 /* Up to `max` round ticks (1, 2, 5 x 10^k) that cover lo..hi from inside; returns how many. For tests and for maps. */
 size_t plot_ticks(double lo, double hi, size_t max, double *ticks);
