@@ -8,6 +8,7 @@
 #include <string.h>
 
 #include "base/limits.h"
+#include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
 #include "io/bar_priv.h"
@@ -170,6 +171,17 @@ static void measure_bar(double bar_nm, size_t top, size_t bottom, picture *p) {
         note_add(p->scales.note, "No scale bar was found, so its length could not be used.");
 }
 
+/* The rows that are not measured, for whoever shows the picture. */
+static status keep_strip(const float *px, micrograph *m, error *e) {
+    if (!m->strip_rows) return ST_OK;
+    size_t top = m->strip_top * m->nx, bottom = (m->strip_rows - m->strip_top) * m->nx;
+    m->strip = mem_array(m->strip_rows * m->nx, sizeof *m->strip);
+    if (!m->strip) return NO_MEMORY(e, "the info strip");
+    memcpy(m->strip, px, top * sizeof *px);
+    memcpy(m->strip + top, px + top + m->nx * m->ny, bottom * sizeof *px);
+    return ST_OK;
+}
+
 static void keep_facts(const picture *p, micrograph *m) {
     m->bit_depth = p->bit_depth;
     m->flags = p->flags;
@@ -203,6 +215,8 @@ static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const
                   r.nx, r.ny, LIMIT_MIN_SIDE);
         goto done;
     }
+    st = keep_strip(p.px, &r, e);
+    if (st != ST_OK) goto done;
     if (r.strip_top) memmove(p.px, p.px + r.strip_top * r.nx, r.nx * r.ny * sizeof *p.px);
     r.px = p.px;
     p.px = NULL;

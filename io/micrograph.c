@@ -8,6 +8,7 @@
 
 void micrograph_free(micrograph *m) {
     free(m->px);
+    free(m->strip);
     *m = (micrograph){ 0 };
 }
 

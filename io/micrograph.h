@@ -32,6 +32,7 @@ typedef struct {
     size_t file_nx, file_ny;
     size_t strip_rows;     /* rows of info strip cropped, at the bottom and at the top */
     size_t strip_top;      /* those of them at the top */
+    float *strip;          /* [strip_rows][nx] the cropped rows, from the top of the file down; owned; NULL: none */
     double y_stretch;      /* rows per row of the file: pixels that are not square, tilted views; else 1.
                               ny = round((file_ny - strip_rows) y_stretch) */
     int bit_depth;         /* of one grey level: 1 to 16, 24, 32, 64; 12 where a 12-bit detector fills 16-bit samples */

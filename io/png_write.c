@@ -60,18 +60,25 @@ static void put_scale(png_structp png, png_infop info, double px_nm) {
     }
 }
 
+static void put_palette(png_structp png, png_infop info, const uint8_t *palette) {
+    png_color colours[256];
+    for (size_t i = 0; i < 256; i++) colours[i] = (png_color){ palette[3 * i], palette[3 * i + 1], palette[3 * i + 2] };
+    png_set_PLTE(png, info, colours, 256);
+}
+
 /* Everything that may longjmp. */
-static void encode(png_structp png, png_infop info, const uint8_t *samples, const png_format *f) {
+static void encode(png_structp png, png_infop info, const uint8_t *samples, const uint8_t *palette, const png_format *f) {
     static const uint16_t one = 1;
     uint8_t low_first = 0;
     memcpy(&low_first, &one, 1);
     png_set_user_limits(png, (png_uint_32)LIMIT_SIDE, (png_uint_32)LIMIT_SIDE);
-    png_set_IHDR(png, info, (png_uint_32)f->nx, (png_uint_32)f->ny, f->bit_depth,
-                 f->channels == 3 ? PNG_COLOR_TYPE_RGB : PNG_COLOR_TYPE_GRAY, PNG_INTERLACE_NONE,
+    int kind = palette ? PNG_COLOR_TYPE_PALETTE : f->channels == 3 ? PNG_COLOR_TYPE_RGB : PNG_COLOR_TYPE_GRAY;
+    png_set_IHDR(png, info, (png_uint_32)f->nx, (png_uint_32)f->ny, f->bit_depth, kind, PNG_INTERLACE_NONE,
                  PNG_COMPRESSION_TYPE_DEFAULT, PNG_FILTER_TYPE_DEFAULT);
     png_set_compression_level(png, 4);
     png_set_compression_strategy(png, 1); /* Z_FILTERED */
-    png_set_filter(png, PNG_FILTER_TYPE_BASE, PNG_FILTER_SUB);
+    png_set_filter(png, PNG_FILTER_TYPE_BASE, palette ? PNG_FILTER_NONE : PNG_FILTER_SUB);
+    if (palette) put_palette(png, info, palette);
     put_scale(png, info, f->px_nm);
     png_write_info(png, info);
     if (f->bit_depth == 16 && low_first) png_set_swap(png);
@@ -90,7 +97,7 @@ static status check_format(const png_format *f, error *e) {
     return ST_OK;
 }
 
-status png_encode(const void *samples, const png_format *f, uint8_t **bytes, size_t *n, error *e) {
+static status to_memory(const void *samples, const uint8_t *palette, const png_format *f, uint8_t **bytes, size_t *n, error *e) {
     status st = check_format(f, e);
     if (st != ST_OK) return st;
     sink *s = mem_array(1, sizeof *s); /* on the heap: whole after a longjmp */
@@ -103,7 +110,7 @@ status png_encode(const void *samples, const png_format *f, uint8_t **bytes, siz
         st = fail(e, ST_NO_MEMORY, "the PNG cannot be written: %s", s->what);
     else {
         png_set_write_fn(png, s, on_write, on_flush);
-        encode(png, info, samples, f);
+        encode(png, info, samples, palette, f);
     }
     png_destroy_write_struct(&png, &info);
     if (st == ST_OK) {
@@ -114,6 +121,17 @@ status png_encode(const void *samples, const png_format *f, uint8_t **bytes, siz
     free(s->bytes);
     free(s);
     return st;
+}
+
+status png_encode(const void *samples, const png_format *f, uint8_t **bytes, size_t *n, error *e) {
+    return to_memory(samples, NULL, f, bytes, n, e);
+}
+
+status png_encode_palette(const uint8_t *samples, const uint8_t *palette, const png_format *f, uint8_t **bytes, size_t *n,
+                          error *e) {
+    if (f->channels != 1 || f->bit_depth != 8)
+        return fail(e, ST_BUG, "a palette goes with one channel of 8 bits, not with %d of %d", f->channels, f->bit_depth);
+    return to_memory(samples, palette, f, bytes, n, e);
 }
 
 status png_write(const char *path, const void *samples, const png_format *f, error *e) {

@@ -1,4 +1,4 @@
-/* PNG out: overlays (RGB) and synthetic micrographs (grey). Deterministic bytes for the same pixels. */
+/* PNG out: overlays (palette), figures (RGB) and synthetic micrographs (grey). Deterministic bytes for the same pixels. */
 #ifndef SWARD_IO_PNG_WRITE_H
 #define SWARD_IO_PNG_WRITE_H
 #include <stddef.h>
@@ -15,6 +15,10 @@ typedef struct {
 
 /* Encodes to memory. `samples` are [ny][nx][channels], uint8_t or uint16_t (host order). Caller frees *bytes. */
 status png_encode(const void *samples, const png_format *f, uint8_t **bytes, size_t *n, error *e);
+/* The same with a palette: samples (one channel of 8 bits) are places in it, its 256 colours
+ * red, green, blue one after the other. */
+status png_encode_palette(const uint8_t *samples, const uint8_t *palette, const png_format *f, uint8_t **bytes, size_t *n,
+                          error *e);
 /* png_encode + atomic write. */
 status png_write(const char *path, const void *samples, const png_format *f, error *e);
 

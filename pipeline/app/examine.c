@@ -153,15 +153,16 @@ static status write_table(const char *out, const char *kind, const char *stem, c
 }
 
 static status write_overlay(const char *path, const micrograph *m, const texture *t, char hash[65], error *e) {
-    uint8_t *rgb = NULL, *bytes = NULL;
+    overlay_picture picture = { 0 };
+    uint8_t *bytes = NULL;
     size_t n = 0;
-    png_format format = { m->nx, 0, 3, 8, isfinite(m->px_nm) ? m->px_nm : 0.0 };
-    status st = overlay_draw(m, t, &rgb, &format.ny, e);
-    if (st == ST_OK) st = png_encode(rgb, &format, &bytes, &n, e);
+    status st = overlay_draw(m, t, &picture, e);
+    png_format format = { picture.nx, picture.ny, 1, 8, isfinite(m->px_nm) ? m->px_nm : 0.0 };
+    if (st == ST_OK) st = png_encode_palette(picture.index, picture.palette, &format, &bytes, &n, e);
     if (st == ST_OK) st = file_write(path, bytes, n, e);
     if (st == ST_OK) sha256_hex(bytes, n, hash);
     free(bytes);
-    free(rgb);
+    overlay_free(&picture);
     return st;
 }
 

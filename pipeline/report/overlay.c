@@ -1,122 +1,46 @@
-/* Layers from below: stretched grey levels, cell borders (half transparent, one pixel per 1200 px of width), guard
- * frame (dark and bright dashes, so that it shows on any ground), markers (bright core, dark rim). Legend and reasons
- * stand below the picture, never on it. The hues differ in brightness too and stay apart for colour-blind eyes. The picture is for people: no number is
- * ever read back from it. */
+/* Layers from below: stretched grey levels with the cut cells veiled, cell borders with a dark seam, guard frame (dark
+ * and bright dashes), ring, markers with dark rims. Every line is light with a dark edge, so that it reads on any
+ * ground. The picture is drawn in tiles through cairo and kept as places in a palette: a few megabytes of work however large the
+ * micrograph, and a file half the size. The picture is for people: no number is ever read back from it. */
 #include "report/overlay.h"
 
 #include <math.h>
-#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
-#include "base/flags.h"
 #include "base/limits.h"
 #include "base/mem.h"
-#include "base/number.h"
 #include "base/quantity.h"
-#include "report/canvas.h"
-#include "report/rows.h"
+#include "report/overlay_priv.h"
+#include "report/palette_priv.h"
 
-static const ink border_ink = { 62, 196, 255, 0.55 }, border_out_ink = { 62, 196, 255, 0.28 };
-static const ink marker_ink = { 255, 190, 20, 1.0 }, rim_ink = { 24, 16, 0, 0.65 };
-static const ink dash_bright = { 255, 255, 255, 0.55 }, dash_dark = { 0, 0, 0, 0.45 };
-static const ink panel_ink = { 10, 14, 20, 0.74 }, paper_ink = { 255, 255, 255, 1.0 };
-static const ink band_ink = { 150, 30, 12, 0.90 };
+enum { TILE_NX = 2048, TILE_NY = 384, BATCH = 256 };
 
-/* Stretch: levels below `low` black, above `low + span` white. */
-typedef struct {
-    double low, span;
-} stretch;
-
-enum { BINS = 4096 };
-
-static double histogram_level(const size_t *count, size_t n, double share) {
-    double want = share * (double)n, sum = 0.0;
-    for (size_t b = 0; b < BINS; b++) {
-        sum += (double)count[b];
-        if (sum >= want) return ((double)b + 0.5) / BINS;
-    }
-    return 1.0;
+void overlay_free(overlay_picture *p) {
+    free(p->index);
+    *p = (overlay_picture){ 0 };
 }
 
-static status find_stretch(const micrograph *m, stretch *s, error *e) {
-    size_t n = m->nx * m->ny;
-    double lo = HUGE_VAL, hi = -HUGE_VAL;
-    for (size_t i = 0; i < n; i++) {
-        lo = fmin(lo, (double)m->px[i]);
-        hi = fmax(hi, (double)m->px[i]);
-    }
-    *s = (stretch){ 0.0, 1.0 };
-    if (!(hi > lo)) return ST_OK;
-    size_t *count = mem_array(BINS, sizeof *count);
-    if (!count) return NO_MEMORY(e, "the overlay");
-    for (size_t i = 0; i < n; i++) {
-        double bin = ((double)m->px[i] - lo) / (hi - lo) * BINS;
-        count[bin >= BINS ? BINS - 1 : bin > 0.0 ? (size_t)bin : 0]++;
-    }
-    double from = histogram_level(count, n, 0.002), to = histogram_level(count, n, 0.998);
-    if (to > from) *s = (stretch){ lo + from * (hi - lo), (to - from) * (hi - lo) };
-    free(count);
-    return ST_OK;
+void overlay_disc(pen *p, double x, double y, double r) {
+    cairo_new_sub_path(p->cr);
+    cairo_arc(p->cr, x, y, r, 0.0, 2.0 * PI);
 }
 
-static void draw_grey(canvas *c, const micrograph *m, const stretch *s) {
-    for (size_t i = 0; i < m->nx * m->ny; i++) {
-        double v = ((double)m->px[i] - s->low) / s->span;
-        uint8_t grey = (uint8_t)lround(255.0 * (v > 1.0 ? 1.0 : v > 0.0 ? v : 0.0));
-        memset(c->rgb + 3 * i, grey, 3);
-    }
-}
-
-/* A cell that touches the frame is left out of the sizes: its border is drawn fainter. */
-static int counts(const texture *t, uint32_t label) {
-    return label && label <= t->n_found && t->features[label - 1].weight > 0.0;
-}
-
-static void draw_borders(canvas *c, const texture *t, size_t width) {
-    if (!t->cells) return;
-    size_t nx = t->nx, ny = t->ny;
-    for (size_t y = 0; y < ny; y++)
-        for (size_t x = 0; x < nx; x++) {
-            uint32_t here = t->cells[y * nx + x];
-            for (size_t k = 1; k <= width; k++) {
-                uint32_t right = x + k < nx ? t->cells[y * nx + x + k] : here;
-                uint32_t below = y + k < ny ? t->cells[(y + k) * nx + x] : here;
-                if (right == here && below == here) continue;
-                uint32_t other = right != here ? right : below;
-                int strong = counts(t, here) || counts(t, other);
-                canvas_blend(c, (long)x, (long)y, strong ? border_ink : border_out_ink, 1.0);
-                break;
-            }
-        }
-}
-
-static void draw_dashes(canvas *c, double x0, double y0, double x1, double y1, double dash, double width) {
-    double length = hypot(x1 - x0, y1 - y0);
-    if (!(length > 0.0)) return;
-    long n = (long)ceil(length / dash);
-    for (long k = 0; k < n; k++) {
-        double a = (double)k * dash / length, b = fmin(1.0, (double)(k + 1) * dash / length);
-        canvas_line(c, x0 + a * (x1 - x0), y0 + a * (y1 - y0), x0 + b * (x1 - x0), y0 + b * (y1 - y0), width,
-                    k % 2 ? dash_dark : dash_bright);
-    }
-}
-
-/* The guard is half a spacing of the detected density wide: features inside it count. */
-static void draw_guard(canvas *c, const texture *t, double scale) {
-    double g = 0.5 * t->spacing_hex.value;
-    if (!(g > 0.0) || 2.0 * g >= (double)c->nx || 2.0 * g >= (double)c->ny) return;
-    double x0 = g - 0.5, y0 = g - 0.5, x1 = (double)c->nx - g - 0.5, y1 = (double)c->ny - g - 0.5;
-    double dash = 6.0 * scale;
-    draw_dashes(c, x0, y0, x1, y0, dash, scale);
-    draw_dashes(c, x1, y0, x1, y1, dash, scale);
-    draw_dashes(c, x0, y1, x1, y1, dash, scale);
-    draw_dashes(c, x0, y0, x0, y1, dash, scale);
+void overlay_diamond(pen *p, double x, double y, double r) {
+    cairo_move_to(p->cr, x, y - r);
+    cairo_line_to(p->cr, x + r, y);
+    cairo_line_to(p->cr, x, y + r);
+    cairo_line_to(p->cr, x - r, y);
+    cairo_close_path(p->cr);
 }
 
 static double spacing_px(const texture *t) {
-    return isfinite(t->spacing_acf.value) && t->spacing_acf.value > 0.0 ? t->spacing_acf.value
-                                                                        : t->spacing_hex.value;
+    return isfinite(t->spacing_acf.value) && t->spacing_acf.value > 0.0 ? t->spacing_acf.value : t->spacing_hex.value;
+}
+
+double overlay_ring_px(const texture *t) {
+    double d = t->spacing_acf.value;
+    return isfinite(d) && d > 0.0 ? d : MISSING;
 }
 
 /* Lines and markers grow with the picture, because a large one is looked at scaled down. */
@@ -128,156 +52,170 @@ double overlay_marker_radius_px(const texture *t, size_t nx) {
     return r > 3.5 * s ? 3.5 * s : r;
 }
 
-static void draw_markers(canvas *c, const texture *t, double scale) {
-    double r = overlay_marker_radius_px(t, c->nx);
+/* The ring goes around the counted feature nearest to the middle, where all its neighbours are in the picture. */
+static void place_ring(overlay_scene *s) {
+    const texture *t = s->t;
+    double best = HUGE_VAL, cx = 0.5 * (double)s->m->nx, cy = 0.5 * (double)s->m->ny, d = overlay_ring_px(t);
+    s->ring = MISSING;
     for (size_t i = 0; i < t->n_found; i++) {
-        const feature *f = &t->features[i];
-        if (f->in_guard) {
-            canvas_disc(c, f->x, f->y, r + 0.8 * scale, rim_ink);
-            canvas_disc(c, f->x, f->y, r, marker_ink);
-        } else {
-            canvas_ring(c, f->x, f->y, r, 2.2 * scale, rim_ink);
-            canvas_ring(c, f->x, f->y, r, scale, marker_ink);
+        double far = hypot(t->features[i].x - cx, t->features[i].y - cy);
+        if (!t->features[i].in_guard || !(far < best)) continue;
+        best = far;
+        s->ring_feature = i;
+    }
+    if (isfinite(best) && d < 0.5 * fmin((double)s->m->nx, (double)s->m->ny)) s->ring = d;
+}
+
+/* A line of dashes in both tones. */
+static void draw_dashes(pen *p, double x0, double y0, double x1, double y1, double scale) {
+    const double dash = 6.0 * scale;
+    cairo_set_line_width(p->cr, 1.2 * scale);
+    for (int k = 0; k < 2; k++) {
+        cairo_set_dash(p->cr, &dash, 1, k ? dash : 0.0);
+        cairo_move_to(p->cr, x0, y0);
+        cairo_line_to(p->cr, x1, y1);
+        pen_ink(p, k ? (ink){ 0.0, 0.0, 0.0, 0.6 } : (ink){ 1.0, 1.0, 1.0, 0.75 });
+        cairo_stroke(p->cr);
+    }
+    cairo_set_dash(p->cr, NULL, 0, 0.0);
+}
+
+/* The guard is half a spacing of the detected density wide: features inside it count. */
+static void draw_guard(const overlay_scene *s, pen *p) {
+    double g = 0.5 * s->t->spacing_hex.value, nx = (double)s->m->nx, ny = (double)s->m->ny;
+    if (!(g > 0.0) || 2.0 * g >= nx || 2.0 * g >= ny) return;
+    draw_dashes(p, g, g, nx - g, g, s->scale);
+    draw_dashes(p, nx - g, g, nx - g, ny - g, s->scale);
+    draw_dashes(p, g, ny - g, nx - g, ny - g, s->scale);
+    draw_dashes(p, g, g, g, ny - g, s->scale);
+}
+
+/* One pass over the markers of a kind that reach into the tile, as filled or stroked paths. Coordinates of the plane. */
+static void mark_pass(const overlay_scene *s, const overlay_tile *tile, pen *p, int counted, double r, double line, ink i) {
+    double reach = r + line + 2.0, x0 = (double)tile->x0 - reach, x1 = (double)(tile->x0 + tile->nx) + reach;
+    double y0 = (double)tile->y0 - (double)s->plane_y - reach, y1 = y0 + (double)tile->ny + 2.0 * reach;
+    size_t in_batch = 0;
+    pen_ink(p, i);
+    cairo_set_line_width(p->cr, line);
+    for (size_t k = 0; k <= s->t->n_found; k++) {
+        const feature *f = k < s->t->n_found ? &s->t->features[k] : NULL;
+        if (f && f->in_guard == counted && f->x > x0 && f->x < x1 && f->y > y0 && f->y < y1) {
+            if (counted) overlay_disc(p, f->x + 0.5, f->y + 0.5, r);
+            else overlay_diamond(p, f->x + 0.5, f->y + 0.5, r);
+            in_batch++;
         }
+        if (in_batch < BATCH && f) continue;
+        if (counted) cairo_fill(p->cr);
+        else cairo_stroke(p->cr);
+        in_batch = 0;
     }
 }
 
-/* The largest of 1, 2, 5 x 10^k that does not exceed v. */
-static double round_length(double v) {
-    double decade = pow(10.0, floor(log10(v))), lead = v / decade;
-    return decade * (lead >= 5.0 ? 5.0 : lead >= 2.0 ? 2.0 : 1.0);
+static void draw_markers(const overlay_scene *s, const overlay_tile *tile, pen *p) {
+    static const ink rim = { 0.08, 0.04, 0.0, 0.7 };
+    double r = overlay_marker_radius_px(s->t, s->m->nx), k = s->scale;
+    mark_pass(s, tile, p, 0, 1.35 * r + 0.8 * k, 3.0 * k, rim);
+    mark_pass(s, tile, p, 0, 1.35 * r + 0.8 * k, 1.5 * k, FRAME_INK);
+    mark_pass(s, tile, p, 1, r + 0.9 * k, 0.0, rim);
+    mark_pass(s, tile, p, 1, r, 0.0, COUNTED_INK);
 }
 
-static int spacing_digits(void) {
-    for (size_t i = 0; i < n_image_columns; i++)
-        if (!strcmp(image_columns[i].name, "spacing_acf_nm")) return image_columns[i].digits;
-    return 5;
-}
-
-/* A horizontal measure with end ticks. */
-static void draw_measure(canvas *c, long x, long y, double length, int unit, ink i) {
-    double w = unit, tick = 2.5 * unit;
-    canvas_line(c, (double)x, (double)y, (double)x + length, (double)y, w, i);
-    canvas_line(c, (double)x, (double)y - tick, (double)x, (double)y + tick, w, i);
-    canvas_line(c, (double)x + length, (double)y - tick, (double)x + length, (double)y + tick, w, i);
-}
-
-typedef struct {
-    double length_px;
-    char label[96];
-    ink i;
-} legend_line;
-
-static long legend_height(size_t n, int unit) { return (long)n * (FONT_HEIGHT + 3L) * unit + 6L * unit; }
-
-static void draw_legend(canvas *c, long top, const legend_line *line, size_t n, int unit) {
-    long measure = 0, row = (FONT_HEIGHT + 3L) * unit, pad = 4L * unit;
-    for (size_t k = 0; k < n; k++) {
-        long l = (long)ceil(line[k].length_px);
-        if (l > measure) measure = l;
-    }
-    canvas_fill(c, 0, top, (long)c->nx, top + legend_height(n, unit), panel_ink);
-    for (size_t k = 0; k < n; k++) {
-        long y = top + pad + (long)k * row;
-        if (line[k].length_px > 0.0)
-            draw_measure(c, pad, y + FONT_ASCENT * (long)unit / 2, line[k].length_px, unit, line[k].i);
-        canvas_text(c, line[k].length_px > 0.0 ? 3L * pad + measure : pad, y, unit, line[k].label, line[k].i);
+static void draw_ring(const overlay_scene *s, pen *p) {
+    if (!isfinite(s->ring)) return;
+    const feature *f = &s->t->features[s->ring_feature];
+    static const double width[] = { 4.2, 2.0 };
+    for (int k = 0; k < 2; k++) {
+        overlay_disc(p, f->x + 0.5, f->y + 0.5, s->ring);
+        cairo_set_line_width(p->cr, width[k] * s->scale);
+        pen_ink(p, k ? PAPER_INK : (ink){ 0.0, 0.0, 0.0, 0.65 });
+        cairo_stroke(p->cr);
     }
 }
 
-enum { LEGEND_LINES = 3 };
-
-static size_t make_legend(const micrograph *m, const texture *t, legend_line line[LEGEND_LINES]) {
-    size_t n = 0;
-    char number[NUMBER_TEXT];
-    int known = isfinite(m->px_nm) && m->px_nm > 0.0;
-    double px = known ? m->px_nm : 1.0, bar = round_length(0.22 * (double)m->nx * px), d = spacing_px(t);
-    const char *length_unit = known ? "nm" : "px";
-    snprintf(line[n].label, sizeof line[n].label, "%s %s", number_text(bar, 4, number), length_unit);
-    line[n].i = paper_ink;
-    line[n++].length_px = bar / px;
-    if (isfinite(d) && d > 0.0 && d < (double)m->nx) {
-        snprintf(line[n].label, sizeof line[n].label, "spacing %s %s",
-                 number_text(d * px, spacing_digits(), number), length_unit);
-        line[n].i = marker_ink;
-        line[n++].length_px = d;
-    }
-    snprintf(line[n].label, sizeof line[n].label, "%zu features counted", t->n_features);
-    line[n++].i = paper_ink;
-    return n;
+/* Everything of one tile; the pen's units are pixels of the picture. */
+static status draw_tile(const overlay_scene *s, const overlay_tile *tile, pen *p, cairo_surface_t *surface, error *e) {
+    size_t strip_top = s->m->strip ? s->m->strip_top : 0, strip = s->m->strip ? s->m->strip_rows : 0;
+    size_t legend_y = s->m->ny + strip;
+    cairo_identity_matrix(p->cr);
+    pen_ink(p, PANEL_INK);
+    cairo_paint(p->cr);
+    cairo_surface_flush(surface);
+    overlay_ground(s, tile);
+    cairo_surface_mark_dirty(surface);
+    cairo_translate(p->cr, -(double)tile->x0, -(double)tile->y0);
+    status st = overlay_borders(s, tile, p, e);
+    if (st) return st;
+    cairo_save(p->cr);
+    cairo_rectangle(p->cr, 0.0, (double)strip_top, (double)s->m->nx, (double)s->m->ny);
+    cairo_clip(p->cr);
+    cairo_translate(p->cr, 0.0, (double)strip_top);
+    draw_guard(s, p);
+    draw_ring(s, p); /* below the markers: it shall hide none */
+    draw_markers(s, tile, p);
+    cairo_restore(p->cr);
+    if (tile->y0 + tile->ny > legend_y) overlay_legend(s, p, (double)legend_y, 1);
+    return pen_check(p, e);
 }
 
-/* "excluded: few pixels, blurred", broken at blanks into lines that fit, from row `top` of the picture on. Returns the
- * rows it takes; draws nothing where c->rgb is NULL. */
-static long draw_reasons(canvas *c, long top, flags reasons, int unit) {
-    char text[1200] = "excluded: ";
-    size_t n = strlen(text);
-    for (int bit = 0, first = 1; bit < FLAG_COUNT; bit++) {
-        if (!(reasons >> bit & 1)) continue;
-        int k = snprintf(text + n, sizeof text - n, "%s%s", first ? "" : ", ", flag_word(bit));
-        if (k < 0 || (size_t)k >= sizeof text - n) break;
-        for (size_t i = n; i < n + (size_t)k; i++)
-            if (text[i] == '_') text[i] = ' ';
-        n += (size_t)k;
-        first = 0;
-    }
-    long pad = 4L * unit, row = (FONT_HEIGHT + 2L) * unit;
-    size_t fit = (size_t)fmax(4.0, ((double)c->nx - 2.0 * (double)pad) / (FONT_ADVANCE * unit));
-    long y = 0;
-    if (!reasons) return 0;
-    for (char *line = text; *line;) {
-        size_t length = strlen(line), take = length <= fit ? length : fit;
-        if (length > fit)
-            for (size_t k = fit; k > 0; k--)
-                if (line[k] == ' ') {
-                    take = k;
-                    break;
-                }
-        char kept = line[take];
-        line[take] = '\0';
-        if (c->rgb) canvas_fill(c, 0, top + y, (long)c->nx, top + y + row + (y ? 0 : pad), band_ink);
-        if (c->rgb) canvas_text(c, pad, top + (y ? y : pad), unit, line, paper_ink);
-        y += row + (y ? 0 : pad);
-        line[take] = kept;
-        line += take;
-        while (*line == ' ') line++;
-    }
-    return y;
+static status draw_tiles(const overlay_scene *s, const palette *colours, overlay_picture *out, cairo_surface_t *surface, pen *p,
+                         error *e) {
+    status st = ST_OK;
+    unsigned char *data = cairo_image_surface_get_data(surface);
+    size_t stride = (size_t)cairo_image_surface_get_stride(surface);
+    for (size_t y = 0; y < out->ny; y += TILE_NY)
+        for (size_t x = 0; x < out->nx && !st; x += TILE_NX) {
+            overlay_tile tile = { x, y, out->nx - x < TILE_NX ? out->nx - x : TILE_NX, out->ny - y < TILE_NY ? out->ny - y : TILE_NY,
+                                  data, stride };
+            st = draw_tile(s, &tile, p, surface, e);
+            if (st) break;
+            cairo_surface_flush(surface);
+            for (size_t k = 0; k < tile.ny; k++)
+                palette_index(colours, (const uint32_t *)(const void *)(data + k * stride), tile.nx, out->index + (y + k) * out->nx + x);
+        }
+    return st;
 }
 
-/* One unit of the lettering: letters about 10 px high when the picture is looked at 640 px wide. */
-static int lettering(size_t nx) {
-    int unit = (int)lround((double)nx / 460.0);
-    return nx < 500 ? 1 : unit < 2 ? 2 : unit;
+static status make_picture(const overlay_scene *s, cairo_surface_t *surface, pen *p, overlay_picture *out, error *e) {
+    static const ink inks[] = { { 1.0, 0.706, 0.0, 1.0 }, { 1.0, 0.541, 0.847, 1.0 }, { 0.373, 0.816, 1.0, 1.0 }, { 0.588, 0.157, 0.059, 1.0 } };
+    size_t legend = (size_t)overlay_legend(s, p, 0.0, 0);
+    overlay_picture o = { .nx = s->m->nx, .plane_y = s->plane_y, .plane_ny = s->m->ny };
+    o.ny = s->m->ny + (s->m->strip ? s->m->strip_rows : 0) + legend;
+    palette *colours = mem_array(1, sizeof *colours);
+    o.index = mem_array(o.ny, o.nx);
+    status st = colours && o.index ? ST_OK : NO_MEMORY(e, "the overlay");
+    if (!st) {
+        palette_make(inks, sizeof inks / sizeof inks[0], colours);
+        st = draw_tiles(s, colours, &o, surface, p, e);
+    }
+    if (st) {
+        overlay_free(&o);
+    } else {
+        memcpy(o.palette, colours->colour, sizeof o.palette);
+        *out = o;
+    }
+    free(colours);
+    return st;
 }
 
-status overlay_draw(const micrograph *m, const texture *t, uint8_t **rgb, size_t *ny, error *e) {
-    if (!m->px || !m->nx || !m->ny)
-        return fail(e, ST_BAD_INPUT, "the overlay needs a picture, this one is empty");
+status overlay_draw(const micrograph *m, const texture *t, overlay_picture *out, error *e) {
+    if (!m->px || !m->nx || !m->ny) return fail(e, ST_BAD_INPUT, "the overlay needs a picture, this one is empty");
     if (m->nx > LIMIT_PIXELS / m->ny) return fail(e, ST_NO_MEMORY, "the picture is too large for an overlay");
     if (t->cells && (t->nx != m->nx || t->ny != m->ny))
-        return fail(e, ST_BUG, "cells of %zu x %zu px do not fit a picture of %zu x %zu px", t->nx, t->ny,
-                    m->nx, m->ny);
-    stretch s;
-    status st = find_stretch(m, &s, e);
+        return fail(e, ST_BUG, "cells of %zu x %zu px do not fit a picture of %zu x %zu px", t->nx, t->ny, m->nx, m->ny);
+    overlay_scene s = { .m = m, .t = t, .scale = line_scale(m->nx), .plane_y = m->strip ? m->strip_top : 0 };
+    s.em = fmax(11.0, 0.0205 * (double)m->nx); /* letters about 10 px high when the picture is looked at 520 px wide */
+    double d = spacing_px(t);
+    s.line = d > 0.0 ? fmax(1.0, fmin(s.scale, 0.05 * d)) : s.scale;
+    s.seam = !(d < 14.0);
+    status st = overlay_stretch(m, &s.low, &s.span, e);
     if (st) return st;
-    double scale = line_scale(m->nx);
-    int unit = lettering(m->nx);
-    flags reasons = t->reasons | (isfinite(m->px_nm) ? 0 : FLAG(NO_PIXEL_SIZE));
-    legend_line line[LEGEND_LINES] = { 0 };
-    size_t n = make_legend(m, t, line);
-    canvas whole = { NULL, m->nx, m->ny };
-    whole.ny += (size_t)(legend_height(n, unit) + draw_reasons(&whole, 0, reasons, unit));
-    whole.rgb = mem_array(m->nx * whole.ny, 3);
-    if (!whole.rgb) return NO_MEMORY(e, "the overlay");
-    canvas c = { whole.rgb, m->nx, m->ny }; /* the picture: nothing is written over it but what was found */
-    draw_grey(&c, m, &s);
-    draw_borders(&c, t, (size_t)lround(scale));
-    draw_guard(&c, t, scale);
-    draw_markers(&c, t, scale);
-    draw_legend(&whole, (long)m->ny, line, n, unit);
-    draw_reasons(&whole, (long)m->ny + legend_height(n, unit), reasons, unit);
-    *rgb = whole.rgb;
-    *ny = whole.ny;
-    return ST_OK;
+    place_ring(&s);
+    int width = (int)(m->nx < TILE_NX ? m->nx : TILE_NX);
+    cairo_surface_t *surface = cairo_image_surface_create(CAIRO_FORMAT_RGB24, width, TILE_NY);
+    pen p = { 0 };
+    st = pen_open(surface, &p, e);
+    if (!st) st = make_picture(&s, surface, &p, out, e);
+    pen_close(&p);
+    cairo_surface_destroy(surface);
+    return st;
 }

@@ -187,9 +187,9 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
              "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you "
              "trust the "
              "numbers: one marker per feature, none missing, none on nothing; borders in the valleys.</p>\n"
-             "<ul class=\"key\"><li>filled marker: counted</li><li>hollow marker: outside the guard frame, "
+             "<ul class=\"key\"><li>disc: counted</li><li>open diamond: in the guard frame, "
              "not counted"
-             "</li><li>thin lines: cells, faint where the frame cuts them</li><li>a picture opens its overlay at full size</li><li>dashes: guard "
+             "</li><li>thin lines: cells, veiled where the picture's edge cuts them</li><li>white ring: the spacing</li><li>a picture opens its overlay at full size</li><li>dashes: guard "
              "frame</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
     text_add(out, "<div class=\"cards\">\n");

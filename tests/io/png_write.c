@@ -1,9 +1,11 @@
 /* What we write we read back, pixel for pixel and nanometre for nanometre; the same bytes every time. */
 #include "io/png_write.h"
 
+#include <png.h>
 #include <stdlib.h>
 
 #include "base/limits.h"
+#include "base/mem.h"
 #include "check.h"
 #include "io/file.h"
 #include "io/load.h"
@@ -76,6 +78,26 @@ static void scales_survive(void) {
     }
 }
 
+/* A palette, read back by libpng's own simplified reader. */
+static void palettes(void) {
+    uint8_t palette[3 * 256], *bytes = NULL, *back = mem_array(NX * NY, 3);
+    size_t n = 0, wrong = 0;
+    error e = { 0 };
+    png_format f = { NX, NY, 1, 8, 5.0 };
+    png_image image = { .version = PNG_IMAGE_VERSION };
+    for (size_t i = 0; i < sizeof palette; i++) palette[i] = (uint8_t)(i * 37u % 251u);
+    CHECK(png_encode_palette(small, palette, &f, &bytes, &n, &e) == ST_OK && bytes[25] == 3); /* colour type of IHDR */
+    CHECK(png_image_begin_read_from_memory(&image, bytes, n) && image.width == NX && image.height == NY);
+    image.format = PNG_FORMAT_RGB;
+    CHECK(back && png_image_finish_read(&image, NULL, back, 0, NULL));
+    for (size_t i = 0; back && i < NX * NY; i++) wrong += memcmp(back + 3 * i, palette + 3 * (size_t)small[i], 3) != 0;
+    CHECK(wrong == 0);
+    free(back);
+    free(bytes);
+    f.channels = 3;
+    CHECK_FAILS(png_encode_palette(small, palette, &f, &bytes, &n, &e), ST_BUG, e, "palette");
+}
+
 static void refusals(void) {
     error e = { 0 };
     uint8_t *bytes = NULL;
@@ -100,6 +122,7 @@ int main(void) {
     scratch_make();
     round_trips();
     scales_survive();
+    palettes();
     refusals();
     scratch_remove(scratch_root);
     return check_done();
