@@ -16,7 +16,7 @@
 
 #define DEFAULT_LEDGER "sward-out/history.sqlite"
 enum { OPT_HISTORY = 1, OPT_SINCE, OPT_LOT, OPT_JSON, OPT_CSV, OPT_RULES, OPT_BASELINE, OPT_CENTRE, OPT_SIGMA, OPT_SUBGROUPS, OPT_MIN, OPT_MAX,
-       OPT_TARGET, OPT_REASON, OPT_BY, OPT_AT, OPT_TEXT, OPT_KIND, OPT_FOLDER };
+       OPT_TARGET, OPT_REASON, OPT_BY, OPT_AT, OPT_TEXT, OPT_KIND, OPT_FOLDER, OPT_PHASE, OPT_FROM, OPT_TO, OPT_VALUE };
 
 /* clang-format off */
 static const struct argp_option history_options[] = {
@@ -25,14 +25,18 @@ static const struct argp_option history_options[] = {
     { "lot",       OPT_LOT,       "L",    0, "only this lot", 0 },
     { "json",      OPT_JSON,      NULL,   0, "JSON; the list: rows as in samples.csv with run_at and excluded", 0 },
     { "csv",       OPT_CSV,       NULL,   0, "the list as CSV", 0 },
-    { "rules",     OPT_RULES,     "LIST", 0, "chart: pattern tests, joined by commas: zone (default, with spread), iso, nelson, limits, none, or beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7; spread and ewma are charts of their own", 0 },
+    { "rules",     OPT_RULES,     "LIST", 0, "chart: pattern tests, joined by commas: zone (default, with spread), iso, nelson, limits, none, or beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8; spread and ewma are charts of their own", 0 },
+    { "phase",     OPT_PHASE,     "COLUMN", 0, "column of the sheet whose values are recipes: another value is another phase (default recipe)", 0 },
     { "baseline",  OPT_BASELINE,  "N",    0, "chart: the first N etches of a phase set its limits, 0 = all (default 20)", 0 },
+    { "baseline-from", OPT_FROM,  "T",    0, "chart: instead, the etches at or after this time (ISO 8601) set them", 0 },
+    { "baseline-to",   OPT_TO,    "T",    0, "chart: and those up to this time", 0 },
     { "centre",    OPT_CENTRE,    "V",    0, "chart: centre line, instead of the baseline's", 0 },
     { "sigma",     OPT_SIGMA,     "V",    0, "chart: standard deviation, instead of the baseline's", 0 },
     { "subgroups", OPT_SUBGROUPS, NULL,   0, "chart: the samples of an etch are a subgroup; limits from the scatter inside the etches", 0 },
     { "min",       OPT_MIN,       "V",    0, "chart: least value of the target, for capability", 0 },
     { "max",       OPT_MAX,       "V",    0, "chart: largest value of the target, for capability", 0 },
     { "target",    OPT_TARGET,    "V",    0, "setting: the value to reach", 0 },
+    { "value",     OPT_VALUE,     "V",    0, "setting: a setting, to say what is expected there", 0 },
     { "reason",    OPT_REASON,    "TEXT", 0, "exclude, include: why", 0 },
     { "by",        OPT_BY,        "INITIALS", 0, "exclude, include, note: who", 0 },
     { "at",        OPT_AT,        "TIME", 0, "note: when it happened; exclude, include: the time of etching, where a sample has several", 0 },
@@ -44,7 +48,7 @@ static const struct argp_option history_options[] = {
 
 typedef struct {
     const char *path, *since, *lot, *rules;
-    const char *reason, *by, *at, *text, *kind, *folder;
+    const char *reason, *by, *at, *text, *kind, *folder, *from, *to;
     const char *words[4]; /* the verb and what follows */
     size_t n_words;
     history_question ask;
@@ -61,25 +65,28 @@ static void chart_option(int key, const char *arg, history_question *ask, struct
     case OPT_BASELINE:
         number_option("baseline", arg, &v, state);
         if (v < 0.0 || v > 1e6) argp_error(state, "--baseline: '%s' is no number of etches", arg);
-        ask->options.baseline = (size_t)v;
+        ask->control.options.baseline = (size_t)v;
         break;
     case OPT_CENTRE:
-        number_option("centre", arg, &ask->options.centre, state);
+        number_option("centre", arg, &ask->control.options.centre, state);
         break;
     case OPT_SIGMA:
-        number_option("sigma", arg, &ask->options.sigma, state);
+        number_option("sigma", arg, &ask->control.options.sigma, state);
         break;
     case OPT_MIN:
-        number_option("min", arg, &ask->min, state);
+        number_option("min", arg, &ask->control.min, state);
         break;
     case OPT_MAX:
-        number_option("max", arg, &ask->max, state);
+        number_option("max", arg, &ask->control.max, state);
         break;
     case OPT_TARGET:
         number_option("target", arg, &ask->target, state);
         break;
+    case OPT_VALUE:
+        number_option("value", arg, &ask->value, state);
+        break;
     default:
-        ask->subgroups = 1;
+        ask->control.subgroups = 1;
         break;
     }
 }
@@ -97,6 +104,9 @@ static error_t history_option(int key, char *arg, struct argp_state *state) {
     case OPT_TEXT: q->text = arg; break;
     case OPT_KIND: q->kind = arg; break;
     case OPT_FOLDER: q->folder = arg; break;
+    case OPT_PHASE: q->ask.control.phase_by = arg; break;
+    case OPT_FROM: q->from = arg; break;
+    case OPT_TO: q->to = arg; break;
     case OPT_JSON:
         q->json = 1;
         q->csv = 0;
@@ -111,6 +121,7 @@ static error_t history_option(int key, char *arg, struct argp_state *state) {
     case OPT_MIN:
     case OPT_MAX:
     case OPT_TARGET:
+    case OPT_VALUE:
     case OPT_SUBGROUPS:
         chart_option(key, arg, &q->ask, state);
         break;
@@ -352,13 +363,16 @@ static status read_verb(history *h, verb v, request *q, textbuf *out, error *e) 
     history_list rows = { 0 };
     history_notes notes = { 0 };
     const char *last = q->n_words ? q->words[q->n_words - 1] : "";
-    status st = q->rules ? chart_rules_parse(q->rules, &q->ask.options.rules, e) : ST_OK;
+    control_question *c = &q->ask.control;
+    status st = q->rules ? chart_rules_parse(q->rules, &c->options.rules, e) : ST_OK;
+    if (st == ST_OK && q->from) st = history_day(h, q->from, "baseline-from", &c->baseline_from, e);
+    if (st == ST_OK && q->to) st = history_day(h, q->to, "baseline-to", &c->baseline_to, e);
     if (st == ST_OK) st = history_read(h, q->since, q->lot, &rows, e);
     if (st == ST_OK) st = history_notes_read(h, &notes, e);
-    q->ask.rows = &rows;
-    q->ask.notes = &notes;
+    c->rows = &rows;
+    c->notes = &notes;
     q->ask.json = q->json;
-    q->ask.quantity = q->n_words == verbs[v].most + 1 ? last : "spacing_nm";
+    c->quantity = q->n_words == verbs[v].most + 1 ? last : "spacing_nm";
     if (st != ST_OK) goto done;
     switch (v) {
     case VERB_CHART: st = history_chart(&q->ask, out, e); break;
@@ -387,7 +401,7 @@ static int verify(const request *q) {
 
 int cmd_history(int argc, char **argv) {
     request q = { .path = DEFAULT_LEDGER,
-                  .ask = { .options = chart_defaults(), .min = MISSING, .max = MISSING, .target = MISSING } };
+                  .ask = { .control = control_defaults(NULL, NULL), .target = MISSING, .value = MISSING } };
     history *h = NULL;
     textbuf out = { 0 };
     error e = { ST_OK, "" };

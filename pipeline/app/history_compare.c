@@ -1,6 +1,5 @@
-/* `sward history change` and `setting`: is a difference real, and what does a setting do. Both take single samples, not
- * etches: they compare what was made, and say how many samples that were. */
-#include <cjson/cJSON.h>
+/* `sward history change` and `setting`: is a difference real, and what does a setting do. Both count etches, each with the mean of
+ * its samples: the positions of a wafer would make every interval too narrow. */
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -11,24 +10,26 @@
 #include "base/quantity.h"
 #include "io/json.h"
 
-static int belongs(const history_row *r, const char *name) {
-    cJSON *row = cJSON_Parse(r->row_json);
-    const cJSON *recipe = cJSON_GetObjectItemCaseSensitive(row, "recipe");
-    int is = !strcmp(r->lot, name) || (cJSON_IsString(recipe) && !strcmp(recipe->valuestring, name));
-    cJSON_Delete(row);
-    return is;
+/* The finite values of the etches of one lot or recipe into v. */
+static status values_of(const history_question *q, const char *name, series *s, double **v, size_t *n, error *e) {
+    const control_question *c = &q->control;
+    series_question what = { .quantity = c->quantity, .phase_by = c->phase_by, .only = name };
+    status st = series_make(c->rows, c->notes, &what, s, e);
+    *n = 0;
+    if (st == ST_OK && !s->n)
+        st = fail(e, ST_BAD_INPUT, "the history has no lot and no recipe '%s'; 'sward history' lists the lots", name);
+    *v = mem_array(s->n, sizeof **v);
+    if (st == ST_OK && !*v) st = NO_MEMORY(e, "a comparison");
+    for (size_t i = 0; st == ST_OK && i < s->n; i++)
+        if (isfinite(s->etches[i].value)) (*v)[(*n)++] = s->etches[i].value;
+    return st;
 }
 
-/* The values of one lot or recipe into v; how many rows it has, measured or not, into *rows. */
-static size_t values_of(const series *s, const char *name, double *v, size_t *rows) {
-    size_t n = 0;
-    *rows = 0;
-    for (size_t i = 0; i < s->n; i++) {
-        if (!belongs(s->etches[i].row, name)) continue;
-        ++*rows;
-        if (isfinite(s->etches[i].value)) v[n++] = s->etches[i].value;
-    }
-    return n;
+/* Positions of one wafer, wafers of one etch: not independent, so they count once. */
+static void say_joined(size_t joined, textbuf *out) {
+    if (joined)
+        text_addf(out, "Counted are etches, each with the mean of its samples (%zu further samples of the same etches): positions and "
+                       "wafers of one etch are not independent.\n", joined);
 }
 
 static void member(textbuf *t, const char *name, double v) {
@@ -36,9 +37,9 @@ static void member(textbuf *t, const char *name, double v) {
     json_number(t, v, 8);
 }
 
-static void json_step(const history_question *q, const char *a, const char *b, const trend_step *d, textbuf *t) {
+static void json_step(const history_question *q, const char *a, const char *b, const trend_step *d, size_t joined, textbuf *t) {
     text_add(t, "{\"quantity\": ");
-    json_string(t, q->quantity);
+    json_string(t, q->control.quantity);
     text_add(t, ", \"a\": ");
     json_string(t, a);
     text_add(t, ", \"b\": ");
@@ -54,41 +55,67 @@ static void json_step(const history_question *q, const char *a, const char *b, c
     member(t, "effect", d->effect);
     member(t, "effect_low", d->effect_lo);
     member(t, "effect_high", d->effect_hi);
-    text_add(t, "}\n");
+    text_addf(t, ", \"further_samples\": %zu}\n", joined);
 }
 
 status history_change(const history_question *q, const char *a, const char *b, textbuf *out, error *e) {
-    series s = { 0 };
+    series sa = { 0 }, sb = { 0 };
     trend_step d;
-    size_t rows_a = 0, rows_b = 0, n_a = 0, n_b = 0;
-    status st = series_make(q->rows, q->notes, q->quantity, NULL, 1, &s, e);
-    double *va = mem_array(s.n, sizeof *va), *vb = mem_array(s.n, sizeof *vb);
-    if (st == ST_OK && (!va || !vb)) st = NO_MEMORY(e, "a comparison");
-    if (st == ST_OK) {
-        n_a = values_of(&s, a, va, &rows_a);
-        n_b = values_of(&s, b, vb, &rows_b);
-        if (!rows_a || !rows_b)
-            st = fail(e, ST_BAD_INPUT, "the history has no lot and no recipe '%s'; 'sward history' lists the lots", rows_a ? b : a);
-    }
+    double *va = NULL, *vb = NULL;
+    size_t n_a = 0, n_b = 0;
+    status st = values_of(q, a, &sa, &va, &n_a, e);
+    if (st == ST_OK) st = values_of(q, b, &sb, &vb, &n_b, e);
     if (st == ST_OK) st = trend_welch(va, n_a, vb, n_b, &d, e);
-    if (st == ST_OK && q->json) json_step(q, a, b, &d, out);
+    if (st == ST_OK && q->json) json_step(q, a, b, &d, sa.n_joined + sb.n_joined, out);
     else if (st == ST_OK) {
-        sentence_subject subject = series_subject(&s, q->quantity, q->min, q->max);
+        sentence_subject subject = series_subject(&sa, q->control.quantity, q->control.min, q->control.max);
         sentence_step(&subject, a, b, &d, out);
         text_add(out, ".\n");
+        say_joined(sa.n_joined + sb.n_joined, out);
     }
     free(va);
     free(vb);
-    series_free(&s);
+    series_free(&sa);
+    series_free(&sb);
     return st == ST_OK ? text_check(out, "a comparison", e) : st;
 }
 
-static void json_of_line(const history_question *q, const char *setting, const trend_line *l, const trend_setting *r, textbuf *t) {
+/* What is said about a line: its inverse at the target, its forecast at a value, each where asked and possible. */
+typedef struct {
+    trend_line line;
+    trend_setting reached;
+    trend_forecast there, expected; /* at the setting reached; at the value asked */
+    int is_reached, is_expected;
+    char why_not[480]; /* ... reached or expected */
+    size_t joined;
+} answer;
+
+static void ask(const history_question *q, answer *a) {
+    error why = { ST_OK, "" };
+    if (isfinite(q->target))
+        a->is_reached = trend_invert(&a->line, q->target, &a->reached, &why) == ST_OK &&
+                        trend_predict(&a->line, a->reached.x, &a->there, &why) == ST_OK;
+    if (isfinite(q->value)) a->is_expected = trend_predict(&a->line, q->value, &a->expected, &why) == ST_OK;
+    memcpy(a->why_not, why.text, sizeof a->why_not);
+}
+
+static void json_forecast(const char *name, double x, const trend_forecast *f, textbuf *t) {
+    text_addf(t, ", \"%s\": {\"setting\": ", name);
+    json_number(t, x, 8);
+    member(t, "value", f->y);
+    member(t, "u", f->u);
+    member(t, "low", f->lo);
+    member(t, "high", f->hi);
+    text_add(t, "}");
+}
+
+static void json_of_line(const history_question *q, const char *setting, const answer *a, textbuf *t) {
+    const trend_line *l = &a->line;
     text_add(t, "{\"quantity\": ");
-    json_string(t, q->quantity);
+    json_string(t, q->control.quantity);
     text_add(t, ", \"setting\": ");
     json_string(t, setting);
-    text_addf(t, ", \"n\": %zu", l->n);
+    text_addf(t, ", \"n\": %zu, \"further_samples\": %zu", l->n, a->joined);
     member(t, "intercept", l->intercept);
     member(t, "slope", l->slope);
     member(t, "intercept_sd", l->intercept_sd);
@@ -98,40 +125,56 @@ static void json_of_line(const history_question *q, const char *setting, const t
     member(t, "p", l->slope_p);
     member(t, "from", l->x_min);
     member(t, "to", l->x_max);
-    if (r) {
+    if (a->is_reached) {
         member(t, "target", q->target);
-        member(t, "reached_at", r->x);
-        member(t, "low", r->lo);
-        member(t, "high", r->hi);
+        member(t, "reached_at", a->reached.x);
+        member(t, "low", a->reached.lo);
+        member(t, "high", a->reached.hi);
+        json_forecast("there", a->reached.x, &a->there, t);
+    }
+    if (a->is_expected) json_forecast("expected", q->value, &a->expected, t);
+    if (a->why_not[0]) {
+        text_add(t, ", \"why_not\": ");
+        json_string(t, a->why_not);
     }
     text_add(t, "}\n");
 }
 
-static void say_line(const history_question *q, const sentence_subject *subject, const char *setting, const trend_line *l,
-                     const trend_setting *r, const char *why_not, textbuf *out) {
-    trend_forecast f;
-    sentence_line(subject, setting, l, out);
+static void say_forecast(const sentence_subject *s, const trend_forecast *f, textbuf *out) {
+    text_add(out, "95 % of single etches are expected from ");
+    json_number(out, f->lo, s->digits);
+    text_add(out, " to ");
+    json_number(out, f->hi, s->digits);
+    text_addf(out, "%s%s.\n", s->unit[0] ? " " : "", s->unit);
+}
+
+static void say_line(const history_question *q, const sentence_subject *subject, const char *setting, const answer *a, textbuf *out) {
+    sentence_line(subject, setting, &a->line, out);
     text_add(out, ".\n");
-    if (r) {
-        sentence_setting(subject, setting, q->target, r, out);
-        text_add(out, "\n");
-        if (trend_predict(l, r->x, &f, NULL) == ST_OK) {
-            sentence_subject s = *subject;
-            text_add(out, "There 95 % of single samples are expected from ");
-            json_number(out, f.lo, s.digits);
-            text_add(out, " to ");
-            json_number(out, f.hi, s.digits);
-            text_addf(out, "%s%s.\n", s.unit[0] ? " " : "", s.unit);
-        }
-    } else if (why_not[0]) text_addf(out, "%s.\n", why_not);
+    if (a->is_reached) {
+        sentence_setting(subject, setting, q->target, &a->reached, out);
+        text_add(out, "\nThere ");
+        say_forecast(subject, &a->there, out);
+    }
+    if (a->is_expected) {
+        text_addf(out, "At %s ", setting);
+        json_number(out, q->value, 8);
+        text_add(out, " the line gives ");
+        json_number(out, a->expected.y, subject->digits);
+        text_addf(out, "%s%s; ", subject->unit[0] ? " " : "", subject->unit);
+        say_forecast(subject, &a->expected, out);
+    }
+    if (a->why_not[0]) text_addf(out, "%s.\n", a->why_not);
+    say_joined(a->joined, out);
 }
 
 status history_setting(const history_question *q, const char *setting, textbuf *out, error *e) {
+    const control_question *c = &q->control;
+    series_question what = { .quantity = c->quantity, .setting = setting, .phase_by = c->phase_by };
     series s = { 0 };
-    trend_line l;
-    trend_setting r;
+    answer a = { 0 };
     size_t n = 0;
-    status st = series_make(q->rows, q->notes, q->quantity, setting, 1, &s, e);
+    status st = series_make(c->rows, c->notes, &what, &s, e);
     double *x = mem_array(s.n, sizeof *x), *y = mem_array(s.n, sizeof *y);
     if (st == ST_OK && (!x || !y)) st = NO_MEMORY(e, "a line");
     for (size_t i = 0; st == ST_OK && i < s.n; i++) {
@@ -139,13 +182,13 @@ status history_setting(const history_question *q, const char *setting, textbuf *
         x[n] = s.etches[i].setting;
         y[n++] = s.etches[i].value;
     }
-    if (st == ST_OK) st = trend_fit(x, y, n, &l, e);
+    if (st == ST_OK) st = trend_fit(x, y, n, &a.line, e);
     if (st == ST_OK) {
-        error why = { ST_OK, "" };
-        int reached = isfinite(q->target) && trend_invert(&l, q->target, &r, &why) == ST_OK;
-        sentence_subject subject = series_subject(&s, q->quantity, q->min, q->max);
-        if (q->json) json_of_line(q, setting, &l, reached ? &r : NULL, out);
-        else say_line(q, &subject, setting, &l, reached ? &r : NULL, why.text, out);
+        sentence_subject subject = series_subject(&s, c->quantity, c->min, c->max);
+        a.joined = s.n_joined;
+        ask(q, &a);
+        if (q->json) json_of_line(q, setting, &a, out);
+        else say_line(q, &subject, setting, &a, out);
     }
     free(x);
     free(y);

@@ -1,17 +1,12 @@
 /* The verbs of `sward history` that compute. Each writes its answer into a text; cmd_history.c opens the ledger and prints. */
 #ifndef SWARD_APP_HISTORY_VERBS_H
 #define SWARD_APP_HISTORY_VERBS_H
-#include "base/text.h"
-#include "judge/chart.h"
-#include "judge/history.h"
+#include "app/control.h"
 
 typedef struct {
-    const history_list *rows;
-    const history_notes *notes;
-    const char *quantity;     /* of samples.csv */
-    chart_options options;    /* of a chart */
-    double min, max, target;  /* NAN unknown */
-    int subgroups, json;
+    control_question control; /* rows, notes, quantity, and what a chart wants to know */
+    double target, value;     /* of `setting`: what to reach, a setting to forecast at; NAN: none */
+    int json;
 } history_question;
 
 /* The series with limits, alarms in words, drift and capability of the newest phase.

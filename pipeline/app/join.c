@@ -8,6 +8,7 @@
 
 #include "app/planning.h"
 #include "base/mem.h"
+#include "base/number.h"
 #include "io/file.h"
 #include "io/json.h"
 #include "metrics/plan.h"
@@ -171,6 +172,7 @@ static reading read_quantity(const sample_row *r, const char *name, const figure
         out.digits = col->digits ? col->digits : 6;
         out.value = col->kind == COL_NUMBER ? *(const double *)(const void *)base
                                             : (double)*(const long *)(const void *)base;
+        if (col->kind != COL_NUMBER) out.u = out.u_repeat = 0.0; /* a count */
         size_t n = strlen(name);
         if (c + 1 < n_sample_columns && !strncmp(sample_columns[c + 1].name, name, n) &&
             !strcmp(sample_columns[c + 1].name + n, "_u"))
@@ -189,7 +191,39 @@ static reading read_quantity(const sample_row *r, const char *name, const figure
     return out;
 }
 
-static status judge_sample(const protocol *p, const figure *f, const figure *spacing, joined *out, textbuf *members,
+/* The reading of a target on a column of the sheet: its cell, and the column beside it that ends in _u. */
+static reading read_sheet(const sample_group *g, const target *t) {
+    reading out = { MISSING, MISSING, MISSING, MISSING, MISSING, "", 6 };
+    if (g->extra && t->sheet_at && !number_parse(g->extra[t->sheet_at - 1], &out.value)) out.value = MISSING;
+    if (g->extra && t->sheet_u_at && !number_parse(g->extra[t->sheet_u_at - 1], &out.u)) out.u = MISSING;
+    out.u_repeat = out.u;
+    return out;
+}
+
+static int is_predicted(const char *name) {
+    static const char *const names[] = { "weighted_reflectance", "weighted_reflectance_lo", "weighted_reflectance_hi",
+                                         "current_loss_mA_cm2", "area_ratio", "aspect", "subwavelength_share", "height_nm" };
+    for (size_t i = 0; i < sizeof names / sizeof names[0]; i++)
+        if (!strcmp(name, names[i])) return 1;
+    return 0;
+}
+
+/* What would settle an undecided verdict: more micrographs, and how many, or what else. */
+static long advise(const target *t, const reading *r, const figure *f, const figure *spacing, textbuf *advice) {
+    if (t->of_sheet) {
+        text_add(advice, isfinite(r->u) ? "more micrographs cannot settle it: it comes from the sheet; measure it again, with a smaller uncertainty"
+                                        : "give its standard uncertainty in a column of the sheet named like it with _u behind");
+        return PLAN_NEVER;
+    }
+    if (is_predicted(t->quantity)) {
+        text_add(advice, "more micrographs hardly settle it: its uncertainty is that of height, shape and model; measure the height on a "
+                         "cross-section, or the reflectance itself");
+        return PLAN_NEVER;
+    }
+    return plan_verdict(t, f, spacing, advice);
+}
+
+static status judge_sample(const sample_group *g, const protocol *p, const figure *f, const figure *spacing, joined *out, textbuf *members,
                            error *e) {
     sample_row *r = &out->row;
     textbuf reasons = { 0 };
@@ -197,18 +231,21 @@ static status judge_sample(const protocol *p, const figure *f, const figure *spa
     status st = all ? ST_OK : NO_MEMORY(e, "the verdicts");
     text_add(members, "\"judgements\": [");
     for (size_t i = 0; st == ST_OK && i < p->n_targets; i++) {
-        reading reading_i = read_quantity(r, p->targets[i].quantity, f, spacing, &out->prediction);
+        const target *t = &p->targets[i];
+        reading reading_i = t->of_sheet ? read_sheet(g, t) : read_quantity(r, t->quantity, f, spacing, &out->prediction);
         judgement j;
-        judge(&p->targets[i], &reading_i, &j);
+        judge(t, &reading_i, &j);
         all[i] = j.verdict;
         r->extra[i] = mem_text(verdict_word(j.verdict));
         if (!r->extra[i]) st = NO_MEMORY(e, "a verdict");
         textbuf advice = { 0 };
-        long more = j.verdict == VERDICT_UNDECIDED ? plan_verdict(&p->targets[i], f, spacing, &advice) : PLAN_NEVER;
+        long more = j.verdict == VERDICT_UNDECIDED ? advise(t, &reading_i, f, spacing, &advice) : PLAN_NEVER;
         if (text_check(&advice, "a plan", e) != ST_OK) st = ST_NO_MEMORY;
         text_addf(&reasons, "%s%s%s%s", i ? "; " : "", j.sentence, advice.n ? ": " : "", advice.n ? advice.s : "");
         text_addf(members, "%s{\"quantity\": ", i ? ", " : "");
-        json_string(members, p->targets[i].quantity);
+        json_string(members, t->quantity);
+        text_addf(members, ", \"rule\": \"%s\", \"at_least\": ", decision_word(t->rule));
+        json_number(members, t->rule == DECIDE_SIMPLE ? MISSING : t->rule == DECIDE_PROBABILITY ? t->at_least : 0.95, 6);
         text_addf(members, ", \"verdict\": \"%s\", \"conformance_probability\": ", verdict_word(j.verdict));
         json_number(members, j.conformance_probability, 4);
         text_add(members, ", \"sentence\": ");
@@ -318,7 +355,7 @@ status join_sample(const sample_group *g, const examined *all, const protocol *p
         text_add(&members, ", ");
         plan_json(p, f, &spacing, &members);
         text_add(&members, ", ");
-        st = judge_sample(p, f, &spacing, &made, &members, e);
+        st = judge_sample(g, p, f, &spacing, &made, &members, e);
     }
     if (st == ST_OK) st = fingerprint(g, all, n_extra, basis, made.fingerprint, e);
     if (st == ST_OK) {

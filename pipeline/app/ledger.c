@@ -13,6 +13,7 @@ void ledger_free(ledger_result *r) {
     free(r->path);
     free(r->json);
     free(r->process);
+    free(r->series);
     *r = (ledger_result){ 0 };
 }
 
@@ -100,7 +101,7 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
     history_notes notes = { 0 };
     history_row *rows = mem_array(n, sizeof *rows);
     char **row_json = mem_array(n, sizeof *row_json);
-    textbuf series = { 0 }, process = { 0 };
+    textbuf etches = { 0 }, process = { 0 }, charts = { 0 };
     status st = rows && row_json ? rows_json(samples, n, p, columns, row_json, e) : NO_MEMORY(e, "the history");
     result->stays_with_output = !path;
     result->path = path ? mem_text(path) : path_join(out, "history.sqlite");
@@ -111,22 +112,24 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
     if (st == ST_OK) st = history_read(h, NULL, NULL, &list, e);
     if (st == ST_OK) {
         result->total = list.n;
-        series_json(&list, &series);
-        st = text_check(&series, "the history", e);
-        result->json = series.s;
-        series = (textbuf){ 0 };
+        series_json(&list, &etches);
+        st = text_check(&etches, "the history", e);
+        result->json = etches.s;
+        etches = (textbuf){ 0 };
     }
     if (st == ST_OK) st = history_notes_read(h, &notes, e);
-    if (st == ST_OK) st = process_sentences(&list, &notes, p, &process, e);
+    if (st == ST_OK) st = process_describe(&list, &notes, p, &process, &charts, e);
     if (st == ST_OK) {
         result->process = process.s;
-        process = (textbuf){ 0 };
+        result->series = charts.s;
+        process = charts = (textbuf){ 0 };
     }
     text_free(&process);
+    text_free(&charts);
     history_notes_free(&notes);
     history_list_free(&list);
     history_close(h);
-    text_free(&series);
+    text_free(&etches);
     for (size_t i = 0; row_json && i < n; i++) free(row_json[i]);
     free(row_json);
     free(rows);

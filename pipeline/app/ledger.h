@@ -7,6 +7,7 @@ typedef struct {
     char *path;        /* of the ledger */
     char *json;        /* array of {sample, etched_at, spacing_nm, spacing_nm_u, weighted_reflectance, verdict} in time
                           order, one entry per sample: its newest run; excluded etches are left out */
+    char *series;      /* array of control charts, see process.h */
     char *process;     /* what the history says of the process, lines; NULL: too few etches */
     size_t added, total;
     int stays_with_output; /* no place was named: the ledger lies in OUT */

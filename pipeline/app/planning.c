@@ -66,21 +66,19 @@ void plan_json(const protocol *p, const figure *f, const figure *spacing, textbu
     text_add(out, "]");
 }
 
-/* To the nearer limit. */
-static double distance(const target *t, double value) {
-    double d = HUGE_VAL;
-    if (isfinite(t->min)) d = fmin(d, fabs(value - t->min));
-    if (isfinite(t->max)) d = fmin(d, fabs(value - t->max));
-    return d;
-}
+#define GUARD 1.6448536269514722 /* half-width of a 90 % interval, normal law */
 
 long plan_verdict(const target *t, const figure *f, const figure *spacing, textbuf *advice) {
     const figure *about = planned_figure(t->quantity, f, spacing);
     if (!about || !isfinite(about->m.value) || about->micrographs == 0) return PLAN_NEVER;
+    if (!isfinite(about->m.u_sampling)) {
+        text_add(advice, "how the micrographs differ is not known yet: 2 more would say it");
+        return 2;
+    }
     plan_state s = state_of(about);
     s.sampling.dof = s.common.dof = HUGE_VAL;
     if (t->error == ERROR_REPEAT) s.common.u = 0.0;
-    plan_answer a = plan_micrographs(&s, distance(t, about->m.value), 0.9);
+    plan_answer a = plan_micrographs(&s, GUARD * target_settling_u(t, about->m.value), 0.9);
     if (!isfinite(a.now)) return PLAN_NEVER;
     if (a.more == PLAN_NEVER && s.common.u > 0.0)
         text_addf(advice, "more micrographs cannot settle it: the %s own uncertainty is larger than the distance to the limit",

@@ -1,72 +1,74 @@
-/* The process in a few lines. Only the newest phase speaks: what came before a change says nothing of today. */
+/* The process in a few lines and as charts. Drift and capability speak of the phases since the last change: what came before it says
+ * nothing of today. What stands out, steps and drifts are told as far back as PROCESS_TELL etches. */
 #include "app/process.h"
 
 #include <math.h>
-#include <stdlib.h>
+#include <string.h>
 
-#include "app/series.h"
-#include "base/mem.h"
 #include "base/quantity.h"
 
 /* The last etch of the chart, if a rule fired there. */
-static status last_alarm(const series *s, size_t first, const sentence_subject *subject, double *work, textbuf *out, error *e) {
-    chart c = { 0 };
-    chart_options o = chart_defaults();
-    size_t n = s->n - first;
-    for (size_t i = 0; i < n; i++) work[i] = s->etches[first + i].value;
-    status st = chart_individuals(work, NULL, n, &o, &c, e);
-    if (st == ST_OK && c.points[n - 1].alarms) {
-        sentence_alarm(subject, s->etches[s->n - 1].label, &c.points[n - 1], out);
-        text_add(out, ".\n");
-    }
-    chart_free(&c);
-    return st;
+static void last_alarm(const control *c, textbuf *out) {
+    const chart_point *last = &c->c.points[c->s.n - 1];
+    if (!last->alarms) return;
+    sentence_alarm(&c->subject, c->s.etches[c->s.n - 1].label, last, out);
+    text_add(out, ".\n");
 }
 
-static status one_quantity(const series *s, const sentence_subject *subject, textbuf *out, error *e) {
-    size_t first = series_last_phase(s);
-    double *value = mem_array(s->n, sizeof *value), *index = mem_array(s->n, sizeof *index), *day = mem_array(s->n, sizeof *day);
-    status st = value && index && day ? ST_OK : NO_MEMORY(e, "the process");
-    size_t n = st == ST_OK ? series_values(s, first, value, index, day) : 0;
-    if (n >= PROCESS_LEAST_ETCHES) {
-        trend_slope steps = { 0 }, days = { 0 };
-        capability c;
-        st = trend_robust(index, value, n, &steps, e);
-        int has_days = st == ST_OK && trend_robust(day, value, n, &days, NULL) == ST_OK;
-        if (st == ST_OK) {
-            sentence_drift(subject, &steps, has_days ? &days : NULL, out);
-            text_add(out, ".\n");
-            if (capability_of(value, n, subject->min, subject->max, &c, NULL) == ST_OK) {
-                sentence_capability(subject, &c, out);
-                text_add(out, ".\n");
-            }
-            st = last_alarm(s, first, subject, value, out, e);
-        }
-    }
-    free(value);
-    free(index);
-    free(day);
-    return st;
+static int long_enough(const control *c) {
+    for (size_t k = 0; k < c->c.n_phases; k++)
+        if (c->c.phases[k].n_used >= PROCESS_LEAST_ETCHES) return 1;
+    return 0;
 }
 
-status process_sentences(const history_list *l, const history_notes *notes, const protocol *p, textbuf *out, error *e) {
-    static char spacing[] = "spacing_nm";
-    const target none = { spacing, MISSING, MISSING, ERROR_FULL };
-    size_t n = p->n_targets ? p->n_targets : 1;
-    status st = ST_OK;
-    for (size_t i = 0; st == ST_OK && i < n && i < PROCESS_MOST_QUANTITIES; i++) {
-        const target *t = p->n_targets ? &p->targets[i] : &none;
-        series s = { 0 };
-        error why = { ST_OK, "" };
-        st = series_make(l, notes, t->quantity, NULL, 0, &s, &why);
-        if (st == ST_BAD_INPUT) { /* never measured: the verdicts say so */
-            st = ST_OK;
-            continue;
-        }
-        if (st != ST_OK) return fail(e, st, "%s", why.text);
-        sentence_subject subject = series_subject(&s, t->quantity, t->min, t->max);
-        st = one_quantity(&s, &subject, out, e);
-        series_free(&s);
+static int has_today(const control *c) {
+    for (size_t k = 0; k < c->c.n_phases; k++)
+        if (c->phases[k].live && c->phases[k].per_etch.n) return 1;
+    return 0;
+}
+
+static status one_quantity(const control_question *q, textbuf *lines, textbuf *charts, size_t *n, error *e) {
+    control c = { 0 };
+    error why = { ST_OK, "" };
+    status st = control_make(q, &c, &why);
+    if (st == ST_BAD_INPUT) return ST_OK; /* never measured: the verdicts say so */
+    if (st != ST_OK) return fail(e, st, "%s", why.text);
+    text_add(charts, *n ? ",\n" : "\n");
+    control_json(&c, PROCESS_MOST_POINTS, charts);
+    ++*n;
+    if (long_enough(&c)) control_findings(&c, PROCESS_TELL, lines);
+    if (has_today(&c)) {
+        control_today(&c, lines);
+        last_alarm(&c, lines);
     }
-    return st == ST_OK ? text_check(out, "the process", e) : st;
+    control_free(&c);
+    return ST_OK;
+}
+
+status process_describe(const history_list *l, const history_notes *notes, const protocol *p, textbuf *lines, textbuf *charts, error *e) {
+    static const char *const always[] = { "spacing_nm", "weighted_reflectance" };
+    control_question q = control_defaults(l, notes);
+    status st = p->chart_rules ? chart_rules_parse(p->chart_rules, &q.options.rules, e) : ST_OK;
+    size_t n = 0, said = 0;
+    textbuf unsaid = { 0 };
+    q.phase_by = p->chart_phase;
+    q.options.baseline = (size_t)p->chart_baseline;
+    text_add(charts, "[");
+    for (size_t i = 0; st == ST_OK && l->n && i < p->n_targets; i++) {
+        q.quantity = p->targets[i].quantity;
+        q.min = p->targets[i].min;
+        q.max = p->targets[i].max;
+        st = one_quantity(&q, said++ < PROCESS_MOST_QUANTITIES ? lines : &unsaid, charts, &n, e);
+    }
+    q.min = q.max = MISSING;
+    for (size_t k = 0; st == ST_OK && l->n && k < sizeof always / sizeof always[0]; k++) {
+        int done = 0;
+        for (size_t i = 0; i < p->n_targets; i++) done |= !strcmp(p->targets[i].quantity, always[k]);
+        q.quantity = always[k];
+        if (!done) st = one_quantity(&q, k == 0 && !p->n_targets ? lines : &unsaid, charts, &n, e);
+    }
+    text_add(charts, "]");
+    text_free(&unsaid);
+    if (st == ST_OK) st = text_check(lines, "the process", e);
+    return st == ST_OK ? text_check(charts, "the charts", e) : st;
 }

@@ -3,7 +3,6 @@
  * expected. Does not look into the files a protocol names; materials.c does. */
 #include "app/protocol.h"
 
-#include <cjson/cJSON.h>
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -11,22 +10,11 @@
 
 #include "app/command.h"
 #include "app/names.h"
-#include "app/planning.h"
-#include "app/protocol_keys.h"
+#include "app/protocol_priv.h"
 #include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "io/file.h"
-#include "io/json.h"
-#include "report/rows.h"
-
-/* What every step of reading needs. */
-typedef struct {
-    const json *doc; /* NULL: the value comes from an option, `what` is its name and there is no line */
-    const char *what, *folder;
-    protocol *p;
-    error *e;
-} reader;
 
 status protocol_defaults(protocol *out, error *e) {
     protocol p = { 0 };
@@ -51,7 +39,10 @@ status protocol_defaults(protocol *out, error *e) {
     p.band_lo_nm = 300.0;
     p.band_hi_nm = 1200.0;
     p.step_nm = 1.0;
-    if (!p.path || !p.name || !p.ambient || !p.substrate) {
+    p.chart_phase = mem_text("recipe");
+    p.chart_rules = mem_text("zone,spread");
+    p.chart_baseline = 20.0;
+    if (!p.chart_phase || !p.chart_rules || !p.path || !p.name || !p.ambient || !p.substrate) {
         protocol_free(&p);
         return NO_MEMORY(e, "the protocol");
     }
@@ -59,34 +50,17 @@ status protocol_defaults(protocol *out, error *e) {
     return ST_OK;
 }
 
-static void targets_free(protocol *p) {
-    for (size_t i = 0; i < p->n_targets; i++) free(p->targets[i].quantity);
-    free(p->targets);
-    p->targets = NULL;
-    p->n_targets = 0;
-}
-
-static void goals_free(protocol *p) {
-    for (size_t i = 0; i < p->n_goals; i++) free(p->goals[i].quantity);
-    free(p->goals);
-    p->goals = NULL;
-    p->n_goals = 0;
-}
-
 void protocol_free(protocol *p) {
-    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->calibration, p->ambient, p->substrate, p->sun, p->scale, p->history };
+    char *owned[] = { p->path, p->name, p->pattern, p->profile, p->calibration, p->ambient, p->substrate, p->sun, p->scale, p->history, p->chart_phase, p->chart_rules };
     for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
     for (size_t i = 0; i < LIMIT_COATINGS; i++) free(p->coatings[i].material);
-    targets_free(p);
-    goals_free(p);
+    protocol_lists_free(p);
     *p = (protocol){ 0 };
 }
 
-static size_t line_of(const reader *r, const cJSON *node) { return r->doc ? json_line(r->doc, node) : 0; }
+size_t reader_line(const reader *r, const cJSON *node) { return r->doc ? json_line(r->doc, node) : 0; }
 
-/* The sentence of every wrong value: where, what was found, what was expected. */
-static status wrong(const reader *r, size_t line, const char *where, const cJSON *found,
-                    const char *expected) {
+status reader_wrong(const reader *r, size_t line, const char *where, const cJSON *found, const char *expected) {
     char *text = cJSON_PrintUnformatted(found);
     const char *shown = text ? text : "?", *more = text && strlen(text) > 60 ? "..." : "";
     status st =
@@ -97,12 +71,12 @@ static status wrong(const reader *r, size_t line, const char *where, const cJSON
     return st;
 }
 
-static status wrong_value(const reader *r, const cJSON *node, const protocol_key *k) {
+status reader_wrong_value(const reader *r, const cJSON *node, const protocol_key *k) {
     char where[80];
     textbuf expected = { 0 };
     snprintf(where, sizeof where, "%s%s%s", k->group, k->group[0] ? "." : "", k->name);
     key_expected(k, &expected);
-    status st = wrong(r, line_of(r, node), where, node, expected.s ? expected.s : "something else");
+    status st = reader_wrong(r, reader_line(r, node), where, node, expected.s ? expected.s : "something else");
     text_free(&expected);
     return st;
 }
@@ -125,7 +99,7 @@ static char *material_text(const reader *r, const cJSON *node) {
 static status read_text(const reader *r, const cJSON *node, const protocol_key *k) {
     char **slot = (char **)(void *)((char *)r->p + k->offset);
     int number = k->kind == KEY_MATERIAL && cJSON_IsNumber(node) && node->valuedouble > 0.0;
-    if (!number && (!cJSON_IsString(node) || !node->valuestring[0])) return wrong_value(r, node, k);
+    if (!number && (!cJSON_IsString(node) || !node->valuestring[0])) return reader_wrong_value(r, node, k);
     if (k->kind == KEY_MATERIAL) return replace(r, slot, material_text(r, node));
     if (k->kind == KEY_PATH) return replace(r, slot, path_join(r->folder, node->valuestring));
     return replace(r, slot, mem_text(node->valuestring));
@@ -145,7 +119,7 @@ static status read_band(const reader *r, const cJSON *node, const protocol_key *
     const cJSON *lo = cJSON_GetArrayItem(node, 0), *hi = cJSON_GetArrayItem(node, 1);
     if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) != 2 || !in_range(lo, k) || !in_range(hi, k) ||
         !(lo->valuedouble < hi->valuedouble))
-        return wrong_value(r, node, k);
+        return reader_wrong_value(r, node, k);
     put_number(r, k, 0, lo->valuedouble);
     put_number(r, k, 1, hi->valuedouble);
     return ST_OK;
@@ -157,7 +131,7 @@ static status read_index(const reader *r, const cJSON *node, const protocol_key 
     if (k->kind == KEY_WORD && cJSON_IsString(node))
         for (int i = 0; k->word(i) && v < 0; i++)
             if (strcmp(k->word(i), node->valuestring) == 0) v = i;
-    if (v < 0) return wrong_value(r, node, k);
+    if (v < 0) return reader_wrong_value(r, node, k);
     memcpy((char *)r->p + k->offset, &v, sizeof v);
     return ST_OK;
 }
@@ -170,22 +144,22 @@ static status read_shape(const reader *r, const cJSON *node, const protocol_key 
     else if (in_range(node, k))
         put_number(r, k, 0, node->valuedouble);
     else
-        return wrong_value(r, node, k);
+        return reader_wrong_value(r, node, k);
     return ST_OK;
 }
 
 /* The nearest word as a hint, "" when none is near. */
-static void hint(const char *word, const char *const *words, size_t n, char *out, size_t size) {
+void reader_hint(const char *word, const char *const *words, size_t n, char *out, size_t size) {
     const char *near = json_nearest(word, words, n);
     out[0] = '\0';
     if (near) snprintf(out, size, "; did you mean '%s'?", near);
 }
 
-static status unknown(const reader *r, const cJSON *node, const char *where, const char *const *words,
+status reader_unknown(const reader *r, const cJSON *node, const char *where, const char *const *words,
                       size_t n) {
     char near[120];
-    hint(node->string, words, n, near, sizeof near);
-    return fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s%s", r->what, line_of(r, node),
+    reader_hint(node->string, words, n, near, sizeof near);
+    return fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s%s", r->what, reader_line(r, node),
                 node->string, where[0] ? " in " : "", where, near);
 }
 
@@ -193,22 +167,22 @@ static status read_coating(const reader *r, const cJSON *item, size_t line, prot
     static const char *const words[] = { "material", "thickness_nm" };
     const cJSON *name = NULL, *thickness = NULL, *child;
     if (!cJSON_IsObject(item))
-        return wrong(r, line, "optics.coatings", item, "{ \"material\": ..., \"thickness_nm\": ... }");
+        return reader_wrong(r, line, "optics.coatings", item, "{ \"material\": ..., \"thickness_nm\": ... }");
     cJSON_ArrayForEach(child, item) {
         if (strcmp(child->string, words[0]) == 0)
             name = child;
         else if (strcmp(child->string, words[1]) == 0)
             thickness = child;
         else
-            return unknown(r, child, "optics.coatings", words, 2);
+            return reader_unknown(r, child, "optics.coatings", words, 2);
     }
     if (!name || !thickness)
-        return wrong(r, line, "optics.coatings", item, "both \"material\" and \"thickness_nm\"");
+        return reader_wrong(r, line, "optics.coatings", item, "both \"material\" and \"thickness_nm\"");
     if (!(cJSON_IsString(name) && name->valuestring[0]) && !(cJSON_IsNumber(name) && name->valuedouble > 0.0))
-        return wrong(r, line_of(r, name), "optics.coatings.material", name,
+        return reader_wrong(r, reader_line(r, name), "optics.coatings.material", name,
                      "a material name, a CSV path or a refractive index");
     if (!cJSON_IsNumber(thickness) || !(thickness->valuedouble >= 0.0 && thickness->valuedouble <= 1e5))
-        return wrong(r, line_of(r, thickness), "optics.coatings.thickness_nm", thickness,
+        return reader_wrong(r, reader_line(r, thickness), "optics.coatings.thickness_nm", thickness,
                      "a number from 0 to 100000 (nm)");
     c->thickness_nm = thickness->valuedouble;
     return replace(r, &c->material, material_text(r, name));
@@ -220,18 +194,18 @@ static status read_rear_part(const reader *r, const cJSON *child, rear_side *rea
     double v = number ? child->valuedouble : 0.0;
     if (strcmp(child->string, words[0]) == 0) {
         if (!number || !(v >= 1.0 && v <= 1e4))
-            return wrong(r, line_of(r, child), "optics.rear.thickness_um", child, "a number from 1 to 10000 (um)");
+            return reader_wrong(r, reader_line(r, child), "optics.rear.thickness_um", child, "a number from 1 to 10000 (um)");
         rear->thickness_um = v;
     } else if (strcmp(child->string, words[1]) == 0) {
         if (cJSON_IsNull(child)) return ST_OK;
         if (!number || !(v >= 0.0 && v <= 1.0))
-            return wrong(r, line_of(r, child), "optics.rear.rear_reflectance", child, "a share from 0 to 1");
+            return reader_wrong(r, reader_line(r, child), "optics.rear.rear_reflectance", child, "a share from 0 to 1");
         rear->rear_reflectance = v;
     } else if (strcmp(child->string, words[2]) == 0) {
-        if (!cJSON_IsBool(child)) return wrong(r, line_of(r, child), "optics.rear.lambertian", child, "true or false");
+        if (!cJSON_IsBool(child)) return reader_wrong(r, reader_line(r, child), "optics.rear.lambertian", child, "true or false");
         rear->lambertian = cJSON_IsTrue(child) ? 1 : 0;
     } else
-        return unknown(r, child, "optics.rear", words, 3);
+        return reader_unknown(r, child, "optics.rear", words, 3);
     return ST_OK;
 }
 
@@ -239,123 +213,23 @@ static status read_rear(const reader *r, const cJSON *node, const protocol_key *
     rear_side rear = { 0.0, MISSING, 1 };
     const cJSON *child;
     if (cJSON_IsNumber(node)) rear.thickness_um = node->valuedouble;
-    else if (!cJSON_IsObject(node)) return wrong_value(r, node, k);
+    else if (!cJSON_IsObject(node)) return reader_wrong_value(r, node, k);
     else cJSON_ArrayForEach(child, node) {
         status st = read_rear_part(r, child, &rear);
         if (st != ST_OK) return st;
     }
-    if (!(rear.thickness_um >= 1.0 && rear.thickness_um <= 1e4)) return wrong_value(r, node, k);
+    if (!(rear.thickness_um >= 1.0 && rear.thickness_um <= 1e4)) return reader_wrong_value(r, node, k);
     r->p->rear = rear;
     return ST_OK;
 }
 
 static status read_coatings(const reader *r, const cJSON *node, const protocol_key *k) {
     const cJSON *item;
-    if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) > LIMIT_COATINGS) return wrong_value(r, node, k);
+    if (!cJSON_IsArray(node) || cJSON_GetArraySize(node) > LIMIT_COATINGS) return reader_wrong_value(r, node, k);
     cJSON_ArrayForEach(item, node) {
-        status st = read_coating(r, item, line_of(r, node), &r->p->coatings[r->p->n_coatings]);
+        status st = read_coating(r, item, reader_line(r, node), &r->p->coatings[r->p->n_coatings]);
         if (st != ST_OK) return st;
         r->p->n_coatings++;
-    }
-    return ST_OK;
-}
-
-/* A target stands on a measured figure of samples.csv; the hint names the nearest column. */
-static status target_column(const reader *r, const cJSON *node) {
-    const char **words = mem_array(n_sample_columns, sizeof *words);
-    size_t n = 0;
-    int known = 0;
-    if (!words) return NO_MEMORY(r->e, "the protocol");
-    for (size_t i = 0; i < n_sample_columns; i++) {
-        if (sample_columns[i].kind != COL_NUMBER) continue;
-        words[n++] = sample_columns[i].name;
-        if (strcmp(sample_columns[i].name, node->string) == 0) known = 1;
-    }
-    status st = ST_OK;
-    if (!known) {
-        char near[120];
-        hint(node->string, words, n, near, sizeof near);
-        st = fail(r->e, ST_BAD_INPUT, "%s line %zu: targets: '%.60s' is no quantity of samples.csv%s%s",
-                  r->what, line_of(r, node), node->string, near,
-                  near[0] ? ""
-                          : "; take one of its numeric columns, such as spacing_nm or weighted_reflectance");
-    }
-    free(words);
-    return st;
-}
-
-static status read_target_part(const reader *r, const cJSON *child, const char *where, target *t) {
-    static const char *const words[] = { "min", "max", "error" };
-    size_t line = line_of(r, child);
-    if (strcmp(child->string, "min") == 0 || strcmp(child->string, "max") == 0) {
-        if (cJSON_IsNull(child)) return ST_OK;
-        if (!cJSON_IsNumber(child) || !isfinite(child->valuedouble))
-            return wrong(r, line, where, child, "a number as limit");
-        *(child->string[1] == 'i' ? &t->min : &t->max) = child->valuedouble;
-        return ST_OK;
-    }
-    if (strcmp(child->string, "error") != 0) return unknown(r, child, where, words, 3);
-    if (cJSON_IsString(child) && strcmp(child->valuestring, "repeat") == 0)
-        t->error = ERROR_REPEAT;
-    else if (cJSON_IsString(child) && strcmp(child->valuestring, "full") == 0)
-        t->error = ERROR_FULL;
-    else
-        return wrong(r, line, where, child, "\"full\" or \"repeat\"");
-    return ST_OK;
-}
-
-static status read_target(const reader *r, const cJSON *node, target *t) {
-    const cJSON *child;
-    char where[120];
-    status st = target_column(r, node);
-    if (st != ST_OK) return st;
-    snprintf(where, sizeof where, "targets.%s", node->string);
-    if (!cJSON_IsObject(node))
-        return wrong(r, line_of(r, node), where, node, "{ \"min\": ..., \"max\": ... }");
-    *t = (target){ .min = MISSING, .max = MISSING, .error = ERROR_FULL };
-    cJSON_ArrayForEach(child, node) {
-        st = read_target_part(r, child, where, t);
-        if (st != ST_OK) return st;
-    }
-    if (isnan(t->min) && isnan(t->max))
-        return wrong(r, line_of(r, node), where, node, "\"min\", \"max\" or both");
-    if (t->min > t->max) return wrong(r, line_of(r, node), where, node, "min below max");
-    t->quantity = mem_text(node->string);
-    return t->quantity ? ST_OK : NO_MEMORY(r->e, "the targets");
-}
-
-static status read_targets(const reader *r, const cJSON *node, const protocol_key *k) {
-    const cJSON *child;
-    if (!cJSON_IsObject(node)) return wrong_value(r, node, k);
-    targets_free(r->p);
-    r->p->targets = mem_array((size_t)cJSON_GetArraySize(node), sizeof *r->p->targets);
-    if (!r->p->targets) return NO_MEMORY(r->e, "the targets");
-    cJSON_ArrayForEach(child, node) {
-        status st = read_target(r, child, &r->p->targets[r->p->n_targets]);
-        if (st != ST_OK) return st;
-        r->p->n_targets++;
-    }
-    return ST_OK;
-}
-
-static status read_goals(const reader *r, const cJSON *node, const protocol_key *k) {
-    const cJSON *child;
-    if (!cJSON_IsObject(node)) return wrong_value(r, node, k);
-    goals_free(r->p);
-    r->p->goals = mem_array((size_t)cJSON_GetArraySize(node), sizeof *r->p->goals);
-    if (!r->p->goals) return NO_MEMORY(r->e, "the plan");
-    cJSON_ArrayForEach(child, node) {
-        char where[120];
-        snprintf(where, sizeof where, "plan.half_width.%.60s", child->string);
-        if (!planned_quantity(child->string))
-            return fail(r->e, ST_BAD_INPUT, "%s line %zu: %s is no quantity that micrographs give; take spacing_nm, density_per_um2, size_d50_nm or another of images.csv",
-                        r->what, line_of(r, child), where);
-        if (!cJSON_IsNumber(child) || !(child->valuedouble > 0.0) || !isfinite(child->valuedouble))
-            return wrong(r, line_of(r, child), where, child, "a half-width above 0");
-        width_goal *g = &r->p->goals[r->p->n_goals];
-        *g = (width_goal){ mem_text(child->string), child->valuedouble };
-        if (!g->quantity) return NO_MEMORY(r->e, "the plan");
-        r->p->n_goals++;
     }
     return ST_OK;
 }
@@ -368,7 +242,7 @@ static status read_key(const reader *r, const cJSON *node, const protocol_key *k
     case KEY_MATERIAL:
         return read_text(r, node, k);
     case KEY_NUMBER:
-        if (!in_range(node, k)) return wrong_value(r, node, k);
+        if (!in_range(node, k)) return reader_wrong_value(r, node, k);
         put_number(r, k, 0, node->valuedouble);
         return ST_OK;
     case KEY_SWITCH:
@@ -386,6 +260,10 @@ static status read_key(const reader *r, const cJSON *node, const protocol_key *k
         return read_targets(r, node, k);
     case KEY_GOALS:
         return read_goals(r, node, k);
+    case KEY_PLACES:
+        return read_places(r, node, k);
+    case KEY_RULES:
+        return read_rules(r, node, k);
     }
     return fail(r->e, ST_BUG, "a key of the protocol has no reader");
 }
@@ -406,12 +284,12 @@ static status unknown_key(const reader *r, const cJSON *node, const char *group)
     status st;
     if (elsewhere && elsewhere->group[0])
         st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s'%s%s; it belongs in \"%s\"", r->what,
-                  line_of(r, node), node->string, group[0] ? " in " : "", group, elsewhere->group);
+                  reader_line(r, node), node->string, group[0] ? " in " : "", group, elsewhere->group);
     else if (elsewhere)
         st = fail(r->e, ST_BAD_INPUT, "%s line %zu: unknown key '%.60s' in %s; it belongs to the top level",
-                  r->what, line_of(r, node), node->string, group);
+                  r->what, reader_line(r, node), node->string, group);
     else
-        st = unknown(r, node, group, words, n);
+        st = reader_unknown(r, node, group, words, n);
     free(words);
     return st;
 }
@@ -429,7 +307,7 @@ static status read_group(const reader *r, const cJSON *object, const char *group
         else if (!inner)
             st = unknown_key(r, node, group);
         else if (!cJSON_IsObject(node))
-            st = wrong(r, line_of(r, node), inner, node, "an object in braces with keys of its own");
+            st = reader_wrong(r, reader_line(r, node), inner, node, "an object in braces with keys of its own");
         else
             st = read_group(r, node, inner);
         if (st != ST_OK) return st;
@@ -488,7 +366,7 @@ static cJSON *option_value(const protocol_key *k, const char *text) {
 
 static status option_coating(const reader *r, const cJSON *v) {
     protocol *p = r->p;
-    if (!cJSON_IsObject(v)) return wrong(r, 0, "", v, "MATERIAL:NM, such as alumina:10");
+    if (!cJSON_IsObject(v)) return reader_wrong(r, 0, "", v, "MATERIAL:NM, such as alumina:10");
     if (p->n_coatings == LIMIT_COATINGS)
         return fail(r->e, ST_BAD_INPUT, "%s: at most %d coatings", r->what, LIMIT_COATINGS);
     status st = read_coating(r, v, 0, &p->coatings[p->n_coatings]);

@@ -25,6 +25,12 @@ typedef struct {
     double half_width;
 } width_goal;
 
+/* Where a position name of the sheet lies on the wafer. */
+typedef struct {
+    char *position; /* owned */
+    double x_mm, y_mm;
+} named_place;
+
 typedef struct {
     char *path;              /* the file it came from, "" for the built-in one */
     char *name;              /* key "protocol"; "built-in" */
@@ -59,6 +65,10 @@ typedef struct {
     size_t n_targets;
     width_goal *goals; /* [n_goals], in the order of the file; owned */
     size_t n_goals;
+    named_place *places; /* [n_places]; owned */
+    size_t n_places;
+    char *chart_phase, *chart_rules; /* column whose values are recipes; pattern tests, as chart_rules_parse reads them */
+    double chart_baseline;           /* etches, 0: all of a phase */
     char *scale;   /* scale file of `sward scale`, usable from here; NULL: none */
     char *history; /* path, usable from here; NULL: OUT/history.sqlite */
 } protocol;        /* {0} = empty; strings owned */
@@ -69,11 +79,16 @@ status protocol_defaults(protocol *out, error *e);
 /* Reads a protocol file; what it does not say is as in protocol_defaults.
  *   out  untouched on failure; paths in it are joined to the file's folder
  *   err  ST_BAD_INPUT with file and line: not JSON, unknown key (with the nearest known one), wrong type, out
- * of range, a target on no numeric column of samples.csv; there is no such file; ST_IO it cannot be read;
+ * of range, a target on what is nearly a numeric column of samples.csv; there is no such file; ST_IO it cannot be read;
  * ST_NO_MEMORY */
 status protocol_read(const char *path, protocol *out, error *e);
 
-/* The same from memory; `what` names the source in sentences, `folder` is what paths are relative to. */
+/* Finds the columns of targets on the sheet (sheet_at and sheet_u_at of each).
+ *   in   names[n] the carried-along columns
+ *   err  ST_BAD_INPUT a target is on no such column (with the nearest name) */
+status protocol_meet_sheet(protocol *p, char *const *names, size_t n, error *e);
+
+/* protocol_read from memory; `what` names the source in sentences, `folder` is what paths are relative to. */
 status protocol_parse(const char *bytes, size_t n, const char *what, const char *folder, protocol *out,
                       error *e);
 

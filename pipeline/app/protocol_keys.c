@@ -71,9 +71,10 @@ const protocol_key protocol_keys[] = {
     TEXT("", "name_pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{magnification}_{image}, or re: and a regular expression with groups (?<wafer>...); null: sub-folder, else name without its number"),
     PATH("", "scale", scale, "scale file that sward scale saved: replaces the instrument's pixel size where it applies, relative to this file"),
     PATH("", "history", history, "ledger of all samples, relative to this file; null: history.sqlite in the output folder"),
-    { "", "targets", KEY_TARGETS, AT(targets), "", 0, 0, 0, NULL, 0, "a quantity of samples.csv with min, max or both, and \"error\": \"repeat\" when only what varies from run to run counts" },
+    { "", "targets", KEY_TARGETS, AT(targets), "", 0, 0, 0, NULL, 0, "a quantity of samples.csv or a numeric column of the sheet with min, max or both; \"rule\": \"guard\" (guard band of 1.645 u, ISO 14253-1, the default), \"simple\" (the value alone), or \"probability\" (JCGM 106) with \"at_least\": 0.95; \"error\": \"repeat\" when only what varies from run to run counts" },
 
     TEXT("samples", "pattern", pattern, "the same as name_pattern"),
+    { "samples", "positions", KEY_PLACES, AT(places), "", 0, 0, 0, NULL, 0, "where the position names of the sheet lie, in mm from the middle of the wafer, such as { \"C\": [0, 0], \"E\": [0, 70] }; x_mm and y_mm of the sheet outrank it" },
 
     ABOVE("limits", "max_megapixels", max_megapixels, "million pixels", 0, 4294, "a larger picture is refused before memory is taken"),
     ABOVE("limits", "max_file_mb", max_file_mb, "MB", 0, 4000, "a larger file is refused before it is read"),
@@ -127,11 +128,15 @@ const protocol_key protocol_keys[] = {
     NUMBER("optics", "step_nm", step_nm, "nm", 0.1, 50, "grid of the spectrum"),
 
     { "plan", "half_width", KEY_GOALS, AT(goals), "", 0, 0, 0, NULL, 0, "half of the 95 % interval you want, by quantity, such as { \"spacing_nm\": 5 }; results.json then says for every sample how many more micrographs that takes" },
+
+    TEXT("charts", "phase", chart_phase, "column of the sheet whose values are recipes: a change starts a new phase of every chart"),
+    { "charts", "rules", KEY_RULES, AT(chart_rules), "", 0, 0, 0, NULL, 0, "pattern tests: zone, iso, nelson, limits, none or words of beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8, spread, ewma, joined by commas" },
+    NUMBER("charts", "baseline", chart_baseline, "", 0, 1e6, "the first etches of a phase that set its limits; 0: all of them"),
 };
 /* clang-format on */
 const size_t n_protocol_keys = sizeof protocol_keys / sizeof protocol_keys[0];
 
-const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "limits", "fitness", "link", "optics", "plan" };
+const char *const protocol_groups[PROTOCOL_GROUPS] = { "samples", "limits", "fitness", "link", "optics", "plan", "charts" };
 const char *const protocol_group_help[PROTOCOL_GROUPS] = {
     "which sample a file belongs to",
     "what one file may ask for",
@@ -139,6 +144,7 @@ const char *const protocol_group_help[PROTOCOL_GROUPS] = {
     "from the top view to the surface that optics needs",
     "what the light meets",
     "how many micrographs are enough?",
+    "is the process moving? (these keys change no result of a sample)",
 };
 
 const protocol_key *protocol_key_find(const char *group, const char *name) {
@@ -224,6 +230,12 @@ void key_expected(const protocol_key *k, textbuf *out) {
         break;
     case KEY_GOALS:
         text_add(out, "an object of half-widths above 0 by quantity");
+        break;
+    case KEY_PLACES:
+        text_add(out, "an object of [x, y] in mm by position");
+        break;
+    case KEY_RULES:
+        text_add(out, "names of pattern tests in quotes, joined by commas");
         break;
     }
 }

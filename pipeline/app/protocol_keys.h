@@ -15,7 +15,9 @@ typedef enum {
     KEY_COATINGS, /* the coatings of a protocol */
     KEY_REAR,     /* the rear side of the wafer */
     KEY_TARGETS,  /* the targets of a protocol */
-    KEY_GOALS     /* half-widths wanted */
+    KEY_GOALS,    /* half-widths wanted */
+    KEY_PLACES,   /* positions on the wafer */
+    KEY_RULES     /* char *, pattern tests of the charts */
 } key_kind;
 
 typedef struct {
@@ -36,7 +38,7 @@ extern const size_t n_protocol_keys;
 
 extern const char *const protocol_groups[]; /* names of the groups that are objects of their own keys */
 extern const char *const protocol_group_help[];
-enum { PROTOCOL_GROUPS = 6 };
+enum { PROTOCOL_GROUPS = 7 };
 
 /* The key, or NULL. */
 const protocol_key *protocol_key_find(const char *group, const char *name);

@@ -44,10 +44,20 @@ static void canonical_key(const protocol *p, const protocol_key *k, textbuf *out
     case KEY_TARGETS:
         for (size_t i = 0; i < p->n_targets; i++) {
             text_addf(out, "%s:%s..", p->targets[i].quantity, number_text(p->targets[i].min, 17, number));
-            text_addf(out, "%s:%d;", number_text(p->targets[i].max, 17, number), (int)p->targets[i].error);
+            text_addf(out, "%s:%d", number_text(p->targets[i].max, 17, number), (int)p->targets[i].error);
+            if (p->targets[i].rule != DECIDE_GUARD)
+                text_addf(out, ":%d:%s", (int)p->targets[i].rule, number_text(p->targets[i].at_least, 17, number));
+            text_add(out, ";");
         }
         break;
-    case KEY_GOALS: /* asks, changes no result */
+    case KEY_PLACES:
+        for (size_t i = 0; i < p->n_places; i++) {
+            text_addf(out, "%s:%s,", p->places[i].position, number_text(p->places[i].x_mm, 17, number));
+            text_addf(out, "%s;", number_text(p->places[i].y_mm, 17, number));
+        }
+        break;
+    case KEY_GOALS: /* these ask, and change no result */
+    case KEY_RULES:
         break;
     }
     text_add(out, "\n");
@@ -62,7 +72,7 @@ void protocol_full_text(const protocol *p, textbuf *out) {
     for (size_t i = 0; i < n_protocol_keys; i++) {
         const protocol_key *k = &protocol_keys[i];
         int name_only = k->kind == KEY_PATH || k->kind == KEY_GOALS || k->offset == offsetof(protocol, name);
-        if (!name_only) canonical_key(p, k, out);
+        if (!name_only && strcmp(k->group, "charts") != 0) canonical_key(p, k, out);
     }
 }
 
@@ -74,6 +84,7 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
     case KEY_TEXT:
     case KEY_PATH:
     case KEY_MATERIAL:
+    case KEY_RULES:
         json_string(out, key_text(p, k));
         break;
     case KEY_NUMBER:
@@ -104,6 +115,7 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
         break;
     case KEY_TARGETS:
     case KEY_GOALS:
+    case KEY_PLACES:
         text_add(out, "{}");
         break;
     }
@@ -307,6 +319,7 @@ static void explain_targets(const protocol *p, textbuf *out) {
     if (!p->n_targets) text_add(out, "There are no targets: samples get no verdict.\n");
     for (size_t i = 0; i < p->n_targets; i++) {
         const target *t = &p->targets[i];
+        char number[NUMBER_TEXT];
         text_addf(out, "A sample conforms when its %s is ", t->quantity);
         if (isfinite(t->min) && isfinite(t->max)) {
             say(out, t->min, "to ");
@@ -318,8 +331,12 @@ static void explain_targets(const protocol *p, textbuf *out) {
             text_add(out, "at most ");
             say(out, t->max, "");
         }
-        text_add(out, t->error == ERROR_REPEAT ? " beyond what varies from run to run.\n"
-                                               : " with 95 % probability, all uncertainty counted.\n");
+        if (t->rule == DECIDE_SIMPLE) text_add(out, ", whatever its uncertainty (simple acceptance).\n");
+        else {
+            text_addf(out, "with %s %% ", number_percent(t->rule == DECIDE_PROBABILITY ? t->at_least : 0.95, 6, number));
+            text_add(out, t->rule == DECIDE_PROBABILITY ? "conformance probability, " : "probability at each limit (guard band), ");
+            text_add(out, t->error == ERROR_REPEAT ? "counting only what varies from run to run.\n" : "all uncertainty counted.\n");
+        }
     }
 }
 

@@ -80,7 +80,13 @@ static status gather_rows(const publication *p, material_for *m, error *e) {
     return ST_OK;
 }
 
-/* Places on the wafer, from the first micrograph of the sample whose sheet row says one. */
+static const named_place *place_of(const protocol *p, const char *position) {
+    for (size_t i = 0; position && i < p->n_places; i++)
+        if (!strcmp(p->places[i].position, position)) return &p->places[i];
+    return NULL;
+}
+
+/* Places on the wafer, from the first micrograph of the sample whose sheet row says one, else from its position's name. */
 static status gather_places(const publication *p, material_for *m, error *e) {
     m->x_mm = mem_array(p->n_groups, sizeof(double));
     m->y_mm = mem_array(p->n_groups, sizeof(double));
@@ -92,6 +98,11 @@ static status gather_places(const publication *p, material_for *m, error *e) {
             if (!row || !isfinite(row->y_mm)) continue;
             m->x_mm[k] = row->x_mm;
             m->y_mm[k] = row->y_mm;
+        }
+        const named_place *named = isfinite(m->x_mm[k]) ? NULL : place_of(p->protocol, p->groups[k].position);
+        if (named) {
+            m->x_mm[k] = named->x_mm;
+            m->y_mm[k] = named->y_mm;
         }
     }
     return ST_OK;
@@ -237,7 +248,7 @@ static status write_all(const publication *p, material_for *m, error *e) {
                   .samples = m->samples, .n_samples = p->n_groups, .sample_json = m->sample_json,
                   .sample_extra = m->extra_names, .n_sample_extra = m->n_extra,
                   .spectra = m->spectra, .n_spectra = m->n_spectra,
-                  .manifest_json = m->manifest.s, .wafers_json = m->wafers.s, .summary = m->summary.s, .title = p->protocol->name,
+                  .manifest_json = m->manifest.s, .wafers_json = m->wafers.s, .series_json = p->ledger->series, .summary = m->summary.s, .title = p->protocol->name,
                   .target_quantity = m->target_quantity, .target_min = m->target_min, .target_max = m->target_max,
                   .n_targets = p->protocol->n_targets, .history_json = p->ledger->json,
                   .reference_wavelength_nm = m->reference_nm, .polished_R = m->polished, .coated_R = m->coated,

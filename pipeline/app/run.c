@@ -82,6 +82,7 @@ static status prepare(run *r, error *e) {
     if (!r->setup) return NO_MEMORY(e, "the optics");
     st = setup_make(&r->protocol, r->setup, e);
     if (st == ST_OK) st = folder_open(o->folder, o->sheet, &r->folder, e);
+    if (st == ST_OK) st = protocol_meet_sheet(&r->protocol, r->folder.sheet.extra_names, r->folder.sheet.n_extra, e);
     if (st == ST_OK && !r->folder.n)
         st = fail(e, ST_BAD_INPUT, "'%s' holds no micrograph: no file below it is named like a picture (.tif, .tiff, .png, .jpg)",
                   o->folder);

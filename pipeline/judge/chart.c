@@ -1,6 +1,6 @@
 /* Control charts.
  *
- * A phase is a stretch of etches under one recipe; nothing is carried from one phase to the next. The first points of a
+ * A phase is the etches of one recipe between two changes of the process; nothing is carried from one phase to the next. The first points of a
  * phase (the baseline) set its centre and sigma. sigma comes from differences between neighbours (or from inside groups),
  * not from all values, so that a drift in the baseline does not hide itself. Points that are left out have no range and no
  * z, and the points around them are neighbours.
@@ -47,12 +47,19 @@ typedef struct {
     int groups; /* of several values each, not individuals */
 } stretch;
 
+static int in_period(const stretch *s, const chart_options *o, size_t i) { return o->stated && o->stated[s->used[i]]; }
+
 static void set_baseline(const stretch *s, const chart_options *o, chart_phase *p) {
-    size_t n = o->baseline && o->baseline < s->n ? o->baseline : s->n, n_spread = 0;
-    if (n < CHART_LEAST_BASELINE) n = s->n < CHART_LEAST_BASELINE ? 0 : CHART_LEAST_BASELINE;
+    size_t n = o->baseline && o->baseline < s->n ? o->baseline : s->n, n_spread = 0, in = 0;
     double sum = 0.0, weight = 0.0, spread = 0.0, sigma = 0.0;
-    for (size_t i = 0; i < n; i++) {
+    if (n < CHART_LEAST_BASELINE) n = s->n < CHART_LEAST_BASELINE ? 0 : CHART_LEAST_BASELINE;
+    for (size_t i = 0; i < s->n; i++) in += (size_t)in_period(s, o, i);
+    p->stated = in >= CHART_LEAST_BASELINE;
+    if (p->stated) n = in;
+    for (size_t i = 0, taken = 0; taken < n; i++) {
         const chart_point *q = &s->points[s->used[i]];
+        if (p->stated && !in_period(s, o, i)) continue;
+        taken++;
         sum += q->value * (double)q->n;
         weight += (double)q->n;
         if (!isfinite(q->spread)) continue;
@@ -81,8 +88,12 @@ static void spread_limits(const stretch *s, const chart_phase *p, double range_u
     }
 }
 
+/* `fresh` is where the tests look back to: the start of the phase, or the point after the last alarm. The range that leads
+ * back from an alarmed point is that point's, not its neighbour's. */
 static void set_limits(const stretch *s, const chart_phase *p, const chart_options *o, double *z) {
     double e = 0.0, left = 1.0; /* left: (1 - lambda)^(2 i) */
+    size_t fresh = 0;
+    int outside = 0; /* the average already is: it was said when it left */
     double d3 = sqrt(2.0 - 4.0 / PI), range_upper = FACTOR_D2_OF_2 + 3.0 * d3; /* D4 d2, of two */
     for (size_t i = 0; i < s->n; i++) {
         chart_point *q = &s->points[s->used[i]];
@@ -97,18 +108,24 @@ static void set_limits(const stretch *s, const chart_phase *p, const chart_optio
         q->ewma_lo = p->centre - reach * unit;
         q->ewma_hi = p->centre + reach * unit;
         spread_limits(s, p, range_upper, q);
-        q->alarms = chart_rules_at(z, i, o->rules);
-        if ((o->rules & RULE(EWMA)) && fabs(e) > reach) q->alarms |= RULE(EWMA);
-        if ((o->rules & RULE(SPREAD)) && isfinite(q->spread) && (q->spread > q->spread_hi || q->spread < q->spread_lo))
+        q->alarms = chart_rules_at(z + fresh, i - fresh, o->rules);
+        if ((o->rules & RULE(EWMA)) && fabs(e) > reach && !outside) q->alarms |= RULE(EWMA);
+        outside = fabs(e) > reach;
+        if ((o->rules & RULE(SPREAD)) && (s->groups || i > fresh) && isfinite(q->spread) &&
+            (q->spread > q->spread_hi || q->spread < q->spread_lo))
             q->alarms |= RULE(SPREAD);
+        if (q->alarms) fresh = i + 1;
     }
 }
 
 /* scratch: [n] of z and indices */
-static void draw_phase(chart *c, chart_phase *p, int groups, double *z, size_t *used) {
+static void draw_phase(chart *c, size_t k, int groups, double *z, size_t *used) {
+    chart_phase *p = &c->phases[k];
     stretch s = { c->points, used, 0, groups };
-    for (size_t i = p->first; i < p->first + p->n; i++) {
+    for (size_t i = p->first, seen = 0; seen < p->n; i++) {
         chart_point *q = &c->points[i];
+        if (q->phase != k) continue;
+        seen++;
         if (!isfinite(q->value)) continue;
         if (!groups && s.n) q->spread = fabs(q->value - c->points[used[s.n - 1]].value);
         used[s.n++] = i;
@@ -130,7 +147,7 @@ static status check_options(const chart_options *o, size_t n, error *e) {
     return ST_OK;
 }
 
-static status draw(const double *values, const double *sd, const size_t *count, const int *starts, size_t n,
+static status draw(const double *values, const double *sd, const size_t *count, const size_t *phase_of, size_t n,
                    const chart_options *o, chart *out, error *e) {
     const double no = MISSING;
     chart c = { .n = n, .options = *o };
@@ -142,14 +159,19 @@ static status draw(const double *values, const double *sd, const size_t *count, 
     c.phases = mem_array(n, sizeof *c.phases);
     if (!z || !used || !c.points || !c.phases) st = NO_MEMORY(e, "a control chart");
     for (size_t i = 0; st == ST_OK && i < n; i++) {
-        if (i == 0 || (starts && starts[i])) c.phases[c.n_phases++].first = i;
-        c.phases[c.n_phases - 1].n++;
-        c.points[i] = (chart_point){ values[i], count ? count[i] : 1, c.n_phases - 1, sd ? sd[i] : no, no, no, no, no, no,
-                                     no, no, no, 0 };
+        size_t k = phase_of ? phase_of[i] : 0;
+        if (k > c.n_phases) {
+            st = fail(e, ST_BAD_INPUT, "a control chart numbers its phases in the order of their first etches");
+            break;
+        }
+        if (k == c.n_phases) c.phases[c.n_phases++].first = i;
+        c.phases[k].n++;
+        c.points[i] = (chart_point){ values[i], count ? count[i] : 1, k, sd ? sd[i] : no, no, no, no, no, no, no, no, no, 0 };
         if (c.points[i].n == 0) c.points[i].value = no;
         if (sd && c.points[i].n < 2) c.points[i].spread = no;
     }
-    for (size_t k = 0; st == ST_OK && k < c.n_phases; k++) draw_phase(&c, &c.phases[k], sd != NULL, z, used);
+    for (size_t k = 0; st == ST_OK && k < c.n_phases; k++) draw_phase(&c, k, sd != NULL, z, used);
+    c.options.stated = NULL; /* the caller's */
     free(z);
     free(used);
     if (st == ST_OK) *out = c;
@@ -157,11 +179,11 @@ static status draw(const double *values, const double *sd, const size_t *count, 
     return st;
 }
 
-status chart_individuals(const double *values, const int *starts, size_t n, const chart_options *o, chart *out, error *e) {
-    return draw(values, NULL, NULL, starts, n, o, out, e);
+status chart_individuals(const double *values, const size_t *phase_of, size_t n, const chart_options *o, chart *out, error *e) {
+    return draw(values, NULL, NULL, phase_of, n, o, out, e);
 }
 
-status chart_means(const double *mean, const double *sd, const size_t *count, const int *starts, size_t n,
+status chart_means(const double *mean, const double *sd, const size_t *count, const size_t *phase_of, size_t n,
                    const chart_options *o, chart *out, error *e) {
-    return draw(mean, sd, count, starts, n, o, out, e);
+    return draw(mean, sd, count, phase_of, n, o, out, e);
 }

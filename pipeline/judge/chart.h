@@ -5,7 +5,8 @@
 
 #include "base/status.h"
 
-/* Pattern tests on z, the distance from the centre in sigma. Each looks back within its phase only. */
+/* Pattern tests on z, the distance from the centre in sigma. Each looks back within its phase only, and no further than the
+ * point after the last alarm: a run that goes on is said once, as the lengths to a false alarm count it. */
 /* clang-format off */
 #define CHART_RULE_LIST(X)                                                           \
     X(BEYOND,       "beyond", "lies beyond 3 sigma")                                 \
@@ -16,6 +17,9 @@
     X(RUN_9,        "run9",   "is the ninth in a row on one side of the centre")     \
     X(TREND_6,      "trend6", "ends six in a row that rise or fall")                 \
     X(TREND_7,      "trend7", "ends seven in a row that rise or fall")               \
+    X(ALTERNATE_14, "alternate14", "is the fourteenth in a row that goes up and down in turn") \
+    X(CALM_15,      "calm15", "is the fifteenth in a row within 1 sigma")            \
+    X(APART_8,      "apart8", "is the eighth in a row beyond 1 sigma, on either side") \
     X(SPREAD,       "spread", "differs from its neighbours more than they usually do") \
     X(EWMA,         "ewma",   "takes the weighted average of the last etches beyond its limits")
 /* clang-format on */
@@ -49,7 +53,7 @@ unsigned chart_rules_at(const double *z, size_t i, unsigned rules);
 double chart_run_length(unsigned rules, double shift, size_t runs, double *se);
 /* The same of an EWMA chart with limits at k sigma of the average, exact or as after many points. */
 double chart_ewma_run_length(double lambda, double k, int exact, double shift, size_t runs, double *se);
-/* At shift 0: published where known, simulated (2000 runs) otherwise; infinite without a rule. */
+/* At shift 0, limits known: published where known, simulated (2000 runs) otherwise; infinite without a rule. */
 double chart_false_alarm_length(unsigned rules);
 
 typedef struct {
@@ -57,10 +61,17 @@ typedef struct {
     double centre, sigma; /* given for all phases instead; NAN: from the baseline */
     unsigned rules;
     double lambda, ewma_k; /* of the EWMA */
+    const unsigned char *stated; /* [n] of the values: the points of a stated baseline period; a phase with 5 of them takes its
+                                    limits from them. NULL: none. Borrowed for the call */
 } chart_options;
 /* baseline 20, zone rules, lambda 0.2, k 2.962 (one false alarm in 500: Lucas and Saccucci 1990) */
 chart_options chart_defaults(void);
 #define CHART_LEAST_BASELINE 5
+
+/* The same for what really is on a chart of individuals: every rule of the options (spread and ewma too), limits set by
+ * `baseline` steady points (0: known limits), over the 100 points that follow. By simulation with a fixed seed.
+ *   err  NAN without memory; infinite without a rule */
+double chart_false_alarm_drawn(const chart_options *o, size_t baseline);
 
 typedef struct {
     double value;    /* NAN: left out, nothing else is said about it */
@@ -71,8 +82,9 @@ typedef struct {
 } chart_point;
 
 typedef struct {
-    size_t first, n;      /* points, left-out ones included */
+    size_t first, n;      /* index of its first point; how many it has, left-out ones included */
     size_t n_used, n_baseline;
+    int stated;           /* the baseline is that of the stated period */
     double centre, sigma; /* sigma of one value; NAN: too few points */
     double spread_mean;   /* mean moving range or sd of the baseline; NAN when given */
     double lag1;          /* correlation of neighbours in the phase; NAN unknown. High: the limits are too narrow */
@@ -87,14 +99,15 @@ typedef struct {
 } chart;
 
 /* Individuals with moving ranges of two: sigma = mean range / d2.
- *   in   values[n] in time order, NAN = left out; starts[n] nonzero where a phase begins (NULL: one phase)
+ *   in   values[n] in time order, NAN = left out; phase_of[n] the phase of each, numbered from 0 in the order of appearance
+ *        (NULL: one phase); the points of a phase need not lie side by side
  *   out  the caller's (chart_free), untouched on failure
- *   err  ST_BAD_INPUT n = 0, lambda outside 0..1, k or a given sigma not above 0; ST_NO_MEMORY
+ *   err  ST_BAD_INPUT n = 0, phases out of order, lambda outside 0..1, k or a given sigma not above 0; ST_NO_MEMORY
  *   src  ISO 7870-2; EWMA with exact limits: ISO 7870-6, Lucas J.M., Saccucci M.S. (1990) Technometrics 32, 1-29 */
-status chart_individuals(const double *values, const int *starts, size_t n, const chart_options *o, chart *out, error *e);
+status chart_individuals(const double *values, const size_t *phase_of, size_t n, const chart_options *o, chart *out, error *e);
 /* Means with standard deviations, of groups that may differ in size: sigma = mean of s / c4 over groups of two or more.
  *   in   mean[n], sd[n] (NAN for a group of one), count[n]; as above otherwise */
-status chart_means(const double *mean, const double *sd, const size_t *count, const int *starts, size_t n,
+status chart_means(const double *mean, const double *sd, const size_t *count, const size_t *phase_of, size_t n,
                    const chart_options *o, chart *out, error *e);
 void chart_free(chart *c);
 

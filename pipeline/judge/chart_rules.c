@@ -7,8 +7,10 @@
  * What this file does not do: correlated values, for which every figure here is too hopeful. */
 #include <math.h>
 #include <stdint.h>
+#include <stdlib.h>
 #include <string.h>
 
+#include "base/mem.h"
 #include "base/quantity.h"
 #include "judge/chart.h"
 
@@ -47,7 +49,7 @@ status chart_rules_parse(const char *text, unsigned *rules, error *e) {
             }
         if (!found)
             return fail(e, ST_BAD_INPUT, "rules: '%.*s' is no rule; take zone, iso, nelson, limits, none or words of beyond, "
-                                         "2of3, 4of5, run7, run8, run9, trend6, trend7, spread, ewma",
+                                         "2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8, spread, ewma",
                         n < 40 ? (int)n : 40, p);
         p += n;
         if (!*p) break;
@@ -75,6 +77,21 @@ static int rises(const double *z, size_t i, size_t n) {
     return up || down;
 }
 
+static int alternates(const double *z, size_t i, size_t n) {
+    if (i + 1 < n) return 0;
+    for (size_t k = 0; k + 2 < n; k++)
+        if (!((z[i - k] - z[i - k - 1]) * (z[i - k - 1] - z[i - k - 2]) < 0.0)) return 0;
+    return 1;
+}
+
+/* The last n lie all within 1 sigma, or all beyond it. */
+static int all_within(const double *z, size_t i, size_t n, int within) {
+    if (i + 1 < n) return 0;
+    for (size_t k = 0; k < n; k++)
+        if ((fabs(z[i - k]) < 1.0) != within) return 0;
+    return 1;
+}
+
 unsigned chart_rules_at(const double *z, size_t i, unsigned rules) {
     unsigned fired = 0;
     if (!isfinite(z[i])) return 0;
@@ -86,6 +103,9 @@ unsigned chart_rules_at(const double *z, size_t i, unsigned rules) {
     if ((rules & RULE(RUN_9)) && some_beyond(z, i, 9, 9, 0.0)) fired |= RULE(RUN_9);
     if ((rules & RULE(TREND_6)) && rises(z, i, 6)) fired |= RULE(TREND_6);
     if ((rules & RULE(TREND_7)) && rises(z, i, 7)) fired |= RULE(TREND_7);
+    if ((rules & RULE(ALTERNATE_14)) && alternates(z, i, 14)) fired |= RULE(ALTERNATE_14);
+    if ((rules & RULE(CALM_15)) && all_within(z, i, 15, 1)) fired |= RULE(CALM_15);
+    if ((rules & RULE(APART_8)) && all_within(z, i, 8, 0)) fired |= RULE(APART_8);
     return fired;
 }
 
@@ -112,7 +132,7 @@ static double normal(dice *d) {
     return radius * cos(angle);
 }
 
-enum { LOOK_BACK = 9, LONGEST_RUN = 1000000 };
+enum { LOOK_BACK = 15, LONGEST_RUN = 1000000 };
 
 static size_t one_run(dice *d, unsigned rules, double shift) {
     double z[LOOK_BACK];
@@ -186,4 +206,29 @@ double chart_false_alarm_length(unsigned rules) {
     for (size_t i = 0; i < sizeof known / sizeof known[0]; i++)
         if (known[i].rules == rules) return known[i].length;
     return chart_run_length(rules, 0.0, 2000, NULL);
+}
+
+/* Values of a steady process, their first ones the baseline; alarms behind it, over many charts. */
+double chart_false_alarm_drawn(const chart_options *o, size_t baseline) {
+    enum { CHARTS = 300, FOLLOW = 100 };
+    dice d = { .state = 22 };
+    size_t n = baseline + FOLLOW, alarms = 0;
+    chart_options steady = *o;
+    steady.baseline = baseline;
+    steady.stated = NULL;
+    steady.centre = baseline ? MISSING : 0.0;
+    steady.sigma = baseline ? MISSING : 1.0;
+    if (!o->rules) return (double)INFINITY;
+    double *v = mem_array(n, sizeof *v);
+    status st = v ? ST_OK : ST_NO_MEMORY;
+    for (size_t k = 0; st == ST_OK && k < CHARTS; k++) {
+        chart c = { 0 };
+        for (size_t i = 0; i < n; i++) v[i] = normal(&d);
+        st = chart_individuals(v, NULL, n, &steady, &c, NULL);
+        for (size_t i = baseline; st == ST_OK && i < n; i++) alarms += c.points[i].alarms != 0;
+        chart_free(&c);
+    }
+    free(v);
+    if (st != ST_OK) return MISSING;
+    return alarms ? (double)(CHARTS * FOLLOW) / (double)alarms : (double)INFINITY;
 }

@@ -273,6 +273,18 @@ status history_check_time(history *h, const char *time, const char *what, error 
                        what, time);
 }
 
+status history_day(history *h, const char *time, const char *what, double *day, error *e) {
+    sqlite3_stmt *s = NULL;
+    status st = history_check_time(h, time, what, e);
+    if (st != ST_OK) return st;
+    if (sqlite3_prepare_v2(h->db, "SELECT julianday(?1)", -1, &s, NULL) != SQLITE_OK || history_bind(s, 1, time) != SQLITE_OK ||
+        sqlite3_step(s) != SQLITE_ROW)
+        st = history_say(h, "reading a time", e);
+    else *day = sqlite3_column_double(s, 0);
+    sqlite3_finalize(s);
+    return st;
+}
+
 status history_read(history *h, const char *since, const char *lot, history_list *out, error *e) {
     history_list l = { 0 };
     size_t room = 0;

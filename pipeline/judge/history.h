@@ -47,6 +47,9 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
  *   err  ST_BAD_INPUT `since` is no date; ST_IO damaged, locked; ST_NO_MEMORY */
 status history_read(history *h, const char *since, const char *lot, history_list *out, error *e);
 void history_list_free(history_list *l);
+/* A time as a day, as in history_row. `what` opens the sentence.
+ *   err  ST_BAD_INPUT it is no date and no time; ST_IO */
+status history_day(history *h, const char *time, const char *what, double *day, error *e);
 
 /* What happened to the process, by people. A change starts a new phase of every chart; a remark does not. */
 typedef struct {

@@ -42,6 +42,8 @@ static void add_interval(double lo, double hi, int digits, textbuf *t) {
 
 static int is_clear(const trend_slope *d) { return isfinite(d->lo) && isfinite(d->hi) && (d->lo > 0.0 || d->hi < 0.0); }
 
+int sentence_drifts(const trend_slope *d) { return is_clear(d) && d->p < 0.01; }
+
 enum { FAR = 100 }; /* etches; beyond that a straight line says nothing */
 
 static void add_time_left(const sentence_subject *s, const trend_slope *d, textbuf *t) {
@@ -57,8 +59,7 @@ static void add_time_left(const sentence_subject *s, const trend_slope *d, textb
 
 void sentence_drift(const sentence_subject *s, const trend_slope *d, const trend_slope *day, textbuf *t) {
     sentence_name(s, t);
-    if (!is_clear(d)) text_add(t, " shows no clear drift: ");
-    else text_add(t, " drifts by ");
+    text_add(t, sentence_drifts(d) ? " drifts by " : is_clear(d) ? " may drift: " : " shows no clear drift: ");
     if (d->slope > 0.0) text_add(t, "+");
     add_value(s, d->slope, 3, t);
     text_add(t, " per etch ");
@@ -68,7 +69,7 @@ void sentence_drift(const sentence_subject *s, const trend_slope *d, const trend
         add_value(s, day->slope, 3, t);
         text_add(t, " per day");
     }
-    if (is_clear(d)) add_time_left(s, d, t);
+    if (sentence_drifts(d)) add_time_left(s, d, t);
     text_addf(t, " (%zu etches)", d->n);
 }
 
@@ -84,9 +85,10 @@ void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart
     add_number(p->centre - 3.0 * p->sigma, s->digits, t);
     text_add(t, " to ");
     add_value(s, p->centre + 3.0 * p->sigma, s->digits, t);
-    if (p->n_baseline) text_addf(t, ", from the first %zu etches", p->n_baseline);
+    if (p->stated) text_addf(t, ", from the %zu etches of the stated period", p->n_baseline);
+    else if (p->n_baseline) text_addf(t, ", from the first %zu etches", p->n_baseline);
     else text_add(t, ", as given");
-    if (p->n_baseline && o->baseline > p->n_used)
+    if (p->n_baseline && !p->stated && o->baseline > p->n_used)
         text_addf(t, " (%zu are better: the limits are provisional)", o->baseline);
     if (p->n_used >= 10 && p->lag1 > 2.0 / sqrt((double)p->n_used)) {
         text_add(t, "; neighbours resemble each other (correlation ");
@@ -110,7 +112,7 @@ void sentence_alarm(const sentence_subject *s, const char *sample, const chart_p
     text_add(t, " sigma from the centre)");
 }
 
-void sentence_false_alarms(const chart_options *o, textbuf *t) {
+void sentence_false_alarms(const chart_options *o, double drawn, size_t baseline, textbuf *t) {
     double length = chart_false_alarm_length(o->rules);
     if (isfinite(length)) {
         text_add(t, "On a steady process these pattern tests give one false alarm in about ");
@@ -118,11 +120,76 @@ void sentence_false_alarms(const chart_options *o, textbuf *t) {
         text_add(t, " etches");
     } else
         text_add(t, "No pattern test is on");
+    if (isfinite(drawn)) {
+        text_add(t, "; this chart");
+        if (baseline) text_addf(t, ", with limits from %zu etches", baseline);
+        if (o->rules & RULE(SPREAD)) text_add(t, baseline ? " and the chart of the spread" : ", with the chart of the spread");
+        if (o->rules & RULE(EWMA)) text_add(t, " and the weighted average");
+        text_add(t, ", one in about ");
+        add_number(drawn, 2, t);
+        return;
+    }
     if (o->rules & RULE(SPREAD)) text_add(t, "; the chart of the spread adds its own");
     if (o->rules & RULE(EWMA)) {
         text_add(t, "; the weighted average adds one in about ");
         add_number(chart_ewma_run_length(o->lambda, o->ewma_k, 1, 0.0, 500, NULL), 2, t);
     }
+}
+
+static void add_signed(const sentence_subject *s, double v, int digits, textbuf *t) {
+    if (v > 0.0) text_add(t, "+");
+    add_value(s, v, digits, t);
+}
+
+void sentence_outlier(const sentence_subject *s, const char *etch, const finding_outlier *o, textbuf *t) {
+    sentence_name(s, t);
+    text_addf(t, " of %s stands out: ", etch);
+    add_value(s, o->value, s->digits, t);
+    text_add(t, " between neighbours at ");
+    add_value(s, o->beside, s->digits, t);
+    text_add(t, "; look at the picture first (charging, focus, particle), then keep it or exclude it with a reason");
+}
+
+void sentence_break(const sentence_subject *s, const char *before, const char *etch, const finding_break *b, textbuf *t) {
+    if (b->kind == BREAK_BEND) {
+        text_add(t, "the drift of ");
+        sentence_name(s, t);
+        text_addf(t, " changes at about %s (p = ", etch);
+        add_number(b->p, 1, t);
+        text_add(t, ")");
+        return;
+    }
+    sentence_name(s, t);
+    text_add(t, " steps by ");
+    add_signed(s, b->size, 3, t);
+    text_add(t, " ");
+    add_interval(b->lo, b->hi, 3, t);
+    text_addf(t, " between %s and %s (p = ", before, etch);
+    add_number(b->p, 1, t);
+    text_add(t, ")");
+}
+
+void sentence_stretch(const sentence_subject *s, const char *first, const char *last, const trend_slope *d, textbuf *t) {
+    sentence_name(s, t);
+    text_add(t, " drifted by ");
+    add_signed(s, d->slope, 3, t);
+    text_add(t, " per etch ");
+    add_interval(d->lo, d->hi, 3, t);
+    text_addf(t, " from %s to %s, ", first, last);
+    add_signed(s, d->slope * ((double)d->n - 1.0), 2, t);
+    text_addf(t, " in all (%zu etches)", d->n);
+}
+
+void sentence_since(const sentence_subject *s, const char *change, const trend_step *d, textbuf *t) {
+    text_addf(t, "after '%s' ", change);
+    sentence_name(s, t);
+    text_add(t, d->lo > 0.0 || d->hi < 0.0 ? " stepped by " : " shows no clear step: ");
+    add_signed(s, d->difference, 3, t);
+    text_add(t, " ");
+    add_interval(d->lo, d->hi, 3, t);
+    text_addf(t, ", the first %zu etches against the last %zu before (p = ", d->n_b, d->n_a);
+    add_number(d->p, 2, t);
+    text_add(t, ")");
 }
 
 static void add_index(const char *name, const capability_index *c, textbuf *t) {

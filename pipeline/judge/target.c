@@ -5,8 +5,9 @@
  * 1.645 u from it; it fails when the same holds for the bad side; between the two nobody can tell. With two limits
  * each has its own guard band. Where the uncertainty is an interval lo..hi (95 %, perhaps lopsided), the whole
  * interval has to lie inside, or wholly outside.
- * The conformance probability is that of a normal law (JCGM 106). It is left unknown for an interval: lo..hi does not
- * say how the probability is spread inside.
+ * A protocol may ask for simple acceptance instead, or for a conformance probability inside both limits at once (JCGM 106).
+ * The conformance probability is that of a normal law. An interval does not say how the probability is spread inside: it is
+ * left unknown, and only where the rule needs it taken as two half-normals about the value with lo..hi as their 95 %.
  * What this file does not do: it knows no columns; units and digits come with the reading. */
 #include "judge/target.h"
 
@@ -29,6 +30,15 @@ verdict verdict_worst(const verdict *v, size_t n) {
     for (size_t i = 0; i < n; i++)
         if (v[i] > worst) worst = v[i];
     return worst;
+}
+
+const char *decision_word(decision d) {
+    static const char *const words[] = { "guard", "simple", "probability" };
+    return words[d];
+}
+
+target target_defaults(void) {
+    return (target){ .min = MISSING, .max = MISSING, .error = ERROR_FULL, .rule = DECIDE_GUARD, .at_least = 0.95 };
 }
 
 static double normal_below(double z) { return 0.5 * erfc(-z / sqrt(2.0)); }
@@ -88,29 +98,82 @@ static reach reach_of(const target *g, const reading *r) {
     return (reach){ r->value - GUARD * u, r->value + GUARD * u, u };
 }
 
-static verdict decide(const target *g, const reach *w) {
+static int inside(const target *g, double v) { return (isnan(g->max) || v <= g->max) && (isnan(g->min) || v >= g->min); }
+
+static double probability(const target *g, double value, double u) {
+    if (!(u > 0.0)) /* no spread at all: it is inside or it is not */
+        return isnan(u) ? MISSING : inside(g, value);
+    double p = isfinite(g->max) ? normal_below((g->max - value) / u) : 1.0;
+    if (isfinite(g->min)) p -= normal_below((g->min - value) / u);
+    return p > 0.0 ? p : 0.0;
+}
+
+/* Below x, of a law with its median at m and the 2.5 % and 97.5 % quantiles lo and hi. */
+static double split_below(double x, double m, double lo, double hi) {
+    double sd = (x < m ? m - lo : hi - m) / 1.959963984540054;
+    return sd > 0.0 ? normal_below((x - m) / sd) : x >= m;
+}
+
+static double probability_of(const target *g, const reading *r, const reach *w) {
+    if (!isnan(w->u)) return probability(g, r->value, w->u);
+    double m = r->value > w->lo && r->value < w->hi ? r->value : 0.5 * (w->lo + w->hi);
+    double p = isfinite(g->max) ? split_below(g->max, m, w->lo, w->hi) : 1.0;
+    if (isfinite(g->min)) p -= split_below(g->min, m, w->lo, w->hi);
+    return p > 0.0 ? p : 0.0;
+}
+
+static verdict decide_guard(const target *g, const reach *w) {
     int below_max = isnan(g->max) || w->hi <= g->max, above_min = isnan(g->min) || w->lo >= g->min;
     if (below_max && above_min) return VERDICT_CONFORMS;
     if ((isfinite(g->max) && w->lo > g->max) || (isfinite(g->min) && w->hi < g->min)) return VERDICT_FAILS;
     return VERDICT_UNDECIDED;
 }
 
+static verdict decide(const target *g, const reading *r, const reach *w, double p) {
+    if (g->rule == DECIDE_SIMPLE) return inside(g, r->value) ? VERDICT_CONFORMS : VERDICT_FAILS;
+    if (isnan(w->lo)) return VERDICT_UNDECIDED;
+    if (g->rule == DECIDE_GUARD) return decide_guard(g, w);
+    return p >= g->at_least ? VERDICT_CONFORMS : 1.0 - p >= g->at_least ? VERDICT_FAILS : VERDICT_UNDECIDED;
+}
+
+/* To the nearest limit. */
+static double distance(const target *g, double value) {
+    double d = HUGE_VAL;
+    if (isfinite(g->min)) d = fmin(d, fabs(value - g->min));
+    if (isfinite(g->max)) d = fmin(d, fabs(value - g->max));
+    return d;
+}
+
+double target_settling_u(const target *g, double value) {
+    double high = distance(g, value), low = 0.0;
+    if (g->rule == DECIDE_SIMPLE) return HUGE_VAL;
+    if (g->rule == DECIDE_GUARD || !(high > 0.0)) return high / GUARD;
+    high *= 2.0; /* at_least is above one half: at this u neither side reaches 0.7, and one half of it reaches 0.97 */
+    reading r = { .value = value };
+    for (int i = 0; i < 60; i++) {
+        double u = 0.5 * (low + high), p = probability(g, value, u);
+        reach w = { value, value, u };
+        if (decide(g, &r, &w, p) == VERDICT_UNDECIDED) high = u;
+        else low = u;
+    }
+    return low;
+}
+
 /* The limit that the reach straddles, the nearer of two: the one a person has to look at. */
 static double near_limit(const target *g, const reach *w, double value) {
     int on_max = isfinite(g->max) && w->hi > g->max, on_min = isfinite(g->min) && w->lo < g->min;
-    if (on_max && on_min) return fabs(value - g->min) < fabs(value - g->max) ? g->min : g->max;
-    return on_max ? g->max : g->min;
+    if (on_max == on_min && isfinite(g->min) && isfinite(g->max)) return fabs(value - g->min) < fabs(value - g->max) ? g->min : g->max;
+    return on_max || isnan(g->min) ? g->max : g->min;
 }
 
-static double probability(const target *g, double value, double u) {
-    if (!(u > 0.0)) /* no spread at all: it is inside or it is not */
-        return isnan(u) ? MISSING : (isnan(g->max) || value <= g->max) && (isnan(g->min) || value >= g->min);
-    double p = isfinite(g->max) ? normal_below((g->max - value) / u) : 1.0;
-    if (isfinite(g->min)) p -= normal_below((g->min - value) / u);
-    return p > 0.0 ? p : 0.0;
+static void explain_rule(const target *g, double p, textbuf *t) {
+    char a[NUMBER_TEXT], b[NUMBER_TEXT];
+    if (g->rule == DECIDE_SIMPLE) text_add(t, " (simple acceptance: its uncertainty does not count)");
+    if (g->rule == DECIDE_PROBABILITY)
+        text_addf(t, " (conformance probability %s, asked: %s)", number_text(p, 3, a), number_text(g->at_least, 4, b));
 }
 
-static void explain(const target *g, const reading *r, const reach *w, verdict v, textbuf *t) {
+static void explain(const target *g, const reading *r, const reach *w, double p, verdict v, textbuf *t) {
     const char *unit = r->unit ? r->unit : "";
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
     text_add(t, g->quantity);
@@ -119,13 +182,15 @@ static void explain(const target *g, const reading *r, const reach *w, verdict v
     if (isfinite(w->u)) text_addf(t, " +- %s%s%s (k = 2)", rough(2.0 * w->u, b), unit[0] ? " " : "", unit);
     else {
         text_addf(t, "%s%s", unit[0] ? " " : "", unit);
-        text_addf(t, " (95 %% interval %s..%s)", number_text(w->lo, r->digits, a), number_text(w->hi, r->digits, b));
+        if (isfinite(w->lo))
+            text_addf(t, " (95 %% interval %s..%s)", number_text(w->lo, r->digits, a), number_text(w->hi, r->digits, b));
     }
     if (v == VERDICT_CONFORMS) {
         text_add(t, " ");
         add_range(t, g, r, unit);
     } else if (v == VERDICT_FAILS) {
-        int high = isfinite(g->max) && w->lo > g->max;
+        double low_end = g->rule == DECIDE_GUARD ? w->lo : r->value;
+        int high = isfinite(g->max) && (isnan(g->min) || low_end > g->max || r->value - g->max > g->min - r->value);
         text_add(t, high ? " exceeds the limit " : " falls short of the limit ");
         add_number(t, high ? g->max : g->min, r->digits, unit);
     } else {
@@ -133,7 +198,8 @@ static void explain(const target *g, const reading *r, const reach *w, verdict v
         add_number(t, near_limit(g, w, r->value), r->digits, unit);
         text_add(t, " to decide with this uncertainty");
     }
-    if (g->error == ERROR_REPEAT) text_add(t, ", counting only what varies from run to run");
+    explain_rule(g, p, t);
+    if (g->error == ERROR_REPEAT && g->rule != DECIDE_SIMPLE) text_add(t, ", counting only what varies from run to run");
 }
 
 void judge(const target *g, const reading *r, judgement *out) {
@@ -146,17 +212,17 @@ void judge(const target *g, const reading *r, judgement *out) {
         text_addf(&t, "%s was not measured", g->quantity);
     } else {
         reach w = reach_of(g, r);
-        if (isnan(w.lo)) {
-            out->verdict = VERDICT_UNDECIDED;
+        out->conformance_probability = isnan(w.lo) ? MISSING : probability(g, r->value, w.u);
+        if (g->rule == DECIDE_PROBABILITY && isfinite(w.lo)) out->conformance_probability = probability_of(g, r, &w);
+        out->verdict = decide(g, r, &w, out->conformance_probability);
+        if (isnan(w.lo) && g->rule != DECIDE_SIMPLE) {
             text_addf(&t, "%s ", g->quantity);
             add_number(&t, r->value, r->digits, r->unit ? r->unit : "");
             text_add(&t, g->error == ERROR_REPEAT
                              ? " cannot be judged: how much it varies from run to run is not known (one micrograph?)"
                              : " cannot be judged: its uncertainty is not known");
         } else {
-            out->verdict = decide(g, &w);
-            out->conformance_probability = probability(g, r->value, w.u);
-            explain(g, r, &w, out->verdict, &t);
+            explain(g, r, &w, out->conformance_probability, out->verdict, &t);
         }
     }
     finish(&t, out);

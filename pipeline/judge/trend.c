@@ -42,6 +42,14 @@ static void sen_limits(const double *slopes, size_t n, double variance, trend_sl
     s->hi = high <= (double)n ? slopes[(size_t)high - 1] : MISSING;
 }
 
+/* Kendall's score is the number of rising pairs less that of falling ones. */
+static double kendall_p(const double *slopes, size_t n, double variance) {
+    double score = 0.0;
+    for (size_t i = 0; i < n; i++) score += (slopes[i] > 0.0) - (slopes[i] < 0.0);
+    double z = fmax(fabs(score) - 1.0, 0.0) / sqrt(variance);
+    return 2.0 * normal_below(-z);
+}
+
 status trend_robust(const double *x, const double *y, size_t n, trend_slope *s, error *e) {
     if (n > TREND_MOST) {
         x += n - TREND_MOST;
@@ -64,6 +72,7 @@ status trend_robust(const double *x, const double *y, size_t n, trend_slope *s, 
         qsort(work, n, sizeof *work, ascending);
         t.slope = median_of_sorted(slopes, m);
         sen_limits(slopes, m, kendall_variance(work, n), &t);
+        t.p = kendall_p(slopes, m, kendall_variance(work, n));
         for (size_t i = 0; i < n; i++) work[i] = y[i] - t.slope * x[i];
         qsort(work, n, sizeof *work, ascending);
         t.intercept = median_of_sorted(work, n);

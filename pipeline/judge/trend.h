@@ -13,6 +13,7 @@
 typedef struct {
     double slope, lo, hi;
     double intercept; /* median of y - slope x */
+    double p;         /* of no drift at all: Kendall's test, normal law with continuity, two-sided */
     size_t n;
 } trend_slope;
 #define TREND_MOST 1500

@@ -157,6 +157,7 @@ void results_json(const results *r, textbuf *out) {
     text_addf(out, "{\n  \"manifest\": %s,\n  \"summary\": ", r->manifest_json ? r->manifest_json : "{}");
     json_string(out, r->summary ? r->summary : "");
     text_addf(out, ",\n  \"wafers\": %s", r->wafers_json ? r->wafers_json : "[]");
+    text_addf(out, ",\n  \"series\": %s", r->series_json ? r->series_json : "[]");
     text_add(out, ",\n  \"images\": ");
     rows_json(&images, r->image_json, out);
     text_add(out, ",\n  \"samples\": ");

@@ -24,21 +24,21 @@ int main(void) {
     f[QUANTITY_ACF] = made(352.0, 3.1, 0.0, 0.0);
 
     /* 1.645 * 3.1 sqrt(2/m) <= 3 at m = 5.78: six, so four more; 352 is 3 below the limit. */
-    const target ceiling = { spacing_nm, (double)NAN, 355.0, ERROR_FULL };
+    const target ceiling = { .quantity = spacing_nm, .min = (double)NAN, .max = 355.0, .error = ERROR_FULL };
     CHECK(ask(&ceiling, f, "4 more micrographs would settle it") == 4);
     f[QUANTITY_ACF].m.u_method = 2.9; /* 1.645 * 2.9 is beyond 3 */
     CHECK(ask(&ceiling, f, "cannot settle it: the method's own uncertainty is larger than the distance") == PLAN_NEVER);
-    const target repeat = { spacing_nm, (double)NAN, 355.0, ERROR_REPEAT };
+    const target repeat = { .quantity = spacing_nm, .min = (double)NAN, .max = 355.0, .error = ERROR_REPEAT };
     CHECK(ask(&repeat, f, "4 more micrographs") == 4);
     f[QUANTITY_ACF].u_px = 3.5;
     CHECK(ask(&ceiling, f, "the pixel size's own uncertainty") == PLAN_NEVER);
-    const target on = { spacing_nm, 352.0, (double)NAN, ERROR_REPEAT };
+    const target on = { .quantity = spacing_nm, .min = 352.0, .max = (double)NAN, .error = ERROR_REPEAT };
     CHECK(ask(&on, f, "lies on the limit") == PLAN_NEVER);
-    const target near = { spacing_nm, (double)NAN, 352.01, ERROR_REPEAT };
+    const target near = { .quantity = spacing_nm, .min = (double)NAN, .max = 352.01, .error = ERROR_REPEAT };
     CHECK(ask(&near, f, "even 1000 more micrographs") == PLAN_MOST);
-    const target both = { spacing_nm, 349.0, 380.0, ERROR_REPEAT };
+    const target both = { .quantity = spacing_nm, .min = 349.0, .max = 380.0, .error = ERROR_REPEAT };
     CHECK(ask(&both, f, "4 more") == 4); /* the nearer limit counts */
-    const target optics = { reflectance, (double)NAN, 0.02, ERROR_FULL }, unknown = { density, 9.0, (double)NAN, ERROR_FULL };
+    const target optics = { .quantity = reflectance, .min = (double)NAN, .max = 0.02, .error = ERROR_FULL }, unknown = { .quantity = density, .min = 9.0, .max = (double)NAN, .error = ERROR_FULL };
     CHECK(ask(&optics, f, "") == PLAN_NEVER);
     CHECK(ask(&unknown, f, "") == PLAN_NEVER);
 

@@ -34,52 +34,58 @@ static int holds(textbuf *t, const char *words) {
     return there;
 }
 
+/* The lines; the charts are looked at below. */
+static status describe(const history_list *l, const history_notes *notes, const protocol *p, textbuf *t, error *e) {
+    textbuf charts = { 0 };
+    status st = process_describe(l, notes, p, t, &charts, e);
+    text_free(&charts);
+    return st;
+}
+
 int main(void) {
     error e = { 0 };
     history_notes none = { 0 };
     textbuf t = { 0 };
     static char spacing[] = "spacing_nm", density[] = "density_per_um2";
-    target targets[] = { { density, 1.0, 2.0, ERROR_FULL }, { spacing, 250.0, 380.0, ERROR_FULL } };
+    target targets[] = { { .quantity = density, .min = 1.0, .max = 2.0, .error = ERROR_FULL }, { .quantity = spacing, .min = 250.0, .max = 380.0, .error = ERROR_FULL } };
     protocol p = { .targets = targets, .n_targets = 2 };
     history_list l = make(4);
-    CHECK(process_sentences(&l, &none, &p, &t, &e) == ST_OK && t.n == 0);
+    CHECK(describe(&l, &none, &p, &t, &e) == ST_OK && t.n == 0);
     l = make(7); /* now about 366; the limit comes in 2 */
-    CHECK(process_sentences(&l, &none, &p, &t, &e) == ST_OK);
+    CHECK(describe(&l, &none, &p, &t, &e) == ST_OK);
     CHECK(holds(&t, "spacing drifts by +11 nm per etch (95 %: ") && holds(&t, "leaves its target in 2 etches (7 etches)"));
     CHECK(holds(&t, "nm per day") && holds(&t, "against its target: Ppk") && !strstr(t.s, "density"));
     text_free(&t);
 
     history_note cleaned = { .at = "2026-03-03", .text = "clean", .kind = "change", .initials = "", .day = 2.5 };
     history_notes notes = { &cleaned, 1, NULL };
-    CHECK(process_sentences(&l, &notes, &p, &t, &e) == ST_OK && t.n == 0); /* four etches since */
+    CHECK(describe(&l, &notes, &p, &t, &e) == ST_OK && t.n == 0); /* four etches since */
     l = make(12);
-    CHECK(process_sentences(&l, &notes, &p, &t, &e) == ST_OK && holds(&t, "(9 etches)"));
+    CHECK(describe(&l, &notes, &p, &t, &e) == ST_OK && holds(&t, "(9 etches)"));
     CHECK(holds(&t, "it has left its target"));
     text_free(&t);
     p.n_targets = 0;
-    CHECK(process_sentences(&l, &none, &p, &t, &e) == ST_OK && holds(&t, "(12 etches)") && !strstr(t.s, "target"));
+    CHECK(describe(&l, &none, &p, &t, &e) == ST_OK && holds(&t, "(12 etches)") && !strstr(t.s, "target"));
     text_free(&t);
 
     series s = { 0 };
     rows[5].excluded = "odd (KL)";
-    CHECK(series_make(&l, &none, "spacing_nm", "etch_s", 0, &s, &e) == ST_OK && s.n == 12 && s.n_excluded == 1);
+    CHECK(series_make(&l, &none, &(series_question){ .quantity = "spacing_nm", .setting = "etch_s" }, &s, &e) == ST_OK && s.n == 12 && s.n_excluded == 1);
     CHECK(s.etches[0].n == 2 && s.etches[2].n == 1 && !strcmp(s.unit, "nm") && !strcmp(s.etches[1].label, times[1]));
     CHECK_NEAR(s.etches[0].value, 301.0, 1e-9);
     CHECK_NEAR(s.etches[0].sd, 4.0 * sqrt(2.0), 1e-9);
     CHECK_NEAR(s.etches[3].setting, 63.0, 0.0);
     CHECK(isnan(s.etches[2].sd));
     series_free(&s);
-    CHECK(series_make(&l, &none, "spacing_nm", NULL, 1, &s, &e) == ST_OK && s.n == 24 && isnan(s.etches[5].value));
-    series_free(&s);
-    CHECK_FAILS(series_make(&l, &none, "spacing", NULL, 0, &s, &e), ST_BAD_INPUT, e, "did you mean 'spacing_nm'");
-    CHECK_FAILS(series_make(&l, &none, "spacing_nm", "etch", 0, &s, &e), ST_BAD_INPUT, e, "a number 'etch'");
+    CHECK_FAILS(series_make(&l, &none, &(series_question){ .quantity = "spacing", .setting = NULL }, &s, &e), ST_BAD_INPUT, e, "did you mean 'spacing_nm'");
+    CHECK_FAILS(series_make(&l, &none, &(series_question){ .quantity = "spacing_nm", .setting = "etch" }, &s, &e), ST_BAD_INPUT, e, "a number 'etch'");
     rows[3].row_json = "{";
-    CHECK_FAILS(series_make(&l, &none, "spacing_nm", NULL, 0, &s, &e), ST_IO, e, "damaged row of the sample 'S01b'");
-    CHECK_FAILS(process_sentences(&l, &none, &p, &t, &e), ST_IO, e, "damaged row");
+    CHECK_FAILS(series_make(&l, &none, &(series_question){ .quantity = "spacing_nm", .setting = NULL }, &s, &e), ST_IO, e, "damaged row of the sample 'S01b'");
+    CHECK_FAILS(describe(&l, &none, &p, &t, &e), ST_IO, e, "damaged row");
     rows[3].row_json = bodies[3];
     for (size_t k = 1; k <= 3; k++) {
         mem_fail_after(k);
-        CHECK_FAILS(series_make(&l, &none, "spacing_nm", NULL, 0, &s, &e), ST_NO_MEMORY, e, "not enough memory");
+        CHECK_FAILS(series_make(&l, &none, &(series_question){ .quantity = "spacing_nm", .setting = NULL }, &s, &e), ST_NO_MEMORY, e, "not enough memory");
         mem_fail_after(0);
     }
     text_free(&t);

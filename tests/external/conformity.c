@@ -6,7 +6,7 @@
 static char name[] = "q";
 
 static judgement ask(double min, double max, double value, double u) {
-    target t = { name, min, max, ERROR_FULL };
+    target t = { .quantity = name, .min = min, .max = max, .error = ERROR_FULL };
     reading r = { .value = value, .u = u, .u_repeat = MISSING, .lo = MISSING, .hi = MISSING, .unit = "", .digits = 6 };
     judgement j;
     judge(&t, &r, &j);

@@ -11,11 +11,11 @@ static error e;
 static void phases(void) {
     /* two recipes; within each the ranges are 2 everywhere, the third value of the second is left out */
     static const double v[] = { 351, 349, 351, 349, 351, 349, 361, 401, 399, MISSING, 401, 399, 401, 399 };
-    static const int starts[] = { 0, 0, 0, 0, 0, 0, 0, 1, 0, 0, 0, 0, 0, 0 };
+    static const size_t phase[] = { 0, 0, 0, 0, 0, 0, 0, 1, 1, 1, 1, 1, 1, 1 };
     chart c = { 0 };
     chart_options o = chart_defaults();
     o.baseline = 6;
-    CHECK(chart_individuals(v, starts, 14, &o, &c, &e) == ST_OK && c.n_phases == 2);
+    CHECK(chart_individuals(v, phase, 14, &o, &c, &e) == ST_OK && c.n_phases == 2);
     CHECK(c.phases[0].n == 7 && c.phases[0].n_used == 7 && c.phases[0].n_baseline == 6);
     CHECK(c.phases[1].first == 7 && c.phases[1].n == 7 && c.phases[1].n_used == 6 && c.phases[1].n_baseline == 6);
     CHECK_NEAR(c.phases[0].centre, 350.0, 1e-12);

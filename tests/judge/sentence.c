@@ -20,7 +20,7 @@ static int holds(const char *want) {
 
 int main(void) {
     sentence_subject s = { "spacing_nm", "nm", 5, 280.0, 420.0 };
-    trend_slope d = { 11.2, 8.1, 14.3, 300.0, 7 }, day = { 3.456, 2.0, 5.0, 0.0, 7 };
+    trend_slope d = { 11.2, 8.1, 14.3, 300.0, 0.003, 7 }, day = { 3.456, 2.0, 5.0, 0.0, 0.003, 7 };
     sentence_drift(&s, &d, NULL, &t); /* now 367.2; 52.8 left */
     CHECK(says("spacing drifts by +11.2 nm per etch (95 %: 8.1 to 14.3); at this rate it leaves its target in 5 etches (7 etches)"));
     sentence_drift(&s, &d, &day, &t);
@@ -31,10 +31,13 @@ int main(void) {
     d.intercept = 380.0;
     sentence_drift(&s, &d, NULL, &t);
     CHECK(holds("; it has left its target"));
-    d = (trend_slope){ -0.1, -0.2, -0.01, 350.0, 30 };
+    d = (trend_slope){ -0.1, -0.2, -0.01, 350.0, 0.009, 30 };
     sentence_drift(&s, &d, NULL, &t);
     CHECK(says("spacing drifts by -0.1 nm per etch (95 %: -0.2 to -0.01) (30 etches)")); /* too far to say when */
-    d = (trend_slope){ 0.4, -1.0, 1.9, 350.0, 9 };
+    d.p = 0.02;
+    sentence_drift(&s, &d, NULL, &t);
+    CHECK(holds("spacing may drift: -0.1 nm per etch"));
+    d = (trend_slope){ 0.4, -1.0, 1.9, 350.0, 0.4, 9 };
     sentence_drift(&s, &d, NULL, &t);
     CHECK(says("spacing shows no clear drift: +0.4 nm per etch (95 %: -1 to 1.9) (9 etches)"));
     d.lo = d.hi = MISSING;
@@ -42,19 +45,23 @@ int main(void) {
     CHECK(holds("no clear drift: +0.4 nm per etch (95 %: unknown to unknown)"));
 
     chart_options o = chart_defaults();
-    chart_phase p = { 0, 30, 30, 20, 350.0, 8.0, 9.0, 0.1 };
+    chart_phase p = { .n = 30, .n_used = 30, .n_baseline = 20, .centre = 350.0, .sigma = 8.0, .spread_mean = 9.0, .lag1 = 0.1 };
     sentence_phase(&s, &p, &o, &t);
     CHECK(says("spacing: centre 350 nm, limits 326 to 374 nm, from the first 20 etches"));
     p.lag1 = 0.61;
     sentence_phase(&s, &p, &o, &t);
     CHECK(holds("neighbours resemble each other (correlation 0.61)"));
-    p = (chart_phase){ 0, 8, 8, 8, 350.0, 8.0, 9.0, 0.1 };
+    p = (chart_phase){ .n = 8, .n_used = 8, .n_baseline = 8, .centre = 350.0, .sigma = 8.0, .spread_mean = 9.0, .lag1 = 0.1 };
     sentence_phase(&s, &p, &o, &t);
     CHECK(holds("from the first 8 etches (20 are better: the limits are provisional)"));
+    p.stated = 1;
+    sentence_phase(&s, &p, &o, &t);
+    CHECK(says("spacing: centre 350 nm, limits 326 to 374 nm, from the 8 etches of the stated period"));
+    p.stated = 0;
     p.n_baseline = 0;
     sentence_phase(&s, &p, &o, &t);
     CHECK(holds("as given"));
-    p = (chart_phase){ 0, 3, 3, 0, MISSING, MISSING, MISSING, MISSING };
+    p = (chart_phase){ .n = 3, .n_used = 3, .centre = MISSING, .sigma = MISSING, .spread_mean = MISSING, .lag1 = MISSING };
     sentence_phase(&s, &p, &o, &t);
     CHECK(says("spacing: no limits, the phase holds fewer than 5 etches"));
 
@@ -62,12 +69,34 @@ int main(void) {
     sentence_alarm(&s, "W7", &q, &t);
     CHECK(says("W7 lies beyond 3 sigma and is the eighth in a row on one side of the centre (high side: 383.25 nm, 4.2 sigma "
                "from the centre)"));
-    sentence_false_alarms(&o, &t);
+    sentence_false_alarms(&o, 41.3, 20, &t);
+    CHECK(holds("in about 92 etches; this chart, with limits from 20 etches and the chart of the spread, one in about 41"));
+    sentence_false_alarms(&o, MISSING, 20, &t);
     CHECK(says("On a steady process these pattern tests give one false alarm in about 92 etches; the chart of the spread adds "
                "its own"));
     o.rules = RULE(EWMA);
-    sentence_false_alarms(&o, &t);
+    sentence_false_alarms(&o, MISSING, 0, &t);
     CHECK(holds("No pattern test is on; the weighted average adds one in about "));
+
+    finding_outlier out = { 4, 402.25, 351.0 };
+    sentence_outlier(&s, "W7", &out, &t);
+    CHECK(holds("spacing of W7 stands out: 402.25 nm between neighbours at 351 nm; look at the picture first"));
+    finding_break b = { BREAK_STEP, 3, 4, -21.26, -24.9, -17.4, 0.0033 };
+    sentence_break(&s, "W7", "W8", &b, &t);
+    CHECK(says("spacing steps by -21.3 nm (95 %: -24.9 to -17.4) between W7 and W8 (p = 0.003)"));
+    b.kind = BREAK_BEND;
+    sentence_break(&s, "W7", "W8", &b, &t);
+    CHECK(says("the drift of spacing changes at about W8 (p = 0.003)"));
+    trend_slope along = { 0.32, 0.25, 0.4, 340.0, 1e-6, 51 };
+    sentence_stretch(&s, "W7", "W58", &along, &t);
+    CHECK(says("spacing drifted by +0.32 nm per etch (95 %: 0.25 to 0.4) from W7 to W58, +16 nm in all (51 etches)"));
+    trend_step since = { .n_a = 10, .n_b = 9, .difference = -12.4, .lo = -15.0, .hi = -9.5, .p = 0.0002 };
+    sentence_since(&s, "chamber clean", &since, &t);
+    CHECK(says("after 'chamber clean' spacing stepped by -12.4 nm (95 %: -15 to -9.5), the first 9 etches against the last 10 before "
+               "(p = 0.0002)"));
+    since.hi = 1.0;
+    sentence_since(&s, "chamber clean", &since, &t);
+    CHECK(holds("shows no clear step: -12.4 nm"));
 
     capability c = { .n = 20, .Ppk = { 1.234, 0.81, 1.66 }, .Pp = { 1.5, 1.0, 2.0 }, .Cpk = { MISSING, MISSING, MISSING },
                      .Cp = { MISSING, MISSING, MISSING }, .normality_p = 0.4, .expected_outside = 0.0012 };

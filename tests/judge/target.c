@@ -20,7 +20,7 @@ static judgement ask(const target *t, const reading *r) {
 static int says(const judgement *j, const char *words) { return strstr(j->sentence, words) != NULL; }
 
 static void two_limits(void) {
-    target t = { spacing, 280.0, 420.0, ERROR_FULL };
+    target t = { .quantity = spacing, .min = 280.0, .max = 420.0, .error = ERROR_FULL };
     reading r = plain(351.2, 8.1);
     judgement j = ask(&t, &r);
     CHECK(j.verdict == VERDICT_CONFORMS && !strcmp(j.sentence, "spacing_nm 351.2 +- 16 nm (k = 2) lies inside 280..420 nm"));
@@ -48,11 +48,11 @@ static void two_limits(void) {
 }
 
 static void open_limits(void) {
-    target t = { spacing, 280.0, MISSING, ERROR_FULL };
+    target t = { .quantity = spacing, .min = 280.0, .max = MISSING, .error = ERROR_FULL };
     reading r = plain(300.0, 5.0);
     judgement j = ask(&t, &r);
     CHECK(j.verdict == VERDICT_CONFORMS && says(&j, "keeps the floor 280 nm"));
-    t = (target){ weighted, MISSING, 0.02, ERROR_FULL };
+    t = (target){ .quantity = weighted, .min = MISSING, .max = 0.02, .error = ERROR_FULL };
     r = (reading){ 0.0121, 0.002, MISSING, MISSING, MISSING, NULL, 4 };
     j = ask(&t, &r);
     CHECK(j.verdict == VERDICT_CONFORMS && !strcmp(j.sentence, "weighted_reflectance 0.0121 +- 0.004 (k = 2) keeps the ceiling 0.02"));
@@ -62,7 +62,7 @@ static void open_limits(void) {
 }
 
 static void intervals(void) {
-    target t = { weighted, MISSING, 0.02, ERROR_FULL };
+    target t = { .quantity = weighted, .min = MISSING, .max = 0.02, .error = ERROR_FULL };
     reading r = { 0.0121, 0.002, 0.0004, 0.011, 0.031, "", 4 };
     judgement j = ask(&t, &r);
     CHECK(j.verdict == VERDICT_UNDECIDED);
@@ -82,7 +82,7 @@ static void intervals(void) {
 }
 
 static void missing(void) {
-    target t = { spacing, 280.0, 420.0, ERROR_FULL };
+    target t = { .quantity = spacing, .min = 280.0, .max = 420.0, .error = ERROR_FULL };
     reading r = plain(MISSING, 3.0);
     judgement j = ask(&t, &r);
     CHECK(j.verdict == VERDICT_NOT_MEASURED && says(&j, "was not measured"));
