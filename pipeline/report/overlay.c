@@ -157,7 +157,7 @@ static status draw_tile(const overlay_scene *s, const overlay_tile *tile, pen *p
     return pen_check(p, e);
 }
 
-static status draw_tiles(const overlay_scene *s, const palette *colours, overlay_picture *out, cairo_surface_t *surface, pen *p,
+static status draw_tiles(const overlay_scene *s, palette *colours, overlay_picture *out, cairo_surface_t *surface, pen *p,
                          error *e) {
     status st = ST_OK;
     unsigned char *data = cairo_image_surface_get_data(surface);

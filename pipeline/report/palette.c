@@ -3,6 +3,7 @@
 #include "report/palette_priv.h"
 
 #include <math.h>
+#include <string.h>
 
 enum { GREYS = 128, PLACES = 256 };
 
@@ -43,16 +44,22 @@ void palette_make(const ink *inks, size_t n, palette *p) {
         double v = (double)k / (GREYS - 1);
         set(p, k, v, v, v);
     }
+    memset(p->nearest, 0, sizeof p->nearest);
     size_t room = n ? (PLACES - GREYS) / n : 0;
     for (size_t k = 0; k < n; k++) set_mixtures(p, GREYS + k * room, room, inks[k]);
     for (size_t k = GREYS + n * room; k < PLACES; k++) set(p, k, 1.0, 1.0, 1.0);
-    for (int k = 0; k < 1 << 15; k++)
-        p->nearest[k] = find_nearest(p, (k >> 10) * 255 / 31, (k >> 5 & 31) * 255 / 31, (k & 31) * 255 / 31);
 }
 
-void palette_index(const palette *p, const uint32_t *pixels, size_t n, uint8_t *index) {
+/* Found when first asked for: few of the mixtures occur. Place 0, black, is simply found again. */
+static uint8_t nearest(palette *p, uint32_t key) {
+    if (!p->nearest[key])
+        p->nearest[key] = find_nearest(p, (int)(key >> 10) * 255 / 31, (int)(key >> 5 & 31) * 255 / 31, (int)(key & 31) * 255 / 31);
+    return p->nearest[key];
+}
+
+void palette_index(palette *p, const uint32_t *pixels, size_t n, uint8_t *index) {
     for (size_t i = 0; i < n; i++) {
         uint32_t v = pixels[i], r = v >> 16 & 255, g = v >> 8 & 255, b = v & 255;
-        index[i] = r == g && g == b ? (uint8_t)(r >> 1) : p->nearest[(r >> 3) << 10 | (g >> 3) << 5 | b >> 3];
+        index[i] = r == g && g == b ? (uint8_t)(r >> 1) : nearest(p, (r >> 3) << 10 | (g >> 3) << 5 | b >> 3);
     }
 }
