@@ -7,7 +7,7 @@
 #include <string.h>
 
 #include "base/number.h"
-#include "base/quantity.h"
+#include "report/axes_priv.h"
 #include "report/html.h"
 
 static const char *const tone_colour[PLOT_TONES] = { "var(--blue,#1660a8)", "var(--amber,#a85d00)",
@@ -16,113 +16,11 @@ static const char *const tone_colour[PLOT_TONES] = { "var(--blue,#1660a8)", "var
 #define FAINT "var(--rule,#d5dbe3)"
 #define SOFT "var(--soft,#56606e)"
 
-typedef struct {
-    double left, right, top, bottom; /* of the plotting area, px */
-    double x_lo, x_hi, y_lo, y_hi;   /* shown range; y in log10 when log_y */
-    int log_y;
-} frame;
-
-size_t plot_ticks(double lo, double hi, size_t max, double *ticks) {
-    if (!(hi > lo) || max < 2) return 0;
-    double raw = (hi - lo) / (double)(max - 1), decade = pow(10.0, floor(log10(raw))), lead = raw / decade;
-    double step = decade * (lead <= 1.0 ? 1.0 : lead <= 2.0 ? 2.0 : lead <= 5.0 ? 5.0 : 10.0);
-    size_t n = 0;
-    double first = ceil(lo / step - 1e-9);
-    for (double k = first; n < max && k * step <= hi + 1e-9 * step; k += 1.0) ticks[n++] = k * step;
-    return n;
-}
-
-/* 1, 2, 5 x 10^k within the logarithmic range; only the decades when that is plenty. */
-static size_t log_ticks(double lo, double hi, size_t max, double *ticks) {
-    static const double lead[] = { 1.0, 2.0, 5.0 };
-    size_t step = hi - lo > 2.2 ? 3 : 1, n = 0;
-    for (double d = floor(lo); d <= hi; d += 1.0)
-        for (size_t k = 0; k < 3 && n < max; k += step) {
-            double v = lead[k] * pow(10.0, d), l = log10(v);
-            if (l >= lo - 1e-9 && l <= hi + 1e-9) ticks[n++] = v;
-        }
-    return n;
-}
-
-static double at_x(const frame *f, double x) {
-    return f->left + (x - f->x_lo) / (f->x_hi - f->x_lo) * (f->right - f->left);
-}
-
-/* Clamped to the frame, so that a value beyond a capped axis runs along its edge. */
-static double at_y(const frame *f, double y) {
-    double v = !f->log_y ? y : y > 0.0 ? log10(y) : f->y_lo;
-    v = fmin(fmax(v, f->y_lo), f->y_hi);
-    return f->bottom - (v - f->y_lo) / (f->y_hi - f->y_lo) * (f->bottom - f->top);
-}
-
-typedef struct {
-    double lo, hi;
-} range;
-
-static void widen(range *r, double v) {
-    if (!isfinite(v)) return;
-    r->lo = fmin(r->lo, v);
-    r->hi = fmax(r->hi, v);
-}
-
-static void widen_y(const plot *p, range *r, double v) {
-    if (!p->log_y)
-        widen(r, v);
-    else if (v > 0.0)
-        widen(r, log10(v));
-}
-
-static double bin_step(const plot_series *s) { return s->n > 1 ? s->x[1] - s->x[0] : 1.0; }
-
-/* The range of what is drawn; 0 when nothing is. */
-static int find_ranges(const plot *p, range *x, range *y) {
-    *x = *y = (range){ HUGE_VAL, -HUGE_VAL };
-    for (size_t s = 0; s < p->n_series; s++)
-        for (size_t i = 0; i < p->series[s].n; i++) {
-            const plot_series *q = &p->series[s];
-            if (!isfinite(q->y[i])) continue;
-            double half = q->style == PLOT_STEPS ? 0.5 * bin_step(q) : 0.0;
-            widen(x, q->x[i] - half);
-            widen(x, q->x[i] + half);
-            widen_y(p, y, q->y[i]);
-            if (q->lo) widen_y(p, y, q->lo[i]);
-            if (q->hi) widen_y(p, y, q->hi[i]);
-        }
-    if (!(y->hi >= y->lo) || !(x->hi >= x->lo)) return 0;
-    widen_y(p, y, p->target_lo);
-    widen_y(p, y, p->target_hi);
-    return 1;
-}
-
-static void settle_y(const plot *p, range *y) {
-    double span = y->hi - y->lo;
-    if (p->log_y) {
-        y->lo = fmax(y->lo, y->hi - 4.0) - 0.05;
-        y->hi += 0.05;
-    } else {
-        if (!(span > 0.0)) span = fabs(y->hi) > 0.0 ? 0.2 * fabs(y->hi) : 1.0;
-        y->hi += 0.08 * span;
-        y->lo = p->from_zero && y->lo >= 0.0 ? 0.0 : y->lo - 0.08 * span;
-    }
-    if (isfinite(p->y_lo)) y->lo = p->log_y ? log10(p->y_lo) : p->y_lo;
-    if (isfinite(p->y_hi)) y->hi = p->log_y ? log10(p->y_hi) : p->y_hi;
-}
-
-static int lay_out(const plot *p, frame *f) {
-    range x, y;
-    *f = (frame){
+static int lay_out(const plot *p, axes *f) {
+    *f = (axes){
         .left = 58, .right = p->width - 20.0, .top = p->no_legend ? 30 : 50, .bottom = p->height - (p->names ? 60.0 : 46.0)
     };
-    f->log_y = p->log_y;
-    if (!find_ranges(p, &x, &y)) return 0;
-    settle_y(p, &y);
-    if (p->names) x = (range){ -0.6, (double)p->n_names - 0.4 };
-    if (!(x.hi > x.lo)) x = (range){ x.lo - 1.0, x.hi + 1.0 };
-    f->x_lo = x.lo;
-    f->x_hi = x.hi;
-    f->y_lo = y.lo;
-    f->y_hi = y.hi > y.lo ? y.hi : y.lo + 1.0;
-    return 1;
+    return axes_find(p, f);
 }
 
 static void draw_text(textbuf *out, double x, double y, const char *anchor, const char *colour,
@@ -139,10 +37,10 @@ static void draw_line(textbuf *out, double x0, double y0, double x1, double y1, 
               x1, y1, colour, more);
 }
 
-static void draw_target(const plot *p, const frame *f, textbuf *out) {
+static void draw_target(const plot *p, const axes *f, textbuf *out) {
     if (!isfinite(p->target_lo) && !isfinite(p->target_hi)) return;
-    double top = isfinite(p->target_hi) ? at_y(f, p->target_hi) : f->top;
-    double bottom = isfinite(p->target_lo) ? at_y(f, p->target_lo) : f->bottom;
+    double top = isfinite(p->target_hi) ? axes_y(f, p->target_hi) : f->top;
+    double bottom = isfinite(p->target_lo) ? axes_y(f, p->target_lo) : f->bottom;
     text_addf(out,
               "<rect x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" style=\"fill:%s\" "
               "fill-opacity=\"0.13\"/>\n",
@@ -152,17 +50,12 @@ static void draw_target(const plot *p, const frame *f, textbuf *out) {
     if (isfinite(p->target_lo)) draw_line(out, f->left, bottom, f->right, bottom, tone_colour[3], dash);
 }
 
-enum { MAX_TICKS = 16 };
-
-static void draw_y_axis(const plot *p, const frame *f, textbuf *out) {
-    double tick[MAX_TICKS];
+static void draw_y_axis(const plot *p, const axes *f, textbuf *out) {
+    double tick[AXES_TICKS];
     char number[NUMBER_TEXT];
-    size_t room = (size_t)fmax(3.0, (f->bottom - f->top) / 34.0);
-    if (room > MAX_TICKS) room = MAX_TICKS;
-    size_t n =
-        f->log_y ? log_ticks(f->y_lo, f->y_hi, MAX_TICKS, tick) : plot_ticks(f->y_lo, f->y_hi, room, tick);
+    size_t n = axes_y_ticks(f, (f->bottom - f->top) / 34.0, tick);
     for (size_t i = 0; i < n; i++) {
-        double y = at_y(f, tick[i]);
+        double y = axes_y(f, tick[i]);
         draw_line(out, f->left, y, f->right, y, FAINT, "");
         draw_text(out, f->left - 7, y + 4, "end", SOFT, "", number_text(tick[i], 6, number));
     }
@@ -186,12 +79,12 @@ static double name_width(const plot *p) {
 }
 
 /* Two rows of names when one is too narrow, then thinned so that two never touch; the last one is always there. */
-static void draw_names(const plot *p, const frame *f, textbuf *out) {
+static void draw_names(const plot *p, const axes *f, textbuf *out) {
     double slot = (f->right - f->left) / ((double)p->n_names + 0.2), width = name_width(p);
     size_t rows = slot < width ? 2 : 1, step = (size_t)fmax(1.0, ceil(width / (slot * (double)rows)));
     for (size_t i = 0; i < p->n_names; i++) {
         size_t back = p->n_names - 1 - i, row = back / step % rows;
-        double x = at_x(f, (double)i), end = f->bottom + (back % step ? 3.0 : 6.0 + 15.0 * (double)row);
+        double x = axes_x(f, (double)i), end = f->bottom + (back % step ? 3.0 : 6.0 + 15.0 * (double)row);
         draw_line(out, x, f->bottom, x, end, back % step || !row ? SOFT : FAINT, "");
         if (back % step) continue;
         const char *name = p->names[i] ? p->names[i] : "";
@@ -205,17 +98,16 @@ static void draw_names(const plot *p, const frame *f, textbuf *out) {
     }
 }
 
-static void draw_x_axis(const plot *p, const frame *f, textbuf *out) {
-    double tick[MAX_TICKS];
+static void draw_x_axis(const plot *p, const axes *f, textbuf *out) {
+    double tick[AXES_TICKS];
     char number[NUMBER_TEXT];
     draw_line(out, f->left, f->bottom, f->right, f->bottom, SOFT, "");
     if (p->names) {
         draw_names(p, f, out);
     } else {
-        size_t room = (size_t)fmin(MAX_TICKS, fmax(3.0, (f->right - f->left) / 44.0));
-        size_t n = plot_ticks(f->x_lo, f->x_hi, room, tick);
+        size_t n = axes_x_ticks(f, (f->right - f->left) / 44.0, tick);
         for (size_t i = 0; i < n; i++) {
-            double x = at_x(f, tick[i]);
+            double x = axes_x(f, tick[i]);
             draw_line(out, x, f->bottom, x, f->bottom + 5, SOFT, "");
             draw_text(out, x, f->bottom + 18, "middle", SOFT, "", number_text(tick[i], 6, number));
         }
@@ -223,17 +115,15 @@ static void draw_x_axis(const plot *p, const frame *f, textbuf *out) {
     draw_text(out, 0.5 * (f->left + f->right), p->height - 9.0, "middle", INK, "", p->x_label);
 }
 
-static int in_band(const plot_series *s, size_t i) { return isfinite(s->lo[i]) && isfinite(s->hi[i]); }
-
 /* One closed area for each unbroken run of lo..hi. */
-static void draw_band(const plot_series *s, const frame *f, textbuf *out) {
+static void draw_band(const plot_series *s, const axes *f, textbuf *out) {
     for (size_t from = 0, to; from < s->n; from = to + 1) {
-        for (to = from; to < s->n && in_band(s, to);) to++;
+        for (to = from; to < s->n && axes_in_band(s, to);) to++;
         if (to - from < 2) continue;
         text_add(out, "<path d=\"");
         for (size_t i = from; i < to; i++)
-            text_addf(out, "%s%.1f %.1f", i == from ? "M" : "L", at_x(f, s->x[i]), at_y(f, s->hi[i]));
-        for (size_t i = to; i-- > from;) text_addf(out, "L%.1f %.1f", at_x(f, s->x[i]), at_y(f, s->lo[i]));
+            text_addf(out, "%s%.1f %.1f", i == from ? "M" : "L", axes_x(f, s->x[i]), axes_y(f, s->hi[i]));
+        for (size_t i = to; i-- > from;) text_addf(out, "L%.1f %.1f", axes_x(f, s->x[i]), axes_y(f, s->lo[i]));
         text_addf(out, "Z\" style=\"fill:%s;stroke:none\" fill-opacity=\"0.22\"/>\n", tone_colour[s->tone]);
     }
 }
@@ -245,17 +135,17 @@ static const char *dashes(plot_style style) {
 }
 
 /* A stretch of the curve below the axis is not drawn along it: that would look like values. */
-static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
+static void draw_curve(const plot_series *s, const axes *f, textbuf *out) {
     int pen = 0, was_below = 0;
     text_add(out, "<path d=\"");
     for (size_t i = 0; i < s->n; i++) {
-        int below = f->log_y ? !(s->y[i] > 0.0) || log10(s->y[i]) < f->y_lo : s->y[i] < f->y_lo;
+        int below = axes_below(f, s->y[i]);
         if (!isfinite(s->y[i])) {
             pen = 0;
             continue;
         }
-        text_addf(out, "%s%.1f %.1f", pen && !(below && was_below) ? "L" : "M", at_x(f, s->x[i]),
-                  at_y(f, s->y[i]));
+        text_addf(out, "%s%.1f %.1f", pen && !(below && was_below) ? "L" : "M", axes_x(f, s->x[i]),
+                  axes_y(f, s->y[i]));
         pen = 1;
         was_below = below;
     }
@@ -264,19 +154,19 @@ static void draw_curve(const plot_series *s, const frame *f, textbuf *out) {
 }
 
 /* The outline of the bins and the area below it. */
-static void draw_steps(const plot_series *s, const frame *f, textbuf *out) {
-    double half = 0.5 * bin_step(s), floor_y = at_y(f, f->y_lo);
+static void draw_steps(const plot_series *s, const axes *f, textbuf *out) {
+    double half = 0.5 * axes_bin_step(s), floor_y = axes_y(f, f->y_lo);
     if (!s->n) return;
-    text_addf(out, "<path d=\"M%.1f %.1f", at_x(f, s->x[0] - half), floor_y);
+    text_addf(out, "<path d=\"M%.1f %.1f", axes_x(f, s->x[0] - half), floor_y);
     for (size_t i = 0; i < s->n; i++)
-        text_addf(out, "V%.1fH%.1f", at_y(f, isfinite(s->y[i]) ? s->y[i] : f->y_lo), at_x(f, s->x[i] + half));
+        text_addf(out, "V%.1fH%.1f", axes_y(f, isfinite(s->y[i]) ? s->y[i] : f->y_lo), axes_x(f, s->x[i] + half));
     text_addf(out, "V%.1f\" style=\"fill:%s;stroke:%s\" fill-opacity=\"0.22\" stroke-width=\"1.8\"/>\n", floor_y, tone_colour[s->tone],
               tone_colour[s->tone]);
 }
 
-static void draw_rules(const plot *p, const frame *f, textbuf *out) {
+static void draw_rules(const plot *p, const axes *f, textbuf *out) {
     for (size_t k = 0; k < p->n_rules; k++) {
-        double x = at_x(f, p->rules[k].at);
+        double x = axes_x(f, p->rules[k].at);
         if (isfinite(x) && x >= f->left && x <= f->right)
             draw_line(out, x, f->top, x, f->bottom, tone_colour[p->rules[k].tone], " stroke-width=\"1.6\" stroke-dasharray=\"8 4\"");
     }
@@ -307,26 +197,26 @@ static void draw_mark(textbuf *out, plot_mark mark, double x, double y) {
     }
 }
 
-static void draw_points(const plot *p, const plot_series *s, const frame *f, textbuf *out) {
+static void draw_points(const plot *p, const plot_series *s, const axes *f, textbuf *out) {
     char number[NUMBER_TEXT];
     for (size_t i = 0; i < s->n; i++) {
         if (!isfinite(s->y[i])) continue;
-        double x = at_x(f, s->x[i]);
+        double x = axes_x(f, s->x[i]);
         text_add(out, "<g><title>");
         if (p->names && p->names[i]) html_text(out, p->names[i]);
         text_addf(out, ": %s</title>", number_text(s->y[i], 6, number));
-        if (s->lo && s->hi && in_band(s, i)) {
-            double top = at_y(f, s->hi[i]), bottom = at_y(f, s->lo[i]);
+        if (s->lo && s->hi && axes_in_band(s, i)) {
+            double top = axes_y(f, s->hi[i]), bottom = axes_y(f, s->lo[i]);
             draw_line(out, x, top, x, bottom, INK, " stroke-width=\"1.4\"");
             draw_line(out, x - 4, top, x + 4, top, INK, " stroke-width=\"1.4\"");
             draw_line(out, x - 4, bottom, x + 4, bottom, INK, " stroke-width=\"1.4\"");
         }
-        draw_mark(out, s->marks ? s->marks[i] : MARK_DISC, x, at_y(f, s->y[i]));
+        draw_mark(out, s->marks ? s->marks[i] : MARK_DISC, x, axes_y(f, s->y[i]));
         text_add(out, "</g>\n");
     }
 }
 
-static void draw_legend(const plot *p, const frame *f, textbuf *out) {
+static void draw_legend(const plot *p, const axes *f, textbuf *out) {
     double x = f->left, y = 36;
     for (size_t i = 0; i < p->n_series; i++) {
         const plot_series *s = &p->series[i];
@@ -349,7 +239,7 @@ static void draw_legend(const plot *p, const frame *f, textbuf *out) {
 
 void plot_svg(const plot *given, textbuf *out) {
     plot p = *given;
-    frame f;
+    axes f;
     if (p.width <= 0) p.width = 720;
     if (p.height <= 0) p.height = 320;
     text_addf(
