@@ -11,6 +11,7 @@
 #include "base/number.h"
 #include "io/file.h"
 #include "io/json.h"
+#include "judge/history.h"
 #include "metrics/plan.h"
 #include "metrics/pool.h"
 
@@ -24,6 +25,7 @@ void sample_group_free(sample_group *g) {
 void joined_free(joined *j) {
     sample_row_free(&j->row);
     free(j->json);
+    free(j->files);
     prediction_free(&j->prediction);
     *j = (joined){ 0 };
 }
@@ -303,6 +305,18 @@ static status fingerprint(const sample_group *g, const examined *all, size_t n_e
     return st;
 }
 
+/* What the history keeps of the micrographs. */
+static status note_files(const sample_group *g, const examined *all, joined *out, error *e) {
+    out->files = mem_array(g->n_members, sizeof *out->files);
+    if (!out->files) return NO_MEMORY(e, "a sample");
+    for (size_t i = 0; i < g->n_members; i++) {
+        const examined *x = &all[g->members[i]];
+        out->files[out->n_files++] = (history_micrograph){ .file = x->row.file, .sha256 = x->hash, .px_source = x->row.px_source,
+                                                           .px_nm = x->row.px_nm, .used = enters(g, all, i) };
+    }
+    return ST_OK;
+}
+
 status join_sample(const sample_group *g, const examined *all, const protocol *p, const setup *s, size_t n_extra,
                    const char *basis, joined *out, error *e) {
     figure f[QUANTITIES];
@@ -357,6 +371,7 @@ status join_sample(const sample_group *g, const examined *all, const protocol *p
         text_add(&members, ", ");
         st = judge_sample(g, p, f, &spacing, &made, &members, e);
     }
+    if (st == ST_OK) st = note_files(g, all, &made, e);
     if (st == ST_OK) st = fingerprint(g, all, n_extra, basis, made.fingerprint, e);
     if (st == ST_OK) {
         r->flags = mem_text(flags_text(seen, words, sizeof words));

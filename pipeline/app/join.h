@@ -7,6 +7,8 @@
 #include "app/samplesheet.h"
 #include "judge/target.h"
 
+struct history_micrograph;
+
 /* What belongs together, before it is joined. Borrowed except where said. */
 typedef struct {
     char *name, *lot, *wafer, *position; /* owned */
@@ -27,6 +29,8 @@ typedef struct {
     verdict verdict;
     int failed;                /* 1: no prediction, the sentence is in `json` as "prediction_error" */
     char fingerprint[65];
+    struct history_micrograph *files; /* [n_files], texts borrowed from the examined micrographs */
+    size_t n_files;
 } joined;
 
 /*   in   all[] examined micrographs; a duplicate (flag DUPLICATE) is counted but not used

@@ -85,16 +85,37 @@ static void series_json(const history_list *l, textbuf *t) {
     text_add(t, "]");
 }
 
-static history_row entry(const joined *j, const protocol *p, const char *run_at, const char *row_json) {
-    const sample_row *r = &j->row;
-    return (history_row){ .sample = r->sample, .lot = r->lot, .wafer = r->wafer, .etched_at = r->etched_at,
-                          .run_at = run_at, .fingerprint = j->fingerprint, .version = SWARD_VERSION,
-                          .protocol = p->name, .spacing_nm = r->spacing_nm, .spacing_nm_u = r->spacing_nm_u,
-                          .density_per_um2 = r->density_per_um2, .size_d50_nm = r->size_d50_nm,
-                          .weighted_reflectance = r->weighted_reflectance, .verdict = r->verdict, .row_json = row_json };
+/* What all rows of a run share. */
+typedef struct {
+    const protocol *p;
+    const char *run_at;
+    char protocol_sha256[65];
+    char *folder; /* absolute; NULL: it is gone */
+} origin;
+
+static status find_origin(const protocol *p, const char *run_at, const char *folder, origin *o, error *e) {
+    textbuf full = { 0 };
+    *o = (origin){ .p = p, .run_at = run_at };
+    protocol_full_text(p, &full);
+    status st = text_check(&full, "the protocol", e);
+    if (st == ST_OK) sha256_hex(full.s, full.n, o->protocol_sha256);
+    text_free(&full);
+    o->folder = realpath(folder, NULL);
+    return st;
 }
 
-status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p, const sheet *columns,
+static history_row entry(const joined *j, const origin *o, const char *row_json) {
+    const sample_row *r = &j->row;
+    return (history_row){ .sample = r->sample, .lot = r->lot, .wafer = r->wafer, .position = r->position, .etched_at = r->etched_at,
+                          .run_at = o->run_at, .fingerprint = j->fingerprint, .version = SWARD_VERSION,
+                          .protocol = o->p->name, .protocol_sha256 = o->protocol_sha256, .folder = o->folder,
+                          .spacing_nm = r->spacing_nm, .spacing_nm_u = r->spacing_nm_u,
+                          .density_per_um2 = r->density_per_um2, .size_d50_nm = r->size_d50_nm,
+                          .weighted_reflectance = r->weighted_reflectance, .verdict = r->verdict, .row_json = row_json,
+                          .micrographs = j->files, .n_micrographs = j->n_files };
+}
+
+status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p, const sheet *columns, const char *folder,
                    const joined *samples, size_t n, ledger_result *result, error *e) {
     history *h = NULL;
     history_list list = { 0 };
@@ -103,10 +124,12 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
     char **row_json = mem_array(n, sizeof *row_json);
     textbuf etches = { 0 }, process = { 0 }, charts = { 0 };
     status st = rows && row_json ? rows_json(samples, n, p, columns, row_json, e) : NO_MEMORY(e, "the history");
+    origin from = { 0 };
+    if (st == ST_OK) st = find_origin(p, run_at, folder, &from, e);
     result->stays_with_output = !path;
     result->path = path ? mem_text(path) : path_join(out, "history.sqlite");
     if (st == ST_OK && !result->path) st = NO_MEMORY(e, "a path");
-    for (size_t i = 0; st == ST_OK && i < n; i++) rows[i] = entry(&samples[i], p, run_at, row_json[i]);
+    for (size_t i = 0; st == ST_OK && i < n; i++) rows[i] = entry(&samples[i], &from, row_json[i]);
     if (st == ST_OK) st = history_open(result->path, 0, &h, e);
     if (st == ST_OK) st = history_add(h, rows, n, &result->added, e);
     if (st == ST_OK) st = history_read(h, NULL, NULL, &list, e);
@@ -132,6 +155,7 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
     text_free(&etches);
     for (size_t i = 0; row_json && i < n; i++) free(row_json[i]);
     free(row_json);
+    free(from.folder);
     free(rows);
     return st;
 }

@@ -13,9 +13,10 @@ typedef struct {
     int stays_with_output; /* no place was named: the ledger lies in OUT */
 } ledger_result;
 
-/* Adds every sample once, the sheet's carried-along columns included, and reads the ledger back. `path` NULL: OUT/history.sqlite.
+/* Adds every sample once with its micrographs, the sheet's carried-along columns included, and reads the ledger back. `path` NULL: OUT/history.sqlite;
+ * folder: of the micrographs.
  * err ST_IO, ST_NO_MEMORY; ST_BAD_INPUT the file is no ledger */
-status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p, const sheet *columns,
+status ledger_keep(const char *path, const char *out, const char *run_at, const protocol *p, const sheet *columns, const char *folder,
                    const joined *samples, size_t n, ledger_result *result, error *e);
 void ledger_free(ledger_result *r);
 

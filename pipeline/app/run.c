@@ -175,7 +175,7 @@ status run_folder(const run_options *o, run_outcome *outcome, error *e) {
     double t3 = now_s();
     if (st == ST_OK) {
         const char *history = o->history ? o->history : r.protocol.history;
-        st = ledger_keep(history, r.out, run_at, &r.protocol, &r.folder.sheet, r.samples, r.n_groups, &ledger, e);
+        st = ledger_keep(history, r.out, run_at, &r.protocol, &r.folder.sheet, r.folder.root, r.samples, r.n_groups, &ledger, e);
     }
     if (st == ST_OK) {
         count_outcome(&r, outcome);

@@ -1,4 +1,4 @@
-/* The ledger: one SQLite file, one row per sample and run.
+/* The ledger: one SQLite file, one row per sample and run; the view `quantities` shows it as one row per sample, quantity and run.
  *
  * Safety: the classical rollback journal (a write-ahead log needs shared memory, which network drives do not give),
  * one BEGIN IMMEDIATE per batch of rows, a busy timeout of 30 s, and UNIQUE(sample, fingerprint), so that several
@@ -17,7 +17,7 @@
 #include "base/mem.h"
 #include "base/text.h"
 
-enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 2, WAIT_MS = 30000 };
+enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 3, WAIT_MS = 30000 };
 
 static const char schema[] =
     "CREATE TABLE runs("
@@ -36,23 +36,52 @@ static const char second_version[] =
     "CREATE TABLE exclusions("
     " id INTEGER PRIMARY KEY, sample TEXT NOT NULL, etched_at TEXT NOT NULL, fingerprint TEXT NOT NULL,"
     " excluded INTEGER NOT NULL, reason TEXT NOT NULL, initials TEXT NOT NULL, at TEXT NOT NULL);"
-    "PRAGMA user_version = 2;"; /* LEDGER_VERSION */
+    "PRAGMA user_version = 2;";
+
+/* Version 3 added where a row comes from (position, protocol, micrographs), the point in time it stands at, so that 50 000 rows come
+ * out in order without sorting, and a record of what was deleted. */
+static const char third_version[] =
+    "ALTER TABLE runs ADD COLUMN position TEXT NOT NULL DEFAULT '';"
+    "ALTER TABLE runs ADD COLUMN protocol_sha256 TEXT NOT NULL DEFAULT '';"
+    "ALTER TABLE runs ADD COLUMN folder TEXT NOT NULL DEFAULT '';"
+    "ALTER TABLE runs ADD COLUMN day REAL;"
+    "UPDATE runs SET day = coalesce(julianday(nullif(etched_at, '')), julianday(run_at));"
+    "CREATE INDEX runs_in_time ON runs(day, sample, run_at, id);"
+    "CREATE INDEX exclusions_of_etch ON exclusions(sample, etched_at, id);"
+    "CREATE TABLE micrographs("
+    " run INTEGER NOT NULL REFERENCES runs(id), file TEXT NOT NULL, sha256 TEXT NOT NULL, used INTEGER NOT NULL,"
+    " px_nm REAL, px_source TEXT NOT NULL, PRIMARY KEY(run, file)) WITHOUT ROWID;"
+    "CREATE TABLE prunings("
+    " id INTEGER PRIMARY KEY, at TEXT NOT NULL, criteria TEXT NOT NULL, rows INTEGER NOT NULL, reason TEXT NOT NULL,"
+    " initials TEXT NOT NULL);"
+    "CREATE VIEW quantities AS SELECT r.id AS run, r.sample, r.lot, r.wafer, r.position, r.etched_at, r.run_at, r.protocol,"
+    " r.protocol_sha256, r.version, j.key AS quantity, j.value AS value, json_extract(r.row_json, '$.\"' || j.key || '_u\"') AS u"
+    " FROM runs r, json_each(r.row_json) j WHERE j.type <> 'null' AND substr(j.key, -2) <> '_u';"
+    "PRAGMA user_version = 3;"; /* LEDGER_VERSION */
 
 static const char insert_sql[] =
     "INSERT INTO runs(sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, spacing_nm, spacing_nm_u,"
-    " density_per_um2, size_d50_nm, weighted_reflectance, verdict, row_json)"
-    " VALUES(?,?,?,?,?,?,?,?,?,?,?,?,?,?,?) ON CONFLICT(sample, fingerprint) DO NOTHING";
+    " density_per_um2, size_d50_nm, weighted_reflectance, verdict, row_json, position, protocol_sha256, folder, day)"
+    " VALUES(?1,?2,?3,?4,?5,?6,?7,?8,?9,?10,?11,?12,?13,?14,?15,?16,?17,?18,"
+    " coalesce(julianday(nullif(?4, '')), julianday(?5))) ON CONFLICT(sample, fingerprint) DO NOTHING";
+static const char insert_micrograph_sql[] =
+    "INSERT OR IGNORE INTO micrographs(run, file, sha256, used, px_nm, px_source) VALUES(?,?,?,?,?,?)";
 
 #define WHEN "coalesce(julianday(nullif(etched_at, '')), julianday(run_at))"
-#define SELECT_RUNS(excluded)                                                                               \
-    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict, row_json, "     \
-    excluded ", spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance, " WHEN        \
-    " FROM runs WHERE (?1 IS NULL OR " WHEN " >= julianday(?1)) AND (?2 IS NULL OR lot = ?2)"               \
-    " ORDER BY " WHEN ", sample, run_at, id"
-static const char select_old_sql[] = SELECT_RUNS("''");
-static const char select_sql[] = SELECT_RUNS(
-    "coalesce((SELECT CASE WHEN x.excluded THEN x.reason || ' (' || x.initials || ')' ELSE '' END FROM exclusions x"
-    " WHERE x.sample = runs.sample AND x.etched_at = runs.etched_at ORDER BY x.id DESC LIMIT 1), '')");
+#define SELECT_RUNS(day, excluded, newer, by_protocol)                                                              \
+    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict, row_json, " excluded    \
+    ", " newer ", spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance, " day               \
+    " FROM runs WHERE (?1 IS NULL OR " day " >= julianday(?1)) AND (?2 IS NULL OR lot = ?2)"                        \
+    " AND (?3 IS NULL OR " day " <= julianday(?3)) AND (?4 IS NULL OR protocol = ?4" by_protocol ")"                \
+    " ORDER BY " day ", sample, run_at, id"
+#define EXCLUDED                                                                                                    \
+    "coalesce((SELECT CASE WHEN x.excluded THEN x.reason || ' (' || x.initials || ')' ELSE '' END FROM exclusions x" \
+    " WHERE x.sample = runs.sample AND x.etched_at = runs.etched_at ORDER BY x.id DESC LIMIT 1), '')"
+/* By the version of the file. */
+static const char *const select_sql[LEDGER_VERSION + 1] = {
+    NULL, SELECT_RUNS(WHEN, "''", "'', '', ''", ""), SELECT_RUNS(WHEN, EXCLUDED, "'', '', ''", ""),
+    SELECT_RUNS("day", EXCLUDED, "position, protocol_sha256, folder", " OR substr(protocol_sha256, 1, length(?4)) = ?4")
+};
 
 status history_say(history *h, const char *doing, error *e) {
     int code = sqlite3_errcode(h->db) & 0xff;
@@ -127,7 +156,9 @@ static status bring_up(history *h, error *e) {
     ledger found = LEDGER_OURS;
     st = identify(h, &found, e);
     if (st == ST_OK && found == LEDGER_EMPTY) st = history_run_sql(h, schema, "creating it", e);
-    if (st == ST_OK && found != LEDGER_OURS) st = history_run_sql(h, second_version, "bringing it up to date", e);
+    int from = found == LEDGER_OURS ? LEDGER_VERSION : found == LEDGER_EMPTY ? 1 : h->version;
+    if (st == ST_OK && from < 2) st = history_run_sql(h, second_version, "bringing it up to date", e);
+    if (st == ST_OK && from < 3) st = history_run_sql(h, third_version, "bringing it up to date", e);
     if (st == ST_OK) st = history_run_sql(h, "COMMIT", "creating it", e);
     if (st != ST_OK) sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
     else h->version = LEDGER_VERSION;
@@ -178,19 +209,36 @@ static int bind_number(sqlite3_stmt *s, int at, double v) {
     return isfinite(v) ? sqlite3_bind_double(s, at, v) : sqlite3_bind_null(s, at);
 }
 
+typedef struct {
+    sqlite3_stmt *row, *micrograph;
+} insertion;
+
 static int insert_row(sqlite3_stmt *s, const history_row *r) {
     const char *const head[] = { r->sample, r->lot, r->wafer, r->etched_at, r->run_at, r->fingerprint, r->version,
                                  r->protocol };
     const double numbers[] = { r->spacing_nm, r->spacing_nm_u, r->density_per_um2, r->size_d50_nm,
                                r->weighted_reflectance };
+    const char *const tail[] = { r->verdict, r->row_json, r->position, r->protocol_sha256, r->folder };
     int at = 1, bad = 0;
     for (size_t i = 0; i < sizeof head / sizeof head[0]; i++) bad |= history_bind(s, at++, head[i]);
     for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) bad |= bind_number(s, at++, numbers[i]);
-    bad |= history_bind(s, at++, r->verdict);
-    bad |= history_bind(s, at, r->row_json);
+    for (size_t i = 0; i < sizeof tail / sizeof tail[0]; i++) bad |= history_bind(s, at++, tail[i]);
     if (bad) return 0;
     int ok = sqlite3_step(s) == SQLITE_DONE;
     return sqlite3_reset(s) == SQLITE_OK && ok;
+}
+
+static int insert_micrographs(history *h, sqlite3_stmt *s, const history_row *r) {
+    sqlite3_int64 run = sqlite3_last_insert_rowid(h->db);
+    int ok = 1;
+    for (size_t i = 0; ok && i < r->n_micrographs; i++) {
+        const history_micrograph *m = &r->micrographs[i];
+        int bad = sqlite3_bind_int64(s, 1, run) | history_bind(s, 2, m->file) | history_bind(s, 3, m->sha256) |
+                  sqlite3_bind_int(s, 4, m->used) | bind_number(s, 5, m->px_nm) | history_bind(s, 6, m->px_source);
+        ok = !bad && sqlite3_step(s) == SQLITE_DONE;
+        ok = sqlite3_reset(s) == SQLITE_OK && ok;
+    }
+    return ok;
 }
 
 status history_add(history *h, const history_row *rows, size_t n, size_t *added, error *e) {
@@ -199,13 +247,19 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
     *added = 0;
     status st = history_run_sql(h, "BEGIN IMMEDIATE", doing, e);
     if (st != ST_OK) return st;
-    sqlite3_stmt *s = NULL;
-    if (sqlite3_prepare_v2(h->db, insert_sql, -1, &s, NULL) != SQLITE_OK) st = history_say(h, doing, e);
+    insertion s = { NULL, NULL };
+    if (sqlite3_prepare_v2(h->db, insert_sql, -1, &s.row, NULL) != SQLITE_OK ||
+        sqlite3_prepare_v2(h->db, insert_micrograph_sql, -1, &s.micrograph, NULL) != SQLITE_OK)
+        st = history_say(h, doing, e);
     for (size_t i = 0; i < n && st == ST_OK; i++) {
-        if (!insert_row(s, &rows[i])) st = history_say(h, doing, e);
-        else count += sqlite3_changes(h->db) > 0;
+        if (!insert_row(s.row, &rows[i])) st = history_say(h, doing, e);
+        else if (sqlite3_changes(h->db) > 0) {
+            count++;
+            if (!insert_micrographs(h, s.micrograph, &rows[i])) st = history_say(h, doing, e);
+        }
     }
-    sqlite3_finalize(s);
+    sqlite3_finalize(s.row);
+    sqlite3_finalize(s.micrograph);
     if (st == ST_OK) st = history_run_sql(h, "COMMIT", doing, e);
     if (st != ST_OK) {
         sqlite3_exec(h->db, "ROLLBACK", NULL, NULL, NULL);
@@ -217,7 +271,7 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
 
 /* ---- reading ---- */
 
-enum { TEXTS = 11, NUMBERS = 6 };
+enum { TEXTS = 14, NUMBERS = 6 };
 
 status history_take_texts(sqlite3_stmt *s, const char **const *into, size_t n, char **block, error *e) {
     size_t total = 0;
@@ -240,7 +294,8 @@ status history_take_texts(sqlite3_stmt *s, const char **const *into, size_t n, c
 
 static status take_row(sqlite3_stmt *s, history_row *r, char **block, error *e) {
     const char **const into[TEXTS] = { &r->sample,  &r->lot,      &r->wafer,   &r->etched_at, &r->run_at, &r->fingerprint,
-                                       &r->version, &r->protocol, &r->verdict, &r->row_json,  &r->excluded };
+                                       &r->version, &r->protocol, &r->verdict, &r->row_json,  &r->excluded,
+                                       &r->position, &r->protocol_sha256, &r->folder };
     double *const numbers[NUMBERS] = { &r->spacing_nm, &r->spacing_nm_u, &r->density_per_um2, &r->size_d50_nm,
                                        &r->weighted_reflectance, &r->day };
     for (int i = 0; i < NUMBERS; i++)
@@ -285,15 +340,21 @@ status history_day(history *h, const char *time, const char *what, double *day, 
     return st;
 }
 
-status history_read(history *h, const char *since, const char *lot, history_list *out, error *e) {
+status history_bind_filter(history *h, sqlite3_stmt *s, const history_filter *f, error *e) {
+    const char *const texts[] = { f->since, f->lot, f->until, f->protocol };
+    status st = f->since ? history_check_time(h, f->since, "since", e) : ST_OK;
+    if (st == ST_OK && f->until) st = history_check_time(h, f->until, "until", e);
+    for (int i = 0; st == ST_OK && i < 4; i++)
+        if (texts[i] && history_bind(s, i + 1, texts[i]) != SQLITE_OK) st = history_say(h, "reading it", e);
+    return st;
+}
+
+status history_select(history *h, const history_filter *f, history_list *out, error *e) {
     history_list l = { 0 };
     size_t room = 0;
     sqlite3_stmt *s = NULL;
-    status st = since ? history_check_time(h, since, "since", e) : ST_OK;
-    if (st != ST_OK) return st;
-    if (sqlite3_prepare_v2(h->db, h->version < 2 ? select_old_sql : select_sql, -1, &s, NULL) != SQLITE_OK ||
-        (since && history_bind(s, 1, since) != SQLITE_OK) || (lot && history_bind(s, 2, lot) != SQLITE_OK))
-        st = history_say(h, "reading it", e);
+    status st = sqlite3_prepare_v2(h->db, select_sql[h->version], -1, &s, NULL) == SQLITE_OK ? ST_OK : history_say(h, "reading it", e);
+    if (st == ST_OK) st = history_bind_filter(h, s, f, e);
     int code = SQLITE_DONE;
     while (st == ST_OK && (code = sqlite3_step(s)) == SQLITE_ROW) {
         st = grow(&l, &room, e);
@@ -308,6 +369,11 @@ status history_read(history *h, const char *since, const char *lot, history_list
     if (st != ST_OK) history_list_free(&l);
     else *out = l;
     return st;
+}
+
+status history_read(history *h, const char *since, const char *lot, history_list *out, error *e) {
+    history_filter f = { .since = since, .lot = lot };
+    return history_select(h, &f, out, e);
 }
 
 void history_list_free(history_list *l) {

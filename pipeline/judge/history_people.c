@@ -9,7 +9,7 @@
 #include "base/mem.h"
 #include "judge/history_priv.h"
 
-static int blank(const char *s) { return !s || s[strspn(s, " \t")] == '\0'; }
+int history_blank(const char *s) { return !s || s[strspn(s, " \t")] == '\0'; }
 
 static status add_row(history *h, const char *sql, const char *const *texts, int n, const char *doing, error *e) {
     sqlite3_stmt *s = NULL;
@@ -22,7 +22,7 @@ static status add_row(history *h, const char *sql, const char *const *texts, int
 }
 
 status history_note_add(history *h, const history_note *note, error *e) {
-    if (blank(note->text)) return fail(e, ST_BAD_INPUT, "history note: a note needs a text");
+    if (history_blank(note->text)) return fail(e, ST_BAD_INPUT, "history note: a note needs a text");
     if (!note->kind || (strcmp(note->kind, "change") != 0 && strcmp(note->kind, "remark") != 0))
         return fail(e, ST_BAD_INPUT, "history note: a note is a change or a remark, not '%s'", note->kind ? note->kind : "");
     status st = history_check_time(h, note->at ? note->at : "", "note at", e);
@@ -106,8 +106,8 @@ status history_exclude(history *h, const char *sample, const char *etched_at, in
     static const char sql[] = "INSERT INTO exclusions(sample, etched_at, fingerprint, excluded, reason, initials, at)"
                               " VALUES(?,?,?,?,?,?,?)";
     char *found = NULL, *fingerprint = NULL;
-    if (blank(reason)) return fail(e, ST_BAD_INPUT, "history: an exclusion needs a reason");
-    if (blank(initials)) return fail(e, ST_BAD_INPUT, "history: an exclusion needs the initials of who decided");
+    if (history_blank(reason)) return fail(e, ST_BAD_INPUT, "history: an exclusion needs a reason");
+    if (history_blank(initials)) return fail(e, ST_BAD_INPUT, "history: an exclusion needs the initials of who decided");
     status st = find_etch(h, sample, etched_at, &found, &fingerprint, e);
     const char *const texts[] = { sample, found, fingerprint, excluded ? "1" : "0", reason, initials, at };
     if (st == ST_OK) st = add_row(h, sql, texts, 7, "adding an exclusion", e);

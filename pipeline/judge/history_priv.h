@@ -17,6 +17,9 @@ status history_run_sql(history *h, const char *sql, const char *doing, error *e)
 int history_bind(sqlite3_stmt *s, int at, const char *text);
 /* The text columns 0..n-1 of a row into one block; *into[i] point into it. */
 status history_take_texts(sqlite3_stmt *s, const char **const *into, size_t n, char **block, error *e);
+int history_blank(const char *s); /* NULL, or nothing but blanks */
+/* since, lot, until, protocol as ?1 to ?4. */
+status history_bind_filter(history *h, sqlite3_stmt *s, const history_filter *f, error *e);
 /* A date or date with time that SQLite reads, not one of its own words such as "now". `what` opens the sentence. */
 status history_check_time(history *h, const char *time, const char *what, error *e);
 

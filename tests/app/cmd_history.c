@@ -57,17 +57,17 @@ static int holds(const char *text, const char *words) {
 }
 
 static void fill_ledger(void) {
-    static const history_row rows[] = { { "S2", "L2", "4", "2026-03-15T08:00:00Z", "2026-04-01T10:00:00Z",
-                                          "f2", "0.1.0", "line 3", 355.25, 8.1, 9.1, 340.5, 0.01831,
-                                          "conforms",
-                                          "{\"sample\": \"S2\", \"lot\": \"L2\", \"etched_at\": "
-                                          "\"2026-03-15T08:00:00Z\", \"spacing_nm\": 355.25, "
-                                          "\"weighted_reflectance\": 0.01831, \"note\": \"=1+1\"}", MISSING, "" },
-                                        { "S1", "L1", "3", "2026-03-14T08:00:00Z", "2026-04-01T10:00:00Z",
-                                          "f1", "0.1.0", "line 3", 351.2, 7.7, 9.3, 338.1, MISSING, "fails",
-                                          "{\"sample\": \"S1\", \"lot\": \"L1\", \"etched_at\": "
-                                          "\"2026-03-14T08:00:00Z\", \"spacing_nm\": 351.2, "
-                                          "\"weighted_reflectance\": null, \"x_mm\": \"-3.5\"}", MISSING, "" } };
+    static const history_row rows[] = {
+        { .sample = "S2", .lot = "L2", .wafer = "4", .etched_at = "2026-03-15T08:00:00Z", .run_at = "2026-04-01T10:00:00Z",
+          .fingerprint = "f2", .version = "0.1.0", .protocol = "line 3", .spacing_nm = 355.25, .spacing_nm_u = 8.1,
+          .density_per_um2 = 9.1, .size_d50_nm = 340.5, .weighted_reflectance = 0.01831, .verdict = "conforms",
+          .row_json = "{\"sample\": \"S2\", \"lot\": \"L2\", \"etched_at\": \"2026-03-15T08:00:00Z\", \"spacing_nm\": 355.25, "
+                      "\"weighted_reflectance\": 0.01831, \"note\": \"=1+1\"}" },
+        { .sample = "S1", .lot = "L1", .wafer = "3", .etched_at = "2026-03-14T08:00:00Z", .run_at = "2026-04-01T10:00:00Z",
+          .fingerprint = "f1", .version = "0.1.0", .protocol = "line 3", .spacing_nm = 351.2, .spacing_nm_u = 7.7,
+          .density_per_um2 = 9.3, .size_d50_nm = 338.1, .weighted_reflectance = MISSING, .verdict = "fails",
+          .row_json = "{\"sample\": \"S1\", \"lot\": \"L1\", \"etched_at\": \"2026-03-14T08:00:00Z\", \"spacing_nm\": 351.2, "
+                      "\"weighted_reflectance\": null, \"x_mm\": \"-3.5\"}" } };
     history *h = NULL;
     size_t added = 0;
     error e = { ST_OK, "" };
