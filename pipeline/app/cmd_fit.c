@@ -11,6 +11,7 @@
 #include "app/fit_print.h"
 #include "app/linkfile.h"
 #include "app/materials.h"
+#include "app/optics_options.h"
 #include "app/samplesheet.h"
 #include "app/spectrum_file.h"
 #include "base/mem.h"
@@ -26,14 +27,8 @@ enum {
     OPT_SPACING_U,
     OPT_FREE,
     OPT_HEIGHT,
-    OPT_SHAPE,
-    OPT_SPREAD,
-    OPT_COVERAGE,
-    OPT_PORES,
-    OPT_BAND,
+    OPT_FIT_BAND,
     OPT_NOISE,
-    OPT_AMBIENT,
-    OPT_ANGLE,
     OPT_PROTOCOL,
     OPT_MADE_AT,
     OPT_SAVE,
@@ -50,14 +45,10 @@ static const struct argp_option fit_options_table[] = {
     { "spacing-u",     OPT_SPACING_U, "NM",      0, "its standard uncertainty (default: 0)", 0 },
     { "free",          OPT_FREE,      "LIST",    0, "what the light shall tell, out of height,exponent,spread,floor,offset (default: height,exponent,offset)", 0 },
     { "height",        OPT_HEIGHT,    "NM",      0, "height of every sample: then it is not fitted", 0 },
-    { "shape",         OPT_SHAPE,     "SHAPE",   0, "cone, paraboloid or the exponent: then it is not fitted", 0 },
-    { "height-spread", OPT_SPREAD,    "REL",     0, "relative standard deviation of the heights (default: the protocol's)", 0 },
-    { "coverage",      OPT_COVERAGE,  "F",       0, "solid share at the floor (default: the protocol's)", 0 },
-    { "pores",         OPT_PORES,     NULL,      0, "features are pores (default: as the results or the protocol say)", 0 },
-    { "band",          OPT_BAND,      "LO:HI",   0, "wavelengths that are used, nm (default: 300:1000; beyond, light from the rear comes in)", 0 },
+    SHAPE_OPTIONS,
+    { "band",          OPT_FIT_BAND,    "LO:HI",   0, "wavelengths that are used, nm (default: 300:1000; beyond, light from the rear comes in)", 0 },
     { "noise",         OPT_NOISE,     "R",       0, "standard noise of one value as a share (default: from neighbouring values)", 0 },
-    { "ambient",       OPT_AMBIENT,   "MEDIUM",  0, "what the spectra were measured in (default: the protocol's)", 0 },
-    { "angle",         OPT_ANGLE,     "DEG",     0, "angle of incidence of the spectrometer (default: the protocol's)", 0 },
+    STACK_OPTIONS,
     { "protocol",      OPT_PROTOCOL,  "FILE",    0, "optics, and the values of what is not fitted", 0 },
     { "made-at",       OPT_MADE_AT,   "DATE",    0, "date that the link file carries (default: now)", 0 },
     { "save",          OPT_SAVE,      "FILE",    0, "write the link file; name it in a protocol as link.calibration", 0 },
@@ -65,21 +56,16 @@ static const struct argp_option fit_options_table[] = {
     { "csv",           OPT_CSV,       NULL,      0, "measured and fitted spectra as CSV", 0 },
     { 0 } };
 
-/* Which key of a protocol an option sets, and what is then not free. */
-static const struct { int option; const char *name, *group, *key; int kind; } sets[] = {
-    { OPT_SHAPE,    "--shape",         "link",   "shape",         FIT_EXPONENT },
-    { OPT_SPREAD,   "--height-spread", "link",   "height_spread", FIT_SPREAD },
-    { OPT_COVERAGE, "--coverage",      "link",   "coverage",      FIT_FLOOR },
-    { OPT_AMBIENT,  "--ambient",       "optics", "ambient",       -1 },
-    { OPT_ANGLE,    "--angle",         "optics", "angle_deg",     -1 },
-};
+/* What is given is not free. */
+static const struct { int option; fit_kind kind; } fixes[] = {
+    { OPT_SHAPE, FIT_EXPONENT }, { OPT_SPREAD, FIT_SPREAD }, { OPT_COVERAGE, FIT_FLOOR } };
 /* clang-format on */
-enum { N_SETS = sizeof sets / sizeof sets[0] };
+enum { N_FIXES = sizeof fixes / sizeof fixes[0] };
 
 typedef struct {
-    const char *results, *protocol, *save, *made_at, *free, *band, *set[N_SETS];
+    const char *results, *protocol, *save, *made_at, *free, *band;
     const char *spacing, *spacing_u, *height, *noise;
-    int pores;
+    given_options given; /* keys of a protocol */
     output as;
     char **files; /* [n] as given: FILE or NAME=FILE */
     int *named;   /* [n] 1: NAME=FILE */
@@ -115,10 +101,7 @@ static error_t fit_option(int key, char *arg, struct argp_state *state) {
     case OPT_HEIGHT:
         q->height = arg;
         break;
-    case OPT_PORES:
-        q->pores = 1;
-        break;
-    case OPT_BAND:
+    case OPT_FIT_BAND:
         q->band = arg;
         break;
     case OPT_NOISE:
@@ -151,12 +134,7 @@ static error_t fit_option(int key, char *arg, struct argp_state *state) {
         if (!q->n) argp_error(state, "no spectrum; name at least one file");
         break;
     default:
-        for (size_t i = 0; i < N_SETS; i++)
-            if (sets[i].option == key) {
-                q->set[i] = arg;
-                return 0;
-            }
-        return ARGP_ERR_UNKNOWN;
+        return given_keep(&q->given, key, arg, state);
     }
     return 0;
 }
@@ -321,12 +299,12 @@ static status read_inputs(const request *q, inputs *v, int *pores, error *e) {
             in->fit.spacing_nm = (quantity){ spacing, spacing_u, 1 };
         in->fit.height_nm = q->height ? (quantity){ height, 0.0, 1 } : in->sheet_height;
     }
-    if (st == ST_OK && n_pores && n_hillocks && !q->pores)
+    if (st == ST_OK && n_pores && n_hillocks && !given_has(&q->given, OPT_PORES))
         return fail(e, ST_BAD_INPUT,
                     "some of these samples have pores and some hillocks; they need links of their own");
     if (n_pores) *pores = 1;
     if (n_hillocks) *pores = 0;
-    if (q->pores) *pores = 1;
+    if (given_has(&q->given, OPT_PORES)) *pores = 1;
     return st;
 }
 
@@ -349,14 +327,13 @@ static status choose_free(const request *q, fit_options *o, error *e) {
         st = fit_kinds_parse(q->free, &o->free, e);
         if (st != ST_OK) return fail_within(e, st, "--free");
     }
-    for (size_t i = 0; i <= N_SETS; i++) {
-        int kind = i < N_SETS ? sets[i].kind : FIT_HEIGHT;
-        const char *given = i < N_SETS ? q->set[i] : q->height,
-                   *name = i < N_SETS ? sets[i].name : "--height";
-        if (!given || kind < 0 || !(o->free >> kind & 1u)) continue;
+    for (size_t i = 0; i <= N_FIXES; i++) {
+        fit_kind kind = i < N_FIXES ? fixes[i].kind : FIT_HEIGHT;
+        int given = i < N_FIXES ? given_has(&q->given, fixes[i].option) : q->height != NULL;
+        if (!given || !(o->free >> kind & 1u)) continue;
         if (q->free)
             return fail(e, ST_BAD_INPUT, "%s gives what --free %.60s wants to fit; leave one of them out",
-                        name, q->free);
+                        i < N_FIXES ? shared_option_name(fixes[i].option) : "--height", q->free);
         o->free &= ~(1u << kind);
     }
     if (!o->free) return fail(e, ST_BAD_INPUT, "everything is given, nothing is left to fit");
@@ -364,16 +341,14 @@ static status choose_free(const request *q, fit_options *o, error *e) {
 }
 
 static status options_of(const request *q, protocol *p, fit_options *o, error *e) {
-    status st = ST_OK;
     *o = fit_defaults();
-    for (size_t i = 0; i < N_SETS && st == ST_OK; i++)
-        if (q->set[i]) st = protocol_set(p, sets[i].group, sets[i].key, q->set[i], sets[i].name, e);
+    status st = given_apply(&q->given, 1, p, e); /* the fit says the shape, or it is taken as known */
     if (st == ST_OK && q->band) st = band_option(q->band, o, e);
     if (st == ST_OK && q->noise) st = option_number("--noise", q->noise, 1e-6, 0.5, &o->noise, e);
     if (st == ST_OK) st = choose_free(q, o, e);
     if (st != ST_OK) return st;
     o->link = p->link;
-    if (!q->protocol || q->set[0]) o->link.exponent_u = 0.0; /* a stated number is taken as known */
+    if (!isfinite(o->link.exponent_u)) o->link.exponent_u = 0.0; /* the link file carries it */
     o->pores = p->measure.relief == RELIEF_PORE;
     free(p->calibration); /* a fit does not start from another one */
     p->calibration = NULL;

@@ -8,6 +8,7 @@
 #include "app/angles.h"
 #include "app/command.h"
 #include "app/materials.h"
+#include "app/optics_options.h"
 #include "app/trial_print.h"
 #include "base/number.h"
 #include "base/quantity.h"
@@ -16,30 +17,13 @@
 
 enum {
     OPT_SPACING = 1,
+    OPT_SPACING_U,
     OPT_HEIGHT,
-    OPT_HEIGHT_U,
-    OPT_SHAPE,
-    OPT_SPREAD,
-    OPT_COVERAGE,
-    OPT_MIXING,
-    OPT_MODEL,
-    OPT_FACET_ANGLE,
-    OPT_COATING,
-    OPT_SUBSTRATE,
-    OPT_AMBIENT,
-    OPT_ANGLE,
     OPT_ANGLES,
     OPT_LIMIT,
     OPT_TRIALS,
     OPT_SEED,
-    OPT_POLARIZATION,
-    OPT_HEMISPHERICAL,
-    OPT_BAND,
-    OPT_SUN,
-    OPT_WEIGHT,
-    OPT_REAR,
-    OPT_PORES,
-    OPT_PROFILE,
+    OPT_TOLERANCE,
     OPT_PROTOCOL,
     OPT_JSON,
     OPT_CSV,
@@ -49,115 +33,68 @@ enum {
 /* clang-format off */
 static const struct argp_option predict_options[] = {
     { "spacing",       OPT_SPACING,       "NM",       0, "mean distance of neighbouring features; decides where the model holds", 0 },
+    { "spacing-u",     OPT_SPACING_U,     "NM",       0, "its standard uncertainty (default: 0)", 0 },
     { "height",        OPT_HEIGHT,        "NM",       0, "feature height; 0 is a planar surface", 0 },
     { "height-u",      OPT_HEIGHT_U,      "NM",       0, "its standard uncertainty (default: 0)", 0 },
-    { "shape",         OPT_SHAPE,         "SHAPE",    0, "cone (default), paraboloid, or the exponent q of (1 - z/h)^(2/q)", 0 },
-    { "height-spread", OPT_SPREAD,        "REL",      0, "relative standard deviation of the heights (default: 0)", 0 },
-    { "coverage",      OPT_COVERAGE,      "F",        0, "solid share at the floor (default: 1)", 0 },
-    { "pores",         OPT_PORES,         NULL,       0, "features are pores: the complement of the shape", 0 },
+    SHAPE_OPTIONS,
     { "profile",       OPT_PROFILE,       "FILE",     0, "measured profile instead of height and shape: CSV with depth_nm and solid_fraction", 0 },
-    { "coating",       OPT_COATING,       "MATERIAL:NM", 0, "conformal coating, outermost first; may be repeated", 0 },
-    { "substrate",     OPT_SUBSTRATE,     "MATERIAL", 0, "what the features are made of (default: silicon)", 0 },
-    { "ambient",       OPT_AMBIENT,       "MEDIUM",   0, "air (default), laminate (air, glass, encapsulant), a material or an index", 0 },
-    { "mixing",        OPT_MIXING,        "RULE",     0, "bruggeman-2d (default), maxwell-garnett-2d, bruggeman-3d, maxwell-garnett-3d, looyenga, volume", 0 },
-    { "model",         OPT_MODEL,         "MODEL",    0, "graded (index), facets (geometric optics), or auto (default): whichever is valid", 0 },
-    { "facet-angle",   OPT_FACET_ANGLE,   "DEG",      0, "inclination of the facets, 54.74 for alkaline pyramids (default: from height and spacing)", 0 },
-    { "angle",         OPT_ANGLE,         "DEG",      0, "angle of incidence in air (default: 0)", 0 },
+    STACK_OPTIONS,
+    WEIGHT_OPTIONS,
     { "angles",        OPT_ANGLES,        "FROM:TO:STEP", 0, "weighted reflectance against the angle, s, p and unpolarised, such as 0:80:5", 0 },
     { "limit",         OPT_LIMIT,         "R",        0, "with --angles: up to which angle the reflectance stays at or below this, such as 0.02", 0 },
     { "trials",        OPT_TRIALS,        NULL,       0, "carry the distributions of the inputs through by Monte Carlo (JCGM 101), with a ranked budget", 0 },
     { "seed",          OPT_SEED,          "N",        0, "of the trials: same seed, same result (default: 1)", 0 },
-    { "polarization",  OPT_POLARIZATION,  "P",        0, "mean (default, unpolarised), s or p", 0 },
-    { "hemispherical", OPT_HEMISPHERICAL, NULL,       0, "diffuse light from the whole half space", 0 },
-    { "band",          OPT_BAND,          "LO:HI",    0, "wavelengths for the weighting, nm (default: 300:1200)", 0 },
-    { "sun",           OPT_SUN,           "FILE",     0, "own spectrum for the weighting: CSV with wavelength_nm and irradiance_W_m2_nm (default: AM1.5G)", 0 },
-    { "weight",        OPT_WEIGHT,        "WHAT",     0, "photons (default) or energy", 0 },
-    { "rear",          OPT_REAR,          "UM",       0, "wafer thickness in um: adds the light returning from a bare rear, scattered inside; other rears: optics.rear of a protocol", 0 },
+    { "tolerance",     OPT_TOLERANCE,     "R",        0, "of the trials: they go on until the ends of the interval are known to this (default: 0.0005)", 0 },
     { "protocol",      OPT_PROTOCOL,      "FILE",     0, "link and optics of a protocol; options outrank it", 0 },
     { "json",          OPT_JSON,          NULL,       0, "one JSON object with the spectrum", 0 },
     { "csv",           OPT_CSV,           NULL,       0, "the spectrum as CSV", 0 },
     { "materials",     OPT_MATERIALS,     NULL,       0, "list the known materials with their sources", 0 },
     { 0 } };
-
-/* Which key of a protocol an option sets. */
-static const struct { int option; const char *group, *name; } sets[] = {
-    { OPT_HEIGHT_U,      "link",   "height_nm_u" },   { OPT_SHAPE,   "link",   "shape" },
-    { OPT_SPREAD,        "link",   "height_spread" }, { OPT_COVERAGE, "link",  "coverage" },
-    { OPT_PROFILE,       "link",   "profile" },       { OPT_COATING, "optics", "coatings" },
-    { OPT_SUBSTRATE,     "optics", "substrate" },     { OPT_AMBIENT, "optics", "ambient" },
-    { OPT_MODEL,         "optics", "model" },         { OPT_FACET_ANGLE, "optics", "facet_angle_deg" },
-    { OPT_MIXING,        "optics", "mixing" },        { OPT_ANGLE,   "optics", "angle_deg" },
-    { OPT_POLARIZATION,  "optics", "polarization" },  { OPT_BAND,    "optics", "band_nm" },
-    { OPT_HEMISPHERICAL, "optics", "hemispherical" }, { OPT_SUN,     "optics", "sun" },
-    { OPT_WEIGHT,        "optics", "weight" },        { OPT_REAR,    "optics", "rear" },
-};
 /* clang-format on */
 
-enum { MAX_GIVEN = 64 };
 typedef enum { AS_TEXT, AS_JSON, AS_CSV, AS_MATERIALS } output;
 
-/* What stood on the command line, in its order; checked after the protocol is read. */
 typedef struct {
-    struct {
-        int option;
-        const char *text;
-    } given[MAX_GIVEN];
-    size_t n_given;
-    const char *spacing, *height, *protocol, *angles, *limit, *seed;
+    given_options given; /* keys of a protocol */
+    const char *spacing, *spacing_u, *height, *protocol, *angles, *limit, *seed, *tolerance;
     int trials;
-    int pores;
     output as;
 } request;
 
 static error_t predict_option(int key, char *arg, struct argp_state *state) {
     request *q = state->input;
+    const struct {
+        int key;
+        const char **to;
+    } texts[] = {
+        { OPT_SPACING, &q->spacing },   { OPT_SPACING_U, &q->spacing_u }, { OPT_HEIGHT, &q->height },
+        { OPT_PROTOCOL, &q->protocol }, { OPT_ANGLES, &q->angles },       { OPT_LIMIT, &q->limit },
+        { OPT_SEED, &q->seed },         { OPT_TOLERANCE, &q->tolerance },
+    };
+    for (size_t i = 0; i < sizeof texts / sizeof texts[0]; i++)
+        if (texts[i].key == key) {
+            *texts[i].to = arg;
+            return 0;
+        }
     switch (key) {
-    case OPT_SPACING:
-        q->spacing = arg;
-        break;
-    case OPT_HEIGHT:
-        q->height = arg;
-        break;
-    case OPT_PROTOCOL:
-        q->protocol = arg;
-        break;
-    case OPT_ANGLES:
-        q->angles = arg;
-        break;
     case OPT_TRIALS:
         q->trials = 1;
-        break;
-    case OPT_SEED:
-        q->seed = arg;
-        break;
-    case OPT_LIMIT:
-        q->limit = arg;
-        break;
-    case OPT_PORES:
-        q->pores = 1;
-        break;
+        return 0;
     case OPT_JSON:
         q->as = AS_JSON;
-        break;
+        return 0;
     case OPT_CSV:
         q->as = AS_CSV;
-        break;
+        return 0;
     case OPT_MATERIALS:
         q->as = AS_MATERIALS;
-        break;
+        return 0;
     case ARGP_KEY_ARG:
         argp_error(state, "'%s' is no option; numbers need their names, such as --spacing 350", arg);
-        break;
+        return 0;
     default:
-        if (key < OPT_SPACING || key > OPT_MATERIALS) return ARGP_ERR_UNKNOWN;
-        if (q->n_given == MAX_GIVEN)
-            argp_error(state, "more than %d options", MAX_GIVEN);
-        else {
-            q->given[q->n_given].option = key;
-            q->given[q->n_given++].text = arg ? arg : "true";
-        }
+        return given_keep(&q->given, key, arg, state);
     }
-    return 0;
 }
 
 const struct argp predict_argp = {
@@ -171,38 +108,7 @@ const struct argp predict_argp = {
     NULL
 };
 
-static const char *option_name(int option) {
-    for (const struct argp_option *o = predict_options; o->name; o++)
-        if (o->key == option) return o->name;
-    return "?";
-}
-
-static int given(const request *q, int option) {
-    for (size_t i = 0; i < q->n_given; i++)
-        if (q->given[i].option == option) return 1;
-    return 0;
-}
-
-static status apply_options(const request *q, protocol *p, error *e) {
-    for (size_t i = 0; i < p->n_coatings && given(q, OPT_COATING);
-         i++) { /* the command line's replace the protocol's */
-        free(p->coatings[i].material);
-        p->coatings[i] = (protocol_coating){ 0 };
-    }
-    if (given(q, OPT_COATING)) p->n_coatings = 0;
-    for (size_t i = 0; i < q->n_given; i++)
-        for (size_t k = 0; k < sizeof sets / sizeof sets[0]; k++) {
-            char option[40];
-            if (sets[k].option != q->given[i].option) continue;
-            snprintf(option, sizeof option, "--%s", option_name(q->given[i].option));
-            status st = protocol_set(p, sets[k].group, sets[k].name, q->given[i].text, option, e);
-            if (st != ST_OK) return st;
-        }
-    /* A stated number is taken as known unless its uncertainty is stated too. */
-    if (!q->protocol || given(q, OPT_SHAPE)) p->link.exponent_u = 0.0;
-    if (q->pores) p->measure.relief = RELIEF_PORE;
-    return ST_OK;
-}
+static int given(const request *q, int option) { return given_has(&q->given, option); }
 
 static status length_option(const char *option, const char *text, int zero_allowed, double *out, error *e) {
     if (!number_parse(text, out) || !(zero_allowed ? *out >= 0.0 : *out > 0.0) || *out > 1e5)
@@ -220,9 +126,11 @@ static const calibration *link_of(const setup *s) {
 static void shape_given(const request *q, const link_options *said, link_options *l) {
     if (given(q, OPT_SHAPE)) {
         l->exponent = said->exponent;
-        l->exponent_u = said->exponent_u;
+        l->shape_open = said->shape_open;
     }
+    if (given(q, OPT_SHAPE) || given(q, OPT_SHAPE_U)) l->exponent_u = said->exponent_u;
     if (given(q, OPT_SPREAD)) l->height_spread = said->height_spread;
+    if (given(q, OPT_LEVEL)) l->level_at_tips = said->level_at_tips;
     if (given(q, OPT_COVERAGE)) l->coverage = said->coverage;
 }
 
@@ -236,6 +144,7 @@ static status surface_of(const request *q, const protocol *p, const setup *s, su
     in->link = p->link;
     if (q->spacing) st = length_option("--spacing", q->spacing, 0, &in->spacing_nm.value, e);
     if (q->spacing) in->spacing_nm.u = 0.0;
+    if (st == ST_OK && q->spacing_u) st = length_option("--spacing-u", q->spacing_u, 1, &in->spacing_nm.u, e);
     if (st != ST_OK) return st;
     if (s->measured.n) {
         if (q->height)
@@ -280,6 +189,29 @@ static void sample_member(textbuf *out, const char *name, double v) { member(out
 
 enum { SPECTRUM_DIGITS = 6 };
 
+/* What the features were taken for; null for a measured profile. */
+static void shape_json(const surface_input *in, textbuf *out) {
+    const link_options *l = &in->link;
+    const struct {
+        const char *name;
+        double v;
+    } parts[] = { { "exponent", l->exponent },           { "flat_top", l->flat_top },
+                  { "height_cut", link_height_cut(l) },  { "tip_radius_nm", l->tip_radius_nm },
+                  { "coverage", l->coverage },           { "height_spread", l->height_spread } };
+    text_add(out, "  \"shape\": ");
+    if (in->measured) {
+        text_add(out, "null,\n");
+        return;
+    }
+    text_addf(out, "{\"stated\": %s", l->shape_open ? "false" : "true");
+    for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
+        text_addf(out, ", \"%s\": ", parts[i].name);
+        json_number(out, parts[i].v, 5);
+    }
+    text_addf(out, ", \"spread_law\": \"%s\", \"level\": \"%s\"},\n", l->lognormal ? "lognormal" : "normal",
+              l->level_at_tips ? "tips" : "floor");
+}
+
 /* more: further members, each with its comma; may be NULL. */
 static void print_json(const surface_input *in, const prediction *r, const char *more, textbuf *out) {
     text_add(out, "{\n");
@@ -296,6 +228,7 @@ static void print_json(const surface_input *in, const prediction *r, const char 
     sample_member(out, "coated_reflectance", r->coated);
     sample_member(out, "subwavelength_share", r->shares.none);
     member(out, "rear_escape", r->rear_escape, digits_of("weighted_reflectance"));
+    shape_json(in, out);
     if (more) text_add(out, more);
     text_add(out, "  \"optics_model\": ");
     json_string(out, r->model);
@@ -308,8 +241,10 @@ static void print_json(const surface_input *in, const prediction *r, const char 
     const struct {
         const char *name;
         double v;
-    } parts[] = { { "height", r->u_height }, { "shape", r->u_shape }, { "height_spread", r->u_spread },
-                  { "mixing", r->u_mixing }, { "model", r->u_model }, { "model_bias", r->model_bias } };
+    } parts[] = { { "height", r->u_height },         { "shape", r->u_shape },   { "tip", r->u_tip },
+                  { "coverage", r->u_coverage },     { "height_spread", r->u_spread },
+                  { "spacing", r->u_spacing },       { "mixing", r->u_mixing },
+                  { "model", r->u_model },           { "model_bias", r->model_bias } };
     text_add(out, "},\n  \"budget\": {");
     for (size_t i = 0; i < sizeof parts / sizeof parts[0]; i++) {
         text_addf(out, "%s\"%s\": ", i ? ", " : "", parts[i].name);
@@ -353,6 +288,11 @@ static void print_surface(const surface_input *in, const prediction *r, textbuf 
         if (in->height_nm.u > 0.0) text_addf(out, " +- %s", number_text(in->height_nm.u, 3, a));
         text_addf(out, " nm, aspect %s, area %s times the flat one", number_text(r->aspect, 4, a),
                   number_text(r->area_ratio, 4, b));
+        if (in->link.flat_top > 0.0)
+            text_addf(out, ", tops flat on %s %% of the foot (%s %% of the full height cut off)",
+                      number_percent(in->link.flat_top, 4, a), number_percent(link_height_cut(&in->link), 4, b));
+        if (in->link.tip_radius_nm > 0.0)
+            text_addf(out, ", tips round with a radius of %s nm", number_text(in->link.tip_radius_nm, 4, a));
     }
     if (isfinite(in->spacing_nm.value))
         text_addf(out, ", spacing %s nm", number_text(in->spacing_nm.value, 5, a));
@@ -407,8 +347,8 @@ static status predict_angles(const request *q, const surface_input *in, const op
     static const int clash[] = { OPT_ANGLE, OPT_POLARIZATION, OPT_HEMISPHERICAL };
     for (size_t i = 0; i < sizeof clash / sizeof clash[0]; i++)
         if (given(q, clash[i]))
-            return fail(e, ST_BAD_INPUT, "--%s: --angles already says which light; take one of the two out",
-                        option_name(clash[i]));
+            return fail(e, ST_BAD_INPUT, "%s: --angles already says which light; take one of the two out",
+                        shared_option_name(clash[i]));
     status st = angles_parse("--angles", q->angles, &from, &to, &step, e);
     if (st == ST_OK && q->limit && !(number_parse(q->limit, &limit) && limit > 0.0 && limit <= 1.0))
         st = fail(e, ST_BAD_INPUT, "--limit: found %.40s, expected a reflectance above 0 and at most 1, such as 0.02", q->limit);
@@ -428,7 +368,11 @@ static status predict_trials_text(const request *q, const surface_input *in, con
     double seed = 1.0;
     if (q->seed && !(number_parse(q->seed, &seed) && seed >= 0.0 && seed < 9e15 && !(fabs(seed - floor(seed)) > 0.0)))
         return fail(e, ST_BAD_INPUT, "--seed: found %.40s, expected a whole number from 0", q->seed);
-    if (q->seed && !q->trials) return fail(e, ST_BAD_INPUT, "--seed: it needs --trials");
+    if (q->tolerance && !(number_parse(q->tolerance, &t.tolerance) && t.tolerance >= 1e-6 && t.tolerance <= 0.1))
+        return fail(e, ST_BAD_INPUT, "--tolerance: found %.40s, expected a reflectance from 1e-6 to 0.1, such as 0.0005",
+                    q->tolerance);
+    if ((q->seed || q->tolerance) && !q->trials)
+        return fail(e, ST_BAD_INPUT, "%s: it needs --trials", q->seed ? "--seed" : "--tolerance");
     if (!q->trials) return ST_OK;
     if (q->angles || q->as == AS_CSV)
         return fail(e, ST_BAD_INPUT, "--trials: not together with %s", q->angles ? "--angles" : "--csv");
@@ -450,7 +394,7 @@ static status predict_all(const request *q, textbuf *out, error *e) {
     textbuf trials = { 0 };
     height_source source = HEIGHT_SHEET;
     status st = q->protocol ? protocol_read(q->protocol, &p, e) : protocol_defaults(&p, e);
-    if (st == ST_OK) st = apply_options(q, &p, e);
+    if (st == ST_OK) st = given_apply(&q->given, !q->protocol, &p, e);
     if (st == ST_OK) st = setup_make(&p, &s, e);
     if (st == ST_OK) st = surface_of(q, &p, &s, &in, &source, e);
     if (st == ST_OK && q->limit && !q->angles)

@@ -6,6 +6,7 @@
 
 #include "app/command.h"
 #include "app/materials.h"
+#include "app/optics_options.h"
 #include "app/window.h"
 #include "base/number.h"
 #include "base/quantity.h"
@@ -18,14 +19,6 @@ enum {
     OPT_TARGET,
     OPT_RESULTS,
     OPT_PROTOCOL,
-    OPT_SHAPE,
-    OPT_SPREAD,
-    OPT_COATING,
-    OPT_SUBSTRATE,
-    OPT_AMBIENT,
-    OPT_ANGLE,
-    OPT_BAND,
-    OPT_PORES,
     OPT_JSON,
     OPT_CSV
 };
@@ -39,37 +32,20 @@ static const struct argp_option window_options[] = {
     { "target",        OPT_TARGET,    "R",        0, "weighted reflectance to keep (default: the protocol's target, else 0.02)", 0 },
     { "results",       OPT_RESULTS,   "DIR",      0, "output folder of a run: its samples are drawn in", 0 },
     { "protocol",      OPT_PROTOCOL,  "FILE",     0, "link, optics and target of a protocol; options outrank it", 0 },
-    { "shape",         OPT_SHAPE,     "SHAPE",    0, "cone (default), paraboloid, or the exponent q of (1 - z/h)^(2/q)", 0 },
-    { "height-spread", OPT_SPREAD,    "REL",      0, "relative standard deviation of the heights (default: 0)", 0 },
-    { "coating",       OPT_COATING,   "MATERIAL:NM", 0, "conformal coating, outermost first; may be repeated", 0 },
-    { "substrate",     OPT_SUBSTRATE, "MATERIAL", 0, "what the features are made of (default: silicon)", 0 },
-    { "ambient",       OPT_AMBIENT,   "MEDIUM",   0, "air (default), laminate, a material or an index", 0 },
-    { "angle",         OPT_ANGLE,     "DEG",      0, "angle of incidence in air (default: 0)", 0 },
-    { "band",          OPT_BAND,      "LO:HI",    0, "wavelengths for the weighting, nm (default: 300:1200)", 0 },
-    { "pores",         OPT_PORES,     NULL,       0, "features are pores", 0 },
+    SHAPE_OPTIONS,
+    STACK_OPTIONS,
+    WEIGHT_OPTIONS,
     { "json",          OPT_JSON,      NULL,       0, "one JSON object: cells, contour, samples, answer", 0 },
     { "csv",           OPT_CSV,       NULL,       0, "the cells as CSV", 0 },
     { 0 } };
 
-static const struct { int option; const char *group, *name, *text; } sets[] = {
-    { OPT_SHAPE,     "link",   "shape",         "--shape" },     { OPT_SPREAD,  "link",   "height_spread", "--height-spread" },
-    { OPT_COATING,   "optics", "coatings",      "--coating" },   { OPT_SUBSTRATE, "optics", "substrate",   "--substrate" },
-    { OPT_AMBIENT,   "optics", "ambient",       "--ambient" },   { OPT_ANGLE,   "optics", "angle_deg",     "--angle" },
-    { OPT_BAND,      "optics", "band_nm",       "--band" },
-};
 /* clang-format on */
 
-enum { MAX_GIVEN = 64 };
 typedef enum { AS_TEXT, AS_JSON, AS_CSV } output;
 
 typedef struct {
-    struct {
-        int option;
-        const char *text;
-    } given[MAX_GIVEN]; /* keys of a protocol, in their order */
-    size_t n_given;
+    given_options given; /* keys of a protocol */
     const char *spacing, *height, *exponent, *thickness, *target, *results, *protocol;
-    int pores;
     output as;
 } request;
 
@@ -81,21 +57,11 @@ static error_t window_option(int key, char *arg, struct argp_state *state) {
         argp_error(state, "'%s' is no option; ranges need their names, such as --spacing 150:500:25", arg);
         return 0;
     }
-    if (key < OPT_SPACING || key > OPT_CSV) return ARGP_ERR_UNKNOWN;
+    if (key < OPT_SPACING || key > OPT_CSV) return given_keep(&q->given, key, arg, state);
     if (key <= OPT_PROTOCOL)
         *texts[key] = arg;
-    else if (key == OPT_PORES)
-        q->pores = 1;
-    else if (key == OPT_JSON)
-        q->as = AS_JSON;
-    else if (key == OPT_CSV)
-        q->as = AS_CSV;
-    else if (q->n_given == MAX_GIVEN)
-        argp_error(state, "more than %d options", MAX_GIVEN);
-    else {
-        q->given[q->n_given].option = key;
-        q->given[q->n_given++].text = arg;
-    }
+    else
+        q->as = key == OPT_JSON ? AS_JSON : AS_CSV;
     return 0;
 }
 
@@ -112,29 +78,6 @@ const struct argp window_argp = {
     NULL,
     NULL
 };
-
-static status apply_options(const request *q, protocol *p, error *e) {
-    int first_coating = 1, shape = 0;
-    for (size_t i = 0; i < q->n_given; i++)
-        for (size_t k = 0; k < sizeof sets / sizeof sets[0]; k++) {
-            if (sets[k].option != q->given[i].option) continue;
-            if (q->given[i].option == OPT_COATING &&
-                first_coating) { /* the command line's replace the protocol's */
-                for (size_t c = 0; c < p->n_coatings; c++) {
-                    free(p->coatings[c].material);
-                    p->coatings[c] = (protocol_coating){ 0 };
-                }
-                p->n_coatings = 0;
-                first_coating = 0;
-            }
-            shape |= q->given[i].option == OPT_SHAPE;
-            status st = protocol_set(p, sets[k].group, sets[k].name, q->given[i].text, sets[k].text, e);
-            if (st != ST_OK) return st;
-        }
-    if (!q->protocol || shape || q->exponent) p->link.exponent_u = 0.0;
-    if (q->pores) p->measure.relief = RELIEF_PORE;
-    return ST_OK;
-}
 
 static status target_of(const request *q, const protocol *p, double *limit, error *e) {
     *limit = 0.02;
@@ -174,7 +117,11 @@ static status make(const request *q, textbuf *out, error *e) {
     setup s = { 0 };
     window w = { 0 };
     status st = q->protocol ? protocol_read(q->protocol, &p, e) : protocol_defaults(&p, e);
-    if (st == ST_OK) st = apply_options(q, &p, e);
+    if (st == ST_OK) st = given_apply(&q->given, !q->protocol, &p, e);
+    if (st == ST_OK && q->exponent) {
+        p.link.exponent_u = MISSING; /* the axis says the shape */
+        p.link.shape_open = 0;
+    }
     if (st == ST_OK) st = target_of(q, &p, &w.target, e);
     if (st == ST_OK) st = axes(q, &w, e);
     if (st == ST_OK && q->results) st = window_samples(q->results, &w, e);

@@ -276,7 +276,9 @@ static void prediction_json(const prediction *d, textbuf *members) {
     const struct { const char *name; double v; } numbers[] = {
         { "orders_none", d->shares.none },           { "orders_in_silicon", d->shares.in_substrate },
         { "orders_in_air", d->shares.in_ambient },   { "u_height", d->u_height },
-        { "u_shape", d->u_shape },                   { "u_spread", d->u_spread },
+        { "u_shape", d->u_shape },                   { "u_tip", d->u_tip },
+        { "u_coverage", d->u_coverage },             { "u_spread", d->u_spread },
+        { "u_spacing", d->u_spacing },
         { "u_mixing", d->u_mixing },                 { "u_model", d->u_model },
         { "model_bias", d->model_bias },
     };

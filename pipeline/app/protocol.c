@@ -28,7 +28,8 @@ status protocol_defaults(protocol *out, error *e) {
     p.max_megapixels = (double)LIMIT_PIXELS / 1e6;
     p.max_file_mb = (double)LIMIT_FILE_BYTES / 1e6;
     p.link = link_defaults();
-    p.link.exponent_u = 0.5; /* the shape of real features is not seen from above */
+    p.link.exponent_u = MISSING;
+    p.link.shape_open = 1; /* the shape of real features is not seen from above */
     p.glass_mm = 3.2;
     p.encapsulant_mm = 0.45;
     p.mixing = MIX_BRUGGEMAN_2D;
@@ -137,7 +138,8 @@ static status read_index(const reader *r, const cJSON *node, const protocol_key 
 }
 
 static status read_shape(const reader *r, const cJSON *node, const protocol_key *k) {
-    if (cJSON_IsString(node) && strcmp(node->valuestring, "cone") == 0)
+    int open = cJSON_IsString(node) && strcmp(node->valuestring, "unknown") == 0;
+    if (open || (cJSON_IsString(node) && strcmp(node->valuestring, "cone") == 0))
         put_number(r, k, 0, 1.0);
     else if (cJSON_IsString(node) && strcmp(node->valuestring, "paraboloid") == 0)
         put_number(r, k, 0, 2.0);
@@ -145,6 +147,7 @@ static status read_shape(const reader *r, const cJSON *node, const protocol_key 
         put_number(r, k, 0, node->valuedouble);
     else
         return reader_wrong_value(r, node, k);
+    r->p->link.shape_open = open;
     return ST_OK;
 }
 
@@ -317,8 +320,9 @@ static status read_group(const reader *r, const cJSON *object, const char *group
 
 /* What no single key can see. */
 static status check_whole(const reader *r) {
-    const protocol *p = r->p;
+    protocol *p = r->p;
     error inner = { ST_OK, "" };
+    if (isfinite(p->link.exponent_u)) p->link.shape_open = 0; /* a cone, that uncertain */
     if (p->pattern && pattern_check(p->pattern, &inner) != ST_OK)
         return fail(r->e, inner.code, "%s: name_pattern: %s", r->what, inner.text);
     if (isfinite(p->page) && fabs(p->page - round(p->page)) > 0.0)
@@ -332,6 +336,9 @@ static status check_whole(const reader *r) {
         return fail(r->e, ST_BAD_INPUT,
                     "%s: link.aspect_u stands without link.aspect; add the aspect ratio or take the "
                     "uncertainty out",
+                    r->what);
+    if (p->link.flat_top > 0.0 && p->link.tip_radius_nm > 0.0)
+        return fail(r->e, ST_BAD_INPUT, "%s: a tip is flat or round: give link.flat_top or link.tip_radius_nm, not both",
                     r->what);
     return ST_OK;
 }

@@ -21,6 +21,10 @@ static const char *level_word(int i) {
     static const char *const words[] = { "floor", "tips" };
     return pick(words, 2, i);
 }
+static const char *law_word(int i) {
+    static const char *const words[] = { "normal", "lognormal" };
+    return pick(words, 2, i);
+}
 static const char *mixing_word(int i) { return i >= 0 && i < MIXINGS ? mixing_name((mixing)i) : NULL; }
 static const char *model_word(int i) {
     static const char *const words[] = { "graded", "facets", "auto" }; /* optics_choice */
@@ -101,12 +105,19 @@ const protocol_key protocol_keys[] = {
     NUMBER("link", "height_nm_u", link.height_nm_u, "nm", 0, 1e5, "its standard uncertainty"),
     ABOVE("link", "aspect", link.aspect, "", 0, 100, "height / spacing where no height is given; null: 1.0 +- 0.3, assumed"),
     NUMBER("link", "aspect_u", link.aspect_u, "", 0, 100, "its standard uncertainty"),
-    { "link", "shape", KEY_SHAPE, AT(link.exponent), "", 0.05, 20, 0, NULL, 0, "feature shape: cone, paraboloid, or the exponent q of (1 - z/h)^(2/q)" },
-    NUMBER("link", "exponent_u", link.exponent_u, "", 0, 10, "standard uncertainty of that exponent; 0: the shape is known"),
+    { "link", "shape", KEY_SHAPE, AT(link.exponent), "", 0.05, 20, 0, NULL, 0, "feature shape: cone, paraboloid, or the exponent q of (1 - z/h)^(2/q), then taken as known; unknown: the value is the cone's, the interval holds everything from cone to paraboloid" },
+    NUMBER("link", "exponent_u", link.exponent_u, "", 0, 10, "standard uncertainty of the exponent (of the cone, where no shape is stated); null: none"),
+    NUMBER("link", "flat_top", link.flat_top, "", 0, 0.95, "share of a feature's foot that is flat at its top; the height is that of what stands there"),
+    NUMBER("link", "flat_top_u", link.flat_top_u, "", 0, 1, "its standard uncertainty"),
+    NUMBER("link", "tip_radius_nm", link.tip_radius_nm, "nm", 0, 1e4, "radius of a round tip; 0: as sharp as the shape"),
+    NUMBER("link", "tip_radius_nm_u", link.tip_radius_nm_u, "nm", 0, 1e4, "its standard uncertainty"),
     NUMBER("link", "height_spread", link.height_spread, "", 0, 1, "relative standard deviation of the heights of one sample"),
+    NUMBER("link", "height_spread_u", link.height_spread_u, "", 0, 1, "its standard uncertainty"),
+    WORD("link", "spread_law", link.lognormal, law_word, 0, "law of that spread"),
     NUMBER("link", "height_by_size", link.height_by_size, "", -5, 5, "power g by which heights follow cell diameters: h (d / d_mean)^g"),
     WORD("link", "level", link.level_at_tips, level_word, 0, "where features of unequal height are level: at the floor or at the tips"),
     NUMBER("link", "coverage", link.coverage, "", 0, 1, "solid share at the floor; below 1 there is flat ground between features"),
+    NUMBER("link", "coverage_u", link.coverage_u, "", 0, 1, "its standard uncertainty"),
     PATH("link", "calibration", calibration, "link file that sward fit saved: height from the spacing, and the shape; outranks the heights and the shape written here, relative to this file"),
     PATH("link", "profile", profile, "measured profile instead of height and shape: CSV with depth_nm and solid_fraction, relative to this file"),
 
@@ -213,7 +224,7 @@ void key_expected(const protocol_key *k, textbuf *out) {
         for (int i = 0; k->word(i); i++) text_addf(out, "%s \"%s\"", i ? "," : "", k->word(i));
         break;
     case KEY_SHAPE:
-        number_expected(k, "\"cone\", \"paraboloid\" or a number", out);
+        number_expected(k, "\"cone\", \"paraboloid\", \"unknown\" or a number", out);
         break;
     case KEY_BAND:
         number_expected(k, "[low, high], low below high, each", out);

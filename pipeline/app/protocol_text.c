@@ -19,8 +19,11 @@ static void canonical_key(const protocol *p, const protocol_key *k, textbuf *out
     case KEY_MATERIAL:
         text_add(out, material_is_path(key_text(p, k)) ? "file" : key_text(p, k));
         break;
-    case KEY_NUMBER:
     case KEY_SHAPE:
+        if (p->link.shape_open) text_add(out, "unknown ");
+        text_add(out, number_text(key_number(p, k), 17, number));
+        break;
+    case KEY_NUMBER:
         text_add(out, number_text(key_number(p, k), 17, number));
         break;
     case KEY_SWITCH:
@@ -91,7 +94,7 @@ static void json_value(const protocol *p, const protocol_key *k, textbuf *out) {
         json_number(out, key_number(p, k), 15);
         break;
     case KEY_SHAPE:
-        text_add(out, "\"cone\"");
+        text_add(out, "\"unknown\"");
         break;
     case KEY_SWITCH:
         text_add(out, key_index(p, k) ? "true" : "false");
@@ -225,7 +228,10 @@ static void explain_measuring(const protocol *p, textbuf *out) {
 
 static void explain_shape(const link_options *o, textbuf *out) {
     char number[NUMBER_TEXT];
-    if (fabs(o->exponent - 1.0) < 1e-12)
+    if (o->shape_open)
+        text_add(out, "The shape of the features is not stated: the value is that of cones, the interval holds everything "
+                      "from cones to paraboloids");
+    else if (fabs(o->exponent - 1.0) < 1e-12)
         text_add(out, "Features are cones");
     else if (fabs(o->exponent - 2.0) < 1e-12)
         text_add(out, "Features are paraboloids");
@@ -233,9 +239,19 @@ static void explain_shape(const link_options *o, textbuf *out) {
         text_addf(out, "Features have the solid share (1 - z/h)^(2/q) with q = %s",
                   number_text(o->exponent, 6, number));
     if (o->exponent_u > 0.0) text_addf(out, " (exponent +- %s)", number_text(o->exponent_u, 6, number));
+    if (o->flat_top > 0.0) {
+        text_add(out, ", flat at the top on ");
+        say(out, 100.0 * o->flat_top, "% of their foot (");
+        say(out, 100.0 * link_height_cut(o), "% of the full height cut off)");
+    }
+    if (o->tip_radius_nm > 0.0) {
+        text_add(out, ", their tips round with a radius of ");
+        say_with_u(out, o->tip_radius_nm, o->tip_radius_nm_u > 0.0 ? o->tip_radius_nm_u : MISSING, "nm");
+    }
     if (o->height_spread > 0.0) {
         text_add(out, ", their heights spread by ");
         say(out, 100.0 * o->height_spread, "%");
+        if (o->lognormal) text_add(out, " (log-normal)");
         text_add(out, o->level_at_tips ? ", level at the tips" : ", on one floor");
     }
     if (o->height_by_size > 0.0 || o->height_by_size < 0.0)

@@ -40,6 +40,7 @@ status calibrated_height(const calibration *c, quantity sheet, link_options *o, 
     int calibrated = c && c->n_samples > 0;
     if (calibrated) {
         o->exponent = c->exponent;
+        o->shape_open = 0;
         o->exponent_u = c->exponent_u;
         o->height_spread = c->height_spread;
         o->height_by_size = c->height_by_size;

@@ -66,14 +66,13 @@ status variant_spectrum(const surface_input *in, const optics_setup *o, const va
                         size_t *slabs, error *e) {
     profile made = { 0 };
     stack s = bare(o);
-    link_options l = in->link;
-    l.exponent = v->exponent;
-    l.level_at_tips = v->level_at_tips;
+    link_options l = v->link;
     s.mixing = v->mixing;
     s.coatings = o->coatings;
     s.n_coatings = o->n_coatings;
     s.profile = in->measured;
     if (!in->measured) {
+        l.tip_radius_nm = tip_radius_held(v->height_nm, cell_radius(v->spacing_nm, in->cell_area_nm2, in->n_cells), &l);
         status st = link_profile(v->height_nm, v->spacing_nm, in->cell_area_nm2, in->n_cells, in->pores, &l,
                                  o->coatings, o->n_coatings, &made, e);
         if (st != ST_OK) return st;
@@ -141,15 +140,20 @@ static void say_interval(textbuf *t, const surface_input *in, const optics_setup
     } else {
         text_add(t, "The interval holds the model's own error, the mixing rule");
         if (in->height_nm.u > 0.0) text_addf(t, ", the height (+- %s nm)", rough_text(in->height_nm.u, shown));
+        if (in->link.shape_open) text_add(t, ", the shape nobody stated (from the cone to the paraboloid)");
         if (in->link.exponent_u > 0.0) text_add(t, ", the shape");
+        if (in->link.flat_top_u > 0.0 || in->link.tip_radius_nm_u > 0.0) text_add(t, ", the tips");
+        if (in->link.coverage_u > 0.0) text_add(t, ", the coverage");
         if (in->link.height_spread > 0.0) text_add(t, ", level floor or level tips");
         text_add(t, ".");
         if (isnan(in->height_nm.u)) text_add(t, " The height's uncertainty is unknown and not in it.");
     }
     int far = o->reflect.hemispherical || o->reflect.angle_deg > 0.0 || o->n_coatings || in->pores ||
+              in->link.flat_top > 0.0 || in->link.tip_radius_nm > 0.0 || in->link.coverage < 1.0 ||
               strncmp(o->substrate->name ? o->substrate->name : "", "silicon", 7) != 0;
     if (far)
-        text_add(t, " The model's error was studied on bare silicon hillocks at normal incidence and is carried over.");
+        text_add(t, " The model's error was studied on bare silicon hillocks of cone to paraboloid shape at normal incidence "
+                    "and is carried over.");
 }
 
 static void say(prediction *out, const surface_input *in, const optics_setup *o, const route *r, int planar) {
@@ -189,7 +193,10 @@ static status check(const surface_input *in, const optics_setup *o, error *e) {
     if (isfinite(in->spacing_nm.value) && !(in->spacing_nm.value > 0.0))
         return fail(e, ST_BAD_INPUT, "spacing: found %s nm, expected a spacing above 0",
                     number_text(in->spacing_nm.value, 6, a));
-    return in->measured ? ST_OK : link_check(in->height_nm.value, &in->link, e);
+    if (in->measured) return ST_OK;
+    status st = link_check(in->height_nm.value, &in->link, e);
+    double radius = cell_radius(in->spacing_nm.value, in->cell_area_nm2, in->n_cells);
+    return st == ST_OK ? tip_check(in->height_nm.value, radius, &in->link, e) : st;
 }
 
 static status allocate(prediction *p, const grid *g, error *e) {
@@ -234,18 +241,17 @@ static void exact(prediction *p) {
     p->weighted_lo = p->weighted_hi = p->weighted;
 }
 
-static double texture_height(const surface_input *in) {
+variant variant_central(const surface_input *in, const optics_setup *o) {
     const profile *m = in->measured;
-    if (!m) return in->height_nm.value;
-    return m->n ? m->depth_nm[m->n - 1] - m->depth_nm[0] : 0.0;
+    double height = !m ? in->height_nm.value : m->n ? m->depth_nm[m->n - 1] - m->depth_nm[0] : 0.0;
+    return (variant){ .height_nm = height, .spacing_nm = in->spacing_nm.value, .link = in->link, .mixing = o->mixing };
 }
 
 status predict(const surface_input *in, const optics_setup *o, prediction *out, error *e) {
     *out = (prediction){ 0 };
     status st = check(in, o, e);
     if (st != ST_OK) return st;
-    variant v = { .height_nm = texture_height(in), .spacing_nm = in->spacing_nm.value, .exponent = in->link.exponent,
-                  .level_at_tips = in->link.level_at_tips, .mixing = o->mixing };
+    variant v = variant_central(in, o);
     prediction p = { .weighted = MISSING, .weighted_lo = MISSING, .weighted_hi = MISSING, .polished = MISSING,
                      .current_loss_mA_cm2 = MISSING, .coated = MISSING, .rear_escape = MISSING,
                      .model = "graded" };

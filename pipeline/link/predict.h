@@ -48,7 +48,7 @@ typedef struct {
     const char *model;             /* "graded", "facets", or "none" when refused */
     char note[960];                /* which model and why, what the interval holds, what is outside validity */
     /* budget of the weighted reflectance, standard uncertainties, absolute */
-    double u_height, u_shape, u_spread, u_mixing, u_model, model_bias;
+    double u_height, u_shape, u_tip, u_spread, u_coverage, u_spacing, u_mixing, u_model, model_bias;
     size_t slabs;
     int refused;                   /* 1: no model serves, the note says why */
 } prediction;

@@ -6,10 +6,11 @@
 
 /* The texture as predicted, or with one input moved. */
 typedef struct {
-    double height_nm, spacing_nm, exponent;
-    int level_at_tips;
+    double height_nm, spacing_nm;
+    link_options link; /* of the shape only */
     mixing mixing;
 } variant;
+variant variant_central(const surface_input *in, const optics_setup *o);
 
 /* An ascending grid from lo to hi, both included. */
 typedef struct {
@@ -68,8 +69,9 @@ double texture_angle_deg(const optics_setup *o);
 /* The model's error as the interval uses it: bias is graded minus true, res the standard uncertainty of what is left. */
 typedef struct {
     double bias, res, cap; /* weighted; the general recipe; no texture reflects more than cap */
+    double res_rule;       /* res without what drawing one of the two rules of mixing brings in */
     int studied;           /* 1: calculated case by case, see interval.c */
-    double *bias_at, *res_at, *cap_at; /* [grid n] the caller's */
+    double *bias_at, *res_at, *res_rule_at, *cap_at; /* [grid n] the caller's */
 } model_parts;
 
 /* Fills the interval and the budget of *out, whose spectrum and weighted value are there. `coarse`: grid of the
@@ -77,7 +79,10 @@ typedef struct {
 status interval_fill(const surface_input *in, const optics_setup *o, const variant *central, const grid *coarse,
                      prediction *out, model_parts *parts, error *e);
 
-/* Weighted truth of a variant whose graded index (2-D Bruggeman) gives b2d, and its standard uncertainty. */
-double interval_truth(const model_parts *m, const variant *v, double b2d, double *u);
+/* 1: the rule of mixing is an open question for this variant; 0: its error was calculated case by case. */
+int interval_rules_matter(const model_parts *m, const variant *v);
+/* Weighted truth of a variant whose graded index gives b2d with the 2-D Bruggeman rule and `rule` with the one that was
+ * drawn, and its standard uncertainty. drawn: 1 where rules are drawn at all. */
+double interval_truth(const model_parts *m, const variant *v, double b2d, double rule, int drawn, double *u);
 
 #endif

@@ -4,8 +4,8 @@
  * tip plane, the substrate then rising between them. Pores are the complement, mirrored in depth: widest at the
  * surface, mouths in one plane, or (level_at_tips) bottoms in one plane.
  * A conformal film is the dilation of the feature on the circle of the mean cell's area; film j is what dilation by
- * all films up to j covers beyond what lies under it. Steps (film on a free floor, rim of a pore) become two nodes at
- * one depth.
+ * all films up to j covers beyond what lies under it. Steps (film on a free floor, rim of a pore, flat tops) become two
+ * nodes at one depth.
  * Nodes: for one height u = t^k (k = q within 1..8) with so many steps that linear interpolation errs below 1e-7
  * (exponents 0.5 to 3), but no two nodes within 0.01 nm: within the first nm of blunter tips the error reaches 2e-5;
  * for many heights or films evenly spaced.
@@ -21,7 +21,7 @@ static const double FINEST_NM = 0.01; /* nodes nearer than this say nothing to l
 typedef struct {
     const height_classes *heights;
     const link_options *o;
-    double cell_radius_nm;
+    solid feature[HEIGHT_CLASSES]; /* of each class */
     double film_nm[LIMIT_COATINGS + 1]; /* cumulated from the innermost: 0, t_n, t_n + t_(n-1), ... */
     size_t n_films;
     int pores;
@@ -34,15 +34,14 @@ static double all_films(const texture_model *m) { return m->film_nm[m->n_films];
 static double covered(const texture_model *m, size_t k, double depth_nm, double eps_nm) {
     double sum = 0.0, top = all_films(m), deep = m->heights->tallest_nm;
     for (size_t i = 0; i < m->heights->n; i++) {
-        double h = m->heights->height_nm[i];
-        solid f = { h, m->cell_radius_nm, m->o->exponent, m->o->coverage };
+        const solid *f = &m->feature[i];
         double share;
         if (m->pores) {
-            double x = depth_nm + eps_nm - top - (m->o->level_at_tips ? deep - h : 0.0);
-            share = coated_pore_share(&f, m->film_nm[k], x);
+            double x = depth_nm + eps_nm - top - (m->o->level_at_tips ? deep - f->height_nm : 0.0);
+            share = coated_pore_share(f, m->film_nm[k], x);
         } else {
-            double y = (m->o->level_at_tips ? h : deep) + top - depth_nm - eps_nm;
-            share = coated_share(&f, m->film_nm[k], y);
+            double y = (m->o->level_at_tips ? f->height_nm : deep) + top - depth_nm - eps_nm;
+            share = coated_share(f, m->film_nm[k], y);
         }
         sum += m->heights->weight[i] * share;
     }
@@ -84,20 +83,27 @@ static void mirror(profile *p, double height_nm) {
     }
 }
 
+/* A round tip in even steps, then the flank on nodes graded from the family's own tip. */
 static status closed_form(const texture_model *m, profile *p, error *e) {
-    double power, h = m->heights->tallest_nm, last = 0.0;
-    size_t kept = 0, n = graded_nodes(m->o->exponent, &power);
-    status st = allocate(p, n, 0, e);
+    enum { CAP_STEPS = 512 };
+    const solid *f = &m->feature[0];
+    double power, h = f->height_nm, full = h + f->apex_nm, last = 0.0;
+    size_t kept = 0, n = graded_nodes(f->exponent, &power), cap = f->cap_depth_nm > 0.0 ? CAP_STEPS : 0;
+    double start = pow((f->apex_nm + f->cap_depth_nm) / full, 1.0 / power);
+    status st = allocate(p, n + cap, 0, e);
     if (st != ST_OK) return st;
-    for (size_t i = 0; i < n; i++) {
-        double u = pow((double)i / (double)(n - 1), power); /* depth below the tip */
-        double share = m->o->coverage * shape_share(u, m->o->exponent);
-        if (i && i + 1 < n && h * u - last < FINEST_NM) continue;
-        last = h * u;
-        p->depth_nm[kept] = last;
-        p->solid[kept++] = share;
+    for (size_t i = 0; i < n + cap; i++) {
+        double depth = f->cap_depth_nm * (double)i / CAP_STEPS;
+        if (i >= cap) {
+            double at = start + (1.0 - start) * (double)(i - cap) / (double)(n - 1);
+            depth = i + 1 < n + cap ? full * pow(at, power) - f->apex_nm : h;
+        }
+        if (i == 0) depth = 0.0;
+        else if (i + 1 < n + cap && depth - last < FINEST_NM) continue;
+        last = depth;
+        p->depth_nm[kept] = depth;
+        p->solid[kept++] = solid_share(f, depth);
     }
-    p->depth_nm[kept - 1] = h;
     p->n = kept;
     if (m->pores) mirror(p, h);
     return ST_OK;
@@ -105,14 +111,15 @@ static status closed_form(const texture_model *m, profile *p, error *e) {
 
 /* ---- many heights or films: even nodes and the steps ---- */
 
-/* Depths at which a share jumps for all features together. */
+/* Depths at which a share jumps for all features together: film on a free floor, rims, flat tops and bottoms. */
 static size_t step_depths(const texture_model *m, double *at) {
     size_t n = 0;
-    double total = m->heights->tallest_nm + all_films(m);
-    int together = !m->o->level_at_tips || m->heights->n == 1;
-    if (!together) return 0;
-    for (size_t k = m->pores ? 0 : 1; k <= m->n_films; k++)
-        at[n++] = m->pores ? all_films(m) - m->film_nm[k] : total - m->film_nm[k];
+    double top = all_films(m), total = m->heights->tallest_nm + top;
+    int one = m->heights->n == 1, flat = m->o->flat_top > 0.0;
+    int floors = one || !m->o->level_at_tips, tops = flat && (one || m->o->level_at_tips);
+    int above = m->pores ? floors : tops, below = m->pores ? tops : floors;
+    for (size_t k = 0; above && k <= m->n_films; k++) at[n++] = top - m->film_nm[k];
+    for (size_t k = 1; below && k <= m->n_films; k++) at[n++] = total - m->film_nm[k];
     return n;
 }
 
@@ -133,7 +140,7 @@ static int ascending(const void *a, const void *b) {
 }
 
 static status summed(const texture_model *m, profile *p, error *e) {
-    enum { STEPS_MAX = LIMIT_COATINGS + 1 };
+    enum { STEPS_MAX = 2 * (LIMIT_COATINGS + 1) };
     double steps[STEPS_MAX], total = m->heights->tallest_nm + all_films(m);
     size_t n_steps = step_depths(m, steps), even = m->n_films ? (m->heights->n > 1 ? 384 : 1024) : 1024;
     status st = allocate(p, even + 1 + 2 * n_steps, m->n_films, e);
@@ -165,13 +172,6 @@ static status check_coatings(const layer *c, size_t n, error *e) {
     return ST_OK;
 }
 
-static double mean_cell_nm2(double spacing_nm, const double *area, size_t n) {
-    if (!area || !n) return sqrt(3.0) / 2.0 * spacing_nm * spacing_nm;
-    double sum = 0.0;
-    for (size_t i = 0; i < n; i++) sum += area[i];
-    return sum / (double)n;
-}
-
 status link_profile(double height_nm, double spacing_nm, const double *cell_area_nm2, size_t n_cells, int pores,
                     const link_options *o, const layer *coatings, size_t n_coatings, profile *p, error *e) {
     height_classes heights;
@@ -186,11 +186,19 @@ status link_profile(double height_nm, double spacing_nm, const double *cell_area
     texture_model m = { .heights = &heights, .o = o, .n_films = n_coatings, .pores = pores != 0 };
     for (size_t k = 0; k < n_coatings; k++)
         m.film_nm[k + 1] = m.film_nm[k] + coatings[n_coatings - 1 - k].thickness_nm;
-    m.cell_radius_nm = sqrt(mean_cell_nm2(spacing_nm, cell_area_nm2, n_cells) / PI);
-    if (n_coatings && !(m.cell_radius_nm > 0.0))
+    double cell_radius_nm = cell_radius(spacing_nm, cell_area_nm2, n_cells);
+    if (n_coatings && !(cell_radius_nm > 0.0))
         return fail(e, ST_BAD_INPUT, "a conformal coating needs the spacing of the features, and none is known; give "
                                      "a spacing");
-    st = heights.n == 1 && !n_coatings ? closed_form(&m, &made, e) : summed(&m, &made, e);
+    st = tip_check(height_nm, cell_radius_nm, o, e);
+    if (st != ST_OK) return st;
+    if (!(cell_radius_nm > 0.0)) cell_radius_nm = 1.0; /* without film and tip radius shares do not depend on it */
+    for (size_t i = 0; i < heights.n; i++) m.feature[i] = solid_make(heights.height_nm[i], cell_radius_nm, o, NULL);
+    share_table table;
+    int plain = heights.n == 1 && !n_coatings, tabled = !plain && fabs(o->exponent - 1.0) >= 1e-12;
+    if (tabled && share_table_make(o->exponent, &table))
+        for (size_t i = 0; i < heights.n; i++) m.feature[i].table = &table;
+    st = plain ? closed_form(&m, &made, e) : summed(&m, &made, e);
     if (st != ST_OK) {
         profile_free(&made);
         return st;

@@ -56,7 +56,9 @@ static void texture_budget(const sample_row *s, const cJSON *budget, textbuf *ou
 static void prediction_budget(const sample_row *s, const cJSON *prediction, textbuf *out) {
     static const char *const part[][2] = {
         { "u_height", "height" },           { "u_shape", "shape" },
-        { "u_spread", "spread of heights" }, { "u_mixing", "mixing rule" },
+        { "u_tip", "flat or round tips" },  { "u_coverage", "coverage of the floor" },
+        { "u_spread", "spread of heights" }, { "u_spacing", "spacing" },
+        { "u_mixing", "mixing rule" },
         { "u_model", "model (graded index against rigorous)" }, { "model_bias", "known bias of the model (signed)" },
     };
     const cJSON *note = member(prediction, "note");

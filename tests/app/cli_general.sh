@@ -25,7 +25,7 @@ says "$err" "unknown command 'mesure', did you mean 'measure'?"
 run 2 predict --spacng 350 --height 300
 says "$err" "unknown option '--spacng', did you mean '--spacing'?"
 run 2 predict --spacing
-run 0 predict --spac 350 --height 300 # an abbreviation that fits one option
+run 0 predict --spacing 350 --hemis --height 300 # an abbreviation that fits one option
 run 0 predict --spacing 350 --height=300
 
 # What could not be written is no success.
@@ -65,6 +65,6 @@ done
 if command -v bash >/dev/null 2>&1; then
     checks=$((checks + 1))
     got=$(bash -c '. "$1"; COMP_WORDS=(sward predict --heig); COMP_CWORD=2; _sward; echo "${COMPREPLY[*]}"' - "$work/completion")
-    [ "$got" = "--height --height-u --height-spread" ] || miss "completion of --heig gave: $got"
+    [ "$got" = "--height --height-u --height-spread --height-spread-u" ] || miss "completion of --heig gave: $got"
 fi
 cli_done

@@ -39,7 +39,9 @@ run 0 predict --spacing 300 --height 300 --json
 cp "$out" "$work/plain.json"
 for option in "--shape paraboloid" "--shape 1.5" "--height-spread 0.2" "--coverage 0.8" "--mixing looyenga" "--coating alumina:10" \
     "--substrate silicon-schinke-2015" "--ambient laminate" "--ambient 1.33" "--angle 40" "--angle 40 --polarization s" \
-    "--hemispherical" "--band 350:1100" "--pores" "--height-u 40" "--height 310" "--spacing 310"; do
+    "--hemispherical" "--band 350:1100" "--pores" "--height-u 40" "--height 310" "--spacing 310" "--spacing-u 20" "--shape unknown" "--shape-u 0.3" "--flat-top 0.1" \
+    "--flat-top-u 0.1" "--tip-radius 20" "--tip-radius-u 20" "--coverage-u 0.1" "--height-spread 0.2 --level tips" "--height-spread-u 0.1" \
+    "--height-spread 0.2 --spread-law lognormal"; do
     # shellcheck disable=SC2086
     run 0 predict --spacing 300 --height 300 $option --json
     checks=$((checks + 1)); ! cmp -s "$out" "$work/plain.json" || miss "$option changes nothing"
@@ -50,6 +52,24 @@ printf '{ "link": { "height_nm": 300, "exponent_u": 0 } }' >"$work/p.json"
 run 0 predict --protocol "$work/p.json" --spacing 300 --json
 near weighted_reflectance 0.0183 5e-5
 
+# A cut cone: radius from 0.5 to 1 of the foot's, so half of the full height is gone; its area by hand (frustum and top).
+run 0 predict --spacing 300 --height 300 --flat-top 0.25 --json
+says "$out" '"shape": {"stated": true, "exponent": 1, "flat_top": 0.25, "height_cut": 0.5, "tip_radius_nm": 0'
+near area_ratio "$(awk 'BEGIN { a = 300 * sqrt(sqrt(3) / 2 / 3.14159265358979); print 1.5 * sqrt(300 ^ 2 + (a / 2) ^ 2) / a + 0.25 }')" 1e-3
+run 0 predict --spacing 300 --height 300 --tip-radius 20 --coverage 0.9
+says "$out" "tips round with a radius of 20 nm"
+run 2 predict --spacing 300 --height 300 --tip-radius 20 --flat-top 0.1
+says "$err" "flat or round"
+run 2 predict --spacing 300 --height 300 --tip-radius 200
+says "$err" "leaves no flank on features 300 nm tall"
+# A protocol that states the shape knows it; one that does not leaves it open.
+printf '{ "link": { "height_nm": 300, "height_nm_u": 0, "shape": "cone" } }' >"$work/cone.json"
+printf '{ "link": { "height_nm": 300, "height_nm_u": 0 } }' >"$work/open.json"
+run 0 predict --protocol "$work/cone.json" --spacing 250 --json
+says "$out" '"budget": {"height": 0, "shape": 0,' '"stated": true'
+run 0 predict --protocol "$work/open.json" --spacing 250 --json
+says "$out" '"stated": false' "nobody stated"
+checks=$((checks + 1)); ! grep -q '"budget": {"height": 0, "shape": 0,' "$out" || miss "an open shape must count"
 run 0 predict --spacing 300 --height 300
 says "$out" "1.83" "34.98" "10.0" "0.8505 mA/cm2" "aspect 1"
 run 0 predict --spacing 300 --height 300 --csv
@@ -127,6 +147,13 @@ run 2 predict --spacing 300 --height 350 --trials --seed 1.5
 run 2 predict --spacing 300 --height 0 --trials
 says "$err" "--trials: no trials: the surface is planar"
 run 2 predict --spacing 300 --height 350 --trials --csv
+run 0 predict --spacing 300 --height 350 --shape unknown --coating nitride:20 --trials --tolerance 0.004 --json
+says "$out" '{"input": "mixing", "sd": ' '{"input": "coverage", "sd": 0}' '"tolerance": 0.00'
+run 2 predict --spacing 300 --height 350 --trials --tolerance 2
+says "$err" "--tolerance: found 2, expected"
+run 2 predict --spacing 300 --height 350 --tolerance 0.01
+says "$err" "--tolerance: it needs --trials"
+
 
 # Micrometre pyramids go by geometric optics: two bounces leave 0.12703 of bare silicon, 0.02262 under the nitride (Campbell, Green
 # 1987 for the geometry, Green 2008 for silicon); the ninth that meets a third facet lowers both a little.

@@ -129,7 +129,7 @@ static void names_each_mistake(void) {
     fails_with("{ \"link\": { \"coverage\": 1.01 } }",
                "link.coverage: found 1.01, expected a number from 0 to 1");
     fails_with("{ \"link\": { \"shape\": \"pyramid\" } }",
-               "expected \"cone\", \"paraboloid\" or a number from 0.05 to 20");
+               "expected \"cone\", \"paraboloid\", \"unknown\" or a number from 0.05 to 20");
     fails_with("{ \"link\": [] }", "link: found [], expected an object in braces");
     fails_with("{ \"link\": { \"height_nm_u\": 30 } }", "height_nm_u stands without link.height_nm");
     fails_with("{ \"link\": { \"aspect_u\": 0.3 } }", "aspect_u stands without link.aspect");
@@ -246,6 +246,45 @@ static void explains(void) {
     protocol_free(&p);
 }
 
+/* A stated shape is known, an uncertainty makes it uncertain, nothing leaves it open, and so does the word for it. */
+static void shapes(void) {
+    static const struct { const char *text; double exponent, u; int open; } cases[] = {
+        { "{}", 1.0, (double)NAN, 1 },
+        { "{ \"link\": { \"shape\": \"unknown\" } }", 1.0, (double)NAN, 1 },
+        { "{ \"link\": { \"shape\": \"cone\" } }", 1.0, (double)NAN, 0 },
+        { "{ \"link\": { \"shape\": 1.5 } }", 1.5, (double)NAN, 0 },
+        { "{ \"link\": { \"shape\": \"paraboloid\", \"exponent_u\": 0.2 } }", 2.0, 0.2, 0 },
+        { "{ \"link\": { \"exponent_u\": 0.3 } }", 1.0, 0.3, 0 },
+        { "{ \"link\": { \"exponent_u\": 0, \"shape\": \"unknown\" } }", 1.0, 0.0, 0 },
+    };
+    error e = { ST_OK, "" };
+    textbuf first = { 0 };
+    for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
+        protocol p = { 0 };
+        textbuf t = { 0 };
+        CHECK(parse(cases[i].text, &p, &e) == ST_OK);
+        CHECK_NEAR(p.link.exponent, cases[i].exponent, 0.0);
+        CHECK(p.link.shape_open == cases[i].open && isnan(p.link.exponent_u) == isnan(cases[i].u));
+        protocol_full_text(&p, i ? &t : &first); /* fingerprints tell the known cone from the open shape */
+        if (i) CHECK(!strcmp(t.s, first.s) == (i == 1));
+        text_free(&t);
+        protocol_free(&p);
+    }
+    text_free(&first);
+    protocol p = { 0 };
+    textbuf t = { 0 };
+    CHECK(parse("{ \"link\": { \"flat_top\": 0.25, \"height_spread\": 0.2, \"spread_law\": \"lognormal\", "
+                "\"coverage\": 0.9, \"coverage_u\": 0.03 } }", &p, &e) == ST_OK);
+    CHECK(p.link.lognormal == 1);
+    protocol_explain(&p, &t);
+    CHECK(strstr(t.s, "flat at the top on 25 % of their foot (50 % of the full height cut off)") && strstr(t.s, "log-normal") &&
+          strstr(t.s, "not stated"));
+    text_free(&t);
+    protocol_free(&p);
+    CHECK_FAILS(parse("{ \"link\": { \"flat_top\": 0.1, \"tip_radius_nm\": 10 } }", &p, &e), ST_BAD_INPUT, e,
+                "a tip is flat or round");
+}
+
 static void options(void) {
     protocol p = { 0 };
     error e = { ST_OK, "" };
@@ -306,6 +345,7 @@ int main(void) {
     fingerprint("{}", "{ \"targets\": { \"spacing_nm\": { \"max\": 300 } } }", 1, 0);
     fingerprint("{}", "{ \"optics\": { \"coatings\": [ { \"material\": 2, \"thickness_nm\": 3 } ] } }", 1, 0);
     explains();
+    shapes();
     options();
     CHECK_FAILS(protocol_read("no/such/protocol.json", &p, &e), ST_BAD_INPUT, e, "no/such/protocol.json");
     return check_done();

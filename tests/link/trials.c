@@ -99,6 +99,87 @@ static void budget(void) {
     distribution_free(&all);
 }
 
+/* Alternatives: two or three values with equal chances, so that sd and interval are known from predictions alone. */
+static void alternatives(void) {
+    optics_setup o = setup();
+    surface_input in = cones(200.0, 0.0, 250.0);
+    error e = { 0 };
+    double at[3], mean = 0.0, square = 0.0;
+    for (int i = 0; i < SHAPE_ALTERNATIVES; i++) {
+        prediction p = { 0 };
+        in.link.exponent = shape_alternatives[i];
+        CHECK(predict(&in, &o, &p, &e) == ST_OK);
+        at[i] = p.weighted - p.model_bias;
+        mean += at[i] / 3.0;
+        prediction_free(&p);
+    }
+    for (int i = 0; i < 3; i++) square += (at[i] - mean) * (at[i] - mean) / 3.0;
+    in.link.exponent = 1.0;
+    in.link.shape_open = 1;
+    distribution d = ask(&in, &o, 3);
+    CHECK_NEAR(d.sd_of[INPUT_SHAPE], sqrt(square), 0.03 * sqrt(square));
+    CHECK_NEAR(d.mean, mean, 1e-3);
+    CHECK(d.varied[INPUT_SHAPE] && !d.varied[INPUT_MIXING] && !d.varied[INPUT_HEIGHT]);
+    prediction p = { 0 };
+    CHECK(predict(&in, &o, &p, &e) == ST_OK);
+    double low = fmin(at[0], fmin(at[1], at[2])), high = fmax(at[0], fmax(at[1], at[2]));
+    CHECK(p.weighted_lo <= low && p.weighted_hi >= high && strstr(p.note, "nobody stated"));
+    CHECK_NEAR(p.u_shape, (high - low) / sqrt(12.0), 0.3 * p.u_shape); /* of the plain values: about the same */
+    prediction_free(&p);
+    distribution_free(&d);
+    /* Under a film nothing was calculated case by case: the rule of mixing is a coin. */
+    layer film = { &nitride, 20.0 };
+    o.coatings = &film;
+    o.n_coatings = 1;
+    in = cones(300.0, 0.0, 300.0);
+    d = ask(&in, &o, 5);
+    CHECK(predict(&in, &o, &p, &e) == ST_OK);
+    CHECK(d.varied[INPUT_MIXING] && p.u_mixing > 1e-4);
+    CHECK_NEAR(d.sd_of[INPUT_MIXING], 0.5 * p.u_mixing, 0.03 * p.u_mixing); /* two values, half their difference */
+    prediction_free(&p);
+    distribution_free(&d);
+}
+
+/* Coverage, tips, spread and a spacing that matters: each is drawn, held in its range, and by the slope where it is small. */
+static void numbers(void) {
+    optics_setup o = setup();
+    surface_input in = cones(300.0, 0.0, 300.0), low, high;
+    error e = { 0 };
+    prediction a = { 0 }, b = { 0 };
+    in.link.coverage = 0.8;
+    in.link.coverage_u = 0.01;
+    distribution d = ask(&in, &o, 2);
+    low = high = in;
+    low.link.coverage = 0.79;
+    high.link.coverage = 0.81;
+    CHECK(predict(&low, &o, &a, &e) == ST_OK && predict(&high, &o, &b, &e) == ST_OK);
+    CHECK_NEAR(d.sd_of[INPUT_COVERAGE], 0.5 * 0.9867 * fabs(a.weighted - b.weighted), 0.05 * d.sd_of[INPUT_COVERAGE]);
+    prediction_free(&a);
+    CHECK(predict(&in, &o, &a, &e) == ST_OK);
+    CHECK_NEAR(a.u_coverage, 0.5 * fabs(a.weighted - b.weighted) * 2.0, 0.1 * a.u_coverage);
+    prediction_free(&a);
+    prediction_free(&b);
+    distribution_free(&d);
+    in = cones(250.0, 0.0, 300.0);
+    in.link.flat_top_u = in.link.coverage_u = 0.05;
+    d = ask(&in, &o, 2);
+    CHECK(d.sd_of[INPUT_TIP] > 1e-4 && d.sd_of[INPUT_COVERAGE] > 1e-5 && d.varied[INPUT_TIP] && !d.varied[INPUT_LEVEL]);
+    distribution_free(&d);
+    in = cones(250.0, 0.0, 300.0);
+    in.link.height_spread = 0.1;
+    in.link.height_spread_u = 0.05;
+    d = ask(&in, &o, 2);
+    CHECK(d.sd_of[INPUT_SPREAD] > 1e-6 && d.varied[INPUT_LEVEL] && d.varied[INPUT_SPREAD]);
+    distribution_free(&d);
+    in = cones(250.0, 0.0, 300.0);
+    in.link.tip_radius_nm = 15.0;
+    in.link.tip_radius_nm_u = 5.0;
+    in.spacing_nm.u = 20.0;
+    d = ask(&in, &o, 2);
+    CHECK(d.sd_of[INPUT_TIP] > 1e-4 && d.sd_of[INPUT_SPACING] > 1e-5);
+    distribution_free(&d);
+}
+
 static void refusals(void) {
     optics_setup o = setup();
     trial_options t = trial_defaults();
@@ -140,6 +221,8 @@ int main(void) {
     model_only();
     linear();
     budget();
+    alternatives();
+    numbers();
     refusals();
     material_free(&silicon);
     material_free(&nitride);
