@@ -1,5 +1,4 @@
 /* `sward history`: the ledger, one row per sample and run, in the order of the etches, and what can be asked of it. */
-#include <cjson/cJSON.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -7,22 +6,22 @@
 
 #include "app/command.h"
 #include "app/history_verbs.h"
-#include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
-#include "io/column.h"
 #include "io/file.h"
 #include "io/json.h"
 
 #define DEFAULT_LEDGER "sward-out/history.sqlite"
 enum { OPT_HISTORY = 1, OPT_SINCE, OPT_LOT, OPT_JSON, OPT_CSV, OPT_RULES, OPT_BASELINE, OPT_CENTRE, OPT_SIGMA, OPT_SUBGROUPS, OPT_MIN, OPT_MAX,
-       OPT_TARGET, OPT_REASON, OPT_BY, OPT_AT, OPT_TEXT, OPT_KIND, OPT_FOLDER, OPT_PHASE, OPT_FROM, OPT_TO, OPT_VALUE };
+       OPT_TARGET, OPT_REASON, OPT_BY, OPT_AT, OPT_TEXT, OPT_KIND, OPT_FOLDER, OPT_PHASE, OPT_FROM, OPT_TO, OPT_VALUE, OPT_UNTIL, OPT_PROTOCOL, OPT_BEFORE, OPT_SUPERSEDED, OPT_YES };
 
 /* clang-format off */
 static const struct argp_option history_options[] = {
     { "history",   OPT_HISTORY,   "FILE", 0, "the ledger (default: " DEFAULT_LEDGER ")", 0 },
     { "since",     OPT_SINCE,     "T",    0, "only etches at or after this time (ISO 8601)", 0 },
+    { "until",     OPT_UNTIL,     "T",    0, "only etches up to this time", 0 },
     { "lot",       OPT_LOT,       "L",    0, "only this lot", 0 },
+    { "protocol",  OPT_PROTOCOL,  "P",    0, "only rows of this protocol, by its name or the beginning of its digest; import: the name for the rows", 0 },
     { "json",      OPT_JSON,      NULL,   0, "JSON; the list: rows as in samples.csv with run_at and excluded", 0 },
     { "csv",       OPT_CSV,       NULL,   0, "the list as CSV", 0 },
     { "rules",     OPT_RULES,     "LIST", 0, "chart: pattern tests, joined by commas: zone (default, with spread), iso, nelson, limits, none, or beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8; spread and ewma are charts of their own", 0 },
@@ -37,18 +36,22 @@ static const struct argp_option history_options[] = {
     { "max",       OPT_MAX,       "V",    0, "chart: largest value of the target, for capability", 0 },
     { "target",    OPT_TARGET,    "V",    0, "setting: the value to reach", 0 },
     { "value",     OPT_VALUE,     "V",    0, "setting: a setting, to say what is expected there", 0 },
-    { "reason",    OPT_REASON,    "TEXT", 0, "exclude, include: why", 0 },
-    { "by",        OPT_BY,        "INITIALS", 0, "exclude, include, note: who", 0 },
+    { "reason",    OPT_REASON,    "TEXT", 0, "exclude, include, prune: why", 0 },
+    { "by",        OPT_BY,        "INITIALS", 0, "exclude, include, prune, note: who", 0 },
     { "at",        OPT_AT,        "TIME", 0, "note: when it happened; exclude, include: the time of etching, where a sample has several", 0 },
     { "text",      OPT_TEXT,      "TEXT", 0, "note: what happened", 0 },
     { "kind",      OPT_KIND,      "KIND", 0, "note: change (default; starts a new phase of every chart) or remark", 0 },
     { "folder",    OPT_FOLDER,    "DIR",  0, "verify: where the micrographs are now (default: where they were)", 0 },
+    { "before",    OPT_BEFORE,    "T",    0, "prune: rows of etches before this time", 0 },
+    { "superseded", OPT_SUPERSEDED, NULL, 0, "prune: rows of which a newer run of the same etch exists", 0 },
+    { "yes",       OPT_YES,       NULL,   0, "prune: delete; without it only says what would go", 0 },
     { 0 } };
 /* clang-format on */
 
 typedef struct {
     const char *path, *since, *lot, *rules;
-    const char *reason, *by, *at, *text, *kind, *folder, *from, *to;
+    const char *reason, *by, *at, *text, *kind, *folder, *from, *to, *until, *protocol, *before;
+    int superseded, yes;
     const char *words[4]; /* the verb and what follows */
     size_t n_words;
     history_question ask;
@@ -106,6 +109,11 @@ static error_t history_option(int key, char *arg, struct argp_state *state) {
     case OPT_FOLDER: q->folder = arg; break;
     case OPT_PHASE: q->ask.control.phase_by = arg; break;
     case OPT_FROM: q->from = arg; break;
+    case OPT_UNTIL: q->until = arg; break;
+    case OPT_PROTOCOL: q->protocol = arg; break;
+    case OPT_BEFORE: q->before = arg; break;
+    case OPT_SUPERSEDED: q->superseded = 1; break;
+    case OPT_YES: q->yes = 1; break;
     case OPT_TO: q->to = arg; break;
     case OPT_JSON:
         q->json = 1;
@@ -138,151 +146,24 @@ static error_t history_option(int key, char *arg, struct argp_state *state) {
 const struct argp history_argp = {
     history_options,
     history_option,
-    "\nchart QUANTITY\nchange A B [QUANTITY]\nsetting COLUMN [QUANTITY]\nexclude SAMPLE\ninclude SAMPLE\nnote\nnotes\nverify DIR",
+    "\nchart QUANTITY\nchange A B [QUANTITY]\nsetting COLUMN [QUANTITY]\nexclude SAMPLE\ninclude SAMPLE\nnote\nnotes\nverify [DIR]\n"
+    "differences [QUANTITY]\nimport FILE.csv\nprune",
     "The ledger of every sample measured so far, one row per sample and run. Without a verb: the list.\v"
     "chart draws the control chart of a column of samples.csv over the etches: limits from the first etches of each phase, "
-    "alarms in words, drift per etch and per day, and Ppk when the target is named. A note of kind change and another value of "
-    "the sheet's column recipe start a new phase. change compares two lots or recipes (Welch): is the difference real? setting "
-    "puts a straight line through a numeric column of the sheet and says which setting brings the quantity to --target, never "
-    "outside the data. exclude takes an etch out of all of these with a reason and initials, include takes it back; nothing is "
-    "ever deleted. note records what happened to the process, notes lists it. verify computes the digests of the micrographs "
-    "behind the results in DIR again and exits 3 when one is gone or differs. QUANTITY is spacing_nm where not said.",
+    "what stands out, steps and drifts in words, alarms with the rate of false ones, and Ppk when the target is named. A note of kind change and another value of "
+    "the sheet's column recipe (--phase) start a new phase. change compares two lots or recipes (Welch): is the difference real? setting "
+    "puts a straight line through a numeric column of the sheet and says which setting brings the quantity to --target, and what "
+    "is expected at --value, never outside the data. Both count etches, not positions. exclude takes an etch out of all of these with a reason and initials, include takes it back. "
+    "note records what happened to the process, notes lists it. verify computes the digests of the micrographs "
+    "behind the ledger, or behind the results in DIR, again and exits 3 when one is gone or differs. differences lists what the last run of an etch changed "
+    "against the one before it: another protocol supersedes and keeps the old. import adds rows of a CSV with the columns of samples.csv, marked as imported. prune deletes rows, only "
+    "by criteria and with --yes; nothing else ever does. QUANTITY is spacing_nm where not said.\n"
+    "Several programs may write at once. On a network share this rests on the locks of that share: where they are not kept, "
+    "let one machine write and the others read, or keep the ledger on a local disk.",
     NULL,
     NULL,
     NULL
 };
-
-/* The rows as a table: every key of any row_json is a column, in the order of first appearance, run_at and
- * excluded behind etched_at. Used for CSV only; JSON passes the stored objects through. */
-typedef struct {
-    char **names; /* [n], room for more */
-    size_t n, room;
-} name_list;
-
-typedef struct {
-    const char **cells; /* [n columns], NULL where the row lacks it */
-    cJSON *object;      /* owns the text */
-    char *numbers;      /* [n columns][NUMBER_TEXT] */
-} csv_row;
-
-static size_t name_index(const name_list *l, const char *name) {
-    size_t i = 0;
-    while (i < l->n && strcmp(l->names[i], name) != 0) i++;
-    return i;
-}
-
-static status name_add(name_list *l, const char *name, error *e) {
-    if (name_index(l, name) < l->n) return ST_OK;
-    if (l->n == l->room) {
-        char **grown = mem_grow(l->names, l->room + 64, sizeof *grown);
-        if (!grown) return NO_MEMORY(e, "the history");
-        l->names = grown;
-        l->room += 64;
-    }
-    l->names[l->n] = mem_text(name);
-    return l->names[l->n++] ? ST_OK : NO_MEMORY(e, "the history");
-}
-
-static status collect(const history_list *l, csv_row *rows, name_list *names, error *e) {
-    status st = name_add(names, "sample", e);
-    if (st == ST_OK) st = name_add(names, "etched_at", e);
-    if (st == ST_OK) st = name_add(names, "run_at", e);
-    if (st == ST_OK) st = name_add(names, "excluded", e);
-    for (size_t i = 0; i < l->n && st == ST_OK; i++) {
-        const cJSON *child;
-        rows[i].object = cJSON_Parse(l->rows[i].row_json);
-        if (!rows[i].object)
-            return fail(e, ST_IO, "the ledger holds a damaged row of the sample '%s'", l->rows[i].sample);
-        cJSON_ArrayForEach(child, rows[i].object) if (st == ST_OK) st = name_add(names, child->string, e);
-    }
-    return st;
-}
-
-static status fill(const history_row *r, const name_list *names, csv_row *row, error *e) {
-    const cJSON *child;
-    row->cells = mem_array(names->n, sizeof *row->cells);
-    row->numbers = mem_array(names->n, NUMBER_TEXT);
-    if (!row->cells || !row->numbers) return NO_MEMORY(e, "the history");
-    cJSON_ArrayForEach(child, row->object) {
-        size_t k = name_index(names, child->string);
-        if (cJSON_IsString(child))
-            row->cells[k] = child->valuestring;
-        else if (cJSON_IsNumber(child))
-            row->cells[k] = number_text(child->valuedouble, 15, row->numbers + k * NUMBER_TEXT);
-    }
-    row->cells[name_index(names, "sample")] = r->sample;
-    row->cells[name_index(names, "etched_at")] = r->etched_at;
-    row->cells[name_index(names, "run_at")] = r->run_at;
-    row->cells[name_index(names, "excluded")] = r->excluded;
-    return ST_OK;
-}
-
-static const char *csv_cell_of(const void *row, size_t k) { return ((const csv_row *)row)->cells[k]; }
-
-static status print_csv(const history_list *l, textbuf *out, error *e) {
-    name_list names = { 0 };
-    csv_row *rows = mem_array(l->n, sizeof *rows);
-    status st = rows ? collect(l, rows, &names, e) : NO_MEMORY(e, "the history");
-    for (size_t i = 0; i < l->n && st == ST_OK; i++) st = fill(&l->rows[i], &names, &rows[i], e);
-    if (st == ST_OK) {
-        table_view view = { NULL,    0,          rows, l->n, sizeof *rows, (const char *const *)names.names,
-                            names.n, csv_cell_of };
-        table_to_csv(&view, out);
-    }
-    for (size_t i = 0; rows && i < l->n; i++) {
-        cJSON_Delete(rows[i].object);
-        free(rows[i].cells);
-        free(rows[i].numbers);
-    }
-    for (size_t k = 0; k < names.n; k++) free(names.names[k]);
-    free(names.names);
-    free(rows);
-    return st;
-}
-
-/* The stored objects, byte for byte, with run_at and excluded in front. */
-static void print_json(const history_list *l, textbuf *out) {
-    text_add(out, "[");
-    for (size_t i = 0; i < l->n; i++) {
-        const char *body = l->rows[i].row_json + strspn(l->rows[i].row_json, " \t\r\n");
-        text_addf(out, "%s{\"run_at\": ", i ? ",\n  " : "\n  ");
-        json_string(out, l->rows[i].run_at);
-        text_add(out, ", \"excluded\": ");
-        json_string(out, l->rows[i].excluded[0] ? l->rows[i].excluded : NULL);
-        if (*body == '{') body++;
-        text_addf(out, "%s%s", body[strspn(body, " ")] == '}' ? "" : ", ", body);
-    }
-    text_add(out, "\n]\n");
-}
-
-/* A column of the table for people: as wide as its widest cell. */
-static size_t width_of(const char *header, size_t longest) {
-    size_t n = strlen(header);
-    return n > longest ? n : longest;
-}
-
-static void print_text(const history_list *l, textbuf *out) {
-    char a[NUMBER_TEXT], b[NUMBER_TEXT], c[NUMBER_TEXT], d[NUMBER_TEXT], f[NUMBER_TEXT];
-    size_t sample = 0, lot = 0;
-    for (size_t i = 0; i < l->n; i++) {
-        sample = width_of(l->rows[i].sample, sample);
-        lot = width_of(l->rows[i].lot, lot);
-    }
-    sample = width_of("sample", sample);
-    lot = width_of("lot", lot);
-    text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s\n", "etched_at", (int)sample,
-              "sample", (int)lot, "lot", "spacing/nm", "+-", "density/um-2", "D50/nm", "R/%", "verdict",
-              "run_at");
-    for (size_t i = 0; i < l->n; i++) {
-        const history_row *r = &l->rows[i];
-        text_addf(out, "%-20s  %-*s  %-*s  %11s  %6s  %13s  %9s  %6s  %-12s  %s%s%s\n", r->etched_at, (int)sample,
-                  r->sample, (int)lot, r->lot, number_text(r->spacing_nm, 5, a),
-                  number_text(r->spacing_nm_u, 3, b), number_text(r->density_per_um2, 5, c),
-                  number_text(r->size_d50_nm, 5, d), number_percent(r->weighted_reflectance, 4, f),
-                  r->verdict, r->run_at, r->excluded[0] ? "  excluded: " : "", r->excluded);
-    }
-    text_addf(out, "%zu %s\n", l->n, l->n == 1 ? "row" : "rows");
-}
 
 static void print_notes(const history_notes *l, textbuf *out) {
     for (size_t i = 0; i < l->n; i++) {
@@ -295,7 +176,7 @@ static void print_notes(const history_notes *l, textbuf *out) {
 
 /* ---- verbs ---- */
 
-typedef enum { VERB_LIST, VERB_CHART, VERB_CHANGE, VERB_SETTING, VERB_EXCLUDE, VERB_INCLUDE, VERB_NOTE, VERB_NOTES, VERB_VERIFY, VERBS } verb;
+typedef enum { VERB_LIST, VERB_CHART, VERB_CHANGE, VERB_SETTING, VERB_EXCLUDE, VERB_INCLUDE, VERB_NOTE, VERB_NOTES, VERB_VERIFY, VERB_DIFFERENCES, VERB_IMPORT, VERB_PRUNE, VERBS } verb;
 static const struct {
     const char *name;
     size_t least, most; /* words behind it */
@@ -309,7 +190,10 @@ static const struct {
                    { "include", 1, 1, 1, "include SAMPLE --reason TEXT --by INITIALS" },
                    { "note", 0, 0, 1, "note --at TIME --text TEXT" },
                    { "notes", 0, 0, 0, "notes" },
-                   { "verify", 1, 1, 0, "verify DIR" } };
+                   { "verify", 0, 1, 0, "verify [DIR]" },
+                   { "differences", 0, 1, 0, "differences [QUANTITY]" },
+                   { "import", 1, 1, 1, "import FILE.csv" },
+                   { "prune", 0, 0, 1, "prune --before T --reason TEXT --by INITIALS --yes" } };
 
 static status find_verb(const request *q, verb *out, error *e) {
     const char *names[VERBS];
@@ -336,6 +220,16 @@ static void utc_now(char out[32]) {
     if (gmtime_r(&t, &parts)) strftime(out, 32, "%Y-%m-%dT%H:%M:%SZ", &parts);
 }
 
+static status prune(history *h, const request *q, const char *now, textbuf *out, error *e) {
+    history_prunable which = { q->before, q->lot, q->protocol, q->superseded };
+    size_t n = 0;
+    status st = history_prune(h, &which, q->reason, q->by, now, q->yes, &n, e);
+    if (st != ST_OK) return st;
+    text_addf(out, "%zu %s %s", n, n == 1 ? "row" : "rows", q->yes ? "deleted; this is recorded with reason and initials\n" : "would go; ");
+    if (!q->yes) text_add(out, "nothing was deleted, --yes with --reason and --by does it\n");
+    return ST_OK;
+}
+
 static status write_verb(history *h, verb v, const request *q, textbuf *out, error *e) {
     char now[32];
     utc_now(now);
@@ -345,18 +239,13 @@ static status write_verb(history *h, verb v, const request *q, textbuf *out, err
         if (st == ST_OK) text_addf(out, "noted at %s (%s): %s\n", n.at, n.kind, n.text);
         return st;
     }
+    if (v == VERB_IMPORT) return history_import(h, q->words[1], q->protocol, now, out, e);
+    if (v == VERB_PRUNE) return prune(h, q, now, out, e);
     status st = history_exclude(h, q->words[1], q->at, v == VERB_EXCLUDE, q->reason, q->by, now, e);
     if (st == ST_OK)
         text_addf(out, "%s is %s charts and comparisons; its rows stay in the ledger\n", q->words[1],
                   v == VERB_EXCLUDE ? "excluded from" : "back in");
     return st;
-}
-
-static status list_verb(const request *q, const history_list *rows, textbuf *out, error *e) {
-    if (q->json) print_json(rows, out);
-    else if (q->csv) return print_csv(rows, out, e);
-    else print_text(rows, out);
-    return ST_OK;
 }
 
 static status read_verb(history *h, verb v, request *q, textbuf *out, error *e) {
@@ -367,7 +256,10 @@ static status read_verb(history *h, verb v, request *q, textbuf *out, error *e) 
     status st = q->rules ? chart_rules_parse(q->rules, &c->options.rules, e) : ST_OK;
     if (st == ST_OK && q->from) st = history_day(h, q->from, "baseline-from", &c->baseline_from, e);
     if (st == ST_OK && q->to) st = history_day(h, q->to, "baseline-to", &c->baseline_to, e);
-    if (st == ST_OK) st = history_read(h, q->since, q->lot, &rows, e);
+    if (st == ST_OK) {
+        int heads = v == VERB_NOTES || (v == VERB_LIST && !q->json && !q->csv);
+        st = history_select(h, &(history_filter){ q->since, q->until, q->lot, q->protocol, heads }, &rows, e);
+    }
     if (st == ST_OK) st = history_notes_read(h, &notes, e);
     c->rows = &rows;
     c->notes = &notes;
@@ -379,7 +271,8 @@ static status read_verb(history *h, verb v, request *q, textbuf *out, error *e) 
     case VERB_CHANGE: st = history_change(&q->ask, q->words[1], q->words[2], out, e); break;
     case VERB_SETTING: st = history_setting(&q->ask, q->words[1], out, e); break;
     case VERB_NOTES: print_notes(&notes, out); break;
-    default: st = list_verb(q, &rows, out, e); break;
+    case VERB_DIFFERENCES: st = history_differences(&q->ask, out, e); break;
+    default: st = history_print(&rows, q->json ? FORM_JSON : q->csv ? FORM_CSV : FORM_TEXT, out, e); break;
     }
 done:
     history_list_free(&rows);
@@ -387,16 +280,11 @@ done:
     return st;
 }
 
-static int verify(const request *q) {
-    textbuf out = { 0 };
-    error e = { ST_OK, "" };
-    size_t unlike = 0;
-    if (history_verify(q->words[1], q->folder, &out, &unlike, &e) != ST_OK) {
-        text_free(&out);
-        return command_failed("history", &e);
-    }
-    int code = command_print("history", &out);
-    return code == EXIT_DONE && unlike ? EXIT_PARTIAL : code;
+/* Of a run's results, or without DIR of everything the ledger knows. */
+static status verify(history *h, const request *q, textbuf *out, size_t *unlike, error *e) {
+    history_filter f = { q->since, q->until, q->lot, q->protocol, 0 };
+    return q->n_words > 1 ? history_verify(q->words[1], q->folder, out, unlike, e)
+                          : history_verify_ledger(h, &f, q->folder, out, unlike, e);
 }
 
 int cmd_history(int argc, char **argv) {
@@ -407,15 +295,19 @@ int cmd_history(int argc, char **argv) {
     error e = { ST_OK, "" };
     verb v = VERB_LIST;
     argp_parse(&history_argp, argc, argv, 0, NULL, &q);
+    size_t unlike = 0;
     status st = find_verb(&q, &v, &e);
-    if (st == ST_OK && v == VERB_VERIFY) return verify(&q);
-    if (st == ST_OK && !file_exists(q.path))
-        st = fail(&e, ST_BAD_INPUT,
-                  "there is no ledger '%s' yet; 'sward run' starts one, or name another with --history", q.path);
-    if (st == ST_OK) st = history_open(q.path, !verbs[v].writes, &h, &e);
-    if (st == ST_OK) st = verbs[v].writes ? write_verb(h, v, &q, &out, &e) : read_verb(h, v, &q, &out, &e);
+    int of_results = st == ST_OK && v == VERB_VERIFY && q.n_words > 1; /* needs no ledger */
+    if (st == ST_OK && !of_results && v != VERB_IMPORT && !file_exists(q.path))
+        st = fail(&e, ST_BAD_INPUT, "there is no ledger '%s' yet; 'sward run' starts one, or name another with --history", q.path);
+    if (st == ST_OK && !of_results) st = history_open(q.path, !verbs[v].writes, &h, &e);
+    if (st == ST_OK && v == VERB_VERIFY) st = verify(h, &q, &out, &unlike, &e);
+    else if (st == ST_OK) st = verbs[v].writes ? write_verb(h, v, &q, &out, &e) : read_verb(h, v, &q, &out, &e);
     history_close(h);
-    if (st == ST_OK) return command_print("history", &out);
+    if (st == ST_OK) {
+        int code = command_print("history", &out);
+        return code == EXIT_DONE && unlike ? EXIT_PARTIAL : code;
+    }
     text_free(&out);
     return command_failed("history", &e);
 }

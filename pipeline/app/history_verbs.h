@@ -24,4 +24,22 @@ status history_setting(const history_question *q, const char *setting, textbuf *
  *   err  ST_BAD_INPUT no results there; ST_IO; ST_NO_MEMORY */
 status history_verify(const char *dir, const char *folder, textbuf *out, size_t *unlike, error *e);
 
+/* The same for every micrograph the ledger knows, of the chosen rows; folder NULL: where each row's were.
+ *   err  ST_BAD_INPUT a date that is none; ST_IO; ST_NO_MEMORY */
+status history_verify_ledger(history *h, const history_filter *f, const char *folder, textbuf *out, size_t *unlike, error *e);
+
+/* The rows as they are. err ST_IO a damaged row; ST_NO_MEMORY */
+typedef enum { FORM_TEXT, FORM_CSV, FORM_JSON } history_form;
+status history_print(const history_list *rows, history_form form, textbuf *out, error *e);
+
+/* What the last run of each etch changed against the one before it.
+ *   err  ST_IO a damaged row; ST_NO_MEMORY */
+status history_differences(const history_question *q, textbuf *out, error *e);
+
+/* Adds the rows of a CSV, columns as in samples.csv (sample and etched_at are needed), others kept as columns of a sheet; a row
+ * that is known adds nothing. All or none.
+ *   in   protocol: name for them, NULL: "imported"; now: ISO 8601, for rows without run_at
+ *   err  ST_BAD_INPUT with file, line and column; ST_IO; ST_NO_MEMORY */
+status history_import(history *h, const char *path, const char *protocol, const char *now, textbuf *out, error *e);
+
 #endif

@@ -1,5 +1,5 @@
-/* `sward history verify`: are the pictures on the disk still the ones behind the results? Every result holds the SHA-256 of
- * its micrographs; here they are computed again. */
+/* `sward history verify`: are the pictures on the disk still the ones behind the numbers? The ledger and every result hold the SHA-256
+ * of the micrographs; here they are computed again. */
 #include <cjson/cJSON.h>
 #include <stdlib.h>
 #include <string.h>
@@ -57,6 +57,37 @@ static status check_inputs(const cJSON *inputs, const char *root, textbuf *out, 
     }
     text_addf(out, "%zu micrographs are the ones that were measured, %zu are not\n", same, *unlike);
     return text_check(out, "the list", e);
+}
+
+/* ---- against the ledger ---- */
+
+typedef struct {
+    const char *folder; /* NULL: the row's own */
+    textbuf *out;
+    size_t same, unlike;
+} check;
+
+static status check_one(const char *at, const history_micrograph *m, void *user, error *e) {
+    check *c = user;
+    const char *root = c->folder ? c->folder : at;
+    if (!m->sha256[0]) return ST_OK; /* it could not be read in the first place */
+    const char *found = compare(root, m->file, m->sha256);
+    if (!found) return NO_MEMORY(e, "a path");
+    if (!found[0]) {
+        c->same++;
+        return ST_OK;
+    }
+    c->unlike++;
+    text_addf(c->out, "%s/%s %s\n", root, m->file, found);
+    return ST_OK;
+}
+
+status history_verify_ledger(history *h, const history_filter *f, const char *folder, textbuf *out, size_t *unlike, error *e) {
+    check c = { folder, out, 0, 0 };
+    status st = history_micrographs(h, f, check_one, &c, e);
+    *unlike = c.unlike;
+    if (st == ST_OK) text_addf(out, "%zu micrographs are the ones that were measured, %zu are not\n", c.same, c.unlike);
+    return st == ST_OK ? text_check(out, "the list", e) : st;
 }
 
 status history_verify(const char *dir, const char *folder, textbuf *out, size_t *unlike, error *e) {

@@ -10,12 +10,17 @@
 #include "base/number.h"
 #include "base/quantity.h"
 
-static const char *skip_blank(const char *p) { return p + strspn(p, " \t\r\n"); }
+static int is_blank(char c) { return c == ' ' || c == '\t' || c == '\r' || c == '\n'; }
+
+static const char *skip_blank(const char *p) {
+    while (is_blank(*p)) p++;
+    return p;
+}
 
 /* Past the text that opens at p; NULL: it does not end. */
 static const char *take_text(const char *p, const char **start, size_t *n) {
     *start = ++p;
-    for (p += strcspn(p, "\"\\"); *p == '\\' && p[1]; p += strcspn(p, "\"\\")) p += 2;
+    while (*p && *p != '"') p += *p == '\\' && p[1] ? 2 : 1;
     if (*p != '"') return NULL;
     *n = (size_t)(p - *start);
     return p + 1;
@@ -43,7 +48,8 @@ int row_next(const char **at, row_member *m) {
         if (!(p = take_text(p, &m->value, &m->value_n))) return -1;
     } else {
         m->value = p;
-        m->value_n = strcspn(p, ",}{[\" \t\r\n");
+        m->value_n = 0;
+        while (!is_blank(p[m->value_n]) && !strchr(",}{[\"", p[m->value_n])) m->value_n++; /* the end counts as found */
         if (!m->value_n) return -1;
         m->kind = *p == '-' || (*p >= '0' && *p <= '9') ? MEMBER_NUMBER : MEMBER_OTHER;
         p += m->value_n;

@@ -69,7 +69,8 @@ static const char insert_micrograph_sql[] =
 
 #define WHEN "coalesce(julianday(nullif(etched_at, '')), julianday(run_at))"
 #define SELECT_RUNS(day, excluded, newer, by_protocol)                                                              \
-    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict, row_json, " excluded    \
+    "SELECT sample, lot, wafer, etched_at, run_at, fingerprint, version, protocol, verdict,"                        \
+    " CASE WHEN ?5 THEN '' ELSE row_json END, " excluded                                                            \
     ", " newer ", spacing_nm, spacing_nm_u, density_per_um2, size_d50_nm, weighted_reflectance, " day               \
     " FROM runs WHERE (?1 IS NULL OR " day " >= julianday(?1)) AND (?2 IS NULL OR lot = ?2)"                        \
     " AND (?3 IS NULL OR " day " <= julianday(?3)) AND (?4 IS NULL OR protocol = ?4" by_protocol ")"                \
@@ -179,7 +180,8 @@ status history_open(const char *path, int read_only, history **out, error *e) {
     if (st == ST_OK && (!h || !h->path)) st = NO_MEMORY(e, "the history");
     if (st == ST_OK) {
         int mode = read_only ? SQLITE_OPEN_READONLY : SQLITE_OPEN_READWRITE | SQLITE_OPEN_CREATE;
-        if (sqlite3_open_v2(name.s, &h->db, mode, NULL) != SQLITE_OK) st = history_say(h, "opening it", e);
+        /* one thread at a time uses a ledger: no mutex */
+        if (sqlite3_open_v2(name.s, &h->db, mode | SQLITE_OPEN_NOMUTEX, NULL) != SQLITE_OK) st = history_say(h, "opening it", e);
     }
     if (st == ST_OK) {
         sqlite3_busy_timeout(h->db, WAIT_MS);
@@ -355,6 +357,7 @@ status history_select(history *h, const history_filter *f, history_list *out, er
     sqlite3_stmt *s = NULL;
     status st = sqlite3_prepare_v2(h->db, select_sql[h->version], -1, &s, NULL) == SQLITE_OK ? ST_OK : history_say(h, "reading it", e);
     if (st == ST_OK) st = history_bind_filter(h, s, f, e);
+    if (st == ST_OK && sqlite3_bind_int(s, 5, f->heads_only) != SQLITE_OK) st = history_say(h, "reading it", e);
     int code = SQLITE_DONE;
     while (st == ST_OK && (code = sqlite3_step(s)) == SQLITE_ROW) {
         st = grow(&l, &room, e);

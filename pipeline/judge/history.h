@@ -55,6 +55,7 @@ status history_add(history *h, const history_row *rows, size_t n, size_t *added,
 /* Which rows; a NULL member does not choose. `until` as `since`, inclusive; protocol is a name or the beginning of a digest. */
 typedef struct {
     const char *since, *until, *lot, *protocol;
+    int heads_only; /* row_json comes empty */
 } history_filter;
 /* history_read with every choice.
  *   err  also ST_BAD_INPUT `until` is no date */

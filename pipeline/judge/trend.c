@@ -19,7 +19,38 @@ static int ascending(const void *a, const void *b) {
     return (*x > *y) - (*x < *y);
 }
 
-static double median_of_sorted(const double *v, size_t n) { return n % 2 ? v[n / 2] : 0.5 * (v[n / 2 - 1] + v[n / 2]); }
+/* The k-th smallest, from 0; v is reordered so that smaller ones stand before it (Hoare C.A.R. (1961) Commun. ACM 4, 321). A
+ * million slopes need no sorting for a median and two limits. */
+static double select_kth(double *v, size_t n, size_t k) {
+    size_t first = 0, last = n - 1;
+    while (first < last) {
+        double pivot = v[first + (last - first) / 2];
+        size_t i = first, j = last;
+        for (;;) {
+            while (v[i] < pivot) i++;
+            while (v[j] > pivot) j--;
+            if (i >= j) break;
+            double keep = v[i];
+            v[i++] = v[j];
+            v[j--] = keep;
+        }
+        /* first..j are at most the pivot, and what follows is at least that */
+        if (i == j && k == i) return v[k];
+        size_t cut = i == j ? i : j + 1;
+        if (k < cut) last = cut - 1;
+        else first = cut;
+        if (i == j && k > i) first = i + 1;
+    }
+    return v[k];
+}
+
+static double median_of(double *v, size_t n) {
+    double upper = select_kth(v, n, n / 2);
+    if (n % 2) return upper;
+    double lower = v[0];
+    for (size_t i = 1; i < n / 2; i++) lower = fmax(lower, v[i]);
+    return 0.5 * (lower + upper);
+}
 
 /* Variance of Kendall's score without ties in y; x sorted. */
 static double kendall_variance(const double *sorted_x, size_t n) {
@@ -35,11 +66,11 @@ static double kendall_variance(const double *sorted_x, size_t n) {
 }
 
 /* The ranks of Sen's interval, counted from 1 and rounded outwards; beyond the ends there is no limit. */
-static void sen_limits(const double *slopes, size_t n, double variance, trend_slope *s) {
+static void sen_limits(double *slopes, size_t n, double variance, trend_slope *s) {
     double reach = normal_quantile(0.975) * sqrt(variance);
     double low = floor(0.5 * ((double)n - reach)), high = ceil(0.5 * ((double)n + reach)) + 1.0;
-    s->lo = low >= 1.0 ? slopes[(size_t)low - 1] : MISSING;
-    s->hi = high <= (double)n ? slopes[(size_t)high - 1] : MISSING;
+    s->lo = low >= 1.0 ? select_kth(slopes, n, (size_t)low - 1) : MISSING;
+    s->hi = high <= (double)n ? select_kth(slopes, n, (size_t)high - 1) : MISSING;
 }
 
 /* Kendall's score is the number of rising pairs less that of falling ones. */
@@ -68,14 +99,12 @@ status trend_robust(const double *x, const double *y, size_t n, trend_slope *s, 
     }
     if (st == ST_OK && m == 0) st = fail(e, ST_NO_RESULT, "a drift cannot be said: all etches have the same time");
     if (st == ST_OK) {
-        qsort(slopes, m, sizeof *slopes, ascending);
         qsort(work, n, sizeof *work, ascending);
-        t.slope = median_of_sorted(slopes, m);
+        t.slope = median_of(slopes, m);
         sen_limits(slopes, m, kendall_variance(work, n), &t);
         t.p = kendall_p(slopes, m, kendall_variance(work, n));
         for (size_t i = 0; i < n; i++) work[i] = y[i] - t.slope * x[i];
-        qsort(work, n, sizeof *work, ascending);
-        t.intercept = median_of_sorted(work, n);
+        t.intercept = median_of(work, n);
         *s = t;
     }
     free(slopes);
