@@ -55,6 +55,8 @@ static status one_angle(const surface_input *in, const optics_setup *set, angle_
         if (i == 0) {
             row->mean_lo = p.weighted_lo;
             row->mean_hi = p.weighted_hi;
+            row->polished = p.polished;
+            row->coated = p.coated;
             snprintf(note, room, "%s", p.note);
         }
         prediction_free(&p);
@@ -131,7 +133,9 @@ void angles_json(const angle_sweep *s, double limit, textbuf *out) {
                         { "weighted_reflectance_p", r->p },
                         { "weighted_reflectance", r->mean },
                         { "weighted_reflectance_lo", r->mean_lo },
-                        { "weighted_reflectance_hi", r->mean_hi } };
+                        { "weighted_reflectance_hi", r->mean_hi },
+                        { "polished_reflectance", r->polished },
+                        { "coated_reflectance", r->coated } };
         text_add(out, i ? ",\n    {" : "\n    {");
         for (size_t k = 0; k < sizeof members / sizeof members[0]; k++) {
             text_addf(out, "%s\"%s\": ", k ? ", " : "", members[k].name);

@@ -8,6 +8,7 @@ typedef struct {
     double angle_deg;
     double s, p;                   /* weighted, each polarization; NAN where no model serves */
     double mean, mean_lo, mean_hi; /* unpolarised with its 95 % interval */
+    double polished, coated;       /* flat silicon at that angle, bare and under 75 nm of nitride */
 } angle_row;
 
 typedef struct {

@@ -6,6 +6,7 @@
 #include <string.h>
 #include <time.h>
 
+#include "app/scenarios.h"
 #include "app/summary.h"
 #include "app/wafers.h"
 #include "base/mem.h"
@@ -29,7 +30,7 @@ typedef struct {
     double *reference_nm, *polished, *coated;
     double *x_mm, *y_mm; /* [n_groups] */
     size_t n_reference;
-    textbuf manifest, summary, note, wafers;
+    textbuf manifest, summary, note, wafers, window, angles;
 } material_for;
 
 static void material_free_all(material_for *m, size_t n_targets) {
@@ -55,6 +56,8 @@ static void material_free_all(material_for *m, size_t n_targets) {
     text_free(&m->summary);
     text_free(&m->note);
     text_free(&m->wafers);
+    text_free(&m->window);
+    text_free(&m->angles);
 }
 
 static status gather_rows(const publication *p, material_for *m, error *e) {
@@ -171,6 +174,18 @@ static status gather_references(const publication *p, material_for *m, error *e)
     return st == ST_OK ? reflectance(&film, &o->reflect, m->reference_nm, n, m->coated, NULL, e) : st;
 }
 
+/* Pores or hillocks, as most of the measured micrographs. */
+static status gather_scenarios(const publication *p, material_for *m, error *e) {
+    size_t pores = 0, seen = 0;
+    for (size_t i = 0; i < p->folder->n; i++) {
+        seen += (size_t)p->images[i].readable;
+        pores += p->images[i].readable && p->images[i].relief == RELIEF_PORE;
+    }
+    int as_pores = 2 * pores > seen;
+    status st = scenarios_window(m->samples, p->n_groups, as_pores, p->protocol, p->setup, &m->window, e);
+    return st == ST_OK ? scenarios_angles(m->samples, p->n_groups, as_pores, p->protocol, p->setup, &m->angles, e) : st;
+}
+
 static void add_member(textbuf *t, const char *name, const char *value) {
     text_addf(t, "\"%s\": ", name);
     json_string(t, value);
@@ -248,7 +263,8 @@ static status write_all(const publication *p, material_for *m, error *e) {
                   .samples = m->samples, .n_samples = p->n_groups, .sample_json = m->sample_json,
                   .sample_extra = m->extra_names, .n_sample_extra = m->n_extra,
                   .spectra = m->spectra, .n_spectra = m->n_spectra,
-                  .manifest_json = m->manifest.s, .wafers_json = m->wafers.s, .series_json = p->ledger->series, .summary = m->summary.s, .title = p->protocol->name,
+                  .manifest_json = m->manifest.s, .wafers_json = m->wafers.s, .series_json = p->ledger->series,
+                  .window_json = m->window.s, .angles_json = m->angles.s, .summary = m->summary.s, .title = p->protocol->name,
                   .target_quantity = m->target_quantity, .target_min = m->target_min, .target_max = m->target_max,
                   .n_targets = p->protocol->n_targets, .history_json = p->ledger->json,
                   .reference_wavelength_nm = m->reference_nm, .polished_R = m->polished, .coated_R = m->coated,
@@ -267,6 +283,7 @@ status publish(const publication *p, error *e) {
     if (st == ST_OK) st = gather_targets(p, &m, e);
     if (st == ST_OK) st = gather_spectra(p, &m, e);
     if (st == ST_OK) st = gather_references(p, &m, e);
+    if (st == ST_OK) st = gather_scenarios(p, &m, e);
     if (st == ST_OK) {
         write_manifest(p, &m.manifest);
         summary_text(p, &m.summary);

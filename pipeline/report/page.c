@@ -51,7 +51,7 @@ static void add_head(const results *r, textbuf *out) {
              "reflectance predicted "
              "from it.</p>\n<nav aria-label=\"On this page\"><ul><li><a href=\"#verdicts\">Verdict</a></li>"
              "<li><a href=\"#samples\">Samples</a></li><li><a href=\"#series\">Etch series</a></li>"
-             "<li><a href=\"#optics\">Reflectance</a></li><li><a href=\"#texture\">Texture</a></li>"
+             "<li><a href=\"#optics\">Reflectance</a></li><li><a href=\"#window\">Process window</a></li><li><a href=\"#texture\">Texture</a></li>"
              "<li><a href=\"#micrographs\">Micrographs</a></li><li><a href=\"#budgets\">Uncertainty</a></li>"
              "<li><a href=\"#meaning\">Meaning</a></li><li><a href=\"#inputs\">How it was measured</a></li></ul></nav></header>\n"
              "<main>\n");
@@ -65,6 +65,7 @@ status report_write(const results *r, const char *out_dir, error *e) {
     page_samples(r, &page);
     page_series(r, &page);
     page_spectra(r, &page);
+    page_window(r, &page);
     page_texture(r, out_dir, &page);
     page_pictures(r, out_dir, &page);
     page_maps(r, &page);

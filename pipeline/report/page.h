@@ -1,6 +1,7 @@
 /* The parts of report.html, each appended to the page; private to this room. Failure is remembered in `out`. */
 #ifndef SWARD_REPORT_PAGE_H
 #define SWARD_REPORT_PAGE_H
+#include "report/plot.h"
 #include "report/results.h"
 
 /* In the order of the page. */
@@ -9,18 +10,29 @@ void page_samples(const results *r, textbuf *out);  /* one line a sample, with p
 void page_series(const results *r, textbuf *out);   /* spacing and reflectance over the etches */
 void page_maps(const results *r, textbuf *out);     /* spacing over the wafer, where positions are known */
 void page_spectra(const results *r, textbuf *out);  /* optics table, one chart per sample */
+void page_window(const results *r, textbuf *out);   /* where the samples lie between heights and spacings */
 void page_texture(const results *r, const char *out_dir, textbuf *out); /* sizes, autocorrelation, all texture numbers */
 void page_pictures(const results *r, const char *out_dir, textbuf *out); /* overlays, status, reasons */
 void page_budgets(const results *r, textbuf *out); /* where the uncertainty comes from */
 void page_meaning(const results *r, textbuf *out); /* what the numbers mean, flags, validity */
 void page_inputs(const results *r, textbuf *out);  /* methods with their sources, and the manifest */
 
-/* Parts of those: the list of advice inside the verdict, the charts inside the texture. */
+/* Parts of those: what fails and the list of advice inside the verdict, reflectance against the angle, the charts inside the texture. */
+void page_cases(const results *r, textbuf *out);
 void page_advice(const results *r, textbuf *out);
+void page_angles(const results *r, textbuf *out);
 void page_profiles(const results *r, const char *out_dir, textbuf *out);
 
 /* Column name + suffix of the sample table, or NULL. */
 const column *page_sample_column(const char *name, const char *suffix);
+/* The number of that column of a sample as the table prints it; NAN: none. */
+double page_sample_number(const sample_row *s, const char *name, const char *suffix);
+/* How a quantity stands to the limit nearest to it. lo and hi: its 95 % interval, or twice the uncertainty. */
+typedef struct {
+    size_t target;
+    double value, lo, hi, limit;
+} page_miss;
+int page_find_miss(const results *r, const sample_row *s, size_t target, page_miss *out); /* 0: no value, or no limit */
 /* Value with U (k = 2), or with its 95 % interval where the table has one, and its unit. */
 void page_sample_value(textbuf *out, const sample_row *s, const char *name);
 /* "280 to 420 nm" of target k. */
@@ -34,6 +46,9 @@ struct cJSON *page_members(const char *json);
 void page_flag_name(textbuf *out, int bit);
 /* A flag or reason cell: known words with their meaning, anything else as it is. */
 void page_flags(textbuf *out, const char *words);
+
+/* The mark of a point by the word of its verdict. */
+plot_mark page_mark(const char *verdict);
 
 /* Quantities that the page shows in percent. */
 int page_percent(const char *column_name);

@@ -77,7 +77,7 @@
 
   // ---- charts ----
   const colour = (name) => getComputedStyle(document.documentElement).getPropertyValue('--' + name).trim();
-  const TONES = ['blue', 'amber', 'grey', 'teal'];
+  const TONES = ['blue', 'amber', 'grey', 'teal', 'violet'];
   const MARKS = { conforms: ['circle', 'teal'], undecided: ['rectRot', 'amber'], fails: ['triangle', 'red'], 'no target': ['rect', 'soft'] };
   const DASHES = { dashed: [8, 4], dotted: [2, 4] };
   const faded = (hex, alpha) => hex + Math.round(255 * alpha).toString(16).padStart(2, '0'); // the style sheet has #rrggbb
@@ -178,10 +178,12 @@
   const sentence = (spec, set, p) => {
     const [quantity, unit] = parted(spec.y), t = p.text || {};
     const range = t.lo !== undefined && t.lo !== '' ? ` (${t.lo} to ${t.hi}${unit ? ' ' + unit : ''})` : '';
-    return `${set.label || quantity}: ${t.y}${unit ? ' ' + unit : ''}${range}${t.verdict ? ', ' + t.verdict : ''}`;
+    const at = t.name ? `${parted(spec.x).join(' ').trim()} ${t.x}; ` : '';
+    return `${at}${t.name ? quantity : set.label || quantity}: ${t.y}${unit ? ' ' + unit : ''}${range}${t.verdict ? ', ' + t.verdict : ''}`;
   };
   const place = (spec, p) => {
     if (spec.names) return spec.names[p.x];
+    if (p.text && p.text.name) return p.text.name;
     const [quantity, unit] = parted(spec.x);
     return `${quantity} ${p.text ? p.text.x : p.x}${unit ? ' ' + unit : ''}`;
   };
@@ -207,6 +209,9 @@
     return { x, y };
   };
 
+  const legendOf = (chart) => Chart.defaults.plugins.legend.labels.generateLabels(chart).filter((item) => item.text !== '').map((item) =>
+    Object.assign(item, { pointStyle: chart.data.datasets[item.datasetIndex].bars ? 'circle' : 'line', lineWidth: 2.2 }));
+
   const configure = (spec, table) => {
     const series = seriesOf(spec, table), ends = series.flatMap((s) => (s.style === 'points' ? s.points : []));
     const of = (end) => ends.map((p) => p[end]).filter((v) => v !== null && v !== undefined);
@@ -226,7 +231,7 @@
         plugins: {
           title: { display: true, text: spec.title, align: 'start', color: colour('ink'), font: { size: 14, weight: '600' }, padding: { top: 2, bottom: 8 } },
           legend: { display: spec.legend && series.some((s) => s.label), align: 'start',
-            labels: { color: colour('soft'), filter: (item) => item.text !== '', usePointStyle: points, boxWidth: 26, boxHeight: 1 } },
+            labels: { color: colour('soft'), usePointStyle: true, boxWidth: 14, boxHeight: 10, generateLabels: legendOf } },
           tooltip: { filter: (item) => !item.dataset.aside && Boolean(item.raw.text),
             callbacks: { title: (items) => (items.length ? place(spec, items[0].raw) : ''), label: (item) => sentence(spec, item.dataset, item.raw) } },
           filler: { propagate: false },

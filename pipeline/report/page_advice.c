@@ -52,7 +52,10 @@ static void advise_pictures(const results *r, size_t *n, textbuf *out) {
         ++*n;
         text_addf(out, "<li><a href=\"#micrograph-%zu\">", i + 1);
         html_text(out, m->file);
-        text_addf(out, "</a>: %s.</li>\n", todo);
+        text_add(out, "</a> was not used (");
+        if (m->reason && *m->reason) page_flags(out, m->reason);
+        else html_text(out, m->status);
+        text_addf(out, "): %s.</li>\n", todo);
     }
     if (more) text_addf(out, "<li>%zu more micrographs were not used; their cards below say what helps.</li>\n", more);
 }
@@ -83,16 +86,14 @@ static void advise_sample(const results *r, size_t i, size_t *n, textbuf *out) {
         text_addf(&name, "verdict_%s", r->target_quantity[k]);
         const char *word = name.failed ? NULL : page_extra(r, s, name.s);
         text_free(&name);
-        const char *todo = word && !strcmp(word, "fails")
-                               ? "look at its micrographs, then at its place on the wafer and in the series: one spot, one wafer or a trend?"
-                           : word && !strcmp(word, "undecided") ? what_narrows(r, i, r->target_quantity[k])
-                                                                : NULL;
+        const char *todo = word && !strcmp(word, "undecided") ? what_narrows(r, i, r->target_quantity[k]) : NULL;
         if (!todo || *n >= MOST) continue;
         ++*n;
         text_addf(out, "<li><a href=\"#sample-%zu\">", i + 1);
         html_text(out, s->sample);
-        text_addf(out, "</a>, %s %s: %s%s</li>\n", page_quantity(r->target_quantity[k]),
-                  !strcmp(word, "fails") ? "outside its target" : "undecided", todo, !strcmp(word, "fails") ? "" : ".");
+        text_add(out, "</a> is undecided: ");
+        page_reason(out, r, i, k, word);
+        text_addf(out, "; %s.</li>\n", todo);
     }
 }
 

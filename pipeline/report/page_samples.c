@@ -83,7 +83,7 @@ typedef struct {
 } shown;
 enum { MAX_SHOWN = 12, STRIP_WIDTH = 128, STRIP_HEIGHT = 20 };
 
-static double sample_number(const sample_row *s, const char *name, const char *suffix) {
+double page_sample_number(const sample_row *s, const char *name, const char *suffix) {
     const column *c = page_sample_column(name, suffix);
     char buffer[NUMBER_TEXT];
     double v;
@@ -92,10 +92,10 @@ static double sample_number(const sample_row *s, const char *name, const char *s
 
 /* The interval of about 95 %: its own columns, else twice the uncertainty. */
 static void interval(const sample_row *s, const char *name, double *v, double *lo, double *hi) {
-    double u = sample_number(s, name, "_u");
-    *v = sample_number(s, name, "");
-    *lo = sample_number(s, name, "_lo");
-    *hi = sample_number(s, name, "_hi");
+    double u = page_sample_number(s, name, "_u");
+    *v = page_sample_number(s, name, "");
+    *lo = page_sample_number(s, name, "_lo");
+    *hi = page_sample_number(s, name, "_hi");
     if (!isfinite(*lo)) *lo = *v - 2.0 * u;
     if (!isfinite(*hi)) *hi = *v + 2.0 * u;
 }
@@ -190,6 +190,14 @@ static void table_head(const results *r, const shown *q, size_t n, textbuf *out)
     text_add(out, "<th scope=\"col\">Height</th><th scope=\"col\">Remarks</th></tr></thead>\n");
 }
 
+/* "2026-03-17 09:05 UTC" for the ledger's form; anything else as it is. */
+static void add_time(textbuf *out, const char *t) {
+    if (t && strlen(t) == 20 && t[10] == 'T' && t[19] == 'Z')
+        text_addf(out, "<time datetime=\"%s\">%.10s %.5s UTC</time>", t, t, t + 11);
+    else
+        html_text(out, t);
+}
+
 static void name_cell(const results *r, size_t i, textbuf *out) {
     const sample_row *s = &r->samples[i];
     const char *detail[][2] = { { "lot ", s->lot }, { "wafer ", s->wafer }, { "", s->position } };
@@ -204,7 +212,7 @@ static void name_cell(const results *r, size_t i, textbuf *out) {
             html_text(out, detail[k][1]);
         }
     text_add(out, "</small><small>");
-    html_text(out, s->etched_at);
+    add_time(out, s->etched_at);
     text_addf(out, "%s%ld of %ld used</small></th>\n<td>", s->etched_at && *s->etched_at ? " \xc2\xb7 " : "", s->n_used,
               s->n_images);
     html_badge(out, s->verdict);
@@ -229,19 +237,35 @@ static void remarks_cell(const results *r, size_t i, const shown *q, size_t n, t
     text_add(out, "</td></tr>\n");
 }
 
+int page_find_miss(const results *r, const sample_row *s, size_t target, page_miss *out) {
+    double min = limit_of(r->target_min, target), max = limit_of(r->target_max, target);
+    page_miss m = { .target = target };
+    interval(s, r->target_quantity[target], &m.value, &m.lo, &m.hi);
+    m.limit = !isfinite(max) ? min : !isfinite(min) ? max : fabs(m.value - max) < fabs(m.value - min) ? max : min;
+    *out = m;
+    return isfinite(m.value) && isfinite(m.limit);
+}
+
 void page_reason(textbuf *out, const results *r, size_t sample, size_t target, const char *word) {
     const sample_row *s = &r->samples[sample];
     const char *name = r->target_quantity[target];
-    double v, lo, hi, min = limit_of(r->target_min, target), max = limit_of(r->target_max, target);
-    interval(s, name, &v, &lo, &hi);
     const column *c = page_sample_column(name, "");
-    double limit = !isfinite(max) ? min : !isfinite(min) ? max : fabs(v - max) < fabs(v - min) ? max : min;
+    page_miss m;
     html_text(out, page_quantity(name));
     text_add(out, " ");
     page_sample_value(out, s, name);
-    text_add(out, strcmp(word, "fails") ? " is not clear of the limit " : v > limit ? " is above the limit " : " is below the limit ");
-    add_limit(out, c, name, limit);
+    if (!page_find_miss(r, s, target, &m)) return;
+    text_add(out, strcmp(word, "fails") ? " is not clear of the limit " : m.value > m.limit ? " is above the limit " : " is below the limit ");
+    add_limit(out, c, name, m.limit);
     if (c) add_unit(out, c);
+}
+
+/* What needs a look comes first. */
+static int urgency(const sample_row *s) {
+    static const char *const order[] = { "fails", "undecided", "not_measured" };
+    for (int k = 0; k < 3; k++)
+        if (s->verdict && !strcmp(s->verdict, order[k])) return k;
+    return 3;
 }
 
 void page_samples(const results *r, textbuf *out) {
@@ -251,20 +275,22 @@ void page_samples(const results *r, textbuf *out) {
     text_add(out, "<section id=\"samples\"><h2>Samples</h2>\n<p class=\"lead\">Value \xc2\xb1 expanded uncertainty U (k = 2, about 95 %); "
                   "a range in brackets is a 95 % interval that need not be centred. In the pictures: dot and line are value and "
                   "interval, the shaded part is the target. A value conforms or fails only when its uncertainty is clear of the "
-                  "limit (ISO 14253-1). Values are rounded to what their uncertainty leaves; copies and samples.csv "
+                  "limit (ISO 14253-1). What needs a look stands first. Values are rounded to what their uncertainty leaves; copies and samples.csv "
                   "hold all digits.</p>\n"
                   "<div class=\"scroll\" tabindex=\"0\" role=\"region\" aria-label=\"Samples with verdicts\"><table class=\"sort filter "
                   "samples\">");
     table_head(r, q, n, out);
     text_add(out, "<tbody>\n");
-    for (size_t i = 0; i < r->n_samples; i++) {
+    for (size_t k = 0; k < 4 * r->n_samples; k++) {
+        size_t i = k % r->n_samples;
         const sample_row *s = &r->samples[i];
+        if ((size_t)urgency(s) != k / r->n_samples) continue;
         name_cell(r, i, out);
-        for (size_t k = 0; k < n; k++) {
+        for (size_t c = 0; c < n; c++) {
             text_add(out, "<td class=\"q\"><span class=\"value\">");
-            page_sample_value(out, s, q[k].name);
+            page_sample_value(out, s, q[c].name);
             text_add(out, "</span>");
-            add_strip(r, s, &q[k], out);
+            add_strip(r, s, &q[c], out);
             text_add(out, "</td>");
         }
         text_add(out, "<td class=\"q\">");

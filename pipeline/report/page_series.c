@@ -24,7 +24,7 @@ typedef struct {
     size_t n, left_out;
 } etches;
 
-static plot_mark mark_of(const char *verdict) {
+plot_mark page_mark(const char *verdict) {
     if (verdict && !strcmp(verdict, "conforms")) return MARK_DISC;
     if (verdict && !strcmp(verdict, "undecided")) return MARK_DIAMOND;
     if (verdict && !strcmp(verdict, "fails")) return MARK_TRIANGLE;
@@ -67,7 +67,7 @@ static void add_etch(etches *t, const char *name, const char *time, double spaci
     t->spacing_hi[i] = spacing + 2.0 * spacing_u;
     t->R[i] = 100.0 * R;
     t->R_lo[i] = t->R_hi[i] = MISSING;
-    t->spacing_mark[i] = t->R_mark[i] = mark_of(verdict);
+    t->spacing_mark[i] = t->R_mark[i] = page_mark(verdict);
 }
 
 static double member_number(const cJSON *o, const char *key) {
@@ -145,8 +145,8 @@ static void add_details(etches *t, const results *r) {
                 continue;
             t->R_lo[i] = 100.0 * s->weighted_reflectance_lo;
             t->R_hi[i] = 100.0 * s->weighted_reflectance_hi;
-            t->spacing_mark[i] = mark_of(page_extra(r, s, "verdict_spacing_nm"));
-            t->R_mark[i] = mark_of(page_extra(r, s, "verdict_weighted_reflectance"));
+            t->spacing_mark[i] = page_mark(page_extra(r, s, "verdict_spacing_nm"));
+            t->R_mark[i] = page_mark(page_extra(r, s, "verdict_weighted_reflectance"));
         }
 }
 

@@ -249,5 +249,6 @@ void page_spectra(const results *r, textbuf *out) {
         "reflectance.</p>\n");
     optics_table(r, out);
     if (r->n_spectra) draw_spectra(r, out);
+    page_angles(r, out);
     text_add(out, "</section>\n");
 }

@@ -70,8 +70,8 @@ static void add_headline(const results *r, textbuf *out) {
     } else if (conforms == r->n_samples) {
         text_addf(out, "All %zu samples conform.", r->n_samples);
     } else {
-        text_addf(out, "%zu of %zu samples conform", conforms, r->n_samples);
-        if (fails) text_addf(out, "; %zu %s", fails, fails == 1 ? "fails" : "fail");
+        if (fails) text_addf(out, "%zu of %zu samples %s; %zu %s", fails, r->n_samples, fails == 1 ? "fails" : "fail", conforms, conforms == 1 ? "conforms" : "conform");
+        else text_addf(out, "%zu of %zu samples conform", conforms, r->n_samples);
         if (undecided) text_addf(out, "; %zu undecided", undecided);
         if (unmeasured) text_addf(out, "; %zu not measured", unmeasured);
         text_add(out, ".");
@@ -107,34 +107,12 @@ static void add_reasons(const results *r, const char *word, const char *lead, te
     if (n) text_add(out, ".</p>\n");
 }
 
-/* Each picture that did not enter its sample, with the reason and a link to its card. */
-static void add_not_used(const results *r, textbuf *out) {
-    enum { MOST = 12 };
-    size_t n = 0;
-    for (size_t i = 0; i < r->n_images; i++) {
-        const image_row *m = &r->images[i];
-        if (is_word(m->status, "ok") || ++n > MOST) continue;
-        text_add(out, n == 1 ? "<p><strong>Not used:</strong> " : "; ");
-        text_addf(out, "<a href=\"#micrograph-%zu\">", i + 1);
-        html_text(out, m->file);
-        text_add(out, "</a> (");
-        if (m->reason && *m->reason)
-            page_flags(out, m->reason);
-        else
-            html_text(out, m->status);
-        text_add(out, ")");
-    }
-    if (n > MOST) text_addf(out, "; and %zu more", n - MOST);
-    if (n) text_add(out, ".</p>\n");
-}
-
 void page_verdicts(const results *r, textbuf *out) {
     text_add(out, "<section id=\"verdicts\" aria-label=\"Verdict\">\n");
     add_headline(r, out);
-    add_reasons(r, "fails", "<p><strong>Fails:</strong> ", out);
+    page_cases(r, out);
     add_reasons(r, "undecided", "<p><strong>Undecided:</strong> ", out);
     add_reasons(r, "not_measured", "<p><strong>Not measured:</strong> ", out);
-    add_not_used(r, out);
     page_advice(r, out);
     if (r->summary && *r->summary) {
         text_add(out, "<details><summary>Summary as the program printed it</summary><pre tabindex=\"0\">");

@@ -11,7 +11,7 @@
 #include "report/html.h"
 
 static const char *const tone_colour[PLOT_TONES] = { "var(--blue,#1660a8)", "var(--amber,#a85d00)",
-                                                     "var(--grey,#6b7280)", "var(--teal,#00756a)" };
+                                                     "var(--grey,#6b7280)", "var(--teal,#00756a)", "var(--violet,#7a3fa0)" };
 #define INK "var(--ink,#1b2430)"
 #define FAINT "var(--rule,#d5dbe3)"
 #define SOFT "var(--soft,#56606e)"
@@ -204,6 +204,7 @@ static void draw_points(const plot *p, const plot_series *s, const axes *f, text
         double x = axes_x(f, s->x[i]);
         text_add(out, "<g><title>");
         if (p->names && p->names[i]) html_text(out, p->names[i]);
+        if (s->point_names) html_text(out, s->point_names[i]);
         text_addf(out, ": %s</title>", number_text(s->y[i], 6, number));
         if (s->lo && s->hi && axes_in_band(s, i)) {
             double top = axes_y(f, s->hi[i]), bottom = axes_y(f, s->lo[i]);
@@ -221,10 +222,13 @@ static void draw_legend(const plot *p, const axes *f, textbuf *out) {
     for (size_t i = 0; i < p->n_series; i++) {
         const plot_series *s = &p->series[i];
         if (!s->label) continue;
-        text_addf(out,
-                  "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\" "
-                  "stroke-width=\"2.4\"%s/>\n",
-                  x, y - 4, x + 24, y - 4, tone_colour[s->tone], dashes(s->style));
+        if (s->style == PLOT_POINTS)
+            draw_mark(out, MARK_DISC, x + 12, y - 4);
+        else
+            text_addf(out,
+                      "<line x1=\"%.1f\" y1=\"%.1f\" x2=\"%.1f\" y2=\"%.1f\" style=\"stroke:%s\" "
+                      "stroke-width=\"2.4\"%s/>\n",
+                      x, y - 4, x + 24, y - 4, tone_colour[s->tone], dashes(s->style));
         draw_text(out, x + 30, y, "start", SOFT, "", s->label);
         x += 46.0 + 7.4 * (double)strlen(s->label);
     }

@@ -28,8 +28,9 @@ typedef struct {
     int tone;               /* colour of a line, 0 .. PLOT_TONES - 1 */
     const char *label;      /* in the legend; NULL: not listed */
     const plot_mark *marks; /* [n] for PLOT_POINTS; NULL: discs of the tone */
+    const char *const *point_names; /* [n] what each point is, where the axis has no names; NULL: none */
 } plot_series;
-enum { PLOT_TONES = 4 };
+enum { PLOT_TONES = 5 }; /* blue, amber, grey, teal, violet */
 
 typedef struct {
     double at; /* of x; not finite: not drawn */
@@ -58,8 +59,8 @@ typedef struct {
 /* Appends one <svg> element; failure is remembered in `out` (text_check). Without any finite value the chart says so. */
 void plot_svg(const plot *p, textbuf *out);
 
-/* The same values as a folded table, one line a point: series, x, y and the ends of its band or bar, the verdict of marked
- * points. One tbody a series. Series before `first` and points without a value are left out; `first` keeps a reference that
+/* The same values as a folded table, one line a point: series, x, y and the ends of its band or bar, verdict
+ * and name of points. One tbody a series. Series before `first` and points without a value are left out; `first` keeps a reference that
  * many charts share from being told again. `id` of the table, NULL: none. */
 void plot_table(const plot *p, size_t first, const char *id, textbuf *out);
 

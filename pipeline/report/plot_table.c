@@ -13,15 +13,16 @@ enum { DIGITS = 5 };
 
 /* What the rows of a table hold beside x and y. */
 typedef struct {
-    int labels, ends, verdicts;
+    int labels, ends, verdicts, names;
 } shape;
 
 static shape shape_of(const plot *p, size_t first) {
-    shape has = { 0, 0, 0 };
+    shape has = { 0, 0, 0, 0 };
     for (size_t s = first; s < p->n_series; s++) {
         has.labels |= p->series[s].label != NULL;
         has.ends |= p->series[s].lo && p->series[s].hi;
         has.verdicts |= p->series[s].marks != NULL;
+        has.names |= p->series[s].point_names != NULL;
     }
     return has;
 }
@@ -62,6 +63,10 @@ static void add_point(const plot *p, const plot_series *s, size_t i, const shape
         number_cell(out, s->hi ? s->hi[i] : (double)NAN);
     }
     if (has->verdicts) text_addf(out, "<td class=\"t\">%s", s->marks ? mark_word[s->marks[i]] : "");
+    if (has->names) {
+        text_add(out, "<td class=\"t\">");
+        if (s->point_names) html_text(out, s->point_names[i]);
+    }
     text_add(out, "\n");
 }
 
@@ -84,6 +89,7 @@ void plot_table(const plot *p, size_t first, const char *id, textbuf *out) {
         head_cell(out, "to", 1);
     }
     if (has.verdicts) head_cell(out, "verdict", 0);
+    if (has.names) head_cell(out, "sample", 0);
     text_add(out, "</tr></thead>");
     for (size_t s = first; s < p->n_series; s++) {
         text_add(out, "<tbody>\n");
@@ -110,8 +116,8 @@ static void number_member(textbuf *j, const char *name, double v) {
 
 static void columns_member(const plot *p, size_t first, textbuf *j) {
     shape has = shape_of(p, first);
-    text_addf(j, ",\"columns\":[%s%s%s%s]", has.labels ? "\"series\"," : "", "\"x\",\"y\"", has.ends ? ",\"lo\",\"hi\"" : "",
-              has.verdicts ? ",\"verdict\"" : "");
+    text_addf(j, ",\"columns\":[%s%s%s%s%s]", has.labels ? "\"series\"," : "", "\"x\",\"y\"", has.ends ? ",\"lo\",\"hi\"" : "",
+              has.verdicts ? ",\"verdict\"" : "", has.names ? ",\"name\"" : "");
 }
 
 static void series_member(const plot *p, textbuf *j) {

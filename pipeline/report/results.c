@@ -158,6 +158,7 @@ void results_json(const results *r, textbuf *out) {
     json_string(out, r->summary ? r->summary : "");
     text_addf(out, ",\n  \"wafers\": %s", r->wafers_json ? r->wafers_json : "[]");
     text_addf(out, ",\n  \"series\": %s", r->series_json ? r->series_json : "[]");
+    text_addf(out, ",\n  \"window\": %s,\n  \"angles\": %s", r->window_json ? r->window_json : "null", r->angles_json ? r->angles_json : "null");
     text_add(out, ",\n  \"images\": ");
     rows_json(&images, r->image_json, out);
     text_add(out, ",\n  \"samples\": ");

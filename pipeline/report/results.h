@@ -17,6 +17,7 @@ typedef struct {
     const char *wafers_json;      /* array: evenness of each wafer and quantity; NULL: none */
     const char *series_json;      /* array: control charts of the targets' quantities, of spacing and of reflectance over the history,
                                      objects as documented at control_json in app/control.h; NULL: none */
+    const char *window_json, *angles_json; /* objects: the process window around the samples, R against the angle; NULL: none */
     const char *summary;          /* what the terminal says, plain text */
     const char *title;            /* of the page: protocol's name or the folder's */
     /* for the page */
@@ -38,7 +39,7 @@ typedef struct {
 status results_write(const results *r, const char *out_dir, error *e);
 
 /* Bodies of the same outputs, for `measure --json` and for tests. results_json is a JSON object:
- * {"manifest", "summary", "wafers", "series", "images", "samples", "spectra", "flags"}; image and sample rows are keyed as the CSV plus the
+ * {"manifest", "summary", "wafers", "series", "window", "angles", "images", "samples", "spectra", "flags"}; image and sample rows are keyed as the CSV plus the
  * members of image_json / sample_json; spectra are grouped per sample, angle and polarization. */
 void images_csv(const results *r, textbuf *out);
 void samples_csv(const results *r, textbuf *out);

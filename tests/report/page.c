@@ -58,9 +58,8 @@ static void check_page(demo *d, const char *dir) {
         strstr(page, "<strong>few pixels</strong>: too few pixels per spacing; <strong>blurred</strong>: "));
     CHECK(strstr(page, "unreadable</span> the file ends after 12 bytes"));
     CHECK(count_of(page, " class=\"card ") == DEMO_IMAGES);
-    CHECK(
-        strstr(page, "<strong>Not used:</strong> <a href=\"#micrograph-2\">b.png</a> (<span class=\"flag\""));
-    CHECK(strstr(page, "<a href=\"#micrograph-3\">c.tif</a> (the file ends after 12 bytes).</p>"));
+    CHECK(strstr(page, "<a href=\"#micrograph-2\">b.png</a> was not used (<span class=\"flag\""));
+    CHECK(strstr(page, "<a href=\"#micrograph-3\">c.tif</a> was not used (the file ends after 12 bytes): the file cannot be read"));
     CHECK(strstr(page, "<pre tabindex=\"0\">1 of 2 samples conforms.\nRe-take &lt;c.tif&gt;.</pre>"));
     /* structure: every column explained once, table headers with scope, one h1 */
     CHECK(count_of(page, "<h1>") == 1 && !strstr(page, "<th>Column"));
@@ -131,6 +130,40 @@ static void check_picture(demo *d, const char *dir) {
     free(rgb);
 }
 
+/* A sample that fails says by how much, why that is believed, and what its wafer says: 450 +- 20 against at most 420; a density of
+ * 5.5 per um2 is a spacing of 458.2 nm; its two neighbours lie at 350. */
+static void check_case(const char *dir) {
+    static char names[3][8] = { "x", "y", "z" }, wafer[] = "W1", fails[] = "fails", conforms[] = "conforms";
+    static char *extra[2][1] = { { fails }, { conforms } };
+    static const char *const extra_names[] = { "verdict_spacing_nm" }, *const targets[] = { "spacing_nm" };
+    static const double min = 280.0, max = 420.0;
+    sample_row rows[3];
+    for (size_t i = 0; i < 3; i++) {
+        demo_sample_empty(&rows[i]);
+        rows[i].sample = names[i];
+        rows[i].wafer = wafer;
+        rows[i].spacing_nm = i ? 350.0 : 450.0;
+        rows[i].spacing_nm_u = 10.0;
+        rows[i].density_per_um2 = 5.5;
+        rows[i].n_images = rows[i].n_used = 2;
+        rows[i].verdict = i ? conforms : fails;
+        rows[i].extra = extra[i != 0];
+        rows[i].n_extra = 1;
+    }
+    results r = { .samples = rows, .n_samples = 3, .sample_extra = extra_names, .n_sample_extra = 1, .target_quantity = targets,
+                  .target_min = &min, .target_max = &max, .n_targets = 1 };
+    char *page = page_of(&r, dir);
+    CHECK(strstr(page, "1 of 3 samples fails; 2 conform.</p>"));
+    CHECK(strstr(page, "<dd>30 nm (7.1 % of the limit) above the upper limit of 420 nm.</dd>"));
+    CHECK(strstr(page, "430 nm to 470 nm, lies outside the target. 2 of 2 micrographs were used. Counting the features instead gives 458 nm: outside"));
+    CHECK(strstr(page, "2 of the 2 other samples of wafer W1 conform (mean 350 nm): the miss is local"));
+    free(page);
+    rows[0].density_per_um2 = 9.0; /* 358 nm: the two ways contradict each other */
+    page = page_of(&r, dir);
+    CHECK(strstr(page, "But counting the features gives 358 nm, which is inside"));
+    free(page);
+}
+
 /* Three located samples: 300 in the middle, 360 and 380 outside; sd 41.6 of 346.7. Two samples are no map. */
 static void check_map(const char *dir) {
     static char names[4][4] = { "a", "b", "c", "d" }, wafer[] = "W<7>";
@@ -188,6 +221,7 @@ int main(void) {
     demo_make(&d);
     check_picture(&d, dir);
     check_map(dir);
+    check_case(dir);
     check_html();
     CHECK(rmdir(dir) == 0);
     CHECK_FAILS(report_write(&d.r, "no/such/folder", &e), ST_IO, e, "report.html");

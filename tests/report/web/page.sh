@@ -15,9 +15,23 @@ if [ ! -d "$here/node_modules" ] && [ "${SWARD_WEB_INSTALL:-0}" = 1 ]; then
     (cd "$here" && npm install --no-audit --no-fund --silent) || skip "npm could not install the packages"
 fi
 [ -d "$here/node_modules" ] || skip "no node_modules in tests/report/web; SWARD_WEB_INSTALL=1 installs them"
-out=$(mktemp -d)
-trap 'rm -rf "$out"' EXIT
-code=0
-"$sward" run "$images" --out "$out" --quiet || code=$?
-[ "$code" = 0 ] || [ "$code" = 3 ] || { echo "run failed with $code"; exit 1; }
-node "$here/page.js" "$out/report.html" "$browser"
+work=$(mktemp -d)
+trap 'rm -rf "$work"' EXIT
+run() {
+    code=0
+    "$sward" run "$@" --quiet >/dev/null || code=$?
+    [ "$code" = 0 ] || [ "$code" = 3 ] || { echo "run failed with $code"; exit 1; }
+}
+run "$images" --out "$work/out"
+
+# The same picture under names that try to become part of the page.
+mkdir "$work/strange"
+picture=$(find "$images" -name '*.png' | sort | head -n 1)
+cp "$picture" "$work/strange/<img src=x onerror=alert(1)>.png"
+cp "$picture" "$work/strange/a\"'&\`\${b}.png"
+cat >"$work/strange/samples.csv" <<'CSV'
+file,sample,lot,wafer,px_nm
+<img src=x onerror=alert(1)>.png,</script><script>document.title='owned'</script>,<svg onload=alert(2)>,--><script>alert(3)</script>,4
+CSV
+run "$work/strange" --out "$work/strange-out"
+node "$here/page.js" "$work/out" "$work/strange-out" "$browser"
