@@ -288,7 +288,6 @@ status publish(const publication *p, error *e) {
         write_manifest(p, &m.manifest);
         summary_text(p, &m.summary);
         st = wafers_describe(m.samples, m.x_mm, m.y_mm, p->n_groups, &m.wafers, &m.summary, e);
-        if (p->ledger->process) text_add(&m.note, p->ledger->process);
         if (p->ledger->stays_with_output)
             text_add(&m.note, "The history lies with this output (history.sqlite); name one place for it in the protocol "
                               "(\"history\") or with --history so that later runs add to it.");
@@ -304,7 +303,7 @@ status publish(const publication *p, error *e) {
         if (colour_wanted()) summary_colour(m.summary.s, &coloured);
         fputs(coloured.s && !coloured.failed ? coloured.s : m.summary.s, stdout);
         text_free(&coloured);
-        fprintf(stdout, "%s\n", m.note.s);
+        fprintf(stdout, "%s%s\n", p->ledger->process ? p->ledger->process : "", m.note.s);
         if (p->page) fprintf(stdout, "Report: %s/report.html\n", p->out);
         else fprintf(stdout, "Tables: %s\n", p->out);
     }

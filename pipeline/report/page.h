@@ -17,9 +17,10 @@ void page_budgets(const results *r, textbuf *out); /* where the uncertainty come
 void page_meaning(const results *r, textbuf *out); /* what the numbers mean, flags, validity */
 void page_inputs(const results *r, textbuf *out);  /* methods with their sources, and the manifest */
 
-/* Parts of those: what fails and the list of advice inside the verdict, reflectance against the angle, the charts inside the texture. */
+/* Parts of those: what fails and the list of advice inside the verdict, control charts, reflectance against the angle, the charts inside the texture. */
 void page_cases(const results *r, textbuf *out);
 void page_advice(const results *r, textbuf *out);
+void page_control(const results *r, textbuf *out);
 void page_angles(const results *r, textbuf *out);
 void page_profiles(const results *r, const char *out_dir, textbuf *out);
 

@@ -78,7 +78,7 @@
   // ---- charts ----
   const colour = (name) => getComputedStyle(document.documentElement).getPropertyValue('--' + name).trim();
   const TONES = ['blue', 'amber', 'grey', 'teal', 'violet'];
-  const MARKS = { conforms: ['circle', 'teal'], undecided: ['rectRot', 'amber'], fails: ['triangle', 'red'], 'no target': ['rect', 'soft'] };
+  const MARKS = [['circle', 'teal'], ['rectRot', 'amber'], ['triangle', 'red'], ['rect', 'soft']]; // in the order of spec.words
   const DASHES = { dashed: [8, 4], dotted: [2, 4] };
   const faded = (hex, alpha) => hex + Math.round(255 * alpha).toString(16).padStart(2, '0'); // the style sheet has #rrggbb
   const parted = (label) => label.match(/^(.*?)(?: \(([^()]*)\))?$/).slice(1); // "spacing (nm)" -> spacing, nm
@@ -107,12 +107,12 @@
       const w = points[1].x - points[0].x, last = points[points.length - 1];
       points = [{ x: points[0].x - w, y: 0 }, ...points, { x: last.x + w, y: 0 }];
     }
-    return { label: s.label || parted(spec.y)[0], data: points, borderColor: tone, borderDash: DASHES[s.style] || [], borderWidth: s.style === 'line' ? 2.2 : 1.6,
+    return { label: s.label || parted(spec.y)[0], unlisted: s.unlisted, data: points, borderColor: tone, borderDash: DASHES[s.style] || [], borderWidth: s.style === 'line' ? 2.2 : 1.6,
       stepped: steps ? 'middle' : false, fill: steps ? 'origin' : false, backgroundColor: faded(tone, 0.2), pointRadius: 0, pointHitRadius: 12,
       pointHoverRadius: 4, pointHoverBackgroundColor: tone, order: 1 };
   };
   const pointSet = (s, spec) => {
-    const mark = s.points.map((p) => MARKS[p.text.verdict] || ['circle', TONES[s.tone]]), colours = mark.map((m) => colour(m[1]));
+    const mark = s.points.map((p) => MARKS[(spec.words || []).indexOf(p.text.verdict)] || ['circle', TONES[s.tone]]), colours = mark.map((m) => colour(m[1]));
     return { label: s.label || parted(spec.y)[0], data: s.points, showLine: false, pointStyle: mark.map((m) => m[0]), pointRadius: 6, pointHoverRadius: 8,
       pointBackgroundColor: colours, pointBorderColor: colour('paper'), borderColor: colours[0] || colour('teal'),
       backgroundColor: colours[0] || colour('teal'), bars: true, order: 0 };
@@ -209,7 +209,7 @@
     return { x, y };
   };
 
-  const legendOf = (chart) => Chart.defaults.plugins.legend.labels.generateLabels(chart).filter((item) => item.text !== '').map((item) =>
+  const legendOf = (chart) => Chart.defaults.plugins.legend.labels.generateLabels(chart).filter((item) => item.text !== '' && !chart.data.datasets[item.datasetIndex].unlisted).map((item) =>
     Object.assign(item, { pointStyle: chart.data.datasets[item.datasetIndex].bars ? 'circle' : 'line', lineWidth: 2.2 }));
 
   const configure = (spec, table) => {

@@ -1,4 +1,4 @@
-/* Spacing and weighted reflectance over the etches with their targets. The time order is the ledger's when there is one, else
+/* Spacing and weighted reflectance of the samples in time order with their targets, then the control charts of the etches. The time order is the ledger's when there is one, else
  * etched_at of the samples; etches of the same time stand in the order of this run's rows. */
 #include <cjson/cJSON.h>
 #include <math.h>
@@ -220,6 +220,7 @@ void page_series(const results *r, textbuf *out) {
         text_addf(out,
                   "<p class=\"small\">The last %zu etches are drawn; %zu older ones are in the ledger.</p>\n",
                   t->n, t->left_out);
+    page_control(r, out);
     if (r->history_note && *r->history_note) {
         text_add(out, "<p class=\"small\">");
         html_text(out, r->history_note);

@@ -221,7 +221,7 @@ static void draw_legend(const plot *p, const axes *f, textbuf *out) {
     double x = f->left, y = 36;
     for (size_t i = 0; i < p->n_series; i++) {
         const plot_series *s = &p->series[i];
-        if (!s->label) continue;
+        if (!s->label || s->unlisted) continue;
         if (s->style == PLOT_POINTS)
             draw_mark(out, MARK_DISC, x + 12, y - 4);
         else

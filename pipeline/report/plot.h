@@ -26,7 +26,8 @@ typedef struct {
     size_t n;
     plot_style style;
     int tone;               /* colour of a line, 0 .. PLOT_TONES - 1 */
-    const char *label;      /* in the legend; NULL: not listed */
+    const char *label;      /* in the legend and the table; NULL: not listed */
+    int unlisted;           /* 1: the legend leaves it out, the table does not */
     const plot_mark *marks; /* [n] for PLOT_POINTS; NULL: discs of the tone */
     const char *const *point_names; /* [n] what each point is, where the axis has no names; NULL: none */
 } plot_series;
@@ -52,6 +53,8 @@ typedef struct {
     size_t n_series;
     const plot_rule *rules;
     size_t n_rules;
+    const char *const *mark_words; /* [4] of the table, as plot_mark; NULL: verdicts */
+    const char *mark_title;        /* head of their column; NULL: verdict */
     int width, height; /* of the view box, px; 0: 720 x 320 */
     int no_legend;     /* the page says once for many charts what their lines are */
 } plot;

@@ -38,7 +38,8 @@ static void number_cell(textbuf *out, double v) {
     text_addf(out, "<td>%s", number_text(v, DIGITS, number));
 }
 
-static const char *const mark_word[] = { "conforms", "undecided", "fails", "no target" }; /* as plot_mark */
+static const char *const verdict_word[] = { "conforms", "undecided", "fails", "no target" }; /* as plot_mark */
+static const char *const *words_of(const plot *p) { return p->mark_words ? p->mark_words : verdict_word; }
 
 static void add_point(const plot *p, const plot_series *s, size_t i, const shape *has, textbuf *out) {
     size_t k = p->names ? (size_t)lround(s->x[i]) : 0;
@@ -62,7 +63,7 @@ static void add_point(const plot *p, const plot_series *s, size_t i, const shape
         number_cell(out, s->lo ? s->lo[i] : (double)NAN);
         number_cell(out, s->hi ? s->hi[i] : (double)NAN);
     }
-    if (has->verdicts) text_addf(out, "<td class=\"t\">%s", s->marks ? mark_word[s->marks[i]] : "");
+    if (has->verdicts) text_addf(out, "<td class=\"t\">%s", s->marks ? words_of(p)[s->marks[i]] : "");
     if (has->names) {
         text_add(out, "<td class=\"t\">");
         if (s->point_names) html_text(out, s->point_names[i]);
@@ -88,7 +89,7 @@ void plot_table(const plot *p, size_t first, const char *id, textbuf *out) {
         head_cell(out, "from", 1);
         head_cell(out, "to", 1);
     }
-    if (has.verdicts) head_cell(out, "verdict", 0);
+    if (has.verdicts) head_cell(out, p->mark_title ? p->mark_title : "verdict", 0);
     if (has.names) head_cell(out, "sample", 0);
     text_add(out, "</tr></thead>");
     for (size_t s = first; s < p->n_series; s++) {
@@ -126,7 +127,16 @@ static void series_member(const plot *p, textbuf *j) {
     for (size_t s = 0; s < p->n_series; s++) {
         text_addf(j, "%s{\"style\":\"%s\",\"tone\":%d", s ? "," : "", style[p->series[s].style], p->series[s].tone);
         text_member(j, "label", p->series[s].label);
-        text_add(j, "}");
+        text_add(j, p->series[s].unlisted ? ",\"unlisted\":true}" : "}");
+    }
+    text_add(j, "]");
+}
+
+static void words_member(const plot *p, textbuf *j) {
+    text_add(j, ",\"words\":[");
+    for (size_t k = 0; k < 4; k++) {
+        if (k) text_add(j, ",");
+        json_string(j, words_of(p)[k]);
     }
     text_add(j, "]");
 }
@@ -169,6 +179,7 @@ void plot_chart(const plot *p, size_t first, const char *shared, textbuf *out) {
     number_member(&j, "targetHi", p->target_hi);
     text_member(&j, "target", p->target_label);
     columns_member(p, first, &j);
+    if (shape_of(p, first).verdicts) words_member(p, &j);
     series_member(p, &j);
     rules_member(p, &j);
     names_member(p, &j);

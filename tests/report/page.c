@@ -164,6 +164,25 @@ static void check_case(const char *dir) {
     free(page);
 }
 
+/* The control chart draws what "series" says: limits of the phase, the note as a line before the second etch, the alarm as a triangle,
+ * the sentences as they are. */
+static void check_control(demo *d, const char *dir) {
+    d->r.series_json =
+        "[{\"quantity\": \"spacing_nm\", \"unit\": \"nm\", \"target_min\": 280, \"target_max\": 420, \"phases\": [{\"number\": 1, \"first\": 1, "
+        "\"low\": 310.5, \"centre\": 340, \"high\": 369.5, \"why\": \"\"}], \"points\": [{\"number\": 1, \"etched_at\": \"2026-01-02T03:04:05Z\", "
+        "\"phase\": 1, \"value\": 341.5, \"sd\": 4, \"alarms\": [], \"excluded\": null}, {\"number\": 2, \"etched_at\": \"2026-01-03T00:00:00Z\", "
+        "\"phase\": 1, \"value\": 390.5, \"sd\": null, \"alarms\": [\"beyond\"], \"excluded\": null}], \"notes\": [{\"at\": \"2026-01-02\", "
+        "\"kind\": \"change\", \"text\": \"new <gas>\", \"before\": 2}], \"sentences\": [\"ALARM: <E2> lies beyond 3 sigma.\"]}]";
+    char *page = page_of(&d->r, dir);
+    d->r.series_json = NULL;
+    CHECK(strstr(page, "Control chart: Spacing of each etch") && strstr(page, "<li>ALARM: &lt;E2&gt; lies beyond 3 sigma.</li>"));
+    CHECK(strstr(page, "<tr data-x=\"0\"><td class=\"t\">mean of an etch<th scope=\"row\">2026-01-02 03:04</th><td>341.5<td>337.5<td>345.5<td class=\"t\">in control"));
+    CHECK(strstr(page, "2026-01-03 00:00</th><td>390.5<td><td><td class=\"t\">alarm"));
+    CHECK(count_of(page, "<td class=\"t\">upper control limit<th") == 2 && strstr(page, "<td>369.5<td>"));
+    CHECK(strstr(page, "{&quot;tone&quot;:1,&quot;at&quot;:0.5,&quot;label&quot;:&quot;new &lt;gas&gt;&quot;}"));
+    free(page);
+}
+
 /* Three located samples: 300 in the middle, 360 and 380 outside; sd 41.6 of 346.7. Two samples are no map. */
 static void check_map(const char *dir) {
     static char names[4][4] = { "a", "b", "c", "d" }, wafer[] = "W<7>";
@@ -222,6 +241,7 @@ int main(void) {
     check_picture(&d, dir);
     check_map(dir);
     check_case(dir);
+    check_control(&d, dir);
     check_html();
     CHECK(rmdir(dir) == 0);
     CHECK_FAILS(report_write(&d.r, "no/such/folder", &e), ST_IO, e, "report.html");
