@@ -36,7 +36,7 @@ typedef struct {
     size_t at_wavelength, at_R;
     int percent, um, decimal_comma, by_name;
     row *rows;
-    size_t n;
+    size_t n, missing; /* missing: lines without a reflectance */
 } reader;
 
 /* ---- lines and cells ---- */
@@ -116,6 +116,22 @@ static int cell_number(const text_line *c, char separator, double *out, int *per
     return number_parse(text, out);
 }
 
+static void lower_case(const text_line *c, char out[CELL]) {
+    size_t n = c->n < CELL - 1 ? c->n : CELL - 1;
+    for (size_t i = 0; i < n; i++) out[i] = (char)tolower((unsigned char)c->s[i]);
+    out[n] = '\0';
+}
+
+/* What instruments write where they have no value. */
+static int is_no_value(const text_line *c) {
+    static const char *const words[] = { "", "-", "--", "---", "nan", "-nan", "na", "n/a", "#n/a", "null", "inf", "-inf" };
+    char name[CELL];
+    lower_case(c, name);
+    for (size_t i = 0; i < sizeof words / sizeof words[0]; i++)
+        if (!strcmp(name, words[i])) return 1;
+    return 0;
+}
+
 /* ---- dialect ---- */
 
 static int begins_with_number(const text_line *l) {
@@ -124,7 +140,9 @@ static int begins_with_number(const text_line *l) {
     if (!(i < l->n && (isdigit((unsigned char)l->s[i]) || l->s[i] == '.'))) return 0;
     while (i < l->n && (isdigit((unsigned char)l->s[i]) || strchr(".,eE+-%\"", l->s[i]))) i++;
     if (i >= l->n) return 1;
-    return is_blank(l->s[i]) || l->s[i] == ';';
+    text_line rest = { l->s + i, 0, l->line };
+    while (i + rest.n < l->n && l->s[i + rest.n] != ',') rest.n++;
+    return is_blank(l->s[i]) || l->s[i] == ';' || (l->s[i - 1] == ',' && is_no_value(&rest));
 }
 
 /* Numbers from here on: a line that begins with one, as do the line behind it (or the end). Dates and serial numbers of a
@@ -165,12 +183,6 @@ static status find_separator(reader *r, error *e) {
 }
 
 /* ---- header ---- */
-
-static void lower_case(const text_line *c, char out[CELL]) {
-    size_t n = c->n < CELL - 1 ? c->n : CELL - 1;
-    for (size_t i = 0; i < n; i++) out[i] = (char)tolower((unsigned char)c->s[i]);
-    out[n] = '\0';
-}
 
 static int speaks_of(const char *name, const char *const *words, size_t n) {
     for (size_t i = 0; i < n; i++)
@@ -274,6 +286,11 @@ static status read_rows(reader *r, error *e) {
         for (size_t k = 0; k < 2; k++) {
             text_line c = { "", 0, l->line };
             int percent = 0, found = cell_at(l, r->separator, wanted[k].column, &c);
+            if (found && k && is_no_value(&c)) {
+                r->missing++;
+                r->n--;
+                break;
+            }
             if (!found || !cell_number(&c, r->separator, wanted[k].to, &percent, &r->decimal_comma))
                 return fail(e, ST_BAD_INPUT, "%s line %zu: found '%.*s', expected a %s", r->what, l->line,
                             c.n < 40 ? (int)c.n : 40, c.s, wanted[k].noun);
@@ -360,6 +377,8 @@ static void describe(const reader *r, int descending, size_t merged, spectrum *o
     };
     for (size_t i = 0; i < sizeof said / sizeof said[0]; i++)
         if (said[i].on) text_addf(&t, "%s%s", t.n ? ", " : "", said[i].word);
+    if (r->missing)
+        text_addf(&t, "%s%zu without a value left out", t.n ? ", " : "", r->missing);
     if (merged)
         text_addf(&t, "%s%zu %s averaged", t.n ? ", " : "", merged, merged == 1 ? "duplicate" : "duplicates");
     if (!r->percent && out->n) {

@@ -15,7 +15,7 @@ typedef struct {
  * before it is the header. Columns: the one whose name speaks of wavelength and the one that speaks of reflectance; in a
  * file of two columns the first and the second. Separators: semicolon, tab, comma or blanks; a decimal comma with all but
  * comma. Wavelengths all below 10 are um. Percent where the header says so or a value passes 1.5. Any order; equal
- * wavelengths are averaged.
+ * wavelengths are averaged; lines whose reflectance is blank, a dash or NaN are left out and counted in the note.
  *   err  ST_BAD_INPUT with the line: no numbers, no telling columns, transmittance or wave numbers, a cell that is no
  *        number, a wavelength outside 100 to 20000 nm, a reflectance outside -2 % to 105 %, a share between 1.05 and 1.5
  *        (share or percent?), equal wavelengths more than 5 % apart in R, commas that might separate or be decimal, fewer

@@ -96,10 +96,12 @@ static status references(const optics_setup *o, const grid *g, double *work, pre
     layer film = { o->nitride, NITRIDE_NM };
     stack s = bare(o);
     status st = polished_spectrum(o, 0, g, work, e);
+    if (st == ST_OK) st = rear_add_flat(o, NULL, 0, g, work, e);
     if (st == ST_OK) st = photon_mean(o, g, work, &out->polished, e);
     s.coatings = &film;
     s.n_coatings = 1;
     if (st == ST_OK) st = solve(&s, o, g, work, NULL, e);
+    if (st == ST_OK) st = rear_add_flat(o, &film, 1, g, work, e);
     return st == ST_OK ? photon_mean(o, g, work, &out->coated, e) : st;
 }
 

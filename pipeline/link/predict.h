@@ -41,7 +41,7 @@ typedef struct {
     double *wavelength_nm, *R, *R_lo, *R_hi; /* [n] owned; lo/hi 95 % interval; NAN when no model error is known */
     double weighted, weighted_lo, weighted_hi; /* NAN when refused */
     double current_loss_mA_cm2;
-    double polished, coated;       /* references, same ambient, angle and polarization */
+    double polished, coated;       /* references, same ambient, angle, polarization and rear */
     order_shares shares;           /* NAN when spacing is unknown */
     double rear_escape;            /* of the weighted value, from the rear; NAN: front surface only */
     double area_ratio, aspect;

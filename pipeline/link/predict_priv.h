@@ -53,6 +53,8 @@ void route_say(const route *r, const surface_input *in, const optics_setup *o, t
  * err as reflectance() */
 status rear_add(const surface_input *in, const optics_setup *o, const variant *v, const grid *fine, int facets,
                 prediction *out, error *e);
+/* The same for a flat surface with planar coatings. */
+status rear_add_flat(const optics_setup *o, const layer *film, size_t n_films, const grid *g, double *R, error *e);
 /* The sentence on it: included or not. */
 void rear_say(const optics_setup *o, const prediction *p, textbuf *t);
 

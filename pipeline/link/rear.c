@@ -1,6 +1,6 @@
 /* The rear side of the wafer in a prediction: optics/escape.h on the predicted front. Diffuse light inside meets the
  * front with its hemispherical reflectance, computed every 10 nm where the wafer is not opaque. The interval is
- * carried over: each of its ends with the escape that belongs to it. The references stay front surfaces. What this
+ * carried over: each of its ends with the escape that belongs to it. The flat references get the same rear. What this
  * file does not do: uncertainty of the rear itself; absorption in a laminate on the way out. */
 #include <math.h>
 #include <stdlib.h>
@@ -82,6 +82,21 @@ status rear_add(const surface_input *in, const optics_setup *o, const variant *v
         st = current_of(o, fine, out->R, &out->current_loss_mA_cm2, e);
     }
     free(diffuse);
+    return st;
+}
+
+/* A flat surface under these coatings, on its own: the texture's path with no height. */
+status rear_add_flat(const optics_setup *o, const layer *film, size_t n_films, const grid *g, double *R, error *e) {
+    if (!(o->rear.thickness_um > 0.0)) return ST_OK;
+    optics_setup flat = *o;
+    surface_input in = { .link = link_defaults() };
+    variant v = variant_central(&in, o);
+    prediction p = { .R = R, .R_lo = mem_array(g->n, sizeof *R), .R_hi = mem_array(g->n, sizeof *R) };
+    flat.coatings = film;
+    flat.n_coatings = n_films;
+    status st = p.R_lo && p.R_hi ? rear_add(&in, &flat, &v, g, 0, &p, e) : NO_MEMORY(e, "the rear side");
+    free(p.R_lo);
+    free(p.R_hi);
     return st;
 }
 

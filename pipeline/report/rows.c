@@ -126,9 +126,9 @@ const column sample_columns[] = {
     SAMPLE(current_loss_mA_cm2, COL_NUMBER, "mA/cm2", 5,
            "current the reflected photons would have given at one electron per photon, AM1.5G, same band"),
     SAMPLE(polished_reflectance, COL_NUMBER, "1", 5,
-           "weighted reflectance of polished silicon in the same ambient, angle and polarization"),
+           "weighted reflectance of polished silicon in the same ambient, angle, polarization and rear"),
     SAMPLE(coated_reflectance, COL_NUMBER, "1", 5,
-           "weighted reflectance of polished silicon under 75 nm of silicon nitride, same ambient, angle and polarization"),
+           "weighted reflectance of polished silicon under 75 nm of silicon nitride, same ambient, angle, polarization and rear"),
     SAMPLE(subwavelength_share, COL_NUMBER, "1", 4,
            "share of the weighted photons for which the texture makes no diffraction order, the domain of the graded-index "
            "model"),

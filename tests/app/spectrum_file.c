@@ -52,6 +52,7 @@ static void dialects(void) {
          "percent");
     same("Zeit;Wellenl\xc3\xa4nge [nm];Reflexionsgrad [%];Sigma\n1;400,5;3,12;0,1\n2;500;2,1;0,1\n3;600;10;0,1\n",
          "percent, decimal comma");
+    same("nm,R\n400.5,0.0312\n410,NaN\n420,\n430, -- \n500,0.021\n600,0.1\n610,#N/A\n", "4 without a value left out");
     same("R,nm\n0.0312,400.5\n0.021,500\n0.1,600\n", "");
     same("nm,R,\n400.5,0.0312,\n500,0.021,\n600,0.1,\n", "");
 }
@@ -78,6 +79,8 @@ static void refusals(void) {
         { "nm,R\n400,0.1\n500,abc\n", "no line begins" }, /* one line of numbers alone is no block */
         { "nm,R\n400,0.1\n450,0.1\n500,abc\n", "line 4: found 'abc', expected a reflectance" },
         { "nm,R\n400,0.1\n450,0.1\nend of file\n", "line 4: found 'end of file', expected a wavelength" },
+        { "nm,R\n400,0.1\n450,\n500,nan\n", "single wavelength" },
+        { "nm,R\n450,0.1\n500,0.1\nnan,0.1\n", "line 4: found 'nan', expected a wavelength" },
         { "nm,R\n400,0.1\n450\n500,0.1\n", "line 3: found '', expected a reflectance" },
         { "nm,R\n400,0.1\n-450,0.1\n", "line 3: found the wavelength -450" },
         { "nm,R\n400,0.1\n45000,0.1\n", "line 3: found the wavelength 45000" },

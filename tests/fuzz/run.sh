@@ -8,7 +8,7 @@ minutes=${1:-1}
 [ $# -gt 0 ] && shift
 case $minutes in *[!0-9]*|'') echo "usage: $0 [MINUTES] [TARGET...]" >&2; exit 2 ;; esac
 command -v clang >/dev/null || { echo "clang is missing: apt-get install clang" >&2; exit 2; }
-targets=${*:-load_memory instrument_text xml_scale csv_parse json_parse}
+targets=${*:-load_memory instrument_text xml_scale csv_parse json_parse spectrum_parse}
 build=${SWARD_FUZZ_BUILD:-build-fuzz}
 cmake -S . -B "$build" -G Ninja -DCMAKE_C_COMPILER=clang -DCMAKE_BUILD_TYPE=RelWithDebInfo -DSWARD_FUZZ=ON \
     -DSWARD_SANITIZE=address,undefined >/dev/null

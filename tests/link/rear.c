@@ -34,6 +34,13 @@ static void compare(double height, double spacing) {
     CHECK(strstr(straight.note, "straight double pass") && strstr(mirror.note, "the rear reflects 100 %"));
     CHECK_NEAR(on.weighted - off.weighted, on.rear_escape, 1e-12);
     CHECK(on.rear_escape > 0.005 && on.rear_escape < 0.08);
+    /* like with like: the flat references have the same rear, and a polished sample is its own reference */
+    CHECK(on.polished > off.polished + 0.005 && on.coated > off.coated + 0.005);
+    CHECK(straight.polished > off.polished && straight.polished < mirror.polished);
+    if (!(height > 0.0)) {
+        CHECK_NEAR(on.polished, on.weighted, 1e-12);
+        CHECK_NEAR(mirror.polished, mirror.weighted, 1e-12);
+    }
     CHECK(straight.rear_escape < mirror.rear_escape);
     CHECK(on.weighted_lo <= on.weighted && on.weighted <= on.weighted_hi &&
           on.weighted_lo >= off.weighted_lo);
