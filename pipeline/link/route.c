@@ -8,9 +8,9 @@
  * facets are seen 2 to 4 degrees flatter than the 54.74 of the crystal: from memory). Bounces: the plain value follows
  * equal facing facets; random pyramids send less or more light on to one facet more, so the upper end has only the
  * bounces that all light makes, the lower end half of the light going on. Upper end also: 4 % of the ground flat or
- * rounded, one bounce. These two shares are judgement.
- * What this file does not do: oblique light on facets, laminates over facets (the pyramids' light meets the glass
- * obliquely), two scales at once. */
+ * rounded, one bounce. These two shares are judgement. Oblique or diffuse light and laminates: rays followed through a
+ * regular field of pyramids (facets_field_reflectance); there the upper end lets light go after two bounces.
+ * What this file does not do: two scales at once. */
 #include <math.h>
 #include <stdlib.h>
 
@@ -38,12 +38,9 @@ static status share_beyond(double spacing_nm, const optics_setup *o, double *sha
     return st;
 }
 
-static const char *why_no_facets(const surface_input *in, const optics_setup *o, double angle_deg) {
+static const char *why_no_facets(const surface_input *in, double angle_deg) {
     if (in->measured) return "a measured profile has no facets";
     if (!(in->spacing_nm.value > 0.0)) return "the spacing is unknown";
-    if (o->reflect.hemispherical || o->reflect.angle_deg > 0.0)
-        return "the facet model knows vertical light only";
-    if (o->front.glass) return "the facet model knows no laminate";
     if (!(angle_deg >= STEEP_DEG))
         return "its facets are flatter than 45 degrees, so that part of the light meets one only";
     return "";
@@ -58,7 +55,7 @@ status route_choose(const surface_input *in, const optics_setup *o, const varian
         o->facet_angle_deg > 0.0 ? o->facet_angle_deg : facets_angle_deg(v->height_nm, v->spacing_nm);
     if (!asked && !coarse) return ST_OK;
     out->why = !asked && o->model == OPTICS_GRADED ? "the protocol asks for the graded index only"
-                                                   : why_no_facets(in, o, out->angle_deg);
+                                                   : why_no_facets(in, out->angle_deg);
     out->facets = !out->why[0];
     out->refused = !out->facets;
     return ST_OK;
@@ -70,12 +67,36 @@ typedef struct {
     const optics_setup *o;
     const grid *g;
     stack flat;
+    int field;                 /* 1: oblique or diffuse light, or a laminate */
     double *end, *up2, *down2; /* [n] */
     double weighted_up2, weighted_down2;
 } reach;
 
-static status evaluate(const reach *w, const facet_path *p, double *R, double *weighted, error *e) {
-    status st = facets_reflectance(&w->flat, p, w->g->wavelength_nm, w->g->n, R, e);
+/* As followed; only the bounces that all light makes; half of the light one bounce more. */
+typedef enum { BOUNCES_ALL, BOUNCES_COMMON, BOUNCES_MORE } bounces;
+
+static void path_of(double angle_deg, bounces which, facet_path *path) {
+    facet_path common;
+    facets_path(angle_deg, path);
+    facets_path_common(path, &common);
+    if (which == BOUNCES_COMMON) {
+        *path = common;
+    } else if (which == BOUNCES_MORE && common.n < path->n) {
+        path->share[common.n] = fmax(path->share[common.n], GOES_ON);
+    } else if (which == BOUNCES_MORE && path->n < FACET_BOUNCES) { /* a facet more, met as the last one */
+        path->incidence_deg[path->n] = path->incidence_deg[path->n - 1];
+        path->share[path->n++] = GOES_ON;
+    }
+}
+
+static status evaluate(const reach *w, double angle_deg, bounces which, double *R, double *weighted, error *e) {
+    facet_path path;
+    facet_field f = { .angle_deg = fmin(fmax(angle_deg, 1.0), 89.0),
+                      .bounces_most = which == BOUNCES_COMMON ? 2 : FACET_BOUNCES,
+                      .goes_on = which == BOUNCES_MORE ? GOES_ON : 0.0 };
+    path_of(angle_deg, which, &path);
+    status st = w->field ? facets_field_reflectance(&w->flat, &f, &w->o->reflect, w->g->wavelength_nm, w->g->n, R, e)
+                         : facets_reflectance(&w->flat, &path, w->g->wavelength_nm, w->g->n, R, e);
     return st == ST_OK ? photon_mean(w->o, w->g, R, weighted, e) : st;
 }
 
@@ -83,17 +104,14 @@ static void extend(double plain, double end, double *up2, double *down2) {
     *(end > plain ? up2 : down2) += sq(end - plain);
 }
 
-/* One end of an input: the path as it would be, `once` of it replaced by single bounces. */
-static status add_end(reach *w, const prediction *p, const facet_path *path, double once, double *moved,
-                      error *e) {
-    facet_path single = *path;
+/* One end of an input; `once` of it replaced by flat ground. */
+static status add_end(reach *w, const prediction *p, double angle_deg, bounces which, double once, double *moved, error *e) {
     double mean = 0.0, flat_mean = 0.0, ignored = 0.0;
-    status st = evaluate(w, path, w->end, &mean, e);
+    status st = evaluate(w, angle_deg, which, w->end, &mean, e);
     double *flat = st == ST_OK ? mem_array(w->g->n, sizeof *flat) : NULL;
     if (st == ST_OK && !flat) st = NO_MEMORY(e, "the interval of facets");
-    single.n = 1;
-    single.incidence_deg[0] = 0.0;
-    if (st == ST_OK) st = evaluate(w, &single, flat, &flat_mean, e);
+    if (st == ST_OK) st = reflectance(&w->flat, &w->o->reflect, w->g->wavelength_nm, w->g->n, flat, NULL, e);
+    if (st == ST_OK) st = photon_mean(w->o, w->g, flat, &flat_mean, e);
     for (size_t i = 0; i < w->g->n && st == ST_OK; i++)
         extend(p->R[i], (1.0 - once) * w->end[i] + once * flat[i], &w->up2[i], &w->down2[i]);
     mean = (1.0 - once) * mean + once * flat_mean;
@@ -113,23 +131,11 @@ static double angle_u(const surface_input *in, const optics_setup *o) {
 }
 
 static status add_ends(reach *w, const surface_input *in, const route *r, prediction *out, error *e) {
-    facet_path path, common, other;
     double u = angle_u(in, w->o), low = 0.0, high = 0.0, on = 0.0;
-    facets_path(r->angle_deg, &path);
-    facets_path_common(&path, &common);
-    facets_path(r->angle_deg - 2.0 * u, &other);
-    status st = add_end(w, out, &other, 0.0, &low, e);
-    facets_path(r->angle_deg + 2.0 * u, &other);
-    if (st == ST_OK) st = add_end(w, out, &other, 0.0, &high, e);
-    if (st == ST_OK) st = add_end(w, out, &common, FLAT_SHARE, NULL, e);
-    other = path;
-    if (common.n < path.n) {
-        other.share[common.n] = fmax(other.share[common.n], GOES_ON);
-    } else if (path.n < FACET_BOUNCES) { /* a facet more, met as the last one */
-        other.incidence_deg[other.n] = other.incidence_deg[other.n - 1];
-        other.share[other.n++] = GOES_ON;
-    }
-    if (st == ST_OK) st = add_end(w, out, &other, 0.0, &on, e);
+    status st = add_end(w, out, r->angle_deg - 2.0 * u, BOUNCES_ALL, 0.0, &low, e);
+    if (st == ST_OK) st = add_end(w, out, r->angle_deg + 2.0 * u, BOUNCES_ALL, 0.0, &high, e);
+    if (st == ST_OK) st = add_end(w, out, r->angle_deg, BOUNCES_COMMON, FLAT_SHARE, NULL, e);
+    if (st == ST_OK) st = add_end(w, out, r->angle_deg, BOUNCES_MORE, 0.0, &on, e);
     out->u_height = 0.25 * fabs(high - low); /* the ends lie at 2 u */
     out->u_model = 0.5 * fabs(on);
     return st;
@@ -139,18 +145,18 @@ status facets_fill(const surface_input *in, const optics_setup *o, const route *
                    prediction *out, error *e) {
     reach w = { .o = o,
                 .g = g,
+                .field = o->reflect.hemispherical || o->reflect.angle_deg > 0.0 || o->front.glass != NULL,
                 .flat = { .ambient = o->ambient,
+                          .front = o->front,
                           .coatings = o->coatings,
                           .n_coatings = o->n_coatings,
                           .substrate = o->substrate } };
-    facet_path path;
-    facets_path(r->angle_deg, &path);
     double *block = mem_array(3 * g->n, sizeof *block);
     if (!block) return NO_MEMORY(e, "the reflectance of facets");
     w.end = block;
     w.up2 = block + g->n;
     w.down2 = block + 2 * g->n;
-    status st = evaluate(&w, &path, out->R, &out->weighted, e);
+    status st = evaluate(&w, r->angle_deg, BOUNCES_ALL, out->R, &out->weighted, e);
     if (st == ST_OK) st = current_of(o, g, out->R, &out->current_loss_mA_cm2, e);
     if (st == ST_OK && r->beyond > 0.5) {
         st = add_ends(&w, in, r, out, e);
@@ -190,6 +196,8 @@ void route_say(const route *r, const surface_input *in, const optics_setup *o, t
     text_addf(t, "Geometric optics: facets of %s degrees %s, each bounce lowers what is left. ",
               number_text(r->angle_deg, 4, a),
               o->facet_angle_deg > 0.0 ? "(as stated)" : "(pyramids of this height and spacing)");
+    if (o->reflect.hemispherical || o->reflect.angle_deg > 0.0 || o->front.glass)
+        text_add(t, "Rays followed through a regular field of pyramids, all azimuths. ");
     if (r->beyond > 0.5) {
         text_add(t, "Chosen because ");
         say_beyond(r, in, t);

@@ -2,7 +2,7 @@
 #ifndef SWARD_OPTICS_FACETS_H
 #define SWARD_OPTICS_FACETS_H
 #include "base/status.h"
-#include "optics/stack.h"
+#include "optics/reflectance.h"
 
 enum { FACET_BOUNCES = 16 };
 
@@ -32,5 +32,21 @@ double facets_angle_deg(double height_nm, double spacing_nm);
  *   src  Campbell, Green (1987) J. Appl. Phys. 62, 243 (the geometry); shares: facets.c */
 status facets_reflectance(const stack *s, const facet_path *p, const double *wavelength_nm, size_t n,
                           double *R, error *e);
+
+/* A field of square pyramids for light from any direction. */
+typedef struct {
+    double angle_deg;    /* of the facets */
+    size_t bounces_most; /* light is let go after so many; 8: all that are followed */
+    double goes_on;      /* of each ray, a share that meets one facet more than followed, as the last one; 0 */
+} facet_field;
+
+/* R of the field, azimuths averaged, diffuse light and laminates included: rays followed facet by facet with their
+ * polarization (facets_field.c). Vertical light in air comes close to facets_reflectance().
+ *   in   s as there, its laminate too; light->angle_deg outside
+ *   err  ST_BAD_INPUT a wavelength outside a table; ST_NO_MEMORY
+ *   src  method: Campbell, Green (1987) J. Appl. Phys. 62, 243; Baker-Finch, McIntosh (2011) Prog. Photovolt. 19, 406
+ *        for classes of ray paths (both from memory) */
+status facets_field_reflectance(const stack *s, const facet_field *f, const reflect_options *light, const double *wavelength_nm,
+                                size_t n, double *R, error *e);
 
 #endif

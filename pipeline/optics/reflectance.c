@@ -13,6 +13,7 @@
 #include "base/quantity.h"
 #include "optics/graded.h"
 #include "optics/multilayer.h"
+#include "optics/quadrature.h"
 
 enum {
     DIFFUSE_ANGLES = 16,
@@ -69,32 +70,13 @@ static status check(const stack *s, const reflect_options *o, error *e) {
     return textured(s) ? profile_check(s->profile, e) : ST_OK;
 }
 
-/* Gauss-Legendre nodes and weights on 0..1 (Newton on the Legendre recurrence; Abramowitz, Stegun
- * 25.4.30). */
-static void gauss(size_t n, double *x, double *w) {
-    for (size_t i = 0; i < n; i++) {
-        double t = cos(PI * ((double)i + 0.75) / ((double)n + 0.5)), slope = 1.0;
-        for (int turn = 0; turn < 8; turn++) {
-            double p0 = 1.0, p1 = t;
-            for (size_t k = 2; k <= n; k++) {
-                double p2 = ((2.0 * (double)k - 1.0) * t * p1 - ((double)k - 1.0) * p0) / (double)k;
-                p0 = p1, p1 = p2;
-            }
-            slope = (double)n * (t * p1 - p0) / (t * t - 1.0);
-            t -= p1 / slope;
-        }
-        x[i] = 0.5 * (1.0 - t);
-        w[i] = 1.0 / ((1.0 - t * t) * slope * slope);
-    }
-}
-
 /* Which angles and polarizations, with which weights. At normal incidence s is p. */
 static void choose_channels(block *b, const reflect_options *o) {
     double angle[DIFFUSE_ANGLES] = { o->angle_deg * PI / 180.0 }, weight[DIFFUSE_ANGLES] = { 1.0 };
     size_t angles = o->hemispherical ? DIFFUSE_ANGLES : 1;
     if (o->hemispherical) {
         double sum = 0.0;
-        gauss(angles, angle, weight);
+        quadrature_gauss(angles, angle, weight);
         for (size_t i = 0; i < angles; i++) {
             angle[i] *= 0.5 * PI;
             weight[i] *= 0.5 * PI * sin(2.0 * angle[i]);

@@ -164,6 +164,12 @@ says "$out" '"optics_model": "facets"' "Chosen because with a spacing of 5000 nm
 run 0 predict --spacing 5000 --facet-angle 54.7356 --coating nitride:75 --json
 near weighted_reflectance 0.0224 0.0005
 says "$out" '"optics_model": "facets"'
+# Slanted light and a laminate: rays between the facets; the face of the glass alone gives 4 %.
+run 0 predict --spacing 5000 --facet-angle 54.7356 --coating nitride:75 --angles 0:80:20 --limit 0.03
+says "$out" "At most 3 % up to" "regular field of pyramids"
+run 0 predict --spacing 5000 --facet-angle 54.7356 --coating nitride:75 --ambient laminate --json
+near weighted_reflectance 0.05 0.01
+says "$out" '"optics_model": "facets"'
 run 0 predict --spacing 5000 --height 3535.5 --model graded --json
 says "$out" '"optics_model": "none"' '"weighted_reflectance": null' "graded index only"
 run 0 predict --spacing 5000 --height 1000 --json
