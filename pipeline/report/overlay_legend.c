@@ -11,6 +11,7 @@
 #include "report/html.h"
 #include "report/overlay_priv.h"
 #include "report/rows.h"
+#include "report/scalebar_priv.h"
 
 typedef enum { SIGN_BAR, SIGN_RING, SIGN_COUNTED, SIGN_FRAME, SIGN_CELL, SIGN_CUT, SIGN_STRIP } sign;
 enum { MOST_ENTRIES = 7 };
@@ -23,24 +24,12 @@ typedef struct {
 
 static int has_scale(const micrograph *m) { return isfinite(m->px_nm) && m->px_nm > 0.0; }
 
-double overlay_bar_length(const micrograph *m) {
-    double most = 0.22 * (double)m->nx * (has_scale(m) ? m->px_nm : 1.0), decade = pow(10.0, floor(log10(most)));
-    double lead = most / decade * (1.0 + 1e-12);
-    return decade * (lead >= 5.0 ? 5.0 : lead >= 2.0 ? 2.0 : 1.0);
-}
+double overlay_bar_length(const micrograph *m) { return scalebar_length(0.22 * (double)m->nx * (has_scale(m) ? m->px_nm : 1.0)); }
 
 /* A length as the table prints it, in its unit. */
 static const char *spacing_text(const micrograph *m, double px, char out[NUMBER_TEXT]) {
     const column *c = column_find(image_columns, n_image_columns, "spacing_acf_nm");
     return number_text(has_scale(m) ? px * m->px_nm : px, c ? c->digits : 5, out);
-}
-
-static void bar_label(const micrograph *m, double length, char *out, size_t room) {
-    char number[NUMBER_TEXT];
-    if (!has_scale(m)) snprintf(out, room, "%s px (no pixel size)", number_text(length, 4, number));
-    else if (length >= 0.999e6) snprintf(out, room, "%s mm", number_text(length * 1e-6, 4, number));
-    else if (length >= 0.999e3) snprintf(out, room, "%s \xc2\xb5m", number_text(length * 1e-3, 4, number));
-    else snprintf(out, room, "%s nm", number_text(length, 4, number));
 }
 
 static void count_apart(const texture *t, size_t *frame, size_t *cut) {
@@ -58,7 +47,8 @@ static size_t list_entries(const overlay_scene *s, entry out[MOST_ENTRIES]) {
     size_t n = 0, frame, cut;
     count_apart(s->t, &frame, &cut);
     out[n] = (entry){ .sign = SIGN_BAR, .length = bar / (has_scale(m) ? m->px_nm : 1.0) };
-    bar_label(m, bar, out[n].label, sizeof out[n].label);
+    if (has_scale(m)) scalebar_label(bar, out[n].label, sizeof out[n].label);
+    else snprintf(out[n].label, sizeof out[n].label, "%s px (no pixel size)", number_text(bar, 4, number));
     n++;
     if (isfinite(s->ring)) {
         out[n] = (entry){ .sign = SIGN_RING, .length = 1.1 * em };
@@ -85,25 +75,6 @@ static size_t list_entries(const overlay_scene *s, entry out[MOST_ENTRIES]) {
     return n;
 }
 
-static void two_tone(pen *p, double width, ink i) {
-    cairo_set_line_width(p->cr, 2.2 * width);
-    pen_ink(p, (ink){ 0.0, 0.0, 0.0, 0.6 });
-    cairo_stroke_preserve(p->cr);
-    cairo_set_line_width(p->cr, width);
-    pen_ink(p, i);
-    cairo_stroke(p->cr);
-}
-
-/* The bar's ends lie on its length exactly: the outer edges of its ticks. */
-static void draw_bar(pen *p, double x, double y, double length, double em) {
-    double w = 0.16 * em, tick = 0.42 * em;
-    pen_ink(p, PAPER_INK);
-    cairo_rectangle(p->cr, x, y - 0.5 * w, length, w);
-    cairo_rectangle(p->cr, x, y - tick, fmin(w, 0.5 * length), 2.0 * tick);
-    cairo_rectangle(p->cr, x + length - fmin(w, 0.5 * length), y - tick, fmin(w, 0.5 * length), 2.0 * tick);
-    cairo_fill(p->cr);
-}
-
 static void draw_swatch(pen *p, double x, double y, double width, double em, double grey) {
     cairo_rectangle(p->cr, x, y - 0.4 * em, width, 0.8 * em);
     pen_ink(p, (ink){ grey, grey, grey, 1.0 });
@@ -117,11 +88,12 @@ static void draw_sign(const overlay_scene *s, pen *p, const entry *q, double x, 
     double em = s->em, middle = x + 0.5 * q->length;
     switch (q->sign) {
     case SIGN_BAR:
-        draw_bar(p, x, y, q->length, em);
+        pen_ink(p, PAPER_INK);
+        scalebar_draw(p, x, y, q->length, em);
         break;
     case SIGN_RING:
         cairo_arc(p->cr, middle, y, 0.48 * em, 0.0, 2.0 * PI);
-        two_tone(p, 0.12 * em, PAPER_INK);
+        pen_two_tone(p, 0.12 * em, PAPER_INK);
         break;
     case SIGN_COUNTED:
         overlay_disc(p, middle, y, 0.3 * em);
@@ -130,13 +102,13 @@ static void draw_sign(const overlay_scene *s, pen *p, const entry *q, double x, 
         break;
     case SIGN_FRAME:
         overlay_diamond(p, middle, y, 0.4 * em);
-        two_tone(p, 0.12 * em, FRAME_INK);
+        pen_two_tone(p, 0.12 * em, FRAME_INK);
         break;
     case SIGN_CELL:
         cairo_move_to(p->cr, x, y + 0.2 * em);
         cairo_line_to(p->cr, middle, y - 0.2 * em);
         cairo_line_to(p->cr, x + q->length, y + 0.2 * em);
-        two_tone(p, 0.12 * em, CELL_INK);
+        pen_two_tone(p, 0.12 * em, CELL_INK);
         break;
     case SIGN_CUT:
         draw_swatch(p, x, y, q->length, em, 0.46);

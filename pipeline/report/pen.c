@@ -80,6 +80,15 @@ void pen_em(pen *p, double em) {
     cairo_set_font_size(p->cr, em);
 }
 
+void pen_two_tone(pen *p, double width, ink i) {
+    cairo_set_line_width(p->cr, 2.2 * width);
+    pen_ink(p, (ink){ 0.0, 0.0, 0.0, 0.6 });
+    cairo_stroke_preserve(p->cr);
+    cairo_set_line_width(p->cr, width);
+    pen_ink(p, i);
+    cairo_stroke(p->cr);
+}
+
 static double width_of(const pen *p, const char *text) {
     cairo_text_extents_t x;
     cairo_text_extents(p->cr, text, &x);

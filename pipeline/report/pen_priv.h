@@ -29,6 +29,8 @@ status pen_check(const pen *p, error *e);
 
 void pen_ink(pen *p, ink i);
 void pen_em(pen *p, double em);
+/* Strokes the path in the ink with a dark edge, so that it reads on any ground. */
+void pen_two_tone(pen *p, double width, ink i);
 
 /* Text is made safe first: bytes that are no UTF-8 and control characters show as U+FFFD, a character the typeface lacks as a
  * box. align 0: x is the left end, 0.5 the middle, 1 the right end; y is the baseline. */

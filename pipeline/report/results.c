@@ -3,6 +3,7 @@
  * The description of the tables for other programs is in package.c, the page for people in page.c. */
 #include "report/results.h"
 
+#include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -140,6 +141,24 @@ static void spectra_json(const results *r, textbuf *out) {
     text_add(out, r->n_spectra ? "\n  ]" : "]");
 }
 
+/* Samples whose place on the wafer is known. */
+static void places_json(const results *r, textbuf *out) {
+    int any = 0;
+    text_add(out, "[");
+    for (size_t k = 0; k < r->n_samples && r->sample_x_mm && r->sample_y_mm; k++) {
+        if (!isfinite(r->sample_x_mm[k]) || !isfinite(r->sample_y_mm[k])) continue;
+        text_add(out, any ? ",\n    {\"sample\": " : "\n    {\"sample\": ");
+        json_string(out, r->samples[k].sample);
+        text_add(out, ", \"x_mm\": ");
+        json_number(out, r->sample_x_mm[k], 9);
+        text_add(out, ", \"y_mm\": ");
+        json_number(out, r->sample_y_mm[k], 9);
+        text_add(out, "}");
+        any = 1;
+    }
+    text_add(out, any ? "\n  ]" : "]");
+}
+
 static void flags_json(textbuf *out) {
     text_add(out, "[");
     for (int bit = 0; bit < FLAG_COUNT; bit++) {
@@ -163,6 +182,8 @@ void results_json(const results *r, textbuf *out) {
     rows_json(&images, r->image_json, out);
     text_add(out, ",\n  \"samples\": ");
     rows_json(&samples, r->sample_json, out);
+    text_add(out, ",\n  \"places\": ");
+    places_json(r, out);
     text_add(out, ",\n  \"spectra\": ");
     spectra_json(r, out);
     text_add(out, ",\n  \"flags\": ");

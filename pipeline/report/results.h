@@ -39,8 +39,9 @@ typedef struct {
 status results_write(const results *r, const char *out_dir, error *e);
 
 /* Bodies of the same outputs, for `measure --json` and for tests. results_json is a JSON object:
- * {"manifest", "summary", "wafers", "series", "window", "angles", "images", "samples", "spectra", "flags"}; image and sample rows are keyed as the CSV plus the
- * members of image_json / sample_json; spectra are grouped per sample, angle and polarization. */
+ * {"manifest", "summary", "wafers", "series", "window", "angles", "images", "samples", "places", "spectra", "flags"}; image and sample
+ * rows are keyed as the CSV plus the members of image_json / sample_json; places are those of samples on their wafer; spectra are grouped
+ * per sample, angle and polarization. */
 void images_csv(const results *r, textbuf *out);
 void samples_csv(const results *r, textbuf *out);
 void spectra_csv(const results *r, textbuf *out);

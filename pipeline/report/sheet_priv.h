@@ -1,0 +1,48 @@
+/* The sheet under a figure: its surface, pen and colours. Units are points (1/72 inch), y down. Not for other rooms. */
+#ifndef SWARD_REPORT_SHEET_PRIV_H
+#define SWARD_REPORT_SHEET_PRIV_H
+#include "report/axes_priv.h"
+#include "report/pen_priv.h"
+#include "report/sheet.h"
+
+typedef struct {
+    ink paper, ink, soft, faint, target, tone[PLOT_TONES], mark[4]; /* by plot_mark */
+} sheet_colours;
+
+typedef struct {
+    const sheet_options *o;
+    double width, height, em; /* pt */
+    double line;              /* width of a curve, pt */
+    sheet_colours colours;
+    pen pen;
+    cairo_surface_t *surface;
+    textbuf sink; /* SVG and PDF as cairo writes them */
+} sheet;
+
+/* A sheet of the wanted width and of `height_mm` unless the options name one, paper laid.
+ *   own  sheet_close, also after a failure
+ *   err  as sheet_plot */
+status sheet_open(const sheet_options *o, double height_mm, sheet *s, error *e);
+/* The file of what was drawn. Title and description are for those who cannot see it. */
+status sheet_finish(sheet *s, const char *title, const char *description, char **bytes, size_t *n, error *e);
+void sheet_close(sheet *s);
+
+/* Colour of a share 0..1 of a scale: dark blue over green to light yellow, its lightness rising all the way, so that it reads in
+ * grey and for nearly every eye. */
+ink sheet_ramp(double share);
+/* The same as a bar from bottom to top. */
+void sheet_draw_ramp(sheet *s, double x, double top, double width, double bottom);
+
+/* A mark of radius about r, filled and edged. */
+void sheet_mark(sheet *s, plot_mark mark, double x, double y, double r);
+void sheet_dash(sheet *s, int pattern); /* 0 solid, 1 dashed, 2 dotted, 3 dash-dot; in the scale of the lines */
+/* A number of an axis: six digits at most, a real minus. */
+void sheet_number(sheet *s, double x, double y, double align, double v);
+double sheet_number_width(sheet *s, double v);
+/* The title at the top, when it is wanted; returns the height it takes. */
+double sheet_title(sheet *s, const char *title);
+
+/* The legend of a plot, set in rows from `top` on between left and right; returns its height, draws with draw = 1. */
+double sheet_legend(sheet *s, const plot *p, double left, double right, double top, int draw);
+
+#endif
