@@ -8,7 +8,7 @@ home=$(cd "$(dirname "$0")/.." && pwd)
 cd "$home"
 . pipeline/setup.sh
 # shellcheck disable=SC2086
-sward_setup $sward_build_packages clang libomp-dev binutils pngcheck libtiff-tools golang-1.19-src golang-golang-x-image-dev
+sward_setup $sward_build_packages clang libomp-dev binutils pngcheck poppler-utils libxml2-utils libtiff-tools golang-1.19-src golang-golang-x-image-dev
 
 jobs=$(nproc)
 failed=""

@@ -5,6 +5,7 @@
 
 mkdir "$work/in" "$work/other"
 "$SWARD" render --out "$work/in" --spacing 300 --px 8 >/dev/null 2>&1 || miss "render"
+printf 'file,sample,lot,wafer,x_mm,y_mm\n%s,A1,L1,W1,10,-20\n' "$(basename "$work"/in/*.png)" >"$work/in/samples.csv"
 "$SWARD" run "$work/in" --out "$work/run" --quiet >/dev/null 2>&1
 code=$?
 [ "$code" -eq 0 ] || [ "$code" -eq 3 ] || miss "run ended with $code"
@@ -16,11 +17,11 @@ sample=$(sed -n 2p "$work/run/samples.csv" | cut -d, -f1)
 figure() {
     case $1 in
         window|angles) run 0 figure "$1" --results "$work/run" --data "$work/$1.json" --out "$work/$1.$2" ;;
-        history) run 0 figure "$1" --run "$work/run" --out "$work/$1.$2" ;;
+        history|wafer) run 0 figure "$1" --run "$work/run" --out "$work/$1.$2" ;;
         *) run 0 figure "$1" --results "$work/run" --samples "$sample" --overlay --width 120 --out "$work/$1.$2" ;;
     esac
 }
-kinds="spectra distribution autocorrelation psd angles window history micrograph"
+kinds="spectra distribution autocorrelation psd angles window history wafer micrograph"
 for kind in $kinds; do
     for format in svg pdf png; do
         figure "$kind" "$format"
@@ -74,8 +75,13 @@ run 0 figure acf --results "$work/run"
 says "$out" '</svg>'
 run 2 figure history --results "$work/run" --quantity verdict
 says "$err" "no chart of 'verdict'; it has: spacing_nm"
-run 2 figure wafer --results "$work/run"
+sed 's/"places": \[/"nowhere": [/' "$work/run/results.json" >"$work/other/results.json"
+run 2 figure wafer --results "$work/other"
 says "$err" "x_mm and y_mm"
+run 0 figure window --results "$work/run"
+says "$out" 'height (nm)'
+run 0 figure angles --results "$work/run"
+says "$out" 'polished silicon'
 run 2 figure wafer --results "$work/run" --quantity verdict
 says "$err" "try spacing_nm"
 run 2 figure spectra --results "$work/run" --sample nobody
