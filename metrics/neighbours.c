@@ -173,35 +173,22 @@ double clark_evans_z(const double *nn, size_t n, window w) {
     return (plain_mean(nn, n) - 0.5 / sqrt(rho)) / sqrt((4.0 - PI) / (4.0 * PI) / ((double)n * rho));
 }
 
-/* Adds one pair's kernel to every r within h of its distance; r ascends. */
-static void pair_add(double d, double weight, double h, const double *r, size_t n_r, double *g) {
-    size_t lo = 0, hi = n_r;
-    while (lo < hi) {
-        size_t mid = lo + (hi - lo) / 2;
-        if (r[mid] <= d - h)
-            lo = mid + 1;
-        else
-            hi = mid;
-    }
-    for (size_t k = lo; k < n_r && r[k] < d + h; k++) {
-        double u = (r[k] - d) / h;
-        g[k] += weight * 0.75 * (1.0 - u * u) / h;
-    }
-}
+/* What is summed over pairs: for each pair nearer than reach its distance and twice its translation weight
+ * a b / ((a - dx)(b - dy)), twice because a pair counts from both ends. */
+typedef struct {
+    const double *r;
+    size_t n_r;
+    double h; /* kernel of the pair correlation */
+    double *sum;
+} pair_sum;
+typedef void (*pair_visit)(pair_sum *s, double d, double weight);
 
-status pair_correlation(const double *x, const double *y, size_t n, window w, double h, const double *r,
-                        size_t n_r, double *g, error *e) {
+static status pairs_each(const double *x, const double *y, size_t n, window w, double reach, pair_visit visit,
+                         pair_sum *s, error *e) {
     double a = w.x1 - w.x0, b = w.y1 - w.y0;
-    if (n < 2 || n >= NO_POINT || !n_r || !(h > 0.0) || !(a > 0.0) || !(b > 0.0))
-        return fail(e, ST_BAD_INPUT,
-                    "pair correlation: %zu points, %zu distances, kernel %g; expected two points, "
-                    "one distance and a kernel above zero",
-                    n, n_r, h);
-    double reach = r[n_r - 1] + h;
     grid q = { 0 };
     status st = grid_make(x, y, n, w, fmax(reach / 2.0, sqrt(a * b / (double)n)), &q, e);
     if (st != ST_OK) return st;
-    for (size_t k = 0; k < n_r; k++) g[k] = 0.0;
     size_t span = (size_t)(reach / q.side) + 1;
     for (size_t i = 0; i < n; i++) {
         size_t cx = grid_index(x[i], q.x0, q.side, q.nx), cy = grid_index(y[i], q.y0, q.side, q.ny);
@@ -209,14 +196,95 @@ status pair_correlation(const double *x, const double *y, size_t n, window w, do
         for (size_t yy = cy > span ? cy - span : 0; yy <= y1; yy++)
             for (size_t xx = cx > span ? cx - span : 0; xx <= x1; xx++)
                 for (uint32_t j = q.first[yy * q.nx + xx]; j != NO_POINT; j = q.next[j]) {
-                    if (j <= i) continue; /* each pair once, counted twice below */
+                    if (j <= i) continue;
                     double dx = fabs(x[j] - x[i]), dy = fabs(y[j] - y[i]);
                     if (dx < reach && dy < reach && dx < a && dy < b)
-                        pair_add(sqrt(dx * dx + dy * dy), 2.0 * a * b / ((a - dx) * (b - dy)), h, r, n_r, g);
+                        visit(s, sqrt(dx * dx + dy * dy), 2.0 * a * b / ((a - dx) * (b - dy)));
                 }
     }
     grid_free(&q);
-    for (size_t k = 0; k < n_r; k++)
-        g[k] = r[k] > 0.0 ? g[k] * a * b / ((double)n * (double)(n - 1)) / (2.0 * PI * r[k]) : MISSING;
     return ST_OK;
+}
+
+static status pairs_check(size_t n, window w, size_t n_r, const char *what, error *e) {
+    if (n >= 2 && n < NO_POINT && n_r && w.x1 > w.x0 && w.y1 > w.y0) return ST_OK;
+    return fail(e, ST_BAD_INPUT,
+                "%s: %zu points, %zu distances, a window of %g x %g; expected at least two points, one distance and a "
+                "window with an area",
+                what, n, n_r, w.x1 - w.x0, w.y1 - w.y0);
+}
+
+/* First r not below d. */
+static size_t first_from(const double *r, size_t n_r, double d) {
+    size_t lo = 0, hi = n_r;
+    while (lo < hi) {
+        size_t mid = lo + (hi - lo) / 2;
+        if (r[mid] < d)
+            lo = mid + 1;
+        else
+            hi = mid;
+    }
+    return lo;
+}
+
+/* Adds one pair's kernel to every r within h of its distance; r ascends. */
+static void add_kernel(pair_sum *s, double d, double weight) {
+    for (size_t k = first_from(s->r, s->n_r, d - s->h); k < s->n_r && s->r[k] < d + s->h; k++) {
+        double u = (s->r[k] - d) / s->h;
+        s->sum[k] += weight * 0.75 * (1.0 - u * u) / s->h;
+    }
+}
+
+/* The pair counts from the first r on that is not below its distance; added up afterwards. */
+static void add_step(pair_sum *s, double d, double weight) {
+    size_t k = first_from(s->r, s->n_r, d);
+    if (k < s->n_r) s->sum[k] += weight;
+}
+
+status pair_correlation(const double *x, const double *y, size_t n, window w, double h, const double *r,
+                        size_t n_r, double *g, error *e) {
+    double area = (w.x1 - w.x0) * (w.y1 - w.y0);
+    status st = pairs_check(n, w, n_r, "pair correlation", e);
+    if (st != ST_OK) return st;
+    if (!(h > 0.0)) return fail(e, ST_BAD_INPUT, "pair correlation: a kernel of half-width %g, expected one above 0", h);
+    pair_sum s = { r, n_r, h, g };
+    for (size_t k = 0; k < n_r; k++) g[k] = 0.0;
+    st = pairs_each(x, y, n, w, r[n_r - 1] + h, add_kernel, &s, e);
+    for (size_t k = 0; k < n_r; k++)
+        g[k] = r[k] > 0.0 ? g[k] * area / ((double)n * (double)(n - 1)) / (2.0 * PI * r[k]) : MISSING;
+    return st;
+}
+
+status ripley_k(const double *x, const double *y, size_t n, window w, const double *r, size_t n_r, double *k, error *e) {
+    double area = (w.x1 - w.x0) * (w.y1 - w.y0), sum = 0.0;
+    status st = pairs_check(n, w, n_r, "Ripley's K", e);
+    if (st != ST_OK) return st;
+    pair_sum s = { r, n_r, 0.0, k };
+    for (size_t i = 0; i < n_r; i++) k[i] = 0.0;
+    st = pairs_each(x, y, n, w, nextafter(r[n_r - 1], HUGE_VAL), add_step, &s, e);
+    for (size_t i = 0; i < n_r; i++) {
+        sum += k[i];
+        k[i] = sum * area / ((double)n * (double)(n - 1));
+    }
+    return st;
+}
+
+pair_ring pair_first_ring(const double *r, const double *g, size_t n_r, size_t n, window w, double h) {
+    const double near = 0.5, far = 1.6, least_z = 2.5; /* in units of 1/sqrt(density) */
+    double unit = sqrt((w.x1 - w.x0) * (w.y1 - w.y0) / (double)n), trough = HUGE_VAL;
+    pair_ring p = { MISSING, MISSING, MISSING };
+    size_t best = 0;
+    for (size_t k = 1; k + 1 < n_r; k++) {
+        if (r[k] < 0.15 * unit || r[k] > far * unit) continue;
+        int highest = r[k] >= near * unit && g[k] >= g[k - 1] && g[k] > g[k + 1];
+        if (highest && (!best || g[k] > g[best])) best = k;
+    }
+    for (size_t k = 0; k < best; k++)
+        if (r[k] > h) trough = fmin(trough, g[k]);
+    if (!best || !isfinite(trough)) return p;
+    /* Random placement: pi r n^2 / A pairs per unit of r, Poisson; the integral of the squared kernel is 0.6 / h. */
+    double se = unit * sqrt(0.6 / (PI * (double)n * r[best] * h));
+    double z = fmin((g[best] - 1.0) / se, (g[best] - trough) / (sqrt(2.0) * se));
+    if (z >= least_z) p = (pair_ring){ r[best], g[best], z };
+    return p;
 }

@@ -8,10 +8,12 @@
 #include "base/number.h"
 #include "base/quantity.h"
 #include "check.h"
+#include "metrics/measure.h"
 #include "metrics/neighbours.h"
 #include "metrics/spacing.h"
 #include "metrics/uncertainty.h"
 #include "metrics/watershed.h"
+#include "metrics/planes.h"
 
 enum { MAX_POINTS = 256, SETS = 4, LINE = 512 };
 
@@ -177,19 +179,57 @@ static void check_pair_correlation(const point_set *p) {
     if (in) fclose(in);
 }
 
-/* the first ring of g, on a fine grid of r. */
+static void check_ripley(const point_set *p) {
+    enum { MOST = 256 };
+    static double r[MOST], want[MOST], k[MOST];
+    char line[LINE], *f[8];
+    size_t n = 0;
+    FILE *in = data_open("points_ripley.csv");
+    while (in && n < MOST && fgets(line, sizeof line, in)) {
+        if (line[0] == '#' || fields(line, f, 8) < 3 || strcmp(f[0], p->name) != 0) continue;
+        r[n] = number(f[1]);
+        want[n++] = number(f[2]);
+    }
+    if (in) fclose(in);
+    error e = { 0 };
+    CHECK(n > 40 && ripley_k(p->x, p->y, p->n, p->w, r, n, k, &e) == ST_OK);
+    double area = (p->w.x1 - p->w.x0) * (p->w.y1 - p->w.y0);
+    for (size_t i = 0; i < n; i++) CHECK_SOURCE(k[i] / area, want[i] / area, 1e-8, "A-11 Ripley 1977, Ohser 1983; Kest()");
+}
+
+/* the first ring of g, on a fine grid of r; none for clustered and random points. */
 static void check_ring(const point_set *p, double height, double at) {
-    enum { R = 1200 };
+    enum { R = 1600 };
     static double r[R], g[R];
     double unit = sqrt((p->w.x1 - p->w.x0) * (p->w.y1 - p->w.y0) / (double)p->n);
-    size_t best = 0;
-    for (size_t k = 0; k < R; k++) r[k] = unit * (0.5 + 1.1 * (double)k / R);
+    for (size_t k = 0; k < R; k++) r[k] = unit * 1.7 * (double)(k + 1) / R;
     error e = { 0 };
     CHECK(pair_correlation(p->x, p->y, p->n, p->w, 0.15 * unit, r, R, g, &e) == ST_OK);
-    for (size_t k = 1; k < R; k++)
-        if (g[k] > g[best]) best = k;
-    CHECK_SOURCE(g[best], height, 1e-4 * height, "A-14 ring of g");
-    CHECK_SOURCE(r[best], at, 0.01 * at, "A-14 ring of g");
+    pair_ring first = pair_first_ring(r, g, R, p->n, p->w, 0.15 * unit);
+    if (height > 0.0) {
+        CHECK_SOURCE(first.g, height, 1e-4 * height, "A-14 ring of g");
+        CHECK_SOURCE(first.r, at, 0.01 * at, "A-14 ring of g");
+    } else {
+        CHECK(isnan(first.r) && isnan(first.g)); /* A-15 Ripley 1977, Diggle 1983: clustered, random */
+    }
+}
+
+/* A-15 on a picture: bumps at random or clustered places give no spacing by autocorrelation; at regular ones they do. */
+static void check_ring_in_picture(const point_set *p, int has_ring) {
+    enum { SIDE = 400 };
+    double width = p->w.x1 - p->w.x0, unit = SIDE / sqrt((double)p->n);
+    float *f = plane_new(SIDE, SIDE);
+    for (size_t i = 0; i < p->n; i++)
+        add_bump(f, SIDE, SIDE, p->x[i] / width * SIDE - 0.5, p->y[i] / width * SIDE - 0.5, 0.2 * unit, 0.4);
+    plane picture = { f, SIDE, SIDE, 8, 0.0, 0.0 };
+    measure_options o = measure_defaults();
+    texture t = { 0 };
+    error e = { 0 };
+    CHECK(measure_plane(&picture, &o, &t, &e) == ST_OK);
+    CHECK(isfinite(t.spacing_acf.value) == has_ring);
+    if (!has_ring) CHECK((t.reasons | t.flags) & FLAG(NO_RING));
+    texture_free(&t);
+    free(f);
 }
 
 /* the four classical sets in their order (Diggle 1983). */
@@ -312,11 +352,17 @@ int main(void) {
         check_set(&set[k], k);
         check_torus(&set[k], k);
         check_pair_correlation(&set[k]);
+        check_ripley(&set[k]);
         check_order(&set[k], k);
         check_voronoi(&set[k], k);
     }
     check_ring(&set[0], 1.9042876, 0.1462024);
+    check_ring(&set[1], 0.0, 0.0);
+    check_ring(&set[2], 0.0, 0.0);
     check_ring(&set[3], 1.4093115, 10.87222);
+    check_ring_in_picture(&set[0], 1);
+    check_ring_in_picture(&set[1], 0);
+    check_ring_in_picture(&set[2], 0);
     check_lattices();
     check_random_points();
     check_random_cells();

@@ -60,6 +60,9 @@ static void check_pairs(void) {
     CHECK_NEAR(g[1], 0.0, 1e-15);
     CHECK_NEAR(g[2], area / 2.0 / (2.0 * PI) * 2.0 * edge * peak, 1e-9);
     CHECK_NEAR(g[3], area / 2.0 / (2.0 * PI * 1.2) * 2.0 * edge * peak * (1.0 - 0.64), 1e-9);
+    double k[4];
+    CHECK(ripley_k(x, y, 2, unit, r, 4, k, &e) == ST_OK);
+    for (int i = 0; i < 4; i++) CHECK_NEAR(k[i], i < 2 ? 0.0 : area * edge, 1e-12); /* at r = 1 the pair counts */
 }
 
 static void check_errors(void) {
@@ -70,6 +73,8 @@ static void check_errors(void) {
                 "area");
     CHECK_FAILS(pair_correlation(x, y, 1, unit, 0.1, x, 2, out, &e), ST_BAD_INPUT, e, "two points");
     CHECK_FAILS(pair_correlation(x, y, 2, unit, 0.0, x, 2, out, &e), ST_BAD_INPUT, e, "kernel");
+    CHECK_FAILS(ripley_k(x, y, 1, unit, x, 2, out, &e), ST_BAD_INPUT, e, "two points");
+    CHECK_FAILS(ripley_k(x, y, 2, unit, x, 0, out, &e), ST_BAD_INPUT, e, "distance");
     CHECK(isnan(clark_evans_naive(out, 0, unit)) && isnan(clark_evans_donnelly(out, 0, unit)));
     CHECK(isnan(clark_evans_guard(x, y, out, 2, unit, 4.0, NULL)) && isnan(clark_evans_z(out, 1, unit)));
 }
