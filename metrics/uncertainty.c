@@ -114,23 +114,46 @@ static double tile_variance(const tally *t, size_t m) {
     return ss / (double)n / (1.0 - share);
 }
 
-/* Weighted least squares of V = a area + b perimeter with a, b >= 0; every V is known to about sqrt(2 /
- * tiles). */
+/* Weighted least squares of v = a p + b q. */
 typedef struct {
-    double saa, sab, sbb, sav, sbv;
+    double pp, pq, qq, pv, qv;
 } normal_sums;
 
-static void law_fit(const normal_sums *s, double *a, double *b) {
-    double det = s->saa * s->sbb - s->sab * s->sab;
-    *a = det > 1e-12 * s->saa * s->sbb ? (s->sav * s->sbb - s->sbv * s->sab) / det : -1.0;
-    *b = det > 1e-12 * s->saa * s->sbb ? (s->sbv * s->saa - s->sav * s->sab) / det : 0.0;
-    if (*a < 0.0) {
-        *a = 0.0;
-        *b = s->sbb > 0.0 ? s->sbv / s->sbb : 0.0;
-    } else if (*b < 0.0) {
-        *b = 0.0;
-        *a = s->saa > 0.0 ? s->sav / s->saa : 0.0;
+static void sums_add(normal_sums *s, double weight, double p, double q, double v) {
+    s->pp += weight * p * p;
+    s->pq += weight * p * q;
+    s->qq += weight * q * q;
+    s->pv += weight * p * v;
+    s->qv += weight * q * v;
+}
+
+/* 0 when p and q cannot be told apart. */
+static int sums_solve(const normal_sums *s, double *a, double *b) {
+    double det = s->pp * s->qq - s->pq * s->pq;
+    if (!(det > 1e-12 * s->pp * s->qq)) return 0;
+    *a = (s->pv * s->qq - s->qv * s->pq) / det;
+    *b = (s->qv * s->pp - s->pv * s->pq) / det;
+    return 1;
+}
+
+/* The law of the variance of a sum over an area A with perimeter P, from that over tiles; every tile size is weighted by how
+ * well its variance is known, about sqrt(2 / tiles). */
+typedef struct {
+    normal_sums rim;  /* against A and P: randomness and order */
+    normal_sums wave; /* against A and A ln(side / 2 units): density that wanders */
+} law_sums;
+
+static double wave_term(double area, double unit) { return area * log(sqrt(area) / (2.0 * unit)); }
+
+static double law_variance(const law_sums *s, double area, double rim, double unit) {
+    double a, b;
+    if (sums_solve(&s->rim, &a, &b) && b >= 0.0) {
+        if (a >= 0.0) return a * area + b * rim;
+        return s->rim.qq > 0.0 ? s->rim.qv / s->rim.qq * rim : 0.0;
     }
+    double level = s->rim.pp > 0.0 ? s->rim.pv / s->rim.pp : 0.0; /* the same in every tile */
+    if (!sums_solve(&s->wave, &a, &b) || !(a > 0.0 && b > 0.0)) return level * area;
+    return a * area + b * wave_term(area, unit);
 }
 
 status field_sum_sd(const double *x, const double *y, const double *mark, size_t n, window w, double unit,
@@ -142,22 +165,17 @@ status field_sum_sd(const double *x, const double *y, const double *mark, size_t
     status st = tally_make(x, y, mark, n, w, unit, &t, e);
     if (st != ST_OK) return st;
     static const size_t bins[] = { 4, 5, 6, 8, 10, 12, 16, 20, 24, 32, 40, 48, 64 };
-    size_t most = (t.nx < t.ny ? t.nx : t.ny) / 3;
-    normal_sums s = { 0 };
+    size_t most = (t.nx < t.ny ? t.nx : t.ny) / 2;
+    law_sums s = { 0 };
     for (size_t k = 0; k < sizeof bins / sizeof bins[0] && (k == 0 || bins[k] <= most); k++) {
         double m = (double)bins[k], v = tile_variance(&t, bins[k]);
         double area = m * m * t.side_x * t.side_y, rim = 2.0 * m * (t.side_x + t.side_y);
         if (!(v > 0.0)) continue;
         double weight = width * height / area / (v * v);
-        s.saa += weight * area * area;
-        s.sab += weight * area * rim;
-        s.sbb += weight * rim * rim;
-        s.sav += weight * area * v;
-        s.sbv += weight * rim * v;
+        sums_add(&s.rim, weight, area, rim, v);
+        sums_add(&s.wave, weight, area, wave_term(area, unit), v);
     }
-    double a, b;
-    law_fit(&s, &a, &b);
-    *sd = sqrt(a * width * height + 2.0 * b * (width + height));
+    *sd = sqrt(law_variance(&s, width * height, 2.0 * (width + height), unit));
     free(t.sum);
     return ST_OK;
 }
