@@ -275,15 +275,15 @@ static status line_jitter(const float *f, size_t nx, size_t ny, double d, double
     return ST_OK;
 }
 
-status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e) {
+status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, curve *psd, error *e) {
     size_t nx = p->nx, ny = p->ny;
     sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
     curve radial = { 0 };
     double sum = 0.0, streaks = 0.0;
-    float *psd = mem_array(ny * (nx / 2 + 1), sizeof *psd);
-    status st = psd ? psd2d(f, nx, ny, psd, e) : NO_MEMORY(e, "the power spectrum");
-    if (st == ST_OK) st = psd2d_radial(psd, nx, ny, &radial, e);
-    if (st == ST_OK) st = streak_variance(psd, &radial, nx, ny, d_px, &streaks, e);
+    float *power = mem_array(ny * (nx / 2 + 1), sizeof *power);
+    status st = power ? psd2d(f, nx, ny, power, e) : NO_MEMORY(e, "the power spectrum");
+    if (st == ST_OK) st = psd2d_radial(power, nx, ny, &radial, e);
+    if (st == ST_OK) st = streak_variance(power, &radial, nx, ny, d_px, &streaks, e);
     if (st == ST_OK) st = line_jitter(f, nx, ny, d_px, &s.line_jitter_px, e);
     if (st == ST_OK) {
         for (size_t i = 0; i < nx * ny; i++) sum += (double)f[i] * (double)f[i];
@@ -299,9 +299,13 @@ status fitness_look(const float *f, const plane *p, double d_px, sharpness *out,
         s.finest_per_px = finest_detail(&radial, 1.0, 0.02, floor);
         s.second_px = spacing_second(&radial, d_px, nx, ny);
         *out = s;
+        if (psd) {
+            *psd = radial;
+            radial.points = NULL;
+        }
     }
     free(radial.points);
-    free(psd);
+    free(power);
     return st;
 }
 

@@ -23,8 +23,9 @@ typedef struct {
     double line_jitter_px;
 } sharpness;
 
-/* f flattened, d_px the scale (NAN unknown). err ST_NO_MEMORY */
-status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, error *e);
+/* in f flattened, d_px the scale (NAN unknown); out also the radial power spectrum behind it, psd may be NULL (caller frees
+ * psd->points). err ST_NO_MEMORY, out and psd untouched */
+status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, curve *psd, error *e);
 
 /* Sets reasons, flags, sharpness, noise_rel and second_spacing_px of t from s, its numbers and the limits.
  * Adds to what is set already. */

@@ -185,28 +185,42 @@ static status ring_stage(job *j, error *e) {
     return st;
 }
 
+static status curve_add(texture *t, const char *name, const char *y_unit, const double *x_px, const double *y, size_t n, error *e) {
+    curve_point *p = mem_array(n, sizeof *p);
+    if (!p) return NO_MEMORY(e, "a curve");
+    for (size_t k = 0; k < n; k++) p[k] = (curve_point){ x_px[k], y[k] };
+    curve *c = curve_new(t, name, "px", y_unit);
+    c->points = p;
+    c->n = n;
+    return ST_OK;
+}
+
+/* g(r), its first ring, and L(r) = sqrt(K / pi), which is r for random placement (Besag J. 1977, J. R. Stat. Soc. B 39:193, in the
+ * discussion of Ripley's paper; from memory). */
 static status pair_stage(job *j, error *e) {
     static const double reach = 4.0, step = 0.05,
                         kernel = 0.15; /* in units of 1/sqrt(density), kernel of A-13 */
     size_t n = j->t.n_found, n_r = (size_t)(reach / step);
     double unit = 1.0 / sqrt(j->t.density.value);
     window w = { -0.5, -0.5, (double)j->p->nx - 0.5, (double)j->p->ny - 0.5 };
-    double *v = mem_array(2 * n + 2 * n_r, sizeof *v);
+    double *v = mem_array(2 * n + 3 * n_r, sizeof *v);
     if (!v) return NO_MEMORY(e, "the pair correlation");
-    double *x = v, *y = v + n, *r = v + 2 * n, *g = r + n_r;
+    double *x = v, *y = v + n, *r = v + 2 * n, *g = r + n_r, *l = g + n_r;
     for (size_t i = 0; i < n; i++) {
         x[i] = j->t.features[i].x;
         y[i] = j->t.features[i].y;
     }
     for (size_t k = 0; k < n_r; k++) r[k] = (double)(k + 1) * step * unit;
     status st = pair_correlation(x, y, n, w, kernel * unit, r, n_r, g, e);
-    curve *c = st == ST_OK ? curve_new(&j->t, "pair_correlation", "px", "1") : NULL;
-    if (c) {
-        c->points = mem_array(n_r, sizeof *c->points);
-        if (!c->points) st = NO_MEMORY(e, "the pair correlation");
-        for (size_t k = 0; c->points && k < n_r; k++) c->points[k] = (curve_point){ r[k], g[k] };
-        c->n = c->points ? n_r : 0;
+    if (st == ST_OK) st = curve_add(&j->t, "pair_correlation", "1", r, g, n_r, e);
+    if (st == ST_OK) {
+        pair_ring first = pair_first_ring(r, g, n_r, n, w, kernel * unit);
+        j->t.pair_ring_px = first.r;
+        j->t.pair_ring_height = first.g;
+        st = ripley_k(x, y, n, w, r, n_r, l, e);
     }
+    for (size_t k = 0; st == ST_OK && k < n_r; k++) l[k] = sqrt(l[k] / PI);
+    if (st == ST_OK) st = curve_add(&j->t, "ripley_l", "px", r, l, n_r, e);
     free(v);
     return st;
 }
@@ -294,8 +308,12 @@ static status run(job *j, error *e) {
     else if (st == ST_OK)
         j->t.reasons |= FLAG(NO_RING);
     if (st == ST_OK) st = bright_share(j->f, p->nx, p->ny, j->o->bright_level, j->d, &j->t.bright_share, e);
-    if (st == ST_OK) st = fitness_look(j->f, p, j->d > 0.0 ? j->d : 0.0, &s, e); /* 0: no scale */
-    if (st == ST_OK) judge(j, &s);
+    curve psd = { 0 };
+    if (st == ST_OK) st = fitness_look(j->f, p, j->d > 0.0 ? j->d : 0.0, &s, &psd, e); /* 0: no scale */
+    if (st == ST_OK) {
+        curve_take(&j->t, &psd, "psd", "1/px", "px2");
+        judge(j, &s);
+    }
     return st;
 }
 

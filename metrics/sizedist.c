@@ -67,6 +67,7 @@ static status distribution(const cells *c, size_summary *s, error *e) {
         sw += c->w[i];
     }
     s->bandwidth = 0.9 * fmin(sqrt(ss / sw), (half[1] - half[0]) / 1.34) * pow((double)c->n, -0.2);
+    s->bin = 2.0 * (half[1] - half[0]) * pow((double)c->n, -1.0 / 3.0);
     st = lognormal(c->x, c->n, &fit, &ignored); /* cells of one size have no fit */
     if (st == ST_NO_MEMORY) return NO_MEMORY(e, "the log-normal fit");
     if (st == ST_OK) {
@@ -79,18 +80,22 @@ static status distribution(const cells *c, size_summary *s, error *e) {
 
 static void shapes(const texture *t, size_summary *s) {
     double sw = 0.0;
-    s->circularity = s->aspect = 0.0;
+    s->circularity = s->aspect_ratio = s->feret_min = s->feret_max = 0.0;
     for (size_t i = 0; i < t->n_found; i++) {
         const feature *f = &t->features[i];
         if (!(f->weight > 0.0)) continue;
         int bin = f->n_neighbours < 3 ? 0 : f->n_neighbours > 12 ? NEIGHBOUR_BINS - 1 : f->n_neighbours - 3;
         sw += f->weight;
-        s->circularity += f->weight * 4.0 * PI * f->cell_area_px2 / (f->perimeter_px * f->perimeter_px);
-        s->aspect += f->weight * f->feret_max_px / f->feret_min_px;
+        s->circularity += f->weight * sqrt(4.0 * PI * f->cell_area_px2) / f->perimeter_px;
+        s->aspect_ratio += f->weight * f->feret_min_px / f->feret_max_px;
+        s->feret_min += f->weight * f->feret_min_px;
+        s->feret_max += f->weight * f->feret_max_px;
         s->neighbours[bin] += f->weight;
     }
     s->circularity /= sw;
-    s->aspect /= sw;
+    s->aspect_ratio /= sw;
+    s->feret_min /= sw;
+    s->feret_max /= sw;
     for (int k = 0; k < NEIGHBOUR_BINS; k++) s->neighbours[k] /= sw;
 }
 
@@ -156,7 +161,7 @@ static status order(const texture *t, size_summary *s, error *e) {
 
 status size_summarise(const texture *t, size_summary *out, error *e) {
     const double m = MISSING;
-    size_summary s = { 0, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, { 0.0 } };
+    size_summary s = { 0, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, m, { 0.0 } };
     cells c = { 0 };
     status st = t->n_found ? cells_take(t, &c, e) : ST_OK;
     s.n = c.n;
@@ -188,6 +193,31 @@ status size_density(const texture *t, const size_summary *s, double *x, double *
             double z = (x[k] - c.x[i]) / h;
             if (fabs(z) < 8.0) y[k] += c.w[i] / sw * exp(-0.5 * z * z) / (h * sqrt(2.0 * PI));
         }
+    }
+    free(c.x);
+    return ST_OK;
+}
+
+status size_histogram(const texture *t, const size_summary *s, double *x, double *y, size_t most, size_t *n, error *e) {
+    cells c = { 0 };
+    *n = 0;
+    if (!(s->bin > 0.0) || !most) return ST_OK;
+    status st = cells_take(t, &c, e);
+    if (st != ST_OK) return st;
+    double low = c.x[0], sw = 0.0;
+    for (size_t i = 0; i < c.n; i++) {
+        low = fmin(low, c.x[i]);
+        sw += c.w[i];
+    }
+    double first = s->bin * floor(low / s->bin);
+    for (size_t k = 0; k < most; k++) {
+        x[k] = first + s->bin * ((double)k + 0.5);
+        y[k] = 0.0;
+    }
+    for (size_t i = 0; i < c.n; i++) {
+        size_t k = (size_t)fmin((c.x[i] - first) / s->bin, (double)(most - 1));
+        y[k] += c.w[i] / (sw * s->bin);
+        if (k + 1 > *n) *n = k + 1;
     }
     free(c.x);
     return ST_OK;

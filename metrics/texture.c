@@ -30,6 +30,8 @@ texture texture_empty(void) {
                   .clipped_share = MISSING,
                   .lognormal_ad = MISSING,
                   .ring_z = MISSING,
+                  .pair_ring_px = MISSING,
+                  .pair_ring_height = MISSING,
                   .second_spacing_px = MISSING };
     return t;
 }

@@ -33,13 +33,13 @@ typedef struct {
 
 typedef struct { double x, y; } curve_point;
 typedef struct {
-    const char *name;      /* acf, acf_curvature, psd_curvature, pair_correlation */
+    const char *name;      /* acf, acf_curvature, psd, psd_curvature, pair_correlation, ripley_l */
     const char *x_unit;    /* "px" lag, or "1/px" spatial frequency */
-    const char *y_unit;    /* "1", or "px2" */
+    const char *y_unit;    /* "1", "px" or "px2" */
     curve_point *points;   /* owned */
     size_t n;
 } curve;
-enum { MAX_CURVES = 6 };
+enum { MAX_CURVES = 8 };
 
 typedef struct {
     relief relief;         /* RELIEF_HILLOCK or RELIEF_PORE: found or given */
@@ -58,6 +58,7 @@ typedef struct {
     double clipped_share;
     double lognormal_ad;   /* Anderson-Darling A2* of the log-normal fit of cell ECD; NAN none */
     double ring_z;         /* significance of the trough before the first ring */
+    double pair_ring_px, pair_ring_height; /* first ring of the pair correlation: place and height; NAN none */
     double second_spacing_px; /* of a second population; NAN none */
     size_t n_features;     /* inside the guard */
     flags reasons;         /* not fit: why (empty = fit) */

@@ -13,7 +13,7 @@
 #include "base/text.h"
 #include "io/file.h"
 
-static const char head[] = "sward texture 3\n";
+static const char head[] = "sward texture 4\n";
 enum { HASH = 64 };
 
 /* Either appends to `out` or takes from bytes[at..n). */
@@ -55,7 +55,7 @@ static void pass_feature(stream *s, feature *f) {
 
 /* Curve names and units are words of the program: kept as an index into this list. */
 static const char *const words[] = { "acf", "acf_curvature", "psd_curvature", "pair_correlation", "px", "1/px",
-                                     "1",   "px2",           "psd",           "radial" };
+                                     "1",   "px2",           "psd",           "ripley_l" };
 
 static void pass_word(stream *s, const char **word) {
     size_t k = 0, n = sizeof words / sizeof words[0];
@@ -89,7 +89,7 @@ static void pass_texture(stream *s, texture *t) {
         pass_count(s, &m->n);
     }
     double *numbers[] = { &t->relief_skew, &t->clipped_share, &t->lognormal_ad, &t->ring_z, &t->second_spacing_px,
-                          &t->count_u_rel };
+                          &t->count_u_rel, &t->pair_ring_px, &t->pair_ring_height };
     for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) pass_number(s, numbers[i]);
     pass_count(s, &t->n_features);
     pass(s, &t->reasons, sizeof t->reasons);

@@ -64,9 +64,9 @@ static void features_text(const texture *t, double px_nm, textbuf *out, int *no_
                                  .top_ecd_nm = f->top_ecd_px * px_nm,
                                  .feret_max_nm = f->feret_max_px * px_nm,
                                  .feret_min_nm = f->feret_min_px * px_nm,
-                                 .aspect = f->feret_max_px / f->feret_min_px,
+                                 .aspect_ratio = f->feret_min_px / f->feret_max_px,
                                  .perimeter_nm = f->perimeter_px * px_nm,
-                                 .circularity = 4.0 * PI * f->cell_area_px2 / (f->perimeter_px * f->perimeter_px),
+                                 .circularity = sqrt(4.0 * PI * f->cell_area_px2) / f->perimeter_px,
                                  .nn_nm = f->nn_px * px_nm,
                                  .border_weight = f->weight,
                                  .n_neighbours = f->n_neighbours,
@@ -76,37 +76,60 @@ static void features_text(const texture *t, double px_nm, textbuf *out, int *no_
     free(rows);
 }
 
-/* A curve over px turns into one over nm (or 1/um) where the pixel size is known. */
-static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_memory) {
-    enum { DENSITY_POINTS = 101 };
-    size_t n = 0, k = 0;
-    for (size_t c = 0; c < t->n_curves; c++) n += t->curves[c].n;
-    profile_row *rows = mem_array(n + DENSITY_POINTS, sizeof *rows);
-    double sizes[DENSITY_POINTS], density[DENSITY_POINTS];
+/* How a unit in px prints, and by how much its numbers are multiplied. */
+typedef struct {
+    char *text;
+    double scale;
+} unit;
+
+static unit unit_of(const char *px_unit, double px_nm) {
+    static char px[] = "px", per_px[] = "1/px", px2[] = "px2", nm[] = "nm", per_nm[] = "1/nm", per_um[] = "1/um", nm2[] = "nm2",
+                one[] = "1";
+    int known = isfinite(px_nm);
+    if (!strcmp(px_unit, "px")) return known ? (unit){ nm, px_nm } : (unit){ px, 1.0 };
+    if (!strcmp(px_unit, "px2")) return known ? (unit){ nm2, px_nm * px_nm } : (unit){ px2, 1.0 };
+    if (!strcmp(px_unit, "1/px")) return known ? (unit){ per_um, 1e3 / px_nm } : (unit){ per_px, 1.0 };
+    if (!strcmp(px_unit, "density")) return known ? (unit){ per_nm, 1.0 / px_nm } : (unit){ per_px, 1.0 };
+    return (unit){ one, 1.0 };
+}
+
+enum { DENSITY_POINTS = 101, HISTOGRAM_BINS = 200 };
+
+/* Curves of the texture, then density and histogram of its sizes. */
+static status profile_rows(const texture *t, double px_nm, profile_row *rows, size_t *n) {
+    static char names[][20] = { "acf", "acf_curvature", "psd", "psd_curvature", "pair_correlation", "ripley_l" };
+    static char density_name[] = "size_density", histogram_name[] = "size_histogram";
+    double x[HISTOGRAM_BINS], y[HISTOGRAM_BINS];
+    size_t bins = 0;
     size_summary s = { 0 };
-    if (!rows || size_summarise(t, &s, NULL) != ST_OK || size_density(t, &s, sizes, density, DENSITY_POINTS, NULL) != ST_OK) {
-        free(rows);
-        *no_memory = 1;
-        return;
-    }
-    static char names[][20] = { "acf", "acf_curvature", "psd_curvature", "pair_correlation", "curve" };
-    static char size_name[] = "size_density", per_nm[] = "1/nm", nm[] = "nm", per_um[] = "1/um", px[] = "px", per_px[] = "1/px", nm2[] = "nm2", px2[] = "px2", one[] = "1";
-    int scaled = isfinite(px_nm);
     for (size_t c = 0; c < t->n_curves; c++) {
         const curve *from = &t->curves[c];
-        int frequency = !strcmp(from->x_unit, "1/px"), area = !strcmp(from->y_unit, "px2");
+        unit ux = unit_of(from->x_unit, px_nm), uy = unit_of(from->y_unit, px_nm);
         size_t name = 0;
-        while (name < 4 && strcmp(names[name], from->name)) name++;
-        double sx = !scaled ? 1.0 : frequency ? 1e3 / px_nm : px_nm, sy = scaled && area ? px_nm * px_nm : 1.0;
-        char *x_unit = frequency ? (scaled ? per_um : per_px) : (scaled ? nm : px);
-        char *y_unit = area ? (scaled ? nm2 : px2) : one;
+        while (name + 1 < sizeof names / sizeof names[0] && strcmp(names[name], from->name)) name++;
         for (size_t i = 0; i < from->n; i++)
-            rows[k++] = (profile_row){ names[name], from->points[i].x * sx, x_unit, from->points[i].y * sy, y_unit };
+            rows[(*n)++] = (profile_row){ names[name], from->points[i].x * ux.scale, ux.text, from->points[i].y * uy.scale, uy.text };
     }
-    for (size_t i = 0; s.bandwidth > 0.0 && i < DENSITY_POINTS; i++)
-        rows[k++] = (profile_row){ size_name, scaled ? sizes[i] * px_nm : sizes[i], scaled ? nm : px, scaled ? density[i] / px_nm : density[i],
-                                   scaled ? per_nm : per_px };
-    profiles_csv(rows, k, out);
+    unit ux = unit_of("px", px_nm), uy = unit_of("density", px_nm);
+    status st = size_summarise(t, &s, NULL);
+    if (st == ST_OK) st = size_density(t, &s, x, y, DENSITY_POINTS, NULL);
+    for (size_t i = 0; st == ST_OK && s.bandwidth > 0.0 && i < DENSITY_POINTS; i++)
+        rows[(*n)++] = (profile_row){ density_name, x[i] * ux.scale, ux.text, y[i] * uy.scale, uy.text };
+    if (st == ST_OK) st = size_histogram(t, &s, x, y, HISTOGRAM_BINS, &bins, NULL);
+    for (size_t i = 0; st == ST_OK && i < bins; i++)
+        rows[(*n)++] = (profile_row){ histogram_name, x[i] * ux.scale, ux.text, y[i] * uy.scale, uy.text };
+    return st;
+}
+
+/* A curve over px turns into one over nm (or 1/um) where the pixel size is known. */
+static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_memory) {
+    size_t n = DENSITY_POINTS + HISTOGRAM_BINS, used = 0;
+    for (size_t c = 0; c < t->n_curves; c++) n += t->curves[c].n;
+    profile_row *rows = mem_array(n, sizeof *rows);
+    if (rows && profile_rows(t, px_nm, rows, &used) == ST_OK)
+        profiles_csv(rows, used, out);
+    else
+        *no_memory = 1;
     free(rows);
 }
 
@@ -264,8 +287,11 @@ static status sizes_json(const texture *t, double px_nm, textbuf *j, error *e) {
                     { "lognormal_gsd", s.lognormal_gsd },
                     { "lognormal_a2", s.a2 },
                     { "density_bandwidth_nm", s.bandwidth * px_nm },
+                    { "histogram_bin_nm", s.bin * px_nm },
                     { "circularity", s.circularity },
-                    { "aspect", s.aspect },
+                    { "aspect_ratio", s.aspect_ratio },
+                    { "feret_min_nm", s.feret_min * px_nm },
+                    { "feret_max_nm", s.feret_max * px_nm },
                     { "psi6", s.psi6 } };
     text_addf(j, "\"sizes\": {\"n\": %zu", s.n);
     for (size_t i = 0; i < sizeof members / sizeof members[0]; i++) {
@@ -296,6 +322,10 @@ static status fill_json(examined *x, const micrograph *m, const texture *t, erro
     json_number(&j, t->ring_z, 4);
     text_add(&j, ", \"second_spacing_nm\": ");
     json_number(&j, t->second_spacing_px * px, 5);
+    text_add(&j, ", \"pair_correlation_ring_nm\": ");
+    json_number(&j, t->pair_ring_px * px, 5);
+    text_add(&j, ", \"pair_correlation_ring_height\": ");
+    json_number(&j, t->pair_ring_height, 4);
     text_add(&j, ", \"relief_skewness\": ");
     json_number(&j, t->relief_skew, 4);
     text_add(&j, ", \"lognormal_anderson_darling\": ");

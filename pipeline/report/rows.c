@@ -165,9 +165,9 @@ const column feature_columns[] = {
             "equivalent circular diameter of the part above half the brightness of the cell; for comparison only"),
     FEATURE(feret_max_nm, COL_NUMBER, "nm", 5, "longest caliper diameter of the cell, from pixel corners"),
     FEATURE(feret_min_nm, COL_NUMBER, "nm", 5, "shortest caliper diameter of the cell, from pixel corners"),
-    FEATURE(aspect, COL_NUMBER, "1", 4, "feret_max / feret_min"),
+    FEATURE(aspect_ratio, COL_NUMBER, "1", 4, "feret_min / feret_max (ISO 9276-6): 1 when alike in all directions"),
     FEATURE(perimeter_nm, COL_NUMBER, "nm", 5, "length of the cell's border, from intercept counts in four directions (Crofton)"),
-    FEATURE(circularity, COL_NUMBER, "1", 4, "4 pi area / perimeter^2 of the cell: 1 disc, 0.907 regular hexagon (ISO 9276-6 gives its root)"),
+    FEATURE(circularity, COL_NUMBER, "1", 4, "root of 4 pi area / perimeter^2 of the cell (ISO 9276-6): 1 disc, 0.952 regular hexagon"),
     FEATURE(nn_nm, COL_NUMBER, "nm", 5, "distance to the nearest other feature; too long near the frame"),
     FEATURE(border_weight, COL_NUMBER, "1", 5,
             "weight in the size distribution (Miles-Lantuejoul, as in ISO 13322-1); 0: the cell touches the frame"),
@@ -178,11 +178,13 @@ const size_t n_feature_columns = COUNT_OF(feature_columns);
 
 const column profile_columns[] = {
     PROFILE(curve, COL_TEXT, "", 0,
-            "acf (autocorrelation), acf_curvature (of the curvature map), psd_curvature (power spectral density of it), "
-            "pair_correlation, all radial means; size_density (number density of the cell diameters by Gaussian kernels, bandwidth in "
-            "results.json)"),
-    PROFILE(x, COL_NUMBER, "", 6, "lag or spatial frequency, in x_unit"),
-    PROFILE(x_unit, COL_TEXT, "", 0, "nm or 1/nm; px or 1/px where the pixel size is unknown"),
+            "radial means: acf (autocorrelation of the brightness), acf_curvature (of the curvature map, whose first ring is "
+            "spacing_acf), psd and psd_curvature (power spectral density of both); of the features: pair_correlation (g, translation "
+            "edge correction, Epanechnikov kernel of 0.15 / sqrt(density)) and ripley_l (sqrt(K / pi), same correction; equal to x "
+            "for random placement); of the cell diameters, weighted for the border: size_density (Gaussian kernels, bandwidth "
+            "density_bandwidth_nm in results.json) and size_histogram (bins of histogram_bin_nm, x in the middle)"),
+    PROFILE(x, COL_NUMBER, "", 6, "lag, distance, diameter or spatial frequency, in x_unit"),
+    PROFILE(x_unit, COL_TEXT, "", 0, "nm or 1/um; px or 1/px where the pixel size is unknown"),
     PROFILE(value, COL_NUMBER, "", 6, "value of the curve, in value_unit"),
     PROFILE(value_unit, COL_TEXT, "", 0, "unit of value; 1 for a ratio"),
 };

@@ -49,7 +49,7 @@ typedef struct {
 typedef struct {
     long feature;
     double x_px, y_px, x_nm, y_nm;
-    double cell_ecd_nm, top_ecd_nm, feret_max_nm, feret_min_nm, aspect, perimeter_nm, circularity, nn_nm, border_weight;
+    double cell_ecd_nm, top_ecd_nm, feret_max_nm, feret_min_nm, aspect_ratio, perimeter_nm, circularity, nn_nm, border_weight;
     long n_neighbours, in_guard;
 } feature_row;
 

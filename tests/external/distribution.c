@@ -44,13 +44,22 @@ static void hatch_choate(double median, double gsd, const double *want, const ch
     CHECK_SOURCE(s.span, exp(1.281551566 * log(gsd)) - exp(-1.281551566 * log(gsd)), 1e-4, src);
     CHECK(s.a2 < 0.752); /* as log-normal as can be */
     CHECK_NEAR(s.circularity, 1.0, 1e-12);
-    CHECK_NEAR(s.aspect, 1.0, 1e-12);
+    CHECK_NEAR(s.aspect_ratio, 1.0, 1e-12);
     CHECK_NEAR(s.neighbours[3], 1.0, 1e-12);
     enum { K = 301 };
     double x[K], y[K], sum = 0.0;
     CHECK(size_density(&t, &s, x, y, K, &e) == ST_OK);
     for (int k = 1; k < K; k++) sum += 0.5 * (y[k] + y[k - 1]) * (x[k] - x[k - 1]);
     CHECK_NEAR(sum, 1.0, 2e-3);
+    size_t bins = 0;
+    double area = 0.0, middle = 0.0;
+    CHECK(size_histogram(&t, &s, x, y, K, &bins, &e) == ST_OK && bins > 20);
+    for (size_t k = 0; k < bins; k++) {
+        area += y[k] * s.bin;
+        middle += y[k] * s.bin * x[k];
+    }
+    CHECK_NEAR(area, 1.0, 1e-9);
+    CHECK_SOURCE(middle, want[0], 0.002 * want[0], src);
 }
 
 enum { SIDE = 240 };

@@ -22,7 +22,7 @@ static sharpness looked(float *f) {
     sharpness s = { 0 };
     plane p = { .px = f, .nx = NX, .ny = NY, .bit_depth = 8 };
     CHECK(flatten(&p, f, &e) == ST_OK);
-    CHECK(fitness_look(f, &p, d_px, &s, &e) == ST_OK);
+    CHECK(fitness_look(f, &p, d_px, &s, NULL, &e) == ST_OK);
     return s;
 }
 
@@ -193,7 +193,7 @@ static void check_no_memory(float *f) {
     error e;
     for (size_t n = 1; n <= 6; n++) {
         mem_fail_after(n);
-        CHECK_FAILS(fitness_look(f, &p, d_px, &s, &e), ST_NO_MEMORY, e, "memory");
+        CHECK_FAILS(fitness_look(f, &p, d_px, &s, NULL, &e), ST_NO_MEMORY, e, "memory");
     }
     mem_fail_after(0);
 }

@@ -71,7 +71,7 @@ static void check_all_known(const texture *t) {
     check_known(&t->clark_evans, "clark_evans");
     check_known(&t->noise_rel, "noise_rel");
     CHECK(isfinite(t->relief_skew) && isfinite(t->ring_z) && isfinite(t->lognormal_ad));
-    CHECK(t->n_curves == 4);
+    CHECK(t->n_curves == 6);
     for (size_t k = 0; k < t->n_curves; k++)
         CHECK(t->curves[k].n > 10 && t->curves[k].name && t->curves[k].x_unit);
 }
