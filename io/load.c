@@ -192,7 +192,7 @@ static void keep_facts(const picture *p, micrograph *m) {
     memcpy(m->note, p->note, sizeof m->note);
 }
 
-static status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_options *o,
+status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_options *o,
                          micrograph *m, error *e) {
     picture p = { 0 };
     micrograph r = { 0 };

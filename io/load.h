@@ -4,6 +4,7 @@
 #include <stdint.h>
 
 #include "base/status.h"
+#include "base/text.h"
 #include "io/micrograph.h"
 
 /* What a standard of known pitch said about the pixels of one magnification. */
@@ -39,6 +40,12 @@ load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, the
  *   err  ST_IO cannot be read; ST_BAD_INPUT empty, truncated, not an image, a variant that is not read (says which);
  *        ST_NO_MEMORY larger than the limits. The sentence does not repeat the path. */
 status load_file(const char *path, const load_options *o, micrograph *m, error *e);
+
+/* The same when the n bytes of `path` are already read: the path only leads to the sidecar; NULL: none. */
+status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_options *o, micrograph *m, error *e);
+
+/* Names and SHA-256 of the text files load_file would ask about the picture: what else its pixel size may depend on. */
+void sidecar_text(const char *path, textbuf *out);
 
 /* The same for bytes in memory, without sidecar (used by the fuzz targets). */
 status load_memory(const uint8_t *bytes, size_t n, const load_options *o, micrograph *m, error *e);

@@ -10,6 +10,7 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/file.h"
+#include "io/load.h"
 #include "io/metadata/instrument_priv.h"
 #include "io/metadata/keytext_priv.h"
 #include "io/metadata/scaletext_priv.h"
@@ -75,15 +76,27 @@ static int read_one(const char *folder, const char *name, const char *image, int
     return p->scales.n > before;
 }
 
-void sidecar_read(const char *path, picture *p) {
+/* The text files that belong to a picture, by their names in its folder. */
+typedef struct {
+    char *folder, *image; /* owned */
+    char *found[KINDS];   /* in the order they are asked; owned, NULL: not there */
+} beside;
+
+static void beside_free(beside *b) {
+    for (int k = 0; k < KINDS; k++) free(b->found[k]);
+    free(b->folder);
+    free(b->image);
+}
+
+static void look_beside(const char *path, beside *b) {
     const char *slash = strrchr(path, '/'), *name = slash ? slash + 1 : path;
     const char *dot = strrchr(name, '.');
     size_t whole = strlen(name), stem = dot && dot > name ? (size_t)(dot - name) : whole;
-    char *folder = slash ? mem_text_n(path, (size_t)(slash - path) + 1) : mem_text(".");
-    char *dashed = mem_text(name), *found[KINDS] = { NULL };
+    *b = (beside){ .folder = slash ? mem_text_n(path, (size_t)(slash - path) + 1) : mem_text("."), .image = mem_text(name) };
+    char *dashed = mem_text(name);
     if (dashed && stem < whole) dashed[stem] = '-';
     int exact[KINDS] = { 0 };
-    DIR *d = folder ? opendir(folder) : NULL;
+    DIR *d = b->folder ? opendir(b->folder) : NULL;
     for (const struct dirent *entry; d && (entry = readdir(d)) != NULL;)
         for (int k = 0; k < KINDS; k++) {
             int dash = kinds[k].stem == DASHED;
@@ -92,18 +105,34 @@ void sidecar_read(const char *path, picture *p) {
                                   kinds[k].ending);
             /* Of names that differ only in case: the exact one, else the first in byte order. */
             if (match > exact[k] ||
-                (match && match == exact[k] && found[k] && strcmp(entry->d_name, found[k]) < 0)) {
-                free(found[k]);
-                found[k] = mem_text(entry->d_name);
+                (match && match == exact[k] && b->found[k] && strcmp(entry->d_name, b->found[k]) < 0)) {
+                free(b->found[k]);
+                b->found[k] = mem_text(entry->d_name);
                 exact[k] = match;
             }
         }
     if (d) closedir(d);
-    int done = 0;
-    for (int k = 0; k < KINDS; k++) {
-        if (found[k] && !done) done = read_one(folder, found[k], name, kinds[k].hdr, p);
-        free(found[k]);
-    }
     free(dashed);
-    free(folder);
+}
+
+void sidecar_read(const char *path, picture *p) {
+    beside b;
+    look_beside(path, &b);
+    for (int k = 0; b.image && k < KINDS; k++)
+        if (b.found[k] && read_one(b.folder, b.found[k], b.image, kinds[k].hdr, p)) break;
+    beside_free(&b);
+}
+
+void sidecar_text(const char *path, textbuf *out) {
+    beside b;
+    look_beside(path, &b);
+    for (int k = 0; k < KINDS; k++) {
+        char *full = b.found[k] && b.folder ? path_join(b.folder, b.found[k]) : NULL, *text = NULL, hash[65] = "unread";
+        size_t n = 0;
+        if (full && file_read(full, LIMIT_SIDECAR_BYTES, &text, &n, NULL) == ST_OK) sha256_hex(text, n, hash);
+        if (full) text_addf(out, "%d:%s:%s;", k, b.found[k], hash);
+        free(text);
+        free(full);
+    }
+    beside_free(&b);
 }

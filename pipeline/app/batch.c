@@ -31,8 +31,8 @@ static void say_progress(size_t done, size_t n, double seconds) {
     if (done == n) fprintf(stderr, " in %s s%30s\n", number_text(seconds, 3, a), "");
 }
 
-status batch_examine(const batch_item *items, size_t n, const examine_options *o, int jobs, int progress, examined *out,
-                     error *e) {
+status batch_examine(const batch_item *items, size_t n, const examine_options *o, int jobs, int progress, int (*stop)(void),
+                     examined *out, error *e) {
     error *errors = mem_array(n, sizeof *errors);
     if (!errors) return NO_MEMORY(e, "the batch");
     size_t done = 0;
@@ -42,6 +42,7 @@ status batch_examine(const batch_item *items, size_t n, const examine_options *o
     for (long k = 0; k < count; k++) {
         size_t i = (size_t)k;
         const batch_item *item = &items[i];
+        if (stop && stop()) continue;
         examine(item->path, item->relative, item->stem, item->sheet_px_nm, item->sheet_bar_nm, o, &out[i], &errors[i]);
         if (progress) {
 #pragma omp critical(progress)
@@ -56,15 +57,15 @@ status batch_examine(const batch_item *items, size_t n, const examine_options *o
     return st;
 }
 
-status batch_join(const sample_group *groups, size_t n, const examined *all, const protocol *p, const setup *s,
-                  size_t n_extra, const char *basis, int jobs, joined *out, error *e) {
+status batch_join(const sample_group *groups, size_t n, const examined *all, const join_options *o, int jobs, joined *out,
+                  error *e) {
     error *errors = mem_array(n, sizeof *errors);
     if (!errors) return NO_MEMORY(e, "the batch");
     long count = (long)n;
 #pragma omp parallel for schedule(dynamic, 1) num_threads(workers(jobs, n))
     for (long k = 0; k < count; k++) {
         size_t i = (size_t)k;
-        join_sample(&groups[i], all, p, s, n_extra, basis, &out[i], &errors[i]);
+        join_sample(&groups[i], all, o, &out[i], &errors[i]);
     }
     status st = first_error(errors, n, e);
     free(errors);

@@ -12,15 +12,16 @@ typedef struct {
     double sheet_px_nm, sheet_bar_nm; /* NAN: the sheet does not say */
 } batch_item;
 
-/* jobs 0 = one per core. `progress` 1: a line on stderr that counts.
- *   out  [n], all filled even on failure (examined_free each)
+/* jobs 0 = one per core. `progress` 1: a line on stderr that counts. `stop` (NULL: never) is asked before each micrograph; once it
+ * says 1, the others are left as they are.
+ *   out  [n], zeroed before; all filled even on failure (examined_free each)
  *   err  the first failure in item order */
-status batch_examine(const batch_item *items, size_t n, const examine_options *o, int jobs, int progress, examined *out,
-                     error *e);
+status batch_examine(const batch_item *items, size_t n, const examine_options *o, int jobs, int progress, int (*stop)(void),
+                     examined *out, error *e);
 
 /* err the first failure in sample order; out [n] filled as far as possible (joined_free each) */
-status batch_join(const sample_group *groups, size_t n, const examined *all, const protocol *p, const setup *s,
-                  size_t n_extra, const char *basis, int jobs, joined *out, error *e);
+status batch_join(const sample_group *groups, size_t n, const examined *all, const join_options *o, int jobs, joined *out,
+                  error *e);
 
 /* Marks every file whose bytes came before as DUPLICATE. err ST_NO_MEMORY */
 status batch_mark_duplicates(examined *all, size_t n, error *e);

@@ -1,179 +1,122 @@
-/* One file per entry: a line that names the format, the body, the SHA-256 of both. The body lists every member of the
- * texture in a fixed order through one pair of functions, so that reading and writing cannot drift apart. */
+/* Numbers and texts are packed in a fixed order. Rows go by their column table, structs of numbers as they lie in memory. */
 #include "app/cache.h"
 
-#include <inttypes.h>
-#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
-#include "app/quantities.h"
-#include "base/limits.h"
-#include "base/mem.h"
-#include "base/text.h"
-#include "io/file.h"
+#include "io/memo.h"
 
-static const char head[] = "sward texture 4\n";
-enum { HASH = 64 };
+static const char micrograph_kind[] = "micrograph-1", prediction_kind[] = "prediction-1";
 
-/* Either appends to `out` or takes from bytes[at..n). */
-typedef struct {
-    textbuf *out;
-    const char *bytes;
-    size_t at, n;
-    int failed;
-} stream;
-
-static void pass(stream *s, void *value, size_t size) {
-    if (s->out) {
-        text_add_n(s->out, value, size);
-    } else if (s->failed || size > s->n - s->at) {
-        s->failed = 1;
-    } else {
-        memcpy(value, s->bytes + s->at, size);
-        s->at += size;
-    }
+void cache_layout_text(textbuf *out) {
+    text_addf(out, "%s|%zu|%zu|%zu|", SWARD_VERSION, sizeof(examined), sizeof(figure), sizeof(prediction));
+    for (size_t c = 0; c < n_image_columns; c++) text_addf(out, "%s,", image_columns[c].name);
+    text_add(out, "|");
 }
 
-static void pass_number(stream *s, double *v) { pass(s, v, sizeof *v); }
-
-static void pass_count(stream *s, size_t *v) {
-    uint64_t wide = *v;
-    pass(s, &wide, sizeof wide);
-    *v = (size_t)wide;
-}
-
-static void pass_int(stream *s, int *v) { pass(s, v, sizeof *v); }
-
-static void pass_feature(stream *s, feature *f) {
-    double *numbers[] = { &f->x, &f->y, &f->response, &f->cell_area_px2, &f->cell_ecd_px, &f->top_ecd_px,
-                          &f->feret_max_px, &f->feret_min_px, &f->perimeter_px, &f->nn_px, &f->weight };
-    int *whole[] = { &f->box_x0, &f->box_y0, &f->box_x1, &f->box_y1, &f->n_neighbours, &f->in_guard };
-    for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) pass_number(s, numbers[i]);
-    for (size_t i = 0; i < sizeof whole / sizeof whole[0]; i++) pass_int(s, whole[i]);
-}
-
-/* Curve names and units are words of the program: kept as an index into this list. */
-static const char *const words[] = { "acf", "acf_curvature", "psd_curvature", "pair_correlation", "px", "1/px",
-                                     "1",   "px2",           "psd",           "ripley_l" };
-
-static void pass_word(stream *s, const char **word) {
-    size_t k = 0, n = sizeof words / sizeof words[0];
-    if (s->out)
-        while (k < n && strcmp(words[k], *word)) k++;
-    pass_count(s, &k);
-    if (k >= n) s->failed = 1;
-    else *word = words[k];
-}
-
-/* Makes room for n elements when reading; the count must be covered by the bytes that are left. */
-static void *reading_room(stream *s, size_t n, size_t size) {
-    if (s->failed || n > (s->n - s->at) / 8) {
-        s->failed = 1;
-        return NULL;
-    }
-    void *block = mem_array(n, size);
-    if (!block) s->failed = 1;
-    return block;
-}
-
-static void pass_texture(stream *s, texture *t) {
-    int relief_word = (int)t->relief;
-    pass_int(s, &relief_word);
-    t->relief = (relief)relief_word;
-    for (int q = 0; q < QUANTITIES; q++) {
-        measured *m = (measured *)(void *)((char *)t + quantity_table[q].in_texture);
-        pass_number(s, &m->value);
-        pass_number(s, &m->u_sampling);
-        pass_number(s, &m->u_method);
-        pass_count(s, &m->n);
-    }
-    double *numbers[] = { &t->relief_skew, &t->clipped_share, &t->lognormal_ad, &t->ring_z, &t->second_spacing_px,
-                          &t->count_u_rel, &t->pair_ring_px, &t->pair_ring_height };
-    for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++) pass_number(s, numbers[i]);
-    pass_count(s, &t->n_features);
-    pass(s, &t->reasons, sizeof t->reasons);
-    pass(s, &t->flags, sizeof t->flags);
-    pass_count(s, &t->nx);
-    pass_count(s, &t->ny);
-
-    size_t n = t->n_found;
-    pass_count(s, &n);
-    if (!s->out && (t->features = reading_room(s, n, sizeof *t->features))) t->n_found = n;
-    for (size_t i = 0; i < n && !s->failed; i++) pass_feature(s, &t->features[i]);
-
-    size_t curves = t->n_curves;
-    pass_count(s, &curves);
-    if (curves > MAX_CURVES) s->failed = 1;
-    for (size_t k = 0; k < curves && !s->failed; k++) {
-        curve *c = &t->curves[k];
-        pass_word(s, &c->name);
-        pass_word(s, &c->x_unit);
-        pass_word(s, &c->y_unit);
-        pass_count(s, &c->n);
-        if (!s->out) {
-            c->points = reading_room(s, c->n, sizeof *c->points);
-            t->n_curves = k + 1;
-        }
-        for (size_t i = 0; i < c->n && !s->failed; i++) {
-            pass_number(s, &c->points[i].x);
-            pass_number(s, &c->points[i].y);
+static void pack_row(pack *p, image_row *r) {
+    for (size_t c = 0; c < n_image_columns && !p->failed; c++) {
+        void *member = (char *)r + image_columns[c].offset;
+        switch (image_columns[c].kind) {
+        case COL_TEXT: pack_text(p, member); break;
+        case COL_NUMBER: pack_bytes(p, member, sizeof(double)); break;
+        case COL_COUNT: pack_bytes(p, member, sizeof(long)); break;
         }
     }
 }
 
-static char *entry_path(const char *folder, const char *key) {
-    char name[80];
-    snprintf(name, sizeof name, "%.64s.bin", key);
-    return path_join(folder, name);
+int cache_examined(pack *p, examined *x) {
+    void *cells = x->cell_area_nm2;
+    pack_row(p, &x->row);
+    pack_text(p, &x->detail);
+    pack_text(p, &x->json);
+    pack_text(p, &x->overlay);
+    pack_bytes(p, x->hash, sizeof x->hash);
+    pack_bytes(p, x->acquired_at, sizeof x->acquired_at);
+    pack_bytes(p, &x->readable, sizeof x->readable);
+    pack_bytes(p, &x->relief, sizeof x->relief);
+    pack_bytes(p, &x->reasons, sizeof x->reasons);
+    pack_bytes(p, &x->flags, sizeof x->flags);
+    pack_bytes(p, x->figures, sizeof x->figures);
+    pack_array(p, &cells, &x->n_cells, sizeof *x->cell_area_nm2);
+    x->cell_area_nm2 = cells;
+    pack_bytes(p, &x->px_u_rel, sizeof x->px_u_rel);
+    pack_bytes(p, &x->count_u_rel, sizeof x->count_u_rel);
+    pack_bytes(p, x->outputs, sizeof x->outputs);
+    return !p->failed;
 }
 
-int cache_get(const char *folder, const char *key, texture *t, char overlay_hash[65]) {
-    char *path = entry_path(folder, key), *bytes = NULL;
-    size_t n = 0;
-    texture made = { 0 };
-    int ok = 0;
-    if (!path || file_read(path, LIMIT_FILE_BYTES, &bytes, &n, NULL) != ST_OK) goto done;
-    size_t head_n = sizeof head - 1;
-    if (n < head_n + 2 * HASH || memcmp(bytes, head, head_n)) goto done;
-    char sum[65];
-    sha256_hex(bytes, n - HASH, sum);
-    if (memcmp(sum, bytes + n - HASH, HASH)) goto done;
-    stream s = { .bytes = bytes, .at = head_n, .n = n - HASH };
-    pass(&s, overlay_hash, HASH);
-    overlay_hash[HASH] = '\0';
-    pass_texture(&s, &made);
-    ok = !s.failed && s.at == s.n;
-    if (ok) {
-        *t = made;
-        made = (texture){ 0 };
-    }
-done:
-    texture_free(&made);
+int cache_get(const char *folder, const char *key, examined *x) {
+    char *bytes = NULL;
+    examined made = { .readable = 0 };
+    pack p = { .out = NULL };
+    if (!memo_get(folder, key, micrograph_kind, &bytes, &p.n)) return 0;
+    p.bytes = bytes;
+    int ok = cache_examined(&p, &made) && p.at == p.n;
+    if (ok) *x = made;
+    else examined_free(&made);
     free(bytes);
-    free(path);
     return ok;
 }
 
-status cache_put(const char *folder, const char *key, const texture *t, const char *overlay_hash, error *e) {
-    textbuf out = { 0 };
-    char *path = entry_path(folder, key), overlay[65] = "", sum[65];
-    texture copy = *t; /* pass_texture only reads when it writes out */
-    stream s = { .out = &out };
-    text_add(&out, head);
-    snprintf(overlay, sizeof overlay, "%-64.64s", overlay_hash);
-    text_add_n(&out, overlay, HASH);
-    pass_texture(&s, &copy);
-    status st = s.failed ? fail(e, ST_BUG, "a curve of the texture has a name the cache does not know")
-                         : text_check(&out, "the remembered measurement", e);
-    if (st == ST_OK && !path) st = NO_MEMORY(e, "a path");
-    if (st == ST_OK) {
-        sha256_hex(out.s, out.n, sum);
-        text_add_n(&out, sum, HASH);
-        st = text_check(&out, "the remembered measurement", e);
+status cache_put(const char *folder, const char *key, const examined *x, error *e) {
+    textbuf body = { 0 };
+    examined copy = *x; /* writing only reads */
+    pack p = { .out = &body };
+    (void)cache_examined(&p, &copy);
+    status st = text_check(&body, "what is remembered", e);
+    if (st == ST_OK) st = memo_put(folder, key, micrograph_kind, &body, e);
+    text_free(&body);
+    return st;
+}
+
+/* The model's name is one of the program's words, not a text of the prediction's own. */
+static const char *const models[] = { "graded", "facets", "none" };
+
+static void pack_prediction(pack *p, prediction *d) {
+    double **arrays[] = { &d->wavelength_nm, &d->R, &d->R_lo, &d->R_hi };
+    double *mine[4];
+    size_t model = 0, known = sizeof models / sizeof models[0];
+    for (size_t i = 0; i < 4; i++) mine[i] = *arrays[i];
+    if (p->out)
+        while (model < known && strcmp(models[model], d->model)) model++;
+    for (size_t i = 0; p->out && i < 4; i++) *arrays[i] = NULL; /* addresses mean nothing elsewhere */
+    if (p->out) d->model = NULL;
+    pack_bytes(p, d, sizeof *d);
+    for (size_t i = 0; i < 4; i++) {
+        void *block = p->out ? mine[i] : NULL;
+        size_t n = d->n;
+        pack_array(p, &block, &n, sizeof(double));
+        *arrays[i] = block;
+        if (n != d->n) p->failed = 1;
     }
-    if (st == ST_OK) st = file_write(path, out.s, out.n, e);
-    text_free(&out);
-    free(path);
+    pack_count(p, &model);
+    if (model < known) d->model = models[model];
+    else p->failed = 1;
+}
+
+int cache_get_prediction(const char *folder, const char *key, prediction *d) {
+    char *bytes = NULL;
+    prediction made = { .n = 0 };
+    pack p = { .out = NULL };
+    if (!memo_get(folder, key, prediction_kind, &bytes, &p.n)) return 0;
+    p.bytes = bytes;
+    if (p.n >= sizeof made) pack_prediction(&p, &made);
+    else p.failed = 1;
+    int ok = !p.failed && p.at == p.n;
+    if (ok) *d = made;
+    else prediction_free(&made);
+    free(bytes);
+    return ok;
+}
+
+status cache_put_prediction(const char *folder, const char *key, const prediction *d, error *e) {
+    textbuf body = { 0 };
+    prediction copy = *d;
+    pack p = { .out = &body };
+    pack_prediction(&p, &copy);
+    status st = p.failed ? ST_OK : text_check(&body, "what is remembered", e); /* an unknown model: not remembered */
+    if (st == ST_OK && !p.failed) st = memo_put(folder, key, prediction_kind, &body, e);
+    text_free(&body);
     return st;
 }

@@ -131,7 +131,7 @@ static status measure_files(const measure_use *u, const protocol *p, examined *a
     if (!items) return NO_MEMORY(e, "the batch");
     for (size_t i = 0; i < u->n; i++) items[i] = (batch_item){ u->files[i], u->files[i], "", MISSING, MISSING };
     examine_options o = { p, u->px_nm, u->bar_nm, u->scale ? &u->standard : NULL, u->keep_tilt, NULL, 1 };
-    status st = batch_examine(items, u->n, &o, u->jobs, 0, all, e);
+    status st = batch_examine(items, u->n, &o, u->jobs, 0, NULL, all, e);
     if (st == ST_OK) st = batch_mark_duplicates(all, u->n, e);
     for (size_t i = 0; st == ST_OK && i < u->n; i++) {
         name_parts parts = { 0 };

@@ -150,7 +150,7 @@ static status measure_all(const repeat_use *u, const folder *f, const protocol *
         items[i] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING,
                                  f->rows[i] ? f->rows[i]->bar_nm : MISSING };
     examine_options o = { .protocol = p, .px_nm_option = u->px_nm, .bar_nm_option = MISSING, .fresh = 1 };
-    status st = batch_examine(items, f->n, &o, u->jobs, 0, all, e);
+    status st = batch_examine(items, f->n, &o, u->jobs, 0, NULL, all, e);
     if (st == ST_OK) st = batch_mark_duplicates(all, f->n, e);
     if (st == ST_OK) st = folder_samples(f, p, all, &groups, &n_groups, e); /* names the samples */
     for (size_t k = 0; k < n_groups; k++) sample_group_free(&groups[k]);
@@ -173,7 +173,7 @@ static status repeat_folder(const repeat_use *u, textbuf *out, size_t *unusable,
         st = u->protocol           ? protocol_read(u->protocol, &p, e)
              : file_exists(beside) ? protocol_read(beside, &p, e)
                                    : protocol_defaults(&p, e);
-    if (st == ST_OK) st = folder_open(u->folder, u->sheet, &f, e);
+    if (st == ST_OK) st = folder_open(u->folder, u->sheet, NULL, NULL, &f, e);
     if (st == ST_OK && !f.n) st = fail(e, ST_BAD_INPUT, "'%s' holds no micrograph", u->folder);
     if (st == ST_OK) {
         all = mem_array(f.n, sizeof *all);

@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "app/cache.h"
+#include "base/limits.h"
 #include "base/mem.h"
 #include "base/quantity.h"
 #include "io/file.h"
@@ -35,11 +36,20 @@ static void missing_row(image_row *r) {
     }
 }
 
-/* What changes a measurement: the pixels, the measuring protocol, the program; and what the overlay shows. */
-static status cache_key(const micrograph *m, const protocol *p, char key[65], error *e) {
+/* What the outcome depends on: the bytes, what the user and the files beside say of them, the measuring protocol, the names
+ * of the outputs. */
+static status cache_key(const char *path, const char *relative, const char *stem, const char *hash, const load_options *l,
+                        const protocol *p, char key[65], error *e) {
     textbuf t = { 0 };
-    text_addf(&t, "%s|%zu|%zu|%.17g|%.17g|%.17g|%s|", m->hash, m->strip_rows, m->strip_top, m->y_stretch, m->px_nm, m->px_u_rel,
-              SWARD_VERSION);
+    const scale_standard *k = l->standard;
+    cache_layout_text(&t);
+    text_addf(&t, "%s|%s|%s|%.17g|%.17g|%.17g|%d|%zu|%zu|%.17g|%.17g|%.17g|", hash, relative, stem, l->px_nm_option, l->px_nm_sheet,
+              l->bar_nm, l->correct_tilt, l->page, l->max_pixels, p->px_u_rel, p->window_lo_nm, p->window_hi_nm);
+    if (k)
+        text_addf(&t, "%s|%s|%.17g|%.17g|%.17g|%.17g|%.17g|%zu", k->name, k->date, k->px_x_nm, k->px_y_nm, k->u_rel,
+                  k->nominal_px_nm, k->magnification, k->width_px);
+    text_add(&t, "|");
+    sidecar_text(path, &t);
     protocol_measuring_text(p, &t);
     status st = text_check(&t, "a key", e);
     if (st == ST_OK) sha256_hex(t.s, t.n, key);
@@ -133,96 +143,75 @@ static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_
     free(rows);
 }
 
-static status make_parent(const char *path, error *e) {
-    char *folder = mem_text(path);
-    if (!folder) return NO_MEMORY(e, "a path");
-    char *slash = strrchr(folder, '/');
-    status st = ST_OK;
-    if (slash) {
-        *slash = '\0';
-        st = folder_make(folder, e);
-    }
-    free(folder);
-    return st;
-}
+static const struct {
+    const char *folder, *ending;
+} outputs[OUTPUTS] = { { "overlays", ".png" }, { "features", ".csv" }, { "profiles", ".csv" } };
 
-/* out/kind/stem + ending; *relative (may be NULL) gets the part behind out. */
-static status output_path(const char *out, const char *kind, const char *stem, const char *ending, char **path,
-                          char **relative, error *e) {
+/* "overlays/sub/name.png"; caller frees. */
+static status output_name(int which, const char *stem, char **relative, error *e) {
     textbuf t = { 0 };
-    text_addf(&t, "%s/%s%s", kind, stem, ending);
-    status st = text_check(&t, "a path", e);
-    if (st != ST_OK) return st;
-    *path = path_join(out, t.s);
-    if (!*path) st = NO_MEMORY(e, "a path");
-    if (st == ST_OK) st = make_parent(*path, e);
-    if (relative) *relative = t.s;
-    else free(t.s);
+    text_addf(&t, "%s/%s%s", outputs[which].folder, stem, outputs[which].ending);
+    *relative = t.s;
+    return text_check(&t, "a path", e);
+}
+
+/* Into the staging folder. */
+static status write_output(const stage *s, int which, const char *stem, const void *bytes, size_t n, char mark[17], error *e) {
+    char *relative = NULL, *path = NULL;
+    status st = output_name(which, stem, &relative, e);
+    if (st == ST_OK && !(path = path_join(s->folder, relative))) st = NO_MEMORY(e, "a path");
+    if (st == ST_OK) st = folder_make_parents(path, e);
+    if (st == ST_OK) st = file_write(path, bytes, n, e);
+    if (st == ST_OK) quick_mark(bytes, n, mark);
+    free(path);
+    free(relative);
     return st;
 }
 
-static status write_table(const char *out, const char *kind, const char *stem, const texture *t, double px_nm,
-                          void (*fill)(const texture *, double, textbuf *, int *), error *e) {
+static status write_table(const stage *s, int which, const char *stem, const texture *t, double px_nm,
+                          void (*fill)(const texture *, double, textbuf *, int *), char mark[17], error *e) {
     textbuf body = { 0 };
-    char *path = NULL;
     int no_memory = 0;
     fill(t, px_nm, &body, &no_memory);
-    status st = no_memory ? NO_MEMORY(e, kind) : text_check(&body, kind, e);
-    if (st == ST_OK) st = output_path(out, kind, stem, ".csv", &path, NULL, e);
-    if (st == ST_OK) st = file_write(path, body.s ? body.s : "", body.n, e);
-    free(path);
+    status st = no_memory ? NO_MEMORY(e, outputs[which].folder) : text_check(&body, outputs[which].folder, e);
+    if (st == ST_OK) st = write_output(s, which, stem, body.s ? body.s : "", body.n, mark, e);
     text_free(&body);
     return st;
 }
 
-static status write_overlay(const char *path, const micrograph *m, const texture *t, char hash[65], error *e) {
+static status write_overlay(const stage *s, const char *stem, const micrograph *m, const texture *t, char mark[17], error *e) {
     overlay_picture picture = { 0 };
     uint8_t *bytes = NULL;
     size_t n = 0;
     status st = overlay_draw(m, t, &picture, e);
     png_format format = { picture.nx, picture.ny, 1, 8, isfinite(m->px_nm) ? m->px_nm : 0.0 };
     if (st == ST_OK) st = png_encode_palette(picture.index, picture.palette, &format, &bytes, &n, e);
-    if (st == ST_OK) st = file_write(path, bytes, n, e);
-    if (st == ST_OK) sha256_hex(bytes, n, hash);
+    if (st == ST_OK) st = write_output(s, OUTPUT_OVERLAY, stem, bytes, n, mark, e);
     free(bytes);
     overlay_free(&picture);
     return st;
 }
 
-/* 1 when the overlay that belongs to a remembered measurement still lies where it was written. */
-static int overlay_is(const char *path, const char *hash) {
-    char *bytes = NULL, found[65];
+static int has_mark(const char *path, const char *mark) {
+    char *bytes = NULL, found[17];
     size_t n = 0;
     if (file_read(path, LIMIT_FILE_BYTES, &bytes, &n, NULL) != ST_OK) return 0;
-    sha256_hex(bytes, n, found);
+    quick_mark(bytes, n, found);
     free(bytes);
-    return !strcmp(found, hash);
+    return !strcmp(found, mark);
 }
 
-/* Measures, or recalls; with an output folder the overlay is then in place. */
-static status measure_or_recall(const micrograph *m, const examine_options *o, const char *overlay, texture *t, error *e) {
-    char key[65] = "", hash[65] = "";
-    char *folder = NULL;
+status examine_adopt(const stage *s, const char *dir, const char *stem, const examined *x, error *e) {
     status st = ST_OK;
-    if (o->out) {
-        folder = path_join(o->out, "cache");
-        st = folder ? cache_key(m, o->protocol, key, e) : NO_MEMORY(e, "a path");
-        if (st == ST_OK && !o->fresh && cache_get(folder, key, t, hash)) {
-            if (overlay_is(overlay, hash)) goto done;
-            texture_free(t);
-        }
+    for (int i = 0; st == ST_OK && i < OUTPUTS; i++) {
+        char *relative = NULL, *path = NULL;
+        st = output_name(i, stem, &relative, e);
+        if (st == ST_OK && !(path = path_join(dir, relative))) st = NO_MEMORY(e, "a path");
+        if (st == ST_OK && !has_mark(path, x->outputs[i])) st = fail(e, ST_IO, "%s: is gone or was changed by another program", path);
+        if (st == ST_OK) st = stage_adopt(s, dir, relative, e);
+        free(path);
+        free(relative);
     }
-    if (st == ST_OK) {
-        plane p = { m->px, m->nx, m->ny, m->bit_depth, m->clipped_low, m->clipped_high };
-        st = measure_plane(&p, &o->protocol->measure, t, e);
-    }
-    if (st == ST_OK && o->out) st = write_overlay(overlay, m, t, hash, e);
-    if (st == ST_OK && o->out) {
-        st = folder_make(folder, e);
-        if (st == ST_OK) st = cache_put(folder, key, t, hash, e);
-    }
-done:
-    free(folder);
     return st;
 }
 
@@ -373,46 +362,75 @@ int examine_keeps_out(const protocol *p, double px_nm) {
     return px_nm < p->window_lo_nm || px_nm > p->window_hi_nm;
 }
 
-status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, double sheet_bar_nm,
-               const examine_options *o, examined *out, error *e) {
+/* Decodes, measures, fills the row and writes the outputs. A micrograph that cannot be measured is `unreadable`. */
+static status measure(const char *bytes, size_t n, const char *path, const char *stem, const load_options *load,
+                      const examine_options *o, examined *out, error *e) {
     micrograph m = { 0 };
     texture t = { 0 };
-    char *overlay = NULL;
+    error why = { 0 };
+    status st = load_bytes((const uint8_t *)bytes, n, path, load, &m, &why);
+    int kept_out = st == ST_OK && examine_keeps_out(o->protocol, m.px_nm);
+    const stage *s = kept_out ? NULL : o->stage;
+    if (kept_out) {
+        t = texture_empty();
+        t.clipped_share = m.clipped_low + m.clipped_high;
+        t.reasons = FLAG(PX_WINDOW);
+    } else if (st == ST_OK) {
+        plane p = { m.px, m.nx, m.ny, m.bit_depth, m.clipped_low, m.clipped_high };
+        st = measure_plane(&p, &o->protocol->measure, &t, &why);
+    }
+    if (st != ST_OK) {
+        st = unreadable(out, &why, e);
+        goto done;
+    }
+    if (s) st = output_name(OUTPUT_OVERLAY, stem, &out->overlay, e);
+    if (st == ST_OK)
+        st = fill_row(out, &m, &t, isfinite(o->protocol->px_u_rel) ? o->protocol->px_u_rel : m.px_u_rel, e);
+    if (st == ST_OK) st = fill_json(out, &m, &t, e);
+    if (kept_out) out->row.n_features = -1;
+    if (st == ST_OK && s) st = write_overlay(s, stem, &m, &t, out->outputs[OUTPUT_OVERLAY], e);
+    if (st == ST_OK && s) st = write_table(s, OUTPUT_FEATURES, stem, &t, m.px_nm, features_text, out->outputs[OUTPUT_FEATURES], e);
+    if (st == ST_OK && s) st = write_table(s, OUTPUT_PROFILES, stem, &t, m.px_nm, profiles_text, out->outputs[OUTPUT_PROFILES], e);
+done:
+    texture_free(&t);
+    micrograph_free(&m);
+    return st;
+}
+
+status examine(const char *path, const char *relative, const char *stem, double sheet_px_nm, double sheet_bar_nm,
+               const examine_options *o, examined *out, error *e) {
+    char *bytes = NULL, *cache = NULL, hash[65], key[65] = "";
+    size_t n = 0;
     error why = { 0 };
     load_options load = examine_loading(o, sheet_px_nm, sheet_bar_nm);
 
     missing_row(&out->row);
     out->row.file = mem_text(relative);
     status st = out->row.file ? ST_OK : NO_MEMORY(e, "a row");
-    if (st == ST_OK && load_file(path, &load, &m, &why) != ST_OK) {
+    if (st == ST_OK && file_read(path, load.max_bytes, &bytes, &n, &why) != ST_OK) {
         st = unreadable(out, &why, e);
         goto done;
     }
-    int kept_out = st == ST_OK && examine_keeps_out(o->protocol, m.px_nm);
-    if (kept_out) {
-        t = texture_empty();
-        t.clipped_share = m.clipped_low + m.clipped_high;
-        t.reasons = FLAG(PX_WINDOW);
+    if (st == ST_OK && o->stage) {
+        sha256_hex(bytes, n, hash);
+        cache = path_join(o->stage->out, "cache");
+        st = cache ? cache_key(path, relative, stem, hash, &load, o->protocol, key, e) : NO_MEMORY(e, "a path");
+        examined found = { .readable = 0 };
+        if (st == ST_OK && !o->fresh && cache_get(cache, key, &found)) {
+            int whole = examine_adopt(o->stage, o->stage->out, stem, &found, NULL) == ST_OK;
+            examined_free(whole ? out : &found);
+            if (whole) {
+                *out = found;
+                goto done;
+            }
+        }
     }
-    const char *folder = kept_out ? NULL : o->out;
-    if (st == ST_OK && folder) st = output_path(folder, "overlays", stem, ".png", &overlay, &out->overlay, e);
-    if (st == ST_OK && !kept_out && measure_or_recall(&m, o, overlay, &t, &why) != ST_OK) {
-        free(out->overlay);
-        out->overlay = NULL;
-        if (why.code == ST_IO) st = fail(e, ST_IO, "%s", why.text);
-        else st = unreadable(out, &why, e);
-        goto done;
-    }
-    if (st == ST_OK)
-        st = fill_row(out, &m, &t, isfinite(o->protocol->px_u_rel) ? o->protocol->px_u_rel : m.px_u_rel, e);
-    if (st == ST_OK) st = fill_json(out, &m, &t, e);
-    if (kept_out) out->row.n_features = -1;
-    if (st == ST_OK && folder) st = write_table(folder, "features", stem, &t, m.px_nm, features_text, e);
-    if (st == ST_OK && folder) st = write_table(folder, "profiles", stem, &t, m.px_nm, profiles_text, e);
+    if (st == ST_OK) st = measure(bytes, n, path, stem, &load, o, out, e);
+    if (st == ST_OK && o->stage && out->overlay) st = cache_put(cache, key, out, e);
 done:
-    free(overlay);
-    texture_free(&t);
-    micrograph_free(&m);
+    file_time(path, out->file_time);
+    free(cache);
+    free(bytes);
     return st;
 }
 

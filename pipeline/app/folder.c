@@ -11,7 +11,7 @@
 #include "io/load.h"
 
 /* Pictures this program does not read still get a row with the reason: nothing is skipped in silence. */
-static int looks_like_picture(const char *relative) {
+int folder_is_picture(const char *relative) {
     static const char *const endings[] = { ".bmp", ".gif", ".webp", ".jp2" };
     size_t n = strlen(relative);
     if (load_knows_name(relative)) return 1;
@@ -203,7 +203,7 @@ static status keep_pictures(folder *f, file_list *list, error *e) {
     status st = ST_OK;
     for (size_t i = 0; i < list->n; i++) {
         char *name = list->paths[i];
-        int picture = looks_like_picture(name);
+        int picture = folder_is_picture(name);
         list->paths[i] = NULL;
         if (picture) list->paths[n++] = name;
         else if (st == ST_OK) st = file_list_leave(list, name, "no picture by its name", 0, e);
@@ -214,13 +214,42 @@ static status keep_pictures(folder *f, file_list *list, error *e) {
     return st;
 }
 
-status folder_open(const char *root, const char *sheet_path, folder *out, error *e) {
+status folder_listed(const char *root, char **names, size_t n, size_t n_other, const char *sheet_path, folder *out, error *e) {
+    folder f = { .n_other = n_other };
+    f.root = mem_text(root);
+    status st = f.root ? adopt(&f, names, n, sheet_path, e) : NO_MEMORY(e, "a path");
+    if (st == ST_OK) {
+        *out = f;
+        f = (folder){ 0 };
+    }
+    folder_close(&f);
+    return st;
+}
+
+/* What the caller refuses is left alone, and said. */
+static status leave_refused(file_list *pictures, int (*admit)(void *, const char *), void *context, error *e) {
+    size_t kept = 0;
+    status st = ST_OK;
+    for (size_t i = 0; i < pictures->n; i++) {
+        char *name = pictures->paths[i];
+        int wanted = admit(context, name);
+        pictures->paths[i] = NULL;
+        if (wanted) pictures->paths[kept++] = name;
+        else if (st == ST_OK) st = file_list_leave(pictures, name, "still being written", 1, e);
+        if (!wanted) free(name);
+    }
+    pictures->n = kept;
+    return st;
+}
+
+status folder_open(const char *root, const char *sheet_path, int (*admit)(void *, const char *), void *context, folder *out,
+                   error *e) {
     folder f = { 0 };
     file_list list = { 0 };
     f.root = mem_text(root);
     status st = f.root ? folder_walk(root, any_file, &list, e) : NO_MEMORY(e, "a path");
     if (st == ST_OK) st = keep_pictures(&f, &list, e);
-    if (st == ST_OK) st = leave_growing(root, &list, e);
+    if (st == ST_OK) st = admit ? leave_refused(&list, admit, context, e) : leave_growing(root, &list, e);
     if (st == ST_OK) st = adopt(&f, list.paths, list.n, sheet_path, e);
     if (st == ST_OK) {
         f.left = (file_list){ .left = list.left, .n_left = list.n_left };
@@ -261,7 +290,7 @@ static void adopt_time(sample_group *g, const folder *f, const examined *x, size
         snprintf(g->etched_at, sizeof g->etched_at, "%s", x->acquired_at);
         g->time_from_file = 0;
     } else if (!g->etched_at[0]) {
-        file_time(f->paths[i], g->etched_at);
+        memcpy(g->etched_at, x->file_time, sizeof g->etched_at);
         g->time_from_file = 1;
     }
 }

@@ -18,9 +18,16 @@ typedef struct {
     textbuf warnings;      /* lines: rows of the sheet without a file, micrographs that are still being written ... */
 } folder;                  /* {0} = empty */
 
-/* Walks, reads the sheet (NULL: root/samples.csv if there), orders.
+/* 1 when the name is one of a picture, also of a kind that is not read. */
+int folder_is_picture(const char *relative);
+
+/* Walks, reads the sheet (NULL: root/samples.csv if there), orders. Files that are still being written are left alone: those `admit`
+ * refuses; NULL: those that change while we look.
  *   err ST_IO no such folder; ST_BAD_INPUT a bad sheet; ST_NO_MEMORY */
-status folder_open(const char *root, const char *sheet_path, folder *out, error *e);
+status folder_open(const char *root, const char *sheet_path, int (*admit)(void *context, const char *relative), void *context,
+                   folder *out, error *e);
+/* The same for n pictures (byte order) and n_other other files that are known already; nothing but the sheet is read. */
+status folder_listed(const char *root, char **names, size_t n, size_t n_other, const char *sheet_path, folder *out, error *e);
 void folder_close(folder *f);
 
 /* Groups the micrographs into samples in order of first appearance.

@@ -6,6 +6,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "app/cache.h"
 #include "app/planning.h"
 #include "base/mem.h"
 #include "base/number.h"
@@ -117,9 +118,35 @@ static status gather_cells(const sample_group *g, const examined *all, double **
     return ST_OK;
 }
 
-static status link_and_predict(const sample_group *g, const examined *all, const protocol *p, const setup *s,
-                               const figure *spacing, joined *out, flags *f, error *e) {
+/* Everything predict() is given; the basis stands for the set-up and for the link, calibrated or not. */
+static status prediction_key(const surface_input *in, const char *basis, char key[65], error *e) {
+    textbuf t = { 0 };
+    char cells[65] = "";
+    if (in->n_cells) sha256_hex(in->cell_area_nm2, in->n_cells * sizeof *in->cell_area_nm2, cells);
+    cache_layout_text(&t);
+    text_addf(&t, "%s|%.17g|%.17g|%zu|%.17g|%.17g|%d|%s|", basis, in->spacing_nm.value, in->spacing_nm.u, in->spacing_nm.n,
+              in->height_nm.value, in->height_nm.u, in->pores, cells);
+    status st = text_check(&t, "a key", e);
+    if (st == ST_OK) sha256_hex(t.s, t.n, key);
+    text_free(&t);
+    return st;
+}
+
+/* predict(), or what it said to the same question before. */
+static status predict_or_recall(const surface_input *in, const join_options *o, prediction *out, error *e) {
+    char key[65];
+    if (!o->cache) return predict(in, &o->setup->optics, out, e);
+    status st = prediction_key(in, o->basis, key, e);
+    if (st != ST_OK || (!o->fresh && cache_get_prediction(o->cache, key, out))) return st;
+    st = predict(in, &o->setup->optics, out, e);
+    return st == ST_OK ? cache_put_prediction(o->cache, key, out, e) : st;
+}
+
+static status link_and_predict(const sample_group *g, const examined *all, const join_options *o, const figure *spacing,
+                               joined *out, flags *f, error *e) {
     sample_row *r = &out->row;
+    const protocol *p = o->protocol;
+    const setup *s = o->setup;
     surface_input in = { .link = p->link, .measured = s->measured.n ? &s->measured : NULL };
     double *areas = NULL;
     height_source source = HEIGHT_DEFAULT;
@@ -133,7 +160,7 @@ static status link_and_predict(const sample_group *g, const examined *all, const
         st = gather_cells(g, all, &areas, &in.n_cells, e);
         in.cell_area_nm2 = areas;
     }
-    if (st == ST_OK) st = predict(&in, &s->optics, &out->prediction, e);
+    if (st == ST_OK) st = predict_or_recall(&in, o, &out->prediction, e);
     free(areas);
     if (st != ST_OK) return fail_within(e, st, g->name);
     if (c) {
@@ -319,8 +346,9 @@ static status note_files(const sample_group *g, const examined *all, joined *out
     return ST_OK;
 }
 
-status join_sample(const sample_group *g, const examined *all, const protocol *p, const setup *s, size_t n_extra,
-                   const char *basis, joined *out, error *e) {
+status join_sample(const sample_group *g, const examined *all, const join_options *o, joined *out, error *e) {
+    const protocol *p = o->protocol;
+    size_t n_extra = o->n_extra;
     figure f[QUANTITIES];
     flags seen = 0;
     size_t n_used = 0;
@@ -349,9 +377,9 @@ status join_sample(const sample_group *g, const examined *all, const protocol *p
     if (g->time_from_file) seen |= FLAG(TIME_FROM_FILE);
 
     /* A measured profile predicts without any spacing; everything else needs one. */
-    if (n_used && (isfinite(spacing.m.value) || s->measured.n)) {
+    if (n_used && (isfinite(spacing.m.value) || o->setup->measured.n)) {
         error why = { 0 };
-        st = link_and_predict(g, all, p, s, &spacing, &made, &seen, &why);
+        st = link_and_predict(g, all, o, &spacing, &made, &seen, &why);
         if (st == ST_OK) {
             prediction_json(&made.prediction, &members);
         } else if (st == ST_BAD_INPUT || st == ST_NO_RESULT) { /* one sample's trouble does not end the run */
@@ -374,7 +402,7 @@ status join_sample(const sample_group *g, const examined *all, const protocol *p
         st = judge_sample(g, p, f, &spacing, &made, &members, e);
     }
     if (st == ST_OK) st = note_files(g, all, &made, e);
-    if (st == ST_OK) st = fingerprint(g, all, n_extra, basis, made.fingerprint, e);
+    if (st == ST_OK) st = fingerprint(g, all, n_extra, o->basis, made.fingerprint, e);
     if (st == ST_OK) {
         r->flags = mem_text(flags_text(seen, words, sizeof words));
         if (!r->height_source) r->height_source = mem_text("");

@@ -33,12 +33,20 @@ typedef struct {
     size_t n_files;
 } joined;
 
+/* What all samples of a run share; borrowed. */
+typedef struct {
+    const protocol *protocol;
+    const setup *setup;
+    size_t n_extra;     /* carried-along columns behind the verdict columns */
+    const char *basis;  /* stands for protocol, materials and version in fingerprints and keys */
+    const char *cache;  /* folder of remembered predictions; NULL: none are kept */
+    int fresh;          /* 1: what was remembered is not used */
+} join_options;
+
 /*   in   all[] examined micrographs; a duplicate (flag DUPLICATE) is counted but not used
- *        n_extra carried-along columns behind the verdict columns
- *        basis text that stands for protocol, materials and version in the fingerprint
- *   err  ST_BAD_INPUT from the link or the optics, with the sample's name; ST_NO_MEMORY */
-status join_sample(const sample_group *g, const examined *all, const protocol *p, const setup *s, size_t n_extra,
-                   const char *basis, joined *out, error *e);
+ *   err  ST_BAD_INPUT from the link or the optics, with the sample's name; ST_IO a prediction cannot be remembered;
+ *        ST_NO_MEMORY */
+status join_sample(const sample_group *g, const examined *all, const join_options *o, joined *out, error *e);
 void joined_free(joined *j);
 
 #endif

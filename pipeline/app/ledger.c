@@ -14,6 +14,8 @@ void ledger_free(ledger_result *r) {
     free(r->json);
     free(r->process);
     free(r->series);
+    for (size_t i = 0; r->row_json && i < r->n_rows; i++) free(r->row_json[i]);
+    free(r->row_json);
     *r = (ledger_result){ 0 };
 }
 
@@ -121,15 +123,16 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
     history_list list = { 0 };
     history_notes notes = { 0 };
     history_row *rows = mem_array(n, sizeof *rows);
-    char **row_json = mem_array(n, sizeof *row_json);
+    result->row_json = mem_array(n, sizeof *result->row_json);
+    result->n_rows = n;
     textbuf etches = { 0 }, process = { 0 }, charts = { 0 };
-    status st = rows && row_json ? rows_json(samples, n, p, columns, row_json, e) : NO_MEMORY(e, "the history");
+    status st = rows && result->row_json ? rows_json(samples, n, p, columns, result->row_json, e) : NO_MEMORY(e, "the history");
     origin from = { 0 };
     if (st == ST_OK) st = find_origin(p, run_at, folder, &from, e);
     result->stays_with_output = !path;
     result->path = path ? mem_text(path) : path_join(out, "history.sqlite");
     if (st == ST_OK && !result->path) st = NO_MEMORY(e, "a path");
-    for (size_t i = 0; st == ST_OK && i < n; i++) rows[i] = entry(&samples[i], &from, row_json[i]);
+    for (size_t i = 0; st == ST_OK && i < n; i++) rows[i] = entry(&samples[i], &from, result->row_json[i]);
     if (st == ST_OK) st = history_open(result->path, 0, &h, e);
     if (st == ST_OK) st = history_add(h, rows, n, &result->added, e);
     if (st == ST_OK) st = history_read(h, NULL, NULL, &list, e);
@@ -153,8 +156,6 @@ status ledger_keep(const char *path, const char *out, const char *run_at, const 
     history_list_free(&list);
     history_close(h);
     text_free(&etches);
-    for (size_t i = 0; row_json && i < n; i++) free(row_json[i]);
-    free(row_json);
     free(from.folder);
     free(rows);
     return st;

@@ -9,6 +9,8 @@ typedef struct {
                           order, one entry per sample: its newest run; excluded etches are left out */
     char *series;      /* array of control charts, see process.h */
     char *process;     /* what the history says of the process, lines; NULL: too few etches */
+    char **row_json;   /* [n_rows] the samples.csv row of each sample as one JSON object */
+    size_t n_rows;
     size_t added, total;
     int stays_with_output; /* no place was named: the ledger lies in OUT */
 } ledger_result;

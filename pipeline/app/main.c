@@ -13,6 +13,7 @@
 
 static const command commands[] = {
     { "run", cmd_run, &run_argp, "the whole pipeline on a folder" },
+    { "gather", cmd_gather, &gather_argp, "the parts of a divided run joined to its outputs" },
     { "measure", cmd_measure, &measure_argp, "texture numbers only" },
     { "repeat", cmd_repeat, &repeat_argp, "how well the measurement repeats, against the targets" },
     { "inspect", cmd_inspect, &inspect_argp, "what a file itself says: pixel size, strip, facts" },

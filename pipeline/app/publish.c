@@ -9,6 +9,7 @@
 #include "app/scenarios.h"
 #include "app/summary.h"
 #include "app/wafers.h"
+#include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
 #include "io/file.h"
@@ -18,7 +19,7 @@
 /* The arrays that `results` borrows. */
 typedef struct {
     image_row *images;
-    const char **image_json, **overlays, **stems;
+    const char **image_json, **overlays, **overlay_marks, **stems;
     sample_row *samples;
     const char **sample_json, **extra_names;
     char **verdict_names;
@@ -30,6 +31,7 @@ typedef struct {
     double *reference_nm, *polished, *coated;
     double *x_mm, *y_mm; /* [n_groups] */
     size_t n_reference;
+    char *cache;
     textbuf manifest, summary, note, wafers, window, angles;
 } material_for;
 
@@ -37,6 +39,8 @@ static void material_free_all(material_for *m, size_t n_targets) {
     free(m->images);
     free(m->image_json);
     free(m->overlays);
+    free(m->overlay_marks);
+    free(m->cache);
     free(m->stems);
     free(m->samples);
     free(m->sample_json);
@@ -65,15 +69,18 @@ static status gather_rows(const publication *p, material_for *m, error *e) {
     m->images = mem_array(n, sizeof *m->images);
     m->image_json = mem_array(n, sizeof *m->image_json);
     m->overlays = mem_array(n, sizeof *m->overlays);
+    m->overlay_marks = mem_array(n, sizeof *m->overlay_marks);
     m->stems = mem_array(n, sizeof *m->stems);
+    m->cache = path_join(p->stage->out, "cache");
     m->samples = mem_array(k, sizeof *m->samples);
     m->sample_json = mem_array(k, sizeof *m->sample_json);
-    if (!m->images || !m->image_json || !m->overlays || !m->stems || !m->samples || !m->sample_json)
+    if (!m->images || !m->image_json || !m->overlays || !m->overlay_marks || !m->cache || !m->stems || !m->samples || !m->sample_json)
         return NO_MEMORY(e, "the results");
     for (size_t i = 0; i < n; i++) { /* shallow copies: the rows stay with their owners */
         m->images[i] = p->images[i].row;
         m->image_json[i] = p->images[i].json;
         m->overlays[i] = p->images[i].overlay;
+        m->overlay_marks[i] = p->images[i].outputs[OUTPUT_OVERLAY];
         m->stems[i] = p->images[i].readable ? p->folder->stems[i] : NULL;
     }
     for (size_t i = 0; i < k; i++) {
@@ -240,7 +247,7 @@ static status write_run_json(const publication *p, error *e) {
     add_member(&t, "protocol_file", p->protocol->path);
     text_add(&t, ", ");
     add_member(&t, "history", p->ledger->path);
-    text_addf(&t, ", \"history_added\": %zu, \"jobs\": %d", p->ledger->added, p->jobs);
+    text_addf(&t, ", \"history_added\": %zu, \"jobs\": %d", p->ledger->added, p->options->jobs);
     static const char *const names[] = { "prepare_s", "measure_s", "predict_s" };
     for (size_t i = 0; i < 3; i++) {
         text_addf(&t, ", \"%s\": ", names[i]);
@@ -250,7 +257,7 @@ static status write_run_json(const publication *p, error *e) {
     json_number(&t, total, 4);
     text_add(&t, "}\n");
     status st = text_check(&t, "run.json", e);
-    char *path = path_join(p->out, "run.json");
+    char *path = path_join(p->stage->folder, "run.json");
     if (!path) st = NO_MEMORY(e, "a path");
     if (st == ST_OK) st = file_write(path, t.s, t.n, e);
     free(path);
@@ -268,12 +275,36 @@ static status write_all(const publication *p, material_for *m, error *e) {
                   .target_quantity = m->target_quantity, .target_min = m->target_min, .target_max = m->target_max,
                   .n_targets = p->protocol->n_targets, .history_json = p->ledger->json,
                   .reference_wavelength_nm = m->reference_nm, .polished_R = m->polished, .coated_R = m->coated,
-                  .n_reference = m->n_reference, .overlay_paths = m->overlays, .history_note = m->note.s,
+                  .n_reference = m->n_reference, .overlay_paths = m->overlays,
+                  .overlay_marks = m->overlay_marks, .picture_cache = m->cache, .history_note = m->note.s,
                   .image_stems = m->stems,
                   .sample_x_mm = m->x_mm, .sample_y_mm = m->y_mm };
-    status st = results_write(&r, p->out, e);
-    if (st == ST_OK && p->page) st = report_write(&r, p->out, e);
+    status st = results_write(&r, p->stage->folder, e);
+    if (st == ST_OK && p->page) st = report_write(&r, p->stage->folder, e);
     return st;
+}
+
+static status print_results(const publication *p, error *e) {
+    char *path = path_join(p->stage->out, "results.json"), *bytes = NULL;
+    size_t n = 0;
+    status st = path ? file_read(path, LIMIT_FILE_BYTES, &bytes, &n, e) : NO_MEMORY(e, "a path");
+    if (st == ST_OK) fwrite(bytes, 1, n, stdout); /* main checks stdout */
+    free(bytes);
+    free(path);
+    return st;
+}
+
+static status print_outcome(const publication *p, const material_for *m, error *e) {
+    textbuf coloured = { 0 };
+    if (p->options->json) return print_results(p, e);
+    if (p->options->quiet) return ST_OK;
+    if (colour_wanted()) summary_colour(m->summary.s, &coloured);
+    fputs(coloured.s && !coloured.failed ? coloured.s : m->summary.s, stdout);
+    text_free(&coloured);
+    fprintf(stdout, "%s%s\n", p->ledger->process ? p->ledger->process : "", m->note.s);
+    if (p->page) fprintf(stdout, "Report: %s/report.html\n", p->stage->out);
+    else fprintf(stdout, "Tables: %s\n", p->stage->out);
+    return ST_OK;
 }
 
 status publish(const publication *p, error *e) {
@@ -298,15 +329,8 @@ status publish(const publication *p, error *e) {
     if (st == ST_OK) st = text_check(&m.summary, "the summary", e);
     if (st == ST_OK) st = write_all(p, &m, e);
     if (st == ST_OK) st = write_run_json(p, e);
-    if (st == ST_OK && !p->quiet) {
-        textbuf coloured = { 0 };
-        if (colour_wanted()) summary_colour(m.summary.s, &coloured);
-        fputs(coloured.s && !coloured.failed ? coloured.s : m.summary.s, stdout);
-        text_free(&coloured);
-        fprintf(stdout, "%s%s\n", p->ledger->process ? p->ledger->process : "", m.note.s);
-        if (p->page) fprintf(stdout, "Report: %s/report.html\n", p->out);
-        else fprintf(stdout, "Tables: %s\n", p->out);
-    }
+    if (st == ST_OK) st = stage_commit(p->stage, e);
+    if (st == ST_OK) st = print_outcome(p, &m, e);
     material_free_all(&m, p->protocol->n_targets);
     return st;
 }

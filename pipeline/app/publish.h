@@ -4,6 +4,7 @@
 #include "app/folder.h"
 #include "app/join.h"
 #include "app/ledger.h"
+#include "app/run.h"
 
 typedef struct {
     const protocol *protocol;
@@ -14,12 +15,16 @@ typedef struct {
     const joined *samples;        /* [n_groups] */
     size_t n_groups;
     const ledger_result *ledger;
-    const char *out, *run_at;
-    int page, quiet, jobs;
+    const stage *stage;
+    const run_options *options;
+    const scale_standard *standard; /* NULL: none */
+    const char *run_at;
+    int page;
     double seconds[3], started;   /* preparing, measuring, predicting; CLOCK_MONOTONIC at the start */
 } publication;
 
-/* Writes every table, results.json, datapackage.json, the page and run.json; prints the summary unless quiet.
+/* Writes every table, results.json, datapackage.json, the page and run.json, moves all outputs into place and prints the summary,
+ * or results.json, unless quiet.
  * err ST_IO, ST_NO_MEMORY */
 status publish(const publication *p, error *e);
 

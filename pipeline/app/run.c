@@ -1,5 +1,5 @@
 /* load -> measure -> link -> predict -> judge -> report, in this order, each stage in its own room. */
-#include "app/run.h"
+#include "app/run_priv.h"
 
 #include <stdio.h>
 #include <stdlib.h>
@@ -7,30 +7,9 @@
 #include <time.h>
 #include <unistd.h>
 
-#include "app/batch.h"
 #include "app/dryrun.h"
-#include "app/folder.h"
-#include "app/ledger.h"
 #include "app/publish.h"
-#include "app/scalefile.h"
 #include "base/mem.h"
-#include "io/file.h"
-
-/* Everything of one run; freed in one place. */
-typedef struct {
-    const run_options *o;
-    protocol protocol;
-    scale_standard standard;
-    int has_standard;
-    setup *setup;
-    folder folder;
-    examined *images;
-    sample_group *groups;
-    joined *samples;
-    size_t n_groups;
-    textbuf basis;
-    const char *out;
-} run;
 
 static double now_s(void) {
     struct timespec t;
@@ -38,7 +17,9 @@ static double now_s(void) {
     return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
 }
 
-static void run_free(run *r) {
+const char *run_out(const run_options *o) { return o->out ? o->out : "sward-out"; }
+
+void run_free(run *r) {
     if (r->images)
         for (size_t i = 0; i < r->folder.n; i++) examined_free(&r->images[i]);
     for (size_t i = 0; i < r->n_groups; i++) {
@@ -52,7 +33,7 @@ static void run_free(run *r) {
     free(r->setup);
     folder_close(&r->folder);
     protocol_free(&r->protocol);
-    text_free(&r->basis);
+    if (!r->hooks || !r->hooks->stage) stage_close(&r->stage);
 }
 
 static status read_protocol(run *r, error *e) {
@@ -71,29 +52,54 @@ static status read_protocol(run *r, error *e) {
     return st;
 }
 
-static status prepare(run *r, error *e) {
-    const run_options *o = r->o;
-    r->out = o->out ? o->out : "sward-out";
-    if (!folder_exists(o->folder))
-        return fail(e, ST_BAD_INPUT, "'%s' is no folder; name the folder that holds the micrographs", o->folder);
+static status make_basis(run *r, error *e) {
+    textbuf t = { 0 };
+    text_addf(&t, "%s|", SWARD_VERSION);
+    protocol_full_text(&r->protocol, &t);
+    setup_text(r->setup, &t);
+    if (r->has_standard)
+        text_addf(&t, "|%s|%s|%.17g|%.17g|%.17g", r->standard.name, r->standard.date, r->standard.px_x_nm,
+                  r->standard.px_y_nm, r->standard.u_rel);
+    status st = text_check(&t, "the protocol's fingerprint", e);
+    if (st == ST_OK) sha256_hex(t.s, t.n, r->basis);
+    text_free(&t);
+    return st;
+}
+
+status run_meet_folder(run *r, error *e) {
+    const sheet *s = &r->folder.sheet;
+    status st = protocol_meet_sheet(&r->protocol, s->extra_names, s->n_extra, e);
+    return st == ST_OK ? make_basis(r, e) : st;
+}
+
+status run_make_stage(run *r, error *e) {
+    status st = ST_OK;
+    if (r->hooks && r->hooks->stage) r->stage = *r->hooks->stage; /* the caller's: borrowed */
+    else st = stage_open(run_out(r->o), &r->stage, e);
+    return st == ST_OK ? stage_begin(&r->stage, e) : st;
+}
+
+status run_prepare(run *r, error *e) {
+    time_t t = time(NULL);
+    struct tm parts;
+    r->begun_s[0] = now_s();
+    if (gmtime_r(&t, &parts)) strftime(r->run_at, sizeof r->run_at, "%Y-%m-%dT%H:%M:%SZ", &parts);
     status st = read_protocol(r, e);
     if (st != ST_OK) return st;
     r->setup = mem_array(1, sizeof *r->setup);
     if (!r->setup) return NO_MEMORY(e, "the optics");
     st = setup_make(&r->protocol, r->setup, e);
-    if (st == ST_OK) st = folder_open(o->folder, o->sheet, &r->folder, e);
-    if (st == ST_OK) st = protocol_meet_sheet(&r->protocol, r->folder.sheet.extra_names, r->folder.sheet.n_extra, e);
+    return st;
+}
+
+static status open_folder(run *r, error *e) {
+    const run_options *o = r->o;
+    const run_hooks *h = r->hooks;
+    status st = folder_open(o->folder, o->sheet, h ? h->admit : NULL, h ? h->context : NULL, &r->folder, e);
     if (st == ST_OK && !r->folder.n)
         st = fail(e, ST_BAD_INPUT, "'%s' holds no micrograph: no file below it is named like a picture (.tif, .tiff, .png, .jpg)",
                   o->folder);
-    if (st == ST_OK && !o->dry_run) st = folder_make(r->out, e);
-    text_addf(&r->basis, "%s|", SWARD_VERSION);
-    protocol_full_text(&r->protocol, &r->basis);
-    setup_text(r->setup, &r->basis);
-    if (r->has_standard)
-        text_addf(&r->basis, "|%s|%s|%.17g|%.17g|%.17g", r->standard.name, r->standard.date, r->standard.px_x_nm,
-                  r->standard.px_y_nm, r->standard.u_rel);
-    return st == ST_OK ? text_check(&r->basis, "the protocol's fingerprint", e) : st;
+    return st == ST_OK ? run_meet_folder(r, e) : st;
 }
 
 /* A line for every file and folder that is left alone, and why. */
@@ -108,84 +114,111 @@ static void say_left(const folder *f) {
     text_free(&t);
 }
 
-static status measure_all(run *r, error *e) {
+static examine_options examining(const run *r) {
+    return (examine_options){ &r->protocol, r->o->px_nm, r->o->bar_nm, r->has_standard ? &r->standard : NULL,
+                              r->o->keep_tilt, r->o->dry_run ? NULL : &r->stage, r->o->fresh };
+}
+
+status run_measure(run *r, int *stopped, error *e) {
     const folder *f = &r->folder;
+    int (*stop)(void) = r->hooks ? r->hooks->stop : NULL;
+    size_t step = r->o->parts ? (size_t)r->o->parts : 1, first = r->o->parts ? (size_t)r->o->part - 1 : 0, n = 0;
     batch_item *items = mem_array(f->n, sizeof *items);
+    examined *mine = mem_array(f->n, sizeof *mine);
     r->images = mem_array(f->n, sizeof *r->images);
-    if (!items || !r->images) {
-        free(items);
-        return NO_MEMORY(e, "the batch");
-    }
-    for (size_t i = 0; i < f->n; i++)
-        items[i] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING,
-                                 f->rows[i] ? f->rows[i]->bar_nm : MISSING };
-    examine_options x = { &r->protocol, r->o->px_nm, r->o->bar_nm, r->has_standard ? &r->standard : NULL, r->o->keep_tilt, r->out, r->o->fresh };
+    status st = items && mine && r->images ? ST_OK : NO_MEMORY(e, "the batch");
+    for (size_t i = first; st == ST_OK && i < f->n; i += step)
+        items[n++] = (batch_item){ f->paths[i], f->relative[i], f->stems[i], f->rows[i] ? f->rows[i]->px_nm : MISSING,
+                                   f->rows[i] ? f->rows[i]->bar_nm : MISSING };
+    examine_options x = examining(r);
     int progress = !r->o->quiet && (r->o->verbose || isatty(STDERR_FILENO));
-    status st = batch_examine(items, f->n, &x, r->o->jobs, progress, r->images, e);
+    if (st == ST_OK) st = batch_examine(items, n, &x, r->o->jobs, progress, stop, mine, e);
+    for (size_t k = 0; k < n; k++) r->images[first + k * step] = mine[k];
+    *stopped = stop && stop();
     free(items);
-    if (st == ST_OK) st = batch_mark_duplicates(r->images, f->n, e);
-    if (st == ST_OK) st = folder_samples(f, &r->protocol, r->images, &r->groups, &r->n_groups, e);
-    for (size_t i = 0; st == ST_OK && i < f->n; i++) st = examine_finish(&r->images[i], e);
+    free(mine);
     return st;
 }
 
 static status join_all(run *r, error *e) {
-    r->samples = mem_array(r->n_groups, sizeof *r->samples);
-    if (!r->samples) return NO_MEMORY(e, "the samples");
-    return batch_join(r->groups, r->n_groups, r->images, &r->protocol, r->setup, r->folder.sheet.n_extra, r->basis.s,
-                      r->o->jobs, r->samples, e);
+    const folder *f = &r->folder;
+    char *cache = path_join(r->stage.out, "cache");
+    status st = cache ? batch_mark_duplicates(r->images, f->n, e) : NO_MEMORY(e, "a path");
+    if (st == ST_OK) st = folder_samples(f, &r->protocol, r->images, &r->groups, &r->n_groups, e);
+    for (size_t i = 0; st == ST_OK && i < f->n; i++) st = examine_finish(&r->images[i], e);
+    if (st == ST_OK && !(r->samples = mem_array(r->n_groups, sizeof *r->samples))) st = NO_MEMORY(e, "the samples");
+    join_options o = { &r->protocol, r->setup, f->sheet.n_extra, r->basis, cache, r->o->fresh };
+    if (st == ST_OK) st = batch_join(r->groups, r->n_groups, r->images, &o, r->o->jobs, r->samples, e);
+    free(cache);
+    return st;
 }
 
-static void utc_now(char out[32]) {
-    time_t t = time(NULL);
-    struct tm parts;
-    out[0] = '\0';
-    if (gmtime_r(&t, &parts)) strftime(out, 32, "%Y-%m-%dT%H:%M:%SZ", &parts);
-}
-
-static void count_outcome(const run *r, run_outcome *outcome) {
-    *outcome = (run_outcome){ 0, 0 };
-    for (size_t i = 0; i < r->folder.n; i++)
+void run_count_unusable(const run *r, run_outcome *outcome) {
+    *outcome = (run_outcome){ .samples = (int)r->n_groups };
+    for (size_t i = 0; i < r->folder.n; i++) {
+        if (!r->images[i].row.file) continue; /* of another part */
+        outcome->micrographs++;
         if (!r->images[i].readable || r->images[i].reasons) outcome->unusable++;
+    }
     for (size_t k = 0; k < r->n_groups; k++) {
         if (r->samples[k].failed) outcome->unusable++;
         if (r->samples[k].verdict == VERDICT_FAILS) outcome->missed++;
     }
 }
 
-status run_folder(const run_options *o, run_outcome *outcome, error *e) {
-    run r = { .o = o };
-    char run_at[32];
+static status tell_verdicts(const run *r, const ledger_result *ledger, error *e) {
+    status st = ST_OK;
+    for (size_t k = 0; st == ST_OK && r->hooks && r->hooks->verdict && k < r->n_groups; k++) {
+        const sample_row *row = &r->samples[k].row;
+        run_verdict v = { row->sample, row->verdict, row->verdict_reasons, row->etched_at, ledger->row_json[k] };
+        st = r->hooks->verdict(r->hooks->context, &v, e);
+    }
+    return st;
+}
+
+status run_complete(run *r, run_outcome *outcome, error *e) {
+    const run_options *o = r->o;
     ledger_result ledger = { 0 };
-    double t0 = now_s();
-    utc_now(run_at);
-    status st = prepare(&r, e);
+    r->begun_s[2] = now_s();
+    status st = join_all(r, e);
+    r->begun_s[3] = now_s();
+    if (st == ST_OK) {
+        const char *history = o->history ? o->history : r->protocol.history;
+        st = ledger_keep(history, r->stage.out, r->run_at, &r->protocol, &r->folder.sheet, r->folder.root, r->samples, r->n_groups, &ledger, e);
+    }
+    if (st == ST_OK) {
+        run_count_unusable(r, outcome);
+        outcome->added = (int)ledger.added;
+        publication p = { .protocol = &r->protocol, .setup = r->setup, .folder = &r->folder, .images = r->images,
+                          .groups = r->groups, .samples = r->samples, .n_groups = r->n_groups, .ledger = &ledger,
+                          .stage = &r->stage, .page = !o->no_report, .run_at = r->run_at, .options = o,
+                          .standard = r->has_standard ? &r->standard : NULL, .seconds = { 0 }, .started = r->begun_s[0] };
+        for (size_t i = 0; i < 3; i++) p.seconds[i] = r->begun_s[i + 1] - r->begun_s[i];
+        st = publish(&p, e);
+    }
+    if (st == ST_OK) st = tell_verdicts(r, &ledger, e);
+    ledger_free(&ledger);
+    return st;
+}
+
+status run_folder(const run_options *o, const run_hooks *hooks, run_outcome *outcome, error *e) {
+    run r = { .o = o, .hooks = hooks, .stage = STAGE_NONE };
+    *outcome = (run_outcome){ 0 };
+    if (!folder_exists(o->folder))
+        return fail(e, ST_BAD_INPUT, "'%s' is no folder; name the folder that holds the micrographs", o->folder);
+    status st = run_prepare(&r, e);
+    if (st == ST_OK) st = open_folder(&r, e);
     if (st == ST_OK && o->verbose) say_left(&r.folder);
     if (st == ST_OK && o->dry_run) {
-        examine_options x = { &r.protocol, o->px_nm, o->bar_nm, r.has_standard ? &r.standard : NULL, o->keep_tilt, NULL, 1 };
-        *outcome = (run_outcome){ 0, 0 };
+        examine_options x = examining(&r);
         st = dry_run(&r.folder, &x, &outcome->unusable, e);
         run_free(&r);
         return st;
     }
-    double t1 = now_s();
-    if (st == ST_OK) st = measure_all(&r, e);
-    double t2 = now_s();
-    if (st == ST_OK) st = join_all(&r, e);
-    double t3 = now_s();
-    if (st == ST_OK) {
-        const char *history = o->history ? o->history : r.protocol.history;
-        st = ledger_keep(history, r.out, run_at, &r.protocol, &r.folder.sheet, r.folder.root, r.samples, r.n_groups, &ledger, e);
-    }
-    if (st == ST_OK) {
-        count_outcome(&r, outcome);
-        publication p = { .protocol = &r.protocol, .setup = r.setup, .folder = &r.folder, .images = r.images,
-                          .groups = r.groups, .samples = r.samples, .n_groups = r.n_groups, .ledger = &ledger,
-                          .out = r.out, .page = !o->no_report, .quiet = o->quiet, .run_at = run_at,
-                          .jobs = o->jobs, .seconds = { t1 - t0, t2 - t1, t3 - t2 }, .started = t0 };
-        st = publish(&p, e);
-    }
-    ledger_free(&ledger);
+    if (st == ST_OK) st = run_make_stage(&r, e);
+    r.begun_s[1] = now_s();
+    if (st == ST_OK) st = run_measure(&r, &outcome->stopped, e);
+    if (st == ST_OK && !outcome->stopped) st = o->parts ? part_write(&r, outcome, e) : run_complete(&r, outcome, e);
     run_free(&r);
     return st;
 }

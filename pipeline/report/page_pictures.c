@@ -102,7 +102,7 @@ static void read_picture(const results *r, size_t i, const char *out_dir, size_t
         text_add(out, "<div class=\"blank\">Left out to keep the page small: ");
         html_text(out, relative);
         text_add(out, "</div>\n");
-    } else if (thumbnail_make(path, width, r->n_images > MOST_DETAILS ? 0 : DETAIL_NX, DETAIL_NY, whole, detail, &e)) {
+    } else if (thumbnail_recall(r->picture_cache, r->overlay_marks ? r->overlay_marks[i] : NULL, path, width, r->n_images > MOST_DETAILS ? 0 : DETAIL_NX, DETAIL_NY, whole, detail, &e)) {
         text_add(out, "<div class=\"blank\">The overlay could not be read: ");
         html_text(out, e.text);
         text_add(out, "</div>\n");

@@ -26,6 +26,8 @@ typedef struct {
                                      verdict} in time order, or NULL */
     const double *reference_wavelength_nm, *polished_R, *coated_R; size_t n_reference; /* flat references; may be NULL */
     const char *const *overlay_paths; /* [n_images] relative to out_dir, or NULL */
+    const char *const *overlay_marks; /* [n_images], and a folder that remembers by it the small pictures of the page; may be NULL */
+    const char *picture_cache;
     const char *history_note;     /* where the ledger is, one sentence */
     const double *sample_x_mm, *sample_y_mm; /* [n_samples] from the middle of the wafer, NAN unknown; NULL: no maps */
     const char *const *image_stems; /* [n_images] stem of features/<stem>.csv, profiles/<stem>.csv, NULL entries where

@@ -15,6 +15,7 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/file.h"
+#include "io/memo.h"
 
 enum { QUALITY = 72 };
 
@@ -182,6 +183,57 @@ status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t d
     if (!st && detail_nx && detail_ny) st = encode_middle(full, nx, ny, detail_nx, detail_ny, detail, e);
     free(full);
     free(small);
+    return st;
+}
+
+/* An entry: size, columns and rows of both pictures, then their bytes. */
+enum { NUMBERS = 6 };
+static const char remembered[] = "pictures-1";
+
+static int recall(const char *cache, const char *key, small_picture *whole, small_picture *detail) {
+    char *bytes = NULL;
+    uint64_t v[NUMBERS];
+    size_t n = 0;
+    if (!memo_get(cache, key, remembered, &bytes, &n)) return 0;
+    int ok = n >= sizeof v;
+    if (ok) {
+        memcpy(v, bytes, sizeof v);
+        n -= sizeof v;
+        ok = v[0] <= n && v[3] == n - v[0];
+    }
+    small_picture *both[] = { whole, detail };
+    for (size_t i = 0, at = sizeof v; ok && i < 2; at += v[3 * i], i++) {
+        uint8_t *jpeg = mem_array(v[3 * i], 1);
+        ok = jpeg != NULL;
+        if (!ok) break;
+        memcpy(jpeg, bytes + at, v[3 * i]);
+        *both[i] = (small_picture){ jpeg, v[3 * i], v[3 * i + 1], v[3 * i + 2] };
+    }
+    free(bytes);
+    return ok;
+}
+
+static void remember(const char *cache, const char *key, const small_picture *whole, const small_picture *detail) {
+    const uint64_t v[NUMBERS] = { whole->n, whole->nx, whole->ny, detail->n, detail->nx, detail->ny };
+    textbuf body = { 0 };
+    text_add_n(&body, (const char *)v, sizeof v);
+    if (whole->n) text_add_n(&body, (const char *)whole->jpeg, whole->n);
+    if (detail->n) text_add_n(&body, (const char *)detail->jpeg, detail->n);
+    if (!body.failed) (void)memo_put(cache, key, remembered, &body, NULL); /* the page goes without */
+    text_free(&body);
+}
+
+status thumbnail_recall(const char *cache, const char *mark, const char *path, size_t width, size_t detail_nx, size_t detail_ny,
+                        small_picture *whole, small_picture *detail, error *e) {
+    char key[65], text[160];
+    if (!cache || !mark || !mark[0]) return thumbnail_make(path, width, detail_nx, detail_ny, whole, detail, e);
+    int n = snprintf(text, sizeof text, "%s|%zu|%zu|%zu|%d", mark, width, detail_nx, detail_ny, (int)QUALITY);
+    sha256_hex(text, n > 0 ? (size_t)n : 0, key);
+    if (recall(cache, key, whole, detail)) return ST_OK;
+    small_picture_free(whole);
+    small_picture_free(detail);
+    status st = thumbnail_make(path, width, detail_nx, detail_ny, whole, detail, e);
+    if (!st) remember(cache, key, whole, detail);
     return st;
 }
 

@@ -24,6 +24,9 @@ typedef struct {
  *   err  ST_IO not readable; ST_BAD_INPUT no PNG; ST_NO_MEMORY */
 status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t detail_ny, small_picture *whole,
                       small_picture *detail, error *e);
+/* The same for the overlay whose bytes have this mark, remembered in the folder `cache`; either NULL: made anew. */
+status thumbnail_recall(const char *cache, const char *mark, const char *path, size_t width, size_t detail_nx, size_t detail_ny,
+                        small_picture *whole, small_picture *detail, error *e);
 void small_picture_free(small_picture *s);
 
 #endif

@@ -29,7 +29,7 @@ int main(void) {
     put(root, "photo.jpg", "j");
     put(root, "notes.md", "n");
     put(root, "samples.csv", "file,sample,lot,height_nm,height_nm_u,recipe\nL7/c.png,S9,K2,310,12,slow\nb_02.png,B,,,,\nghost.png,G,,,,\n");
-    CHECK(folder_open(root, NULL, &f, &e) == ST_OK);
+    CHECK(folder_open(root, NULL, NULL, NULL, &f, &e) == ST_OK);
     CHECK(f.n == 6 && f.n_other == 2); /* notes.md and the sheet itself are no pictures */
     if (f.n != 6) return check_done();
     CHECK(!strcmp(f.relative[0], "L7/c.png") && !strcmp(f.relative[1], "b_02.png")); /* sheet order first */
@@ -42,11 +42,12 @@ int main(void) {
     sample_group *groups = NULL;
     size_t n = 0;
     CHECK(protocol_defaults(&p, &e) == ST_OK);
+    memcpy(all[0].file_time, "2026-03-01T08:00:00Z", 21);
     CHECK(folder_samples(&f, &p, all, &groups, &n, &e) == ST_OK);
     CHECK(n == 5 && !strcmp(groups[0].name, "S9") && !strcmp(groups[0].lot, "K2"));
     CHECK_NEAR(groups[0].height_nm.value, 310.0, 0.0);
     CHECK_NEAR(groups[0].height_nm.u, 12.0, 0.0);
-    CHECK(groups[0].time_from_file && strlen(groups[0].etched_at) > 10);
+    CHECK(groups[0].time_from_file && !strcmp(groups[0].etched_at, "2026-03-01T08:00:00Z"));
     CHECK(!strcmp(groups[1].name, "B") && !strcmp(all[2].row.sample, "a") && !strcmp(all[4].row.sample, "b"));
     CHECK(groups[2].n_members == 2); /* a.png and a.tif are one sample */
     for (size_t i = 0; i < n; i++) sample_group_free(&groups[i]);
@@ -56,8 +57,8 @@ int main(void) {
     protocol_free(&p);
 
     put(root, "samples.csv", "file,sample,height_nm\na.png,S,300\nb_01.png,S,301\n");
-    CHECK_FAILS(folder_open(root, NULL, &f, &e), ST_BAD_INPUT, e, "300");
-    CHECK_FAILS(folder_open("/nowhere/at/all", NULL, &f, &e), ST_IO, e, "/nowhere/at/all");
+    CHECK_FAILS(folder_open(root, NULL, NULL, NULL, &f, &e), ST_BAD_INPUT, e, "300");
+    CHECK_FAILS(folder_open("/nowhere/at/all", NULL, NULL, NULL, &f, &e), ST_IO, e, "/nowhere/at/all");
     static const char *const names[] = { "b_02.png", "b_01.png", "a.png", "a.tif", "L7/c.png", "photo.jpg", "notes.md", "samples.csv" };
     for (size_t i = 0; i < sizeof names / sizeof names[0]; i++) {
         char *path = path_join(root, names[i]);

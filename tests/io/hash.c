@@ -31,6 +31,16 @@ int main(void) {
         sha256_hex(million, n + 1, other);
         CHECK(strlen(hex) == 64 && strcmp(hex, other) != 0);
     }
+    char mark[17], changed[17];
+    quick_mark(million, 1000, mark);
+    for (size_t i = 0; i < 1000; i++) { /* one bit anywhere, one byte less */
+        million[i] ^= 4;
+        quick_mark(million, 1000, changed);
+        CHECK(strlen(mark) == 16 && strcmp(mark, changed) != 0);
+        million[i] ^= 4;
+    }
+    quick_mark(million, 999, changed);
+    CHECK(strcmp(mark, changed) != 0);
     free(million);
     return check_done();
 }
