@@ -14,6 +14,7 @@
 #include "io/bar_priv.h"
 #include "io/file.h"
 #include "io/levels_priv.h"
+#include "io/marks_priv.h"
 #include "io/picture_priv.h"
 #include "io/pixelsize_priv.h"
 #include "io/resample_priv.h"
@@ -28,6 +29,7 @@ load_options load_defaults(void) {
                            .px_u_rel = 0.01,
                            .bar_nm = MISSING,
                            .crop_strip = 1,
+                           .find_marks = 1,
                            .correct_tilt = 1,
                            .max_pixels = LIMIT_PIXELS,
                            .max_bytes = LIMIT_FILE_BYTES };
@@ -103,13 +105,36 @@ static size_t strip_rows(picture *p) {
 }
 
 static void count_clipped(micrograph *m) {
-    size_t low = 0, high = 0, n = m->nx * m->ny;
-    for (size_t i = 0; i < n; i++) {
+    size_t low = 0, high = 0, n = 0;
+    for (size_t i = 0; i < m->nx * m->ny; i++) {
+        if (m->masked && m->masked[i]) continue;
+        n++;
         low += !(m->px[i] > 0.0f);
         high += !(m->px[i] < 1.0f);
     }
     m->clipped_low = (double)low / (double)n;
     m->clipped_high = (double)high / (double)n;
+}
+
+static status find_marks(micrograph *m, error *e) {
+    status st = marks_find(m->px, m->nx, m->ny, (m->flags & FLAG(LOSSY)) != 0, &m->masked, &m->n_masked, e);
+    if (st != ST_OK || !m->masked) return st;
+    char share[NUMBER_TEXT];
+    m->flags |= FLAG(MARKS);
+    note_add(m->note, "Marks drawn over the specimen were masked: %s %% of the field.",
+             number_percent((double)m->n_masked / (double)(m->nx * m->ny), 2, share));
+    return st;
+}
+
+/* Rows of square pixels; the mask goes with them. */
+static status make_square(micrograph *m, size_t max_pixels, error *e) {
+    size_t before = m->ny;
+    if (fabs(m->y_stretch - 1.0) < worth_correcting) {
+        m->y_stretch = 1.0;
+        return ST_OK;
+    }
+    status st = resample_rows(&m->px, m->nx, &m->ny, m->y_stretch, max_pixels, e);
+    return st == ST_OK && m->masked ? resample_mask(&m->masked, m->nx, before, m->ny, e) : st;
 }
 
 /* A 16-bit file may hold a detector of fewer bits; a luminance has no levels of its own. */
@@ -221,16 +246,15 @@ status load_bytes(const uint8_t *bytes, size_t n, const char *path, const load_o
     r.px = p.px;
     p.px = NULL;
     keep_facts(&p, &r);
+    if (o->find_marks) st = find_marks(&r, e);
+    if (st != ST_OK) goto done;
     count_clipped(&r);
     sha256_hex(bytes, n, r.hash);
     scales_add(&p.scales, SCALE_OPTION, "option", o->px_nm_option, o->px_nm_option);
     scales_add(&p.scales, SCALE_SHEET, "sheet", o->px_nm_sheet, o->px_nm_sheet);
     pixelsize_choose(&p.scales, o->px_u_rel, &r);
     judge_tilt(o, &r);
-    if (fabs(r.y_stretch - 1.0) >= worth_correcting)
-        st = resample_rows(&r.px, r.nx, &r.ny, r.y_stretch, o->max_pixels, e);
-    else
-        r.y_stretch = 1.0;
+    st = make_square(&r, o->max_pixels, e);
     if (st == ST_OK && r.ny < LIMIT_MIN_SIDE)
         st = fail(e, ST_BAD_INPUT,
                   "the picture has only %zu x %zu square pixels; at least %zu a side are needed", r.nx, r.ny,

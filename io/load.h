@@ -21,6 +21,7 @@ typedef struct {
     double px_u_rel;     /* relative standard uncertainty of a stated pixel size when the source gives none */
     double bar_nm;       /* what the burnt-in scale bar stands for, nm; NAN: the user does not say */
     int crop_strip;      /* find and crop the info strip */
+    int find_marks;      /* find what is drawn over the specimen */
     int correct_tilt;    /* stretch the rows of a tilted view the instrument has not corrected */
     const scale_standard *standard; /* replaces the instrument's own pixel size where it applies; NULL: none; borrowed */
     size_t page;         /* of a file with several pages, from 1; 0: the largest that is no thumbnail */
@@ -28,13 +29,13 @@ typedef struct {
     size_t max_bytes;    /* refuse larger files */
 } load_options;
 
-load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop on, the limits of base/limits.h */
+load_options load_defaults(void); /* no stated size, px_u_rel 0.01, crop and marks on, the limits of base/limits.h */
 
 /* Reads, decodes, finds pixel size (sidecar beside `path` included) and strip. The pixel size is that of the most
  * specific source: option, sheet, sidecar, instrument tags, description, sCAL, and TIFF resolution or PNG pHYs only below
  * 1 um. Of pixels that are not square the rows are resampled to the width and PX_UNEQUAL says so. A tilted view
  * (up to 60 degrees, by the file's own word, not corrected by the instrument) gets its rows stretched by 1/cos(tilt) and the
- * flag TILT_CORRECTED; what cannot be corrected gets TILT_KNOWN. A 16-bit file of a detector of fewer bits counts by its levels.
+ * flag TILT_CORRECTED; what cannot be corrected gets TILT_KNOWN. Scale bars, letters and the like inside the field are masked (MARKS). A 16-bit file of a detector of fewer bits counts by its levels.
  *   out  m   as described in micrograph.h; untouched on failure
  *   own  caller frees m with micrograph_free
  *   err  ST_IO cannot be read; ST_BAD_INPUT empty, truncated, not an image, a variant that is not read (says which);

@@ -9,6 +9,7 @@
 void micrograph_free(micrograph *m) {
     free(m->px);
     free(m->strip);
+    free(m->masked);
     *m = (micrograph){ 0 };
 }
 

@@ -33,16 +33,18 @@ typedef struct {
     size_t strip_rows;     /* rows of info strip cropped, at the bottom and at the top */
     size_t strip_top;      /* those of them at the top */
     float *strip;          /* [strip_rows][nx] the cropped rows, from the top of the file down; owned; NULL: none */
+    unsigned char *masked; /* [ny][nx] 1: something drawn over the specimen, no part of it; NULL: nothing; owned */
+    size_t n_masked;       /* pixels of it, as found in the file's own rows */
     double y_stretch;      /* rows per row of the file: pixels that are not square, tilted views; else 1.
                               ny = round((file_ny - strip_rows) y_stretch) */
     int bit_depth;         /* of one grey level: 1 to 16, 24, 32, 64; 12 where a 12-bit detector fills 16-bit samples */
-    double clipped_low, clipped_high; /* share of the plane's pixels at the lowest / highest level the file can hold */
+    double clipped_low, clipped_high; /* share of the plane's pixels, marks left out, at the lowest / highest level the file can hold */
     double px_nm;          /* pixel size, nm; NAN: unknown */
     double px_u_rel;       /* relative standard uncertainty of px_nm; NAN with it */
     char px_source[24];    /* option sheet standard bar sidecar "tag N" ome-xml description sCAL resolution pHYs none */
     char acquired_at[32];  /* ISO 8601 when the file says so, else "" */
     char hash[65];         /* SHA-256 of the file's bytes, lower-case hex */
-    flags flags;           /* PX_DISAGREE, PX_UNEQUAL, COLOUR ... */
+    flags flags;           /* PX_DISAGREE, PX_UNEQUAL, COLOUR, MARKS ... */
     char note[480];        /* sentences behind the flags, "" if none */
     facts facts;
     px_statement statements[MAX_STATEMENTS]; /* the most specific first */

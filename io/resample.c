@@ -54,3 +54,18 @@ status resample_rows(float **px, size_t nx, size_t *ny, double factor, size_t ma
     *ny = rows;
     return ST_OK;
 }
+
+status resample_mask(unsigned char **mask, size_t nx, size_t before, size_t rows, error *e) {
+    double factor = (double)rows / (double)before, reach = factor < 1.0 ? 1.5 / factor : 1.5;
+    unsigned char *to = mem_array(rows * nx, 1);
+    if (!to) return NO_MEMORY(e, "the stretched mask");
+    for (size_t y = 0; y < rows; y++) {
+        double at = ((double)y + 0.5) / factor - 0.5;
+        double from = fmax(ceil(at - reach), 0.0), end = fmin(floor(at + reach), (double)before - 1.0);
+        for (size_t k = (size_t)from; k <= (size_t)end; k++)
+            for (size_t x = 0; x < nx; x++) to[y * nx + x] |= (*mask)[k * nx + x];
+    }
+    free(*mask);
+    *mask = to;
+    return ST_OK;
+}

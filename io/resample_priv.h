@@ -12,4 +12,8 @@
  *   src  Keys, IEEE Trans. ASSP 29 (1981) 1153 */
 status resample_rows(float **px, size_t nx, size_t *ny, double factor, size_t max_pixels, error *e);
 
+/* The same for a mask of `before` rows that shall have `rows`: a row is masked where any it is made of was.
+ * err ST_NO_MEMORY; the mask is then untouched */
+status resample_mask(unsigned char **mask, size_t nx, size_t before, size_t rows, error *e);
+
 #endif

@@ -17,6 +17,7 @@
 #include "metrics/direction.h"
 #include "metrics/filter.h"
 #include "metrics/fitness.h"
+#include "metrics/masked.h"
 #include "metrics/neighbours.h"
 #include "metrics/relief.h"
 #include "metrics/scale.h"
@@ -33,6 +34,7 @@ typedef struct {
     const measure_options *o;
     float *f;     /* flattened plane */
     float *work;  /* as large */
+    hole holes;   /* what is no specimen */
     double noise; /* sd, grey */
     acf2d plain;
     first_scale first;
@@ -76,10 +78,20 @@ static int has_contrast(const job *j) {
     return sqrt(ss / (double)n) > 0.5 * step;
 }
 
+/* Autocorrelation of f where it is specimen; with a mask `work` is used, and may be f itself. */
+static status correlate(job *j, const float *f, size_t lags, acf2d *out, error *e) {
+    size_t nx = j->p->nx, ny = j->p->ny;
+    if (!j->p->mask) return acf2d_make(f, nx, ny, lags, out, e);
+    if (f != j->work) memcpy(j->work, f, nx * ny * sizeof *f);
+    masked_level(j->p->mask, nx * ny, j->work);
+    status st = acf2d_make(j->work, nx, ny, lags, out, e);
+    return st == ST_OK ? masked_weigh(j->p->mask, out, e) : st;
+}
+
 static status plain_stage(job *j, error *e) {
     size_t nx = j->p->nx, ny = j->p->ny;
     curve made = { 0 };
-    status st = acf2d_make(j->f, nx, ny, (nx < ny ? nx : ny) / 2, &j->plain, e);
+    status st = correlate(j, j->f, (nx < ny ? nx : ny) / 2, &j->plain, e);
     if (st == ST_OK) st = acf_radial(&j->plain, &made, e);
     if (st != ST_OK) return st;
     curve *c = curve_take(&j->t, &made, "acf", "px", "1");
@@ -114,7 +126,8 @@ static status relief_stage(job *j, double d, double *score, error *e) {
 
 static status detect_again(job *j, error *e) {
     detection_free(&j->det);
-    return detect(j->f, j->p->nx, j->p->ny, j->first.scale_px, sign_of(j), j->noise, &j->det, e);
+    status st = detect(j->f, j->p->nx, j->p->ny, j->first.scale_px, sign_of(j), j->noise, &j->det, e);
+    return st == ST_OK ? hole_drop(&j->holes, &j->det, e) : st;
 }
 
 /* Relief at the first scale, features, and relief again at their scale. When that changes its mind, features
@@ -144,6 +157,7 @@ static status cell_stage(job *j, error *e) {
     j->t.cells = mem_array(nx * ny, sizeof *j->t.cells);
     if (!j->t.cells) return NO_MEMORY(e, "the cells");
     status st = watershed(j->f, nx, ny, sign_of(j), &j->det, j->t.cells, e);
+    if (st == ST_OK) hole_touch(&j->holes, j->t.cells, j->det.features);
     j->t.features = j->det.features;
     j->t.n_found = j->det.n;
     j->det.features = NULL;
@@ -160,7 +174,7 @@ static status ring_stage(job *j, error *e) {
     error before = { ST_OK, "" };
     if (e) before = *e;
     status st = filter_curvature(j->f, nx, ny, fmax(0.8, ring_scale * j->d), sign_of(j), j->work, e);
-    if (st == ST_OK) st = acf2d_make(j->work, nx, ny, lags < half ? lags : half, &k, e);
+    if (st == ST_OK) st = correlate(j, j->work, lags < half ? lags : half, &k, e);
     if (st == ST_OK) st = acf_radial(&k, &made, e);
     if (st == ST_OK) {
         curve *c = curve_take(&j->t, &made, "acf_curvature", "px", "1");
@@ -238,7 +252,7 @@ static status scaled_stages(job *j, error *e) {
         j->d = j->det.scale_px;
         st = cell_stage(j, e);
     }
-    if (st == ST_OK) st = statistics_fill(&j->t, j->p->nx, j->p->ny, &j->det, e);
+    if (st == ST_OK) st = statistics_fill(&j->t, j->p->nx, j->p->ny, &j->det, &j->holes, e);
     if (st == ST_OK && j->t.spacing_hex.value > 0.0) {
         j->d = j->t.spacing_hex.value;
         st = ring_stage(j, e);
@@ -307,13 +321,28 @@ static status run(job *j, error *e) {
         st = scaled_stages(j, e);
     else if (st == ST_OK)
         j->t.reasons |= FLAG(NO_RING);
-    if (st == ST_OK) st = bright_share(j->f, p->nx, p->ny, j->o->bright_level, j->d, &j->t.bright_share, e);
+    if (st == ST_OK) st = bright_share(j->f, p->mask, p->nx, p->ny, j->o->bright_level, j->d, &j->t.bright_share, e);
     curve psd = { 0 };
     if (st == ST_OK) st = fitness_look(j->f, p, j->d > 0.0 ? j->d : 0.0, &s, &psd, e); /* 0: no scale */
     if (st == ST_OK) {
         curve_take(&j->t, &psd, "psd", "1/px", "px2");
         judge(j, &s);
     }
+    return st;
+}
+
+/* The same plane with smooth ground under its marks. */
+static status run_filled(job *j, const plane *p, error *e) {
+    plane filled = *p;
+    float *px = mem_array(p->nx * p->ny, sizeof *px);
+    status st = px ? masked_fill(p, px, e) : NO_MEMORY(e, "the masked pixels");
+    if (st == ST_OK) st = hole_make(p, &j->holes, e);
+    filled.px = px;
+    j->p = &filled;
+    if (st == ST_OK) st = run(j, e);
+    j->p = p;
+    hole_free(&j->holes);
+    free(px);
     return st;
 }
 
@@ -324,7 +353,7 @@ status measure_plane(const plane *p, const measure_options *o, texture *out, err
                     "carry texture statistics",
                     p->nx, p->ny, LIMIT_MIN_SIDE, LIMIT_MIN_SIDE);
     job j = { .p = p, .o = o, .d = MISSING, .t = texture_empty() };
-    status st = run(&j, e);
+    status st = p->mask ? run_filled(&j, p, e) : run(&j, e);
     free(j.f);
     free(j.work);
     acf2d_free(&j.plain);

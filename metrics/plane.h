@@ -10,6 +10,7 @@ typedef struct {
     size_t nx, ny;
     int bit_depth;   /* of the file: sets the quantisation step */
     double clipped_low, clipped_high; /* shares at the file's own ends */
+    const unsigned char *mask; /* [ny][nx] 1: no specimen (a mark drawn over it); NULL: all is; borrowed */
 } plane;
 
 typedef enum { RELIEF_AUTO, RELIEF_HILLOCK, RELIEF_PORE } relief;

@@ -22,6 +22,7 @@ typedef struct {
     size_t n;
     window field;
     double unit; /* spacing, px */
+    const hole *holes;
 } columns;
 
 static status columns_make(const texture *t, size_t nx, size_t ny, double unit, columns *c, error *e) {
@@ -31,7 +32,7 @@ static status columns_make(const texture *t, size_t nx, size_t ny, double unit, 
     *c = (columns){ v,         v + n,     v + 2 * n,
                     v + 3 * n, v + 4 * n, v + 5 * n,
                     v + 6 * n, n,         { -0.5, -0.5, (double)nx - 0.5, (double)ny - 0.5 },
-                    unit };
+                    unit, NULL };
     for (size_t i = 0; i < n; i++) {
         const feature *f = &t->features[i];
         c->x[i] = f->x;
@@ -43,6 +44,19 @@ static status columns_make(const texture *t, size_t nx, size_t ny, double unit, 
     return ST_OK;
 }
 
+/* The same kept away from holes, too: what is cut by them may be found or not. Sets in_guard. */
+static double holed_density(texture *t, const hole *h, window w, double guard) {
+    double area = (w.x1 - w.x0) * (w.y1 - w.y0) - hole_area(h, w.x0, w.y0, w.x1, w.y1, guard);
+    size_t n = 0;
+    for (size_t i = 0; i < t->n_found; i++) {
+        feature *f = &t->features[i];
+        f->in_guard = f->in_guard && hole_distance(h, f->x, f->y) >= guard;
+        n += f->in_guard != 0;
+    }
+    t->n_features = n;
+    return area > 0.0 ? (double)n / area : MISSING;
+}
+
 /* Density inside the guard of half a spacing, and the spacing of a hexagonal lattice as dense. */
 static status density_fill(texture *t, size_t nx, size_t ny, columns *c, error *e) {
     double guard = 0.5 * c->unit, sd = MISSING;
@@ -52,9 +66,11 @@ static status density_fill(texture *t, size_t nx, size_t ny, columns *c, error *
     for (size_t i = 0; i < c->n; i++) {
         const feature *f = &t->features[i];
         int in = f->x >= w.x0 && f->x < w.x1 && f->y >= w.y0 && f->y < w.y1;
-        c->mark[i] = in ? 1.0 : 0.0;
         t->features[i].in_guard = in;
     }
+    if (c->holes->distance) density = holed_density(t, c->holes, w, guard);
+    if (!(density > 0.0)) return ST_OK;
+    for (size_t i = 0; i < c->n; i++) c->mark[i] = t->features[i].in_guard ? 1.0 : 0.0;
     size_t inside = 0; /* only these may enter the tiles */
     double *x = mem_array(3 * c->n, sizeof *x), *y = x ? x + c->n : NULL, *one = x ? y + c->n : NULL;
     if (!x) return NO_MEMORY(e, "the density");
@@ -74,18 +90,46 @@ static status density_fill(texture *t, size_t nx, size_t ny, columns *c, error *
     return st;
 }
 
+/* A nearer neighbour may lie in a hole. */
+static int hides_neighbour(const columns *c, size_t i) { return c->nn[i] > hole_distance(c->holes, c->x[i], c->y[i]); }
+
+static status nn_mean_fill(texture *t, const columns *c, error *e) {
+    if (!c->holes->distance) {
+        t->nn_mean = nn_mean_hanisch(c->x, c->y, c->nn, c->n, c->field);
+        return ST_OK;
+    }
+    double *v = mem_array(3 * c->n, sizeof *v);
+    size_t n = 0;
+    if (!v) return NO_MEMORY(e, "the neighbours");
+    double *x = v, *y = v + c->n, *nn = y + c->n;
+    for (size_t i = 0; i < c->n; i++)
+        if (!hides_neighbour(c, i)) x[n] = c->x[i], y[n] = c->y[i], nn[n++] = c->nn[i];
+    t->nn_mean = nn_mean_hanisch(x, y, nn, n, c->field);
+    free(v);
+    return ST_OK;
+}
+
+/* The field without its holes, as a rectangle as wide: what counts is its area. */
+static window solid_field(const columns *c) {
+    window w = c->field;
+    double lost = hole_area(c->holes, w.x0, w.y0, w.x1, w.y1, 0.0);
+    w.y1 -= lost / (w.x1 - w.x0);
+    return w;
+}
+
 static status neighbour_fill(texture *t, columns *c, error *e) {
     status st = nearest_neighbours(c->x, c->y, c->n, c->field, c->nn, e);
     if (st != ST_OK) return st;
     for (size_t i = 0; i < c->n; i++) {
         t->features[i].nn_px = c->nn[i];
-        c->mark[i] = hanisch_weight(c->x[i], c->y[i], c->nn[i], c->field);
+        c->mark[i] = hides_neighbour(c, i) ? 0.0 : hanisch_weight(c->x[i], c->y[i], c->nn[i], c->field);
     }
-    t->nn_mean = nn_mean_hanisch(c->x, c->y, c->nn, c->n, c->field);
+    st = nn_mean_fill(t, c, e);
+    if (st != ST_OK) return st;
     sample_of_features s = { c->x, c->y, c->nn, c->mark, c->n, c->field, c->unit };
     st = u_of_mean(&s, t->nn_mean.value, &t->nn_mean.u_sampling, e);
     if (st != ST_OK) return st;
-    double r = clark_evans_donnelly(c->nn, c->n, c->field), mean = series_mean(c->nn, c->n), u = MISSING;
+    double r = clark_evans_donnelly(c->nn, c->n, solid_field(c)), mean = series_mean(c->nn, c->n), u = MISSING;
     /* R = 2 mean(nn) sqrt(n / A): its influence joins the distances and half of the count. */
     for (size_t i = 0; i < c->n; i++) c->mark[i] = r / (double)c->n * (c->nn[i] / mean - 0.5);
     st = field_sum_sd(c->x, c->y, c->mark, c->n, c->field, c->unit, &u, e);
@@ -130,9 +174,10 @@ static status size_fill(texture *t, columns *c, error *e) {
     return quantile_fill(&s, 0.5, whole, &t->top_d50, e);
 }
 
-status statistics_fill(texture *t, size_t nx, size_t ny, const detection *d, error *e) {
+status statistics_fill(texture *t, size_t nx, size_t ny, const detection *d, const hole *h, error *e) {
     columns c = { 0 };
     status st = columns_make(t, nx, ny, d->scale_px, &c, e);
+    c.holes = h;
     if (st == ST_OK) st = density_fill(t, nx, ny, &c, e);
     if (st == ST_OK) st = neighbour_fill(t, &c, e);
     if (st == ST_OK) st = size_fill(t, &c, e);
@@ -180,7 +225,7 @@ static double grey_quantile(const size_t *count, size_t bins, size_t n, double p
     return low + step * (double)bins;
 }
 
-static status bright_level(const float *f, size_t n, double share, double *level, error *e) {
+static status bright_level(const float *f, const unsigned char *mask, size_t n, double share, double *level, error *e) {
     enum { BINS = 65536 };
     size_t *count = mem_array(BINS, sizeof *count);
     if (!count) return NO_MEMORY(e, "the grey levels");
@@ -190,21 +235,25 @@ static status bright_level(const float *f, size_t n, double share, double *level
         high = fmax(high, (double)f[i]);
     }
     double step = (high - low) / BINS;
+    size_t seen = 0;
     for (size_t i = 0; i < n && step > 0.0; i++) {
+        if (mask && mask[i]) continue; /* filled smoothly: within the range of the others */
+        seen++;
         double k = ((double)f[i] - low) / step;
         count[k < BINS - 1 ? (size_t)k : BINS - 1]++;
     }
-    double dark = grey_quantile(count, BINS, n, 0.01, low, step),
-           light = grey_quantile(count, BINS, n, 0.99, low, step);
+    double dark = grey_quantile(count, BINS, seen, 0.01, low, step),
+           light = grey_quantile(count, BINS, seen, 0.99, low, step);
     *level = dark + share * (light - dark);
     free(count);
     return ST_OK;
 }
 
-status bright_share(const float *f, size_t nx, size_t ny, double level, double unit_px, measured *out,
+status bright_share(const float *f, const unsigned char *mask, size_t nx, size_t ny, double level, double unit_px, measured *out,
                     error *e) {
     double limit = 0.0, narrow = (double)(nx < ny ? nx : ny);
-    status st = bright_level(f, nx * ny, level, &limit, e);
+    size_t seen = 0;
+    status st = bright_level(f, mask, nx * ny, level, &limit, e);
     if (st != ST_OK) return st;
     double unit = isfinite(unit_px) ? fmin(unit_px, narrow / 8.0) : narrow / 16.0;
     size_t side = unit > 4.0 ? (size_t)(0.5 * unit) : 2, bx = nx / side, by = ny / side, above = 0;
@@ -217,6 +266,8 @@ status bright_share(const float *f, size_t nx, size_t ny, double level, double u
     }
     for (size_t j = 0; j < ny; j++)
         for (size_t i = 0; i < nx; i++) {
+            if (mask && mask[j * nx + i]) continue;
+            seen++;
             if ((double)f[j * nx + i] <= limit) continue;
             above++;
             if (i / side < bx && j / side < by) mark[j / side * bx + i / side] += 1.0;
@@ -224,8 +275,8 @@ status bright_share(const float *f, size_t nx, size_t ny, double level, double u
     window w = { 0.0, 0.0, (double)(bx * side), (double)(by * side) };
     st = field_sum_sd(x, y, mark, bx * by, w, (double)(2 * side), &sd, e);
     free(v);
-    double n = (double)(nx * ny), share = (double)above / n;
+    double n = (double)(seen ? seen : 1), share = (double)above / n;
     if (!isfinite(sd)) sd = n * sqrt(share * (1.0 - share) * unit * unit / n);
-    if (st == ST_OK) *out = (measured){ share, sd / n, 0.0, nx * ny };
+    if (st == ST_OK) *out = (measured){ share, sd / n, 0.0, seen };
     return st;
 }

@@ -44,6 +44,7 @@
     X(LOSSY,           lossy,           "a lossy file: brightness statistics are altered")                              \
     X(TILT_CORRECTED,  tilt_corrected,  "a tilted view: y was stretched by 1/cos(tilt) before measuring")               \
     X(TILT_KNOWN,      tilt_known,      "a tilted view by the file's own word, not corrected")                          \
+    X(MARKS,           marks_masked,    "a scale bar, letters or other marks drawn over the specimen were masked out of every measurement") \
     X(NAME_UNMATCHED,  name_unmatched,  "the name does not match the protocol's name_pattern: sample from its folder or its own name") \
     X(FILLED,          pixels_filled,   "pixels without a value (NaN) were filled from their neighbours")
 /* clang-format on */

@@ -98,6 +98,7 @@ static void as_json(const char *file, const micrograph *m, const char *why, text
         ", \"width_px\": %zu, \"height_px\": %zu, \"strip_px\": %zu, \"strip_top_px\": %zu, \"pages\": %zu",
         m->file_nx, m->file_ny, m->strip_rows, m->strip_top, m->pages);
     text_addf(t, ", \"bit_depth\": %d", m->bit_depth);
+    text_addf(t, ", \"masked_px\": %zu", m->n_masked);
     member_number(t, "clipped_low", m->clipped_low, 4);
     member_number(t, "clipped_high", m->clipped_high, 4);
     member_text(t, "compression", m->compression[0] ? m->compression : NULL);
@@ -141,6 +142,7 @@ static void as_text(const char *file, const micrograph *m, const char *why, text
     text_addf(t, "  %-18s %zu rows", "info strip", m->strip_rows);
     if (m->strip_top) text_addf(t, ", %zu of them at the top", m->strip_top);
     text_add(t, "\n");
+    if (m->n_masked) text_addf(t, "  %-18s %zu pixels masked\n", "marks", m->n_masked);
     text_addf(t, "  %-18s %s %% at black, %s %% at white\n", "clipped", number_percent(m->clipped_low, 3, a),
               number_percent(m->clipped_high, 3, b));
     line(t, "acquired", m->acquired_at);

@@ -162,11 +162,12 @@ static status measure_scale(const scale_use *u, textbuf *t, error *e) {
     scale_record r;
     load_options o = load_defaults();
     textbuf file = { 0 };
+    o.find_marks = 0; /* a grating is made of straight edges */
     if (u->px_nm > 0.0) o.px_nm_option = u->px_nm;
     status st = input_wanted(u->file, e);
     if (st == ST_OK) st = load_file(u->file, &o, &m, e);
     if (st == ST_OK) {
-        plane p = { m.px, m.nx, m.ny, m.bit_depth, m.clipped_low, m.clipped_high };
+        plane p = { m.px, m.nx, m.ny, m.bit_depth, m.clipped_low, m.clipped_high, NULL };
         st = grating_measure(&p, u->kind, &g, e);
     }
     if (st != ST_OK) {

@@ -376,7 +376,7 @@ static status measure(const char *bytes, size_t n, const char *path, const char 
         t.clipped_share = m.clipped_low + m.clipped_high;
         t.reasons = FLAG(PX_WINDOW);
     } else if (st == ST_OK) {
-        plane p = { m.px, m.nx, m.ny, m.bit_depth, m.clipped_low, m.clipped_high };
+        plane p = { m.px, m.nx, m.ny, m.bit_depth, m.clipped_low, m.clipped_high, m.masked };
         st = measure_plane(&p, &o->protocol->measure, &t, &why);
     }
     if (st != ST_OK) {

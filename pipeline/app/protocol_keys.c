@@ -69,7 +69,7 @@ const protocol_key protocol_keys[] = {
     WORD("", "relief", measure.relief, relief_word, 1, "what a feature is: a bright hillock, a dark pore, or auto: found in each picture"),
     WORD("", "spacing", spacing, spacing_word, 0, "which spacing is the sample's spacing_nm: first ring of the autocorrelation, or hexagonal spacing of the density"),
     { "", "px_u_rel", KEY_NUMBER, AT(px_u_rel), "", 0.0, 0.5, 0, NULL, 1, "relative standard uncertainty of every pixel size; null: what its source says, else 0.01" },
-    { "", "measure_between_px_nm", KEY_BAND, AT(window_lo_nm), "nm", 1e-6, 1e9, 0, NULL, 0, "pixel sizes that are measured; a micrograph outside, such as an overview, is kept out of its sample and listed; null: all" },
+    { "", "measure_between_px_nm", KEY_BAND, AT(window_lo_nm), "nm", 1e-6, 1e9, 0, NULL, 1, "pixel sizes that are measured; a micrograph outside, such as an overview, is kept out of its sample and listed; null: all" },
     { "", "page", KEY_NUMBER, AT(page), "", 1, 65535, 0, NULL, 1, "which page of a file with several is measured, from 1; null: the largest that is no thumbnail" },
     { "", "keep_tilt", KEY_SWITCH, AT(keep_tilt), "", 0, 1, 0, NULL, 1, "true: tilted views are flagged, not stretched (a holder that tilts back by itself)" },
     TEXT("", "name_pattern", pattern, "sample from file names without a sheet row, such as {lot}_W{wafer}_{position}_{magnification}_{image}, or re: and a regular expression with groups (?<wafer>...); null: sub-folder, else name without its number"),

@@ -157,7 +157,7 @@ static int prepare(bench *b, rendering *r) {
     for (size_t i = 0; i < nx * ny; i++) b->padded[i] = (float)(i % 97) / 97.0f;
     for (size_t i = 0; i < (size_t)NX * NY; i++) px[i] = (float)((const uint8_t *)r->samples)[i] / 255.0f;
     for (size_t i = 0; i < 901; i++) b->nm[i] = 300.0 + (double)i;
-    b->plane = (plane){ px, NX, NY, 8, 0.0, 0.0 };
+    b->plane = (plane){ px, NX, NY, 8, 0.0, 0.0, NULL };
     png_format f = { NX, NY, 1, 8, 10.0 };
     return png_encode(r->samples, &f, &b->png, &b->png_n, &e) == ST_OK;
 }

@@ -39,7 +39,7 @@ static void window_of(const rendering *r, int w, double d50, tally *t) {
     size_t x0 = (size_t)(w % COLUMNS) * WX, y0 = (size_t)(w / COLUMNS) * WY;
     for (size_t y = 0; y < WY; y++)
         for (size_t x = 0; x < WX; x++) px[y * WX + x] = (float)from[(y0 + y) * NX + x0 + x] / 255.0f;
-    plane p = { px, WX, WY, 8, 0.0, 0.0 };
+    plane p = { px, WX, WY, 8, 0.0, 0.0, NULL };
     measure_options o = measure_defaults();
     texture m = { 0 };
     error e = { 0 };

@@ -221,7 +221,7 @@ static void check_ring_in_picture(const point_set *p, int has_ring) {
     float *f = plane_new(SIDE, SIDE);
     for (size_t i = 0; i < p->n; i++)
         add_bump(f, SIDE, SIDE, p->x[i] / width * SIDE - 0.5, p->y[i] / width * SIDE - 0.5, 0.2 * unit, 0.4);
-    plane picture = { f, SIDE, SIDE, 8, 0.0, 0.0 };
+    plane picture = { f, SIDE, SIDE, 8, 0.0, 0.0, NULL };
     measure_options o = measure_defaults();
     texture t = { 0 };
     error e = { 0 };

@@ -19,7 +19,7 @@ static flags reasons_of(const render_options *o, double *hex) {
     float *px = mem_array(o->nx * o->ny, sizeof *px);
     if (px && r.samples) {
         for (size_t i = 0; i < o->nx * o->ny; i++) px[i] = (float)((const uint8_t *)r.samples)[i] / 255.0f;
-        plane p = { px, o->nx, o->ny, 8, 0.0, 0.0 };
+        plane p = { px, o->nx, o->ny, 8, 0.0, 0.0, NULL };
         CHECK(measure_plane(&p, &m, &t, &e) == ST_OK);
         reasons = t.reasons;
         *hex = t.spacing_hex.value / r.spacing_px;

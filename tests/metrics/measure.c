@@ -25,7 +25,7 @@ static float *render_plane(const render_options *o, rendering *r) {
 }
 
 static texture measured_of(const float *f, size_t nx, size_t ny, relief given) {
-    plane p = { f, nx, ny, 8, 0.0, 0.0 };
+    plane p = { f, nx, ny, 8, 0.0, 0.0, NULL };
     measure_options o = measure_defaults();
     texture t = { 0 };
     error e = { 0 };
@@ -215,8 +215,8 @@ static void check_degenerate(void) {
 
 static void check_errors(void) {
     float *f = small_texture();
-    plane small = { f, LIMIT_MIN_SIDE - 1, 200, 8, 0.0, 0.0 }, none = { NULL, IX, IY, 8, 0.0, 0.0 };
-    plane p = { f, 160, 120, 8, 0.0, 0.0 };
+    plane small = { f, LIMIT_MIN_SIDE - 1, 200, 8, 0.0, 0.0, NULL }, none = { NULL, IX, IY, 8, 0.0, 0.0, NULL };
+    plane p = { f, 160, 120, 8, 0.0, 0.0, NULL };
     measure_options o = measure_defaults();
     texture t = { 0 };
     error e = { 0 };
