@@ -15,6 +15,7 @@
 #include "io/png_write.h"
 #include "metrics/sizedist.h"
 #include "metrics/uncertainty.h"
+#include "report/layers.h"
 #include "report/overlay.h"
 #include "report/results.h"
 
@@ -145,7 +146,7 @@ static void profiles_text(const texture *t, double px_nm, textbuf *out, int *no_
 
 static const struct {
     const char *folder, *ending;
-} outputs[OUTPUTS] = { { "overlays", ".png" }, { "features", ".csv" }, { "profiles", ".csv" } };
+} outputs[OUTPUTS] = { { "overlays", ".png" }, { "layers", ".png" }, { "features", ".csv" }, { "profiles", ".csv" } };
 
 /* "overlays/sub/name.png"; caller frees. */
 static status output_name(int which, const char *stem, char **relative, error *e) {
@@ -189,6 +190,15 @@ static status write_overlay(const stage *s, const char *stem, const micrograph *
     if (st == ST_OK) st = write_output(s, OUTPUT_OVERLAY, stem, bytes, n, mark, e);
     free(bytes);
     overlay_free(&picture);
+    return st;
+}
+
+static status write_layers(const stage *s, const char *stem, const micrograph *m, const texture *t, char mark[17], error *e) {
+    uint8_t *bytes = NULL;
+    size_t n = 0;
+    status st = layers_encode(m, t, &bytes, &n, e);
+    if (st == ST_OK) st = write_output(s, OUTPUT_LAYERS, stem, bytes, n, mark, e);
+    free(bytes);
     return st;
 }
 
@@ -389,6 +399,7 @@ static status measure(const char *bytes, size_t n, const char *path, const char 
     if (st == ST_OK) st = fill_json(out, &m, &t, e);
     if (kept_out) out->row.n_features = -1;
     if (st == ST_OK && s) st = write_overlay(s, stem, &m, &t, out->outputs[OUTPUT_OVERLAY], e);
+    if (st == ST_OK && s) st = write_layers(s, stem, &m, &t, out->outputs[OUTPUT_LAYERS], e);
     if (st == ST_OK && s) st = write_table(s, OUTPUT_FEATURES, stem, &t, m.px_nm, features_text, out->outputs[OUTPUT_FEATURES], e);
     if (st == ST_OK && s) st = write_table(s, OUTPUT_PROFILES, stem, &t, m.px_nm, profiles_text, out->outputs[OUTPUT_PROFILES], e);
 done:

@@ -16,7 +16,7 @@ typedef struct {
     int fresh;            /* 1: what was remembered is not used */
 } examine_options;
 
-enum { OUTPUT_OVERLAY, OUTPUT_FEATURES, OUTPUT_PROFILES, OUTPUTS };
+enum { OUTPUT_OVERLAY, OUTPUT_LAYERS, OUTPUT_FEATURES, OUTPUT_PROFILES, OUTPUTS };
 
 /* A further member belongs into cache_examined (cache.c) too. */
 typedef struct {

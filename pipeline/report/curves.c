@@ -86,6 +86,26 @@ status sizes_read(const char *dir, const char *stem, xy_curve *out, error *e) {
     return st;
 }
 
+status centres_read(const char *dir, const char *stem, int counted, xy_curve *out, error *e) {
+    static const char *const wanted[] = { "x_px", "y_px", "in_guard" };
+    csv table = { 0 };
+    xy_curve c = { 0 };
+    long at[3] = { 0 };
+    status st = read_table(dir, "features", stem, &table, e);
+    if (!st) st = find_columns(&table, wanted, 3, stem, at, e);
+    if (!st) st = make_room(&c, table.n_rows, e);
+    for (size_t i = 0; !st && i < table.n_rows; i++)
+        if (!strcmp(csv_cell(&table, i, at[2]), counted ? "1" : "0") && number_parse(csv_cell(&table, i, at[0]), &c.x[c.n]) &&
+            number_parse(csv_cell(&table, i, at[1]), &c.y[c.n]))
+            c.n++;
+    csv_free(&table);
+    if (st)
+        xy_curve_free(&c);
+    else
+        *out = c;
+    return st;
+}
+
 void sizes_histogram(const xy_curve *sizes, double lo, double step, size_t n, double *share) {
     double all = 0.0;
     for (size_t k = 0; k < n; k++) share[k] = 0.0;

@@ -21,6 +21,10 @@ status curve_read(const char *dir, const char *stem, const char *name, xy_curve 
  * out. Err as curve_read. */
 status sizes_read(const char *dir, const char *stem, xy_curve *out, error *e);
 
+/* Centres of the features, px from the top left of the plane: those that count for the density (counted 1) or the others (0).
+ * Err as curve_read. */
+status centres_read(const char *dir, const char *stem, int counted, xy_curve *out, error *e);
+
 /* Share of the features (weighted by y) in each of n bins from lo, `step` wide; sums to 1 where all lie inside. */
 void sizes_histogram(const xy_curve *sizes, double lo, double step, size_t n, double *share);
 

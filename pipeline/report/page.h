@@ -20,6 +20,8 @@ void page_inputs(const results *r, textbuf *out);  /* methods with their sources
 /* Parts of those: what fails and the list of advice inside the verdict, control charts, reflectance against the angle, the charts inside the texture. */
 void page_cases(const results *r, textbuf *out);
 void page_advice(const results *r, textbuf *out);
+/* The picture of micrograph i in layers; 0 when the run left none, then nothing is added. */
+int page_layers_add(const results *r, size_t i, const char *out_dir, size_t width, textbuf *out);
 void page_control(const results *r, textbuf *out);
 void page_angles(const results *r, textbuf *out);
 void page_profiles(const results *r, const char *out_dir, textbuf *out);

@@ -326,10 +326,25 @@
     return charts;
   };
 
+  // ---- what is drawn on the micrographs ----
+  const layered = (section) => {
+    const bar = make('div', { className: 'layers', textContent: 'Show on the pictures: ' });
+    [['centres', 'centres'], ['cells', 'cells'], ['frame', 'features at the frame'], ['ring', 'ring of the spacing'], ['strip', 'greyed info strip']].forEach(([name, text]) => {
+      if (!section.querySelector('.l-' + name)) return;
+      const b = button(text, () => {
+        const shown = !section.classList.toggle('no-' + name);
+        b.setAttribute('aria-pressed', String(shown));
+      }, bar);
+      b.setAttribute('aria-pressed', 'true');
+    });
+    if (bar.children.length) section.querySelector('.cards').before(bar);
+  };
+
   // ---- the page ----
   if (typeof Chart === 'function') Chart.defaults.font.family = getComputedStyle(document.body).fontFamily;
   all('table.sort').forEach(sortable);
   all('table.filter').forEach(filterable);
+  all('#micrographs').forEach(layered);
   const charts = typeof Chart === 'function' ? startCharts() : new Map();
   all('table.csv').forEach((table) => {
     const figure = table.closest('figure'), name = figure && table.closest('.scroll').getAttribute('aria-label').replace(/^Data: /, '');

@@ -1,7 +1,7 @@
-/* Every micrograph of the run as a card: its overlay, what became of it and why. Overlays are read back from the output
- * folder, box-averaged to the width they are shown at and embedded as JPEG; a relative link leads to the overlay itself. The
- * width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one can mail; what is
- * left out is named with its path. */
+/* Every micrograph of the run as a card: its picture in layers (page_layers.c), what became of it and why; a relative link
+ * leads to the overlay at full size. Where there are too many for layers, the overlay itself is read back, box-averaged and
+ * embedded flat. The width shrinks with the number of pictures and a budget ends the embedding, so the page stays a file one
+ * can mail; what is left out is named with its path. */
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -14,8 +14,8 @@
 #include "report/thumbnail.h"
 
 enum { THUMB_WIDTH = 524, THUMB_LEAST = 260, FULL_SIZE_PICTURES = 16, DETAIL_NX = 200, DETAIL_NY = 150 };
-enum { MAX_CARDS = 500, MOST_DETAILS = 40 };
-static const size_t picture_budget = (size_t)5 << 19; /* bytes of embedded pictures */
+enum { MAX_CARDS = 500, MOST_DETAILS = 24, MOST_LAYERED = 160 };
+static const size_t picture_budget = (size_t)3100 << 10; /* bytes of the page for pictures */
 
 void page_flag_name(textbuf *out, int bit) {
     for (const char *c = flag_word(bit); *c; c++) text_add_n(out, *c == '_' ? " " : c, 1);
@@ -102,10 +102,15 @@ static void read_picture(const results *r, size_t i, const char *out_dir, size_t
         text_add(out, "<div class=\"blank\">Left out to keep the page small: ");
         html_text(out, relative);
         text_add(out, "</div>\n");
-    } else if (thumbnail_recall(r->picture_cache, r->overlay_marks ? r->overlay_marks[i] : NULL, path, width, r->n_images > MOST_DETAILS ? 0 : DETAIL_NX, DETAIL_NY, whole, detail, &e)) {
-        text_add(out, "<div class=\"blank\">The overlay could not be read: ");
-        html_text(out, e.text);
-        text_add(out, "</div>\n");
+    } else {
+        int layered = r->n_images <= MOST_LAYERED && page_layers_add(r, i, out_dir, width, out);
+        size_t cut = r->n_images > MOST_DETAILS ? 0 : DETAIL_NX;
+        if ((!layered || cut) && thumbnail_recall(r->picture_cache, r->overlay_marks ? r->overlay_marks[i] : NULL, path, layered ? 0 : width, cut, DETAIL_NY,
+                                                       whole, detail, &e)) {
+            text_add(out, "<div class=\"blank\">The overlay could not be read: ");
+            html_text(out, e.text);
+            text_add(out, "</div>\n");
+        }
     }
     free(path);
 }
@@ -142,8 +147,8 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
                            : "used");
     html_text(out, m->file);
     text_add(out, "</h3>\n");
+    size_t before = out->n;
     read_picture(r, i, out_dir, width, *spent, &whole, &detail, out);
-    *spent += whole.n + detail.n;
     if (whole.n) {
         text_add(out, "<a href=\"");
         html_href(out, r->overlay_paths[i]);
@@ -151,6 +156,7 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
         add_image(out, &whole, "Overlay of ", m->file, ": detected features and their cells; opens at full size");
         text_add(out, "</a>");
     }
+    *spent += out->n - before + detail.n;
     text_add(out, "<p class=\"reason\">");
     html_badge(out, word);
     if (m->reason && *m->reason) {
@@ -187,10 +193,10 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
              "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you "
              "trust the "
              "numbers: one marker per feature, none missing, none on nothing; borders in the valleys.</p>\n"
-             "<ul class=\"key\"><li>disc: counted</li><li>open diamond: in the guard frame, "
-             "not counted"
-             "</li><li>thin lines: cells, veiled where the picture's edge cuts them</li><li>white ring: the spacing</li><li>a picture opens its overlay at full size</li><li>dashes: guard "
-             "frame</li></ul>\n");
+             "<ul class=\"key layers-key\"><li><span class=\"sign disc\"></span>counted feature</li><li><span class=\"sign diamond\"></span>feature in "
+             "the guard frame at the edge, not counted</li><li><span class=\"sign border\"></span>cells, veiled where the picture's edge cuts them: "
+             "those do not count for the sizes</li><li><span class=\"sign ring\"></span>the measured spacing around one feature</li><li>a picture opens its "
+             "overlay at full size</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
     text_add(out, "<div class=\"cards\">\n");
     size_t room = MAX_CARDS, left_out = 0;

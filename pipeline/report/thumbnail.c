@@ -107,13 +107,13 @@ static void on_error(j_common_ptr c) { longjmp(((encoder *)(void *)c->err)->back
 static void on_message(j_common_ptr c) { (void)c; }
 
 /* Everything that may longjmp. Colour at full resolution: the marks are one pixel wide. */
-static void compress(struct jpeg_compress_struct *j, const uint8_t *rgb, size_t nx, size_t ny, unsigned char **bytes,
+static void compress(struct jpeg_compress_struct *j, const uint8_t *samples, size_t nx, size_t ny, int channels, unsigned char **bytes,
                      unsigned long *n) {
     jpeg_mem_dest(j, bytes, n);
     j->image_width = (JDIMENSION)nx;
     j->image_height = (JDIMENSION)ny;
-    j->input_components = 3;
-    j->in_color_space = JCS_RGB;
+    j->input_components = channels;
+    j->in_color_space = channels == 3 ? JCS_RGB : JCS_GRAYSCALE;
     jpeg_set_defaults(j);
     jpeg_set_quality(j, QUALITY, TRUE);
     j->comp_info[0].h_samp_factor = j->comp_info[0].v_samp_factor = 1;
@@ -121,13 +121,13 @@ static void compress(struct jpeg_compress_struct *j, const uint8_t *rgb, size_t 
     j->optimize_coding = TRUE;
     jpeg_start_compress(j, TRUE);
     for (size_t y = 0; y < ny; y++) {
-        uint8_t *line = (uint8_t *)(uintptr_t)(rgb + y * nx * 3); /* libjpeg only reads it */
+        uint8_t *line = (uint8_t *)(uintptr_t)(samples + y * nx * (size_t)channels); /* libjpeg only reads it */
         if (jpeg_write_scanlines(j, &line, 1) != 1) j->err->error_exit((j_common_ptr)j);
     }
     jpeg_finish_compress(j);
 }
 
-static status encode(const uint8_t *rgb, size_t nx, size_t ny, small_picture *out, error *e) {
+status jpeg_make(const uint8_t *samples, size_t nx, size_t ny, int channels, small_picture *out, error *e) {
     /* On the heap: their contents must be whole after a longjmp. */
     typedef struct {
         struct jpeg_compress_struct j;
@@ -145,7 +145,7 @@ static status encode(const uint8_t *rgb, size_t nx, size_t ny, small_picture *ou
         st = fail(e, ST_NO_MEMORY, "a small picture of the overlay could not be encoded");
     } else {
         jpeg_create_compress(&w->j);
-        compress(&w->j, rgb, nx, ny, &w->bytes, &w->n);
+        compress(&w->j, samples, nx, ny, channels, &w->bytes, &w->n);
     }
     jpeg_destroy_compress(&w->j);
     if (st) {
@@ -166,7 +166,7 @@ static status encode_middle(const uint8_t *rgb, size_t nx, size_t ny, size_t cut
     size_t x0 = (nx - cut_nx) / 2, y0 = (ny - cut_ny) / 2;
     for (size_t y = 0; y < cut_ny; y++)
         memcpy(cut + y * cut_nx * 3, rgb + ((y0 + y) * nx + x0) * 3, cut_nx * 3);
-    status st = encode(cut, cut_nx, cut_ny, out, e);
+    status st = jpeg_make(cut, cut_nx, cut_ny, 3, out, e);
     free(cut);
     return st;
 }
@@ -177,9 +177,9 @@ status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t d
     size_t nx = 0, ny = 0, small_ny = 0;
     status st = decode(path, &full, &nx, &ny, e);
     if (st) return st;
-    size_t small_nx = width && width < nx ? width : nx;
-    st = box_average(full, nx, ny, small_nx, &small, &small_ny, e);
-    if (!st) st = encode(small, small_nx, small_ny, whole, e);
+    size_t small_nx = width < nx ? width : nx;
+    if (width) st = box_average(full, nx, ny, small_nx, &small, &small_ny, e);
+    if (!st && width) st = jpeg_make(small, small_nx, small_ny, 3, whole, e);
     if (!st && detail_nx && detail_ny) st = encode_middle(full, nx, ny, detail_nx, detail_ny, detail, e);
     free(full);
     free(small);

@@ -18,8 +18,11 @@ typedef struct {
     size_t n, nx, ny;
 } small_picture; /* {0} = empty */
 
-/* Reads a PNG and makes two JPEG copies: the whole averaged to at most `width` columns, and the middle at full resolution,
- * at most detail_nx x detail_ny (0: none).
+/* A JPEG of grey (channels 1) or RGB (3) samples [ny][nx][channels]. err ST_NO_MEMORY */
+status jpeg_make(const uint8_t *samples, size_t nx, size_t ny, int channels, small_picture *out, error *e);
+
+/* Reads a PNG and makes two JPEG copies: the whole averaged to at most `width` columns (0: none), and the middle at full
+ * resolution, at most detail_nx x detail_ny (0: none).
  *   out  free both with small_picture_free, also after a failure
  *   err  ST_IO not readable; ST_BAD_INPUT no PNG; ST_NO_MEMORY */
 status thumbnail_make(const char *path, size_t width, size_t detail_nx, size_t detail_ny, small_picture *whole,
