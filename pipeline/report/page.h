@@ -28,6 +28,13 @@ void page_profiles(const results *r, const char *out_dir, textbuf *out);
 
 /* Column name + suffix of the sample table, or NULL. */
 const column *page_sample_column(const char *name, const char *suffix);
+/* 0 fails, 1 undecided, 2 not measured, 3 the rest. */
+enum { PAGE_URGENCIES = 4 };
+int page_urgency(const sample_row *s);
+/* Indices of the samples that the page shows in detail, ascending; the caller frees them. NULL: no memory, remembered in `out`. */
+size_t *page_pick(const results *r, size_t *n, textbuf *out);
+/* Says so where they are not all. */
+void page_pick_note(const results *r, size_t n, const char *what, const char *where, textbuf *out);
 /* The number of that column of a sample as the table prints it; NAN: none. */
 double page_sample_number(const sample_row *s, const char *name, const char *suffix);
 /* How a quantity stands to the limit nearest to it. lo and hi: its 95 % interval, or twice the uncertainty. */

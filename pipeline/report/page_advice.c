@@ -2,9 +2,11 @@
  * undecided target what its own uncertainty budget suggests, and for an assumed height the one measurement that matters
  * most. Advice about the measurement, never a recipe for the process. */
 #include <cjson/cJSON.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/flags.h"
+#include "base/mem.h"
 #include "report/html.h"
 #include "report/page.h"
 
@@ -79,31 +81,60 @@ static const char *what_narrows(const results *r, size_t sample, const char *qua
     return answer;
 }
 
-static void advise_sample(const results *r, size_t i, size_t *n, textbuf *out) {
-    const sample_row *s = &r->samples[i];
-    for (size_t k = 0; k < r->n_targets; k++) {
-        textbuf name = { 0 };
-        text_addf(&name, "verdict_%s", r->target_quantity[k]);
-        const char *word = name.failed ? NULL : page_extra(r, s, name.s);
-        text_free(&name);
-        const char *todo = word && !strcmp(word, "undecided") ? what_narrows(r, i, r->target_quantity[k]) : NULL;
-        if (!todo || *n >= MOST) continue;
-        ++*n;
-        text_addf(out, "<li><a href=\"#sample-%zu\">", i + 1);
-        html_text(out, s->sample);
-        text_add(out, "</a> is undecided: ");
-        page_reason(out, r, i, k, word);
-        text_addf(out, "; %s.</li>\n", todo);
+/* What would decide target k of sample i, or NULL where it is decided. */
+static const char *open_question(const results *r, size_t i, size_t k) {
+    textbuf name = { 0 };
+    text_addf(&name, "verdict_%s", r->target_quantity[k]);
+    const char *word = name.failed ? NULL : page_extra(r, &r->samples[i], name.s);
+    const char *answer = word && !strcmp(word, "undecided") ? what_narrows(r, i, r->target_quantity[k]) : NULL;
+    text_free(&name);
+    return answer;
+}
+
+static void add_link(const results *r, size_t i, textbuf *out) {
+    text_addf(out, "<a href=\"#sample-%zu\">", i + 1);
+    html_text(out, r->samples[i].sample);
+    text_add(out, "</a>");
+}
+
+/* One line a sample while they are few; samples with the same open question share a line beyond that. */
+static void advise_target(const results *r, size_t k, size_t *n, textbuf *out) {
+    enum { EACH = 3, NAMED = 6 };
+    const char **answers = mem_array(r->n_samples, sizeof *answers);
+    if (!answers) {
+        out->failed = 1;
+        return;
     }
+    for (size_t i = 0; i < r->n_samples; i++) answers[i] = open_question(r, i, k);
+    for (size_t i = 0; i < r->n_samples; i++) {
+        size_t same = 0, told = 0;
+        const char *answer = answers[i];
+        for (size_t q = i; answer && q < r->n_samples; q++) same += answers[q] && !strcmp(answers[q], answer);
+        for (size_t q = i; same && q < r->n_samples; q++) {
+            if (!answers[q] || strcmp(answers[q], answer)) continue;
+            answers[q] = NULL;
+            if (same > EACH && told >= NAMED) continue;
+            if (same <= EACH || !told) text_add(out, "<li>");
+            else text_add(out, ", ");
+            told++;
+            add_link(r, q, out);
+            if (same > EACH) continue;
+            text_add(out, " is undecided: ");
+            page_reason(out, r, q, k, "undecided");
+            text_addf(out, "; %s.</li>\n", answer);
+        }
+        if (same > NAMED) text_addf(out, " and %zu more", same - NAMED);
+        if (same > EACH) text_addf(out, " are undecided on %s, not clear of its limits: %s.</li>\n", page_quantity(r->target_quantity[k]), answer);
+        *n += same > EACH ? 1 : same;
+    }
+    free(answers);
 }
 
 void page_advice(const results *r, textbuf *out) {
     textbuf list = { 0 };
     size_t n = 0, assumed = 0;
-    for (size_t i = 0; i < r->n_samples; i++) {
-        advise_sample(r, i, &n, &list);
-        assumed += (size_t)has_word(r->samples[i].flags, flag_word(FLAG_BIT_HEIGHT_ASSUMED));
-    }
+    for (size_t k = 0; k < r->n_targets; k++) advise_target(r, k, &n, &list);
+    for (size_t i = 0; i < r->n_samples; i++) assumed += (size_t)has_word(r->samples[i].flags, flag_word(FLAG_BIT_HEIGHT_ASSUMED));
     advise_pictures(r, &n, &list);
     if (assumed)
         text_addf(&list, "<li>%zu of %zu samples rest on an assumed height: one cross-section (height_nm and height_nm_u in "

@@ -1,6 +1,7 @@
 /* Where the uncertainty of every sample comes from: sampling, method and pixel size of each quantity (JCGM 100), the parts of
  * the predicted reflectance, and the sentence of the verdict, folded away per sample. The parts stand in results.json. */
 #include <cjson/cJSON.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/number.h"
@@ -88,7 +89,9 @@ void page_budgets(const results *r, textbuf *out) {
     if (!r->n_samples) return;
     text_add(out, "<section id=\"budgets\"><h2>Uncertainty budgets</h2>\n<p class=\"lead\">Standard uncertainties (k = 1), in the "
                   "unit of the quantity. Sampling falls with more micrographs; method and pixel size do not.</p>\n");
-    for (size_t i = 0; i < r->n_samples; i++) {
+    size_t n = 0, *picked = page_pick(r, &n, out);
+    for (size_t k = 0; k < n; k++) {
+        size_t i = picked[k];
         const sample_row *s = &r->samples[i];
         cJSON *o = page_members(r->sample_json ? r->sample_json[i] : NULL);
         const cJSON *budget = member(o, "budget");
@@ -108,5 +111,7 @@ void page_budgets(const results *r, textbuf *out) {
         text_add(out, "</details>\n");
         cJSON_Delete(o);
     }
+    page_pick_note(r, n, "the budgets", "are in results.json", out);
+    free(picked);
     text_add(out, "</section>\n");
 }

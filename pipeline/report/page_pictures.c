@@ -13,7 +13,7 @@
 #include "report/page.h"
 #include "report/thumbnail.h"
 
-enum { THUMB_WIDTH = 524, THUMB_LEAST = 260, FULL_SIZE_PICTURES = 16, DETAIL_NX = 200, DETAIL_NY = 150 };
+enum { THUMB_WIDTH = 524, THUMB_LEAST = 150, FULL_SIZE_PICTURES = 16, DETAIL_NX = 200, DETAIL_NY = 150 };
 enum { MAX_CARDS = 500, MOST_DETAILS = 24, MOST_LAYERED = 160 };
 static const size_t picture_budget = (size_t)3100 << 10; /* bytes of the page for pictures */
 
@@ -115,18 +115,18 @@ static void read_picture(const results *r, size_t i, const char *out_dir, size_t
     free(path);
 }
 
-static void add_facts(const image_row *m, textbuf *out) {
+static void add_facts(const image_row *m, int few, textbuf *out) {
     text_add(out, "<dl>\n");
     if (m->sample && *m->sample) {
         text_add(out, "<dt>Sample</dt><dd>");
         html_text(out, m->sample);
         text_add(out, "</dd>\n");
     }
-    add_fact(out, m, "px_nm", NULL, "Pixel");
+    if (!few) add_fact(out, m, "px_nm", NULL, "Pixel");
     add_fact(out, m, "spacing_acf_nm", "spacing_acf_nm_u", "Spacing, ring");
     add_fact(out, m, "spacing_hex_nm", "spacing_hex_nm_u", "Spacing, count");
     add_fact(out, m, "n_features", NULL, "Features");
-    add_fact(out, m, "sharpness_px", NULL, "Blur, sd");
+    if (!few) add_fact(out, m, "sharpness_px", NULL, "Blur, sd");
     if (m->flags && *m->flags) {
         text_add(out, "<dt>Remarks</dt><dd>");
         page_flags(out, m->flags);
@@ -164,7 +164,7 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
         add_reason(out, m->reason);
     }
     text_add(out, "</p>\n<div class=\"facts\">");
-    add_facts(m, out);
+    add_facts(m, r->n_images > MOST_LAYERED, out);
     if (detail.n) { /* none where there are too many for one page: the link leads to every pixel */
         text_add(out, "<figure>");
         add_image(out, &detail, "Middle of ", m->file, " at full resolution");
@@ -198,7 +198,7 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
              "those do not count for the sizes</li><li><span class=\"sign ring\"></span>the measured spacing around one feature</li><li>a picture opens its "
              "overlay at full size</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
-    text_add(out, "<div class=\"cards\">\n");
+    text_addf(out, "<div class=\"cards%s\">\n", r->n_images > MOST_LAYERED ? " many" : "");
     size_t room = MAX_CARDS, left_out = 0;
     for (size_t i = 0; i < r->n_images; i++)
         if (room && !is_used(&r->images[i])) room--;

@@ -12,7 +12,7 @@
 #include "report/page.h"
 #include "report/plot.h"
 
-enum { MAX_SAMPLES = 60, MAX_BINS = 60, BINS = 32, MAX_LINES = 4 };
+enum { MAX_BINS = 60, BINS = 32, MAX_LINES = 4 };
 
 /* What the micrographs of one sample add up to. */
 typedef struct {
@@ -142,49 +142,44 @@ static void draw_acf(const sample_row *s, const gathered *g, const axes *a, text
     text_add(out, "</figure>\n");
 }
 
-static void draw_all(const results *r, const gathered *g, size_t n, const axes *a, textbuf *out) {
+static void draw_all(const results *r, const size_t *picked, const gathered *g, size_t n, const axes *a, textbuf *out) {
     text_add(out, "<h3>Size distribution</h3>\n<p class=\"small\">Equivalent circular diameters of the cells of all micrographs "
                   "used, by number, border features weighted (ISO 13322-1). Dashes: D10, D50, D90. All charts have the same "
                   "axes.</p>\n<div class=\"charts small-multiples\">\n");
     for (size_t i = 0; i < n; i++)
-        if (g[i].sizes.n && a->bins) draw_sizes(&r->samples[i], &g[i], a, out);
+        if (g[i].sizes.n && a->bins) draw_sizes(&r->samples[picked[i]], &g[i], a, out);
     text_add(out, "</div>\n<h3>Autocorrelation and its ring</h3>\n<p class=\"small\">Radial autocorrelation of the curvature map, "
                   "one line a micrograph; dashes: the first ring, which is the spacing (spacing_acf_nm). A clear hump at the "
                   "dashes is what the spacing rests on.</p>\n<div class=\"charts small-multiples\">\n");
     for (size_t i = 0; i < n; i++)
-        if (g[i].n_acf) draw_acf(&r->samples[i], &g[i], a, out);
+        if (g[i].n_acf) draw_acf(&r->samples[picked[i]], &g[i], a, out);
     text_add(out, "</div>\n");
 }
 
 void page_profiles(const results *r, const char *out_dir, textbuf *out) {
-    size_t n = r->n_samples < MAX_SAMPLES ? r->n_samples : MAX_SAMPLES, found = 0;
+    size_t n = 0, found = 0, *picked = r->n_samples ? page_pick(r, &n, out) : NULL;
     error e = { 0 };
-    if (!n) return;
-    gathered *g = mem_array(n, sizeof *g);
-    if (!g) {
-        out->failed = 1;
-        return;
-    }
-    for (size_t i = 0; i < n; i++) {
-        gather(r, i, out_dir, &g[i], &e);
+    gathered *g = n ? mem_array(n, sizeof *g) : NULL;
+    if (n && !g) out->failed = 1;
+    for (size_t i = 0; g && i < n; i++) {
+        gather(r, picked[i], out_dir, &g[i], &e);
         found += g[i].sizes.n || g[i].n_acf;
     }
     if (found) {
         axes a = find_axes(g, n);
-        draw_all(r, g, n, &a, out);
-    } else {
+        draw_all(r, picked, g, n, &a, out);
+    } else if (g) {
         text_add(out, "<p>No size distribution and no autocorrelation: no micrograph with a pixel size was used.</p>\n");
     }
     if (found && found < n)
         text_addf(out, "<p class=\"small\">%zu samples have no chart: none of their micrographs was used.</p>\n", n - found);
-    if (n < r->n_samples)
-        text_addf(out, "<p class=\"small\">The first %zu of %zu samples are drawn; profiles/ and features/ hold all.</p>\n", n,
-                  r->n_samples);
+    page_pick_note(r, n, "the curves", "are in profiles/ and features/", out);
     if (e.code) {
         text_add(out, "<p class=\"small\">Not all tables could be read: ");
         html_text(out, e.text);
         text_add(out, "</p>\n");
     }
-    for (size_t i = 0; i < n; i++) gathered_free(&g[i]);
+    for (size_t i = 0; g && i < n; i++) gathered_free(&g[i]);
     free(g);
+    free(picked);
 }

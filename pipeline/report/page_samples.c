@@ -260,14 +260,6 @@ void page_reason(textbuf *out, const results *r, size_t sample, size_t target, c
     if (c) add_unit(out, c);
 }
 
-/* What needs a look comes first. */
-static int urgency(const sample_row *s) {
-    static const char *const order[] = { "fails", "undecided", "not_measured" };
-    for (int k = 0; k < 3; k++)
-        if (s->verdict && !strcmp(s->verdict, order[k])) return k;
-    return 3;
-}
-
 void page_samples(const results *r, textbuf *out) {
     shown q[MAX_SHOWN];
     if (!r->n_samples) return;
@@ -281,10 +273,10 @@ void page_samples(const results *r, textbuf *out) {
                   "samples\">");
     table_head(r, q, n, out);
     text_add(out, "<tbody>\n");
-    for (size_t k = 0; k < 4 * r->n_samples; k++) {
+    for (size_t k = 0; k < PAGE_URGENCIES * r->n_samples; k++) {
         size_t i = k % r->n_samples;
         const sample_row *s = &r->samples[i];
-        if ((size_t)urgency(s) != k / r->n_samples) continue;
+        if ((size_t)page_urgency(s) != k / r->n_samples) continue;
         name_cell(r, i, out);
         for (size_t c = 0; c < n; c++) {
             text_add(out, "<td class=\"q\"><span class=\"value\">");

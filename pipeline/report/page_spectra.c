@@ -11,7 +11,7 @@
 #include "report/page.h"
 #include "report/plot.h"
 
-enum { MAX_SPECTRA = 60, MAX_POINTS = 141 };
+enum { MAX_POINTS = 121 };
 
 static const char *text_or_empty(const char *s) { return s ? s : ""; }
 
@@ -128,6 +128,12 @@ static int same_curve(const spectrum_row *a, const spectrum_row *b) {
            !(a->angle_deg < b->angle_deg) && !(a->angle_deg > b->angle_deg);
 }
 
+static int is_picked(const results *r, const size_t *picked, size_t n, const char *sample) {
+    for (size_t k = 0; k < n; k++)
+        if (!strcmp(text_or_empty(r->samples[picked[k]].sample), text_or_empty(sample))) return 1;
+    return 0;
+}
+
 static void draw_spectra(const results *r, textbuf *out) {
     spectrum_curves *k = mem_array(1, sizeof *k);
     if (!k) {
@@ -137,15 +143,15 @@ static void draw_spectra(const results *r, textbuf *out) {
     thin_reference(r, r->polished_R, &k->polished);
     thin_reference(r, r->coated_R, &k->coated);
     k->floor = axis_floor(r);
-    size_t drawn = 0, curves = 0;
+    size_t n = 0, *picked = page_pick(r, &n, out);
     char floor_text[NUMBER_TEXT];
     text_add(out, "<h3>Predicted spectra</h3>\n<ul class=\"key\"><li><span class=\"line texture\"></span> this texture, with its 95 % "
                   "band</li><li><span class=\"line polished\"></span> polished silicon</li><li><span class=\"line "
                   "coated\"></span> polished under 75 nm of silicon nitride</li></ul>\n"
                   "<div class=\"charts small-multiples\">\n");
-    for (size_t from = 0, to; from < r->n_spectra; from = to, curves++) {
+    for (size_t from = 0, to; from < r->n_spectra; from = to) {
         for (to = from + 1; to < r->n_spectra && same_curve(&r->spectra[from], &r->spectra[to]);) to++;
-        if (drawn < MAX_SPECTRA && ++drawn) draw_spectrum(r, from, to - from, k, out);
+        if (is_picked(r, picked, n, r->spectra[from].sample)) draw_spectrum(r, from, to - from, k, out);
     }
     text_add(out, "</div>\n");
     text_addf(out,
@@ -154,11 +160,8 @@ static void draw_spectra(const results *r, textbuf *out) {
               "%s %%.</p>\n",
               number_text(k->floor, 3, floor_text));
     draw_references(k, out);
-    if (curves > drawn)
-        text_addf(
-            out,
-            "<p class=\"small\">The first %zu of %zu spectra are drawn; spectra.csv holds them all.</p>\n",
-            drawn, curves);
+    page_pick_note(r, n, "the spectra", "are in spectra.csv", out);
+    free(picked);
     free(k);
 }
 

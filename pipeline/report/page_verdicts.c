@@ -79,40 +79,25 @@ static void add_headline(const results *r, textbuf *out) {
     text_addf(out, "</p><p>%zu of %zu micrographs used. sward advises; a person decides.</p></div>\n", used, r->n_images);
 }
 
-static const char *target_word(const results *r, const sample_row *s, size_t k) {
-    textbuf name = { 0 };
-    text_addf(&name, "verdict_%s", r->target_quantity[k]);
-    const char *word = name.failed ? NULL : page_extra(r, s, name.s);
-    text_free(&name);
-    return word;
-}
-
-/* One line a sample that is not plainly in order, with the figures that decide it. */
-static void add_reasons(const results *r, const char *word, const char *lead, textbuf *out) {
+/* What fails has its own block and what is undecided its line of advice; here the rest. */
+static void add_unmeasured(const results *r, textbuf *out) {
     enum { MOST = 20 };
     size_t n = 0;
     for (size_t i = 0; i < r->n_samples; i++) {
-        const sample_row *s = &r->samples[i];
-        if (!is_word(s->verdict, word) || ++n > MOST) continue;
-        text_addf(out, "%s<a href=\"#sample-%zu\">", n == 1 ? lead : "; ", i + 1);
-        html_text(out, s->sample);
+        if (!is_word(r->samples[i].verdict, "not_measured") || ++n > MOST) continue;
+        text_addf(out, "%s<a href=\"#sample-%zu\">", n == 1 ? "<p><strong>Not measured:</strong> " : ", ", i + 1);
+        html_text(out, r->samples[i].sample);
         text_add(out, "</a>");
-        for (size_t k = 0, told = 0; k < r->n_targets; k++) {
-            if (!is_word(target_word(r, s, k), word)) continue;
-            text_add(out, told++ ? ", " : ": ");
-            page_reason(out, r, i, k, word);
-        }
     }
-    if (n > MOST) text_addf(out, "; and %zu more", n - MOST);
-    if (n) text_add(out, ".</p>\n");
+    if (n > MOST) text_addf(out, " and %zu more", n - MOST);
+    if (n) text_add(out, ". None of their micrographs was used, or they have no value of what a target asks for.</p>\n");
 }
 
 void page_verdicts(const results *r, textbuf *out) {
     text_add(out, "<section id=\"verdicts\" aria-label=\"Verdict\">\n");
     add_headline(r, out);
     page_cases(r, out);
-    add_reasons(r, "undecided", "<p><strong>Undecided:</strong> ", out);
-    add_reasons(r, "not_measured", "<p><strong>Not measured:</strong> ", out);
+    add_unmeasured(r, out);
     page_advice(r, out);
     if (r->summary && *r->summary) {
         text_add(out, "<details><summary>Summary as the program printed it</summary><pre tabindex=\"0\">");
