@@ -34,9 +34,11 @@ typedef struct {
     left_file *left; /* [n_left], in the same order */
     size_t n_left;
 } file_list;
+/* In an output folder from the start; empty. */
+#define OUTPUT_LOCK ".sward-lock"
 /* Every file below `root` for which keep(relative path) is true; pipes, devices and links that lead nowhere count as
  * files, so that opening them tells why they cannot be read. Left alone, and listed as that: names that begin with a dot or
- * are those of temporary files, folders that hold sward's own datapackage.json or cannot be read, links that leave the root
+ * are those of temporary files, folders that hold sward's own datapackage.json or lock or cannot be read, links that leave the root
  * or lead to a folder around them, folders deeper than LIMIT_FOLDER_DEPTH. The root itself is always walked.
  *   err ST_IO the root cannot be read; ST_NO_MEMORY more than LIMIT_FOLDER_FILES. */
 status folder_walk(const char *root, int (*keep)(const char *relative), file_list *out, error *e);

@@ -28,16 +28,18 @@ typedef struct {
     place above[LIMIT_FOLDER_DEPTH + 1]; /* the folders we stand in */
 } walker;
 
-/* sward's own description of an output folder names the program in its first lines; a data package of
- * somebody else is an ordinary folder. */
+/* The lock of whoever writes an output lies in it from the start; the description at its end names the program in its first
+ * lines; a data package of somebody else is an ordinary folder. */
 static int is_own_output(const char *folder) {
-    char *path = path_join(folder, "datapackage.json"), *text = NULL;
+    char *lock = path_join(folder, OUTPUT_LOCK), *path = path_join(folder, "datapackage.json"), *text = NULL;
     size_t n = 0;
-    int own = path && file_read(path, LIMIT_TEXT_FILE_BYTES, &text, &n, NULL) == ST_OK &&
+    int locked = lock && file_exists(lock);
+    free(lock);
+    int own = !locked && path && file_read(path, LIMIT_TEXT_FILE_BYTES, &text, &n, NULL) == ST_OK &&
               strstr(text, "sward") != NULL;
     free(text);
     free(path);
-    return own;
+    return locked || own;
 }
 
 static int link_stays_inside(const walker *w, const char *path) {

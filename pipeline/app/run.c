@@ -171,7 +171,7 @@ static status tell_verdicts(const run *r, const ledger_result *ledger, error *e)
     for (size_t k = 0; st == ST_OK && r->hooks && r->hooks->verdict && k < r->n_groups; k++) {
         const sample_row *row = &r->samples[k].row;
         run_verdict v = { row->sample, row->verdict, row->verdict_reasons, row->etched_at, ledger->row_json[k] };
-        st = r->hooks->verdict(r->hooks->context, &v, e);
+        st = r->hooks->verdict(r->hooks->verdict_context, &v, e);
     }
     return st;
 }

@@ -32,8 +32,8 @@ typedef struct {
 typedef struct {
     int (*stop)(void);                                          /* asked before each micrograph */
     int (*admit)(void *context, const char *relative);          /* 0: the file is left out of this run */
-    status (*verdict)(void *context, const run_verdict *v, error *e); /* each sample, after everything is written */
-    void *context;
+    status (*verdict)(void *verdict_context, const run_verdict *v, error *e); /* each sample, after everything is written */
+    void *context, *verdict_context;
     const stage *stage;                                         /* of the output folder, opened by the caller */
 } run_hooks;
 

@@ -17,7 +17,7 @@
 #include "base/text.h"
 #include "io/file.h"
 
-static const char stage_name[] = ".sward-new", marker[] = ".complete", lock_name[] = STAGE_LOCK;
+static const char stage_name[] = ".sward-new", marker[] = ".complete", lock_name[] = OUTPUT_LOCK;
 
 status folder_make_parents(const char *path, error *e) {
     char *folder = mem_text(path);

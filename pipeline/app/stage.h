@@ -5,8 +5,6 @@
 #define SWARD_APP_STAGE_H
 #include "base/status.h"
 
-#define STAGE_LOCK ".sward-lock" /* in OUT; stays there, empty: it also marks the folder as an output */
-
 typedef struct {
     char *out, *folder; /* OUT, and where to write meanwhile; owned */
     int lock;           /* open file, -1: none */
