@@ -57,7 +57,8 @@ void control_today(const control *c, textbuf *out);
 /* One object; points are the newest `most` etches (0: all). Numbers of points count from 1 over all etches. An unknown number is
  * null, an open target too.
  *   quantity, unit, digits, target_min, target_max, phase_by (column whose values are recipes), subgroups
- *   rules [word], tests [{test, meaning, false_alarm_length}], false_alarm_length (limits known), false_alarm_length_here
+ *   rules [word], tests [{test, meaning, false_alarm_length}], false_alarm_length (etches to a false alarm on this
+ *     chart, its limits being estimates), false_alarm_length_known (of the pattern tests alone with known limits)
  *   phases [{number, first, etches, baseline, stated, why, recipe, live, centre, sigma, low, high, spread_mean, lag1}]: first is
  *     the number of a point; low and high the limits of single values; baseline 0: limits as given
  *   points [{number, etch, etched_at, samples, phase, value, u, sd, z, low, high, spread, spread_low, spread_high, average,

@@ -307,8 +307,8 @@ void control_json(const control *c, size_t most, textbuf *t) {
     add_words(c->c.options.rules, t);
     text_add(t, ",\n ");
     json_tests(&c->c.options, t);
-    member(t, "false_alarm_length", chart_false_alarm_length(c->c.options.rules));
-    member(t, "false_alarm_length_here", c->false_alarms);
+    member(t, "false_alarm_length", c->false_alarms);
+    member(t, "false_alarm_length_known", chart_false_alarm_length(c->c.options.rules));
     text_add(t, ",\n \"phases\": [");
     json_phases(c, t);
     text_add(t, "],\n \"points\": [\n  ");

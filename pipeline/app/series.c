@@ -39,6 +39,7 @@ typedef struct {
     char *quantity_u, *quantity_lo, *quantity_hi; /* owned */
     char *recipe;                                 /* owned; of the row at hand, NULL: it names none */
     char *last_recipe;                            /* owned; of the last row that named one */
+    const char *change;                           /* text of the note that opened the epoch; NULL: none yet */
     double value, u, lo, hi, x;
     int from_file; /* the time of etching is that of the files */
     int knows_quantity, knows_setting;
@@ -96,7 +97,14 @@ static etch *same_etch(series *s, const history_row *r, const wanted *w) {
     return NULL;
 }
 
-static status add_phase(series *s, wanted *w, size_t epoch, const char *note, error *e) {
+static int was_seen(const series *s, const char *recipe) {
+    for (size_t k = 0; k < s->n_phases; k++)
+        if (!strcmp(s->phases[k].recipe, recipe)) return 1;
+    return 0;
+}
+
+/* A recipe that is known from before a change starts anew because of the change, a new one because it is new. */
+static status add_phase(series *s, wanted *w, size_t epoch, error *e) {
     if (s->n_phases == w->room_phases) {
         size_t room = w->room_phases ? 2 * w->room_phases : 8;
         series_phase *grown = mem_grow(s->phases, room, sizeof *grown);
@@ -105,44 +113,45 @@ static status add_phase(series *s, wanted *w, size_t epoch, const char *note, er
         w->room_phases = room;
     }
     const char *recipe = w->last_recipe ? w->last_recipe : "";
-    const char *before = s->n_phases ? s->phases[s->n_phases - 1].recipe : "";
     textbuf why = { 0 };
-    int other = s->n_phases && recipe[0] && strcmp(recipe, before) != 0;
-    if (note) text_add(&why, note);
-    if (other) text_addf(&why, "%s%s %s", note ? ", " : "", w->phase_by, recipe);
+    int is_new = s->n_phases && recipe[0] && !was_seen(s, recipe), changed = s->n_phases && w->change;
+    if (changed) text_add(&why, w->change);
+    if (is_new) text_addf(&why, "%s%s %s", changed ? ", " : "", w->phase_by, recipe);
     status st = text_check(&why, "a series", e);
-    series_phase p = { mem_text(recipe), NULL, epoch, s->n, s->n };
+    series_phase p = { mem_text(recipe), why.s, epoch, s->n, s->n };
     if (st == ST_OK && !p.recipe) st = NO_MEMORY(e, "a series");
-    if (st == ST_OK && s->n_phases && why.n) {
-        p.why = why.s;
-        why = (textbuf){ 0 };
-    }
-    text_free(&why);
     if (st == ST_OK) s->phases[s->n_phases++] = p;
-    else free(p.recipe);
+    else {
+        free(p.recipe);
+        text_free(&why);
+    }
     return st;
 }
 
 /* The phase of the etch that comes next; *note: how many notes lie behind. */
 static status find_phase(series *s, wanted *w, const history_row *r, const history_notes *notes, size_t *note, size_t *out, error *e) {
-    const char *text = NULL, *recipe;
+    const char *recipe;
+    int changed = 0;
     size_t epoch = s->n ? s->phases[s->etches[s->n - 1].phase].epoch : 0;
     for (; *note < notes->n && notes->notes[*note].day <= r->day; ++*note)
-        if (!strcmp(notes->notes[*note].kind, "change")) text = notes->notes[*note].text;
+        if (!strcmp(notes->notes[*note].kind, "change")) {
+            changed = s->n > 0;
+            if (changed) w->change = notes->notes[*note].text; /* the last of several speaks */
+        }
     if (w->recipe) {
         free(w->last_recipe);
         w->last_recipe = mem_text(w->recipe);
         if (!w->last_recipe) return NO_MEMORY(e, "a series");
     }
     recipe = w->last_recipe ? w->last_recipe : "";
-    if (text && s->n) epoch++;
+    epoch += (size_t)changed;
     for (size_t k = s->n_phases; k-- > 0 && s->phases[k].epoch == epoch;)
         if (!strcmp(s->phases[k].recipe, recipe)) {
             *out = k;
             return ST_OK;
         }
     *out = s->n_phases;
-    return add_phase(s, w, epoch, s->n ? text : NULL, e);
+    return add_phase(s, w, epoch, e);
 }
 
 /* One more sample of an etch, after Welford (1962); sd and u hold sums of squares until `settle`. */
@@ -172,7 +181,7 @@ static status take(const history_row *r, const history_notes *notes, size_t *not
     w->knows_quantity |= isfinite(w->value);
     w->knows_setting |= isfinite(w->x);
     if (x) {
-        x->label = r->etched_at[0] ? r->etched_at : x->label;
+        if (x->row->etched_at[0]) x->label = x->row->etched_at;
         if (counts && x->n) s->n_joined++;
     } else {
         size_t phase = 0;

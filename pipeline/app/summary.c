@@ -49,6 +49,26 @@ static void unusable(const publication *p, textbuf *out) {
     }
 }
 
+/* How the verdicts were decided, quantities of one rule together. */
+static void rules(const protocol *p, textbuf *out) {
+    for (size_t i = 0; i < p->n_targets; i++) {
+        textbuf rule = { 0 }, names = { 0 };
+        int first = 1;
+        target_rule_text(&p->targets[i], &rule);
+        for (size_t k = 0; k < p->n_targets; k++) {
+            textbuf other = { 0 };
+            target_rule_text(&p->targets[k], &other);
+            int same = rule.s && other.s && !strcmp(rule.s, other.s);
+            if (same && k < i) first = 0; /* said with the earlier one */
+            if (same) text_addf(&names, "%s%s", names.n ? ", " : "", p->targets[k].quantity);
+            text_free(&other);
+        }
+        if (first && rule.s && names.s) text_addf(out, "Decided by %s: %s.\n", rule.s, names.s);
+        text_free(&rule);
+        text_free(&names);
+    }
+}
+
 void summary_text(const publication *p, textbuf *out) {
     size_t counts[5] = { 0 }, ok = 0, excluded = 0;
     int width = 6;
@@ -71,6 +91,7 @@ void summary_text(const publication *p, textbuf *out) {
         text_add(out, ". No targets: name them in the protocol to get verdicts.\n");
     text_addf(out, "  %-*s  %-20s  %-28s  %s\n", width, "sample", "spacing (k = 2)", "weighted reflectance (95 %)", "verdict");
     for (size_t k = 0; k < p->n_groups; k++) one_sample(p, k, width, out);
+    rules(p->protocol, out);
     if (p->ledger->process) text_addf(out, "The process, by the history:\n%s", p->ledger->process);
     if (ok < p->folder->n) {
         text_add(out, "Not used:\n");

@@ -112,23 +112,30 @@ void sentence_alarm(const sentence_subject *s, const char *sample, const chart_p
     text_add(t, " sigma from the centre)");
 }
 
+/* Etches, as a round number: nobody knows the third digit. */
+static void add_length(double length, textbuf *t) { add_number(length < 100.0 ? round(length) : length, 2, t); }
+
 void sentence_false_alarms(const chart_options *o, double drawn, size_t baseline, textbuf *t) {
     double length = chart_false_alarm_length(o->rules);
+    if (isfinite(drawn)) {
+        text_add(t, "On a steady process this chart");
+        if (baseline) text_addf(t, ", with limits from %zu etches", baseline);
+        if (o->rules & RULE(SPREAD)) text_add(t, baseline ? " and the chart of the spread" : ", with the chart of the spread");
+        if (o->rules & RULE(EWMA)) text_add(t, baseline || (o->rules & RULE(SPREAD)) ? " and the weighted average" : ", with the weighted average");
+        text_add(t, ", gives one false alarm in about ");
+        add_length(drawn, t);
+        text_add(t, " etches");
+        if (!isfinite(length)) return;
+        text_add(t, "; with known limits its pattern tests alone give one in about ");
+        add_length(length, t);
+        return;
+    }
     if (isfinite(length)) {
-        text_add(t, "On a steady process these pattern tests give one false alarm in about ");
-        add_number(length < 100.0 ? round(length) : length, 2, t);
+        text_add(t, "On a steady process with known limits these pattern tests give one false alarm in about ");
+        add_length(length, t);
         text_add(t, " etches");
     } else
         text_add(t, "No pattern test is on");
-    if (isfinite(drawn)) {
-        text_add(t, "; this chart");
-        if (baseline) text_addf(t, ", with limits from %zu etches", baseline);
-        if (o->rules & RULE(SPREAD)) text_add(t, baseline ? " and the chart of the spread" : ", with the chart of the spread");
-        if (o->rules & RULE(EWMA)) text_add(t, " and the weighted average");
-        text_add(t, ", one in about ");
-        add_number(drawn, 2, t);
-        return;
-    }
     if (o->rules & RULE(SPREAD)) text_add(t, "; the chart of the spread adds its own");
     if (o->rules & RULE(EWMA)) {
         text_add(t, "; the weighted average adds one in about ");
@@ -249,7 +256,7 @@ void sentence_line(const sentence_subject *s, const char *setting, const trend_l
     add_number(l->slope_p, 2, t);
     text_add(t, "), scatter about the line ");
     add_value(s, l->residual_sd, 2, t);
-    text_addf(t, "; %zu samples from ", l->n);
+    text_addf(t, "; %zu etches from ", l->n);
     add_number(l->x_min, 5, t);
     text_add(t, " to ");
     add_number(l->x_max, 5, t);

@@ -37,6 +37,15 @@ const char *decision_word(decision d) {
     return words[d];
 }
 
+void target_rule_text(const target *t, textbuf *out) {
+    char shown[NUMBER_TEXT];
+    if (t->rule == DECIDE_SIMPLE) text_add(out, "simple acceptance, uncertainty not counted (JCGM 106)");
+    else if (t->rule == DECIDE_PROBABILITY)
+        text_addf(out, "conformance probability of at least %s (JCGM 106)", number_text(t->at_least, 6, shown));
+    else text_add(out, "guard band of 1.645 u inside each limit (ISO 14253-1)");
+    if (t->error == ERROR_REPEAT && t->rule != DECIDE_SIMPLE) text_add(out, ", counting only what varies from run to run");
+}
+
 target target_defaults(void) {
     return (target){ .min = MISSING, .max = MISSING, .error = ERROR_FULL, .rule = DECIDE_GUARD, .at_least = 0.95 };
 }

@@ -27,6 +27,8 @@ typedef struct {
     int of_sheet;     /* a column of the sample sheet */
     size_t sheet_at, sheet_u_at; /* its column and that of its standard uncertainty, counted from 1; 0: none */
 } target;
+/* "guard band of 1.645 u inside each limit (ISO 14253-1)", "conformance probability of at least 0.9 (JCGM 106)". */
+void target_rule_text(const target *t, textbuf *out);
 target target_defaults(void); /* open, ERROR_FULL, DECIDE_GUARD, 0.95 */
 
 /* What was measured. Either u (and u_repeat) or lo..hi (95 %, may be asymmetric) is given. */

@@ -122,12 +122,12 @@ static void moments(const double *v, size_t n, double *mean, double *sd) {
 
 status trend_welch(const double *a, size_t n_a, const double *b, size_t n_b, trend_step *s, error *e) {
     if (n_a < 2 || n_b < 2)
-        return fail(e, ST_NO_RESULT, "a comparison needs at least 2 samples on each side, there are %zu and %zu", n_a, n_b);
+        return fail(e, ST_NO_RESULT, "a comparison needs at least 2 etches on each side, there are %zu and %zu", n_a, n_b);
     trend_step t = { .n_a = n_a, .n_b = n_b };
     moments(a, n_a, &t.mean_a, &t.sd_a);
     moments(b, n_b, &t.mean_b, &t.sd_b);
     double na = (double)n_a, nb = (double)n_b, va = t.sd_a * t.sd_a / na, vb = t.sd_b * t.sd_b / nb, u = sqrt(va + vb);
-    if (!(u > 0.0)) return fail(e, ST_NO_RESULT, "a comparison cannot be made: the samples on both sides do not scatter at all");
+    if (!(u > 0.0)) return fail(e, ST_NO_RESULT, "a comparison cannot be made: the etches on both sides do not scatter at all");
     t.difference = t.mean_b - t.mean_a;
     t.df = (va + vb) * (va + vb) / (va * va / (na - 1.0) + vb * vb / (nb - 1.0));
     double reach = student_quantile(0.975, t.df) * u;
@@ -145,7 +145,7 @@ status trend_welch(const double *a, size_t n_a, const double *b, size_t n_b, tre
 }
 
 status trend_fit(const double *x, const double *y, size_t n, trend_line *l, error *e) {
-    if (n < 3) return fail(e, ST_NO_RESULT, "a line needs at least 3 samples, there are %zu", n);
+    if (n < 3) return fail(e, ST_NO_RESULT, "a line needs at least 3 etches, there are %zu", n);
     trend_line t = { .n = n, .x_min = x[0], .x_max = x[0] };
     double m = (double)n, y_mean = 0.0, cross = 0.0, rest = 0.0;
     for (size_t i = 0; i < n; i++) {
@@ -154,7 +154,7 @@ status trend_fit(const double *x, const double *y, size_t n, trend_line *l, erro
         t.x_min = fmin(t.x_min, x[i]);
         t.x_max = fmax(t.x_max, x[i]);
     }
-    if (!(t.x_max > t.x_min)) return fail(e, ST_NO_RESULT, "a line needs different settings, all samples have %g", x[0]);
+    if (!(t.x_max > t.x_min)) return fail(e, ST_NO_RESULT, "a line needs different settings, all etches have %g", x[0]);
     for (size_t i = 0; i < n; i++) {
         t.x_spread += (x[i] - t.x_mean) * (x[i] - t.x_mean);
         cross += (x[i] - t.x_mean) * (y[i] - y_mean);

@@ -155,7 +155,14 @@ static void names_each_mistake(void) {
     fails_with("{ \"targets\": {\n \"spacing\": { \"min\": 1 } } }",
                "p.json line 2: targets: 'spacing' is no quantity of samples.csv");
     fails_with("{ \"targets\": { \"spacing_mm\": { \"min\": 1 } } }", "did you mean 'spacing_nm'?");
-    fails_with("{ \"targets\": { \"sample\": { \"min\": 1 } } }", "is no quantity of samples.csv");
+    fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"rule\": \"guess\" } } }", "expected the rule \"guard\"");
+    fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"at_least\": 0.5 } } }", "a probability above 0.5 and below 1");
+    fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"sheet\": 1 } } }", "expected true or false");
+    fails_with("{ \"samples\": {\n \"positions\": { \"C\": [0] } } }", "p.json line 2, samples.positions.C: found [0], expected [x, y] in mm");
+    fails_with("{ \"samples\": { \"positions\": [1] } }", "an object of [x, y] in mm by position");
+    fails_with("{ \"charts\": { \"rules\": \"zone,zoned\" } }", "charts.rules: 'zoned' is no rule");
+    fails_with("{ \"charts\": { \"baseline\": -1 } }", "charts.baseline: found -1");
+    fails_with("{ \"targets\": { \"sample\": { \"min\": 1 } } }", "a target needs a column of numbers");
     fails_with("{ \"targets\": { \"spacing_nm\": { } } }", "expected \"min\", \"max\" or both");
     fails_with("{ \"targets\": { \"spacing_nm\": 300 } }", "targets.spacing_nm: found 300");
     fails_with("{ \"targets\": { \"spacing_nm\": { \"min\": 3, \"max\": 2 } } }", "expected min below max");
@@ -329,6 +336,36 @@ static void survives_no_memory(void) {
     CHECK(st == ST_OK);
 }
 
+/* Rules, columns of the sheet, places, charts: read, and told apart from what changes results. */
+static void judging(void) {
+    protocol p = { 0 };
+    error e = { 0 };
+    static char mass[] = "mass_loss_mg", mass_u[] = "mass_loss_mg_u", gas[] = "gas";
+    char *columns[] = { gas, mass, mass_u };
+    CHECK(parse("{ \"targets\": { \"mass_loss_mg\": { \"max\": 3, \"rule\": \"probability\", \"at_least\": 0.9 }, \"spacing_mm\": { \"min\": 1, "
+                "\"sheet\": true, \"rule\": \"simple\" }, \"n_used\": { \"min\": 3 } },"
+                " \"samples\": { \"positions\": { \"C\": [0, 0], \"E\": [0, -70.5] } },"
+                " \"charts\": { \"rules\": \"iso,ewma\", \"baseline\": 25, \"phase\": \"bath\" } }", &p, &e) == ST_OK);
+    CHECK(p.n_targets == 3 && p.targets[0].of_sheet && p.targets[0].rule == DECIDE_PROBABILITY && p.targets[1].of_sheet && !p.targets[2].of_sheet);
+    CHECK(p.targets[1].rule == DECIDE_SIMPLE && p.targets[2].rule == DECIDE_GUARD);
+    CHECK(p.n_places == 2 && !strcmp(p.places[1].position, "E") && fabs(p.places[1].y_mm + 70.5) < 1e-12);
+    CHECK(!strcmp(p.chart_rules, "iso,ewma") && !strcmp(p.chart_phase, "bath") && fabs(p.chart_baseline - 25.0) < 1e-12);
+    CHECK_FAILS(protocol_meet_sheet(&p, columns, 3, &e), ST_BAD_INPUT, e, "'spacing_mm' is neither a quantity of samples.csv nor a column");
+    static char spacing[] = "spacing_mm";
+    columns[0] = spacing;
+    e = (error){ 0 };
+    CHECK(protocol_meet_sheet(&p, columns, 3, &e) == ST_OK && p.targets[0].sheet_at == 2 && p.targets[0].sheet_u_at == 3);
+    CHECK(p.targets[1].sheet_at == 1 && p.targets[1].sheet_u_at == 0);
+    textbuf t = { 0 };
+    protocol_explain(&p, &t);
+    CHECK(t.s && strstr(t.s, "with 90 % conformance probability") && strstr(t.s, "simple acceptance"));
+    text_free(&t);
+    protocol_free(&p);
+    fingerprint("{}", "{ \"charts\": { \"rules\": \"iso\" } }", 1, 1); /* charts change no result */
+    fingerprint("{ \"targets\": { \"spacing_nm\": { \"max\": 300 } } }", "{ \"targets\": { \"spacing_nm\": { \"max\": 300, \"rule\": \"simple\" } } }", 1, 0);
+    fingerprint("{}", "{ \"samples\": { \"positions\": { \"C\": [0, 0] } } }", 1, 0);
+}
+
 int main(void) {
     protocol p = { 0 };
     error e = { ST_OK, "" };
@@ -348,5 +385,6 @@ int main(void) {
     shapes();
     options();
     CHECK_FAILS(protocol_read("no/such/protocol.json", &p, &e), ST_BAD_INPUT, e, "no/such/protocol.json");
+    judging();
     return check_done();
 }

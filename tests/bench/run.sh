@@ -14,7 +14,11 @@ make_bench() { # source, build folder
         || sward_die "the benchmark does not build in $2"
 }
 make_bench "$home" "$home/build/bench"
-if [ $# -eq 0 ]; then exec "$home/build/bench/tests/sward_bench"; fi
+if [ $# -eq 0 ]; then
+    cmake --build "$home/build/bench" --target sward_bench_ledger >/dev/null || sward_die "the benchmark of the ledger does not build"
+    "$home/build/bench/tests/sward_bench_ledger"
+    exec "$home/build/bench/tests/sward_bench"
+fi
 old="$home/build/bench-old"
 git -C "$home" worktree prune
 [ -d "$old/source" ] && git -C "$home" worktree remove --force "$old/source"

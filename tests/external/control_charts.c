@@ -165,7 +165,21 @@ static void rules_fire(void) {
             CHECK_SOURCE(chart_rules_at(cases[k].z, i, RULES_ZONE), i + 1 == cases[k].n ? cases[k].last : 0, 0.0, source);
 }
 
+/* What the program says of its own alarms has to be in its description. */
+static void said(void) {
+    static const char source[] = "E-36 false-alarm budget of the default rules, README";
+    char path[500], text[4096], *where = NULL;
+    snprintf(path, sizeof path, "%s/../README.md", SWARD_TESTS);
+    FILE *f = fopen(path, "r");
+    CHECK(f != NULL);
+    while (f && !where && fgets(text, sizeof text, f)) where = strstr(text, "one in about 92 etches");
+    CHECK(where != NULL);
+    if (f) fclose(f);
+    CHECK_SOURCE(chart_false_alarm_length(chart_defaults().rules), 91.75, 0.01, source);
+}
+
 int main(void) {
+    said();
     quantiles();
     factors();
     individuals();

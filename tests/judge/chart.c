@@ -45,6 +45,51 @@ static void phases(void) {
     chart_free(&c);
 }
 
+/* Two recipes by turns keep their own limits; an alarm is said once; a stated period sets the limits. */
+static void turns(void) {
+    double v[60];
+    size_t phase[60];
+    unsigned char stated[60] = { 0 };
+    chart c = { 0 };
+    chart_options o = chart_defaults();
+    for (size_t i = 0; i < 60; i++) {
+        phase[i] = i % 2;
+        v[i] = (i % 2 ? 400.0 : 350.0) + ((i / 2) % 2 ? 1.0 : -1.0);
+    }
+    o.baseline = 10;
+    for (size_t i = 40; i < 60; i += 2) v[i] = 350.5; /* ten of the first recipe on one side, z 0.28 */
+    CHECK(chart_individuals(v, phase, 60, &o, &c, &e) == ST_OK && c.n_phases == 2 && c.phases[1].n_used == 30 && c.phases[1].first == 1);
+    CHECK_NEAR(c.phases[0].centre, 350.0, 1e-12);
+    CHECK_NEAR(c.phases[1].centre, 400.0, 1e-12);
+    CHECK_NEAR(c.points[2].spread, 2.0, 1e-12); /* to the etch before the last */
+    CHECK((c.points[52].alarms & RULE(RUN_8)) || (c.points[54].alarms & RULE(RUN_8)));
+    size_t alarms = 0;
+    for (size_t i = 0; i < 60; i++) alarms += c.points[i].alarms != 0;
+    CHECK(alarms == 1); /* the run goes on and is not said again */
+    chart_free(&c);
+
+    for (size_t i = 0; i < 60; i++) stated[i] = i >= 20 && i < 34;
+    o.stated = stated;
+    for (size_t i = 20; i < 34; i++) v[i] += 7.0;
+    CHECK(chart_individuals(v, phase, 60, &o, &c, &e) == ST_OK && c.phases[0].stated && c.phases[0].n_baseline == 7);
+    CHECK_NEAR(c.phases[0].centre, 357.0 - 1.0 / 7.0, 1e-12); /* four of the seven at -1 */
+    CHECK(c.options.stated == NULL);
+    chart_free(&c);
+    for (size_t i = 0; i < 60; i++) stated[i] = i < 4; /* two etches are no baseline: the first ones set the limits */
+    CHECK(chart_individuals(v, phase, 60, &o, &c, &e) == ST_OK && !c.phases[0].stated && c.phases[0].n_baseline == 10);
+    chart_free(&c);
+    phase[0] = 1;
+    CHECK_FAILS(chart_individuals(v, phase, 60, &o, &c, &e), ST_BAD_INPUT, e, "order of their first etches");
+
+    /* one odd etch is one alarm: the way back is not its neighbour's */
+    double w[30];
+    for (size_t i = 0; i < 30; i++) w[i] = i % 2 ? 1.0 : -1.0;
+    w[25] = 30.0;
+    o = chart_defaults();
+    CHECK(chart_individuals(w, NULL, 30, &o, &c, &e) == ST_OK && (c.points[25].alarms & RULE(BEYOND)) && c.points[26].alarms == 0);
+    chart_free(&c);
+}
+
 static void groups(void) {
     static const double mean[] = { 10.2, 9.8, 10.1, 9.9, 10.0, 13.0 }, sd[] = { 1.1, 0.9, 1.0, 1.2, MISSING, 0.8 };
     static const size_t count[] = { 5, 5, 5, 5, 1, 3 };
@@ -84,6 +129,19 @@ static void names(void) {
     CHECK(chart_rules_at(up, 6, RULE(TREND_7)) == RULE(TREND_7) && chart_rules_at(up, 5, RULE(TREND_7)) == 0);
     CHECK(chart_rules_at(up, 5, RULE(TREND_6)) == RULE(TREND_6) && chart_rules_at(flat, 6, RULE(TREND_7)) == 0);
     CHECK(chart_rules_at(up, 6, RULE(RUN_7)) == RULE(RUN_7) && chart_rules_at(up, 6, RULE(RUN_8)) == 0);
+    static const double saw[] = { 1, 2, 1, 2, 1, 2, 1, 2, 1, 2, 1, 2, 1, 2, 3 };
+    CHECK(chart_rules_at(saw, 13, RULE(ALTERNATE_14)) == RULE(ALTERNATE_14) && !chart_rules_at(saw, 12, RULE(ALTERNATE_14)));
+    CHECK(!chart_rules_at(saw, 14, RULE(ALTERNATE_14)));
+    static const double calm[] = { .1, -.2, .3, .9, -.9, .1, -.2, .3, .9, -.9, .1, -.2, .3, .9, -.9, 1.1 };
+    CHECK(chart_rules_at(calm, 14, RULE(CALM_15)) == RULE(CALM_15) && !chart_rules_at(calm, 13, RULE(CALM_15)) && !chart_rules_at(calm, 15, RULE(CALM_15)));
+    static const double apart[] = { 1.1, -1.2, 1.3, 2.9, -1.9, 1.1, -1.2, 1.3, 0.9 };
+    CHECK(chart_rules_at(apart, 7, RULE(APART_8)) == RULE(APART_8) && !chart_rules_at(apart, 6, RULE(APART_8)) && !chart_rules_at(apart, 8, RULE(APART_8)));
+    chart_options o = chart_defaults();
+    o.rules = RULES_ZONE; /* known limits: the published length; estimated ones: shorter */
+    CHECK_NEAR(chart_false_alarm_drawn(&o, 0), 91.75, 4.0 * 91.75 / sqrt(300.0));
+    CHECK(chart_false_alarm_drawn(&o, 20) < 0.7 * chart_false_alarm_drawn(&o, 0));
+    o.rules = 0;
+    CHECK(isinf(chart_false_alarm_drawn(&o, 20)));
     CHECK(isinf(chart_false_alarm_length(0)) && isinf(chart_false_alarm_length(RULE(EWMA))));
     CHECK_NEAR(chart_false_alarm_length(RULES_ZONE | RULE(EWMA)), 91.75, 1e-9);
     CHECK_NEAR(chart_false_alarm_length(RULE(RUN_8)), 255.0, 25.0); /* 2^8 - 1: eight heads or eight tails in a row */
@@ -114,6 +172,7 @@ static void refusals(void) {
 
 int main(void) {
     phases();
+    turns();
     groups();
     names();
     refusals();

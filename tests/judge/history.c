@@ -9,6 +9,7 @@
 
 #include "base/mem.h"
 #include "base/quantity.h"
+#include "base/text.h"
 #include "check.h"
 
 static char folder[300]; /* absolute, beside the test */
@@ -157,13 +158,29 @@ static int write_many(const char *path, int who, int batches) {
     return 0;
 }
 
-/* Both find no ledger and make it; each batch holds a row of their own and one they have in common. */
-static void two_writers(int batches) {
+/* The first cell of an answer. */
+static const char *asked(const char *path, const char *sql) {
+    static char answer[200];
+    sqlite3 *db = NULL;
+    sqlite3_stmt *s = NULL;
+    answer[0] = '\0';
+    if (sqlite3_open_v2(path, &db, SQLITE_OPEN_READONLY, NULL) == SQLITE_OK && sqlite3_prepare_v2(db, sql, -1, &s, NULL) == SQLITE_OK &&
+        sqlite3_step(s) == SQLITE_ROW && sqlite3_column_text(s, 0))
+        snprintf(answer, sizeof answer, "%s", (const char *)sqlite3_column_text(s, 0));
+    else printf("%s: %s\n", sql, sqlite3_errmsg(db));
+    sqlite3_finalize(s);
+    sqlite3_close(db);
+    return answer;
+}
+
+/* All find no ledger and make it; each batch holds a row of their own and one they have in common. 8 writers of 200 rows: tests/bench/ledger.c. */
+enum { WRITERS = 4 };
+static void many_writers(int batches) {
     char path[400];
     snprintf(path, sizeof path, "%s", in_folder("shared.sqlite"));
     fflush(stdout);
-    pid_t child[2];
-    for (int w = 0; w < 2; w++) {
+    pid_t child[WRITERS];
+    for (int w = 0; w < WRITERS; w++) {
         child[w] = fork();
         if (child[w] == 0) {
             int bad = write_many(path, w, batches);
@@ -171,7 +188,7 @@ static void two_writers(int batches) {
             _exit(bad);
         }
     }
-    for (int w = 0; w < 2; w++) {
+    for (int w = 0; w < WRITERS; w++) {
         int how = -1;
         CHECK(waitpid(child[w], &how, 0) == child[w] && WIFEXITED(how) && WEXITSTATUS(how) == 0);
     }
@@ -179,7 +196,8 @@ static void two_writers(int batches) {
     history *h = NULL;
     history_list l = { 0 };
     CHECK(history_open(path, 1, &h, &e) == ST_OK && history_read(h, NULL, NULL, &l, &e) == ST_OK);
-    CHECK(l.n == 3 * (size_t)batches);
+    CHECK(l.n == (WRITERS + 1) * (size_t)batches);
+    CHECK(!strcmp(asked(path, "PRAGMA integrity_check"), "ok"));
     history_list_free(&l);
     history_close(h);
     unlink(path);
@@ -278,6 +296,110 @@ static void older(void) {
     history_close(second);
 }
 
+/* A ledger of the second version, with a note and an exclusion in it. */
+static void second(void) {
+    static const char sql[] =
+        "CREATE TABLE runs(id INTEGER PRIMARY KEY, sample TEXT NOT NULL, lot TEXT NOT NULL, wafer TEXT NOT NULL,"
+        " etched_at TEXT NOT NULL, run_at TEXT NOT NULL, fingerprint TEXT NOT NULL, version TEXT NOT NULL, protocol TEXT NOT"
+        " NULL, spacing_nm REAL, spacing_nm_u REAL, density_per_um2 REAL, size_d50_nm REAL, weighted_reflectance REAL,"
+        " verdict TEXT NOT NULL, row_json TEXT NOT NULL, UNIQUE(sample, fingerprint));"
+        "CREATE TABLE notes(id INTEGER PRIMARY KEY, at TEXT NOT NULL, text TEXT NOT NULL, kind TEXT NOT NULL, initials TEXT NOT NULL);"
+        "CREATE TABLE exclusions(id INTEGER PRIMARY KEY, sample TEXT NOT NULL, etched_at TEXT NOT NULL, fingerprint TEXT NOT NULL,"
+        " excluded INTEGER NOT NULL, reason TEXT NOT NULL, initials TEXT NOT NULL, at TEXT NOT NULL);"
+        "INSERT INTO runs VALUES(1, 'b', 'L0', '', '', '2026-01-06T12:00:00Z', 'f0', '0.1.0', 'p', 340.5, 7, 9, 300, 0.02,"
+        " 'conforms', '{\"spacing_nm\": 340.5, \"spacing_nm_u\": 7, \"gas\": \"CF4\"}');"
+        "INSERT INTO runs VALUES(2, 'a', 'L0', '', '2026-01-05T08:00:00Z', '2026-01-05T12:00:00Z', 'f0', '0.1.0', 'p',"
+        " 341.5, 7, 9, 300, NULL, 'fails', '{}');"
+        "INSERT INTO exclusions VALUES(1, 'a', '2026-01-05T08:00:00Z', 'f0', 1, 'odd', 'KL', '2026-01-07');"
+        "PRAGMA application_id = 1398231620; PRAGMA user_version = 2;";
+    error e = { 0 };
+    sqlite3 *db = NULL;
+    history *h = NULL;
+    history_list l = { 0 };
+    char path[400];
+    snprintf(path, sizeof path, "%s", in_folder("second.sqlite"));
+    CHECK(sqlite3_open(path, &db) == SQLITE_OK && sqlite3_exec(db, sql, NULL, NULL, NULL) == SQLITE_OK);
+    sqlite3_close(db);
+    for (int write = 0; write < 2; write++) { /* read as it is; brought up to date; the same rows */
+        CHECK(history_open(path, !write, &h, &e) == ST_OK && history_read(h, NULL, NULL, &l, &e) == ST_OK && l.n == 2);
+        if (l.n == 2) {
+            CHECK(!strcmp(l.rows[0].sample, "a") && !strcmp(l.rows[0].excluded, "odd (KL)") && !strcmp(l.rows[1].excluded, ""));
+            CHECK(!strcmp(l.rows[1].position, "") && !strcmp(l.rows[1].protocol_sha256, "") && !strcmp(l.rows[1].folder, ""));
+            CHECK_NEAR(l.rows[1].day - l.rows[0].day, 1.0 + 4.0 / 24.0, 1e-6);
+        }
+        history_list_free(&l);
+        CHECK(history_select(h, &(history_filter){ .protocol = "p", .until = "2026-01-05T09:00:00Z" }, &l, &e) == ST_OK && l.n == 1);
+        history_list_free(&l);
+        history_close(h);
+        CHECK(!strcmp(asked(path, "PRAGMA user_version"), write ? "3" : "2"));
+    }
+    CHECK(!strcmp(asked(path, "SELECT group_concat(quantity || '=' || value || '/' || coalesce(u, '-')) FROM quantities"),
+                  "spacing_nm=340.5/7,gas=CF4/-"));
+    CHECK(!strcmp(asked(path, "PRAGMA integrity_check"), "ok"));
+}
+
+static status note_file(const char *at, const history_micrograph *m, void *user, error *e) {
+    textbuf *t = user;
+    (void)e;
+    text_addf(t, "%s/%s %.4s %s %g;", at, m->file, m->sha256, m->px_source, m->px_nm);
+    return ST_OK;
+}
+
+/* Where a row comes from, which rows are chosen, and the only way out. */
+static void origins(void) {
+    static const history_micrograph files[] = { { "a_1.tif", "abcd0123", "tiff", 8.25, 1 }, { "a_2.tif", "beef4567", "sheet", 8.5, 0 } };
+    error e = { 0 };
+    history *h = NULL;
+    history_list l = { 0 };
+    textbuf t = { 0 };
+    size_t added = 0, n = 0;
+    char path[400];
+    snprintf(path, sizeof path, "%s", in_folder("origins.sqlite"));
+    history_row rows[3] = { row("a", "2026-03-02T10:00:00Z", "f1"), row("a", "2026-03-02T10:00:00Z", "f2"), row("b", "2026-03-04", "f1") };
+    for (size_t i = 0; i < 3; i++) {
+        rows[i].position = "edge";
+        rows[i].protocol_sha256 = i == 1 ? "99aa" : "77bb";
+        rows[i].protocol = i == 1 ? "new" : "old";
+        rows[i].folder = "/data";
+        rows[i].run_at = i == 1 ? "2026-05-02T12:00:00Z" : "2026-05-01T12:00:00Z";
+        rows[i].micrographs = files;
+        rows[i].n_micrographs = 2;
+    }
+    CHECK(history_open(path, 0, &h, &e) == ST_OK && history_add(h, rows, 3, &added, &e) == ST_OK && added == 3);
+    CHECK(history_add(h, rows, 3, &added, &e) == ST_OK && added == 0);
+    CHECK(!strcmp(asked(path, "SELECT count(*) FROM micrographs"), "6")); /* none twice */
+    CHECK(history_select(h, &(history_filter){ .protocol = "77" }, &l, &e) == ST_OK && l.n == 2); /* the beginning of a digest */
+    if (l.n == 2) CHECK(!strcmp(l.rows[0].position, "edge") && !strcmp(l.rows[0].folder, "/data") && !strcmp(l.rows[0].protocol_sha256, "77bb"));
+    history_list_free(&l);
+    CHECK(history_select(h, &(history_filter){ .protocol = "new", .heads_only = 1 }, &l, &e) == ST_OK && l.n == 1 && !l.rows[0].row_json[0]);
+    history_list_free(&l);
+    CHECK(history_select(h, &(history_filter){ .until = "2026-03-03" }, &l, &e) == ST_OK && l.n == 2);
+    history_list_free(&l);
+    CHECK_FAILS(history_select(h, &(history_filter){ .until = "soon" }, &l, &e), ST_BAD_INPUT, e, "history until 'soon'");
+    CHECK(history_micrographs(h, &(history_filter){ 0 }, note_file, &t, &e) == ST_OK && t.s &&
+          !strcmp(t.s, "/data/a_1.tif abcd tiff 8.25;/data/a_2.tif beef sheet 8.5;"));
+    text_free(&t);
+
+    CHECK_FAILS(history_prune(h, &(history_prunable){ 0 }, "why", "KL", "2026-06-01", 1, &n, &e), ST_BAD_INPUT, e, "say what may go");
+    CHECK_FAILS(history_prune(h, &(history_prunable){ .superseded = 1 }, "", "KL", "2026-06-01", 1, &n, &e), ST_BAD_INPUT, e, "a reason");
+    CHECK_FAILS(history_prune(h, &(history_prunable){ .superseded = 1 }, "why", NULL, "2026-06-01", 1, &n, &e), ST_BAD_INPUT, e, "initials");
+    CHECK_FAILS(history_prune(h, &(history_prunable){ .before = "then" }, "why", "KL", "2026-06-01", 1, &n, &e), ST_BAD_INPUT, e, "before 'then'");
+    e = (error){ 0 };
+    CHECK(history_prune(h, &(history_prunable){ .superseded = 1 }, NULL, NULL, "2026-06-01", 0, &n, &e) == ST_OK && n == 1);
+    CHECK(!strcmp(asked(path, "SELECT count(*) FROM runs"), "3")); /* only said */
+    CHECK(history_prune(h, &(history_prunable){ .superseded = 1 }, "disk", "KL", "2026-06-01", 1, &n, &e) == ST_OK && n == 1);
+    CHECK(!strcmp(asked(path, "SELECT group_concat(fingerprint) FROM (SELECT fingerprint FROM runs ORDER BY sample)"), "f2,f1"));
+    CHECK(!strcmp(asked(path, "SELECT count(*) FROM micrographs"), "4"));
+    CHECK(!strcmp(asked(path, "SELECT criteria || rows || reason || initials FROM prunings"), "superseded; 1diskKL"));
+    CHECK(history_prune(h, &(history_prunable){ .before = "2026-03-03", .lot = "L2" }, "x", "KL", "2026-06-01", 1, &n, &e) == ST_OK && n == 0);
+    CHECK(history_prune(h, &(history_prunable){ .before = "2026-03-03", .lot = "L1", .protocol = "new" }, "x", "KL", "2026-06-01", 1, &n, &e) == ST_OK && n == 1);
+    history_close(h);
+    CHECK(history_open(path, 1, &h, &e) == ST_OK);
+    CHECK_FAILS(history_prune(h, &(history_prunable){ .lot = "L1" }, "x", "KL", "2026-06-01", 1, &n, &e), ST_IO, e, "written");
+    history_close(h);
+    CHECK(!strcmp(asked(path, "SELECT count(*) FROM runs"), "1"));
+}
+
 static void people(void) {
     error e = { 0 };
     history *h = NULL;
@@ -346,14 +468,16 @@ int main(void) {
     round_trip();
     foreign();
     odd_name();
-    for (int turn = 0; turn < 25; turn++) two_writers(1);
-    two_writers(20);
+    for (int turn = 0; turn < 12; turn++) many_writers(1);
+    many_writers(12);
     locked();
     read_only_folder();
     no_memory();
     older();
+    second();
+    origins();
     people();
-    static const char *const made[] = { "a.sqlite", "notes.txt", "other.sqlite", "app.sqlite", "newer.sqlite", "older.sqlite", "people.sqlite",
+    static const char *const made[] = { "a.sqlite", "notes.txt", "other.sqlite", "app.sqlite", "newer.sqlite", "older.sqlite", "people.sqlite", "second.sqlite", "origins.sqlite",
                                         "empty.sqlite", ":memory:" };
     for (size_t i = 0; i < sizeof made / sizeof made[0]; i++) unlink(in_folder(made[i]));
     rmdir(in_folder("sealed"));

@@ -81,6 +81,54 @@ static void intervals(void) {
     CHECK(j.verdict == VERDICT_UNDECIDED && says(&j, "varies from run to run is not known"));
 }
 
+static void rules(void) {
+    target t = target_defaults();
+    CHECK(t.rule == DECIDE_GUARD && t.error == ERROR_FULL && isnan(t.min) && fabs(t.at_least - 0.95) < 1e-12);
+    t.quantity = spacing;
+    t.min = 280.0;
+    t.max = 420.0;
+    t.rule = DECIDE_SIMPLE;
+    reading r = plain(419.0, 8.1);
+    judgement j = ask(&t, &r);
+    CHECK(j.verdict == VERDICT_CONFORMS && says(&j, "419 +- 16 nm (k = 2) lies inside 280..420 nm (simple acceptance: its uncertainty does not count)"));
+    r = plain(420.5, MISSING);
+    j = ask(&t, &r);
+    CHECK(j.verdict == VERDICT_FAILS && says(&j, "420.5 nm exceeds the limit 420 nm (simple") && isnan(j.conformance_probability));
+    r = plain(279.9, 5.0);
+    CHECK(ask(&t, &r).verdict == VERDICT_FAILS && isinf(target_settling_u(&t, 279.9)));
+
+    t.rule = DECIDE_PROBABILITY;
+    t.at_least = 0.9;
+    r = plain(410.0, 7.0); /* 10 / 7 = 1.43 sd: 0.923 */
+    j = ask(&t, &r);
+    CHECK(j.verdict == VERDICT_CONFORMS && says(&j, "(conformance probability 0.923, asked: 0.9)"));
+    CHECK_NEAR(j.conformance_probability, 0.9234, 1e-4);
+    t.at_least = 0.95;
+    j = ask(&t, &r);
+    CHECK(j.verdict == VERDICT_UNDECIDED && says(&j, "too close to the limit 420 nm to decide with this uncertainty (conformance"));
+    r.value = 440.0;
+    CHECK(ask(&t, &r).verdict == VERDICT_FAILS);
+    double u = target_settling_u(&t, 410.0); /* one limit matters: 10 nm / 1.645 */
+    CHECK_NEAR(u, 10.0 / 1.6448536, 1e-5);
+    u = target_settling_u(&t, 350.0); /* both do: 70 nm / 1.96 */
+    CHECK_NEAR(u, 70.0 / 1.9599640, 1e-4);
+    CHECK_NEAR(target_settling_u(&t, 420.0), 0.0, 1e-12);
+    t.rule = DECIDE_GUARD;
+    CHECK_NEAR(target_settling_u(&t, 410.0), 10.0 / 1.6448536, 1e-6);
+
+    target c = target_defaults(); /* a lopsided interval: half above the value, sd (0.03 - 0.019) / 1.96 */
+    c.quantity = weighted;
+    c.max = 0.02;
+    c.rule = DECIDE_PROBABILITY;
+    reading w = { 0.019, 0.002, 0.0004, 0.018, 0.03, "", 4 };
+    j = ask(&c, &w);
+    CHECK_NEAR(j.conformance_probability, 0.5706, 2e-4); /* Phi(0.001 1.96 / 0.011) */
+    CHECK(j.verdict == VERDICT_UNDECIDED);
+    w.value = 0.017; /* outside its own interval: the middle speaks */
+    CHECK_NEAR(ask(&c, &w).conformance_probability, 0.0956, 2e-4); /* Phi((0.02 - 0.024) 1.96 / 0.006) */
+    CHECK(!strcmp(decision_word(DECIDE_GUARD), "guard") && !strcmp(decision_word(DECIDE_PROBABILITY), "probability"));
+}
+
 static void missing(void) {
     target t = { .quantity = spacing, .min = 280.0, .max = 420.0, .error = ERROR_FULL };
     reading r = plain(MISSING, 3.0);
@@ -101,6 +149,7 @@ int main(void) {
     two_limits();
     open_limits();
     intervals();
+    rules();
     missing();
     verdict v[] = { VERDICT_NOT_MEASURED, VERDICT_CONFORMS, VERDICT_UNDECIDED, VERDICT_NO_TARGET };
     CHECK(verdict_worst(v, 4) == VERDICT_UNDECIDED && verdict_worst(v, 2) == VERDICT_CONFORMS);

@@ -51,7 +51,7 @@ static void steps(void) {
     CHECK(trend_welch(a, 4, b, 4, &s, &e) == ST_OK);
     CHECK_NEAR(s.difference, 41.25, 1e-12);
     CHECK(s.lo > 35.0 && s.hi < 48.0 && s.p < 1e-4 && s.effect > 8.0 && s.effect_lo < s.effect && s.effect_hi > s.effect);
-    CHECK_FAILS(trend_welch(a, 1, b, 4, &s, &e), ST_NO_RESULT, e, "at least 2 samples");
+    CHECK_FAILS(trend_welch(a, 1, b, 4, &s, &e), ST_NO_RESULT, e, "at least 2 etches");
     CHECK_FAILS(trend_welch(flat, 3, flat, 3, &s, &e), ST_NO_RESULT, e, "do not scatter");
 }
 
