@@ -1,7 +1,8 @@
 /* What was found, drawn on the micrograph, so that a look of two seconds tells whether to trust the numbers: thin cell
  * borders, one marker per feature at its sub-pixel centre (a disc where it counts for the density, an open diamond where it
  * lies in the guard frame), cells that the frame cuts veiled, the guard frame, one ring of the measured spacing around a
- * feature in the middle. The info strip stays where it was, greyed. Below: a scale bar of a round length, what the
+ * feature in the middle. Info strip and marks drawn over
+ * the specimen stay where they were, greyed. Below: a scale bar of a round length, what the
  * signs mean, and a band with the reasons when the micrograph is excluded. */
 #ifndef SWARD_REPORT_OVERLAY_H
 #define SWARD_REPORT_OVERLAY_H
@@ -19,7 +20,7 @@ typedef struct {
 } overlay_picture;           /* {0} = empty */
 void overlay_free(overlay_picture *p);
 
-/*   in   m the plane that was measured; its grey levels are stretched for display (0.2 to 99.8 % of the pixels)
+/*   in   m the plane that was measured; its grey levels are stretched for display (0.2 to 99.8 % of the pixels without marks)
  *        t what was found on it; needs t->cells for the cell borders (NULL: none are drawn)
  *   err  ST_BAD_INPUT an empty micrograph; ST_BUG t was measured on a plane of another size; ST_NO_MEMORY */
 status overlay_draw(const micrograph *m, const texture *t, overlay_picture *out, error *e);

@@ -18,11 +18,13 @@ static double histogram_level(const size_t *count, size_t n, double share) {
 }
 
 status overlay_stretch(const micrograph *m, double *low, double *span, error *e) {
-    size_t n = m->nx * m->ny;
-    float lo = m->px[0], hi = m->px[0];
+    size_t n = m->nx * m->ny, counted = 0;
+    float lo = HUGE_VALF, hi = -HUGE_VALF;
     for (size_t i = 0; i < n; i++) {
+        if (m->masked && m->masked[i]) continue; /* white letters would press the texture dark */
         lo = m->px[i] < lo ? m->px[i] : lo;
         hi = m->px[i] > hi ? m->px[i] : hi;
+        counted++;
     }
     *low = 0.0;
     *span = 1.0;
@@ -31,10 +33,11 @@ status overlay_stretch(const micrograph *m, double *low, double *span, error *e)
     if (!count) return NO_MEMORY(e, "the overlay");
     double width = (double)hi - (double)lo, factor = BINS / width;
     for (size_t i = 0; i < n; i++) {
+        if (m->masked && m->masked[i]) continue;
         double bin = ((double)m->px[i] - (double)lo) * factor;
         count[bin >= BINS ? BINS - 1 : bin > 0.0 ? (size_t)bin : 0]++;
     }
-    double from = histogram_level(count, n, 0.002), to = histogram_level(count, n, 0.998);
+    double from = histogram_level(count, counted, 0.002), to = histogram_level(count, counted, 0.998);
     if (to > from) {
         *low = (double)lo + from * width;
         *span = (to - from) * width;
@@ -55,8 +58,12 @@ static uint32_t grey_pixel(double v) {
 
 static const double veil = 0.45, veil_grey = 0.42, strip_contrast = 0.35, strip_grey = 0.28;
 
+/* What is not measured: little contrast on a middle grey. */
+static uint32_t greyed(float level) { return grey_pixel(strip_grey + strip_contrast * fmin(fmax((double)level, 0.0), 1.0)); }
+
 static void plane_row(const overlay_scene *s, size_t y, const overlay_tile *tile, uint32_t *row) {
     const float *px = s->m->px + y * s->m->nx + tile->x0;
+    const unsigned char *masked = s->m->masked ? s->m->masked + y * s->m->nx + tile->x0 : NULL;
     const uint32_t *cell = s->t->cells ? s->t->cells + y * s->m->nx + tile->x0 : NULL;
     double factor = 1.0 / s->span;
     uint32_t last = 0;
@@ -68,7 +75,7 @@ static void plane_row(const overlay_scene *s, size_t y, const overlay_tile *tile
             veiled = last && !is_whole(s->t, last);
         }
         if (veiled) v = (1.0 - veil) * fmin(fmax(v, 0.0), 1.0) + veil * veil_grey;
-        row[x] = grey_pixel(v);
+        row[x] = masked && masked[x] ? greyed(px[x]) : grey_pixel(v);
     }
 }
 
@@ -84,8 +91,7 @@ void overlay_ground(const overlay_scene *s, const overlay_tile *tile) {
         size_t r = y < above ? y : y - m->ny;
         if (r >= rows) continue;
         const float *px = m->strip + r * m->nx + tile->x0;
-        for (size_t x = 0; x < tile->nx; x++)
-            row[x] = grey_pixel(strip_grey + strip_contrast * fmin(fmax((double)px[x], 0.0), 1.0));
+        for (size_t x = 0; x < tile->nx; x++) row[x] = greyed(px[x]);
     }
 }
 

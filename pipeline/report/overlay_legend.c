@@ -60,18 +60,23 @@ static size_t list_entries(const overlay_scene *s, entry out[MOST_ENTRIES]) {
     n++;
     if (frame) {
         out[n] = (entry){ .sign = SIGN_FRAME, .length = 0.9 * em };
-        snprintf(out[n].label, sizeof out[n].label, "%zu in the guard frame, not counted", frame);
+        snprintf(out[n].label, sizeof out[n].label, "%zu in the guard frame%s, not counted", frame, m->masked ? " or at a mark" : "");
         n++;
     }
     if (s->t->cells && s->t->n_found) {
         out[n++] = (entry){ .sign = SIGN_CELL, .length = 1.4 * em, .label = "cell border" };
         if (cut) {
             out[n] = (entry){ .sign = SIGN_CUT, .length = 1.2 * em };
-            snprintf(out[n].label, sizeof out[n].label, "%zu cut by the picture's edge, no size", cut);
+            snprintf(out[n].label, sizeof out[n].label, "%zu cut by the picture's edge%s, no size", cut, m->masked ? " or a mark" : "");
             n++;
         }
     }
-    if (m->strip) out[n++] = (entry){ .sign = SIGN_STRIP, .length = 1.2 * em, .label = "info strip, not measured" };
+    if (m->strip || m->masked) {
+        out[n] = (entry){ .sign = SIGN_STRIP, .length = 1.2 * em };
+        snprintf(out[n].label, sizeof out[n].label, "%s%s%s, not measured", m->strip ? "info strip" : "",
+                 m->strip && m->masked ? " and " : "", m->masked ? "marks in the picture" : "");
+        n++;
+    }
     return n;
 }
 

@@ -37,9 +37,9 @@ typedef struct {
     size_t stride;         /* bytes */
 } overlay_tile;
 
-/* The grey levels that hold 0.2 to 99.8 % of the pixels. err ST_NO_MEMORY */
+/* The grey levels that hold 0.2 to 99.8 % of the pixels, marks left out. err ST_NO_MEMORY */
 status overlay_stretch(const micrograph *m, double *low, double *span, error *e);
-/* Micrograph and strip as grey, cells that the frame cuts veiled. Rows outside both are left alone. */
+/* Micrograph and strip as grey, cells that the frame cuts veiled, strip and marks greyed. Rows outside both are left alone. */
 void overlay_ground(const overlay_scene *s, const overlay_tile *tile);
 /* Cell borders as masks under the pen: a dark seam, then the line. err ST_NO_MEMORY */
 status overlay_borders(const overlay_scene *s, const overlay_tile *tile, pen *p, error *e);

@@ -16,12 +16,14 @@
 #include "metrics/measure.h"
 #include "metrics/spectrum.h"
 #include "metrics/watershed.h"
+#include "report/overlay.h"
 
 enum { NX = 2048, NY = 1536 };
 
 typedef struct {
     plane plane;
-    float *f, *work;
+    float *px, *f, *work;
+    texture found; /* for the overlay, measured when it is first drawn */
     uint32_t *cells;
     uint8_t *png;
     size_t png_n;
@@ -129,6 +131,25 @@ static double run_spectrum(bench *b, double angle_deg) {
 static double run_spectrum_normal(bench *b) { return run_spectrum(b, 0.0); }
 static double run_spectrum_oblique(bench *b) { return run_spectrum(b, 60.0); }
 
+/* The overlay of the field with 2000 features, drawn and encoded. */
+static double run_overlay(bench *b) {
+    if (!b->found.features) {
+        measure_options o = measure_defaults();
+        measure_plane(&b->plane, &o, &b->found, NULL);
+    }
+    micrograph m = { .px = b->px, .nx = NX, .ny = NY, .px_nm = 10.0 };
+    overlay_picture picture = { 0 };
+    uint8_t *png = NULL;
+    size_t n = 0;
+    error e = { 0 };
+    if (overlay_draw(&m, &b->found, &picture, &e) != ST_OK) puts(e.text);
+    png_format f = { picture.nx, picture.ny, 1, 8, 10.0 };
+    if (png_encode_palette(picture.index, picture.palette, &f, &png, &n, &e) != ST_OK) puts(e.text);
+    free(png);
+    overlay_free(&picture);
+    return (double)n;
+}
+
 static int prepare(bench *b, rendering *r) {
     render_options o = render_defaults();
     protocol p = { 0 };
@@ -157,6 +178,7 @@ static int prepare(bench *b, rendering *r) {
     for (size_t i = 0; i < nx * ny; i++) b->padded[i] = (float)(i % 97) / 97.0f;
     for (size_t i = 0; i < (size_t)NX * NY; i++) px[i] = (float)((const uint8_t *)r->samples)[i] / 255.0f;
     for (size_t i = 0; i < 901; i++) b->nm[i] = 300.0 + (double)i;
+    b->px = px;
     b->plane = (plane){ px, NX, NY, 8, 0.0, 0.0, NULL };
     png_format f = { NX, NY, 1, 8, 10.0 };
     return png_encode(r->samples, &f, &b->png, &b->png_n, &e) == ST_OK;
@@ -174,6 +196,7 @@ int main(void) {
     timed("detect", run_detect, &b);
     timed("detect_and_cells", run_detect_and_cells, &b);
     timed("measure_plane", run_measure, &b);
+    timed("overlay_png_2048x1536", run_overlay, &b);
     timed("spectrum_901_normal", run_spectrum_normal, &b);
     timed("spectrum_901_60deg", run_spectrum_oblique, &b);
     return 0; /* what the process holds ends with it */

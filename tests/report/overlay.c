@@ -173,10 +173,28 @@ static void check_strip(scene *s) {
     area_of(&d, is_counted, 70, 92, 90, 112, &x, &y);
     CHECK_NEAR(y, 102.0, 0.05);
     s->m.strip = NULL;
+    s->m.strip_rows = s->m.strip_top = 0;
     without = draw(s);
     CHECK(!memcmp(without.rgb, at(&d, 0, 2), (size_t)NX * NY * 3)); /* the plane itself is drawn as ever */
     drawn_free(&d);
     drawn_free(&without);
+}
+
+/* White letters over the specimen are greyed, and the texture keeps its contrast. */
+static void check_masked(scene *s) {
+    unsigned char *masked = mem_array((size_t)NX * NY, 1);
+    scene_make(s, 0.3f);
+    for (size_t i = 0; i < (size_t)NX * NY; i++) s->px[i] = i % 2 ? 0.2f : 0.3f;
+    for (size_t i = 0; masked && i < 40u * NX; i++) { /* a sixth of the picture, white */
+        masked[i] = 1;
+        s->px[i] = 1.0f;
+    }
+    s->m.masked = masked;
+    drawn d = draw(s);
+    const uint8_t *mark = at(&d, 20, 20), *dark = at(&d, 21, 200), *light = at(&d, 20, 200);
+    CHECK(mark[0] == mark[2] && mark[0] > 130 && mark[0] < 190 && dark[0] < 10 && light[0] > 245);
+    drawn_free(&d);
+    free(masked);
 }
 
 /* Legible on any ground: the marker's brightness differs from the grey around it, or its rim does. */
@@ -290,6 +308,7 @@ int main(void) {
     check_ring(s);
     check_bar(s);
     check_strip(s);
+    check_masked(s);
     check_grounds(s);
     check_reasons(s);
     check_tiles();
