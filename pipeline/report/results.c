@@ -13,6 +13,7 @@
 #include "io/file.h"
 #include "io/json.h"
 #include "report/package.h"
+#include "report/schema.h"
 
 static const char *sample_extra_cell(const void *row, size_t k) {
     const sample_row *s = row;
@@ -202,16 +203,17 @@ static status save(const char *dir, const char *name, const textbuf *t, error *e
 }
 
 status results_write(const results *r, const char *out_dir, error *e) {
-    textbuf body[5] = { 0 };
-    static const char *const name[5] = { "images.csv", "samples.csv", "spectra.csv", "results.json",
-                                         "datapackage.json" };
+    enum { FILES = 6 };
+    textbuf body[FILES] = { 0 };
+    static const char *const name[FILES] = { "images.csv", "samples.csv", "spectra.csv", "results.json", "results.schema.json", "datapackage.json" };
     images_csv(r, &body[0]);
     samples_csv(r, &body[1]);
     spectra_csv(r, &body[2]);
     results_json(r, &body[3]);
-    package_json(r, out_dir, &body[4]);
+    schema_json(r, &body[4]);
+    package_json(r, out_dir, &body[5]);
     status st = ST_OK;
-    for (size_t i = 0; i < 5 && !st; i++) st = save(out_dir, name[i], &body[i], e);
-    for (size_t i = 0; i < 5; i++) text_free(&body[i]);
+    for (size_t i = 0; i < FILES && !st; i++) st = save(out_dir, name[i], &body[i], e);
+    for (size_t i = 0; i < FILES; i++) text_free(&body[i]);
     return st;
 }

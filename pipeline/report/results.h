@@ -34,7 +34,7 @@ typedef struct {
                                        none was written; may be NULL: then the stems of overlay_paths */
 } results;
 
-/* images.csv, samples.csv, spectra.csv, results.json and datapackage.json, each written atomically, the package (which
+/* images.csv, samples.csv, spectra.csv, results.json with its schema and datapackage.json, each written atomically, the package (which
  * marks the folder as output) last.
  *   in   out_dir exists; features/ and profiles/ of this run are already in it: the package lists what is there
  *   err  ST_IO a file cannot be written; ST_NO_MEMORY */
