@@ -51,6 +51,8 @@ void page_range(textbuf *out, const results *r, size_t k);
 void page_reason(textbuf *out, const results *r, size_t sample, size_t target, const char *word);
 /* The further members of a row in results.json as an object, which the caller deletes; NULL where there are none. */
 struct cJSON *page_members(const char *json);
+/* The judgement of a quantity in those members, or NULL. */
+const struct cJSON *page_judgement(const struct cJSON *sample, const char *name);
 
 /* A flag as a person writes it: "no pixel size". */
 void page_flag_name(textbuf *out, int bit);

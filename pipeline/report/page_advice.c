@@ -62,32 +62,19 @@ static void advise_pictures(const results *r, size_t *n, textbuf *out) {
     if (more) text_addf(out, "<li>%zu more micrographs were not used; their cards below say what helps.</li>\n", more);
 }
 
-/* The budget's own answer to "would more micrographs decide it?" */
-static const char *what_narrows(const results *r, size_t sample, const char *quantity) {
-    cJSON *o = page_members(r->sample_json ? r->sample_json[sample] : NULL);
-    const cJSON *budget = cJSON_GetObjectItemCaseSensitive(o, "budget");
-    const char *name = !strcmp(quantity, "spacing_nm") ? "spacing_acf_nm" : quantity;
-    const cJSON *q = cJSON_GetObjectItemCaseSensitive(budget, name);
-    const cJSON *sampling = cJSON_GetObjectItemCaseSensitive(q, "sampling"), *all = cJSON_GetObjectItemCaseSensitive(q, "combined");
-    const char *answer = NULL;
-    if (!strcmp(quantity, "weighted_reflectance"))
-        answer = "its interval is the model's and the height's: measure the height in a cross-section, or the reflectance itself";
-    else if (cJSON_IsNumber(sampling) && cJSON_IsNumber(all))
-        answer = sampling->valuedouble * sampling->valuedouble > 0.5 * all->valuedouble * all->valuedouble
-                     ? "take more micrographs: most of its uncertainty is sampling"
-                     : "more micrographs will not decide it, method and pixel size rule its uncertainty; to compare like with like "
-                       "set \"error\": \"repeat\" in the target";
-    cJSON_Delete(o);
-    return answer;
-}
-
-/* What would decide target k of sample i, or NULL where it is decided. */
-static const char *open_question(const results *r, size_t i, size_t k) {
+/* What would decide target k of sample i, as its judgement says; NULL where it is decided. The caller frees it. */
+static char *open_question(const results *r, size_t i, size_t k, textbuf *out) {
     textbuf name = { 0 };
     text_addf(&name, "verdict_%s", r->target_quantity[k]);
     const char *word = name.failed ? NULL : page_extra(r, &r->samples[i], name.s);
-    const char *answer = word && !strcmp(word, "undecided") ? what_narrows(r, i, r->target_quantity[k]) : NULL;
+    int is_open = word && !strcmp(word, "undecided");
     text_free(&name);
+    if (!is_open) return NULL;
+    cJSON *o = page_members(r->sample_json ? r->sample_json[i] : NULL);
+    const cJSON *advice = cJSON_GetObjectItemCaseSensitive(page_judgement(o, r->target_quantity[k]), "advice");
+    char *answer = mem_text(cJSON_IsString(advice) && *advice->valuestring ? advice->valuestring : "its uncertainty reaches over the limit");
+    if (!answer) out->failed = 1;
+    cJSON_Delete(o);
     return answer;
 }
 
@@ -100,18 +87,19 @@ static void add_link(const results *r, size_t i, textbuf *out) {
 /* One line a sample while they are few; samples with the same open question share a line beyond that. */
 static void advise_target(const results *r, size_t k, size_t *n, textbuf *out) {
     enum { EACH = 3, NAMED = 6 };
-    const char **answers = mem_array(r->n_samples, sizeof *answers);
+    char **answers = mem_array(r->n_samples, sizeof *answers);
     if (!answers) {
         out->failed = 1;
         return;
     }
-    for (size_t i = 0; i < r->n_samples; i++) answers[i] = open_question(r, i, k);
+    for (size_t i = 0; i < r->n_samples; i++) answers[i] = open_question(r, i, k, out);
     for (size_t i = 0; i < r->n_samples; i++) {
         size_t same = 0, told = 0;
-        const char *answer = answers[i];
+        char *answer = answers[i];
         for (size_t q = i; answer && q < r->n_samples; q++) same += answers[q] && !strcmp(answers[q], answer);
         for (size_t q = i; same && q < r->n_samples; q++) {
             if (!answers[q] || strcmp(answers[q], answer)) continue;
+            if (q != i) free(answers[q]);
             answers[q] = NULL;
             if (same > EACH && told >= NAMED) continue;
             if (same <= EACH || !told) text_add(out, "<li>");
@@ -126,6 +114,7 @@ static void advise_target(const results *r, size_t k, size_t *n, textbuf *out) {
         if (same > NAMED) text_addf(out, " and %zu more", same - NAMED);
         if (same > EACH) text_addf(out, " are undecided on %s, not clear of its limits: %s.</li>\n", page_quantity(r->target_quantity[k]), answer);
         *n += same > EACH ? 1 : same;
+        free(answer);
     }
     free(answers);
 }

@@ -19,6 +19,15 @@ cJSON *page_members(const char *json) {
     return o;
 }
 
+const cJSON *page_judgement(const cJSON *sample, const char *name) {
+    const cJSON *one;
+    cJSON_ArrayForEach(one, member(sample, "judgements")) {
+        const cJSON *of = member(one, "quantity");
+        if (cJSON_IsString(of) && !strcmp(of->valuestring, name)) return one;
+    }
+    return NULL;
+}
+
 static void number_cell(textbuf *out, const cJSON *v, int percent) {
     char number[NUMBER_TEXT];
     text_add(out, "<td class=\"n\">");

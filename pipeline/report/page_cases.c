@@ -1,5 +1,6 @@
 /* One block for every sample that misses a target: by how much, why that is believed, where else it shows, and what to look at
  * first, from the figures of the run alone. What this file does not do: it proposes no change of the etch; a person decides. */
+#include <cjson/cJSON.h>
 #include <math.h>
 #include <string.h>
 
@@ -56,7 +57,18 @@ static void add_second_opinion(const results *r, const page_miss *m, const sampl
     text_add(out, agrees ? ": outside as well." : ", which is inside: look at its micrographs before anything else.");
 }
 
-static void add_belief(const results *r, const page_miss *m, const sample_row *s, textbuf *out) {
+/* JCGM 106: how probable it is, with that value and uncertainty, that the quantity lies in its target. */
+static void add_probability(const results *r, const page_miss *m, size_t sample, textbuf *out) {
+    char text[NUMBER_TEXT];
+    cJSON *o = page_members(r->sample_json ? r->sample_json[sample] : NULL);
+    const cJSON *p = cJSON_GetObjectItemCaseSensitive(page_judgement(o, r->target_quantity[m->target]), "conformance_probability");
+    if (cJSON_IsNumber(p) && p->valuedouble < 1e-4) text_add(out, " The probability that it conforms all the same is below 0.01 %.");
+    else if (cJSON_IsNumber(p)) text_addf(out, " The probability that it conforms all the same is %s %%.", number_percent(p->valuedouble, 2, text));
+    cJSON_Delete(o);
+}
+
+static void add_belief(const results *r, const page_miss *m, size_t sample, textbuf *out) {
+    const sample_row *s = &r->samples[sample];
     const char *name = r->target_quantity[m->target];
     double U = 0.5 * (m->hi - m->lo);
     add_term(out, "Why it is believed");
@@ -64,7 +76,9 @@ static void add_belief(const results *r, const page_miss *m, const sample_row *s
     add_amount(out, name, m->lo, U);
     text_add(out, " to ");
     add_amount(out, name, m->hi, U);
-    text_addf(out, ", lies outside the target. %ld of %ld micrographs %s used.", s->n_used, s->n_images, s->n_images == 1 ? "was" : "were");
+    text_add(out, ", lies outside the target.");
+    add_probability(r, m, sample, out);
+    text_addf(out, " %ld of %ld micrographs %s used.", s->n_used, s->n_images, s->n_images == 1 ? "was" : "were");
     add_second_opinion(r, m, s, out);
     text_add(out, "</dd>\n");
 }
@@ -124,7 +138,7 @@ static void add_case(const results *r, size_t i, textbuf *out) {
         page_range(out, r, k);
         text_add(out, "</h2>\n<dl>\n");
         add_distance(r, &m, out);
-        add_belief(r, &m, s, out);
+        add_belief(r, &m, i, out);
         add_neighbours(r, &m, s, out);
         add_steps(r, s, out);
         text_add(out, "</dl></article>\n");

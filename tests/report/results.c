@@ -161,8 +161,8 @@ static void check_files(demo *d) {
     cJSON_Delete(package);
     free(text);
     static const char *const names[] = { "images.csv", "samples.csv", "spectra.csv", "results.json",
-                                         "datapackage.json" };
-    for (size_t i = 0; i < 5; i++) {
+                                         "results.schema.json", "datapackage.json" };
+    for (size_t i = 0; i < 6; i++) {
         char *path = path_join(dir, names[i]);
         CHECK(path && file_exists(path) && remove(path) == 0);
         free(path);
