@@ -49,6 +49,7 @@ static status one_angle(const surface_input *in, const optics_setup *set, angle_
     for (int i = 0; i < 3 && st == ST_OK; i++) {
         prediction p = { 0 };
         o.reflect.polarization = which[i];
+        o.plain = i > 0; /* the interval is that of the mean */
         st = predict(in, &o, &p, e);
         if (st != ST_OK) break;
         *values[i] = p.weighted;

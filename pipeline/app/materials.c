@@ -272,9 +272,22 @@ done:
     return st;
 }
 
+/* Reflectance in an absorbing medium has no meaning of its own; a trace, as tables of clear media hold, does no harm. */
+static status clear_enough(const protocol *p, const material *m, error *e) {
+    char k[NUMBER_TEXT];
+    for (size_t i = 0; i < m->n; i++) {
+        int counts = m->n == 1 || (m->wavelength_nm[i] >= p->band_lo_nm && m->wavelength_nm[i] <= p->band_hi_nm);
+        if (counts && m->index_k[i] > 1e-3)
+            return fail(e, ST_BAD_INPUT, "the ambient %s absorbs (k = %s): light cannot come from far away in it; take a clear medium",
+                        m->name, number_text(m->index_k[i], 3, k));
+    }
+    return ST_OK;
+}
+
 static status load_all(const protocol *p, setup *s, error *e) {
     int laminated = strcmp(p->ambient, "laminate") == 0;
     status st = material_load(laminated ? "air" : p->ambient, &s->ambient, e);
+    if (st == ST_OK) st = clear_enough(p, &s->ambient, e);
     if (st == ST_OK) st = material_load("air", &s->air, e);
     if (st == ST_OK) st = material_load(p->substrate, &s->substrate, e);
     if (st == ST_OK) st = material_load("nitride", &s->nitride, e);

@@ -3,6 +3,7 @@
 
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
 #include "base/quantity.h"
 
@@ -76,6 +77,9 @@ status given_apply(const given_options *g, int known, protocol *p, error *e) {
     if (given_has(g, OPT_TIP_RADIUS) && !given_has(g, OPT_FLAT_TOP)) p->link.flat_top = 0.0;
     if (given_has(g, OPT_FLAT_TOP) && !given_has(g, OPT_TIP_RADIUS)) p->link.tip_radius_nm = 0.0;
     if (known) p->link.shape_open = 0;
+    for (size_t i = 0; i < g->n; i++)
+        if (g->item[i].option == OPT_BAND && !strchr(g->item[i].text, ':'))
+            return fail(e, ST_BAD_INPUT, "--band: found %.40s, expected LO:HI in nm, such as 300:1200", g->item[i].text);
     for (size_t i = 0; i < g->n; i++)
         for (size_t k = 0; k < N_SETS; k++) {
             if (sets[k].option != g->item[i].option) continue;

@@ -1,4 +1,4 @@
-/* The process window: one prediction per cell on a 10 nm grid, the contour by straight lines between cells. Heights are
+/* The process window: one prediction per cell on a 10 nm grid to 1e-4, the contour by straight lines between cells. Heights are
  * taken as known; what a cell's interval holds is the model's error and, where the protocol says so, the shape's. */
 #include "app/window.h"
 
@@ -14,7 +14,7 @@
 #include "io/file.h"
 #include "io/table.h"
 
-static const double GRID_NM = 10.0;
+static const double GRID_NM = 10.0, TOLERANCE = 1e-4;
 
 void window_free(window *w) {
     for (size_t i = 0; i < w->n_samples; i++) {
@@ -86,6 +86,7 @@ static status fill_cell(window *w, size_t row, size_t column, const surface_inpu
     if (w->across == ACROSS_THICKNESS) layers[0].thickness_nm = x;
     o.coatings = layers;
     o.step_nm = fmax(o.step_nm, GRID_NM);
+    o.reflect.tolerance = fmax(o.reflect.tolerance, TOLERANCE);
     status st = predict(&in, &o, &p, e);
     if (st != ST_OK) return st;
     *c = (window_cell){ p.weighted, p.weighted_lo, p.weighted_hi, p.area_ratio };

@@ -274,7 +274,7 @@ status predict(const surface_input *in, const optics_setup *o, prediction *out, 
     } else {
         if (st == ST_OK) st = central(in, o, &v, &fine, &p, e);
         if (st == ST_OK && planar) exact(&p);
-        else if (st == ST_OK) st = interval_fill(in, o, &v, &coarse, &p, NULL, e);
+        else if (st == ST_OK && !o->plain) st = interval_fill(in, o, &v, &coarse, &p, NULL, e);
     }
     if (st == ST_OK && !p.refused) st = rear_add(in, o, &v, &fine, r.facets, &p, e);
     if (st == ST_OK) {

@@ -21,6 +21,7 @@ typedef struct {
     const sun *sun;
     double band_lo_nm, band_hi_nm; /* 300..1200 */
     double step_nm;                /* grid of the spectrum, 1 */
+    int plain;                     /* 1: no interval is wanted, for speed; lo and hi stay NAN */
     optics_choice model;           /* auto: graded inside its validity, else facets where steep enough, else refused */
     rear_side rear;                /* thickness 0: front surface only */
     double facet_angle_deg;        /* of the facets; not above 0: from height and spacing (optics/facets.h) */

@@ -29,19 +29,33 @@ typedef struct {
 
 static double all_films(const texture_model *m) { return m->film_nm[m->n_films]; }
 
+/* Flat tops of unequal features: a class stands for heights all over its width, so its step is a ramp. */
+static double ramp(double beyond_nm, double width_nm) {
+    return width_nm > 0.0 ? fmin(1.0, fmax(0.0, 0.5 - beyond_nm / width_nm)) : beyond_nm >= 0.0 ? 0.0 : 1.0;
+}
+static double ramped_hillock(const solid *f, double film_nm, double width_nm, double y_nm) {
+    double top = f->height_nm + film_nm;
+    return coated_share(f, film_nm, fmin(y_nm, top * (1.0 - 1e-9))) * ramp(y_nm - top, width_nm);
+}
+static double ramped_pore(const solid *f, double film_nm, double width_nm, double x_nm) {
+    double bottom = f->height_nm - film_nm;
+    return 1.0 - (1.0 - coated_pore_share(f, film_nm, fmin(x_nm, bottom * (1.0 - 1e-9)))) * ramp(x_nm - bottom, width_nm);
+}
+
 /* Share covered by the feature with the first k films at a depth below the highest point; eps shifts the level off a
  * step towards the bottom. */
 static double covered(const texture_model *m, size_t k, double depth_nm, double eps_nm) {
-    double sum = 0.0, top = all_films(m), deep = m->heights->tallest_nm;
+    double sum = 0.0, top = all_films(m), deep = m->heights->tallest_nm, film = m->film_nm[k], width = m->heights->width_nm;
+    int ramps = m->o->flat_top > 0.0 && !m->o->level_at_tips && width > 0.0;
     for (size_t i = 0; i < m->heights->n; i++) {
         const solid *f = &m->feature[i];
         double share;
         if (m->pores) {
             double x = depth_nm + eps_nm - top - (m->o->level_at_tips ? deep - f->height_nm : 0.0);
-            share = coated_pore_share(f, m->film_nm[k], x);
+            share = ramps && film < f->height_nm ? ramped_pore(f, film, width, x) : coated_pore_share(f, film, x);
         } else {
             double y = (m->o->level_at_tips ? f->height_nm : deep) + top - depth_nm - eps_nm;
-            share = coated_share(f, m->film_nm[k], y);
+            share = ramps ? ramped_hillock(f, film, width, y) : coated_share(f, film, y);
         }
         sum += m->heights->weight[i] * share;
     }

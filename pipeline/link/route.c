@@ -158,7 +158,7 @@ status facets_fill(const surface_input *in, const optics_setup *o, const route *
     w.down2 = block + 2 * g->n;
     status st = evaluate(&w, r->angle_deg, BOUNCES_ALL, out->R, &out->weighted, e);
     if (st == ST_OK) st = current_of(o, g, out->R, &out->current_loss_mA_cm2, e);
-    if (st == ST_OK && r->beyond > 0.5) {
+    if (st == ST_OK && r->beyond > 0.5 && !o->plain) {
         st = add_ends(&w, in, r, out, e);
         for (size_t i = 0; i < g->n && st == ST_OK; i++) {
             out->R_lo[i] = fmax(0.0, out->R[i] - sqrt(w.down2[i]));

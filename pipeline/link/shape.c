@@ -233,6 +233,7 @@ static void combine(const spectrum_of_heights *a, const spectrum_of_heights *b, 
             moment[k] += w * at;
         }
     out->n = 0;
+    out->width_nm = high > low ? step : 0.0;
     for (size_t k = 0; k < bins; k++) {
         if (!(weight[k] > 0.0)) continue;
         out->height_nm[out->n] = moment[k] / weight[k];
@@ -252,6 +253,7 @@ status heights_make(double height_nm, const double *cell_area_nm2, size_t n_cell
     combine(&cells, &spread, bins, out);
     double sum = 0.0;
     for (size_t i = 0; i < out->n; i++) sum += out->weight[i];
+    out->width_nm *= height_nm;
     for (size_t i = 0; i < out->n; i++) {
         out->weight[i] /= sum;
         out->height_nm[i] *= height_nm;

@@ -8,7 +8,7 @@ enum { HEIGHT_CLASSES = 129, HEIGHT_CLASSES_FILM = 33 };
 typedef struct {
     size_t n;
     double height_nm[HEIGHT_CLASSES], weight[HEIGHT_CLASSES]; /* weights sum to 1 */
-    double tallest_nm;
+    double tallest_nm, width_nm; /* width of a class; 0: one height */
 } height_classes;
 
 #define EXPONENT_MIN 0.05

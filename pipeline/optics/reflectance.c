@@ -17,7 +17,8 @@
 
 enum {
     DIFFUSE_ANGLES = 16,
-    MAX_CHANNELS = 2 * DIFFUSE_ANGLES,
+    GROUP_ANGLES = 20, /* of reflectance_angles, at once */
+    MAX_CHANNELS = 2 * GROUP_ANGLES,
     LEVELS = 16 /* 1 << 15 is LIMIT_SLABS */
 };
 
@@ -92,6 +93,16 @@ static void choose_channels(block *b, const reflect_options *o) {
             if (!wanted) continue;
             b->sine[b->n_channels] = sin(angle[i]);
             b->weight[b->n_channels] = both ? 0.5 * weight[i] : weight[i];
+            b->channel[b->n_channels++].p_polarized = p;
+        }
+}
+
+/* s and p of each angle, apart. */
+static void list_channels(block *b, const double *angle_deg, size_t n) {
+    b->n_channels = 0;
+    for (size_t i = 0; i < n; i++)
+        for (int p = 0; p < 2; p++) {
+            b->sine[b->n_channels] = sin(angle_deg[i] * PI / 180.0);
             b->channel[b->n_channels++].p_polarized = p;
         }
 }
@@ -226,22 +237,28 @@ static void add_front(block *b) {
         }
 }
 
-static status solve_block(block *b, refinement *ref, const reflect_options *o, const double *wavelength_nm,
-                          double *R, int *settled, error *e) {
+/* Leaves R of every channel in its R[0]. */
+static status solve_block(block *b, refinement *ref, double tolerance, const double *wavelength_nm, int *settled, error *e) {
     status st = load_block(b, b->stack, wavelength_nm, e);
     if (st) return st;
     if (textured(b->stack))
-        st = graded(b, ref, o->tolerance, settled, e);
+        st = graded(b, ref, tolerance, settled, e);
     else
         planar(b);
-    if (st) return st;
-    if (b->stack->front.glass) add_front(b);
+    if (!st && b->stack->front.glass) add_front(b);
+    return st;
+}
+
+static void add_up(const block *b, double *R) {
     for (size_t i = 0; i < b->n; i++) {
         double sum = 0.0;
         for (size_t c = 0; c < b->n_channels; c++) sum += b->weight[c] * b->channel[c].R[0][i];
         R[i] = sum;
     }
-    return ST_OK;
+}
+
+static status not_settled(const refinement *ref, error *e) {
+    return fail(e, ST_NO_RESULT, "the reflectance of the texture has not settled with %zu slabs", ref->finest);
 }
 
 status reflectance(const stack *s, const reflect_options *o, const double *wavelength_nm, size_t n, double *R,
@@ -256,13 +273,42 @@ status reflectance(const stack *s, const reflect_options *o, const double *wavel
     choose_channels(b, o);
     for (size_t from = 0; from < n && !st; from += LANES) {
         b->n = n - from < LANES ? n - from : LANES;
-        st = solve_block(b, &ref, o, wavelength_nm + from, R + from, &settled, e);
+        st = solve_block(b, &ref, o->tolerance, wavelength_nm + from, &settled, e);
+        if (!st) add_up(b, R + from);
     }
-    if (!st && !settled)
-        st = fail(e, ST_NO_RESULT, "the reflectance of the texture has not settled with %zu slabs",
-                  ref.finest);
+    if (!st && !settled) st = not_settled(&ref, e);
     for (int level = 0; level < ref.made; level++) slabs_free(&ref.level[level]);
     if (slabs_used) *slabs_used = ref.finest;
+    free(b);
+    return st;
+}
+
+status reflectance_angles(const stack *s, const double *angle_deg, size_t n_angles, double tolerance,
+                          const double *wavelength_nm, size_t n, double *Rs, double *Rp, error *e) {
+    refinement ref = { .made = 0 };
+    int settled = 1;
+    status st = ST_OK;
+    for (size_t a = 0; a < n_angles && !st; a++) {
+        reflect_options o = { .angle_deg = angle_deg[a], .tolerance = tolerance };
+        st = check(s, &o, e);
+    }
+    block *b = st ? NULL : mem_array(1, sizeof *b);
+    if (!st && !b) st = NO_MEMORY(e, "reflectance spectra");
+    if (b) b->stack = s;
+    for (size_t first = 0; first < n_angles && !st; first += GROUP_ANGLES) {
+        size_t angles = n_angles - first < GROUP_ANGLES ? n_angles - first : GROUP_ANGLES;
+        list_channels(b, angle_deg + first, angles);
+        for (size_t from = 0; from < n && !st; from += LANES) {
+            b->n = n - from < LANES ? n - from : LANES;
+            st = solve_block(b, &ref, tolerance, wavelength_nm + from, &settled, e);
+            for (size_t c = 0; c < b->n_channels && !st; c++) {
+                double *R = c % 2 ? Rp : Rs;
+                memcpy(R + (first + c / 2) * n + from, b->channel[c].R[0], b->n * sizeof *R);
+            }
+        }
+    }
+    if (!st && !settled) st = not_settled(&ref, e);
+    for (int level = 0; level < ref.made; level++) slabs_free(&ref.level[level]);
     free(b);
     return st;
 }

@@ -23,4 +23,11 @@ reflect_options reflect_defaults(void); /* normal, mean, 1e-6 */
 status reflectance(const stack *s, const reflect_options *o, const double *wavelength_nm, size_t n, double *R,
                    size_t *slabs_used, error *e);
 
+/* s and p at several angles at once: they share the mixing, so that it costs a third of single calls.
+ *   in   angle_deg[n_angles] as above
+ *   out  Rs, Rp [n_angles * n], one angle after the other
+ *   err  as reflectance() */
+status reflectance_angles(const stack *s, const double *angle_deg, size_t n_angles, double tolerance,
+                          const double *wavelength_nm, size_t n, double *Rs, double *Rp, error *e);
+
 #endif

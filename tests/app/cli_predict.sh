@@ -197,6 +197,10 @@ says "$err" '--coating: found "alumina", expected MATERIAL:NM'
 run 2 predict --spacing 350 --height 300 --coating alumna:10
 says "$err" "unknown material 'alumna', did you mean 'alumina'?"
 run 2 predict --spacing 350 --height 300 --band 1200:300
+run 2 predict --spacing 350 --height 300 --band 300-1200
+says "$err" "--band: found 300-1200, expected LO:HI in nm"
+run 2 predict --spacing 350 --height 300 --ambient 1.33+0.1i
+says "$err" "light cannot come from far away in it"
 run 2 predict --spacing 350 --height 300 --band 200:1200
 says "$err" "200"
 run 2 predict --spacing 350 --height 300 --angle 90

@@ -140,7 +140,10 @@ static void survives_no_memory(void) {
     protocol p = { 0 };
     error e = { ST_OK, "" };
     CHECK(protocol_defaults(&p, &e) == ST_OK);
+    setup absorbing = { 0 };
     CHECK(protocol_set(&p, "optics", "ambient", "2.1+0.1i", "--ambient", &e) == ST_OK);
+    CHECK_FAILS(setup_make(&p, &absorbing, &e), ST_BAD_INPUT, e, "light cannot come from far away in it");
+    CHECK(protocol_set(&p, "optics", "ambient", "2.1", "--ambient", &e) == ST_OK);
     CHECK(protocol_set(&p, "link", "profile", file("p.csv", "depth_nm,solid_fraction\n0,0\n9,1\n"),
                        "--profile", &e) == ST_OK);
     for (size_t n = 1; n < 40000 && st != ST_OK; n += n < 40 ? 1 : 97) {

@@ -150,6 +150,21 @@ static double run_overlay(bench *b) {
     return (double)n;
 }
 
+static double run_sweep(bench *b) { /* 0 to 85.5 degrees in 19 steps, s and p */
+    link_options link = link_defaults();
+    profile p = { 0 };
+    double sum = 0.0;
+    link_profile(300.0, 300.0, NULL, 0, 0, &link, NULL, 0, &p, NULL);
+    const optics_setup *o = &b->set.optics;
+    stack s = { .ambient = o->ambient, .profile = &p, .substrate = o->substrate, .mixing = MIX_BRUGGEMAN_2D };
+    double angle[19], *R = mem_array(2 * 19 * 901, sizeof *R);
+    for (int i = 0; i < 19; i++) angle[i] = 4.75 * i;
+    if (R && reflectance_angles(&s, angle, 19, reflect_defaults().tolerance, b->nm, 901, R, R + 19 * 901, NULL) == ST_OK) sum = R[300];
+    free(R);
+    profile_free(&p);
+    return sum;
+}
+
 static int prepare(bench *b, rendering *r) {
     render_options o = render_defaults();
     protocol p = { 0 };
@@ -199,5 +214,6 @@ int main(void) {
     timed("overlay_png_2048x1536", run_overlay, &b);
     timed("spectrum_901_normal", run_spectrum_normal, &b);
     timed("spectrum_901_60deg", run_spectrum_oblique, &b);
+    timed("spectrum_901_19_angles_s_and_p", run_sweep, &b);
     return 0; /* what the process holds ends with it */
 }

@@ -1,6 +1,6 @@
 #!/bin/sh
 # Benchmarks: builds a release variant and prints JSON lines. With an older commit as argument, builds that too and runs
-# the two in turn, so that the ratios hold on a noisy machine.
+# the two in turn, so that the ratios hold on a noisy machine. Without one, the spectrum is timed beside a plain numpy recursion too.
 #   ./tests/bench/run.sh [COMMIT]
 set -eu
 home=$(cd "$(dirname "$0")/../.." && pwd)
@@ -17,7 +17,14 @@ make_bench "$home" "$home/build/bench"
 if [ $# -eq 0 ]; then
     cmake --build "$home/build/bench" --target sward_bench_ledger >/dev/null || sward_die "the benchmark of the ledger does not build"
     "$home/build/bench/tests/sward_bench_ledger"
-    exec "$home/build/bench/tests/sward_bench"
+    "$home/build/bench/tests/sward_bench"
+    # The same spectrum by a plain recursion in numpy, where that is installed; never fetched for it.
+    for python in python3 /usr/bin/python3; do
+        "$python" -c 'import numpy' 2>/dev/null || continue
+        exec "$python" "$home/tests/bench/recursion.py" "$SWARD_MATERIALS"
+    done
+    echo "numpy is not installed: no recursion to compare with" >&2
+    exit 0
 fi
 old="$home/build/bench-old"
 git -C "$home" worktree prune

@@ -118,6 +118,13 @@ static void trade(void) {
         coat.thickness_nm = 60 + 5 * i;
         CHECK_SOURCE(weighted(&coated, 0, 300, 1200, 1), thickness[i], 6e-6, "F-08");
     }
+    double last = 1.0; /* F-27: nearer to the optimum is darker, never below 0 */
+    for (double nm = 0.0; nm <= 75.0; nm += 5.0) {
+        coat.thickness_nm = nm;
+        double R = weighted(&coated, 0, 300, 1200, 5);
+        CHECK(R > 0.0 && R < last);
+        last = R;
+    }
     coat.thickness_nm = 75;
     CHECK_SOURCE(weighted(&bare, 0, 300, 1000, 1), 0.35780, 6e-6, "polished, 300-1000 nm");
     double window = weighted(&bare, 0, 300, 1200, 1), coated_window = weighted(&coated, 0, 300, 1200, 1);

@@ -69,6 +69,39 @@ static void hemisphere(void) {
 }
 
 /* Steps at both ends: a texture that is one even film equals that film. */
+/* Many angles at once: the same values as one by one, in more than one group, planar and through glass too. */
+static void many_angles(void) {
+    enum { ANGLES = 23, N = 70 };
+    double angle[ANGLES], nm[N], Rs[ANGLES * N], Rp[ANGLES * N], one[N];
+    error e = { 0 };
+    profile p = data_profile(300, 301, data_power, &cone);
+    for (int i = 0; i < ANGLES; i++) angle[i] = 4.0 * i + (i == ANGLES - 1 ? 1.5 : 0.0);
+    for (int i = 0; i < N; i++) nm[i] = 400 + 9.0 * i;
+    for (int kind = 0; kind < 3; kind++) {
+        stack s = { .ambient = &air, .substrate = &si, .profile = kind ? &p : NULL };
+        if (kind == 2) s.front = (laminate){ &glass, 3.2, &eva, 0.45 };
+        CHECK(reflectance_angles(&s, angle, ANGLES, 1e-6, nm, N, Rs, Rp, &e) == ST_OK);
+        for (int a = 0; a < ANGLES; a += 2)
+            for (int pol = POL_S; pol <= POL_P; pol++) {
+                reflect_options o = reflect_defaults();
+                o.angle_deg = angle[a];
+                o.polarization = (polarization)pol;
+                CHECK(reflectance(&s, &o, nm, N, one, NULL, &e) == ST_OK);
+                for (int i = 0; i < N; i++) CHECK_NEAR((pol == POL_S ? Rs : Rp)[a * N + i], one[i], 3e-6);
+            }
+    }
+    angle[3] = 90.0;
+    stack s = { .ambient = &air, .substrate = &si, .profile = &p };
+    CHECK_FAILS(reflectance_angles(&s, angle, ANGLES, 1e-6, nm, N, Rs, Rp, &e), ST_BAD_INPUT, e, "0 to below 90");
+    angle[3] = 12.0;
+    for (size_t i = 1; i <= 3; i++) {
+        mem_fail_after(i);
+        CHECK_FAILS(reflectance_angles(&s, angle, ANGLES, 1e-6, nm, N, Rs, Rp, &e), ST_NO_MEMORY, e, "memory");
+    }
+    mem_fail_after(0);
+    profile_free(&p);
+}
+
 static void steps(void) {
     double z[] = { 0, 0, 90, 90, 90 }, f[] = { 0, 0.4, 0.4, 0.7, 0.7 };
     profile p = { .n = 5, .depth_nm = z, .solid = f };
@@ -220,6 +253,7 @@ int main(void) {
     any_order();
     polarizations();
     hemisphere();
+    many_angles();
     steps();
     coating_as_profile();
     laminate_by_hand();
