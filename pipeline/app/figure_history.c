@@ -73,8 +73,9 @@ static void fill_points(const points *p, const cJSON *series, double factor) {
     cJSON_ArrayForEach(row, list) {
         double value = factor * runfile_number(row, "value"), u = 2.0 * factor * runfile_number(row, "u");
         int out = *runfile_text(row, "excluded") != '\0', alarm = cJSON_GetArraySize(cJSON_GetObjectItemCaseSensitive(row, "alarms")) > 0;
-        int phase = (int)runfile_number(row, "phase");
-        const cJSON *in = cJSON_GetArrayItem(cJSON_GetObjectItemCaseSensitive(series, "phases"), phase - 1);
+        double phase = runfile_number(row, "phase");
+        const cJSON *phases = cJSON_GetObjectItemCaseSensitive(series, "phases");
+        const cJSON *in = phase >= 1.0 && phase <= (double)p->n ? cJSON_GetArrayItem(phases, (int)phase - 1) : NULL;
         column_of(p, INDEX)[i] = (double)i;
         column_of(p, LO)[i] = value - u;
         column_of(p, HI)[i] = value + u;

@@ -24,6 +24,7 @@ typedef struct {
     size_t n_edge;
     double *spacing, *height;        /* samples, one block */
     plot_mark *marks;
+    const char **names;
     size_t n_samples;
 } window_figure;
 
@@ -34,6 +35,15 @@ static void window_figure_free(window_figure *w) {
     free(w->edge_x);
     free(w->spacing);
     free(w->marks);
+    free(w->names);
+}
+
+enum { MOST_CELLS = 200 }; /* a side, as `sward window` makes at most */
+
+static int ascends(const double *v, size_t n) {
+    for (size_t i = 0; i < n; i++)
+        if (!isfinite(v[i]) || (i && !(v[i] > v[i - 1]))) return 0;
+    return 1;
 }
 
 /* The cells stand row by row; a row ends where x begins anew. */
@@ -52,7 +62,8 @@ static status read_cells(const cJSON *member, const char *across, window_figure 
         w->v[i++] = 100.0 * runfile_number(c, "weighted_reflectance");
     }
     if (!nx) nx = n;
-    if (!n || n % nx || !figure_any(w->x, nx)) return fail(e, ST_BAD_INPUT, "the cells of the process window are no grid");
+    if (!n || n % nx || !ascends(w->x, nx) || !ascends(w->y, n / nx) || nx > MOST_CELLS || n / nx > MOST_CELLS)
+        return fail(e, ST_BAD_INPUT, "the cells of the process window are no grid of at most %d values a side", MOST_CELLS);
     w->cells = (sheet_cells){ w->x, w->y, w->v, nx, n / nx, "weighted reflectance (%)" };
     return ST_OK;
 }
@@ -82,12 +93,14 @@ static status read_samples(const figure_request *q, const cJSON *member, window_
     size_t n = (size_t)cJSON_GetArraySize(list);
     w->spacing = mem_array(n, 2 * sizeof *w->spacing);
     w->marks = mem_array(n, sizeof *w->marks);
-    if (!w->spacing || !w->marks) return NO_MEMORY(e, "the samples");
+    w->names = mem_array(n, sizeof *w->names);
+    if (!w->spacing || !w->marks || !w->names) return NO_MEMORY(e, "the samples");
     w->height = w->spacing + n;
     cJSON_ArrayForEach(row, list) {
         if (!figure_wants(q, runfile_text(row, "sample"))) continue;
         w->spacing[w->n_samples] = runfile_number(row, "spacing_nm");
         w->height[w->n_samples] = runfile_number(row, "height_nm");
+        w->names[w->n_samples] = runfile_text(row, "sample");
         w->marks[w->n_samples++] = mark_of(runfile_text(row, "verdict"));
     }
     return ST_OK;
@@ -107,7 +120,8 @@ static size_t split_samples(const window_figure *w, double *y, plot_mark *of, pl
         }
         if (any)
             lines[lists++] = (plot_series){ .x = w->spacing, .y = y + (size_t)mark * w->n_samples, .n = w->n_samples, .style = PLOT_POINTS,
-                                            .marks = of + (size_t)mark * w->n_samples, .label = words[mark] };
+                                            .marks = of + (size_t)mark * w->n_samples, .label = words[mark],
+                                            .point_names = mark == MARK_DISC ? NULL : w->names }; /* the reader asks which those are */
     }
     return lists;
 }

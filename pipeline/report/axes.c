@@ -46,7 +46,7 @@ double axes_y(const axes *a, double y) {
 
 int axes_below(const axes *a, double y) { return a->log_y ? !(y > 0.0) || log10(y) < a->y_lo : y < a->y_lo; }
 
-int axes_in_band(const plot_series *s, size_t i) { return isfinite(s->lo[i]) && isfinite(s->hi[i]); }
+int axes_in_band(const plot_series *s, size_t i) { return isfinite(s->x[i]) && isfinite(s->lo[i]) && isfinite(s->hi[i]); }
 
 double axes_bin_step(const plot_series *s) { return s->n > 1 ? s->x[1] - s->x[0] : 1.0; }
 

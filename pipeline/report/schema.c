@@ -84,15 +84,18 @@ static const char parts[] =
 
 void schema_json(const results *r, textbuf *out) {
     static const char *const member[][2] = { { "wafers", "wafer" }, { "series", "series" }, { "images", "image" }, { "samples", "sample" },
-                                             { "spectra", "spectrum" }, { "flags", "flag" } };
+                                             { "places", "place" }, { "spectra", "spectrum" }, { "flags", "flag" } };
     text_add(out, "{\n  \"$schema\": \"https://json-schema.org/draft/2020-12/schema\",\n  \"title\": \"results.json of sward\",\n  \"type\": \"object\",\n"
                   "  \"properties\": {\n    \"manifest\": {\"$ref\": \"#/$defs/manifest\"},\n    \"summary\": {\"type\": \"string\"},\n"
                   "    \"window\": {\"$ref\": \"#/$defs/window\"},\n    \"angles\": {\"$ref\": \"#/$defs/angles\"}");
     for (size_t i = 0; i < sizeof member / sizeof member[0]; i++)
         text_addf(out, ",\n    \"%s\": {\"type\": \"array\", \"items\": {\"$ref\": \"#/$defs/%s\"}}", member[i][0], member[i][1]);
-    text_add(out, "\n  },\n  \"required\": [\"manifest\", \"summary\", \"wafers\", \"series\", \"window\", \"angles\", \"images\", \"samples\", \"spectra\", \"flags\"],\n"
+    text_add(out, "\n  },\n  \"required\": [\"manifest\", \"summary\", \"wafers\", \"series\", \"window\", \"angles\", \"images\", \"samples\", \"places\", \"spectra\", \"flags\"],\n"
                   "  \"$defs\": {\n    ");
     text_add(out, parts);
+    text_add(out, ",\n    \"place\": {\"description\": \"where on its wafer a sample was taken, from the middle\", \"type\": \"object\",\n"
+                  "        \"properties\": {\"sample\": {\"type\": \"string\"}, \"x_mm\": {\"type\": \"number\"}, \"y_mm\": {\"type\": \"number\"}},\n"
+                  "        \"required\": [\"sample\", \"x_mm\", \"y_mm\"]}");
     add_row(out, "image", image_columns, n_image_columns, NULL, 0, image_more);
     add_row(out, "sample", sample_columns, n_sample_columns, r->sample_extra, r->n_sample_extra, sample_more);
     text_add(out, "\n  }\n}\n");

@@ -8,24 +8,13 @@
 #include "base/quantity.h"
 #include "report/sheet_priv.h"
 
-typedef struct {
-    sheet *s;
-    const plot *p;
-    const sheet_cells *cells;
-    axes a;
-    double cell_lo, cell_hi; /* log10 of the cells that are drawn */
-    double turned;           /* width of turned names below the axis, pt; 0: they stand level */
-    size_t name_step;
-    size_t bands;            /* how many there are: the more, the fainter */
-} scene;
-
 /* ---- layout ---- */
 
-static size_t y_ticks(const scene *c, double tick[AXES_TICKS]) {
-    return axes_y_ticks(&c->a, (c->a.bottom - c->a.top) / (2.0 * c->s->em), tick);
+static size_t y_ticks(const sheet_scene *c, double tick[AXES_TICKS]) {
+    return axes_y_ticks(&c->a, (c->a.bottom - c->a.top) / (1.8 * c->s->em), tick);
 }
 
-static double tick_width(scene *c) {
+static double tick_width(sheet_scene *c) {
     double tick[AXES_TICKS], widest = 0.0;
     size_t n = y_ticks(c, tick);
     for (size_t i = 0; i < n; i++) widest = fmax(widest, sheet_number_width(c->s, tick[i]));
@@ -35,7 +24,7 @@ static double tick_width(scene *c) {
 /* Names stand level when all fit side by side, else turned by 40 degrees and thinned so that they never touch; the last one is
  * always there. */
 static const double turn = 40.0 * PI / 180.0;
-static void place_names(scene *c, double width) {
+static void place_names(sheet_scene *c, double width) {
     double em = c->s->em, slot = width / ((double)c->p->n_names + 0.2), widest = 0.0;
     for (size_t i = 0; i < c->p->n_names; i++)
         widest = fmax(widest, pen_width_within(&c->s->pen, 9.0 * em, c->p->names[i] ? c->p->names[i] : ""));
@@ -46,7 +35,7 @@ static void place_names(scene *c, double width) {
     c->name_step = (size_t)fmax(1.0, ceil(1.25 * em / sin(turn) / slot));
 }
 
-static int lay_out(scene *c) {
+static int lay_out(sheet_scene *c) {
     sheet *s = c->s;
     double em = s->em, top = sheet_title(s, c->p->title);
     axes *a = &c->a;
@@ -72,7 +61,7 @@ static int lay_out(scene *c) {
 
 /* ---- cells ---- */
 
-static void cell_range(scene *c) {
+static void cell_range(sheet_scene *c) {
     c->cell_lo = HUGE_VAL;
     c->cell_hi = -HUGE_VAL;
     for (size_t i = 0; i < c->cells->nx * c->cells->ny; i++) {
@@ -85,7 +74,7 @@ static void cell_range(scene *c) {
 }
 
 /* Each cell is many equal dots of a small picture, so that no viewer smooths one into the next or leaves seams between them. */
-static void draw_cells(scene *c) {
+static void draw_cells(sheet_scene *c) {
     enum { DOTS = 12 };
     const sheet_cells *g = c->cells;
     int nx = (int)g->nx * DOTS, ny = (int)g->ny * DOTS;
@@ -117,7 +106,7 @@ static void draw_cells(scene *c) {
     cairo_surface_destroy(image);
 }
 
-static void draw_bar(scene *c) {
+static void draw_bar(sheet_scene *c) {
     sheet *s = c->s;
     double em = s->em, x = c->a.right + 1.2 * em, tick[AXES_TICKS];
     axes bar = { .top = c->a.top, .bottom = c->a.bottom, .y_lo = c->cell_lo, .y_hi = c->cell_hi, .log_y = 1 };
@@ -141,33 +130,27 @@ static void draw_bar(scene *c) {
 
 /* ---- axes ---- */
 
-static void line(scene *c, double x0, double y0, double x1, double y1) {
-    cairo_move_to(c->s->pen.cr, x0, y0);
-    cairo_line_to(c->s->pen.cr, x1, y1);
-    cairo_stroke(c->s->pen.cr);
-}
-
 /* Unlabelled ticks at 2 to 9 times the powers of ten. */
-static void draw_minor(scene *c) {
+static void draw_minor(sheet_scene *c) {
     if (!c->a.log_y) return;
     for (double d = floor(c->a.y_lo); d <= c->a.y_hi; d += 1.0)
         for (int k = 2; k < 10; k++) {
             double l = d + log10(k);
             if (l < c->a.y_lo || l > c->a.y_hi) continue;
             double y = axes_y(&c->a, pow(10.0, l));
-            line(c, c->a.left, y, c->a.left - 0.22 * c->s->em, y);
+            sheet_line(c, c->a.left, y, c->a.left - 0.22 * c->s->em, y);
         }
 }
 
-static void draw_grid(scene *c) {
+static void draw_grid(sheet_scene *c) {
     double tick[AXES_TICKS];
     size_t n = y_ticks(c, tick);
     pen_ink(&c->s->pen, c->s->colours.faint);
     cairo_set_line_width(c->s->pen.cr, 0.05 * c->s->em);
-    for (size_t i = 0; i < n; i++) line(c, c->a.left, axes_y(&c->a, tick[i]), c->a.right, axes_y(&c->a, tick[i]));
+    for (size_t i = 0; i < n; i++) sheet_line(c, c->a.left, axes_y(&c->a, tick[i]), c->a.right, axes_y(&c->a, tick[i]));
 }
 
-static void draw_y_axis(scene *c) {
+static void draw_y_axis(sheet_scene *c) {
     sheet *s = c->s;
     double em = s->em, tick[AXES_TICKS];
     size_t n = y_ticks(c, tick);
@@ -175,7 +158,7 @@ static void draw_y_axis(scene *c) {
     cairo_set_line_width(s->pen.cr, 0.08 * em);
     for (size_t i = 0; i < n; i++) {
         double y = axes_y(&c->a, tick[i]);
-        line(c, c->a.left, y, c->a.left - 0.4 * em, y);
+        sheet_line(c, c->a.left, y, c->a.left - 0.4 * em, y);
         sheet_number(s, c->a.left - 0.6 * em, y + 0.36 * em, 1.0, tick[i]);
     }
     draw_minor(c);
@@ -186,13 +169,13 @@ static void draw_y_axis(scene *c) {
     cairo_restore(s->pen.cr);
 }
 
-static void draw_names(scene *c) {
+static void draw_names(sheet_scene *c) {
     sheet *s = c->s;
     double em = s->em;
     for (size_t i = 0; i < c->p->n_names; i++) {
         double x = axes_x(&c->a, (double)i);
         const char *name = c->p->names[i] ? c->p->names[i] : "";
-        line(c, x, c->a.bottom, x, c->a.bottom + 0.3 * em);
+        sheet_line(c, x, c->a.bottom, x, c->a.bottom + 0.3 * em);
         if ((c->p->n_names - 1 - i) % c->name_step) continue;
         if (!(c->turned > 0.0)) {
             pen_text_within(&s->pen, x, c->a.bottom + 1.4 * em, 0.5, 9.0 * em, name);
@@ -206,7 +189,7 @@ static void draw_names(scene *c) {
     }
 }
 
-static void draw_x_axis(scene *c) {
+static void draw_x_axis(sheet_scene *c) {
     sheet *s = c->s;
     double em = s->em, tick[AXES_TICKS];
     pen_ink(&s->pen, s->colours.ink);
@@ -217,7 +200,7 @@ static void draw_x_axis(scene *c) {
         size_t n = axes_x_ticks(&c->a, (c->a.right - c->a.left) / (3.6 * em), tick);
         for (size_t i = 0; i < n; i++) {
             double x = axes_x(&c->a, tick[i]);
-            line(c, x, c->a.bottom, x, c->a.bottom + 0.4 * em);
+            sheet_line(c, x, c->a.bottom, x, c->a.bottom + 0.4 * em);
             sheet_number(s, x, c->a.bottom + 1.45 * em, 0.5, tick[i]);
         }
     }
@@ -226,152 +209,14 @@ static void draw_x_axis(scene *c) {
     cairo_stroke(s->pen.cr);
 }
 
-/* ---- content ---- */
-
-static void draw_target(scene *c) {
-    const plot *p = c->p;
-    sheet *s = c->s;
-    if (!isfinite(p->target_lo) && !isfinite(p->target_hi)) return;
-    double top = isfinite(p->target_hi) ? axes_y(&c->a, p->target_hi) : c->a.top;
-    double bottom = isfinite(p->target_lo) ? axes_y(&c->a, p->target_lo) : c->a.bottom;
-    ink t = s->colours.target;
-    cairo_rectangle(s->pen.cr, c->a.left, top, c->a.right - c->a.left, fmax(0.0, bottom - top));
-    pen_ink(&s->pen, (ink){ t.r, t.g, t.b, 0.14 });
-    cairo_fill(s->pen.cr);
-    sheet_dash(s, 1);
-    cairo_set_line_width(s->pen.cr, 0.6 * s->line);
-    pen_ink(&s->pen, t);
-    if (isfinite(p->target_hi)) line(c, c->a.left, top, c->a.right, top);
-    if (isfinite(p->target_lo)) line(c, c->a.left, bottom, c->a.right, bottom);
-    sheet_dash(s, 0);
-}
-
-/* One closed area for each unbroken run of lo..hi. */
-static void draw_band(scene *c, const plot_series *q) {
-    cairo_t *cr = c->s->pen.cr;
-    for (size_t from = 0, to; from < q->n; from = to + 1) {
-        for (to = from; to < q->n && axes_in_band(q, to);) to++;
-        if (to - from < 2) continue;
-        for (size_t i = from; i < to; i++) cairo_line_to(cr, axes_x(&c->a, q->x[i]), axes_y(&c->a, q->hi[i]));
-        for (size_t i = to; i-- > from;) cairo_line_to(cr, axes_x(&c->a, q->x[i]), axes_y(&c->a, q->lo[i]));
-        cairo_close_path(cr);
-    }
-    ink t = c->s->colours.tone[q->tone];
-    pen_ink(&c->s->pen, (ink){ t.r, t.g, t.b, c->bands > 2 ? 0.09 : c->bands > 1 ? 0.15 : 0.22 });
-    cairo_fill(cr);
-}
-
-/* -1 below the axis, 1 above it. */
-static int beyond(const axes *a, double y) {
-    if (axes_below(a, y)) return -1;
-    return (a->log_y ? log10(y) : y) > a->y_hi;
-}
-
-/* A stretch of the curve beyond the axis is not drawn along its edge: that would look like values. */
-static void draw_curve(scene *c, const plot_series *q) {
-    cairo_t *cr = c->s->pen.cr;
-    int down = 0, was = 0;
-    for (size_t i = 0; i < q->n; i++) {
-        if (!isfinite(q->y[i])) {
-            down = 0;
-            continue;
-        }
-        int out = beyond(&c->a, q->y[i]);
-        double x = axes_x(&c->a, q->x[i]), y = axes_y(&c->a, q->y[i]);
-        if (down && !(out && out == was)) cairo_line_to(cr, x, y);
-        else cairo_move_to(cr, x, y);
-        down = 1;
-        was = out;
-    }
-    if (c->cells) { /* an edge in the colour of the paper, for the cells have all colours */
-        cairo_set_line_width(cr, 2.2 * c->s->line);
-        pen_ink(&c->s->pen, c->s->colours.paper);
-        cairo_stroke_preserve(cr);
-    }
-    sheet_dash(c->s, q->style == PLOT_DASHED ? 1 : q->style == PLOT_DOTTED ? 2 : 0);
-    cairo_set_line_width(cr, c->s->line);
-    pen_ink(&c->s->pen, c->s->colours.tone[q->tone]);
-    cairo_stroke(cr);
-    sheet_dash(c->s, 0);
-}
-
-/* The outline of the bins and the area below it; outlines of several samples differ by their dashes too. */
-static void draw_steps(scene *c, const plot_series *q) {
-    cairo_t *cr = c->s->pen.cr;
-    double half = 0.5 * axes_bin_step(q), floor_y = axes_y(&c->a, c->a.y_lo);
-    if (!q->n) return;
-    cairo_move_to(cr, axes_x(&c->a, q->x[0] - half), floor_y);
-    for (size_t i = 0; i < q->n; i++) {
-        double y = axes_y(&c->a, isfinite(q->y[i]) ? q->y[i] : c->a.y_lo);
-        cairo_line_to(cr, axes_x(&c->a, q->x[i] - half), y);
-        cairo_line_to(cr, axes_x(&c->a, q->x[i] + half), y);
-    }
-    cairo_line_to(cr, axes_x(&c->a, q->x[q->n - 1] + half), floor_y);
-    ink t = c->s->colours.tone[q->tone];
-    pen_ink(&c->s->pen, (ink){ t.r, t.g, t.b, 0.16 });
-    cairo_fill_preserve(cr);
-    sheet_dash(c->s, q->tone % 4);
-    cairo_set_line_width(cr, 0.85 * c->s->line);
-    pen_ink(&c->s->pen, t);
-    cairo_stroke(cr);
-    sheet_dash(c->s, 0);
-}
-
-/* Labels stand along their rules, from the top down, on the side where there is room. */
-static void draw_rules(scene *c) {
-    sheet *s = c->s;
-    double em = s->em;
-    for (size_t k = 0; k < c->p->n_rules; k++) {
-        const plot_rule *r = &c->p->rules[k];
-        double x = axes_x(&c->a, r->at);
-        if (!(x >= c->a.left && x <= c->a.right)) continue;
-        pen_ink(&s->pen, s->colours.tone[r->tone]);
-        cairo_set_line_width(s->pen.cr, 0.7 * s->line);
-        sheet_dash(s, 3);
-        line(c, x, c->a.top, x, c->a.bottom);
-        sheet_dash(s, 0);
-        if (!r->label) continue;
-        cairo_save(s->pen.cr);
-        cairo_translate(s->pen.cr, x + (x + 1.3 * em > c->a.right ? -0.35 : 1.05) * em, c->a.top + 0.4 * em);
-        cairo_rotate(s->pen.cr, -0.5 * PI);
-        double width = pen_width_within(&s->pen, c->a.bottom - c->a.top, r->label);
-        cairo_rectangle(s->pen.cr, -width - 0.1 * em, -0.85 * em, width + 0.2 * em, 1.1 * em);
-        pen_ink(&s->pen, (ink){ s->colours.paper.r, s->colours.paper.g, s->colours.paper.b, 0.75 });
-        cairo_fill(s->pen.cr);
-        pen_ink(&s->pen, s->colours.ink);
-        pen_text_within(&s->pen, 0.0, 0.0, 1.0, c->a.bottom - c->a.top, r->label);
-        cairo_restore(s->pen.cr);
-    }
-}
-
-static void draw_points(scene *c, const plot_series *q) {
-    sheet *s = c->s;
-    double r = c->p->names && c->p->n_names > 40 ? 0.26 * s->em : 0.34 * s->em, cap = 0.3 * s->em;
-    for (size_t i = 0; i < q->n; i++) {
-        if (!isfinite(q->y[i])) continue;
-        double x = axes_x(&c->a, q->x[i]);
-        if (q->lo && q->hi && axes_in_band(q, i)) {
-            double top = axes_y(&c->a, q->hi[i]), bottom = axes_y(&c->a, q->lo[i]);
-            pen_ink(&s->pen, s->colours.soft);
-            cairo_set_line_width(s->pen.cr, 0.6 * s->line);
-            line(c, x, top, x, bottom);
-            line(c, x - cap, top, x + cap, top);
-            line(c, x - cap, bottom, x + cap, bottom);
-        }
-        sheet_mark(s, q->marks ? q->marks[i] : MARK_DISC, x, axes_y(&c->a, q->y[i]), r);
-    }
-}
-
-static int has_band(const plot_series *q) { return q->style != PLOT_POINTS && q->style != PLOT_STEPS && q->lo && q->hi; }
-
-static void draw_content(scene *c) {
+static void draw_content(sheet_scene *c) {
     cairo_t *cr = c->s->pen.cr;
     cairo_save(cr);
     cairo_rectangle(cr, c->a.left, c->a.top, c->a.right - c->a.left, c->a.bottom - c->a.top);
     cairo_clip(cr);
     if (c->cells) draw_cells(c);
     else draw_grid(c);
-    draw_target(c);
+    sheet_draw_target(c);
     cairo_restore(cr);
     draw_y_axis(c);
     draw_x_axis(c);
@@ -379,17 +224,7 @@ static void draw_content(scene *c) {
     cairo_rectangle(cr, c->a.left - c->s->line, c->a.top - c->s->line, c->a.right - c->a.left + 2.0 * c->s->line,
                     c->a.bottom - c->a.top + 2.0 * c->s->line);
     cairo_clip(cr);
-    for (size_t k = 0; k < c->p->n_series; k++) c->bands += (size_t)has_band(&c->p->series[k]);
-    for (size_t k = 0; k < c->p->n_series; k++)
-        if (has_band(&c->p->series[k])) draw_band(c, &c->p->series[k]);
-    for (size_t k = 0; k < c->p->n_series; k++)
-        if (c->p->series[k].style == PLOT_STEPS) draw_steps(c, &c->p->series[k]);
-    for (int style = PLOT_LINE; style <= PLOT_DOTTED; style++) /* broken lines over whole ones, that neither hides the other */
-        for (size_t k = 0; k < c->p->n_series; k++)
-            if ((int)c->p->series[k].style == style) draw_curve(c, &c->p->series[k]);
-    draw_rules(c);
-    for (size_t k = 0; k < c->p->n_series; k++)
-        if (c->p->series[k].style == PLOT_POINTS) draw_points(c, &c->p->series[k]);
+    sheet_draw_series(c);
     cairo_restore(cr);
 }
 
@@ -413,7 +248,7 @@ status sheet_plot(const plot *p, const sheet_cells *cells, const sheet_options *
     status st = find_height(p, o, &height_mm, e);
     if (!st) st = sheet_open(o, height_mm, &s, e);
     if (!st) {
-        scene c = { .s = &s, .p = p, .cells = cells };
+        sheet_scene c = { .s = &s, .p = p, .cells = cells };
         if (!lay_out(&c)) {
             pen_ink(&s.pen, s.colours.soft);
             pen_text(&s.pen, 0.5 * s.width, 0.5 * s.height, 0.5, "no values to draw");

@@ -42,7 +42,32 @@ double sheet_number_width(sheet *s, double v);
 /* The title at the top, when it is wanted; returns the height it takes. */
 double sheet_title(sheet *s, const char *title);
 
+typedef struct {
+    double x0, y0, x1, y1;
+} sheet_box; /* {0} = empty */
+
+/* The box of a label of one em beside the point (x, y): below, above, right or left of it, the first that hides nothing of taken [n], else
+ * the one that hides least. Returns the area it hides. */
+double sheet_place_label(double x, double y, double width, double em, const sheet_box *taken, size_t n, sheet_box *out);
+
 /* The legend of a plot, set in rows from `top` on between left and right; returns its height, draws with draw = 1. */
 double sheet_legend(sheet *s, const plot *p, double left, double right, double top, int draw);
+
+/* A plot that is being drawn. */
+typedef struct {
+    sheet *s;
+    const plot *p;
+    const sheet_cells *cells;
+    axes a;
+    double cell_lo, cell_hi; /* log10 of the cells that are drawn */
+    double turned;           /* width of turned names below the axis, pt; 0: they stand level */
+    size_t name_step;
+    size_t bands;            /* how many there are: the more, the fainter */
+} sheet_scene;
+
+void sheet_line(sheet_scene *c, double x0, double y0, double x1, double y1);
+void sheet_draw_target(sheet_scene *c);
+/* Everything else within the frame; the caller has clipped to it. */
+void sheet_draw_series(sheet_scene *c);
 
 #endif

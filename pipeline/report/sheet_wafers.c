@@ -38,35 +38,6 @@ static wafer_layout lay_wafers(const sheet_wafers *w, double width, double em) {
     return l;
 }
 
-typedef struct {
-    double x0, y0, x1, y1;
-} box;
-
-static double overlap(const box *a, const box *b) {
-    double w = fmin(a->x1, b->x1) - fmax(a->x0, b->x0), h = fmin(a->y1, b->y1) - fmax(a->y0, b->y0);
-    return w > 0.0 && h > 0.0 ? w * h : 0.0;
-}
-
-/* Below, above, right or left of its position: the first that hides nothing, else the one that hides least. taken [n] are the boxes
- * of the labels before, then those of all discs. */
-static box place_label(double x, double y, double width, double em, const box *taken, size_t n) {
-    const double gap = 0.72 * em, half = 0.5 * width;
-    const box tries[4] = { { x - half, y + gap, x + half, y + gap + em },
-                           { x - half, y - gap - em, x + half, y - gap },
-                           { x + gap, y - 0.5 * em, x + gap + width, y + 0.5 * em },
-                           { x - gap - width, y - 0.5 * em, x - gap, y + 0.5 * em } };
-    size_t best = 0;
-    double least = HUGE_VAL;
-    for (size_t k = 0; k < 4; k++) {
-        double hidden = 0.0;
-        for (size_t i = 0; i < n; i++) hidden += overlap(&tries[k], &taken[i]);
-        if (!(hidden < least)) continue;
-        least = hidden;
-        best = k;
-    }
-    return tries[best];
-}
-
 static void draw_disc(sheet *s, double x, double y, ink i) {
     cairo_arc(s->pen.cr, x, y, 0.62 * s->em, 0.0, 2.0 * PI);
     pen_ink(&s->pen, i);
@@ -79,7 +50,7 @@ static void draw_disc(sheet *s, double x, double y, ink i) {
 static void draw_wafer(sheet *s, const sheet_wafer *w, const wafer_layout *l, double left, double top, error *e) {
     double em = s->em, r = 0.5 * l->side - 0.8 * em, cx = left + 0.5 * l->side, cy = top + 1.9 * em + r;
     double scale = l->radius_mm > 0.0 ? (r - 1.8 * em) / l->radius_mm : 0.0;
-    box *taken = mem_array(w->n, 2 * sizeof *taken);
+    sheet_box *taken = mem_array(w->n, 2 * sizeof *taken);
     if (!taken) {
         NO_MEMORY(e, "the wafer map");
         s->pen.failed = 1;
@@ -96,11 +67,11 @@ static void draw_wafer(sheet *s, const sheet_wafer *w, const wafer_layout *l, do
     for (size_t i = 0; i < w->n; i++) {
         double x = cx + scale * w->x_mm[i], y = cy - scale * w->y_mm[i], half = 0.62 * em;
         draw_disc(s, x, y, sheet_ramp((w->v[i] - l->lo) / (l->hi - l->lo)));
-        taken[w->n + i] = (box){ x - half, y - half, x + half, y + half };
+        taken[w->n + i] = (sheet_box){ x - half, y - half, x + half, y + half };
     }
     for (size_t i = 0; i < w->n; i++) { /* unused boxes are empty */
         double x = cx + scale * w->x_mm[i], y = cy - scale * w->y_mm[i], width = pen_width(&s->pen, w->labels[i]);
-        taken[i] = place_label(x, y, width, em, taken, 2 * w->n);
+        sheet_place_label(x, y, width, em, taken, 2 * w->n, &taken[i]);
         pen_ink(&s->pen, s->colours.ink);
         pen_text(&s->pen, taken[i].x0, taken[i].y1 - 0.14 * em, 0.0, w->labels[i]);
     }

@@ -117,6 +117,30 @@ static void check_contents(void) {
         }
 }
 
+/* A name stands beside a point where there is room, and not where a curve would be hidden on all sides. */
+static void check_point_names(void) {
+    static const double px[3] = { 0.0, 5.0, 10.0 }, py[3] = { 0.0, 5.0, 10.0 };
+    static const char *const names[3] = { "", "the one", "" };
+    double cx[17], cy[17];
+    size_t n[4];
+    for (size_t i = 0; i < 17; i++) { /* a scribble around the point in the middle */
+        cx[i] = i % 2 ? 2.0 : 8.0;
+        cy[i] = 3.0 + 0.25 * (double)i;
+    }
+    for (int k = 0; k < 4; k++) {
+        plot_series s[2] = { { .x = px, .y = py, .n = 3, .style = PLOT_POINTS, .point_names = k % 2 ? names : NULL },
+                             { .x = cx, .y = cy, .n = k < 2 ? 0 : 17 } };
+        plot p = make_plot(s, 2);
+        sheet_options o = sheet_defaults();
+        file f = { 0 };
+        error e = { 0 };
+        CHECK(sheet_plot(&p, NULL, &o, &f.bytes, &f.n, &e) == ST_OK);
+        n[k] = f.n;
+        free(f.bytes);
+    }
+    CHECK(n[1] > n[0] + 500 && n[3] == n[2]);
+}
+
 static double brightness(const decoded *d, double sx, double sy) {
     const uint8_t *p = d->rgb + 3 * ((size_t)(sy * (double)d->ny) * d->nx + (size_t)(sx * (double)d->nx));
     return 0.3 * p[0] + 0.59 * p[1] + 0.11 * p[2];
@@ -255,6 +279,7 @@ static void check_errors(void) {
 int main(void) {
     check_formats();
     check_contents();
+    check_point_names();
     check_cells();
     check_picture();
     check_wafers();
