@@ -17,9 +17,10 @@ typedef struct {
 
 /* argp needs its GNU long options only; every command parses with this: exit status 2 on wrong use. */
 extern const struct argp run_argp, measure_argp, predict_argp, fit_argp, window_argp, render_argp, history_argp, protocol_argp,
-    repeat_argp, inspect_argp, scale_argp, figure_argp, compare_argp, gather_argp, watch_argp;
+    repeat_argp, inspect_argp, scale_argp, figure_argp, compare_argp, gather_argp, watch_argp, explain_argp;
 int cmd_run(int argc, char **argv);
 int cmd_gather(int argc, char **argv);
+int cmd_explain(int argc, char **argv);
 int cmd_watch(int argc, char **argv);
 int cmd_measure(int argc, char **argv);
 int cmd_repeat(int argc, char **argv);

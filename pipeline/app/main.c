@@ -14,6 +14,7 @@
 static const command commands[] = {
     { "run", cmd_run, &run_argp, "the whole pipeline on a folder" },
     { "watch", cmd_watch, &watch_argp, "a folder watched: new micrographs measured as they come" },
+    { "explain", cmd_explain, &explain_argp, "how a number of a sample came about" },
     { "gather", cmd_gather, &gather_argp, "the parts of a divided run joined to its outputs" },
     { "measure", cmd_measure, &measure_argp, "texture numbers only" },
     { "repeat", cmd_repeat, &repeat_argp, "how well the measurement repeats, against the targets" },

@@ -6,6 +6,7 @@
 #include <string.h>
 #include <time.h>
 
+#include "app/manifest.h"
 #include "app/scenarios.h"
 #include "app/summary.h"
 #include "app/wafers.h"
@@ -198,42 +199,6 @@ static void add_member(textbuf *t, const char *name, const char *value) {
     json_string(t, value);
 }
 
-static void write_manifest(const publication *p, textbuf *t) {
-    textbuf full = { 0 };
-    char hash[65];
-    text_add(t, "{");
-    add_member(t, "program", "sward");
-    text_add(t, ", ");
-    add_member(t, "version", SWARD_VERSION);
-    text_add(t, ", ");
-    add_member(t, "protocol", p->protocol->name);
-    protocol_full_text(p->protocol, &full);
-    sha256_hex(full.s ? full.s : "", full.n, hash);
-    text_free(&full);
-    text_addf(t, ", \"protocol_sha256\": \"%s\", \"spacing\": \"%s\", ", hash,
-              p->protocol->spacing == SPACING_DENSITY ? "density" : "autocorrelation");
-    text_add(t, "\"band_nm\": [");
-    json_number(t, p->protocol->band_lo_nm, 6);
-    text_add(t, ", ");
-    json_number(t, p->protocol->band_hi_nm, 6);
-    text_addf(t, "], \"mixing\": \"%s\", ", mixing_name(p->protocol->mixing));
-    add_member(t, "ambient", p->protocol->ambient);
-    text_add(t, ", ");
-    add_member(t, "silicon", p->setup->substrate.source);
-    text_add(t, ", ");
-    add_member(t, "sun", p->setup->sun.source);
-    text_add(t, ", \"inputs\": [");
-    for (size_t i = 0; i < p->folder->n; i++) {
-        text_addf(t, "%s{", i ? ", " : "");
-        add_member(t, "file", p->images[i].row.file);
-        text_addf(t, ", \"sha256\": %s%s%s}", p->images[i].hash[0] ? "\"" : "", p->images[i].hash[0] ? p->images[i].hash : "null",
-                  p->images[i].hash[0] ? "\"" : "");
-    }
-    text_addf(t, "], \"files_that_are_no_pictures\": %zu, ", p->folder->n_other);
-    add_member(t, "warnings", p->folder->warnings.s ? p->folder->warnings.s : "");
-    text_add(t, "}");
-}
-
 static status write_run_json(const publication *p, error *e) {
     struct timespec now;
     textbuf t = { 0 };
@@ -316,7 +281,7 @@ status publish(const publication *p, error *e) {
     if (st == ST_OK) st = gather_references(p, &m, e);
     if (st == ST_OK) st = gather_scenarios(p, &m, e);
     if (st == ST_OK) {
-        write_manifest(p, &m.manifest);
+        manifest_json(p, &m.manifest);
         summary_text(p, &m.summary);
         st = wafers_describe(m.samples, m.x_mm, m.y_mm, p->n_groups, &m.wafers, &m.summary, e);
         if (p->ledger->stays_with_output)

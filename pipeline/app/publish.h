@@ -19,6 +19,7 @@ typedef struct {
     const run_options *options;
     const scale_standard *standard; /* NULL: none */
     const char *run_at;
+    const char *basis;              /* stands for program, protocol and materials: run_priv.h */
     int page;
     double seconds[3], started;   /* preparing, measuring, predicting; CLOCK_MONOTONIC at the start */
 } publication;

@@ -191,7 +191,7 @@ status run_complete(run *r, run_outcome *outcome, error *e) {
         outcome->added = (int)ledger.added;
         publication p = { .protocol = &r->protocol, .setup = r->setup, .folder = &r->folder, .images = r->images,
                           .groups = r->groups, .samples = r->samples, .n_groups = r->n_groups, .ledger = &ledger,
-                          .stage = &r->stage, .page = !o->no_report, .run_at = r->run_at, .options = o,
+                          .stage = &r->stage, .page = !o->no_report, .run_at = r->run_at, .basis = r->basis, .options = o,
                           .standard = r->has_standard ? &r->standard : NULL, .seconds = { 0 }, .started = r->begun_s[0] };
         for (size_t i = 0; i < 3; i++) p.seconds[i] = r->begun_s[i + 1] - r->begun_s[i];
         st = publish(&p, e);

@@ -386,6 +386,8 @@ void history_list_free(history_list *l) {
     *l = (history_list){ 0 };
 }
 
+const char *history_engine(void) { return sqlite3_libversion(); }
+
 void history_close(history *h) {
     if (!h) return;
     sqlite3_close(h->db);

@@ -115,6 +115,7 @@ typedef struct {
 } history_prunable;
 status history_prune(history *h, const history_prunable *which, const char *reason, const char *initials, const char *at, int sure,
                      size_t *n, error *e);
+const char *history_engine(void); /* version of SQLite */
 void history_close(history *h); /* NULL is fine */
 
 #endif
