@@ -6,8 +6,8 @@
 
 typedef enum { GRATING_AUTO, GRATING_LINES, GRATING_SQUARE, GRATING_HEXAGONAL } grating_kind;
 
-/* Lengths of pixels are in pitches: times the pitch in nm they are nm per pixel. Standard uncertainties are of
- * the mean of four quarters of the picture, 3 degrees of freedom: 3.18 of them make a 95 % interval. */
+/* Lengths of pixels are in pitches: times the pitch in nm they are nm per pixel. Standard uncertainties come from the
+ * scatter of four quarters of the picture, widened for their small number: two of them make a 95 % interval. */
 typedef struct {
     grating_kind kind;      /* as found or as told */
     double ax, ay, bx, by;  /* lattice vectors, px; lines: a is across the lines, b is 0 */
@@ -23,8 +23,8 @@ enum { GRATING_PERIODS = 8 };
 
 /*   in   a plane with at least GRATING_PERIODS periods a side; kind AUTO tells lines, square and hexagonal
  *   err  ST_NO_RESULT no lattice, too few periods, neither square nor hexagonal; ST_NO_MEMORY
- *   src  lattice by least squares over the peaks of the autocorrelation: common practice; taper: Harris, Proc.
- *        IEEE 66 (1978) 51 (Hann) */
+ *   src  lattice by least squares over the peaks of the autocorrelation, then over the lines of the spectrum: common
+ *        practice; taper: Harris, Proc. IEEE 66 (1978) 51 (Hann) */
 status grating_measure(const plane *p, grating_kind kind, grating *out, error *e);
 
 #endif
