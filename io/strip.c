@@ -223,6 +223,13 @@ static int is_specimen(const view *v, size_t unsure, size_t sure) {
     return sure - unsure > 4 && abs(paper(v, sure) - v->rows[unsure - v->first].mode) > v->window;
 }
 
+/* Clipped to two levels a specimen looks like writing on paper; so do then the rows above. */
+static int specimen_is_alike(const view *v, size_t t) {
+    size_t n = t - v->first < REACH ? t - v->first : REACH;
+    block_facts b = describe_block(v, t - n, t);
+    return strip_like(v, &b);
+}
+
 static size_t search(const view *v) {
     size_t unsure = 0;
     for (size_t t = v->lowest; t + MIN_ROWS <= v->ny; t++) {
@@ -234,7 +241,7 @@ static size_t search(const view *v) {
             block_facts b = describe_block(v, t, v->ny - k);
             like = strip_like(v, &b);
         }
-        if (!like) continue;
+        if (!like || specimen_is_alike(v, t)) continue;
         if (kind == BEGINS_UNSURE)
             unsure = t;
         else if (!unsure)
