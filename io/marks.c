@@ -18,7 +18,7 @@
 
 enum { LEVELS = 65536, RUN = 8, LEAST = 24, MOST_INKS = 4, SMALLEST = 32 };
 static const float near_ink = 0.12f, lossy_core = 0.06f;
-static const double most_masked = 0.35, most_flat = 0.5, most_clipped = 0.4; /* of the field: beyond, the marks are the picture */
+static const double most_masked = 0.35, most_flat = 0.5, most_clipped = 0.4, most_equal = 0.35; /* of the field: beyond, the marks are the picture */
 
 static unsigned level_at(const float *px, size_t i) { return (unsigned)(px[i] * 65535.0f + 0.5f); }
 
@@ -128,38 +128,57 @@ static size_t count_mask(const unsigned char *mask, size_t n) {
     return k;
 }
 
-status marks_find(const float *px, size_t nx, size_t ny, int lossy, unsigned char **mask, size_t *n, error *e) {
+/* 1 when the picture has noise: neighbours along rows are mostly not equal. */
+static int is_noisy(const float *px, size_t nx, size_t ny) {
+    size_t equal = 0;
+    for (size_t y = 0; y < ny; y++)
+        for (size_t x = 1; x < nx; x++) equal += level_at(px, y * nx + x) == level_at(px, y * nx + x - 1);
+    return (double)equal < most_equal * (double)((nx - 1) * ny);
+}
+
+/* One search over the inks that are there, with exact levels or with room around them. */
+static status search(ink_view *v, uint32_t *count, error *e) {
     float inks[MOST_INKS];
+    status st = ST_OK;
+    int n = v->lossy ? lossy_inks(v->px, v->nx * v->ny, inks) : choose_inks(v->px, v->nx, v->ny, count, inks);
+    for (int k = 0; st == ST_OK && k < n; k++) {
+        v->level = inks[k];
+        take_ink(v);
+        v->at_end = v->lossy || !(v->level > 0.0f) || !(v->level < 1.0f);
+        v->in_texture = is_spread(v, INK_CORE);
+        v->joins = v->in_texture || is_spread(v, INK_NEAR) ? INK_CORE : INK_NEAR;
+        if (v->in_texture && v->share > most_clipped) continue; /* nothing tells ink from specimen */
+        (void)marks_edges(v);
+        if (v->at_end) st = marks_strokes(v, e);
+    }
+    return st;
+}
+
+status marks_find(const float *px, size_t nx, size_t ny, int lossy, unsigned char **mask, size_t *n, error *e) {
     *mask = NULL;
     *n = 0;
     if (nx < SMALLEST || ny < SMALLEST) return ST_OK;
-    uint32_t *count = mem_array(LEVELS, sizeof *count);
-    if (!count) return NO_MEMORY(e, "the marks");
-    int n_inks = lossy ? lossy_inks(px, nx * ny, inks) : choose_inks(px, nx, ny, count, inks);
-    free(count);
-    if (!n_inks) return ST_OK;
     ink_view v = { .px = px, .nx = nx, .ny = ny, .lossy = lossy };
+    uint32_t *count = mem_array(LEVELS, sizeof *count);
     v.ink = mem_array(nx * ny, 1);
     v.mask = mem_array(nx * ny, 1);
-    status st = v.ink && v.mask ? ST_OK : NO_MEMORY(e, "the marks");
-    for (int k = 0; st == ST_OK && k < n_inks; k++) {
-        v.level = inks[k];
-        take_ink(&v);
-        v.at_end = lossy || !(v.level > 0.0f) || !(v.level < 1.0f);
-        v.in_texture = is_spread(&v, INK_CORE);
-        v.joins = v.in_texture || is_spread(&v, INK_NEAR) ? INK_CORE : INK_NEAR;
-        if (v.in_texture && v.share > most_clipped) continue; /* nothing tells ink from specimen */
-        (void)marks_edges(&v);
-        if (v.at_end) st = marks_strokes(&v, e);
+    size_t drawn = 0;
+    status st = v.ink && v.mask && count ? ST_OK : NO_MEMORY(e, "the marks");
+    if (st == ST_OK) st = search(&v, count, e);
+    if (st == ST_OK) drawn = count_mask(v.mask, nx * ny);
+    if (st == ST_OK && !drawn && !lossy && is_noisy(px, nx, ny)) { /* a picture that was a JPEG before does not say so */
+        v.lossy = v.cautious = 1;
+        st = search(&v, count, e);
+        if (st == ST_OK) drawn = count_mask(v.mask, nx * ny);
     }
-    size_t drawn = st == ST_OK ? count_mask(v.mask, nx * ny) : 0;
-    if (drawn) st = widen(v.mask, nx, ny, lossy ? 4 : 2, e);
+    if (drawn) st = widen(v.mask, nx, ny, v.lossy ? 4 : 2, e);
     size_t masked = st == ST_OK && drawn ? count_mask(v.mask, nx * ny) : 0;
     if (masked && (double)masked <= most_masked * (double)(nx * ny)) {
         *mask = v.mask;
         *n = masked;
         v.mask = NULL;
     }
+    free(count);
     free(v.ink);
     free(v.mask);
     return st;

@@ -48,25 +48,50 @@ static double row_distance(const grid *g, size_t y, size_t x0, size_t x1) {
     return s / (double)(x1 - x0);
 }
 
-/* Two rows away the ground is already what it is four rows away. */
+/* Two rows away the ground is already what it is four rows away; resampling and lossy compression take twice that. */
 static int is_crisp(const grid *g, const shape *s) {
-    double close = 0.0, far = 0.0;
+    size_t near = g->v->lossy ? 4 : 2, far = g->v->lossy ? 7 : 4;
+    double close = 0.0, away = 0.0;
     int n = 0;
-    if (s->y0 >= 4) {
-        close += row_distance(g, s->y0 - 2, s->x0, s->x1);
-        far += row_distance(g, s->y0 - 4, s->x0, s->x1);
+    if (s->y0 >= far) {
+        close += row_distance(g, s->y0 - near, s->x0, s->x1);
+        away += row_distance(g, s->y0 - far, s->x0, s->x1);
         n++;
     }
-    if (s->y1 + 3 < g->ny) {
-        close += row_distance(g, s->y1 + 1, s->x0, s->x1);
-        far += row_distance(g, s->y1 + 3, s->x0, s->x1);
+    if (s->y1 + far - 1 < g->ny) {
+        close += row_distance(g, s->y1 + near - 1, s->x0, s->x1);
+        away += row_distance(g, s->y1 + far - 1, s->x0, s->x1);
         n++;
     }
-    return n && far / n >= least_contrast && close >= least_crisp * far;
+    return n && away / n >= least_contrast && close >= least_crisp * away;
 }
 
-static int sides_are_free(const grid *g, const shape *s) {
-    return column_share(g, s->x0 - 1, s->y0, s->y1) <= outside && column_share(g, s->x1, s->y0, s->y1) <= outside;
+/* How far outside an edge the ground is looked at: the last row of ink is ragged after lossy compression. */
+static size_t ragged(const grid *g) { return g->v->lossy ? 1 : 0; }
+
+static int left_is_free(const grid *g, const shape *s) {
+    return column_share(g, s->x0 - 1 - ragged(g), s->y0, s->y1) <= outside;
+}
+
+static int right_is_free(const grid *g, const shape *s) {
+    return column_share(g, s->x1 + ragged(g), s->y0, s->y1) <= outside;
+}
+
+static int sides_are_free(const grid *g, const shape *s) { return left_is_free(g, s) && right_is_free(g, s); }
+
+static int above_is_free(const grid *g, const shape *s) {
+    return row_share(g, s->y0 - 1 - ragged(g), s->x0, s->x1) <= outside;
+}
+
+static int below_is_free(const grid *g, const shape *s) {
+    return row_share(g, s->y1 + ragged(g), s->x0, s->x1) <= outside;
+}
+
+/* Ink at the end x of row y, or up to `ragged` pixels further in (dir +1: to the right). */
+static int is_end(const grid *g, size_t x, size_t y, int dir) {
+    for (size_t k = 0; k <= 2 * ragged(g); k++)
+        if (is_ink(g, dir > 0 ? x + k : x - k, y)) return 1;
+    return 0;
 }
 
 /* Rows from y on that are full of ink between x0 and x1. */
@@ -83,7 +108,7 @@ static int is_perfect(const grid *g, const shape *s) {
     for (size_t y = s->y0; y < s->y1; y++)
         if (row_share(g, y, s->x0, s->x1) < perfect) return 0;
     return length >= LONG && 16 * length >= g->nx &&
-           (column_share(g, s->x0 - 1, s->y0, s->y1) <= outside || column_share(g, s->x1, s->y0, s->y1) <= outside);
+           (left_is_free(g, s) || right_is_free(g, s));
 }
 
 /* Specimen of the same level may lengthen the first row: the bar is as long as all of its rows. */
@@ -97,9 +122,9 @@ static int is_bar(const grid *g, shape *s) {
     s->y1 = s->y0 + thick;
     if (thick >= THICK) trim(g, s);
     length = s->x1 - s->x0;
-    if (thick < THICK && !g->v->at_end) return 0;
+    if (thick < THICK && (!g->v->at_end || g->v->cautious)) return 0;
     if (!thick || length < (thick == 1 ? SHORTEST_THIN : SHORTEST) || 3 * thick > length) return 0;
-    if (row_share(g, s->y1, s->x0, s->x1) > outside || (g->v->in_texture && !is_perfect(g, s))) return 0;
+    if (!below_is_free(g, s) || ((g->v->in_texture || g->v->cautious) && !is_perfect(g, s))) return 0;
     return (thick < THICK || g->v->in_texture || sides_are_free(g, s)) && is_crisp(g, s);
 }
 
@@ -108,10 +133,10 @@ static int is_box(const grid *g, shape *s) {
     if (s->x1 - s->x0 < BOX_WIDTH) return 0;
     size_t y = s->y0;
     for (; y < g->ny; y++) {
-        if (!is_ink(g, s->x0, y) || !is_ink(g, s->x1 - 1, y)) break;
+        if (!is_end(g, s->x0, y, 1) || !is_end(g, s->x1 - 1, y, -1)) break;
         if (y + 1 - s->y0 < BOX_HEIGHT || row_share(g, y, s->x0, s->x1) < inside) continue;
-        if (row_share(g, y + 1, s->x0, s->x1) > outside) continue;
         s->y1 = y + 1;
+        if (!below_is_free(g, s)) continue;
         return sides_are_free(g, s) && is_crisp(g, s);
     }
     return 0;
@@ -137,7 +162,7 @@ static size_t search(const grid *g, int boxes_too) {
             shape s = { .x0 = x, .y0 = y };
             while (x < g->nx && is_ink(g, x, y)) x++;
             s.x1 = x;
-            if (s.x1 - s.x0 < SHORTEST || row_share(g, y - 1, s.x0, s.x1) > outside) continue;
+            if (s.x1 - s.x0 < SHORTEST || !above_is_free(g, &s)) continue;
             if (is_bar(g, &s)) {
                 keep(lines, &n_lines, s);
                 n_thin += s.y1 - s.y0 < THICK;

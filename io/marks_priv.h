@@ -24,6 +24,7 @@ typedef struct {
     unsigned char *ink; /* [ny][nx] INK_... */
     unsigned char *mask;
     int lossy;
+    int cautious;   /* only straight edges and what stands beside them */
     double share;   /* of the field that is ink */
     int at_end;     /* the ink is black or white: usual for a pen; of other levels only thick straight things count */
     int in_texture; /* ink of this level lies all over the field: it is also one of the specimen */

@@ -240,9 +240,9 @@ status marks_strokes(const ink_view *v, error *e) {
         look_outside(&c);
         for (size_t k = 0; k < c.n; k++) {
             piece *p = &c.list[k];
-            p->drawn = p->covered || is_straight(v, p) || (!v->in_texture && looks_drawn(v, p));
+            p->drawn = p->covered || (!v->cautious && (is_straight(v, p) || (!v->in_texture && looks_drawn(v, p))));
         }
-        if (v->in_texture && v->share <= most_share) take_company(&c);
+        if (v->in_texture && !v->cautious && v->share <= most_share) take_company(&c);
         take_companions(&c);
         for (size_t i = 0; i < v->nx * v->ny; i++) {
             const piece *p = c.label[i] ? &c.list[c.label[i] - 1] : NULL;
