@@ -24,9 +24,9 @@ static const struct argp_option history_options[] = {
     { "protocol",  OPT_PROTOCOL,  "P",    0, "only rows of this protocol, by its name or the beginning of its digest; import: the name for the rows", 0 },
     { "json",      OPT_JSON,      NULL,   0, "JSON; the list: rows as in samples.csv with run_at and excluded", 0 },
     { "csv",       OPT_CSV,       NULL,   0, "the list as CSV", 0 },
-    { "rules",     OPT_RULES,     "LIST", 0, "chart: pattern tests, joined by commas: zone (default, with spread), iso, nelson, limits, none, or beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8; spread and ewma are charts of their own", 0 },
+    { "rules",     OPT_RULES,     "LIST", 0, "chart: pattern tests, joined by commas: zone (default), iso, nelson, limits, none, or beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8; spread and ewma are charts of their own", 0 },
     { "phase",     OPT_PHASE,     "COLUMN", 0, "column of the sheet whose values are recipes: another value is another phase (default recipe)", 0 },
-    { "baseline",  OPT_BASELINE,  "N",    0, "chart: the first N etches of a phase set its limits, 0 = all (default 20)", 0 },
+    { "baseline",  OPT_BASELINE,  "N",    0, "chart: the first N etches of a phase set its limits, 0 = all (default: its first steady stretch, 20 to 100 etches)", 0 },
     { "baseline-from", OPT_FROM,  "T",    0, "chart: instead, the etches at or after this time (ISO 8601) set them", 0 },
     { "baseline-to",   OPT_TO,    "T",    0, "chart: and those up to this time", 0 },
     { "centre",    OPT_CENTRE,    "V",    0, "chart: centre line, instead of the baseline's", 0 },
@@ -69,6 +69,7 @@ static void chart_option(int key, const char *arg, history_question *ask, struct
         number_option("baseline", arg, &v, state);
         if (v < 0.0 || v > 1e6) argp_error(state, "--baseline: '%s' is no number of etches", arg);
         ask->control.options.baseline = (size_t)v;
+        ask->control.first_etches = 1;
         break;
     case OPT_CENTRE:
         number_option("centre", arg, &ask->control.options.centre, state);

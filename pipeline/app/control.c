@@ -1,4 +1,4 @@
-/* Points are etches. Every phase is looked at on its own; a phase that follows a change of the process is also held against the
+/* Points are etches. Every phase is looked at on its own, before limits are drawn, so that they can rest on its first steady stretch; a phase that follows a change of the process is also held against the
  * last etches of the same recipe before it: did the change move the process? */
 #include "app/control.h"
 
@@ -23,6 +23,24 @@ void control_free(control *c) {
     *c = (control){ 0 };
 }
 
+/* The etches of the first steady stretch of each phase, as the baseline. */
+static void mark_steady(const control_question *q, control *c, unsigned char *stated) {
+    for (size_t k = 0; k < c->s.n_phases; k++) {
+        const findings *f = &c->phases[k].found;
+        const finding_stretch *s = &f->stretches[0];
+        size_t taken = 0, o = 0;
+        if (s->n < q->options.baseline || !s->drift.n || sentence_drifts(&s->drift)) continue;
+        c->phases[k].steady = 1;
+        for (size_t i = s->first; i <= s->last && taken < CONTROL_STEADY; i++) {
+            if (c->s.etches[i].phase != k || !isfinite(c->s.etches[i].value)) continue;
+            while (o < f->n_outliers && f->outliers[o].at < i) o++;
+            if (o < f->n_outliers && f->outliers[o].at == i) continue;
+            stated[i] = 1;
+            taken++;
+        }
+    }
+}
+
 static status draw(const control_question *q, control *c, error *e) {
     size_t n = c->s.n;
     double *value = mem_array(n, sizeof *value), *sd = mem_array(n, sizeof *sd);
@@ -39,7 +57,11 @@ static status draw(const control_question *q, control *c, error *e) {
         phase[i] = x->phase;
         stated[i] = !(x->row->day < q->baseline_from) && !(x->row->day > q->baseline_to);
     }
-    o.stated = period ? stated : NULL;
+    if (!period && !q->first_etches && st == ST_OK) {
+        memset(stated, 0, n);
+        mark_steady(q, c, stated);
+    }
+    o.stated = period || !q->first_etches ? stated : NULL;
     if (st == ST_OK && q->subgroups) st = chart_means(value, sd, count, phase, n, &o, &c->c, e);
     else if (st == ST_OK) st = chart_individuals(value, phase, n, &o, &c->c, e);
     free(value);
@@ -138,14 +160,14 @@ status control_make(const control_question *q, control *out, error *e) {
     series_question what = { .quantity = q->quantity, .phase_by = q->phase_by };
     room r = { 0 };
     status st = series_make(q->rows, q->notes, &what, &c.s, e);
-    if (st == ST_OK) st = draw(q, &c, e);
     if (st == ST_OK) {
         c.subject = series_subject(&c.s, q->quantity, q->min, q->max);
-        c.phases = mem_array(c.c.n_phases, sizeof *c.phases);
+        c.phases = mem_array(c.s.n_phases, sizeof *c.phases);
         r = (room){ mem_array(c.s.n, sizeof(double)), mem_array(c.s.n, sizeof(double)), mem_array(c.s.n, sizeof(size_t)) };
         if (!c.phases || !r.value || !r.work || !r.at) st = NO_MEMORY(e, "a chart");
     }
-    for (size_t k = 0; st == ST_OK && k < c.c.n_phases; k++) st = look_at(q, &c, k, &r, e);
+    for (size_t k = 0; st == ST_OK && k < c.s.n_phases; k++) st = look_at(q, &c, k, &r, e);
+    if (st == ST_OK) st = draw(q, &c, e);
     if (st == ST_OK) {
         size_t newest = c.s.etches[c.s.n - 1].phase;
         c.false_alarms = q->subgroups ? MISSING : chart_false_alarm_drawn(&c.c.options, c.c.phases[newest].n_baseline);

@@ -14,15 +14,20 @@ typedef struct {
     const char *phase_by;          /* as in series_question */
     chart_options options;
     double baseline_from, baseline_to; /* days as in history_row, a stated baseline period; NAN: open */
+    int first_etches;              /* 1: the first options.baseline etches of a phase set its limits. 0: all etches of its first steady
+                                      stretch, outliers left out, up to CONTROL_STEADY; where that has fewer than options.baseline, as 1 */
     double min, max;               /* target, NAN open */
     int subgroups;                 /* the samples of an etch are a subgroup */
 } control_question;
+
+#define CONTROL_STEADY 100
 
 /* Everything at its default: spacing_nm, no target. */
 control_question control_defaults(const history_list *rows, const history_notes *notes);
 
 typedef struct {
     findings found;       /* indices are those of the etches */
+    int steady;           /* its limits rest on its first steady stretch */
     trend_slope per_etch; /* of the last stretch without a break; n 0: fewer than 5 */
     trend_slope per_day;  /* the same over time; n 0: unknown */
     trend_step since;     /* the first etches against the last ones of the phase of this recipe before the change; n_a 0: none */
@@ -59,7 +64,7 @@ void control_today(const control *c, textbuf *out);
  *   quantity, unit, digits, target_min, target_max, phase_by (column whose values are recipes), subgroups
  *   rules [word], tests [{test, meaning, false_alarm_length}], false_alarm_length (etches to a false alarm on this
  *     chart, its limits being estimates), false_alarm_length_known (of the pattern tests alone with known limits)
- *   phases [{number, first, etches, baseline, stated, why, recipe, live, centre, sigma, low, high, spread_mean, lag1}]: first is
+ *   phases [{number, first, etches, baseline, baseline_of (first, stated or steady), why, recipe, live, centre, sigma, low, high, spread_mean, lag1}]: first is
  *     the number of a point; low and high the limits of single values; baseline 0: limits as given
  *   points [{number, etch, etched_at, samples, phase, value, u, sd, z, low, high, spread, spread_low, spread_high, average,
  *     average_low, average_high, alarms [word], excluded}]: excluded null or the reason; average is the EWMA

@@ -94,7 +94,7 @@ void control_limits(const control *c, textbuf *out) {
             else if (s->recipe[0]) text_addf(out, ", %s %s", c->phase_by, s->recipe);
             text_add(out, ". ");
         }
-        sentence_phase(&c->subject, &c->c.phases[k], &c->c.options, out);
+        sentence_phase(&c->subject, &c->c.phases[k], &c->c.options, c->phases[k].steady, out);
         text_add(out, ".\n");
     }
 }
@@ -199,8 +199,8 @@ static void json_phases(const control *c, textbuf *t) {
     for (size_t k = 0; k < c->c.n_phases; k++) {
         const chart_phase *p = &c->c.phases[k];
         const series_phase *s = &c->s.phases[k];
-        text_addf(t, "%s{\"number\": %zu, \"first\": %zu, \"etches\": %zu, \"baseline\": %zu, \"stated\": %s", k ? ", " : "", k + 1,
-                  p->first + 1, p->n_used, p->n_baseline, p->stated ? "true" : "false");
+        text_addf(t, "%s{\"number\": %zu, \"first\": %zu, \"etches\": %zu, \"baseline\": %zu, \"baseline_of\": \"%s\"", k ? ", " : "", k + 1,
+                  p->first + 1, p->n_used, p->n_baseline, !p->stated ? "first" : c->phases[k].steady ? "steady" : "stated");
         member_text(t, "why", s->why ? s->why : "");
         member_text(t, "recipe", s->recipe);
         text_addf(t, ", \"live\": %s", c->phases[k].live ? "true" : "false");

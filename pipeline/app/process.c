@@ -52,7 +52,8 @@ status process_describe(const history_list *l, const history_notes *notes, const
     size_t n = 0, said = 0;
     textbuf unsaid = { 0 };
     q.phase_by = p->chart_phase;
-    q.options.baseline = (size_t)p->chart_baseline;
+    q.first_etches = isfinite(p->chart_baseline);
+    if (q.first_etches) q.options.baseline = (size_t)p->chart_baseline;
     text_add(charts, "[");
     for (size_t i = 0; st == ST_OK && l->n && i < p->n_targets; i++) {
         q.quantity = p->targets[i].quantity;

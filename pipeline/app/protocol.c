@@ -41,8 +41,8 @@ status protocol_defaults(protocol *out, error *e) {
     p.band_hi_nm = 1200.0;
     p.step_nm = 1.0;
     p.chart_phase = mem_text("recipe");
-    p.chart_rules = mem_text("zone,spread");
-    p.chart_baseline = 20.0;
+    p.chart_rules = mem_text("zone");
+    p.chart_baseline = MISSING;
     if (!p.chart_phase || !p.chart_rules || !p.path || !p.name || !p.ambient || !p.substrate) {
         protocol_free(&p);
         return NO_MEMORY(e, "the protocol");

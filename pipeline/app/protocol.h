@@ -68,7 +68,7 @@ typedef struct {
     named_place *places; /* [n_places]; owned */
     size_t n_places;
     char *chart_phase, *chart_rules; /* column whose values are recipes; pattern tests, as chart_rules_parse reads them */
-    double chart_baseline;           /* etches, 0: all of a phase */
+    double chart_baseline;           /* etches, 0: all of a phase; NAN: its first steady stretch */
     char *scale;   /* scale file of `sward scale`, usable from here; NULL: none */
     char *history; /* path, usable from here; NULL: OUT/history.sqlite */
 } protocol;        /* {0} = empty; strings owned */

@@ -142,7 +142,7 @@ const protocol_key protocol_keys[] = {
 
     TEXT("charts", "phase", chart_phase, "column of the sheet whose values are recipes: a change starts a new phase of every chart"),
     { "charts", "rules", KEY_RULES, AT(chart_rules), "", 0, 0, 0, NULL, 0, "pattern tests: zone, iso, nelson, limits, none or words of beyond, 2of3, 4of5, run7, run8, run9, trend6, trend7, alternate14, calm15, apart8, spread, ewma, joined by commas" },
-    NUMBER("charts", "baseline", chart_baseline, "", 0, 1e6, "the first etches of a phase that set its limits; 0: all of them"),
+    NUMBER("charts", "baseline", chart_baseline, "", 0, 1e6, "the first etches of a phase that set its limits; 0: all of them; null: its first steady stretch, 20 to 100 etches"),
 };
 /* clang-format on */
 const size_t n_protocol_keys = sizeof protocol_keys / sizeof protocol_keys[0];

@@ -17,7 +17,7 @@
 #include "judge/factors.h"
 
 chart_options chart_defaults(void) {
-    return (chart_options){ .baseline = 20, .centre = MISSING, .sigma = MISSING, .rules = RULES_ZONE | RULE(SPREAD),
+    return (chart_options){ .baseline = 20, .centre = MISSING, .sigma = MISSING, .rules = RULES_ZONE,
                             .lambda = 0.2, .ewma_k = 2.962 };
 }
 

@@ -64,7 +64,8 @@ typedef struct {
     const unsigned char *stated; /* [n] of the values: the points of a stated baseline period; a phase with 5 of them takes its
                                     limits from them. NULL: none. Borrowed for the call */
 } chart_options;
-/* baseline 20, zone rules, lambda 0.2, k 2.962 (one false alarm in 500: Lucas and Saccucci 1990) */
+/* baseline 20, zone rules (the chart of the spread has limits, but adds little and rings half as often again: Rigdon S.E., Cruthis
+ * E.N., Champ C.W. (1994) J. Qual. Technol. 26, 274-287, from memory), lambda 0.2, k 2.962 (one false alarm in 500: Lucas and Saccucci 1990) */
 chart_options chart_defaults(void);
 #define CHART_LEAST_BASELINE 5
 
@@ -84,7 +85,7 @@ typedef struct {
 typedef struct {
     size_t first, n;      /* index of its first point; how many it has, left-out ones included */
     size_t n_used, n_baseline;
-    int stated;           /* the baseline is that of the stated period */
+    int stated;           /* the baseline are the stated points, not the first ones */
     double centre, sigma; /* sigma of one value; NAN: too few points */
     double spread_mean;   /* mean moving range or sd of the baseline; NAN when given */
     double lag1;          /* correlation of neighbours in the phase; NAN unknown. High: the limits are too narrow */

@@ -4,9 +4,9 @@
  * 4.5 of that beyond both the median of the five values before it and that of the five behind it, on the same side: the
  * two conditions keep the edges of a step from looking like outliers. So the last three values of a stretch cannot be
  * told from the beginning of a step; the chart's limits speak of those.
- * A break is looked for in two forms on a straight line, a step (level) and a bend (slope), and the form that explains
- * more is taken: a drift that sets in is no step, and the return after a chamber clean is one. Its probability comes from
- * shuffling the residuals of the straight line.
+ * A break is a step or a bend (of the slope), with a level on one side at least or on a straight line; Schwarz's criterion takes
+ * the form: a drift that sets in is no step, and the return after a chamber clean is one. Its probability comes from shuffling the
+ * residuals of the mean or of the line.
  * What this file does not do: causes; correlated noise, for which it finds too much. */
 #include "judge/finding.h"
 
@@ -19,9 +19,10 @@
 #include "judge/factors.h"
 
 #define STANDS_OUT 4.5
-#define DRIFTS 0.01
+#define DRIFTS 0.003
+#define CLEARLY 5.0 /* by how much Schwarz's criterion has to prefer a break to the straight line it would be without a level beside it */
 #define MEDIAN_RANGE 0.9538725524 /* median of |difference| of two normal values of sd 1: 0.6745 sqrt(2) */
-enum { SIDE = 5, LEAST_SIDE = 3, LEAST_STRETCH = 5, SHUFFLES = 299, MOST_ABOVE = 2 }; /* 3 of 300: p = 0.01 */
+enum { SIDE = 5, LEAST_SIDE = 3, LEAST_STRETCH = 5, SHUFFLES = 999, MOST_ABOVE = 2 }; /* 3 of 1000: p = 0.003 */
 
 typedef struct {
     double *y;     /* [n] kept values */
@@ -91,6 +92,10 @@ typedef struct {
     break_kind kind;
 } split;
 
+static void keep_better(split *best, double sum, double norm, size_t at, break_kind kind) {
+    if (norm > 0.0 && sum * sum / norm > best->gain) *best = (split){ sum * sum / norm, at, kind };
+}
+
 /* r[n] are residuals of the straight line, so that only their sums behind the break matter. */
 static split best_split(const double *r, size_t n) {
     double m = (double)n, mid = 0.5 * (m - 1.0), tt = m * (m * m - 1.0) / 12.0, tail = 0.0, tail_t = 0.0;
@@ -107,10 +112,8 @@ static split best_split(const double *r, size_t n) {
         double g1 = count * (count + 1.0) / 2.0, g2 = count * (count + 1.0) * (2.0 * count + 1.0) / 6.0;
         double gt = g2 + (place - 1.0 - mid) * g1;
         double bend_norm = g2 - g1 * g1 / m - gt * gt / tt, bend = tail_t - (place - 1.0) * tail;
-        if (step_norm > 1e-9 * m && step * step / step_norm > best.gain)
-            best = (split){ step * step / step_norm, i, BREAK_STEP };
-        if (bend_norm > 1e-9 * m && bend * bend / bend_norm > best.gain)
-            best = (split){ bend * bend / bend_norm, i, BREAK_BEND };
+        keep_better(&best, step, step_norm > 1e-9 * m ? step_norm : 0.0, i, BREAK_STEP);
+        keep_better(&best, bend, bend_norm > 1e-9 * m ? bend_norm : 0.0, i, BREAK_BEND);
     }
     return best;
 }
@@ -148,13 +151,51 @@ static void shuffle(kept *k, double *r, size_t n) {
     }
 }
 
+/* One regressor besides the mean, so with a level that stays on one side at least: a step between two levels, a level that turns
+ * into a ramp, a ramp that turns into a level. c[n] are residuals of the mean. */
+static split best_level(const double *c, size_t n) {
+    double m = (double)n, tail = 0.0, tail_t = 0.0, head = 0.0, head_t = 0.0;
+    split best = { 0.0, 0, BREAK_STEP };
+    for (size_t i = n; i-- > LEAST_STRETCH;) {
+        double count = m - (double)i, g1 = count * (count + 1.0) / 2.0, g2 = g1 * (2.0 * count + 1.0) / 3.0;
+        tail += c[i];
+        tail_t += c[i] * (double)i;
+        if (n - i < LEAST_STRETCH) continue;
+        keep_better(&best, tail, count * (m - count) / m, i, BREAK_STEP);
+        keep_better(&best, tail_t - ((double)i - 1.0) * tail, g2 - g1 * g1 / m, i, BREAK_BEND);
+    }
+    for (size_t i = 0; i + LEAST_STRETCH < n; i++) { /* values 0..i are the ramp */
+        double count = (double)i + 1.0, g1 = count * (count + 1.0) / 2.0, g2 = g1 * (2.0 * count + 1.0) / 3.0;
+        head += c[i];
+        head_t += c[i] * (double)i;
+        if (i + 1 >= LEAST_STRETCH) keep_better(&best, count * head - head_t, g2 - g1 * g1 / m, i + 1, BREAK_BEND);
+    }
+    return best;
+}
+
+static double centre(const double *y, size_t n, double *c) {
+    double mean = 0.0, rest = 0.0;
+    for (size_t i = 0; i < n; i++) mean += y[i];
+    mean /= (double)n;
+    for (size_t i = 0; i < n; i++) {
+        c[i] = y[i] - mean;
+        rest += c[i] * c[i];
+    }
+    return rest;
+}
+
+/* Schwarz G. (1978) Ann. Stat. 6, 461-464; the place of a break counts as a parameter. */
+static double criterion(double rest, size_t n, double parameters) {
+    return (double)n * log(fmax(rest, 1e-300) / (double)n) + parameters * log((double)n);
+}
+
 /* The straight line takes two of the residuals' freedoms: shuffled ones are straightened again. */
-static double split_p(kept *k, double gain, double rest, size_t n, double *r, double *again) {
+static double split_p(kept *k, double share, size_t n, int levels, double *r, double *again) {
     size_t above = 0, done = 0;
     while (done < SHUFFLES && above <= MOST_ABOVE) {
         shuffle(k, r, n);
-        double total = straighten(r, n, again);
-        above += best_split(again, n).gain / total >= gain / rest;
+        double total = levels ? centre(r, n, again) : straighten(r, n, again);
+        above += (levels ? best_level(again, n) : best_split(again, n)).gain / total >= share;
         done++;
     }
     return ((double)above + 1.0) / ((double)done + 1.0);
@@ -162,10 +203,17 @@ static double split_p(kept *k, double gain, double rest, size_t n, double *r, do
 
 static void search(kept *k, size_t first, size_t n, double *scratch, findings *f) {
     if (n < FINDINGS_LEAST || f->n_breaks == FINDINGS_MOST) return;
-    double *r = k->work, rest = straighten(k->y + first, n, r);
+    const double *y = k->y + first;
+    double *r = k->work, about_mean = centre(y, n, scratch);
+    split level = best_level(scratch, n);
+    double about_line = straighten(y, n, r);
     split s = best_split(r, n);
+    double as_level = criterion(about_mean - level.gain, n, 3.0);
+    int levels = as_level + CLEARLY < criterion(about_line, n, 2.0) && as_level < criterion(about_line - s.gain, n, 4.0);
+    double rest = levels ? centre(y, n, r) : about_line;
+    if (levels) s = level;
     if (!s.at || !(rest > 0.0)) return;
-    double p = split_p(k, s.gain, rest, n, r, scratch);
+    double p = split_p(k, s.gain / rest, n, levels, r, scratch);
     if (p > (MOST_ABOVE + 1.0) / (SHUFFLES + 1.0)) return;
     finding_break b = { s.kind, first + s.at - 1, first + s.at, MISSING, MISSING, MISSING, p };
     size_t at = f->n_breaks++;

@@ -1,7 +1,7 @@
 /* The ledger: one SQLite file, one row per sample and run; the view `quantities` shows it as one row per sample, quantity and run.
  *
  * Safety: the classical rollback journal (a write-ahead log needs shared memory, which network drives do not give),
- * one BEGIN IMMEDIATE per batch of rows, a busy timeout of 30 s, and UNIQUE(sample, fingerprint), so that several
+ * one BEGIN IMMEDIATE per batch of rows, up to two minutes of waiting, and UNIQUE(sample, fingerprint), so that several
  * writers may add the same run at the same time and it is there once. application_id and user_version mark the file
  * as ours; anything else is refused, never altered.
  * Missing numbers are NULL in the file and NAN outside. Times are compared as points in time (SQLite julianday), so
@@ -12,12 +12,13 @@
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
+#include <time.h>
 #include <unistd.h>
 
 #include "base/mem.h"
 #include "base/text.h"
 
-enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 3, WAIT_MS = 30000 };
+enum { LEDGER_ID = 0x53575244 /* "SWRD" */, LEDGER_VERSION = 3, WAIT_MS = 120000 };
 
 static const char schema[] =
     "CREATE TABLE runs("
@@ -166,6 +167,25 @@ static status bring_up(history *h, error *e) {
     return st;
 }
 
+/* Short naps of uneven length: SQLite's own handler sleeps up to a tenth of a second at a time, and of eight busy writers one
+ * can then miss every gap for half a minute. */
+static int nap(void *handle, int times) {
+    history *h = handle;
+    struct timespec now, pause = { 0, 0 };
+    clock_gettime(CLOCK_MONOTONIC, &now);
+    double ms = 1e3 * (double)now.tv_sec + 1e-6 * (double)now.tv_nsec;
+    if (times == 0) h->waiting_since_ms = ms;
+    if (ms - h->waiting_since_ms > (double)h->wait_ms) return 0;
+    pause.tv_nsec = 1000000L * (1 + (times < 4 ? times : 4)) + now.tv_nsec % 2000000L;
+    nanosleep(&pause, NULL);
+    return 1;
+}
+
+void history_set_wait(history *h, int wait_ms) {
+    h->wait_ms = wait_ms;
+    sqlite3_busy_handler(h->db, nap, h);
+}
+
 status history_open(const char *path, int read_only, history **out, error *e) {
     *out = NULL;
     if (!path[0]) return fail(e, ST_IO, "history: no file name was given");
@@ -184,7 +204,7 @@ status history_open(const char *path, int read_only, history **out, error *e) {
         if (sqlite3_open_v2(name.s, &h->db, mode | SQLITE_OPEN_NOMUTEX, NULL) != SQLITE_OK) st = history_say(h, "opening it", e);
     }
     if (st == ST_OK) {
-        sqlite3_busy_timeout(h->db, WAIT_MS);
+        history_set_wait(h, WAIT_MS);
         ledger found = LEDGER_OURS;
         st = history_run_sql(h, "BEGIN", "opening it", e);
         if (st == ST_OK) st = identify(h, &found, e);
@@ -202,7 +222,6 @@ status history_open(const char *path, int read_only, history **out, error *e) {
     return st;
 }
 
-void history_set_wait(history *h, int wait_ms) { sqlite3_busy_timeout(h->db, wait_ms); }
 
 int history_bind(sqlite3_stmt *s, int at, const char *text) {
     return sqlite3_bind_text(s, at, text ? text : "", -1, SQLITE_STATIC);

@@ -44,9 +44,9 @@ typedef struct {
  *   out  *h the caller's (history_close), NULL on failure
  * An older ledger is brought up to date in one transaction when it is opened for writing, and read as it is otherwise.
  *   err  ST_IO no name, not a ledger of this program, a newer ledger, not writable, absent when read_only, locked for
- *        more than 30 s; ST_NO_MEMORY */
+ *        more than two minutes; ST_NO_MEMORY */
 status history_open(const char *path, int read_only, history **h, error *e);
-/* How long a locked file is waited for; 30 000 ms after history_open. */
+/* How long a locked file is waited for; 120 000 ms after history_open. */
 void history_set_wait(history *h, int wait_ms);
 /* Adds the rows in one transaction, all or none; a row whose (sample, fingerprint) is known is left alone.
  *   out  *added how many came (0 on failure)

@@ -8,6 +8,8 @@
 struct history {
     sqlite3 *db;
     char *path;
+    int wait_ms;
+    double waiting_since_ms;
     int version; /* of the file: a ledger opened for reading only may be older than this program's */
 };
 

@@ -42,7 +42,7 @@ static void add_interval(double lo, double hi, int digits, textbuf *t) {
 
 static int is_clear(const trend_slope *d) { return isfinite(d->lo) && isfinite(d->hi) && (d->lo > 0.0 || d->hi < 0.0); }
 
-int sentence_drifts(const trend_slope *d) { return is_clear(d) && d->p < 0.01; }
+int sentence_drifts(const trend_slope *d) { return is_clear(d) && d->p < 0.003; }
 
 enum { FAR = 100 }; /* etches; beyond that a straight line says nothing */
 
@@ -73,7 +73,7 @@ void sentence_drift(const sentence_subject *s, const trend_slope *d, const trend
     text_addf(t, " (%zu etches)", d->n);
 }
 
-void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart_options *o, textbuf *t) {
+void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart_options *o, int steady, textbuf *t) {
     sentence_name(s, t);
     if (!isfinite(p->sigma) || !isfinite(p->centre)) {
         text_addf(t, ": no limits, %s", p->n_used < CHART_LEAST_BASELINE ? "the phase holds fewer than 5 etches" : "the etches do not scatter");
@@ -85,7 +85,7 @@ void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart
     add_number(p->centre - 3.0 * p->sigma, s->digits, t);
     text_add(t, " to ");
     add_value(s, p->centre + 3.0 * p->sigma, s->digits, t);
-    if (p->stated) text_addf(t, ", from the %zu etches of the stated period", p->n_baseline);
+    if (p->stated) text_addf(t, steady ? ", from the first %zu steady etches" : ", from the %zu etches of the stated period", p->n_baseline);
     else if (p->n_baseline) text_addf(t, ", from the first %zu etches", p->n_baseline);
     else text_add(t, ", as given");
     if (p->n_baseline && !p->stated && o->baseline > p->n_used)

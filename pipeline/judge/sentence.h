@@ -17,13 +17,14 @@ typedef struct {
 
 /* "spacing", as spoken. */
 void sentence_name(const sentence_subject *s, textbuf *t);
-/* Whether a slope is called a drift: Kendall's p below 0.01 and 0 outside its interval. */
+/* Whether a slope is called a drift: Kendall's p below 0.003 (as rare as a value beyond 3 sigma) and 0 outside its interval. */
 int sentence_drifts(const trend_slope *d);
 /* "spacing drifts by +11.2 nm per etch (95 %: 8.1 to 14.3); at this rate it leaves its target in 5 etches"; per_day may be
  * NULL. Where only the 95 % interval leaves out 0 it "may drift"; else no clear drift, with the interval. */
 void sentence_drift(const sentence_subject *s, const trend_slope *per_etch, const trend_slope *per_day, textbuf *t);
-/* Centre, limits and what they rest on; a phase without limits says what is missing. */
-void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart_options *o, textbuf *t);
+/* Centre, limits and what they rest on; a phase without limits says what is missing. steady: its stated
+ * points are those of its first steady stretch. */
+void sentence_phase(const sentence_subject *s, const chart_phase *p, const chart_options *o, int steady, textbuf *t);
 /* "W7 lies beyond 3 sigma (high side: 402 nm, 4.1 sigma from the centre)"; every rule that fired. */
 void sentence_alarm(const sentence_subject *s, const char *sample, const chart_point *p, textbuf *t);
 /* How often the rules cry wolf on a steady process: with known limits, and (`drawn`, NAN: not said) with all that is on this chart and

@@ -98,11 +98,9 @@ static void look(const control *c, int noted) {
         }
         if (noted && c->phases[k].since.n_a && c->phases[k].since.hi < 0.0) total.steps++;
     }
-    for (size_t i = 0; i < QUIET; i++) {
+    for (int i = 0; i < QUIET; i++) {
         const chart_point *p = &c->c.points[i];
-        size_t in_phase = 0;
-        for (size_t j = 0; j < i; j++) in_phase += c->c.points[j].phase == p->phase;
-        if (in_phase < c->c.phases[p->phase].n_baseline || i == OUTLIER) continue; /* a baseline is inside its own limits */
+        if (i == OUTLIER) continue;
         total.quiet_points++;
         total.quiet_alarms += p->alarms != 0;
         total.stated += 1.0 / c->false_alarms;

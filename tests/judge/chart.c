@@ -15,6 +15,7 @@ static void phases(void) {
     chart c = { 0 };
     chart_options o = chart_defaults();
     o.baseline = 6;
+    o.rules |= RULE(SPREAD);
     CHECK(chart_individuals(v, phase, 14, &o, &c, &e) == ST_OK && c.n_phases == 2);
     CHECK(c.phases[0].n == 7 && c.phases[0].n_used == 7 && c.phases[0].n_baseline == 6);
     CHECK(c.phases[1].first == 7 && c.phases[1].n == 7 && c.phases[1].n_used == 6 && c.phases[1].n_baseline == 6);
@@ -86,6 +87,7 @@ static void turns(void) {
     for (size_t i = 0; i < 30; i++) w[i] = i % 2 ? 1.0 : -1.0;
     w[25] = 30.0;
     o = chart_defaults();
+    o.rules |= RULE(SPREAD);
     CHECK(chart_individuals(w, NULL, 30, &o, &c, &e) == ST_OK && (c.points[25].alarms & RULE(BEYOND)) && c.points[26].alarms == 0);
     chart_free(&c);
 }

@@ -20,7 +20,7 @@ static int holds(const char *want) {
 
 int main(void) {
     sentence_subject s = { "spacing_nm", "nm", 5, 280.0, 420.0 };
-    trend_slope d = { 11.2, 8.1, 14.3, 300.0, 0.003, 7 }, day = { 3.456, 2.0, 5.0, 0.0, 0.003, 7 };
+    trend_slope d = { 11.2, 8.1, 14.3, 300.0, 0.0027, 7 }, day = { 3.456, 2.0, 5.0, 0.0, 0.003, 7 };
     sentence_drift(&s, &d, NULL, &t); /* now 367.2; 52.8 left */
     CHECK(says("spacing drifts by +11.2 nm per etch (95 %: 8.1 to 14.3); at this rate it leaves its target in 5 etches (7 etches)"));
     sentence_drift(&s, &d, &day, &t);
@@ -31,7 +31,7 @@ int main(void) {
     d.intercept = 380.0;
     sentence_drift(&s, &d, NULL, &t);
     CHECK(holds("; it has left its target"));
-    d = (trend_slope){ -0.1, -0.2, -0.01, 350.0, 0.009, 30 };
+    d = (trend_slope){ -0.1, -0.2, -0.01, 350.0, 0.002, 30 };
     sentence_drift(&s, &d, NULL, &t);
     CHECK(says("spacing drifts by -0.1 nm per etch (95 %: -0.2 to -0.01) (30 etches)")); /* too far to say when */
     d.p = 0.02;
@@ -45,24 +45,27 @@ int main(void) {
     CHECK(holds("no clear drift: +0.4 nm per etch (95 %: unknown to unknown)"));
 
     chart_options o = chart_defaults();
+    o.rules |= RULE(SPREAD);
     chart_phase p = { .n = 30, .n_used = 30, .n_baseline = 20, .centre = 350.0, .sigma = 8.0, .spread_mean = 9.0, .lag1 = 0.1 };
-    sentence_phase(&s, &p, &o, &t);
+    sentence_phase(&s, &p, &o, 0, &t);
     CHECK(says("spacing: centre 350 nm, limits 326 to 374 nm, from the first 20 etches"));
     p.lag1 = 0.61;
-    sentence_phase(&s, &p, &o, &t);
+    sentence_phase(&s, &p, &o, 0, &t);
     CHECK(holds("neighbours resemble each other (correlation 0.61)"));
     p = (chart_phase){ .n = 8, .n_used = 8, .n_baseline = 8, .centre = 350.0, .sigma = 8.0, .spread_mean = 9.0, .lag1 = 0.1 };
-    sentence_phase(&s, &p, &o, &t);
+    sentence_phase(&s, &p, &o, 0, &t);
     CHECK(holds("from the first 8 etches (20 are better: the limits are provisional)"));
     p.stated = 1;
-    sentence_phase(&s, &p, &o, &t);
+    sentence_phase(&s, &p, &o, 0, &t);
     CHECK(says("spacing: centre 350 nm, limits 326 to 374 nm, from the 8 etches of the stated period"));
+    sentence_phase(&s, &p, &o, 1, &t);
+    CHECK(holds("from the first 8 steady etches"));
     p.stated = 0;
     p.n_baseline = 0;
-    sentence_phase(&s, &p, &o, &t);
+    sentence_phase(&s, &p, &o, 0, &t);
     CHECK(holds("as given"));
     p = (chart_phase){ .n = 3, .n_used = 3, .centre = MISSING, .sigma = MISSING, .spread_mean = MISSING, .lag1 = MISSING };
-    sentence_phase(&s, &p, &o, &t);
+    sentence_phase(&s, &p, &o, 0, &t);
     CHECK(says("spacing: no limits, the phase holds fewer than 5 etches"));
 
     chart_point q = { .value = 383.25, .z = 4.1562, .alarms = RULE(BEYOND) | RULE(RUN_8) };
