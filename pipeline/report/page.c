@@ -10,6 +10,8 @@
 #include "report/embedded.h"
 #include "report/html.h"
 
+enum { MANY = 60 }; /* samples: beyond it the browser lays out only what is in sight */
+
 /* 'sha256-...' of a script, as the policy wants it. */
 static void add_digest(textbuf *out, const unsigned char *script, size_t n) {
     static const char hex[] = "0123456789abcdef";
@@ -53,8 +55,8 @@ static void add_head(const results *r, textbuf *out) {
              "<li><a href=\"#samples\">Samples</a></li><li><a href=\"#series\">Etch series</a></li>"
              "<li><a href=\"#optics\">Reflectance</a></li><li><a href=\"#window\">Process window</a></li><li><a href=\"#texture\">Texture</a></li>"
              "<li><a href=\"#micrographs\">Micrographs</a></li><li><a href=\"#budgets\">Uncertainty</a></li>"
-             "<li><a href=\"#meaning\">Meaning</a></li><li><a href=\"#inputs\">How it was measured</a></li></ul></nav></header>\n"
-             "<main>\n");
+             "<li><a href=\"#meaning\">Meaning</a></li><li><a href=\"#inputs\">How it was measured</a></li></ul></nav></header>\n");
+    text_add(out, r->n_samples > MANY ? "<main class=\"many-samples\">\n" : "<main>\n");
 }
 
 status report_write(const results *r, const char *out_dir, error *e) {

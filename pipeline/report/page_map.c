@@ -222,7 +222,7 @@ void page_maps(const results *r, textbuf *out) {
         if (!maps++)
             text_add(out, "<section id=\"maps\"><h2>Wafer maps</h2>\n<p class=\"lead\">Blue: narrower than "
                           "the mean of the "
-                          "wafer, amber: wider; the deeper, the further. Small differences may lie within U: "
+                          "wafer, amber: wider; the deeper, the further, full at 10 % from it. Small differences may lie within U: "
                           "compare.</p>\n"
                           "<div class=\"maps\">\n");
         draw_map(r, at, n, out);
