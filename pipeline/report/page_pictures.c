@@ -13,9 +13,18 @@
 #include "report/page.h"
 #include "report/thumbnail.h"
 
-enum { THUMB_WIDTH = 524, THUMB_LEAST = 150, FULL_SIZE_PICTURES = 16, DETAIL_NX = 200, DETAIL_NY = 150 };
+enum { THUMB_WIDTH = 524, THUMB_LEAST = 150, DETAIL_NX = 200, DETAIL_NY = 150 };
 enum { MAX_CARDS = 500, MOST_DETAILS = 24, MOST_LAYERED = 160 };
-static const size_t picture_budget = (size_t)3100 << 10; /* bytes of the page for pictures */
+/* Bytes of the page: of all of it, of what follows the pictures (scripts, tables of columns; the budgets of a sample), of one
+ * picture. A picture has about 400 marks, and a JPEG with its masks a third of a byte a pixel, 4/3 of that as text. */
+enum { WHOLE_PAGE = 4800000, AFTER = 330000, AFTER_SAMPLE = 5600, MARKS = 8000 };
+static const double bytes_per_px = 0.42;
+
+/* What the pictures may take, how wide each may be, and whether there is room for layers. */
+typedef struct {
+    size_t budget, width;
+    int layered;
+} plan;
 
 void page_flag_name(textbuf *out, int bit) {
     for (const char *c = flag_word(bit); *c; c++) text_add_n(out, *c == '_' ? " " : c, 1);
@@ -89,7 +98,7 @@ static void add_image(textbuf *out, const small_picture *p, const char *lead, co
 }
 
 /* Reads the overlay of image i; otherwise says in its place why there is none. */
-static void read_picture(const results *r, size_t i, const char *out_dir, size_t width, size_t spent,
+static void read_picture(const results *r, size_t i, const char *out_dir, const plan *p, size_t spent,
                          small_picture *whole, small_picture *detail, textbuf *out) {
     const char *relative = r->overlay_paths ? r->overlay_paths[i] : NULL;
     error e = { 0 };
@@ -98,14 +107,14 @@ static void read_picture(const results *r, size_t i, const char *out_dir, size_t
         out->failed = 1;
     } else if (!relative) {
         text_add(out, "<div class=\"blank\">no overlay</div>\n");
-    } else if (spent > picture_budget) {
+    } else if (spent > p->budget) {
         text_add(out, "<div class=\"blank\">Left out to keep the page small: ");
         html_text(out, relative);
         text_add(out, "</div>\n");
     } else {
-        int layered = r->n_images <= MOST_LAYERED && page_layers_add(r, i, out_dir, width, out);
+        int layered = p->layered && page_layers_add(r, i, out_dir, p->width, out);
         size_t cut = r->n_images > MOST_DETAILS ? 0 : DETAIL_NX;
-        if ((!layered || cut) && thumbnail_recall(r->picture_cache, r->overlay_marks ? r->overlay_marks[i] : NULL, path, layered ? 0 : width, cut, DETAIL_NY,
+        if ((!layered || cut) && thumbnail_recall(r->picture_cache, r->overlay_marks ? r->overlay_marks[i] : NULL, path, layered ? 0 : p->width, cut, DETAIL_NY,
                                                        whole, detail, &e)) {
             text_add(out, "<div class=\"blank\">The overlay could not be read: ");
             html_text(out, e.text);
@@ -135,8 +144,7 @@ static void add_facts(const image_row *m, int few, textbuf *out) {
     text_add(out, "</dl>\n");
 }
 
-static void add_card(const results *r, size_t i, const char *out_dir, size_t width, size_t *spent,
-                     textbuf *out) {
+static void add_card(const results *r, size_t i, const char *out_dir, const plan *p, size_t *spent, textbuf *out) {
     const image_row *m = &r->images[i];
     const char *word = m->status ? m->status : "";
     small_picture whole = { 0 }, detail = { 0 };
@@ -148,7 +156,7 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
     html_text(out, m->file);
     text_add(out, "</h3>\n");
     size_t before = out->n;
-    read_picture(r, i, out_dir, width, *spent, &whole, &detail, out);
+    read_picture(r, i, out_dir, p, *spent, &whole, &detail, out);
     if (whole.n) {
         text_add(out, "<a href=\"");
         html_href(out, r->overlay_paths[i]);
@@ -164,7 +172,7 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
         add_reason(out, m->reason);
     }
     text_add(out, "</p>\n<div class=\"facts\">");
-    add_facts(m, r->n_images > MOST_LAYERED, out);
+    add_facts(m, p->width < 300, out);
     if (detail.n) { /* none where there are too many for one page: the link leads to every pixel */
         text_add(out, "<figure>");
         add_image(out, &detail, "Middle of ", m->file, " at full resolution");
@@ -175,20 +183,23 @@ static void add_card(const results *r, size_t i, const char *out_dir, size_t wid
     small_picture_free(&detail);
 }
 
-static size_t thumb_width(const results *r) {
-    size_t n = 0;
+static plan plan_pictures(const results *r, size_t so_far) {
+    size_t n = 0, samples = r->n_samples < 60 ? r->n_samples : 60, spent = so_far + AFTER + AFTER_SAMPLE * samples;
     for (size_t i = 0; r->overlay_paths && i < r->n_images; i++) n += r->overlay_paths[i] != NULL;
     if (n > MAX_CARDS) n = MAX_CARDS;
-    if (n <= FULL_SIZE_PICTURES) return THUMB_WIDTH;
-    size_t width = (size_t)(THUMB_WIDTH * sqrt((double)FULL_SIZE_PICTURES / (double)n));
-    return width < THUMB_LEAST ? THUMB_LEAST : width;
+    plan p = { spent + 1000000 < WHOLE_PAGE ? WHOLE_PAGE - spent : 1000000, THUMB_WIDTH, r->n_images <= MOST_LAYERED };
+    double each = (double)p.budget / (double)(n ? n : 1) - (p.layered ? MARKS : 0.0);
+    double width = sqrt(fmax(each, 0.0) / bytes_per_px / 0.75); /* of a picture four by three */
+    if (width < THUMB_WIDTH) p.width = width > THUMB_LEAST ? (size_t)width : THUMB_LEAST;
+    return p;
 }
 
 static int is_used(const image_row *m) { return m->status && !strcmp(m->status, "ok"); }
 
 /* All that were not used are shown, whatever their number; of the others as many as a page can bear. */
 void page_pictures(const results *r, const char *out_dir, textbuf *out) {
-    size_t spent = 0, width = thumb_width(r);
+    size_t spent = 0;
+    plan p = plan_pictures(r, out->n);
     text_add(out,
              "<section id=\"micrographs\"><h2>Micrographs</h2>\n<p class=\"lead\">Look at these before you "
              "trust the "
@@ -198,7 +209,7 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
              "those do not count for the sizes</li><li><span class=\"sign ring\"></span>the measured spacing around one feature</li><li>a picture opens its "
              "overlay at full size</li></ul>\n");
     if (!r->n_images) text_add(out, "<p>No micrograph was found.</p>\n");
-    text_addf(out, "<div class=\"cards%s\">\n", r->n_images > MOST_LAYERED ? " many" : "");
+    text_addf(out, "<div class=\"cards%s\">\n", p.width < 300 ? " many" : "");
     size_t room = MAX_CARDS, left_out = 0;
     for (size_t i = 0; i < r->n_images; i++)
         if (room && !is_used(&r->images[i])) room--;
@@ -209,7 +220,7 @@ void page_pictures(const results *r, const char *out_dir, textbuf *out) {
             continue;
         }
         if (used) room--;
-        add_card(r, i, out_dir, width, &spent, out);
+        add_card(r, i, out_dir, &p, &spent, out);
     }
     text_add(out, "</div>\n");
     if (left_out)

@@ -11,7 +11,7 @@
 #include "report/page.h"
 #include "report/plot.h"
 
-enum { MAX_POINTS = 121 };
+enum { MAX_POINTS = 101 };
 
 static const char *text_or_empty(const char *s) { return s ? s : ""; }
 

@@ -4,6 +4,7 @@
 #include "report/plot.h"
 
 #include <math.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "base/number.h"
@@ -115,15 +116,33 @@ static void draw_x_axis(const plot *p, const axes *f, textbuf *out) {
     draw_text(out, 0.5 * (f->left + f->right), p->height - 9.0, "middle", INK, "", p->x_label);
 }
 
+/* A path in tenths of a pixel, each point told by its distance from the last: half the bytes, and no drift, as the tenths are whole. */
+typedef struct {
+    long x, y;
+} pen_place;
+
+static void add_tenths(textbuf *out, long v, int first) {
+    text_addf(out, "%s%ld", v < 0 ? "-" : first ? "" : " ", labs(v) / 10);
+    if (labs(v) % 10) text_addf(out, ".%ld", labs(v) % 10);
+}
+
+static void path_to(textbuf *out, pen_place *at, int jump, double x, double y) {
+    pen_place to = { lround(10.0 * x), lround(10.0 * y) };
+    text_add(out, jump ? "M" : "l");
+    add_tenths(out, jump ? to.x : to.x - at->x, 1);
+    add_tenths(out, jump ? to.y : to.y - at->y, 0);
+    *at = to;
+}
+
 /* One closed area for each unbroken run of lo..hi. */
 static void draw_band(const plot_series *s, const axes *f, textbuf *out) {
     for (size_t from = 0, to; from < s->n; from = to + 1) {
         for (to = from; to < s->n && axes_in_band(s, to);) to++;
         if (to - from < 2) continue;
         text_add(out, "<path d=\"");
-        for (size_t i = from; i < to; i++)
-            text_addf(out, "%s%.1f %.1f", i == from ? "M" : "L", axes_x(f, s->x[i]), axes_y(f, s->hi[i]));
-        for (size_t i = to; i-- > from;) text_addf(out, "L%.1f %.1f", axes_x(f, s->x[i]), axes_y(f, s->lo[i]));
+        pen_place at = { 0, 0 };
+        for (size_t i = from; i < to; i++) path_to(out, &at, i == from, axes_x(f, s->x[i]), axes_y(f, s->hi[i]));
+        for (size_t i = to; i-- > from;) path_to(out, &at, 0, axes_x(f, s->x[i]), axes_y(f, s->lo[i]));
         text_addf(out, "Z\" style=\"fill:%s;stroke:none\" fill-opacity=\"0.22\"/>\n", tone_colour[s->tone]);
     }
 }
@@ -137,6 +156,7 @@ static const char *dashes(plot_style style) {
 /* A stretch of the curve below the axis is not drawn along it: that would look like values. */
 static void draw_curve(const plot_series *s, const axes *f, textbuf *out) {
     int pen = 0, was_below = 0;
+    pen_place at = { 0, 0 };
     text_add(out, "<path d=\"");
     for (size_t i = 0; i < s->n; i++) {
         int below = axes_below(f, s->y[i]);
@@ -144,8 +164,7 @@ static void draw_curve(const plot_series *s, const axes *f, textbuf *out) {
             pen = 0;
             continue;
         }
-        text_addf(out, "%s%.1f %.1f", pen && !(below && was_below) ? "L" : "M", axes_x(f, s->x[i]),
-                  axes_y(f, s->y[i]));
+        path_to(out, &at, !pen || (below && was_below), axes_x(f, s->x[i]), axes_y(f, s->y[i]));
         pen = 1;
         was_below = below;
     }
