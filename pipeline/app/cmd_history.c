@@ -150,7 +150,7 @@ const struct argp history_argp = {
     "\nchart QUANTITY\nchange A B [QUANTITY]\nsetting COLUMN [QUANTITY]\nexclude SAMPLE\ninclude SAMPLE\nnote\nnotes\nverify [DIR]\n"
     "differences [QUANTITY]\nimport FILE.csv\nprune",
     "The ledger of every sample measured so far, one row per sample and run. Without a verb: the list.\v"
-    "chart draws the control chart of a column of samples.csv over the etches: limits from the first etches of each phase, "
+    "chart draws the control chart of a column of samples.csv over the etches: limits from the first steady etches of each phase, "
     "what stands out, steps and drifts in words, alarms with the rate of false ones, and Ppk when the target is named. A note of kind change and another value of "
     "the sheet's column recipe (--phase) start a new phase. change compares two lots or recipes (Welch): is the difference real? setting "
     "puts a straight line through a numeric column of the sheet and says which setting brings the quantity to --target, and what "

@@ -170,7 +170,11 @@ status control_make(const control_question *q, control *out, error *e) {
     if (st == ST_OK) st = draw(q, &c, e);
     if (st == ST_OK) {
         size_t newest = c.s.etches[c.s.n - 1].phase;
-        c.false_alarms = q->subgroups ? MISSING : chart_false_alarm_drawn(&c.c.options, c.c.phases[newest].n_baseline);
+        const chart_phase *p = &c.c.phases[newest];
+        int estimated = p->n_baseline > 0 || (c.c.options.rules & (RULE(SPREAD) | RULE(EWMA)));
+        c.false_alarms = q->subgroups || !isfinite(p->sigma) ? MISSING
+                         : estimated ? chart_false_alarm_drawn(&c.c.options, p->n_baseline)
+                                     : chart_false_alarm_length(c.c.options.rules);
     }
     free(r.value);
     free(r.work);

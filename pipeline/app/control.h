@@ -40,7 +40,7 @@ typedef struct {
     chart c;
     sentence_subject subject;
     control_phase *phases; /* [c.n_phases] */
-    double false_alarms;   /* etches to a false alarm with the limits as they were set in the newest phase; NAN unknown */
+    double false_alarms;   /* etches to a false alarm with the limits as they were set in the newest phase; NAN unknown, no limits */
     const history_notes *notes;
     const char *phase_by;
     int subgroups;

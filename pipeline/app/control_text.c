@@ -3,6 +3,7 @@
 #include <string.h>
 
 #include "app/control.h"
+#include "base/number.h"
 #include "base/quantity.h"
 #include "io/json.h"
 
@@ -99,6 +100,24 @@ void control_limits(const control *c, textbuf *out) {
     }
 }
 
+/* Of one test alone, limits known. */
+static double length_alone(const chart_options *o, int bit) {
+    chart_options one = *o;
+    one.rules = 1u << bit;
+    return one.rules & (RULE(SPREAD) | RULE(EWMA)) ? chart_false_alarm_drawn(&one, 0) : chart_false_alarm_length(one.rules);
+}
+
+static void say_tests(const chart_options *o, textbuf *t) {
+    const char *separator = "Each test alone, limits known, one in: ";
+    char shown[NUMBER_TEXT];
+    for (int bit = 0; bit < CHART_RULES; bit++) {
+        if (!(o->rules & (1u << bit))) continue;
+        text_addf(t, "%s%s %s", separator, chart_rule_word(bit), number_text(length_alone(o, bit), 3, shown));
+        separator = ", ";
+    }
+    if (o->rules) text_add(t, ".\n");
+}
+
 void control_alarms(const control *c, textbuf *out) {
     size_t alarms = 0;
     for (size_t i = 0; i < c->s.n; i++) {
@@ -111,6 +130,7 @@ void control_alarms(const control *c, textbuf *out) {
     if (!alarms) text_add(out, "No alarm.\n");
     sentence_false_alarms(&c->c.options, c->false_alarms, c->c.phases[c->s.etches[c->s.n - 1].phase].n_baseline, out);
     text_add(out, ".\n");
+    say_tests(&c->c.options, out);
 }
 
 void control_today(const control *c, textbuf *out) {
@@ -160,12 +180,9 @@ static void json_tests(const chart_options *o, textbuf *t) {
     const char *separator = "";
     text_add(t, "\"tests\": [");
     for (int bit = 0; bit < CHART_RULES; bit++) {
-        chart_options one = *o;
-        one.rules = 1u << bit;
-        if (!(o->rules & one.rules)) continue;
-        int drawn = one.rules & (RULE(SPREAD) | RULE(EWMA));
+        if (!(o->rules & (1u << bit))) continue;
         text_addf(t, "%s{\"test\": \"%s\", \"meaning\": \"%s\"", separator, chart_rule_word(bit), chart_rule_meaning(bit));
-        member(t, "false_alarm_length", drawn ? chart_false_alarm_drawn(&one, 0) : chart_false_alarm_length(one.rules));
+        member(t, "false_alarm_length", length_alone(o, bit));
         text_add(t, "}");
         separator = ", ";
     }

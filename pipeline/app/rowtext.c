@@ -85,6 +85,14 @@ int row_named(const row_member *m, const char *name) {
     return same;
 }
 
+static int lower(char c) { return c >= 'A' && c <= 'Z' ? c - 'A' + 'a' : c; }
+
+int row_named_like(const row_member *m, const char *name) {
+    size_t n = 0;
+    while (n < m->name_n && name[n] && lower(m->name[n]) == lower(name[n])) n++;
+    return n == m->name_n && !name[n];
+}
+
 double row_number(const row_member *m) {
     char shown[64];
     double v = MISSING;

@@ -19,6 +19,8 @@ int row_next(const char **at, row_member *m);
 
 /* 1 when the member has this name, escapes in either taken as they are written by io/json.h. */
 int row_named(const row_member *m, const char *name);
+/* row_named without regard to the case of ASCII letters. */
+int row_named_like(const row_member *m, const char *name);
 
 /* The number of a member, a text that is a number included (columns of the sheet are stored as text); NAN else. */
 double row_number(const row_member *m);

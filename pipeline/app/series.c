@@ -75,7 +75,7 @@ static status read_row(const history_row *r, wanted *w, error *e) {
         if (row_named(&m, w->quantity_hi)) w->hi = row_number(&m);
         if (w->setting && row_named(&m, w->setting)) w->x = row_number(&m);
         if (row_named(&m, "flags")) w->from_file = flagged_from_file(&m);
-        if (m.kind != MEMBER_OTHER && m.value_n && !w->recipe && row_named(&m, w->phase_by) && !(w->recipe = row_text(&m)))
+        if (m.kind != MEMBER_OTHER && m.value_n && !w->recipe && row_named_like(&m, w->phase_by) && !(w->recipe = row_text(&m)))
             return NO_MEMORY(e, "a series");
     }
     if (more < 0) return fail(e, ST_IO, "the ledger holds a damaged row of the sample '%s'", r->sample);

@@ -38,7 +38,7 @@ typedef struct {
 
 typedef struct {
     const char *quantity, *setting; /* any number of samples.csv, columns of the sheet included; setting NULL: none */
-    const char *phase_by;           /* column whose values are recipes; NULL: SERIES_RECIPE */
+    const char *phase_by;           /* column whose values are recipes, in any case; NULL: SERIES_RECIPE */
     const char *only;               /* lot, or value of the phase column: other rows are passed over; NULL: all */
 } series_question;
 #define SERIES_RECIPE "recipe"

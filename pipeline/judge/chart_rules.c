@@ -187,7 +187,7 @@ double chart_false_alarm_length(unsigned rules) {
     static const struct {
         unsigned rules;
         double length;
-    } known[] = { /* Champ and Woodall (1987), table 1, and the same Markov chain for runs of 7 and 9 */
+    } known[] = { /* Champ and Woodall (1987), table 1, and the same Markov chain for runs of 7 and 9 and for single tests */
                   { RULE(BEYOND), 370.40 },
                   { RULE(BEYOND) | RULE(TWO_OF_THREE), 225.44 },
                   { RULE(BEYOND) | RULE(FOUR_OF_FIVE), 166.05 },
@@ -199,6 +199,13 @@ double chart_false_alarm_length(unsigned rules) {
                   { RULE(BEYOND) | RULE(RUN_7), 95.731 },
                   { RULE(BEYOND) | RULE(RUN_9), 216.696 },
                   { RULE(BEYOND) | RULE(TWO_OF_THREE) | RULE(FOUR_OF_FIVE) | RULE(RUN_9), 109.049 },
+                  { RULE(TWO_OF_THREE), 510.689 },
+                  { RULE(FOUR_OF_FIVE), 291.319 },
+                  { RULE(RUN_7), 127.0 }, /* heads or tails k times in a row: 2^k - 1 (Feller W. (1968), XIII.7) */
+                  { RULE(RUN_8), 255.0 },
+                  { RULE(RUN_9), 511.0 },
+                  { RULE(CALM_15), 963.27 }, /* k successes in a row: (1 - p^k) / ((1 - p) p^k), the same */
+                  { RULE(APART_8), 14251.4 },
                   { RULES_ISO, 92.6 },
                   { RULES_NELSON, 148.4 } };
     rules &= ~(RULE(SPREAD) | RULE(EWMA));

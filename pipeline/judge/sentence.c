@@ -118,11 +118,23 @@ static void add_length(double length, textbuf *t) { add_number(length < 100.0 ? 
 void sentence_false_alarms(const chart_options *o, double drawn, size_t baseline, textbuf *t) {
     double length = chart_false_alarm_length(o->rules);
     if (isfinite(drawn)) {
+        const char *with = ", with ", *end = "";
         text_add(t, "On a steady process this chart");
-        if (baseline) text_addf(t, ", with limits from %zu etches", baseline);
-        if (o->rules & RULE(SPREAD)) text_add(t, baseline ? " and the chart of the spread" : ", with the chart of the spread");
-        if (o->rules & RULE(EWMA)) text_add(t, baseline || (o->rules & RULE(SPREAD)) ? " and the weighted average" : ", with the weighted average");
-        text_add(t, ", gives one false alarm in about ");
+        if (baseline) {
+            text_addf(t, "%slimits from %zu etches", with, baseline);
+            with = " and ";
+            end = ",";
+        }
+        if (o->rules & RULE(SPREAD)) {
+            text_addf(t, "%sthe chart of the spread", with);
+            with = " and ";
+            end = ",";
+        }
+        if (o->rules & RULE(EWMA)) {
+            text_addf(t, "%sthe weighted average", with);
+            end = ",";
+        }
+        text_addf(t, "%s gives one false alarm in about ", end);
         add_length(drawn, t);
         text_add(t, " etches");
         if (!isfinite(length)) return;

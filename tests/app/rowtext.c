@@ -19,6 +19,7 @@ int main(void) {
     const char *at = row;
     row_member m;
     CHECK(row_next(&at, &m) == 1 && row_named(&m, "sample") && !row_named(&m, "sampl") && m.kind == MEMBER_TEXT);
+    CHECK(row_named_like(&m, "Sample") && !row_named_like(&m, "Samples") && !row_named_like(&m, "Sampl"));
     char *text = row_text(&m);
     CHECK(text && !strcmp(text, "W1 \"a\""));
     CHECK(isnan(row_number(&m)));

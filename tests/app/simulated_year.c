@@ -1,6 +1,7 @@
 /* A year of etches made by a script with known events, through the ledger: two recipes by turns, a quiet half, a drift that ends with
  * a step at a chamber clean, one outlier. What happened has to be found and said, and the quiet part has to be as quiet as the
  * chart promises. Wafers of an etch share its level and have a noise of their own. */
+#include <cjson/cJSON.h>
 #include <math.h>
 #include <stdint.h>
 #include <stdio.h>
@@ -113,6 +114,40 @@ static int holds(const textbuf *t, const char *words) {
     return there;
 }
 
+static double number_of(const cJSON *object, const char *name) {
+    const cJSON *v = cJSON_GetObjectItem(object, name);
+    return cJSON_IsNumber(v) ? v->valuedouble : MISSING;
+}
+
+/* What the page and other programs read: the newest 100 points with the numbers of all. */
+static void reads(const control *c, int noted) {
+    textbuf t = { 0 };
+    control_json(c, 100, &t);
+    cJSON *root = t.s ? cJSON_Parse(t.s) : NULL;
+    const cJSON *points = cJSON_GetObjectItem(root, "points"), *phases = cJSON_GetObjectItem(root, "phases"),
+                *notes = cJSON_GetObjectItem(root, "notes"), *found = cJSON_GetObjectItem(root, "findings"), *f;
+    CHECK(cJSON_GetArraySize(points) == 100 && fabs(number_of(root, "points_left_out") - 150.0) < 0.5);
+    CHECK(fabs(number_of(cJSON_GetArrayItem(points, 0), "number") - 151.0) < 0.5 && isfinite(number_of(cJSON_GetArrayItem(points, 99), "high")));
+    CHECK_NEAR(number_of(cJSON_GetArrayItem(points, 99), "u"), 6.0, 1e-9);
+    CHECK(cJSON_GetArraySize(phases) == (noted ? 4 : 2) && cJSON_GetArraySize(notes) == noted);
+    const cJSON *first = cJSON_GetArrayItem(phases, 0), *of = cJSON_GetObjectItem(first, "baseline_of");
+    CHECK(cJSON_IsString(of) && !strcmp(of->valuestring, "steady"));
+    CHECK_NEAR(number_of(first, "high") - number_of(first, "centre"), 3.0 * number_of(first, "sigma"), 1e-4);
+    if (noted) CHECK(fabs(number_of(cJSON_GetArrayItem(notes, 0), "before") - (DRIFT_END + 1.0)) < 0.5);
+    size_t outliers = 0, changes = 0;
+    cJSON_ArrayForEach(f, found) {
+        const char *kind = cJSON_GetObjectItem(f, "kind")->valuestring;
+        outliers += !strcmp(kind, "outlier") && fabs(number_of(f, "from") - (OUTLIER + 1.0)) < 0.5;
+        changes += !strcmp(kind, "change") && number_of(f, "size") < 0.0;
+        CHECK(cJSON_IsString(cJSON_GetObjectItem(f, "sentence")));
+    }
+    CHECK(outliers == 1 && changes == (noted ? 2 : 0));
+    CHECK(number_of(root, "false_alarm_length") > 30.0 && fabs(number_of(root, "false_alarm_length_known") - 91.75) < 0.01);
+    CHECK(cJSON_GetArraySize(cJSON_GetObjectItem(root, "sentences")) > 5 && cJSON_GetArraySize(cJSON_GetObjectItem(root, "tests")) == 4);
+    cJSON_Delete(root);
+    text_free(&t);
+}
+
 static void one_year(uint64_t seed, int noted, int speak) {
     error e = { ST_OK, "" };
     history *h = NULL;
@@ -129,6 +164,7 @@ static void one_year(uint64_t seed, int noted, int speak) {
         CHECK(c.c.n_phases == (noted ? 4 : 2)); /* two recipes, before and after the clean */
         CHECK_NEAR(c.s.etches[0].sd, SD_WAFER, 3.0 * SD_WAFER);
         look(&c, noted);
+        if (speak) reads(&c, noted);
     }
     if (speak) {
         control_findings(&c, 0, &t);

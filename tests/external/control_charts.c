@@ -126,6 +126,8 @@ static void run_lengths(void) {
     enum { R1 = RULE(BEYOND), R2 = RULE(TWO_OF_THREE), R3 = RULE(FOUR_OF_FIVE), R4 = RULE(RUN_8) };
     static const char champ[] = "E-27..E-29 Champ and Woodall (1987), table 1, exact by Markov chain";
     static const char others[] = "E-30 Markov chain; E-31 ISO 7870-2; E-32 Nelson (1984) tests 1 to 3";
+    static const char alone[] = "zone tests alone, Markov chain over their last flags, computed outside of the program";
+    static const char feller[] = "Feller W. (1968) An Introduction to Probability Theory, XIII.7 (section from memory): mean wait for a run";
     static const struct { unsigned rules; double shift, length; size_t runs; const char *source; } cases[] = {
         { R1, 0.0, 370.398, 700, champ }, { R1, 1.0, 43.895, 1500, champ }, { R1, 2.0, 6.303, 1500, champ },
         { R1, 3.0, 2.000, 1500, champ }, { R1 | R2, 0.0, 225.44, 700, champ }, { R1 | R3, 0.0, 166.05, 700, champ },
@@ -135,6 +137,8 @@ static void run_lengths(void) {
         { RULES_ZONE, 1.0, 9.222, 1500, champ }, { RULES_ZONE, 2.0, 3.128, 1500, champ },
         { RULES_ZONE, 3.0, 1.667, 1500, champ }, { R1 | RULE(RUN_7), 0.0, 95.731, 700, others },
         { R1 | RULE(RUN_9), 0.0, 216.696, 700, others }, { R1 | R2 | R3 | RULE(RUN_9), 0.0, 109.049, 700, others },
+        { R2, 0.0, 510.689, 700, alone }, { R3, 0.0, 291.319, 700, alone }, { RULE(RUN_7), 0.0, 127.0, 1500, feller },
+        { RULE(RUN_8), 0.0, 255.0, 700, feller }, { RULE(CALM_15), 0.0, 963.27, 400, feller },
         { RULES_ISO, 0.0, 92.6, 2000, others }, { RULES_NELSON, 0.0, 148.4, 1000, others } };
     for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
         double se = MISSING, got = chart_run_length(cases[i].rules, cases[i].shift, cases[i].runs, &se);

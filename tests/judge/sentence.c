@@ -75,6 +75,13 @@ int main(void) {
     sentence_false_alarms(&o, 41.3, 20, &t);
     CHECK(says("On a steady process this chart, with limits from 20 etches and the chart of the spread, gives one false alarm in "
                "about 41 etches; with known limits its pattern tests alone give one in about 92"));
+    o.rules = RULES_ZONE;
+    sentence_false_alarms(&o, 98.4, 0, &t);
+    CHECK(holds("On a steady process this chart gives one false alarm in about 98 etches;"));
+    o.rules |= RULE(SPREAD) | RULE(EWMA);
+    sentence_false_alarms(&o, 50.0, 0, &t);
+    CHECK(holds("this chart, with the chart of the spread and the weighted average, gives one"));
+    o.rules &= ~RULE(EWMA);
     sentence_false_alarms(&o, MISSING, 20, &t);
     CHECK(says("On a steady process with known limits these pattern tests give one false alarm in about 92 etches; the chart of the spread adds "
                "its own"));
