@@ -25,7 +25,7 @@ enum {
 
 /* clang-format off */
 static const struct argp_option window_options[] = {
-    { "spacing",       OPT_SPACING,   "RANGE",    0, "spacings of the map, nm, FROM:TO:STEP (default: 150:500:25), or one with --exponent or --thickness", 0 },
+    { "spacing",       OPT_SPACING,   "RANGE",    0, "spacings of the map, nm, FROM:TO:STEP (default: 150:500:25), or one with --exponent or --thickness (default: the mean of the samples, else 350)", 0 },
     { "height",        OPT_HEIGHT,    "RANGE",    0, "heights of the map, nm (default: 100:600:25)", 0 },
     { "exponent",      OPT_EXPONENT,  "RANGE",    0, "map over the shape's exponent instead of the spacing, such as 1:2:0.25", 0 },
     { "thickness",     OPT_THICKNESS, "RANGE",    0, "map over the thickness of the outermost coating, nm, such as 0:100:10", 0 },
@@ -112,6 +112,17 @@ static status axes(const request *q, window *w, error *e) {
     return st;
 }
 
+/* A map beside the spacing is drawn at the samples' own. */
+static void spacing_of_samples(const request *q, window *w) {
+    double sum = 0.0, n = 0.0;
+    for (size_t i = 0; i < w->n_samples; i++)
+        if (w->samples[i].spacing_nm > 0.0) {
+            sum += w->samples[i].spacing_nm;
+            n += 1.0;
+        }
+    if (w->across != ACROSS_SPACING && !q->spacing && n > 0.0) w->spacing_nm = sum / n;
+}
+
 static status make(const request *q, textbuf *out, error *e) {
     protocol p = { 0 };
     setup s = { 0 };
@@ -125,6 +136,7 @@ static status make(const request *q, textbuf *out, error *e) {
     if (st == ST_OK) st = target_of(q, &p, &w.target, e);
     if (st == ST_OK) st = axes(q, &w, e);
     if (st == ST_OK && q->results) st = window_samples(q->results, &w, e);
+    if (st == ST_OK) spacing_of_samples(q, &w);
     if (st == ST_OK) st = setup_make(&p, &s, e);
     if (st == ST_OK && s.measured.n)
         st = fail(e, ST_BAD_INPUT, "a measured profile has its own height; a map over heights needs a shape");

@@ -128,6 +128,7 @@ status window_fill(window *w, const surface_input *base, const optics_setup *o, 
                     w->x.n * w->height.n, WINDOW_CELLS);
     if (w->across == ACROSS_THICKNESS && !o->n_coatings)
         return fail(e, ST_BAD_INPUT, "a map over coating thickness needs a coating: --coating MATERIAL:NM");
+    w->here = w->across == ACROSS_EXPONENT ? base->link.exponent : o->n_coatings ? o->coatings[0].thickness_nm : MISSING;
     w->cells = mem_array(w->x.n * w->height.n, sizeof *w->cells);
     w->edges = mem_array(w->x.n, sizeof *w->edges);
     status st = w->cells && w->edges ? ST_OK : NO_MEMORY(e, "the map");

@@ -34,6 +34,7 @@ typedef struct {
     across across;
     axis x, height;
     double spacing_nm; /* where spacing is not the axis */
+    double here;       /* exponent or thickness that the surface has today; filled by window_fill, unused across spacing */
     double target;
     window_cell *cells;     /* [height.n * x.n], one row per height; owned */
     window_edge *edges;     /* [x.n]; owned */

@@ -35,16 +35,20 @@ static void member(textbuf *out, int first, const char *name, double v) {
     json_number(out, v, DIGITS);
 }
 
-/* At which height a sample of this spacing keeps the target: the column beside it, straight lines between. */
-static window_edge edge_at(const window *w, double spacing_nm) {
+/* Where a sample stands on the axis: its spacing, or the exponent or film of today's surface, as the protocol has it. */
+static double across_of(const window *w, const window_sample *s) {
+    return w->across == ACROSS_SPACING ? s->spacing_nm : w->here;
+}
+
+/* From which height on the target is kept at x: the columns beside it, straight lines between. */
+static window_edge edge_at(const window *w, double x) {
     window_edge none = { MISSING, MISSING, MISSING, MISSING };
     size_t i = 0;
-    if (w->across != ACROSS_SPACING || !(spacing_nm >= w->x.v[0] && spacing_nm <= w->x.v[w->x.n - 1]))
-        return none;
+    if (!(x >= w->x.v[0] && x <= w->x.v[w->x.n - 1])) return none;
     if (w->x.n == 1) return w->edges[0];
-    while (i + 2 < w->x.n && w->x.v[i + 1] <= spacing_nm) i++;
+    while (i + 2 < w->x.n && w->x.v[i + 1] <= x) i++;
     const window_edge *a = &w->edges[i], *b = a + 1;
-    double t = (spacing_nm - w->x.v[i]) / (w->x.v[i + 1] - w->x.v[i]);
+    double t = (x - w->x.v[i]) / (w->x.v[i + 1] - w->x.v[i]);
     return (window_edge){ (1.0 - t) * a->height_nm + t * b->height_nm,
                           (1.0 - t) * a->area_ratio + t * b->area_ratio,
                           (1.0 - t) * a->sure_height_nm + t * b->sure_height_nm,
@@ -81,7 +85,7 @@ static void samples_json(const window *w, textbuf *out) {
     text_add(out, "  \"samples\": [");
     for (size_t i = 0; i < w->n_samples; i++) {
         const window_sample *s = &w->samples[i];
-        window_edge g = edge_at(w, s->spacing_nm);
+        window_edge g = edge_at(w, across_of(w, s));
         text_add(out, i ? ",\n    {\"sample\": " : "\n    {\"sample\": ");
         json_string(out, s->name);
         member(out, 0, "spacing_nm", s->spacing_nm);
@@ -160,9 +164,7 @@ static int inside(const axis *a, double v) { /* half a step beyond the ends stil
 /* The letter of sample i, 0 when it has none in the map. */
 static char letter(const window *w, size_t i) {
     const window_sample *s = &w->samples[i];
-    if (w->across != ACROSS_SPACING || i >= 52 || !inside(&w->x, s->spacing_nm) ||
-        !inside(&w->height, s->height_nm))
-        return 0;
+    if (i >= 52 || !inside(&w->x, across_of(w, s)) || !inside(&w->height, s->height_nm)) return 0;
     return (char)(i < 26 ? 'A' + (int)i : 'a' + (int)i - 26);
 }
 
@@ -177,7 +179,7 @@ static void map(const window *w, textbuf *out) {
         for (size_t i = 0; i < w->x.n; i++) {
             char shown[3] = { ' ', mark(w, &w->cells[row * w->x.n + i]), '\0' };
             for (size_t k = w->n_samples; k-- > 0;)
-                if (letter(w, k) && nearest(&w->x, w->samples[k].spacing_nm) == i &&
+                if (letter(w, k) && nearest(&w->x, across_of(w, &w->samples[k])) == i &&
                     nearest(&w->height, w->samples[k].height_nm) == row)
                     shown[1] = letter(w, k);
             text_add(out, shown);
@@ -214,7 +216,7 @@ static void contour(const window *w, textbuf *out) {
     }
 }
 
-/* The plain answer at one spacing: that of the samples' mean, else the middle of the axis. */
+/* The plain answer at one place: the samples' mean spacing, else the middle of the axis; today's exponent or film. */
 static void answers(const window *w, textbuf *out) {
     double sum = 0.0, n = 0.0, at;
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
@@ -225,11 +227,12 @@ static void answers(const window *w, textbuf *out) {
         }
     size_t middle = w->x.n / 2;
     at = n > 0.0 ? sum / n : w->across == ACROSS_SPACING ? w->x.v[middle] : w->spacing_nm;
-    window_edge g = w->across == ACROSS_SPACING ? edge_at(w, at) : w->edges[middle];
+    double x = w->across == ACROSS_SPACING ? at : inside(&w->x, w->here) ? w->here : w->x.v[middle];
+    window_edge g = edge_at(w, fmin(fmax(x, w->x.v[0]), w->x.v[w->x.n - 1]));
     text_addf(out, "At a spacing of %s nm", number_text(at, 4, a));
     if (w->across != ACROSS_SPACING)
         text_addf(out, w->across == ACROSS_EXPONENT ? " and an exponent of %s" : " and a film of %s nm",
-                  number_text(w->x.v[middle], 4, a));
+                  number_text(x, 4, a));
     text_addf(out, ", for a weighted reflectance of at most %s %%: ", number_percent(w->target, 4, b));
     if (w->across == ACROSS_SPACING && n > 0.0 && !inside(&w->x, at))
         text_add(out, "outside the map");
@@ -244,7 +247,7 @@ static void samples_text(const window *w, textbuf *out) {
                   "--protocol):\n");
     for (size_t i = 0; i < w->n_samples; i++) {
         const window_sample *s = &w->samples[i];
-        window_edge g = edge_at(w, s->spacing_nm);
+        window_edge g = edge_at(w, across_of(w, s));
         char shown[2] = { letter(w, i) ? letter(w, i) : ' ', '\0' };
         text_addf(out, "  %s %s: spacing %s nm, height %s nm", shown, s->name,
                   isfinite(s->spacing_nm) ? number_text(s->spacing_nm, 4, a) : "?",

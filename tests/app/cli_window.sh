@@ -25,6 +25,13 @@ run 0 window --results "$work/results" --spacing 200:300:50 --height 200:400:50
 says "$out" "Today's samples" "A W07: spacing 251 nm, height 349 nm, 1.03 %, undecided; needs at least 29" "At a spacing of 251 nm"
 checks=$((checks + 1)); [ "$(grep -c '^ *350 .* A' "$out")" -eq 1 ] || miss "the sample is in its cell"
 
+# Across shape or film the samples stand where their protocol has them, at their own spacing.
+run 0 window --results "$work/results" --exponent 1:2:0.5 --height 300:400:50
+says "$out" "A W07: spacing 251 nm" "At a spacing of 251 nm and an exponent of 1," "needs at least 3"
+checks=$((checks + 1)); [ "$(grep -c '^ *350 *A' "$out")" -eq 1 ] || miss "the sample is in the column of the cone"
+run 0 window --results "$work/results" --coating nitride:20 --thickness 0:40:20 --height 300:400:50
+says "$out" "At a spacing of 251 nm and a film of 20 nm,"
+
 run 2 window --spacing 300:200:10
 says "$err" "--spacing: found 300:200:10"
 run 2 window --target 2
