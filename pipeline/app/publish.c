@@ -15,6 +15,7 @@
 #include "base/number.h"
 #include "io/file.h"
 #include "io/json.h"
+#include "io/memo.h"
 #include "report/results.h"
 
 /* The arrays that `results` borrows. */
@@ -182,16 +183,53 @@ static status gather_references(const publication *p, material_for *m, error *e)
     return st == ST_OK ? reflectance(&film, &o->reflect, m->reference_nm, n, m->coated, NULL, e) : st;
 }
 
-/* Pores or hillocks, as most of the measured micrographs. */
+/* All a scenario may read: the rows, which relief, and by the basis protocol and materials. */
+static status scenario_key(const publication *p, const material_for *m, int as_pores, char key[65], error *e) {
+    textbuf t = { 0 };
+    text_addf(&t, "%s|%d|", p->basis, as_pores);
+    for (size_t k = 0; k < p->n_groups; k++) {
+        const char *row = (const char *)&m->samples[k];
+        for (size_t c = 0; c < n_sample_columns; c++) {
+            const column *col = &sample_columns[c];
+            if (col->kind == COL_NUMBER) text_add_n(&t, row + col->offset, sizeof(double));
+        }
+        text_addf(&t, "|%s|%s|", m->samples[k].sample, m->samples[k].verdict);
+    }
+    status st = text_check(&t, "a key", e);
+    if (st == ST_OK) sha256_hex(t.s, t.n, key);
+    text_free(&t);
+    return st;
+}
+
+static int recall_scenario(const char *cache, const char *key, const char *kind, textbuf *out) {
+    char *bytes = NULL;
+    size_t n = 0;
+    if (!memo_get(cache, key, kind, &bytes, &n)) return 0;
+    text_add_n(out, bytes, n);
+    free(bytes);
+    return 1;
+}
+
+/* Pores or hillocks, as most of the measured micrographs. Both maps are many predictions: remembered like those of samples. */
 static status gather_scenarios(const publication *p, material_for *m, error *e) {
+    static const char window[] = "window-1", angles[] = "angles-1";
     size_t pores = 0, seen = 0;
+    char key[65];
     for (size_t i = 0; i < p->folder->n; i++) {
         seen += (size_t)p->images[i].readable;
         pores += p->images[i].readable && p->images[i].relief == RELIEF_PORE;
     }
-    int as_pores = 2 * pores > seen;
-    status st = scenarios_window(m->samples, p->n_groups, as_pores, p->protocol, p->setup, &m->window, e);
-    return st == ST_OK ? scenarios_angles(m->samples, p->n_groups, as_pores, p->protocol, p->setup, &m->angles, e) : st;
+    int as_pores = 2 * pores > seen, fresh = p->options->fresh;
+    status st = scenario_key(p, m, as_pores, key, e);
+    if (st == ST_OK && (fresh || !recall_scenario(m->cache, key, window, &m->window))) {
+        st = scenarios_window(m->samples, p->n_groups, as_pores, p->protocol, p->setup, &m->window, e);
+        if (st == ST_OK) st = memo_put(m->cache, key, window, &m->window, e);
+    }
+    if (st == ST_OK && (fresh || !recall_scenario(m->cache, key, angles, &m->angles))) {
+        st = scenarios_angles(m->samples, p->n_groups, as_pores, p->protocol, p->setup, &m->angles, e);
+        if (st == ST_OK) st = memo_put(m->cache, key, angles, &m->angles, e);
+    }
+    return st;
 }
 
 static void add_member(textbuf *t, const char *name, const char *value) {
