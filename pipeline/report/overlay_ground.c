@@ -1,7 +1,6 @@
 /* The raster part of an overlay: grey levels, veil, and the borders of the label map as coverage masks. */
 #include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
 #include "base/mem.h"
 #include "report/overlay_priv.h"

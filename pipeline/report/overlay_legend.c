@@ -2,8 +2,6 @@
  * them the reasons of an excluded micrograph. It stands below the picture, so that nothing is written over what was seen. */
 #include <math.h>
 #include <stdio.h>
-#include <stdlib.h>
-#include <string.h>
 
 #include "base/flags.h"
 #include "base/number.h"

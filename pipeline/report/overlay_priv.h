@@ -44,7 +44,7 @@ void overlay_ground(const overlay_scene *s, const overlay_tile *tile);
 /* Cell borders as masks under the pen: a dark seam, then the line. err ST_NO_MEMORY */
 status overlay_borders(const overlay_scene *s, const overlay_tile *tile, pen *p, error *e);
 
-/* The signs, below the picture: counted disc and frame diamond, ring, also drawn in the legend. Batches of paths. */
+/* Paths of the signs, without ink: a circle (a counted feature, a ring) and a diamond (a feature in the guard frame). */
 void overlay_disc(pen *p, double x, double y, double r);
 void overlay_diamond(pen *p, double x, double y, double r);
 

@@ -21,17 +21,18 @@ static const double pt_per_mm = 72.0 / 25.4;
 
 sheet_options sheet_defaults(void) { return (sheet_options){ .format = SHEET_SVG, .width_mm = 85.0, .dpi = 300.0, .text_pt = 7.0 }; }
 
-static sheet_colours light(void) {
+/* The tones of samples, the first four, get lighter one after the other, so that they differ in grey too. */
+sheet_colours sheet_light(void) {
     return (sheet_colours){ .paper = INK_RGB(0xffffff), .ink = INK_RGB(0x14181d), .soft = INK_RGB(0x4a525c), .faint = INK_RGB(0xdfe3e8),
                             .target = INK_RGB(0x0b7a5f),
-                            .tone = { INK_RGB(0x1f3f8f), INK_RGB(0xc2500c), INK_RGB(0x2f9e86), INK_RGB(0xd9a400) },
+                            .tone = { INK_RGB(0x1f3f8f), INK_RGB(0xc2500c), INK_RGB(0x2f9e86), INK_RGB(0xd9a400), INK_RGB(0x9430e8) },
                             .mark = { INK_RGB(0x1f3f8f), INK_RGB(0xd9a400), INK_RGB(0xb3261e), INK_RGB(0xffffff) } };
 }
 
-static sheet_colours dark(void) {
+sheet_colours sheet_dark(void) {
     return (sheet_colours){ .paper = INK_RGB(0x14181d), .ink = INK_RGB(0xf1f4f7), .soft = INK_RGB(0xb4bdc8), .faint = INK_RGB(0x343b44),
                             .target = INK_RGB(0x4fd1ae),
-                            .tone = { INK_RGB(0x7fa8ff), INK_RGB(0xff9a5c), INK_RGB(0x5fe0c4), INK_RGB(0xffe08a) },
+                            .tone = { INK_RGB(0x7fa8ff), INK_RGB(0xff9a5c), INK_RGB(0x5fe0c4), INK_RGB(0xffe08a), INK_RGB(0xb060ff) },
                             .mark = { INK_RGB(0x7fa8ff), INK_RGB(0xffe08a), INK_RGB(0xff8a80), INK_RGB(0x14181d) } };
 }
 
@@ -77,7 +78,7 @@ status sheet_open(const sheet_options *o, double height_mm, sheet *s, error *e) 
     if (!st) st = pen_open(s->surface, &s->pen, e);
     if (st) return st;
     s->line = 0.15 * s->em;
-    s->colours = o->dark ? dark() : light();
+    s->colours = o->dark ? sheet_dark() : sheet_light();
     if (o->format == SHEET_PNG) cairo_scale(s->pen.cr, o->dpi / 72.0, o->dpi / 72.0);
     cairo_set_line_join(s->pen.cr, CAIRO_LINE_JOIN_ROUND);
     pen_ink(&s->pen, s->colours.paper);

@@ -1,7 +1,6 @@
 /* A micrograph on a sheet, as wide as the sheet: grey levels stretched as in an overlay, a scale bar in a corner on a ground of its own, signs
  * over the features where they are wanted. SVG and PDF carry the picture at its own resolution. */
 #include <math.h>
-#include <stdlib.h>
 #include <string.h>
 
 #include "base/mem.h"

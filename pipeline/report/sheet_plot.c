@@ -1,10 +1,8 @@
 /* A `plot` on a sheet: laid out by the widths of its own labels, then drawn back to front: cells, target, grid, bands, curves,
  * points, frame. Ranges and ticks are those of report/axes.c, as on the page. */
 #include <math.h>
-#include <stdlib.h>
 #include <string.h>
 
-#include "base/mem.h"
 #include "base/quantity.h"
 #include "report/sheet_priv.h"
 

@@ -8,6 +8,8 @@
 typedef struct {
     ink paper, ink, soft, faint, target, tone[PLOT_TONES], mark[4]; /* by plot_mark */
 } sheet_colours;
+sheet_colours sheet_light(void);
+sheet_colours sheet_dark(void);
 
 typedef struct {
     const sheet_options *o;
