@@ -175,6 +175,20 @@ static void print_notes(const history_notes *l, textbuf *out) {
     text_addf(out, "%zu %s\n", l->n, l->n == 1 ? "note" : "notes");
 }
 
+static void print_notes_json(const history_notes *l, textbuf *out) {
+    text_add(out, "[");
+    for (size_t i = 0; i < l->n; i++) {
+        const history_note *n = &l->notes[i];
+        const char *const members[][2] = { { "at", n->at }, { "kind", n->kind }, { "text", n->text }, { "initials", n->initials } };
+        for (size_t k = 0; k < 4; k++) {
+            text_addf(out, "%s\"%s\": ", k ? ", " : i ? ",\n  {" : "\n  {", members[k][0]);
+            json_string(out, members[k][1]);
+        }
+        text_add(out, "}");
+    }
+    text_add(out, "\n]\n");
+}
+
 /* ---- verbs ---- */
 
 typedef enum { VERB_LIST, VERB_CHART, VERB_CHANGE, VERB_SETTING, VERB_EXCLUDE, VERB_INCLUDE, VERB_NOTE, VERB_NOTES, VERB_VERIFY, VERB_DIFFERENCES, VERB_IMPORT, VERB_PRUNE, VERBS } verb;
@@ -271,7 +285,10 @@ static status read_verb(history *h, verb v, request *q, textbuf *out, error *e) 
     case VERB_CHART: st = history_chart(&q->ask, out, e); break;
     case VERB_CHANGE: st = history_change(&q->ask, q->words[1], q->words[2], out, e); break;
     case VERB_SETTING: st = history_setting(&q->ask, q->words[1], out, e); break;
-    case VERB_NOTES: print_notes(&notes, out); break;
+    case VERB_NOTES:
+        if (q->json) print_notes_json(&notes, out);
+        else print_notes(&notes, out);
+        break;
     case VERB_DIFFERENCES: st = history_differences(&q->ask, out, e); break;
     default: st = history_print(&rows, q->json ? FORM_JSON : q->csv ? FORM_CSV : FORM_TEXT, out, e); break;
     }

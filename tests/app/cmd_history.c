@@ -163,6 +163,11 @@ static void follows_the_process(void) {
     text = RUN(&code, "notes");
     CHECK(code == EXIT_DONE && holds(text, "remark  warm (KL)") && holds(text, "2 notes"));
     free(text);
+    text = RUN(&code, "notes", "--json");
+    cJSON *list = cJSON_Parse(text);
+    CHECK(code == EXIT_DONE && cJSON_GetArraySize(list) == 2 && holds(text, "\"kind\": \"remark\", \"text\": \"warm\", \"initials\": \"KL\"}"));
+    cJSON_Delete(list);
+    free(text);
     text = RUN(&code, "chart", "--since=2026-05-01", "--json", "--rules=iso,ewma");
     cJSON *chart = cJSON_Parse(text);
     const cJSON *phases = cJSON_GetObjectItem(chart, "phases"), *rules = cJSON_GetObjectItem(chart, "rules");
