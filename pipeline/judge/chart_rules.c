@@ -3,16 +3,16 @@
  * Every test raises the rate of false alarms: at the limits alone one in 370 etches, with all four zone rules one in 92
  * (Champ C.W., Woodall W.H. (1987) Technometrics 29, 393-399). So the length to a false alarm is said with every chart:
  * from the published table where the set is in it, otherwise by simulating independent normal values with a fixed seed
- * (splitmix64: Steele G.L. et al. (2014) OOPSLA; Box G.E.P., Muller M.E. (1958)).
+ * (Box G.E.P., Muller M.E. (1958) Ann. Math. Stat. 29, 610-611).
  * What this file does not do: correlated values, for which every figure here is too hopeful. */
 #include <math.h>
-#include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "base/mem.h"
 #include "base/quantity.h"
 #include "judge/chart.h"
+#include "judge/dice_priv.h"
 
 static const struct {
     const char *word, *meaning;
@@ -118,10 +118,7 @@ typedef struct {
 } dice;
 
 static double uniform(dice *d) { /* inside 0..1, never an end */
-    uint64_t x = d->state += 0x9e3779b97f4a7c15u;
-    x = (x ^ (x >> 30)) * 0xbf58476d1ce4e5b9u;
-    x = (x ^ (x >> 27)) * 0x94d049bb133111ebu;
-    return ((double)((x ^ (x >> 31)) >> 11) + 0.5) / 9007199254740992.0;
+    return ((double)(dice_next(&d->state) >> 11) + 0.5) / 9007199254740992.0;
 }
 
 static double normal(dice *d) {

@@ -11,11 +11,11 @@
 #include "judge/finding.h"
 
 #include <math.h>
-#include <stdint.h>
 #include <stdlib.h>
 
 #include "base/mem.h"
 #include "base/quantity.h"
+#include "judge/dice_priv.h"
 #include "judge/factors.h"
 
 #define STANDS_OUT 4.5
@@ -135,16 +135,9 @@ static double straighten(const double *y, size_t n, double *r) {
     return rest;
 }
 
-static uint64_t next_random(kept *k) { /* splitmix64: Steele G.L. et al. (2014) OOPSLA */
-    uint64_t x = k->dice += 0x9e3779b97f4a7c15u;
-    x = (x ^ (x >> 30)) * 0xbf58476d1ce4e5b9u;
-    x = (x ^ (x >> 27)) * 0x94d049bb133111ebu;
-    return x ^ (x >> 31);
-}
-
 static void shuffle(kept *k, double *r, size_t n) {
     for (size_t i = n; i > 1; i--) {
-        size_t j = (size_t)(next_random(k) % i);
+        size_t j = (size_t)(dice_next(&k->dice) % i);
         double keep = r[i - 1];
         r[i - 1] = r[j];
         r[j] = keep;

@@ -43,9 +43,9 @@ typedef struct {
  *   out  indices count in v
  *   err  ST_NO_MEMORY
  *   src  outliers: median of the neighbours against the median moving range (Hampel F.R. (1974) J. Am. Stat. Assoc. 69,
- *        383-393, from memory); breaks: form by Schwarz G. (1978) Ann. Stat. 6, 461-464; place by the largest reduction of the sum of squares over all places, judged by shuffled
- *        residuals with sequential stopping (Besag J., Clifford P. (1991) Biometrika 78, 301-304, from memory), then the
- *        halves (binary segmentation, Scott A.J., Knott M. (1974) Biometrics 30, 507-512, from memory) */
+ *        383-393, from memory); breaks: largest reduction of the sum of squares over all places, form by Schwarz G. (1978) Ann.
+ *        Stat. 6, 461-464, judged by shuffled residuals with sequential stopping (Besag J., Clifford P. (1991) Biometrika 78,
+ *        301-304, from memory), then the halves (binary segmentation, Scott A.J., Knott M. (1974) Biometrics 30, 507-512, from memory) */
 status findings_of(const double *v, size_t n, findings *out, error *e);
 
 #endif
