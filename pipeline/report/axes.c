@@ -18,6 +18,7 @@ size_t plot_ticks(double lo, double hi, size_t max, double *ticks) {
 static size_t log_ticks(double lo, double hi, size_t max, double *ticks) {
     static const double lead[] = { 1.0, 2.0, 5.0 };
     size_t step = hi - lo > 2.2 ? 3 : 1, n = 0;
+    if (!isfinite(lo) || !isfinite(hi)) return 0;
     for (double d = floor(lo); d <= hi; d += 1.0)
         for (size_t k = 0; k < 3 && n < max; k += step) {
             double v = lead[k] * pow(10.0, d), l = log10(v);

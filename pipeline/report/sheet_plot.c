@@ -68,6 +68,7 @@ static void cell_range(sheet_scene *c) {
         c->cell_lo = fmin(c->cell_lo, log10(v));
         c->cell_hi = fmax(c->cell_hi, log10(v));
     }
+    if (!isfinite(c->cell_lo)) c->cell_lo = c->cell_hi = 0.0;
     if (!(c->cell_hi > c->cell_lo)) c->cell_hi = c->cell_lo + 1.0;
 }
 

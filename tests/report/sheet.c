@@ -163,6 +163,10 @@ static void check_cells(void) {
     CHECK(low > middle + 30.0 && middle > high + 30.0); /* 30 % below, 0.3 % above */
     free(d.rgb);
     free(f.bytes);
+    static const double none[6] = { MISSING, MISSING, -1.0, 0.0, MISSING, MISSING };
+    cells.v = none;
+    CHECK(sheet_plot(&p, &cells, &o, &f.bytes, &f.n, &e) == ST_OK);
+    free(f.bytes);
 }
 
 static size_t longest_white(const decoded *d) {
