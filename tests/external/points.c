@@ -1,5 +1,5 @@
 /* Point statistics against a library for spatial point patterns and against published constants (A-01 ..
- * A-19), and the watershed as a maker of Voronoi cells (A-17, A-18, C-08 .. C-12). The four point sets stand
+ * A-19, C-26), and the watershed as a maker of Voronoi cells (A-17, A-18, C-08 .. C-14). The four point sets stand
  * in data/points_*.csv with their sources. */
 #include <stdlib.h>
 #include <string.h>
@@ -303,6 +303,7 @@ static void check_random_cells(void) {
     for (size_t i = 0; i < 2 * N; i++) v[i] = SIDE * uniform(&seed) - 0.5;
     detection d;
     double sw = 0.0, area = 0.0, area2 = 0.0, sides = 0.0, sides2 = 0.0, share[4] = { 0 };
+    double rim = 0.0, rim2 = 0.0, ecd = 0.0, ecd2 = 0.0;
     CHECK(voronoi(v, v + N, N, SIDE, SIDE, 60.0, &d) == 0);
     for (size_t i = 0; i < N; i++) {
         const feature *c = &d.features[i];
@@ -312,6 +313,10 @@ static void check_random_cells(void) {
         area2 += w * a * a;
         sides += w * s;
         sides2 += w * s * s;
+        rim += w * c->perimeter_px / sqrt(unit2);
+        rim2 += w * c->perimeter_px * c->perimeter_px / unit2;
+        ecd += w * c->cell_ecd_px / sqrt(unit2);
+        ecd2 += w * c->cell_ecd_px * c->cell_ecd_px / unit2;
         if (s > 3.5 && s < 7.5) share[c->n_neighbours - 4] += w;
     }
     area /= sw;
@@ -320,11 +325,35 @@ static void check_random_cells(void) {
     CHECK_SOURCE(sides, 6.0, 0.10, "C-08 Meijering 1953 (edges shorter than a pixel are not seen)");
     CHECK_SOURCE(area2 / sw - area * area, 0.28017604093, 0.031, "C-09 Gilbert 1962, Brakke 2005");
     CHECK_SOURCE(sides2 / sw - sides * sides, 1.7808116990, 0.18, "C-10 exact integral");
+    CHECK_SOURCE(area2 / sw - area * area, 2.0 / 7.0, 0.036, "C-14 gamma law of the cell area: Jarai-Szabo and Neda 2007");
+    rim /= sw;
+    ecd /= sw;
+    CHECK_SOURCE(rim, 4.0, 0.06, "C-08 mean perimeter, Meijering 1953");
+    CHECK_SOURCE(rim2 / sw - rim * rim, 0.9458, 0.10, "C-11 variance of the perimeter, Brakke (from memory)");
+    CHECK_SOURCE(ecd, 1.0894, 0.02, "C-13 mean equivalent diameter, simulation of 960 000 cells");
+    CHECK_SOURCE(sqrt(ecd2 / sw - ecd * ecd), 0.2942, 0.014, "C-13 its standard deviation");
     static const double want[] = { 0.107, 0.259, 0.295, 0.199 };
     for (int i = 0; i < 4; i++)
         CHECK_SOURCE(share[i] / sw, want[i], 0.033, "C-12 Hinde & Miles 1980 (from memory)");
     detection_free(&d);
     free(v);
+}
+
+/* C-26: centres in a fixed part of the field, whatever the border cuts: a count without bias. Poisson fields of 25 per um2. */
+static void check_frame(void) {
+    enum { FIELDS = 1000, PX = 1000, MOST = 80 };
+    static feature f[MOST];
+    uint64_t seed = 4242;
+    double sum = 0.0;
+    for (int k = 0; k < FIELDS; k++) {
+        size_t n = 0, counted = 0;
+        for (double t = -log(uniform(&seed)); t < 25.0 && n < MOST; t -= log(uniform(&seed)), n++) {
+            f[n].x = PX * uniform(&seed) - 0.5;
+            f[n].y = PX * uniform(&seed) - 0.5;
+        }
+        sum += guarded_density(f, n, PX, PX, 100.0, &counted) * PX * PX / FIELDS;
+    }
+    CHECK_SOURCE(sum, 25.0, 4.0 * 5.0 / 0.8 / sqrt(FIELDS), "C-26 Gundersen 1977, Poisson fields");
 }
 
 static void check_counts(void) {
@@ -367,5 +396,6 @@ int main(void) {
     check_random_points();
     check_random_cells();
     check_counts();
+    check_frame();
     return check_done();
 }
