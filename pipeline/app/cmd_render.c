@@ -30,7 +30,7 @@ enum { OPT_PICTURE = 0x100, OPT_NAME = 0x200, OPT_COUNT, OPT_FORMAT, OPT_RECIPE,
 static const char *const picture_keys[] = {
     "spacing_nm", "px_nm", "size", "pattern", "disorder", "relief", "shape", "fill", "height_spread", "height_by_size",
     "noise", "blur", "edge", "rough", "contrast", "gradient", "streaks", "stretch", "bits", "label", "seed",
-    "second_share", "second_spacing" };
+    "second_share", "second_spacing", "jitter", "smear" };
 
 /* clang-format off */
 static const struct argp_option options[] = {
@@ -69,6 +69,8 @@ static const struct argp_option options[] = {
     { "contrast", OPT_PICTURE + 14, "X",  0, "share of the grey range; above 1 clips (0.7)", 3 },
     { "gradient", OPT_PICTURE + 15, "X",  0, "relative change of brightness across the field (0)", 3 },
     { "streaks",  OPT_PICTURE + 16, "X",  0, "charging streaks along x / contrast (0)", 3 },
+    { "jitter",   OPT_PICTURE + 23, "PX", 0, "standard deviation by which vibration shifts each scan line along x (0)", 3 },
+    { "smear",    OPT_PICTURE + 24, "PX:DEG", 0, "astigmatism: further blur of that standard deviation along DEG only (0:0)", 3 },
     { "bits",     OPT_PICTURE + 18, "8|16", 0, "bit depth (8)", 3 },
     { "no-strip", OPT_NO_STRIP, NULL, 0, "no info strip at the bottom", 3 },
     { "no-scale", OPT_NO_SCALE, NULL, 0, "no pixel size in the file and no scale bar in the strip", 3 },

@@ -43,6 +43,9 @@ static status options_check(const render_options *o, error *e) {
         { "rough", o->rough, 0.0, 10.0 },
         { "noise (electrons per pixel)", o->electrons, 0.0, 1e9 },
         { "blur", o->blur_px, 0.0, 200.0 },
+        { "jitter", o->jitter_px, 0.0, 200.0 },
+        { "smear", o->smear_px, 0.0, 200.0 },
+        { "smear angle", o->smear_angle_deg, -360.0, 360.0 },
         { "contrast", o->contrast, 0.001, 10.0 },
         { "gradient", o->gradient, -2.0, 2.0 },
         { "streaks", o->streaks, 0.0, 10.0 },
@@ -86,7 +89,7 @@ status render_make(const render_options *o, rendering *out, error *e) {
     if (!grey || !r.samples) st = NO_MEMORY(e, "the picture");
     if (st == ST_OK) st = centres_make(o, &c, e);
     /* The probe reaches beyond the frame: so does the surface. */
-    if (st == ST_OK) st = surface_make(o, &c, 2 + (size_t)ceil(4.0 * o->blur_px), &s, e);
+    if (st == ST_OK) st = surface_make(o, &c, 2 + (size_t)ceil(4.0 * (o->blur_px + o->smear_px + o->jitter_px)), &s, e);
     if (st == ST_OK) st = surface_truth(o, &c, &s, &r, e);
     if (st == ST_OK) st = look_make(o, &s, c.spacing, grey, e);
     if (st == ST_OK) {

@@ -31,10 +31,13 @@ typedef struct {
     double rough;          /* sd of a roughness finer than the features / mean height: 0 */
     double electrons;      /* mean electrons per px at full signal (shot noise); 0 = noiseless */
     double blur_px;        /* sd of the probe: 0.7 */
+    double jitter_px;      /* sd by which each scan line is shifted along x: 0 */
+    double smear_px, smear_angle_deg; /* astigmatism: sd of a further blur along this direction (counter-clockwise from x): 0 */
     double contrast;       /* share of the grey range between the 0.1 % and 99.9 % quantile of the signal: 0.7; above
                               1 clips */
     double gradient;       /* relative brightness change across the field: 0 */
     double streaks;        /* sd of charging streaks along x / contrast: 0 */
+    /* The angle follows its number, as the smear's does. */
     double stretch;        /* >= 1 along stretch_angle_deg (counter-clockwise from x, as measured); keeps the density */
     double stretch_angle_deg;
     int bit_depth;         /* 8 or 16 */

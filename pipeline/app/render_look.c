@@ -1,5 +1,5 @@
 /* What an electron microscope makes of a rendered surface: height and slope as secondary-electron signal, roughness,
- * a finite probe, uneven brightness, charging streaks along the scan, shot noise. A picture model, not a physical one:
+ * a finite probe that may be drawn out in one direction, vibration, uneven brightness, charging streaks along the scan, shot noise. A picture model, not a physical one:
  * the signal is proportional to the height and, with `edge`, to the slope; there is no shadowing. Quantisation and
  * clipping happen when the signal is stored. */
 #include <math.h>
@@ -49,6 +49,54 @@ static status blur(float *f, size_t nx, size_t ny, double sd, error *e) {
         }
     }
     free(kernel);
+    free(line);
+    return ST_OK;
+}
+
+/* Between the four pixels around a place; the last row and column repeat. */
+static double bilinear(const float *f, size_t nx, size_t ny, double x, double y) {
+    x = fmin(fmax(x, 0.0), (double)nx - 1.0);
+    y = fmin(fmax(y, 0.0), (double)ny - 1.0);
+    size_t i = (size_t)x, j = (size_t)y, r = i + 1 < nx ? 1 : 0, b = j + 1 < ny ? nx : 0;
+    double u = x - (double)i, v = y - (double)j;
+    const float *p = f + j * nx + i;
+    return (1.0 - v) * ((1.0 - u) * (double)p[0] + u * (double)p[r]) + v * ((1.0 - u) * (double)p[b] + u * (double)p[b + r]);
+}
+
+/* Gaussian filter along one direction: a probe that astigmatism has drawn out. */
+static status smear(const render_options *o, size_t nx, size_t ny, float *f, error *e) {
+    if (!(o->smear_px > 0.0)) return ST_OK;
+    long reach = (long)ceil(4.0 * o->smear_px);
+    double c = cos(o->smear_angle_deg * PI / 180.0), s = -sin(o->smear_angle_deg * PI / 180.0), norm = 0.0;
+    double *kernel = mem_array(2 * (size_t)reach + 1, sizeof *kernel);
+    float *from = mem_array(nx * ny, sizeof *from);
+    status st = kernel && from ? ST_OK : NO_MEMORY(e, "the astigmatism");
+    for (long k = -reach; st == ST_OK && k <= reach; k++)
+        norm += kernel[k + reach] = exp(-0.5 * (double)(k * k) / (o->smear_px * o->smear_px));
+    if (st == ST_OK) memcpy(from, f, nx * ny * sizeof *f);
+    for (size_t j = 0; st == ST_OK && j < ny; j++)
+        for (size_t i = 0; i < nx; i++) {
+            double sum = 0.0;
+            for (long k = -reach; k <= reach; k++)
+                sum += kernel[k + reach] * bilinear(from, nx, ny, (double)i + (double)k * c, (double)j + (double)k * s);
+            f[j * nx + i] = (float)(sum / norm);
+        }
+    free(kernel);
+    free(from);
+    return st;
+}
+
+/* Vibration: each scan line begins a little off its place. */
+static status shake(const render_options *o, size_t nx, size_t ny, float *f, error *e) {
+    if (!(o->jitter_px > 0.0)) return ST_OK;
+    rng r = rng_make(o->seed, STREAM_JITTER);
+    float *line = mem_array(nx, sizeof *line);
+    if (!line) return NO_MEMORY(e, "the vibration");
+    for (size_t j = 0; j < ny; j++) {
+        double shift = o->jitter_px * rng_normal(&r);
+        memcpy(line, f + j * nx, nx * sizeof *line);
+        for (size_t i = 0; i < nx; i++) f[j * nx + i] = (float)bilinear(line, nx, 1, (double)i + shift, 0.0);
+    }
     free(line);
     return ST_OK;
 }
@@ -157,6 +205,8 @@ status look_make(const render_options *o, const surface *s, double spacing, floa
     if (st == ST_OK) {
         secondary_electrons(o, s, spacing, h, f);
         st = blur(f, s->nx, s->ny, o->blur_px, e);
+        if (st == ST_OK) st = smear(o, s->nx, s->ny, f, e);
+        if (st == ST_OK) st = shake(o, s->nx, s->ny, f, e);
     }
     if (st == ST_OK) {
         for (size_t j = 0; j < o->ny; j++)

@@ -8,7 +8,7 @@
 
 /* One generator per stage, so that more noise does not move the features. */
 typedef enum { STREAM_PATTERN = 1, STREAM_HEIGHTS, STREAM_ROUGH, STREAM_STREAKS, STREAM_NOISE, STREAM_GRADIENT,
-               STREAM_SECOND, STREAM_PATCHES } stream;
+               STREAM_SECOND, STREAM_PATCHES, STREAM_JITTER } stream;
 typedef struct {
     uint64_t s[4];
     double spare; /* second value of the polar method, NAN: none */

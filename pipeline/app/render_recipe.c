@@ -16,7 +16,7 @@
 #include "io/file.h"
 #include "io/json.h"
 
-typedef enum { KEY_NUMBER, KEY_SIZE, KEY_PATTERN, KEY_SHAPE, KEY_RELIEF, KEY_STRETCH, KEY_BITS, KEY_FLAG, KEY_SEED,
+typedef enum { KEY_NUMBER, KEY_SIZE, KEY_PATTERN, KEY_SHAPE, KEY_RELIEF, KEY_PAIR, KEY_BITS, KEY_FLAG, KEY_SEED,
                KEY_LABEL } key_kind;
 
 typedef struct {
@@ -48,7 +48,9 @@ static const key keys[] = {
     { "contrast",       KEY_NUMBER,  AT(contrast),       "a share of the grey range" },
     { "gradient",       KEY_NUMBER,  AT(gradient),       "a relative change of brightness" },
     { "streaks",        KEY_NUMBER,  AT(streaks),        "a standard deviation over the contrast" },
-    { "stretch",        KEY_STRETCH, 0,                  "RATIO:DEGREES, such as 1.1:30" },
+    { "jitter",         KEY_NUMBER,  AT(jitter_px),      "pixels" },
+    { "smear",          KEY_PAIR,    AT(smear_px),       "PIXELS:DEGREES, such as 2:30" },
+    { "stretch",        KEY_PAIR,    AT(stretch),        "RATIO:DEGREES, such as 1.1:30" },
     { "bits",           KEY_BITS,    0,                  "8 or 16" },
     { "strip",          KEY_FLAG,    AT(strip),          "true or false" },
     { "scale",          KEY_FLAG,    AT(show_scale),     "true or false" },
@@ -139,7 +141,12 @@ static int set_value(const key *k, recipe_image *image, const char *value) {
         if (!set_choice(value, "8", "16", &yes)) return 0;
         o->bit_depth = yes ? 16 : 8;
         return 1;
-    case KEY_STRETCH: return parse_pair(value, ':', &o->stretch, &o->stretch_angle_deg);
+    case KEY_PAIR: {
+        double pair[2];
+        if (!parse_pair(value, ':', &pair[0], &pair[1])) return 0;
+        memcpy((char *)o + k->offset, pair, sizeof pair);
+        return 1;
+    }
     case KEY_SEED:
         if (!number_parse(value, &v) || !whole(v, 0x1p53)) return 0;
         o->seed = (uint64_t)v;
@@ -320,10 +327,12 @@ static void value_to_json(const key *k, const recipe_image *image, textbuf *out)
         if (o->bell) json_string(out, "bell");
         else json_number(out, o->exponent, 15);
         break;
-    case KEY_STRETCH:
-        text_addf(out, "\"%s:%s\"", number_text(o->stretch, 15, number[0]),
-                  number_text(o->stretch_angle_deg, 15, number[1]));
+    case KEY_PAIR: {
+        double pair[2];
+        memcpy(pair, (const char *)o + k->offset, sizeof pair);
+        text_addf(out, "\"%s:%s\"", number_text(pair[0], 15, number[0]), number_text(pair[1], 15, number[1]));
         break;
+    }
     case KEY_BITS: text_addf(out, "%d", o->bit_depth); break;
     case KEY_SEED: text_addf(out, "%llu", (unsigned long long)o->seed); break;
     case KEY_LABEL: json_string(out, image->label); break;
