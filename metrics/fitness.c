@@ -18,7 +18,8 @@
  * sides.
  * Line jitter. Shift between neighbouring lines by least squares on the gradient; the second
  * difference keeps what changes from line to line, and the same figure of the columns removes texture and
- * noise. */
+ * noise.
+ * Astigmatism: smear.c. */
 #include "metrics/fitness.h"
 
 #include <math.h>
@@ -54,6 +55,15 @@ measure_options measure_defaults(void) {
         .warn_streaks = 0.02,
         .max_stretch = 1.6, /* a tilt of 51 degrees */
         .warn_stretch = 1.06,
+        .max_jitter = 0.15, /* the figure levels off at 0.17: features are torn, the density of weak orders is 15 % off */
+        .warn_jitter = 0.05,
+        .warn_astigmatism = 0.07,
+        .scan_axis_deg = 5.0,
+        .min_order = 1.3, /* points without any order that a detector can resolve: 1.36 to 1.43, blurred noise below */
+        .warn_order = 1.5,
+        .warn_contradiction = 0.15,
+        .warn_size_gsd = 1.35,
+        .warn_second = 1.4,
         .bright_level = 0.5,
         .min_ring_z = 6.0, /* noise reaches 5.7 */
     };
@@ -275,9 +285,14 @@ static status line_jitter(const float *f, size_t nx, size_t ny, double d, double
     return ST_OK;
 }
 
+sharpness sharpness_unknown(void) {
+    const double m = MISSING;
+    return (sharpness){ m, m, m, m, m, m, m, m, m, { m, m, m, m } };
+}
+
 status fitness_look(const float *f, const plane *p, double d_px, sharpness *out, curve *psd, error *e) {
     size_t nx = p->nx, ny = p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = sharpness_unknown();
     curve radial = { 0 };
     double sum = 0.0, streaks = 0.0;
     float *power = mem_array(ny * (nx / 2 + 1), sizeof *power);
@@ -294,6 +309,7 @@ status fitness_look(const float *f, const plane *p, double d_px, sharpness *out,
         if (d_px > 0.0) {
             s.blur_sd_px = blur_of(&radial, d_px, floor, nx * ny);
             s.detail = finest_detail(&radial, d_px, 1.2, floor);
+            s.fine = smear_look(power, nx, ny, floor, d_px, s.detail / d_px);
             s.ring_over_noise = log(power_between(&radial, 0.8 / d_px, 1.4 / d_px, floor, 0.0) / fmax(floor, 1e-30));
         }
         s.finest_per_px = finest_detail(&radial, 1.0, 0.02, floor);
@@ -318,35 +334,57 @@ static void limit(texture *t, double value, double warn, double max, flags remar
         t->flags |= remark;
 }
 
-static void judge_stretch(const sharpness *s, const measure_options *o, double d, texture *t) {
-    const double axis_deg = 5.0, jitter_warn = 0.05; /* of a spacing */
+/* Smaller angle between two axes, deg. */
+static double axes_apart(double a, double b) { return fabs(fmod(fabs(a - b) + 90.0, 180.0) - 90.0); }
+
+/* Line jitter; then a smear of fine detail that neither it nor the stretch of the spacing explains: astigmatism. */
+static void judge_smear(const sharpness *s, const measure_options *o, double d, texture *t) {
+    const double least_z = 4.5, least_px = 0.3; /* sharp renders: up to 2.5, stretched ones 4.0 */
+    smear m = smear_beyond(&s->fine, t->stretch.value, t->stretch.u_sampling, t->stretch_angle_deg.value);
+    t->smear_px = m.smear_px;
+    t->smear_angle_deg = m.angle_deg;
+    t->smear_z = m.z;
+    if (s->line_jitter_px > least_px) limit(t, s->line_jitter_px / d, o->warn_jitter, o->max_jitter, FLAG(DRIFT), FLAG(DRIFT));
+    int shaken = ((t->flags | t->reasons) & FLAG(DRIFT)) != 0;
+    if (!shaken && m.z > least_z && m.smear_px / d > o->warn_astigmatism) t->flags |= FLAG(ASTIGMATIC);
+}
+
+/* What a smear makes of the spacing's own figure: renders smeared by 0.12 spacings came out stretched by 1.01 to 1.17. */
+static int smear_explains(const texture *t, double d) {
+    const double per_smear = 1.5, same_axis_deg = 25.0;
+    return (t->flags & FLAG(ASTIGMATIC)) && t->stretch.value - 1.0 < per_smear * t->smear_px / d &&
+           axes_apart(t->smear_angle_deg, t->stretch_angle_deg.value) < same_axis_deg;
+}
+
+static void judge_stretch(const measure_options *o, double d, texture *t) {
     double stretch = t->stretch.value, u = isfinite(t->stretch.u_sampling) ? t->stretch.u_sampling : 0.0;
-    double off = fabs(fmod(t->stretch_angle_deg.value, 90.0));
-    int along = fmin(off, 90.0 - off) < axis_deg;
+    double angle = t->stretch_angle_deg.value;
+    int along = fmin(axes_apart(angle, 0.0), axes_apart(angle, 90.0)) < o->scan_axis_deg;
     if (stretch - 2.0 * u > o->max_stretch) t->reasons |= along ? FLAG(DRIFT) : FLAG(TILTED);
-    if (stretch > o->warn_stretch && stretch - 1.0 > 3.0 * u) {
+    if (stretch > o->warn_stretch && stretch - 1.0 > 3.0 * u && !smear_explains(t, d)) {
         t->flags |= FLAG(STRETCHED);
         if (along) t->flags |= FLAG(DRIFT);
     }
-    if (s->line_jitter_px > jitter_warn * d && s->line_jitter_px > 0.3) t->flags |= FLAG(DRIFT);
 }
 
 /* Blur merges features, and the spacing it is compared with grows with it: a ratio well below the limit
  * together with sizes spread too widely, or a relief that has lost its sign, is as bad as one above. Once most features
  * have merged, what is left looks like a coarser, smooth texture without blur; it gives itself away by lacking detail
  * that its noise would let through, by sizes wider than its order allows, and by a ring inside the spacing of what is left.
- * The three together: ln gsd - 0.5 ln(acf / hex) - 0.2 ln(detail / that of a sharp texture) exceeded 0.31 on 2 of 720 sharp renders
- * (6 patterns, 15 to 40 px per spacing, blur to 0.12 spacings) and on 92 % of those merged by 0.3 to 0.45 spacings that the blur
- * figure alone had missed. */
+ * The three together: ln gsd - 0.5 ln(acf / hex) - 0.2 ln(detail / that of a sharp texture) exceeded 0.31 on 3 of 720 sharp renders
+ * (6 patterns, 15 to 40 px per spacing, blur to 0.12 spacings) and on 91 % of those merged by 0.3 to 0.45 spacings that the blur
+ * figure alone had missed. Two populations have wide sizes, too, but keep their detail (share 0.8 and more). */
 static void judge_blur(const sharpness *s, double d, const measure_options *o, texture *t) {
-    const double merged_gsd = 1.35, merged_score = 0.31, least_ring = 2.5, end = 0.45, most_ratio = 0.2;
+    const double merged_gsd = 1.35, merged_score = 0.31, least_ring = 2.5, end = 0.45, most_ratio = 0.2, most_detail = 0.80;
     double expected = fmin(6.0, exp(0.16 + 0.17 * s->ring_over_noise));
     double blur = s->blur_sd_px / d;
+    if (t->flags & FLAG(ASTIGMATIC)) blur = hypot(blur, sqrt(0.5) * t->smear_px / d); /* along the smear */
     int seen_to_end = s->detail / d >= end;
     double ratio = log(t->spacing_acf.value / t->spacing_hex.value);
     ratio = isfinite(ratio) ? fmin(most_ratio, fmax(-most_ratio, ratio)) : 0.0;
-    double score = log(t->size_gsd.value) - 0.5 * ratio - 0.2 * log(s->detail / expected);
-    if (score > merged_score && !seen_to_end && s->ring_over_noise > least_ring) t->reasons |= FLAG(BLURRED);
+    double share = s->detail / expected, score = log(t->size_gsd.value) - 0.5 * ratio - 0.2 * log(share);
+    int merged = score > merged_score || (t->flags & FLAG(RELIEF_UNSURE));
+    if (merged && share < most_detail && !seen_to_end && s->ring_over_noise > least_ring) t->reasons |= FLAG(BLURRED);
     limit(t, blur, o->warn_blur, o->max_blur, FLAG(UNSHARP), FLAG(BLURRED));
     if (blur > o->warn_blur && (t->size_gsd.value > merged_gsd || (t->flags & FLAG(RELIEF_UNSURE))))
         t->reasons |= FLAG(BLURRED);
@@ -354,7 +392,6 @@ static void judge_blur(const sharpness *s, double d, const measure_options *o, t
 
 void fitness_judge(const sharpness *s, const plane *p, const measure_options *o, texture *t) {
     const double noise_at_px = 24.0; /* spacing at which the limits of noise hold */
-    const double random_order = 1.3; /* Clark-Evans index below which a missing ring means random placement */
     double d = t->spacing_hex.value;
     double n = fmax((double)t->n_found, (double)t->n_features); /* of the whole field, guard included */
     t->sharpness = (measured){ s->blur_sd_px, MISSING, isfinite(d) ? 0.03 * d : MISSING, t->n_features };
@@ -374,14 +411,15 @@ void fitness_judge(const sharpness *s, const plane *p, const measure_options *o,
     if (!isfinite(d)) return;
     limit(t, -d, -o->warn_px_per_spacing, -o->min_px_per_spacing, FLAG(LOW_RESOLUTION), FLAG(FEW_PIXELS));
     if (!isfinite(t->spacing_acf.value)) {
-        if (t->clark_evans.value >= random_order)
+        if (t->clark_evans.value >= o->min_order)
             t->flags |= FLAG(NO_RING);
         else
             t->reasons |= FLAG(NO_RING);
     }
+    judge_smear(s, o, d, t);
     judge_blur(s, d, o, t);
     limit(t, t->noise_rel.value * noise_at_px / d, o->warn_noise, o->max_noise, FLAG(NOISY), FLAG(NOISY));
     limit(t, s->streaks, o->warn_streaks, o->max_streaks, FLAG(STREAKS), FLAG(STREAKS));
-    if (isfinite(t->second_spacing_px)) t->flags |= FLAG(TWO_SPACINGS);
-    judge_stretch(s, o, d, t);
+    if (fabs(log(t->second_spacing_px / d)) >= log(o->warn_second)) t->flags |= FLAG(TWO_SPACINGS);
+    judge_stretch(o, d, t);
 }

@@ -4,6 +4,7 @@
 #ifndef SWARD_METRICS_FITNESS_H
 #define SWARD_METRICS_FITNESS_H
 #include "metrics/measure.h"
+#include "metrics/smear.h"
 #include "metrics/spectrum.h"
 
 typedef struct {
@@ -21,7 +22,10 @@ typedef struct {
     double second_px; /* spacing of a second population; NAN none */
     /* rms shift between neighbouring lines beyond that between columns; NAN unknown */
     double line_jitter_px;
+    fine_anisotropy fine; /* from which astigmatism follows once the stretch is known */
 } sharpness;
+
+sharpness sharpness_unknown(void);
 
 /* in f flattened, d_px the scale (NAN unknown); out also the radial power spectrum behind it, psd may be NULL (caller frees
  * psd->points). err ST_NO_MEMORY, out and psd untouched */

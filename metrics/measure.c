@@ -288,22 +288,21 @@ static void judge_second_look(job *j) {
 }
 
 static void judge(job *j, const sharpness *s) {
-    const double low_order = 1.5, known_ratio = 0.15, wide_gsd = 1.35;
     texture *t = &j->t;
     fitness_judge(s, j->p, j->o, t);
     statistics_uncertainty(t, &j->det);
     complete_uncertainties(t);
-    if (t->clark_evans.value < low_order) t->flags |= FLAG(LOW_ORDER);
-    if (fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > known_ratio)
+    if (t->clark_evans.value < j->o->warn_order) t->flags |= FLAG(LOW_ORDER);
+    if (fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > j->o->warn_contradiction)
         t->flags |= FLAG(CONTRADICTION);
-    if (t->size_gsd.value > wide_gsd) t->flags |= FLAG(WIDE_SIZES);
+    if (t->size_gsd.value > j->o->warn_size_gsd) t->flags |= FLAG(WIDE_SIZES);
     if (j->second_look) judge_second_look(j);
 }
 
 static status run(job *j, error *e) {
     const plane *p = j->p;
     size_t n = p->nx * p->ny;
-    sharpness s = { MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING, MISSING };
+    sharpness s = sharpness_unknown();
     j->f = mem_array(n, sizeof *j->f);
     j->work = mem_array(n, sizeof *j->work);
     status st = j->f && j->work ? flatten(p, j->f, e) : NO_MEMORY(e, "the micrograph");

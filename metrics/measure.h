@@ -14,6 +14,13 @@ typedef struct {
     double max_noise, warn_noise;                   /* noise sd / texture sd at 24 px per spacing; scales with it */
     double max_streaks, warn_streaks;               /* see fitness.h */
     double max_stretch, warn_stretch;               /* ratio: see fitness.h */
+    double max_jitter, warn_jitter;                 /* rms shift between neighbouring scan lines / spacing: 0.15, 0.05 */
+    double warn_astigmatism;                        /* sd of a blur in one direction only / spacing: 0.07 */
+    double scan_axis_deg;                           /* a stretch so near a scan axis is called drift: 5 */
+    double min_order, warn_order;                   /* Clark-Evans index: 1.3 (only where there is no ring), 1.5 */
+    double warn_contradiction;                      /* |spacing_acf / spacing_hex - 1|: 0.15 */
+    double warn_size_gsd;                           /* geometric sd of the cell diameters: 1.35 */
+    double warn_second;                             /* a second spacing at least so many times larger or smaller: 1.4 */
     double bright_level;       /* level of bright_share: fraction of the way from the 1 % to the 99 % grey quantile */
     double min_ring_z;         /* significance of the ring: 6 */
 } measure_options;

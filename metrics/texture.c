@@ -31,6 +31,9 @@ texture texture_empty(void) {
                   .lognormal_ad = MISSING,
                   .ring_z = MISSING,
                   .pair_ring_px = MISSING,
+                  .smear_px = MISSING,
+                  .smear_angle_deg = MISSING,
+                  .smear_z = MISSING,
                   .pair_ring_height = MISSING,
                   .second_spacing_px = MISSING };
     return t;

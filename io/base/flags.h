@@ -16,7 +16,7 @@
     X(CLIPPED,         clipped,         "too many pixels at the darkest or brightest level of the file")                 \
     X(NOISY,           noisy,           "the noise is too strong for the texture's contrast")                            \
     X(STREAKS,         streaks,         "charging streaks along the scan lines")                                         \
-    X(DRIFT,           drift,           "drift, vibration or astigmatism: anisotropy that follows the scan axes")        \
+    X(DRIFT,           drift,           "drift or vibration: scan lines shifted, or spacing that depends on a scan axis")    \
     X(TILTED,          tilted,          "the texture is stretched as by a tilted view")                                  \
     X(PX_WINDOW,       outside_px_window, "the pixel size lies outside the protocol's measure_between_px_nm: kept out, not measured") \
     X(FEATURELESS,     featureless,     "the picture has no contrast")                                                   \
@@ -29,6 +29,7 @@
     X(RELIEF_UNSURE,   relief_unsure,   "hillock or pore cannot be told from the picture; say it in the protocol")       \
     X(WIDE_SIZES,      wide_sizes,      "sizes spread so much that one spacing says little")                             \
     X(STRETCHED,       stretched,       "spacing depends on direction")                                                  \
+    X(ASTIGMATIC,      astigmatic,      "astigmatism: fine detail is smeared in one direction, beyond any stretch of the spacing") \
     X(PX_DISAGREE,     px_sources_disagree, "two sources of the pixel size differ by more than 2 %")                    \
     X(PX_UNEQUAL,      px_unequal,      "pixels are not square: rows were resampled")                                        \
     X(PX_ODD,          px_implausible,  "the pixel size lies outside 0.01 nm to 100 um")                                 \

@@ -317,18 +317,23 @@ static status fill_json(examined *x, const micrograph *m, const texture *t, erro
     figures_json(x->figures, &j);
     text_add(&j, ", ");
     texture_px_json(t, &j);
-    text_add(&j, ", \"ring_z\": ");
-    json_number(&j, t->ring_z, 4);
-    text_add(&j, ", \"second_spacing_nm\": ");
-    json_number(&j, t->second_spacing_px * px, 5);
-    text_add(&j, ", \"pair_correlation_ring_nm\": ");
-    json_number(&j, t->pair_ring_px * px, 5);
-    text_add(&j, ", \"pair_correlation_ring_height\": ");
-    json_number(&j, t->pair_ring_height, 4);
-    text_add(&j, ", \"relief_skewness\": ");
-    json_number(&j, t->relief_skew, 4);
-    text_add(&j, ", \"lognormal_anderson_darling\": ");
-    json_number(&j, t->lognormal_ad, 4);
+    const struct {
+        const char *name;
+        double v;
+        int digits;
+    } members[] = { { "ring_z", t->ring_z, 4 },
+                    { "second_spacing_nm", t->second_spacing_px * px, 5 },
+                    { "smear_nm", t->smear_px * px, 4 },
+                    { "smear_angle_deg", t->smear_angle_deg, 4 },
+                    { "smear_z", t->smear_z, 3 },
+                    { "pair_correlation_ring_nm", t->pair_ring_px * px, 5 },
+                    { "pair_correlation_ring_height", t->pair_ring_height, 4 },
+                    { "relief_skewness", t->relief_skew, 4 },
+                    { "lognormal_anderson_darling", t->lognormal_ad, 4 } };
+    for (size_t i = 0; i < sizeof members / sizeof members[0]; i++) {
+        text_addf(&j, ", \"%s\": ", members[i].name);
+        json_number(&j, members[i].v, members[i].digits);
+    }
     text_add(&j, ", ");
     status st = sizes_json(t, px, &j, e);
     if (x->overlay) {

@@ -170,7 +170,19 @@ static void check_verdict(void) {
     t = sound();
     s.line_jitter_px = 2.0;
     IS(judged(&s, &p, t), 0, FLAG(DRIFT));
+    s.line_jitter_px = 4.0;
+    IS(judged(&s, &p, t), FLAG(DRIFT), 0);
     s.line_jitter_px = 0.0;
+    s.fine = (fine_anisotropy){ 0.0, 9.0, 20.0, 0.5 }; /* smeared by 3 px along 45 deg */
+    IS(judged(&s, &p, t), 0, FLAG(ASTIGMATIC));
+    t.stretch = (measured){ 1.15, 0.02, 0.0, 900 };
+    t.stretch_angle_deg.value = 50.0; /* what the smear makes of the spacing */
+    IS(judged(&s, &p, t), 0, FLAG(ASTIGMATIC));
+    t.stretch_angle_deg.value = 110.0;
+    IS(judged(&s, &p, t), 0, FLAG(STRETCHED) | FLAG(ASTIGMATIC));
+    t = sound();
+    s.fine.u = (double)NAN;
+    IS(judged(&s, &p, t), 0, 0);
     s.second_px = 60.0;
     IS(judged(&s, &p, t), 0, FLAG(TWO_SPACINGS));
     s.second_px = (double)NAN;
@@ -179,6 +191,11 @@ static void check_verdict(void) {
     IS(judged(&s, &p, t), 0, FLAG(NO_RING));
     t.clark_evans.value = 1.1;
     IS(judged(&s, &p, t), FLAG(NO_RING), 0);
+    measure_options any = measure_defaults();
+    any.min_order = 1.0;
+    texture same = t;
+    fitness_judge(&s, &p, &any, &same);
+    CHECK(!same.reasons && same.flags == FLAG(NO_RING));
     t.ring_z = 3.0;
     t.n_features = 0;
     IS(judged(&s, &p, t), FLAG(NO_RING), 0);
