@@ -31,6 +31,7 @@ typedef struct {
     const char *(*word)(int i); /* of KEY_WORD; NULL after the last */
     int measuring;              /* 1: changes what is measured on one micrograph */
     const char *help;           /* one sentence without a final stop */
+    const char *why;            /* what the default rests on; NULL: it says so itself */
 } protocol_key;
 
 extern const protocol_key protocol_keys[]; /* groups are contiguous, in the order they print */

@@ -148,6 +148,7 @@ static void print_group(const protocol *p, const char *group, const char *indent
         if (strcmp(k->group, group) != 0) continue;
         text_addf(&about, "%s; ", k->help);
         key_expected(k, &about);
+        if (k->why) text_addf(&about, ". Why: %s", k->why);
         if (!first) text_add(out, ",\n");
         if (text_check(&about, "the protocol", NULL) == ST_OK)
             comment(about.s, indent, out);
@@ -193,7 +194,7 @@ static void say_with_u(textbuf *out, double v, double u, const char *unit) {
     text_addf(out, "%s%s", unit[0] ? " " : "", unit);
 }
 
-static void explain_measuring(const protocol *p, textbuf *out) {
+static void explain_measuring(const protocol *p, const protocol *usual, textbuf *out) {
     static const char *const features[] = {
         "Whether features are bright hillocks or dark pores is found in each micrograph.\n",
         "Features are bright hillocks.\n", "Features are dark pores.\n"
@@ -223,7 +224,21 @@ static void explain_measuring(const protocol *p, textbuf *out) {
     text_add(out, "A micrograph is left out of its sample below ");
     say(out, p->measure.min_px_per_spacing, "pixels per spacing or ");
     say(out, p->measure.min_features, "features, and with a blur above ");
-    say(out, p->measure.max_blur, "spacings; the other limits stand under \"fitness\".\n");
+    say(out, p->measure.max_blur, "spacings. All its limits and what they rest on:\n");
+    for (size_t i = 0; i < n_protocol_keys; i++) {
+        const protocol_key *k = &protocol_keys[i];
+        if (strcmp(k->group, "fitness") != 0) continue;
+        text_addf(out, "  %s ", k->name);
+        say(out, key_number(p, k), "");
+        text_addf(out, ": %s", k->help);
+        if (fabs(key_number(p, k) - key_number(usual, k)) > 0.0) {
+            text_add(out, ". The built-in ");
+            say(out, key_number(usual, k), "because ");
+        } else {
+            text_add(out, ", because ");
+        }
+        text_addf(out, "%s.\n", k->why);
+    }
 }
 
 static void explain_shape(const link_options *o, textbuf *out) {
@@ -366,7 +381,13 @@ static void explain_goals(const protocol *p, textbuf *out) {
 
 void protocol_explain(const protocol *p, textbuf *out) {
     text_addf(out, "Protocol \"%s\"%s%s.\n", p->name, p->path[0] ? ", from " : "", p->path);
-    explain_measuring(p, out);
+    protocol usual = { 0 };
+    if (protocol_defaults(&usual, NULL) != ST_OK) {
+        out->failed = 1;
+        return;
+    }
+    explain_measuring(p, &usual, out);
+    protocol_free(&usual);
     explain_link(p, out);
     explain_optics(p, out);
     explain_targets(p, out);
