@@ -12,7 +12,7 @@
 enum { NX = 420, NY = 320 };
 
 static texture measured_of(const float *f, size_t nx, size_t ny, relief given) {
-    plane p = { f, nx, ny, 16, 0.0, 0.0 };
+    plane p = { f, nx, ny, 16, 0.0, 0.0, NULL };
     measure_options o = measure_defaults();
     texture t = { 0 };
     error e = { 0 };

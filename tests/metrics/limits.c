@@ -95,7 +95,7 @@ static void look(knob k, double v, const measure_options *m, size_t n_m, finding
     dice d = { 77 };
     if (k == NOISE) add_noise(f, n, v, &d);
     if (k == BUMPS) draw_bumps(f, v);
-    plane p = { f, o.nx, o.ny, 8, (double)low / (double)n, (double)high / (double)n };
+    plane p = { f, o.nx, o.ny, 8, (double)low / (double)n, (double)high / (double)n, NULL };
     for (size_t i = 0; i < n_m; i++) {
         texture t = { 0 };
         CHECK(measure_plane(&p, &m[i], &t, &e) == ST_OK);

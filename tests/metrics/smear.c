@@ -33,7 +33,7 @@ static void check_render(pattern kind, double width, double angle, double stretc
     float *f = plane_new(o.nx, o.ny);
     const uint8_t *s = r.samples;
     for (size_t i = 0; s && i < o.nx * o.ny; i++) f[i] = (float)s[i] / 255.0f;
-    plane p = { f, o.nx, o.ny, 8, 0.0, 0.0 };
+    plane p = { f, o.nx, o.ny, 8, 0.0, 0.0, NULL };
     CHECK(measure_plane(&p, &m, &t, &e) == ST_OK && !t.reasons);
     CHECK((t.flags & (FLAG(ASTIGMATIC) | FLAG(STRETCHED) | FLAG(DRIFT) | FLAG(TILTED))) == want);
     if (width > 0.0) {
