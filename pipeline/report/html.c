@@ -122,7 +122,13 @@ void html_number(textbuf *out, const column *c, const void *row, int percent, in
     }
     if (c->kind == COL_COUNT) digits = 15;
     else if (digits > c->digits) digits = c->digits;
-    add_data(out, c, row, percent, percent ? number_percent(v, digits, text) : number_text(v, digits, text));
+    if (digits == 2) { /* what an interval leaves: "0.30", not "0.3" */
+        double shown = percent ? 100.0 * v : v;
+        number_places(shown, number_places_of(shown, digits), text);
+    } else {
+        (void)(percent ? number_percent(v, digits, text) : number_text(v, digits, text));
+    }
+    add_data(out, c, row, percent, text);
 }
 
 void html_value(textbuf *out, const column *c, const column *twin, const void *row, int percent) {

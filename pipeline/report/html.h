@@ -33,8 +33,8 @@ void html_cell(textbuf *out, const column *c, const void *row);
  * the uncertainty that the CSV prints. `percent` shows both times 100. The twin may be NULL. */
 void html_value(textbuf *out, const column *c, const column *twin, const void *row, int percent);
 
-/* A number of a column in a <data> element likewise, shown with at most `digits` significant digits, times 100 when
- * `percent`; an en dash when empty. */
+/* A number of a column in a <data> element likewise, shown with at most `digits` significant digits (with exactly
+ * two when that is 2), times 100 when `percent`; an en dash when empty. */
 void html_number(textbuf *out, const column *c, const void *row, int percent, int digits);
 
 /* Verdict or status as sign + word + colour, never by colour alone. */

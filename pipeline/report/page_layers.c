@@ -49,15 +49,18 @@ static void add_ring(const xy_curve *c, double scale, double top, double spacing
                   scale * (c->x[best] + 0.5), top + scale * (c->y[best] + 0.5), scale * spacing_px, k ? "#fff" : "#101419", k ? "1.6" : "3.4");
 }
 
+static double lettering(const page_layers *l) { return 11.0 * fmin(1.0, (double)l->nx / 400.0); }
+
 static void add_strip(const page_layers *l, textbuf *out) {
     const size_t rows[2] = { l->strip_above, l->strip_below }, at[2] = { 0, l->ny - l->strip_below };
     for (size_t k = 0; k < 2; k++) {
-        double middle = (double)at[k] + 0.5 * (double)rows[k];
+        double middle = (double)at[k] + 0.5 * (double)rows[k], em = lettering(l), width = 12.2 * em;
         if (rows[k])
             text_addf(out, "<g class=\"l-strip\"><rect y=\"%zu\" width=\"%zu\" height=\"%zu\" fill=\"#3c434c\" fill-opacity=\".72\"/>"
-                           "<rect x=\"%.1f\" y=\"%.1f\" width=\"134\" height=\"16\" fill=\"#101419\"/><text x=\"%.1f\" y=\"%.1f\" "
-                           "text-anchor=\"middle\" fill=\"#fff\" font-size=\"11\">info strip, not measured</text></g>",
-                      at[k], l->nx, rows[k], (double)l->nx - 138.0, middle - 8.0, (double)l->nx - 71.0, middle + 4.0);
+                           "<rect x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" fill=\"#101419\"/><text x=\"%.1f\" y=\"%.1f\" "
+                           "text-anchor=\"middle\" fill=\"#fff\" font-size=\"%.1f\">info strip, not measured</text></g>",
+                      at[k], l->nx, rows[k], (double)l->nx - width, middle - 0.7 * em, width, 1.4 * em, (double)l->nx - 0.5 * width,
+                      middle + 0.36 * em, em);
     }
 }
 
@@ -66,12 +69,12 @@ static void add_scale_bar(const page_layers *l, double nm_per_px, textbuf *out) 
     char text[NUMBER_TEXT];
     double most = 0.25 * nm_per_px * (double)l->nx, decade = pow(10.0, floor(log10(most))), lead = most / decade;
     double nm = decade * (lead >= 5.0 ? 5.0 : lead >= 2.0 ? 2.0 : 1.0), px = nm / nm_per_px;
-    double y = (double)(l->ny - l->strip_below) - 8.0;
+    double em = lettering(l), y = (double)(l->ny - l->strip_below) - 0.7 * em;
     if (!isfinite(px)) return;
-    text_addf(out, "<rect x=\"6\" y=\"%.1f\" width=\"%.1f\" height=\"24\" fill=\"#101419\" fill-opacity=\".72\"/><path d=\"M12 %.1fh%.1f\" stroke=\"#fff\" "
-                   "stroke-width=\"3\"/><text x=\"%.1f\" y=\"%.1f\" text-anchor=\"middle\" fill=\"#fff\" font-size=\"11\">%s %s</text>",
-              y - 20.0, px + 12.0, y - 2.0, px, 12.0 + 0.5 * px, y - 8.0, number_text(nm >= 1000.0 ? nm / 1000.0 : nm, 3, text),
-              nm >= 1000.0 ? "\xc2\xb5m" : "nm");
+    text_addf(out, "<rect x=\"%.1f\" y=\"%.1f\" width=\"%.1f\" height=\"%.1f\" fill=\"#101419\" fill-opacity=\".72\"/><path d=\"M%.1f %.1fh%.1f\" "
+                   "stroke=\"#fff\" stroke-width=\"%.1f\" stroke-linecap=\"butt\"/><text x=\"%.1f\" y=\"%.1f\" text-anchor=\"middle\" fill=\"#fff\" font-size=\"%.1f\">%s %s</text>",
+              0.5 * em, y - 1.8 * em, px + em, 2.2 * em, em, y - 0.2 * em, px, 0.27 * em, em + 0.5 * px, y - 0.7 * em, em,
+              number_text(nm >= 1000.0 ? nm / 1000.0 : nm, 3, text), nm >= 1000.0 ? "\xc2\xb5m" : "nm");
 }
 
 static void add_drawing(const image_row *m, const char *stem, const char *out_dir, size_t card, const page_layers *l, textbuf *out) {

@@ -35,7 +35,7 @@ static void check_page(demo *d, const char *dir) {
     char *page = page_of(&d->r, dir);
     CHECK(page && strstr(page, "<title>line 3 &amp; &lt;grass&gt;</title>"));
     CHECK(strstr(page, "<data value=\"351.23\">351</data> <span class=\"u\">\xc2\xb1 16</span>")); /* twice the 8.12 of the table */
-    CHECK(strstr(page, "value=\"0.012346\">1.2</data> <span class=\"u\">(<data class=\"percent\" value=\"0.0101\">1</data> to ")); /* in percent */
+    CHECK(strstr(page, "value=\"0.012346\">1.2</data> <span class=\"u\">(<data class=\"percent\" value=\"0.0101\">1.0</data> to ")); /* in percent */
     CHECK(strstr(page, "280 to 420 <span class=\"unit\">nm</span>"));
     CHECK(strstr(page, "Verdict as in samples.csv: inside &lt;280..420&gt; nm"));
     CHECK(strstr(page, "1 of 2 samples conform; 1 undecided.</p>"));
