@@ -105,7 +105,8 @@ static status decode(struct jpeg_decompress_struct *j, decoder *d, const uint8_t
     d->upright = colour == 4 && !j->saw_Adobe_marker;
     j->dct_method = JDCT_ISLOW;
     j->mem->max_memory_to_use = (long)(LIMIT_ALLOCATION_BYTES / 2);
-    status st = picture_make(&d->p, j->image_width, j->image_height, max_pixels, e);
+    status st = picture_credible(j->image_width, j->image_height, n, e);
+    if (st == ST_OK) st = picture_make(&d->p, j->image_width, j->image_height, max_pixels, e);
     if (st != ST_OK) return st;
     d->row = mem_array(j->image_width, (size_t)colour);
     if (!d->row) return NO_MEMORY(e, "a row of the JPEG");

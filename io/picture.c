@@ -56,6 +56,14 @@ status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *
     return ST_OK;
 }
 
+status picture_credible(size_t nx, size_t ny, size_t file_bytes, error *e) {
+    /* Noise does not compress: micrographs hold a byte for 1 to 20 pixels, JPEG included. */
+    if (nx * ny <= LIMIT_PACKED_PIXELS || nx * ny / LIMIT_PIXELS_PER_BYTE <= file_bytes) return ST_OK;
+    return fail(e, ST_BAD_INPUT,
+                "a file of %zu bytes unpacks to %zu x %zu pixels: no micrograph, its content is empty or a decompression bomb",
+                file_bytes, nx, ny);
+}
+
 void picture_set_text(char *to, size_t size, const char *text) {
     size_t n = 0;
     while (*text && n + 1 < size) {

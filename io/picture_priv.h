@@ -74,6 +74,9 @@ status picture_turn(picture *p, int orientation, error *e);
 /* Refuses sizes outside the limits before anything is allocated. */
 status picture_make(picture *p, size_t nx, size_t ny, size_t max_pixels, error *e);
 
+/* Refuses a large picture that a file far too small for any micrograph unpacks to; to be asked before picture_make. */
+status picture_credible(size_t nx, size_t ny, size_t file_bytes, error *e);
+
 /* Luminance of linear-light or coded R, G, B alike; equal channels give that channel exactly.
  *   src  weights of Rec. ITU-R BT.709-6 (2015), item 3.2 */
 static inline float picture_luminance(float r, float g, float b) {

@@ -108,7 +108,7 @@ static void read_scale(png_structp png, png_infop info, picture *p) {
     if (png_get_sCAL_s(png, info, &unit, &width, &height) && unit == PNG_SCALE_METER) {
         double w, h;
         if (scaletext_number(width, &w) && scaletext_number(height, &h))
-            scales_add(&p->scales, SCALE_SCAL, "sCAL", w * 1e9, h * 1e9);
+            scales_add_u(&p->scales, SCALE_SCAL, "sCAL", w * 1e9, h * 1e9, scaletext_u_rel(width));
     }
     if (png_get_pHYs(png, info, &x, &y, &unit) && unit == PNG_RESOLUTION_METER && x && y)
         scales_add(&p->scales, SCALE_RESOLUTION, "pHYs", 1e9 / x, 1e9 / y);
@@ -148,7 +148,8 @@ static status decode(png_structp png, png_infop info, png_infop end, decoder *d,
     if ((double)nx * ny * bits / 8.0 > 1100.0 * (double)d->left + 65536.0)
         return fail(e, ST_BAD_INPUT,
                     "the file is too short for the %u x %u pixels it claims; it is truncated", nx, ny);
-    status st = picture_make(&d->p, nx, ny, max_pixels, e);
+    status st = picture_credible(nx, ny, d->left, e);
+    if (st == ST_OK) st = picture_make(&d->p, nx, ny, max_pixels, e);
     if (st != ST_OK) return st;
     d->p.bit_depth = depth;
     png_set_packing(png);

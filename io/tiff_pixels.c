@@ -463,7 +463,8 @@ status tiff_pixels_read(TIFF *const tif[3], const tiff_watch *watch, size_t n_by
     if (claims_too_much(&l, n_bytes))
         return fail(e, ST_BAD_INPUT,
                     "the file is too short for the %u x %u pixels it claims; it is truncated", l.nx, l.ny);
-    st = picture_make(p, l.nx, l.ny, max_pixels, e);
+    st = picture_credible(l.nx, l.ny, n_bytes, e);
+    if (st == ST_OK) st = picture_make(p, l.nx, l.ny, max_pixels, e);
     if (st != ST_OK) return st;
     p->bit_depth = l.converted ? 8 : l.bits;
     picture_set_text(p->compression, sizeof p->compression, compression_name(l.compression));

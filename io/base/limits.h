@@ -7,6 +7,8 @@
 #define LIMIT_TEXT_FILE_BYTES ((size_t)64 << 20) /* sheet, protocol, spectrum, material */
 #define LIMIT_SIDECAR_BYTES ((size_t)1 << 20)
 #define LIMIT_PIXELS ((size_t)1 << 28)     /* of one micrograph, 268 million */
+#define LIMIT_PACKED_PIXELS ((size_t)1 << 22) /* beyond, a picture must fill its file: */
+#define LIMIT_PIXELS_PER_BYTE ((size_t)200)
 #define LIMIT_BYTES_PER_PIXEL 32.0         /* what measuring takes at its peak, found by measuring it */
 #define LIMIT_SIDE ((size_t)65535)         /* rows or columns of a micrograph */
 #define LIMIT_MIN_SIDE ((size_t)32)        /* smaller pictures carry no texture statistics */

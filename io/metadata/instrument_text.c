@@ -46,7 +46,7 @@ void main_block_read(const char *text, scale_rank rank, const char *name, size_t
     facts *f = &p->facts;
     (void)nx;
     double x = above_0(text, "MAIN", "PixelSizeX"), y = above_0(text, "MAIN", "PixelSizeY");
-    scales_add(&p->scales, rank, name, x * 1e9, y * 1e9);
+    scales_add_u(&p->scales, rank, name, x * 1e9, y * 1e9, keytext_ini_u_rel(text, "MAIN", "PixelSizeX"));
     state_strip(p, above_0(text, "MAIN", "ImageStripSize"), ny);
     if (above_0(text, "MAIN", "ViewFieldsCountX") > 1.0 || above_0(text, "MAIN", "ViewFieldsCountY") > 1.0)
         note_add(p->note, "%s: the picture is stitched of several fields.", name);
@@ -100,7 +100,8 @@ void sem_image_file_read(const char *text, const char *image, size_t nx, size_t 
     double px = above_0(text, NULL, "PixelSize");
     if (px > 0.0 && fits_magnification(px, isfinite(columns) ? columns : (double)nx, v, p)) {
         double resized = isfinite(columns) ? columns / (double)nx : 1.0;
-        scales_add(&p->scales, SCALE_SIDECAR, "sidecar", px * resized, px * resized);
+        scales_add_u(&p->scales, SCALE_SIDECAR, "sidecar", px * resized, px * resized,
+                     keytext_ini_u_rel(text, NULL, "PixelSize"));
         note_resized(p, "sidecar", resized * (double)nx, nx);
     }
     if (fabs(columns - (double)nx) < 0.5 && rows < (double)ny) state_strip(p, (double)ny - rows, ny);

@@ -58,6 +58,11 @@ double keytext_ini_number(const char *text, const char *section, const char *key
     return keytext_ini(text, section, key, value) && scaletext_number(value, &v) ? v : (double)NAN;
 }
 
+double keytext_ini_u_rel(const char *text, const char *section, const char *key) {
+    char value[LINE];
+    return keytext_ini(text, section, key, value) ? scaletext_u_rel(value) : (double)NAN;
+}
+
 int keytext_ini_has(const char *text, const char *section) {
     char line[LINE];
     for (const char *p = text; (p = keytext_line(p, line)) != NULL;) {

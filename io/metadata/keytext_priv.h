@@ -13,6 +13,8 @@ const char *keytext_line(const char *p, char line[KEYTEXT_LINE]);
  * empty. */
 int keytext_ini(const char *text, const char *section, const char *key, char value[KEYTEXT_LINE]);
 double keytext_ini_number(const char *text, const char *section, const char *key); /* NAN: absent, not a number */
+/* What its digits say of it (scaletext_u_rel); NAN: nothing. */
+double keytext_ini_u_rel(const char *text, const char *section, const char *key);
 int keytext_ini_has(const char *text, const char *section); /* 1: the section is there */
 
 /* The rest of the first line that begins with `key` and a blank, without leading '$' of either. 0: absent or

@@ -107,6 +107,7 @@ double scaletext_u_rel(const char *s) {
     if (!scaletext_split(s, &value, &rest) || !(fabs(value) > 0.0)) return (double)NAN;
     const char *number = s + strcspn(s, "0123456789.,");
     size_t n = strspn(number, "0123456789.,");
+    if (!memchr(number, '.', n) && !memchr(number, ',', n)) return (double)NAN;
     int behind = 0, seen = 0;
     for (size_t i = 0; i < n; i++)
         if (number[i] == '.' || number[i] == ',')
@@ -201,6 +202,7 @@ static double value_nm(const char *text, double key_unit, key_kind kind, int *un
 
 typedef struct {
     double both, x, y;
+    double u_rel; /* by the digits of the first; NAN: they do not say */
 } found_sizes;
 
 static void read_line(const char *line, const char *where, found_sizes *f, scales *s) {
@@ -215,22 +217,24 @@ static void read_line(const char *line, const char *where, found_sizes *f, scale
         note_add(s->note, "%s: '%.60s' has no unit and was not used; write it as 'px_nm = VALUE'.", where,
                  line);
     double *slot = kind == KEY_X ? &f->x : kind == KEY_Y ? &f->y : &f->both;
-    if (nm > 0.0 && !(*slot > 0.0)) *slot = nm; /* the first of a key wins */
+    if (!(nm > 0.0) || *slot > 0.0) return; /* the first of a key wins */
+    *slot = nm;
+    if (kind != KEY_Y || !(f->x > 0.0)) f->u_rel = scaletext_u_rel(line + n + 1);
 }
 
 static int add_found(const found_sizes *f, scale_rank rank, const char *name, scales *s) {
     size_t before = s->n;
     if (f->both > 0.0)
-        scales_add(s, rank, name, f->both, f->both);
+        scales_add_u(s, rank, name, f->both, f->both, f->u_rel);
     else if (f->x > 0.0)
-        scales_add(s, rank, name, f->x, f->y > 0.0 ? f->y : f->x);
+        scales_add_u(s, rank, name, f->x, f->y > 0.0 ? f->y : f->x, f->u_rel);
     else
-        scales_add(s, rank, name, f->y, f->y);
+        scales_add_u(s, rank, name, f->y, f->y, f->u_rel);
     return s->n > before;
 }
 
 int scaletext_lines(const char *text, scale_rank rank, const char *name, const char *where, scales *s) {
-    found_sizes f = { 0 };
+    found_sizes f = { .u_rel = (double)NAN };
     for (int line = 0; *text && line < MAX_LINES; line++) {
         size_t n = strcspn(text, "\r\n");
         char copy[LINE_ROOM];
@@ -277,7 +281,7 @@ int scaletext_json(const char *text, size_t n, scale_rank rank, const char *name
         if (rank == SCALE_SIDECAR) note_add(s->note, "%.200s.", e.text);
         return 0;
     }
-    found_sizes f = { 0 };
+    found_sizes f = { .u_rel = (double)NAN };
     int found = size_in_object(j.root, &f);
     for (const cJSON *child = j.root->child; child && !found; child = child->next)
         if (cJSON_IsObject(child)) found = size_in_object(child, &f);
@@ -292,7 +296,7 @@ void scaletext_keyword(const char *keyword, const char *text, scales *s) {
     if (kind == KEY_BOTH || kind == KEY_X) {
         int unitless = 0;
         double nm = value_nm(text, unit, kind, &unitless);
-        if (nm > 0.0) scales_add(s, SCALE_DESCRIPTION, "description", nm, nm);
+        if (nm > 0.0) scales_add_u(s, SCALE_DESCRIPTION, "description", nm, nm, scaletext_u_rel(text));
     } else if (*first == '{')
         (void)scaletext_json(first, strlen(first), SCALE_DESCRIPTION, "description", "description", s);
     else if (!strcmp(keyword, "Description") || !strcmp(keyword, "Comment"))

@@ -17,7 +17,7 @@ double scaletext_unit(const char *s);
 int scaletext_split(const char *s, double *value, const char **rest);
 
 /* Relative standard uncertainty that the digits of the number imply: half a step of the last one, uniform.
- * NAN: no number. */
+ * NAN: no number, or one without a decimal sign, whose last digit says nothing ("5 nm" is mostly five, not 4.5 to 5.5). */
 double scaletext_u_rel(const char *s);
 
 /* "12.33 nm" -> nm. 1 and *nm, 0: no number or no length unit. */

@@ -190,7 +190,7 @@ void tag_34682_read(const char *text, size_t nx, size_t ny, picture *p) {
     (void)keytext_ini(text, "Beam", "Scan", scan);
     (void)keytext_ini(text, "Beam", "Beam", beam);
     double x = above_0(text, "Scan", "PixelWidth"), y = above_0(text, "Scan", "PixelHeight");
-    double field = above_0(text, "Scan", "HorFieldsize");
+    double field = above_0(text, "Scan", "HorFieldsize"), u_rel = keytext_ini_u_rel(text, "Scan", "PixelWidth");
     if (!(x > 0.0)) x = above_0(text, scan, "PixelWidth"), y = above_0(text, scan, "PixelHeight");
     if (!(field > 0.0)) field = above_0(text, scan, "HorFieldsize");
     if (x * columns > 0.0 && fabs(x * columns / field - 1.0) > 0.001)
@@ -200,7 +200,7 @@ void tag_34682_read(const char *text, size_t nx, size_t ny, picture *p) {
     if (!(x > 0.0)) x = above_0(text, beam, "HFW") / columns, y = above_0(text, beam, "VFW") / rows;
     if (!(x > 0.0)) x = field / columns, y = above_0(text, "Scan", "VerFieldsize") / rows;
     double resized = columns > 0.0 ? columns / (double)nx : 1.0;
-    scales_add(&p->scales, SCALE_TAG, name, x * 1e9 * resized, y * 1e9 * resized);
+    scales_add_u(&p->scales, SCALE_TAG, name, x * 1e9 * resized, y * 1e9 * resized, u_rel);
     if (fabs(resized - 1.0) > 1e-6)
         note_add(p->note, "%s: recorded %s pixels wide, now %s; the pixel size was scaled.", name,
                  number_text(columns, 6, a), number_text((double)nx, 6, b));

@@ -38,7 +38,7 @@ static void take_time(const char *text, picture *p) {
 /* ---- OME ---- */
 
 typedef struct {
-    double x_nm, y_nm, columns;
+    double x_nm, y_nm, columns, u_rel;
     int seen;
 } ome_pixels;
 
@@ -54,6 +54,8 @@ static double ome_length(const char *const *attributes, const char *size, const 
     return positive(xml_attribute(attributes, size)) * (text ? scaletext_unit(text) : 1e3);
 }
 
+static double digits(const char *text) { return text ? scaletext_u_rel(text) : MISSING; }
+
 static void ome_begin(void *state, const xml_path *path, const char *const *attributes) {
     ome_state *s = state;
     const char *ifd;
@@ -61,7 +63,8 @@ static void ome_begin(void *state, const xml_path *path, const char *const *attr
     if (xml_is(path, "Image", "Pixels")) {
         s->current = (ome_pixels){ ome_length(attributes, "PhysicalSizeX", "PhysicalSizeXUnit"),
                                    ome_length(attributes, "PhysicalSizeY", "PhysicalSizeYUnit"),
-                                   positive(xml_attribute(attributes, "SizeX")), 1 };
+                                   positive(xml_attribute(attributes, "SizeX")),
+                                   digits(xml_attribute(attributes, "PhysicalSizeX")), 1 };
         if (!s->first.seen) s->first = s->current;
     } else if (xml_is(path, "Pixels", "TiffData")) {
         ifd = xml_attribute(attributes, "IFD");
@@ -91,7 +94,7 @@ void ome_read(const char *text, size_t n, size_t nx, picture *p) {
     if (best->x_nm > 0.0 || best->y_nm > 0.0) {
         double x = best->x_nm > 0.0 ? best->x_nm : best->y_nm, y = best->y_nm > 0.0 ? best->y_nm : x;
         double k = resized(p, "ome-xml", best->columns, nx);
-        scales_add(&p->scales, SCALE_OME, "ome-xml", x * k, y * k);
+        scales_add_u(&p->scales, SCALE_OME, "ome-xml", x * k, y * k, best->u_rel);
     } else if (s.binary_only)
         note_add(p->note, "The OME-XML says its words are in a companion file, which is not read.");
     if (s.date[0]) take_time(s.date, p);
