@@ -340,9 +340,21 @@ static status choose_free(const request *q, fit_options *o, error *e) {
     return ST_OK;
 }
 
+/* What a link file does not carry has to stand in the protocol that fit and run share. */
+static status check_saved(const request *q, error *e) {
+    static const int not_carried[] = { OPT_FLAT_TOP, OPT_TIP_RADIUS, OPT_SPREAD_LAW };
+    for (size_t i = 0; i < sizeof not_carried / sizeof not_carried[0]; i++)
+        if (q->save && given_has(&q->given, not_carried[i]))
+            return fail(e, ST_BAD_INPUT,
+                        "%s: a link file does not carry it; write it into the protocol, for the fit (--protocol) and for the runs",
+                        shared_option_name(not_carried[i]));
+    return ST_OK;
+}
+
 static status options_of(const request *q, protocol *p, fit_options *o, error *e) {
     *o = fit_defaults();
-    status st = given_apply(&q->given, 1, p, e); /* the fit says the shape, or it is taken as known */
+    status st = check_saved(q, e);
+    if (st == ST_OK) st = given_apply(&q->given, 1, p, e); /* the fit says the shape, or it is taken as known */
     if (st == ST_OK && q->band) st = band_option(q->band, o, e);
     if (st == ST_OK && q->noise) st = option_number("--noise", q->noise, 1e-6, 0.5, &o->noise, e);
     if (st == ST_OK) st = choose_free(q, o, e);

@@ -98,4 +98,7 @@ run 2 fit --spacing 220 bad.csv
 says "$err" "bad.csv line 4: found 'oops', expected a reflectance"
 printf '{ "link": { "calibration": "results/samples.csv" } }' >q.json
 run 2 predict --protocol q.json --spacing 280
+printf 'nm,R\n400,0.1\n450,0.1\n' >"$work/two.csv"
+run 2 fit --spacing 220 --flat-top 0.1 --save "$work/x.json" "$work/two.csv"
+says "$err" "--flat-top: a link file does not carry it"
 cli_done
