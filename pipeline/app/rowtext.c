@@ -12,6 +12,8 @@
 
 static int is_blank(char c) { return c == ' ' || c == '\t' || c == '\r' || c == '\n'; }
 
+static int ends_value(char c) { return is_blank(c) || c == ',' || c == '}' || c == '{' || c == '[' || c == '"' || c == '\0'; }
+
 static const char *skip_blank(const char *p) {
     while (is_blank(*p)) p++;
     return p;
@@ -40,6 +42,7 @@ int row_next(const char **at, row_member *m) {
         return row_next(at, m);
     }
     if (*p != '"' || !(p = take_text(p, &m->name, &m->name_n))) return -1;
+    m->escaped = memchr(m->name, '\\', m->name_n) != NULL;
     p = skip_blank(p);
     if (*p != ':') return -1;
     p = skip_blank(p + 1);
@@ -49,7 +52,7 @@ int row_next(const char **at, row_member *m) {
     } else {
         m->value = p;
         m->value_n = 0;
-        while (!is_blank(p[m->value_n]) && !strchr(",}{[\"", p[m->value_n])) m->value_n++; /* the end counts as found */
+        while (!ends_value(p[m->value_n])) m->value_n++;
         if (!m->value_n) return -1;
         m->kind = *p == '-' || (*p >= '0' && *p <= '9') ? MEMBER_NUMBER : MEMBER_OTHER;
         p += m->value_n;
@@ -75,10 +78,11 @@ char *row_text(const row_member *m) {
 }
 
 int row_named(const row_member *m, const char *name) {
-    size_t n = strlen(name);
-    if (m->name_n == n && !memcmp(m->name, name, n)) return 1;
-    if (!memchr(m->name, '\\', m->name_n)) return 0;
-    row_member plain = { NULL, m->name, 0, m->name_n, MEMBER_TEXT };
+    size_t n = 0;
+    while (n < m->name_n && m->name[n] == name[n]) n++; /* a row holds no zero byte */
+    if (n == m->name_n && !name[n]) return 1;
+    if (!m->escaped) return 0;
+    row_member plain = { .value = m->name, .value_n = m->name_n, .kind = MEMBER_TEXT };
     char *text = row_text(&plain);
     int same = text && !strcmp(text, name);
     free(text);

@@ -10,6 +10,7 @@ typedef struct {
     const char *name, *value;
     size_t name_n, value_n;
     member_kind kind;
+    int escaped; /* the name holds a backslash */
 } row_member;
 
 /* The members of one flat JSON object, in order.
