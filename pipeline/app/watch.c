@@ -49,6 +49,7 @@ typedef struct {
     told told;
     notice notice;
     char done[65]; /* settle_digest of the last update */
+    error said;    /* the last failure, not to be repeated at every look */
 } watch;
 
 static void utc_now(char out[32]) {
@@ -129,8 +130,9 @@ static int update(watch *w, const char *digest, int first) {
     o.quiet = !o.verbose;
     o.fresh = o.fresh && first;
     status st = run_folder(&o, &hooks, &outcome, &e);
-    if (st != ST_OK) say(&e);
-    else if (outcome.stopped) return 0;
+    if (st != ST_OK && strcmp(e.text, w->said.text) != 0) say(&e);
+    w->said = e;
+    if (st == ST_OK && outcome.stopped) return 0;
     if (st == ST_OK || st == ST_BAD_INPUT) memcpy(w->done, digest, sizeof w->done);
     return st == ST_OK;
 }

@@ -18,6 +18,8 @@ if [ $# -eq 0 ]; then
     cmake --build "$home/build/bench" --target sward_bench_ledger >/dev/null || sward_die "the benchmark of the ledger does not build"
     "$home/build/bench/tests/sward_bench_ledger"
     "$home/build/bench/tests/sward_bench"
+    cmake --build "$home/build/bench" --target sward >/dev/null || sward_die "the program does not build"
+    "$home/tests/bench/rerun.sh" "$home/build/bench/sward"
     # The same spectrum by a plain recursion in numpy, where that is installed; never fetched for it.
     for python in python3 /usr/bin/python3; do
         "$python" -c 'import numpy' 2>/dev/null || continue
