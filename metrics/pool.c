@@ -94,3 +94,25 @@ status pool_axis(const measured *m, const double *weight, size_t n, measured *ou
     out->value -= 180.0 * floor(out->value / 180.0);
     return j.micrographs ? ST_OK : ST_NO_RESULT;
 }
+
+status pool_stretch(const measured *stretch, const measured *angle_deg, size_t n, pooled_stretch *out) {
+    double sw = 0.0, sc = 0.0, ss = 0.0, square = 0.0;
+    size_t used = 0;
+    *out = (pooled_stretch){ MISSING, MISSING, MISSING, MISSING, 0 };
+    for (size_t i = 0; i < n; i++) {
+        double strain = 0.5 * log(stretch[i].value), u = 0.5 * stretch[i].u_sampling / stretch[i].value;
+        if (!isfinite(strain) || !isfinite(angle_deg[i].value) || !(u > 0.0)) continue;
+        double w = 1.0 / (u * u), twice = angle_deg[i].value * PI / 90.0;
+        sw += w;
+        sc += w * strain * cos(twice);
+        ss += w * strain * sin(twice);
+        square += w * strain * strain;
+        used++;
+    }
+    if (!used) return ST_NO_RESULT;
+    double c = sc / sw, s = ss / sw, strain = hypot(c, s), axis = atan2(s, c) * 90.0 / PI;
+    double apart = fmax(0.0, square - sw * strain * strain), dof = 2.0 * (double)used - 2.0;
+    *out = (pooled_stretch){ exp(2.0 * strain), axis < 0.0 ? axis + 180.0 : axis, strain * sqrt(sw),
+                             used > 1 ? fisher_above(apart / dof, dof, HUGE_VAL) : MISSING, used };
+    return ST_OK;
+}

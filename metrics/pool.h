@@ -29,4 +29,17 @@ status pool_parts(const measured *m, const double *weight, size_t n, pooled *out
 /* The same for a direction with period 180 deg (weighted mean of the doubled angle). */
 status pool_axis(const measured *m, const double *weight, size_t n, measured *out);
 
+/* Is a stretch that of the texture, or of the imaging? What the texture or a tilted stage does is the same in every micrograph of a
+ * sample; astigmatism and drift change from one to the next.
+ *   in   stretch[n] (>= 1) and angle_deg[n] with u_sampling of stretch; members without them take no part. Micrographs taken with
+ *        turned scan are to be turned back first
+ *   out  mean strain as a vector of the doubled angle, weighted by 1 / u^2: its stretch, direction and standard score; p: chance of
+ *        so much disagreement between the micrographs if all showed one stretch (chi-square), NAN for one micrograph
+ *   err  ST_NO_RESULT none has a stretch */
+typedef struct {
+    double stretch, angle_deg, z, p;
+    size_t micrographs;
+} pooled_stretch;
+status pool_stretch(const measured *stretch, const measured *angle_deg, size_t n, pooled_stretch *out);
+
 #endif

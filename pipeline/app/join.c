@@ -76,6 +76,33 @@ static status pool(const sample_group *g, const examined *all, figure out[QUANTI
     return st;
 }
 
+/* "anisotropy": is a stretch of the sample's micrographs the texture's, or the imaging's? */
+static status anisotropy_json(const sample_group *g, const examined *all, textbuf *out, error *e) {
+    const double clear_z = 3.0, disagree_p = 0.01;
+    measured *m = mem_array(2 * g->n_members, sizeof *m), *angle = m ? m + g->n_members : NULL;
+    if (!m) return NO_MEMORY(e, "a sample");
+    size_t n = 0;
+    for (size_t i = 0; i < g->n_members; i++) {
+        if (!enters(g, all, i)) continue;
+        m[n] = all[g->members[i]].figures[QUANTITY_STRETCH].m;
+        angle[n++] = all[g->members[i]].figures[QUANTITY_ANGLE].m;
+    }
+    pooled_stretch s;
+    pool_stretch(m, angle, n, &s);
+    free(m);
+    const char *found = s.micrographs < 2 ? "unknown" : s.p < disagree_p ? "imaging" : s.z > clear_z ? "texture" : "none";
+    text_addf(out, "\"anisotropy\": {\"found\": \"%s\", \"stretch\": ", found);
+    json_number(out, s.stretch, 4);
+    text_add(out, ", \"angle_deg\": ");
+    json_number(out, s.angle_deg, 4);
+    text_add(out, ", \"z\": ");
+    json_number(out, s.z, 3);
+    text_add(out, ", \"agreement_p\": ");
+    json_number(out, s.p, 3);
+    text_addf(out, ", \"micrographs\": %zu}", s.micrographs);
+    return ST_OK;
+}
+
 static status set_texts(sample_row *r, const sample_group *g, error *e) {
     r->sample = mem_text(g->name);
     r->lot = mem_text(g->lot ? g->lot : "");
@@ -399,6 +426,10 @@ status join_sample(const sample_group *g, const examined *all, const join_option
         text_add(&members, ", ");
         plan_json(p, f, &spacing, &members);
         text_add(&members, ", ");
+        st = anisotropy_json(g, all, &members, e);
+        text_add(&members, ", ");
+    }
+    if (st == ST_OK) {
         st = judge_sample(g, p, f, &spacing, &made, &members, e);
     }
     if (st == ST_OK) st = note_files(g, all, &made, e);

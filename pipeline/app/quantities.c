@@ -29,8 +29,8 @@ const quantity_map quantity_table[QUANTITIES] = {
     MAP(clark_evans,       NULL,           clark_evans,       IN(clark_evans),  0, 0.5),
     MAP(sal_nm,            "sal_px",       sal,               NOT_IN_SAMPLE,    1, 0.0),
     MAP(str,               NULL,           str,               NOT_IN_SAMPLE,    0, 0.0),
-    MAP(stretch,           NULL,           stretch,           NOT_IN_SAMPLE,    0, 0.0),
-    MAP(stretch_angle_deg, NULL,           stretch_angle_deg, NOT_IN_SAMPLE,    0, 0.0),
+    [QUANTITY_STRETCH] = MAP(stretch, NULL,           stretch,           NOT_IN_SAMPLE,    0, 0.0),
+    [QUANTITY_ANGLE] = MAP(stretch_angle_deg, NULL,           stretch_angle_deg, NOT_IN_SAMPLE,    0, 0.0),
     MAP(sharpness_px,      NULL,           sharpness,         NOT_IN_SAMPLE,    0, 0.0),
     MAP(noise_rel,         NULL,           noise_rel,         NOT_IN_SAMPLE,    0, 0.0),
 };

@@ -16,7 +16,7 @@ typedef struct {
 } quantity_map;
 
 #define NOT_IN_SAMPLE ((size_t)-1)
-enum { QUANTITY_ACF, QUANTITY_PSD, QUANTITY_NN, QUANTITY_HEX, QUANTITY_DENSITY, QUANTITIES = 19 };
+enum { QUANTITY_ACF, QUANTITY_PSD, QUANTITY_NN, QUANTITY_HEX, QUANTITY_DENSITY, QUANTITY_STRETCH = 15, QUANTITY_ANGLE, QUANTITIES = 19 };
 extern const quantity_map quantity_table[QUANTITIES];
 
 /* A figure of one micrograph or sample with the parts of its uncertainty, in output units. */

@@ -56,5 +56,18 @@ int main(void) {
     CHECK_NEAR(out.value, 1.0, 1e-9);
     CHECK_NEAR(out.u_sampling, 2.0, 1e-9);
     CHECK(pool_axis(gaps, gap_w, 1, &out) == ST_NO_RESULT && isnan(out.value));
+    /* Strain: alike in three micrographs, or turned from one to the next. */
+    static const measured s[] = { { 1.10, 0.02, 0.0, 9 }, { 1.12, 0.02, 0.0, 9 }, { 1.11, 0.02, 0.0, 9 }, { (double)NAN, 0.1, 0.0, 0 } };
+    static const measured alike[] = { { 178.0, 5.0, 0.0, 9 }, { 2.0, 5.0, 0.0, 9 }, { 0.0, 5.0, 0.0, 9 }, { 1.0, 5.0, 0.0, 9 } };
+    static const measured turned[] = { { 0.0, 5.0, 0.0, 9 }, { 60.0, 5.0, 0.0, 9 }, { 120.0, 5.0, 0.0, 9 }, { 1.0, 5.0, 0.0, 9 } };
+    pooled_stretch k;
+    CHECK(pool_stretch(s, alike, 4, &k) == ST_OK && k.micrographs == 3);
+    CHECK_NEAR(k.stretch, 1.11, 0.002);
+    CHECK(k.angle_deg < 1.0 || k.angle_deg > 179.0);
+    CHECK(k.z > 8.0 && k.p > 0.5);
+    CHECK(pool_stretch(s, turned, 3, &k) == ST_OK && k.z < 1.5 && k.p < 1e-6);
+    CHECK(pool_stretch(s, turned, 1, &k) == ST_OK && isnan(k.p));
+    CHECK_NEAR(k.stretch, 1.10, 1e-12);
+    CHECK(pool_stretch(&s[3], turned, 1, &k) == ST_NO_RESULT && isnan(k.stretch));
     return check_done();
 }
