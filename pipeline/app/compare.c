@@ -34,11 +34,38 @@ static double run_to_run(const cJSON *run, const cJSON *row, const char *name_of
     return runfile_number(cJSON_GetObjectItemCaseSensitive(budget, name), "sampling");
 }
 
-static comparison compare_one(const cJSON *before, const cJSON *after, const cJSON *a, const cJSON *b, const column *c) {
-    comparison d = { .sample = runfile_text(a, "sample"), .quantity = c->name, .unit = c->unit };
+/* Whether a micrograph with these bytes was used for the sample. */
+static int uses(const cJSON *run, const char *sample, const char *sha256) {
+    const cJSON *m;
+    cJSON_ArrayForEach(m, cJSON_GetObjectItemCaseSensitive(run, "images")) {
+        if (!strcmp(runfile_text(m, "status"), "ok") && !strcmp(runfile_text(m, "sample"), sample) && !strcmp(runfile_text(m, "sha256"), sha256))
+            return 1;
+    }
+    return 0;
+}
+
+/* Every micrograph that was used for the sample in one run was used in the other; 0 without any. */
+static int within(const cJSON *run, const cJSON *other, const char *sample) {
+    const cJSON *m;
+    int any = 0;
+    cJSON_ArrayForEach(m, cJSON_GetObjectItemCaseSensitive(run, "images")) {
+        if (strcmp(runfile_text(m, "status"), "ok") != 0 || strcmp(runfile_text(m, "sample"), sample) != 0) continue;
+        any = 1;
+        if (!runfile_text(m, "sha256")[0] || !uses(other, sample, runfile_text(m, "sha256"))) return 0;
+    }
+    return any;
+}
+
+static comparison compare_one(const cJSON *before, const cJSON *after, const cJSON *a, const cJSON *b, const column *c, int same) {
+    comparison d = { .sample = runfile_text(a, "sample"), .quantity = c->name, .unit = c->unit, .same = same };
     d.before = runfile_number(a, c->name);
     d.after = runfile_number(b, c->name);
     d.difference = d.after - d.before;
+    if (same) {
+        d.p = MISSING;
+        d.real = fabs(d.difference) > 0.0;
+        return d;
+    }
     d.u = hypot(run_to_run(before, a, c->name), run_to_run(after, b, c->name));
     if (!(d.u > 0.0)) d.u = MISSING;
     d.p = erfc(fabs(d.difference) / d.u / sqrt(2.0));
@@ -65,22 +92,27 @@ static void note_manifest(const cJSON *before, const cJSON *after, textbuf *note
 status compare_runs(const cJSON *before, const cJSON *after, comparisons *out, error *e) {
     const cJSON *list = cJSON_GetObjectItemCaseSensitive(before, "samples"), *a;
     comparisons c = { .rows = mem_array((size_t)cJSON_GetArraySize(list) * N_COMPARED, sizeof *c.rows) };
-    size_t shared = 0;
+    size_t shared = 0, n_same = 0;
     if (!c.rows) return NO_MEMORY(e, "the comparison");
     cJSON_ArrayForEach(a, list) {
         const cJSON *b = runfile_sample(after, runfile_text(a, "sample"));
         if (!b) continue;
         shared++;
+        int same = within(before, after, runfile_text(a, "sample")) && within(after, before, runfile_text(a, "sample"));
+        n_same += (size_t)same;
         for (size_t k = 0; k < N_COMPARED; k++) {
             const column *col = column_find(sample_columns, n_sample_columns, compared[k]);
             if (!col) continue;
-            comparison d = compare_one(before, after, a, b, col);
+            comparison d = compare_one(before, after, a, b, col, same);
             if (isfinite(d.difference)) c.rows[c.n++] = d;
         }
     }
     note_missing(before, after, "first", &c.notes);
     note_missing(after, before, "second", &c.notes);
-    note_manifest(before, after, &c.notes);
+    if (n_same)
+        text_addf(&c.notes, "%zu of %zu samples rest on the same micrographs in both runs: nothing was sampled anew, and what differs there is the work of "
+                            "the protocol, the sheet or the program.\n", n_same, shared);
+    if (n_same < shared) note_manifest(before, after, &c.notes);
     status st = shared ? text_check(&c.notes, "the notes", e)
                        : fail(e, ST_BAD_INPUT, "the two runs have no sample of the same name; samples are matched by name, which the "
                                                "sample sheet can give");
@@ -113,7 +145,7 @@ void compare_text(const comparisons *c, textbuf *out) {
         text_addf(out, "  %-22s %10s -> %-10s %10s +- %-9s %-6s %s\n", d->quantity, shown(d, d->before, 15, v[0]),
                   shown(d, d->after, 15, v[1]), shown(d, d->difference, DIGITS, v[2]),
                   isfinite(d->u) ? shown(d, 2.0 * d->u, U_DIGITS, v[3]) : "?", unit_of(d),
-                  d->real ? "real" : isfinite(d->u) ? "within sampling" : "uncertainty unknown");
+                  d->same ? (d->real ? "real, same micrographs" : "unchanged") : d->real ? "real" : isfinite(d->u) ? "within sampling" : "uncertainty unknown");
     }
     text_addf(out, "\n%zu of %zu differences are real at 95 %% (+- is k = 2). About one in twenty would be called so without any change.\n",
               real, c->n);
@@ -138,7 +170,7 @@ void compare_json(const comparisons *c, textbuf *out) {
         json_number(out, d->u, U_DIGITS);
         text_add(out, ", \"p\": ");
         json_number(out, d->p, U_DIGITS);
-        text_addf(out, ", \"real\": %s}", d->real ? "true" : "false");
+        text_addf(out, ", \"same_micrographs\": %s, \"real\": %s}", d->same ? "true" : "false", d->real ? "true" : "false");
     }
     text_add(out, c->n ? "\n  ],\n  \"notes\": " : "],\n  \"notes\": ");
     json_string(out, c->notes.n ? c->notes.s : "");

@@ -12,6 +12,7 @@ typedef struct {
     double before, after, difference;
     double u;    /* standard uncertainty of the difference; NAN: unknown, then nothing is called real */
     double p;    /* two-sided probability of a difference this large without a change (normal); NAN unknown */
+    int same;    /* the very same micrographs in both runs: u is 0, p unknown, every difference is real */
     int real;    /* p below 0.05 */
 } comparison;
 
@@ -22,7 +23,8 @@ typedef struct {
 } comparisons;     /* {0} = empty */
 
 /* Only what varies from run to run counts: the sampling part of a texture quantity, the height part of the reflectance.
- * Method and pixel size are common to both runs as long as instrument, settings and protocol are, and cancel.
+ * Where a sample rests on the same micrographs in both runs, sampling is common too: what differs is the work of the protocol, the
+ * sheet or the program. Method and pixel size are common to both runs as long as instrument, settings and protocol are, and cancel.
  *   in   before, after: parsed results.json; they must outlive *out
  *   err  ST_BAD_INPUT no sample is in both; ST_NO_MEMORY
  *   src  JCGM 100:2008, 5.2 (common effects cancel in a difference) and G.3 (normal coverage) */

@@ -64,6 +64,28 @@ static void check_differences(void) {
     text_free(&second);
 }
 
+/* The same micrographs on both sides: any difference is real, however large the sampling part; another file ends that. */
+static void check_same(void) {
+    static const char run[] = "{\"manifest\": {}, \"images\": [{\"sample\": \"a\", \"status\": \"ok\", \"sha256\": \"%s\"}], \"samples\": [{\"sample\": \"a\", "
+                              "\"spacing_nm\": %s, \"budget\": {\"spacing_acf_nm\": {\"sampling\": 9}}}]}";
+    error e = { 0 };
+    for (int other = 0; other < 2; other++) {
+        textbuf t[2] = { { 0 }, { 0 } };
+        comparisons c = { 0 };
+        text_addf(&t[0], run, "ab", "300");
+        text_addf(&t[1], run, other ? "cd" : "ab", "301");
+        cJSON *x = cJSON_Parse(t[0].s), *y = cJSON_Parse(t[1].s);
+        CHECK(compare_runs(x, y, &c, &e) == ST_OK && c.n == 1);
+        CHECK(c.n == 1 && c.rows[0].same == !other && c.rows[0].real == !other);
+        CHECK((c.notes.s && strstr(c.notes.s, "1 of 1 samples rest on the same micrographs")) == !other);
+        comparisons_free(&c);
+        cJSON_Delete(x);
+        cJSON_Delete(y);
+        text_free(&t[0]);
+        text_free(&t[1]);
+    }
+}
+
 /* Without a budget nothing is real; with the density's spacing its own budget counts; no shared sample is an error. */
 static void check_unknown(void) {
     error e = { 0 };
@@ -87,5 +109,6 @@ static void check_unknown(void) {
 int main(void) {
     check_differences();
     check_unknown();
+    check_same();
     return check_done();
 }
