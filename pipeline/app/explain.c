@@ -22,7 +22,7 @@ static const struct {
     { "nn_", "Hanisch K.-H. 1984 (edge correction of nearest neighbours)" },
     { "size_", "ISO 13322-1 (image analysis, border correction), ISO 9276-2 (mean sizes)" },
     { "top_", "ISO 13322-1" },
-    { "clark_evans", "Clark P.J., Evans F.C. 1954; edge correction of Donnelly K.P. 1978" },
+    { "clark_evans", "Clark P.J., Evans F.C. 1954; edge correction of Donnelly K. 1978" },
     { "sal_", "ISO 25178-2 (autocorrelation length), applied to the brightness" },
     { "str", "ISO 25178-2 (texture aspect ratio), applied to the brightness" },
     { "weighted_reflectance", "graded index by effective media (Bruggeman D.A.G. 1935), multilayer recursion; photon flux of ASTM G173" },
