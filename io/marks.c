@@ -18,7 +18,7 @@
 
 enum { LEVELS = 65536, RUN = 8, LEAST = 24, MOST_INKS = 4, SMALLEST = 32 };
 static const float near_ink = 0.12f, lossy_core = 0.06f;
-static const double most_masked = 0.35, most_flat = 0.5, most_clipped = 0.4, most_equal = 0.35; /* of the field: beyond, the marks are the picture */
+static const double most_masked = 0.35, most_flat = 0.5, most_clipped = 0.3, most_equal = 0.35; /* of the field: beyond, the marks are the picture */
 
 static unsigned level_at(const float *px, size_t i) { return (unsigned)(px[i] * 65535.0f + 0.5f); }
 

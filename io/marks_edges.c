@@ -107,7 +107,7 @@ static int is_perfect(const grid *g, const shape *s) {
     if (thick < THICK) return g->thin_too && 10 * length >= 3 * g->nx;
     for (size_t y = s->y0; y < s->y1; y++)
         if (row_share(g, y, s->x0, s->x1) < perfect) return 0;
-    return length >= LONG && 16 * length >= g->nx &&
+    return length >= LONG && 16 * length >= g->nx && length >= 6 * thick &&
            (left_is_free(g, s) || right_is_free(g, s));
 }
 
