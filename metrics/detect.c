@@ -106,10 +106,20 @@ static int by_float(const void *a, const void *b) {
     return (p > q) - (p < q);
 }
 
-static double median_height(const maximum *m, size_t n, float *work) {
-    for (size_t i = 0; i < n; i++) work[i] = m[i].height;
+/* Median response; where maxima of bare ground outnumber the features, half the response that half of the sum of all
+ * responses exceeds, because these many add up to little. */
+static double typical_height(const maximum *m, size_t n, float *work) {
+    double sum = 0.0, above = 0.0;
+    for (size_t i = 0; i < n; i++) {
+        work[i] = m[i].height;
+        sum += (double)m[i].height;
+    }
+    if (!n) return 0.0;
     qsort(work, n, sizeof *work, by_float);
-    return n ? 0.5 * ((double)work[(n - 1) / 2] + (double)work[n / 2]) : 0.0;
+    double median = 0.5 * ((double)work[(n - 1) / 2] + (double)work[n / 2]);
+    size_t k = n;
+    while (k > 0 && above < 0.5 * sum) above += (double)work[--k];
+    return fmax(median, 0.5 * (double)work[k]);
 }
 
 static size_t count_between(const maximum *m, size_t n, double low, double high) {
@@ -144,7 +154,7 @@ static status maxima_select(const float *map, size_t nx, size_t ny, double d, do
             m[k++] = m[i];
     float *work = mem_array(k, sizeof *work);
     if (!work) return NO_MEMORY(e, "the detection of features");
-    double median = median_height(m, k, work), least = median * dynamic_gap(m, k, median);
+    double median = typical_height(m, k, work), least = median * dynamic_gap(m, k, median);
     free(work);
     *n = k;
     *merged_share = (double)count_between(m, k, 0.5 * least, 2.0 * least);
@@ -157,8 +167,7 @@ static status maxima_select(const float *map, size_t nx, size_t ny, double d, do
     return ST_OK;
 }
 
-/* Vertex of the quadratic through the 3 x 3 values around (x, y), at most half a pixel away. */
-static void vertex(const float *g, size_t nx, size_t ny, size_t x, size_t y, double *vx, double *vy) {
+void map_vertex(const float *g, size_t nx, size_t ny, size_t x, size_t y, double *vx, double *vy) {
     *vx = (double)x;
     *vy = (double)y;
     if (!x || !y || x + 1 >= nx || y + 1 >= ny) return;
@@ -199,11 +208,11 @@ static void centres_refine(const float *g, const float *map, size_t nx, size_t n
     for (size_t i = 0; i < det->n; i++) {
         uint32_t top = det->marker[i];
         const float *on = maximum_uphill(g, nx, ny, max_walk * d, &top) ? g : map;
-        vertex(on, nx, ny, top % nx, top / nx, &det->features[i].x, &det->features[i].y);
+        map_vertex(on, nx, ny, top % nx, top / nx, &det->features[i].x, &det->features[i].y);
     }
 }
 
-static status features_make(const maximum *m, size_t n, detection *out, error *e) {
+status detection_make(size_t n, detection *out, error *e) {
     if (n > LIMIT_FEATURES)
         return fail(e, ST_NO_MEMORY, "%zu features in one micrograph, more than the limit of %zu", n,
                     LIMIT_FEATURES);
@@ -211,12 +220,17 @@ static status features_make(const maximum *m, size_t n, detection *out, error *e
     out->marker = mem_array(n, sizeof *out->marker);
     if (!out->features || !out->marker) return NO_MEMORY(e, "the features");
     out->n = n;
-    for (size_t i = 0; i < n; i++) {
+    for (size_t i = 0; i < n; i++) out->features[i].nn_px = MISSING;
+    return ST_OK;
+}
+
+static status features_make(const maximum *m, size_t n, detection *out, error *e) {
+    status st = detection_make(n, out, e);
+    for (size_t i = 0; st == ST_OK && i < n; i++) {
         out->marker[i] = m[i].pixel;
         out->features[i].response = (double)m[i].height;
-        out->features[i].nn_px = MISSING;
     }
-    return ST_OK;
+    return st;
 }
 
 status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, double noise, detection *out,

@@ -11,6 +11,7 @@ typedef struct {
     uint32_t *marker;  /* [n] pixel index of the unrefined marker, owned */
     size_t n;
     double scale_px;     /* d the detection ended with */
+    double body_radius_px; /* of bodies found by their outlines (outline.h); 0: found by brightness */
     double merged_share; /* how far the count depends on the criterion: (features at half the dynamic -
                           * features at twice the dynamic) / features */
 } detection;
@@ -24,6 +25,13 @@ typedef struct {
 status detect(const float *f, size_t nx, size_t ny, double d0_px, int sign, double noise, detection *out,
               error *e);
 void detection_free(detection *d);
+/* Room for n features and markers. *out is zeroed or holds only a scale; free it after failure, too.
+ * err ST_NO_MEMORY, also beyond LIMIT_FEATURES */
+status detection_make(size_t n, detection *out, error *e);
+
+/* Vertex of the least-squares quadratic through the 3 x 3 values around pixel (x, y), at most half a pixel away; the
+ * pixel itself at the frame and where there is no maximum. */
+void map_vertex(const float *g, size_t nx, size_t ny, size_t x, size_t y, double *vx, double *vy);
 
 /* Features per px2: those whose centre lies at least guard inside the field, over the area inside the guard.
  * The frame itself makes maxima, so the outermost features never count. *n_inside may be NULL. NAN: no area

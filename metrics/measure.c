@@ -18,7 +18,9 @@
 #include "metrics/filter.h"
 #include "metrics/fitness.h"
 #include "metrics/masked.h"
+#include "metrics/layer.h"
 #include "metrics/neighbours.h"
+#include "metrics/outline.h"
 #include "metrics/relief.h"
 #include "metrics/scale.h"
 #include "metrics/spacing.h"
@@ -39,7 +41,10 @@ typedef struct {
     acf2d plain;
     first_scale first;
     int second_look; /* the first scale shows only without the large-scale brightness */
-    double d;        /* scale of the features, or NAN */
+    outline body;    /* what the outlines say; sign 0: nothing */
+    int by_outline;  /* the features are those of the outlines */
+    first_shell shell;
+    double d; /* scale of the features, or NAN */
     detection det;
     texture t;
 } job;
@@ -88,6 +93,20 @@ static status correlate(job *j, const float *f, size_t lags, acf2d *out, error *
     return st == ST_OK ? masked_weigh(j->p->mask, out, e) : st;
 }
 
+/* What the outlines say, and the first scale from them when the autocorrelation has none. */
+static status outline_stage(job *j, error *e) {
+    const double sure = 8.0, sure_ratio = 1.8; /* smoothed noise is as strong for one sign as for the other */
+    int sign = j->o->relief == RELIEF_AUTO ? 0 : j->o->relief == RELIEF_PORE ? -1 : 1;
+    status st = outline_look(j->f, j->p->nx, j->p->ny, sign, &j->body, e);
+    const outline *b = &j->body;
+    if (st != ST_OK || (j->first.z >= j->o->min_ring_z && j->first.scale_px > 0.0)) return st;
+    if (b->concentration < sure || b->concentration < sure_ratio * b->opposite || !(b->density > 0.0)) return st;
+    j->first = (first_scale){ MISSING, spacing_hex(b->density), MISSING };
+    j->t.ring_z = MISSING;
+    j->second_look = j->by_outline = 1;
+    return ST_OK;
+}
+
 static status plain_stage(job *j, error *e) {
     size_t nx = j->p->nx, ny = j->p->ny;
     curve made = { 0 };
@@ -104,6 +123,8 @@ static status plain_stage(job *j, error *e) {
         if (j->second_look) j->first = second;
     }
     j->t.ring_z = j->first.z;
+    st = outline_stage(j, e);
+    if (st != ST_OK) return st;
     double angle = MISSING;
     texture_decay(&j->plain, 0.2, &j->t.sal, &j->t.str, &angle);
     return ST_OK;
@@ -133,7 +154,7 @@ static status detect_again(job *j, error *e) {
 /* Relief at the first scale, features, and relief again at their scale. When that changes its mind, features
  * of the other kind; when their scale speaks against them too, the stronger evidence wins and the answer is
  * unsure. */
-static status feature_stage(job *j, error *e) {
+static status features_by_brightness(job *j, error *e) {
     double at_first = 0.0, at_own = 0.0, at_other = 0.0;
     status st = relief_stage(j, j->first.scale_px, &at_first, e);
     relief first = j->t.relief;
@@ -152,6 +173,80 @@ static status feature_stage(job *j, error *e) {
     return ST_OK;
 }
 
+/* Relief by the outlines where they speak; smoothed brightness has it backwards under bright rims. */
+static status features_by_sign(job *j, error *e) {
+    const double loud = 2.0; /* ratio of the signs above which a contrary brightness raises no doubt */
+    double score = 0.0;
+    status st = relief_stage(j, j->first.scale_px, &score, e);
+    if (st != ST_OK) return st;
+    if (j->o->relief == RELIEF_AUTO) {
+        j->t.relief = j->body.sign < 0 ? RELIEF_PORE : RELIEF_HILLOCK;
+        j->t.flags &= ~FLAG(RELIEF_UNSURE);
+        if (score * (double)j->body.sign < 0.0 && j->body.concentration < loud * j->body.opposite)
+            j->t.flags |= FLAG(RELIEF_UNSURE);
+    }
+    return detect_again(j, e);
+}
+
+/* 1 for a layer that does not fill the field. */
+static int leaves_ground(const first_shell *s, double hex_px) {
+    const double bare = 1.06; /* spacing of the density / distance of neighbours */
+    return layer_distinct(s) && hex_px > bare * s->mean_px;
+}
+
+/* 1 when the features of the outlines are to be taken: those of the brightness miss or split bodies, or are noise of the
+ * bare ground; or the bodies are a layer with bare ground, where the centres of outlines are the better ones. */
+static status outlines_win(const job *j, const detection *bodies, int *win, error *e) {
+    const double agreed = 0.8, most_faint = 0.08, most_apart = 0.05;
+    outline_match match = { 0.0, 0.0, 0.0 };
+    first_shell shell;
+    *win = 1;
+    status st = outline_compare(bodies, &j->det, j->p->nx, j->p->ny, &match, e);
+    if (st != ST_OK || match.alike < agreed || match.faint >= most_faint) return st;
+    st = layer_shell(bodies->features, bodies->n, j->p->nx, j->p->ny, &shell, e);
+    *win = st == ST_OK && leaves_ground(&shell, bodies->scale_px) && match.apart < most_apart;
+    return st;
+}
+
+/* Features of the outlines instead of those of the brightness. */
+static status outlines_decide(job *j, error *e) {
+    const double alike = 0.05;
+    size_t nx = j->p->nx, ny = j->p->ny;
+    error before = { ST_OK, "" };
+    if (e) before = *e;
+    detection bodies = { 0 };
+    first_shell shell = { 0 };
+    int win = j->by_outline;
+    double density = j->det.n ? guarded_density(j->det.features, j->det.n, nx, ny, 0.5 * j->det.scale_px, NULL) : 0.0;
+    status st = j->det.n ? layer_shell(j->det.features, j->det.n, nx, ny, &shell, e) : ST_OK;
+    if (st != ST_OK) return st;
+    int doubt = j->second_look || j->t.relief_skew * (double)j->body.sign < 0.0 ||
+                fabs(density / j->body.density - 1.0) > alike || leaves_ground(&shell, spacing_hex(density));
+    if (!win && !doubt) return ST_OK;
+    st = outline_detect(j->f, nx, ny, &j->body, &bodies, e);
+    if (st != ST_OK) return forgive(st, e, &before);
+    if (!win) st = outlines_win(j, &bodies, &win, e);
+    if (st == ST_OK && win) {
+        detection swap = j->det;
+        j->det = bodies;
+        bodies = swap;
+        j->by_outline = 1;
+    }
+    detection_free(&bodies);
+    return st;
+}
+
+static status feature_stage(job *j, error *e) {
+    error before = { ST_OK, "" };
+    if (e) before = *e;
+    if (!j->body.sign) return features_by_brightness(j, e);
+    status st = features_by_sign(j, e);
+    if (st != ST_OK && st != ST_NO_RESULT) return st;
+    status missed = st;
+    st = outlines_decide(j, e);
+    return st == ST_OK && missed != ST_OK && !j->det.n ? missed : (st == ST_OK ? forgive(missed, e, &before) : st);
+}
+
 static status cell_stage(job *j, error *e) {
     size_t nx = j->p->nx, ny = j->p->ny;
     j->t.cells = mem_array(nx * ny, sizeof *j->t.cells);
@@ -162,6 +257,26 @@ static status cell_stage(job *j, error *e) {
     j->t.n_found = j->det.n;
     j->det.features = NULL;
     return st;
+}
+
+/* A layer: bodies known by their outlines, or ones that leave bare ground, whose neighbours stand at one distance. */
+static int is_layer(const job *j) {
+    return j->by_outline ? layer_distinct(&j->shell) : leaves_ground(&j->shell, j->t.spacing_hex.value);
+}
+
+/* Spacing and stretch of a layer from its centres, unless the six peaks of the curvature map say the same. */
+static void layer_take(job *j, int from_peaks) {
+    const double same = 0.02;
+    texture *t = &j->t;
+    const first_shell *s = &j->shell;
+    if (!is_layer(j)) return;
+    t->flags |= FLAG(LAYER);
+    if (from_peaks && fabs(t->spacing_acf.value / s->mean_px - 1.0) < same) return;
+    double n = (double)s->n_pairs, e2 = s->e1 * s->e1 + s->e2 * s->e2, rel = s->sd_px / s->mean_px;
+    t->spacing_acf = (measured){ s->mean_px, s->sd_px / sqrt(n / 3.0), 0.0, t->n_features };
+    double angle = -0.5 * atan2(s->e2, s->e1) * 180.0 / PI, u = 2.0 * rel * sqrt(2.0 / n), ratio = (1.0 + sqrt(e2)) / (1.0 - sqrt(e2));
+    t->stretch = (measured){ ratio, u * ratio, 0.0, t->n_features };
+    t->stretch_angle_deg = (measured){ angle < 0.0 ? angle + 180.0 : angle, fmin(52.0, 0.5 * u / (ratio - 1.0) * 180.0 / PI), 0.0, t->n_features };
 }
 
 /* The ring of the curvature map at 0.12 d, and the peak of its power spectrum. */
@@ -185,6 +300,7 @@ static status ring_stage(job *j, error *e) {
             j->t.stretch_angle_deg = r.stretch_angle_deg;
         }
         st = forgive(st, e, &before);
+        layer_take(j, r.from_peaks);
     }
     acf2d_free(&k);
     made = (curve){ 0 };
@@ -254,8 +370,9 @@ static status scaled_stages(job *j, error *e) {
     }
     if (st == ST_OK) st = statistics_fill(&j->t, j->p->nx, j->p->ny, &j->det, &j->holes, e);
     if (st == ST_OK && j->t.spacing_hex.value > 0.0) {
-        j->d = j->t.spacing_hex.value;
-        st = ring_stage(j, e);
+        st = layer_shell(j->t.features, j->t.n_found, j->p->nx, j->p->ny, &j->shell, e);
+        j->d = is_layer(j) ? j->shell.mean_px : j->t.spacing_hex.value;
+        if (st == ST_OK) st = ring_stage(j, e);
         if (st == ST_OK) st = pair_stage(j, e);
     }
     return st;
@@ -277,6 +394,7 @@ static void complete_uncertainties(texture *t) {
 static void judge_second_look(job *j) {
     const double nearest = 0.7, farthest = 1.45, random_order = 1.45;
     texture *t = &j->t;
+    if (t->flags & FLAG(LAYER)) return; /* random bodies have no shell */
     double ratio = t->spacing_hex.value / j->first.scale_px;
     int scattered = (t->flags & FLAG(WIDE_SIZES)) && t->clark_evans.value < 1.5; /* grain, rims, several things at once */
     if (!(ratio > nearest && ratio < farthest) || scattered) t->reasons |= FLAG(NO_RING);
@@ -285,6 +403,24 @@ static void judge_second_look(job *j) {
         t->flags |= FLAG(NO_RING);
         t->flags &= ~FLAG(CONTRADICTION);
     }
+}
+
+/* Bare ground lowers the Clark-Evans index, lengthens spacing_hex and widens the cells at its border; none of these
+ * speaks against the distance of neighbours, which is as good as the centres. */
+static void judge_layer(texture *t) {
+    const double method = 0.01;
+    t->spacing_acf.u_method = method * t->spacing_acf.value;
+    t->flags &= ~(FLAG(LOW_ORDER) | FLAG(CONTRADICTION) | FLAG(WIDE_SIZES));
+}
+
+/* Bodies without a shell: the ring of the curvature map is that of their own rims. */
+static void judge_bodies(job *j) {
+    const double many_radii = 0.75;
+    texture *t = &j->t;
+    t->spacing_acf = not_measured;
+    t->flags |= FLAG(NO_RING);
+    t->flags &= ~FLAG(CONTRADICTION);
+    if (j->body.breadth > many_radii) t->flags |= FLAG(WIDE_SIZES);
 }
 
 static void judge(job *j, const sharpness *s) {
@@ -296,6 +432,10 @@ static void judge(job *j, const sharpness *s) {
     if (fabs(t->spacing_acf.value / t->spacing_hex.value - 1.0) > j->o->warn_contradiction)
         t->flags |= FLAG(CONTRADICTION);
     if (t->size_gsd.value > j->o->warn_size_gsd) t->flags |= FLAG(WIDE_SIZES);
+    if (t->flags & FLAG(LAYER))
+        judge_layer(t);
+    else if (j->by_outline)
+        judge_bodies(j);
     if (j->second_look) judge_second_look(j);
 }
 
@@ -316,7 +456,7 @@ static status run(job *j, error *e) {
     }
     j->noise = noise_sd(j->f, p->nx, p->ny);
     st = plain_stage(j, e);
-    if (st == ST_OK && j->first.z >= j->o->min_ring_z && j->first.scale_px > 0.0)
+    if (st == ST_OK && (j->by_outline || (j->first.z >= j->o->min_ring_z && j->first.scale_px > 0.0)))
         st = scaled_stages(j, e);
     else if (st == ST_OK)
         j->t.reasons |= FLAG(NO_RING);
@@ -351,7 +491,7 @@ status measure_plane(const plane *p, const measure_options *o, texture *out, err
                     "the picture is %zu x %zu px, expected at least %zu x %zu; it is too small to "
                     "carry texture statistics",
                     p->nx, p->ny, LIMIT_MIN_SIDE, LIMIT_MIN_SIDE);
-    job j = { .p = p, .o = o, .d = MISSING, .t = texture_empty() };
+    job j = { .p = p, .o = o, .d = MISSING, .body = { .radius_px = MISSING }, .t = texture_empty() };
     status st = p->mask ? run_filled(&j, p, e) : run(&j, e);
     free(j.f);
     free(j.work);

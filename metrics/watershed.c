@@ -20,6 +20,8 @@
 
 static const double cell_scale = 0.06; /* sigma of the smoothing / d */
 static const double max_climb = 0.30;  /* from a marker to the top of its basin / d */
+static const double body_scale = 0.06;   /* the same of bodies known by their outlines, / radius: grooves are narrow */
+static const double middle_share = 0.6;  /* of such a body, / radius */
 #define NO_OWNER UINT32_MAX
 
 /* The steepest strictly higher neighbour, or the pixel itself; of equals the first in row-major order. */
@@ -208,13 +210,43 @@ static status tops_measure(const float *g, const uint32_t *cells, size_t n_px, f
     return st;
 }
 
+/* Bodies known by their outlines: the middle of such a body may be lower than its rim, so it is raised above all else,
+ * highest at the marker; the rims then fall to the body they enclose and the cells meet in the grooves. */
+static void middles_raise(float *g, size_t nx, size_t ny, const detection *d) {
+    double r = middle_share * d->body_radius_px;
+    float top = g[0], low = g[0];
+    for (size_t i = 1; i < nx * ny; i++) {
+        top = g[i] > top ? g[i] : top;
+        low = g[i] < low ? g[i] : low;
+    }
+    for (size_t k = 0; k < d->n; k++) {
+        double cx = (double)(d->marker[k] % nx), cy = (double)(d->marker[k] / nx);
+        size_t x1 = (size_t)fmin(cx + r, (double)nx - 1.0), y1 = (size_t)fmin(cy + r, (double)ny - 1.0);
+        for (size_t y = (size_t)fmax(0.0, ceil(cy - r)); y <= y1; y++)
+            for (size_t x = (size_t)fmax(0.0, ceil(cx - r)); x <= x1; x++) {
+                double q = (((double)x - cx) * ((double)x - cx) + ((double)y - cy) * ((double)y - cy)) / (r * r);
+                float raised = top + (float)(1.0 - q) * (top - low);
+                if (q < 1.0 && raised > g[y * nx + x]) g[y * nx + x] = raised;
+            }
+    }
+}
+
+static status smooth_relief(const float *f, size_t nx, size_t ny, int sign, const detection *d, float *g, error *e) {
+    double sigma = d->body_radius_px > 0.0 ? body_scale * d->body_radius_px : cell_scale * d->scale_px;
+    status st = filter_gauss(f, nx, ny, sigma, g, e);
+    if (st == ST_OK && sign < 0)
+        for (size_t i = 0; i < nx * ny; i++) g[i] = -g[i];
+    return st;
+}
+
 status watershed(const float *f, size_t nx, size_t ny, int sign, detection *d, uint32_t *cells, error *e) {
     if (!d->n) return fail(e, ST_BAD_INPUT, "watershed without a single feature; detect features first");
     float *g = mem_array(nx * ny, sizeof *g);
-    status st = g ? filter_gauss(f, nx, ny, cell_scale * d->scale_px, g, e) : NO_MEMORY(e, "the watershed");
-    if (st == ST_OK && sign < 0)
-        for (size_t i = 0; i < nx * ny; i++) g[i] = -g[i];
+    int bodies = d->body_radius_px > 0.0;
+    status st = g ? smooth_relief(f, nx, ny, sign, d, g, e) : NO_MEMORY(e, "the watershed");
+    if (st == ST_OK && bodies) middles_raise(g, nx, ny, d);
     if (st == ST_OK) st = cells_make(g, nx, ny, d, cells, e);
+    if (st == ST_OK && bodies) st = smooth_relief(f, nx, ny, sign, d, g, e);
     if (st == ST_OK) st = tops_measure(g, cells, nx * ny, d->features, d->n, e);
     if (st == ST_OK) st = cells_describe(cells, nx, ny, d->features, d->n, e);
     free(g);

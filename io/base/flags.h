@@ -30,6 +30,7 @@
     X(WIDE_SIZES,      wide_sizes,      "sizes spread so much that one spacing says little")                             \
     X(STRETCHED,       stretched,       "spacing depends on direction")                                                  \
     X(ASTIGMATIC,      astigmatic,      "astigmatism: fine detail is smeared in one direction, beyond any stretch of the spacing") \
+    X(LAYER,           layer,           "a layer of bodies in contact: spacing_acf is the distance of neighbours; density and spacing_hex count the bare ground, too") \
     X(PX_DISAGREE,     px_sources_disagree, "two sources of the pixel size differ by more than 2 %")                    \
     X(PX_UNEQUAL,      px_unequal,      "pixels are not square: rows were resampled")                                        \
     X(PX_ODD,          px_implausible,  "the pixel size lies outside 0.01 nm to 100 um")                                 \

@@ -259,7 +259,7 @@ static size_t voronoi(const double *x, const double *y, size_t n, size_t nx, siz
                       detection *d) {
     float *f = mem_array(nx * ny, sizeof *f);
     uint32_t *cells = mem_array(nx * ny, sizeof *cells);
-    *d = (detection){ mem_array(n, sizeof *d->features), mem_array(n, sizeof *d->marker), n, 1.0, 0.0 };
+    *d = (detection){ .features = mem_array(n, sizeof *d->features), .marker = mem_array(n, sizeof *d->marker), .n = n, .scale_px = 1.0 };
     cones(x, y, n, nx, ny, reach, f);
     for (size_t k = 0; k < n; k++)
         d->marker[k] = (uint32_t)((size_t)(y[k] + 0.5) * nx + (size_t)(x[k] + 0.5));

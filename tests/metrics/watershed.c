@@ -74,7 +74,7 @@ static void check_errors(void) {
     float f[S * S];
     uint32_t cells[S * S], marker[2] = { 10 * S + 10, 10 * S + 30 };
     feature two[2];
-    detection none = { 0 }, d = { two, marker, 2, 20.0, 0.0 };
+    detection none = { 0 }, d = { .features = two, .marker = marker, .n = 2, .scale_px = 20.0 };
     error e = { 0 };
     memset(two, 0, sizeof two);
     memset(f, 0, sizeof f);
