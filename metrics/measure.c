@@ -95,7 +95,7 @@ static status correlate(job *j, const float *f, size_t lags, acf2d *out, error *
 
 /* What the outlines say, and the first scale from them when the autocorrelation has none. */
 static status outline_stage(job *j, error *e) {
-    const double sure = 8.0, sure_ratio = 1.8; /* smoothed noise is as strong for one sign as for the other */
+    const double sure = 8.0, sure_ratio = 1.8; /* noise is as strong for either sign */
     int sign = j->o->relief == RELIEF_AUTO ? 0 : j->o->relief == RELIEF_PORE ? -1 : 1;
     status st = outline_look(j->f, j->p->nx, j->p->ny, sign, &j->body, e);
     const outline *b = &j->body;
@@ -413,13 +413,15 @@ static void judge_layer(texture *t) {
     t->flags &= ~(FLAG(LOW_ORDER) | FLAG(CONTRADICTION) | FLAG(WIDE_SIZES));
 }
 
-/* Bodies without a shell: the ring of the curvature map is that of their own rims. */
+/* Bodies without a shell: the ring of the curvature map is that of their own rims. Where the autocorrelation had no scale
+ * either, no spacing stands out at all. */
 static void judge_bodies(job *j) {
     const double many_radii = 0.75;
     texture *t = &j->t;
     t->spacing_acf = not_measured;
     t->flags |= FLAG(NO_RING);
     t->flags &= ~FLAG(CONTRADICTION);
+    if (!isfinite(t->ring_z)) t->reasons |= FLAG(NO_RING);
     if (j->body.breadth > many_radii) t->flags |= FLAG(WIDE_SIZES);
 }
 
