@@ -2,7 +2,7 @@
  * plane of levels. Always flagged LOSSY: the compression has altered noise and edges, whatever its quality. A
  * stream that breaks off or whose codes are damaged is refused; the library would paint the rest grey. The
  * only place where libjpeg's longjmp exists: jpeg_decode is the frame it returns to. Source: ITU-T T.81
- * (1992); JFIF 1.02 (1992) for the density, which stays behind the 1 um gate. */
+ * (1992); JFIF 1.02 (1992) and Exif 2.3 for resolution, which stays behind the 1 um gate, text and orientation. */
 #include <setjmp.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -16,9 +16,10 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/picture_priv.h"
+#include "io/metadata/public_tags_priv.h"
 #include "io/metadata/scaletext_priv.h"
 
-enum { MAX_SCANS = 200, MAX_COMMENT = 65535 };
+enum { MAX_SCANS = 200, MAX_MARKER = 65535, EXIF_HEAD = 6 };
 
 typedef struct {
     struct jpeg_error_mgr manager; /* first: libjpeg knows only this */
@@ -26,6 +27,8 @@ typedef struct {
     jmp_buf back;
     char what[JMSG_LENGTH_MAX];
     int damaged;
+    int orientation; /* by Exif, 1 to 8 */
+    int unknown;     /* a process or precision the library does not have */
     int upright; /* inks as inks; what is usual is inks stored inverted, as light */
     uint8_t *row;
     picture p;
@@ -38,6 +41,8 @@ static void leave(j_common_ptr c) { longjmp(decoder_of(c)->back, 1); }
 static void on_error(j_common_ptr c) {
     decoder *d = decoder_of(c);
     if (!d->what[0]) d->manager.format_message(c, d->what);
+    int code = d->manager.msg_code;
+    d->unknown = code == JERR_BAD_PRECISION || code == JERR_SOF_UNSUPPORTED || code == JERR_ARITH_NOTIMPL;
     leave(c);
 }
 
@@ -79,7 +84,8 @@ static void row_to_grey(decoder *d, size_t y, int channels, const float table[25
     if (coloured) d->p.flags |= FLAG(COLOUR);
 }
 
-static void read_texts(const struct jpeg_decompress_struct *j, picture *p) {
+static void read_texts(const struct jpeg_decompress_struct *j, decoder *d) {
+    picture *p = &d->p;
     if (j->saw_JFIF_marker && j->density_unit && j->X_density && j->Y_density) {
         double unit = j->density_unit == 1 ? 2.54e7 : 1e7;
         scales_add(&p->scales, SCALE_RESOLUTION, "resolution", unit / j->X_density, unit / j->Y_density);
@@ -88,6 +94,8 @@ static void read_texts(const struct jpeg_decompress_struct *j, picture *p) {
         char *text = m->marker == JPEG_COM ? mem_text_n((const char *)m->data, m->data_length) : NULL;
         if (text) scaletext_keyword("Comment", text, &p->scales);
         free(text);
+        if (m->marker == JPEG_APP0 + 1 && m->data_length > EXIF_HEAD && !memcmp(m->data, "Exif\0", EXIF_HEAD))
+            d->orientation = exif_read(m->data + EXIF_HEAD, m->data_length - EXIF_HEAD, p);
     }
 }
 
@@ -96,7 +104,8 @@ static status decode(struct jpeg_decompress_struct *j, decoder *d, const uint8_t
                      size_t max_pixels, error *e) {
     float table[256];
     jpeg_mem_src(j, bytes, (unsigned long)n);
-    jpeg_save_markers(j, JPEG_COM, MAX_COMMENT);
+    jpeg_save_markers(j, JPEG_COM, MAX_MARKER);
+    jpeg_save_markers(j, JPEG_APP0 + 1, MAX_MARKER);
     (void)jpeg_read_header(j, TRUE);
     int colour = j->jpeg_color_space == JCS_CMYK || j->jpeg_color_space == JCS_YCCK ? 4
                  : j->num_components == 1                                           ? 1
@@ -120,9 +129,9 @@ static status decode(struct jpeg_decompress_struct *j, decoder *d, const uint8_t
         JSAMPROW row = d->row;
         if (jpeg_read_scanlines(j, &row, 1) == 1) row_to_grey(d, y, colour, table);
     }
-    read_texts(j, &d->p); /* finishing frees the markers */
+    read_texts(j, d); /* finishing frees the markers */
     (void)jpeg_finish_decompress(j);
-    return ST_OK;
+    return picture_turn(&d->p, d->orientation, e);
 }
 
 status jpeg_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *out, error *e) {
@@ -141,7 +150,8 @@ status jpeg_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *o
     d->manager.output_message = on_output;
     d->progress.progress_monitor = on_progress;
     if (setjmp(d->back))
-        st = fail(e, ST_BAD_INPUT, "the JPEG is truncated or damaged: %s", d->what);
+        st = d->unknown ? fail(e, ST_BAD_INPUT, "is a JPEG of a kind that is not read (%s); export the micrograph as TIFF or PNG", d->what)
+                        : fail(e, ST_BAD_INPUT, "the JPEG is truncated or damaged: %s", d->what);
     else {
         jpeg_create_decompress(j);
         j->progress = &d->progress;

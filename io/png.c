@@ -12,6 +12,7 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "io/picture_priv.h"
+#include "io/metadata/public_tags_priv.h"
 #include "io/metadata/scaletext_priv.h"
 #include "io/metadata/xml_scale_priv.h"
 
@@ -114,6 +115,13 @@ static void read_scale(png_structp png, png_infop info, picture *p) {
         scales_add(&p->scales, SCALE_RESOLUTION, "pHYs", 1e9 / x, 1e9 / y);
 }
 
+/* A picture is stored as it is to be seen (PNG, 11.3.4.6: orientation there may be ignored). */
+static void read_exif(png_structp png, png_infop info, picture *p) {
+    png_uint_32 n = 0;
+    png_bytep bytes = NULL;
+    if (png_get_eXIf_1(png, info, &n, &bytes) && bytes) (void)exif_read(bytes, n, p);
+}
+
 static int is_ome(const char *text) {
     text += strspn(text, " \t\r\n");
     return !strncmp(text, "<?xml", 5) || !strncmp(text, "<OME", 4);
@@ -179,6 +187,8 @@ static status decode(png_structp png, png_infop info, png_infop end, decoder *d,
     }
     png_read_end(png, end);
     read_scale(png, info, &d->p);
+    read_exif(png, info, &d->p);
+    read_exif(png, end, &d->p);
     read_texts(png, info, &d->p);
     read_texts(png, end, &d->p);
     return ST_OK;

@@ -17,7 +17,8 @@
 typedef enum { KIND_LEVELS, KIND_UNSIGNED, KIND_SIGNED, KIND_FLOAT } sample_kind;
 
 typedef struct {
-    uint32_t nx, ny, tile_nx, tile_ny; /* tile_nx 0: strips */
+    uint32_t nx, ny, tile_nx, tile_ny; /* tile_nx 0: row by row */
+    int whole_strips;                  /* the tiles are strips */
     uint16_t bits, samples, photometric, compression;
     sample_kind kind;
     int planes; /* 1 grey or palette, 3 RGB, 4 CMYK */
@@ -179,6 +180,12 @@ static status read_layout(TIFF *tif, layout *l, error *e) {
         (void)TIFFGetField(tif, TIFFTAG_TILEWIDTH, &l->tile_nx);
         (void)TIFFGetField(tif, TIFFTAG_TILELENGTH, &l->tile_ny);
         if (!l->tile_nx || !l->tile_ny) return fail(e, ST_BAD_INPUT, "is damaged: tiles without a size");
+    } else if (l->compression == COMPRESSION_PACKBITS) {
+        /* Runs should end with the row (TIFF 6.0, section 9); of writers whose runs do not, only whole strips come out right. */
+        (void)TIFFGetFieldDefaulted(tif, TIFFTAG_ROWSPERSTRIP, &l->tile_ny);
+        if (!l->tile_ny || l->tile_ny > l->ny) l->tile_ny = l->ny;
+        l->tile_nx = l->nx;
+        l->whole_strips = 1;
     }
     return ST_OK;
 }
@@ -344,8 +351,16 @@ static void place_tile(layout *l, const uint8_t *tile, size_t size, uint32_t x0,
     }
 }
 
+/* One tile, or one strip, of which the last may be lower. */
+static int read_piece(TIFF *tif, const layout *l, uint32_t x, uint32_t y, uint16_t k, uint8_t *to, size_t size) {
+    if (!l->whole_strips)
+        return TIFFReadEncodedTile(tif, TIFFComputeTile(tif, x, y, 0, k), to, (tmsize_t)size) == (tmsize_t)size;
+    tmsize_t want = (tmsize_t)TIFFVStripSize64(tif, l->ny - y < l->tile_ny ? l->ny - y : l->tile_ny);
+    return TIFFReadEncodedStrip(tif, TIFFComputeStrip(tif, y, k), to, want) == want;
+}
+
 static status read_tiles(TIFF *tif, layout *l, const tiff_watch *w, picture *p, error *e) {
-    size_t size = (size_t)TIFFTileSize64(tif), samples = l->separate ? 1 : l->samples;
+    size_t size = (size_t)(l->whole_strips ? TIFFVStripSize64(tif, l->tile_ny) : TIFFTileSize64(tif)), samples = l->separate ? 1 : l->samples;
     int planes = l->separate ? l->planes : 1;
     double need = (double)l->tile_nx * l->tile_ny * (double)samples * l->bits / 8.0;
     if (!size || (double)size < need) return fail(e, ST_BAD_INPUT, "is damaged: its tiles are too small");
@@ -360,9 +375,8 @@ static status read_tiles(TIFF *tif, layout *l, const tiff_watch *w, picture *p, 
     for (uint32_t y = 0; st == ST_OK && y < l->ny; y += l->tile_ny) {
         for (uint32_t x = 0; st == ST_OK && x < l->nx; x += l->tile_nx) {
             for (int k = 0; st == ST_OK && k < planes; k++) {
-                uint32_t at = TIFFComputeTile(tif, x, y, 0, (uint16_t)k);
-                tmsize_t got = TIFFReadEncodedTile(tif, at, tile + (size_t)k * size, (tmsize_t)size);
-                if (got != (tmsize_t)size || w->damaged) st = broken(w, "tile", at, e);
+                if (!read_piece(tif, l, x, y, (uint16_t)k, tile + (size_t)k * size, size) || w->damaged)
+                    st = broken(w, l->whole_strips ? "row" : "tile at row", y, e);
             }
             if (st == ST_OK) place_tile(l, tile, size, x, y, p);
             if (l->nx - x <= l->tile_nx) break; /* the sums above must not pass 2^32 */

@@ -105,6 +105,7 @@ void ome_read(const char *text, size_t n, size_t nx, picture *p) {
 
 typedef struct {
     double size_x, size_y, field_x, field_y, columns, rows, voltage, distance, tilt, turn;
+    double size_u, field_u; /* relative, by the digits of x; 0: not met */
     int corrected, tilt_seen;
     char date[40], detector[48];
 } metadata_state;
@@ -129,6 +130,8 @@ static void metadata_end(void *state, const xml_path *path, const char *text) {
     for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++)
         if (xml_is(path, numbers[i].parent, numbers[i].name) && scaletext_number(text, &v))
             *numbers[i].to = v;
+    if (xml_is(path, "PixelSize", "X")) s->size_u = scaletext_u_rel(text);
+    if (xml_is(path, "ScanFieldOfView", "X")) s->field_u = scaletext_u_rel(text);
     if (xml_is(path, "Tilt", "Alpha") && scaletext_number(text, &v)) s->tilt = v, s->tilt_seen = 1;
     if (xml_is(path, NULL, "SampleTiltCorrectionOn"))
         s->corrected = !strcasecmp(text, "true") || !strcmp(text, "1");
@@ -148,7 +151,8 @@ void tag_34683_read(const char *text, size_t n, size_t nx, picture *p) {
            y = s.size_x > 0.0 ? s.size_y : s.field_y / s.rows;
     if (x > 0.0 && isfinite(x)) {
         double k = resized(p, name, s.columns, nx);
-        scales_add(&p->scales, SCALE_TAG, name, x * 1e9 * k, y > 0.0 && isfinite(y) ? y * 1e9 * k : MISSING);
+        scales_add_u(&p->scales, SCALE_TAG, name, x * 1e9 * k, y > 0.0 && isfinite(y) ? y * 1e9 * k : MISSING,
+                     s.size_x > 0.0 ? s.size_u : s.field_u);
     }
     if (s.voltage > 0.0) f->voltage_V = s.voltage;
     if (s.distance > 0.0) f->working_distance_mm = s.distance * 1e3;
@@ -169,7 +173,7 @@ void tag_34683_read(const char *text, size_t n, size_t nx, picture *p) {
 typedef struct {
     size_t inside; /* depth of the item called PixelSize; 0: outside */
     int axis;      /* 1 width, 2 height */
-    double x, y;
+    double x, y, u_rel;
     int meters;
 } items_state;
 
@@ -186,7 +190,7 @@ static void items_end(void *state, const xml_path *path, const char *text) {
     } else if (s->inside && n >= 5 && !strcmp(text + n - 5, "Meter"))
         s->meters = n == 5 || (n > 5 && !(text[n - 6] >= 'a' && text[n - 6] <= 'z')); /* not NanoMeter */
     else if (s->inside && xml_is(path, NULL, "anyType") && scaletext_number(text, &v) && v > 0.0) {
-        if (s->axis == 1 && !(s->x > 0.0)) s->x = v;
+        if (s->axis == 1 && !(s->x > 0.0)) s->x = v, s->u_rel = scaletext_u_rel(text);
         if (s->axis == 2 && !(s->y > 0.0)) s->y = v;
     }
     if (s->inside && xml_is(path, NULL, "item") && path->depth <= s->inside) s->inside = 0;
@@ -222,6 +226,6 @@ void tag_34680_read(const char *text, size_t n, size_t nx, picture *p) {
     if (!xml) return;
     size_t length = from_base64(text + from, n - from, xml);
     if (xml_walk(xml, length, &visitor, &s, sizeof s) && s.meters && s.x > 0.0)
-        scales_add(&p->scales, SCALE_TAG, "tag 34680", s.x * 1e9, s.y > 0.0 ? s.y * 1e9 : MISSING);
+        scales_add_u(&p->scales, SCALE_TAG, "tag 34680", s.x * 1e9, s.y > 0.0 ? s.y * 1e9 : MISSING, s.u_rel);
     free(xml);
 }

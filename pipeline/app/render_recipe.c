@@ -10,10 +10,9 @@
 #include <string.h>
 #include <strings.h>
 
-#include "base/limits.h"
+#include "app/command.h"
 #include "base/mem.h"
 #include "base/number.h"
-#include "io/file.h"
 #include "io/json.h"
 
 typedef enum { KEY_NUMBER, KEY_SIZE, KEY_PATTERN, KEY_SHAPE, KEY_RELIEF, KEY_PAIR, KEY_BITS, KEY_FLAG, KEY_SEED,
@@ -288,7 +287,7 @@ status recipe_read(const char *path, recipe *out, error *e) {
     recipe found = { 0 };
     error own = { 0 }; /* sentences get their line from a filled error, asked for or not */
     reader r = { &doc, path, e ? e : &own };
-    status st = file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, r.e);
+    status st = input_read(path, &bytes, &n, r.e);
     if (st == ST_OK) st = json_parse(bytes, n, path, &doc, r.e);
     if (st == ST_OK) st = read_parts(&r, doc.root, &found);
     if (st == ST_OK) *out = found;

@@ -26,7 +26,7 @@ status recipe_set(recipe_image *image, const char *key, const char *value, error
 /* Reads {"about": "...", "defaults": {...}, "images": [{"file": "...", ...}]}. Without a seed of its own an image takes
  * the seed of the defaults plus its place in the list.
  *   own  caller frees with recipe_free; out untouched on failure
- *   err  ST_BAD_INPUT with the line: not JSON, unknown key (with the nearest), a value that cannot be read, no file
+ *   err  as input_read; ST_BAD_INPUT with the line: not JSON, unknown key (with the nearest), a value that cannot be read, no file
  *        name, a file name twice, one that leaves the output folder or does not end in .png, .tif or .tiff; no images */
 status recipe_read(const char *path, recipe *out, error *e);
 void recipe_free(recipe *r);

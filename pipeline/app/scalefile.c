@@ -9,7 +9,6 @@
 #include "app/command.h"
 #include "base/limits.h"
 #include "base/quantity.h"
-#include "io/file.h"
 #include "io/json.h"
 
 const char *grating_word(grating_kind kind) {
@@ -77,11 +76,7 @@ status scalefile_read(const char *path, scale_standard *out, error *e) {
     json j = { 0 };
     scale_standard s = { 0 };
     double width = 0.0;
-    status st = input_wanted(path, e);
-    if (st == ST_OK) {
-        st = file_read(path, LIMIT_SIDECAR_BYTES, &bytes, &n, e);
-        if (st != ST_OK) st = fail_within(e, st, path);
-    }
+    status st = input_read(path, &bytes, &n, e);
     if (st == ST_OK) st = json_parse(bytes, n, path, &j, e);
     if (st == ST_OK) st = text_of(&j, "scale", s.name, sizeof s.name, path, e);
     if (st == ST_OK) st = text_of(&j, "date", s.date, sizeof s.date, path, e);

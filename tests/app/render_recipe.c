@@ -99,7 +99,7 @@ static void mistakes(void) {
     }
     recipe r = { 0 };
     error e = { 0 };
-    CHECK_FAILS(recipe_read(in_folder("none.json"), &r, &e), ST_IO, e, "");
+    CHECK_FAILS(recipe_read(in_folder("none.json"), &r, &e), ST_BAD_INPUT, e, "no such file");
     CHECK(read_text("{\"images\": [{}]}", &r, NULL) == ST_BAD_INPUT);
 }
 
