@@ -198,7 +198,7 @@ static void wrong_use(void) {
     CHECK(RUN(arg("--out"), arg(folder), arg("--recipe"), arg("r.json"), arg("--px"), arg("3")) == EXIT_USAGE);
     CHECK(RUN(arg("--out"), arg(folder), arg("--name"), arg("../x")) == EXIT_USAGE);
     CHECK(RUN(arg("--out"), arg(folder), arg("--pattern"), arg("rsa"), arg("--disorder"), arg("0.9")) == EXIT_USAGE);
-    CHECK(RUN(arg("--out"), arg(folder), arg("--recipe"), arg(in_folder("none.json"))) == EXIT_FAILED);
+    CHECK(RUN(arg("--out"), arg(folder), arg("--recipe"), arg(in_folder("none.json"))) == EXIT_USAGE);
     CHECK(file_write(in_folder("plain"), "x", 1, NULL) == ST_OK);
     CHECK(RUN(arg("--out"), arg(in_folder("plain/below")), arg("--size"), arg("160x120"), arg("--spacing"),
               arg("160")) == EXIT_FAILED);

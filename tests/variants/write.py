@@ -163,6 +163,8 @@ def png_scales():
             ("group", text(b"PixelSize", b"1,234.5 nm"), "none")]:
         case("pngpx_%s.png" % name, grey_png(extra), px=px)
     case("pngpx_late_text.png", grey_png(b"", text(b"px_nm", b"7.25")), px=7.25)
+    case("pngpx_exif.png", grey_png(chunk(b"eXIf", exif(">", 3, 2000000)[10:])), px=5)
+    case("pngpx_exif_screen.png", grey_png(chunk(b"eXIf", exif("<", 2, 96)[10:])), px="none")
     bad = chunk(b"pHYs", struct.pack(">IIB", 200000000, 200000000, 1))
     case("pngpx_bad_crc.png", grey_png(bad[:-1] + bytes([bad[-1] ^ 1])))
 
@@ -530,8 +532,8 @@ def jpeg_blocks(bits=8, extra=b"", nx=NX, ny=NY):
     return pixels, stream, levels(pixels, 255)
 
 
-def exif(order, unit, x, description=None):
-    tags = {282: (5, [x, 1]), 283: (5, [x, 1]), 296: (3, [unit])}
+def exif(order, unit, x, description=None, orientation=1):
+    tags = {274: (3, [orientation]), 282: (5, [x, 1]), 283: (5, [x, 1]), 296: (3, [unit])}
     if description:
         tags[270] = ascii_tag(description)
     # An Exif block is a TIFF without a picture: the strip the writer above adds is an empty one.
@@ -552,6 +554,8 @@ def jpegs():
             _, stream, want = jpeg_blocks(8, jpeg_segment(0xE1, short))
             px = "none"
         case("jpg_%s.jpg" % name, stream, px=px, want=want)
+    _, stream, want = jpeg_blocks(8, exif(">", 3, 2000000, None, 6))  # seen turned clockwise: the stored left column is the top row
+    case("jpg_exif_turned.jpg", stream, px=5, want=[[want[NY - 1 - x][y] for x in range(NY)] for y in range(NX)])
     case("jpg_12bit.jpg", jpeg_blocks(12)[1], "refused")
 
 
