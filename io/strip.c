@@ -9,8 +9,9 @@
  * repeated with a tolerance for noise, then with one for lossy compression. A strip at the top is the same
  * upside down; a box narrower than the picture is searched in its own columns and must have side edges.
  *
- * The figures below are rules of this project, tried on the styles in tests/io/strip.c. Does not: read the
- * writing, or crop a block without any (a saturated band of specimen looks the same). */
+ * The figures below are rules of this project, tried on the styles in tests/io/strip.c. Paper with
+ * a scale bar alone will do. Does not: read the writing, or crop a block without any (a saturated band of
+ * specimen looks the same). */
 #include "io/strip_priv.h"
 
 #include <math.h>
@@ -28,6 +29,7 @@ typedef struct {
     float equal;         /* of neighbours: the same level */
     int large;           /* steps between neighbours as writing makes them */
     uint16_t small_in[PARTS], large_in[PARTS]; /* shading or noise, and writing, in eight parts of the row */
+    uint32_t from, to;                         /* columns of the first and the last step, 0 without any */
     int exact;                                 /* one level, no exception */
 } row_facts;
 
@@ -94,6 +96,10 @@ static row_facts describe_row(const float *px, const view *v, scratch *w) {
         for (size_t end = nx * (part + 1) / PARTS; x < end; x++) {
             int step = abs(w->level[x] - w->level[x - 1]);
             equal += step <= v->window;
+            if (step > v->window) {
+                f.to = (uint32_t)x;
+                if (!f.from) f.from = f.to;
+            }
             small += step > v->window && step < v->small;
             large += step >= v->large;
         }
@@ -166,6 +172,28 @@ static int strip_like(const view *v, const block_facts *b) {
            b->second >= 0.12 * b->other /* writing has a level of its own */ && is_crisp(v, b);
 }
 
+static int has_small_steps(const row_facts *f) {
+    int n = 0;
+    for (int k = 0; k < PARTS; k++) n += f->small_in[k];
+    return n > 0;
+}
+
+/* Paper with nothing on it but a scale bar, with or without ticks: too little for writing. Its rows all begin and
+ * end in the same columns, as no feature of a specimen does. Lossy compression hides that. */
+static int is_bar_alone(const view *v, size_t t) {
+    const row_facts *bar = NULL, *first = &v->rows[t - v->first];
+    size_t rows = 0;
+    for (size_t y = t; y < v->ny; y++) {
+        const row_facts *f = &v->rows[y - v->first];
+        if (abs(f->mode - first->mode) > v->window) return 0;
+        if (!f->to) continue;
+        if (!bar) bar = f;
+        if (has_small_steps(f) || f->large > 6 || f->from != bar->from || f->to != bar->to) return 0;
+        rows++;
+    }
+    return rows >= 2 && bar->to - bar->from >= 3 * rows && 2 * rows <= v->ny - t;
+}
+
 /* Share of level `mode` in the rows above t, and how many of them are of one level without exception. */
 static void look_above(const view *v, size_t t, int mode, double *share, double *exact) {
     size_t n = t - v->first < REACH ? t - v->first : REACH;
@@ -236,7 +264,7 @@ static size_t search(const view *v) {
         beginning kind = begins(v, t);
         if (kind == BEGINS_NOT || (unsure && kind != BEGINS)) continue;
         size_t rows = v->ny - t, exempt = rows / 8 < (size_t)v->exempt ? rows / 8 : (size_t)v->exempt;
-        int like = 0;
+        int like = is_bar_alone(v, t);
         for (size_t k = 0; k <= exempt && !like; k++) {
             block_facts b = describe_block(v, t, v->ny - k);
             like = strip_like(v, &b);

@@ -271,6 +271,30 @@ static void sweep_bare(size_t nx, size_t ny, double levels) {
     free(c.px);
 }
 
+/* Paper with a scale bar and not a word; the bar with or without ticks. */
+static void bars_alone(size_t nx, size_t ny) {
+    canvas c = canvas_make(nx, ny);
+    for (int k = 0; k < SPECIMENS; k++)
+        for (int paper = 0; paper < 2; paper++) {
+            size_t rows = 24, y = ny - 12, x1 = 20 + nx / 4;
+            double ink = paper ? 0.0 : 1.0;
+            paint_specimen(&c, (specimen)k, 17.0, 255.0);
+            fill(&c, 0, ny - rows, nx, ny, (double)paper);
+            fill(&c, 20, y, x1, y + 4, ink);
+            if (k % 2) {
+                fill(&c, 20, y - 3, 22, y + 7, ink);
+                fill(&c, x1 - 2, y - 3, x1, y + 7, ink);
+            }
+            size_t got = strip_find(c.px, nx, ny);
+            CHECK(got == rows);
+            if (got != rows) printf("  bar alone: specimen %d paper %d: found %zu\n", k, paper, got);
+            paint_specimen(&c, (specimen)k, 17.0, 255.0);
+            fill(&c, 20, y, x1, y + 4, ink); /* on the specimen itself */
+            CHECK(strip_find(c.px, nx, ny) == 0);
+        }
+    free(c.px);
+}
+
 static void upside_down(canvas *c) {
     for (size_t y = 0; y < c->ny / 2; y++)
         for (size_t x = 0; x < c->nx; x++) {
@@ -397,6 +421,7 @@ int main(void) {
     sweep_strips(256, 360, 65535.0);
     sweep_bare(320, 240, 255.0);
     sweep_bare(256, 300, 65535.0);
+    bars_alone(400, 300);
     strips_on_top(400, 300);
     narrow_strips(400, 300);
     lossy_strips(400, 304);
