@@ -52,6 +52,7 @@ typedef struct {
     flags flags;         /* COLOUR, MANY_PAGES */
     size_t strip_stated; /* rows the file itself says are strip, 0: it does not say */
     size_t pages;        /* of the file; 0: its format has none */
+    int companion_wanted; /* OME-XML without words of its own: they are in a file beside */
     char compression[16];
     char acquired_at[32];
     facts facts;

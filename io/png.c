@@ -133,7 +133,7 @@ static void read_texts(png_structp png, png_infop info, picture *p) {
     png_get_text(png, info, &texts, &n);
     for (int i = 0; i < n; i++)
         if (texts[i].text && is_ome(texts[i].text))
-            ome_read(texts[i].text, strlen(texts[i].text), p->nx, p);
+            ome_read(texts[i].text, strlen(texts[i].text), p->nx, NULL, p);
         else if (texts[i].text)
             scaletext_keyword(texts[i].key, texts[i].text, &p->scales);
 }

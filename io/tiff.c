@@ -20,7 +20,7 @@ enum { MAX_PAGES = 4096, MAX_SUB_PAGES = 64 };
 typedef struct {
     const uint8_t *bytes;
     size_t n, at;
-    tiff_watch watch;
+    tiff_watch *watch; /* shared by all handles of a file */
 } source;
 
 static tmsize_t on_read(thandle_t h, void *to, tmsize_t n) {
@@ -68,7 +68,7 @@ __attribute__((format(printf, 4, 0))) static int on_error(TIFF *tif, void *user,
                                                           const char *fmt, va_list args) {
     source *s = user;
     (void)tif, (void)module;
-    if (!s->watch.what[0]) vsnprintf(s->watch.what, sizeof s->watch.what, fmt, args);
+    if (!s->watch->what[0]) vsnprintf(s->watch->what, sizeof s->watch->what, fmt, args);
     return 1;
 }
 
@@ -78,8 +78,8 @@ __attribute__((format(printf, 4, 0))) static int on_warning(TIFF *tif, void *use
     source *s = user;
     (void)tif;
     if (module && strstr(module, "JPEG")) {
-        s->watch.damaged = 1;
-        if (!s->watch.what[0]) vsnprintf(s->watch.what, sizeof s->watch.what, fmt, args);
+        s->watch->damaged = 1;
+        if (!s->watch->what[0]) vsnprintf(s->watch->what, sizeof s->watch->what, fmt, args);
     }
     return 1;
 }
@@ -172,7 +172,7 @@ static status take_page(TIFF *tif, size_t wanted, size_t pages, page *best, size
 
 static status damaged(const source *s, error *e) {
     return fail(e, ST_BAD_INPUT, "the TIFF cannot be opened, it is truncated or damaged: %s",
-                s->watch.what[0] ? s->watch.what : "no directory");
+                s->watch->what[0] ? s->watch->what : "no directory");
 }
 
 /* Turns the stored rows the way they are to be seen (TIFF 6.0, tag 274). */
@@ -207,13 +207,14 @@ static status open_planes(source s[3], TIFF *tif[3], toff_t at, size_t max_pixel
 
 status tiff_decode_page(const uint8_t *bytes, size_t n, size_t wanted, size_t max_pixels, picture *out,
                         error *e) {
+    tiff_watch watch = { 0 };
     source s[3];
     TIFF *tif[3] = { NULL };
     picture p = { 0 };
     size_t pages = 0, number = 0;
     page best;
     status st = ST_OK;
-    for (int k = 0; k < 3; k++) s[k] = (source){ .bytes = bytes, .n = n };
+    for (int k = 0; k < 3; k++) s[k] = (source){ .bytes = bytes, .n = n, .watch = &watch };
     tif[0] = open_source(&s[0], max_pixels);
     if (!tif[0]) {
         st = damaged(&s[0], e);
@@ -223,13 +224,13 @@ status tiff_decode_page(const uint8_t *bytes, size_t n, size_t wanted, size_t ma
     if (wanted && pages > 1) st = take_page(tif[0], wanted, pages, &best, &number, e);
     if (st != ST_OK) goto done;
     tiff_tags_read(tif[0], best.at, bytes, n, &p);
-    s[0].watch = (tiff_watch){ 0 };
+    watch = (tiff_watch){ 0 };
     if (!TIFFSetSubDirectory(tif[0], best.at)) {
         st = fail(e, ST_BAD_INPUT, "the TIFF is damaged: page %zu cannot be read", number);
         goto done;
     }
     st = open_planes(s, tif, best.at, max_pixels, e);
-    if (st == ST_OK) st = tiff_pixels_read(tif, &s[0].watch, n, max_pixels, &p, e);
+    if (st == ST_OK) st = tiff_pixels_read(tif, &watch, n, max_pixels, &p, e);
     if (st == ST_OK) st = honour_orientation(tif[0], &p, e);
     if (st == ST_OK) {
         note_pages(number, pages, &p);

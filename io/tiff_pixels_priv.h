@@ -14,7 +14,7 @@ typedef struct {
 /* Reads the directory that all handles stand on into p->px, 0..1, in the stored orientation; sets bit_depth,
  * compression, flags and note.
  *   in   tif[0]; tif[1], tif[2] stand on the same directory when its planes are separate, else NULL
- *        watch of tif[0]; n_bytes of the file
+ *        watch of all three; n_bytes of the file
  *   err  ST_BAD_INPUT a variant that is not read (says which), damaged; ST_NO_MEMORY larger than the limits */
 status tiff_pixels_read(TIFF *const tif[3], const tiff_watch *watch, size_t n_bytes, size_t max_pixels,
                         picture *p, error *e);

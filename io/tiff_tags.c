@@ -35,7 +35,7 @@ static void read_ome(TIFF *tif, size_t nx, picture *p) {
     if (!TIFFGetField(tif, TIFFTAG_IMAGEDESCRIPTION, &text) || !text) return;
     const char *first = text + (!strncmp(text, "\xef\xbb\xbf", 3) ? 3 : 0);
     first += strspn(first, " \t\r\n");
-    if (*first == '<') ome_read(first, strlen(first), nx, p);
+    if (*first == '<') ome_read(first, strlen(first), nx, NULL, p);
 }
 
 void tiff_tags_read(TIFF *tif, toff_t at, const uint8_t *file, size_t n_file, picture *p) {

@@ -31,7 +31,8 @@ static int description_unit(const char *text, const char *key, double *nm) {
     return 0;
 }
 
-static void add_resolution(double x, double y, double x_nm, double y_nm, scale_rank rank, const char *name, picture *p) {
+static void add_resolution(double x, double y, double x_nm, double y_nm, scale_rank rank, const char *name,
+                           picture *p) {
     if (!(x > 0.0)) return; /* a denominator of 0 reads as 0 */
     scales_add(&p->scales, rank, name, x_nm / x, y_nm / (y > 0.0 ? y : x));
 }
@@ -104,9 +105,10 @@ static char *text_at(const block *k, size_t at) {
 
 static void use_texts(const char *description, const char *date, const char *software, picture *p) {
     const char *first = description ? description + strspn(description, " \t\r\n") : "";
-    if (*first == '<') ome_read(first, strlen(first), p->nx, p);
+    if (*first == '<') ome_read(first, strlen(first), p->nx, NULL, p);
     if (date) public_date(date, p);
-    if (software && !p->facts.software[0]) picture_set_text(p->facts.software, sizeof p->facts.software, software);
+    if (software && !p->facts.software[0])
+        picture_set_text(p->facts.software, sizeof p->facts.software, software);
 }
 
 int exif_read(const uint8_t *bytes, size_t n, picture *p) {
@@ -116,14 +118,18 @@ int exif_read(const uint8_t *bytes, size_t n, picture *p) {
     size_t at = u32(&k, 4);
     if (at > n - 2) return 1;
     double x = 0.0, y = 0.0, unit = UNIT_INCH, orientation = 1.0; /* inch: what a missing tag 296 means */
-    char *texts[3] = { NULL };                                   /* description, software, date */
+    char *texts[3] = { NULL };                                    /* description, software, date */
     unsigned entries = u16(&k, at);
     at += 2;
     for (unsigned i = 0; i < entries && i < MAX_ENTRIES && n - at >= 12; i++, at += 12) {
         unsigned tag = u16(&k, at);
         char **text = tag == 270 ? &texts[0] : tag == 305 ? &texts[1] : tag == 306 ? &texts[2] : NULL;
         if (text && !*text) *text = text_at(&k, at);
-        double *number = tag == 282 ? &x : tag == 283 ? &y : tag == 296 ? &unit : tag == 274 ? &orientation : NULL;
+        double *number = tag == 282   ? &x
+                         : tag == 283 ? &y
+                         : tag == 296 ? &unit
+                         : tag == 274 ? &orientation
+                                      : NULL;
         if (number) *number = number_at(&k, at);
     }
     public_scale(texts[0], x, y, unit > 0.0 && unit < 4.0 ? (unsigned)unit : 1, p);

@@ -1,5 +1,5 @@
 /* Finds and reads the text file that belongs to a micrograph by its name. Only beside the picture, never
- * along a path written inside a file. UTF-8, Latin-1 and UTF-16 texts are read. */
+ * along a path written inside a file: the companion of OME-XML too. UTF-8, Latin-1 and UTF-16 texts are read. */
 #include "io/metadata/sidecar_priv.h"
 
 #include <ctype.h>
@@ -14,15 +14,18 @@
 #include "io/metadata/instrument_priv.h"
 #include "io/metadata/keytext_priv.h"
 #include "io/metadata/scaletext_priv.h"
+#include "io/metadata/xml_scale_priv.h"
 
-enum { KINDS = 6 };
-typedef enum { WHOLE, STEM, DASHED } stem_kind;
+enum { KINDS = 7 };
+typedef enum { WHOLE, STEM, DASHED, OME } stem_kind;
+typedef enum { TEXT, HEADER, COMPANION } content_kind;
 static const struct {
     const char *ending;
-    stem_kind stem; /* NAME.EXT, NAME or NAME-EXT in front of the ending */
-    int hdr;
-} kinds[KINDS] = { { ".txt", WHOLE, 0 }, { ".txt", STEM, 0 },   { ".hdr", DASHED, 1 },
-                   { ".hdr", STEM, 1 },  { ".json", WHOLE, 0 }, { ".json", STEM, 0 } };
+    stem_kind stem; /* NAME.EXT, NAME, NAME-EXT, or NAME without its .ome in front of the ending */
+    content_kind content;
+} kinds[KINDS] = { { ".txt", WHOLE, TEXT },  { ".txt", STEM, TEXT },   { ".hdr", DASHED, HEADER },
+                   { ".hdr", STEM, HEADER }, { ".json", WHOLE, TEXT }, { ".json", STEM, TEXT },
+                   { ".companion.ome", OME, COMPANION } };
 
 static int equal_letters_n(const char *a, const char *b, size_t n) {
     for (size_t i = 0; i < n; i++)
@@ -41,11 +44,14 @@ static int is_beside(const char *entry, const char *name, size_t n, const char *
 
 /* Told apart by what stands in it, not by its ending; a .hdr without [MAIN] is a map's or a high-range
  * picture's, and none of ours. */
-static void read_text(const char *text, size_t n, const char *name, const char *image, int hdr, picture *p) {
+static void read_text(const char *text, size_t n, const char *name, const char *image, content_kind content,
+                      picture *p) {
     char value[KEYTEXT_LINE];
-    if (keytext_ini_has(text, "MAIN"))
+    if (content == COMPANION)
+        ome_read(text, n, p->nx, image, p);
+    else if (keytext_ini_has(text, "MAIN"))
         main_block_read(text, SCALE_SIDECAR, "sidecar", p->nx, p->ny, p);
-    else if (hdr)
+    else if (content == HEADER)
         return;
     else if (keytext_ini_has(text, "SemImageFile") || keytext_ini_has(text, "TemImageFile"))
         sem_image_file_read(text, image, p->nx, p->ny, p);
@@ -58,7 +64,7 @@ static void read_text(const char *text, size_t n, const char *name, const char *
         (void)scaletext_lines(text, SCALE_SIDECAR, "sidecar", name, &p->scales);
 }
 
-static int read_one(const char *folder, const char *name, const char *image, int hdr, picture *p) {
+static int read_one(const char *folder, const char *name, const char *image, content_kind content, picture *p) {
     char *path = path_join(folder, name), *text = NULL;
     size_t n = 0, before = p->scales.n;
     error e = { 0 };
@@ -69,7 +75,7 @@ static int read_one(const char *folder, const char *name, const char *image, int
         keytext_narrow(text, &n);
         const char *start = text + (n >= 3 && !memcmp(text, "\xef\xbb\xbf", 3) ? 3 : 0);
         while (isspace((unsigned char)*start)) start++;
-        read_text(start, n - (size_t)(start - text), name, image, hdr, p);
+        read_text(start, n - (size_t)(start - text), name, image, content, p);
     }
     free(text);
     free(path);
@@ -93,6 +99,8 @@ static void look_beside(const char *path, beside *b) {
     const char *dot = strrchr(name, '.');
     size_t whole = strlen(name), stem = dot && dot > name ? (size_t)(dot - name) : whole;
     *b = (beside){ .folder = slash ? mem_text_n(path, (size_t)(slash - path) + 1) : mem_text("."), .image = mem_text(name) };
+    size_t bare = stem > 4 && equal_letters_n(name + stem - 4, ".ome", 4) ? stem - 4 : stem;
+    const size_t lengths[] = { [WHOLE] = whole, [STEM] = stem, [DASHED] = whole, [OME] = bare };
     char *dashed = mem_text(name);
     if (dashed && stem < whole) dashed[stem] = '-';
     int exact[KINDS] = { 0 };
@@ -101,8 +109,8 @@ static void look_beside(const char *path, beside *b) {
         for (int k = 0; k < KINDS; k++) {
             int dash = kinds[k].stem == DASHED;
             if (dash && !dashed) continue;
-            int match = is_beside(entry->d_name, dash ? dashed : name, kinds[k].stem == STEM ? stem : whole,
-                                  kinds[k].ending);
+            int match =
+                is_beside(entry->d_name, dash ? dashed : name, lengths[kinds[k].stem], kinds[k].ending);
             /* Of names that differ only in case: the exact one, else the first in byte order. */
             if (match > exact[k] ||
                 (match && match == exact[k] && b->found[k] && strcmp(entry->d_name, b->found[k]) < 0)) {
@@ -119,7 +127,9 @@ void sidecar_read(const char *path, picture *p) {
     beside b;
     look_beside(path, &b);
     for (int k = 0; b.image && k < KINDS; k++)
-        if (b.found[k] && read_one(b.folder, b.found[k], b.image, kinds[k].hdr, p)) break;
+        if (b.found[k] && read_one(b.folder, b.found[k], b.image, kinds[k].content, p)) break;
+    if (p->companion_wanted && !b.found[KINDS - 1])
+        note_add(p->note, "The OME-XML says its words are in a companion file, but no NAME.companion.ome lies beside the picture.");
     beside_free(&b);
 }
 

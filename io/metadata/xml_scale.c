@@ -3,6 +3,7 @@
 #include "io/metadata/xml_scale_priv.h"
 
 #include <math.h>
+#include <stddef.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -45,8 +46,15 @@ typedef struct {
 typedef struct {
     ome_pixels first, current, chosen; /* chosen: its data cover the first page */
     char date[40], detector[48];
-    int binary_only, is_ome;
+    int binary_only, is_ome, named;
+    const char *image; /* last, given by the caller: the file whose picture is meant; NULL: the one the text stands in */
 } ome_state;
+
+static const char *bare_name(const char *path) {
+    const char *end = path + strlen(path);
+    while (end > path && end[-1] != '/' && end[-1] != '\\') end--;
+    return end;
+}
 
 /* The size in nm; units default to micrometres. "pixel" and "reference frame" are no lengths. */
 static double ome_length(const char *const *attributes, const char *size, const char *unit) {
@@ -69,6 +77,9 @@ static void ome_begin(void *state, const xml_path *path, const char *const *attr
     } else if (xml_is(path, "Pixels", "TiffData")) {
         ifd = xml_attribute(attributes, "IFD");
         if (!s->chosen.seen && (!ifd || !strcmp(ifd, "0"))) s->chosen = s->current;
+    } else if (s->image && xml_is(path, "TiffData", "UUID")) {
+        const char *file = xml_attribute(attributes, "FileName"); /* of a set of files: the image that is in ours */
+        if (file && !s->named && !strcmp(bare_name(file), s->image)) s->chosen = s->current, s->named = 1;
     } else if (xml_is(path, NULL, "BinaryOnly"))
         s->binary_only = 1;
     else if (xml_is(path, "Instrument", "Detector") && !s->detector[0] && xml_attribute(attributes, "Model"))
@@ -81,10 +92,11 @@ static void ome_end(void *state, const xml_path *path, const char *text) {
         snprintf(s->date, sizeof s->date, "%.39s", text);
 }
 
-void ome_read(const char *text, size_t n, size_t nx, picture *p) {
+void ome_read(const char *text, size_t n, size_t nx, const char *image, picture *p) {
     static const xml_visitor visitor = { ome_begin, ome_end };
     ome_state s;
-    int ok = xml_walk(text, n, &visitor, &s, sizeof s);
+    s.image = image;
+    int ok = xml_walk(text, n, &visitor, &s, offsetof(ome_state, image));
     if (!s.is_ome) return;
     if (!ok) {
         note_add(p->note, "The OME-XML is damaged and was not used.");
@@ -96,7 +108,7 @@ void ome_read(const char *text, size_t n, size_t nx, picture *p) {
         double k = resized(p, "ome-xml", best->columns, nx);
         scales_add_u(&p->scales, SCALE_OME, "ome-xml", x * k, y * k, best->u_rel);
     } else if (s.binary_only)
-        note_add(p->note, "The OME-XML says its words are in a companion file, which is not read.");
+        p->companion_wanted = 1;
     if (s.date[0]) take_time(s.date, p);
     if (s.detector[0]) memcpy(p->facts.detector, s.detector, sizeof s.detector);
 }

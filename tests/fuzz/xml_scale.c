@@ -15,7 +15,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t n) {
     if (!text) return 0;
     memcpy(text, bytes + 1, n - 1);
     text[n - 1] = '\0';
-    if (bytes[0] % 3 == 0) ome_read(text, n - 1, 1024, &p);
+    if (bytes[0] % 3 == 0) ome_read(text, n - 1, 1024, bytes[0] % 2 ? "a.tif" : NULL, &p);
     if (bytes[0] % 3 == 1) tag_34683_read(text, n - 1, 1024, &p);
     if (bytes[0] % 3 == 2) tag_34680_read(text, n - 1, 1024, &p);
     for (size_t i = 0; i < p.scales.n; i++)

@@ -28,7 +28,8 @@ static int same_plane(const char *path, const char *name, double tolerance, cons
     size_t n = 0;
     uint32_t side[2] = { 0, 0 };
     double worst = 0.0;
-    if (file_read(path, LIMIT_FILE_BYTES, &bytes, &n, NULL) == ST_OK && n >= sizeof side) memcpy(side, bytes, sizeof side);
+    if (file_read(path, LIMIT_FILE_BYTES, &bytes, &n, NULL) == ST_OK && n >= sizeof side)
+        memcpy(side, bytes, sizeof side);
     int ok = side[0] && m->nx == side[0] && m->ny == side[1] && n == sizeof side + 4 * m->nx * m->ny;
     for (size_t i = 0; ok && i < m->nx * m->ny; i++) {
         float want;
@@ -61,7 +62,8 @@ static int read_well(const char *path, const one_case *c) {
     o.find_marks = 0;
     o.crop_strip = strcmp(c->field[3], "-") != 0;
     status st = load_file(path, &o, &m, &e);
-    int any = !strcmp(c->field[1], "any"), zstd_missing = !strcmp(c->field[1], "zstd") && !TIFFIsCODECConfigured(COMPRESSION_ZSTD);
+    int any = !strcmp(c->field[1], "any"),
+        zstd_missing = !strcmp(c->field[1], "zstd") && !TIFFIsCODECConfigured(COMPRESSION_ZSTD);
     if (!strcmp(c->field[1], "refused") || zstd_missing || (any && st != ST_OK)) {
         ok = st != ST_OK && strlen(e.text) > 10 && (unsigned char)e.text[0] >= ' ';
         if (!ok) printf("%s: read, though it should be refused with a sentence\n", c->field[0]);

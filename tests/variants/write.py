@@ -243,7 +243,7 @@ def raw_row(row, kind, order):
 
 
 def difference(row, bits):
-    return [row[0]] + [(row[i] - row[i - 1]) % (1 << bits) for i in range(1, len(row))]
+    return [row[0] % (1 << bits)] + [(row[i] - row[i - 1]) % (1 << bits) for i in range(1, len(row))]
 
 
 BITS = {"b": 8, "h": 16, "i": 32, "q": 64, "Q": 64, "e": 16, "f": 32, "d": 64}
@@ -260,7 +260,7 @@ def page(v, kind, order="<", compression=1, rows=None, tile=None, predictor=1, p
     def encode(block):
         coded = b""
         for row in block:
-            coded += raw_row(difference(row, bits) if predictor == 2 else row, kind, order)
+            coded += raw_row(difference(row, bits), bits, order) if predictor == 2 else raw_row(row, kind, order)
         return CODECS[compression](coded)
     for p in planes:
         if tile:
@@ -282,6 +282,18 @@ def page(v, kind, order="<", compression=1, rows=None, tile=None, predictor=1, p
         tags[278] = (4, [per])
     tags.update(more or {})
     return tags, pieces, 324 if tile else 273, 325 if tile else 279
+
+
+def float_predicted(v, kind, size, order):
+    """Predictor 3 (TIFF technical note 3): bytes of a row sorted by weight, the heaviest first, then differences of bytes."""
+    tags, _, offsets, counts = page(v, kind, order)
+    raw = b""
+    for row in v:
+        values = struct.pack(">%d%s" % (len(row), kind), *row)
+        planes = b"".join(values[k::size] for k in range(size))
+        raw += bytes([planes[0]]) + bytes((planes[i] - planes[i - 1]) & 255 for i in range(1, len(planes)))
+    tags.update({259: (3, [8]), 317: (3, [3])})
+    return tags, [zlib.compress(raw)], offsets, counts
 
 
 def tiff_depths():
@@ -309,7 +321,35 @@ def tiff_codecs():
                         tail = "%s_u%d_%s%s%s.tif" % (name, kind, "le" if order == "<" else "be", "_tiles" if tile else "", "_p2" if predictor == 2 else "")
                         case("tif_" + tail, tiff([page(v, kind, order, compression, None if tile else 10, tile, predictor)], order),
                              "ok" if compression != 50000 else "zstd", want=levels(v, top))
+            v = [[x / 7 - 300 for x in r] for r in plane(9999)]
+            case("tif_%s_float_%s.tif" % (name, "le" if order == "<" else "be"), tiff([page(v, "f", order, compression, 10)], order),
+                 "ok" if compression != 50000 else "zstd", want=own_range(v), tol=3e-6)
+        for kind, bits in (("f", 4), ("d", 8)):
+            v = [[x / 8 - 300 for x in r] for r in plane(9999)]
+            case("tif_float_p3_%s_%s.tif" % (kind, "le" if order == "<" else "be"), tiff([float_predicted(v, kind, bits, order)], order), want=own_range(v), tol=3e-6)
+        for kind, low, top in (("h", -30000, 30000), ("i", -2 ** 30, 2 ** 30), (32, 0, 2 ** 32 - 1)):
+            v = plane(top, low=low)
+            case("tif_p2_%s_%s.tif" % (kind, "le" if order == "<" else "be"), tiff([page(v, kind, order, 8, 10, predictor=2)], order), want=own_range(v), tol=3e-6)
+        v = plane(2 ** 24 - 1)
+        raw = b"".join(x.to_bytes(3, "little" if order == "<" else "big") for r in v for x in r)
+        tags = page(v, "i", order)[0]
+        tags.update({258: (3, [24]), 339: (3, [1])})
+        case("tif_u24_%s.tif" % ("le" if order == "<" else "be"), tiff([(tags, [raw], 273, 279)], order), want=own_range(v), tol=3e-6)
+        v = plane(2 ** 50, low=-2 ** 50)
+        case("tif_i64_%s.tif" % ("le" if order == "<" else "be"), tiff([page(v, "q", order, 8, 10)], order), want=own_range(v), tol=3e-6)
+    flipped = bytes(int(format(k, "08b")[::-1], 2) for k in range(256))
+    for bits in (1, 4, 8, 12):  # tag 266 = 2: the first pixel in the lowest bits
+        v = plane((1 << bits) - 1)
+        tags, pieces, a, b = page(v, bits, more={266: (3, [2])})
+        case("tif_fill_order_%d.tif" % bits, tiff([(tags, [x.translate(flipped) for x in pieces], a, b)]), want=levels(v, (1 << bits) - 1))
+    v = plane(255, 83, 61)
+    case("tif_odd_tiles.tif", tiff([page(v, 8, ">", 8, None, 16)], ">"), want=levels(v, 255))
+    case("tif_one_row_strips.tif", tiff([page(v, 8, ">", 5, 1)], ">"), want=levels(v, 255))
     v = plane(4095)
+    for order in "<>":  # a detector of 12 bits in samples of 16, at the low and at the high end
+        w = [[x << 4 for x in r] for r in v]
+        case("tif_12_in_16_%s.tif" % ("le" if order == "<" else "be"), tiff([page(v, 16, order)], order), want=levels(v, 4095))
+        case("tif_12_in_16_high_%s.tif" % ("le" if order == "<" else "be"), tiff([page(w, 16, order)], order), want=levels(v, 4095), tol=1e-4)
     case("tif_u12_deflate.tif", tiff([page(v, 12, "<", 8, 5)]), want=levels(v, 4095))
 
 
@@ -343,6 +383,16 @@ def tiff_colours():
     case("tif_ycbcr.tif", tiff([page([[c for x in r for c in (x, 128, 128)] for r in v], 8, photometric=6, samples=3,
                                      more={530: (3, [1, 1]), 532: (5, [0, 1, 255, 1, 128, 1, 255, 1, 128, 1, 255, 1])})]),
          want=levels(v, 255), tol=0.005)
+    luminance = [[v[y][x] for x in range(NX)] for y in range(NY)]
+    units = [[c for x in range(0, NX, 2) for c in (luminance[y][x], luminance[y][x + 1], luminance[y + 1][x], luminance[y + 1][x + 1], 128, 128)]
+             for y in range(0, NY, 2)]  # two by two luminances, then their common chroma (TIFF 6.0, section 21)
+    tags = page(v, 8, photometric=6, samples=1, more={277: (3, [3]), 258: (3, [8, 8, 8]), 339: (3, [1, 1, 1]), 530: (3, [2, 2])})[0]
+    case("tif_ycbcr_22.tif", tiff([(tags, [bytes(c for r in units for c in r)], 273, 279)]), want=levels(v, 255), tol=0.005)
+    inks = [[c for x in r for c in (x, 255 - x, (5 * x) % 256, x // 3)] for r in v]
+    case("tif_cmyk_coloured.tif", tiff([page(inks, 8, photometric=5, samples=4)]),
+         want=[[luma(*[1 - c / 255 for c in r[i:i + 3]]) * (1 - r[i + 3] / 255) for i in range(0, len(r), 4)] for r in inks], tol=1e-5)
+    case("tif_greya_planar.tif", tiff([page([v, plane(255)], 8, samples=2, planar=2, more={338: (3, [2])})]), want=levels(v, 255))
+    case("tif_five_samples.tif", tiff([page([[c for x in r for c in (x, x, x, 9, 7)] for r in v], 8, photometric=2, samples=5, more={338: (3, [0, 0])})]), want=levels(v, 255))
     blocks, stream, want = jpeg_blocks()
     tags = page(blocks, 8)[0]
     tags[259] = (3, [7])
@@ -503,6 +553,17 @@ def sidecars():
             body = (text % stem if "%s" in text else text).replace("\n", line_end).encode(encoding)
             beside(stem + ending, mark + body)
             tagged(stem + ".tif", {}, px)
+
+
+    pointer = {270: ascii_tag('<OME><BinaryOnly MetadataFile="../elsewhere/x.companion.ome" UUID="urn:uuid:1"/></OME>')}
+    image = ('<Image ID="Image:%d"><Pixels SizeX="120" PhysicalSizeX="%g" PhysicalSizeXUnit="nm"><TiffData IFD="0"><UUID FileName="%s">urn:uuid:%d</UUID>'
+             '</TiffData></Pixels></Image>')
+    both = "<OME>" + image % (0, 7.5, "other.ome.tif", 2) + image % (1, 5.25, "sub/side_companion.ome.tif", 1) + "</OME>"
+    beside("side_companion.companion.ome", both.encode())
+    tagged("side_companion.ome.tif", pointer, 5.25)
+    tagged("side_alone.ome.tif", pointer, "none")
+    beside("side_doctype.companion.ome", b'<!DOCTYPE OME [<!ENTITY a SYSTEM "file:///etc/passwd">]>' + both.encode())
+    tagged("side_doctype.ome.tif", pointer, "none")
 
 
 # ---- JPEG ----
