@@ -1,15 +1,15 @@
 /* Measures the scale bar: the longest horizontal stroke of ink in the strip that is no rule (touching a side or
- * nearly as wide as the picture) and no block (thicker than a quarter of its length). A bar that its own words
+ * nearly as wide as the picture) and no block (thicker than a quarter of its length), or eleven dots that divide it by ten. A bar that its own words
  * interrupt counts from the outer end of its first half to that of its second when both halves are alike. On
  * the picture itself only a saturated rectangle counts. Whole pixels: the caller carries +-1. Does not: read
- * the words, or find dotted bars. */
+ * the words. */
 #include "io/bar_priv.h"
 
 #include <math.h>
 #include <stdint.h>
 #include <string.h>
 
-enum { SHORTEST = 12, LEVELS = 256 };
+enum { SHORTEST = 12, LEVELS = 256, DOTS = 11, MAX_RUNS = 512 };
 
 typedef struct {
     const float *px;
@@ -85,6 +85,41 @@ static size_t bar_in_row(const area *a, size_t y) {
     return halves ? right.x1 - left.x0 : one;
 }
 
+/* Run k stands one pitch from run j and is as wide. */
+static int goes_on(const stroke *run, size_t j, size_t k, double pitch) {
+    double wide = (double)(run[j].x1 - run[j].x0), other = (double)(run[k].x1 - run[k].x0);
+    double apart = fabs((double)run[k].x0 - (double)run[j].x0);
+    return fabs(wide - other) <= 1.0 && fabs(apart - pitch) <= 1.5;
+}
+
+/* From the first to the last of DOTS alike dots or ticks at like distances; a longer row of them is a rule. That there
+ * are eleven, for ten parts: common practice, no source. */
+static size_t dots_from(const area *a, const stroke *run, size_t n, size_t i) {
+    size_t last = i + DOTS - 1, length = run[last].x0 - run[i].x0;
+    double pitch = (double)length / (DOTS - 1), wide = (double)(run[i].x1 - run[i].x0);
+    if (pitch < 4.0 || wide > 0.6 * pitch || 10 * length > 9 * a->nx) return 0;
+    for (size_t k = i; k < last; k++)
+        if (!goes_on(run, k, k + 1, pitch) ||
+            fabs((double)(run[k].x0 - run[i].x0) - pitch * (double)(k - i)) > 1.0)
+            return 0;
+    if ((i && goes_on(run, i, i - 1, pitch)) || (last + 1 < n && goes_on(run, last, last + 1, pitch))) return 0;
+    return length;
+}
+
+static size_t dots_in(const area *a) {
+    size_t best = 0;
+    for (size_t y = a->y0; y < a->y1; y++) {
+        stroke run[MAX_RUNS];
+        size_t n = 0;
+        for (size_t x = 0; n < MAX_RUNS && (run[n] = next_run(a, y, x)).x0 < a->nx; n++) x = run[n].x1;
+        for (size_t i = 0; i + DOTS <= n; i++) {
+            size_t length = dots_from(a, run, n, i);
+            if (length > best) best = length;
+        }
+    }
+    return best;
+}
+
 static size_t bar_in(const area *a) {
     size_t best = 0;
     for (size_t y = a->y0; y < a->y1; y++) {
@@ -103,8 +138,14 @@ static size_t bar_in_strip(const float *px, size_t nx, size_t y0, size_t y1) {
         if (count[v] > count[paper]) paper = v;
     float level = (float)paper / 255.0f;
     area bright = { px, nx, y0, y1, level + 0.33f, 1.0f }, dark = { px, nx, y0, y1, 0.0f, level - 0.33f };
-    size_t a = level < 0.67f ? bar_in(&bright) : 0, b = level > 0.33f ? bar_in(&dark) : 0;
-    return a > b ? a : b;
+    const area *inks[2] = { level < 0.67f ? &bright : NULL, level > 0.33f ? &dark : NULL };
+    size_t best = 0;
+    for (int k = 0; k < 2; k++) {
+        size_t line = inks[k] ? bar_in(inks[k]) : 0, dots = inks[k] ? dots_in(inks[k]) : 0;
+        if (line > best) best = line;
+        if (dots > best) best = dots;
+    }
+    return best;
 }
 
 size_t bar_find(const float *px, size_t nx, size_t ny, size_t top, size_t bottom) {

@@ -48,7 +48,40 @@ static void draw_bar(style s, size_t x, size_t y, size_t n, float ink) {
     }
 }
 
+/* n dots or ticks over `length` px, the outer ones taller where `tall`. */
+static void draw_dots(size_t x, size_t y, size_t n, double length, size_t wide, int tall, float ink) {
+    for (size_t k = 0; k < n; k++) {
+        size_t at = x + (size_t)(length * (double)k / (double)(n - 1) + 0.5), more = tall && k % 5 == 0 ? 4 : 0;
+        fill(at, y - more, at + wide, y + 4, ink);
+    }
+}
+
+static void dotted(void) {
+    for (int paper = 0; paper < 2; paper++)
+        for (size_t length = 83; length < 300; length += 31)
+            for (int tall = 0; tall < 2; tall++) {
+                float back = (float)paper, ink = 1.0f - back;
+                specimen(0, 0);
+                fill(0, NY - STRIP, NX, NY, back);
+                write_word(12, NY - 32, 20, ink);
+                draw_dots(300, NY - 24, 11, (double)length, 2, tall, ink);
+                write_word(300, NY - 44, 5, ink);
+                CHECK(bar_find(px, NX, NY, 0, STRIP) == length);
+            }
+    for (size_t n = 8; n < 15; n += n == 10 ? 2 : 1) { /* not eleven: no bar */
+        specimen(0, 0);
+        fill(0, NY - STRIP, NX, NY, 0.0f);
+        draw_dots(300, NY - 24, n, 15.0 * (double)(n - 1), 2, 0, 1.0f);
+        CHECK(bar_find(px, NX, NY, 0, STRIP) == 0);
+    }
+    fill(0, NY - STRIP, NX, NY, 0.0f);
+    for (size_t k = 0; k < 11; k++) /* eleven marks at unlike distances */
+        fill(200 + 20 * k + 3 * (k % 3), NY - 24, 202 + 20 * k + 3 * (k % 3), NY - 20, 1.0f);
+    CHECK(bar_find(px, NX, NY, 0, STRIP) == 0);
+}
+
 int main(void) {
+    dotted();
     for (int paper = 0; paper < 2; paper++)
         for (int s = 0; s < STYLES; s++)
             for (int top = 0; top < 2; top++)
