@@ -150,8 +150,10 @@ status jpeg_decode(const uint8_t *bytes, size_t n, size_t max_pixels, picture *o
     d->manager.output_message = on_output;
     d->progress.progress_monitor = on_progress;
     if (setjmp(d->back))
-        st = d->unknown ? fail(e, ST_BAD_INPUT, "is a JPEG of a kind that is not read (%s); export the micrograph as TIFF or PNG", d->what)
-                        : fail(e, ST_BAD_INPUT, "the JPEG is truncated or damaged: %s", d->what);
+        st = d->unknown
+                 ? fail(e, ST_BAD_INPUT,
+                        "is a JPEG of a kind that is not read (%s); export the micrograph as TIFF or PNG", d->what)
+                 : fail(e, ST_BAD_INPUT, "the JPEG is truncated or damaged: %s", d->what);
     else {
         jpeg_create_decompress(j);
         j->progress = &d->progress;

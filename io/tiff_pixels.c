@@ -181,7 +181,8 @@ static status read_layout(TIFF *tif, layout *l, error *e) {
         (void)TIFFGetField(tif, TIFFTAG_TILELENGTH, &l->tile_ny);
         if (!l->tile_nx || !l->tile_ny) return fail(e, ST_BAD_INPUT, "is damaged: tiles without a size");
     } else if (l->compression == COMPRESSION_PACKBITS) {
-        /* Runs should end with the row (TIFF 6.0, section 9); of writers whose runs do not, only whole strips come out right. */
+        /* Runs should end with the row (TIFF 6.0, section 9); of writers whose runs do not, only whole strips
+         * come out right. */
         (void)TIFFGetFieldDefaulted(tif, TIFFTAG_ROWSPERSTRIP, &l->tile_ny);
         if (!l->tile_ny || l->tile_ny > l->ny) l->tile_ny = l->ny;
         l->tile_nx = l->nx;
@@ -360,7 +361,8 @@ static int read_piece(TIFF *tif, const layout *l, uint32_t x, uint32_t y, uint16
 }
 
 static status read_tiles(TIFF *tif, layout *l, const tiff_watch *w, picture *p, error *e) {
-    size_t size = (size_t)(l->whole_strips ? TIFFVStripSize64(tif, l->tile_ny) : TIFFTileSize64(tif)), samples = l->separate ? 1 : l->samples;
+    size_t size = (size_t)(l->whole_strips ? TIFFVStripSize64(tif, l->tile_ny) : TIFFTileSize64(tif));
+    size_t samples = l->separate ? 1 : l->samples;
     int planes = l->separate ? l->planes : 1;
     double need = (double)l->tile_nx * l->tile_ny * (double)samples * l->bits / 8.0;
     if (!size || (double)size < need) return fail(e, ST_BAD_INPUT, "is damaged: its tiles are too small");

@@ -16,6 +16,9 @@ void sem_image_file_read(const char *text, const char *image, size_t nx, size_t 
 /* Lines of "$CM_KEY value" and "$$SM_KEY value". */
 void dollar_block_read(const char *text, size_t nx, picture *p);
 
+/* The name in a path of either kind of system; points into it. */
+const char *instrument_bare_name(const char *path);
+
 /* Dates as instruments write them: "11 Apr 2023", "2016-05-16", "2020/08/31", with a clock "8:40:47" or
  * "05:06:40 PM" or NULL. day_first: "31.08.2020" and "31/08/2020", else "08/31/2020". Sets p->acquired_at. */
 void instrument_time(const char *date, const char *clock, int day_first, picture *p);

@@ -65,7 +65,7 @@ void main_block_read(const char *text, scale_rank rank, const char *name, size_t
         instrument_time(value, keytext_ini(text, "MAIN", "Time", clock) ? clock : NULL, 1, p);
 }
 
-static const char *bare_name(const char *path) {
+const char *instrument_bare_name(const char *path) {
     const char *end = path + strlen(path);
     while (end > path && end[-1] != '/' && end[-1] != '\\') end--;
     return end;
@@ -88,9 +88,10 @@ void sem_image_file_read(const char *text, const char *image, size_t nx, size_t 
     const char *rest;
     double columns = MISSING, rows = MISSING, v;
     facts *f = &p->facts;
-    if (keytext_ini(text, NULL, "ImageName", value) && strcasecmp(bare_name(value), bare_name(image)) != 0)
+    if (keytext_ini(text, NULL, "ImageName", value) &&
+        strcasecmp(instrument_bare_name(value), instrument_bare_name(image)) != 0)
         note_add(p->note, "The sidecar names another picture, %.60s; it was used all the same.",
-                 bare_name(value));
+                 instrument_bare_name(value));
     if (keytext_ini(text, NULL, "DataSize", value)) {
         double w, h;
         if (sscanf(value, "%lfx%lf", &w, &h) == 2 && w >= 1.0 && h >= 1.0) columns = w, rows = h;

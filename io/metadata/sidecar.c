@@ -129,7 +129,8 @@ void sidecar_read(const char *path, picture *p) {
     for (int k = 0; b.image && k < KINDS; k++)
         if (b.found[k] && read_one(b.folder, b.found[k], b.image, kinds[k].content, p)) break;
     if (p->companion_wanted && !b.found[KINDS - 1])
-        note_add(p->note, "The OME-XML says its words are in a companion file, but no NAME.companion.ome lies beside the picture.");
+        note_add(p->note, "The OME-XML says its words are in a companion file, but no NAME.companion.ome lies "
+                          "beside the picture.");
     beside_free(&b);
 }
 

@@ -47,14 +47,8 @@ typedef struct {
     ome_pixels first, current, chosen; /* chosen: its data cover the first page */
     char date[40], detector[48];
     int binary_only, is_ome, named;
-    const char *image; /* last, given by the caller: the file whose picture is meant; NULL: the one the text stands in */
+    const char *image; /* last: the caller's, see the header */
 } ome_state;
-
-static const char *bare_name(const char *path) {
-    const char *end = path + strlen(path);
-    while (end > path && end[-1] != '/' && end[-1] != '\\') end--;
-    return end;
-}
 
 /* The size in nm; units default to micrometres. "pixel" and "reference frame" are no lengths. */
 static double ome_length(const char *const *attributes, const char *size, const char *unit) {
@@ -78,8 +72,8 @@ static void ome_begin(void *state, const xml_path *path, const char *const *attr
         ifd = xml_attribute(attributes, "IFD");
         if (!s->chosen.seen && (!ifd || !strcmp(ifd, "0"))) s->chosen = s->current;
     } else if (s->image && xml_is(path, "TiffData", "UUID")) {
-        const char *file = xml_attribute(attributes, "FileName"); /* of a set of files: the image that is in ours */
-        if (file && !s->named && !strcmp(bare_name(file), s->image)) s->chosen = s->current, s->named = 1;
+        const char *file = xml_attribute(attributes, "FileName"); /* the image that is in our file */
+        if (file && !s->named && !strcmp(instrument_bare_name(file), s->image)) s->chosen = s->current, s->named = 1;
     } else if (xml_is(path, NULL, "BinaryOnly"))
         s->binary_only = 1;
     else if (xml_is(path, "Instrument", "Detector") && !s->detector[0] && xml_attribute(attributes, "Model"))
