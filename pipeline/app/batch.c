@@ -21,11 +21,14 @@ static status first_error(const error *errors, size_t n, error *e) {
     return ST_OK;
 }
 
-/* "12 of 200 micrographs, 3.1 per s, about 61 s left", over the line before; the ending is there when something is left. */
+/* "[#...................] 12 of 200 micrographs, 3.1 per s, about 61 s left", over the line before; the
+ * ending is there when something is left. */
 static void say_progress(size_t done, size_t n, double seconds) {
+    static const char full[] = "####################", rest[] = "....................";
+    int cells = n ? (int)((sizeof full - 1) * done / n) : 0;
     double rate = seconds > 0.0 ? (double)done / seconds : 0.0;
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
-    fprintf(stderr, "\r%zu of %zu micrographs", done, n);
+    fprintf(stderr, "\r[%.*s%s] %zu of %zu micrographs", cells, full, rest + cells, done, n);
     if (rate > 0.0 && done < n)
         fprintf(stderr, ", %s per s, about %s s left   ", number_text(rate, 2, a), number_text(ceil((double)(n - done) / rate), 6, b));
     if (done == n) fprintf(stderr, " in %s s%30s\n", number_text(seconds, 3, a), "");
