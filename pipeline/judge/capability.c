@@ -39,6 +39,9 @@ static void moments(const double *v, size_t n, double *mean, double *sd) {
     *sd = n > 1 ? sqrt(square / ((double)n - 1.0)) : MISSING;
 }
 
+/* More than the rounding that summing equal values leaves. */
+static int has_scatter(double mean, double sd) { return sd > 1e-12 * fabs(mean); }
+
 static double stephens_p(double a) {
     if (a < 0.2) return 1.0 - exp(-13.436 + 101.14 * a - 223.73 * a * a);
     if (a < 0.34) return 1.0 - exp(-8.318 + 42.796 * a - 59.938 * a * a);
@@ -51,7 +54,7 @@ double normality_statistic(const double *v, size_t n, double *p) {
     double mean = 0.0, sd = 0.0, sum = 0.0;
     *p = MISSING;
     moments(v, n, &mean, &sd);
-    if (n < LEAST_FOR_NORMALITY || !(sd > 0.0)) return MISSING;
+    if (n < LEAST_FOR_NORMALITY || !has_scatter(mean, sd)) return MISSING;
     double *sorted = mem_array(n, sizeof *sorted);
     if (!sorted) return MISSING;
     memcpy(sorted, v, n * sizeof *sorted);
@@ -124,7 +127,7 @@ status capability_of(const double *v, size_t n, double lo, double hi, capability
     if (n < LEAST) return fail(e, ST_NO_RESULT, "capability needs at least 5 etches, there are %zu", n);
     capability c = { .n = n };
     moments(v, n, &c.mean, &c.sd);
-    if (!(c.sd > 0.0)) return fail(e, ST_NO_RESULT, "capability cannot be said: all etches gave the same value");
+    if (!has_scatter(c.mean, c.sd)) return fail(e, ST_NO_RESULT, "capability cannot be said: all etches gave the same value");
     double df = (double)n - 1.0, df_within = 0.605 * df;
     c.sd_within = within(v, n);
     c.Cp = two_sided(lo, hi, c.sd_within, df_within);

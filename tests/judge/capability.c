@@ -66,6 +66,8 @@ static void refusals(void) {
     mem_fail_after(0);
     for (size_t i = 0; i < 10; i++) v[i] = 7.5;
     CHECK_FAILS(capability_of(v, 10, 1.0, 9.0, &c, &e), ST_NO_RESULT, e, "the same value");
+    for (size_t i = 0; i < 10; i++) v[i] = 0.1; /* no binary number: the mean is off by a rounding */
+    CHECK_FAILS(capability_of(v, 10, 0.0, 1.0, &c, &e), ST_NO_RESULT, e, "the same value");
     CHECK(isnan(normality_statistic(v, 10, &p)) && isnan(p));
     CHECK(isnan(normality_statistic(v, 7, &p)) && isnan(p));
     CHECK(isnan(capability_by_quantiles(MISSING, MISSING, 1.0, 2.0, 3.0)));
