@@ -347,6 +347,7 @@ static status pair_stage(job *j, error *e) {
         pair_ring first = pair_first_ring(r, g, n_r, n, w, kernel * unit);
         j->t.pair_ring_px = first.r;
         j->t.pair_ring_height = first.g;
+        j->t.pair_ring_z = first.z;
         st = ripley_k(x, y, n, w, r, n_r, l, e);
     }
     for (size_t k = 0; st == ST_OK && k < n_r; k++) l[k] = sqrt(l[k] / PI);
@@ -411,7 +412,7 @@ static int is_placed_at_random(const texture *t) {
 static void judge_second_look(job *j) {
     const double nearest = 0.7, farthest = 1.45, random_order = 1.45;
     texture *t = &j->t;
-    if (t->flags & FLAG(LAYER)) return; /* random bodies have no shell */
+    if (t->flags & (FLAG(LAYER) | FLAG(TWO_SPACINGS))) return; /* random bodies have no shell, and no second population */
     double ratio = t->spacing_hex.value / j->first.scale_px;
     int scattered = (t->flags & FLAG(WIDE_SIZES)) && t->clark_evans.value < 1.5; /* grain, rims, several things at once */
     if (!(ratio > nearest && ratio < farthest) || scattered) t->reasons |= FLAG(NO_RING);
@@ -426,14 +427,25 @@ static void judge_layer(texture *t) {
     t->flags &= ~(FLAG(LOW_ORDER) | FLAG(CONTRADICTION) | FLAG(WIDE_SIZES));
 }
 
+/* The ring of the curvature map is where the centres have theirs, and both stand out: no ring of rims, which lies nearer.
+ * The first peak of g lies up to a quarter inside the ring by itself, where the order is that of a hard core. */
+static int is_ring_of_centres(const texture *t) {
+    const double least_height = 1.4, order = 1.5, nearest = 0.9, farthest = 1.4;
+    double ratio = t->spacing_acf.value / t->pair_ring_px;
+    return t->clark_evans.value >= order && t->pair_ring_height >= least_height && ratio > nearest && ratio < farthest;
+}
+
 /* Bodies without a shell: the ring of the curvature map is that of their own rims. Where the autocorrelation had no scale
  * either, no spacing stands out at all. */
 static void judge_bodies(job *j) {
     const double many_radii = 0.75;
     texture *t = &j->t;
+    if (j->body.breadth > many_radii) t->flags |= FLAG(WIDE_SIZES);
+    int centres_ring = t->pair_ring_z >= j->o->min_ring_z; /* random bodies have none */
+    if (centres_ring && (t->flags & FLAG(TWO_SPACINGS))) return; /* the ring is that of the stronger population */
+    if (centres_ring && is_ring_of_centres(t)) return;
     withhold_ring(t);
     if (!isfinite(t->ring_z)) t->reasons |= FLAG(NO_RING);
-    if (j->body.breadth > many_radii) t->flags |= FLAG(WIDE_SIZES);
 }
 
 static void judge(job *j, const sharpness *s) {

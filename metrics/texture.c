@@ -35,6 +35,7 @@ texture texture_empty(void) {
                   .smear_angle_deg = MISSING,
                   .smear_z = MISSING,
                   .pair_ring_height = MISSING,
+                  .pair_ring_z = MISSING,
                   .second_spacing_px = MISSING };
     return t;
 }

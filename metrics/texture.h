@@ -58,7 +58,7 @@ typedef struct {
     double clipped_share;
     double lognormal_ad;   /* Anderson-Darling A2* of the log-normal fit of cell ECD; NAN none */
     double ring_z;         /* significance of the trough before the first ring */
-    double pair_ring_px, pair_ring_height; /* first ring of the pair correlation: place and height; NAN none */
+    double pair_ring_px, pair_ring_height, pair_ring_z; /* first ring of the pair correlation: place, height, significance; NAN none */
     double smear_px, smear_angle_deg, smear_z; /* astigmatism: sd of the blur in one direction only; NAN unknown */
     double second_spacing_px; /* of a second population; NAN none */
     size_t n_features;     /* inside the guard */
