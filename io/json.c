@@ -14,6 +14,7 @@
 #include "base/limits.h"
 #include "base/mem.h"
 #include "base/number.h"
+#include "base/quantity.h"
 #include "io/utf8_priv.h"
 
 static size_t line_at(const char *bytes, size_t at) {
@@ -189,6 +190,16 @@ size_t json_line(const json *j, const struct cJSON *node) {
     for (size_t i = 0; i < j->n_keys; i++)
         if (j->nodes[i] == node) return j->lines[i];
     return 0;
+}
+
+double json_member_number(const cJSON *object, const char *name) {
+    const cJSON *v = cJSON_GetObjectItemCaseSensitive(object, name);
+    return cJSON_IsNumber(v) ? v->valuedouble : MISSING;
+}
+
+const char *json_member_text(const cJSON *object, const char *name) {
+    const cJSON *v = cJSON_GetObjectItemCaseSensitive(object, name);
+    return cJSON_IsString(v) ? v->valuestring : "";
 }
 
 void json_string(textbuf *out, const char *s) {

@@ -22,6 +22,9 @@ status json_parse(const char *bytes, size_t n, const char *what, json *out, erro
 void json_free(json *j);
 size_t json_line(const json *j, const struct cJSON *node); /* 0 if the node has no key */
 
+double json_member_number(const struct cJSON *object, const char *name);    /* NAN where it is no number */
+const char *json_member_text(const struct cJSON *object, const char *name); /* "" where it is no text; lives with the object */
+
 void json_string(textbuf *out, const char *s);             /* quoted and escaped; invalid UTF-8 -> U+FFFD; NULL -> null */
 void json_number(textbuf *out, double v, int digits);      /* number_text, or null */
 

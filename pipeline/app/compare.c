@@ -27,18 +27,18 @@ void comparisons_free(comparisons *c) {
 /* What varies from run to run, from the budgets in results.json. */
 static double run_to_run(const cJSON *run, const cJSON *row, const char *name_of) {
     if (!strcmp(name_of, "weighted_reflectance"))
-        return runfile_number(cJSON_GetObjectItemCaseSensitive(row, "prediction"), "u_height");
-    const char *spacing = runfile_text(cJSON_GetObjectItemCaseSensitive(run, "manifest"), "spacing");
+        return json_member_number(cJSON_GetObjectItemCaseSensitive(row, "prediction"), "u_height");
+    const char *spacing = json_member_text(cJSON_GetObjectItemCaseSensitive(run, "manifest"), "spacing");
     const char *name = strcmp(name_of, "spacing_nm") ? name_of : strcmp(spacing, "density") ? "spacing_acf_nm" : "spacing_hex_nm";
     const cJSON *budget = cJSON_GetObjectItemCaseSensitive(row, "budget");
-    return runfile_number(cJSON_GetObjectItemCaseSensitive(budget, name), "sampling");
+    return json_member_number(cJSON_GetObjectItemCaseSensitive(budget, name), "sampling");
 }
 
 /* Whether a micrograph with these bytes was used for the sample. */
 static int uses(const cJSON *run, const char *sample, const char *sha256) {
     const cJSON *m;
     cJSON_ArrayForEach(m, cJSON_GetObjectItemCaseSensitive(run, "images")) {
-        if (!strcmp(runfile_text(m, "status"), "ok") && !strcmp(runfile_text(m, "sample"), sample) && !strcmp(runfile_text(m, "sha256"), sha256))
+        if (!strcmp(json_member_text(m, "status"), "ok") && !strcmp(json_member_text(m, "sample"), sample) && !strcmp(json_member_text(m, "sha256"), sha256))
             return 1;
     }
     return 0;
@@ -49,17 +49,17 @@ static int within(const cJSON *run, const cJSON *other, const char *sample) {
     const cJSON *m;
     int any = 0;
     cJSON_ArrayForEach(m, cJSON_GetObjectItemCaseSensitive(run, "images")) {
-        if (strcmp(runfile_text(m, "status"), "ok") != 0 || strcmp(runfile_text(m, "sample"), sample) != 0) continue;
+        if (strcmp(json_member_text(m, "status"), "ok") != 0 || strcmp(json_member_text(m, "sample"), sample) != 0) continue;
         any = 1;
-        if (!runfile_text(m, "sha256")[0] || !uses(other, sample, runfile_text(m, "sha256"))) return 0;
+        if (!json_member_text(m, "sha256")[0] || !uses(other, sample, json_member_text(m, "sha256"))) return 0;
     }
     return any;
 }
 
 static comparison compare_one(const cJSON *before, const cJSON *after, const cJSON *a, const cJSON *b, const column *c, int same) {
-    comparison d = { .sample = runfile_text(a, "sample"), .quantity = c->name, .unit = c->unit, .same = same };
-    d.before = runfile_number(a, c->name);
-    d.after = runfile_number(b, c->name);
+    comparison d = { .sample = json_member_text(a, "sample"), .quantity = c->name, .unit = c->unit, .same = same };
+    d.before = json_member_number(a, c->name);
+    d.after = json_member_number(b, c->name);
     d.difference = d.after - d.before;
     if (same) {
         d.p = MISSING;
@@ -76,16 +76,16 @@ static comparison compare_one(const cJSON *before, const cJSON *after, const cJS
 static void note_missing(const cJSON *run, const cJSON *other, const char *which, textbuf *notes) {
     const cJSON *s;
     cJSON_ArrayForEach(s, cJSON_GetObjectItemCaseSensitive(run, "samples")) {
-        if (!runfile_sample(other, runfile_text(s, "sample")))
-            text_addf(notes, "%s is in the %s run only.\n", runfile_text(s, "sample"), which);
+        if (!runfile_sample(other, json_member_text(s, "sample")))
+            text_addf(notes, "%s is in the %s run only.\n", json_member_text(s, "sample"), which);
     }
 }
 
 static void note_manifest(const cJSON *before, const cJSON *after, textbuf *notes) {
     const cJSON *a = cJSON_GetObjectItemCaseSensitive(before, "manifest"), *b = cJSON_GetObjectItemCaseSensitive(after, "manifest");
-    if (strcmp(runfile_text(a, "protocol_sha256"), runfile_text(b, "protocol_sha256")) != 0)
+    if (strcmp(json_member_text(a, "protocol_sha256"), json_member_text(b, "protocol_sha256")) != 0)
         text_add(notes, "The protocols differ: method parts need not cancel; measure both folders with one protocol.\n");
-    if (strcmp(runfile_text(a, "version"), runfile_text(b, "version")) != 0)
+    if (strcmp(json_member_text(a, "version"), json_member_text(b, "version")) != 0)
         text_add(notes, "The program versions differ: run both folders with one version.\n");
 }
 
@@ -95,10 +95,10 @@ status compare_runs(const cJSON *before, const cJSON *after, comparisons *out, e
     size_t shared = 0, n_same = 0;
     if (!c.rows) return NO_MEMORY(e, "the comparison");
     cJSON_ArrayForEach(a, list) {
-        const cJSON *b = runfile_sample(after, runfile_text(a, "sample"));
+        const cJSON *b = runfile_sample(after, json_member_text(a, "sample"));
         if (!b) continue;
         shared++;
-        int same = within(before, after, runfile_text(a, "sample")) && within(after, before, runfile_text(a, "sample"));
+        int same = within(before, after, json_member_text(a, "sample")) && within(after, before, json_member_text(a, "sample"));
         n_same += (size_t)same;
         for (size_t k = 0; k < N_COMPARED; k++) {
             const column *col = column_find(sample_columns, n_sample_columns, compared[k]);

@@ -7,6 +7,7 @@
 #include "app/runfile.h"
 #include "base/mem.h"
 #include "io/file.h"
+#include "io/json.h"
 #include "io/table.h"
 #include "judge/history.h"
 #include "report/html.h" /* column_find */
@@ -49,7 +50,7 @@ static void take(cJSON *to, const cJSON *from, const char *const *names, size_t 
 /* The quantity whose budget stands for a column of the sample. */
 static const char *budget_name(const cJSON *manifest, const char *quantity) {
     if (strcmp(quantity, "spacing_nm") != 0) return quantity;
-    return !strcmp(runfile_text(manifest, "spacing"), "density") ? "spacing_hex_nm" : "spacing_acf_nm";
+    return !strcmp(json_member_text(manifest, "spacing"), "density") ? "spacing_hex_nm" : "spacing_acf_nm";
 }
 
 /* Parts of a combined uncertainty and their share of its square. */
@@ -57,11 +58,11 @@ static cJSON *parts_of(const cJSON *from, const char *const (*names)[2], size_t 
     double total = 0.0;
     cJSON *list = cJSON_CreateArray();
     for (size_t i = 0; i < n; i++) {
-        double u = runfile_number(from, names[i][0]);
+        double u = json_member_number(from, names[i][0]);
         if (isfinite(u)) total += u * u;
     }
     for (size_t i = 0; list && i < n; i++) {
-        double u = runfile_number(from, names[i][0]);
+        double u = json_member_number(from, names[i][0]);
         if (!isfinite(u)) continue;
         cJSON *part = cJSON_CreateObject();
         cJSON_AddStringToObject(part, "part", names[i][1]);
@@ -90,7 +91,7 @@ static cJSON *uncertainty_of(const cJSON *sample, const cJSON *manifest, const c
 static const cJSON *judgement_of(const cJSON *sample, const char *quantity) {
     const cJSON *j;
     cJSON_ArrayForEach(j, cJSON_GetObjectItemCaseSensitive(sample, "judgements")) {
-        if (!strcmp(runfile_text(j, "quantity"), quantity)) return j;
+        if (!strcmp(json_member_text(j, "quantity"), quantity)) return j;
     }
     return NULL;
 }
@@ -146,7 +147,7 @@ static status add_quantities(cJSON *account, const cJSON *sample, const cJSON *m
     if (quantity) return add_quantity(list, sample, manifest, quantity, e);
     status st = ST_OK;
     cJSON_ArrayForEach(j, judged) {
-        if (st == ST_OK) st = add_quantity(list, sample, manifest, runfile_text(j, "quantity"), e);
+        if (st == ST_OK) st = add_quantity(list, sample, manifest, json_member_text(j, "quantity"), e);
     }
     if (cJSON_GetArraySize(judged) > 0) return st;
     st = add_quantity(list, sample, manifest, "spacing_nm", e);
@@ -189,10 +190,10 @@ static void add_micrographs(const char *dir, cJSON *account, const cJSON *root, 
     cJSON *list = cJSON_AddArrayToObject(account, "micrographs");
     const cJSON *i;
     cJSON_ArrayForEach(i, cJSON_GetObjectItemCaseSensitive(root, "images")) {
-        if (strcmp(runfile_text(i, "sample"), sample) != 0) continue;
+        if (strcmp(json_member_text(i, "sample"), sample) != 0) continue;
         cJSON *m = cJSON_CreateObject();
         TAKE(m, i, names);
-        count_features(dir, runfile_text(i, "overlay"), m);
+        count_features(dir, json_member_text(i, "overlay"), m);
         cJSON_AddItemToArray(list, m);
     }
 }

@@ -6,6 +6,7 @@
 #include "app/runfile.h"
 #include "base/flags.h"
 #include "base/number.h"
+#include "io/json.h"
 
 enum { LABEL = 18, WIDTH = 100 };
 
@@ -64,8 +65,8 @@ static void number_line(textbuf *out, const char *label, double value, int digit
 }
 
 static void value_text(const cJSON *q, textbuf *out) {
-    const char *unit = runfile_text(q, "unit");
-    double value = runfile_number(q, "value"), u = runfile_number(q, "u"), lo = runfile_number(q, "lo"), hi = runfile_number(q, "hi");
+    const char *unit = json_member_text(q, "unit");
+    double value = json_member_number(q, "value"), u = json_member_number(q, "u"), lo = json_member_number(q, "lo"), hi = json_member_number(q, "hi");
     char a[NUMBER_TEXT], b[NUMBER_TEXT];
     textbuf more = { 0 };
     if (!strcmp(unit, "1")) unit = "";
@@ -81,11 +82,11 @@ static void parts_text(const cJSON *q, textbuf *out) {
     const char *label = "uncertainty";
     cJSON_ArrayForEach(p, parts) {
         char u[NUMBER_TEXT], share[NUMBER_TEXT];
-        double s = runfile_number(p, "share");
+        double s = json_member_number(p, "share");
         if (!(s > 0.0)) continue;
         textbuf t = { 0 };
-        text_addf(&t, "%s, %s %%: %s", number_text(runfile_number(p, "u"), 3, u), number_text(floor(100.0 * s + 0.5), 3, share),
-                  runfile_text(p, "part"));
+        text_addf(&t, "%s, %s %%: %s", number_text(json_member_number(p, "u"), 3, u), number_text(floor(100.0 * s + 0.5), 3, share),
+                  json_member_text(p, "part"));
         line(out, label, t.s);
         text_free(&t);
         label = "";
@@ -103,37 +104,37 @@ static void target_text(const cJSON *q, textbuf *out) {
         line(out, "target", "none in the protocol");
         return;
     }
-    line(out, "target", runfile_text(t, "sentence"));
+    line(out, "target", json_member_text(t, "sentence"));
     for (size_t i = 0; i < sizeof rules / sizeof rules[0]; i++)
-        if (!strcmp(rules[i][0], runfile_text(t, "rule"))) line(out, "decision rule", rules[i][1]);
-    line(out, "verdict", runfile_text(t, "verdict"));
-    line(out, "advice", runfile_text(t, "advice"));
+        if (!strcmp(rules[i][0], json_member_text(t, "rule"))) line(out, "decision rule", rules[i][1]);
+    line(out, "verdict", json_member_text(t, "verdict"));
+    line(out, "advice", json_member_text(t, "advice"));
 }
 
 static void micrograph_text(const cJSON *m, textbuf *out) {
     char number[NUMBER_TEXT], u[NUMBER_TEXT];
     textbuf t = { 0 };
     text_add(out, "  ");
-    text_add_plain(out, runfile_text(m, "file"));
+    text_add_plain(out, json_member_text(m, "file"));
     text_addf(out, "\n");
-    line(out, "  SHA-256", runfile_text(m, "sha256"));
-    text_addf(&t, "%s", !strcmp(runfile_text(m, "status"), "ok") ? "used" : runfile_text(m, "status"));
-    if (runfile_text(m, "reason")[0]) text_addf(&t, ": %s", runfile_text(m, "reason"));
+    line(out, "  SHA-256", json_member_text(m, "sha256"));
+    text_addf(&t, "%s", !strcmp(json_member_text(m, "status"), "ok") ? "used" : json_member_text(m, "status"));
+    if (json_member_text(m, "reason")[0]) text_addf(&t, ": %s", json_member_text(m, "reason"));
     line(out, "  status", t.s);
     text_free(&t);
-    flag_meanings(out, "  why", runfile_text(m, "reason"));
-    flag_meanings(out, "  remarks", runfile_text(m, "flags"));
-    line(out, "  noted", runfile_text(m, "detail"));
-    if (isfinite(runfile_number(m, "px_nm"))) {
-        text_addf(&t, "%s nm, from %s, relative standard uncertainty %s", number_text(runfile_number(m, "px_nm"), 6, number),
-                  runfile_text(m, "px_source"), number_text(runfile_number(m, "px_u_rel"), 3, u));
+    flag_meanings(out, "  why", json_member_text(m, "reason"));
+    flag_meanings(out, "  remarks", json_member_text(m, "flags"));
+    line(out, "  noted", json_member_text(m, "detail"));
+    if (isfinite(json_member_number(m, "px_nm"))) {
+        text_addf(&t, "%s nm, from %s, relative standard uncertainty %s", number_text(json_member_number(m, "px_nm"), 6, number),
+                  json_member_text(m, "px_source"), number_text(json_member_number(m, "px_u_rel"), 3, u));
         line(out, "  pixel size", t.s);
         text_free(&t);
     }
-    if (isfinite(runfile_number(m, "features_found"))) {
+    if (isfinite(json_member_number(m, "features_found"))) {
         text_addf(&t, "%.0f found; %.0f cut by the frame enter no size; %.0f outside the guard frame do not count for the density",
-                  runfile_number(m, "features_found"), runfile_number(m, "features_cut_by_the_frame"),
-                  runfile_number(m, "features_outside_the_guard_frame"));
+                  json_member_number(m, "features_found"), json_member_number(m, "features_cut_by_the_frame"),
+                  json_member_number(m, "features_outside_the_guard_frame"));
         line(out, "  features", t.s);
         text_free(&t);
     }
@@ -149,65 +150,65 @@ static void link_text(const cJSON *account, textbuf *out) {
     char u[NUMBER_TEXT];
     textbuf more = { 0 };
     text_add(out, "\nHeight and optics (a top view shows no height)\n");
-    if (isfinite(runfile_number(l, "height_nm_u"))) text_addf(&more, " +- %s", number_text(runfile_number(l, "height_nm_u"), 3, u));
-    number_line(out, "height", runfile_number(l, "height_nm"), 5, "nm", more.s ? more.s : "");
+    if (isfinite(json_member_number(l, "height_nm_u"))) text_addf(&more, " +- %s", number_text(json_member_number(l, "height_nm_u"), 3, u));
+    number_line(out, "height", json_member_number(l, "height_nm"), 5, "nm", more.s ? more.s : "");
     text_free(&more);
     for (size_t i = 0; i < sizeof origins / sizeof origins[0]; i++)
-        if (!strcmp(origins[i][0], runfile_text(l, "height_source"))) line(out, "its source", origins[i][1]);
+        if (!strcmp(origins[i][0], json_member_text(l, "height_source"))) line(out, "its source", origins[i][1]);
     if (cJSON_IsObject(c)) {
-        text_addf(&more, "%s of %s, %.0f samples, SHA-256 %s", runfile_text(c, "file"), runfile_text(c, "made_at"), runfile_number(c, "samples"),
-                  runfile_text(c, "sha256"));
+        text_addf(&more, "%s of %s, %.0f samples, SHA-256 %s", json_member_text(c, "file"), json_member_text(c, "made_at"), json_member_number(c, "samples"),
+                  json_member_text(c, "sha256"));
         line(out, "calibration", more.s);
         text_free(&more);
     }
-    line(out, "optical model", runfile_text(l, "optics_model"));
-    line(out, "mixing rule", runfile_text(l, "mixing"));
-    line(out, "", runfile_text(l, "note"));
+    line(out, "optical model", json_member_text(l, "optics_model"));
+    line(out, "mixing rule", json_member_text(l, "mixing"));
+    line(out, "", json_member_text(l, "note"));
 }
 
 static void made_text(const cJSON *account, textbuf *out) {
     const cJSON *m = cJSON_GetObjectItemCaseSensitive(account, "manifest"), *k = cJSON_GetObjectItemCaseSensitive(m, "scale_standard"), *x;
     textbuf t = { 0 };
     text_add(out, "\nMade by\n");
-    text_addf(&t, "%s %s", runfile_text(m, "program"), runfile_text(m, "version"));
+    text_addf(&t, "%s %s", json_member_text(m, "program"), json_member_text(m, "version"));
     line(out, "program", t.s);
     text_free(&t);
-    line(out, "protocol", runfile_text(m, "protocol"));
-    line(out, "its SHA-256", runfile_text(m, "protocol_sha256"));
-    line(out, "run at", runfile_text(m, "run_at"));
-    line(out, "micrographs in", runfile_text(m, "folder"));
-    line(out, "excluded by hand", runfile_text(m, "excluded"));
+    line(out, "protocol", json_member_text(m, "protocol"));
+    line(out, "its SHA-256", json_member_text(m, "protocol_sha256"));
+    line(out, "run at", json_member_text(m, "run_at"));
+    line(out, "micrographs in", json_member_text(m, "folder"));
+    line(out, "excluded by hand", json_member_text(m, "excluded"));
     if (cJSON_IsObject(k)) {
-        text_addf(&t, "%s of %s", runfile_text(k, "name"), runfile_text(k, "date"));
+        text_addf(&t, "%s of %s", json_member_text(k, "name"), json_member_text(k, "date"));
         line(out, "length standard", t.s);
         text_free(&t);
     } else if (k) {
         line(out, "length standard", "none: the pixel sizes are the instrument's own word");
     }
-    cJSON_ArrayForEach(x, cJSON_GetObjectItemCaseSensitive(m, "materials")) line(out, runfile_text(x, "role"), runfile_text(x, "source"));
-    line(out, "noted", runfile_text(m, "warnings"));
-    line(out, "", runfile_text(account, "note"));
+    cJSON_ArrayForEach(x, cJSON_GetObjectItemCaseSensitive(m, "materials")) line(out, json_member_text(x, "role"), json_member_text(x, "source"));
+    line(out, "noted", json_member_text(m, "warnings"));
+    line(out, "", json_member_text(account, "note"));
 }
 
 void explain_text(const cJSON *account, textbuf *out) {
     const cJSON *x;
     char used[NUMBER_TEXT], all[NUMBER_TEXT];
     text_add(out, "Sample ");
-    text_add_plain(out, runfile_text(account, "sample"));
-    text_addf(out, ": %s of %s micrographs used\n", number_text(runfile_number(account, "n_used"), 6, used),
-              number_text(runfile_number(account, "n_images"), 6, all));
-    line(out, "lot", runfile_text(account, "lot"));
-    line(out, "wafer", runfile_text(account, "wafer"));
-    line(out, "position", runfile_text(account, "position"));
-    line(out, "etched at", runfile_text(account, "etched_at"));
-    line(out, "verdict", runfile_text(account, "verdict"));
-    line(out, "its reasons", runfile_text(account, "verdict_reasons"));
-    flag_meanings(out, "remarks", runfile_text(account, "flags"));
+    text_add_plain(out, json_member_text(account, "sample"));
+    text_addf(out, ": %s of %s micrographs used\n", number_text(json_member_number(account, "n_used"), 6, used),
+              number_text(json_member_number(account, "n_images"), 6, all));
+    line(out, "lot", json_member_text(account, "lot"));
+    line(out, "wafer", json_member_text(account, "wafer"));
+    line(out, "position", json_member_text(account, "position"));
+    line(out, "etched at", json_member_text(account, "etched_at"));
+    line(out, "verdict", json_member_text(account, "verdict"));
+    line(out, "its reasons", json_member_text(account, "verdict_reasons"));
+    flag_meanings(out, "remarks", json_member_text(account, "flags"));
     cJSON_ArrayForEach(x, cJSON_GetObjectItemCaseSensitive(account, "quantities")) {
-        text_addf(out, "\n%s\n", runfile_text(x, "quantity"));
+        text_addf(out, "\n%s\n", json_member_text(x, "quantity"));
         value_text(x, out);
-        line(out, "what it is", runfile_text(x, "definition"));
-        line(out, "published in", runfile_text(x, "source"));
+        line(out, "what it is", json_member_text(x, "definition"));
+        line(out, "published in", json_member_text(x, "source"));
         parts_text(x, out);
         target_text(x, out);
     }

@@ -9,6 +9,7 @@
 #include "app/figure_priv.h"
 #include "base/mem.h"
 #include "base/quantity.h"
+#include "io/json.h"
 #include "report/rows.h"
 
 static const struct {
@@ -66,7 +67,7 @@ status figure_finish(const figure_request *q, const plot *p, const sheet_cells *
 }
 
 char *figure_stem(const cJSON *image) {
-    const char *overlay = runfile_text(image, "overlay"), *slash = strchr(overlay, '/');
+    const char *overlay = json_member_text(image, "overlay"), *slash = strchr(overlay, '/');
     char *stem = slash ? mem_text(slash + 1) : NULL, *dot = stem ? strrchr(stem, '.') : NULL;
     if (dot) *dot = '\0';
     return stem;
@@ -79,7 +80,7 @@ figure_images figure_choose(const figure_request *q, const cJSON *run, size_t mo
         size_t of_this = 0;
         cJSON_ArrayForEach(m, cJSON_GetObjectItemCaseSensitive(run, "images")) {
             if (c.n == most || of_this == most / q->n_samples) break;
-            if (strcmp(runfile_text(m, "sample"), q->samples[k]) || strcmp(runfile_text(m, "status"), "ok")) continue;
+            if (strcmp(json_member_text(m, "sample"), q->samples[k]) || strcmp(json_member_text(m, "status"), "ok")) continue;
             c.image[c.n++] = m;
             of_this++;
         }
@@ -100,7 +101,7 @@ status figure_member(const figure_request *q, const cJSON *run, const char *name
         *member = *owned;
         return st;
     }
-    const char *missing = runfile_text(*member, "missing");
+    const char *missing = json_member_text(*member, "missing");
     if (*missing) return fail(e, ST_BAD_INPUT, "the run has no %s: %s", name, missing);
     if (!*member || cJSON_IsNull(*member))
         return fail(e, ST_BAD_INPUT, "the run in '%s' holds no %s; make one with: %s, and name the file with --data", q->dir, name, how);
@@ -146,8 +147,8 @@ static status settle_samples(figure_request *q, const cJSON *run, size_t most, i
     if (q->n_samples || !by_sample) return ST_OK;
     if (n > most)
         return fail(e, ST_BAD_INPUT, "the run has %zu samples and this figure shows at most %zu: name them with --sample, such as '%s'", n,
-                    most, runfile_text(cJSON_GetArrayItem(list, 0), "sample"));
-    cJSON_ArrayForEach(s, list) q->samples[q->n_samples++] = runfile_text(s, "sample");
+                    most, json_member_text(cJSON_GetArrayItem(list, 0), "sample"));
+    cJSON_ArrayForEach(s, list) q->samples[q->n_samples++] = json_member_text(s, "sample");
     return q->n_samples ? ST_OK : fail(e, ST_BAD_INPUT, "the run in '%s' has no sample", q->dir);
 }
 

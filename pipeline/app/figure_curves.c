@@ -7,6 +7,7 @@
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
+#include "io/json.h"
 #include "report/curves.h"
 
 /* The numbers of an array member; NULL entries become MISSING. */
@@ -30,7 +31,7 @@ status figure_spectra(const figure_request *q, const cJSON *run, figure_file *ou
     for (size_t k = 0; k < q->n_samples && !st; k++) {
         cJSON_ArrayForEach(s, cJSON_GetObjectItemCaseSensitive(run, "spectra")) {
             size_t n[4] = { 0 };
-            if (strcmp(runfile_text(s, "sample"), q->samples[k])) continue;
+            if (strcmp(json_member_text(s, "sample"), q->samples[k])) continue;
             for (size_t c = 0; c < 4 && !st; c++) st = array_member(s, name[c], c ? 100.0 : 1.0, &curve[k][c], &n[c], e);
             if (!st && (n[1] != n[0] || n[2] != n[0] || n[3] != n[0]))
                 st = fail(e, ST_BAD_INPUT, "the spectrum of '%s' has columns of different length", q->samples[k]);
@@ -59,7 +60,7 @@ typedef struct {
 } curve_kind;
 
 static double rule_at(const curve_kind *c, const cJSON *image) {
-    double v = runfile_number(image, c->quantity);
+    double v = json_member_number(image, c->quantity);
     return c->scale > 0.0 ? c->scale / v : v;
 }
 
@@ -76,12 +77,12 @@ static status draw_curves(const figure_request *q, const cJSON *run, const curve
     for (size_t k = 0; k < c.n && !st; k++) {
         char *stem = figure_stem(c.image[k]);
         st = stem ? curve_read(q->dir, stem, kind->curve, &curve[k], e)
-                  : fail(e, ST_BAD_INPUT, "the run kept no tables of %s", runfile_text(c.image[k], "file"));
+                  : fail(e, ST_BAD_INPUT, "the run kept no tables of %s", json_member_text(c.image[k], "file"));
         free(stem);
         size_t n = 0;
         while (!st && n < curve[k].n && (curve[k].x[n] <= far || !(far > 0.0))) n++;
-        const char *file = runfile_text(c.image[k], "file"), *slash = strrchr(file, '/');
-        text_addf(&words[k], "%s: spacing %s nm", slash ? slash + 1 : file, number_text(runfile_number(c.image[k], kind->quantity), 5, number));
+        const char *file = json_member_text(c.image[k], "file"), *slash = strrchr(file, '/');
+        text_addf(&words[k], "%s: spacing %s nm", slash ? slash + 1 : file, number_text(json_member_number(c.image[k], kind->quantity), 5, number));
         lines[k] = (plot_series){ .x = curve[k].x, .y = curve[k].y, .n = n, .tone = (int)k, .style = (plot_style)(k % 3), .label = words[k].s };
         rules[k] = (plot_rule){ .at = rule_at(kind, c.image[k]), .tone = (int)k };
         if (!st) st = text_check(&words[k], "a label", e);
@@ -119,7 +120,7 @@ enum { BINS = 32, MAX_BINS = 80 };
 static status add_sizes(const figure_request *q, const cJSON *run, const char *sample, xy_curve *all, error *e) {
     const cJSON *m;
     cJSON_ArrayForEach(m, cJSON_GetObjectItemCaseSensitive(run, "images")) {
-        if (strcmp(runfile_text(m, "sample"), sample) || strcmp(runfile_text(m, "status"), "ok")) continue;
+        if (strcmp(json_member_text(m, "sample"), sample) || strcmp(json_member_text(m, "status"), "ok")) continue;
         xy_curve one = { 0 }, both;
         char *stem = figure_stem(m);
         status st = stem ? sizes_read(q->dir, stem, &one, e) : ST_OK;
@@ -143,7 +144,7 @@ static size_t size_rules(const cJSON *sample, plot_rule rules[3], textbuf words[
     static const char *const names[3][2] = { { "size_d10_nm", "D10" }, { "size_d50_nm", "D50" }, { "size_d90_nm", "D90" } };
     char number[NUMBER_TEXT];
     for (size_t k = 0; k < 3; k++) {
-        double v = runfile_number(sample, names[k][0]);
+        double v = json_member_number(sample, names[k][0]);
         text_addf(&words[k], "%s %s nm", names[k][1], number_text(v, 5, number));
         rules[k] = (plot_rule){ .at = v, .label = words[k].s, .tone = 1 };
     }
@@ -196,7 +197,7 @@ static status read_sweep(const cJSON *sweep, double **v, size_t *n, error *e) {
     if (!*v) return NO_MEMORY(e, "the angles");
     size_t i = 0;
     cJSON_ArrayForEach(row, list) {
-        for (size_t k = 0; k < SWEEP_COLUMNS; k++) (*v)[k * *n + i] = (k ? 100.0 : 1.0) * runfile_number(row, names[k]);
+        for (size_t k = 0; k < SWEEP_COLUMNS; k++) (*v)[k * *n + i] = (k ? 100.0 : 1.0) * json_member_number(row, names[k]);
         i++;
     }
     return *n ? ST_OK : fail(e, ST_BAD_INPUT, "there are no angles in it");
@@ -226,7 +227,7 @@ status figure_angles(const figure_request *q, const cJSON *run, figure_file *out
         sweeps = 1;
     }
     cJSON_ArrayForEach(one, list) {
-        const char *sample = runfile_text(one, "sample");
+        const char *sample = json_member_text(one, "sample");
         if (st || sweeps == MOST_SWEEPS || !figure_wants(q, sample)) continue;
         double **mine = &v[sweeps];
         st = read_sweep(cJSON_GetObjectItemCaseSensitive(one, "sweep"), mine, &n, e);

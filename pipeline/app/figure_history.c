@@ -8,12 +8,13 @@
 #include "app/figure_priv.h"
 #include "base/mem.h"
 #include "base/quantity.h"
+#include "io/json.h"
 
 static const cJSON *find_series(const cJSON *member, const char *wanted) {
     const cJSON *s;
-    if (cJSON_IsObject(member)) return strcmp(runfile_text(member, "quantity"), wanted) ? NULL : member;
+    if (cJSON_IsObject(member)) return strcmp(json_member_text(member, "quantity"), wanted) ? NULL : member;
     cJSON_ArrayForEach(s, member)
-        if (!strcmp(runfile_text(s, "quantity"), wanted)) return s;
+        if (!strcmp(json_member_text(s, "quantity"), wanted)) return s;
     return NULL;
 }
 
@@ -23,7 +24,7 @@ static void list_series(const cJSON *member, char *out, size_t room) {
     size_t n = 0;
     out[0] = '\0';
     cJSON_ArrayForEach(s, member) {
-        int k = snprintf(out + n, room - n, "%s%s", n ? ", " : "", runfile_text(s, "quantity"));
+        int k = snprintf(out + n, room - n, "%s%s", n ? ", " : "", json_member_text(s, "quantity"));
         if (k < 0 || (size_t)k >= room - n) return;
         n += (size_t)k;
     }
@@ -49,7 +50,7 @@ static void name_points(const points *p, const cJSON *list) {
     const cJSON *row;
     size_t i = 0;
     cJSON_ArrayForEach(row, list) {
-        const char *at = runfile_text(row, "etched_at"), *etch = runfile_text(row, "etch");
+        const char *at = json_member_text(row, "etched_at"), *etch = json_member_text(row, "etch");
         snprintf(p->dates[i], sizeof p->dates[i], "%s", *at ? at : etch);
         p->names[i] = p->dates[i];
         i++;
@@ -71,9 +72,9 @@ static void fill_points(const points *p, const cJSON *series, double factor) {
     const cJSON *list = cJSON_GetObjectItemCaseSensitive(series, "points"), *row;
     size_t i = 0;
     cJSON_ArrayForEach(row, list) {
-        double value = factor * runfile_number(row, "value"), u = 2.0 * factor * runfile_number(row, "u");
-        int out = *runfile_text(row, "excluded") != '\0', alarm = cJSON_GetArraySize(cJSON_GetObjectItemCaseSensitive(row, "alarms")) > 0;
-        double phase = runfile_number(row, "phase");
+        double value = factor * json_member_number(row, "value"), u = 2.0 * factor * json_member_number(row, "u");
+        int out = *json_member_text(row, "excluded") != '\0', alarm = cJSON_GetArraySize(cJSON_GetObjectItemCaseSensitive(row, "alarms")) > 0;
+        double phase = json_member_number(row, "phase");
         const cJSON *phases = cJSON_GetObjectItemCaseSensitive(series, "phases");
         const cJSON *in = phase >= 1.0 && phase <= (double)p->n ? cJSON_GetArrayItem(phases, (int)phase - 1) : NULL;
         column_of(p, INDEX)[i] = (double)i;
@@ -84,9 +85,9 @@ static void fill_points(const points *p, const cJSON *series, double factor) {
         column_of(p, OUT)[i] = out ? value : MISSING;
         for (size_t end = 0; end < 2; end++) {
             line_of(p, AT)[2 * i + end] = (double)i - 0.5 + (double)end;
-            line_of(p, CENTRE)[2 * i + end] = factor * runfile_number(in, "centre");
-            line_of(p, LOW)[2 * i + end] = factor * runfile_number(row, "low");
-            line_of(p, HIGH)[2 * i + end] = factor * runfile_number(row, "high");
+            line_of(p, CENTRE)[2 * i + end] = factor * json_member_number(in, "centre");
+            line_of(p, LOW)[2 * i + end] = factor * json_member_number(row, "low");
+            line_of(p, HIGH)[2 * i + end] = factor * json_member_number(row, "high");
         }
         i++;
     }
@@ -113,8 +114,8 @@ static status draw_points(const figure_request *q, const points *p, const cJSON 
     f.n_names = p->n;
     f.series = lines;
     f.n_series = n;
-    f.target_lo = factor * runfile_number(series, "target_min");
-    f.target_hi = factor * runfile_number(series, "target_max");
+    f.target_lo = factor * json_member_number(series, "target_min");
+    f.target_hi = factor * json_member_number(series, "target_max");
     f.target_label = "target";
     return figure_finish(q, &f, NULL, out, e);
 }
@@ -140,7 +141,7 @@ status figure_history(const figure_request *q, const cJSON *run, figure_file *ou
         p.names = mem_array(p.n, sizeof *p.names);
         p.dates = mem_array(p.n, sizeof *p.dates);
         for (int k = 0; k < 3; k++) marks[k] = mem_array(p.n, sizeof **marks);
-        double factor = figure_label(q->quantity, runfile_text(series, "unit"), &label);
+        double factor = figure_label(q->quantity, json_member_text(series, "unit"), &label);
         st = p.v && p.line && p.names && p.dates && marks[0] && marks[1] && marks[2] ? text_check(&label, "a label", e) : NO_MEMORY(e, "the chart");
         for (size_t i = 0; !st && i < p.n; i++) {
             marks[0][i] = MARK_DISC;

@@ -10,6 +10,7 @@
 #include "base/number.h"
 #include "base/quantity.h"
 #include "io/file.h"
+#include "io/json.h"
 #include "io/load.h"
 #include "io/table.h"
 #include "report/html.h"
@@ -55,11 +56,11 @@ static status read_cells(const cJSON *member, const char *across, window_figure 
     w->v = mem_array(n, sizeof *w->v);
     if (!w->x || !w->y || !w->v) return NO_MEMORY(e, "the process window");
     cJSON_ArrayForEach(c, list) {
-        double x = runfile_number(c, across);
+        double x = json_member_number(c, across);
         if (!nx && i && !(x > w->x[i - 1])) nx = i;
         if (!nx) w->x[i] = x;
-        if (!nx || i % nx == 0) w->y[nx ? i / nx : 0] = runfile_number(c, "height_nm");
-        w->v[i++] = 100.0 * runfile_number(c, "weighted_reflectance");
+        if (!nx || i % nx == 0) w->y[nx ? i / nx : 0] = json_member_number(c, "height_nm");
+        w->v[i++] = 100.0 * json_member_number(c, "weighted_reflectance");
     }
     if (!nx) nx = n;
     if (!n || n % nx || !ascends(w->x, nx) || !ascends(w->y, n / nx) || nx > MOST_CELLS || n / nx > MOST_CELLS)
@@ -76,9 +77,9 @@ static status read_contour(const cJSON *member, const char *across, window_figur
     w->least = w->edge_x + n;
     w->sure = w->edge_x + 2 * n;
     cJSON_ArrayForEach(row, list) {
-        w->edge_x[i] = runfile_number(row, across);
-        w->least[i] = runfile_number(row, "least_height_nm");
-        w->sure[i++] = runfile_number(row, "sure_height_nm");
+        w->edge_x[i] = json_member_number(row, across);
+        w->least[i] = json_member_number(row, "least_height_nm");
+        w->sure[i++] = json_member_number(row, "sure_height_nm");
     }
     w->n_edge = n;
     return ST_OK;
@@ -97,11 +98,11 @@ static status read_samples(const figure_request *q, const cJSON *member, window_
     if (!w->spacing || !w->marks || !w->names) return NO_MEMORY(e, "the samples");
     w->height = w->spacing + n;
     cJSON_ArrayForEach(row, list) {
-        if (!figure_wants(q, runfile_text(row, "sample"))) continue;
-        w->spacing[w->n_samples] = runfile_number(row, "spacing_nm");
-        w->height[w->n_samples] = runfile_number(row, "height_nm");
-        w->names[w->n_samples] = runfile_text(row, "sample");
-        w->marks[w->n_samples++] = mark_of(runfile_text(row, "verdict"));
+        if (!figure_wants(q, json_member_text(row, "sample"))) continue;
+        w->spacing[w->n_samples] = json_member_number(row, "spacing_nm");
+        w->height[w->n_samples] = json_member_number(row, "height_nm");
+        w->names[w->n_samples] = json_member_text(row, "sample");
+        w->marks[w->n_samples++] = mark_of(json_member_text(row, "verdict"));
     }
     return ST_OK;
 }
@@ -163,11 +164,11 @@ status figure_window(const figure_request *q, const cJSON *run, figure_file *out
     const cJSON *member = NULL;
     window_figure w = { .n_edge = 0 };
     status st = figure_member(q, run, "window", "sward window --results DIR --json > window.json", &owned, &member, e);
-    const char *across = *runfile_text(member, "across") ? runfile_text(member, "across") : "spacing_nm";
+    const char *across = *json_member_text(member, "across") ? json_member_text(member, "across") : "spacing_nm";
     if (!st) st = read_cells(member, across, &w, e);
     if (!st) st = read_contour(member, across, &w, e);
     if (!st) st = read_samples(q, strcmp(across, "spacing_nm") ? NULL : member, &w, e);
-    if (!st) st = draw_window(q, &w, across, runfile_number(member, "target"), out, e);
+    if (!st) st = draw_window(q, &w, across, json_member_number(member, "target"), out, e);
     window_figure_free(&w);
     cJSON_Delete(owned);
     return st;
@@ -189,12 +190,12 @@ typedef struct {
 static const cJSON *place_of(const cJSON *places, const char *sample) {
     const cJSON *p;
     cJSON_ArrayForEach(p, places)
-        if (!strcmp(runfile_text(p, "sample"), sample)) return p;
+        if (!strcmp(json_member_text(p, "sample"), sample)) return p;
     return NULL;
 }
 
 static int same_wafer(const cJSON *a, const cJSON *b) {
-    return !strcmp(runfile_text(a, "lot"), runfile_text(b, "lot")) && !strcmp(runfile_text(a, "wafer"), runfile_text(b, "wafer"));
+    return !strcmp(json_member_text(a, "lot"), json_member_text(b, "lot")) && !strcmp(json_member_text(a, "wafer"), json_member_text(b, "wafer"));
 }
 
 /* Appends the wafer of `first`, when that is its first placed sample; returns how many positions it has. */
@@ -205,22 +206,22 @@ static size_t add_wafer(const figure_request *q, const cJSON *run, const cJSON *
     size_t n = 0;
     int wanted = 0;
     cJSON_ArrayForEach(s, cJSON_GetObjectItemCaseSensitive(run, "samples")) {
-        const cJSON *p = place_of(places, runfile_text(s, "sample"));
+        const cJSON *p = place_of(places, json_member_text(s, "sample"));
         char number[NUMBER_TEXT];
-        double value = runfile_number(s, q->quantity);
+        double value = json_member_number(s, q->quantity);
         if (!p || !same_wafer(s, first) || !isfinite(value)) continue;
         if (!n && s != first) return 0;
-        wanted |= figure_wants(q, runfile_text(s, "sample"));
-        x[n] = runfile_number(p, "x_mm");
-        y[n] = runfile_number(p, "y_mm");
+        wanted |= figure_wants(q, json_member_text(s, "sample"));
+        x[n] = json_member_number(p, "x_mm");
+        y[n] = json_member_number(p, "y_mm");
         v[n] = factor * value;
         snprintf(w->labels[at + n], LABEL, "%s", factor > 1.0 ? number_percent(value, digits, number) : number_text(value, digits, number));
         w->label[at + n] = w->labels[at + n];
         n++;
     }
     if (!n || !wanted) return 0;
-    snprintf(w->names[w->n], sizeof w->names[w->n], "%s%s%s", runfile_text(first, "lot"), *runfile_text(first, "lot") ? " " : "",
-             runfile_text(first, "wafer"));
+    snprintf(w->names[w->n], sizeof w->names[w->n], "%s%s%s", json_member_text(first, "lot"), *json_member_text(first, "lot") ? " " : "",
+             json_member_text(first, "wafer"));
     w->wafers[w->n] = (sheet_wafer){ w->names[w->n], x, y, v, w->label + at, n };
     w->n++;
     return n;
@@ -266,7 +267,7 @@ static char *find_folder(const figure_request *q) {
     if (q->folder) folder = mem_text(q->folder);
     else if (path && file_read(path, LIMIT_TEXT_FILE_BYTES, &bytes, &n, NULL) == ST_OK) {
         cJSON *o = cJSON_ParseWithLength(bytes, n);
-        folder = mem_text(runfile_text(o, "folder"));
+        folder = mem_text(json_member_text(o, "folder"));
         cJSON_Delete(o);
     }
     free(path);
@@ -275,13 +276,13 @@ static char *find_folder(const figure_request *q) {
 }
 
 static status load_image(const figure_request *q, const cJSON *image, micrograph *m, error *e) {
-    char *folder = find_folder(q), *path = folder ? path_join(folder, runfile_text(image, "file")) : NULL;
+    char *folder = find_folder(q), *path = folder ? path_join(folder, json_member_text(image, "file")) : NULL;
     load_options o = load_defaults();
     error why = { 0 };
     status st = path ? ST_OK : NO_MEMORY(e, "a path");
     if (!st && load_file(path, &o, m, &why))
         st = fail(e, ST_BAD_INPUT, "%s cannot be read (%.200s); name the folder of the micrographs with --folder", path, why.text);
-    else if (!st && strcmp(m->hash, runfile_text(image, "sha256")) != 0)
+    else if (!st && strcmp(m->hash, json_member_text(image, "sha256")) != 0)
         st = fail(e, ST_BAD_INPUT, "%s is no longer the file that was measured; name the folder of the micrographs with --folder", path);
     free(folder);
     free(path);
@@ -323,7 +324,7 @@ static status read_centres(const figure_request *q, const cJSON *image, centres 
 }
 
 static void place_ring(const centres *c, const cJSON *image, sheet_picture *p) {
-    double best = HUGE_VAL, spacing = runfile_number(image, "spacing_acf_nm");
+    double best = HUGE_VAL, spacing = json_member_number(image, "spacing_acf_nm");
     for (size_t i = 0; i < c->n; i++) {
         double far = hypot(c->x[i] - 0.5 * (double)p->m->nx, c->y[i] - 0.5 * (double)p->m->ny);
         if (!c->counted[i] || !(far < best)) continue;
@@ -343,15 +344,15 @@ status figure_micrograph(const figure_request *q, const cJSON *run, figure_file 
     if (!c.n) return fail(e, ST_BAD_INPUT, "none of the micrographs of this sample was used");
     status st = load_image(q, c.image[0], &m, e);
     if (!st && q->signs) st = read_centres(q, c.image[0], &found, e);
-    sheet_picture p = { .m = &m, .px_nm = runfile_number(c.image[0], "px_nm"), .x = found.x, .y = found.y, .counted = found.counted,
-                        .n = found.n, .ring_px = MISSING, .title = runfile_text(c.image[0], "file") };
+    sheet_picture p = { .m = &m, .px_nm = json_member_number(c.image[0], "px_nm"), .x = found.x, .y = found.y, .counted = found.counted,
+                        .n = found.n, .ring_px = MISSING, .title = json_member_text(c.image[0], "file") };
     if (!st && q->signs) {
         place_ring(&found, c.image[0], &p);
-        text_addf(&ring, "spacing %s nm", number_text(runfile_number(c.image[0], "spacing_acf_nm"), 5, number));
+        text_addf(&ring, "spacing %s nm", number_text(json_member_number(c.image[0], "spacing_acf_nm"), 5, number));
         st = text_check(&ring, "a label", e);
         p.ring_label = ring.s;
     }
-    text_addf(&words, "Micrograph %s of the sample %s. %s", p.title, runfile_text(c.image[0], "sample"), ring.s ? ring.s : "");
+    text_addf(&words, "Micrograph %s of the sample %s. %s", p.title, json_member_text(c.image[0], "sample"), ring.s ? ring.s : "");
     p.description = words.s;
     if (!st) st = text_check(&words, "a figure", e);
     if (!st) st = sheet_draw_picture(&p, &q->sheet, &out->bytes, &out->n, e);

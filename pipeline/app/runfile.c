@@ -5,8 +5,8 @@
 
 #include "base/limits.h"
 #include "base/mem.h"
-#include "base/quantity.h"
 #include "io/file.h"
+#include "io/json.h"
 
 status runfile_read(const char *dir, cJSON **root, error *e) {
     char *bytes = NULL, *path = path_join(dir, "results.json");
@@ -27,20 +27,10 @@ status runfile_read(const char *dir, cJSON **root, error *e) {
     return st;
 }
 
-double runfile_number(const cJSON *row, const char *name) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(row, name);
-    return cJSON_IsNumber(v) ? v->valuedouble : MISSING;
-}
-
-const char *runfile_text(const cJSON *row, const char *name) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(row, name);
-    return cJSON_IsString(v) ? v->valuestring : "";
-}
-
 const cJSON *runfile_sample(const cJSON *root, const char *sample) {
     const cJSON *s;
     cJSON_ArrayForEach(s, cJSON_GetObjectItemCaseSensitive(root, "samples")) {
-        if (!strcmp(runfile_text(s, "sample"), sample)) return s;
+        if (!strcmp(json_member_text(s, "sample"), sample)) return s;
     }
     return NULL;
 }

@@ -9,8 +9,6 @@
  *   err  ST_BAD_INPUT no such folder, no results in it, or not this program's; ST_IO; ST_NO_MEMORY */
 status runfile_read(const char *dir, cJSON **root, error *e);
 
-double runfile_number(const cJSON *row, const char *name);    /* NAN where missing */
-const char *runfile_text(const cJSON *row, const char *name); /* "" where missing */
 /* The row of "samples" with that name, or NULL. */
 const cJSON *runfile_sample(const cJSON *root, const char *sample);
 

@@ -8,21 +8,12 @@
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
+#include "io/json.h"
 #include "report/html.h"
 #include "report/page.h"
 #include "report/plot.h"
 
 enum { MOST_POINTS = 200, MOST_PHASES = 12, MOST_RULES = 24, MOST_SENTENCES = 24, LINES_A_PHASE = 3, TIME_LETTERS = 16, LABEL_LETTERS = 28 };
-
-static double number_in(const cJSON *o, const char *name) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(o, name);
-    return cJSON_IsNumber(v) ? v->valuedouble : MISSING;
-}
-
-static const char *text_in(const cJSON *o, const char *name) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(o, name);
-    return cJSON_IsString(v) ? v->valuestring : "";
-}
 
 static const cJSON *list_in(const cJSON *o, const char *name) { return cJSON_GetObjectItemCaseSensitive(o, name); }
 
@@ -55,16 +46,16 @@ static void short_time(const char *t, char *out) {
 
 static void add_point(picture *p, const cJSON *o) {
     size_t i = p->n++;
-    double sd = number_in(o, "sd");
+    double sd = json_member_number(o, "sd");
     p->x[i] = (double)i;
-    p->value[i] = p->scale * number_in(o, "value");
+    p->value[i] = p->scale * json_member_number(o, "value");
     p->lo[i] = p->value[i] - p->scale * sd;
     p->hi[i] = p->value[i] + p->scale * sd;
-    p->average[i] = p->scale * number_in(o, "average");
+    p->average[i] = p->scale * json_member_number(o, "average");
     p->mark[i] = cJSON_IsString(list_in(o, "excluded"))       ? MARK_SQUARE
                  : cJSON_GetArraySize(list_in(o, "alarms")) ? MARK_TRIANGLE
                                                             : MARK_DISC;
-    short_time(*text_in(o, "etched_at") ? text_in(o, "etched_at") : text_in(o, "etch"), p->name[i]);
+    short_time(*json_member_text(o, "etched_at") ? json_member_text(o, "etched_at") : json_member_text(o, "etch"), p->name[i]);
     p->names[i] = p->name[i];
 }
 
@@ -82,13 +73,13 @@ static void add_rule(picture *p, double number, int tone, const char *text) {
 /* Centre and limits of one phase over its points. */
 static void add_phase(picture *p, size_t k, const cJSON *phase, const cJSON *points) {
     static const char *const name[LINES_A_PHASE] = { "lower control limit", "centre", "upper control limit" };
-    double number = number_in(phase, "number");
-    const double level[LINES_A_PHASE] = { number_in(phase, "low"), number_in(phase, "centre"), number_in(phase, "high") };
+    double number = json_member_number(phase, "number");
+    const double level[LINES_A_PHASE] = { json_member_number(phase, "low"), json_member_number(phase, "centre"), json_member_number(phase, "high") };
     const cJSON *o;
     size_t n = 0, i = 0;
     cJSON_ArrayForEach(o, points) {
         if (i == p->n) break;
-        if (fabs(number_in(o, "phase") - number) < 0.5) p->limit_x[k][n++] = p->x[i];
+        if (fabs(json_member_number(o, "phase") - number) < 0.5) p->limit_x[k][n++] = p->x[i];
         i++;
     }
     for (size_t l = 0; l < LINES_A_PHASE; l++) {
@@ -99,7 +90,7 @@ static void add_phase(picture *p, size_t k, const cJSON *phase, const cJSON *poi
         p->listed[l] = 1;
         p->n_lines++;
     }
-    if (k && *text_in(phase, "why")) add_rule(p, number_in(phase, "first"), 2, text_in(phase, "why"));
+    if (k && *json_member_text(phase, "why")) add_rule(p, json_member_number(phase, "first"), 2, json_member_text(phase, "why"));
 }
 
 static void lay_out(const cJSON *series, picture *p) {
@@ -107,14 +98,14 @@ static void lay_out(const cJSON *series, picture *p) {
     size_t skip = (size_t)cJSON_GetArraySize(phases) > MOST_PHASES ? (size_t)cJSON_GetArraySize(phases) - MOST_PHASES : 0, k = 0;
     cJSON_ArrayForEach(o, points) {
         if (p->n == MOST_POINTS) break;
-        if (!p->n) p->first = number_in(o, "number");
+        if (!p->n) p->first = json_member_number(o, "number");
         add_point(p, o);
     }
     cJSON_ArrayForEach(o, phases) {
         if (k >= skip) add_phase(p, k - skip, o, points);
         k++;
     }
-    cJSON_ArrayForEach(o, list_in(series, "notes")) add_rule(p, number_in(o, "before"), 1, text_in(o, "text"));
+    cJSON_ArrayForEach(o, list_in(series, "notes")) add_rule(p, json_member_number(o, "before"), 1, json_member_text(o, "text"));
 }
 
 static void add_sentences(const cJSON *series, textbuf *out) {
@@ -141,7 +132,7 @@ static void add_notes(const cJSON *series, textbuf *out) {
         text_add(out, "<tr>");
         for (size_t k = 0; k < 4; k++) {
             text_add(out, "<td>");
-            html_text(out, text_in(o, cell[k]));
+            html_text(out, json_member_text(o, cell[k]));
             text_add(out, "</td>");
         }
         text_add(out, "</tr>\n");
@@ -151,7 +142,7 @@ static void add_notes(const cJSON *series, textbuf *out) {
 
 static void draw_control(const cJSON *series, picture *p, textbuf *out) {
     static const char *const words[] = { "in control", "", "alarm", "excluded" };
-    const char *name = text_in(series, "quantity"), *unit = page_percent(name) ? "%" : text_in(series, "unit");
+    const char *name = json_member_text(series, "quantity"), *unit = page_percent(name) ? "%" : json_member_text(series, "unit");
     textbuf title = { 0 }, label = { 0 };
     *p = (picture){ .scale = page_percent(name) ? 100.0 : 1.0 };
     lay_out(series, p);
@@ -164,8 +155,8 @@ static void draw_control(const cJSON *series, picture *p, textbuf *out) {
     p->lines[p->n_lines++] = (plot_series){ .x = p->x, .y = p->value, .lo = p->lo, .hi = p->hi, .n = p->n, .style = PLOT_POINTS, .marks = p->mark,
                                             .label = "mean of an etch" };
     plot c = { .title = title.s ? title.s : "", .x_label = "time of the etch", .y_label = label.s ? label.s : "", .from_zero = page_percent(name),
-               .y_lo = MISSING, .y_hi = MISSING, .target_lo = p->scale * number_in(series, "target_min"),
-               .target_hi = p->scale * number_in(series, "target_max"), .target_label = "target range", .names = p->names, .n_names = p->n,
+               .y_lo = MISSING, .y_hi = MISSING, .target_lo = p->scale * json_member_number(series, "target_min"),
+               .target_hi = p->scale * json_member_number(series, "target_max"), .target_label = "target range", .names = p->names, .n_names = p->n,
                .mark_words = words, .mark_title = "state", .series = p->lines, .n_series = p->n_lines, .rules = p->rules, .n_rules = p->n_rules,
                .width = 1040, .height = 320 };
     text_add(out, "<figure class=\"wide\">");

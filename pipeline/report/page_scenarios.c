@@ -8,25 +8,16 @@
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
+#include "io/json.h"
 #include "report/html.h"
 #include "report/page.h"
 #include "report/plot.h"
 
 enum { MOST_SWEEPS = 3, MOST_ANGLES = 32, MOST_SPACINGS = 64 };
 
-static double number_in(const cJSON *o, const char *name) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(o, name);
-    return cJSON_IsNumber(v) ? v->valuedouble : MISSING;
-}
-
-static const char *text_in(const cJSON *o, const char *name) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(o, name);
-    return cJSON_IsString(v) ? v->valuestring : "";
-}
-
 static void add_missing(const cJSON *o, const char *what, textbuf *out) {
     text_addf(out, "<p>%s: ", what);
-    html_text(out, *text_in(o, "missing") ? text_in(o, "missing") : "this run made none");
+    html_text(out, *json_member_text(o, "missing") ? json_member_text(o, "missing") : "this run made none");
     text_add(out, ".</p>\n");
 }
 
@@ -42,12 +33,12 @@ static void read_sweep(const cJSON *o, sweep *s) {
     s->n = 0;
     cJSON_ArrayForEach(row, cJSON_GetObjectItemCaseSensitive(o, "angles")) {
         if (s->n == MOST_ANGLES) break;
-        s->x[s->n] = number_in(row, "angle_deg");
-        s->y[s->n] = 100.0 * number_in(row, "weighted_reflectance");
-        s->lo[s->n] = 100.0 * number_in(row, "weighted_reflectance_lo");
-        s->hi[s->n] = 100.0 * number_in(row, "weighted_reflectance_hi");
-        s->polished[s->n] = 100.0 * number_in(row, "polished_reflectance");
-        s->coated[s->n++] = 100.0 * number_in(row, "coated_reflectance");
+        s->x[s->n] = json_member_number(row, "angle_deg");
+        s->y[s->n] = 100.0 * json_member_number(row, "weighted_reflectance");
+        s->lo[s->n] = 100.0 * json_member_number(row, "weighted_reflectance_lo");
+        s->hi[s->n] = 100.0 * json_member_number(row, "weighted_reflectance_hi");
+        s->polished[s->n] = 100.0 * json_member_number(row, "polished_reflectance");
+        s->coated[s->n++] = 100.0 * json_member_number(row, "coated_reflectance");
     }
 }
 
@@ -61,7 +52,7 @@ static void draw_angles(const cJSON *samples, sweep *of, textbuf *out) {
         read_sweep(cJSON_GetObjectItemCaseSensitive(one, "sweep"), s);
         int middle = cJSON_GetArraySize(samples) < 3 || n == 3; /* one band is enough to see how sure the curves are */
         lines[n] = (plot_series){ .x = s->x, .y = s->y, .lo = middle ? s->lo : NULL, .hi = middle ? s->hi : NULL, .n = s->n,
-                                  .tone = n == 2 ? 3 : n == 3 ? 0 : 4, .label = text_in(one, "sample") };
+                                  .tone = n == 2 ? 3 : n == 3 ? 0 : 4, .label = json_member_text(one, "sample") };
         n++;
     }
     lines[0] = (plot_series){ .x = of->x, .y = of->polished, .n = of->n, .style = PLOT_DASHED, .tone = 2, .label = "polished" };
@@ -104,14 +95,14 @@ static contour read_contour(const cJSON *o) {
     contour c = { .lowest = HUGE_VAL, .highest = 0.0 };
     const cJSON *row;
     cJSON_ArrayForEach(row, cJSON_GetObjectItemCaseSensitive(o, "cells")) {
-        c.lowest = fmin(c.lowest, number_in(row, "height_nm"));
-        c.highest = fmax(c.highest, number_in(row, "height_nm"));
+        c.lowest = fmin(c.lowest, json_member_number(row, "height_nm"));
+        c.highest = fmax(c.highest, json_member_number(row, "height_nm"));
     }
     cJSON_ArrayForEach(row, cJSON_GetObjectItemCaseSensitive(o, "contour")) {
         if (c.n == MOST_SPACINGS) break;
-        c.x[c.n] = number_in(row, "spacing_nm");
-        c.least[c.n] = number_in(row, "least_height_nm");
-        c.sure[c.n] = number_in(row, "sure_height_nm");
+        c.x[c.n] = json_member_number(row, "spacing_nm");
+        c.least[c.n] = json_member_number(row, "least_height_nm");
+        c.sure[c.n] = json_member_number(row, "sure_height_nm");
         c.top[c.n++] = c.highest;
     }
     return c;
@@ -162,7 +153,7 @@ static void draw_window(const results *r, const cJSON *o, const placed *p, textb
             limits[0].at = r->target_min ? r->target_min[k] : MISSING;
             limits[1].at = r->target_max ? r->target_max[k] : MISSING;
         }
-    number_percent(number_in(o, "target"), 4, percent);
+    number_percent(json_member_number(o, "target"), 4, percent);
     text_addf(&plain, "least height for %s %%, plain value", percent);
     text_addf(&sure, "least height for %s %% with 95 %% confidence", percent);
     plot_series s[3] = { { .x = c.x, .y = c.least, .n = c.n, .style = PLOT_DASHED, .tone = 1, .label = plain.s },
@@ -179,11 +170,11 @@ static void draw_window(const results *r, const cJSON *o, const placed *p, textb
     text_addf(out, "<figcaption>In the shaded part the predicted weighted reflectance stays at or below %s %% with 95 %% confidence%s; between the two "
                    "lines the model alone cannot decide, below the dashed line it is missed. Bars: height \xc2\xb1 U (k = 2).</figcaption></figure>\n<p>",
               percent, isfinite(limits[0].at) || isfinite(limits[1].at) ? ", and between the upright dashes the spacing is on target" : "");
-    html_text(out, text_in(o, "answer"));
+    html_text(out, json_member_text(o, "answer"));
     text_add(out, "</p>\n<p class=\"small\">");
-    html_text(out, text_in(o, "note"));
+    html_text(out, json_member_text(o, "note"));
     text_add(out, " ");
-    html_text(out, text_in(o, "caution"));
+    html_text(out, json_member_text(o, "caution"));
     text_add(out, "</p>\n");
     if (plain.failed || sure.failed) out->failed = 1;
     text_free(&plain);

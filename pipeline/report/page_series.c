@@ -8,6 +8,7 @@
 #include "base/mem.h"
 #include "base/number.h"
 #include "base/quantity.h"
+#include "io/json.h"
 #include "report/html.h"
 #include "report/page.h"
 #include "report/plot.h"
@@ -70,20 +71,10 @@ static void add_etch(etches *t, const char *name, const char *time, double spaci
     t->spacing_mark[i] = t->R_mark[i] = page_mark(verdict);
 }
 
-static double member_number(const cJSON *o, const char *key) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(o, key);
-    return cJSON_IsNumber(v) ? v->valuedouble : MISSING;
-}
-
-static const char *member_text(const cJSON *o, const char *key) {
-    const cJSON *v = cJSON_GetObjectItemCaseSensitive(o, key);
-    return cJSON_IsString(v) ? v->valuestring : "";
-}
-
 /* Place among this run's samples, or their number. */
 static size_t run_place(const results *r, const cJSON *row) {
     size_t i = 0;
-    while (i < r->n_samples && strcmp(text_or_empty(r->samples[i].sample), member_text(row, "sample"))) i++;
+    while (i < r->n_samples && strcmp(text_or_empty(r->samples[i].sample), json_member_text(row, "sample"))) i++;
     return i;
 }
 
@@ -97,16 +88,16 @@ static void from_ledger(etches *t, const results *r, const cJSON *list, textbuf 
     }
     cJSON_ArrayForEach(row, list) {
         size_t at = k++;
-        for (; at && !strcmp(member_text(order[at - 1], "etched_at"), member_text(row, "etched_at")) &&
-               *member_text(row, "etched_at") && run_place(r, row) < run_place(r, order[at - 1]);
+        for (; at && !strcmp(json_member_text(order[at - 1], "etched_at"), json_member_text(row, "etched_at")) &&
+               *json_member_text(row, "etched_at") && run_place(r, row) < run_place(r, order[at - 1]);
              at--)
             order[at] = order[at - 1];
         order[at] = row;
     }
     for (size_t i = 0; i < n; i++)
-        add_etch(t, member_text(order[i], "sample"), member_text(order[i], "etched_at"), member_number(order[i], "spacing_nm"),
-                 member_number(order[i], "spacing_nm_u"), member_number(order[i], "weighted_reflectance"),
-                 member_text(order[i], "verdict"));
+        add_etch(t, json_member_text(order[i], "sample"), json_member_text(order[i], "etched_at"), json_member_number(order[i], "spacing_nm"),
+                 json_member_number(order[i], "spacing_nm_u"), json_member_number(order[i], "weighted_reflectance"),
+                 json_member_text(order[i], "verdict"));
     free(order);
 }
 
