@@ -45,6 +45,16 @@ static status make_room(xy_curve *c, size_t n, error *e) {
     return c->x && c->y ? ST_OK : NO_MEMORY(e, "a curve");
 }
 
+/* The end of every reader: the table goes, the curve is the caller's or goes too. */
+static status hand_over(status st, csv *table, xy_curve *c, xy_curve *out) {
+    csv_free(table);
+    if (st)
+        xy_curve_free(c);
+    else
+        *out = *c;
+    return st;
+}
+
 status curve_read(const char *dir, const char *stem, const char *name, xy_curve *out, error *e) {
     static const char *const wanted[] = { "curve", "x", "x_unit", "value" };
     csv table = { 0 };
@@ -58,12 +68,7 @@ status curve_read(const char *dir, const char *stem, const char *name, xy_curve 
         if (strcmp(csv_cell(&table, i, at[0]), name) || (strcmp(unit, "nm") && strcmp(unit, "1/um"))) continue;
         if (number_parse(csv_cell(&table, i, at[1]), &c.x[c.n]) && number_parse(csv_cell(&table, i, at[3]), &c.y[c.n])) c.n++;
     }
-    csv_free(&table);
-    if (st)
-        xy_curve_free(&c);
-    else
-        *out = c;
-    return st;
+    return hand_over(st, &table, &c, out);
 }
 
 status sizes_read(const char *dir, const char *stem, xy_curve *out, error *e) {
@@ -78,12 +83,7 @@ status sizes_read(const char *dir, const char *stem, xy_curve *out, error *e) {
         if (number_parse(csv_cell(&table, i, at[0]), &c.x[c.n]) && number_parse(csv_cell(&table, i, at[1]), &c.y[c.n]) &&
             c.y[c.n] > 0.0)
             c.n++;
-    csv_free(&table);
-    if (st)
-        xy_curve_free(&c);
-    else
-        *out = c;
-    return st;
+    return hand_over(st, &table, &c, out);
 }
 
 status centres_read(const char *dir, const char *stem, int counted, xy_curve *out, error *e) {
@@ -98,12 +98,7 @@ status centres_read(const char *dir, const char *stem, int counted, xy_curve *ou
         if (!strcmp(csv_cell(&table, i, at[2]), counted ? "1" : "0") && number_parse(csv_cell(&table, i, at[0]), &c.x[c.n]) &&
             number_parse(csv_cell(&table, i, at[1]), &c.y[c.n]))
             c.n++;
-    csv_free(&table);
-    if (st)
-        xy_curve_free(&c);
-    else
-        *out = c;
-    return st;
+    return hand_over(st, &table, &c, out);
 }
 
 void sizes_histogram(const xy_curve *sizes, double lo, double step, size_t n, double *share) {

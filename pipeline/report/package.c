@@ -19,11 +19,7 @@ static const char *field_type(column_kind kind) {
     }
 }
 
-static void add_field(textbuf *out, int first, const char *name, const char *type, const char *unit,
-                      const char *meaning) {
-    text_addf(out, "%s\n          {\"name\": ", first ? "" : ",");
-    json_string(out, name);
-    text_addf(out, ", \"type\": \"%s\"", type);
+void package_describe(const char *unit, const char *meaning, textbuf *out) {
     if (unit[0]) {
         text_add(out, ", \"unit\": ");
         json_string(out, unit);
@@ -31,6 +27,14 @@ static void add_field(textbuf *out, int first, const char *name, const char *typ
     text_add(out, ", \"description\": ");
     json_string(out, meaning);
     text_add(out, "}");
+}
+
+static void add_field(textbuf *out, int first, const char *name, const char *type, const char *unit,
+                      const char *meaning) {
+    text_addf(out, "%s\n          {\"name\": ", first ? "" : ",");
+    json_string(out, name);
+    text_addf(out, ", \"type\": \"%s\"", type);
+    package_describe(unit, meaning, out);
 }
 
 static void add_extra_field(textbuf *out, const char *name) {

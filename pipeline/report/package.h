@@ -10,6 +10,9 @@
  *   src  Data Package and Table Schema, version 1 (specs.frictionlessdata.io, from memory) */
 void package_json(const results *r, const char *out_dir, textbuf *out);
 
+/* The end of a field's object, from its unit ("": none) to the closing brace; the JSON Schema writes its properties alike. */
+void package_describe(const char *unit, const char *meaning, textbuf *out);
+
 /* Appends the stem of the files of image i ("features/<stem>.csv"); 0 when it has none. */
 int image_stem(const results *r, size_t i, textbuf *out);
 

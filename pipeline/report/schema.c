@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "io/json.h"
+#include "report/package.h"
 
 static const char *type_of(column_kind kind) {
     return kind == COL_NUMBER ? "[\"number\", \"null\"]" : kind == COL_COUNT ? "[\"integer\", \"null\"]" : "[\"string\", \"null\"]";
@@ -14,13 +15,7 @@ static void add_property(textbuf *out, int first, const char *name, const char *
     text_add(out, first ? "\n          " : ",\n          ");
     json_string(out, name);
     text_addf(out, ": {\"type\": %s", type);
-    if (unit[0]) {
-        text_add(out, ", \"unit\": ");
-        json_string(out, unit);
-    }
-    text_add(out, ", \"description\": ");
-    json_string(out, meaning);
-    text_add(out, "}");
+    package_describe(unit, meaning, out);
 }
 
 /* "name": {an object with these columns}. `more` further properties, as text that begins with a comma. */
