@@ -76,12 +76,6 @@ status pool_parts(const measured *m, const double *weight, size_t n, pooled *out
     return j.micrographs ? ST_OK : ST_NO_RESULT;
 }
 
-status pool_quantity(const measured *m, const double *weight, size_t n, measured *out) {
-    joined j = join(m, weight, n, MISSING);
-    *out = from_joined(&j);
-    return j.micrographs ? ST_OK : ST_NO_RESULT;
-}
-
 status pool_axis(const measured *m, const double *weight, size_t n, measured *out) {
     double c = 0.0, s = 0.0;
     for (size_t i = 0; i < n; i++)

@@ -5,20 +5,14 @@
 #include "metrics/texture.h"
 
 /* One quantity over the micrographs of a sample (JCGM 100, 4.2 and 5.1).
- *   in   m[n] the quantity in each micrograph; weight[n] > 0, usually its number of features. Micrographs with a value
- *        NAN or a weight not above 0 take no part
- *   out  value: weighted mean. u_sampling: the larger of the propagated within-micrograph part, sqrt(sum (w u)^2) / sum w,
- *        and, from two micrographs on, the standard error of the weighted mean from the scatter between them: a wafer
- *        that varies from place to place may not look better known than it is. u_method: weighted mean of the method
- *        parts, common to all, so it does not average out. n: sum of n
- *   err  ST_NO_RESULT no micrograph has the quantity (out is then NAN) */
-status pool_quantity(const measured *m, const double *weight, size_t n, measured *out);
-
-/* The same with the parts of u_sampling and how well it is known.
- *   in  weight[n] the number of features, from which field_dof() tells how well each knows its own part
- *   out m as from pool_quantity; within, between (NAN from one micrograph); dof of u_sampling: where the scatter agrees with what the
- * micrographs know themselves (F test, 5 %), both speak for it and their degrees of freedom add; else it is the
- * scatter's, one less than the micrographs */
+ *   in   m[n] the quantity in each micrograph; weight[n] > 0, its number of features, from which field_dof() tells how well each
+ *        knows its own part. Micrographs with a value NAN or a weight not above 0 take no part
+ *   out  m.value: weighted mean. m.u_sampling: the larger of within, the propagated part sqrt(sum (w u)^2) / sum w, and between,
+ *        the standard error of the weighted mean from the scatter (NAN from one micrograph): a wafer that varies from place to
+ *        place may not look better known than it is. m.u_method: weighted mean of the method parts, common to all, so it does not
+ *        average out. m.n: sum of n. dof of u_sampling: where the scatter agrees with what the micrographs know themselves
+ *        (F test, 5 %), both speak for it and their degrees of freedom add; else it is the scatter's, one less than the micrographs
+ *   err  ST_NO_RESULT no micrograph has the quantity (out->m is then NAN) */
 typedef struct {
     measured m;
     double within, between, dof;

@@ -5,13 +5,21 @@
 #include "check.h"
 #include "metrics/uncertainty.h"
 
+/* The joined value without its parts. */
+static status value_of(const measured *m, const double *weight, size_t n, measured *out) {
+    pooled p;
+    status st = pool_parts(m, weight, n, &p);
+    *out = p.m;
+    return st;
+}
+
 int main(void) {
     measured out;
     /* Scatter larger than what each knows: standard error of the weighted mean, n/(n-1) sum w^2 r^2 / (sum
      * w)^2. */
     static const measured far[] = { { 100.0, 0.5, 2.0, 400 }, { 106.0, 0.5, 4.0, 200 } };
     static const double w[] = { 400.0, 200.0 };
-    CHECK(pool_quantity(far, w, 2, &out) == ST_OK);
+    CHECK(value_of(far, w, 2, &out) == ST_OK);
     CHECK_NEAR(out.value, 102.0, 1e-12);
     CHECK_NEAR(out.u_sampling, sqrt(2.0 * (4.0 / 9.0 * 4.0 + 1.0 / 9.0 * 16.0)), 1e-12);
     CHECK_NEAR(out.u_method, 8.0 / 3.0, 1e-12);
@@ -19,21 +27,21 @@ int main(void) {
     /* Agreement by chance must not make a small u. */
     static const measured near[] = { { 100.0, 3.0, 2.0, 10 }, { 100.0, 4.0, 2.0, 10 } };
     static const double even[] = { 1.0, 1.0 };
-    CHECK(pool_quantity(near, even, 2, &out) == ST_OK);
+    CHECK(value_of(near, even, 2, &out) == ST_OK);
     CHECK_NEAR(out.u_sampling, 2.5, 1e-12);
     CHECK_NEAR(out.u_method, 2.0, 1e-12);
     /* One alone, the others missing or without weight. */
     const measured gaps[] = { { MISSING, MISSING, 0.0, 0 }, { 7.0, 0.3, 0.1, 50 }, { 9.0, 0.3, 0.1, 50 } };
     static const double gap_w[] = { 5.0, 2.0, 0.0 };
-    CHECK(pool_quantity(gaps, gap_w, 3, &out) == ST_OK);
+    CHECK(value_of(gaps, gap_w, 3, &out) == ST_OK);
     CHECK_NEAR(out.value, 7.0, 1e-12);
     CHECK_NEAR(out.u_sampling, 0.3, 1e-12);
     CHECK(out.n == 50);
-    CHECK(pool_quantity(gaps, gap_w, 1, &out) == ST_NO_RESULT && isnan(out.value) && isnan(out.u_sampling));
-    CHECK(pool_quantity(gaps, gap_w, 0, &out) == ST_NO_RESULT);
+    CHECK(value_of(gaps, gap_w, 1, &out) == ST_NO_RESULT && isnan(out.value) && isnan(out.u_sampling));
+    CHECK(value_of(gaps, gap_w, 0, &out) == ST_NO_RESULT);
     /* A micrograph that does not know its own part leaves the scatter. */
     const measured half[] = { { 1.0, MISSING, 0.0, 5 }, { 2.0, 0.1, 0.0, 5 } };
-    CHECK(pool_quantity(half, even, 2, &out) == ST_OK);
+    CHECK(value_of(half, even, 2, &out) == ST_OK);
     CHECK_NEAR(out.u_sampling, 0.5, 1e-12);
     /* The parts: scatter far beyond what each knows has its own freedom, agreement joins both. */
     pooled p;
