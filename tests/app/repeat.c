@@ -4,18 +4,10 @@
 #include <stdint.h>
 
 #include "check.h"
+#include "noise.h"
 
 static uint64_t state = 0x9e3779b97f4a7c15u;
-static double normal(void) { /* sum of 12 uniform numbers */
-    double s = -6.0;
-    for (int i = 0; i < 12; i++) {
-        state ^= state << 13;
-        state ^= state >> 7;
-        state ^= state << 17;
-        s += (double)(state >> 11) / 9007199254740992.0;
-    }
-    return s;
-}
+static double normal(void) { return noise_of_twelve(&state); }
 
 enum { MOST = 1200 };
 static examined image[MOST];

@@ -14,6 +14,7 @@
 #include "base/quantity.h"
 #include "check.h"
 #include "io/file.h"
+#include "noise.h"
 
 enum { ETCHES = 250, WAFERS = 3, QUIET = 120, DRIFT_END = 190, OUTLIER = 57, SEEDS = 12, HOURS = 32 };
 #define SD_ETCH 4.0
@@ -22,18 +23,6 @@ enum { ETCHES = 250, WAFERS = 3, QUIET = 120, DRIFT_END = 190, OUTLIER = 57, SEE
 
 static char folder[200], path[300], ledger[300];
 
-/* splitmix64 and Box and Muller */
-static double normal(uint64_t *state) {
-    double u[2];
-    for (int i = 0; i < 2; i++) {
-        uint64_t x = *state += 0x9e3779b97f4a7c15u;
-        x = (x ^ (x >> 30)) * 0xbf58476d1ce4e5b9u;
-        x = (x ^ (x >> 27)) * 0x94d049bb133111ebu;
-        u[i] = ((double)((x ^ (x >> 31)) >> 11) + 0.5) / 9007199254740992.0;
-    }
-    return sqrt(-2.0 * log(u[0])) * cos(2.0 * PI * u[1]);
-}
-
 /* Etch i is of recipe B where i % 5 > 2. One etch every 32 hours. */
 static int is_b(int i) { return i % 5 > 2; }
 
@@ -41,12 +30,12 @@ static void write_year(uint64_t seed, textbuf *t) {
     uint64_t state = seed;
     text_add(t, "sample,lot,wafer,etched_at,spacing_nm,spacing_nm_u,weighted_reflectance,recipe,etch_s\n");
     for (int i = 0; i < ETCHES; i++) {
-        double level = (is_b(i) ? 420.0 : 350.0) + SD_ETCH * normal(&state);
+        double level = (is_b(i) ? 420.0 : 350.0) + SD_ETCH * noise_normal(&state);
         if (i >= QUIET && i < DRIFT_END) level += DRIFT * (i - QUIET);
         if (i == OUTLIER) level += 40.0;
         int hour = i * HOURS, day = hour / 24, month = day / 28;
         for (int w = 0; w < WAFERS; w++) {
-            double v = level + SD_WAFER * normal(&state);
+            double v = level + SD_WAFER * noise_normal(&state);
             text_addf(t, "E%03d-%d,L%d,%d,2026-%02d-%02dT%02d:00:00Z,%.2f,6,%.5f,%s,%d\n", i, w, i / 10, w, month + 1, day % 28 + 1,
                       hour % 24, v, 0.02 + (v - 350.0) * 1e-5, is_b(i) ? "B" : "A", 180);
         }

@@ -6,23 +6,12 @@
 #include "base/mem.h"
 #include "base/quantity.h"
 #include "check.h"
+#include "noise.h"
 
 enum { N = 160 };
 
-/* splitmix64 and Box and Muller */
-static double normal(uint64_t *state) {
-    double u[2];
-    for (int i = 0; i < 2; i++) {
-        uint64_t x = *state += 0x9e3779b97f4a7c15u;
-        x = (x ^ (x >> 30)) * 0xbf58476d1ce4e5b9u;
-        x = (x ^ (x >> 27)) * 0x94d049bb133111ebu;
-        u[i] = ((double)((x ^ (x >> 31)) >> 11) + 0.5) / 9007199254740992.0;
-    }
-    return sqrt(-2.0 * log(u[0])) * cos(2.0 * PI * u[1]);
-}
-
 static void make(double *v, uint64_t seed) {
-    for (size_t i = 0; i < N; i++) v[i] = 350.0 + 5.0 * normal(&seed);
+    for (size_t i = 0; i < N; i++) v[i] = 350.0 + 5.0 * noise_normal(&seed);
 }
 
 /* Of 200 quiet series at 1 % each 2 are expected to break; 9 are beyond the 99.9 % point of that law. */

@@ -1,18 +1,10 @@
 /* Features at random places have no spacing; those of a hard core have one, flagged for its low order. Both have a density. */
-#include <stdlib.h>
-
-#include "app/render.h"
 #include "base/flags.h"
-#include "base/quantity.h"
 #include "check.h"
-#include "metrics/measure.h"
-#include "planes.h"
+#include "rendered.h"
 
 static texture measured_render(pattern kind, double shape, uint64_t seed) {
     render_options o = render_defaults();
-    rendering r = { 0 };
-    error e = { 0 };
-    texture t = { 0 };
     o.pattern = kind;
     o.exponent = shape;
     o.seed = seed;
@@ -22,17 +14,7 @@ static texture measured_render(pattern kind, double shape, uint64_t seed) {
     o.ny = 480;
     o.electrons = 200.0;
     o.strip = 0;
-    CHECK(render_make(&o, &r, &e) == ST_OK);
-    size_t n = o.nx * o.ny;
-    float *f = plane_new(o.nx, o.ny);
-    const uint8_t *s = r.samples;
-    for (size_t i = 0; s && i < n; i++) f[i] = (float)s[i] / 255.0f;
-    plane p = { f, o.nx, o.ny, 8, 0.0, 0.0, NULL };
-    measure_options m = measure_defaults();
-    CHECK(measure_plane(&p, &m, &t, &e) == ST_OK);
-    rendering_free(&r);
-    free(f);
-    return t;
+    return rendered_texture(&o);
 }
 
 int main(void) {

@@ -1,19 +1,11 @@
 /* Two populations in patches: flagged, with the ring of one of them, never of a mean of both; and with the spacing of the other
  * where the spectrum shows it. */
-#include <stdlib.h>
-
-#include "app/render.h"
 #include "base/flags.h"
-#include "base/quantity.h"
 #include "check.h"
-#include "metrics/measure.h"
-#include "planes.h"
+#include "rendered.h"
 
 static void look(pattern kind, double share, double ratio, uint64_t seed, int shows_both) {
     render_options o = render_defaults();
-    rendering r = { 0 };
-    error e = { 0 };
-    texture t = { 0 };
     o.pattern = kind;
     o.second_share = share;
     o.second_spacing = ratio;
@@ -23,14 +15,7 @@ static void look(pattern kind, double share, double ratio, uint64_t seed, int sh
     o.nx = 720;
     o.ny = 540;
     o.strip = 0;
-    CHECK(render_make(&o, &r, &e) == ST_OK);
-    size_t n = o.nx * o.ny;
-    float *f = plane_new(o.nx, o.ny);
-    const uint8_t *s = r.samples;
-    for (size_t i = 0; s && i < n; i++) f[i] = (float)s[i] / 255.0f;
-    plane p = { f, o.nx, o.ny, 8, 0.0, 0.0, NULL };
-    measure_options m = measure_defaults();
-    CHECK(measure_plane(&p, &m, &t, &e) == ST_OK);
+    texture t = rendered_texture(&o);
     /* Share a of the field at ratio q: density = first density (1 - a + a / q^2). */
     double first = 22.0 * sqrt(1.0 - share + share / (ratio * ratio)), second = ratio * first;
     CHECK(!t.reasons);
@@ -40,8 +25,6 @@ static void look(pattern kind, double share, double ratio, uint64_t seed, int sh
     CHECK_NEAR(t.spacing_acf.value, ring, 0.10 * ring);
     if (shows_both) CHECK_NEAR(t.second_spacing_px, other, 0.15 * other);
     texture_free(&t);
-    rendering_free(&r);
-    free(f);
 }
 
 int main(void) {
